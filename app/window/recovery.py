@@ -1,0 +1,123 @@
+"""Work is not lost: a copy of unsaved changes aside, and one place where unexpected errors end.
+
+Every session that has unsaved changes keeps a copy of its plan in the state folder, beside a lock that lives as long
+as the process. A copy whose lock is free was left by a session that ended without a word; the next start offers it.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import os
+import platform
+import sys
+import traceback
+from collections.abc import Callable
+from importlib.metadata import PackageNotFoundError, version
+from pathlib import Path
+from types import TracebackType
+
+from PySide6.QtCore import QLockFile, QObject, QTimer, qVersion
+
+from app.plan import Plan, write_plan
+from app.window.undo import Document
+
+QUIET_TIME_MS = 4000  # unsaved changes are copied this long after the last edit
+
+
+class Recovery(QObject):
+    """Keeps the copy of one session."""
+
+    def __init__(self, document: Document, folder: Path, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._document = document
+        self._folder = folder / "recovery"
+        with contextlib.suppress(OSError):
+            self._folder.mkdir(parents=True, exist_ok=True)
+        stem = f"session-{os.getpid()}"
+        self.copy_path = self._folder / f"{stem}.toml"
+        self._lock = QLockFile(str(self._folder / f"{stem}.lock"))
+        self._lock.setStaleLockTime(0)  # stale only when its process is gone
+        self._lock.tryLock(0)
+        self._timer = QTimer(self)
+        self._timer.setSingleShot(True)
+        self._timer.setInterval(QUIET_TIME_MS)
+        self._timer.timeout.connect(self.save_copy)
+        document.plan_changed.connect(self._plan_changed)
+        document.clean_changed.connect(self._clean_changed)
+
+    def _plan_changed(self, plan: Plan) -> None:
+        if not self._document.clean:
+            self._timer.start()
+
+    def _clean_changed(self, clean: bool) -> None:
+        if clean:
+            self.drop_copy()
+
+    def save_copy(self) -> Path | None:
+        """Write the copy now; None where it cannot be written."""
+        self._timer.stop()
+        try:
+            self.copy_path.write_text(write_plan(self._document.plan), encoding="utf-8")
+        except (OSError, ValueError):
+            return None
+        return self.copy_path
+
+    def drop_copy(self) -> None:
+        self._timer.stop()
+        with contextlib.suppress(OSError):
+            self.copy_path.unlink(missing_ok=True)
+
+    def close(self) -> None:
+        """The session ends in order: its copy is not needed."""
+        self.drop_copy()
+        self._lock.unlock()
+
+    def left_behind(self) -> tuple[Path, ...]:
+        """Copies of sessions that are no longer alive, newest first."""
+        found = []
+        for copy in self._folder.glob("session-*.toml"):
+            if copy == self.copy_path:
+                continue
+            lock = QLockFile(str(copy.with_suffix(".lock")))
+            lock.setStaleLockTime(0)
+            if lock.tryLock(0):
+                lock.unlock()
+                found.append(copy)
+        return tuple(sorted(found, key=lambda path: path.stat().st_mtime, reverse=True))
+
+
+def install_excepthook(show: Callable[[str, str], None], save_copy: Callable[[], Path | None]) -> Callable[[], None]:
+    """Send exceptions that nobody caught to `show(sentence, details)`, after saving a copy; returns the way back."""
+    before = sys.excepthook
+
+    def hook(kind: type[BaseException], error: BaseException, trace: TracebackType | None) -> None:
+        if not issubclass(kind, Exception):  # an interrupt from the keyboard ends the program as it should
+            before(kind, error, trace)
+            return
+        copy = save_copy()
+        kept = f" A copy of the plan is in {copy}." if copy else ""
+        show(f"Something went wrong inside Coldward: {summary(error)}.{kept}", details(error))
+
+    sys.excepthook = hook
+
+    def restore() -> None:
+        if sys.excepthook is hook:
+            sys.excepthook = before
+
+    return restore
+
+
+def summary(error: BaseException) -> str:
+    """An exception in a few words, on one line."""
+    text = " ".join(str(error).split()).rstrip(".")
+    return f"{text[:160]} ({type(error).__name__})" if text else type(error).__name__
+
+
+def details(error: BaseException) -> str:
+    """All that a report of the error needs: versions and the trace."""
+    try:
+        own = version("coldward")
+    except PackageNotFoundError:
+        own = "unknown version"
+    about = f"Coldward {own}, Python {platform.python_version()}, Qt {qVersion()}, {platform.platform()}"
+    return about + "\n" + "".join(traceback.format_exception(error))
