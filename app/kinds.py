@@ -1,0 +1,109 @@
+"""What sort of quantity a text can be: its units, its spellings, its possible values.
+
+`EVERYDAY` lists the units that people type every day, with their SI factors, so that the usual input is read without
+loading the unit registry; a test holds every row against the registry.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from decimal import Context, Decimal
+from types import MappingProxyType
+
+from physics.constants import bohr_magneton, bohr_radius, boltzmann, elementary_charge, planck
+
+_WIDE = Context(prec=60)
+_H = Decimal(repr(planck))
+_K = Decimal(repr(boltzmann))
+_E = Decimal(repr(elementary_charge))
+
+# SI unit -> ((unit, factor), ...); the micro sign is U+00B5 throughout
+_BY_SI_UNIT: Mapping[str, tuple[tuple[str, str | Decimal], ...]] = {
+    "": (("", "1"), ("1", "1"), ("%", "0.01")),
+    "K": (("pK", "1e-12"), ("nK", "1e-9"), ("µK", "1e-6"), ("mK", "1e-3"), ("K", "1")),
+    "Hz": (("mHz", "1e-3"), ("Hz", "1"), ("kHz", "1e3"), ("MHz", "1e6")),
+    "m": (("a0", repr(bohr_radius)), ("nm", "1e-9"), ("µm", "1e-6"), ("mm", "1e-3"), ("cm", "1e-2"), ("m", "1")),
+    "s": (("µs", "1e-6"), ("ms", "1e-3"), ("s", "1")),
+    "T": (("mG", "1e-7"), ("G", "1e-4"), ("µT", "1e-6"), ("mT", "1e-3"), ("T", "1")),
+    "J": (("peV", _E.scaleb(-12)), ("neV", _E.scaleb(-9)), ("µeV", _E.scaleb(-6)), ("eV", _E), ("J", "1")),
+    "J/T": (("muB", repr(bohr_magneton)), ("J/T", "1")),
+    "K/s": (("nK/s", "1e-9"), ("µK/s", "1e-6"), ("K/s", "1")),
+    "1/s": (("1/s", "1"),),
+    "1/m": (("1/m", "1"), ("1/µm", "1e6")),
+    "1/m^2": (("1/m^2", "1"), ("1/cm^2", "1e4"), ("1/µm^2", "1e12")),
+    "1/m^3": (("1/m^3", "1"), ("1/cm^3", "1e6"), ("cm^-3", "1e6"), ("1/µm^3", "1e18")),
+    "m^3/s": (("m^3/s", "1"), ("cm^3/s", "1e-6")),
+    "m^6/s": (("m^6/s", "1"), ("cm^6/s", "1e-12")),
+}
+
+EVERYDAY: Mapping[str, tuple[Decimal, str]] = MappingProxyType(
+    {unit: (Decimal(size), si_unit) for si_unit, rows in _BY_SI_UNIT.items() for unit, size in rows}
+)
+"""Unit text -> (exact SI factor, SI unit)."""
+
+STAND_INS: Mapping[str, tuple[tuple[str, Decimal], ...]] = MappingProxyType(
+    {
+        "K": (("J", _WIDE.divide(Decimal(1), _K)), ("Hz", _WIDE.divide(_H, _K))),
+        "J": (("K", _K), ("Hz", _H)),
+    }
+)
+"""SI unit -> other SI units that stand for it, with factors: temperatures as energies over k or frequencies times
+h/k, energies as temperatures or frequencies."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Kind:
+    """One sort of quantity.
+
+    name : the word for it in a sentence, without article
+    si_unit : unit of its SI value; empty for pure numbers
+    units : units offered, the usual one first; every other unit of the same dimension is read too
+    low, high : [si_unit] possible values, both included
+    example : a text that is read; shown in messages
+    """
+
+    name: str
+    si_unit: str
+    units: tuple[str, ...]
+    low: float
+    high: float
+    example: str
+
+    def __post_init__(self) -> None:
+        if not self.low < self.high:
+            raise ValueError(f"{self.name} must run from a low to a high bound, got {self.low:g} to {self.high:g}")
+        if not self.units:
+            raise ValueError(f"{self.name} must offer a unit")
+
+
+TEMPERATURE = Kind(
+    name="temperature",
+    si_unit="K",
+    units=("nK", "µK", "mK", "K", "Hz", "kHz", "neV", "J"),
+    low=1e-12,
+    high=10.0,
+    example="200 nK",
+)
+DEPTH = Kind(
+    name="trap depth",
+    si_unit="J",
+    units=("µK", "nK", "mK", "kHz", "MHz", "neV", "J"),
+    low=boltzmann * 1e-12,
+    high=boltzmann * 10.0,
+    example="5 µK",
+)
+FREQUENCY = Kind(
+    name="trap frequency", si_unit="Hz", units=("Hz", "kHz", "MHz"), low=1e-3, high=1e8, example="120 Hz"
+)
+ATOM_NUMBER = Kind(name="atom number", si_unit="", units=("",), low=1.0, high=1e15, example="1.0e5")
+SCATTERING_LENGTH = Kind(
+    name="scattering length", si_unit="m", units=("a0", "nm"), low=-1e-4, high=1e-4, example="100.4 a0"
+)
+MAGNETIC_FIELD = Kind(
+    name="magnetic field", si_unit="T", units=("G", "mG", "mT", "T"), low=0.0, high=10.0, example="155.2 G"
+)
+REDUCED_TEMPERATURE = Kind(name="reduced temperature", si_unit="", units=("",), low=1e-4, high=1e4, example="0.5")
+PHASE_SPACE_DENSITY = Kind(name="phase-space density", si_unit="", units=("",), low=1e-15, high=1e6, example="2.612")
+EFFICIENCY = Kind(name="evaporation efficiency", si_unit="", units=("",), low=0.01, high=100.0, example="2.5")
+DIMENSIONLESS = Kind(name="number", si_unit="", units=("",), low=-1e300, high=1e300, example="1.5")
