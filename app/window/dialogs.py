@@ -1,0 +1,126 @@
+"""The small windows of the Help menu: about, keyboard shortcuts, glossary."""
+
+from __future__ import annotations
+
+from html import escape
+from importlib.metadata import PackageNotFoundError, version
+
+from PySide6.QtCore import QSize, Qt, qVersion
+from PySide6.QtGui import QKeySequence
+from PySide6.QtWidgets import QDialog, QDialogButtonBox, QLabel, QTextBrowser, QVBoxLayout, QWidget
+
+from app.quantities import Group, rows_in
+from app.window.actions import ACTIONS, MenuName, key_sequences
+
+NOTICE = (
+    "Results are planning estimates. The lab's own measurements and licensed practice decide; the program controls no "
+    "hardware."
+)
+
+
+def program_version() -> str:
+    try:
+        return version("coldward")
+    except PackageNotFoundError:
+        return "from source"
+
+
+class TextDialog(QDialog):
+    """A page of text that can be read, selected and scrolled by keyboard, and a Close button."""
+
+    def __init__(self, title: str, html: str, size: QSize, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setWindowTitle(title)
+        self.browser = QTextBrowser()
+        self.browser.setAccessibleName(title)
+        self.browser.setHtml(html)
+        self.browser.setTabChangesFocus(True)
+        buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Close)
+        buttons.rejected.connect(self.reject)
+        column = QVBoxLayout(self)
+        column.addWidget(self.browser)
+        column.addWidget(buttons)
+        self.resize(size)
+
+
+class AboutDialog(QDialog):
+    """What this is, which version, under which licences, and what its numbers are for."""
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setWindowTitle("About Coldward")
+        text = QLabel(
+            f"<h2>Coldward {escape(program_version())}</h2>"
+            "<p>Plans the cooling of trapped atoms to a Bose-Einstein condensate or a degenerate Fermi gas.</p>"
+            f"<p>{escape(NOTICE)}</p>"
+            "<p>Coldward is free software under the BSD-3-Clause licence. Its window is made with Qt for Python "
+            "(PySide6), used unmodified under the GNU Lesser General Public License, version 3; Qt's libraries stay "
+            f"separate files that can be replaced.</p><p>Qt {escape(qVersion())}</p>"
+        )
+        text.setTextFormat(Qt.TextFormat.RichText)
+        text.setWordWrap(True)
+        text.setTextInteractionFlags(
+            Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
+        )
+        text.setAccessibleName("About Coldward")
+        self.text = text
+        buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Close)
+        buttons.rejected.connect(self.reject)
+        column = QVBoxLayout(self)
+        column.setContentsMargins(24, 16, 24, 16)
+        column.addWidget(text)
+        column.addWidget(buttons)
+        self.setMinimumWidth(460)
+
+
+def shortcuts_dialog(parent: QWidget | None = None) -> TextDialog:
+    """All actions by menu, with their keys here; then the keys of fields, plots and readouts."""
+    parts = []
+    for menu in MenuName:
+        rows = [(spec.text.replace("&", ""), _keys_text(key_sequences(spec)), spec.tip) for spec in ACTIONS if spec.menu is menu]
+        parts.append(_section(menu.plain, rows))
+    parts.append(
+        _section(
+            "In a field",
+            [
+                ("Step up or down", "Up, Down", "By one in the last digits that count; Page Up and Page Down by ten"),
+                ("Take the change", "Return", "What is typed is taken as soon as it can be read"),
+            ],
+        )
+    )
+    parts.append(
+        _section(
+            "On the map",
+            [
+                ("Move the cloud", "Arrow keys", "Left and right change T, up and down change N; with Shift in small steps"),
+                ("Set the cloud", "Double click", "At the pointer; or drag the point"),
+            ],
+        )
+    )
+    return TextDialog("Keyboard shortcuts", "".join(parts), QSize(640, 560), parent)
+
+
+def glossary_dialog(parent: QWidget | None = None) -> TextDialog:
+    """Every quantity under its heading, with symbol, formula, source and range."""
+    parts = []
+    for group in Group:
+        entries = "".join(
+            f"<p><b>{escape(row.label)}</b>, {escape(row.symbol)}<br>{escape(row.formula)}<br>"
+            f"<small>{escape(row.source)}; {escape(row.validity)}</small></p>"
+            for row in rows_in(group)
+        )
+        parts.append(f"<h3>{escape(group.value)}</h3>{entries}")
+    return TextDialog("Glossary", "".join(parts), QSize(640, 640), parent)
+
+
+def _section(title: str, rows: list[tuple[str, str, str]]) -> str:
+    body = "".join(
+        f'<tr><td style="padding:2px 18px 2px 0">{escape(name)}</td><td style="padding:2px 18px 2px 0">'
+        f"<b>{escape(keys)}</b></td><td>{escape(tip)}</td></tr>"
+        for name, keys, tip in rows
+    )
+    return f"<h3>{escape(title)}</h3><table>{body}</table>"
+
+
+def _keys_text(keys: list[QKeySequence]) -> str:
+    return ", ".join(key.toString(QKeySequence.SequenceFormat.NativeText) for key in keys) or "–"

@@ -1,0 +1,102 @@
+"""Light or dark: one theme for palette, widgets and plots, following the system unless the user chose one."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import QObject, Qt, Signal
+from PySide6.QtGui import QColor, QPalette
+from PySide6.QtWidgets import QApplication
+
+from app.figures.theme import DARK, LIGHT, Theme
+from app.window.settings import Settings, ThemeChoice
+
+_Role = QPalette.ColorRole
+
+
+def palette_of(theme: Theme) -> QPalette:
+    """The theme's colours in the places where the toolkit's style looks for them."""
+    palette = QPalette(QColor(theme.window))
+    plain = {
+        _Role.Window: theme.window,
+        _Role.WindowText: theme.text,
+        _Role.Base: theme.base,
+        _Role.AlternateBase: theme.window,
+        _Role.Text: theme.text,
+        _Role.Button: theme.window,
+        _Role.ButtonText: theme.text,
+        _Role.BrightText: theme.error,
+        _Role.PlaceholderText: theme.muted,
+        _Role.ToolTipBase: theme.base,
+        _Role.ToolTipText: theme.text,
+        _Role.Highlight: theme.accent,
+        _Role.HighlightedText: theme.base,
+        _Role.Accent: theme.accent,
+        _Role.Link: theme.accent,
+        _Role.LinkVisited: theme.accent,
+        _Role.Mid: theme.border,
+    }
+    for role, colour in plain.items():
+        palette.setColor(role, QColor(colour))
+    for role in (_Role.WindowText, _Role.Text, _Role.ButtonText):
+        palette.setColor(QPalette.ColorGroup.Disabled, role, QColor(theme.muted))
+    return palette
+
+
+def style_sheet_of(theme: Theme) -> str:
+    """What a palette cannot say: the few rules and tints between the parts of the window."""
+    return f"""
+        #banner {{ background: {theme.base}; border: none; border-bottom: 2px solid {theme.warning}; }}
+        #bannerSign {{ color: {theme.warning}; font-weight: bold; }}
+        #verdictSentence {{ background: transparent; }}
+        #bench, #benchBody, #readouts, #caveats {{ background: {theme.window}; border: none; }}
+        #formTitle, #paneTitle {{ color: {theme.muted}; font-weight: 600; }}
+        #fieldNote, #plotStatus {{ color: {theme.muted}; }}
+        #fieldError {{ color: {theme.error}; }}
+        QSplitter::handle {{ background: {theme.border}; }}
+        QToolTip {{ color: {theme.text}; background: {theme.base}; border: 1px solid {theme.border}; padding: 3px; }}
+    """
+
+
+class Looks(QObject):
+    """Holds the theme in use. theme_changed(Theme) is sent whenever it becomes another one."""
+
+    theme_changed = Signal(object)
+
+    def __init__(self, settings: Settings, override: ThemeChoice | None = None, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._settings = settings
+        self._choice = override or settings.theme
+        self.theme: Theme = LIGHT
+        hints = QApplication.styleHints()
+        hints.colorSchemeChanged.connect(self._system_changed)
+        self._apply()
+
+    @property
+    def choice(self) -> ThemeChoice:
+        return self._choice
+
+    def choose(self, choice: ThemeChoice) -> None:
+        """Use this look from now on, and in later sessions."""
+        self._choice = choice
+        self._settings.theme = choice
+        self._apply()
+
+    def _system_changed(self) -> None:
+        if self._choice is ThemeChoice.SYSTEM:
+            self._apply()
+
+    def _apply(self) -> None:
+        dark = {
+            ThemeChoice.DARK: True,
+            ThemeChoice.LIGHT: False,
+            ThemeChoice.SYSTEM: QApplication.styleHints().colorScheme() is Qt.ColorScheme.Dark,
+        }[self._choice]
+        theme = DARK if dark else LIGHT
+        application = QApplication.instance()
+        if not isinstance(application, QApplication):
+            raise RuntimeError("a look needs a running application")
+        application.setPalette(palette_of(theme))
+        application.setStyleSheet(style_sheet_of(theme))
+        self._settings.put("view/backdrop", theme.window)
+        if theme is not self.theme:
+            self.theme = theme
+            self.theme_changed.emit(theme)
