@@ -1,0 +1,50 @@
+"""`coldward`, `python -m app`: one of the verbs, or the window."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from collections.abc import Sequence
+from importlib import import_module
+
+from app import __version__
+
+VERBS = ("window", "state", "map", "profile", "table", "species")
+"""Modules of app.commands, in the order in which help lists them."""
+
+_DESCRIPTION = """\
+Plan the cooling of trapped atoms to a Bose-Einstein condensate or a degenerate Fermi gas.
+Without a verb the window opens. Answers are planning estimates; the program controls no hardware."""
+
+
+def build_parser() -> argparse.ArgumentParser:
+    """The whole command line."""
+    parser = argparse.ArgumentParser(
+        prog="coldward", description=_DESCRIPTION, formatter_class=argparse.RawDescriptionHelpFormatter
+    )
+    parser.add_argument("--version", action="version", version=f"coldward {__version__}")
+    verbs = parser.add_subparsers(dest="verb", metavar="VERB", required=True)
+    for verb in VERBS:
+        import_module(f"app.commands.{verb}").add_parser(verbs)
+    return parser
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run one command line.
+
+    Exit status: 0 answered, 1 a file, value or some rows could not be answered, 2 the command line could not be read.
+    """
+    given = list(sys.argv[1:] if arguments is None else arguments)
+    args = build_parser().parse_args(given or ["window"])
+    try:
+        return int(args.run(args))
+    except BrokenPipeError:
+        # The reader of a pipe has what it wanted; stdout must not complain once more at exit.
+        sys.stdout = None
+        return 0
+    except KeyboardInterrupt:
+        return 130
+
+
+if __name__ == "__main__":
+    raise SystemExit(main())

@@ -1,0 +1,94 @@
+"""`coldward map`: the plane of atom number and temperature, as a table or a picture."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from typing import TYPE_CHECKING
+
+from app.commands.plan_arguments import add_plan_arguments, fail, plan_of
+
+if TYPE_CHECKING:
+    from app.engine import MapAnswer, MapLimits
+    from app.plan import Plan
+
+PICTURES = (".png", ".svg", ".pdf")
+
+
+def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+    """Add the verb to the command line."""
+    parser = verbs.add_parser(
+        "map",
+        help="atom number against temperature, as CSV or a picture",
+        description="Peak phase-space density, T over threshold and condensed fraction over atom number and temperature.",
+    )
+    add_plan_arguments(parser)
+    parser.add_argument("-o", "--output", metavar="FILE", help="CSV, PNG, SVG or PDF by its ending; CSV on stdout without it")
+    parser.add_argument("--atoms-range", metavar="TEXT", help='such as "1e3 to 1e7"')
+    parser.add_argument("--temperature-range", metavar="TEXT", help='such as "10 nK to 10 uK"')
+    parser.add_argument("--points", type=int, default=None, metavar="NUMBER", help="grid points along each direction")
+    parser.set_defaults(run=run)
+
+
+def run(args: argparse.Namespace) -> int:
+    """Write the map of the plan."""
+    from app.commands.output import write_answer
+    from app.engine import MAP_POINTS, cloud_answer, map_answer
+
+    points = args.points or 2 * MAP_POINTS
+    if not 2 <= points <= 2000:
+        return fail(f"--points must be from 2 to 2000, got {points}")
+    try:
+        plan = plan_of(args)
+        answer = map_answer(plan, _limits(args, plan), points)
+
+        def pictures() -> list[object]:
+            from app.figures.map import map_picture
+
+            return [map_picture(answer, cloud_answer(plan))]
+
+        write_answer(args.output, lambda: map_csv(answer), pictures)
+    except (ValueError, OSError) as error:
+        return fail(error)
+    if answer.model is not cloud_answer(plan).model:
+        print(f"coldward: the map shows the model {answer.model.value!r}", file=sys.stderr)
+    return 0
+
+
+def _limits(args: argparse.Namespace, plan: Plan) -> MapLimits:
+    from dataclasses import replace
+
+    from app.engine import usual_limits
+    from app.units import ATOM_NUMBER, TEMPERATURE, Kind, QuantityError, read_quantity
+
+    def read(flag: str, text: str, kind: Kind) -> tuple[float, float]:
+        ends = text.split(" to ")
+        if len(ends) != 2:
+            raise QuantityError(f'{flag}: a range is written "low to high", got "{text}"')
+        low, high = (read_quantity(end, kind).value for end in ends)
+        return low, high
+
+    limits = usual_limits(plan)
+    if args.atoms_range:
+        low, high = read("--atoms-range", args.atoms_range, ATOM_NUMBER)
+        limits = replace(limits, atoms_low=low, atoms_high=high)
+    if args.temperature_range:
+        low, high = read("--temperature-range", args.temperature_range, TEMPERATURE)
+        limits = replace(limits, temperature_low=low, temperature_high=high)
+    return limits
+
+
+def map_csv(answer: MapAnswer) -> str:
+    """One row a grid point, full precision."""
+    import numpy as np
+
+    columns = {
+        "atoms": np.broadcast_to(answer.atoms[np.newaxis, :], answer.peak_phase_space_density.shape),
+        "temperature [K]": np.broadcast_to(answer.temperature[:, np.newaxis], answer.peak_phase_space_density.shape),
+        "peak_phase_space_density": answer.peak_phase_space_density,
+        "reduced_temperature": answer.reduced_temperature,
+    }
+    if answer.bosons:
+        columns["condensate_fraction"] = answer.condensate_fraction
+    rows = zip(*(np.ravel(column).tolist() for column in columns.values()), strict=True)
+    return "\n".join([",".join(columns), *(",".join(map(repr, row)) for row in rows)]) + "\n"

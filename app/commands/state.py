@@ -1,0 +1,98 @@
+"""`coldward state`: where one cloud stands."""
+
+from __future__ import annotations
+
+import argparse
+from typing import TYPE_CHECKING, Any
+
+from app.commands.plan_arguments import add_plan_arguments, fail, json_answer, plan_of
+
+if TYPE_CHECKING:
+    from app.engine import CloudAnswer
+    from app.quantities import Row
+
+
+def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+    """Add the verb to the command line."""
+    parser = verbs.add_parser(
+        "state", help="how far one cloud is from degeneracy", description="How far one cloud is from degeneracy."
+    )
+    add_plan_arguments(parser)
+    parser.add_argument("--json", action="store_true", help="print one JSON object")
+    parser.set_defaults(run=run)
+
+
+def run(args: argparse.Namespace) -> int:
+    """Answer for the plan that file and flags give."""
+    from app.engine import cloud_answer
+
+    try:
+        answer = cloud_answer(plan_of(args))
+    except (ValueError, OSError) as error:
+        return fail(error)
+    print(json_answer(args, state_body(answer)) if args.json else state_text(answer))
+    return 0
+
+
+def state_body(answer: CloudAnswer) -> dict[str, Any]:
+    """The answer as the JSON contract has it: model, quantities in SI, caveats."""
+    from app.quantities import QUANTITIES
+    from app.words import caveat_text
+
+    return {
+        "model": answer.model.value,
+        "quantities": {name: _quantity(answer, row) for name, row in QUANTITIES.items()},
+        "caveats": [
+            {
+                "id": caveat.id,
+                "severity": caveat.severity.value,
+                "text": caveat_text(caveat, answer),
+                "value": _finite(caveat.value),
+            }
+            for caveat in answer.caveats
+        ],
+    }
+
+
+def _quantity(answer: CloudAnswer, row: Row) -> dict[str, Any]:
+    import numpy as np
+
+    from app.words import reason_missing
+
+    entry: dict[str, Any] = {"value": None, "unit": row.unit, "low": None, "high": None}
+    missing = answer.missing(row)
+    value = None if missing is not None else np.asarray(answer.value(row.name), dtype=float).tolist()
+    entry["value"] = _finite(value)
+    interval = answer.interval(row.name)
+    if entry["value"] is None:
+        entry["reason"] = reason_missing(missing) if missing is not None else "not defined for this cloud"
+    elif interval is not None:
+        entry["low"], entry["high"] = (_finite(np.asarray(bound).tolist()) for bound in interval)
+    return {**entry, "label": row.label, "source": row.source}
+
+
+def _finite(value: Any) -> Any:
+    """The number or list of numbers, or None where any is not finite: the contract has no NaN."""
+    import math
+
+    numbers = value if isinstance(value, list) else [value]
+    return value if all(number is not None and math.isfinite(number) for number in numbers) else None
+
+
+def state_text(answer: CloudAnswer) -> str:
+    """The answer as a readable page."""
+    from app.quantities import Group, rows_in
+    from app.tables import columns
+    from app.words import caveat_line, deciding_figures, heading, shown_unit, value_with_interval, verdict
+
+    lines = [heading(answer), "", verdict(answer), ""]
+    lines += columns([(figure.caption, figure.value, figure.detail) for figure in deciding_figures(answer)])
+    for group in Group:
+        rows = [row for row in rows_in(group) if answer.missing(row) is None]
+        table = [(row.label, row.symbol, value_with_interval(answer, row), shown_unit(row.units[0])) for row in rows]
+        if table:
+            lines += ["", group.value, *columns(table, indent=2)]
+    if answer.caveats:
+        lines += ["", "What this answer does not cover"]
+        lines += [f"  {caveat_line(caveat, answer)}" for caveat in answer.caveats]
+    return "\n".join(lines)

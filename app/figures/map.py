@@ -1,0 +1,166 @@
+"""The map: atom number against temperature, the cloud on it, and how far it is from the threshold."""
+
+from __future__ import annotations
+
+import math
+from gettext import gettext as _
+
+import numpy as np
+from contourpy import contour_generator
+
+from app.engine import CloudAnswer, MapAnswer
+from app.figures.picture import Array, Axis, Curve, Field, Label, Mark, Picture, Role
+from app.figures.ticks import power_text
+from app.words import number, verdict
+
+SPLIT = 0.62
+"""Place of the threshold in the colour scale: below it the thermal cloud, above it the degenerate one."""
+
+LOWEST_DENSITY = 1e-6
+HIGHEST_RATIO = 100.0
+LOWEST_RATIO = 0.01
+_FRACTIONS = (0.1, 0.5, 0.9)
+_RATIOS = (10.0, 1.0, 0.1)
+_THRESHOLD_DENSITY = 2.612375348685488  # zeta(3/2)
+
+
+def map_picture(answer: MapAnswer, cloud: CloudAnswer) -> Picture:
+    """The map of `answer` with the cloud of `cloud` on it.
+
+    Colour is the peak phase-space density of a thermal Bose gas and T/Tc below its threshold, where the peak is flat;
+    for fermions it is T/TF.
+    """
+    lines = _boson_lines(answer) if answer.bosons else _fermion_lines(answer)
+    labels = [label for _curve, found in lines for label in found]
+    return Picture(
+        title=_("where the cloud stands"),
+        x=Axis(
+            label=_("atoms N") if cloud.cloud.spin_components == 1 else _("atoms N per spin state"),
+            unit="",
+            low=answer.limits.atoms_low,
+            high=answer.limits.atoms_high,
+            log=True,
+        ),
+        y=Axis(
+            label=_("temperature T"),
+            unit="K",
+            low=answer.limits.temperature_low,
+            high=answer.limits.temperature_high,
+            log=True,
+            prefixed=True,
+        ),
+        curves=(*(curve for curve, _labels in lines), *_thresholds(answer)),
+        field=_boson_field(answer) if answer.bosons else _fermion_field(answer),
+        marks=(_cloud_mark(cloud),),
+        labels=tuple(labels),
+        summary=verdict(cloud),
+    )
+
+
+def _boson_field(answer: MapAnswer) -> Field:
+    low, high = math.log10(LOWEST_DENSITY), math.log10(_THRESHOLD_DENSITY)
+    thermal = (np.log10(np.maximum(answer.peak_phase_space_density, LOWEST_DENSITY)) - low) / (high - low)
+    condensed = SPLIT + (1.0 - SPLIT) * (1.0 - answer.reduced_temperature)
+    shade = np.where(answer.reduced_temperature < 1.0, condensed, SPLIT * np.minimum(thermal, 1.0))
+    ticks = [((exponent - low) / (high - low) * SPLIT, power_text(10.0**exponent)) for exponent in range(-6, 1, 2)]
+    ticks += [(SPLIT + (1.0 - SPLIT) * (1.0 - ratio), f"{ratio:g}") for ratio in (1.0, 0.5, 0.0)]
+    return Field(
+        x=answer.atoms,
+        y=answer.temperature,
+        shade=shade,
+        split=SPLIT,
+        bar_label=_("peak phase-space density, then T/Tc"),
+        ticks=tuple(ticks),
+    )
+
+
+def _fermion_field(answer: MapAnswer) -> Field:
+    limit = answer.fermi_threshold
+    logs = np.log10(answer.reduced_temperature)
+    top, middle, bottom = math.log10(HIGHEST_RATIO), math.log10(limit), math.log10(LOWEST_RATIO)
+
+    def place(log: Array) -> Array:
+        thermal = SPLIT * (top - log) / (top - middle)
+        degenerate = SPLIT + (1.0 - SPLIT) * (middle - log) / (middle - bottom)
+        return np.clip(np.where(log > middle, thermal, degenerate), 0.0, 1.0)
+
+    ticks = sorted({HIGHEST_RATIO, 10.0, 1.0, limit, 0.1, LOWEST_RATIO}, reverse=True)
+    return Field(
+        x=answer.atoms,
+        y=answer.temperature,
+        shade=place(logs),
+        split=SPLIT,
+        bar_label=_("T/TF"),
+        ticks=tuple((float(place(np.array(math.log10(tick)))), number(tick, 2)) for tick in ticks),
+    )
+
+
+def _boson_lines(answer: MapAnswer) -> list[tuple[Curve, list[Label]]]:
+    density = np.log10(np.maximum(answer.peak_phase_space_density, 1e-30))
+    # The peak is flat once condensed: a contour at 2.612 itself would wander, the threshold has its own line.
+    decades = [
+        _contour(answer, density, float(exponent), power_text(10.0**exponent), Role.DECADE, _("phase-space density, decades") if exponent == 0 else "")
+        for exponent in range(-12, 1)
+    ]
+    fractions = [
+        _contour(answer, answer.condensate_fraction, share, f"{share:.0%}".replace("%", " %"), Role.FRACTION, _("condensed fraction") if share == 0.5 else "")
+        for share in _FRACTIONS
+    ]
+    return [line for line in (*decades, *fractions) if line is not None]
+
+
+def _fermion_lines(answer: MapAnswer) -> list[tuple[Curve, list[Label]]]:
+    logs = np.log10(answer.reduced_temperature)
+    lines = [
+        _contour(answer, logs, math.log10(ratio), f"{ratio:g}", Role.DECADE, _("T/TF, decades") if ratio == 1.0 else "")
+        for ratio in _RATIOS
+    ]
+    return [line for line in lines if line is not None]
+
+
+def _contour(
+    answer: MapAnswer, field: Array, level: float, text: str, role: Role, name: str
+) -> tuple[Curve, list[Label]] | None:
+    """A contour as one NaN-broken curve in data coordinates, with its label a fifth of the way along it."""
+    # Contours are straight in logarithms, where interpolating along a cell edge is right too.
+    found = contour_generator(np.log10(answer.atoms), np.log10(answer.temperature), field, name="serial").lines(level)
+    pieces = [10.0**piece for piece in found if len(piece) > 1]
+    if not pieces:
+        return None
+    gap = np.full((1, 2), np.nan)
+    points = np.concatenate([part for piece in pieces for part in (piece, gap)])[:-1]
+    curve = Curve(name=name, role=role, x=points[:, 0], y=points[:, 1])
+    longest = max(pieces, key=len)
+    if len(longest) < answer.atoms.size // 8:
+        return curve, []
+    ordered = longest[np.argsort(longest[:, 0])]
+    x, y = ordered[len(ordered) // 5 if role is Role.DECADE else 4 * len(ordered) // 5]
+    return curve, [Label(text=text, role=role, x=float(x), y=float(y))]
+
+
+def _thresholds(answer: MapAnswer) -> tuple[Curve, ...]:
+    name = _("condensation, ideal") if answer.bosons else _("T/TF = {limit}").format(limit=number(answer.fermi_threshold, 2))
+    ideal = Curve(name=name, role=Role.THRESHOLD, x=answer.atoms, y=answer.threshold)
+    if not answer.bosons or not np.any(np.isfinite(answer.threshold_shifted)):
+        return (ideal,)
+    shifted = np.where(answer.threshold_shifted > 0.0, answer.threshold_shifted, np.nan)
+    return (
+        ideal,
+        Curve(name=_("condensation, shifted"), role=Role.THRESHOLD_SHIFTED, x=answer.atoms, y=shifted),
+    )
+
+
+def _cloud_mark(cloud: CloudAnswer) -> Mark:
+    atoms, temperature = cloud.plan.cloud.atoms, cloud.plan.cloud.temperature
+    outline = None
+    if atoms.sigma or temperature.sigma:
+        angle = np.linspace(0.0, 2.0 * np.pi, 73)
+        outline = Curve(
+            name="",
+            role=Role.UNCERTAINTY,
+            x=atoms.value * np.exp((atoms.sigma or 0.0) / atoms.value * np.cos(angle)),
+            y=temperature.value * np.exp((temperature.sigma or 0.0) / temperature.value * np.sin(angle)),
+        )
+    return Mark(
+        name=_("cloud"), role=Role.CLOUD, x=atoms.value, y=temperature.value, draggable=True, outline=outline
+    )
