@@ -1,0 +1,435 @@
+"""Puts a picture on Matplotlib axes, and pictures into files.
+
+The axes are linear in drawing units: log10 of the data along a logarithmic axis, with plain-text ticks. Never
+pyplot: figures are made directly, so that nothing is kept behind the caller's back. Lengths are in points (1/72 inch).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import lru_cache
+from typing import IO, Literal
+
+import numpy as np
+from matplotlib import rc_context
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+from matplotlib.font_manager import FontProperties
+from matplotlib.image import AxesImage
+from matplotlib.lines import Line2D
+from matplotlib.patheffects import withStroke
+from matplotlib.text import Text
+from matplotlib.textpath import TextToPath
+from matplotlib.ticker import FixedFormatter, FixedLocator, NullLocator
+
+from app.figures.labels import place_labels
+from app.figures.picture import Curve, Field, Picture, Role
+from app.figures.theme import LIGHT, LineStyle, Theme, colour_scale
+from app.figures.ticks import Ticks, axis_title, span, ticks_of, to_drawing
+
+Format = Literal["png", "svg", "pdf"]
+
+PAD = 6.0
+LINE = 1.45  # line height over type size
+TICK, TICK_GAP = 3.5, 3.0
+MINOR_TICK = 2.0
+BAR_GAP, BAR_WIDTH = 10.0, 9.0
+SAMPLE, SAMPLE_GAP, ENTRY_GAP = 24.0, 5.0, 14.0  # of the legend
+HALO_WIDTH = 2.2
+MARK_SIZE, DRAGGABLE_SIZE, MARK_EDGE = 6.0, 9.0, 1.2
+SMALLEST = 24.0  # of the axes; below it the surroundings give way
+MM_PER_INCH = 25.4
+
+
+@dataclass(frozen=True)
+class LegendEntry:
+    name: str
+    role: Role
+    is_mark: bool
+
+
+def legend_entries(picture: Picture) -> tuple[LegendEntry, ...]:
+    """What the legend names, each once: curves, then marks and their outlines."""
+    outlines = [mark.outline for mark in picture.marks if mark.outline is not None]
+    entries = [LegendEntry(c.name, c.role, False) for c in (*picture.curves, *outlines) if c.name]
+    entries += [LegendEntry(mark.name, mark.role, True) for mark in picture.marks if mark.name]
+    return tuple(dict.fromkeys(entries))
+
+
+@lru_cache(maxsize=4096)
+def text_size(text: str, size: float) -> tuple[float, float]:
+    """Width and line height of a text [pt], the same for every output."""
+    width, _, _ = TextToPath().get_text_width_height_descent(text, FontProperties(size=size), ismath=False)  # type: ignore[no-untyped-call]
+    return float(width), size * LINE
+
+
+def shortened(text: str, size: float, width: float) -> str:
+    """The text, its end cut off with an ellipsis where it is wider than `width` [pt]."""
+    if text_size(text, size)[0] <= width:
+        return text
+    while text and text_size(text + "…", size)[0] > width:
+        text = text[:-1]
+    return text.rstrip() + "…" if text else ""
+
+
+# --------------------------------------------------------------------------- layout
+
+
+@dataclass(frozen=True, kw_only=True)
+class Layout:
+    """Places [pt] from the lower left corner of the figure: axes (left, bottom, width, height), rows of the legend."""
+
+    left: float
+    bottom: float
+    width: float
+    height: float
+    title_left: float
+    right_end: float
+    title_y: float | None
+    legend: tuple[tuple[LegendEntry, float, float], ...]
+    x_ticks: Ticks
+    y_ticks: Ticks
+    y_title: str
+
+
+def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, float]) -> Layout:
+    """Fits axes and all around them into `room` (left, bottom, width, height) [pt]."""
+    left, bottom, width, height = room
+    line = theme.font_size * LINE
+    below = PAD + line + TICK_GAP + theme.small_size * LINE + TICK
+    entries = legend_entries(picture)
+    title_height = theme.title_size * LINE + 2.0 if picture.title else 0.0
+    rows = _legend_rows(entries, theme, width - 2.0 * PAD)
+    if height - below - title_height - len(rows) * line < 4.0 * SMALLEST:
+        rows = ()
+    if height - below - title_height < 2.0 * SMALLEST:
+        title_height = 0.0
+    above = PAD + title_height + len(rows) * line + (4.0 if rows else 2.0)
+    inner_height = max(height - below - above, SMALLEST)
+    y_ticks = ticks_of(picture.y, max(2, int(inner_height / (2.6 * theme.small_size))))
+    y_title = _broken(axis_title(picture.y), theme.font_size, inner_height + 0.5 * above)
+    tick_width = _widest(y_ticks.texts, theme.small_size)
+    # whole steps of 4 pt: the axes do not twitch with each new tick text
+    before = 4.0 * np.ceil((PAD + (1 + y_title.count("\n")) * line + TICK_GAP + tick_width + TICK_GAP + TICK) / 4.0)
+    after = PAD + 12.0 if picture.field is None else _bar_room(picture.field, theme)
+    inner_width = max(width - before - after, SMALLEST)
+    x_ticks = _fitting_ticks(picture, theme, inner_width)
+    legend = []
+    y = bottom + height - PAD - title_height - 0.5 * line
+    for row in rows:
+        legend += [(entry, left + PAD + x, y) for entry, x in row]
+        y -= line
+    return Layout(
+        left=left + before, bottom=bottom + below, width=inner_width, height=inner_height,
+        title_left=left + PAD, right_end=left + width - PAD,
+        title_y=bottom + height - PAD - 0.5 * theme.title_size * LINE if title_height else None,
+        legend=tuple(legend), x_ticks=x_ticks, y_ticks=y_ticks, y_title=y_title,
+    )  # fmt: skip
+
+
+def _legend_rows(
+    entries: Sequence[LegendEntry], theme: Theme, width: float
+) -> tuple[tuple[tuple[LegendEntry, float], ...], ...]:
+    rows: list[list[tuple[LegendEntry, float]]] = []
+    x = np.inf
+    for entry in entries:
+        needed = SAMPLE + SAMPLE_GAP + text_size(entry.name, theme.small_size)[0]
+        if x + needed > width:
+            rows.append([])
+            x = 0.0
+        rows[-1].append((entry, x))
+        x += needed + ENTRY_GAP
+    return tuple(tuple(row) for row in rows)
+
+
+def _fitting_ticks(picture: Picture, theme: Theme, width: float) -> Ticks:
+    for most in (9, 8, 7, 6, 5, 4, 3, 2):
+        ticks = ticks_of(picture.x, most)
+        low, high = span(picture.x)
+        gaps = np.diff(ticks.places) * width / (high - low)
+        if not len(gaps) or gaps.min() >= _widest(ticks.texts, theme.small_size) + 8.0:
+            break
+    return ticks
+
+
+def _bar_room(field: Field, theme: Theme) -> float:
+    texts = _widest([text for _, text in field.ticks], theme.small_size)
+    return BAR_GAP + BAR_WIDTH + TICK + TICK_GAP + texts + TICK_GAP + theme.font_size * LINE + PAD
+
+
+def _widest(texts: Sequence[str], size: float) -> float:
+    return max((text_size(text, size)[0] for text in texts), default=0.0)
+
+
+def _broken(text: str, size: float, width: float) -> str:
+    """The text in two lines, broken at the space nearest to its middle, where it is wider than `width`."""
+    spaces = [i for i, c in enumerate(text) if c == " "]
+    if text_size(text, size)[0] <= width or not spaces:
+        return text
+    middle = min(spaces, key=lambda i: abs(i - len(text) / 2))
+    return text[:middle] + "\n" + text[middle + 1 :]
+
+
+# --------------------------------------------------------------------------- frame: all that is not data
+
+
+def draw_frame(picture: Picture, axes: Axes, theme: Theme) -> Layout:
+    """Draws all but the data: title, legend, ticks, axis labels, colour bar. The room is where the axes stood."""
+    figure = axes.get_figure(root=True)
+    assert isinstance(figure, Figure)
+    page = np.array([*figure.get_size_inches(), *figure.get_size_inches()]) * 72.0
+    room = axes.get_position(original=True).bounds * page
+    layout = lay_out(picture, theme, (room[0], room[1], room[2], room[3]))
+    axes.set_position(tuple(np.array([layout.left, layout.bottom, layout.width, layout.height]) / page))  # type: ignore[arg-type]
+    axes.set_facecolor(theme.background)
+    axes.set_xlim(*span(picture.x))
+    axes.set_ylim(*span(picture.y))
+    axes.set_autoscale_on(False)
+    for spine in axes.spines.values():
+        spine.set(color=theme.muted, linewidth=0.8, zorder=6)
+    _draw_ticks(axes, theme, layout, with_grid=picture.field is None)
+    _write_axis_titles(picture, axes, theme, layout)
+    if layout.title_y is not None:
+        title = shortened(picture.title, theme.title_size, room[2] - 2.0 * PAD)
+        place = ((room[0] + PAD) / page[0], layout.title_y / page[1])
+        figure.text(*place, title, size=theme.title_size, weight="bold", color=theme.foreground, va="center_baseline")
+    for entry, x, y in layout.legend:
+        _draw_entry(figure, theme, entry, x, y)
+    if picture.field is not None:
+        _draw_colour_bar(picture.field, figure, theme, layout)
+    return layout
+
+
+def _draw_ticks(axes: Axes, theme: Theme, layout: Layout, with_grid: bool) -> None:
+    sides = ((axes.xaxis, layout.x_ticks, "x"), (axes.yaxis, layout.y_ticks, "y"))
+    for axis, ticks, side in sides:
+        axis.set_major_locator(FixedLocator(ticks.places))
+        axis.set_major_formatter(FixedFormatter(ticks.texts))
+        axis.set_minor_locator(NullLocator())
+        axis.set_tick_params(
+            length=TICK, width=0.8, pad=TICK_GAP, color=theme.muted, labelcolor=theme.foreground, labelsize=theme.small_size
+        )
+        # one line of marks: Matplotlib's own minor ticks cost half of the drawing
+        zeros = np.zeros(len(ticks.minor))
+        xy = (ticks.minor, zeros) if side == "x" else (zeros, ticks.minor)
+        transform = axes.get_xaxis_transform() if side == "x" else axes.get_yaxis_transform()
+        axes.add_artist(
+            Line2D(
+                *xy, linestyle="", marker=3 if side == "x" else 0, markersize=MINOR_TICK, markeredgewidth=0.6,
+                color=theme.muted, transform=transform, clip_on=False,
+            )
+        )  # fmt: skip
+    if with_grid:
+        axes.grid(True, color=theme.grid, linewidth=0.7)
+        axes.set_axisbelow(True)
+
+
+def _write_axis_titles(picture: Picture, axes: Axes, theme: Theme, layout: Layout) -> None:
+    line = theme.font_size * LINE
+    x_offset = -(TICK + TICK_GAP + theme.small_size * LINE + 0.5 * line + 1.0)
+    lines = 1 + layout.y_title.count("\n")
+    y_offset = TICK + 2 * TICK_GAP + _widest(layout.y_ticks.texts, theme.small_size) + 0.5 * lines * line
+    style = {"size": theme.font_size, "color": theme.foreground}
+    axes.text(0.5, x_offset / layout.height, axis_title(picture.x), transform=axes.transAxes, ha="center",
+              va="center_baseline", **style)  # fmt: skip
+    axes.text(-y_offset / layout.width, 0.5, layout.y_title, transform=axes.transAxes, rotation="vertical",
+              ha="center", va="center", multialignment="center", **style)  # fmt: skip
+
+
+def _draw_entry(figure: Figure, theme: Theme, entry: LegendEntry, x: float, y: float) -> None:
+    width, height = figure.get_size_inches() * 72.0
+    style = theme.lines[entry.role]
+    ends = [x + 0.5 * SAMPLE] if entry.is_mark else [x, x + SAMPLE]
+    sample = Line2D([end / width for end in ends], [y / height] * len(ends), transform=figure.transFigure)
+    if entry.is_mark:
+        _style_mark(sample, style, theme, MARK_SIZE)
+    else:
+        style_line(sample, style)
+    figure.add_artist(sample)
+    figure.text((x + SAMPLE + SAMPLE_GAP) / width, y / height, entry.name, size=theme.small_size,
+                color=theme.foreground, va="center_baseline")  # fmt: skip
+
+
+def _draw_colour_bar(field: Field, figure: Figure, theme: Theme, layout: Layout) -> None:
+    page = np.array([*figure.get_size_inches(), *figure.get_size_inches()]) * 72.0
+    bar = figure.add_axes(
+        tuple(np.array([layout.left + layout.width + BAR_GAP, layout.bottom, BAR_WIDTH, layout.height]) / page)  # type: ignore[arg-type]
+    )
+    bar.imshow(
+        colour_scale(theme, field.split)[:, np.newaxis], origin="lower", aspect="auto", extent=(0.0, 1.0, 0.0, 1.0),
+        interpolation="nearest",
+    )  # fmt: skip
+    for spine in bar.spines.values():
+        spine.set(color=theme.muted, linewidth=0.8)
+    bar.xaxis.set_major_locator(NullLocator())
+    bar.yaxis.tick_right()
+    bar.yaxis.set_major_locator(FixedLocator([place for place, _ in field.ticks]))
+    bar.yaxis.set_major_formatter(FixedFormatter([text for _, text in field.ticks]))
+    bar.tick_params(length=TICK, width=0.8, pad=TICK_GAP, color=theme.muted, labelcolor=theme.foreground,
+                    labelsize=theme.small_size)  # fmt: skip
+    if 0.0 < field.split < 1.0:
+        bar.axhline(field.split, color=theme.lines[Role.THRESHOLD].colour, linewidth=1.4)
+    room = _bar_room(field, theme)
+    x = (room - BAR_GAP - PAD - 0.5 * theme.font_size * LINE) / BAR_WIDTH
+    bar.text(x, 0.5, field.bar_label, transform=bar.transAxes, rotation="vertical", ha="center", va="center",
+             size=theme.font_size, color=theme.foreground)  # fmt: skip
+
+
+# --------------------------------------------------------------------------- data
+
+
+def draw_picture(picture: Picture, axes: Axes, theme: Theme = LIGHT) -> None:
+    """Draws a picture on fresh axes. The place of the axes is taken as the room for the frame and all around it."""
+    layout = draw_frame(picture, axes, theme)
+    if picture.field is not None:
+        _draw_field(picture, picture.field, axes, theme)
+    on_field = picture.field is not None
+    for curve in picture.curves:
+        _draw_curve(picture, curve, axes, theme, on_field)
+    for mark in picture.marks:
+        if mark.outline is not None:
+            _draw_curve(picture, mark.outline, axes, theme, on_field)
+    for mark in picture.marks:
+        point = Line2D([to_drawing(picture.x, mark.x)], [to_drawing(picture.y, mark.y)], zorder=5)
+        _style_mark(point, theme.lines[mark.role], theme, DRAGGABLE_SIZE if mark.draggable else MARK_SIZE)
+        axes.add_line(point)
+    _draw_labels(picture, axes, theme, layout)
+    note, right, middle = note_place(picture, layout, theme, drawing_note(picture))
+    if note:
+        figure = axes.get_figure(root=True)
+        assert isinstance(figure, Figure)
+        width, height = figure.get_size_inches() * 72.0
+        text = figure.text(right / width, middle / height, note, size=theme.small_size, color=theme.muted, ha="right",
+                           va="center_baseline", zorder=7)  # fmt: skip
+        _give_halo(text, theme)
+
+
+def note_place(picture: Picture, layout: Layout, theme: Theme, note: str) -> tuple[str, float, float]:
+    """The note as far as there is room for it, its right end and its middle [pt]: in the row of the title, or
+    in the lower right corner of the axes where the title has given way."""
+    if layout.title_y is None:
+        right, middle = layout.left + layout.width - PAD, layout.bottom + PAD + 0.5 * theme.small_size * LINE
+        return shortened(note, theme.small_size, layout.width - 2.0 * PAD), right, middle
+    # bold type is up to a fifth wider than what is measured
+    room = layout.right_end - layout.title_left - 1.2 * text_size(picture.title, theme.title_size)[0] - ENTRY_GAP
+    return shortened(note, theme.small_size, room), layout.right_end, layout.title_y
+
+
+def field_edges(picture: Picture, field: Field) -> tuple[float, float, float, float]:
+    """Outer edges of the field's cells in drawing units: left, right, bottom, top."""
+    edges = []
+    for axis, centres in ((picture.x, field.x), (picture.y, field.y)):
+        first, last = to_drawing(axis, float(centres[0])), to_drawing(axis, float(centres[-1]))
+        half = 0.5 * (last - first) / max(len(centres) - 1, 1)
+        edges += [first - half, last + half]
+    return edges[0], edges[1], edges[2], edges[3]
+
+
+def field_colours(field: Field, theme: Theme) -> np.ndarray[tuple[int, ...], np.dtype[np.uint8]]:
+    """RGBA of each cell, shape (rows, columns, 4); the background where the shade is NaN."""
+    known = np.isfinite(field.shade)
+    place = np.where(known, field.shade, 0.0)
+    colours = colour_scale(theme, field.split)[np.clip(place * 255.0 + 0.5, 0.0, 255.0).astype(np.uint8)]
+    if not known.all():
+        colours[~known] = [*bytes.fromhex(theme.background[1:]), 255]
+    return colours
+
+
+def style_line(line: Line2D, style: LineStyle) -> None:
+    """Colour, width and dash of a role."""
+    line.set(color=style.colour, linewidth=style.width, solid_capstyle="butt", solid_joinstyle="round",
+             dash_capstyle="butt", dash_joinstyle="round")  # fmt: skip
+    if style.dash:
+        line.set_linestyle((0.0, tuple(length / style.width for length in style.dash)))
+
+
+def drawing_note(picture: Picture) -> str:
+    """The picture's note, and what a logarithmic axis cannot show."""
+    hidden = sum(
+        int(np.count_nonzero(values <= 0.0))
+        for curve in picture.curves
+        for axis, values in ((picture.x, curve.x), (picture.y, curve.y))
+        if axis.log
+    )
+    missing = "values at or below zero have no place on a logarithmic axis" if hidden else ""
+    return " · ".join(text for text in (picture.note, missing) if text)
+
+
+def _style_mark(point: Line2D, style: LineStyle, theme: Theme, size: float) -> None:
+    point.set(linestyle="", marker=style.marker or "o", markersize=size, markerfacecolor=style.colour,
+              markeredgecolor=theme.halo, markeredgewidth=MARK_EDGE)  # fmt: skip
+
+
+def _draw_field(picture: Picture, field: Field, axes: Axes, theme: Theme) -> None:
+    image = AxesImage(axes, extent=field_edges(picture, field), origin="lower", interpolation="bilinear",
+                      interpolation_stage="rgba", zorder=0.5)  # fmt: skip
+    image.set_data(field_colours(field, theme))
+    image.set_clip_path(axes.patch)
+    axes.add_image(image)
+
+
+def _draw_curve(picture: Picture, curve: Curve, axes: Axes, theme: Theme, on_field: bool) -> None:
+    line = Line2D(to_drawing(picture.x, curve.x), to_drawing(picture.y, curve.y), zorder=3)
+    style = theme.lines[curve.role]
+    style_line(line, style)
+    if on_field and theme.needs_halo(curve.role):
+        line.set_path_effects([withStroke(linewidth=style.width + HALO_WIDTH, foreground=theme.halo)])
+    axes.add_line(line)
+
+
+def _draw_labels(picture: Picture, axes: Axes, theme: Theme, layout: Layout) -> None:
+    def measure(text: str) -> tuple[float, float]:
+        return text_size(text, theme.small_size)
+
+    for label, x, y in place_labels(picture, layout.width, layout.height, measure):
+        text = axes.text(x / layout.width, y / layout.height, label.text, transform=axes.transAxes, ha="center",
+                         va="center_baseline", size=theme.small_size, color=theme.lines[label.role].colour, zorder=4)  # fmt: skip
+        _give_halo(text, theme)
+
+
+def _give_halo(text: Text, theme: Theme) -> None:
+    text.set_path_effects([withStroke(linewidth=HALO_WIDTH, foreground=theme.halo, alpha=0.85)])
+
+
+# --------------------------------------------------------------------------- files
+
+
+def save_pictures(
+    pictures: Sequence[Picture],
+    target: str | IO[bytes],
+    format: Format,
+    *,
+    theme: Theme = LIGHT,
+    size_mm: tuple[float, float] | None = None,
+    dpi: float = 200.0,
+) -> None:
+    """Writes pictures side by side into one file: exact page size, text as text, the same bytes for the same input.
+
+    `size_mm` is the page's width and height, by default 150 x 110 a picture; `dpi` counts for PNG and for colour
+    fields. Raises ValueError for an empty list, an unknown format or a page that is too small.
+    """
+    if format not in ("png", "svg", "pdf"):
+        raise ValueError(f"pictures are written as png, svg or pdf, got {format!r}")
+    if not pictures:
+        raise ValueError("there is no picture to write")
+    columns = int(np.ceil(np.sqrt(len(pictures))))
+    rows = int(np.ceil(len(pictures) / columns))
+    width, height = size_mm if size_mm is not None else (150.0 * columns, 110.0 * rows)
+    if width < 40.0 * columns or height < 30.0 * rows:
+        raise ValueError(
+            f"{len(pictures)} pictures need a page of at least {40 * columns} x {30 * rows} mm, got {width:g} x {height:g} mm"
+        )
+    figure = Figure(figsize=(width / MM_PER_INCH, height / MM_PER_INCH), dpi=dpi, facecolor=theme.background)
+    for i, picture in enumerate(pictures):
+        row, column = divmod(i, columns)
+        place = (column / columns, 1.0 - (row + 1) / rows, 1.0 / columns, 1.0 / rows)
+        draw_picture(picture, figure.add_axes(place), theme)
+    stamp: dict[str, str | None] = {
+        "png": {"Software": "Coldward"},
+        "svg": {"Date": None, "Creator": "Coldward"},
+        "pdf": {"CreationDate": None, "Creator": "Coldward", "Producer": "Coldward"},
+    }[format]
+    with rc_context({"svg.fonttype": "none", "svg.hashsalt": "coldward", "pdf.fonttype": 42}):
+        figure.savefig(target, format=format, dpi=dpi, facecolor=theme.background, metadata=stamp)
+
