@@ -1,0 +1,150 @@
+"""A cloud in a trap, and the way from it to its equilibrium."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from physics.checks import Floats, as_floats, require_not_infinite, require_positive
+from physics.models import AVAILABLE_MODELS, Model, Replacement
+from physics.particles import Statistics
+from physics.traps.harmonic import HarmonicTrap
+
+if TYPE_CHECKING:
+    from physics.equilibrium import Equilibrium
+
+__all__ = ["AVAILABLE_MODELS", "Cloud", "Model", "Replacement", "equilibrium"]
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Cloud:
+    """Identical atoms in thermal equilibrium in a trap.
+
+    Arrays are welcome where a number is meant; atoms, temperature, scattering length and the trap's leading
+    dimensions broadcast with one another to `shape`.
+
+    Attributes
+    ----------
+    statistics : Statistics
+    mass : float. [kg]
+    trap : HarmonicTrap
+    atoms : array_like. [1] Atom number of ONE spin state.
+    temperature : array_like. [K]
+    spin_components : int. Number of equally filled spin states.
+    scattering_length : array_like or None. [m] s-wave length: of two atoms of the same state for bosons, of different
+        states for fermions. None, and NaN within an array, where unknown. It may be negative.
+
+    Raises
+    ------
+    ValueError : where a value cannot be, in one sentence naming it.
+    """
+
+    statistics: Statistics
+    mass: float
+    trap: HarmonicTrap
+    atoms: Any
+    temperature: Any
+    spin_components: int = 1
+    scattering_length: Any = None
+
+    def __post_init__(self) -> None:
+        for field, quantity, unit in (
+            ("mass", "mass", "kg"),
+            ("atoms", "atom number", ""),
+            ("temperature", "temperature", "K"),
+        ):
+            value = as_floats(getattr(self, field))
+            require_positive(quantity, value, unit)
+            object.__setattr__(self, field, value)
+        if self.mass.ndim:
+            raise ValueError(f"mass must be one number, got an array of shape {self.mass.shape}")
+        if self.spin_components != int(self.spin_components) or self.spin_components < 1:
+            raise ValueError(f"spin components must be a whole number from 1 on, got {self.spin_components:g}")
+        if self.scattering_length is not None:
+            length = as_floats(self.scattering_length)
+            require_not_infinite("scattering length", length, "m")
+            object.__setattr__(self, "scattering_length", length)
+        try:
+            _ = self.shape
+        except ValueError:
+            shapes = f"atoms {np.shape(self.atoms)}, temperature {np.shape(self.temperature)}, trap {self.trap.shape}"
+            raise ValueError(
+                f"atoms, temperature, scattering length and trap must broadcast, got shapes {shapes},"
+                f" scattering length {np.shape(self.scattering_length)}"
+            ) from None
+
+    @cached_property
+    def shape(self) -> tuple[int, ...]:
+        """Common shape of everything that may be an array; () for a single cloud."""
+        return np.broadcast_shapes(
+            np.shape(self.atoms), np.shape(self.temperature), np.shape(self.scattering_length), self.trap.shape
+        )
+
+    @property
+    def length(self) -> Floats:
+        """Scattering length, NaN where unknown. [m]"""
+        return as_floats(np.nan) if self.scattering_length is None else self.scattering_length
+
+
+def equilibrium(
+    cloud: Cloud,
+    model: Model | None = None,
+    *,
+    fermi_threshold: float = 0.5,
+    efficiency: float | None = None,
+) -> Equilibrium:
+    """Thermal equilibrium of a cloud; every quantity of the answer is computed when it is first asked for.
+
+    Parameters
+    ----------
+    cloud : Cloud
+    model : Model or None. None is semi-ideal for bosons and ideal for fermions. Where the model cannot hold, the
+        ideal one is used, for all of an array, and `replaced` of the answer says why.
+    fermi_threshold : float. [1] The T/TF that counts as the threshold of degeneracy of fermions.
+    efficiency : float or None. [1] Efficiency -dlnD/dlnN assumed for an evaporation to the threshold, D being the
+        classical phase-space density; None leaves `atoms_left_at_target` unknown.
+
+    Raises
+    ------
+    ValueError : unless fermi_threshold and efficiency are positive.
+    """
+    from physics.exact_levels import ExactLevels
+    from physics.ideal_bose import IdealBose
+    from physics.ideal_fermi import IdealFermi
+    from physics.semi_ideal import SemiIdeal
+
+    require_positive("threshold T/TF", as_floats(fermi_threshold), "")
+    if efficiency is not None:
+        require_positive("evaporation efficiency", as_floats(efficiency), "")
+    if model is None:
+        model = Model.SEMI_IDEAL if cloud.statistics is Statistics.BOSE else Model.IDEAL
+    replaced = _obstacle(cloud, model)
+    if replaced is not None:
+        model = Model.IDEAL
+    kind: type[Equilibrium]
+    if cloud.statistics is Statistics.FERMI:
+        kind = IdealFermi
+    else:
+        kind = {Model.IDEAL: IdealBose, Model.EXACT_LEVELS: ExactLevels, Model.SEMI_IDEAL: SemiIdeal}[model]
+    return kind(
+        cloud=cloud, model=model, replaced=replaced, fermi_threshold=float(fermi_threshold), efficiency=efficiency
+    )
+
+
+def _obstacle(cloud: Cloud, model: Model) -> Replacement | None:
+    """What keeps the cloud from being described by the model, or None."""
+    if model is Model.IDEAL:
+        return None
+    if cloud.statistics is Statistics.FERMI:
+        return Replacement.BOSONS_ONLY
+    if model not in AVAILABLE_MODELS:
+        return Replacement.NOT_OFFERED
+    if model is Model.SEMI_IDEAL:
+        if np.any(np.isnan(cloud.length)):
+            return Replacement.LENGTH_UNKNOWN
+        if np.any(cloud.length <= 0.0):
+            return Replacement.NOT_REPULSIVE
+    return None

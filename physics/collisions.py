@@ -1,0 +1,70 @@
+"""Elastic s-wave collisions of trapped atoms.
+
+References
+----------
+[1] J. Dalibard, in Bose-Einstein Condensation in Atomic Gases, Proc. Int. School of Physics "Enrico Fermi" CXL, 321
+    (1999): cross-sections. Recalled.
+[2] W. Ketterle and N. J. van Druten, Adv. At. Mol. Opt. Phys. 37, 181 (1996): collision rates in a trap. Recalled.
+"""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from physics.checks import Floats
+from physics.constants import boltzmann, reduced_planck
+from physics.particles import Statistics
+
+
+def mean_speed(mass: Floats | float, temperature: Floats) -> Floats:
+    """Mean speed sqrt(8 kT/(pi m)) of a classical gas. [m/s]"""
+    speed: Floats = np.sqrt(8.0 * boltzmann * temperature / (math.pi * mass))
+    return speed
+
+
+def low_energy_cross_section(statistics: Statistics, scattering_length: Floats, spin_components: int) -> Floats:
+    """Cross-section per atom for collisions slow against hbar/(m |a|), such that n sigma with the density n of ONE
+    spin state counts the partners in all states. [m^2]
+
+    8 pi a^2 for a boson with its own state, and 4 pi a^2 for every other state, bosons or fermions, for which the
+    same length is taken. A single state of fermions has none, whatever the length.
+    """
+    states = 4.0 * math.pi * (spin_components - 1)
+    if statistics is Statistics.BOSE:
+        states += 8.0 * math.pi
+    elif spin_components == 1:
+        return np.zeros_like(scattering_length)
+    return states * scattering_length**2
+
+
+def thermal_cross_section_factor(mass: Floats | float, temperature: Floats, scattering_length: Floats) -> Floats:
+    """<sigma v>/<v> of sigma0/(1 + k^2 a^2) over sigma0, for two classical atoms of equal mass. [1]
+
+    With K = m kT a^2/hbar^2 it is [1 - e^(1/K) E1(1/K)/K]/K: 1 for K << 1, 1/K at unitarity. Relative error below
+    1e-12 for every K.
+    """
+    from scipy.special import exp1
+
+    K = np.asarray(mass * boltzmann * temperature * scattering_length**2 / reduced_planck**2, dtype=np.float64)
+    factor = np.full(K.shape, np.nan)
+    weak = K < 0.02
+    # Asymptotic series sum (n+1)! (-K)^n; its smallest term at K = 0.02 is far below rounding.
+    series = np.zeros_like(K[weak])
+    for n in range(22, -1, -1):
+        series = series * (-K[weak] * (n + 2)) + 1.0
+    factor[weak] = series
+    strong = K >= 0.02
+    y = 1.0 / K[strong]
+    factor[strong] = y * (1.0 - y * np.exp(y) * exp1(y))
+    result: Floats = factor[()]
+    return result
+
+
+def mean_collision_rate(peak_density: Floats, cross_section: Floats, speed: Floats) -> Floats:
+    """Collisions per atom and time, n(0) sigma vbar/2, averaged over a classical cloud in a harmonic trap. [1/s]
+
+    The mean density is n(0)/2^(3/2), the mean relative speed sqrt(2) vbar. [2]
+    """
+    return 0.5 * peak_density * cross_section * speed

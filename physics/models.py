@@ -1,0 +1,36 @@
+"""The models by which a cloud can be described, and why one may have to give way to another."""
+
+from __future__ import annotations
+
+from enum import Enum
+
+
+class Model(Enum):
+    """How atoms of a trapped cloud share its levels.
+
+    IDEAL: no interaction, local density (many levels within kT). EXACT_LEVELS: no interaction, the discrete levels
+    of the oscillator summed. SEMI_IDEAL: a Thomas-Fermi condensate that repels thermal atoms, which do not repel one
+    another. HARTREE_FOCK: thermal atoms repel one another too.
+    """
+
+    IDEAL = "ideal"
+    EXACT_LEVELS = "exact levels"
+    SEMI_IDEAL = "semi-ideal"
+    HARTREE_FOCK = "Hartree-Fock"
+
+    @property
+    def label(self) -> str:
+        return self.value
+
+
+AVAILABLE_MODELS = (Model.IDEAL, Model.EXACT_LEVELS, Model.SEMI_IDEAL)
+"""The models that `equilibrium` can use; it answers a request for any other with the ideal one, and says so."""
+
+
+class Replacement(Enum):
+    """Why the ideal model stands where another was asked for."""
+
+    LENGTH_UNKNOWN = "scattering length unknown"
+    NOT_REPULSIVE = "scattering length not positive"
+    NOT_OFFERED = "model not offered"
+    BOSONS_ONLY = "model for bosons only"

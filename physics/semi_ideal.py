@@ -1,0 +1,1 @@
+from physics.ideal_bose import IdealBose as SemiIdeal
