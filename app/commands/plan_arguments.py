@@ -9,33 +9,18 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from app import CONTRACT, __version__
+from app.choices import PLAN_FIELDS
 
 if TYPE_CHECKING:
     from app.plan import Plan
 
-FLAGS = {
-    "--species": ("species.key", "isotope, such as 87Rb"),
-    "--state": ("species.state", 'trapped state, such as "F=1 mF=-1"'),
-    "--spin-components": ("species.spin_components", "equally filled spin states"),
-    "--scattering-length": ("species.scattering_length", "such as 100.4 a0; write --scattering-length=-20a0 for negative ones"),
-    "--field": ("species.field", "magnetic field that tunes the scattering length, such as 155.2 G"),
-    "--frequencies": ("trap.frequencies", 'three trap frequencies, such as "120 Hz, 120 Hz, 20 Hz"'),
-    "--depth": ("trap.depth", 'trap depth, such as "5 uK"'),
-    "--atoms": ("cloud.atoms", 'atoms per spin state, such as "1.0(1)e5"'),
-    "--temperature": ("cloud.temperature", 'such as "200(10) nK"'),
-    "--model": ("cloud.model", "ideal, exact levels or semi-ideal"),
-    "--target-reduced-temperature": ("target.reduced_temperature", "T/TF that counts as degenerate for fermions"),
-    "--efficiency": ("target.efficiency", "assumed evaporation efficiency, -d ln D/d ln N"),
-}
-"""Flag -> plan key and help."""
-
-
-def add_plan_arguments(parser: argparse.ArgumentParser) -> None:
-    """Add the plan file and the overriding flags to a verb."""
-    parser.add_argument("plan", nargs="?", metavar="PLAN", help="plan file; without one, flags give the plan")
+def add_plan_arguments(parser: argparse.ArgumentParser, *, name: str = "plan") -> None:
+    """Add the plan file, as an argument or under an option of that name, and the overriding flags to a verb."""
+    more = {"nargs": "?"} if name == "plan" else {}
+    parser.add_argument(name, metavar="PLAN", help="plan file; without one, flags give the plan", **more)
     group = parser.add_argument_group("plan keys, which override the file")
-    for flag, (key, text) in FLAGS.items():
-        group.add_argument(flag, dest=key, metavar="TEXT", help=text)
+    for path, field in PLAN_FIELDS.items():
+        group.add_argument(field.flag, dest=path, metavar="TEXT", help=field.tip.replace("%", "%%"))
 
 
 def plan_of(args: argparse.Namespace) -> Plan:
@@ -46,14 +31,17 @@ def plan_of(args: argparse.Namespace) -> Plan:
     from app.plan import read_plan, plan_with
 
     base = None if args.plan is None else read_plan(Path(args.plan))
-    given = {key: value for key in (key for key, _help in FLAGS.values()) if (value := getattr(args, key)) is not None}
-    return plan_with(base, given)
+    return plan_with(base, _given(args))
+
+
+def _given(args: argparse.Namespace) -> dict[str, str]:
+    """Plan keys that flags have set, with their texts."""
+    return {path: text for path in PLAN_FIELDS if (text := getattr(args, path, None)) is not None}
 
 
 def json_answer(args: argparse.Namespace, body: dict[str, Any], **more: Any) -> str:
     """One JSON object that opens with contract, version and input, as all verbs print it."""
-    given = {key: value for key in (key for key, _help in FLAGS.values()) if (value := getattr(args, key, None)) is not None}
-    entry: dict[str, Any] = {"plan": args.plan, **given, **more}
+    entry: dict[str, Any] = {"plan": args.plan, **_given(args), **more}
     return json.dumps({"coldward": CONTRACT, "version": __version__, "input": entry, **body}, ensure_ascii=False, allow_nan=False)
 
 

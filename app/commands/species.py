@@ -81,8 +81,9 @@ def _list(chosen: list[Species]) -> str:
         [
             text_table(("species", "statistics", "mass", "state", "scattering length", "known from"), rows),
             "",
-            "The first state of a species is the usual one. Known from: seen, read in the cited source; memory, recalled",
-            "from it; computed, worked out. A background means something only with the resonances, at a given field.",
+            "The first state of a species is the usual one. Known from: seen, read in the cited source; memory,",
+            "recalled from it; computed, worked out. A background means something only with the resonances, at a",
+            "given field.",
             "coldward species KEY shows every number of one species with its source.",
         ]
     )
@@ -219,7 +220,7 @@ def _line_table(lines: tuple[Line, ...]) -> str:
                 if number
                 else "",
                 number.certainty.value if number else "",
-                "; ".join(item.source for item in (line.wavelength, number) if item),
+                "; ".join(dict.fromkeys(item.source for item in (line.wavelength, number) if item)),
             )
         )
     return text_table(("transition", "wavelength", "known from", "strength", "known from", "source"), rows)
