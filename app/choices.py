@@ -1,0 +1,305 @@
+"""The Plan: all that a user decides, frozen, with the text of every quantity as it was written.
+
+`PLAN_FIELDS` lists its keys once: the loader, the command-line flags and the forms all read this table.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from enum import Enum, auto
+from types import MappingProxyType
+from typing import TYPE_CHECKING
+
+from app.units import (
+    ATOM_NUMBER,
+    DEPTH,
+    EFFICIENCY,
+    FREQUENCY,
+    MAGNETIC_FIELD,
+    PHASE_SPACE_DENSITY,
+    REDUCED_TEMPERATURE,
+    SCATTERING_LENGTH,
+    TEMPERATURE,
+    Kind,
+    Quantity,
+)
+
+if TYPE_CHECKING:
+    from physics.cloud import Model
+
+
+class PlanError(ValueError):
+    """A plan that cannot be read, or a value that no plan can have. The message is one sentence for the user."""
+
+
+MOST_SPIN_STATES = 20
+LONGEST_TITLE = 200
+
+
+@dataclass(frozen=True, kw_only=True)
+class SpeciesChoice:
+    """Which atoms. `scattering_length` and `field` (through the resonances) each override the data; not both.
+
+    key : name of the preset, such as "87Rb"
+    state : name of one of its states; None: the first
+    spin_components : equally filled spin states; None: as the state has it
+    """
+
+    key: str = "87Rb"
+    state: str | None = None
+    spin_components: int | None = None
+    scattering_length: Quantity | None = None
+    field: Quantity | None = None
+
+    def __post_init__(self) -> None:
+        if self.scattering_length is not None and self.field is not None:
+            raise PlanError("give either a scattering length or a magnetic field, not both")
+        if self.spin_components is not None and not 1 <= self.spin_components <= MOST_SPIN_STATES:
+            raise PlanError(f"spin_components must be from 1 to {MOST_SPIN_STATES}, got {self.spin_components}")
+
+
+@dataclass(frozen=True, kw_only=True)
+class TrapChoice:
+    """A harmonic trap: ordinary frequencies along its three axes [Hz], and optionally its depth [J]."""
+
+    frequencies: tuple[Quantity, Quantity, Quantity]
+    depth: Quantity | None = None
+
+    def __post_init__(self) -> None:
+        if len(self.frequencies) != 3:
+            raise PlanError(f"frequencies must be three, got {len(self.frequencies)}")
+
+
+@dataclass(frozen=True, kw_only=True)
+class CloudChoice:
+    """Atoms per spin state, temperature [K], and the model; None: the usual one of the statistics."""
+
+    atoms: Quantity
+    temperature: Quantity
+    model: Model | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
+class TargetChoice:
+    """What counts as reached: at most one of the first three; and an assumed efficiency of evaporation."""
+
+    reduced_temperature: Quantity | None = None
+    peak_phase_space_density: Quantity | None = None
+    condensate_atoms: Quantity | None = None
+    efficiency: Quantity | None = None
+
+    def __post_init__(self) -> None:
+        named = [name for name in TARGETS if getattr(self, name) is not None]
+        if len(named) > 1:
+            raise PlanError(f"a target is one of {', '.join(TARGETS)}; got {' and '.join(named)}")
+
+
+TARGETS = ("reduced_temperature", "peak_phase_space_density", "condensate_atoms")
+
+
+@dataclass(frozen=True, kw_only=True)
+class Plan:
+    """One cloud in one trap, and what it is wanted for.
+
+    unused : sections of its file that this version keeps but does not compute
+    source : text of the file it came from, so that saving keeps comments, layout and unused sections; it does not
+        count when plans are compared
+    """
+
+    title: str = ""
+    species: SpeciesChoice
+    trap: TrapChoice
+    cloud: CloudChoice
+    target: TargetChoice = TargetChoice()
+    unused: tuple[str, ...] = ()
+    source: str = field(default="", compare=False, repr=False)
+
+    def __post_init__(self) -> None:
+        if len(self.title) > LONGEST_TITLE or not self.title.isprintable():
+            raise PlanError(f"title must be one line of at most {LONGEST_TITLE} characters")
+
+
+class Entry(Enum):
+    """How a field is written."""
+
+    TEXT = auto()
+    SPECIES = auto()
+    STATE = auto()
+    WHOLE = auto()
+    MODEL = auto()
+    QUANTITY = auto()
+    FREQUENCIES = auto()
+
+
+@dataclass(frozen=True, kw_only=True)
+class PlanField:
+    """One key of a plan.
+
+    path : "section.key" in the file, and the attributes of Plan
+    label : what forms call it
+    tip : what it means, for tool tips and help
+    flag : command-line option
+    kind : of quantities
+    excludes : other keys that setting this one clears
+    """
+
+    path: str
+    label: str
+    tip: str
+    entry: Entry
+    flag: str
+    kind: Kind | None = None
+    required: bool = False
+    excludes: tuple[str, ...] = ()
+
+    @property
+    def section(self) -> str:
+        return self.path.rpartition(".")[0]
+
+    @property
+    def name(self) -> str:
+        return self.path.rpartition(".")[2]
+
+
+def _other_targets(name: str) -> tuple[str, ...]:
+    return tuple(f"target.{other}" for other in TARGETS if other != name)
+
+
+_FIELDS = (
+    PlanField(
+        path="title", label="Title", entry=Entry.TEXT, flag="--title", tip="A line of your own that names the plan."
+    ),
+    PlanField(
+        path="species.key",
+        label="Species",
+        entry=Entry.SPECIES,
+        flag="--species",
+        tip="Isotope. Its mass, statistics and scattering data come from the presets, each with its source.",
+        required=True,
+        # What was said about another species' states and collisions does not carry over.
+        excludes=("species.state", "species.spin_components", "species.scattering_length", "species.field"),
+    ),
+    PlanField(
+        path="species.state",
+        label="State",
+        entry=Entry.STATE,
+        flag="--state",
+        tip="Internal state in which the atoms are trapped. Case and spaces do not matter.",
+    ),
+    PlanField(
+        path="species.spin_components",
+        label="Spin states",
+        entry=Entry.WHOLE,
+        flag="--spin-components",
+        tip="Number of equally filled spin states: 1 polarised, 2 for a balanced Fermi mixture.",
+    ),
+    PlanField(
+        path="species.scattering_length",
+        label="Scattering length",
+        entry=Entry.QUANTITY,
+        kind=SCATTERING_LENGTH,
+        flag="--scattering-length",
+        tip="s-wave scattering length; overrides the data. Negative is attractive.",
+        excludes=("species.field",),
+    ),
+    PlanField(
+        path="species.field",
+        label="Magnetic field",
+        entry=Entry.QUANTITY,
+        kind=MAGNETIC_FIELD,
+        flag="--field",
+        tip="Homogeneous field; the scattering length follows from the state's resonances.",
+        excludes=("species.scattering_length",),
+    ),
+    PlanField(
+        path="trap.frequencies",
+        label="Trap frequencies",
+        entry=Entry.FREQUENCIES,
+        kind=FREQUENCY,
+        flag="--frequencies",
+        tip="Ordinary frequencies along the three axes, in Hz: ω/2π. 2π×120 Hz is read as 120 Hz.",
+        required=True,
+    ),
+    PlanField(
+        path="trap.depth",
+        label="Trap depth",
+        entry=Entry.QUANTITY,
+        kind=DEPTH,
+        flag="--depth",
+        tip="Energy from the bottom to the lowest way out, as a temperature, a frequency or an energy.",
+    ),
+    PlanField(
+        path="cloud.atoms",
+        label="Atoms",
+        entry=Entry.QUANTITY,
+        kind=ATOM_NUMBER,
+        flag="--atoms",
+        tip="Atom number per spin state, condensate included.",
+        required=True,
+    ),
+    PlanField(
+        path="cloud.temperature",
+        label="Temperature",
+        entry=Entry.QUANTITY,
+        kind=TEMPERATURE,
+        flag="--temperature",
+        tip="Also as an energy over k, or as a frequency times h/k: 4.2 kHz is 202 nK.",
+        required=True,
+    ),
+    PlanField(
+        path="cloud.model",
+        label="Model",
+        entry=Entry.MODEL,
+        flag="--model",
+        tip="Description of the gas; by default semi-ideal for bosons and ideal for fermions.",
+    ),
+    PlanField(
+        path="target.reduced_temperature",
+        label="Target T/Tc or T/TF",
+        entry=Entry.QUANTITY,
+        kind=REDUCED_TEMPERATURE,
+        flag="--target-reduced-temperature",
+        tip="Temperature over the critical (bosons) or the Fermi temperature that counts as reached.",
+        excludes=_other_targets("reduced_temperature"),
+    ),
+    PlanField(
+        path="target.peak_phase_space_density",
+        label="Target phase-space density",
+        entry=Entry.QUANTITY,
+        kind=PHASE_SPACE_DENSITY,
+        flag="--target-phase-space-density",
+        tip="Peak phase-space density that counts as reached.",
+        excludes=_other_targets("peak_phase_space_density"),
+    ),
+    PlanField(
+        path="target.condensate_atoms",
+        label="Target condensate atoms",
+        entry=Entry.QUANTITY,
+        kind=ATOM_NUMBER,
+        flag="--target-condensate-atoms",
+        tip="Number of atoms in the condensate that counts as reached.",
+        excludes=_other_targets("condensate_atoms"),
+    ),
+    PlanField(
+        path="target.efficiency",
+        label="Evaporation efficiency",
+        entry=Entry.QUANTITY,
+        kind=EFFICIENCY,
+        flag="--efficiency",
+        tip="Assumed −d ln D/d ln N: orders of magnitude gained in phase-space density for each one lost in atoms.",
+    ),
+)
+
+PLAN_FIELDS = MappingProxyType({field.path: field for field in _FIELDS})
+"""Dotted path -> field, in the order of the file."""
+
+DEFAULT_PLAN = Plan(
+    title="Rubidium in a cigar-shaped trap",
+    species=SpeciesChoice(key="87Rb", state="F=1 mF=-1"),
+    trap=TrapChoice(
+        frequencies=(Quantity("120 Hz", 120.0), Quantity("120 Hz", 120.0), Quantity("20 Hz", 20.0)),
+    ),
+    cloud=CloudChoice(atoms=Quantity("1.0(1)e5", 1e5, 1e4), temperature=Quantity("200(10) nK", 2e-7, 1e-8)),
+)
+"""What a window without a file shows. The values stand beside the texts so that starting reads no text; a test reads
+them."""

@@ -1,0 +1,90 @@
+"""The Plan and everything that makes one: files, flags, forms.
+
+The dataclasses and the table of fields are in `app.choices`, the file format in `app.plan_file`; other modules import
+them from here.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import replace
+
+from app.choices import (
+    DEFAULT_PLAN,
+    PLAN_FIELDS,
+    TARGETS,
+    CloudChoice,
+    Entry,
+    Plan,
+    PlanError,
+    PlanField,
+    SpeciesChoice,
+    TargetChoice,
+    TrapChoice,
+)
+from app.plan_file import FORMAT, build_plan, entries_of, parse_plan, read_plan
+from app.plan_saving import save_plan, write_plan
+
+__all__ = [
+    "DEFAULT_PLAN",
+    "FORMAT",
+    "PLAN_FIELDS",
+    "TARGETS",
+    "CloudChoice",
+    "Entry",
+    "Plan",
+    "PlanError",
+    "PlanField",
+    "SpeciesChoice",
+    "TargetChoice",
+    "TrapChoice",
+    "parse_plan",
+    "plan_with",
+    "read_plan",
+    "save_plan",
+    "write_plan",
+]
+
+
+def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: str | None = None) -> Plan:
+    """A plan with some entries replaced by texts, as a command line or a form gives them.
+
+    Parameters
+    ----------
+    plan : what the texts override; None: there is nothing yet, and all required entries must be among the texts
+    texts : dotted path of PLAN_FIELDS -> text; an empty text removes an optional entry
+    where : what errors call the place; by default the flag of each field
+
+    A new species drops what was said of the other one's state, spin states, scattering length and field; a scattering
+    length drops a field and the other way round; a target drops the other targets.
+
+    Raises
+    ------
+    PlanError
+        One sentence that names the flag, what was read and what is allowed.
+    """
+    entries = {} if plan is None else entries_of(plan)
+    before = dict(entries)
+    for path, text in texts.items():
+        if path not in PLAN_FIELDS:
+            raise KeyError(f"{path} is not a field of a plan")
+        entries.pop(path, None)
+        if text.strip():
+            entries[path] = text
+    for path, text in texts.items():
+        if not text.strip() or (path == "species.key" and _same_species(before.get(path), text)):
+            continue
+        for other in PLAN_FIELDS[path].excludes:
+            if not texts.get(other, "").strip():
+                entries.pop(other, None)
+    changed = build_plan(entries, lambda field: where or field.flag)
+    return changed if plan is None else replace(changed, unused=plan.unused, source=plan.source)
+
+
+def _same_species(before: object, text: str) -> bool:
+    from physics.species import load_species
+
+    try:
+        return load_species(text).key == before
+    except ValueError:  # reported when the entry is read
+        return False

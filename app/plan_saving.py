@@ -1,0 +1,142 @@
+"""Writing plans: what did not change stays as it stands in the file, byte for byte, comments included."""
+
+from __future__ import annotations
+
+import contextlib
+import os
+import re
+import secrets
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from app.choices import PLAN_FIELDS, Plan, PlanError, PlanField
+from app.plan_file import FORMAT, entries_of, parse_plan
+from app.units import Quantity
+
+if TYPE_CHECKING:
+    from enum import Enum
+
+    from tomlkit import TOMLDocument
+
+_BARE_NUMBER = re.compile(r"-?(0|[1-9][0-9]*)(\.[0-9]+)?([eE][+-]?[0-9]+)?")
+
+
+def write_plan(plan: Plan, previous_text: str | None = None) -> str:
+    """The text of a plan file.
+
+    previous_text : the file as it was; by default the one that the plan came from. Its comments, its layout and the
+        sections that this version does not use are kept, and so is every entry whose meaning did not change.
+    """
+    import tomlkit
+
+    previous = plan.source if previous_text is None else previous_text
+    previous = previous.removeprefix("\ufeff")
+    if previous.strip():
+        old = entries_of(parse_plan(previous, "the file as it was"))
+        document = tomlkit.parse(previous)
+    else:
+        old = {}
+        document = tomlkit.document()
+        document["coldward"] = FORMAT
+    new = entries_of(plan)
+    for path, field in PLAN_FIELDS.items():
+        if _written(old.get(path)) == _written(new.get(path)):
+            continue
+        if path in new:
+            _put(document, field, new[path])
+        else:
+            _drop(document, field)
+    return tomlkit.dumps(document)
+
+
+def _written(entry: object) -> object:
+    """What an entry says in the file: two quantities are the same when their texts are."""
+    if isinstance(entry, tuple):
+        return tuple(_written(part) for part in entry)
+    return entry.text if isinstance(entry, Quantity) else entry
+
+
+def _put(document: TOMLDocument, field: PlanField, entry: Any) -> None:
+    import tomlkit
+
+    table: Any = document
+    if field.section:
+        if field.section not in document:
+            document[field.section] = tomlkit.table()
+        table = document[field.section]
+    if isinstance(entry, tuple):
+        texts = [quantity.text for quantity in entry]
+        present = table.get(field.name)
+        if isinstance(present, list) and len(present) == len(texts):
+            for index, text in enumerate(texts):  # one by one: the list's own comments and line breaks stay
+                if present[index] != text:
+                    present[index] = text
+        else:
+            table[field.name] = texts
+        return
+    table[field.name] = _value(field, entry)
+
+
+def _value(field: PlanField, entry: Any) -> Any:
+    import tomlkit
+
+    if isinstance(entry, Quantity):
+        bare = field.section == "target" and _BARE_NUMBER.fullmatch(entry.text)
+        return tomlkit.value(entry.text) if bare else entry.text
+    if isinstance(entry, str | int):
+        return entry
+    choice: Enum = entry
+    return choice.value
+
+
+def _drop(document: TOMLDocument, field: PlanField) -> None:
+    table: Any = document[field.section] if field.section else document
+    table.remove(field.name)
+
+
+def save_plan(plan: Plan, path: str | os.PathLike[str], previous_text: str | None = None) -> str:
+    """Write a plan file as a whole or not at all, and return its text.
+
+    The new text goes to a file beside the old one, is flushed to the disk and then takes its place, with the old
+    file's permissions; a link stays a link.
+
+    Raises
+    ------
+    PlanError
+        The file could not be written; what was there is unchanged.
+    """
+    text = write_plan(plan, previous_text)
+    target = Path(os.path.realpath(path))
+    beside = target.with_name(f".{target.name}.{secrets.token_hex(4)}.part")
+    try:
+        if target.exists() and not os.access(target, os.W_OK):
+            raise PermissionError(0, "it is write-protected")
+        _write_through(beside, text.encode("utf-8"))
+        if target.exists():
+            os.chmod(beside, target.stat().st_mode & 0o7777)
+        os.replace(beside, target)
+    except OSError as error:
+        reason = error.strerror or str(error)
+        raise PlanError(f"{Path(path)} could not be written: {reason}; what was there is unchanged") from None
+    finally:
+        with contextlib.suppress(OSError):
+            beside.unlink(missing_ok=True)
+    _settle(target.parent)
+    return text
+
+
+def _write_through(path: Path, data: bytes) -> None:
+    with path.open("xb") as file:
+        file.write(data)
+        file.flush()
+        os.fsync(file.fileno())
+
+
+def _settle(folder: Path) -> None:
+    """Flush the folder's entry where the system can; the file itself is already safe."""
+    with contextlib.suppress(OSError, AttributeError):
+        handle = os.open(folder, os.O_RDONLY | os.O_DIRECTORY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)
