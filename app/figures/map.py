@@ -51,7 +51,7 @@ def map_picture(answer: MapAnswer, cloud: CloudAnswer) -> Picture:
         ),
         curves=(*(curve for curve, _labels in lines), *_thresholds(answer)),
         field=_boson_field(answer) if answer.bosons else _fermion_field(answer),
-        marks=(_cloud_mark(cloud),),
+        marks=(cloud_mark(cloud),),
         labels=tuple(labels),
         summary=verdict(cloud),
     )
@@ -150,7 +150,7 @@ def _thresholds(answer: MapAnswer) -> tuple[Curve, ...]:
     )
 
 
-def _cloud_mark(cloud: CloudAnswer) -> Mark:
+def cloud_mark(cloud: CloudAnswer) -> Mark:
     atoms, temperature = cloud.plan.cloud.atoms, cloud.plan.cloud.temperature
     outline = None
     if atoms.sigma or temperature.sigma:
