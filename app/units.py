@@ -129,7 +129,8 @@ def _resolve(unit: str) -> tuple[Decimal, frozenset[tuple[str, Decimal]]]:
     registry = _registry()
     parsed = registry.parse_units(expression)
     size, _ = registry.get_root_units(parsed)
-    return Decimal(str(size)), frozenset((str(name), Decimal(str(power))) for name, power in parsed.dimensionality.items())
+    dimension = frozenset((str(name), Decimal(str(power))) for name, power in parsed.dimensionality.items())
+    return Decimal(str(size)), dimension
 
 
 def _pint_text(unit: str) -> str:
