@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from typing import IO, Literal
+from typing import IO, Any, Literal
 
 import numpy as np
 from matplotlib import rc_context
@@ -18,10 +18,10 @@ from matplotlib.figure import Figure
 from matplotlib.font_manager import FontProperties
 from matplotlib.image import AxesImage
 from matplotlib.lines import Line2D
+from matplotlib.markers import TICKDOWN, TICKLEFT, TICKRIGHT
 from matplotlib.patheffects import withStroke
 from matplotlib.text import Text
 from matplotlib.textpath import TextToPath
-from matplotlib.ticker import FixedFormatter, FixedLocator, NullLocator
 
 from app.figures.labels import place_labels
 from app.figures.picture import Curve, Field, Picture, Role
@@ -202,27 +202,33 @@ def draw_frame(picture: Picture, axes: Axes, theme: Theme) -> Layout:
 
 
 def _draw_ticks(axes: Axes, theme: Theme, layout: Layout, with_grid: bool) -> None:
-    sides = ((axes.xaxis, layout.x_ticks, "x"), (axes.yaxis, layout.y_ticks, "y"))
-    for axis, ticks, side in sides:
-        axis.set_major_locator(FixedLocator(ticks.places))
-        axis.set_major_formatter(FixedFormatter(ticks.texts))
-        axis.set_minor_locator(NullLocator())
-        axis.set_tick_params(
-            length=TICK, width=0.8, pad=TICK_GAP, color=theme.muted, labelcolor=theme.foreground, labelsize=theme.small_size
-        )
-        # one line of marks: Matplotlib's own minor ticks cost half of the drawing
-        zeros = np.zeros(len(ticks.minor))
-        xy = (ticks.minor, zeros) if side == "x" else (zeros, ticks.minor)
-        transform = axes.get_xaxis_transform() if side == "x" else axes.get_yaxis_transform()
-        axes.add_artist(
-            Line2D(
-                *xy, linestyle="", marker=3 if side == "x" else 0, markersize=MINOR_TICK, markeredgewidth=0.6,
-                color=theme.muted, transform=transform, clip_on=False,
-            )
-        )  # fmt: skip
+    """Ticks as a few artists of our own: Matplotlib's, five artists a tick, cost more than all the rest."""
+    axes.xaxis.set_visible(False)
+    axes.yaxis.set_visible(False)
+    below, beside = axes.get_xaxis_transform(), axes.get_yaxis_transform()
+    away = TICK + TICK_GAP
+    for place, text in zip(layout.x_ticks.places, layout.x_ticks.texts, strict=True):
+        _write(axes, place, -(away + 0.5 * theme.small_size * LINE) / layout.height, text, theme.small_size, theme,
+               transform=below, ha="center")  # fmt: skip
+    for place, text in zip(layout.y_ticks.places, layout.y_ticks.texts, strict=True):
+        _write(axes, -away / layout.width, place, text, theme.small_size, theme, transform=beside, ha="right")
+    for length, width, x_places, y_places in (
+        (TICK, 0.8, layout.x_ticks.places, layout.y_ticks.places),
+        (MINOR_TICK, 0.6, layout.x_ticks.minor, layout.y_ticks.minor),
+    ):
+        style = {"linestyle": "", "markersize": length, "markeredgewidth": width, "color": theme.muted, "clip_on": False}
+        axes.add_artist(Line2D(x_places, [0.0] * len(x_places), marker=TICKDOWN, transform=below, **style))
+        axes.add_artist(Line2D([0.0] * len(y_places), y_places, marker=TICKLEFT, transform=beside, **style))
     if with_grid:
-        axes.grid(True, color=theme.grid, linewidth=0.7)
-        axes.set_axisbelow(True)
+        grid = {"color": theme.grid, "linewidth": 0.7, "zorder": 0.6, "solid_capstyle": "butt"}
+        axes.add_artist(Line2D(*_rules(layout.x_ticks.places), transform=below, **grid))
+        axes.add_artist(Line2D(*reversed(_rules(layout.y_ticks.places)), transform=beside, **grid))
+
+
+def _rules(places: Sequence[float]) -> tuple[list[float], list[float]]:
+    """Lines across the axes at these places, as one broken line: places, and 0 to 1 across."""
+    along = [value for place in places for value in (place, place, np.nan)]
+    return along, [0.0, 1.0, np.nan] * len(places)
 
 
 def _write_axis_titles(picture: Picture, axes: Axes, theme: Theme, layout: Layout) -> None:
@@ -230,11 +236,14 @@ def _write_axis_titles(picture: Picture, axes: Axes, theme: Theme, layout: Layou
     x_offset = -(TICK + TICK_GAP + theme.small_size * LINE + 0.5 * line + 1.0)
     lines = 1 + layout.y_title.count("\n")
     y_offset = TICK + 2 * TICK_GAP + _widest(layout.y_ticks.texts, theme.small_size) + 0.5 * lines * line
-    style = {"size": theme.font_size, "color": theme.foreground}
-    axes.text(0.5, x_offset / layout.height, axis_title(picture.x), transform=axes.transAxes, ha="center",
-              va="center_baseline", **style)  # fmt: skip
-    axes.text(-y_offset / layout.width, 0.5, layout.y_title, transform=axes.transAxes, rotation="vertical",
-              ha="center", va="center", multialignment="center", **style)  # fmt: skip
+    _write(axes, 0.5, x_offset / layout.height, axis_title(picture.x), theme.font_size, theme, ha="center")
+    _write(axes, -y_offset / layout.width, 0.5, layout.y_title, theme.font_size, theme, ha="center", va="center",
+           rotation="vertical", multialignment="center")  # fmt: skip
+
+
+def _write(axes: Axes, x: float, y: float, text: str, size: float, theme: Theme, **style: Any) -> Text:
+    style = {"transform": axes.transAxes, "va": "center_baseline", "color": theme.foreground} | style
+    return axes.text(x, y, text, size=size, **style)
 
 
 def _draw_entry(figure: Figure, theme: Theme, entry: LegendEntry, x: float, y: float) -> None:
@@ -262,18 +271,20 @@ def _draw_colour_bar(field: Field, figure: Figure, theme: Theme, layout: Layout)
     )  # fmt: skip
     for spine in bar.spines.values():
         spine.set(color=theme.muted, linewidth=0.8)
-    bar.xaxis.set_major_locator(NullLocator())
-    bar.yaxis.tick_right()
-    bar.yaxis.set_major_locator(FixedLocator([place for place, _ in field.ticks]))
-    bar.yaxis.set_major_formatter(FixedFormatter([text for _, text in field.ticks]))
-    bar.tick_params(length=TICK, width=0.8, pad=TICK_GAP, color=theme.muted, labelcolor=theme.foreground,
-                    labelsize=theme.small_size)  # fmt: skip
+    bar.xaxis.set_visible(False)
+    bar.yaxis.set_visible(False)
+    places = [place for place, _ in field.ticks]
+    bar.add_artist(
+        Line2D([1.0] * len(places), places, linestyle="", marker=TICKRIGHT, markersize=TICK, markeredgewidth=0.8,
+               color=theme.muted, clip_on=False)
+    )  # fmt: skip
+    for place, text in field.ticks:
+        _write(bar, 1.0 + (TICK + TICK_GAP) / BAR_WIDTH, place, text, theme.small_size, theme, ha="left")
     if 0.0 < field.split < 1.0:
         bar.axhline(field.split, color=theme.lines[Role.THRESHOLD].colour, linewidth=1.4)
     room = _bar_room(field, theme)
     x = (room - BAR_GAP - PAD - 0.5 * theme.font_size * LINE) / BAR_WIDTH
-    bar.text(x, 0.5, field.bar_label, transform=bar.transAxes, rotation="vertical", ha="center", va="center",
-             size=theme.font_size, color=theme.foreground)  # fmt: skip
+    _write(bar, x, 0.5, field.bar_label, theme.font_size, theme, rotation="vertical", ha="center", va="center")
 
 
 # --------------------------------------------------------------------------- data
@@ -328,12 +339,14 @@ def field_edges(picture: Picture, field: Field) -> tuple[float, float, float, fl
 
 def field_colours(field: Field, theme: Theme) -> np.ndarray[tuple[int, ...], np.dtype[np.uint8]]:
     """RGBA of each cell, shape (rows, columns, 4); the background where the shade is NaN."""
-    known = np.isfinite(field.shade)
-    place = np.where(known, field.shade, 0.0)
-    colours = colour_scale(theme, field.split)[np.clip(place * 255.0 + 0.5, 0.0, 255.0).astype(np.uint8)]
-    if not known.all():
-        colours[~known] = [*bytes.fromhex(theme.background[1:]), 255]
-    return colours
+    # a NaN stays behind as whatever the cast makes of it, and is painted over below
+    with np.errstate(invalid="ignore"):
+        row = np.clip(field.shade * 255.0 + 0.5, 0.0, 255.0).astype(np.uint8)
+    colours = colour_scale(theme, field.split).view(np.uint32).ravel()[row]
+    unknown = np.isnan(field.shade)
+    if unknown.any():
+        colours[unknown] = np.frombuffer(bytes.fromhex(theme.background[1:] + "ff"), dtype=np.uint32)
+    return colours.view(np.uint8).reshape(*row.shape, 4)
 
 
 def style_line(line: Line2D, style: LineStyle) -> None:

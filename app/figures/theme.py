@@ -162,7 +162,7 @@ LIGHT = Theme(
     halo="#ffffff",
     far_below=(67.0, -7.0, -26.0),
     threshold=(97.5, -0.5, 2.0),
-    far_above=(70.0, 20.0, 46.0),
+    far_above=(72.0, 18.0, 40.0),
     lines=_lines(
         ink="#20252b", quiet="#6b727c", blue="#1f57a8", orange="#b24a14", green="#0d7557", purple="#82338f",
         cloud="#93063f",
@@ -186,7 +186,7 @@ DARK = Theme(
     halo="#15181b",
     far_below=(45.0, -4.0, -32.0),
     threshold=(12.0, 0.0, -1.0),
-    far_above=(46.0, 22.0, 42.0),
+    far_above=(45.0, 20.0, 34.0),
     lines=_lines(
         ink="#eceef0", quiet="#9aa2ac", blue="#7db4ff", orange="#f2a065", green="#63d1a8", purple="#d59be2",
         cloud="#ffb3cf",

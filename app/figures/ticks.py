@@ -7,6 +7,8 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from functools import lru_cache
+from itertools import pairwise
 from typing import overload
 
 import numpy as np
@@ -35,10 +37,12 @@ def to_drawing(axis: Axis, values: float | Array) -> float | Array:
     """Drawing units of data. Along a logarithmic axis values that are not positive have no place: NaN."""
     if not axis.log:
         return values
+    if isinstance(values, float | int):
+        return math.log10(values) if 0.0 < values < math.inf else math.nan
     with np.errstate(divide="ignore", invalid="ignore"):
         logs = np.log10(values)
-    logs = np.where(np.isfinite(logs), logs, np.nan)
-    return float(logs) if np.ndim(values) == 0 else logs
+    logs[np.isinf(logs)] = np.nan
+    return logs
 
 
 def to_data(axis: Axis, place: float) -> float:
@@ -46,6 +50,7 @@ def to_data(axis: Axis, place: float) -> float:
     return float(10.0**place) if axis.log else place
 
 
+@lru_cache(maxsize=64)
 def span(axis: Axis) -> tuple[float, float]:
     """Both ends of the axis in drawing units."""
     return to_drawing(axis, axis.low), to_drawing(axis, axis.high)
@@ -73,13 +78,12 @@ def _decades(axis: Axis, low: float, high: float, most: int) -> Ticks:
         step = 3 * math.ceil(step / 3)  # whole prefixes: 1 nK, 1 µK, 1 mK
     exponents = [e for e in range(first, last + 1) if e % step == 0]
     inner = [e + math.log10(k) for e in range(first - 1, last + 1) for k in range(2, 10)]
+    labelled = [float(e) for e in exponents]
     if step == 1 and 3 * len(exponents) <= most and len(exponents) <= 3:
-        labelled = sorted([*map(float, exponents), *(e + math.log10(k) for e in range(first - 1, last + 1) for k in (2, 5))])
-    else:
-        labelled = [float(e) for e in exponents]
+        labelled += [e + math.log10(k) for e in range(first - 1, last + 1) for k in (2, 5)]
     if step > 1:
         inner = [float(e) for e in range(first, last + 1) if e % step]
-    places = tuple(p for p in labelled if low - _SLACK <= p <= high + _SLACK)
+    places = tuple(p for p in sorted(labelled) if low - _SLACK <= p <= high + _SLACK)
     minor = tuple(p for p in inner if low < p < high and p not in places)
     return Ticks(places=places, texts=_texts(axis, [10.0**p for p in places]), minor=minor)
 
@@ -100,9 +104,9 @@ def _texts(axis: Axis, values: list[float]) -> tuple[str, ...]:
         shared = None if axis.log else _prefix_exponent(largest)
         return tuple(prefixed(v, axis.unit, shared) for v in values)
     if axis.log:
-        plain = 9.9e-4 < min(values) and largest < 1.01e4
+        plain = min(values) > 9.9e-4 and largest < 1.01e4
         return tuple(f"{v:.6g}" if plain else power_text(v) for v in values)
-    step = min((b - a for a, b in zip(values, values[1:], strict=False)), default=largest)
+    step = min((b - a for a, b in pairwise(values)), default=largest)
     if largest >= 1e5 or largest < 1e-3:
         return tuple(power_text(v, digits=_digits_between(v, step)) for v in values)
     places = max(0, -math.floor(math.log10(step) + _SLACK)) if step > 0.0 else 0

@@ -131,9 +131,9 @@ class LiveLayer:
         context.set_joinstyle("round")
         context.set_capstyle("butt")
         context.set_foreground(self._theme.halo if halo else style.colour)
-        context.set_linewidth((style.width + (HALO_WIDTH if halo else 0.0)) * self._scale)
+        context.set_linewidth(style.width + (HALO_WIDTH if halo else 0.0))  # in points, as the renderer wants it
         if style.dash and not halo:
-            context.set_dashes(0.0, [length * self._scale for length in style.dash])
+            context.set_dashes(0.0, list(style.dash))
         return context
 
     def _draw_curve(self, picture: Picture, curve: Curve, to_pixels: Affine2D, on_field: bool) -> None:
@@ -152,7 +152,7 @@ class LiveLayer:
         context = self._renderer.new_gc()
         context.set_clip_rectangle(self.box)
         context.set_foreground(self._theme.halo)
-        context.set_linewidth(MARK_EDGE * self._scale)
+        context.set_linewidth(MARK_EDGE)
         where = shape.get_transform().scale(size).translate(*place)
         self._renderer.draw_path(context, shape.get_path(), where, _rgb(style.colour))
 
@@ -183,7 +183,7 @@ class LiveLayer:
     def _draw_spines(self) -> None:
         context = self._renderer.new_gc()
         context.set_foreground(self._theme.muted)
-        context.set_linewidth(0.8 * self._scale)
+        context.set_linewidth(0.8)
         context.set_joinstyle("miter")
         context.set_snap(True)
         b = self.box
