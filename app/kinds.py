@@ -93,9 +93,7 @@ DEPTH = Kind(
     high=boltzmann * 10.0,
     example="5 µK",
 )
-FREQUENCY = Kind(
-    name="trap frequency", si_unit="Hz", units=("Hz", "kHz", "MHz"), low=1e-3, high=1e8, example="120 Hz"
-)
+FREQUENCY = Kind(name="trap frequency", si_unit="Hz", units=("Hz", "kHz", "MHz"), low=1e-3, high=1e8, example="120 Hz")
 ATOM_NUMBER = Kind(name="atom number", si_unit="", units=("",), low=1.0, high=1e15, example="1.0e5")
 SCATTERING_LENGTH = Kind(
     name="scattering length", si_unit="m", units=("a0", "nm"), low=-1e-4, high=1e-4, example="100.4 a0"

@@ -163,7 +163,7 @@ def _mantissa(run: str, decimal_comma: bool) -> str:
 
 
 def _bracket_sigma(digits: str, decimals: int, whole: str, decimal_comma: bool) -> Decimal:
-    """"(5)" counts in the last place of the number; "(1.2)" is the uncertainty itself, to the same place."""
+    """A "(5)" counts in the last place of the number; "(1.2)" is the uncertainty itself, to the same place."""
     if digits.isdigit():
         return Decimal(digits).scaleb(-decimals, _EXACT)
     plain = _mantissa(digits, decimal_comma)

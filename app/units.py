@@ -14,25 +14,20 @@ from __future__ import annotations
 import difflib
 import math
 import re
-from collections.abc import Iterable
 from dataclasses import dataclass
 from decimal import ROUND_CEILING, ROUND_FLOOR, Context, Decimal
 from functools import lru_cache
-from pathlib import Path
-from typing import TYPE_CHECKING
 
 from app.kinds import (
     ATOM_NUMBER,
     DEPTH,
     DIMENSIONLESS,
     EFFICIENCY,
-    EVERYDAY,
     FREQUENCY,
     MAGNETIC_FIELD,
     PHASE_SPACE_DENSITY,
     REDUCED_TEMPERATURE,
     SCATTERING_LENGTH,
-    STAND_INS,
     TEMPERATURE,
     Kind,
 )
@@ -45,9 +40,7 @@ from app.number_text import (
     sigma_place,
     write_number,
 )
-
-if TYPE_CHECKING:
-    import pint
+from app.unit_text import QuantityError, best_unit, exact_factor, factor, normal_unit
 
 __all__ = [
     "ATOM_NUMBER",
@@ -77,15 +70,6 @@ __all__ = [
 _WIDE = Context(prec=60)
 _ODD_SPACES = "\t\u00a0\u2007\u2009\u202f"  # between number and unit they do no harm; between digits they are refused
 _TWO_PI = re.compile(r"2\s*(?:pi|π)\s*[x×*·]\s*", re.IGNORECASE)
-_SYMBOL = r"(?:[^\W\d_]|[µμÅ])(?:[^\W_]|_)*"
-_SUPERSCRIPTS = str.maketrans("⁺⁻⁰¹²³⁴⁵⁶⁷⁸⁹", "+-0123456789")
-_UNIT_TOKEN = re.compile(
-    rf"\s*(?P<join>[*·×/]?)\s*(?P<symbol>{_SYMBOL})(?:(?:\^|\*\*)(?P<power>-?[0-9])|(?P<raised>⁻?[⁰¹²³⁴⁵⁶⁷⁸⁹]))?"
-)
-
-
-class QuantityError(ValueError):
-    """A text that is not a quantity of the kind asked for. The message is one sentence for the person who wrote it."""
 
 
 @dataclass(frozen=True)
@@ -100,99 +84,6 @@ class Quantity:
     text: str
     value: float
     sigma: float | None = None
-
-
-# --- units -----------------------------------------------------------------------------------------------------------
-
-
-@lru_cache(maxsize=1)
-def _registry() -> pint.UnitRegistry[Decimal]:
-    import pint
-
-    return pint.UnitRegistry(str(Path(__file__).with_name("units.txt")), non_int_type=Decimal, cache_folder=None)
-
-
-def _normal_unit(unit: str) -> str:
-    """One spelling for each unit text: micro sign U+00B5, no spaces around signs, ^ for powers."""
-    unit = unit.strip().replace("μ", "µ").replace("Å", "Å").replace("**", "^")
-    if unit in EVERYDAY:
-        return unit
-    if unit.startswith("u") and "µ" + unit[1:] in EVERYDAY and len(unit) > 1:
-        return "µ" + unit[1:]
-    return unit
-
-
-@lru_cache(maxsize=512)
-def _resolve(unit: str) -> tuple[Decimal, frozenset[tuple[str, Decimal]]]:
-    """SI factor and dimension of any unit text that the registry knows."""
-    expression = _pint_text(unit)
-    registry = _registry()
-    parsed = registry.parse_units(expression)
-    size, _ = registry.get_root_units(parsed)
-    dimension = frozenset((str(name), Decimal(str(power))) for name, power in parsed.dimensionality.items())
-    return Decimal(str(size)), dimension
-
-
-def _pint_text(unit: str) -> str:
-    """The unit text in pint's spelling, each symbol checked; nothing but symbols, powers, products and quotients."""
-    if unit in ("", "1"):
-        return "dimensionless"
-    rest = unit
-    words: list[str] = []
-    leading = re.match(r"1\s*(?=/)", rest)
-    if leading is not None:
-        words.append("1")
-        rest = rest[leading.end() :]
-    while rest:
-        token = _UNIT_TOKEN.match(rest)
-        if token is None or (token["join"] and not words):
-            raise QuantityError(f'"{unit}" is not a unit')
-        symbol = token["symbol"]
-        if not _registry().parse_unit_name(symbol):
-            raise QuantityError(f'"{symbol}" is not a unit that is known here')
-        power = token["power"] or (token["raised"] or "").translate(_SUPERSCRIPTS)
-        join = "/" if token["join"] == "/" else "*"
-        words.append((join if words else "") + symbol + (f"**({power})" if power else ""))
-        rest = rest[token.end() :].rstrip()
-    return "".join(words)
-
-
-@lru_cache(maxsize=1024)
-def _exact_factor(unit: str, si_unit: str | None = None) -> Decimal:
-    """How many `si_unit` one `unit` is, stand-ins included (K for J ...); without `si_unit`, the unit's own SI unit.
-    QuantityError where it does not fit."""
-    unit = _normal_unit(unit)
-    everyday = EVERYDAY.get(unit)
-    if si_unit is None:
-        return everyday[0] if everyday is not None else _resolve(unit)[0]
-    for meaning, scale in ((si_unit, Decimal(1)), *STAND_INS.get(si_unit, ())):
-        if everyday is not None:
-            if everyday[1] == meaning:
-                return _WIDE.multiply(everyday[0], scale)
-        elif (resolved := _resolve(unit))[1] == _resolve(meaning)[1]:
-            return _WIDE.multiply(resolved[0], scale)
-    raise QuantityError(f'"{unit}" is not a unit of a quantity in "{si_unit}"')
-
-
-def factor(unit: str, si_unit: str | None = None) -> float:
-    """SI factor of a unit text: factor("µK") == 1e-06. With `si_unit`, what the unit stands for in it:
-    factor("kHz", "K") is h/k times 1000 Hz. QuantityError for unknown units and those that do not fit."""
-    return float(_exact_factor(unit, si_unit))
-
-
-def best_unit(value: float, units: Iterable[str], si_unit: str | None = None) -> str:
-    """The unit, among those of the dimension of the first, that reads best: 1.46e-7 K is 146 nK, not 0.146 µK.
-
-    value : in `si_unit`; without one, in the SI unit of the first of `units`. NaN and 0 get the first.
-    """
-    choices = tuple(units)
-    if not math.isfinite(value) or value == 0.0:
-        return choices[0]
-    dimensions = {u: EVERYDAY[_normal_unit(u)][1] if _normal_unit(u) in EVERYDAY else "" for u in choices}
-    alike = [u for u in choices if dimensions[u] == dimensions[choices[0]]]
-    by_size = sorted(alike, key=lambda u: factor(u, si_unit))
-    fitting = [u for u in by_size if abs(value) >= 0.9995 * factor(u, si_unit)]
-    return fitting[-1] if fitting else by_size[0]
 
 
 # --- reading ---------------------------------------------------------------------------------------------------------
@@ -214,7 +105,7 @@ def read_quantity(text: str, kind: Kind, *, decimal_comma: bool = False) -> Quan
         One sentence: what is wrong, what was read, what may be typed.
     """
     number, unit = _parts(text, kind, decimal_comma)
-    scale = _exact_factor(unit, kind.si_unit)
+    scale = exact_factor(unit, kind.si_unit)
     value = float(_WIDE.multiply(number.value, scale))
     sigma = None if number.sigma is None else float(_WIDE.multiply(number.sigma, scale))
     vanished = value == 0.0 and not number.value.is_zero()
@@ -254,7 +145,7 @@ def _check_unit(unit: str, kind: Kind, example: str) -> None:
     if re.match(r"rad\b|rad/", unit):
         raise QuantityError(f'angular frequencies are not read: divide by 2π and type for instance "{example}"')
     try:
-        _exact_factor(unit, kind.si_unit)
+        exact_factor(unit, kind.si_unit)
     except QuantityError:
         allowed = ", ".join(kind.units)
         near = difflib.get_close_matches(unit.casefold(), [u.casefold() for u in kind.units], n=1, cutoff=0.6)
@@ -283,7 +174,7 @@ def localised(text: str, *, decimal_comma: bool) -> str:
 
 def unit_of(text: str, kind: Kind, *, decimal_comma: bool = False) -> str:
     """The unit a text is written in, in its usual spelling; QuantityError where the text cannot be read."""
-    return _normal_unit(_parts(text, kind, decimal_comma)[1])
+    return normal_unit(_parts(text, kind, decimal_comma)[1])
 
 
 # --- writing ---------------------------------------------------------------------------------------------------------
@@ -312,7 +203,7 @@ def format_quantity(
 
 
 def _in_unit(value: float, sigma: float | None, unit: str, si_unit: str | None) -> tuple[Decimal, Decimal | None]:
-    scale = _exact_factor(unit, si_unit)
+    scale = exact_factor(unit, si_unit)
     spread = None if sigma is None or not math.isfinite(sigma) else _WIDE.divide(Decimal(repr(float(sigma))), scale)
     return _WIDE.divide(Decimal(repr(float(value))), scale), spread
 
@@ -351,7 +242,7 @@ def exact_text(value: float, unit: str, sigma: float | None = None, *, kind: Kin
 
 def _read_back(text: str, kind: Kind) -> tuple[float, float | None]:
     number, unit = read_number(text)
-    scale = _exact_factor(unit, kind.si_unit)
+    scale = exact_factor(unit, kind.si_unit)
     sigma = None if number.sigma is None else float(_WIDE.multiply(number.sigma, scale))
     return float(_WIDE.multiply(number.value, scale)), sigma
 
@@ -380,7 +271,7 @@ def step(text: str, steps: int, kind: Kind, *, coarse: bool = False, decimal_com
     for _ in range(abs(steps)):
         size = _next_rung(size, outward, coarse)
     value = size.copy_sign(number.value)
-    if not kind.low <= float(_WIDE.multiply(value, _exact_factor(unit, kind.si_unit))) <= kind.high:
+    if not kind.low <= float(_WIDE.multiply(value, exact_factor(unit, kind.si_unit))) <= kind.high:
         return text
     sigma = number.sigma
     decimals = max(_places(value), _places(sigma) if sigma else -99)
