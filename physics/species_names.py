@@ -29,7 +29,7 @@ def suggest(key: str, known: list[str]) -> str:
     """End of a sentence that names the isotopes of the same element, else the keys that look most alike."""
     symbol = re.sub(r"[^a-z]", "", key.casefold().replace("metastable", ""))
     same_element = [name for name in known if re.fullmatch(rf"\d+{symbol}(_metastable)?", name, re.IGNORECASE)]
-    nearest = same_element or nearest_first(plain_key(key), known)[:3]
+    nearest = nearest_first(plain_key(key), same_element or known)[:3]
     return "the nearest are " + ", ".join(nearest) if len(nearest) > 1 else f"the nearest is {nearest[0]}"
 
 
