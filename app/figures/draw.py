@@ -7,7 +7,6 @@ pyplot: figures are made directly, so that nothing is kept behind the caller's b
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from functools import lru_cache
 from typing import IO, Any, Literal
 
@@ -18,157 +17,54 @@ from matplotlib.figure import Figure
 from matplotlib.font_manager import FontProperties
 from matplotlib.image import AxesImage
 from matplotlib.lines import Line2D
-from matplotlib.markers import TICKDOWN, TICKLEFT, TICKRIGHT
+from matplotlib.markers import TICKDOWN, TICKLEFT, TICKRIGHT, MarkerStyle
 from matplotlib.patheffects import withStroke
 from matplotlib.text import Text
 from matplotlib.textpath import TextToPath
 
 from app.figures.labels import place_labels
+from app.figures.layout import (
+    BAR_GAP,
+    BAR_WIDTH,
+    LINE,
+    MINOR_TICK,
+    PAD,
+    SAMPLE,
+    SAMPLE_GAP,
+    TICK,
+    TICK_GAP,
+    Layout,
+    LegendEntry,
+    bar_room,
+    lay_out,
+    note_place,
+    shortened,
+    widest,
+)
 from app.figures.picture import Curve, Field, Picture, Role
 from app.figures.theme import LIGHT, LineStyle, Theme, colour_scale
-from app.figures.ticks import Ticks, axis_title, span, ticks_of, to_drawing
+from app.figures.ticks import axis_title, span, to_drawing
 
 Format = Literal["png", "svg", "pdf"]
 
-PAD = 6.0
-LINE = 1.45  # line height over type size
-TICK, TICK_GAP = 3.5, 3.0
-MINOR_TICK = 2.0
-BAR_GAP, BAR_WIDTH = 10.0, 9.0
-SAMPLE, SAMPLE_GAP, ENTRY_GAP = 24.0, 5.0, 14.0  # of the legend
 HALO_WIDTH = 2.2
 MARK_SIZE, DRAGGABLE_SIZE, MARK_EDGE = 6.0, 9.0, 1.2
-SMALLEST = 24.0  # of the axes; below it the surroundings give way
 MM_PER_INCH = 25.4
+LEAST_PAGE = 40, 30  # of one picture [mm]
 
-
-@dataclass(frozen=True)
-class LegendEntry:
-    name: str
-    role: Role
-    is_mark: bool
-
-
-def legend_entries(picture: Picture) -> tuple[LegendEntry, ...]:
-    """What the legend names, each once: curves, then marks and their outlines."""
-    outlines = [mark.outline for mark in picture.marks if mark.outline is not None]
-    entries = [LegendEntry(c.name, c.role, False) for c in (*picture.curves, *outlines) if c.name]
-    entries += [LegendEntry(mark.name, mark.role, True) for mark in picture.marks if mark.name]
-    return tuple(dict.fromkeys(entries))
+# nothing that changes from one writing to the next
+_STAMPS: dict[str, dict[str, str | None]] = {
+    "png": {"Software": "Coldward"},
+    "svg": {"Date": None, "Creator": "Coldward"},
+    "pdf": {"CreationDate": None, "Creator": "Coldward", "Producer": "Coldward"},
+}
 
 
 @lru_cache(maxsize=4096)
 def text_size(text: str, size: float) -> tuple[float, float]:
     """Width and line height of a text [pt], the same for every output."""
-    width, _, _ = TextToPath().get_text_width_height_descent(text, FontProperties(size=size), ismath=False)  # type: ignore[no-untyped-call]
+    width, _, _ = TextToPath().get_text_width_height_descent(text, FontProperties(size=size), ismath=False)
     return float(width), size * LINE
-
-
-def shortened(text: str, size: float, width: float) -> str:
-    """The text, its end cut off with an ellipsis where it is wider than `width` [pt]."""
-    if text_size(text, size)[0] <= width:
-        return text
-    while text and text_size(text + "…", size)[0] > width:
-        text = text[:-1]
-    return text.rstrip() + "…" if text else ""
-
-
-# --------------------------------------------------------------------------- layout
-
-
-@dataclass(frozen=True, kw_only=True)
-class Layout:
-    """Places [pt] from the lower left corner of the figure: axes (left, bottom, width, height), rows of the legend."""
-
-    left: float
-    bottom: float
-    width: float
-    height: float
-    title_left: float
-    right_end: float
-    title_y: float | None
-    legend: tuple[tuple[LegendEntry, float, float], ...]
-    x_ticks: Ticks
-    y_ticks: Ticks
-    y_title: str
-
-
-def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, float]) -> Layout:
-    """Fits axes and all around them into `room` (left, bottom, width, height) [pt]."""
-    left, bottom, width, height = room
-    line = theme.font_size * LINE
-    below = PAD + line + TICK_GAP + theme.small_size * LINE + TICK
-    entries = legend_entries(picture)
-    title_height = theme.title_size * LINE + 2.0 if picture.title else 0.0
-    rows = _legend_rows(entries, theme, width - 2.0 * PAD)
-    if height - below - title_height - len(rows) * line < 4.0 * SMALLEST:
-        rows = ()
-    if height - below - title_height < 2.0 * SMALLEST:
-        title_height = 0.0
-    above = PAD + title_height + len(rows) * line + (4.0 if rows else 2.0)
-    inner_height = max(height - below - above, SMALLEST)
-    y_ticks = ticks_of(picture.y, max(2, int(inner_height / (2.6 * theme.small_size))))
-    y_title = _broken(axis_title(picture.y), theme.font_size, inner_height + 0.5 * above)
-    tick_width = _widest(y_ticks.texts, theme.small_size)
-    # whole steps of 4 pt: the axes do not twitch with each new tick text
-    before = 4.0 * np.ceil((PAD + (1 + y_title.count("\n")) * line + TICK_GAP + tick_width + TICK_GAP + TICK) / 4.0)
-    after = PAD + 12.0 if picture.field is None else _bar_room(picture.field, theme)
-    inner_width = max(width - before - after, SMALLEST)
-    x_ticks = _fitting_ticks(picture, theme, inner_width)
-    legend = []
-    y = bottom + height - PAD - title_height - 0.5 * line
-    for row in rows:
-        legend += [(entry, left + PAD + x, y) for entry, x in row]
-        y -= line
-    return Layout(
-        left=left + before, bottom=bottom + below, width=inner_width, height=inner_height,
-        title_left=left + PAD, right_end=left + width - PAD,
-        title_y=bottom + height - PAD - 0.5 * theme.title_size * LINE if title_height else None,
-        legend=tuple(legend), x_ticks=x_ticks, y_ticks=y_ticks, y_title=y_title,
-    )  # fmt: skip
-
-
-def _legend_rows(
-    entries: Sequence[LegendEntry], theme: Theme, width: float
-) -> tuple[tuple[tuple[LegendEntry, float], ...], ...]:
-    rows: list[list[tuple[LegendEntry, float]]] = []
-    x = np.inf
-    for entry in entries:
-        needed = SAMPLE + SAMPLE_GAP + text_size(entry.name, theme.small_size)[0]
-        if x + needed > width:
-            rows.append([])
-            x = 0.0
-        rows[-1].append((entry, x))
-        x += needed + ENTRY_GAP
-    return tuple(tuple(row) for row in rows)
-
-
-def _fitting_ticks(picture: Picture, theme: Theme, width: float) -> Ticks:
-    for most in (9, 8, 7, 6, 5, 4, 3, 2):
-        ticks = ticks_of(picture.x, most)
-        low, high = span(picture.x)
-        gaps = np.diff(ticks.places) * width / (high - low)
-        if not len(gaps) or gaps.min() >= _widest(ticks.texts, theme.small_size) + 8.0:
-            break
-    return ticks
-
-
-def _bar_room(field: Field, theme: Theme) -> float:
-    texts = _widest([text for _, text in field.ticks], theme.small_size)
-    return BAR_GAP + BAR_WIDTH + TICK + TICK_GAP + texts + TICK_GAP + theme.font_size * LINE + PAD
-
-
-def _widest(texts: Sequence[str], size: float) -> float:
-    return max((text_size(text, size)[0] for text in texts), default=0.0)
-
-
-def _broken(text: str, size: float, width: float) -> str:
-    """The text in two lines, broken at the space nearest to its middle, where it is wider than `width`."""
-    spaces = [i for i, c in enumerate(text) if c == " "]
-    if text_size(text, size)[0] <= width or not spaces:
-        return text
-    middle = min(spaces, key=lambda i: abs(i - len(text) / 2))
-    return text[:middle] + "\n" + text[middle + 1 :]
 
 
 # --------------------------------------------------------------------------- frame: all that is not data
@@ -180,8 +76,8 @@ def draw_frame(picture: Picture, axes: Axes, theme: Theme) -> Layout:
     assert isinstance(figure, Figure)
     page = np.array([*figure.get_size_inches(), *figure.get_size_inches()]) * 72.0
     room = axes.get_position(original=True).bounds * page
-    layout = lay_out(picture, theme, (room[0], room[1], room[2], room[3]))
-    axes.set_position(tuple(np.array([layout.left, layout.bottom, layout.width, layout.height]) / page))  # type: ignore[arg-type]
+    layout = lay_out(picture, theme, (room[0], room[1], room[2], room[3]), text_size)
+    axes.set_position(tuple(np.array([layout.left, layout.bottom, layout.width, layout.height]) / page))
     axes.set_facecolor(theme.background)
     axes.set_xlim(*span(picture.x))
     axes.set_ylim(*span(picture.y))
@@ -191,7 +87,7 @@ def draw_frame(picture: Picture, axes: Axes, theme: Theme) -> Layout:
     _draw_ticks(axes, theme, layout, with_grid=picture.field is None)
     _write_axis_titles(picture, axes, theme, layout)
     if layout.title_y is not None:
-        title = shortened(picture.title, theme.title_size, room[2] - 2.0 * PAD)
+        title = shortened(picture.title, theme.title_size, room[2] - 2.0 * PAD, text_size)
         place = ((room[0] + PAD) / page[0], layout.title_y / page[1])
         figure.text(*place, title, size=theme.title_size, weight="bold", color=theme.foreground, va="center_baseline")
     for entry, x, y in layout.legend:
@@ -216,11 +112,19 @@ def _draw_ticks(axes: Axes, theme: Theme, layout: Layout, with_grid: bool) -> No
         (TICK, 0.8, layout.x_ticks.places, layout.y_ticks.places),
         (MINOR_TICK, 0.6, layout.x_ticks.minor, layout.y_ticks.minor),
     ):
-        style = {"linestyle": "", "markersize": length, "markeredgewidth": width, "color": theme.muted, "clip_on": False}
-        axes.add_artist(Line2D(x_places, [0.0] * len(x_places), marker=TICKDOWN, transform=below, **style))
-        axes.add_artist(Line2D([0.0] * len(y_places), y_places, marker=TICKLEFT, transform=beside, **style))
+        style: dict[str, Any] = {
+            "linestyle": "",
+            "markersize": length,
+            "markeredgewidth": width,
+            "color": theme.muted,
+            "clip_on": False,
+        }
+        axes.add_artist(Line2D(x_places, [0.0] * len(x_places), marker=MarkerStyle(TICKDOWN), transform=below, **style))
+        axes.add_artist(
+            Line2D([0.0] * len(y_places), y_places, marker=MarkerStyle(TICKLEFT), transform=beside, **style)
+        )
     if with_grid:
-        grid = {"color": theme.grid, "linewidth": 0.7, "zorder": 0.6, "solid_capstyle": "butt"}
+        grid: dict[str, Any] = {"color": theme.grid, "linewidth": 0.7, "zorder": 0.6, "solid_capstyle": "butt"}
         axes.add_artist(Line2D(*_rules(layout.x_ticks.places), transform=below, **grid))
         axes.add_artist(Line2D(*reversed(_rules(layout.y_ticks.places)), transform=beside, **grid))
 
@@ -235,15 +139,15 @@ def _write_axis_titles(picture: Picture, axes: Axes, theme: Theme, layout: Layou
     line = theme.font_size * LINE
     x_offset = -(TICK + TICK_GAP + theme.small_size * LINE + 0.5 * line + 1.0)
     lines = 1 + layout.y_title.count("\n")
-    y_offset = TICK + 2 * TICK_GAP + _widest(layout.y_ticks.texts, theme.small_size) + 0.5 * lines * line
+    y_offset = TICK + 2 * TICK_GAP + widest(layout.y_ticks.texts, theme.small_size, text_size) + 0.5 * lines * line
     _write(axes, 0.5, x_offset / layout.height, axis_title(picture.x), theme.font_size, theme, ha="center")
     _write(axes, -y_offset / layout.width, 0.5, layout.y_title, theme.font_size, theme, ha="center", va="center",
            rotation="vertical", multialignment="center")  # fmt: skip
 
 
 def _write(axes: Axes, x: float, y: float, text: str, size: float, theme: Theme, **style: Any) -> Text:
-    style = {"transform": axes.transAxes, "va": "center_baseline", "color": theme.foreground} | style
-    return axes.text(x, y, text, size=size, **style)
+    usual: dict[str, Any] = {"transform": axes.transAxes, "va": "center_baseline", "color": theme.foreground}
+    return axes.text(x, y, text, size=size, **(usual | style))
 
 
 def _draw_entry(figure: Figure, theme: Theme, entry: LegendEntry, x: float, y: float) -> None:
@@ -263,7 +167,7 @@ def _draw_entry(figure: Figure, theme: Theme, entry: LegendEntry, x: float, y: f
 def _draw_colour_bar(field: Field, figure: Figure, theme: Theme, layout: Layout) -> None:
     page = np.array([*figure.get_size_inches(), *figure.get_size_inches()]) * 72.0
     bar = figure.add_axes(
-        tuple(np.array([layout.left + layout.width + BAR_GAP, layout.bottom, BAR_WIDTH, layout.height]) / page)  # type: ignore[arg-type]
+        tuple(np.array([layout.left + layout.width + BAR_GAP, layout.bottom, BAR_WIDTH, layout.height]) / page)
     )
     bar.imshow(
         colour_scale(theme, field.split)[:, np.newaxis], origin="lower", aspect="auto", extent=(0.0, 1.0, 0.0, 1.0),
@@ -275,14 +179,14 @@ def _draw_colour_bar(field: Field, figure: Figure, theme: Theme, layout: Layout)
     bar.yaxis.set_visible(False)
     places = [place for place, _ in field.ticks]
     bar.add_artist(
-        Line2D([1.0] * len(places), places, linestyle="", marker=TICKRIGHT, markersize=TICK, markeredgewidth=0.8,
-               color=theme.muted, clip_on=False)
+        Line2D([1.0] * len(places), places, linestyle="", marker=MarkerStyle(TICKRIGHT), markersize=TICK,
+               markeredgewidth=0.8, color=theme.muted, clip_on=False)
     )  # fmt: skip
     for place, text in field.ticks:
         _write(bar, 1.0 + (TICK + TICK_GAP) / BAR_WIDTH, place, text, theme.small_size, theme, ha="left")
     if 0.0 < field.split < 1.0:
         bar.axhline(field.split, color=theme.lines[Role.THRESHOLD].colour, linewidth=1.4)
-    room = _bar_room(field, theme)
+    room = bar_room(field, theme, text_size)
     x = (room - BAR_GAP - PAD - 0.5 * theme.font_size * LINE) / BAR_WIDTH
     _write(bar, x, 0.5, field.bar_label, theme.font_size, theme, rotation="vertical", ha="center", va="center")
 
@@ -306,7 +210,7 @@ def draw_picture(picture: Picture, axes: Axes, theme: Theme = LIGHT) -> None:
         _style_mark(point, theme.lines[mark.role], theme, DRAGGABLE_SIZE if mark.draggable else MARK_SIZE)
         axes.add_line(point)
     _draw_labels(picture, axes, theme, layout)
-    note, right, middle = note_place(picture, layout, theme, drawing_note(picture))
+    note, right, middle = note_place(picture, layout, theme, drawing_note(picture), text_size)
     if note:
         figure = axes.get_figure(root=True)
         assert isinstance(figure, Figure)
@@ -314,17 +218,6 @@ def draw_picture(picture: Picture, axes: Axes, theme: Theme = LIGHT) -> None:
         text = figure.text(right / width, middle / height, note, size=theme.small_size, color=theme.muted, ha="right",
                            va="center_baseline", zorder=7)  # fmt: skip
         _give_halo(text, theme)
-
-
-def note_place(picture: Picture, layout: Layout, theme: Theme, note: str) -> tuple[str, float, float]:
-    """The note as far as there is room for it, its right end and its middle [pt]: in the row of the title, or
-    in the lower right corner of the axes where the title has given way."""
-    if layout.title_y is None:
-        right, middle = layout.left + layout.width - PAD, layout.bottom + PAD + 0.5 * theme.small_size * LINE
-        return shortened(note, theme.small_size, layout.width - 2.0 * PAD), right, middle
-    # bold type is up to a fifth wider than what is measured
-    room = layout.right_end - layout.title_left - 1.2 * text_size(picture.title, theme.title_size)[0] - ENTRY_GAP
-    return shortened(note, theme.small_size, room), layout.right_end, layout.title_y
 
 
 def field_edges(picture: Picture, field: Field) -> tuple[float, float, float, float]:
@@ -396,8 +289,8 @@ def _draw_labels(picture: Picture, axes: Axes, theme: Theme, layout: Layout) -> 
         return text_size(text, theme.small_size)
 
     for label, x, y in place_labels(picture, layout.width, layout.height, measure):
-        text = axes.text(x / layout.width, y / layout.height, label.text, transform=axes.transAxes, ha="center",
-                         va="center_baseline", size=theme.small_size, color=theme.lines[label.role].colour, zorder=4)  # fmt: skip
+        text = _write(axes, x / layout.width, y / layout.height, label.text, theme.small_size, theme, ha="center",
+                      color=theme.lines[label.role].colour, zorder=4)  # fmt: skip
         _give_halo(text, theme)
 
 
@@ -422,27 +315,23 @@ def save_pictures(
     `size_mm` is the page's width and height, by default 150 x 110 a picture; `dpi` counts for PNG and for colour
     fields. Raises ValueError for an empty list, an unknown format or a page that is too small.
     """
-    if format not in ("png", "svg", "pdf"):
+    if format not in _STAMPS:
         raise ValueError(f"pictures are written as png, svg or pdf, got {format!r}")
     if not pictures:
         raise ValueError("there is no picture to write")
     columns = int(np.ceil(np.sqrt(len(pictures))))
     rows = int(np.ceil(len(pictures) / columns))
     width, height = size_mm if size_mm is not None else (150.0 * columns, 110.0 * rows)
-    if width < 40.0 * columns or height < 30.0 * rows:
+    least_width, least_height = LEAST_PAGE[0] * columns, LEAST_PAGE[1] * rows
+    if width < least_width or height < least_height:
+        needed = f"{len(pictures)} picture{'s need' if len(pictures) > 1 else ' needs'}"
         raise ValueError(
-            f"{len(pictures)} pictures need a page of at least {40 * columns} x {30 * rows} mm, got {width:g} x {height:g} mm"
+            f"{needed} a page of at least {least_width} x {least_height} mm, got {width:g} x {height:g} mm"
         )
     figure = Figure(figsize=(width / MM_PER_INCH, height / MM_PER_INCH), dpi=dpi, facecolor=theme.background)
     for i, picture in enumerate(pictures):
         row, column = divmod(i, columns)
         place = (column / columns, 1.0 - (row + 1) / rows, 1.0 / columns, 1.0 / rows)
         draw_picture(picture, figure.add_axes(place), theme)
-    stamp: dict[str, str | None] = {
-        "png": {"Software": "Coldward"},
-        "svg": {"Date": None, "Creator": "Coldward"},
-        "pdf": {"CreationDate": None, "Creator": "Coldward", "Producer": "Coldward"},
-    }[format]
     with rc_context({"svg.fonttype": "none", "svg.hashsalt": "coldward", "pdf.fonttype": 42}):
-        figure.savefig(target, format=format, dpi=dpi, facecolor=theme.background, metadata=stamp)
-
+        figure.savefig(target, format=format, dpi=dpi, facecolor=theme.background, metadata=_STAMPS[format])

@@ -45,8 +45,8 @@ class LineStyle:
 class Theme:
     """All that a plot or window needs to know about its looks.
 
-    `window` lies behind panels, `base` behind fields, `background` behind curves. The colour scale runs from `far_below`
-    to `threshold` and on to `far_above` (CIELAB), in a straight line each, so that equal steps look equal.
+    `window` lies behind panels, `base` behind fields, `background` behind curves. The colour scale runs from
+    `far_below` to `threshold` and on to `far_above` (CIELAB), in a straight line each, so that equal steps look equal.
     """
 
     name: str
@@ -120,13 +120,13 @@ def _rgb_of_lab(lab: NDArray[np.float64]) -> NDArray[np.float64]:
     f = np.stack([fy + a / 500.0, fy, fy - b / 200.0], axis=-1)
     xyz = _WHITE * np.where(f > 6.0 / 29.0, f**3, 3.0 * (6.0 / 29.0) ** 2 * (f - 4.0 / 29.0))
     linear = np.clip(xyz @ np.linalg.inv(_RGB_TO_XYZ).T, 0.0, 1.0)
-    encoded: NDArray[np.float64] = np.where(
-        linear <= 0.0031308, 12.92 * linear, 1.055 * linear ** (1.0 / 2.4) - 0.055
-    )
+    encoded: NDArray[np.float64] = np.where(linear <= 0.0031308, 12.92 * linear, 1.055 * linear ** (1.0 / 2.4) - 0.055)
     return encoded
 
 
-def _lines(*, ink: str, quiet: str, blue: str, orange: str, green: str, purple: str, cloud: str) -> dict[Role, LineStyle]:
+def _lines(
+    *, ink: str, quiet: str, blue: str, orange: str, green: str, purple: str, cloud: str
+) -> dict[Role, LineStyle]:
     return {
         Role.TOTAL: LineStyle(colour=ink, width=2.0),
         Role.THERMAL: LineStyle(colour=orange, width=1.6, dash=(7.0, 2.0)),
@@ -164,7 +164,12 @@ LIGHT = Theme(
     threshold=(97.5, -0.5, 2.0),
     far_above=(72.0, 18.0, 40.0),
     lines=_lines(
-        ink="#20252b", quiet="#6b727c", blue="#1f57a8", orange="#b24a14", green="#0d7557", purple="#82338f",
+        ink="#20252b",
+        quiet="#6b727c",
+        blue="#1f57a8",
+        orange="#b24a14",
+        green="#0d7557",
+        purple="#82338f",
         cloud="#93063f",
     ),
 )
@@ -188,7 +193,12 @@ DARK = Theme(
     threshold=(12.0, 0.0, -1.0),
     far_above=(45.0, 20.0, 34.0),
     lines=_lines(
-        ink="#eceef0", quiet="#9aa2ac", blue="#7db4ff", orange="#f2a065", green="#63d1a8", purple="#d59be2",
+        ink="#eceef0",
+        quiet="#9aa2ac",
+        blue="#7db4ff",
+        orange="#f2a065",
+        green="#63d1a8",
+        purple="#d59be2",
         cloud="#ffb3cf",
     ),
 )

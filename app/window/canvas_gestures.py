@@ -14,20 +14,16 @@ from PySide6.QtCore import QEvent, QObject, QPointF, QRectF, Qt, QTimer
 from PySide6.QtGui import QColor, QHelpEvent, QKeyEvent, QMouseEvent, QPainter, QPen, QWheelEvent
 from PySide6.QtWidgets import QToolTip
 
-from app.figures.picture import Axis, Mark
-from app.figures.ticks import span, to_data, to_drawing
+from app.figures.picture import Mark
+from app.window.views import View, at_shares, boxed, moved, stepped, view_of, zoomed
 
 if TYPE_CHECKING:
     from app.window.live_canvas import LiveCanvas
-
-View = tuple[float, float, float, float]
 
 REACH = 12.0  # of a mark, logical pixels
 STIR = 4.0  # movement that makes a press a drag, logical pixels
 ZOOM_STEP = 0.8  # of the width, for one notch of the wheel
 PAN_STEP = 0.1  # of the width, for one key
-SMALL_STEP, LARGE_STEP = 0.0025, 0.025  # of the width, for an arrow key and with Shift
-LINEAR_STEPS_IN_LOG = 0.01  # decades for an arrow key along a logarithmic axis; ten times with Shift
 HINT = "Drag to move, or use the arrow keys"
 
 _ARROWS = {
@@ -167,7 +163,7 @@ class CanvasGestures(QObject):
         if hold.moved and hold.act is _Act.MARK:
             self._canvas.mark_released.emit(hold.mark, *self._mark_place(hold.mark))
         elif hold.moved and hold.act is _Act.BOX:
-            self._ask_box(hold.start, event.position())
+            self._cut_box(hold.start, event.position())
         self._set_cursor()
         self._canvas.update()
 
@@ -192,16 +188,13 @@ class CanvasGestures(QObject):
         if hold.act is _Act.BOX:
             self._canvas.update()
             return
-        left, top, width, height = self._box()
         if hold.act is _Act.PAN:
-            away = at - hold.start
-            self._ask_moved_view(hold.view, -away.x() / width, away.y() / height)
+            away, box = at - hold.start, self._box()
+            self._pan(hold.view, -away.x() / box.width(), away.y() / box.height())
             return
-        tip = at + hold.grip
-        x0, x1, y0, y1 = self._drawing_view(self._shown_view())
-        x = x0 + min(max((tip.x() - left) / width, 0.0), 1.0) * (x1 - x0)
-        y = y1 - min(max((tip.y() - top) / height, 0.0), 1.0) * (y1 - y0)
-        self._move_mark(hold.mark, *self._data((x, y)))
+        picture = self._canvas.picture
+        assert picture is not None
+        self._move_mark(hold.mark, *at_shares(picture, *self._shares(at + hold.grip)))
 
     # ---------------------------------------------------------------- keys
 
@@ -222,11 +215,11 @@ class CanvasGestures(QObject):
             else:
                 view = self._view()
                 assert view is not None
-                self._ask_moved_view(view, PAN_STEP * right, PAN_STEP * up)
+                self._pan(view, PAN_STEP * right, PAN_STEP * up)
         elif key in (Qt.Key.Key_Plus, Qt.Key.Key_Equal) and not control:
-            self._zoom(ZOOM_STEP, self._centre())
+            self._zoom(ZOOM_STEP, self._box().center())
         elif key in (Qt.Key.Key_Minus, Qt.Key.Key_Underscore) and not control:
-            self._zoom(1.0 / ZOOM_STEP, self._centre())
+            self._zoom(1.0 / ZOOM_STEP, self._box().center())
         elif key == Qt.Key.Key_Home:
             self._canvas.home_requested.emit()
         elif key == Qt.Key.Key_M and len(movable) > 1:
@@ -243,7 +236,7 @@ class CanvasGestures(QObject):
         assert picture is not None
         x, y = self._mark_place(index)
         self._keyed = index
-        self._move_mark(index, _stepped(picture.x, x, right, large), _stepped(picture.y, y, up, large))
+        self._move_mark(index, stepped(picture.x, x, right, large), stepped(picture.y, y, up, large))
 
     def _end_keyed(self) -> None:
         index, self._keyed = self._keyed, None
@@ -257,7 +250,7 @@ class CanvasGestures(QObject):
             self._move_mark(hold.mark, *hold.mark_start)
             self._canvas.mark_released.emit(hold.mark, *hold.mark_start)
         elif hold.act is _Act.PAN and hold.moved:
-            self._ask_view(hold.view)
+            self._ask(hold.view)
         self._set_cursor()
         self._canvas.update()
 
@@ -284,78 +277,44 @@ class CanvasGestures(QObject):
 
     # ---------------------------------------------------------------- views
 
-    def _shown_view(self) -> View:
-        picture = self._canvas.picture
-        assert picture is not None
-        return picture.x.low, picture.x.high, picture.y.low, picture.y.high
-
     def _view(self) -> View | None:
         """The view that is shown, or already asked for."""
-        if self._canvas.picture is None or self._canvas.axes_box() is None:
-            return None
-        return self._asked_view or self._shown_view()
-
-    def _axes(self) -> tuple[Axis, Axis]:
         picture = self._canvas.picture
-        assert picture is not None
-        return picture.x, picture.y
+        if picture is None or self._canvas.axes_box() is None:
+            return None
+        return self._asked_view or view_of(picture)
 
-    def _box(self) -> View:
+    def _shares(self, at: QPointF) -> tuple[float, float]:
+        """Place of a logical pixel as shares of the axes."""
+        box = self._box()
+        return (at.x() - box.left()) / box.width(), (box.bottom() - at.y()) / box.height()
+
+    def _box(self) -> QRectF:
         box = self._canvas.axes_box()
-        assert box is not None
-        return box
-
-    def _drawing_view(self, view: View) -> View:
-        x, y = self._axes()
-        return to_drawing(x, view[0]), to_drawing(x, view[1]), to_drawing(y, view[2]), to_drawing(y, view[3])
-
-    def _data(self, place: tuple[float, float]) -> tuple[float, float]:
-        x, y = self._axes()
-        return to_data(x, place[0]), to_data(y, place[1])
-
-    def _centre(self) -> QPointF:
-        return QRectF(*self._box()).center()
+        return QRectF() if box is None else QRectF(*box)
 
     def _zoom(self, factor: float, at: QPointF) -> None:
-        """Zooms about a pixel; beside the axes along that axis alone."""
-        view = self._view()
-        if view is None:
+        picture, view = self._canvas.picture, self._view()
+        if picture is not None and view is not None:
+            self._ask(zoomed(picture, view, factor, *self._shares(at)))
+
+    def _pan(self, view: View, right: float, up: float) -> None:
+        picture = self._canvas.picture
+        if picture is not None:
+            self._ask(moved(picture, view, right, up))
+
+    def _cut_box(self, one: QPointF, other: QPointF) -> None:
+        rect = QRectF(one, other).normalized().intersected(self._box())
+        picture = self._canvas.picture
+        if picture is None or min(rect.width(), rect.height()) < STIR:
             return
-        left, top, width, height = self._box()
-        x0, x1, y0, y1 = self._drawing_view(view)
-        fx, fy = (at.x() - left) / width, 1.0 - (at.y() - top) / height
-        x_factor = factor if fx >= 0.0 else 1.0
-        y_factor = factor if fy >= 0.0 else 1.0
-        x, y = x0 + fx * (x1 - x0), y0 + fy * (y1 - y0)
-        self._ask_drawing_view(
-            (x + (x0 - x) * x_factor, x + (x1 - x) * x_factor, y + (y0 - y) * y_factor, y + (y1 - y) * y_factor)
-        )
+        (left, bottom), (right, top) = self._shares(rect.bottomLeft()), self._shares(rect.topRight())
+        self._ask(boxed(picture, view_of(picture), (left, right), (bottom, top)))
 
-    def _ask_box(self, one: QPointF, other: QPointF) -> None:
-        rect = QRectF(one, other).normalized().intersected(QRectF(*self._box()))
-        if min(rect.width(), rect.height()) < STIR:
-            return
-        left, top, width, height = self._box()
-        x0, x1, y0, y1 = self._drawing_view(self._shown_view())
-        sx, sy = (x1 - x0) / width, (y1 - y0) / height
-        self._ask_drawing_view(
-            (x0 + (rect.left() - left) * sx, x0 + (rect.right() - left) * sx,
-             y1 - (rect.bottom() - top) * sy, y1 - (rect.top() - top) * sy)
-        )  # fmt: skip
-
-    def _ask_moved_view(self, view: View, right: float, up: float) -> None:
-        x0, x1, y0, y1 = self._drawing_view(view)
-        dx, dy = right * (x1 - x0), up * (y1 - y0)
-        self._ask_drawing_view((x0 + dx, x1 + dx, y0 + dy, y1 + dy))
-
-    def _ask_drawing_view(self, view: View) -> None:
-        x, y = self._axes()
-        if all(_shows_something(axis, *ends) for axis, ends in ((x, view[:2]), (y, view[2:]))):
-            self._ask_view((to_data(x, view[0]), to_data(x, view[1]), to_data(y, view[2]), to_data(y, view[3])))
-
-    def _ask_view(self, view: View) -> None:
-        self._asked_view = view
-        self._canvas.view_requested.emit(view)
+    def _ask(self, view: View | None) -> None:
+        if view is not None:
+            self._asked_view = view
+            self._canvas.view_requested.emit(view)
 
     # ---------------------------------------------------------------- what is seen of it
 
@@ -371,7 +330,7 @@ class CanvasGestures(QObject):
                 painter.setPen(QPen(accent, 2.0))
                 painter.drawEllipse(QPointF(*place), REACH - 2.0, REACH - 2.0)
         if self._hold is not None and self._hold.act is _Act.BOX and self._pointer is not None:
-            box = QRectF(self._hold.start, self._pointer).normalized().intersected(QRectF(*self._box()))
+            box = QRectF(self._hold.start, self._pointer).normalized().intersected(self._box())
             painter.setPen(QPen(accent, 1.2, Qt.PenStyle.DashLine))
             accent.setAlpha(40)
             painter.fillRect(box, accent)
@@ -389,19 +348,3 @@ class CanvasGestures(QObject):
             shape = Qt.CursorShape.ArrowCursor
         if self._canvas.cursor().shape() != shape:
             self._canvas.setCursor(shape)
-
-
-def _stepped(axis: Axis, value: float, direction: int, large: bool) -> float:
-    """One key's step, kept on the axis."""
-    if direction == 0:
-        return value
-    low, high = span(axis)
-    step = LINEAR_STEPS_IN_LOG * (10.0 if large else 1.0) if axis.log else (LARGE_STEP if large else SMALL_STEP) * (high - low)
-    return to_data(axis, min(max(to_drawing(axis, value) + direction * step, low), high))
-
-
-def _shows_something(axis: Axis, low: float, high: float) -> bool:
-    """Whether a view still tells values apart and stays within the range of numbers."""
-    if axis.log:
-        return -300.0 < low and high < 300.0 and high - low > 1e-6
-    return high - low > 1e-9 * max(abs(low), abs(high)) and max(abs(low), abs(high)) < 1e300

@@ -17,7 +17,8 @@ from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QColor, QImage, QPainter, QPaintEvent, QPen, QResizeEvent, QShowEvent
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
-from app.figures.draw import draw_frame, drawing_note, legend_entries
+from app.figures.draw import draw_frame, drawing_note
+from app.figures.layout import legend_entries
 from app.figures.picture import Picture
 from app.figures.theme import LIGHT, Theme
 from app.figures.ticks import span, to_data
@@ -28,7 +29,7 @@ DPI = 96.0  # of one logical pixel, so that type sizes are those of the widgets 
 SMALLEST_SIDE = 8  # logical pixels; nothing is drawn on less
 
 
-class LiveCanvas(FigureCanvasQTAgg):  # type: ignore[misc]
+class LiveCanvas(FigureCanvasQTAgg):
     """Shows one picture at a time, live, and tells what the user's hands want."""
 
     mark_dragged = Signal(int, float, float)
@@ -54,7 +55,7 @@ class LiveCanvas(FigureCanvasQTAgg):  # type: ignore[misc]
         self.full_draws = 0
         self.live_frames = 0
         self.renders_hidden = 0
-        super().__init__(Figure(dpi=DPI))
+        super().__init__(Figure(dpi=DPI))  # type: ignore[no-untyped-call]
         if parent is not None:
             self.setParent(parent)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
@@ -146,7 +147,7 @@ class LiveCanvas(FigureCanvasQTAgg):  # type: ignore[misc]
         if self._layer is None:
             painter.fillRect(self.rect(), QColor(self._theme.background))
         else:
-            buffer = self.buffer_rgba()
+            buffer = self.buffer_rgba()  # type: ignore[no-untyped-call]
             height, width = buffer.shape[:2]
             image = QImage(buffer, width, height, 4 * width, QImage.Format.Format_RGBX8888)
             image.setDevicePixelRatio(self.device_pixel_ratio)
@@ -207,12 +208,14 @@ class LiveCanvas(FigureCanvasQTAgg):  # type: ignore[misc]
         figure.clear()
         figure.set_facecolor(self._theme.background)
         # whole pixels also at fractional ratios
-        pixels = np.ceil(np.array([self.width(), self.height()]) * ratio)
-        figure.set_size_inches(*(pixels / figure.dpi), forward=False)
+        width, height = (float(np.ceil(side * ratio)) / figure.dpi for side in (self.width(), self.height()))
+        figure.set_size_inches(width, height, forward=False)
         axes = figure.add_axes((0.0, 0.0, 1.0, 1.0))
         layout = draw_frame(picture, axes, self._theme)
-        FigureCanvasAgg.draw(self)
-        return LiveLayer(self.get_renderer(), layout, self._theme)
+        for spine in axes.spines.values():
+            spine.set_visible(False)  # the live layer draws them, over the data
+        FigureCanvasAgg.draw(self)  # type: ignore[no-untyped-call]
+        return LiveLayer(self.get_renderer(), layout, self._theme)  # type: ignore[no-untyped-call]
 
     def draw_idle(self) -> None:
         """Draws all again at the next paint (Matplotlib's own changes, such as another pixel ratio, end here)."""

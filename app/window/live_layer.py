@@ -7,6 +7,7 @@ once and stamped, and Qt scales the colour field right into the renderer's buffe
 from __future__ import annotations
 
 from functools import lru_cache
+from typing import Any
 
 import numpy as np
 from matplotlib.backend_bases import GraphicsContextBase
@@ -26,18 +27,18 @@ from app.figures.draw import (
     HALO_WIDTH,
     MARK_EDGE,
     MARK_SIZE,
-    Layout,
     field_colours,
     field_edges,
-    note_place,
     text_size,
 )
 from app.figures.labels import place_labels
+from app.figures.layout import Layout, note_place
 from app.figures.picture import Array, Axis, Curve, Field, Mark, Picture, Role
 from app.figures.theme import LineStyle, Theme
 from app.figures.ticks import span, to_drawing
 
 Pixels = NDArray[np.uint8]
+Renderer = Any  # an Agg renderer; Matplotlib ships no types for its backends
 
 _SPRITE_PAD = 3  # pixels around a stamped text
 
@@ -45,7 +46,7 @@ _SPRITE_PAD = 3  # pixels around a stamped text
 class LiveLayer:
     """The moving part of one canvas, for one layout and theme; made anew with every new frame around it."""
 
-    def __init__(self, renderer: RendererAgg, layout: Layout, theme: Theme) -> None:
+    def __init__(self, renderer: Renderer, layout: Layout, theme: Theme) -> None:
         self._renderer = renderer
         self._layout = layout
         self._theme = theme
@@ -126,7 +127,7 @@ class LiveLayer:
         return self._contexts[key]
 
     def _line_context(self, style: LineStyle, halo: bool) -> GraphicsContextBase:
-        context = self._renderer.new_gc()
+        context: GraphicsContextBase = self._renderer.new_gc()
         context.set_clip_rectangle(self.box)
         context.set_joinstyle("round")
         context.set_capstyle("butt")
@@ -153,7 +154,7 @@ class LiveLayer:
         context.set_clip_rectangle(self.box)
         context.set_foreground(self._theme.halo)
         context.set_linewidth(MARK_EDGE)
-        where = shape.get_transform().scale(size).translate(*place)
+        where = Affine2D(shape.get_transform().get_matrix()).scale(size).translate(*place)
         self._renderer.draw_path(context, shape.get_path(), where, _rgb(style.colour))
 
     def _draw_labels(self, picture: Picture) -> None:
@@ -168,7 +169,7 @@ class LiveLayer:
             self._stamp(stamp, self.box.x0 + x * self._scale, self.box.y0 + y * self._scale)
 
     def _draw_note(self, picture: Picture, note: str, colour: str) -> None:
-        text, right, middle = note_place(picture, self._layout, self._theme, note)
+        text, right, middle = note_place(picture, self._layout, self._theme, note, text_size)
         if not text:
             return
         stamp = text_stamp(text, self._theme.small_size, colour, self._theme.halo, float(self._renderer.dpi))
@@ -195,7 +196,7 @@ class LiveLayer:
 def text_stamp(text: str, size: float, colour: str, halo: str, dpi: float) -> Pixels:
     """A text with halo as RGBA pixels, bottom row first, middle of the line in the middle."""
     width, height = (int(np.ceil(length * dpi / 72.0)) + 2 * _SPRITE_PAD for length in text_size(text, size))
-    renderer = RendererAgg(width, height, dpi)
+    renderer: Renderer = RendererAgg(width, height, dpi)  # type: ignore[no-untyped-call]
     drawn = Text(0.5 * width, 0.5 * height, text, size=size, color=colour, ha="center", va="center_baseline")
     drawn.set_figure(Figure(dpi=dpi))
     drawn.set_path_effects([withStroke(linewidth=HALO_WIDTH, foreground=halo, alpha=0.85)])
