@@ -122,7 +122,8 @@ class WhyUnknown(Enum):
 class LengthInUse:
     """The scattering length to use for a state [m], or why there is none.
 
-    `from_resonances` says whether the field entered. `ranges` are the fields [T] that the data describe, lowest first.
+    `from_resonances` says whether the field entered. `ranges` are the fields [T] that the data
+    describe, lowest first; empty where the field plays no part.
     """
 
     value: float | None
@@ -156,7 +157,8 @@ def length_at_field(state: State, field: float | None = None) -> LengthInUse:
     """
     if state.polarised:
         return LengthInUse(value=None, reason=WhyUnknown.POLARISED)
-    forms = tuning(state)
+    # Reading the tables costs more than the rest of a small answer; a fixed length without a field needs none.
+    forms = tuning(state) if field is not None or state.scattering_length_is_background else ()
     ranges = tuple((form.low, form.high) for form in forms)
     if field is not None:
         if not math.isfinite(field):
