@@ -19,7 +19,7 @@ from physics.statistics import bose, fermi
 # e^(-pi^2/(2 step)); the integrand falls as w^3 below and as e^(-2 w^2) above.
 _STEP = 0.14
 _LOG_W = np.arange(-11.0, 1.7, _STEP)
-_CELLS = 4096  # cells at once, to bound the memory
+_CELLS = 512  # cells at once, to bound the memory
 
 
 @cache
