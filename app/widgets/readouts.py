@@ -6,15 +6,20 @@ repaint of changed cells and nothing else.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from enum import IntEnum
+from functools import partial
 
+import numpy as np
 from PySide6.QtCore import QAbstractItemModel, QModelIndex, QPersistentModelIndex, QPoint, Qt, Signal
 from PySide6.QtGui import QContextMenuEvent, QFont, QFontMetrics, QGuiApplication, QKeyEvent, QKeySequence, QPalette
 from PySide6.QtWidgets import QAbstractItemView, QFrame, QHeaderView, QMenu, QTreeView, QWidget
 
-from app.quantities import QUANTITIES, Group, Row
+from app.engine import CloudAnswer
+from app.quantities import QUANTITIES, Group, Need, Row
+from app.units import best_unit
+from app.words import display_factor, number, reason_missing, row_tip, shown_unit, value_text
 
 AnyIndex = QModelIndex | QPersistentModelIndex
 
@@ -50,9 +55,12 @@ class ReadoutModel(QAbstractItemModel):
         self._groups: tuple[tuple[Group, tuple[Row, ...]], ...] = ()
         self._readings: dict[str, Reading] = {}
         self._stale = False
+        self._interval: Callable[[str], str] = lambda name: ""
 
-    def show_readings(self, readings: Mapping[str, Reading]) -> None:
-        """Show these quantities, by name; headings without any are left out."""
+    def show_readings(self, readings: Mapping[str, Reading], interval: Callable[[str], str]) -> None:
+        """Show these quantities, by name; headings without any are left out. `interval` tells, when a tip asks, how
+        sure one is."""
+        self._interval = interval
         rows = tuple(row for row in QUANTITIES.values() if row.name in readings)
         groups = tuple(
             (group, members) for group in Group if (members := tuple(row for row in rows if row.group is group))
@@ -141,7 +149,7 @@ class ReadoutModel(QAbstractItemModel):
                 side = Qt.AlignmentFlag.AlignRight if right else Qt.AlignmentFlag.AlignLeft
                 return side | Qt.AlignmentFlag.AlignVCenter
             case Qt.ItemDataRole.ToolTipRole:
-                return tip_of(row, reading)
+                return tip_of(row, reading, self._interval(row.name))
             case Qt.ItemDataRole.AccessibleTextRole:
                 return f"{row.label}: {reading.text or reading.reason}" if index.column() == Column.LABEL else None
             case Qt.ItemDataRole.ForegroundRole:
@@ -162,14 +170,53 @@ class ReadoutModel(QAbstractItemModel):
         return None
 
 
-def tip_of(row: Row, reading: Reading) -> str:
-    """What a reader wants to know of a number: how it is worked out, from where, and how far it holds."""
-    lines = [f"{row.label}, {row.symbol}", row.formula, f"Source: {row.source}", f"Holds for: {row.validity}"]
+def tip_of(row: Row, reading: Reading, interval: str) -> str:
+    """What a reader wants to know of a number: how it is worked out, from where, how far it holds, how sure it is."""
+    lines = [f"{row.label}, {row.symbol}", row_tip(row)]
     if reading.reason:
-        lines.insert(1, f"No value: {reading.reason}")
+        lines.insert(1, f"no value: {reading.reason}")
+    if interval:
+        lines.insert(1, f"68 % of the draws: {interval}")
     if len(row.units) > 1:
         lines.append("Return or a right click chooses the unit")
     return "\n".join(lines)
+
+
+def readings_of(answer: CloudAnswer, chosen_units: Mapping[str, str]) -> dict[str, Reading]:
+    """What the readouts show of an answer: quantities of the other statistics are left out, and those that lack an
+    input say so."""
+    readings = {}
+    for name, row in QUANTITIES.items():
+        need = answer.missing(row)
+        if need in (Need.BOSONS, Need.FERMIONS):
+            continue
+        if need is not None:
+            readings[name] = Reading("–", reason=reason_missing(need))
+            continue
+        unit = chosen_units.get(name, "")
+        if unit not in row.units:
+            unit = unit_for(row, answer.value(name))
+        readings[name] = Reading(value_text(answer, row, unit), shown_unit(unit))
+    return readings
+
+
+def interval_text(answer: CloudAnswer, name: str) -> str:
+    """The interval of a quantity over the stated uncertainties, in the unit that suits it; empty where there is
+    none."""
+    row = QUANTITIES[name]
+    interval = None if answer.missing(row) else answer.interval(name)
+    if interval is None or row.axes:
+        return ""
+    unit = unit_for(row, answer.value(name))
+    low, high = (number(float(bound) / display_factor(unit, row)) for bound in interval)
+    return f"{low} to {high} {shown_unit(unit)}".strip()
+
+
+def unit_for(row: Row, value: object) -> str:
+    """The unit that suits a value, where the reader chose none."""
+    if len(row.units) == 1 or "%" in row.units:
+        return row.units[0]
+    return best_unit(float(np.max(np.abs(np.asarray(value, dtype=float)))), row.units)
 
 
 class Readouts(QTreeView):
@@ -218,8 +265,9 @@ class Readouts(QTreeView):
     def stale(self) -> bool:
         return self._model.stale
 
-    def show_readings(self, readings: Mapping[str, Reading]) -> None:
-        self._model.show_readings(readings)
+    def show_answer(self, answer: CloudAnswer, chosen_units: Mapping[str, str]) -> None:
+        """Show a current answer in these units, or where none is chosen in the one that suits."""
+        self._model.show_readings(readings_of(answer, chosen_units), partial(interval_text, answer))
 
     def mark_stale(self) -> None:
         """Keep the numbers on show, marked as not current."""

@@ -6,11 +6,11 @@ the sentence is placed by hand and the numbers are painted.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from PySide6.QtCore import QRect, QSize, Qt
 from PySide6.QtGui import QFont, QFontMetrics, QGuiApplication, QPainter, QPaintEvent, QPalette, QResizeEvent
 from PySide6.QtWidgets import QLabel, QSizePolicy, QWidget
+
+from app.words import Figure
 
 SENTENCE_SCALE = 1.55
 SENTENCE_SCALE_SMALL = 1.2
@@ -20,17 +20,9 @@ MARGIN = 16
 GAP = 18
 
 
-@dataclass(frozen=True)
-class Figure:
-    """One number that decides: what it is, how much, and a quiet word on it (its range, or what it means)."""
-
-    caption: str
-    value: str
-    detail: str = ""
-
-    @property
-    def spoken(self) -> str:
-        return f"{self.caption}: {self.value}" + (f" ({self.detail})" if self.detail else "")
+def spoken(figure: Figure) -> str:
+    """A number that decides, as text."""
+    return f"{figure.caption}: {figure.value}" + (f" ({figure.detail})" if figure.detail else "")
 
 
 def scaled(font: QFont, scale: float, *, weight: QFont.Weight | None = None) -> QFont:
@@ -160,7 +152,7 @@ class Verdict(QWidget):
 
     def copy(self) -> None:
         """Put sentence and numbers on the clipboard as text."""
-        lines = [self.sentence, *(figure.spoken for figure in self.figures)]
+        lines = [self.sentence, *(spoken(figure) for figure in self.figures)]
         QGuiApplication.clipboard().setText("\n".join(lines))
 
     def _put(self) -> None:
@@ -169,7 +161,7 @@ class Verdict(QWidget):
             return
         self._sentence.setText(text)
         self._fit()
-        self.setAccessibleDescription("; ".join([text, *(figure.spoken for figure in self.figures)]))
+        self.setAccessibleDescription("; ".join([text, *(spoken(figure) for figure in self.figures)]))
 
     def _sentence_height(self) -> int:
         """Room for one line in a wide window, for two of the smaller size in a narrow one."""

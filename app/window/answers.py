@@ -25,14 +25,18 @@ class Answers(QObject):
     cloud_ready = Signal(object)
     cloud_failed = Signal(str)
     part_failed = Signal(str)
-    _arrived = Signal(object, object)
+    _arrived = Signal(int, object, object)
+
+    # Attributes: cloud, the newest answer; current, whether it answers the newest plan; cloud_count, for tests.
 
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self.newest = Newest()
         self.cloud: CloudAnswer | None = None
         self.cloud_count = 0
+        self.current = False
         self._plan: Plan | None = None
+        self._asked = self._taken = 0  # numbers of the newest part asked for, and of the newest that arrived
         self._turn = QTimer(self)
         self._turn.setSingleShot(True)
         self._turn.timeout.connect(self.answer_now)
@@ -41,7 +45,7 @@ class Answers(QObject):
 
     def set_plan(self, plan: Plan) -> None:
         """Answer this plan at the next turn of the event loop."""
-        self._plan = plan
+        self._plan, self.current = plan, False
         self._turn.start(0)
 
     def answer_now(self) -> None:
@@ -55,23 +59,32 @@ class Answers(QObject):
         except (ValueError, OSError) as error:
             self.cloud_failed.emit(str(error))
         else:
+            self.current = True
             self.cloud_ready.emit(self.cloud)
 
     def ask_part(self, job: Callable[[], Any], deliver: Callable[[Any], None]) -> None:
         """Run `job` on the worker; `deliver` is called with its result in the GUI thread, unless it was overtaken."""
+        self._asked += 1
+        number = self._asked
         self.newest.ask(
             job,
-            lambda result: self._arrived.emit(deliver, result),
-            lambda error: self._arrived.emit(self._part_trouble, error),
+            lambda result: self._arrived.emit(number, deliver, result),
+            lambda error: self._arrived.emit(number, self._part_trouble, error),
         )
 
-    def _take(self, deliver: Callable[[Any], None], result: Any) -> None:
+    def _take(self, number: int, deliver: Callable[[Any], None], result: Any) -> None:
+        self._taken = number
         deliver(result)
 
     def _part_trouble(self, error: Exception) -> None:
         if not isinstance(error, ValueError | OSError):
             raise error
         self.part_failed.emit(str(error))
+
+    @property
+    def settled(self) -> bool:
+        """Whether nothing is under way: no plan to answer, no job on the worker, no result to be shown."""
+        return not self._turn.isActive() and self._taken == self._asked
 
     def close(self) -> None:
         self._turn.stop()

@@ -8,7 +8,7 @@ from pathlib import Path
 from PySide6.QtCore import QMimeData, QObject
 from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
 
-from app.plan import Plan, read_plan, save_plan
+from app.plan import DEFAULT_PLAN, read_plan, save_plan
 from app.window.settings import Settings
 from app.window.undo import Document
 
@@ -20,12 +20,9 @@ Tell = Callable[[str], None]
 class Files(QObject):
     """The file commands of one window. `tell` shows one sentence to the user."""
 
-    def __init__(
-        self, document: Document, settings: Settings, window: QWidget, demo: Callable[[], Plan], tell: Tell
-    ) -> None:
+    def __init__(self, document: Document, settings: Settings, window: QWidget, tell: Tell) -> None:
         super().__init__(window)
-        self._document, self._settings, self._window = document, settings, window
-        self._demo, self._tell = demo, tell
+        self._document, self._settings, self._window, self._tell = document, settings, window, tell
 
     @property
     def name(self) -> str:
@@ -34,7 +31,7 @@ class Files(QObject):
 
     def new(self) -> None:
         if self.may_leave():
-            self._document.load(self._demo(), None, None)
+            self._document.load(DEFAULT_PLAN, None, None)
 
     def open(self) -> None:
         """Ask for a file and read it."""
@@ -55,16 +52,28 @@ class Files(QObject):
         """Show the plan of a file. A file that cannot be read changes nothing and is told of in one sentence."""
         try:
             plan = read_plan(path)
-            text = path.read_text(encoding="utf-8")
         except OSError as error:
             self._tell(f"{path} cannot be read: {error.strerror or error}.")
         except ValueError as error:
             self._tell(str(error))
         else:
-            self._document.load(plan, path, text)
+            self._document.load(plan, path, plan.source)
             self._settings.remember_file(path)
             return True
         return False
+
+    def recover(self, copy: Path) -> None:
+        """Show the copy of a lost session as an unsaved plan; the copy goes once it is on show."""
+        if not self.may_leave():
+            return
+        try:
+            plan = read_plan(copy)
+        except (OSError, ValueError) as error:
+            self._tell(f"The copy cannot be read: {error}")
+        else:
+            self._document.load(plan, None, None)
+            self._document.stack.resetClean()
+            copy.unlink(missing_ok=True)
 
     def save(self) -> bool:
         """Write the plan to its file, or ask for one; True if it was written."""
@@ -80,10 +89,9 @@ class Files(QObject):
 
     def _write(self, path: Path) -> bool:
         try:
-            save_plan(self._document.plan, path, self._document.file_text)
-            text = path.read_text(encoding="utf-8")
+            text = save_plan(self._document.plan, path, self._document.file_text)
         except OSError as error:
-            self._tell(f"{path} cannot be written: {error.strerror or error}. The plan is still here, unsaved.")
+            self._tell(f"{error.strerror or error}; the plan is still here, unsaved.")
             return False
         self._document.saved(path, text)
         self._settings.remember_file(path)

@@ -1,0 +1,41 @@
+"""The Trap form: three frequencies and, if known, the depth."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from functools import partial
+
+from PySide6.QtWidgets import QWidget
+
+from app.figures.profile import AXES
+from app.plan import Plan
+from app.units import Quantity
+from app.widgets.form import Form
+
+_FREQUENCIES = "trap.frequencies"
+
+
+class TrapForm(Form):
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__("Trap", parent)
+        self.frequencies = tuple(
+            self.add_quantity(
+                _FREQUENCIES, axis, label=f"Frequency {axis}", key=f"{_FREQUENCIES}.{axis}", put=partial(_put, place)
+            )
+            for place, axis in enumerate(AXES)
+        )
+        self.depth = self.add_quantity("trap.depth", "d")
+        self.depth.setPlaceholderText("not given")
+
+    def show_plan(self, plan: Plan) -> None:
+        for field, quantity in zip(self.frequencies, plan.trap.frequencies, strict=True):
+            field.set_quantity(quantity)
+        self.depth.set_quantity(plan.trap.depth)
+
+
+def _put(place: int, plan: Plan, quantity: Quantity | None) -> Plan:
+    frequencies = list(plan.trap.frequencies)
+    assert quantity is not None  # the fields are not optional
+    frequencies[place] = quantity
+    x, y, z = frequencies
+    return replace(plan, trap=replace(plan.trap, frequencies=(x, y, z)))

@@ -1,0 +1,150 @@
+"""The Map page: atom number against temperature, and the cloud on it, to be dragged where it should be."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from typing import Any
+
+from PySide6.QtWidgets import QWidget
+
+from app.commands.map import map_csv
+from app.engine import CloudAnswer, MapAnswer, MapLimits, map_answer, usual_limits
+from app.figures.map import cloud_mark, map_picture
+from app.figures.picture import Picture
+from app.figures.theme import Theme
+from app.plan import Plan
+from app.units import ATOM_NUMBER, TEMPERATURE, Kind, Quantity, best_unit, exact_text, read_quantity, unit_of
+from app.widgets.page import Page
+from app.words import number, temperature, verdict
+from physics.cloud import Model, equilibrium
+
+_TEMPERATURE_UNITS = ("pK", "nK", "µK", "mK", "K")
+_CLOUD_STEP = "atom number and temperature"
+
+
+@dataclass(frozen=True, eq=False)
+class _Ground:
+    """The map without the cloud, ready to be shown under it."""
+
+    answer: MapAnswer
+    picture: Picture
+
+
+class MapPage(Page):
+    title = "Map"
+
+    def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
+        super().__init__(theme, parent)
+        self.plot = self.add_plot("Map of atom number and temperature")
+        self.column.addWidget(self.plot.canvas, 1)
+        self.column.addWidget(self.bar)
+        self._ground: _Ground | None = None
+        self._limits: MapLimits | None = None
+        self._gas: object = None  # what the limits were chosen for
+        self._drag = 0
+        canvas = self.plot.canvas
+        canvas.mark_dragged.connect(self._drag_to)
+        canvas.mark_released.connect(self._end_drag)
+        canvas.double_clicked.connect(self._set_to)
+        canvas.pointer_moved.connect(self._read_pointer)
+        self.plot.view_changed.connect(self.part_wanted)
+
+    def part(self, plan: Plan) -> Callable[[], _Ground] | None:
+        limits = self._wanted_limits(plan)
+        cloud = self.cloud
+        if cloud is None:
+            return None
+
+        def job() -> _Ground:
+            answer = map_answer(plan, limits)
+            if self._ground is not None and answer is self._ground.answer:
+                return self._ground
+            return _Ground(answer, map_picture(answer, cloud))
+
+        return job
+
+    def take_part(self, answer: Any) -> None:
+        self._ground = answer
+        self.plot.show(self._picture)
+
+    def show_cloud(self, cloud: CloudAnswer) -> None:
+        super().show_cloud(cloud)
+        if self._ground is not None:
+            self.plot.show(self._picture)
+
+    def _picture(self) -> Picture:
+        assert self._ground is not None
+        assert self.cloud is not None
+        ground = self._ground.picture
+        return replace(ground, marks=(cloud_mark(self.cloud),), summary=verdict(self.cloud))
+
+    def _wanted_limits(self, plan: Plan) -> MapLimits:
+        """What the user asked to see; else the range that was shown, while it still suits the cloud."""
+        view = self.plot.view
+        if view is not None:
+            return MapLimits(*view)
+        gas = (plan.species, plan.trap)
+        limits = self._limits
+        if limits is None or gas != self._gas or not limits.holds(plan.cloud.atoms.value, plan.cloud.temperature.value):
+            limits = usual_limits(plan)
+        self._limits, self._gas = limits, gas
+        return limits
+
+    # ---------------------------------------------------------------- moving the cloud
+
+    def _drag_to(self, _mark: int, atoms: float, temperature_value: float) -> None:
+        self._move(atoms, temperature_value, f"map drag {self._drag}")
+
+    def _end_drag(self, _mark: int, atoms: float, temperature_value: float) -> None:
+        self._drag_to(_mark, atoms, temperature_value)
+        self._drag += 1
+
+    def _set_to(self, atoms: float, temperature_value: float) -> None:
+        self._move(atoms, temperature_value, "")
+
+    def _move(self, atoms: float, temperature_value: float, merge_key: str) -> None:
+        if self.cloud is None:
+            return
+        plan = self.cloud.plan
+        moved = replace(
+            plan.cloud,
+            atoms=moved_quantity(plan.cloud.atoms, atoms, ATOM_NUMBER, ("",)),
+            temperature=moved_quantity(plan.cloud.temperature, temperature_value, TEMPERATURE, _TEMPERATURE_UNITS),
+        )
+        self.plan_edited.emit(replace(plan, cloud=moved), _CLOUD_STEP, merge_key)
+
+    def _read_pointer(self, place: tuple[float, float] | None) -> None:
+        if place is None or self.cloud is None:
+            self.bar.status.say("")
+            return
+        atoms, kelvin = place
+        central = self.cloud
+        model = Model.IDEAL if central.model is Model.EXACT_LEVELS else central.model
+        there = equilibrium(replace(central.cloud, atoms=atoms, temperature=kelvin), model)
+        ratio = "T/Tc" if central.bosons else "T/TF"
+        self.bar.status.say(
+            f"N = {number(atoms)}   T = {temperature(kelvin)}   "
+            f"D = {number(float(there.peak_phase_space_density))}   "
+            f"{ratio} = {number(float(there.reduced_temperature))}"
+        )
+
+    # ---------------------------------------------------------------- numbers
+
+    def csv(self) -> str:
+        return "" if self._ground is None else map_csv(self._ground.answer)
+
+
+def moved_quantity(old: Quantity, value: float, kind: Kind, units: tuple[str, ...]) -> Quantity:
+    """A quantity moved by hand: three digits, in a unit that suits it, with the same relative uncertainty."""
+    value = _rounded(min(max(value, kind.low), kind.high), 3)
+    unit = unit_of(old.text, kind)
+    unit = best_unit(value, units) if unit in units else unit
+    sigma = _rounded(old.sigma / old.value * value, 1) if old.sigma else None
+    return read_quantity(exact_text(value, unit, sigma, kind=kind), kind)
+
+
+def _rounded(value: float, digits: int) -> float:
+    return round(value, digits - 1 - math.floor(math.log10(abs(value))))
+

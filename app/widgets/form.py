@@ -1,0 +1,218 @@
+"""A form: a titled column of labelled fields that shows one section of the plan and turns edits into plans.
+
+Labels, tips and kinds come from the plan's own table of fields. A form knows nothing of answers and plots; it is given
+plans and sends plans.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+from functools import partial
+from typing import Any
+
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QFont, QWheelEvent
+from PySide6.QtWidgets import QComboBox, QGridLayout, QLabel, QWidget
+
+from app.plan import PLAN_FIELDS, Plan, PlanError
+from app.units import Kind, Quantity
+from app.widgets.quantity_field import QuantityField
+
+LABEL_WIDTH = 112
+
+
+class Choice(QComboBox):
+    """A combo box that leaves the wheel to the page unless it has the focus."""
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
+        self.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
+        self.setMinimumContentsLength(8)
+
+    def wheelEvent(self, event: QWheelEvent) -> None:  # noqa: N802 (the toolkit's name)
+        if self.hasFocus():
+            super().wheelEvent(event)
+        else:
+            event.ignore()
+
+
+def plan_with_entry(plan: Plan, path: str, value: object) -> Plan:
+    """The plan with one entry replaced; what a given value excludes is dropped.
+
+    Raises PlanError where no plan can have it.
+    """
+    field = PLAN_FIELDS[path]
+    entries: dict[str, Any] = {field.name: value}
+    if value is not None:
+        entries |= {PLAN_FIELDS[other].name: None for other in field.excludes}
+    changes: dict[str, Any] = {field.section: replace(getattr(plan, field.section), **entries)}
+    return replace(plan, **changes)
+
+
+def with_mnemonic(label: str, letter: str) -> str:
+    """The label with an ampersand before the first such letter."""
+    place = label.lower().find(letter.lower())
+    if place < 0:
+        raise ValueError(f"{label!r} has no letter {letter!r} for a mnemonic")
+    return f"{label[:place]}&{label[place:]}"
+
+
+class Form(QWidget):
+    """Signals: plan_edited(Plan, what, merge key); problems_changed() when what cannot be read changes."""
+
+    plan_edited = Signal(object, str, str)
+    problems_changed = Signal()
+
+    def __init__(self, title: str, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setAccessibleName(title)
+        self._plan: Plan | None = None
+        self._fields: dict[str, QuantityField] = {}
+        self._sessions: dict[str, int] = {}
+        self._errors: dict[str, QLabel] = {}
+        self._notes: dict[str, QLabel] = {}
+        self._widgets: dict[str, tuple[QWidget, ...]] = {}
+        self._row = 1
+        self._grid = QGridLayout(self)
+        self._grid.setContentsMargins(0, 0, 0, 0)
+        self._grid.setHorizontalSpacing(10)
+        self._grid.setVerticalSpacing(3)
+        self._grid.setColumnMinimumWidth(0, LABEL_WIDTH)
+        self._grid.setColumnStretch(1, 1)
+        heading = QLabel(title)
+        heading.setObjectName("formTitle")
+        font = QFont(heading.font())
+        font.setWeight(QFont.Weight.DemiBold)
+        heading.setFont(font)
+        self._grid.addWidget(heading, 0, 0, 1, 2)
+
+    # ---------------------------------------------------------------- building
+
+    def add_row(self, key: str, label: str, letter: str, widget: QWidget, tip: str) -> None:
+        """A labelled widget, with room for a note and for an error under it."""
+        buddy = QLabel(with_mnemonic(label, letter))
+        buddy.setBuddy(widget)
+        buddy.setToolTip(tip)
+        widget.setAccessibleName(label)
+        if not isinstance(widget, QuantityField):
+            widget.setToolTip(tip)
+            widget.setWhatsThis(tip)
+            widget.setAccessibleDescription(tip)
+        note, error = QLabel(), QLabel()
+        note.setObjectName("fieldNote")
+        error.setObjectName("fieldError")
+        for message in (note, error):
+            message.setWordWrap(True)
+            message.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+            message.hide()
+        self._notes[key], self._errors[key] = note, error
+        self._widgets[key] = (buddy, widget, note, error)
+        self._grid.addWidget(buddy, self._row, 0)
+        self._grid.addWidget(widget, self._row, 1)
+        self._grid.addWidget(note, self._row + 1, 1)
+        self._grid.addWidget(error, self._row + 2, 0, 1, 2)
+        self._row += 3
+
+    def add_quantity(
+        self,
+        path: str,
+        letter: str,
+        *,
+        label: str = "",
+        key: str = "",
+        put: Callable[[Plan, Quantity | None], Plan] | None = None,
+    ) -> QuantityField:
+        """A field for a quantity of the plan. `put` says how it enters the plan, where it is not an entry of its own."""
+        field = PLAN_FIELDS[path]
+        kind = field.kind
+        assert isinstance(kind, Kind)
+        key, label = key or path, label or field.label
+        line = QuantityField(kind, label, tip=field.tip, optional=not field.required)
+        self.add_row(key, label, letter, line, field.tip)
+        self._fields[key] = line
+        self._sessions[key] = 0
+        enter = put or partial(_put, path)
+        line.changed.connect(lambda quantity: self._changed(key, label, enter, quantity))
+        line.editingFinished.connect(partial(self._end_session, key))
+        line.error_changed.connect(partial(self.show_problem, key))
+        return line
+
+    # ---------------------------------------------------------------- edits
+
+    def _changed(
+        self, key: str, label: str, enter: Callable[[Plan, Quantity | None], Plan], quantity: Quantity | None
+    ) -> None:
+        if self._plan is None:
+            return
+        try:
+            plan = enter(self._plan, quantity)
+        except PlanError as error:
+            self._fields[key].show_error(str(error))
+            return
+        self.plan_edited.emit(plan, label.lower(), f"{key} {self._sessions[key]}")
+
+    def _end_session(self, key: str) -> None:
+        """The next edit of this field is another step for undo."""
+        self._sessions[key] += 1
+
+    def edit(self, path: str, value: object) -> None:
+        """An edit that is a step of its own, such as a choice from a list."""
+        if self._plan is not None:
+            self.plan_edited.emit(plan_with_entry(self._plan, path, value), PLAN_FIELDS[path].label.lower(), "")
+
+    # ---------------------------------------------------------------- showing
+
+    def set_plan(self, plan: Plan) -> None:
+        """Show a plan. Nothing is emitted."""
+        self._plan = plan
+        self.show_plan(plan)
+
+    def show_plan(self, plan: Plan) -> None:
+        raise NotImplementedError
+
+    def discard_edits(self) -> None:
+        """Drop texts that could not be read: another plan is about to be shown."""
+        for field in self._fields.values():
+            field.blockSignals(True)
+            field.revert()
+            field.blockSignals(False)
+        for key in self._errors:
+            self.show_problem(key, "")
+
+    @property
+    def problems(self) -> tuple[str, ...]:
+        """What cannot be read, as sentences, from top to bottom."""
+        return tuple(label.text() for label in self._errors.values() if label.text())
+
+    def show_problem(self, key: str, sentence: str) -> None:
+        """Say under a field what is wrong with it; an empty text takes it back."""
+        label = self._errors[key]
+        if label.text() != sentence:
+            label.setText(sentence)
+            label.setVisible(bool(sentence))
+            self.problems_changed.emit()
+
+    def show_note(self, key: str, text: str) -> None:
+        """A quiet word under a field."""
+        label = self._notes[key]
+        if label.text() != text:
+            label.setText(text)
+            label.setVisible(bool(text))
+
+    def show_row(self, key: str, shown: bool) -> None:
+        """Show or hide a field with its label and messages."""
+        for widget in self._widgets[key]:
+            widget.setVisible(shown and (not isinstance(widget, QLabel) or bool(widget.text())))
+
+    def take_focus(self) -> None:
+        """Give the keyboard to the first field."""
+        item = self._grid.itemAtPosition(1, 1)
+        widget = item.widget() if item is not None else None
+        if widget is not None:
+            widget.setFocus()
+
+
+def _put(path: str, plan: Plan, quantity: Quantity | None) -> Plan:
+    return plan_with_entry(plan, path, quantity)

@@ -1,0 +1,89 @@
+"""Exact limits of a plot, typed."""
+
+from __future__ import annotations
+
+from PySide6.QtWidgets import QDialog, QDialogButtonBox, QGridLayout, QLabel, QLineEdit, QVBoxLayout, QWidget
+
+from app.figures.picture import Axis, Picture
+from app.units import Kind, QuantityError, best_unit, format_quantity, read_quantity
+from app.window.views import View, view_of
+
+_PREFIXED = {"K": ("K", "mK", "µK", "nK", "pK"), "m": ("m", "mm", "µm", "nm")}
+
+
+def kind_of(axis: Axis) -> Kind:
+    """What may be typed as a limit of an axis: its own unit, and prefixed ones where ticks are prefixed."""
+    units = _PREFIXED.get(axis.unit, (axis.unit,)) if axis.prefixed else (axis.unit,)
+    return Kind(
+        name=axis.label,
+        si_unit=axis.unit,
+        units=units,
+        low=1e-300 if axis.log else -1e300,
+        high=1e300,
+        example=format_quantity(axis.low, best_unit(axis.low, units), digits=3),
+    )
+
+
+class LimitsDialog(QDialog):
+    """Four fields and what is wrong with them, beside them; OK waits until all can be read."""
+
+    def __init__(self, picture: Picture, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setWindowTitle("Limits of the plot")
+        self._axes = (picture.x, picture.y)
+        self.fields: list[QLineEdit] = []
+        self.problem = QLabel()
+        self.problem.setObjectName("fieldError")
+        self.problem.setWordWrap(True)
+        grid = QGridLayout()
+        grid.setHorizontalSpacing(10)
+        for row, axis in enumerate(self._axes):
+            heading = QLabel(axis.label)
+            grid.addWidget(heading, row, 0)
+            for column, (word, value) in enumerate((("from", axis.low), ("to", axis.high))):
+                field = QLineEdit(self._text(axis, value))
+                field.setAccessibleName(f"{axis.label} {word}")
+                field.setToolTip(f"{word} which {axis.label} the plot runs, with its unit")
+                field.textChanged.connect(self._check)
+                label = QLabel(f"{word}")
+                label.setBuddy(field)
+                grid.addWidget(label, row, 1 + 2 * column)
+                grid.addWidget(field, row, 2 + 2 * column)
+                self.fields.append(field)
+        buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Ok | QDialogButtonBox.StandardButton.Cancel)
+        buttons.accepted.connect(self.accept)
+        buttons.rejected.connect(self.reject)
+        self.ok = buttons.button(QDialogButtonBox.StandardButton.Ok)
+        column_layout = QVBoxLayout(self)
+        column_layout.setContentsMargins(20, 16, 20, 12)
+        column_layout.setSpacing(12)
+        column_layout.addLayout(grid)
+        column_layout.addWidget(self.problem)
+        column_layout.addWidget(buttons)
+        self.setMinimumWidth(440)
+        self._view: View | None = view_of(picture)
+        self._check()
+
+    @staticmethod
+    def _text(axis: Axis, value: float) -> str:
+        return format_quantity(value, best_unit(value, kind_of(axis).units), digits=4)
+
+    @property
+    def view(self) -> View | None:
+        """The limits as typed; None while they cannot be read."""
+        return self._view
+
+    def _check(self) -> None:
+        self._view, problem = None, ""
+        try:
+            values = []
+            for place, field in enumerate(self.fields):
+                values.append(read_quantity(field.text(), kind_of(self._axes[place // 2])).value)
+            for axis, low, high in zip(self._axes, values[::2], values[1::2], strict=True):
+                if not low < high:
+                    raise QuantityError(f"{axis.label} must run from a low to a high limit")
+            self._view = (values[0], values[1], values[2], values[3])
+        except QuantityError as error:
+            problem = str(error)
+        self.problem.setText(problem)
+        self.ok.setEnabled(self._view is not None)

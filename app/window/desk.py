@@ -1,0 +1,182 @@
+"""The inside of the window: bench on the left, verdict on top, pages in the middle, readouts and caveats on the right.
+
+In a window too narrow for all three, readouts and caveats become one more tab beside the pages.
+"""
+
+from __future__ import annotations
+
+from PySide6.QtCore import QByteArray, Qt, Signal
+from PySide6.QtGui import QResizeEvent
+from PySide6.QtWidgets import QApplication, QLabel, QSplitter, QTabWidget, QVBoxLayout, QWidget
+
+from app.figures.theme import Theme
+from app.pages.map import MapPage
+from app.pages.profile import ProfilePage
+from app.pages.slices import SlicesPage
+from app.widgets.caveats import Caveats
+from app.widgets.page import Page
+from app.widgets.readouts import Readouts
+from app.widgets.verdict import Verdict
+from app.window.bench import WIDTH as BENCH_WIDTH
+from app.window.bench import Bench
+from app.window.settings import Settings
+
+FOLD_WIDTH = 1200
+READOUTS_WIDTH = 348
+
+
+class Desk(QWidget):
+    """Holds the parts and their places; knows nothing of what they show. page_changed() is sent when another page, or
+    the folded readouts, come to the front."""
+
+    page_changed = Signal()
+
+    def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.verdict = Verdict()
+        self.bench = Bench()
+        self.map, self.slices, self.profile = MapPage(theme), SlicesPage(theme), ProfilePage(theme)
+        self.pages: tuple[Page, ...] = (self.map, self.slices, self.profile)
+        self.tabs = QTabWidget()
+        self.tabs.setDocumentMode(True)
+        self.tabs.setAccessibleName("Pages")
+        for page in self.pages:
+            self.tabs.addTab(page, page.title)
+        self.tabs.currentChanged.connect(self.page_changed)
+        self._last_page: Page = self.map
+        self.readouts, self.caveats = Readouts(), Caveats()
+        self.side = self._make_side()
+        self.columns = QSplitter(Qt.Orientation.Horizontal)
+        self.columns.setHandleWidth(1)
+        self.columns.setChildrenCollapsible(False)
+        for place, widget in enumerate((self.bench, self.tabs, self.side)):
+            self.columns.addWidget(widget)
+            self.columns.setStretchFactor(place, int(widget is self.tabs))
+        layout = QVBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.setSpacing(0)
+        layout.addWidget(self.verdict)
+        layout.addWidget(self.columns, 1)
+        self._panes: tuple[QWidget, ...] = (self.bench, self.tabs, self.readouts, self.caveats)
+        self.reset_layout()
+
+    def _make_side(self) -> QSplitter:
+        side = QSplitter(Qt.Orientation.Vertical)
+        side.setHandleWidth(1)
+        side.setChildrenCollapsible(False)
+        side.addWidget(_titled("", self.readouts, (14, 6, 0, 0)))
+        side.addWidget(_titled("Caveats", self.caveats, (16, 8, 8, 8)))
+        side.setStretchFactor(0, 3)
+        side.setStretchFactor(1, 1)
+        return side
+
+    # ---------------------------------------------------------------- pages
+
+    @property
+    def page(self) -> Page:
+        """The page of plots in front, or the one that was before the readouts came to the front."""
+        widget = self.tabs.currentWidget()
+        if isinstance(widget, Page):
+            self._last_page = widget
+        return self._last_page
+
+    @property
+    def page_in_front(self) -> Page | None:
+        """The page of plots that can be seen; None while the folded readouts cover it."""
+        widget = self.tabs.currentWidget()
+        return widget if isinstance(widget, Page) else None
+
+    def show_page(self, number: int) -> None:
+        self.tabs.setCurrentWidget(self.pages[number])
+        self.pages[number].take_focus()
+
+    def show_readouts(self) -> None:
+        if self.folded:
+            self.tabs.setCurrentWidget(self.side)
+        self.readouts.setFocus()
+        if not self.readouts.currentIndex().isValid():
+            self.readouts.setCurrentIndex(self.readouts.model().index(0, 0))
+
+    # ---------------------------------------------------------------- places
+
+    @property
+    def folded(self) -> bool:
+        return self.tabs.indexOf(self.side) >= 0
+
+    def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802 (the toolkit's name)
+        self._fold(self.width() < FOLD_WIDTH)
+
+    def _fold(self, fold: bool) -> None:
+        if fold == self.folded:
+            return
+        if fold:
+            self.tabs.addTab(self.side, "Readouts")
+        else:
+            in_front = self.tabs.currentWidget() is self.side
+            self.tabs.removeTab(self.tabs.indexOf(self.side))
+            self.columns.addWidget(self.side)
+            self.side.show()
+            if in_front:
+                self.tabs.setCurrentWidget(self._last_page)
+            self._share_out()
+
+    def reset_layout(self) -> None:
+        """Every part in its first size."""
+        self._share_out()
+        self.side.setSizes([520, 180])
+
+    def _share_out(self) -> None:
+        middle = max(self.width() - BENCH_WIDTH - READOUTS_WIDTH, 400)
+        self.columns.setSizes([BENCH_WIDTH, middle, READOUTS_WIDTH][: self.columns.count()])
+
+    def next_pane(self, step: int) -> None:
+        """Move the keyboard to the next visible part, or with -1 to the one before."""
+        panes = [pane for pane in self._panes if pane.isVisible()]
+        focus = QApplication.focusWidget()
+        here = next((i for i, pane in enumerate(panes) if focus is pane or pane.isAncestorOf(focus)), -1) if focus else -1
+        if here >= 0 and panes[here] is self.tabs and focus is not None:
+            # Folded readouts live inside the tabs: they are the pane then.
+            here = next((i for i, pane in enumerate(panes) if pane is not self.tabs and pane.isAncestorOf(focus)), here)
+        target = panes[(here + step) % len(panes)] if here >= 0 else panes[0]
+        if target is self.bench:
+            self.bench.take_focus()
+        elif target is self.tabs:
+            (self.page_in_front or self.readouts).setFocus()
+            if self.page_in_front is not None:
+                self.page_in_front.take_focus()
+        elif target is self.readouts:
+            self.show_readouts()
+        else:
+            target.setFocus()
+
+    def save_state(self, settings: Settings) -> None:
+        settings.put("window/columns", self.columns.saveState())
+        settings.put("window/side", self.side.saveState())
+        settings.put("window/page", self.page.title)
+
+    def restore_state(self, settings: Settings) -> None:
+        """Take up remembered sizes; what is missing or unreadable leaves the first sizes."""
+        for splitter, key in ((self.columns, "window/columns"), (self.side, "window/side")):
+            state: QByteArray = settings.blob(key)
+            if not state.isEmpty() and not splitter.restoreState(state):
+                self.reset_layout()
+            splitter.setHandleWidth(1)
+            splitter.setChildrenCollapsible(False)
+        title = settings.text("window/page")
+        for page in self.pages:
+            if page.title == title:
+                self.tabs.setCurrentWidget(page)
+
+
+def _titled(title: str, widget: QWidget, margins: tuple[int, int, int, int]) -> QWidget:
+    """A part with its quiet heading."""
+    box = QWidget()
+    column = QVBoxLayout(box)
+    column.setContentsMargins(*margins)
+    column.setSpacing(4)
+    if title:
+        heading = QLabel(title)
+        heading.setObjectName("paneTitle")
+        column.addWidget(heading)
+    column.addWidget(widget, 1)
+    return box

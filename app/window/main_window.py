@@ -1,0 +1,325 @@
+"""The window. It only assembles: the parts build themselves, and `_connect_signals` is the map of the program."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from PySide6.QtCore import QSize, Signal
+from PySide6.QtGui import (
+    QAction,
+    QCloseEvent,
+    QColor,
+    QDragEnterEvent,
+    QDropEvent,
+    QGuiApplication,
+    QPaintEvent,
+    QPalette,
+)
+from PySide6.QtWidgets import QApplication, QMainWindow, QMenu, QTextEdit, QVBoxLayout, QWidget
+
+from app.window.settings import Settings, ThemeChoice, rectangle_on_screens
+
+if TYPE_CHECKING:
+    from app.engine import CloudAnswer
+    from app.plan import Plan
+    from app.widgets.banner import Banner, Offer
+    from app.window.answers import Answers
+    from app.window.desk import Desk
+    from app.window.files import Files
+    from app.window.looks import Looks
+    from app.window.recovery import Recovery
+    from app.window.undo import Document
+
+FIRST_SIZE = QSize(1400, 900)
+
+
+class MainWindow(QMainWindow):
+    """Empty and quick to show at first; `furnish` then loads everything else and puts it in.
+
+    first_painted() is sent once, when the empty window is on the screen.
+    """
+
+    first_painted = Signal()
+
+    document: Document
+    answers: Answers
+    desk: Desk
+    files: Files
+    looks: Looks
+    recovery: Recovery
+    banner: Banner
+    actions_by_id: dict[str, QAction]
+
+    def __init__(self, settings: Settings, *, size: QSize | None = None) -> None:
+        super().__init__()
+        self.settings = settings
+        self.furnished = False
+        self._painted = False
+        self.setWindowTitle("Coldward")
+        self.setAcceptDrops(True)
+        self.setMinimumSize(640, 480)
+        backdrop = QColor(settings.text("view/backdrop"))
+        if backdrop.isValid():
+            self.setPalette(QPalette(backdrop))
+        self._restore_geometry(size)
+
+    def _restore_geometry(self, size: QSize | None) -> None:
+        screens = [screen.availableGeometry() for screen in QGuiApplication.screens()]
+        if size is not None:
+            self.resize(size)
+            return
+        if not self.restoreGeometry(self.settings.blob("window/geometry")):
+            self.resize(FIRST_SIZE)
+        self.setGeometry(rectangle_on_screens(self.geometry(), screens))
+
+    def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802 (the toolkit's name)
+        super().paintEvent(event)
+        if not self._painted:
+            self._painted = True
+            self.first_painted.emit()
+
+    # ---------------------------------------------------------------- assembly
+
+    def furnish(self, plan: Plan, *, theme: ThemeChoice | None = None) -> None:
+        """Load numbers, plots and forms, build all parts and show a plan."""
+        from app.widgets.banner import Banner
+        from app.window.actions import install_actions
+        from app.window.answers import Answers
+        from app.window.desk import Desk
+        from app.window.files import Files
+        from app.window.looks import Looks
+        from app.window.recovery import Recovery, install_excepthook
+        from app.window.undo import Document
+
+        self.looks = Looks(self.settings, theme, self)
+        self.setPalette(QPalette())
+        self.document = Document(plan, self)
+        self.answers = Answers(self)
+        self.desk = Desk(self.looks.theme)
+        self.banner = Banner()
+        self.files = Files(self.document, self.settings, self, self.tell)
+        self.recovery = Recovery(self.document, self.settings.state_folder, self)
+        self.actions_by_id = install_actions(self)
+        self._recent = QMenu("Open &recent", self)
+        file_menu = self.actions_by_id["file.save"].associatedObjects()[-1]
+        assert isinstance(file_menu, QMenu)
+        file_menu.insertMenu(self.actions_by_id["file.save"], self._recent)
+        body = QWidget()
+        column = QVBoxLayout(body)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(0)
+        column.addWidget(self.banner)
+        column.addWidget(self.desk, 1)
+        self.desk.restore_state(self.settings)
+        self._connect_signals()
+        self.setCentralWidget(body)
+        self._restore_hook = install_excepthook(self._tell_trouble, self.recovery.save_copy)
+        self.furnished = True
+        self._theme_checked()
+        self._plan_changed(plan)
+        self.answers.answer_now()
+        self._file_changed()
+        if self.settings.notice:
+            self.tell(self.settings.notice)
+        self._offer_recovery()
+
+    def _connect_signals(self) -> None:
+        document, answers, desk = self.document, self.answers, self.desk
+        # what the user does becomes a plan
+        desk.bench.plan_edited.connect(document.edit)
+        for page in desk.pages:
+            page.plan_edited.connect(document.edit)
+        # the plan goes to the forms and becomes an answer
+        document.plan_changed.connect(self._plan_changed)
+        desk.bench.problems_changed.connect(self._judge)
+        # the answer goes to all that show it
+        answers.cloud_ready.connect(self._show_cloud)
+        answers.cloud_failed.connect(self._cloud_failed)
+        answers.part_failed.connect(self.tell)
+        # a page that comes to the front, or wants to show something else, asks for its part
+        desk.page_changed.connect(self._page_changed)
+        for page in desk.pages:
+            page.part_wanted.connect(self._ask_part)
+        # files, history, looks
+        document.file_changed.connect(self._file_changed)
+        document.clean_changed.connect(lambda clean: self.setWindowModified(not clean))
+        document.stack.undoTextChanged.connect(lambda text: self._name_step("edit.undo", "&Undo", text))
+        document.stack.redoTextChanged.connect(lambda text: self._name_step("edit.redo", "&Redo", text))
+        document.stack.canUndoChanged.connect(self.actions_by_id["edit.undo"].setEnabled)
+        document.stack.canRedoChanged.connect(self.actions_by_id["edit.redo"].setEnabled)
+        self._recent.aboutToShow.connect(self._fill_recent)
+        self.looks.theme_changed.connect(lambda theme: [page.set_theme(theme) for page in desk.pages])
+        # what is remembered, and what is told
+        desk.readouts.unit_chosen.connect(self._choose_unit)
+        desk.slices.chosen_changed.connect(lambda names: self.settings.put("slices/chosen", names))
+        for page in desk.pages:
+            page.told.connect(self.tell)
+            page.folder_used.connect(self._use_folder)
+        for name in ("edit.undo", "edit.redo"):
+            self.actions_by_id[name].setEnabled(False)
+        self._use_folder(self.settings.last_folder)
+        desk.slices.choose(self.settings.texts("slices/chosen"))
+
+    # ---------------------------------------------------------------- plan and answer
+
+    def _plan_changed(self, plan: Plan) -> None:
+        self.desk.bench.set_plan(plan)
+        self.answers.set_plan(plan)
+
+    def _show_cloud(self, answer: CloudAnswer) -> None:
+        from app.words import caveat_lines, deciding_figures, verdict
+
+        desk = self.desk
+        desk.verdict.show_answer(verdict(answer), deciding_figures(answer))
+        if desk.readouts.isVisible():
+            desk.readouts.show_answer(answer, self.settings.units)
+            desk.caveats.show_lines(caveat_lines(answer))
+        for page in desk.pages:
+            page.show_cloud(answer)
+        self._ask_part()
+        self._judge()
+
+    def _cloud_failed(self, sentence: str) -> None:
+        self._mark_stale(sentence)
+
+    def _judge(self) -> None:
+        """A field that cannot be read marks everything as not current; once all can, the answer is again."""
+        problems = self.desk.bench.problems
+        if problems:
+            self._mark_stale(problems[0])
+        elif self.desk.verdict.stale and self.answers.cloud is not None and self.answers.current:
+            self._show_cloud(self.answers.cloud)
+
+    def _mark_stale(self, reason: str) -> None:
+        self.desk.verdict.mark_stale(reason)
+        self.desk.readouts.mark_stale()
+        for page in self.desk.pages:
+            page.mark_stale("last good answer")
+
+    def _page_changed(self) -> None:
+        page = self.desk.page_in_front
+        if page is not None:
+            self.actions_by_id[f"view.{page.title.lower()}"].setChecked(True)
+        if self.answers.cloud is not None:
+            self._show_cloud(self.answers.cloud)
+
+    def _ask_part(self) -> None:
+        page = self.desk.page_in_front
+        if page is None or self.answers.cloud is None:
+            return
+        job = page.part(self.answers.cloud.plan)
+        if job is not None:
+            self.answers.ask_part(job, page.take_part)
+
+    def _choose_unit(self, name: str, unit: str) -> None:
+        self.settings.units = {**self.settings.units, name: unit}
+        if self.answers.cloud is not None:
+            self.desk.readouts.show_answer(self.answers.cloud, self.settings.units)
+
+    # ---------------------------------------------------------------- files and history
+
+    def _file_changed(self) -> None:
+        self.setWindowTitle(f"{self.files.name}[*] – Coldward")
+        self.setWindowModified(not self.document.clean)
+        self.setWindowFilePath(str(self.document.path or ""))
+        if self.document.path is not None:
+            self._use_folder(self.document.path.parent)
+
+    def _use_folder(self, folder: Path) -> None:
+        self.settings.last_folder = folder
+        for page in self.desk.pages:
+            page.folder = folder
+
+    def _name_step(self, action: str, verb: str, step: str) -> None:
+        self.actions_by_id[action].setText(f"{verb} {step}".strip())
+
+    def _fill_recent(self) -> None:
+        self._recent.clear()
+        recent = self.settings.recent
+        for number, file in enumerate(recent, start=1):
+            missing = "" if file.present else " (no longer there)"
+            action = self._recent.addAction(f"&{number % 10} {file.path.name}{missing}")
+            action.setToolTip(str(file.path))
+            action.setEnabled(file.present)
+            action.triggered.connect(lambda _=False, path=file.path: self.files.open_path(path))
+        if not recent:
+            self._recent.addAction("No plan opened yet").setEnabled(False)
+
+    def dragEnterEvent(self, event: QDragEnterEvent) -> None:  # noqa: N802 (the toolkit's name)
+        if self.furnished and self.files.droppable(event.mimeData()) is not None:
+            event.acceptProposedAction()
+
+    def dropEvent(self, event: QDropEvent) -> None:  # noqa: N802 (the toolkit's name)
+        path = self.files.droppable(event.mimeData())
+        if path is not None:
+            event.acceptProposedAction()
+            self.files.drop(path)
+
+    def closeEvent(self, event: QCloseEvent) -> None:  # noqa: N802 (the toolkit's name)
+        if self.furnished and not self.files.may_leave():
+            event.ignore()
+            return
+        self.settings.put("window/geometry", self.saveGeometry())
+        if self.furnished:
+            self.desk.save_state(self.settings)
+            self.recovery.close()
+            self.answers.close()
+            self._restore_hook()
+            self.furnished = False
+        self.settings.flush()
+        event.accept()
+
+    # ---------------------------------------------------------------- what is told and shown
+
+    def tell(self, sentence: str, *offers: Offer) -> None:
+        """Show one sentence across the top of the window."""
+        self.banner.tell(sentence, *offers)
+
+    def _tell_trouble(self, sentence: str, details: str) -> None:
+        from app.widgets.banner import Offer
+
+        self.tell(
+            sentence, Offer("Copy details", lambda: QGuiApplication.clipboard().setText(details), stays=True)
+        )
+
+    def _offer_recovery(self) -> None:
+        from app.widgets.banner import Offer
+
+        copies = self.recovery.left_behind()
+        if copies:
+            copy = copies[0]
+            self.tell(
+                "Coldward ended without saving a plan last time; a copy of it was kept.",
+                Offer("Open the copy", lambda: self.files.recover(copy)),
+                Offer("Delete it", lambda: copy.unlink(missing_ok=True)),
+            )
+
+    def copy(self) -> None:
+        """Copy what the keyboard is on: a text, readouts, or else the plot."""
+        focus = QApplication.focusWidget()
+        if focus is self.desk.readouts:
+            self.desk.readouts.copy()
+        elif isinstance(focus, QTextEdit):
+            focus.copy()
+        elif focus is not None and any(focus is plot.canvas for plot in self.desk.page.plots):
+            self.desk.page.copy_picture()
+
+    def _theme_checked(self) -> None:
+        self.actions_by_id[f"view.theme_{self.looks.choice.value}"].setChecked(True)
+        self.actions_by_id[f"view.{self.desk.page.title.lower()}"].setChecked(True)
+
+    def show_shortcuts(self) -> None:
+        from app.window.dialogs import shortcuts_dialog
+
+        shortcuts_dialog(self).exec()
+
+    def show_glossary(self) -> None:
+        from app.window.dialogs import glossary_dialog
+
+        glossary_dialog(self).exec()
+
+    def show_about(self) -> None:
+        from app.window.dialogs import AboutDialog
+
+        AboutDialog(self).exec()

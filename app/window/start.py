@@ -1,0 +1,120 @@
+"""From nothing to a window: first an empty one on the screen, then everything that takes time to load."""
+
+from __future__ import annotations
+
+import gc
+import os
+import sys
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from PySide6.QtCore import QSize, Qt, QTimer
+from PySide6.QtGui import QGuiApplication
+from PySide6.QtWidgets import QApplication
+
+from app.window.main_window import MainWindow
+from app.window.settings import Settings, ThemeChoice
+
+if TYPE_CHECKING:
+    from app.plan import Plan
+
+
+@dataclass(frozen=True, kw_only=True)
+class Wishes:
+    """What the command line asks of the window."""
+
+    plan_path: Path | None = None
+    settings_folder: Path | None = None
+    theme: ThemeChoice | None = None
+    size: QSize | None = None
+    pictures: Path | None = None
+
+
+def application() -> QApplication:
+    """The one application object, made with our style and names."""
+    present = QApplication.instance()
+    if isinstance(present, QApplication):
+        return present
+    os.environ.setdefault("QT_API", "pyside6")  # the plotting library must use the same toolkit
+    QGuiApplication.setHighDpiScaleFactorRoundingPolicy(Qt.HighDpiScaleFactorRoundingPolicy.PassThrough)
+    made = QApplication(["coldward"])
+    made.setApplicationName("Coldward")
+    made.setDesktopFileName("coldward")
+    made.setStyle("Fusion")
+    return made
+
+
+def open_window(wishes: Wishes) -> int:
+    """Show the window and run it to its end, or write its pictures; the exit status.
+
+    A plan that cannot be read is told of in the window; where only pictures are wanted, on stderr with status 1.
+    """
+    app = application()
+    settings = Settings(wishes.settings_folder)
+    window = MainWindow(settings, size=wishes.size)
+    status: list[int] = []
+
+    def furnish() -> None:
+        furnish_window(window, wishes)
+        if wishes.pictures is not None:
+            status.append(_take_pictures(window, wishes))
+            window.document.stack.setClean()
+            window.close()
+            app.quit()
+
+    if wishes.pictures is not None and wishes.plan_path is not None and (problem := _problem_of(wishes.plan_path)):
+        print(f"coldward: {problem}", file=sys.stderr)
+        return 1
+    window.first_painted.connect(lambda: QTimer.singleShot(0, furnish))
+    window.show()
+    app.exec()
+    return status[0] if status else 0
+
+
+def furnish_window(window: MainWindow, wishes: Wishes) -> None:
+    """Load the rest and show the plan; what was made so far will live as long as the window, so the collector need
+    not look at it again."""
+    plan, problem = _first_plan(wishes.plan_path)
+    window.furnish(plan, theme=wishes.theme)
+    if wishes.plan_path is not None and not problem:
+        window.files.read(wishes.plan_path)
+    if problem:
+        window.tell(problem)
+    QTimer.singleShot(0, _freeze)
+
+
+def _freeze() -> None:
+    gc.collect()
+    gc.freeze()
+
+
+def _first_plan(path: Path | None) -> tuple[Plan, str]:
+    """The plan to start with, and what was wrong with the file asked for."""
+    from app.plan import DEFAULT_PLAN, read_plan
+
+    if path is None:
+        return DEFAULT_PLAN, ""
+    try:
+        return read_plan(path), ""
+    except OSError as error:
+        return DEFAULT_PLAN, f"{path} cannot be read: {error.strerror or error}."
+    except ValueError as error:
+        return DEFAULT_PLAN, str(error)
+
+
+def _problem_of(path: Path) -> str:
+    return _first_plan(path)[1]
+
+
+def _take_pictures(window: MainWindow, wishes: Wishes) -> int:
+    from app.window.pictures import grab_all
+
+    assert wishes.pictures is not None
+    try:
+        for path in grab_all(window, wishes.pictures):
+            print(path)
+    except OSError as error:
+        print(f"coldward: {error}", file=sys.stderr)
+        return 1
+    return 0
