@@ -8,7 +8,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from functools import lru_cache
-from typing import IO, Any, Literal
+from io import BytesIO
+from typing import IO, Any
 
 import numpy as np
 from matplotlib import rc_context
@@ -44,8 +45,6 @@ from app.figures.layout import (
 from app.figures.picture import Curve, Field, Picture, Role
 from app.figures.theme import LIGHT, LineStyle, Theme, colour_scale
 from app.figures.ticks import axis_title, span, to_drawing
-
-Format = Literal["png", "svg", "pdf"]
 
 HALO_WIDTH = 2.2
 MARK_SIZE, DRAGGABLE_SIZE, MARK_EDGE = 6.0, 9.0, 1.2
@@ -304,7 +303,7 @@ def _give_halo(text: Text, theme: Theme) -> None:
 def save_pictures(
     pictures: Sequence[Picture],
     target: str | IO[bytes],
-    format: Format,
+    format: str,
     *,
     theme: Theme = LIGHT,
     size_mm: tuple[float, float] | None = None,
@@ -335,3 +334,17 @@ def save_pictures(
         draw_picture(picture, figure.add_axes(place), theme)
     with rc_context({"svg.fonttype": "none", "svg.hashsalt": "coldward", "pdf.fonttype": 42}):
         figure.savefig(target, format=format, dpi=dpi, facecolor=theme.background, metadata=_STAMPS[format])
+
+
+def picture_bytes(
+    pictures: Sequence[Picture],
+    format: str,
+    *,
+    theme: Theme = LIGHT,
+    size_mm: tuple[float, float] | None = None,
+    dpi: float = 200.0,
+) -> bytes:
+    """What `save_pictures` would write."""
+    target = BytesIO()
+    save_pictures(pictures, target, format, theme=theme, size_mm=size_mm, dpi=dpi)
+    return target.getvalue()

@@ -166,11 +166,11 @@ LIGHT = Theme(
     lines=_lines(
         ink="#20252b",
         quiet="#6b727c",
-        blue="#1f57a8",
+        blue="#174f9f",
         orange="#b24a14",
         green="#0d7557",
-        purple="#82338f",
-        cloud="#93063f",
+        purple="#a53fb5",
+        cloud="#9a0b66",
     ),
 )
 
@@ -195,10 +195,10 @@ DARK = Theme(
     lines=_lines(
         ink="#eceef0",
         quiet="#9aa2ac",
-        blue="#7db4ff",
+        blue="#6aa6fb",
         orange="#f2a065",
         green="#63d1a8",
-        purple="#d59be2",
+        purple="#ecc4f4",
         cloud="#ffb3cf",
     ),
 )

@@ -107,27 +107,23 @@ def _texts(axis: Axis, values: list[float]) -> tuple[str, ...]:
         plain = min(values) > 9.9e-4 and largest < 1.01e4
         return tuple(f"{v:.6g}" if plain else power_text(v) for v in values)
     step = min((b - a for a, b in pairwise(values)), default=largest)
-    if largest >= 1e5 or largest < 1e-3:
-        return tuple(power_text(v, digits=_digits_between(v, step)) for v in values)
-    places = max(0, -math.floor(math.log10(step) + _SLACK)) if step > 0.0 else 0
-    return tuple(f"{v:.{places}f}".replace("-", "−") for v in values)
+    finest = math.floor(math.log10(step) + _SLACK) if step > 0.0 else 0
+    if largest >= 1e5 or 0.0 < largest < 1e-3:
+        exponent = math.floor(math.log10(largest) + _SLACK)
+        return tuple(power_text(v, exponent, max(0, exponent - finest)) for v in values)
+    return tuple(f"{v:.{max(0, -finest)}f}".replace("-", "−") for v in values)
 
 
-def _digits_between(value: float, step: float) -> int:
-    """Digits after the point of a mantissa that tell `value` from `value + step`."""
-    if value == 0.0 or step <= 0.0:
-        return 0
-    return max(0, math.floor(math.log10(abs(value)) + _SLACK) - math.floor(math.log10(step) + _SLACK))
-
-
-def power_text(value: float, digits: int = 0) -> str:
-    """A number as a power of ten in plain text: "10⁴", "2×10⁵", "0"."""
+def power_text(value: float, exponent: int | None = None, digits: int = 0) -> str:
+    """A number as a power of ten in plain text: "10⁴", "2×10⁵", "0"; `exponent` fixes the power."""
     if value == 0.0:
         return "0"
-    mantissa, exponent = f"{abs(value):.{digits}e}".split("e")
+    if exponent is None:
+        exponent = int(f"{abs(value):.{digits}e}".split("e")[1])
+    mantissa = f"{abs(value) / 10.0**exponent:.{digits}f}"
     sign = "−" if value < 0.0 else ""
-    power = "10" + str(int(exponent)).translate(_RAISED)
-    return sign + power if float(mantissa) == 1.0 else f"{sign}{mantissa}×{power}"
+    power = "10" + str(exponent).translate(_RAISED)
+    return sign + power if mantissa == "1" else f"{sign}{mantissa}×{power}"
 
 
 def _prefix_exponent(value: float) -> int:
