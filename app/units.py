@@ -23,6 +23,7 @@ from app.kinds import (
     DEPTH,
     DIMENSIONLESS,
     EFFICIENCY,
+    EVERYDAY,
     FREQUENCY,
     MAGNETIC_FIELD,
     PHASE_SPACE_DENSITY,
@@ -163,7 +164,9 @@ def _check_range(value: float, kind: Kind, text: str) -> None:
 
 def _plain(bound: float, kind: Kind) -> str:
     """A bound of the kind in words: shortest text, plain unit."""
-    unit = best_unit(bound, kind.units, kind.si_unit)
+    usual = kind.units[0]
+    alike = [unit for unit, (_, si_unit) in EVERYDAY.items() if si_unit == EVERYDAY[usual][1]]
+    unit = best_unit(bound, (usual, *alike), kind.si_unit) if usual else usual
     return f"{bound / factor(unit, kind.si_unit):.3g} {unit}".strip()
 
 
