@@ -4,19 +4,17 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
 import numpy as np
 
 from physics.checks import Floats, as_floats, require_not_infinite, require_positive
+from physics.equilibrium import Equilibrium
 from physics.models import AVAILABLE_MODELS, Model, Replacement
 from physics.particles import Statistics
 from physics.traps.harmonic import HarmonicTrap
 
-if TYPE_CHECKING:
-    from physics.equilibrium import Equilibrium
-
-__all__ = ["AVAILABLE_MODELS", "Cloud", "Model", "Replacement", "equilibrium"]
+__all__ = ["AVAILABLE_MODELS", "Cloud", "Equilibrium", "Model", "Replacement", "equilibrium"]
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -59,8 +57,8 @@ class Cloud:
             value = as_floats(getattr(self, field))
             require_positive(quantity, value, unit)
             object.__setattr__(self, field, value)
-        if self.mass.ndim:
-            raise ValueError(f"mass must be one number, got an array of shape {self.mass.shape}")
+        if np.ndim(self.mass):
+            raise ValueError(f"mass must be one number, got an array of shape {np.shape(self.mass)}")
         if self.spin_components != int(self.spin_components) or self.spin_components < 1:
             raise ValueError(f"spin components must be a whole number from 1 on, got {self.spin_components:g}")
         if self.scattering_length is not None:

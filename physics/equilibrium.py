@@ -1,8 +1,8 @@
 """What every equilibrium answers, whatever its model: the scales of the cloud and all that follows from them.
 
-A model is a subclass that adds how atoms share the levels. Every public quantity is computed when first asked for, has
-the shape of the cloud (three quantities have one more axis of three) and is read-only. NaN stands where a quantity
-does not apply.
+A model is a subclass that adds how atoms share the levels. Every public quantity is computed when first asked for and
+is read-only. Its shape broadcasts to that of the cloud: what depends on temperature only does not spread over the atom
+numbers of a map. Radii have one more axis, of three. NaN stands where a quantity does not apply.
 
 References
 ----------
@@ -23,6 +23,7 @@ from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
+from numpy.typing import ArrayLike
 
 from physics import collisions
 from physics.checks import Floats
@@ -40,27 +41,19 @@ FINITE_SIZE_COEFFICIENT = zeta(2.0) / (2.0 * zeta(3.0) ** (2.0 / 3.0))
 INTERACTION_COEFFICIENT = 1.3255
 """-dTc/Tc0 = 1.3255 (a/aho) N^(1/6), first order; the integral of [3] worked out to five digits."""
 
-MINIMUM_FERMI_DEGENERACY = 6.0
-"""X = N (hbar wbar/kT)^3 of fermions is (TF/T)^3 / 6. [4]"""
 
+def quantity(function: Callable[[Any], ArrayLike]) -> cached_property[Floats]:
+    """A quantity, computed once and then kept, read-only; np.float64 for a single cloud."""
 
-def quantity(function: Callable[[Any], Any]) -> cached_property[Floats]:
-    """A quantity of the cloud's own shape, computed once; np.float64 for a single cloud."""
-    return _finished(function, ())
-
-
-def vector_quantity(function: Callable[[Any], Any]) -> cached_property[Floats]:
-    """A quantity with one value an axis: the cloud's shape and (3,)."""
-    return _finished(function, (3,))
-
-
-def _finished(function: Callable[[Any], Any], last: tuple[int, ...]) -> cached_property[Floats]:
     @functools.wraps(function)
     def finished(self: Equilibrium) -> Floats:
         # Far from everything known a scale may leave the range of a float; the answer then says inf or NaN.
         with np.errstate(all="ignore"):
             value = np.asarray(function(self), dtype=np.float64)
-        result: Floats = np.broadcast_to(value, self.cloud.shape + last)[()]
+        if value.ndim:
+            value = value.view()
+            value.setflags(write=False)
+        result: Floats = value[()]
         return result
 
     return cached_property(finished)
@@ -92,28 +85,48 @@ class Equilibrium:
         return self.cloud.statistics is Statistics.BOSE
 
     @cached_property
+    def _mass(self) -> float:
+        return self.cloud.mass
+
+    @cached_property
+    def _atoms(self) -> Floats:
+        atoms: Floats = self.cloud.atoms
+        return atoms
+
+    @cached_property
+    def _temperature(self) -> Floats:
+        temperature: Floats = self.cloud.temperature
+        return temperature
+
+    @cached_property
     def _thermal_energy(self) -> Floats:
         """kT. [J]"""
-        energy: Floats = boltzmann * self.cloud.temperature
-        return energy
+        return boltzmann * self._temperature
 
     @cached_property
     def _mean_angular(self) -> Floats:
         """wbar. [rad/s]"""
-        return 2.0 * math.pi * self.cloud.trap.mean_frequency
+        angular: Floats = 2.0 * math.pi * self.cloud.trap.mean_frequency
+        return angular
+
+    @cached_property
+    def _level_temperature(self) -> Floats:
+        """hbar wbar/k. [K]"""
+        return reduced_planck * self._mean_angular / boltzmann
 
     @cached_property
     def _levels(self) -> Floats:
         """kT/(hbar wbar). [1]"""
         with np.errstate(all="ignore"):
-            return self._thermal_energy / (reduced_planck * self._mean_angular)
+            levels: Floats = self._temperature / self._level_temperature
+        return levels
 
     @cached_property
     def _degeneracy(self) -> Floats:
         """X = N (hbar wbar/kT)^3. [1]"""
         with np.errstate(all="ignore"):
             tau = self._levels
-            degeneracy: Floats = self.cloud.atoms / (tau * tau * tau)
+            degeneracy: Floats = self._atoms / (tau * tau * tau)
         return degeneracy
 
     @cached_property
@@ -123,19 +136,25 @@ class Equilibrium:
 
     @cached_property
     def _wavelength(self) -> Floats:
-        length: Floats = planck / np.sqrt(2.0 * math.pi * self.cloud.mass * self._thermal_energy)
+        length: Floats = planck / np.sqrt(2.0 * math.pi * self._mass * self._thermal_energy)
         return length
+
+    @cached_property
+    def _quantum_volume(self) -> Floats:
+        """lambda^3. [m^3]"""
+        volume: Floats = self._wavelength**3
+        return volume
 
     @cached_property
     def _oscillator_lengths(self) -> Floats:
         """(..., 3) sqrt(hbar/(m w)). [m]"""
-        lengths: Floats = np.sqrt(reduced_planck / (self.cloud.mass * self.cloud.trap.angular_frequencies))
+        lengths: Floats = np.sqrt(reduced_planck / (self._mass * self.cloud.trap.angular_frequencies))
         return lengths
 
     @cached_property
     def _thermal_lengths(self) -> Floats:
         """(..., 3) rms radii sqrt(kT/(m w^2)) of the classical cloud. [m]"""
-        speed = np.sqrt(self._thermal_energy / self.cloud.mass)
+        speed = np.sqrt(self._thermal_energy / self._mass)
         lengths: Floats = np.expand_dims(speed, -1) / self.cloud.trap.angular_frequencies
         return lengths
 
@@ -152,7 +171,7 @@ class Equilibrium:
     @quantity
     def oscillator_length(self) -> Floats:
         """aho = sqrt(hbar/(m wbar)). [m]"""
-        return np.sqrt(reduced_planck / (self.cloud.mass * self._mean_angular))
+        return np.sqrt(reduced_planck / (self._mass * self._mean_angular))
 
     # How degenerate the cloud is.
 
@@ -186,8 +205,7 @@ class Equilibrium:
         """Tc0 = (hbar wbar/k) (N/zeta(3))^(1/3) of ideal bosons in a large harmonic trap. [K] [1]"""
         if not self.bosons:
             return _nowhere()
-        atoms: Floats = np.cbrt(self.cloud.atoms / zeta(3.0))
-        return reduced_planck * self._mean_angular / boltzmann * atoms
+        return self._level_temperature * np.cbrt(self._atoms / zeta(3.0))
 
     @quantity
     def finite_size_shift(self) -> Floats:
@@ -196,7 +214,7 @@ class Equilibrium:
             return _nowhere()
         trap = self.cloud.trap
         shape: Floats = trap.arithmetic_mean_frequency / trap.mean_frequency
-        return FINITE_SIZE_COEFFICIENT * shape / np.cbrt(self.cloud.atoms)
+        return FINITE_SIZE_COEFFICIENT * shape / np.cbrt(self._atoms)
 
     @quantity
     def interaction_shift(self) -> Floats:
@@ -204,7 +222,8 @@ class Equilibrium:
         if not self.bosons:
             return _nowhere()
         reduced: Floats = self.cloud.length / self.oscillator_length
-        return INTERACTION_COEFFICIENT * reduced * self.cloud.atoms ** (1.0 / 6.0)
+        root: Floats = self._atoms ** (1.0 / 6.0)
+        return INTERACTION_COEFFICIENT * reduced * root
 
     @quantity
     def critical_temperature_shifted(self) -> Floats:
@@ -224,15 +243,14 @@ class Equilibrium:
     @quantity
     def condensate_atoms(self) -> Floats:
         """N0. [1]"""
-        return self.condensate_fraction * self.cloud.atoms
+        return self.condensate_fraction * self._atoms
 
     @quantity
     def fermi_temperature(self) -> Floats:
         """TF = (hbar wbar/k) (6N)^(1/3), N in one spin state. [K] [4]"""
         if self.bosons:
             return _nowhere()
-        atoms: Floats = np.cbrt(6.0 * self.cloud.atoms)
-        return reduced_planck * self._mean_angular / boltzmann * atoms
+        return self._level_temperature * np.cbrt(6.0 * self._atoms)
 
     @quantity
     def fermi_energy(self) -> Floats:
@@ -242,7 +260,7 @@ class Equilibrium:
     @quantity
     def fermi_wavenumber(self) -> Floats:
         """kF = sqrt(2 m EF)/hbar. [1/m]"""
-        return np.sqrt(2.0 * self.cloud.mass * self.fermi_energy) / reduced_planck
+        return np.sqrt(2.0 * self._mass * self.fermi_energy) / reduced_planck
 
     @quantity
     def reduced_temperature(self) -> Floats:
@@ -286,15 +304,15 @@ class Equilibrium:
         """Density of one spin state that its atoms meet on average, (integral of n^2)/N. [1/m^3]"""
         raise NotImplementedError
 
-    @vector_quantity
+    @quantity
     def thermal_radii(self) -> Floats:
-        """rms radii of the thermal atoms, one an axis. [m]"""
+        """(..., 3) rms radii of the thermal atoms. [m]"""
         raise NotImplementedError
 
-    @vector_quantity
+    @quantity
     def condensate_radii(self) -> Floats:
-        """Radii of a Thomas-Fermi condensate, one an axis; NaN without one. [m]"""
-        return _nowhere()
+        """(..., 3) Radii of a Thomas-Fermi condensate; NaN without one. [m]"""
+        return np.full(3, np.nan)
 
     @quantity
     def energy_per_atom(self) -> Floats:
@@ -315,15 +333,15 @@ class Equilibrium:
         if not self.bosons and cloud.spin_components == 1:
             return np.zeros(())
         sigma = collisions.low_energy_cross_section(cloud.statistics, cloud.length, cloud.spin_components)
-        sigma = sigma * collisions.thermal_cross_section_factor(cloud.mass, cloud.temperature, cloud.length)
-        density = self.peak_phase_space_density / self._wavelength**3
-        return collisions.mean_collision_rate(density, sigma, collisions.mean_speed(cloud.mass, cloud.temperature))
+        sigma = sigma * collisions.thermal_cross_section_factor(self._mass, self._temperature, cloud.length)
+        density = self.peak_phase_space_density / self._quantum_volume
+        return collisions.mean_collision_rate(density, sigma, collisions.mean_speed(self._mass, self._temperature))
 
     @quantity
     def mean_free_path(self) -> Floats:
         """1/(sqrt(2) n sigma) where the thermal density is largest; NaN where atoms do not collide. [m]"""
         rate = self.elastic_collision_rate
-        speed = collisions.mean_speed(self.cloud.mass, self.cloud.temperature)
+        speed = collisions.mean_speed(self._mass, self._temperature)
         # The mean rate is n sigma vbar/2, at the same n and sigma.
         return np.where(rate > 0.0, speed / (2.0 * math.sqrt(2.0) * rate), np.nan)
 
@@ -331,7 +349,7 @@ class Equilibrium:
     def truncation(self) -> Floats:
         """Trap depth over kT; NaN where the depth is not given. [1]"""
         depth = self.cloud.trap.depth
-        return _nowhere() if depth is None else depth / self._thermal_energy
+        return _nowhere() if depth is None else np.asarray(depth / self._thermal_energy)
 
     # How far the classical formulas are off.
 

@@ -18,7 +18,7 @@ from functools import cached_property
 import numpy as np
 
 from physics.checks import Floats
-from physics.equilibrium import Equilibrium, quantity, vector_quantity
+from physics.equilibrium import Equilibrium, quantity
 from physics.oscillator_levels import OscillatorLevels, squared_density
 
 
@@ -35,16 +35,15 @@ class ExactLevels(Equilibrium):
 
     @cached_property
     def _cells(self) -> Floats:
-        """(..., 6) for each cell: ground-level atoms, excited atoms, their energies (3) and central density, made in one
-        pass because they share the sums."""
-        atoms = np.broadcast_to(self.cloud.atoms, self.cloud.shape)
+        """(..., 6) Ground-level atoms, excited atoms, their energies (3) and central density, made in one pass."""
+        atoms = np.broadcast_to(self._atoms, self.cloud.shape)
         cells = np.empty((*self.cloud.shape, 6))
         centre = np.zeros((3, 1))
         with np.errstate(all="ignore"):
             for index in np.ndindex(self.cloud.shape):
                 levels = OscillatorLevels(self.spacings[index])
                 ground = levels.ground_atoms(float(atoms[index]))
-                alpha = ground_distance(ground)
+                alpha = float(ground_distance(ground))
                 cells[index][0] = ground
                 cells[index][1] = levels.excited_atoms(alpha)
                 cells[index][2:5] = levels.excited_energies(alpha)
@@ -60,7 +59,8 @@ class ExactLevels(Equilibrium):
     @cached_property
     def _ground_density(self) -> Floats:
         """Peak density of one atom in the ground level. [1/m^3]"""
-        return 1.0 / (math.pi**1.5 * self.oscillator_length**3)
+        density: Floats = 1.0 / (math.pi**1.5 * self.oscillator_length**3)
+        return density
 
     @quantity
     def log_fugacity(self) -> Floats:
@@ -70,7 +70,7 @@ class ExactLevels(Equilibrium):
     @quantity
     def condensate_fraction(self) -> Floats:
         """Share of the atoms in the ground level. [1]"""
-        return self._cells[..., 0] / self.cloud.atoms
+        return self._cells[..., 0] / self._atoms
 
     @quantity
     def condensate_atoms(self) -> Floats:
@@ -79,7 +79,7 @@ class ExactLevels(Equilibrium):
     @quantity
     def peak_phase_space_density(self) -> Floats:
         """n lambda^3 of the atoms above the ground level at the centre. [1]"""
-        return self._cells[..., 5] * self._ground_density * self._wavelength**3
+        return self._cells[..., 5] * self._ground_density * self._quantum_volume
 
     @quantity
     def peak_density(self) -> Floats:
@@ -91,11 +91,11 @@ class ExactLevels(Equilibrium):
         for index in np.ndindex(self.cloud.shape):
             ground = float(self._cells[index][0])
             squared[index] = squared_density(self.spacings[index], float(ground_distance(ground)), ground)
-        return squared / self.cloud.atoms * self._ground_density
+        return squared / self._atoms * self._ground_density
 
-    @vector_quantity
+    @quantity
     def thermal_radii(self) -> Floats:
-        """rms radii of the atoms above the ground level, one an axis. [m]"""
+        """(..., 3) rms radii of the atoms above the ground level. [m]"""
         # Half of an oscillator's energy is potential energy, in every level.
         energies = self._cells[..., 2:5] / self._cells[..., 1:2]
         return self._thermal_lengths * np.sqrt(energies)
@@ -104,7 +104,7 @@ class ExactLevels(Equilibrium):
     def energy_per_atom(self) -> Floats:
         """Zero-point energy included. No interaction in it. [J]"""
         ground = self._cells[..., 0] * self._zero_point
-        return self._thermal_energy * (ground + self._cells[..., 2:5].sum(axis=-1)) / self.cloud.atoms
+        return self._thermal_energy * (ground + self._cells[..., 2:5].sum(axis=-1)) / self._atoms
 
 
 def ground_distance(ground_atoms: Floats | float) -> Floats:

@@ -16,14 +16,15 @@ from functools import cached_property
 import numpy as np
 
 from physics.checks import Floats
-from physics.equilibrium import Equilibrium, quantity, vector_quantity
+from physics.equilibrium import Equilibrium, quantity
 from physics.harmonic_integrals import bose_overlap
 from physics.statistics import bose, bose_inverse, zeta
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class IdealBose(Equilibrium):
-    """Thermal atoms n lambda^3 = g_3/2(z e^(-V/kT)), z from N = (kT/hbar wbar)^3 g_3(z); the rest condenses at z = 1."""
+    """Thermal atoms n lambda^3 = g_3/2(z e^(-V/kT)), z from N = (kT/hbar wbar)^3 g_3(z); what g_3(1) does not hold is
+    condensed."""
 
     @cached_property
     def _alpha(self) -> Floats:
@@ -34,7 +35,8 @@ class IdealBose(Equilibrium):
     def _thermal_share(self) -> Floats:
         """N_thermal/N. [1]"""
         with np.errstate(all="ignore"):
-            return np.minimum(1.0, zeta(3.0) / self._degeneracy)
+            share: Floats = np.minimum(1.0, zeta(3.0) / self._degeneracy)
+        return share
 
     @quantity
     def log_fugacity(self) -> Floats:
@@ -52,19 +54,20 @@ class IdealBose(Equilibrium):
     @quantity
     def _condensate_density(self) -> Floats:
         """Density of the condensate at the centre, the oscillator's ground level. [1/m^3]"""
-        return self.condensate_atoms / (math.pi**1.5 * self.oscillator_length**3)
+        volume: Floats = math.pi**1.5 * self.oscillator_length**3
+        return self.condensate_atoms / volume
 
     @quantity
     def peak_density(self) -> Floats:
         """At the centre, with the condensate in the ground level of the trap. [1/m^3]"""
-        return self.peak_phase_space_density / self._wavelength**3 + self._condensate_density
+        return self.peak_phase_space_density / self._quantum_volume + self._condensate_density
 
     @quantity
     def mean_density(self) -> Floats:
         """(integral of n^2)/N. The condensate counts as small against the thermal cloud around it. [1/m^3]"""
         fraction, n0 = self.condensate_fraction, self._condensate_density
-        thermal = self.peak_phase_space_density / self._wavelength**3
-        overlap: Floats = bose_overlap(self._alpha) / self._degeneracy / self._wavelength**3
+        thermal = self.peak_phase_space_density / self._quantum_volume
+        overlap: Floats = bose_overlap(self._alpha) / self._degeneracy / self._quantum_volume
         return overlap + fraction * (n0 / 2.0**1.5 + 2.0 * thermal)
 
     @cached_property
@@ -73,9 +76,10 @@ class IdealBose(Equilibrium):
         alpha = self._alpha
         # Both functions are e^-alpha for large alpha and vanish together only far outside any cloud.
         with np.errstate(all="ignore"):
-            return np.divide(bose(4.0, alpha), bose(3.0, alpha))
+            share: Floats = np.divide(bose(4.0, alpha), bose(3.0, alpha))
+        return share
 
-    @vector_quantity
+    @quantity
     def thermal_radii(self) -> Floats:
         return self._thermal_lengths * np.expand_dims(np.sqrt(self._potential_share), -1)
 

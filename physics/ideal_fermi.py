@@ -15,7 +15,7 @@ from functools import cached_property
 import numpy as np
 
 from physics.checks import Floats
-from physics.equilibrium import Equilibrium, quantity, vector_quantity
+from physics.equilibrium import Equilibrium, quantity
 from physics.harmonic_integrals import fermi_overlap
 from physics.statistics import fermi, fermi_inverse
 
@@ -39,21 +39,22 @@ class IdealFermi(Equilibrium):
 
     @quantity
     def peak_density(self) -> Floats:
-        return self.peak_phase_space_density / self._wavelength**3
+        return self.peak_phase_space_density / self._quantum_volume
 
     @quantity
     def mean_density(self) -> Floats:
-        return fermi_overlap(self._log_z) / self._degeneracy / self._wavelength**3
+        return fermi_overlap(self._log_z) / self._degeneracy / self._quantum_volume
 
     @cached_property
     def _potential_share(self) -> Floats:
         """<V>/(3/2 kT) of an atom, f_4/f_3. [1]"""
         with np.errstate(all="ignore"):
-            return np.divide(fermi(4.0, self._log_z), self._degeneracy)
+            share: Floats = np.divide(fermi(4.0, self._log_z), self._degeneracy)
+        return share
 
-    @vector_quantity
+    @quantity
     def thermal_radii(self) -> Floats:
-        """rms radii of all atoms, one an axis. [m]"""
+        """(..., 3) rms radii of all atoms. [m]"""
         return self._thermal_lengths * np.expand_dims(np.sqrt(self._potential_share), -1)
 
     @quantity

@@ -160,10 +160,10 @@ def squared_density(spacings: Floats, alpha: float, ground: float) -> float:
         amplitude /= np.sqrt(-np.expm1(-2.0 * jb))
         tanh[i] = np.tanh(0.5 * jb)
     powers = levels._fugacity_powers(alpha)
-    both = 2.0**-1.5
+    both = 1.0 / math.sqrt(8.0)
     # Overlaps of two propagators, less those with the ground level: what is left falls off in both indices.
     with_ground = amplitude / np.sqrt(np.prod(tanh + 1.0, axis=0))
     pairs = np.outer(amplitude, amplitude) / np.sqrt(np.prod(tanh[:, :, np.newaxis] + tanh[:, np.newaxis, :], axis=0))
-    excited = powers @ (pairs - with_ground - with_ground[:, np.newaxis] + both) @ powers
+    excited = float(powers @ (pairs - with_ground - with_ground[:, np.newaxis] + both) @ powers)
     mixed = 2.0 * ground * float(powers @ (with_ground - both))
-    return float(excited) + mixed + both * ground * ground
+    return excited + mixed + both * ground * ground

@@ -1,8 +1,8 @@
 """Bosons in a harmonic trap: a Thomas-Fermi condensate that repels thermal atoms, which do not repel one another.
 
-Above the threshold, which stays at Tc0, this is the ideal gas. Below, the thermal atoms feel |V - mu| and the condensate
-feels no thermal atoms. Valid for hbar w << kT, N0 a >> aho and a weakly interacting gas, n a^3 << 1; a few percent of Tc
-around the threshold the neglected repulsion among thermal atoms counts.
+Above the threshold, which stays at Tc0, this is the ideal gas. Below, the thermal atoms feel |V - mu| and the
+condensate feels no thermal atoms. Valid for hbar w << kT, N0 a >> aho and a weakly interacting gas, n a^3 << 1; within
+a few percent of Tc the neglected repulsion among thermal atoms counts.
 
 References
 ----------
@@ -22,7 +22,7 @@ from numpy.typing import NDArray
 
 from physics import semi_ideal_integrals as integrals
 from physics.checks import Floats
-from physics.equilibrium import quantity, vector_quantity
+from physics.equilibrium import quantity
 from physics.ideal_bose import IdealBose
 from physics.statistics import bose, zeta
 
@@ -93,7 +93,7 @@ class SemiIdeal(IdealBose):
             centre = self._below(self._density_scale) * self._height + bose(1.5, self._height)
             return np.maximum(centre, zeta(1.5))
 
-        return self._merged(self.peak_phase_space_density, below) / self._wavelength**3
+        return self._merged(self.peak_phase_space_density, below) / self._quantum_volume
 
     @quantity
     def mean_density(self) -> Floats:
@@ -103,7 +103,7 @@ class SemiIdeal(IdealBose):
             x, scale, X = self._height, self._below(self._density_scale), self._below(self._degeneracy)
             condensate = 4.0 / 7.0 * scale * x * self._coupling * x**2 * np.sqrt(x)
             both = 2.0 * scale * integrals.density_product(x)
-            return (condensate + both + integrals.density_squared(x)) / X / self._below(self._wavelength**3)
+            return (condensate + both + integrals.density_squared(x)) / X / self._below(self._quantum_volume)
 
         return self._merged(super().mean_density, below)
 
@@ -114,7 +114,7 @@ class SemiIdeal(IdealBose):
             lambda: integrals.trap_energy(self._height) / integrals.thermal_number(self._height) / 1.5,
         )
 
-    @vector_quantity
+    @quantity
     def condensate_radii(self) -> Floats:
         """sqrt(2 mu/m)/w_i, where the Thomas-Fermi density ends. [m]"""
         x = self._merged(np.nan, lambda: self._height)
