@@ -166,11 +166,11 @@ LIGHT = Theme(
     lines=_lines(
         ink="#20252b",
         quiet="#6b727c",
-        blue="#174f9f",
+        blue="#2363bd",
         orange="#b24a14",
         green="#0d7557",
-        purple="#a53fb5",
-        cloud="#9a0b66",
+        purple="#6b2c74",
+        cloud="#990653",
     ),
 )
 
