@@ -71,6 +71,7 @@ __all__ = [
 _WIDE = Context(prec=60)
 _ODD_SPACES = "\t\u00a0\u2007\u2009\u202f"  # between number and unit they do no harm; between digits they are refused
 _TWO_PI = re.compile(r"2\s*(?:pi|π)\s*[x×*·]\s*", re.IGNORECASE)
+_PLAIN_FROM, _PLAIN_TO = -4, 5  # powers of ten between which numbers are written without one
 
 
 @dataclass(frozen=True)
@@ -212,11 +213,11 @@ def _in_unit(value: float, sigma: float | None, unit: str, si_unit: str | None) 
 
 
 def _written(number: Decimal, spread: Decimal | None, place: int, unit: str) -> str:
-    """Plain digits from 0.001 up to 99999, pure numbers up to 9999; a power of ten outside."""
+    """Plain digits where they are few; pure numbers go over to a power of ten one place earlier."""
     unit = "" if unit == "1" else unit
     largest = max(number.copy_abs(), spread or Decimal(0))
     size = 0 if largest.is_zero() else (largest if spread else Context(prec=12).plus(largest)).adjusted()
-    if -4 < size < (5 if unit else 4):
+    if _PLAIN_FROM < size < (_PLAIN_TO if unit else _PLAIN_TO - 1):
         body = write_number(number, spread, place)
     else:
         body = write_number(number, spread, place + size, exponent=size)
@@ -237,10 +238,16 @@ def exact_text(value: float, unit: str, sigma: float | None = None, *, kind: Kin
         text = _written(number, spread, place, unit)
         if _read_back(text, kind) == (value, sigma):
             return text
-    text = _written(number, None, leading_place(number, 10), "")
-    if spread is not None:
-        text += f" ± {write_number(spread, None, leading_place(spread, 4))}"
-    return f"{text} {unit}".rstrip()
+    if spread is None:
+        return _written(number, None, leading_place(number, 10), unit)
+    power = number.adjusted()
+    plain = _PLAIN_FROM < power < _PLAIN_TO
+    shift = 0 if plain else -power
+    number, spread = number.scaleb(shift, _WIDE), spread.scaleb(shift, _WIDE)
+    body = " ± ".join(
+        write_number(part, None, max(leading_place(part, digits), 0)) for part, digits in ((number, 10), (spread, 4))
+    )
+    return f"{body} {unit}".rstrip() if plain else f"({body})e{power} {unit}".rstrip()
 
 
 def _read_back(text: str, kind: Kind) -> tuple[float, float | None]:

@@ -266,7 +266,7 @@ class QuantityField(QLineEdit):
 
     def show_in(self, unit: str) -> None:
         """Write the same quantity in another unit. Value and uncertainty stay what they are, so no answer changes."""
-        if self._error or self._quantity is None:
+        if self._error or self._quantity is None or unit == unit_of(self._quantity.text, self.kind):
             return
         value, sigma = self._quantity.value, self._quantity.sigma
         text = exact_text(value, unit, sigma, kind=self.kind)
