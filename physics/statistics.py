@@ -18,11 +18,20 @@ References
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
-from typing import Any, overload
+from functools import cache
+from typing import TYPE_CHECKING, Any, overload
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from numpy.typing import ArrayLike, NDArray
+
+    from physics.statistics_tables import Kernel, Saturation
+
+    _Array = NDArray[np.float64]
+    _Arrays = NDArray[Any] | Sequence[Any]
 
 # Twice the order, for every order served.
 _TWICE = {n / 2: n for n in range(1, 9)}
@@ -36,9 +45,6 @@ _ZETA = {
     3.5: 1.1267338673170566,
     4.0: 1.0823232337111381,
 }
-
-_Array = NDArray[np.float64]
-_Arrays = NDArray[Any] | Sequence[Any]
 
 
 def _twice(s: float) -> int:
@@ -56,11 +62,60 @@ def zeta(s: float) -> float:
         raise ValueError(f"order s must be one of 3/2, 2, 5/2, 3, 7/2 and 4, got {s!r}") from None
 
 
-def _apply(kernel: Callable[[int, _Array], _Array], twice: int, argument: ArrayLike) -> float | _Array:
+# Kernels, and with them the coefficients, are loaded by the first call that needs them. Two threads that ask at once
+# may both build one; either serves.
+@cache
+def _bose(twice: int) -> Kernel:
+    from physics.statistics_tables import Bose
+
+    return Bose(twice)
+
+
+@cache
+def _fermi(twice: int) -> Kernel:
+    from physics.statistics_tables import Fermi
+
+    return Fermi(twice)
+
+
+@cache
+def _fermi_inverse(twice: int) -> Kernel:
+    from physics.statistics_tables import FermiInverse
+
+    return FermiInverse(twice)
+
+
+@cache
+def _saturation(twice: int) -> Saturation:
+    from physics.statistics_tables import Saturation
+
+    return Saturation(twice)
+
+
+@cache
+def _bose_inverse(twice: int) -> Kernel:
+    from physics.statistics_tables import BoseHalfInverse, BoseInverse
+
+    if twice == 1:
+        return BoseHalfInverse()
+    # g_1 = -ln(1 - e^-alpha) is its own inverse.
+    return _bose(2) if twice == 2 else BoseInverse(_saturation(twice))
+
+
+@cache
+def _deficit_inverse(twice: int) -> Kernel:
+    from physics.statistics_tables import DeficitInverse
+
+    return DeficitInverse(_saturation(twice))
+
+
+def _apply(kernel: Kernel, argument: float | ArrayLike) -> float | _Array:
+    if isinstance(argument, (float, int)):
+        return kernel.one(float(argument))
     x = np.asarray(argument, dtype=np.float64)
-    with np.errstate(all="ignore"):
-        result = kernel(twice, x.reshape(-1)).reshape(x.shape)
-    return float(result) if x.ndim == 0 else result
+    if x.ndim == 0:
+        return kernel.one(float(x))
+    return kernel.many(x.reshape(-1)).reshape(x.shape)
 
 
 @overload
@@ -83,7 +138,7 @@ def bose(s: float, alpha: ArrayLike) -> float | _Array:
     ------
     ValueError : for any other order.
     """
-    return _apply(_bose, _twice(s), alpha)
+    return _apply(_bose(_twice(s)), alpha)
 
 
 @overload
@@ -106,7 +161,7 @@ def fermi(s: float, log_z: ArrayLike) -> float | _Array:
     ------
     ValueError : for any other order.
     """
-    return _apply(_fermi, _twice(s), log_z)
+    return _apply(_fermi(_twice(s)), log_z)
 
 
 @overload
@@ -132,7 +187,7 @@ def bose_inverse(s: float, value: ArrayLike) -> float | _Array:
     ------
     ValueError : for any other order.
     """
-    return _apply(_bose_inverse, _twice(s), value)
+    return _apply(_bose_inverse(_twice(s)), value)
 
 
 @overload
@@ -156,7 +211,7 @@ def bose_inverse_from_deficit(s: float, deficit: ArrayLike) -> float | _Array:
     ValueError : for any other order; at s = 1/2 and 1 no gas saturates.
     """
     zeta(s)
-    return _apply(_deficit_inverse, _twice(s), deficit)
+    return _apply(_deficit_inverse(_twice(s)), deficit)
 
 
 @overload
@@ -179,60 +234,4 @@ def fermi_inverse(s: float, value: ArrayLike) -> float | _Array:
     ------
     ValueError : for any other order.
     """
-    return _apply(_fermi_inverse, _twice(s), value)
-
-
-def _bose(twice: int, alpha: _Array) -> _Array:
-    from physics import statistics_masters as masters
-
-    result = masters.bose_master(twice, np.where(alpha > 0, alpha, 1.0))
-    return np.where(alpha > 0, result, np.where(alpha == 0, _ZETA.get(twice / 2, np.inf), np.nan))
-
-
-def _fermi(twice: int, log_z: _Array) -> _Array:
-    from physics import statistics_masters as masters
-
-    result = masters.fermi_master(twice, np.where(np.isnan(log_z), 0.0, log_z))
-    return np.where(np.isnan(log_z), np.nan, result)
-
-
-def _fermi_inverse(twice: int, value: _Array) -> _Array:
-    from physics import statistics_masters as masters
-
-    top = masters.fermi_master(twice, np.array([masters.LARGE_ETA]))[0]
-    inside = (value >= masters.SMALL_VALUE) & (value <= top)
-    result = np.where(value > top, masters.fermi_inverse_large(twice, value), masters.fermi_inverse_small(twice, value))
-    result[inside] = masters.fermi_root(twice, value[inside])
-    return result
-
-
-def _bose_inverse(twice: int, value: _Array) -> _Array:
-    from physics import statistics_masters as masters
-
-    result = masters.bose_inverse_small(twice, value)
-    if twice == 2:
-        return np.where(value > 0, masters.bose_master(2, np.abs(value)), result)
-    if twice == 1:
-        top = masters.LARGE_BOSE_HALF
-        result = np.where(value > top, masters.bose_inverse_large_half(value), result)
-    else:
-        top = _ZETA[twice / 2] / 2
-        near = value > top
-        if near.any():
-            result[near] = _deficit_inverse(twice, np.fmin(_ZETA[twice / 2] - value[near], top))
-    inside = (value >= masters.SMALL_VALUE) & (value <= top)
-    result[inside] = masters.bose_root(twice, value[inside])
-    return result
-
-
-def _deficit_inverse(twice: int, deficit: _Array) -> _Array:
-    from physics import statistics_masters as masters
-
-    top = _ZETA[twice / 2] / 2
-    result = masters.bose_deficit_inverse_small(twice, np.maximum(deficit, 0))
-    inside = (deficit >= masters.SMALL_DEFICIT) & (deficit <= top)
-    result[inside] = masters.bose_deficit_root(twice, deficit[inside])
-    far = deficit > top
-    if far.any():
-        result[far] = _bose_inverse(twice, np.fmin(_ZETA[twice / 2] - deficit[far], top))
-    return result
+    return _apply(_fermi_inverse(_twice(s)), value)

@@ -31,7 +31,7 @@ Array = NDArray[np.float64]
 # Below this the first two terms of the power series in z are exact to rounding, and so is their inversion.
 SMALL_VALUE = 2.0**-30
 # Above this eta one correction term inverts the Sommerfeld expansion.
-LARGE_ETA = 2.0e6
+LARGE_ETA = 1.0e5
 # g_1/2 above this is sqrt(pi/alpha) + zeta(1/2), its next term being below rounding.
 LARGE_BOSE_HALF = 2.0**20
 ZETA_HALF = -1.4603545088095868  # zeta(1/2), the constant term of BOSE_EXPANSION[1]
@@ -122,21 +122,21 @@ def _newton(seed: Array, target: Array, function: Callable[[Array], Array], slop
 
 
 def fermi_root(twice: int, value: Array) -> Array:
-    """eta with f_s(eta) = value, for SMALL_VALUE/2 <= value <= f_s(2 LARGE_ETA)."""
-    grid = np.concatenate([np.linspace(-23, 12, 281)[:-1], np.geomspace(12, 3 * LARGE_ETA, 320)])
+    """eta with f_s(eta) = value, for SMALL_VALUE <= value <= f_s(LARGE_ETA)."""
+    grid = np.concatenate([np.linspace(-23, 12, 281)[:-1], np.geomspace(12, LARGE_ETA, 320)])
     seed = np.interp(np.log(value), np.log(fermi_master(twice, grid)), grid)
     return _newton(seed, value, lambda x: fermi_master(twice, x), lambda x: fermi_master(twice - 2, x))
 
 
 def bose_root(twice: int, value: Array) -> Array:
-    """alpha with g_s(alpha) = value, for SMALL_VALUE/2 <= value, and <= zeta(s)/2 (s = 1/2: 2 LARGE_BOSE_HALF)."""
+    """alpha with g_s(alpha) = value, for SMALL_VALUE <= value <= 0.54 zeta(s), for s = 1/2 LARGE_BOSE_HALF."""
     grid = np.concatenate([np.geomspace(1e-13, 1, 601)[:-1], np.linspace(1, 24, 185)])[::-1]
     seed = np.interp(np.log(value), np.log(bose_master(twice, grid)), grid)
     return _newton(seed, value, lambda x: bose_master(twice, x), lambda x: -bose_master(twice - 2, x))
 
 
 def bose_deficit_root(twice: int, deficit: Array) -> Array:
-    """alpha with zeta(s) - g_s(alpha) = deficit, for SMALL_DEFICIT/2 <= deficit <= zeta(s)/2."""
+    """alpha with zeta(s) - g_s(alpha) = deficit, for SMALL_DEFICIT <= deficit <= 0.54 zeta(s)."""
     # (ln alpha against ln deficit is nearly straight: few grid points do.)
     grid = np.geomspace(1e-72, 1, 1401)
     seed = np.exp(np.interp(np.log(deficit), np.log(bose_deficit_master(twice, grid)), np.log(grid)))
