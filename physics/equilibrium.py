@@ -99,7 +99,7 @@ class Equilibrium:
         return temperature
 
     @cached_property
-    def _thermal_energy(self) -> Floats:
+    def thermal_energy(self) -> Floats:
         """kT. [J]"""
         return boltzmann * self._temperature
 
@@ -136,7 +136,7 @@ class Equilibrium:
 
     @cached_property
     def _wavelength(self) -> Floats:
-        length: Floats = planck / np.sqrt(2.0 * math.pi * self._mass * self._thermal_energy)
+        length: Floats = planck / np.sqrt(2.0 * math.pi * self._mass * self.thermal_energy)
         return length
 
     @cached_property
@@ -146,7 +146,7 @@ class Equilibrium:
         return volume
 
     @cached_property
-    def _oscillator_lengths(self) -> Floats:
+    def oscillator_lengths(self) -> Floats:
         """(..., 3) sqrt(hbar/(m w)). [m]"""
         lengths: Floats = np.sqrt(reduced_planck / (self._mass * self.cloud.trap.angular_frequencies))
         return lengths
@@ -154,7 +154,7 @@ class Equilibrium:
     @cached_property
     def _thermal_lengths(self) -> Floats:
         """(..., 3) rms radii sqrt(kT/(m w^2)) of the classical cloud. [m]"""
-        speed = np.sqrt(self._thermal_energy / self._mass)
+        speed = np.sqrt(self.thermal_energy / self._mass)
         lengths: Floats = np.expand_dims(speed, -1) / self.cloud.trap.angular_frequencies
         return lengths
 
@@ -198,7 +198,7 @@ class Equilibrium:
     @quantity
     def chemical_potential(self) -> Floats:
         """mu, from the bottom of the trap. [J]"""
-        return self.log_fugacity * self._thermal_energy
+        return self.log_fugacity * self.thermal_energy
 
     @quantity
     def critical_temperature(self) -> Floats:
@@ -214,7 +214,8 @@ class Equilibrium:
             return _nowhere()
         trap = self.cloud.trap
         shape: Floats = trap.arithmetic_mean_frequency / trap.mean_frequency
-        return FINITE_SIZE_COEFFICIENT * shape / np.cbrt(self._atoms)
+        shift: Floats = FINITE_SIZE_COEFFICIENT * shape / np.cbrt(self._atoms)
+        return shift
 
     @quantity
     def interaction_shift(self) -> Floats:
@@ -349,7 +350,7 @@ class Equilibrium:
     def truncation(self) -> Floats:
         """Trap depth over kT; NaN where the depth is not given. [1]"""
         depth = self.cloud.trap.depth
-        return _nowhere() if depth is None else np.asarray(depth / self._thermal_energy)
+        return _nowhere() if depth is None else np.asarray(depth / self.thermal_energy)
 
     # How far the classical formulas are off.
 
@@ -361,7 +362,7 @@ class Equilibrium:
     @quantity
     def classical_energy_error(self) -> Floats:
         """3 kT over the energy per atom, minus 1. [1]"""
-        return 3.0 * self._thermal_energy / self.energy_per_atom - 1.0
+        return 3.0 * self.thermal_energy / self.energy_per_atom - 1.0
 
 
 def _nowhere() -> Floats:

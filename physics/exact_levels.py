@@ -104,7 +104,8 @@ class ExactLevels(Equilibrium):
     def energy_per_atom(self) -> Floats:
         """Zero-point energy included. No interaction in it. [J]"""
         ground = self._cells[..., 0] * self._zero_point
-        return self._thermal_energy * (ground + self._cells[..., 2:5].sum(axis=-1)) / self._atoms
+        energy: Floats = self.thermal_energy * (ground + self._cells[..., 2:5].sum(axis=-1)) / self._atoms
+        return energy
 
 
 def ground_distance(ground_atoms: Floats | float) -> Floats:

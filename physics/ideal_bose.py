@@ -68,7 +68,8 @@ class IdealBose(Equilibrium):
         fraction, n0 = self.condensate_fraction, self._condensate_density
         thermal = self.peak_phase_space_density / self._quantum_volume
         overlap: Floats = bose_overlap(self._alpha) / self._degeneracy / self._quantum_volume
-        return overlap + fraction * (n0 / 2.0**1.5 + 2.0 * thermal)
+        mean: Floats = overlap + fraction * (n0 / math.sqrt(8.0) + 2.0 * thermal)
+        return mean
 
     @cached_property
     def _potential_share(self) -> Floats:
@@ -81,9 +82,10 @@ class IdealBose(Equilibrium):
 
     @quantity
     def thermal_radii(self) -> Floats:
-        return self._thermal_lengths * np.expand_dims(np.sqrt(self._potential_share), -1)
+        scale: Floats = np.expand_dims(np.sqrt(self._potential_share), -1)
+        return self._thermal_lengths * scale
 
     @quantity
     def energy_per_atom(self) -> Floats:
         """3 kT g_4/g_3 a thermal atom, 0 a condensed one. No interaction in it. [J]"""
-        return 3.0 * self._thermal_energy * self._potential_share * self._thermal_share
+        return 3.0 * self.thermal_energy * self._potential_share * self._thermal_share

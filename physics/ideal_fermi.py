@@ -55,9 +55,10 @@ class IdealFermi(Equilibrium):
     @quantity
     def thermal_radii(self) -> Floats:
         """(..., 3) rms radii of all atoms. [m]"""
-        return self._thermal_lengths * np.expand_dims(np.sqrt(self._potential_share), -1)
+        scale: Floats = np.expand_dims(np.sqrt(self._potential_share), -1)
+        return self._thermal_lengths * scale
 
     @quantity
     def energy_per_atom(self) -> Floats:
         """3 kT f_4/f_3. No interaction in it. [J]"""
-        return 3.0 * self._thermal_energy * self._potential_share
+        return 3.0 * self.thermal_energy * self._potential_share

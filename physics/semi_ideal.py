@@ -131,7 +131,7 @@ class SemiIdeal(IdealBose):
             x, X = self._height, self._below(self._degeneracy)
             thermal = integrals.kinetic_energy(x) + integrals.lifted_energy(x) + x * integrals.thermal_number(x)
             condensate = 5.0 / 7.0 * self._coupling * x**3 * np.sqrt(x)
-            return self._below(self._thermal_energy) * (thermal + condensate) / X
+            return self._below(self.thermal_energy) * (thermal + condensate) / X
 
         return self._merged(super().energy_per_atom, below)
 

@@ -1,0 +1,278 @@
+"""What an answer does not cover: which caveat, how grave, and the number that raised it.
+
+Ids and SI numbers only; the sentences are written where they are shown. Of an array of clouds the worst one counts.
+Limits of local density come from comparing it with exact sums over oscillator levels, for ideal atoms in many traps; the
+others are where a first-order correction reaches a few percent.
+
+References
+----------
+[1] P. A. Ruprecht, M. J. Holland, K. Burnett, M. Edwards, Phys. Rev. A 51, 4704 (1995): collapse of an attractive
+    condensate. Recalled.
+[2] T. D. Lee, K. Huang, C. N. Yang, Phys. Rev. 106, 1135 (1957): energy of a dilute Bose gas beyond mean field.
+[3] O. J. Luiten, M. W. Reynolds, J. T. M. Walraven, Phys. Rev. A 53, 381 (1996): truncated clouds.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from enum import Enum
+from types import MappingProxyType
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from physics.checks import Floats
+from physics.constants import reduced_planck
+from physics.models import Model
+from physics.particles import Certainty, Statistics
+from physics.statistics import zeta
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    from physics.equilibrium import Equilibrium
+
+COLLAPSE = 0.575
+"""N0 |a|/aho above which an attractive condensate in an isotropic trap collapses. [1]"""
+
+
+class Severity(Enum):
+    """How much a caveat weighs.
+
+    NOTE: worth knowing. WARNING: numbers are off by more than they look. REFUSAL: the answer does not describe this
+    cloud.
+    """
+
+    NOTE = "note"
+    WARNING = "warning"
+    REFUSAL = "refusal"
+
+
+@dataclass(frozen=True, kw_only=True)
+class Caveat:
+    """One caveat.
+
+    Attributes
+    ----------
+    id : str. One of `CAVEAT_IDS`.
+    severity : Severity
+    value : float or None. The number that raised it, in SI units or a ratio; the table of ids says which.
+    numbers : mapping of further numbers by name, SI.
+    """
+
+    id: str
+    severity: Severity
+    value: float | None = None
+    numbers: Mapping[str, float] = field(default_factory=lambda: MappingProxyType({}))
+
+    def __post_init__(self) -> None:
+        if self.id not in CAVEAT_IDS:
+            raise ValueError(f"caveat id must be one of {', '.join(CAVEAT_IDS)}, got {self.id}")
+
+
+CAVEAT_IDS = MappingProxyType(
+    {
+        "model_unknown_length": "no value: ideal used, the scattering length is not known",
+        "model_not_repulsive": "scattering length [m]: ideal used, the model needs a repulsive gas",
+        "model_not_offered": "no value: ideal used, the model is not offered",
+        "model_bosons_only": "no value: ideal used, the model describes bosons",
+        "length_unknown": "no value: scattering length not known, so neither collisions nor shifts by interaction",
+        "length_recalled": "scattering length [m]: recalled from its source, not read there",
+        "length_computed": "scattering length [m]: worked out from other data",
+        "finite_size": "first-order shift -dTc/Tc0 by the finite size of the trap's levels",
+        "local_density": "hbar w_max/kTc0 of bosons, relative error of N of fermions: local density is off",
+        "exact_levels_advised": "hbar w_max/kT: only exact levels describe this cloud",
+        "shell_structure": "kT/(hbar w_max): shells of the oscillator show",
+        "low_dimension": "hbar w_max/kT of bosons, EF/(hbar w_max) of fermions; frozen_axes",
+        "frozen_thermal": "hbar w_max/kT: thermal atoms hardly reach the first level of the tightest axis",
+        "few_atoms": "N: grand-canonical means differ from those of a fixed number",
+        "thomas_fermi": "N0 a/aho: too small for a Thomas-Fermi condensate",
+        "near_threshold": "T/Tc0: repulsion among thermal atoms, left out, counts here",
+        "attractive": "scattering length [m]; collapse_atoms",
+        "collapse": "N0 over the largest stable number; collapse_atoms",
+        "dense": "n |a|^3 at the peak",
+        "long_range_length": "|a|/lambda",
+        "fermi_interaction": "kF |a|; inverse = 1/(kF a)",
+        "polarised_fermions": "no value: one spin state does not collide by s-waves",
+        "pauli_blocking": "T/TF: collisions slowed by filled levels, left out of the rate",
+        "hydrodynamic": "mean collision rate over the highest angular trap frequency",
+        "truncated": "depth over kT: the trap cuts the cloud, which is answered as if it did not",
+    }
+)
+"""Every caveat, and what its value means."""
+
+# First-order finite-size shift: shown, warned about, too large for local density.
+_SHIFT_SHOWN, _SHIFT_WARNED, _SHIFT_TOO_LARGE = 0.02, 0.05, 0.12
+_LEVEL_OVER_TC_WARNED, _LEVEL_OVER_T_TOO_LARGE = 0.1, 0.25
+_FERMI_NUMBER_ERROR, _FERMI_LEVELS = 0.01, 2.0
+_SHELLS = 0.2
+_FEW_ATOMS = 100.0
+_THOMAS_FERMI = 10.0
+_NEAR_THRESHOLD = (0.9, 1.0)
+# (128/15) sqrt(n a^3/pi), the first correction to the energy of a condensate [2], is 5 % at the first; Tc moves by
+# 3.4 a/lambda, 10 % at the second.
+_DENSE, _LONG = 1e-4, 0.03
+_FERMI_INTERACTION = 0.3
+_PAULI = 0.5
+_TRUNCATION = 5.0
+
+
+def caveats_of(
+    equilibrium: Equilibrium, *, certainty: Certainty | None = None, dipolar: bool = False
+) -> tuple[Caveat, ...]:
+    """The caveats of an equilibrium, gravest first.
+
+    Parameters
+    ----------
+    equilibrium : Equilibrium. The worst of its clouds counts.
+    certainty : Certainty or None. How the scattering length came to be known; None for one given by the user.
+    dipolar : bool. Whether the atoms collide by their magnetic moments also.
+    """
+    bosons = equilibrium.cloud.statistics is Statistics.BOSE
+    found = [*_model(equilibrium), *_data(equilibrium, certainty)]
+    found += [*_boson_levels(equilibrium), *_bosons(equilibrium)] if bosons else [*_fermions(equilibrium, dipolar)]
+    found += _any(equilibrium)
+    gravest = list(Severity)[::-1]
+    return tuple(sorted(found, key=lambda caveat: gravest.index(caveat.severity)))
+
+
+def _model(solved: Equilibrium) -> Iterator[Caveat]:
+    if solved.replaced is None:
+        return
+    length = _lowest(solved.cloud.length) if solved.replaced.name == "NOT_REPULSIVE" else None
+    yield Caveat(id=f"model_{solved.replaced.name.lower()}", severity=Severity.NOTE, value=length)
+
+
+def _data(solved: Equilibrium, certainty: Certainty | None) -> Iterator[Caveat]:
+    length = solved.cloud.length
+    collide = solved.bosons or solved.cloud.spin_components > 1
+    if np.any(np.isnan(length)):
+        if collide and solved.replaced is None:
+            yield Caveat(id="length_unknown", severity=Severity.NOTE)
+    elif collide and certainty in (Certainty.MEMORY, Certainty.COMPUTED):
+        word = "recalled" if certainty is Certainty.MEMORY else "computed"
+        yield Caveat(id=f"length_{word}", severity=Severity.NOTE, value=float(np.mean(length)))
+
+
+def _highest_level(solved: Equilibrium) -> Floats:
+    """hbar times the highest angular frequency. [J]"""
+    energy: Floats = reduced_planck * np.max(solved.cloud.trap.angular_frequencies, axis=-1)
+    return energy
+
+
+def _frozen_axes(solved: Equilibrium, energy: Floats) -> Mapping[str, float]:
+    """How many axes have their first excited level above an energy."""
+    levels = reduced_planck * solved.cloud.trap.angular_frequencies
+    return MappingProxyType({"frozen_axes": _highest((levels > np.asarray(energy)[..., np.newaxis]).sum(axis=-1))})
+
+
+def _boson_levels(solved: Equilibrium) -> Iterator[Caveat]:
+    level = _highest_level(solved)
+    over_t = _highest(level / solved.thermal_energy)
+    over_tc = _highest(level / solved.thermal_energy * solved.reduced_temperature)
+    shift = _highest(solved.finite_size_shift)
+    if solved.model is Model.EXACT_LEVELS:
+        if _lowest(solved.cloud.atoms) < _FEW_ATOMS:
+            yield Caveat(id="few_atoms", severity=Severity.NOTE, value=_lowest(solved.cloud.atoms))
+        return
+    if over_t > 1.0:
+        # A Thomas-Fermi condensate spans many levels however cold it is; then only its few thermal atoms are concerned.
+        if solved.model is Model.SEMI_IDEAL and _lowest(solved.chemical_potential / level) > 1.0:
+            yield Caveat(id="frozen_thermal", severity=Severity.WARNING, value=over_t)
+        else:
+            frozen = _frozen_axes(solved, solved.thermal_energy)
+            yield Caveat(id="low_dimension", severity=Severity.REFUSAL, value=over_t, numbers=frozen)
+    elif over_t > _LEVEL_OVER_T_TOO_LARGE or shift > _SHIFT_TOO_LARGE:
+        yield Caveat(id="exact_levels_advised", severity=Severity.WARNING, value=over_t)
+    elif over_tc > _LEVEL_OVER_TC_WARNED or shift > _SHIFT_WARNED:
+        yield Caveat(id="local_density", severity=Severity.WARNING, value=over_tc)
+    if shift > _SHIFT_SHOWN:
+        yield Caveat(id="finite_size", severity=Severity.NOTE, value=shift)
+
+
+def _bosons(solved: Equilibrium) -> Iterator[Caveat]:
+    length = solved.cloud.length
+    if np.all(np.isnan(length)):
+        return
+    condensed = np.asarray(solved.condensate_atoms)
+    reduced = condensed * np.abs(length) / solved.oscillator_length  # N0 |a|/aho
+    if _lowest(length) < 0.0:
+        limit = float(np.min(COLLAPSE * solved.oscillator_length / np.abs(length)))
+        numbers = MappingProxyType({"collapse_atoms": limit})
+        excess = _highest(np.where(length < 0.0, reduced, 0.0)) / COLLAPSE
+        if excess > 1.0:
+            yield Caveat(id="collapse", severity=Severity.REFUSAL, value=excess, numbers=numbers)
+        else:
+            yield Caveat(id="attractive", severity=Severity.NOTE, value=_lowest(length), numbers=numbers)
+    if solved.model is Model.SEMI_IDEAL:
+        weakest = _lowest(np.where(condensed > 0.0, reduced, np.inf))
+        if weakest < _THOMAS_FERMI:
+            yield Caveat(id="thomas_fermi", severity=Severity.WARNING, value=weakest)
+        ratio = np.asarray(solved.reduced_temperature)
+        near = (ratio > _NEAR_THRESHOLD[0]) & (ratio < _NEAR_THRESHOLD[1])
+        if np.any(near):
+            yield Caveat(id="near_threshold", severity=Severity.NOTE, value=float(np.max(ratio[near])))
+    # The condensate of a gas without interaction is far denser than a real one, so it is not what is judged.
+    density = solved.peak_density if solved.model is Model.SEMI_IDEAL else _thermal_density(solved)
+    dense, long = _highest(density * np.abs(length) ** 3), _highest(np.abs(length) / solved.thermal_wavelength)
+    if dense > _DENSE:
+        yield Caveat(id="dense", severity=Severity.WARNING, value=dense)
+    if long > _LONG:
+        yield Caveat(id="long_range_length", severity=Severity.WARNING, value=long)
+
+
+def _thermal_density(solved: Equilibrium) -> Floats:
+    density: Floats = np.minimum(solved.peak_phase_space_density, zeta(1.5)) / solved.thermal_wavelength**3
+    return density
+
+
+def _fermions(solved: Equilibrium, dipolar: bool) -> Iterator[Caveat]:
+    level = _highest_level(solved)
+    squares = np.sum((reduced_planck * solved.cloud.trap.angular_frequencies) ** 2, axis=-1)
+    number_error = _highest(squares / (4.0 * solved.fermi_energy**2))
+    filled = _lowest(solved.fermi_energy / level)
+    shells = _lowest(solved.thermal_energy / level)
+    if filled < _FERMI_LEVELS:
+        frozen = _frozen_axes(solved, solved.fermi_energy / _FERMI_LEVELS)
+        yield Caveat(id="low_dimension", severity=Severity.REFUSAL, value=filled, numbers=frozen)
+    elif number_error > _FERMI_NUMBER_ERROR:
+        yield Caveat(id="local_density", severity=Severity.WARNING, value=number_error)
+    if shells < _SHELLS:
+        yield Caveat(id="shell_structure", severity=Severity.NOTE, value=shells)
+    if solved.cloud.spin_components == 1:
+        if not dipolar:
+            yield Caveat(id="polarised_fermions", severity=Severity.WARNING)
+        return
+    coldest = _lowest(solved.reduced_temperature)
+    if coldest < _PAULI:
+        yield Caveat(id="pauli_blocking", severity=Severity.NOTE, value=coldest)
+    kFa = np.asarray(solved.fermi_wavenumber * solved.cloud.length).reshape(-1)
+    if not np.all(np.isnan(kFa)):
+        strongest = float(kFa[np.nanargmax(np.abs(kFa))])
+        if abs(strongest) > _FERMI_INTERACTION:
+            yield Caveat(
+                id="fermi_interaction",
+                severity=Severity.WARNING,
+                value=abs(strongest),
+                numbers=MappingProxyType({"inverse": 1.0 / strongest}),
+            )
+
+
+def _any(solved: Equilibrium) -> Iterator[Caveat]:
+    shallow = _lowest(solved.truncation)
+    if shallow < _TRUNCATION:
+        yield Caveat(id="truncated", severity=Severity.WARNING, value=shallow)
+    fastest = np.max(solved.cloud.trap.angular_frequencies, axis=-1)
+    crowded = _highest(solved.elastic_collision_rate / fastest)
+    if crowded > 1.0:
+        yield Caveat(id="hydrodynamic", severity=Severity.NOTE, value=crowded)
+
+
+def _highest(value: Floats) -> float:
+    """The largest element; NaN, which compares false with every limit, only where there is no number at all."""
+    return float(np.fmax.reduce(np.ravel(value)))
+
+
+def _lowest(value: Floats) -> float:
+    return float(np.fmin.reduce(np.ravel(value)))
