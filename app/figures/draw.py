@@ -309,7 +309,7 @@ def save_pictures(
     size_mm: tuple[float, float] | None = None,
     dpi: float = 200.0,
 ) -> None:
-    """Writes pictures side by side into one file: exact page size, text as text, the same bytes for the same input.
+    """Writes pictures, in rows, into one file: exact page size, text as text, the same bytes for the same input.
 
     `size_mm` is the page's width and height, by default 150 x 110 a picture; `dpi` counts for PNG and for colour
     fields. Raises ValueError for an empty list, an unknown format or a page that is too small.
@@ -330,7 +330,8 @@ def save_pictures(
     figure = Figure(figsize=(width / MM_PER_INCH, height / MM_PER_INCH), dpi=dpi, facecolor=theme.background)
     for i, picture in enumerate(pictures):
         row, column = divmod(i, columns)
-        place = (column / columns, 1.0 - (row + 1) / rows, 1.0 / columns, 1.0 / rows)
+        in_row = columns if row < rows - 1 else len(pictures) - row * columns  # the last row fills the width too
+        place = (column / in_row, 1.0 - (row + 1) / rows, 1.0 / in_row, 1.0 / rows)
         draw_picture(picture, figure.add_axes(place), theme)
     with rc_context({"svg.fonttype": "none", "svg.hashsalt": "coldward", "pdf.fonttype": 42}):
         figure.savefig(target, format=format, dpi=dpi, facecolor=theme.background, metadata=_STAMPS[format])

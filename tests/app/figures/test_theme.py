@@ -145,7 +145,7 @@ def test_a_scale_of_one_family_ends_in_the_colour_of_the_threshold():
 
 
 def test_a_split_outside_the_scale_is_refused():
-    with pytest.raises(ValueError, match="between 0 and 1, got 1.5"):
+    with pytest.raises(ValueError, match=r"between 0 and 1, got 1\.5"):
         colour_scale(LIGHT, 1.5)
 
 

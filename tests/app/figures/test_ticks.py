@@ -30,7 +30,8 @@ def axis(low: float, high: float, **more: object) -> Axis:
         (axis(0.0, 6e19), ("0", "10¹⁹", "2×10¹⁹", "3×10¹⁹", "4×10¹⁹", "5×10¹⁹", "6×10¹⁹")),
         (axis(0.0, 3e19), ("0", "0.5×10¹⁹", "1.0×10¹⁹", "1.5×10¹⁹", "2.0×10¹⁹", "2.5×10¹⁹", "3.0×10¹⁹")),
         (axis(0.0, 5e-6, prefixed=True), ("0 m", "1 µm", "2 µm", "3 µm", "4 µm", "5 µm")),
-        (axis(2.0e-7, 3.0e-7, log=True, prefixed=True, unit="K"), ("200 nK", "220 nK", "240 nK", "260 nK", "280 nK", "300 nK")),
+        (axis(2.0e-7, 3.0e-7, log=True, prefixed=True, unit="K"),
+         ("200 nK", "220 nK", "240 nK", "260 nK", "280 nK", "300 nK")),
     ],
 )  # fmt: skip
 def test_ticks_read_as_a_person_would_write_them(shown, texts):
