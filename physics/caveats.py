@@ -1,8 +1,8 @@
 """What an answer does not cover: which caveat, how grave, and the number that raised it.
 
 Ids and SI numbers only; the sentences are written where they are shown. Of an array of clouds the worst one counts.
-Limits of local density come from comparing it with exact sums over oscillator levels, for ideal atoms in many traps; the
-others are where a first-order correction reaches a few percent.
+Limits of local density come from comparing it with exact sums over oscillator levels, for ideal atoms in many traps;
+the others are where a first-order correction reaches a few percent.
 
 References
 ----------

@@ -25,7 +25,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import ArrayLike
 
-from physics import collisions
+from physics import collisions, equation_of_state
 from physics.checks import Floats
 from physics.constants import boltzmann, planck, reduced_planck
 from physics.models import Model, Replacement
@@ -363,6 +363,19 @@ class Equilibrium:
     def classical_energy_error(self) -> Floats:
         """3 kT over the energy per atom, minus 1. [1]"""
         return 3.0 * self.thermal_energy / self.energy_per_atom - 1.0
+
+    @quantity
+    def classical_pressure_error(self) -> Floats:
+        """n kT over the pressure of the thermal atoms where they are densest, minus 1. [1]"""
+        ratio = equation_of_state.pressure_over_classical(self.cloud.statistics, self.peak_phase_space_density)
+        return 1.0 / ratio - 1.0
+
+    @quantity
+    def fitted_temperature_error(self) -> Floats:
+        """T from a Gaussian fitted to the image of the thermal atoms after a long expansion, over T, minus 1. [1]"""
+        statistics = self.cloud.statistics
+        log_z = equation_of_state.trapped_log_fugacity(statistics, self._degeneracy)
+        return equation_of_state.gaussian_fit_temperature(statistics, log_z) - 1.0
 
 
 def _nowhere() -> Floats:
