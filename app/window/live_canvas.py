@@ -127,7 +127,8 @@ class LiveCanvas(FigureCanvasQTAgg):
         if self._layer is None:
             return None
         box, ratio = self._layer.box, self.device_pixel_ratio
-        return box.x0 / ratio, self.height() - box.y1 / ratio, box.width / ratio, box.height / ratio
+        left, top = float(box.x0) / ratio, self.height() - float(box.y1) / ratio
+        return left, top, float(box.width) / ratio, float(box.height) / ratio
 
     def _drawing_at(self, x: float, y: float) -> tuple[float, float] | None:
         box = self.axes_box()
