@@ -4,40 +4,51 @@ from __future__ import annotations
 
 import contextlib
 import os
-import tempfile
+import secrets
 from pathlib import Path
 
 
-def write_atomically(path: Path, data: bytes) -> None:
-    """Replace the content of a file in one step; permissions of an existing file are kept.
+def write_atomically(path: str | os.PathLike[str], data: bytes) -> None:
+    """Write a file as a whole or not at all.
 
-    The bytes go to a new file beside it, which then takes its name. When anything fails the old file stands as it
-    was and nothing is left behind.
+    The bytes go to a file beside the old one, are flushed to the disk and then take its place, with the old file's
+    permissions; a link stays a link.
 
     Raises
     ------
-    OSError : naming the file, where the folder is missing or cannot be written.
+    OSError
+        The file could not be written; what was there is unchanged, and the message says so in one sentence.
     """
-    target = path.resolve() if path.is_symlink() else path
+    target = Path(os.path.realpath(path))
+    beside = target.with_name(f".{target.name}.{secrets.token_hex(4)}.part")
     try:
-        handle, name = tempfile.mkstemp(prefix=f".{target.name}.", dir=target.parent)
+        if target.exists() and not os.access(target, os.W_OK):
+            raise PermissionError(0, "it is write-protected")
+        _write_through(beside, data)
+        if target.exists():
+            os.chmod(beside, target.stat().st_mode & 0o7777)
+        os.replace(beside, target)
     except OSError as error:
-        raise OSError(f"cannot write {path}: {error.strerror or error}") from error
-    try:
-        with os.fdopen(handle, "wb") as stream:
-            stream.write(data)
-            stream.flush()
-            os.fsync(stream.fileno())
-        os.chmod(name, target.stat().st_mode & 0o7777 if target.exists() else 0o666 & ~_umask())
-        os.replace(name, target)
-    except OSError as error:
+        reason = error.strerror or str(error)
+        raise OSError(f"{Path(path)} could not be written: {reason}; what was there is unchanged") from None
+    finally:
         with contextlib.suppress(OSError):
-            os.unlink(name)
-        raise OSError(f"cannot write {path}: {error.strerror or error}") from error
+            beside.unlink(missing_ok=True)
+    _settle(target.parent)
 
 
-def _umask() -> int:
-    """The process's mask, which can only be read by setting it."""
-    mask = os.umask(0o022)
-    os.umask(mask)
-    return mask
+def _write_through(path: Path, data: bytes) -> None:
+    with path.open("xb") as file:
+        file.write(data)
+        file.flush()
+        os.fsync(file.fileno())
+
+
+def _settle(folder: Path) -> None:
+    """Flush the folder's entry where the system can; the file itself is already safe."""
+    with contextlib.suppress(OSError, AttributeError):
+        handle = os.open(folder, os.O_RDONLY | os.O_DIRECTORY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)

@@ -40,9 +40,7 @@ class Newest:
         self.dropped = 0
         self.most_waiting = 0
 
-    def ask(
-        self, job: Callable[[], Any], deliver: Callable[[Any], None], fail: Callable[[Exception], None]
-    ) -> None:
+    def ask(self, job: Callable[[], Any], deliver: Callable[[Any], None], fail: Callable[[Exception], None]) -> None:
         """Ask for `job`, in the place of whatever was still waiting."""
         with self._changed:
             if self._closed:

@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-import contextlib
 import os
 import re
-import secrets
-from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from app.choices import PLAN_FIELDS, Plan, PlanError, PlanField
+from app.files import write_atomically
 from app.plan_file import FORMAT, entries_of, parse_plan
 from app.units import Quantity
 
@@ -97,46 +95,14 @@ def _drop(document: TOMLDocument, field: PlanField) -> None:
 def save_plan(plan: Plan, path: str | os.PathLike[str], previous_text: str | None = None) -> str:
     """Write a plan file as a whole or not at all, and return its text.
 
-    The new text goes to a file beside the old one, is flushed to the disk and then takes its place, with the old
-    file's permissions; a link stays a link.
-
     Raises
     ------
     PlanError
         The file could not be written; what was there is unchanged.
     """
     text = write_plan(plan, previous_text)
-    target = Path(os.path.realpath(path))
-    beside = target.with_name(f".{target.name}.{secrets.token_hex(4)}.part")
     try:
-        if target.exists() and not os.access(target, os.W_OK):
-            raise PermissionError(0, "it is write-protected")
-        _write_through(beside, text.encode("utf-8"))
-        if target.exists():
-            os.chmod(beside, target.stat().st_mode & 0o7777)
-        os.replace(beside, target)
+        write_atomically(path, text.encode("utf-8"))
     except OSError as error:
-        reason = error.strerror or str(error)
-        raise PlanError(f"{Path(path)} could not be written: {reason}; what was there is unchanged") from None
-    finally:
-        with contextlib.suppress(OSError):
-            beside.unlink(missing_ok=True)
-    _settle(target.parent)
+        raise PlanError(str(error)) from None
     return text
-
-
-def _write_through(path: Path, data: bytes) -> None:
-    with path.open("xb") as file:
-        file.write(data)
-        file.flush()
-        os.fsync(file.fileno())
-
-
-def _settle(folder: Path) -> None:
-    """Flush the folder's entry where the system can; the file itself is already safe."""
-    with contextlib.suppress(OSError, AttributeError):
-        handle = os.open(folder, os.O_RDONLY | os.O_DIRECTORY)
-        try:
-            os.fsync(handle)
-        finally:
-            os.close(handle)

@@ -11,8 +11,7 @@ from dataclasses import dataclass
 from enum import Enum
 from types import MappingProxyType
 
-from app.kinds import EVERYDAY
-from physics.constants import boltzmann, planck
+from app.units import factor
 
 
 class Group(Enum):
@@ -412,13 +411,6 @@ def rows_in(group: Group) -> Iterator[Row]:
     return (row for row in _ROWS if row.group is group)
 
 
-_ONE_OVER = {("K", "Hz"): planck / boltzmann, ("J", "K"): boltzmann, ("J", "Hz"): planck, ("K", "J"): 1.0 / boltzmann}
-"""SI value of a quantity (first unit) of which one (second unit) is given: energy over k, energy over h."""
-
-
 def display_factor(unit: str, row: Row) -> float:
     """SI value of one display unit of a quantity: 1e-9 for a temperature in nK, k times that for an energy in nK."""
-    if unit in ("1", "%"):
-        return 0.01 if unit == "%" else 1.0
-    size, si_unit = EVERYDAY[unit]
-    return float(size) * (1.0 if si_unit == row.unit else _ONE_OVER[row.unit, si_unit])
+    return factor(unit, "" if row.unit == "1" else row.unit)

@@ -72,9 +72,9 @@ def _bosons(answer: CloudAnswer) -> str:
         share = percent(fraction)
         if fraction > 0.9:
             return _("A nearly pure condensate: {share} of the atoms are condensed.").format(share=share)
-        return _("Condensed: {share} of the atoms are in the condensate, at {ratio} of the critical temperature.").format(
-            share=share, ratio=percent(reduced)
-        )
+        return _(
+            "Condensed: {share} of the atoms are in the condensate, at {ratio} of the critical temperature."
+        ).format(share=share, ratio=percent(reduced))
     density = float(solved.peak_phase_space_density)
     if density > 0.1:
         return _("Close, not condensed: {factor} times too hot for condensation.").format(factor=times(reduced))
@@ -164,8 +164,8 @@ def _range(answer: CloudAnswer, name: str) -> str:
     interval = answer.interval(name)
     if interval is None:
         return ""
-    low, high = (float(bound) for bound in interval)
-    return _("{low} to {high}").format(low=number(low), high=number(high))
+    low, high = (number(float(bound)) for bound in interval)
+    return "" if low == high else _("{low} to {high}").format(low=low, high=high)
 
 
 def _chance(answer: CloudAnswer) -> str:
@@ -199,10 +199,30 @@ def shown_unit(unit: str) -> str:
 
 def row_tip(row: Row) -> str:
     """Formula, validity and source of a quantity, for its tip."""
-    return "\n".join((row.formula, _("holds for: {what}").format(what=row.validity), _("source: {what}").format(what=row.source)))
+    return "\n".join(
+        (row.formula, _("holds for: {what}").format(what=row.validity), _("source: {what}").format(what=row.source))
+    )
 
 
 def label_with_unit(name: str, unit: str) -> str:
     """Axis or column label: "peak density [1/cm^3]"."""
     row = QUANTITIES[name]
     return f"{row.label} [{unit}]" if unit not in ("", "1") else row.label
+
+
+def heading(answer: CloudAnswer) -> str:
+    """What the answer is about: species, state, model."""
+    return _("{species}, {state}; model: {model}").format(
+        species=answer.state.key, state=answer.state.name, model=answer.model.value
+    )
+
+
+def value_with_interval(answer: CloudAnswer, row: Row) -> str:
+    """A quantity in its first unit, with its 16 to 84 percent range where the plan states uncertainties."""
+    text = value_text(answer, row, row.units[0])
+    interval = None if row.axes or text == "–" else answer.interval(row.name)
+    if interval is None:
+        return text
+    factor = display_factor(row.units[0], row)
+    low, high = (number(float(bound) / factor) for bound in interval)
+    return text if low == high else _("{value}  ({low} to {high})").format(value=text, low=low, high=high)

@@ -9,10 +9,8 @@ from typing import TYPE_CHECKING
 from app.commands.plan_arguments import add_plan_arguments, fail, plan_of
 
 if TYPE_CHECKING:
-    from app.engine import MapAnswer, MapLimits
+    from app.engine import MapLimits
     from app.plan import Plan
-
-PICTURES = (".png", ".svg", ".pdf")
 
 
 def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
@@ -20,10 +18,12 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
     parser = verbs.add_parser(
         "map",
         help="atom number against temperature, as CSV or a picture",
-        description="Peak phase-space density, T over threshold and condensed fraction over atom number and temperature.",
+        description="Peak phase-space density, reduced temperature and condensed fraction over N and T.",
     )
     add_plan_arguments(parser)
-    parser.add_argument("-o", "--output", metavar="FILE", help="CSV, PNG, SVG or PDF by its ending; CSV on stdout without it")
+    parser.add_argument(
+        "-o", "--output", metavar="FILE", help="CSV, PNG, SVG or PDF by its ending; CSV on stdout without it"
+    )
     parser.add_argument("--atoms-range", metavar="TEXT", help='such as "1e3 to 1e7"')
     parser.add_argument("--temperature-range", metavar="TEXT", help='such as "10 nK to 10 uK"')
     parser.add_argument("--points", type=int, default=None, metavar="NUMBER", help="grid points along each direction")
@@ -32,6 +32,7 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
 
 def run(args: argparse.Namespace) -> int:
     """Write the map of the plan."""
+    from app.answers.csv_text import map_csv
     from app.commands.output import write_answer
     from app.engine import MAP_POINTS, cloud_answer, map_answer
 
@@ -76,19 +77,3 @@ def _limits(args: argparse.Namespace, plan: Plan) -> MapLimits:
         low, high = read("--temperature-range", args.temperature_range, TEMPERATURE)
         limits = replace(limits, temperature_low=low, temperature_high=high)
     return limits
-
-
-def map_csv(answer: MapAnswer) -> str:
-    """One row a grid point, full precision."""
-    import numpy as np
-
-    columns = {
-        "atoms": np.broadcast_to(answer.atoms[np.newaxis, :], answer.peak_phase_space_density.shape),
-        "temperature [K]": np.broadcast_to(answer.temperature[:, np.newaxis], answer.peak_phase_space_density.shape),
-        "peak_phase_space_density": answer.peak_phase_space_density,
-        "reduced_temperature": answer.reduced_temperature,
-    }
-    if answer.bosons:
-        columns["condensate_fraction"] = answer.condensate_fraction
-    rows = zip(*(np.ravel(column).tolist() for column in columns.values()), strict=True)
-    return "\n".join([",".join(columns), *(",".join(map(repr, row)) for row in rows)]) + "\n"

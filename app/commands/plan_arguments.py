@@ -14,10 +14,14 @@ from app.choices import PLAN_FIELDS
 if TYPE_CHECKING:
     from app.plan import Plan
 
+
 def add_plan_arguments(parser: argparse.ArgumentParser, *, name: str = "plan") -> None:
     """Add the plan file, as an argument or under an option of that name, and the overriding flags to a verb."""
-    more = {"nargs": "?"} if name == "plan" else {}
-    parser.add_argument(name, metavar="PLAN", help="plan file; without one, flags give the plan", **more)
+    text = "plan file; without one, flags give the plan"
+    if name.startswith("-"):
+        parser.add_argument(name, metavar="PLAN", help=text)
+    else:
+        parser.add_argument(name, nargs="?", metavar="PLAN", help=text)
     group = parser.add_argument_group("plan keys, which override the file")
     for path, field in PLAN_FIELDS.items():
         group.add_argument(field.flag, dest=path, metavar="TEXT", help=field.tip.replace("%", "%%"))
@@ -28,7 +32,7 @@ def plan_of(args: argparse.Namespace) -> Plan:
 
     Raises `PlanError`, whose text names the file or the flag.
     """
-    from app.plan import read_plan, plan_with
+    from app.plan import plan_with, read_plan
 
     base = None if args.plan is None else read_plan(Path(args.plan))
     return plan_with(base, _given(args))
@@ -42,7 +46,9 @@ def _given(args: argparse.Namespace) -> dict[str, str]:
 def json_answer(args: argparse.Namespace, body: dict[str, Any], **more: Any) -> str:
     """One JSON object that opens with contract, version and input, as all verbs print it."""
     entry: dict[str, Any] = {"plan": args.plan, **_given(args), **more}
-    return json.dumps({"coldward": CONTRACT, "version": __version__, "input": entry, **body}, ensure_ascii=False, allow_nan=False)
+    return json.dumps(
+        {"coldward": CONTRACT, "version": __version__, "input": entry, **body}, ensure_ascii=False, allow_nan=False
+    )
 
 
 def fail(message: object) -> int:

@@ -3,12 +3,8 @@
 from __future__ import annotations
 
 import argparse
-from typing import TYPE_CHECKING
 
 from app.commands.plan_arguments import add_plan_arguments, fail, plan_of
-
-if TYPE_CHECKING:
-    from app.engine import ProfileAnswer
 
 AXES = ("x", "y", "z")
 
@@ -23,12 +19,15 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
     add_plan_arguments(parser)
     parser.add_argument("--axis", choices=AXES, default="x", help="trap axis, in the order of the frequencies")
     parser.add_argument("--log", action="store_true", help="logarithmic density in a picture")
-    parser.add_argument("-o", "--output", metavar="FILE", help="CSV, PNG, SVG or PDF by its ending; CSV on stdout without it")
+    parser.add_argument(
+        "-o", "--output", metavar="FILE", help="CSV, PNG, SVG or PDF by its ending; CSV on stdout without it"
+    )
     parser.set_defaults(run=run)
 
 
 def run(args: argparse.Namespace) -> int:
     """Write the profiles of the plan's cloud."""
+    from app.answers.csv_text import profile_csv
     from app.commands.output import write_answer
     from app.engine import profile_answer
 
@@ -44,17 +43,3 @@ def run(args: argparse.Namespace) -> int:
     except (ValueError, OSError) as error:
         return fail(error)
     return 0
-
-
-def profile_csv(answer: ProfileAnswer) -> str:
-    """One row a position, SI, full precision."""
-    columns = {"position [m]": answer.positions}
-    for name, unit, profile in (("density", "1/m^3", answer.density), ("column_density", "1/m^2", answer.column)):
-        columns |= {
-            f"{name}_total [{unit}]": profile.total,
-            f"{name}_thermal [{unit}]": profile.thermal,
-            f"{name}_condensate [{unit}]": profile.condensate,
-            f"{name}_classical [{unit}]": profile.classical,
-        }
-    rows = zip(*(column.tolist() for column in columns.values()), strict=True)
-    return "\n".join([",".join(columns), *(",".join(map(repr, row)) for row in rows)]) + "\n"

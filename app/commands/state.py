@@ -36,8 +36,8 @@ def run(args: argparse.Namespace) -> int:
 
 def state_body(answer: CloudAnswer) -> dict[str, Any]:
     """The answer as the JSON contract has it: model, quantities in SI, caveats."""
+    from app.caveat_words import caveat_text
     from app.quantities import QUANTITIES
-    from app.words import caveat_text
 
     return {
         "model": answer.model.value,
@@ -81,9 +81,10 @@ def _finite(value: Any) -> Any:
 
 def state_text(answer: CloudAnswer) -> str:
     """The answer as a readable page."""
+    from app.caveat_words import caveat_lines
     from app.quantities import Group, rows_in
     from app.tables import columns
-    from app.words import caveat_line, deciding_figures, heading, shown_unit, value_with_interval, verdict
+    from app.words import deciding_figures, heading, shown_unit, value_with_interval, verdict
 
     lines = [heading(answer), "", verdict(answer), ""]
     lines += columns([(figure.caption, figure.value, figure.detail) for figure in deciding_figures(answer)])
@@ -92,7 +93,8 @@ def state_text(answer: CloudAnswer) -> str:
         table = [(row.label, row.symbol, value_with_interval(answer, row), shown_unit(row.units[0])) for row in rows]
         if table:
             lines += ["", group.value, *columns(table, indent=2)]
-    if answer.caveats:
+    caveats = caveat_lines(answer)
+    if caveats:
         lines += ["", "What this answer does not cover"]
-        lines += [f"  {caveat_line(caveat, answer)}" for caveat in answer.caveats]
+        lines += [f"  {line.sign} {line.word}: {line.sentence}" for line in caveats]
     return "\n".join(lines)

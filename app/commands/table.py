@@ -6,6 +6,7 @@ import argparse
 import csv
 import io
 import sys
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -16,7 +17,12 @@ if TYPE_CHECKING:
     from app.plan import Plan
 
 _AXES = ("fx", "fy", "fz")
-_TEXTS = {"species": "species.key", "state": "species.state", "model": "cloud.model", "spin_components": "species.spin_components"}
+_TEXTS = {
+    "species": "species.key",
+    "state": "species.state",
+    "model": "cloud.model",
+    "spin_components": "species.spin_components",
+}
 _QUANTITIES = {
     "atoms": "cloud.atoms",
     "temperature": "cloud.temperature",
@@ -35,7 +41,9 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
         "table",
         help="one cloud a row of a CSV file",
         description="Read clouds from a CSV file, one a row, and append the columns of the answer. "
-        "Columns: " + ", ".join([*_TEXTS, *_QUANTITIES, *_AXES]) + '; with their unit as in "temperature [uK]", "fx [Hz]". '
+        "Columns: "
+        + ", ".join([*_TEXTS, *_QUANTITIES, *_AXES])
+        + '; with their unit as in "temperature [uK]", "fx [Hz]". '
         "What a row leaves out comes from the plan and the flags.",
     )
     parser.add_argument("clouds", metavar="CLOUDS", help="CSV file with a header line")
@@ -94,41 +102,47 @@ def _read(path: Path) -> tuple[list[str], list[tuple[int, list[str]]]]:
     return [cell.strip() for cell in rows[0][1]], rows[1:]
 
 
-def _column(name: str, file: str) -> tuple[str, str] | None:
-    """Plan key and unit of a header cell; None for a column that is only carried along."""
-    word, _, rest = name.partition("[")
+@dataclass(frozen=True, kw_only=True)
+class _Column:
+    """A header cell that says what is in its column: plan key, unit, and which trap axis."""
+
+    name: str
+    key: str
+    unit: str = ""
+    axis: int | None = None
+
+
+def _column(name: str, file: str) -> _Column | None:
+    """What a header cell means; None for a column that is only carried along."""
+    word, bracket, rest = name.partition("[")
     word, unit = word.strip(), rest.strip().removesuffix("]").strip()
-    if word in _TEXTS and not rest:
-        return _TEXTS[word], ""
+    if word in _TEXTS and not bracket:
+        return _Column(name=name, key=_TEXTS[word])
     if word in _QUANTITIES:
-        return _QUANTITIES[word], unit
+        return _Column(name=name, key=_QUANTITIES[word], unit=unit)
     if word in _AXES:
-        return f"trap.frequencies/{_AXES.index(word)}", unit
-    if rest:
+        return _Column(name=name, key="trap.frequencies", unit=unit, axis=_AXES.index(word))
+    if bracket:
         known = ", ".join([*_QUANTITIES, *_AXES])
         raise ValueError(f'{file}: column "{name}" has a unit but is not one of {known}')
     return None
 
 
-def _plan_of_row(base: Plan, columns: list[tuple[str, str] | None], row: list[str]) -> Plan:
+def _plan_of_row(base: Plan, columns: list[_Column | None], row: list[str]) -> Plan:
     from app.plan import plan_with
 
-    given: dict[str, str] = {}
-    axes = [quantity.text for quantity in base.trap.frequencies]
-    for column, cell in zip(columns, row, strict=True):
-        text = cell.strip()
-        if column is None or not text:
-            continue
-        key, unit = column
-        text = f"{text} {unit}".strip()
-        place, found, axis = key.partition("/")
-        if found:
-            axes[int(axis)] = text
-            given[place] = ", ".join(axes)
+    cells = [(column, cell.strip()) for column, cell in zip(columns, row, strict=True) if column and cell.strip()]
+    plan = base
+    # A species drops what the plan says of another one's state, so it comes first, whatever the order of the columns.
+    for column, text in sorted(cells, key=lambda entry: entry[0].key != "species.key"):
+        if column.axis is None:
+            texts = f"{text} {column.unit}".strip()
         else:
-            given[key] = text
-    # A row's species comes before its state, whatever the order of the columns.
-    return plan_with(base, dict(sorted(given.items(), key=lambda item: item[0] != "species.key")))
+            axes = [quantity.text for quantity in plan.trap.frequencies]
+            axes[column.axis] = f"{text} {column.unit}".strip()
+            texts = ", ".join(axes)
+        plan = plan_with(plan, {column.key: texts}, where=f'column "{column.name}"')
+    return plan
 
 
 def _answer_header() -> list[str]:

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 import math
 from gettext import gettext as _
+from typing import cast
 
 import numpy as np
-from contourpy import contour_generator
+from contourpy import LineType, contour_generator
 
 from app.engine import CloudAnswer, MapAnswer
 from app.figures.picture import Array, Axis, Curve, Field, Label, Mark, Picture, Role
@@ -99,11 +100,25 @@ def _boson_lines(answer: MapAnswer) -> list[tuple[Curve, list[Label]]]:
     density = np.log10(np.maximum(answer.peak_phase_space_density, 1e-30))
     # The peak is flat once condensed: a contour at 2.612 itself would wander, the threshold has its own line.
     decades = [
-        _contour(answer, density, float(exponent), power_text(10.0**exponent), Role.DECADE, _("phase-space density, decades") if exponent == 0 else "")
+        _contour(
+            answer,
+            density,
+            float(exponent),
+            power_text(10.0**exponent),
+            Role.DECADE,
+            _("phase-space density, decades") if exponent == 0 else "",
+        )
         for exponent in range(-12, 1)
     ]
     fractions = [
-        _contour(answer, answer.condensate_fraction, share, f"{share:.0%}".replace("%", " %"), Role.FRACTION, _("condensed fraction") if share == 0.5 else "")
+        _contour(
+            answer,
+            answer.condensate_fraction,
+            share,
+            f"{share:.0%}".replace("%", " %"),
+            Role.FRACTION,
+            _("condensed fraction") if share == 0.5 else "",
+        )
         for share in _FRACTIONS
     ]
     return [line for line in (*decades, *fractions) if line is not None]
@@ -123,7 +138,10 @@ def _contour(
 ) -> tuple[Curve, list[Label]] | None:
     """A contour as one NaN-broken curve in data coordinates, with its label a fifth of the way along it."""
     # Contours are straight in logarithms, where interpolating along a cell edge is right too.
-    found = contour_generator(np.log10(answer.atoms), np.log10(answer.temperature), field, name="serial").lines(level)
+    generator = contour_generator(
+        np.log10(answer.atoms), np.log10(answer.temperature), field, name="serial", line_type=LineType.Separate
+    )
+    found = cast(list[Array], generator.lines(level))
     pieces = [10.0**piece for piece in found if len(piece) > 1]
     if not pieces:
         return None
@@ -139,7 +157,11 @@ def _contour(
 
 
 def _thresholds(answer: MapAnswer) -> tuple[Curve, ...]:
-    name = _("condensation, ideal") if answer.bosons else _("T/TF = {limit}").format(limit=number(answer.fermi_threshold, 2))
+    name = (
+        _("condensation, ideal")
+        if answer.bosons
+        else _("T/TF = {limit}").format(limit=number(answer.fermi_threshold, 2))
+    )
     ideal = Curve(name=name, role=Role.THRESHOLD, x=answer.atoms, y=answer.threshold)
     if not answer.bosons or not np.any(np.isfinite(answer.threshold_shifted)):
         return (ideal,)
@@ -161,6 +183,4 @@ def cloud_mark(cloud: CloudAnswer) -> Mark:
             x=atoms.value * np.exp((atoms.sigma or 0.0) / atoms.value * np.cos(angle)),
             y=temperature.value * np.exp((temperature.sigma or 0.0) / temperature.value * np.sin(angle)),
         )
-    return Mark(
-        name=_("cloud"), role=Role.CLOUD, x=atoms.value, y=temperature.value, draggable=True, outline=outline
-    )
+    return Mark(name=_("cloud"), role=Role.CLOUD, x=atoms.value, y=temperature.value, draggable=True, outline=outline)

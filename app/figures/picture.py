@@ -50,7 +50,7 @@ class Axis:
 
     def __post_init__(self) -> None:
         if not (np.isfinite(self.low) and np.isfinite(self.high) and self.low < self.high):
-            raise ValueError(f"axis {self.label!r} must run from a low to a high limit, got {self.low:g} to {self.high:g}")
+            raise ValueError(f"axis {self.label!r} must run from low to high, got {self.low:g} to {self.high:g}")
         if self.log and self.low <= 0.0:
             raise ValueError(f"logarithmic axis {self.label!r} must start above zero, got {self.low:g}")
 

@@ -43,8 +43,10 @@ def profile_picture(answer: ProfileAnswer, shows: Depth, *, log: bool = False) -
         ]
     top = max(float(np.max(values)) for _name, _role, values in parts) / scale
     axis = AXES[answer.axis]
-    what = _("density along {axis} through the centre") if shows is Depth.DENSITY else _(
-        "column density along {axis}, summed along {sight}"
+    what = (
+        _("density along {axis} through the centre")
+        if shows is Depth.DENSITY
+        else _("column density along {axis}, summed along {sight}")
     )
     title = what.format(axis=axis, sight=AXES[answer.line_of_sight])
     return Picture(

@@ -50,10 +50,14 @@ def slice_picture(answer: SlicesAnswer, name: str, against: Against, unit: str |
                 y=np.array([axis.low, axis.high]),
             )
         )
-    marks = ()
+    marks: tuple[Mark, ...] = ()
     if math.isfinite(now) and axis.low <= now <= axis.high:
         marks = (Mark(name=_("cloud"), role=Role.CLOUD, x=at, y=now),)
-    fixed = _("at N = {N}").format(N=number(answer.atoms)) if along_t else _("at T = {T}").format(T=temperature(answer.temperature))
+    fixed = (
+        _("at N = {N}").format(N=number(answer.atoms))
+        if along_t
+        else _("at T = {T}").format(T=temperature(answer.temperature))
+    )
     return Picture(
         title=f"{row.label} {fixed}",
         x=Axis(label=_("temperature T"), unit="K", low=float(x[0]), high=float(x[-1]), log=True, prefixed=True)

@@ -9,7 +9,7 @@ from typing import Any
 
 from PySide6.QtWidgets import QWidget
 
-from app.commands.map import map_csv
+from app.answers.csv_text import map_csv
 from app.engine import CloudAnswer, MapAnswer, MapLimits, map_answer, usual_limits
 from app.figures.map import cloud_mark, map_picture
 from app.figures.picture import Picture
@@ -21,6 +21,7 @@ from app.words import number, temperature, verdict
 from physics.cloud import Model, equilibrium
 
 _TEMPERATURE_UNITS = ("pK", "nK", "µK", "mK", "K")
+HINT = "Drag the cloud, or double-click where it should be"
 _CLOUD_STEP = "atom number and temperature"
 
 
@@ -44,6 +45,7 @@ class MapPage(Page):
         self._limits: MapLimits | None = None
         self._gas: object = None  # what the limits were chosen for
         self._drag = 0
+        self.bar.status.say(HINT)
         canvas = self.plot.canvas
         canvas.mark_dragged.connect(self._drag_to)
         canvas.mark_released.connect(self._end_drag)
@@ -84,7 +86,7 @@ class MapPage(Page):
         """What the user asked to see; else the range that was shown, while it still suits the cloud."""
         view = self.plot.view
         if view is not None:
-            return MapLimits(*view)
+            return MapLimits(atoms_low=view[0], atoms_high=view[1], temperature_low=view[2], temperature_high=view[3])
         gas = (plan.species, plan.trap)
         limits = self._limits
         if limits is None or gas != self._gas or not limits.holds(plan.cloud.atoms.value, plan.cloud.temperature.value):
@@ -117,7 +119,7 @@ class MapPage(Page):
 
     def _read_pointer(self, place: tuple[float, float] | None) -> None:
         if place is None or self.cloud is None:
-            self.bar.status.say("")
+            self.bar.status.say(HINT)
             return
         atoms, kelvin = place
         central = self.cloud
@@ -147,4 +149,3 @@ def moved_quantity(old: Quantity, value: float, kind: Kind, units: tuple[str, ..
 
 def _rounded(value: float, digits: int) -> float:
     return round(value, digits - 1 - math.floor(math.log10(abs(value))))
-

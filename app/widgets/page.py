@@ -15,6 +15,7 @@ from app.engine import CloudAnswer
 from app.figures.export_data import write_csv
 from app.figures.picture import Axis, Picture
 from app.figures.theme import LIGHT, Theme
+from app.files import write_atomically
 from app.plan import Plan
 from app.units import best_unit, format_quantity
 from app.widgets.limits_dialog import LimitsDialog, kind_of
@@ -80,9 +81,8 @@ class Page(QWidget):
         picture = plot.canvas.picture
         if place is None or picture is None:
             return ""
-        return "   ".join(
-            f"{axis.label} = {axis_text(axis, value)}" for axis, value in zip((picture.x, picture.y), place, strict=True)
-        )
+        axes = zip((picture.x, picture.y), place, strict=True)
+        return "   ".join(f"{axis.label} = {axis_text(axis, value)}" for axis, value in axes)
 
     # ---------------------------------------------------------------- for the window
 
@@ -170,7 +170,7 @@ class Page(QWidget):
         """The plots on the clipboard, as an image and as SVG; on white, which is what papers want."""
         data = QMimeData()
         png, svg = self._drawn("png"), self._drawn("svg")
-        data.setImageData(QImage.fromData(QByteArray(png), "PNG"))
+        data.setImageData(QImage.fromData(png))
         data.setData("image/svg+xml", QByteArray(svg))
         QGuiApplication.clipboard().setMimeData(data)
 
@@ -216,9 +216,9 @@ class Page(QWidget):
 
     def _write(self, path: Path, content: bytes) -> None:
         try:
-            path.write_bytes(content)
+            write_atomically(path, content)
         except OSError as error:
-            self.told.emit(f"{path} cannot be written: {error.strerror or error}.")
+            self.told.emit(f"{error}.")
         else:
             self.folder = path.parent
             self.folder_used.emit(path.parent)

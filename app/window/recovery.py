@@ -18,6 +18,7 @@ from types import TracebackType
 
 from PySide6.QtCore import QLockFile, QObject, QTimer, qVersion
 
+from app.files import write_atomically
 from app.plan import Plan, write_plan
 from app.window.undo import Document
 
@@ -57,7 +58,7 @@ class Recovery(QObject):
         """Write the copy now; None where it cannot be written."""
         self._timer.stop()
         try:
-            self.copy_path.write_text(write_plan(self._document.plan), encoding="utf-8")
+            write_atomically(self.copy_path, write_plan(self._document.plan).encode())
         except (OSError, ValueError):
             return None
         return self.copy_path

@@ -1,0 +1,1 @@
+"""The parts of an answer, one module each; `app.engine` gathers them."""

@@ -1,0 +1,84 @@
+"""Slices through the plane of atom number and temperature, at the cloud."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.answers.cloud import cloud_answer
+from app.answers.part import part
+from app.quantities import QUANTITIES
+from physics.cloud import Equilibrium, Model, equilibrium
+
+if TYPE_CHECKING:
+    from app.plan import Plan
+
+Array = NDArray[np.float64]
+
+SLICE_POINTS = 241
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class SlicesAnswer:
+    """Quantities along temperature at the plan's atom number, and along atom number at its temperature.
+
+    `values_temperature` and `values_atoms` hold the quantities asked for, by NAME, on the two grids.
+    """
+
+    atoms: float
+    temperature: float
+    temperature_grid: Array
+    atoms_grid: Array
+    names: tuple[str, ...]
+    values_temperature: tuple[Array, ...]
+    values_atoms: tuple[Array, ...]
+    now: tuple[float, ...]
+    threshold_temperature: float
+    threshold_atoms: float
+
+
+@part("species", "trap", "cloud", "target")
+def slices_answer(plan: Plan, names: tuple[str, ...]) -> SlicesAnswer:
+    """Slices through the map at the cloud. A quantity with axes gives its mean over them."""
+    central = cloud_answer(plan)
+    atoms, temperature = float(central.cloud.atoms), float(central.cloud.temperature)
+    # A level sum costs milliseconds, and a hundred points draw a smooth line.
+    points = 61 if central.model is Model.EXACT_LEVELS else SLICE_POINTS
+    temperatures = np.geomspace(*_decade_around(temperature), points)
+    numbers = np.geomspace(*_decade_around(atoms), points)
+
+    def along(atoms: float | Array, temperature: float | Array) -> tuple[Array, ...]:
+        cloud = replace(central.cloud, atoms=atoms, temperature=temperature)
+        solved = equilibrium(cloud, central.model, fermi_threshold=central.threshold, efficiency=central.efficiency)
+        return tuple(_plain(solved, name, points) for name in names)
+
+    return SlicesAnswer(
+        atoms=atoms,
+        temperature=temperature,
+        temperature_grid=temperatures,
+        atoms_grid=numbers,
+        names=names,
+        values_temperature=along(atoms, temperatures),
+        values_atoms=along(numbers, temperature),
+        now=tuple(float(_plain(central.equilibrium, name, 1)[0]) for name in names),
+        threshold_temperature=temperature * float(central.equilibrium.temperature_to_threshold),
+        threshold_atoms=atoms * float(central.equilibrium.atoms_to_threshold),
+    )
+
+
+def _decade_around(value: float) -> tuple[float, float]:
+    """A range that reaches at least a decade to both sides and moves only in half decades, so that a drag seldom
+    changes an axis."""
+    place = round(2.0 * math.log10(value)) / 2.0
+    return 10.0 ** (place - 1.5), 10.0 ** (place + 1.5)
+
+
+def _plain(solved: Equilibrium, name: str, points: int) -> Array:
+    values = np.asarray(getattr(solved, name), dtype=float)
+    if QUANTITIES[name].axes:
+        values = np.mean(values, axis=-1)
+    return np.broadcast_to(values, (points,))

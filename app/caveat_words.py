@@ -1,0 +1,185 @@
+"""Caveats in words: what an answer does not cover, by how much, and what to do about it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from gettext import gettext as _
+from types import MappingProxyType
+from typing import TYPE_CHECKING
+
+from app.units import format_quantity
+from app.words import number, percent, times
+from physics.caveats import Caveat, Severity
+from physics.models import Model
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from app.engine import CloudAnswer
+
+
+@dataclass(frozen=True)
+class CaveatLine:
+    """One caveat for reading: a sign and a word tell its weight, the sentence tells the rest."""
+
+    sign: str
+    word: str
+    sentence: str
+
+
+def _length(value: float) -> str:
+    return format_quantity(value, "a0", digits=4)
+
+
+_PLAIN: Callable[[float], str] = number
+_SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingProxyType(
+    {
+        "model_length_unknown": (
+            _("The scattering length is not known{why}, so the ideal gas is used. Type one, or a field."),
+            _PLAIN,
+        ),
+        "model_not_repulsive": (
+            _("The scattering length is {value}, not repulsive, so the ideal gas is used."),
+            _length,
+        ),
+        "model_not_offered": (
+            _("The model {asked} is not offered here, so the ideal gas is used. Choose semi-ideal or exact levels."),
+            _PLAIN,
+        ),
+        "model_bosons_only": (_("The model {asked} describes bosons; the ideal Fermi gas is used."), _PLAIN),
+        "length_unknown": (
+            _("The scattering length is not known{why}: collision rates and shifts by interaction are left out."),
+            _PLAIN,
+        ),
+        "length_recalled": (
+            _("The scattering length {value} is recalled from its source. Check it before you rely on it."),
+            _length,
+        ),
+        "length_computed": (_("The scattering length {value} is worked out from other data, not measured."), _length),
+        "finite_size": (
+            _("The trap's finite size lowers Tc by {value}: see the shifted critical temperature."),
+            percent,
+        ),
+        "local_density_bosons": (
+            _("Levels are coarse, ħω/kTc = {value}: local density is off here. Compare with exact levels."),
+            _PLAIN,
+        ),
+        "local_density_fermions": (
+            _("Levels are coarse: local density counts the atoms {value} off at the same Fermi energy."),
+            percent,
+        ),
+        "exact_levels_advised": (
+            _("The highest level spacing is {value} kT: local density does not describe this cloud. Use exact levels."),
+            _PLAIN,
+        ),
+        "shell_structure": (
+            _("kT is only {value} of the highest level spacing: the shells of the oscillator show."),
+            _PLAIN,
+        ),
+        "low_dimension_bosons": (
+            _("The highest level spacing is {value} kT, {frozen}: the gas is not three-dimensional. Use exact levels."),
+            _PLAIN,
+        ),
+        "low_dimension_fermions": (
+            _("The Fermi energy is only {value} level spacings, {frozen}: the gas is not three-dimensional."),
+            _PLAIN,
+        ),
+        "few_atoms": (
+            _("With {value} atoms, means at a fluctuating number differ from those at a fixed one."),
+            _PLAIN,
+        ),
+        "thomas_fermi": (
+            _("N₀a/a_ho is {value}: the condensate is too small for the Thomas-Fermi shape, which is used."),
+            _PLAIN,
+        ),
+        "near_threshold": (
+            _("At T/Tc = {value} the repulsion among thermal atoms counts, and the semi-ideal model leaves it out."),
+            _PLAIN,
+        ),
+        "attractive": (
+            _("Atoms attract (a = {value}): a condensate collapses above about {collapse} atoms."),
+            _length,
+        ),
+        "collapse": (
+            _("The condensate would hold {value} times the {collapse} atoms at which attraction makes it collapse."),
+            times,
+        ),
+        "dense": (_("n|a|³ reaches {value}: the gas is too dense for mean-field formulas."), _PLAIN),
+        "long_range_length": (
+            _("|a|/λ is {value}: interactions shift everything near the threshold by several percent."),
+            _PLAIN,
+        ),
+        "fermi_interaction": (
+            _("kF|a| is {value} (1/kFa = {inverse}): interactions are strong, and this ideal Fermi gas has none."),
+            _PLAIN,
+        ),
+        "polarised_fermions": (
+            _("One spin state of a fermion has no s-wave collisions: it neither rethermalises nor evaporates alone."),
+            _PLAIN,
+        ),
+        "pauli_blocking": (
+            _("At T/TF = {value} filled levels block collisions; the collision rate leaves that out."),
+            _PLAIN,
+        ),
+        "hydrodynamic": (
+            _("Atoms collide {value} times per radian of the fastest axis: the cloud is hydrodynamic there."),
+            _PLAIN,
+        ),
+        "truncated": (
+            _("The trap is only {value} kT deep: it cuts the cloud, which is answered as if uncut. Deepen or cool."),
+            _PLAIN,
+        ),
+    }
+)
+_SIGNS = MappingProxyType({Severity.NOTE: "○", Severity.WARNING: "△", Severity.REFUSAL: "■"})
+_WORDS = MappingProxyType(
+    {Severity.NOTE: _("Note"), Severity.WARNING: _("Take care"), Severity.REFUSAL: _("Not this cloud")}
+)
+
+
+def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
+    """The sentence of a caveat, with its number."""
+    template, say = _SENTENCES[_key(caveat, answer)]
+    numbers = caveat.numbers
+    asked = answer.plan.cloud.model or Model.SEMI_IDEAL
+    return template.format(
+        value="" if caveat.value is None else say(caveat.value),
+        why=_why_unknown(answer),
+        asked=asked.value,
+        collapse=number(numbers.get("collapse_atoms", 0.0), 2),
+        inverse=number(numbers.get("inverse", 0.0), 2),
+        frozen=_frozen(int(numbers.get("frozen_axes", 0))),
+    )
+
+
+def caveat_line(caveat: Caveat, answer: CloudAnswer) -> CaveatLine:
+    """A caveat for reading: sign, word and sentence."""
+    return CaveatLine(_SIGNS[caveat.severity], _WORDS[caveat.severity], caveat_text(caveat, answer))
+
+
+def caveat_lines(answer: CloudAnswer) -> tuple[CaveatLine, ...]:
+    """All caveats of an answer, gravest first, and the sections of the plan that are kept but not computed."""
+    unused = tuple(
+        CaveatLine(
+            _SIGNS[Severity.NOTE],
+            _WORDS[Severity.NOTE],
+            _("The section [{name}] of the plan is kept, and not computed by this version.").format(name=name),
+        )
+        for name in answer.plan.unused
+    )
+    return (*(caveat_line(caveat, answer) for caveat in answer.caveats), *unused)
+
+
+def _key(caveat: Caveat, answer: CloudAnswer) -> str:
+    if caveat.id in ("local_density", "low_dimension"):
+        return f"{caveat.id}_{'bosons' if answer.bosons else 'fermions'}"
+    return caveat.id
+
+
+def _why_unknown(answer: CloudAnswer) -> str:
+    reason = answer.scattering.reason
+    return "" if reason is None else f" ({_(reason.value)})"
+
+
+def _frozen(axes: int) -> str:
+    return _("one axis is frozen out") if axes == 1 else _("{count} axes are frozen out").format(count=axes)
