@@ -19,9 +19,9 @@ _FIELD = "species.field"
 MOST_SPINS = 10
 
 _CERTAINTY = {
-    Certainty.SEEN: "read in its source",
-    Certainty.MEMORY: "recalled, to be checked",
-    Certainty.COMPUTED: "worked out",
+    Certainty.SEEN: "seen",
+    Certainty.MEMORY: "recalled",
+    Certainty.COMPUTED: "computed",
 }
 
 
@@ -37,11 +37,11 @@ class SpeciesForm(Form):
         completer.setCaseSensitivity(Qt.CaseSensitivity.CaseInsensitive)
         completer.setCompletionMode(QCompleter.CompletionMode.PopupCompletion)
         self.isotope.setCompleter(completer)
-        completer.activated.connect(lambda text: self._choose_isotope(str(text)))
-        self.isotope.activated.connect(lambda index: self._choose_isotope(self.isotope.itemText(index)))
+        completer.activated.connect(self._choose_isotope)
+        self.isotope.textActivated.connect(self._choose_isotope)
         line = self.isotope.lineEdit()
         assert line is not None
-        line.editingFinished.connect(lambda: self._choose_isotope(line.text()))
+        line.editingFinished.connect(self._isotope_typed)
         line.setPlaceholderText("type to search, such as Rb")
         self.add_row(_KEY.path, "Isotope", "i", self.isotope, _KEY.tip)
         self.state = Choice()
@@ -57,6 +57,9 @@ class SpeciesForm(Form):
         self.field = self.add_quantity(_FIELD, "g")
         self.field.setPlaceholderText("not used")
         self._species: Species | None = None
+
+    def _isotope_typed(self) -> None:
+        self._choose_isotope(self.isotope.currentText())
 
     def _choose_isotope(self, text: str) -> None:
         if self._plan is None:
@@ -110,4 +113,4 @@ class SpeciesForm(Form):
 
 def _told(number: Sourced | None) -> str:
     """A number of the data and how sure it is, for the empty field that it stands in for."""
-    return "not known" if number is None else f"{number.text} · {_CERTAINTY[number.certainty]}"
+    return "not known" if number is None else f"{number.text} ({_CERTAINTY[number.certainty]})"

@@ -12,7 +12,7 @@ from physics.species import load_species
 
 class TargetForm(Form):
     def __init__(self, parent: QWidget | None = None) -> None:
-        super().__init__("On the way", parent)
+        super().__init__("Target", parent)
         self.efficiency = self.add_quantity("target.efficiency", "c", label="Efficiency γ")
         self.efficiency.setPlaceholderText("not assumed")
         self.threshold = self.add_quantity("target.reduced_temperature", "r", label="Threshold T/TF")

@@ -24,13 +24,13 @@ class TrapForm(Form):
             )
             for place, axis in enumerate(AXES)
         )
-        self.depth = self.add_quantity("trap.depth", "d")
-        self.depth.setPlaceholderText("not given")
+        self.depth_field = self.add_quantity("trap.depth", "d")
+        self.depth_field.setPlaceholderText("not given")
 
     def show_plan(self, plan: Plan) -> None:
         for field, quantity in zip(self.frequencies, plan.trap.frequencies, strict=True):
             field.set_quantity(quantity)
-        self.depth.set_quantity(plan.trap.depth)
+        self.depth_field.set_quantity(plan.trap.depth)
 
 
 def _put(place: int, plan: Plan, quantity: Quantity | None) -> Plan:

@@ -18,7 +18,8 @@ from app.widgets.page import Page
 from app.widgets.plot import Plot
 
 MOST = 4  # quantities at a time: more would be too small to read
-USUAL = {True: ("peak_phase_space_density", "condensate_fraction"), False: ("peak_phase_space_density", "reduced_temperature")}
+USUAL_BOSONS = ("peak_phase_space_density", "condensate_fraction")
+USUAL_FERMIONS = ("peak_phase_space_density", "reduced_temperature")
 
 
 class SlicesPage(Page):
@@ -35,7 +36,7 @@ class SlicesPage(Page):
         options = QHBoxLayout()
         options.setContentsMargins(14, 6, 14, 2)
         self.button = QToolButton()
-        self.button.setText("Quantities ▾")
+        self.button.setText("Quantities")
         self.button.setToolTip(f"Choose up to {MOST} quantities to plot")
         self.button.setAccessibleName("Choose the quantities to plot")
         self.button.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)
@@ -65,7 +66,7 @@ class SlicesPage(Page):
         """Names of the quantities on show: the user's choice as far as this gas has them, else the usual ones."""
         bosons = self.cloud is None or self.cloud.bosons
         fitting = tuple(name for name in self._chosen if _fits(name, bosons))
-        return fitting or USUAL[bosons]
+        return fitting or (USUAL_BOSONS if bosons else USUAL_FERMIONS)
 
     def choose(self, names: tuple[str, ...]) -> None:
         """Show these quantities."""

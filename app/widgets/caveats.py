@@ -2,20 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from html import escape
 
 from PySide6.QtCore import QSize
 from PySide6.QtWidgets import QFrame, QTextBrowser, QWidget
 
-
-@dataclass(frozen=True)
-class CaveatLine:
-    """One caveat in words: a sign and a word tell its weight, the sentence tells the rest."""
-
-    sign: str
-    word: str
-    sentence: str
+from app.caveat_words import CaveatLine
 
 
 class Caveats(QTextBrowser):
@@ -54,5 +46,5 @@ class Caveats(QTextBrowser):
         )
         self.verticalScrollBar().setValue(place)
 
-    def sizeHint(self) -> QSize:  # noqa: N802 (the toolkit's name)
+    def sizeHint(self) -> QSize:
         return QSize(300, 150)

@@ -31,7 +31,7 @@ class Choice(QComboBox):
         self.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
         self.setMinimumContentsLength(8)
 
-    def wheelEvent(self, event: QWheelEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def wheelEvent(self, event: QWheelEvent) -> None:
         if self.hasFocus():
             super().wheelEvent(event)
         else:
@@ -124,7 +124,7 @@ class Form(QWidget):
         key: str = "",
         put: Callable[[Plan, Quantity | None], Plan] | None = None,
     ) -> QuantityField:
-        """A field for a quantity of the plan. `put` says how it enters the plan, where it is not an entry of its own."""
+        """A field for a quantity of the plan. `put` says how it enters the plan, where it is no entry of its own."""
         field = PLAN_FIELDS[path]
         kind = field.kind
         assert isinstance(kind, Kind)

@@ -25,10 +25,10 @@ class StatusLine(QWidget):
             self.setAccessibleName(text or "Status")
             self.update()
 
-    def sizeHint(self) -> QSize:  # noqa: N802 (the toolkit's name)
+    def sizeHint(self) -> QSize:
         return QSize(200, QFontMetrics(self.font()).height() + 4)
 
-    def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def paintEvent(self, event: QPaintEvent) -> None:
         painter = QPainter(self)
         painter.setPen(self.palette().color(QPalette.ColorRole.PlaceholderText))
         shown = painter.fontMetrics().elidedText(self._text, Qt.TextElideMode.ElideRight, self.width())

@@ -14,7 +14,7 @@ from app.words import Figure
 
 SENTENCE_SCALE = 1.55
 SENTENCE_SCALE_SMALL = 1.2
-VALUE_SCALE = 1.5
+VALUE_SCALE = 1.75
 CAPTION_SCALE = 0.86
 MARGIN = 16
 GAP = 18
@@ -54,7 +54,7 @@ class FigureRow(QWidget):
     def figures(self) -> tuple[Figure, ...]:
         return self._figures
 
-    def sizeHint(self) -> QSize:  # noqa: N802 (the toolkit's name)
+    def sizeHint(self) -> QSize:
         return QSize(400, self._lines()[-1])
 
     def _lines(self) -> tuple[int, int, int, int]:
@@ -63,7 +63,7 @@ class FigureRow(QWidget):
         large = QFontMetrics(scaled(self.font(), VALUE_SCALE)).height()
         return 0, small, small + large, 2 * small + large
 
-    def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def paintEvent(self, event: QPaintEvent) -> None:
         if not self._figures:
             return
         painter = QPainter(self)
@@ -169,10 +169,10 @@ class Verdict(QWidget):
         two_small = 2 * QFontMetrics(scaled(self.font(), SENTENCE_SCALE_SMALL)).height()
         return max(one_large, two_small)
 
-    def sizeHint(self) -> QSize:  # noqa: N802 (the toolkit's name)
+    def sizeHint(self) -> QSize:
         return QSize(600, MARGIN + self._sentence_height() + 6 + self._row.sizeHint().height() + MARGIN // 2)
 
-    def minimumSizeHint(self) -> QSize:  # noqa: N802 (the toolkit's name)
+    def minimumSizeHint(self) -> QSize:
         return QSize(300, self.sizeHint().height())
 
     def _fit(self) -> None:
@@ -185,7 +185,7 @@ class Verdict(QWidget):
         if font != self._sentence.font():
             self._sentence.setFont(font)
 
-    def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def resizeEvent(self, event: QResizeEvent) -> None:
         width = self.width() - 2 * MARGIN
         height = self._sentence_height()
         self._sentence.setGeometry(MARGIN, MARGIN - 4, width, height + 4)

@@ -59,8 +59,8 @@ class Bench(QScrollArea):
     def take_focus(self) -> None:
         self.species.take_focus()
 
-    def sizeHint(self) -> QSize:  # noqa: N802 (the toolkit's name)
+    def sizeHint(self) -> QSize:
         return QSize(WIDTH, 600)
 
-    def minimumSizeHint(self) -> QSize:  # noqa: N802 (the toolkit's name)
+    def minimumSizeHint(self) -> QSize:
         return QSize(230, 120)

@@ -14,6 +14,7 @@ from app.pages.map import MapPage
 from app.pages.profile import ProfilePage
 from app.pages.slices import SlicesPage
 from app.widgets.caveats import Caveats
+from app.widgets.detail import Detail
 from app.widgets.page import Page
 from app.widgets.readouts import Readouts
 from app.widgets.verdict import Verdict
@@ -45,6 +46,8 @@ class Desk(QWidget):
         self.tabs.currentChanged.connect(self.page_changed)
         self._last_page: Page = self.map
         self.readouts, self.caveats = Readouts(), Caveats()
+        self.detail = Detail()
+        self.readouts.detail_changed.connect(self.detail.show_text)
         self.side = self._make_side()
         self.columns = QSplitter(Qt.Orientation.Horizontal)
         self.columns.setHandleWidth(1)
@@ -57,17 +60,18 @@ class Desk(QWidget):
         layout.setSpacing(0)
         layout.addWidget(self.verdict)
         layout.addWidget(self.columns, 1)
-        self._panes: tuple[QWidget, ...] = (self.bench, self.tabs, self.readouts, self.caveats)
+        self._panes: tuple[QWidget, ...] = (self.bench, self.tabs, self.readouts, self.detail, self.caveats)
         self.reset_layout()
 
     def _make_side(self) -> QSplitter:
         side = QSplitter(Qt.Orientation.Vertical)
         side.setHandleWidth(1)
         side.setChildrenCollapsible(False)
-        side.addWidget(_titled("", self.readouts, (14, 6, 0, 0)))
+        side.addWidget(self.readouts)
+        side.addWidget(_titled("", self.detail, (16, 8, 8, 4)))
         side.addWidget(_titled("Caveats", self.caveats, (16, 8, 8, 8)))
         side.setStretchFactor(0, 3)
-        side.setStretchFactor(1, 1)
+        side.setStretchFactor(2, 1)
         return side
 
     # ---------------------------------------------------------------- pages
@@ -103,7 +107,7 @@ class Desk(QWidget):
     def folded(self) -> bool:
         return self.tabs.indexOf(self.side) >= 0
 
-    def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def resizeEvent(self, event: QResizeEvent) -> None:
         self._fold(self.width() < FOLD_WIDTH)
 
     def _fold(self, fold: bool) -> None:
@@ -123,7 +127,7 @@ class Desk(QWidget):
     def reset_layout(self) -> None:
         """Every part in its first size."""
         self._share_out()
-        self.side.setSizes([520, 180])
+        self.side.setSizes([560, 92, 150])
 
     def _share_out(self) -> None:
         middle = max(self.width() - BENCH_WIDTH - READOUTS_WIDTH, 400)
@@ -133,10 +137,9 @@ class Desk(QWidget):
         """Move the keyboard to the next visible part, or with -1 to the one before."""
         panes = [pane for pane in self._panes if pane.isVisible()]
         focus = QApplication.focusWidget()
-        here = next((i for i, pane in enumerate(panes) if focus is pane or pane.isAncestorOf(focus)), -1) if focus else -1
-        if here >= 0 and panes[here] is self.tabs and focus is not None:
-            # Folded readouts live inside the tabs: they are the pane then.
-            here = next((i for i, pane in enumerate(panes) if pane is not self.tabs and pane.isAncestorOf(focus)), here)
+        # Folded readouts live inside the tabs, so the last pane that holds the focus is the one it is in.
+        holding = [i for i, pane in enumerate(panes) if focus and (focus is pane or pane.isAncestorOf(focus))]
+        here = holding[-1] if holding else -1
         target = panes[(here + step) % len(panes)] if here >= 0 else panes[0]
         if target is self.bench:
             self.bench.take_focus()

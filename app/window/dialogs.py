@@ -77,7 +77,11 @@ def shortcuts_dialog(parent: QWidget | None = None) -> TextDialog:
     """All actions by menu, with their keys here; then the keys of fields, plots and readouts."""
     parts = []
     for menu in MenuName:
-        rows = [(spec.text.replace("&", ""), _keys_text(key_sequences(spec)), spec.tip) for spec in ACTIONS if spec.menu is menu]
+        rows = [
+            (spec.text.replace("&", ""), _keys_text(key_sequences(spec)), spec.tip)
+            for spec in ACTIONS
+            if spec.menu is menu
+        ]
         parts.append(_section(menu.plain, rows))
     parts.append(
         _section(
@@ -92,7 +96,11 @@ def shortcuts_dialog(parent: QWidget | None = None) -> TextDialog:
         _section(
             "On the map",
             [
-                ("Move the cloud", "Arrow keys", "Left and right change T, up and down change N; with Shift in small steps"),
+                (
+                    "Move the cloud",
+                    "Arrow keys",
+                    "Left and right change N, up and down change T; with Shift in large steps",
+                ),
                 ("Set the cloud", "Double click", "At the pointer; or drag the point"),
             ],
         )

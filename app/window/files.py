@@ -37,9 +37,7 @@ class Files(QObject):
         """Ask for a file and read it."""
         if not self.may_leave():
             return
-        chosen, _ = QFileDialog.getOpenFileName(
-            self._window, "Open a plan", str(self._settings.last_folder), FILTER
-        )
+        chosen, _ = QFileDialog.getOpenFileName(self._window, "Open a plan", str(self._settings.last_folder), FILTER)
         if chosen:
             self.read(Path(chosen))
 

@@ -47,10 +47,19 @@ def style_sheet_of(theme: Theme) -> str:
         #banner {{ background: {theme.base}; border: none; border-bottom: 2px solid {theme.warning}; }}
         #bannerSign {{ color: {theme.warning}; font-weight: bold; }}
         #verdictSentence {{ background: transparent; }}
-        #bench, #benchBody, #readouts, #caveats {{ background: {theme.window}; border: none; }}
+        #bench, #benchBody, #readouts, #caveats, #detail {{ background: {theme.window}; border: none; }}
         #formTitle, #paneTitle {{ color: {theme.muted}; font-weight: 600; }}
         #fieldNote, #plotStatus {{ color: {theme.muted}; }}
         #fieldError {{ color: {theme.error}; }}
+        QLineEdit {{ border: 1px solid {theme.border}; border-radius: 3px; padding: 3px 5px;
+                     background: {theme.base}; }}
+        QLineEdit:focus {{ border-color: {theme.accent}; }}
+        QLineEdit[invalid="true"] {{ border-color: {theme.error}; }}
+        QTabWidget::pane {{ border: none; }}
+        QTabBar::tab {{ padding: 6px 16px 5px 16px; border: none; background: transparent; color: {theme.muted};
+                        border-bottom: 2px solid transparent; }}
+        QTabBar::tab:selected {{ color: {theme.text}; border-bottom-color: {theme.accent}; }}
+        QTabBar::tab:focus {{ text-decoration: underline; }}
         QSplitter::handle {{ background: {theme.border}; }}
         QToolTip {{ color: {theme.text}; background: {theme.base}; border: 1px solid {theme.border}; padding: 3px; }}
     """

@@ -73,7 +73,7 @@ class MainWindow(QMainWindow):
             self.resize(FIRST_SIZE)
         self.setGeometry(rectangle_on_screens(self.geometry(), screens))
 
-    def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def paintEvent(self, event: QPaintEvent) -> None:
         super().paintEvent(event)
         if not self._painted:
             self._painted = True
@@ -149,7 +149,8 @@ class MainWindow(QMainWindow):
         document.stack.canUndoChanged.connect(self.actions_by_id["edit.undo"].setEnabled)
         document.stack.canRedoChanged.connect(self.actions_by_id["edit.redo"].setEnabled)
         self._recent.aboutToShow.connect(self._fill_recent)
-        self.looks.theme_changed.connect(lambda theme: [page.set_theme(theme) for page in desk.pages])
+        for page in desk.pages:
+            self.looks.theme_changed.connect(page.set_theme)
         # what is remembered, and what is told
         desk.readouts.unit_chosen.connect(self._choose_unit)
         desk.slices.chosen_changed.connect(lambda names: self.settings.put("slices/chosen", names))
@@ -168,7 +169,8 @@ class MainWindow(QMainWindow):
         self.answers.set_plan(plan)
 
     def _show_cloud(self, answer: CloudAnswer) -> None:
-        from app.words import caveat_lines, deciding_figures, verdict
+        from app.caveat_words import caveat_lines
+        from app.words import deciding_figures, verdict
 
         desk = self.desk
         desk.verdict.show_answer(verdict(answer), deciding_figures(answer))
@@ -246,29 +248,34 @@ class MainWindow(QMainWindow):
         if not recent:
             self._recent.addAction("No plan opened yet").setEnabled(False)
 
-    def dragEnterEvent(self, event: QDragEnterEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def dragEnterEvent(self, event: QDragEnterEvent) -> None:
         if self.furnished and self.files.droppable(event.mimeData()) is not None:
             event.acceptProposedAction()
 
-    def dropEvent(self, event: QDropEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def dropEvent(self, event: QDropEvent) -> None:
         path = self.files.droppable(event.mimeData())
         if path is not None:
             event.acceptProposedAction()
             self.files.drop(path)
 
-    def closeEvent(self, event: QCloseEvent) -> None:  # noqa: N802 (the toolkit's name)
+    def closeEvent(self, event: QCloseEvent) -> None:
         if self.furnished and not self.files.may_leave():
             event.ignore()
             return
         self.settings.put("window/geometry", self.saveGeometry())
         if self.furnished:
             self.desk.save_state(self.settings)
+        self.end()
+        self.settings.flush()
+        event.accept()
+
+    def end(self) -> None:
+        """Stop all that works in the background; the window is going."""
+        if self.furnished:
+            self.furnished = False
             self.recovery.close()
             self.answers.close()
             self._restore_hook()
-            self.furnished = False
-        self.settings.flush()
-        event.accept()
 
     # ---------------------------------------------------------------- what is told and shown
 
@@ -279,9 +286,7 @@ class MainWindow(QMainWindow):
     def _tell_trouble(self, sentence: str, details: str) -> None:
         from app.widgets.banner import Offer
 
-        self.tell(
-            sentence, Offer("Copy details", lambda: QGuiApplication.clipboard().setText(details), stays=True)
-        )
+        self.tell(sentence, Offer("Copy details", lambda: QGuiApplication.clipboard().setText(details), stays=True))
 
     def _offer_recovery(self) -> None:
         from app.widgets.banner import Offer

@@ -59,7 +59,8 @@ class Settings:
         try:
             path.replace(aside)
         except OSError as error:
-            self.notice = f"The settings file {path} {trouble} and cannot be moved ({error.strerror}): defaults are used."
+            why = error.strerror or error
+            self.notice = f"The settings file {path} {trouble}; defaults are used, and it cannot be moved: {why}."
         else:
             self.notice = f"The settings file {trouble}: it was set aside as {aside}, and the defaults are used."
 

@@ -13,7 +13,7 @@ from PySide6.QtCore import QSize, Qt, QTimer
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtWidgets import QApplication
 
-from app.window.main_window import MainWindow
+from app.window.main_window import FIRST_SIZE, MainWindow
 from app.window.settings import Settings, ThemeChoice
 
 if TYPE_CHECKING:
@@ -52,15 +52,21 @@ def open_window(wishes: Wishes) -> int:
     """
     app = application()
     settings = Settings(wishes.settings_folder)
-    window = MainWindow(settings, size=wishes.size)
+    size = wishes.size or (FIRST_SIZE if wishes.pictures is not None else None)
+    window = MainWindow(settings, size=size)
     status: list[int] = []
 
     def furnish() -> None:
-        furnish_window(window, wishes)
-        if wishes.pictures is not None:
-            status.append(_take_pictures(window, wishes))
-            window.document.stack.setClean()
-            window.close()
+        try:
+            furnish_window(window, wishes)
+            if wishes.pictures is not None:
+                status.append(_take_pictures(window, wishes))
+        except Exception as error:
+            # Nobody could see a notice yet, or nobody is looking: the program ends with one sentence.
+            print(f"coldward: the window cannot be built: {type(error).__name__}: {error}", file=sys.stderr)
+            status.append(1)
+        if status:
+            window.end()
             app.quit()
 
     if wishes.pictures is not None and wishes.plan_path is not None and (problem := _problem_of(wishes.plan_path)):

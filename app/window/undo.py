@@ -29,7 +29,7 @@ class PlanEdit(QUndoCommand):
     def id(self) -> int:
         return PLAN_EDIT if self.merge_key else -1
 
-    def mergeWith(self, other: QUndoCommand) -> bool:  # noqa: N802 (the toolkit's name)
+    def mergeWith(self, other: QUndoCommand) -> bool:
         if not isinstance(other, PlanEdit) or other.merge_key != self.merge_key:
             return False
         self.after = other.after

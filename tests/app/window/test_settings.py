@@ -88,10 +88,10 @@ SCREENS = [QRect(0, 0, 1920, 1080), QRect(1920, 0, 1280, 1024)]
 
 @pytest.mark.parametrize(
     "wanted",
-    [QRect(-5000, -5000, 800, 600), QRect(9000, 200, 800, 600), QRect(100, 100, 5000, 4000), QRect(1800, 900, 900, 700)],
+    [(-5000, -5000, 800, 600), (9000, 200, 800, 600), (100, 100, 5000, 4000), (1800, 900, 900, 700)],
 )
-def test_a_window_is_brought_back_onto_a_screen(wanted: QRect) -> None:
-    got = rectangle_on_screens(wanted, SCREENS)
+def test_a_window_is_brought_back_onto_a_screen(wanted: tuple[int, int, int, int]) -> None:
+    got = rectangle_on_screens(QRect(*wanted), SCREENS)
     assert any(screen.contains(got) for screen in SCREENS)
 
 

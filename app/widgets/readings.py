@@ -1,0 +1,82 @@
+"""An answer's quantities as they are read: number, unit, symbol, and why there is none."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+
+from app.engine import CloudAnswer
+from app.quantities import QUANTITIES, Need, Row, display_factor
+from app.units import best_unit
+from app.words import number, reason_missing, row_tip, shown_unit, value_text
+
+
+@dataclass(frozen=True)
+class Reading:
+    """A quantity as it is read: its symbol, number and unit as text; `reason` says why there is no number."""
+
+    symbol: str
+    value: str
+    unit: str = ""
+    reason: str = ""
+
+    @property
+    def text(self) -> str:
+        return f"{self.value} {self.unit}".strip()
+
+
+def tip_of(row: Row, reading: Reading, interval: str) -> str:
+    """What a reader wants to know of a number: how it is worked out, from where, how far it holds, how sure it is."""
+    lines = [f"{row.label}, {row.symbol}", row_tip(row)]
+    if reading.reason:
+        lines.insert(1, f"no value: {reading.reason}")
+    if interval:
+        lines.insert(1, f"68 % of the draws: {interval}")
+    if len(row.units) > 1:
+        lines.append("Return or a right click chooses the unit")
+    return "\n".join(lines)
+
+
+def readings_of(answer: CloudAnswer, chosen_units: Mapping[str, str]) -> dict[str, Reading]:
+    """What the readouts show of an answer: quantities of the other statistics are left out, and those that lack an
+    input say so."""
+    readings = {}
+    for name, row in QUANTITIES.items():
+        need = answer.missing(row)
+        if need in (Need.BOSONS, Need.FERMIONS):
+            continue
+        if need is not None:
+            readings[name] = Reading(_symbol(row, answer), "–", reason=reason_missing(need))
+            continue
+        unit = chosen_units.get(name, "")
+        if unit not in row.units:
+            unit = unit_for(row, answer.value(name))
+        readings[name] = Reading(_symbol(row, answer), value_text(answer, row, unit), shown_unit(unit))
+    return readings
+
+
+def interval_text(answer: CloudAnswer, name: str) -> str:
+    """The interval of a quantity over the stated uncertainties, in the unit that suits it; empty where there is
+    none."""
+    row = QUANTITIES[name]
+    interval = None if answer.missing(row) else answer.interval(name)
+    if interval is None or row.axes:
+        return ""
+    unit = unit_for(row, answer.value(name))
+    low, high = (number(float(bound) / display_factor(unit, row)) for bound in interval)
+    return f"{low} to {high} {shown_unit(unit)}".strip()
+
+
+def unit_for(row: Row, value: object) -> str:
+    """The unit that suits a value, where the reader chose none."""
+    if len(row.units) == 1 or "%" in row.units:
+        return row.units[0]
+    return best_unit(float(np.max(np.abs(np.asarray(value, dtype=float)))), row.units)
+
+
+def _symbol(row: Row, answer: CloudAnswer) -> str:
+    """The symbol for the statistics at hand, where a row has one for each: "T/Tc or T/TF"."""
+    symbols = row.symbol.split(" or ")
+    return symbols[0] if answer.bosons else symbols[-1]

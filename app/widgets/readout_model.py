@@ -1,0 +1,183 @@
+"""The table behind the readouts, and how a line of it is painted.
+
+One line holds label, symbol, number and unit; it is painted as a whole, so that a long number may use the room that a
+short label leaves, and that following a drag costs the repaint of changed lines and nothing else.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+
+from PySide6.QtCore import QAbstractItemModel, QModelIndex, QObject, QPersistentModelIndex, QRect, QSize, Qt
+from PySide6.QtGui import QFont, QFontMetrics, QPainter, QPalette
+from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
+
+from app.quantities import QUANTITIES, Group, Row
+from app.widgets.readings import Reading, tip_of
+
+AnyIndex = QModelIndex | QPersistentModelIndex
+NOTHING = Reading("", "–")
+
+
+class ReadoutModel(QAbstractItemModel):
+    """Headings, and under each its quantities. Rows change with the species only; values change in place."""
+
+    def __init__(self, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._groups: tuple[tuple[Group, tuple[Row, ...]], ...] = ()
+        self._readings: dict[str, Reading] = {}
+        self._interval: Callable[[str], str] = lambda name: ""
+        self.stale = False
+
+    def show_readings(self, readings: Mapping[str, Reading], interval: Callable[[str], str]) -> None:
+        """Show these quantities, by name; headings without any are left out. `interval` tells, when a tip asks, how
+        sure one is."""
+        self._interval = interval
+        rows = tuple(row for row in QUANTITIES.values() if row.name in readings)
+        groups = tuple(
+            (group, members) for group in Group if (members := tuple(row for row in rows if row.group is group))
+        )
+        was_stale, self.stale = self.stale, False
+        if groups != self._groups:
+            self.beginResetModel()
+            self._groups, self._readings = groups, dict(readings)
+            self.endResetModel()
+            return
+        before, self._readings = self._readings, dict(readings)
+        for place, (_, members) in enumerate(groups):
+            changed = [i for i, row in enumerate(members) if was_stale or before[row.name] != readings[row.name]]
+            if changed:
+                self._tell_changed(place, changed[0], changed[-1])
+
+    def mark_stale(self) -> None:
+        if not self.stale:
+            self.stale = True
+            for place, (_, members) in enumerate(self._groups):
+                self._tell_changed(place, 0, len(members) - 1)
+
+    def _tell_changed(self, place: int, first: int, last: int) -> None:
+        parent = self.index(place, 0)
+        self.dataChanged.emit(self.index(first, 0, parent), self.index(last, 0, parent))
+
+    def row_at(self, index: AnyIndex) -> Row | None:
+        """The quantity at an index; None for a heading."""
+        if not index.isValid() or not index.internalId():
+            return None
+        return self._groups[index.internalId() - 1][1][index.row()]
+
+    def group_at(self, index: AnyIndex) -> Group:
+        """The heading at an index."""
+        return self._groups[index.row()][0]
+
+    def reading_of(self, row: Row) -> Reading:
+        return self._readings.get(row.name, NOTHING)
+
+    def tip_at(self, index: AnyIndex) -> str:
+        """All that can be said of the quantity at an index; empty for a heading."""
+        row = self.row_at(index)
+        return "" if row is None else tip_of(row, self.reading_of(row), self._interval(row.name))
+
+    def table_text(self) -> str:
+        """All readouts as tab-separated text: names of the columns, then a line for each quantity."""
+        lines = ["quantity\tsymbol\tvalue\tunit"]
+        for _, members in self._groups:
+            for row in members:
+                reading = self.reading_of(row)
+                lines.append("\t".join((row.label, reading.symbol, reading.value, reading.unit)))
+        return "\n".join(lines)
+
+    def index(self, row: int, column: int, parent: AnyIndex = QModelIndex()) -> QModelIndex:  # noqa: B008
+        return self.createIndex(row, column, parent.row() + 1 if parent.isValid() else 0)
+
+    def parent(self, index: AnyIndex = QModelIndex()) -> QModelIndex:  # type: ignore[override]  # noqa: B008
+        number = index.internalId() if index.isValid() else 0
+        return self.createIndex(number - 1, 0, 0) if number else QModelIndex()
+
+    def rowCount(self, parent: AnyIndex = QModelIndex()) -> int:  # noqa: B008
+        if not parent.isValid():
+            return len(self._groups)
+        return 0 if parent.internalId() else len(self._groups[parent.row()][1])
+
+    def columnCount(self, parent: AnyIndex = QModelIndex()) -> int:  # noqa: B008
+        return 1
+
+    def flags(self, index: AnyIndex) -> Qt.ItemFlag:
+        if not index.isValid():
+            return Qt.ItemFlag.NoItemFlags
+        return Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
+
+    def data(self, index: AnyIndex, role: int = Qt.ItemDataRole.DisplayRole) -> object:
+        if not index.isValid():
+            return None
+        row = self.row_at(index)
+        match role:
+            case Qt.ItemDataRole.DisplayRole:
+                return self.group_at(index).value if row is None else row.label
+            case Qt.ItemDataRole.ToolTipRole:
+                return self.tip_at(index) or None
+            case Qt.ItemDataRole.AccessibleTextRole if row is not None:
+                reading = self.reading_of(row)
+                return f"{row.label}: {reading.reason or reading.text}"
+        return None
+
+
+class ReadoutPainter(QStyledItemDelegate):
+    """Paints a heading, or a line with its number in a column of its own."""
+
+    SIDE = 6
+    GAP = 7
+
+    def __init__(self, model: ReadoutModel, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._model = model
+
+    def sizeHint(self, option: QStyleOptionViewItem, index: AnyIndex) -> QSize:
+        line = QFontMetrics(option.font).height()
+        heading = self._model.row_at(index) is None
+        above = 0.75 * line if heading and index.row() else 0.2 * line
+        return QSize(100, round(line + 3 + above) if heading else line + 3)
+
+    def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: AnyIndex) -> None:
+        palette: QPalette = option.palette
+        area: QRect = option.rect.adjusted(self.SIDE, 0, -self.SIDE, 0)
+        row = self._model.row_at(index)
+        if row is None:
+            font = QFont(option.font)
+            font.setWeight(QFont.Weight.DemiBold)
+            painter.setFont(font)
+            painter.setPen(palette.color(QPalette.ColorRole.PlaceholderText))
+            line = QRect(area.left(), area.bottom() - painter.fontMetrics().height() - 1, area.width(), 0)
+            line.setHeight(painter.fontMetrics().height())
+            painter.drawText(line, Qt.AlignmentFlag.AlignLeft, self._model.group_at(index).value)
+            return
+        ink, quiet = palette.color(QPalette.ColorRole.Text), palette.color(QPalette.ColorRole.PlaceholderText)
+        if option.state & QStyle.StateFlag.State_Selected:
+            painter.fillRect(option.rect, palette.color(QPalette.ColorRole.Highlight))
+            ink = quiet = palette.color(QPalette.ColorRole.HighlightedText)
+        self._paint_line(painter, area, row, option.font, ink, quiet)
+
+    def _paint_line(self, painter: QPainter, area: QRect, row: Row, font: QFont, ink: object, quiet: object) -> None:
+        reading = self._model.reading_of(row)
+        painter.setFont(font)
+        metrics = painter.fontMetrics()
+        left, middle = Qt.AlignmentFlag.AlignLeft, Qt.AlignmentFlag.AlignVCenter
+        unit_width = metrics.horizontalAdvance("1/cm^3")
+        value_right = area.right() - unit_width - self.GAP
+        value_width = metrics.horizontalAdvance(reading.value)
+        painter.setPen(quiet)  # type: ignore[call-overload]
+        unit = QRect(value_right + self.GAP, area.top(), unit_width, area.height())
+        painter.drawText(unit, left | middle, reading.unit)
+        # The label takes what the number leaves, the symbol what the label leaves.
+        room = value_right - value_width - self.GAP - area.left()
+        label_width = min(metrics.horizontalAdvance(row.label), room)
+        symbol_width = metrics.horizontalAdvance(reading.symbol)
+        if label_width + 2 * self.GAP + symbol_width <= room:
+            place = QRect(area.left() + label_width + self.GAP, area.top(), symbol_width + 2, area.height())
+            painter.drawText(place, left | middle, reading.symbol)
+        dim = bool(reading.reason) or self._model.stale
+        painter.setPen(quiet if dim else ink)  # type: ignore[call-overload]
+        number = QRect(value_right - value_width - 1, area.top(), value_width + 2, area.height())
+        painter.drawText(number, left | middle, reading.value)
+        painter.setPen(quiet if reading.reason else ink)  # type: ignore[call-overload]
+        shown = metrics.elidedText(row.label, Qt.TextElideMode.ElideRight, label_width + 1)
+        painter.drawText(QRect(area.left(), area.top(), label_width + 1, area.height()), left | middle, shown)
