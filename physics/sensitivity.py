@@ -1,7 +1,7 @@
 """How uncertain inputs spread an answer: the same few thousand well-spread draws every time.
 
-Draws are a rank-1 lattice, shifted by a seeded random vector and mapped to normal deviates. A positive quantity is drawn
-log-normally, so that it stays positive. The answer at all draws is one array, whose quantiles are the interval.
+Draws are a rank-1 lattice, shifted by a seeded random vector and mapped to normal deviates. A positive quantity is
+drawn log-normally, so that it stays positive. The answer at all draws is one array, whose quantiles are the interval.
 
 References
 ----------
