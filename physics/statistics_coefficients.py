@@ -6,16 +6,6 @@ table means, and its source, is said there. Keys are twice the order s.
 
 # fmt: off
 
-# Riemann zeta(s)
-ZETA: dict[int, float] = {
-    3: 2.612375348685488,
-    4: 1.6449340668482264,
-    5: 1.341487257250917,
-    6: 1.2020569031595942,
-    7: 1.1267338673170566,
-    8: 1.0823232337111381,
-}
-
 BOSE_SPLIT = 1.0
 
 FERMI_EDGES = (-1.5, 0.0, 2.0, 5.0, 11.0, 22.0, 40.0)

@@ -23,7 +23,6 @@ from physics.statistics_coefficients import (
     FERMI_PIECES,
     FERMI_SERIES,
     SOMMERFELD,
-    ZETA,
 )
 
 Array = NDArray[np.float64]
@@ -34,7 +33,6 @@ SMALL_VALUE = 2.0**-30
 LARGE_ETA = 1.0e5
 # g_1/2 above this is sqrt(pi/alpha) + zeta(1/2), its next term being below rounding.
 LARGE_BOSE_HALF = 2.0**20
-ZETA_HALF = -1.4603545088095868  # zeta(1/2), the constant term of BOSE_EXPANSION[1]
 # Below this deficit zeta(s) - g_s the leading term is alone, but for logarithms.
 SMALL_DEFICIT = 2.0**-112
 
@@ -155,7 +153,7 @@ def bose_inverse_small(twice: int, value: Array) -> Array:
 
 def bose_inverse_large_half(value: Array) -> Array:
     """alpha of g_1/2 = sqrt(pi/alpha) + zeta(1/2) above LARGE_BOSE_HALF."""
-    return math.pi / (value - ZETA_HALF) ** 2
+    return math.pi / (value - BOSE_EXPANSION[1][0]) ** 2
 
 
 def fermi_inverse_large(twice: int, value: Array) -> Array:
@@ -178,7 +176,7 @@ def bose_deficit_inverse_small(twice: int, deficit: Array) -> Array:
     if twice == 3:
         return (deficit / -BOSE_SINGULAR[twice]) ** 2
     if twice > 4:
-        return deficit / ZETA[twice - 2]
+        return deficit / BOSE_EXPANSION[twice - 2][0]
     # deficit = alpha (1 - ln alpha): the map shrinks errors by 1/(1 - ln alpha) < 1/75 each time.
     alpha = deficit / 80
     for _ in range(10):

@@ -20,7 +20,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics import statistics_masters as masters
-from physics.statistics_coefficients import FERMI_EDGES, ZETA
+from physics.statistics_coefficients import BOSE_EXPANSION, FERMI_EDGES
 from physics.statistics_masters import LARGE_BOSE_HALF, LARGE_ETA, SMALL_DEFICIT, SMALL_VALUE, Array
 
 Integers = NDArray[np.int64]
@@ -296,7 +296,7 @@ class Saturation:
 
     def __init__(self, twice: int) -> None:
         self.twice = twice
-        self.zeta = ZETA[twice]
+        self.zeta = BOSE_EXPANSION[twice][0]
         top = math.frexp(self.zeta / 2)[1]
         far = Segments.by_bits(self._far, SMALL_VALUE_BINADE, top, INVERSE_BITS, INVERSE_DEGREE)
         zero = Segments(np.zeros((INVERSE_DEGREE + 1, 1 << INVERSE_BITS)))

@@ -103,8 +103,8 @@ def order(twice: int) -> Number:
 def bose_rational(twice: int) -> tuple[list[float], list[float]]:
     """Numerator and denominator of e^alpha g_s y^m in y = sqrt(1 - e^-alpha), half-integer s.
 
-    Li_s(z)/z times y^m (m = 1 for s = 1/2, 3 for s = -1/2, else 0) is analytic in y in the plane cut along
-    y^2 > ..., because sqrt(alpha) is odd in y; one rational serves 0 <= z <= 1. Linear collocation at Chebyshev nodes.
+    Li_s(z)/z times y^m (m = 1 for s = 1/2, 3 for s = -1/2, else 0) is analytic in the plane of y cut from -inf to -1,
+    because sqrt(alpha) is odd in y; one rational serves 0 <= z <= 1. Linear collocation at Chebyshev nodes.
     """
     with mp.workdps(RATIONAL_DIGITS):
         s, power = order(twice), {1: 1, -1: 3}.get(twice, 0)
@@ -198,7 +198,6 @@ def module_text() -> str:
         "table means, and its source, is said there. Keys are twice the order s.\n"
         '"""',
         "# fmt: off",
-        table("ZETA", "Riemann zeta(s)", "float", {n: float(mpmath.zeta(order(n))) for n in TWICE_ORDERS if n > 2}),
         f"BOSE_SPLIT = {float(BOSE_SPLIT)!r}",
         f"FERMI_EDGES = ({', '.join(repr(float(e)) for e in FERMI_EDGES)})",
         table("BOSE_RATIONAL", "Numerator and denominator in y = sqrt(1 - e^-alpha)", pieces,
