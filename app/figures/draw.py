@@ -251,8 +251,8 @@ def style_line(line: Line2D, style: LineStyle) -> None:
 
 def drawing_note(picture: Picture) -> str:
     """The picture's note, and what a logarithmic axis cannot show."""
-    hidden = sum(
-        int(np.count_nonzero(values <= 0.0))
+    hidden = any(
+        bool((values <= 0.0).any())
         for curve in picture.curves
         for axis, values in ((picture.x, curve.x), (picture.y, curve.y))
         if axis.log

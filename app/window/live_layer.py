@@ -53,7 +53,8 @@ class LiveLayer:
         self._scale = float(renderer.dpi) / 72.0  # pixels per point
         self._frame_buffer = self._buffer().copy()
         self._ground: Pixels = self._frame_buffer
-        self._field: Field | None = None
+        self._ground_field: Field | None = None
+        self._last_field: Field | None = None
         left, bottom = layout.left * self._scale, layout.bottom * self._scale
         self.box = Bbox.from_bounds(left, bottom, layout.width * self._scale, layout.height * self._scale)
         self._contexts: dict[tuple[Role, bool], GraphicsContextBase] = {}
@@ -84,16 +85,17 @@ class LiveLayer:
         return np.asarray(self._renderer.buffer_rgba())
 
     def _restore_ground(self, picture: Picture) -> None:
-        """Frame with colour field. An unchanged field, as while the cloud is dragged, is not drawn again."""
-        if picture.field is self._field:
-            self._buffer()[:] = self._ground
+        """Frame with colour field. A field that stays, as while the cloud is dragged, is kept from its second frame."""
+        field, buffer = picture.field, self._buffer()
+        if field is not None and field is self._ground_field:
+            buffer[:] = self._ground
             return
-        self._buffer()[:] = self._frame_buffer
-        self._field = picture.field
-        self._ground = self._frame_buffer
-        if picture.field is not None:
-            self._fill(picture, picture.field)
-            self._ground = self._buffer().copy()
+        buffer[:] = self._frame_buffer
+        if field is not None:
+            self._fill(picture, field)
+            if field is self._last_field:
+                self._ground, self._ground_field = buffer.copy(), field
+        self._last_field = field
 
     def _to_pixels(self, picture: Picture) -> Affine2D:
         (left, right), (bottom, top) = span(picture.x), span(picture.y)
@@ -107,8 +109,9 @@ class LiveLayer:
         (x0, y0), (x1, y1) = self._to_pixels(picture).transform([(left, bottom), (right, top)])
         buffer = self._buffer()
         height, width = buffer.shape[:2]
-        pixels = QImage(buffer.data, width, height, 4 * width, QImage.Format.Format_RGBX8888)
-        cells = QImage(colours.data, columns, rows, 4 * columns, QImage.Format.Format_RGBX8888)
+        # Red and blue are swapped in both, which scaling does not mind, and Qt is quickest in this format.
+        pixels = QImage(buffer.data, width, height, 4 * width, QImage.Format.Format_RGB32)
+        cells = QImage(colours.data, columns, rows, 4 * columns, QImage.Format.Format_RGB32)
         painter = QPainter(pixels)
         painter.setRenderHint(QPainter.RenderHint.SmoothPixmapTransform)
         painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_Source)

@@ -97,7 +97,7 @@ def rows() -> Iterator[tuple[str, float, float | None]]:
     application.processEvents()
     for name, place in (("map", 0), ("slice", 1), ("profile", 4)):
         live, full = _measure(canvases[place : place + 1], [step[place : place + 1] for step in steps])
-        yield f"{name}: live frame / full draw", statistics.median(live) / statistics.median(full), 0.06
+        yield f"{name}: live frame / full draw", statistics.median(live) / statistics.median(full), 0.08
         yield f"{name}: live frame [ms]", statistics.median(live), None
     live, full = _measure(canvases, steps)
     yield "window of five plots: live frame / full draw", statistics.median(live) / statistics.median(full), 0.08
