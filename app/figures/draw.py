@@ -30,13 +30,13 @@ from app.figures.layout import (
     LINE,
     MINOR_TICK,
     PAD,
-    SAMPLE,
     SAMPLE_GAP,
     TICK,
     TICK_GAP,
     Layout,
     LegendEntry,
     bar_room,
+    bar_ticks,
     lay_out,
     note_place,
     shortened,
@@ -152,14 +152,14 @@ def _write(axes: Axes, x: float, y: float, text: str, size: float, theme: Theme,
 def _draw_entry(figure: Figure, theme: Theme, entry: LegendEntry, x: float, y: float) -> None:
     width, height = figure.get_size_inches() * 72.0
     style = theme.lines[entry.role]
-    ends = [x + 0.5 * SAMPLE] if entry.is_mark else [x, x + SAMPLE]
+    ends = [x + 0.5 * entry.sample] if entry.is_mark else [x, x + entry.sample]
     sample = Line2D([end / width for end in ends], [y / height] * len(ends), transform=figure.transFigure)
     if entry.is_mark:
         _style_mark(sample, style, theme, MARK_SIZE)
     else:
         style_line(sample, style)
     figure.add_artist(sample)
-    figure.text((x + SAMPLE + SAMPLE_GAP) / width, y / height, entry.name, size=theme.small_size,
+    figure.text((x + entry.sample + SAMPLE_GAP) / width, y / height, entry.name, size=theme.small_size,
                 color=theme.foreground, va="center_baseline")  # fmt: skip
 
 
@@ -176,18 +176,20 @@ def _draw_colour_bar(field: Field, figure: Figure, theme: Theme, layout: Layout)
         spine.set(color=theme.muted, linewidth=0.8)
     bar.xaxis.set_visible(False)
     bar.yaxis.set_visible(False)
-    places = [place for place, _ in field.ticks]
+    ticks = bar_ticks(field, theme, layout.height)
+    places = [place for place, _ in ticks]
     bar.add_artist(
         Line2D([1.0] * len(places), places, linestyle="", marker=MarkerStyle(TICKRIGHT), markersize=TICK,
                markeredgewidth=0.8, color=theme.muted, clip_on=False)
     )  # fmt: skip
-    for place, text in field.ticks:
+    for place, text in ticks:
         _write(bar, 1.0 + (TICK + TICK_GAP) / BAR_WIDTH, place, text, theme.small_size, theme, ha="left")
     if 0.0 < field.split < 1.0:
         bar.axhline(field.split, color=theme.lines[Role.THRESHOLD].colour, linewidth=1.4)
     room = bar_room(field, theme, text_size)
     x = (room - BAR_GAP - PAD - 0.5 * theme.font_size * LINE) / BAR_WIDTH
-    _write(bar, x, 0.5, field.bar_label, theme.font_size, theme, rotation="vertical", ha="center", va="center")
+    label = shortened(field.bar_label, theme.font_size, layout.height + 0.5 * TICK, text_size)
+    _write(bar, x, 0.5, label, theme.font_size, theme, rotation="vertical", ha="center", va="center")
 
 
 # --------------------------------------------------------------------------- data

@@ -22,15 +22,22 @@ LINE = 1.45  # line height over type size
 TICK, TICK_GAP = 3.5, 3.0
 MINOR_TICK = 2.0
 BAR_GAP, BAR_WIDTH = 10.0, 9.0
-SAMPLE, SAMPLE_GAP, ENTRY_GAP = 24.0, 5.0, 14.0  # of the legend
+SAMPLE, MARK_SAMPLE, SAMPLE_GAP, ENTRY_GAP = 24.0, 10.0, 5.0, 14.0  # of the legend
 SMALLEST = 24.0  # of the axes; below it the surroundings give way
 
 
 @dataclass(frozen=True)
 class LegendEntry:
+    """One sample with its name."""
+
     name: str
     role: Role
     is_mark: bool
+
+    @property
+    def sample(self) -> float:
+        """Width of the sample [pt]."""
+        return MARK_SAMPLE if self.is_mark else SAMPLE
 
 
 def legend_entries(picture: Picture) -> tuple[LegendEntry, ...]:
@@ -79,7 +86,7 @@ def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, flo
         rows = ()
     if height - below - title_height < 2.0 * SMALLEST:
         title_height = 0.0
-    above = PAD + title_height + len(rows) * line + (4.0 if rows else 2.0)
+    above = PAD + title_height + len(rows) * line + (6.0 if rows else 2.0)
     inner_height = max(height - below - above, SMALLEST)
     y_ticks = ticks_of(picture.y, max(2, int(inner_height / (2.6 * theme.small_size))))
     y_title = _broken(axis_title(picture.y), theme.font_size, inner_height + 0.5 * above, measure)
@@ -108,7 +115,7 @@ def _legend_rows(
     rows: list[list[tuple[LegendEntry, float]]] = []
     x = np.inf
     for entry in entries:
-        needed = SAMPLE + SAMPLE_GAP + measure(entry.name, theme.small_size)[0]
+        needed = entry.sample + SAMPLE_GAP + measure(entry.name, theme.small_size)[0]
         if x + needed > width:
             rows.append([])
             x = 0.0
@@ -125,6 +132,15 @@ def _fitting_ticks(picture: Picture, theme: Theme, width: float, measure: Measur
         if not len(gaps) or gaps.min() >= widest(ticks.texts, theme.small_size, measure) + 8.0:
             break
     return ticks
+
+
+def bar_ticks(field: Field, theme: Theme, height: float) -> tuple[tuple[float, str], ...]:
+    """Ticks of a colour bar as far as they do not touch each other; that of the split goes first."""
+    shown: list[tuple[float, str]] = []
+    for place, text in sorted(field.ticks, key=lambda tick: tick[0] != field.split):
+        if all(abs(place - other) * height >= 1.15 * theme.small_size for other, _ in shown):
+            shown.append((place, text))
+    return tuple(shown)
 
 
 def bar_room(field: Field, theme: Theme, measure: Measure) -> float:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from gettext import gettext as _
 from typing import cast
 
@@ -50,12 +51,18 @@ def map_picture(answer: MapAnswer, cloud: CloudAnswer) -> Picture:
             log=True,
             prefixed=True,
         ),
-        curves=(*(curve for curve, _labels in lines), *_thresholds(answer)),
+        curves=(*(curve for curve, _labels in lines), *_thresholds(answer), *_evaporation(cloud)),
         field=_boson_field(answer) if answer.bosons else _fermion_field(answer),
-        marks=(cloud_mark(cloud),),
+        marks=(_cloud_mark(cloud),),
         labels=tuple(labels),
         summary=verdict(cloud),
     )
+
+
+def with_cloud(ground: Picture, cloud: CloudAnswer) -> Picture:
+    """A map of the same gas with another cloud on it: what a drag changes, and nothing else."""
+    still = tuple(curve for curve in ground.curves if curve.role is not Role.CLOUD)
+    return replace(ground, curves=(*still, *_evaporation(cloud)), marks=(_cloud_mark(cloud),), summary=verdict(cloud))
 
 
 def _boson_field(answer: MapAnswer) -> Field:
@@ -172,7 +179,7 @@ def _thresholds(answer: MapAnswer) -> tuple[Curve, ...]:
     )
 
 
-def cloud_mark(cloud: CloudAnswer) -> Mark:
+def _cloud_mark(cloud: CloudAnswer) -> Mark:
     atoms, temperature = cloud.plan.cloud.atoms, cloud.plan.cloud.temperature
     outline = None
     if atoms.sigma or temperature.sigma:
@@ -184,3 +191,21 @@ def cloud_mark(cloud: CloudAnswer) -> Mark:
             y=temperature.value * np.exp((temperature.sigma or 0.0) / temperature.value * np.sin(angle)),
         )
     return Mark(name=_("cloud"), role=Role.CLOUD, x=atoms.value, y=temperature.value, draggable=True, outline=outline)
+
+
+def _evaporation(cloud: CloudAnswer) -> tuple[Curve, ...]:
+    """The way of the cloud along an evaporation of the plan's efficiency, to the threshold: D ~ N^-gamma with
+    D ~ N/T^3 at fixed frequencies is T ~ N^((1 + gamma)/3)."""
+    if cloud.efficiency is None:
+        return ()
+    left = float(cloud.equilibrium.atoms_left_at_target)
+    # Beyond the threshold there is no way to go; the curve stays, so that a drag across it redraws nothing else.
+    shares = np.geomspace(1.0, left, 33) if left < 1.0 else np.full(33, np.nan)
+    return (
+        Curve(
+            name=_("evaporation, γ = {gamma}").format(gamma=number(cloud.efficiency, 2)),
+            role=Role.CLOUD,
+            x=cloud.plan.cloud.atoms.value * shares,
+            y=cloud.plan.cloud.temperature.value * shares ** ((1.0 + cloud.efficiency) / 3.0),
+        ),
+    )

@@ -10,7 +10,8 @@ import numpy as np
 
 from app.engine import ProfileAnswer, round_up
 from app.figures.picture import Array, Axis, Curve, Picture, Role
-from app.kinds import EVERYDAY
+from app.figures.ticks import power_text
+from app.units import factor
 
 AXES = ("x", "y", "z")
 """Names of the trap axes, in the order of the plan's frequencies."""
@@ -23,25 +24,31 @@ class Depth(Enum):
     COLUMN = "column density"
 
 
-_UNITS = {Depth.DENSITY: "1/cm^3", Depth.COLUMN: "1/cm^2"}
+_UNITS = {Depth.DENSITY: ("1/cm^3", "cm⁻³"), Depth.COLUMN: ("1/cm^2", "cm⁻²")}
+"""Unit, and how an axis writes it."""
+
 _LENGTHS = ("nm", "µm", "mm", "m")
 
 
 def profile_picture(answer: ProfileAnswer, shows: Depth, *, log: bool = False) -> Picture:
     """Thermal, condensed and total density, and the classical cloud of the same N and T dashed."""
     profile = answer.density if shows is Depth.DENSITY else answer.column
-    unit = _UNITS[shows]
-    scale = float(EVERYDAY[unit][0])
+    unit, written = _UNITS[shows]
     reach = float(answer.positions[-1])
-    length = next((name for name in reversed(_LENGTHS) if reach >= 3.0 * float(EVERYDAY[name][0])), "nm")
-    x = answer.positions / float(EVERYDAY[length][0])
+    length = next((name for name in reversed(_LENGTHS) if reach >= 3.0 * factor(name)), "nm")
+    x = answer.positions / factor(length)
     parts = [(_("total"), Role.TOTAL, profile.total), (_("classical cloud"), Role.CLASSICAL, profile.classical)]
     if np.any(profile.condensate > 0.0):
         parts[1:1] = [
             (_("thermal"), Role.THERMAL, profile.thermal),
             (_("condensate"), Role.CONDENSATE, profile.condensate),
         ]
-    top = max(float(np.max(values)) for _name, _role, values in parts) / scale
+    peak = max(float(np.max(values)) for _name, _role, values in parts) / factor(unit)
+    # A power of ten in the unit keeps the ticks short; a logarithmic axis has its own powers.
+    power = 0 if log else 3 * math.floor(math.log10(peak) / 3.0)
+    scale = factor(unit) * 10.0**power
+    written = f"{power_text(10.0**power)} {written}" if power else written
+    top = peak / 10.0**power
     axis = AXES[answer.axis]
     what = (
         _("density along {axis} through the centre")
@@ -52,11 +59,11 @@ def profile_picture(answer: ProfileAnswer, shows: Depth, *, log: bool = False) -
     return Picture(
         title=title,
         x=Axis(label=_("position {axis}").format(axis=axis), unit=length, low=float(x[0]), high=float(x[-1])),
-        y=_density_axis(shows, unit, top, log),
+        y=_density_axis(shows, written, top, log),
         curves=tuple(
             Curve(name=name, role=role, x=x, y=_above_zero(values / scale, log)) for name, role, values in parts
         ),
-        summary=_("{what}; largest value {top:.3g} {unit}").format(what=title, top=top, unit=unit),
+        summary=_("{what}; largest value {top:.3g} {unit}").format(what=title, top=top, unit=written),
     )
 
 

@@ -40,7 +40,8 @@ def slice_picture(answer: SlicesAnswer, name: str, against: Against, unit: str |
         y = np.where(y > 0.0, y, np.nan)
     at = answer.temperature if along_t else answer.atoms
     threshold = answer.threshold_temperature if along_t else answer.threshold_atoms
-    curves = [Curve(name=row.label, role=Role.FIRST, x=x, y=y)]
+    # The title names the curve; a legend would only say it again.
+    curves = [Curve(name="", role=Role.FIRST, x=x, y=y)]
     if x[0] < threshold < x[-1]:
         curves.append(
             Curve(

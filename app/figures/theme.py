@@ -132,7 +132,7 @@ def _lines(
         Role.THERMAL: LineStyle(colour=orange, width=1.6, dash=(7.0, 2.0)),
         Role.CONDENSATE: LineStyle(colour=blue, width=1.6, dash=(7.0, 1.8, 1.5, 1.8)),
         Role.CLASSICAL: LineStyle(colour=quiet, width=1.3, dash=(3.0, 2.4)),
-        Role.THRESHOLD: LineStyle(colour=ink, width=2.2),
+        Role.THRESHOLD: LineStyle(colour=ink, width=1.9),
         Role.THRESHOLD_SHIFTED: LineStyle(colour=ink, width=1.5, dash=(5.0, 2.2)),
         Role.DECADE: LineStyle(colour=ink, width=0.6),
         Role.FRACTION: LineStyle(colour=ink, width=1.1, dash=(1.2, 2.0)),

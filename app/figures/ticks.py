@@ -6,6 +6,7 @@ Positions are in drawing units: log10 of the data along a logarithmic axis, the 
 from __future__ import annotations
 
 import math
+import re
 from dataclasses import dataclass
 from functools import lru_cache
 from itertools import pairwise
@@ -57,8 +58,11 @@ def span(axis: Axis) -> tuple[float, float]:
 
 
 def axis_title(axis: Axis) -> str:
-    """Label with unit; without it where the ticks carry the unit."""
-    return f"{axis.label} [{axis.unit}]" if axis.unit and not axis.prefixed else axis.label
+    """Label with unit, powers raised; without it where the ticks carry the unit."""
+    if not axis.unit or axis.prefixed:
+        return axis.label
+    unit = re.sub(r"\^(-?\d+)", lambda power: power[1].translate(_RAISED), axis.unit)
+    return f"{axis.label} [{unit}]"
 
 
 def ticks_of(axis: Axis, most: int = 8) -> Ticks:

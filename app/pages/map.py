@@ -11,13 +11,13 @@ from PySide6.QtWidgets import QWidget
 
 from app.answers.csv_text import map_csv
 from app.engine import CloudAnswer, MapAnswer, MapLimits, map_answer, usual_limits
-from app.figures.map import cloud_mark, map_picture
+from app.figures.map import map_picture, with_cloud
 from app.figures.picture import Picture
 from app.figures.theme import Theme
 from app.plan import Plan
 from app.units import ATOM_NUMBER, TEMPERATURE, Kind, Quantity, best_unit, exact_text, read_quantity, unit_of
 from app.widgets.page import Page
-from app.words import number, temperature, verdict
+from app.words import number, temperature
 from physics.cloud import Model, equilibrium
 
 _TEMPERATURE_UNITS = ("pK", "nK", "µK", "mK", "K")
@@ -79,8 +79,7 @@ class MapPage(Page):
     def _picture(self) -> Picture:
         assert self._ground is not None
         assert self.cloud is not None
-        ground = self._ground.picture
-        return replace(ground, marks=(cloud_mark(self.cloud),), summary=verdict(self.cloud))
+        return with_cloud(self._ground.picture, self.cloud)
 
     def _wanted_limits(self, plan: Plan) -> MapLimits:
         """What the user asked to see; else the range that was shown, while it still suits the cloud."""
