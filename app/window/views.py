@@ -25,8 +25,7 @@ def zoomed(picture: Picture, view: View, factor: float, x_share: float, y_share:
     """The view with widths times `factor`, the point at these shares staying where it is; None where nothing could be
     told apart. With a share below 0, beside the axes, that axis stays."""
     x_factor, y_factor = (factor if share >= 0.0 else 1.0 for share in (x_share, y_share))
-    return _cut(picture, view, (x_share * (1.0 - x_factor), x_share + (1.0 - x_share) * x_factor),
-                (y_share * (1.0 - y_factor), y_share + (1.0 - y_share) * y_factor))  # fmt: skip
+    return _cut(picture, view, _about(x_share, x_factor), _about(y_share, y_factor))
 
 
 def moved(picture: Picture, view: View, right: float, up: float) -> View | None:
@@ -51,6 +50,10 @@ def stepped(axis: Axis, value: float, direction: int, large: bool) -> float:
 def at_shares(picture: Picture, x_share: float, y_share: float) -> tuple[float, float]:
     """Data at shares of the axes that the picture shows, kept on them."""
     return _at(picture.x, x_share), _at(picture.y, y_share)
+
+
+def _about(share: float, factor: float) -> tuple[float, float]:
+    return share * (1.0 - factor), 1.0 - (1.0 - share) * (1.0 - factor)
 
 
 def _at(axis: Axis, share: float) -> float:

@@ -128,6 +128,15 @@ def test_the_legend_stands_above_the_axes_and_names_each_thing_once(any_picture,
         assert written[name].get_position()[1] > top
 
 
+def test_ticks_of_a_colour_bar_give_way_to_that_of_the_threshold(a_map):
+    picture = a_map(1.0)
+    crowded = replace(picture.field, ticks=((0.58, "near"), (0.6, "threshold"), (0.61, "nearer"), (0.9, "far")))
+    figure, _ = drawn(replace(picture, field=crowded))
+    shown = {text.get_text() for text in figure.axes[1].texts}
+    assert {"threshold", "far"} <= shown
+    assert not {"near", "nearer"} & shown
+
+
 def test_axes_too_small_for_their_surroundings_are_still_drawn(any_picture):
     for size in ((90, 60), (30, 200), (200, 30), (9, 9)):
         drawn(any_picture(1.0), size)

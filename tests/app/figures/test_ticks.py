@@ -76,5 +76,6 @@ def test_small_texts():
     assert prefixed(1.5e-7, "K") == "150 nK"
     assert prefixed(0.0, "K") == "0 K"
     assert axis_title(axis(0.0, 1.0)) == "x [m]"
+    assert axis_title(axis(0.0, 1.0, unit="cm^-3 s^-1")) == "x [cm⁻³ s⁻¹]"
     assert axis_title(axis(0.0, 1.0, prefixed=True)) == "x"
     assert axis_title(axis(0.0, 1.0, unit="")) == "x"
