@@ -17,6 +17,7 @@ _SPINS = PLAN_FIELDS["species.spin_components"]
 _LENGTH = "species.scattering_length"
 _FIELD = "species.field"
 MOST_SPINS = 10
+LONG_NAME = 20  # characters; a longer name is written out under its box
 
 _CERTAINTY = {
     Certainty.SEEN: "seen",
@@ -98,6 +99,7 @@ class SpeciesForm(Form):
             self.isotope.setCurrentText(species.key)
         state = species.state(plan.species.state)
         self.state.setCurrentIndex(self.state.findData(state.name))
+        self.show_note(_STATE.path, state.name if len(state.name) > LONG_NAME else "")
         isotope = species.isotope
         self.show_note(_KEY.path, f"{isotope.statistics.value}, {isotope.mass.value / atomic_mass:.6g} u")
         self.spins.setItemText(0, f"{state.spin_components}, as the state")

@@ -6,7 +6,7 @@ from collections.abc import Callable
 from functools import partial
 from typing import Any
 
-from PySide6.QtWidgets import QButtonGroup, QCheckBox, QHBoxLayout, QLabel, QRadioButton, QWidget
+from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QRadioButton, QToolButton, QWidget
 
 from app.engine import ProfileAnswer, profile_answer
 from app.figures.profile import AXES, Depth, profile_picture
@@ -37,7 +37,11 @@ class ProfilePage(Page):
             self.choice.addButton(button, place)
             options.addWidget(button)
         self.choice.idToggled.connect(self._choose)
-        self.log = QCheckBox("logarithmic density")
+        self.log = QToolButton()
+        self.log.setText("Logarithmic")
+        self.log.setCheckable(True)
+        self.log.setAutoRaise(True)
+        self.log.setAccessibleName("Logarithmic density")
         self.log.setToolTip("Show five decades of density")
         self.log.toggled.connect(self._show)
         options.addSpacing(12)

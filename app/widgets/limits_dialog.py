@@ -5,7 +5,7 @@ from __future__ import annotations
 from PySide6.QtWidgets import QDialog, QDialogButtonBox, QGridLayout, QLabel, QLineEdit, QVBoxLayout, QWidget
 
 from app.figures.picture import Axis, Picture
-from app.units import Kind, QuantityError, best_unit, format_quantity, read_quantity
+from app.units import Kind, QuantityError, best_unit, exact_text, format_quantity, read_quantity
 from app.window.views import View, view_of
 
 _PREFIXED = {"K": ("K", "mK", "µK", "nK", "pK"), "m": ("m", "mm", "µm", "nm")}
@@ -66,7 +66,8 @@ class LimitsDialog(QDialog):
 
     @staticmethod
     def _text(axis: Axis, value: float) -> str:
-        return format_quantity(value, best_unit(value, kind_of(axis).units), digits=4)
+        kind = kind_of(axis)
+        return exact_text(float(f"{value:.4g}"), best_unit(value, kind.units), kind=kind)
 
     @property
     def view(self) -> View | None:

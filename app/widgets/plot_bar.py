@@ -5,14 +5,14 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from PySide6.QtCore import Signal
-from PySide6.QtWidgets import QHBoxLayout, QToolButton, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QMenu, QToolButton, QWidget
 
 from app.widgets.status_line import StatusLine
 
 
 @dataclass(frozen=True)
 class Tool:
-    """A button of the bar: what it shows, and what it does in words."""
+    """A button of the bar, or a line of its menu: what it shows, and what it does in words."""
 
     id: str
     text: str
@@ -24,16 +24,18 @@ TOOLS = (
     Tool("zoom_out", "−", "Zoom out"),
     Tool("zoom_in", "+", "Zoom in"),
     Tool("box", "Box", "Drag a box to zoom into", checkable=True),
-    Tool("home", "Whole plot", "Show the whole range again"),
+    Tool("home", "Whole", "Show the whole range again"),
     Tool("limits", "Limits…", "Type exact limits"),
-    Tool("copy", "Copy", "Copy the plot as a picture"),
-    Tool("picture", "Picture…", "Save the plot as PNG, SVG or PDF"),
-    Tool("data", "Data…", "Save the numbers behind the plot as CSV"),
+)
+EXPORTS = (
+    Tool("copy", "Copy picture", "Copy the plot as a picture"),
+    Tool("picture", "Save picture…", "Save the plot as PNG, SVG or PDF"),
+    Tool("data", "Save data…", "Save the numbers behind the plot as CSV"),
 )
 
 
 class PlotBar(QWidget):
-    """pressed(id, checked) is sent for a button, with the id of its tool."""
+    """pressed(id, checked) is sent for a button or a line of the menu, with the id of its tool."""
 
     pressed = Signal(str, bool)
 
@@ -46,12 +48,27 @@ class PlotBar(QWidget):
         row.addWidget(self.status, 1)
         self.buttons: dict[str, QToolButton] = {}
         for tool in TOOLS:
-            button = QToolButton()
-            button.setText(tool.text)
-            button.setToolTip(tool.tip)
-            button.setAccessibleName(tool.tip)
-            button.setAutoRaise(True)
+            button = self._button(tool.text, tool.tip)
             button.setCheckable(tool.checkable)
             button.clicked.connect(lambda checked=False, chosen=tool.id: self.pressed.emit(chosen, checked))
             row.addWidget(button)
             self.buttons[tool.id] = button
+        export = self._button("Export", "Copy or save the plot or its numbers")
+        menu = QMenu(export)
+        menu.setToolTipsVisible(True)
+        for tool in EXPORTS:
+            action = menu.addAction(tool.text)
+            action.setToolTip(tool.tip)
+            action.triggered.connect(lambda _=False, chosen=tool.id: self.pressed.emit(chosen, False))
+        export.setMenu(menu)
+        export.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)
+        row.addWidget(export)
+
+    @staticmethod
+    def _button(text: str, tip: str) -> QToolButton:
+        button = QToolButton()
+        button.setText(text)
+        button.setToolTip(tip)
+        button.setAccessibleName(tip)
+        button.setAutoRaise(True)
+        return button

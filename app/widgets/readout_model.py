@@ -124,8 +124,9 @@ class ReadoutModel(QAbstractItemModel):
 class ReadoutPainter(QStyledItemDelegate):
     """Paints a heading, or a line with its number in a column of its own."""
 
-    SIDE = 6
+    LEFT, RIGHT = 16, 8
     GAP = 7
+    WIDEST = 470  # a number further from its label would be hard to follow
 
     def __init__(self, model: ReadoutModel, parent: QObject | None = None) -> None:
         super().__init__(parent)
@@ -139,7 +140,8 @@ class ReadoutPainter(QStyledItemDelegate):
 
     def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: AnyIndex) -> None:
         palette: QPalette = option.palette
-        area: QRect = option.rect.adjusted(self.SIDE, 0, -self.SIDE, 0)
+        area: QRect = option.rect.adjusted(self.LEFT, 0, -self.RIGHT, 0)
+        area.setWidth(min(area.width(), self.WIDEST))
         row = self._model.row_at(index)
         if row is None:
             font = QFont(option.font)

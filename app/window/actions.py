@@ -86,7 +86,7 @@ ACTIONS: tuple[ActionSpec, ...] = (
     ActionSpec(
         "edit.copy_all",
         _E,
-        "Copy all &readouts",
+        "Copy &all readouts",
         "Ctrl+Shift+C",
         "Copy every readout as a table of tab-separated text",
         lambda w: w.desk.readouts.copy_all(),

@@ -56,6 +56,11 @@ class Bench(QScrollArea):
         for form in self.forms:
             form.set_plan(plan)
 
+    def discard_edits(self) -> None:
+        """Drop texts that could not be read: another plan is about to be shown."""
+        for form in self.forms:
+            form.discard_edits()
+
     def take_focus(self) -> None:
         self.species.take_focus()
 

@@ -127,7 +127,7 @@ class Desk(QWidget):
     def reset_layout(self) -> None:
         """Every part in its first size."""
         self._share_out()
-        self.side.setSizes([560, 92, 150])
+        self.side.setSizes([590, 76, 140])
 
     def _share_out(self) -> None:
         middle = max(self.width() - BENCH_WIDTH - READOUTS_WIDTH, 400)

@@ -105,7 +105,7 @@ def shortcuts_dialog(parent: QWidget | None = None) -> TextDialog:
             ],
         )
     )
-    return TextDialog("Keyboard shortcuts", "".join(parts), QSize(640, 560), parent)
+    return TextDialog("Keyboard shortcuts", "".join(parts), QSize(720, 600), parent)
 
 
 def glossary_dialog(parent: QWidget | None = None) -> TextDialog:
@@ -123,12 +123,12 @@ def glossary_dialog(parent: QWidget | None = None) -> TextDialog:
 
 def _section(title: str, rows: list[tuple[str, str, str]]) -> str:
     body = "".join(
-        f'<tr><td style="padding:2px 18px 2px 0">{escape(name)}</td><td style="padding:2px 18px 2px 0">'
-        f"<b>{escape(keys)}</b></td><td>{escape(tip)}</td></tr>"
+        f'<tr><td width="150">{escape(name)}</td><td width="190"><b>{escape(keys)}</b></td><td>{escape(tip)}</td></tr>'
         for name, keys, tip in rows
     )
-    return f"<h3>{escape(title)}</h3><table>{body}</table>"
+    return f'<h3>{escape(title)}</h3><table width="100%" cellpadding="2">{body}</table>'
 
 
 def _keys_text(keys: list[QKeySequence]) -> str:
-    return ", ".join(key.toString(QKeySequence.SequenceFormat.NativeText) for key in keys) or "–"
+    """The usual key and one other; a platform may bind more."""
+    return ", ".join(key.toString(QKeySequence.SequenceFormat.NativeText) for key in keys[:2]) or "–"

@@ -88,8 +88,8 @@ class Files(QObject):
     def _write(self, path: Path) -> bool:
         try:
             text = save_plan(self._document.plan, path, self._document.file_text)
-        except OSError as error:
-            self._tell(f"{error.strerror or error}; the plan is still here, unsaved.")
+        except ValueError as error:
+            self._tell(f"{error}; the plan is still here, unsaved.")
             return False
         self._document.saved(path, text)
         self._settings.remember_file(path)

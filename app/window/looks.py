@@ -49,12 +49,16 @@ def style_sheet_of(theme: Theme) -> str:
         #verdictSentence {{ background: transparent; }}
         #bench, #benchBody, #readouts, #caveats, #detail {{ background: {theme.window}; border: none; }}
         #formTitle, #paneTitle {{ color: {theme.muted}; font-weight: 600; }}
-        #fieldNote, #plotStatus {{ color: {theme.muted}; }}
+        #fieldNote, #plotStatus, #detail {{ color: {theme.muted}; }}
         #fieldError {{ color: {theme.error}; }}
         QLineEdit {{ border: 1px solid {theme.border}; border-radius: 3px; padding: 3px 5px;
                      background: {theme.base}; }}
         QLineEdit:focus {{ border-color: {theme.accent}; }}
         QLineEdit[invalid="true"] {{ border-color: {theme.error}; }}
+        QToolButton:checked {{ background: {theme.accent}; color: {theme.base}; border-radius: 3px; }}
+        QRadioButton::indicator {{ width: 11px; height: 11px; border: 1px solid {theme.muted}; border-radius: 6px;
+                                   background: {theme.base}; }}
+        QRadioButton::indicator:checked {{ border: 4px solid {theme.accent}; width: 5px; height: 5px; }}
         QTabWidget::pane {{ border: none; }}
         QTabBar::tab {{ padding: 6px 16px 5px 16px; border: none; background: transparent; color: {theme.muted};
                         border-bottom: 2px solid transparent; }}

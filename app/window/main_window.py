@@ -131,6 +131,7 @@ class MainWindow(QMainWindow):
         for page in desk.pages:
             page.plan_edited.connect(document.edit)
         # the plan goes to the forms and becomes an answer
+        document.loading.connect(desk.bench.discard_edits)
         document.plan_changed.connect(self._plan_changed)
         desk.bench.problems_changed.connect(self._judge)
         # the answer goes to all that show it

@@ -48,10 +48,12 @@ class PlanEdit(QUndoCommand):
 class Document(QObject):
     """The plan, the file it belongs to, and its history.
 
-    Signals: plan_changed(Plan) after every edit, undo, redo and load; file_changed() when the file it belongs to is
+    Signals: loading() before another plan takes this one's place; plan_changed(Plan) after every edit, undo, redo
+    and load; file_changed() when the file it belongs to is
     another one; clean_changed(bool) when the plan comes to be, or no longer is, what the file holds.
     """
 
+    loading = Signal()
     plan_changed = Signal(object)
     file_changed = Signal()
     clean_changed = Signal(bool)
@@ -84,6 +86,7 @@ class Document(QObject):
 
     def load(self, plan: Plan, path: Path | None, text: str | None) -> None:
         """Start anew from a plan that was read or made."""
+        self.loading.emit()
         self.path, self.file_text = path, text
         self.stack.clear()
         self.stack.setClean()

@@ -1,0 +1,77 @@
+"""A whole window, furnished, with settings of its own."""
+
+from collections.abc import Callable, Iterator
+from pathlib import Path
+
+import pytest
+from PySide6.QtCore import QSize
+from PySide6.QtWidgets import QApplication, QMessageBox
+from pytestqt.qtbot import QtBot
+
+from app.plan import DEFAULT_PLAN, Plan
+from app.window.main_window import MainWindow
+from app.window.settings import Settings, ThemeChoice
+from app.window.start import application
+
+MakeWindow = Callable[..., MainWindow]
+
+
+@pytest.fixture(scope="session")
+def qapp() -> QApplication:
+    return application()
+
+
+@pytest.fixture
+def make_window(qapp: QApplication, qtbot: QtBot, tmp_path: Path) -> Iterator[MakeWindow]:
+    """Builds windows that share one settings folder, and closes them without questions."""
+    made: list[MainWindow] = []
+
+    def make(plan: Plan = DEFAULT_PLAN, *, size: tuple[int, int] = (1400, 900)) -> MainWindow:
+        window = MainWindow(Settings(tmp_path / "settings"), size=QSize(*size))
+        window.show()
+        window.furnish(plan, theme=ThemeChoice.LIGHT)
+        qtbot.waitExposed(window)
+        wait_until_settled(qtbot, window)
+        made.append(window)
+        return window
+
+    yield make
+    for window in made:
+        window.document.stack.setClean()
+        window.close()
+        window.deleteLater()
+    qapp.processEvents()
+
+
+@pytest.fixture
+def window(make_window: MakeWindow) -> MainWindow:
+    return make_window()
+
+
+@pytest.fixture
+def answer_question(monkeypatch: pytest.MonkeyPatch) -> Callable[[QMessageBox.StandardButton], list[str]]:
+    """Answers every question with the given button; the returned list collects what was asked."""
+
+    def prepare(button: QMessageBox.StandardButton) -> list[str]:
+        asked: list[str] = []
+
+        def ask(parent: object, title: str, text: str, *rest: object) -> QMessageBox.StandardButton:
+            asked.append(text)
+            return button
+
+        monkeypatch.setattr(QMessageBox, "warning", ask)
+        return asked
+
+    return prepare
+
+
+def wait_until_settled(qtbot: QtBot, window: MainWindow) -> None:
+    """Until plan, answers, the visible part and the paint have all arrived."""
+    qtbot.waitUntil(lambda: window.answers.settled, timeout=20_000)
+    QApplication.processEvents()
+    QApplication.processEvents()
+
+
+@pytest.fixture
+def settle(qtbot: QtBot) -> Callable[[MainWindow], None]:
+    return lambda window: wait_until_settled(qtbot, window)
