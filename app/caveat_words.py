@@ -84,6 +84,10 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _("The Fermi energy is only {value} level spacings, {frozen}: the gas is not three-dimensional."),
             _PLAIN,
         ),
+        "frozen_thermal": (
+            _("The highest level spacing is {value} kT: the few thermal atoms are not three-dimensional."),
+            _PLAIN,
+        ),
         "few_atoms": (
             _("With {value} atoms, means at a fluctuating number differ from those at a fixed one."),
             _PLAIN,

@@ -73,7 +73,7 @@ class Caveat:
 
 CAVEAT_IDS = MappingProxyType(
     {
-        "model_unknown_length": "no value: ideal used, the scattering length is not known",
+        "model_length_unknown": "no value: ideal used, the scattering length is not known",
         "model_not_repulsive": "scattering length [m]: ideal used, the model needs a repulsive gas",
         "model_not_offered": "no value: ideal used, the model is not offered",
         "model_bosons_only": "no value: ideal used, the model describes bosons",

@@ -1,0 +1,254 @@
+"""The verbs, as a script calls them."""
+
+from __future__ import annotations
+
+import csv
+import io
+import json
+import subprocess
+import sys
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+
+from app.__main__ import main
+from app.caveat_words import caveat_text
+from app.engine import cloud_answer
+from app.plan import plan_with, read_plan
+from app.quantities import QUANTITIES
+
+ROOT = Path(__file__).resolve().parents[2]
+PLANS = sorted((ROOT / "presets" / "plans").glob("*.toml"))
+FLAGS = ["--species", "87Rb", "--frequencies", "120 Hz, 120 Hz, 20 Hz", "--atoms", "1e5", "--temperature", "200 nK"]
+
+
+def state_json(capsys: pytest.CaptureFixture[str], *arguments: str) -> dict[str, Any]:
+    assert main(["state", *arguments, "--json"]) == 0
+    captured = capsys.readouterr()
+    assert captured.err == ""
+    answer: dict[str, Any] = json.loads(captured.out, parse_constant=lambda text: pytest.fail(f"{text} in JSON"))
+    return answer
+
+
+# --- state ---
+
+
+@pytest.mark.parametrize("plan", PLANS, ids=lambda path: path.stem)
+def test_state_prints_the_contract_for_every_preset_plan(plan: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    answer = state_json(capsys, str(plan))
+    assert list(answer)[:3] == ["coldward", "version", "input"]
+    assert answer["coldward"] == 1
+    assert set(answer["quantities"]) == set(QUANTITIES)
+    for name, entry in answer["quantities"].items():
+        assert {"value", "unit", "low", "high", "label", "source"} <= set(entry)
+        assert entry["unit"] == QUANTITIES[name].unit
+        assert (entry["value"] is None) == ("reason" in entry)
+    for caveat in answer["caveats"]:
+        assert set(caveat) == {"id", "severity", "text", "value"}
+        assert caveat["text"].endswith(".")
+
+
+def test_flags_give_a_plan_and_the_answer_is_the_engine_s(capsys: pytest.CaptureFixture[str]) -> None:
+    answer = state_json(capsys, *FLAGS)
+    assert answer["input"]["cloud.temperature"] == "200 nK"
+    # 0.9405 hbar wbar N^(1/3)/k: Bagnato, Pritchard, Kleppner, Phys. Rev. A 35, 4354 (1987); the digits by hand.
+    assert answer["quantities"]["critical_temperature"]["value"] == pytest.approx(138.36e-9, rel=1e-4)
+    assert answer["quantities"]["fermi_energy"] == {
+        "value": None,
+        "unit": "J",
+        "low": None,
+        "high": None,
+        "reason": "needs fermions",
+        "label": "Fermi energy",
+        "source": QUANTITIES["fermi_energy"].source,
+    }
+
+
+def test_flags_override_the_file(capsys: pytest.CaptureFixture[str]) -> None:
+    answer = state_json(capsys, str(PLANS[0]), "--temperature", "50 nK")
+    assert answer["quantities"]["condensate_fraction"]["value"] > 0.8
+
+
+def test_a_negative_scattering_length_may_follow_its_flag(capsys: pytest.CaptureFixture[str]) -> None:
+    answer = state_json(capsys, *FLAGS, "--scattering-length=-20 a0")
+    assert answer["model"] == "ideal"
+    assert {"model_not_repulsive", "attractive"} <= {caveat["id"] for caveat in answer["caveats"]}
+
+
+def test_the_readable_page_opens_with_the_verdict(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["state", str(PLANS[0])]) == 0
+    lines = capsys.readouterr().out.splitlines()
+    assert lines[0].startswith("87Rb, F=1 mF=-1; model: semi-ideal")
+    assert "times too hot for condensation" in lines[2]
+    assert any("What this answer does not cover" in line for line in lines)
+
+
+@pytest.mark.parametrize(
+    ("arguments", "text"),
+    [
+        (["--temperature", "-3 nK"], 'coldward: --temperature: temperature must be from 1 pK to 10 K, got "-3 nK"'),
+        (["--temperature", "3"], "coldward: --temperature: temperature needs a unit"),
+        (["--species", "88Rb"], 'coldward: --species: no species "88Rb" in the data; the nearest'),
+        (["--model", "classical"], "coldward: --model"),
+        (["--frequencies", "120 Hz, 20 Hz"], "coldward: --frequencies"),
+    ],
+)
+def test_a_bad_value_is_one_sentence_and_status_1(
+    arguments: list[str], text: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["state", *FLAGS, *arguments]) == 1
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert captured.err.startswith(text)
+    assert captured.err.count("\n") == 1
+
+
+def test_a_missing_file_is_one_sentence_and_status_1(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["state", str(tmp_path / "none.toml")]) == 1
+    captured = capsys.readouterr()
+    assert "none.toml" in captured.err
+    assert captured.err.count("\n") == 1
+
+
+def test_a_command_line_that_cannot_be_read_is_status_2() -> None:
+    with pytest.raises(SystemExit) as exit_status:
+        main(["state", "--no-such-flag"])
+    assert exit_status.value.code == 2
+
+
+@pytest.mark.parametrize("verb", ["state", "map", "profile", "species"])
+def test_verbs_load_no_window_toolkit_and_state_no_plotting(verb: str) -> None:
+    arguments = [str(PLANS[0])] if verb != "species" else []
+    code = (
+        "import sys; from app.__main__ import main; "
+        f"status = main({[verb, *arguments]!r}); loaded = set(sys.modules); "
+        "heavy = ('PySide6', 'matplotlib', 'scipy.optimize', 'scipy.integrate', 'pint'); "
+        "print(status, [name for name in heavy if name in loaded], file=sys.stderr)"
+    )
+    done = subprocess.run([sys.executable, "-c", code], cwd=ROOT, capture_output=True, text=True, check=True)
+    assert done.stderr.strip().splitlines()[-1] == "0 []"
+
+
+# --- map and profile ---
+
+
+def test_the_map_as_csv_holds_the_cloud_s_own_numbers(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    target = tmp_path / "map.csv"
+    ranges = ["--atoms-range", "1e5 to 2e5", "--temperature-range", "200 nK to 300 nK", "--points", "3"]
+    assert main(["map", *FLAGS, *ranges, "-o", str(target)]) == 0
+    rows = list(csv.DictReader(io.StringIO(target.read_text())))
+    assert len(rows) == 9
+    solved = cloud_answer(
+        plan_with(read_plan(PLANS[0]), {"cloud.atoms": "1e5", "cloud.temperature": "200 nK"})
+    ).equilibrium
+    assert float(rows[0]["peak_phase_space_density"]) == pytest.approx(
+        float(solved.peak_phase_space_density), rel=1e-12
+    )
+    assert capsys.readouterr().out == ""
+
+
+@pytest.mark.parametrize("verb", ["map", "profile"])
+@pytest.mark.parametrize(("ending", "magic"), [(".png", b"\x89PNG"), (".svg", b"<?xml"), (".pdf", b"%PDF")])
+def test_pictures_are_written_by_the_ending_of_the_name(verb: str, ending: str, magic: bytes, tmp_path: Path) -> None:
+    target = tmp_path / f"picture{ending}"
+    assert main([verb, str(PLANS[0]), "-o", str(target)]) == 0
+    assert target.read_bytes().startswith(magic)
+
+
+def test_an_unknown_ending_is_refused_with_the_known_ones(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["map", str(PLANS[0]), "-o", str(tmp_path / "map.xls")]) == 1
+    assert "must end in .csv, .png, .svg or .pdf" in capsys.readouterr().err
+
+
+def test_a_range_that_is_none_is_refused(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["map", str(PLANS[0]), "--atoms-range", "1e5-2e5"]) == 1
+    assert '--atoms-range: a range is written "low to high", got "1e5-2e5"' in capsys.readouterr().err
+    assert main(["map", str(PLANS[0]), "--points", "1"]) == 1
+    assert "--points must be from 2 to 2000, got 1" in capsys.readouterr().err
+
+
+def test_the_profile_goes_to_stdout_without_a_file(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["profile", *FLAGS, "--axis", "z"]) == 0
+    rows = list(csv.DictReader(io.StringIO(capsys.readouterr().out)))
+    position = np.array([float(row["position [m]"]) for row in rows])
+    total = np.array([float(row["density_total [1/m^3]"]) for row in rows])
+    assert position[0] == -position[-1]
+    assert np.argmax(total) == position.size // 2
+
+
+# --- table ---
+
+
+def write_clouds(tmp_path: Path, text: str) -> str:
+    path = tmp_path / "clouds.csv"
+    path.write_text(text, encoding="utf-8")
+    return str(path)
+
+
+def test_a_table_answers_the_good_rows_and_names_the_bad_ones(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    clouds = write_clouds(
+        tmp_path,
+        "run,species,temperature [uK],atoms,fx [Hz]\n"
+        "one,87Rb,0.2,1e5,100\n"
+        "two,6Li,0.5,1e6,\n"
+        "three,1X,1,1e5,2\n"
+        "four,87Rb,-1,1e5,2\n"
+        "five,87Rb,1\n",
+    )
+    target = tmp_path / "out.csv"
+    assert main(["table", clouds, "--plan", str(PLANS[0]), "-o", str(target)]) == 1
+    rows = list(csv.DictReader(io.StringIO(target.read_text())))
+    assert [row["run"] for row in rows] == ["one", "two"]
+    assert rows[0]["fermi_energy [J]"] == ""
+    assert float(rows[1]["fermi_temperature [K]"]) > 0.0
+    assert rows[1]["model"] == "ideal"
+    errors = capsys.readouterr().err.splitlines()
+    assert len(errors) == 3
+    assert 'clouds.csv, line 4: column "species": no species "1X"' in errors[0]
+    assert 'clouds.csv, line 5: column "temperature [uK]": temperature must be from 1 pK to 10 K' in errors[1]
+    assert "clouds.csv, line 6: 5 cells are needed, as in the header, got 3" in errors[2]
+
+
+def test_a_row_says_what_state_says(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    clouds = write_clouds(tmp_path, "temperature [nK],atoms\n80,2e5\n")
+    assert main(["table", clouds, *FLAGS]) == 0
+    row = next(csv.DictReader(io.StringIO(capsys.readouterr().out)))
+    answer = state_json(capsys, *FLAGS, "--temperature", "80 nK", "--atoms", "2e5")
+    for name in ("condensate_fraction", "peak_density [1/m^3]"):
+        assert float(row[name]) == answer["quantities"][name.split()[0]]["value"]
+    assert float(row["condensate_radii_z [m]"]) == answer["quantities"]["condensate_radii"]["value"][2]
+
+
+@pytest.mark.parametrize(
+    ("text", "message"),
+    [
+        ("", "clouds.csv has no header line"),
+        ("pressure [Pa]\n1\n", 'column "pressure \\[Pa\\]" has a unit but is not one of atoms'),
+    ],
+)
+def test_a_table_that_cannot_be_read_is_one_sentence(
+    text: str, message: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["table", write_clouds(tmp_path, text), *FLAGS]) == 1
+    assert message.replace("\\", "") in capsys.readouterr().err
+
+
+# --- words ---
+
+
+def test_every_caveat_has_its_sentence() -> None:
+    from physics.caveats import CAVEAT_IDS, Caveat, Severity
+
+    for key in ("87Rb", "6Li"):
+        answer = cloud_answer(plan_with(read_plan(PLANS[0]), {"species.key": key}))
+        for name in CAVEAT_IDS:
+            value = 5.3e-9 if "length" in name else 0.07
+            text = caveat_text(
+                Caveat(id=name, severity=Severity.NOTE, value=value, numbers={"frozen_axes": 1.0}), answer
+            )
+            assert text.endswith(".")
+            assert "{" not in text

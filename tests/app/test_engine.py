@@ -1,0 +1,162 @@
+"""From a plan to its answers: what depends on what, and that the answers agree with one another."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from app.engine import (
+    SAMPLES,
+    MapLimits,
+    cloud_answer,
+    map_answer,
+    profile_answer,
+    round_up,
+    slices_answer,
+    usual_limits,
+)
+from app.plan import DEFAULT_PLAN, plan_with
+from app.quantities import QUANTITIES, Need
+from physics.models import Model
+
+LIMITS = MapLimits(atoms_low=1e3, atoms_high=1e7, temperature_low=1e-8, temperature_high=1e-5)
+
+
+def test_an_answer_is_kept_while_what_it_depends_on_stays() -> None:
+    hotter = plan_with(DEFAULT_PLAN, {"cloud.temperature": "300 nK"})
+    assert cloud_answer(DEFAULT_PLAN) is cloud_answer(replace(DEFAULT_PLAN, title="another title"))
+    assert cloud_answer(hotter) is not cloud_answer(DEFAULT_PLAN)
+
+
+def test_moving_the_cloud_leaves_the_map_alone_and_changing_the_trap_does_not() -> None:
+    moved = plan_with(DEFAULT_PLAN, {"cloud.temperature": "300 nK", "cloud.atoms": "3e5"})
+    tighter = plan_with(DEFAULT_PLAN, {"trap.frequencies": "150 Hz, 150 Hz, 20 Hz"})
+    assert map_answer(DEFAULT_PLAN, LIMITS) is map_answer(moved, LIMITS)
+    assert map_answer(DEFAULT_PLAN, LIMITS) is not map_answer(tighter, LIMITS)
+
+
+@pytest.mark.parametrize("key", ["87Rb", "6Li", "23Na", "40K"])
+def test_the_map_says_at_each_point_what_the_cloud_says_there(key: str) -> None:
+    plan = plan_with(DEFAULT_PLAN, {"species.key": key, "cloud.atoms": "2e5", "cloud.temperature": "150 nK"})
+    limits = MapLimits(atoms_low=2e5, atoms_high=4e5, temperature_low=1.5e-7, temperature_high=3e-7)
+    answer = map_answer(plan, limits, 5)
+    solved = cloud_answer(plan).equilibrium
+    assert answer.peak_phase_space_density[0, 0] == pytest.approx(float(solved.peak_phase_space_density), rel=1e-12)
+    assert answer.reduced_temperature[0, 0] == pytest.approx(float(solved.reduced_temperature), rel=1e-12)
+    assert answer.bosons == (key in ("87Rb", "23Na"))
+
+
+@pytest.mark.parametrize("model", ["ideal", "semi-ideal", "exact levels"])
+def test_slices_pass_through_the_cloud(model: str) -> None:
+    plan = plan_with(DEFAULT_PLAN, {"cloud.model": model})
+    names = ("peak_phase_space_density", "energy_per_atom", "thermal_radii")
+    answer = slices_answer(plan, names)
+    for values, now in zip(answer.values_temperature, answer.now, strict=True):
+        here = np.interp(np.log(answer.temperature), np.log(answer.temperature_grid), np.log(values))
+        assert np.exp(here) == pytest.approx(now, rel=2e-3)
+    for values, now in zip(answer.values_atoms, answer.now, strict=True):
+        here = np.interp(np.log(answer.atoms), np.log(answer.atoms_grid), np.log(values))
+        assert np.exp(here) == pytest.approx(now, rel=2e-3)
+
+
+@pytest.mark.parametrize("key", ["87Rb", "40K"])
+@pytest.mark.parametrize("axis", [0, 1, 2])
+@pytest.mark.parametrize("temperature", ["200 nK", "60 nK"])
+def test_profiles_hold_all_the_atoms(key: str, axis: int, temperature: str) -> None:
+    # In units of the frequencies a cloud in a harmonic trap is a sphere, so that one profile gives the number:
+    # N = 4 pi (w^2/(w' w'')) int x^2 n dx from the centre out, and 2 pi (w/w') int x n_column dx for the column.
+    plan = plan_with(DEFAULT_PLAN, {"species.key": key, "cloud.temperature": temperature, "cloud.atoms": "1e5"})
+    answer = profile_answer(plan, axis)
+    frequencies = [quantity.value for quantity in plan.trap.frequencies]
+    half = slice(answer.positions.size // 2, None)
+    x = answer.positions[half]
+    along, sight = frequencies[axis], frequencies[answer.line_of_sight]
+    other = frequencies[3 - axis - answer.line_of_sight]
+    volume = 4 * np.pi * along**2 / (sight * other)
+    assert volume * np.trapezoid(x**2 * answer.density.total[half], x) == pytest.approx(1e5, rel=4e-3)
+    assert 2 * np.pi * along / other * np.trapezoid(x * answer.column.total[half], x) == pytest.approx(1e5, rel=4e-3)
+
+
+def test_the_usual_limits_hold_the_cloud_and_its_threshold_with_room() -> None:
+    for text in ("1 nK", "200 nK", "3 mK"):
+        plan = plan_with(DEFAULT_PLAN, {"cloud.temperature": text})
+        limits, answer = usual_limits(plan), cloud_answer(plan)
+        threshold = plan.cloud.temperature.value * float(answer.equilibrium.temperature_to_threshold)
+        for temperature in (plan.cloud.temperature.value, threshold):
+            assert limits.temperature_low * 5 < temperature < limits.temperature_high / 5
+        assert limits.holds(plan.cloud.atoms.value, plan.cloud.temperature.value)
+
+
+def test_limits_that_are_no_range_are_refused() -> None:
+    with pytest.raises(
+        ValueError, match=r"temperature of the map must run from a low to a high positive limit, got 1 to 0\.1"
+    ):
+        replace(LIMITS, temperature_low=1.0, temperature_high=0.1)
+
+
+# --- uncertainty ---
+
+
+def test_without_uncertainties_there_is_no_interval() -> None:
+    plan = plan_with(
+        DEFAULT_PLAN, {"cloud.atoms": "1e5", "cloud.temperature": "200 nK", "trap.frequencies": "120 Hz, 120 Hz, 20 Hz"}
+    )
+    answer = cloud_answer(plan)
+    assert not answer.uncertain
+    assert answer.interval("reduced_temperature") is None
+    assert answer.probability_beyond_threshold is None
+
+
+def test_intervals_follow_linear_error_propagation_where_errors_are_small() -> None:
+    # T/Tc ~ T N^(-1/3) (f1 f2 f3)^(-1/3): relative errors add in quadrature with these exponents.
+    plan = plan_with(
+        DEFAULT_PLAN,
+        {
+            "cloud.atoms": "1.00(2)e5",
+            "cloud.temperature": "200(3) nK",
+            "trap.frequencies": "120(1) Hz, 120(1) Hz, 20.0(2) Hz",
+        },
+    )
+    answer = cloud_answer(plan)
+    interval = answer.interval("reduced_temperature")
+    assert interval is not None
+    centre = float(answer.equilibrium.reduced_temperature)
+    parts = np.array([3 / 200, 0.02 / 3, 1 / 360, 1 / 360, 0.01 / 3])
+    expected = centre * np.sqrt(np.sum(parts**2)) * 0.994457883  # 84 % is 0.9945 standard deviations
+    assert (interval[1] - interval[0]) / 2 == pytest.approx(expected, rel=5e-3)
+
+
+def test_the_chance_of_being_condensed_is_one_half_at_the_threshold() -> None:
+    at = float(cloud_answer(DEFAULT_PLAN).equilibrium.critical_temperature)
+    answer = cloud_answer(plan_with(DEFAULT_PLAN, {"cloud.temperature": f"{at * 1e9:.6f}(5000000) nK"}))
+    assert answer.probability_beyond_threshold == pytest.approx(0.5, abs=2.5 / np.sqrt(SAMPLES))
+
+
+# --- what is missing ---
+
+
+def test_what_a_cloud_lacks_is_named() -> None:
+    bosons = cloud_answer(plan_with(DEFAULT_PLAN, {"trap.depth": "", "target.efficiency": ""}))
+    assert bosons.missing(QUANTITIES["fermi_energy"]) is Need.FERMIONS
+    assert bosons.missing(QUANTITIES["truncation"]) is Need.DEPTH
+    assert bosons.missing(QUANTITIES["atoms_left_at_target"]) is Need.EFFICIENCY
+    assert bosons.missing(QUANTITIES["condensate_radii"]) is Need.INTERACTING_CONDENSATE
+    assert bosons.missing(QUANTITIES["condensate_fraction"]) is None
+    fermions = cloud_answer(plan_with(DEFAULT_PLAN, {"species.key": "6Li"}))
+    assert fermions.missing(QUANTITIES["critical_temperature"]) is Need.BOSONS
+    assert fermions.missing(QUANTITIES["elastic_collision_rate"]) is Need.COLLISIONS
+
+
+def test_a_model_that_cannot_hold_gives_way_and_says_so() -> None:
+    answer = cloud_answer(plan_with(DEFAULT_PLAN, {"species.scattering_length": "-20 a0", "cloud.model": "semi-ideal"}))
+    assert answer.model is Model.IDEAL
+    assert "model_not_repulsive" in {caveat.id for caveat in answer.caveats}
+
+
+def test_axis_ends_are_round_and_not_below_the_value() -> None:
+    for value in np.geomspace(1e-7, 3e4, 400):
+        end = round_up(float(value))
+        assert value <= end * (1 + 1e-12)
+        assert end <= 2.0 * value
