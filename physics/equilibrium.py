@@ -38,8 +38,8 @@ if TYPE_CHECKING:
 FINITE_SIZE_COEFFICIENT = zeta(2.0) / (2.0 * zeta(3.0) ** (2.0 / 3.0))
 """0.7275: -dTc/Tc0 = 0.7275 (wmean/wbar) N^(-1/3), first order. [2]"""
 
-INTERACTION_COEFFICIENT = 1.3255
-"""-dTc/Tc0 = 1.3255 (a/aho) N^(1/6), first order; the integral of [3] worked out to five digits."""
+INTERACTION_COEFFICIENT = 1.3255028
+"""-dTc/Tc0 = 1.3255 (a/aho) N^(1/6), first order: an integral of g_1/2 g_3/2 over the trap. [3]"""
 
 
 def quantity(function: Callable[[Any], ArrayLike]) -> cached_property[Floats]:

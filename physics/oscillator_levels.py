@@ -104,7 +104,7 @@ class OscillatorLevels:
                 if proposed in (low, high):
                     break
             y = proposed
-        return math.exp(y)
+        return min(math.exp(y), atoms)
 
     def excited_energies(self, alpha: float) -> Floats:
         """(3,) Energy of the excited atoms in each axis, zero-point energy included, in kT."""

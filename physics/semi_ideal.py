@@ -75,9 +75,13 @@ class SemiIdeal(IdealBose):
     @quantity
     def condensate_fraction(self) -> Floats:
         """From mu = (hbar wbar/2) (15 N0 a/aho)^(2/5). [1]"""
-        return self._merged(
-            0.0, lambda: self._coupling * self._height**2 * np.sqrt(self._height) / self._below(self._degeneracy)
-        )
+
+
+        def below() -> Floats:
+            share = self._coupling * self._height**2 * np.sqrt(self._height) / self._below(self._degeneracy)
+            return np.minimum(share, 1.0)
+
+        return self._merged(0.0, below)
 
     @cached_property
     def _thermal_share(self) -> Floats:
