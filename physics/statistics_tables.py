@@ -169,8 +169,8 @@ class Bose(Kernel):
         return np.exp(alpha) * masters.bose_master(self.twice, alpha)
 
     def block(self, x: Array, out: Array, index: Integers, t: Array, scratch: Array) -> None:
+        # (Above the table the gather clips to its last segment, where the polynomial is 1.)
         np.maximum(x, BOSE_LOW, out=scratch)
-        np.minimum(scratch, BOSE_HIGH, out=scratch)
         split(scratch, BOSE_BITS, index, t)
         index -= self.offset
         self.segments.gather(index, t, out, scratch)
