@@ -31,7 +31,7 @@ from physics.statistics import zeta
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
-    from physics.equilibrium import Equilibrium
+    from physics.equilibria import Equilibrium
 
 COLLAPSE = 0.575
 """N0 |a|/aho above which an attractive condensate in an isotropic trap collapses. [1]"""

@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 
 from physics.checks import Floats, as_floats, require_not_infinite, require_positive
-from physics.equilibrium import Equilibrium
+from physics.equilibria import Equilibrium
 from physics.models import AVAILABLE_MODELS, Model, Replacement
 from physics.particles import Statistics
 from physics.traps.harmonic import HarmonicTrap

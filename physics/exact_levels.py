@@ -18,7 +18,7 @@ from functools import cached_property
 import numpy as np
 
 from physics.checks import Floats
-from physics.equilibrium import Equilibrium, quantity
+from physics.equilibria import Equilibrium, quantity
 from physics.oscillator_levels import OscillatorLevels, squared_density
 
 

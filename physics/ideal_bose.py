@@ -16,7 +16,7 @@ from functools import cached_property
 import numpy as np
 
 from physics.checks import Floats
-from physics.equilibrium import Equilibrium, quantity
+from physics.equilibria import Equilibrium, quantity
 from physics.harmonic_integrals import bose_overlap
 from physics.statistics import bose, bose_inverse, zeta
 

@@ -15,7 +15,7 @@ from functools import cached_property
 import numpy as np
 
 from physics.checks import Floats
-from physics.equilibrium import Equilibrium, quantity
+from physics.equilibria import Equilibrium, quantity
 from physics.harmonic_integrals import fermi_overlap
 from physics.statistics import fermi, fermi_inverse
 

@@ -16,7 +16,7 @@ from numpy.typing import ArrayLike
 
 from physics import semi_ideal_integrals as integrals
 from physics.checks import Floats
-from physics.equilibrium import Equilibrium
+from physics.equilibria import Equilibrium
 from physics.exact_levels import ExactLevels, ground_distance
 from physics.ideal_bose import IdealBose
 from physics.ideal_fermi import IdealFermi

@@ -22,7 +22,7 @@ from numpy.typing import NDArray
 
 from physics import semi_ideal_integrals as integrals
 from physics.checks import Floats
-from physics.equilibrium import quantity
+from physics.equilibria import quantity
 from physics.ideal_bose import IdealBose
 from physics.statistics import bose, zeta
 

@@ -60,6 +60,7 @@ class SlicesPage(Page):
         self.column.addLayout(options)
         self.column.addWidget(area, 1)
         self.column.addWidget(self.bar)
+        self._set_rows(self.chosen)
 
     @property
     def chosen(self) -> tuple[str, ...]:

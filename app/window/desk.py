@@ -90,6 +90,11 @@ class Desk(QWidget):
         widget = self.tabs.currentWidget()
         return widget if isinstance(widget, Page) else None
 
+    @property
+    def readouts_in_front(self) -> bool:
+        """Whether the readouts can be seen: beside the pages, or as the tab in front."""
+        return not self.folded or self.tabs.currentWidget() is self.side
+
     def show_page(self, number: int) -> None:
         self.tabs.setCurrentWidget(self.pages[number])
         self.pages[number].take_focus()

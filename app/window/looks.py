@@ -69,6 +69,11 @@ def style_sheet_of(theme: Theme) -> str:
     """
 
 
+def system_is_dark() -> bool:
+    """Whether the desktop's own look is dark; light where it does not say."""
+    return QApplication.styleHints().colorScheme() is Qt.ColorScheme.Dark
+
+
 class Looks(QObject):
     """Holds the theme in use. theme_changed(Theme) is sent whenever it becomes another one."""
 
@@ -101,7 +106,7 @@ class Looks(QObject):
         dark = {
             ThemeChoice.DARK: True,
             ThemeChoice.LIGHT: False,
-            ThemeChoice.SYSTEM: QApplication.styleHints().colorScheme() is Qt.ColorScheme.Dark,
+            ThemeChoice.SYSTEM: system_is_dark(),
         }[self._choice]
         theme = DARK if dark else LIGHT
         application = QApplication.instance()

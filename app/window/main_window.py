@@ -175,7 +175,7 @@ class MainWindow(QMainWindow):
 
         desk = self.desk
         desk.verdict.show_answer(verdict(answer), deciding_figures(answer))
-        if desk.readouts.isVisible():
+        if desk.readouts_in_front:
             desk.readouts.show_answer(answer, self.settings.units)
             desk.caveats.show_lines(caveat_lines(answer))
         for page in desk.pages:

@@ -19,7 +19,7 @@ from types import TracebackType
 from PySide6.QtCore import QLockFile, QObject, QTimer, qVersion
 
 from app.files import write_atomically
-from app.plan import Plan, write_plan
+from app.plan import write_plan
 from app.window.undo import Document
 
 QUIET_TIME_MS = 4000  # unsaved changes are copied this long after the last edit
@@ -42,13 +42,13 @@ class Recovery(QObject):
         self._timer = QTimer(self)
         self._timer.setSingleShot(True)
         self._timer.setInterval(QUIET_TIME_MS)
-        self._timer.timeout.connect(self.save_copy)
-        document.plan_changed.connect(self._plan_changed)
+        self._timer.timeout.connect(self._copy_if_unsaved)
+        document.plan_changed.connect(lambda _plan: self._timer.start())
         document.clean_changed.connect(self._clean_changed)
 
-    def _plan_changed(self, plan: Plan) -> None:
+    def _copy_if_unsaved(self) -> None:
         if not self._document.clean:
-            self._timer.start()
+            self.save_copy()
 
     def _clean_changed(self, clean: bool) -> None:
         if clean:

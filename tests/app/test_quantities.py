@@ -8,7 +8,7 @@ import pytest
 
 from app.quantities import QUANTITIES, Group, Need, display_factor, rows_in
 from physics.constants import boltzmann, planck
-from physics.equilibrium import Equilibrium
+from physics.equilibria import Equilibrium
 
 # The names that scripts rely on; the table may grow, none of these may go.
 CONTRACT = (

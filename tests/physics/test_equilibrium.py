@@ -13,7 +13,7 @@ from hypothesis import strategies as st
 
 from physics.cloud import AVAILABLE_MODELS, Equilibrium, Model
 from physics.constants import boltzmann, planck
-from physics.equilibrium import FINITE_SIZE_COEFFICIENT, INTERACTION_COEFFICIENT
+from physics.equilibria import FINITE_SIZE_COEFFICIENT, INTERACTION_COEFFICIENT
 from physics.statistics import bose, zeta
 
 Maker = Callable[..., Equilibrium]

@@ -21,7 +21,7 @@ from physics import collisions, equation_of_state
 from physics.caveats import COLLAPSE
 from physics.cloud import Cloud, Equilibrium, Model, equilibrium
 from physics.constants import atomic_mass, bohr_radius, boltzmann, planck
-from physics.equilibrium import FINITE_SIZE_COEFFICIENT
+from physics.equilibria import FINITE_SIZE_COEFFICIENT
 from physics.oscillator_levels import OscillatorLevels
 from physics.particles import Statistics
 from physics.statistics import bose, fermi, zeta
