@@ -117,6 +117,7 @@ class SlicesPage(Page):
                 self.remove_plot(plot)
         kept = dict(self._rows)
         self._rows = {name: kept.get(name) or self._new_row(name) for name in names}
+        self._plots[:] = [plot for plots in self._rows.values() for plot in plots]
         for line, plots in enumerate(self._rows.values()):
             for place, plot in enumerate(plots):
                 plot.canvas.setMinimumHeight(170)

@@ -53,7 +53,7 @@ class Banner(QFrame):
     @property
     def text(self) -> str:
         """The notice on show; empty when there is none."""
-        return self._text.text() if self.isVisibleTo(self.parentWidget()) else ""
+        return self._text.text() if not self.isHidden() else ""
 
     def tell(self, text: str, *offers: Offer) -> None:
         """Show a notice with its buttons, in the place of whatever was shown."""
@@ -70,7 +70,8 @@ class Banner(QFrame):
 
     def offers(self) -> tuple[QPushButton, ...]:
         """The buttons on show."""
-        widgets = (self._offers.itemAt(i).widget() for i in range(self._offers.count()))
+        items = (self._offers.itemAt(i) for i in range(self._offers.count()))
+        widgets = (item.widget() for item in items if item is not None)
         return tuple(widget for widget in widgets if isinstance(widget, QPushButton))
 
     def _take(self, offer: Offer) -> None:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from html import escape
 
-from PySide6.QtCore import QSize
+from PySide6.QtCore import QSize, Qt
 from PySide6.QtWidgets import QFrame, QTextBrowser, QWidget
 
 from app.caveat_words import CaveatLine
@@ -21,6 +21,9 @@ class Caveats(QTextBrowser):
         self.setToolTip("What the models behind these numbers leave out, for this cloud")
         self.setWhatsThis(self.toolTip())
         self.setTabChangesFocus(True)
+        self.setTextInteractionFlags(
+            Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
+        )
         self.setOpenLinks(False)
         self.document().setDocumentMargin(0)
         self._lines: tuple[CaveatLine, ...] | None = None

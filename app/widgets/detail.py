@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import QSize
+from PySide6.QtCore import QSize, Qt
 from PySide6.QtWidgets import QFrame, QTextBrowser, QWidget
 
 HINT = "Select a quantity to read its formula, its range and its source here."
@@ -17,6 +17,9 @@ class Detail(QTextBrowser):
         self.setAccessibleName("About the selected quantity")
         self.setFrameShape(QFrame.Shape.NoFrame)
         self.setTabChangesFocus(True)
+        self.setTextInteractionFlags(
+            Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
+        )
         self.document().setDocumentMargin(0)
         self.show_text("")
 

@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 
 from PySide6.QtCore import QAbstractItemModel, QModelIndex, QObject, QPersistentModelIndex, QRect, QSize, Qt
-from PySide6.QtGui import QFont, QFontMetrics, QPainter, QPalette
+from PySide6.QtGui import QColor, QFont, QFontMetrics, QPainter, QPalette
 from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
 
 from app.quantities import QUANTITIES, Group, Row
@@ -158,7 +158,7 @@ class ReadoutPainter(QStyledItemDelegate):
             ink = quiet = palette.color(QPalette.ColorRole.HighlightedText)
         self._paint_line(painter, area, row, option.font, ink, quiet)
 
-    def _paint_line(self, painter: QPainter, area: QRect, row: Row, font: QFont, ink: object, quiet: object) -> None:
+    def _paint_line(self, painter: QPainter, area: QRect, row: Row, font: QFont, ink: QColor, quiet: QColor) -> None:
         reading = self._model.reading_of(row)
         painter.setFont(font)
         metrics = painter.fontMetrics()
@@ -166,7 +166,7 @@ class ReadoutPainter(QStyledItemDelegate):
         unit_width = metrics.horizontalAdvance("1/cm^3")
         value_right = area.right() - unit_width - self.GAP
         value_width = metrics.horizontalAdvance(reading.value)
-        painter.setPen(quiet)  # type: ignore[call-overload]
+        painter.setPen(quiet)
         unit = QRect(value_right + self.GAP, area.top(), unit_width, area.height())
         painter.drawText(unit, left | middle, reading.unit)
         # The label takes what the number leaves, the symbol what the label leaves.
@@ -177,9 +177,9 @@ class ReadoutPainter(QStyledItemDelegate):
             place = QRect(area.left() + label_width + self.GAP, area.top(), symbol_width + 2, area.height())
             painter.drawText(place, left | middle, reading.symbol)
         dim = bool(reading.reason) or self._model.stale
-        painter.setPen(quiet if dim else ink)  # type: ignore[call-overload]
+        painter.setPen(quiet if dim else ink)
         number = QRect(value_right - value_width - 1, area.top(), value_width + 2, area.height())
         painter.drawText(number, left | middle, reading.value)
-        painter.setPen(quiet if reading.reason else ink)  # type: ignore[call-overload]
+        painter.setPen(quiet if reading.reason else ink)
         shown = metrics.elidedText(row.label, Qt.TextElideMode.ElideRight, label_width + 1)
         painter.drawText(QRect(area.left(), area.top(), label_width + 1, area.height()), left | middle, shown)

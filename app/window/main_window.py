@@ -16,7 +16,7 @@ from PySide6.QtGui import (
     QPaintEvent,
     QPalette,
 )
-from PySide6.QtWidgets import QApplication, QMainWindow, QMenu, QTextEdit, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QMainWindow, QMenu, QTextEdit, QVBoxLayout, QWidget
 
 from app.window.settings import Settings, ThemeChoice, rectangle_on_screens
 
@@ -303,7 +303,7 @@ class MainWindow(QMainWindow):
 
     def copy(self) -> None:
         """Copy what the keyboard is on: a text, readouts, or else the plot."""
-        focus = QApplication.focusWidget()
+        focus = self.focusWidget()
         if focus is self.desk.readouts:
             self.desk.readouts.copy()
         elif isinstance(focus, QTextEdit):

@@ -68,8 +68,8 @@ def test_a_drag_draws_nothing_twice_and_shows_the_last_value(window: MainWindow,
 def test_edits_between_two_turns_of_the_event_loop_cost_one_answer(window: MainWindow, settle: Settle) -> None:
     from dataclasses import replace
 
-    from app.units import read_quantity
     from app.kinds import TEMPERATURE
+    from app.units import read_quantity
 
     settle(window)
     count = window.answers.cloud_count
