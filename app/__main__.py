@@ -17,14 +17,14 @@ Plan the cooling of trapped atoms to a Bose-Einstein condensate or a degenerate 
 Without a verb the window opens. Answers are planning estimates; the program controls no hardware."""
 
 
-def build_parser() -> argparse.ArgumentParser:
-    """The whole command line."""
+def build_parser(wanted: Sequence[str] = VERBS) -> argparse.ArgumentParser:
+    """The command line, with all verbs or only those wanted: a verb need not wait for the others to load."""
     parser = argparse.ArgumentParser(
         prog="coldward", description=_DESCRIPTION, formatter_class=argparse.RawDescriptionHelpFormatter
     )
     parser.add_argument("--version", action="version", version=f"coldward {__version__}")
     verbs = parser.add_subparsers(dest="verb", metavar="VERB", required=True)
-    for verb in VERBS:
+    for verb in wanted:
         import_module(f"app.commands.{verb}").add_parser(verbs)
     return parser
 
@@ -34,8 +34,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
     Exit status: 0 answered, 1 a file, value or some rows could not be answered, 2 the command line could not be read.
     """
-    given = list(sys.argv[1:] if arguments is None else arguments)
-    args = build_parser().parse_args(given or ["window"])
+    given = list(sys.argv[1:] if arguments is None else arguments) or ["window"]
+    args = build_parser(given[:1] if given[0] in VERBS else VERBS).parse_args(given)
     try:
         return int(args.run(args))
     except BrokenPipeError:

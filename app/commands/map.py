@@ -6,7 +6,8 @@ import argparse
 import sys
 from typing import TYPE_CHECKING
 
-from app.commands.plan_arguments import add_plan_arguments, fail, plan_of
+from app.commands.plan_arguments import add_plan_arguments, plan_of
+from app.commands.trouble import fail
 
 if TYPE_CHECKING:
     from app.engine import MapLimits

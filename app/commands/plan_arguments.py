@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import argparse
 import json
-import sys
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -49,9 +48,3 @@ def json_answer(args: argparse.Namespace, body: dict[str, Any], **more: Any) -> 
     return json.dumps(
         {"coldward": CONTRACT, "version": __version__, "input": entry, **body}, ensure_ascii=False, allow_nan=False
     )
-
-
-def fail(message: object) -> int:
-    """Say on stderr, in one line, why there is no answer; exit status 1."""
-    print(f"coldward: {message}", file=sys.stderr)
-    return 1

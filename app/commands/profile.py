@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import argparse
 
-from app.commands.plan_arguments import add_plan_arguments, fail, plan_of
+from app.commands.plan_arguments import add_plan_arguments, plan_of
+from app.commands.trouble import fail
 
 AXES = ("x", "y", "z")
 

@@ -7,7 +7,7 @@ import json
 from typing import TYPE_CHECKING, Any
 
 from app import CONTRACT, __version__
-from app.commands.plan_arguments import fail
+from app.commands.trouble import fail
 
 if TYPE_CHECKING:
     from physics.species import Isotope, Sourced, Species, State

@@ -5,7 +5,8 @@ from __future__ import annotations
 import argparse
 from typing import TYPE_CHECKING, Any
 
-from app.commands.plan_arguments import add_plan_arguments, fail, json_answer, plan_of
+from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
+from app.commands.trouble import fail
 
 if TYPE_CHECKING:
     from app.engine import CloudAnswer

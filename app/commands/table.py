@@ -10,7 +10,8 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from app.commands.plan_arguments import add_plan_arguments, fail, plan_of
+from app.commands.plan_arguments import add_plan_arguments, plan_of
+from app.commands.trouble import fail
 
 if TYPE_CHECKING:
     from app.engine import CloudAnswer

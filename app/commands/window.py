@@ -7,7 +7,7 @@ import os
 import sys
 from pathlib import Path
 
-from app.commands.plan_arguments import fail
+from app.commands.trouble import fail
 
 THEMES = ("light", "dark")
 
