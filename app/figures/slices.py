@@ -60,7 +60,7 @@ def slice_picture(answer: SlicesAnswer, name: str, against: Against, unit: str |
         else _("at T = {T}").format(T=temperature(answer.temperature))
     )
     return Picture(
-        title=f"{row.label} {fixed}",
+        title=row.label,
         x=Axis(label=_("temperature T"), unit="K", low=float(x[0]), high=float(x[-1]), log=True, prefixed=True)
         if along_t
         else Axis(label=_("atoms N"), unit="", low=float(x[0]), high=float(x[-1]), log=True),
@@ -68,7 +68,8 @@ def slice_picture(answer: SlicesAnswer, name: str, against: Against, unit: str |
         curves=tuple(curves),
         marks=marks,
         summary=_("{what} {fixed}; now {value}").format(what=row.label, fixed=fixed, value=number(now)),
-        note="" if np.any(np.isfinite(y)) else _("no value here"),
+        # A note is redrawn with the data, a title with the frame: what moves with the cloud stands in the note.
+        note=fixed if np.any(np.isfinite(y)) else _("no value here"),
     )
 
 
