@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, lru_cache
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -151,12 +151,20 @@ def _inputs(plan: Plan) -> dict[str, Quantity]:
     }
 
 
+@lru_cache(maxsize=16)
+def _normal_deviates(dimensions: int) -> Array:
+    """The same draws for every answer, so made once."""
+    deviates = lattice(SAMPLES, dimensions, seed=SEED)
+    deviates.setflags(write=False)
+    return deviates
+
+
 def _draws(plan: Plan) -> dict[str, float | Array]:
     """Every input of `_inputs`: its samples where it has an uncertainty, else its value. One column of the lattice
     each, so that equal texts are still independent measurements."""
     inputs = _inputs(plan)
     uncertain = [name for name, quantity in inputs.items() if quantity.sigma]
-    normal = lattice(SAMPLES, len(uncertain), seed=SEED)
+    normal = _normal_deviates(len(uncertain))
     columns = dict(zip(uncertain, normal.T, strict=True))
     return {
         name: sample(quantity.value, quantity.sigma or 0.0, columns[name]) if name in columns else quantity.value

@@ -3,17 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from functools import partial
 from typing import Any
 
 from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QRadioButton, QToolButton, QWidget
 
 from app.engine import ProfileAnswer, profile_answer
+from app.figures.picture import Axis, Picture
 from app.figures.profile import AXES, Depth, profile_picture
 from app.figures.theme import Theme
 from app.plan import Plan
 from app.widgets.page import Page
 from app.widgets.plot import Plot
+
+FILLED = 0.35  # of the density axis: with less, a new axis is chosen
 
 
 class ProfilePage(Page):
@@ -23,6 +27,7 @@ class ProfilePage(Page):
         super().__init__(theme, parent)
         self._axis = 0
         self._answer: ProfileAnswer | None = None
+        self._held: dict[Depth, Axis] = {}
         self._shown = {depth: self.add_plot(f"Profile of the {depth.value}") for depth in Depth}
         options = QHBoxLayout()
         options.setContentsMargins(14, 6, 14, 2)
@@ -74,7 +79,18 @@ class ProfilePage(Page):
         if self._answer is None:
             return
         for depth, plot in self._shown.items():
-            plot.show(partial(profile_picture, self._answer, depth, log=self.log.isChecked()))
+            plot.show(partial(self._picture, self._answer, depth))
+
+    def _picture(self, answer: ProfileAnswer, depth: Depth) -> Picture:
+        """The profile, on the density axis shown before as long as the curves fill a fair part of it: a cloud that is
+        dragged would otherwise change the axis all the time."""
+        picture = profile_picture(answer, depth, log=self.log.isChecked())
+        held = self._held.get(depth)
+        if held is not None and replace(held, high=picture.y.high, low=picture.y.low) == picture.y:
+            if FILLED * held.high < picture.y.high <= held.high:
+                return replace(picture, y=held)
+        self._held[depth] = picture.y
+        return picture
 
     def _read_pointer(self, plot: Plot, place: tuple[float, float] | None) -> None:
         self.bar.status.say(self.pointer_text(plot, place))
