@@ -142,7 +142,7 @@ def _obstacle(cloud: Cloud, model: Model) -> Replacement | None:
         return Replacement.NOT_OFFERED
     if model is Model.SEMI_IDEAL:
         if np.any(np.isnan(cloud.length)):
-            return Replacement.UNKNOWN_LENGTH
+            return Replacement.LENGTH_UNKNOWN
         if np.any(cloud.length <= 0.0):
             return Replacement.NOT_REPULSIVE
     return None

@@ -30,7 +30,7 @@ AVAILABLE_MODELS = (Model.IDEAL, Model.EXACT_LEVELS, Model.SEMI_IDEAL)
 class Replacement(Enum):
     """Why the ideal model stands where another was asked for."""
 
-    UNKNOWN_LENGTH = "scattering length unknown"
+    LENGTH_UNKNOWN = "scattering length unknown"
     NOT_REPULSIVE = "scattering length not positive"
     NOT_OFFERED = "model not offered"
     BOSONS_ONLY = "model for bosons only"

@@ -36,7 +36,10 @@ def cloud(**given: Any) -> Cloud:
         ({"spin_components": 0}, r"^spin components must be a whole number from 1 on, got 0$"),
         ({"spin_components": 1.5}, r"^spin components must be a whole number from 1 on, got 1.5$"),
         ({"scattering_length": -math.inf}, r"^scattering length must be finite, got -inf m$"),
-        ({"atoms": [1e4, 1e5], "temperature": [1e-7] * 3}, r"must broadcast, got shapes atoms \(2,\), temperature \(3,\)"),
+        (
+            {"atoms": [1e4, 1e5], "temperature": [1e-7] * 3},
+            r"must broadcast, got shapes atoms \(2,\), temperature \(3,\)",
+        ),
     ],
 )
 def test_impossible_values_are_refused_in_one_sentence(given: dict[str, Any], sentence: str) -> None:
@@ -59,8 +62,8 @@ def test_defaults_are_semi_ideal_for_bosons_and_ideal_for_fermions(bosons: Maker
 @pytest.mark.parametrize(
     ("model", "given", "reason"),
     [
-        (None, {"scattering_length": None}, Replacement.UNKNOWN_LENGTH),
-        (Model.SEMI_IDEAL, {"scattering_length": [1e-9, math.nan]}, Replacement.UNKNOWN_LENGTH),
+        (None, {"scattering_length": None}, Replacement.LENGTH_UNKNOWN),
+        (Model.SEMI_IDEAL, {"scattering_length": [1e-9, math.nan]}, Replacement.LENGTH_UNKNOWN),
         (Model.SEMI_IDEAL, {"scattering_length": 0.0}, Replacement.NOT_REPULSIVE),
         (Model.SEMI_IDEAL, {"scattering_length": [1e-9, -1e-9]}, Replacement.NOT_REPULSIVE),
         (Model.HARTREE_FOCK, {}, Replacement.NOT_OFFERED),

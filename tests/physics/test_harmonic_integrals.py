@@ -21,7 +21,9 @@ def test_bose_overlap_is_the_quadrature_of_the_squared_function(alpha: float) ->
 
     scale = math.exp(-2.0 * alpha)
     edges = [0.0, math.sqrt(alpha) / 3, math.sqrt(alpha), 3 * math.sqrt(alpha) + 1.0, 9.0]
-    total = sum(quad(integrand, a, b, epsabs=1e-15 * scale, epsrel=1e-13)[0] for a, b in zip(edges, edges[1:], strict=False))
+    total = sum(
+        quad(integrand, a, b, epsabs=1e-15 * scale, epsrel=1e-13)[0] for a, b in zip(edges, edges[1:], strict=False)
+    )
     assert bose_overlap(alpha) == pytest.approx(4.0 / math.sqrt(math.pi) * total, rel=1e-11)
 
 

@@ -48,7 +48,9 @@ def test_low_temperature_expansions(fermions: Maker, ratio: float) -> None:
     # Sommerfeld: mu/EF = 1 - (pi^2/3) t^2, E/(N EF) = (3/4)(1 + (2 pi^2/3) t^2), next order t^4. [1]
     solved = fermions(temperature=ratio * float(fermions().fermi_temperature))
     EF = float(solved.fermi_energy)
-    assert float(solved.chemical_potential) / EF == pytest.approx(1.0 - math.pi**2 / 3.0 * ratio**2, abs=10.0 * ratio**4)
+    assert float(solved.chemical_potential) / EF == pytest.approx(
+        1.0 - math.pi**2 / 3.0 * ratio**2, abs=10.0 * ratio**4
+    )
     assert float(solved.energy_per_atom) / EF == pytest.approx(0.75 + math.pi**2 / 2.0 * ratio**2, abs=30.0 * ratio**4)
 
 

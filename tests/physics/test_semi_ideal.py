@@ -59,14 +59,14 @@ def test_the_root_is_the_one_that_brent_finds(bosons: Maker) -> None:
     solved = bosons(temperature=6e-8)
     X, tau = float(solved.classical_phase_space_density), 6e-8 * boltzmann / (reduced_planck * 2 * math.pi * 60.0)
     coupling = float(solved.oscillator_length) / (15.0 * LENGTH) * 2.0**2.5 / math.sqrt(tau)
-    root = brentq(lambda x: coupling * x**2.5 + float(thermal_number(np.array([x]))[0]) - X, 1e-6, 20.0, xtol=1e-15, rtol=1e-14)
+    root = brentq(
+        lambda x: coupling * x**2.5 + float(thermal_number(np.array([x]))[0]) - X, 1e-6, 20.0, xtol=1e-15, rtol=1e-14
+    )
     assert solved.log_fugacity == pytest.approx(root, rel=1e-12)
 
 
 @given(st.floats(1.0, 10.0), st.floats(-11.0, -5.0), st.floats(-14.0, -6.0))
-def test_atoms_add_up_for_any_cloud(
-    bosons: Maker, log_atoms: float, log_temperature: float, log_length: float
-) -> None:
+def test_atoms_add_up_for_any_cloud(bosons: Maker, log_atoms: float, log_temperature: float, log_length: float) -> None:
     given = {"atoms": 10.0**log_atoms, "temperature": 10.0**log_temperature, "scattering_length": 10.0**log_length}
     solved, ideal = bosons(**given), bosons(Model.IDEAL, **given)
     tau = boltzmann * given["temperature"] / (reduced_planck * 2.0 * math.pi * float(solved.mean_frequency))
@@ -117,7 +117,10 @@ def test_pure_condensate_of_thomas_and_fermi(bosons: Maker) -> None:
 
 @pytest.mark.parametrize("temperature", [1.26e-7, 1.5e-7, 1e-6])
 def test_above_threshold_it_is_the_ideal_gas(bosons: Maker, names: list[str], temperature: float) -> None:
-    solved, ideal = bosons(temperature=temperature, efficiency=2.0), bosons(Model.IDEAL, temperature=temperature, efficiency=2.0)
+    solved, ideal = (
+        bosons(temperature=temperature, efficiency=2.0),
+        bosons(Model.IDEAL, temperature=temperature, efficiency=2.0),
+    )
     for name in names:
         np.testing.assert_allclose(getattr(solved, name), getattr(ideal, name), rtol=1e-14, err_msg=name)
 

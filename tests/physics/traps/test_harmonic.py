@@ -37,7 +37,10 @@ def test_the_arrays_are_private_and_cannot_be_written() -> None:
 @pytest.mark.parametrize(
     ("given", "sentence"),
     [
-        ({"frequencies": 100.0}, r"^trap frequencies must be three values in Hz along the last axis, got a single number$"),
+        (
+            {"frequencies": 100.0},
+            r"^trap frequencies must be three values in Hz along the last axis, got a single number$",
+        ),
         ({"frequencies": [1.0, 2.0]}, r"^trap frequencies must be three values .* got shape \(2,\)$"),
         ({"frequencies": [1.0, -2.0, 3.0]}, r"^trap frequency must be positive and finite, got -2 Hz$"),
         ({"frequencies": [1.0, 2.0, math.nan]}, r"^trap frequency must be positive and finite, got nan Hz$"),

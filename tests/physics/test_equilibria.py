@@ -111,7 +111,9 @@ def test_scales_by_hand(bosons: Maker) -> None:
     assert solved.thermal_wavelength == pytest.approx(planck / math.sqrt(2 * math.pi * m * boltzmann * T), rel=1e-14)
     tau = boltzmann * T / (planck * f)
     assert solved.classical_phase_space_density == pytest.approx(N / tau**3, rel=1e-13)
-    assert solved.critical_temperature == pytest.approx((N / 1.2020569031595942) ** (1 / 3) * planck * f / boltzmann, rel=1e-13)
+    assert solved.critical_temperature == pytest.approx(
+        (N / 1.2020569031595942) ** (1 / 3) * planck * f / boltzmann, rel=1e-13
+    )
     assert solved.reduced_temperature == pytest.approx(T / solved.critical_temperature, rel=1e-13)
 
 
@@ -123,7 +125,9 @@ def test_both_shifts_of_the_critical_temperature(bosons: Maker) -> None:
     assert solved.critical_temperature_shifted == pytest.approx(expected, rel=1e-13)
     # Without a length the shift by interaction is left out; where shifts use up Tc there is no answer.
     unknown = bosons(scattering_length=None)
-    assert unknown.critical_temperature_shifted == pytest.approx(unknown.critical_temperature * (1.0 - finite), rel=1e-13)
+    assert unknown.critical_temperature_shifted == pytest.approx(
+        unknown.critical_temperature * (1.0 - finite), rel=1e-13
+    )
     assert math.isnan(bosons(atoms=2.0, frequencies=(1000.0, 1000.0, 1.0)).critical_temperature_shifted)
 
 
@@ -164,7 +168,12 @@ def test_no_atom_need_be_lost_beyond_the_threshold(bosons: Maker) -> None:
 
 def test_classical_limit_of_errors_and_collisions(bosons: Maker) -> None:
     solved = bosons(Model.IDEAL, temperature=1e-4, depth=1.380649e-23 * 8e-4)
-    for name in ("classical_density_error", "classical_energy_error", "classical_pressure_error", "fitted_temperature_error"):
+    for name in (
+        "classical_density_error",
+        "classical_energy_error",
+        "classical_pressure_error",
+        "fitted_temperature_error",
+    ):
         assert abs(getattr(solved, name)) < 1e-8, name
     assert solved.truncation == pytest.approx(8.0, rel=1e-14)
     # <n> of a classical cloud in a harmonic trap is n(0)/2^(3/2), and the mean relative speed sqrt(2) vbar.
@@ -173,7 +182,9 @@ def test_classical_limit_of_errors_and_collisions(bosons: Maker) -> None:
     sigma = 8.0 * math.pi * a**2
     rate = float(solved.mean_density) * sigma * math.sqrt(2.0) * math.sqrt(8.0 * kT / (math.pi * m))
     assert solved.elastic_collision_rate < rate  # unitarity
-    assert bosons(temperature=1e-4, scattering_length=a / 1e3).elastic_collision_rate == pytest.approx(rate / 1e6, rel=1e-5)
+    assert bosons(temperature=1e-4, scattering_length=a / 1e3).elastic_collision_rate == pytest.approx(
+        rate / 1e6, rel=1e-5
+    )
 
 
 def test_errors_of_the_classical_formulas_follow_the_virial_series(bosons: Maker, fermions: Maker) -> None:
