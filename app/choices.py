@@ -300,6 +300,7 @@ DEFAULT_PLAN = Plan(
         frequencies=(Quantity("120 Hz", 120.0), Quantity("120 Hz", 120.0), Quantity("20 Hz", 20.0)),
     ),
     cloud=CloudChoice(atoms=Quantity("1.0(1)e5", 1e5, 1e4), temperature=Quantity("200(10) nK", 2e-7, 1e-8)),
+    target=TargetChoice(efficiency=Quantity("2.5", 2.5)),
 )
 """What a window without a file shows. The values stand beside the texts so that starting reads no text; a test reads
 them."""

@@ -45,7 +45,6 @@ class ProfilePage(Page):
         self.log = QToolButton()
         self.log.setText("Logarithmic")
         self.log.setCheckable(True)
-        self.log.setAutoRaise(True)
         self.log.setAccessibleName("Logarithmic density")
         self.log.setToolTip("Show five decades of density")
         self.log.toggled.connect(self._show)
@@ -86,9 +85,9 @@ class ProfilePage(Page):
         dragged would otherwise change the axis all the time."""
         picture = profile_picture(answer, depth, log=self.log.isChecked())
         held = self._held.get(depth)
-        if held is not None and replace(held, high=picture.y.high, low=picture.y.low) == picture.y:
-            if FILLED * held.high < picture.y.high <= held.high:
-                return replace(picture, y=held)
+        alike = held is not None and replace(held, high=picture.y.high, low=picture.y.low) == picture.y
+        if held is not None and alike and FILLED * held.high < picture.y.high <= held.high:
+            return replace(picture, y=held)
         self._held[depth] = picture.y
         return picture
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 
@@ -11,6 +12,8 @@ from app.engine import CloudAnswer
 from app.quantities import QUANTITIES, Need, Row, display_factor
 from app.units import best_unit
 from app.words import number, reason_missing, row_tip, shown_unit, value_text
+
+_RAISED = str.maketrans("123456789", "¹²³⁴⁵⁶⁷⁸⁹")
 
 
 @dataclass(frozen=True)
@@ -74,6 +77,12 @@ def unit_for(row: Row, value: object) -> str:
     if len(row.units) == 1 or "%" in row.units:
         return row.units[0]
     return best_unit(float(np.max(np.abs(np.asarray(value, dtype=float)))), row.units)
+
+
+def printed_unit(unit: str) -> str:
+    """A unit as it is set in print: "cm⁻³" for "1/cm^3"."""
+    found = re.fullmatch(r"1/(\w+?)(?:\^(\d))?", unit)
+    return unit if found is None else f"{found[1]}⁻{(found[2] or '1').translate(_RAISED)}"
 
 
 def _symbol(row: Row, answer: CloudAnswer) -> str:

@@ -13,7 +13,7 @@ from PySide6.QtGui import QColor, QFont, QFontMetrics, QPainter, QPalette
 from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
 
 from app.quantities import QUANTITIES, Group, Row
-from app.widgets.readings import Reading, tip_of
+from app.widgets.readings import Reading, printed_unit, tip_of
 
 AnyIndex = QModelIndex | QPersistentModelIndex
 NOTHING = Reading("", "–")
@@ -136,7 +136,7 @@ class ReadoutPainter(QStyledItemDelegate):
         line = QFontMetrics(option.font).height()
         heading = self._model.row_at(index) is None
         above = 0.75 * line if heading and index.row() else 0.2 * line
-        return QSize(100, round(line + 3 + above) if heading else line + 3)
+        return QSize(100, round(line + 3 + above) if heading else line + 2)
 
     def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: AnyIndex) -> None:
         palette: QPalette = option.palette
@@ -163,12 +163,12 @@ class ReadoutPainter(QStyledItemDelegate):
         painter.setFont(font)
         metrics = painter.fontMetrics()
         left, middle = Qt.AlignmentFlag.AlignLeft, Qt.AlignmentFlag.AlignVCenter
-        unit_width = metrics.horizontalAdvance("1/cm^3")
+        unit_width = metrics.horizontalAdvance("cm⁻³") + 4
         value_right = area.right() - unit_width - self.GAP
         value_width = metrics.horizontalAdvance(reading.value)
         painter.setPen(quiet)
         unit = QRect(value_right + self.GAP, area.top(), unit_width, area.height())
-        painter.drawText(unit, left | middle, reading.unit)
+        painter.drawText(unit, left | middle, printed_unit(reading.unit))
         # The label takes what the number leaves, the symbol what the label leaves.
         room = value_right - value_width - self.GAP - area.left()
         label_width = min(metrics.horizontalAdvance(row.label), room)

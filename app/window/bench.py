@@ -12,7 +12,7 @@ from app.forms.trap import TrapForm
 from app.plan import Plan
 from app.widgets.form import Form
 
-WIDTH = 316
+WIDTH = 306
 
 
 class Bench(QScrollArea):

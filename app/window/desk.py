@@ -23,7 +23,7 @@ from app.window.bench import Bench
 from app.window.settings import Settings
 
 FOLD_WIDTH = 1200
-READOUTS_WIDTH = 348
+READOUTS_WIDTH = 366
 
 
 class Desk(QWidget):
@@ -132,7 +132,7 @@ class Desk(QWidget):
     def reset_layout(self) -> None:
         """Every part in its first size."""
         self._share_out()
-        self.side.setSizes([590, 76, 140])
+        self.side.setSizes([640, 62, 104])
 
     def _share_out(self) -> None:
         middle = max(self.width() - BENCH_WIDTH - READOUTS_WIDTH, 400)

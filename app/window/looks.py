@@ -53,6 +53,7 @@ def style_sheet_of(theme: Theme) -> str:
         #fieldError {{ color: {theme.error}; }}
         QLineEdit {{ border: 1px solid {theme.border}; border-radius: 3px; padding: 3px 5px;
                      background: {theme.base}; }}
+        QComboBox QLineEdit {{ border: none; padding: 0px; }}
         QLineEdit:focus {{ border-color: {theme.accent}; }}
         QLineEdit[invalid="true"] {{ border-color: {theme.error}; }}
         QToolButton:checked {{ background: {theme.accent}; color: {theme.base}; border-radius: 3px; }}

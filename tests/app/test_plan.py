@@ -308,7 +308,8 @@ def test_what_excludes_each_other_replaces_each_other() -> None:
     assert plan_with(field, {"species.scattering_length": "90 a0"}).species.field is None
     cold = plan_with(DEFAULT_PLAN, {"target.reduced_temperature": "0.5"})
     many = plan_with(cold, {"target.condensate_atoms": "1e4"})
-    assert many.target == TargetChoice(condensate_atoms=read_quantity("1e4", ATOM_NUMBER))
+    expected = TargetChoice(condensate_atoms=read_quantity("1e4", ATOM_NUMBER), efficiency=cold.target.efficiency)
+    assert many.target == expected
     with pytest.raises(PlanError, match=r"^--field: give either a scattering length or a magnetic field"):
         plan_with(DEFAULT_PLAN, {"species.field": "10 G", "species.scattering_length": "90 a0"})
 
