@@ -30,8 +30,9 @@ def _maker(kind: dict[str, Any]) -> Maker:
 
 @pytest.fixture(scope="session")
 def bosons() -> Maker:
-    """equilibrium of bosons: bosons(model, atoms=..., temperature=..., frequencies=...); 1e5 at 200 nK by default, where
-    Tc0 is 126 nK."""
+    """equilibrium of bosons: bosons(model, atoms=..., temperature=..., frequencies=...).
+
+    1e5 atoms at 200 nK by default, where Tc0 is 126 nK."""
     return _maker(BOSON)
 
 
@@ -44,10 +45,11 @@ def fermions() -> Maker:
 @pytest.fixture(scope="session")
 def names() -> list[str]:
     """Every NAME of the `state` answer that needs no losses."""
-    return (
-        "thermal_wavelength mean_frequency classical_phase_space_density peak_phase_space_density fugacity log_fugacity "
-        "chemical_potential peak_density mean_density critical_temperature critical_temperature_shifted "
-        "condensate_fraction condensate_atoms fermi_temperature fermi_energy fermi_wavenumber reduced_temperature "
-        "thermal_radii condensate_radii energy_per_atom elastic_collision_rate mean_free_path truncation "
-        "classical_density_error classical_energy_error temperature_to_threshold atoms_to_threshold atoms_left_at_target"
-    ).split()
+    degeneracy = "classical_phase_space_density peak_phase_space_density fugacity log_fugacity chemical_potential"
+    bose = "critical_temperature critical_temperature_shifted condensate_fraction condensate_atoms condensate_radii"
+    fermi = "fermi_temperature fermi_energy fermi_wavenumber"
+    cloud = "thermal_wavelength mean_frequency peak_density mean_density thermal_radii energy_per_atom truncation"
+    collisions = "elastic_collision_rate mean_free_path"
+    classical = "classical_density_error classical_energy_error"
+    threshold = "reduced_temperature temperature_to_threshold atoms_to_threshold atoms_left_at_target"
+    return " ".join((degeneracy, bose, fermi, cloud, collisions, classical, threshold)).split()

@@ -3,7 +3,10 @@
 from __future__ import annotations
 
 import math
+import subprocess
+import sys
 from collections.abc import Callable
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -92,3 +95,28 @@ def test_threshold_and_efficiency_must_be_positive() -> None:
         equilibrium(cloud(), fermi_threshold=0.0)
     with pytest.raises(ValueError, match=r"^evaporation efficiency must be positive and finite, got -2$"):
         equilibrium(cloud(), efficiency=-2.0)
+
+
+def test_a_whole_answer_loads_no_scipy() -> None:
+    # Loading it would take longer than the answer; the command line answers by itself in a fraction of that time.
+    program = """
+import sys
+from physics.caveats import caveats_of
+from physics.cloud import AVAILABLE_MODELS, Cloud, equilibrium
+from physics.particles import Statistics
+from physics.profiles import column_density_profile
+from physics.traps import HarmonicTrap
+for statistics in Statistics:
+    for model in AVAILABLE_MODELS:
+        trap = HarmonicTrap(frequencies=(120.0, 90.0, 20.0), depth=1e-29)
+        cloud = Cloud(statistics=statistics, mass=1.4e-25, trap=trap, atoms=1e5, temperature=5e-8,
+                      scattering_length=5e-9, spin_components=2)
+        solved = equilibrium(cloud, model, efficiency=2.0)
+        for name in dir(solved):
+            getattr(solved, name)
+        caveats_of(solved)
+        column_density_profile(solved, 0, [0.0], 1)
+loaded = {name.split(".")[0] for name in sys.modules} & {"scipy", "matplotlib", "pint"}
+sys.exit(", ".join(loaded) or None)
+"""
+    subprocess.run([sys.executable, "-c", program], check=True, cwd=Path(__file__).parents[2])

@@ -76,6 +76,20 @@ def test_arrays_give_what_single_clouds_give(bosons: Maker, names: list[str], mo
             np.testing.assert_allclose(spread[i, j], getattr(one, name), rtol=2e-12, err_msg=name)
 
 
+@pytest.mark.parametrize("model", AVAILABLE_MODELS)
+def test_arrays_of_traps_and_lengths_agree_too(bosons: Maker, names: list[str], model: Model) -> None:
+    frequencies = np.array([[10.0, 20.0, 30.0], [100.0, 200.0, 50.0], [500.0, 500.0, 1.0]])
+    lengths = np.array([[1e-10], [1e-8]])
+    grid = bosons(model, frequencies=frequencies, scattering_length=lengths, temperature=4e-8, spin_components=2)
+    for name in names:
+        last = (3,) if name in ("thermal_radii", "condensate_radii") else ()
+        spread = np.broadcast_to(getattr(grid, name), (2, 3, *last))
+        for i, j in np.ndindex(2, 3):
+            given = {"frequencies": frequencies[j], "scattering_length": lengths[i, 0], "temperature": 4e-8}
+            one = getattr(bosons(model, spin_components=2, **given), name)
+            np.testing.assert_allclose(spread[i, j], one, rtol=2e-12, err_msg=name)
+
+
 def test_fermion_arrays_give_what_single_clouds_give(fermions: Maker, names: list[str]) -> None:
     frequencies = np.array([[10.0, 20.0, 30.0], [100.0, 200.0, 50.0]])
     temperature = np.array([[1e-8], [1e-7], [1e-5]])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from itertools import pairwise
 
 import mpmath
 import numpy as np
@@ -21,14 +22,12 @@ def test_bose_overlap_is_the_quadrature_of_the_squared_function(alpha: float) ->
 
     scale = math.exp(-2.0 * alpha)
     edges = [0.0, math.sqrt(alpha) / 3, math.sqrt(alpha), 3 * math.sqrt(alpha) + 1.0, 9.0]
-    total = sum(
-        quad(integrand, a, b, epsabs=1e-15 * scale, epsrel=1e-13)[0] for a, b in zip(edges, edges[1:], strict=False)
-    )
+    total = sum(quad(integrand, a, b, epsabs=1e-15 * scale, epsrel=1e-13)[0] for a, b in pairwise(edges))
     assert bose_overlap(alpha) == pytest.approx(4.0 / math.sqrt(math.pi) * total, rel=1e-11)
 
 
 def test_bose_overlap_at_saturation_is_its_double_sum() -> None:
-    # sum over i, j of (i j (i + j))^(-3/2); the terms in i fall as i^-3, so those beyond n add up to n/2 times the last.
+    # sum over i, j of (i j (i + j))^(-3/2); terms in i fall as i^-3, so those beyond n add up to n/2 times the last.
     def summed_over_j(i: int) -> float:
         with mpmath.workdps(25):
             return float(mpmath.nsum(lambda j: (i * j * (i + j)) ** -1.5, [1, mpmath.inf], method="e"))

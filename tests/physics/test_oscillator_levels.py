@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import itertools
 import math
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -97,7 +98,7 @@ def test_squared_density_integrates_the_density(spacing: float, ground: float) -
 
     reach = math.sqrt(2.0 * 40.0 / spacing) + 6.0
     cuts = [0.0, 1.0, 2.0, 4.0, reach]
-    expected = sum(quad(shell, a, b, epsrel=1e-10, limit=200)[0] for a, b in zip(cuts, cuts[1:], strict=False))
+    expected = sum(quad(shell, a, b, epsrel=1e-10, limit=200)[0] for a, b in pairwise(cuts))
     assert squared_density(spacings, alpha, ground) == pytest.approx(expected, rel=1e-8)
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -21,8 +22,8 @@ TEMPERATURES = [5e-8, 2e-7]
 
 
 def column_by_quadrature(solved: Equilibrium, part: str, x: float, along: int) -> float:
-    """The density at (x, 0, z) summed over z by scipy; for a model of local density it depends on V only, so the density
-    along one axis serves all."""
+    """The density at (x, 0, z) summed over z by scipy; in local density it depends on V only, so that along one axis
+    serves all."""
     f = np.asarray(solved.cloud.trap.frequencies)
 
     def density(z: float) -> float:
@@ -37,9 +38,7 @@ def column_by_quadrature(solved: Equilibrium, part: str, x: float, along: int) -
         edges += [0.98 * edge, edge, 1.02 * edge] if edge else []
     edges += [float(edges[-1] + k * s) for k, s in ((1.0, sizes[1]), (1.0, sizes[0]), (12.0, sizes[0]))]
     edges = sorted(set(edges))
-    return 2.0 * sum(
-        quad(density, a, b, epsrel=1e-9, epsabs=1e-30, limit=100)[0] for a, b in zip(edges, edges[1:], strict=False)
-    )
+    return 2.0 * sum(quad(density, a, b, epsrel=1e-9, epsabs=1e-30, limit=100)[0] for a, b in pairwise(edges))
 
 
 @pytest.mark.parametrize("temperature", TEMPERATURES)

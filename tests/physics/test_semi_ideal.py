@@ -11,6 +11,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -41,7 +42,7 @@ def thermal_atoms_by_quadrature(solved: Equilibrium, mu: float) -> float:
     edge = math.sqrt(2.0 * mu / m) / wbar
     width = math.sqrt(kT / m) / wbar
     cuts = [0.0, 0.7 * edge, edge, edge + 0.1 * width, edge + width, edge + 12.0 * width]
-    return sum(quad(shell, a, b, epsrel=1e-11, limit=400)[0] for a, b in zip(cuts, cuts[1:], strict=False))
+    return sum(quad(shell, a, b, epsrel=1e-11, limit=400)[0] for a, b in pairwise(cuts))
 
 
 def test_atoms_add_up_by_an_independent_quadrature(bosons: Maker) -> None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -29,13 +30,9 @@ def mean(x: float, integrand: Integrand, upper: float = 60.0) -> float:
 
     root = math.sqrt(x)
     cuts = sorted({0.0, *(root * k for k in (0.3, 1.0, 3.0, 10.0) if root * k < 8.0), 1.0, 3.0, math.sqrt(upper)})
-    total = sum(
-        quad(outside, a, b, epsrel=1e-13, epsabs=1e-15, limit=200)[0] for a, b in zip(cuts, cuts[1:], strict=False)
-    )
+    total = sum(quad(outside, a, b, epsrel=1e-13, epsabs=1e-15, limit=200)[0] for a, b in pairwise(cuts))
     low = [0.0, 0.5 * root, 0.9 * root, root]
-    total += sum(
-        quad(inside, a, b, epsrel=1e-12, epsabs=1e-15, limit=400)[0] for a, b in zip(low, low[1:], strict=False)
-    )
+    total += sum(quad(inside, a, b, epsrel=1e-12, epsabs=1e-15, limit=400)[0] for a, b in pairwise(low))
     return 2.0 / math.sqrt(math.pi) * total
 
 
@@ -115,9 +112,7 @@ def test_column_through_the_shell(height: float) -> None:
 
     edge = math.sqrt(height)
     cuts = [0.0, edge, edge + 0.1, edge + 1.0, edge + 8.0]
-    total = sum(
-        quad(integrand, a, b, epsrel=1e-10, epsabs=1e-12, limit=400)[0] for a, b in zip(cuts, cuts[1:], strict=False)
-    )
+    total = sum(quad(integrand, a, b, epsrel=1e-10, epsabs=1e-12, limit=400)[0] for a, b in pairwise(cuts))
     value = integrals.column_through_shell(np.array([height]))[0]
     assert value == pytest.approx(2.0 / math.sqrt(math.pi) * total, rel=1e-8)
     if height == 0.0:
