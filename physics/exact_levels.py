@@ -78,7 +78,10 @@ class ExactLevels(Equilibrium):
 
     @quantity
     def peak_phase_space_density(self) -> Floats:
-        """n lambda^3 of the atoms above the ground level at the centre. [1]"""
+        """n lambda^3 of the atoms above the ground level at the centre. [1]
+
+        Above threshold, where the ground level is one like all others, its share of the density is missing.
+        """
         return self._cells[..., 5] * self._ground_density * self._quantum_volume
 
     @quantity
