@@ -400,6 +400,28 @@ _ROWS = (
         source=_ROBINSON,
         validity="local density",
     ),
+    Row(
+        name="classical_pressure_error",
+        label="classical pressure",
+        symbol="n kT/p − 1",
+        unit="1",
+        units=("%", "1"),
+        group=Group.CLASSICAL,
+        formula="n k T over the pressure of the thermal gas where it is densest, less 1",
+        source=_ROBINSON,
+        validity="local density",
+    ),
+    Row(
+        name="fitted_temperature_error",
+        label="temperature by a Gaussian fit",
+        symbol="T_fit/T − 1",
+        unit="1",
+        units=("%", "1"),
+        group=Group.CLASSICAL,
+        formula="temperature that a Gaussian fitted to the expanded cloud gives, over T, less 1",
+        source=_ROBINSON,
+        validity="thermal atoms, after a long free expansion",
+    ),
 )
 
 QUANTITIES = MappingProxyType({row.name: row for row in _ROWS})
