@@ -6,9 +6,11 @@ from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QCompleter, QWidget
 
 from app.plan import PLAN_FIELDS, Plan
+from app.units import format_quantity
 from app.widgets.form import Choice, Form
 from physics.constants import atomic_mass
 from physics.particles import Certainty
+from physics.scattering import LengthInUse
 from physics.species import Sourced, Species, load_species, species_keys
 
 _KEY = PLAN_FIELDS["species.key"]
@@ -108,9 +110,14 @@ class SpeciesForm(Form):
         self.length.setPlaceholderText(_told(state.scattering_length))
         self.field.set_quantity(plan.species.field)
 
-    def show_length_in_use(self, text: str) -> None:
-        """What the magnetic field makes of the scattering length."""
-        self.show_note(_FIELD, text)
+    def show_length(self, length: LengthInUse) -> None:
+        """What the magnetic field, where one is given, makes of the scattering length."""
+        if self._plan is None or self._plan.species.field is None:
+            self.show_note(_FIELD, "")
+        elif length.value is None:
+            self.show_note(_FIELD, f"{length.reason.value}" if length.reason else "scattering length not known")
+        else:
+            self.show_note(_FIELD, f"a = {format_quantity(length.value, 'a0', digits=4)} at this field")
 
 
 def _told(number: Sourced | None) -> str:

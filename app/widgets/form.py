@@ -19,7 +19,7 @@ from app.plan import PLAN_FIELDS, Plan, PlanError
 from app.units import Kind, Quantity
 from app.widgets.quantity_field import QuantityField
 
-LABEL_WIDTH = 112
+LONGEST_LABEL = "Scattering length "  # all forms give their labels this much room
 
 
 class Choice(QComboBox):
@@ -79,7 +79,7 @@ class Form(QWidget):
         self._grid.setContentsMargins(0, 0, 0, 0)
         self._grid.setHorizontalSpacing(10)
         self._grid.setVerticalSpacing(3)
-        self._grid.setColumnMinimumWidth(0, LABEL_WIDTH)
+        self._grid.setColumnMinimumWidth(0, self.fontMetrics().horizontalAdvance(LONGEST_LABEL))
         self._grid.setColumnStretch(1, 1)
         heading = QLabel(title)
         heading.setObjectName("formTitle")

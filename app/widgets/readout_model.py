@@ -104,6 +104,8 @@ class ReadoutModel(QAbstractItemModel):
     def flags(self, index: AnyIndex) -> Qt.ItemFlag:
         if not index.isValid():
             return Qt.ItemFlag.NoItemFlags
+        if self.row_at(index) is None:
+            return Qt.ItemFlag.NoItemFlags  # a heading: the keyboard passes over it
         return Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
 
     def data(self, index: AnyIndex, role: int = Qt.ItemDataRole.DisplayRole) -> object:
@@ -126,7 +128,7 @@ class ReadoutPainter(QStyledItemDelegate):
 
     LEFT, RIGHT = 16, 8
     GAP = 7
-    WIDEST = 470  # a number further from its label would be hard to follow
+    WIDEST = 60  # digits: a number further from its label would be hard to follow
 
     def __init__(self, model: ReadoutModel, parent: QObject | None = None) -> None:
         super().__init__(parent)
@@ -141,7 +143,7 @@ class ReadoutPainter(QStyledItemDelegate):
     def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: AnyIndex) -> None:
         palette: QPalette = option.palette
         area: QRect = option.rect.adjusted(self.LEFT, 0, -self.RIGHT, 0)
-        area.setWidth(min(area.width(), self.WIDEST))
+        area.setWidth(min(area.width(), self.WIDEST * QFontMetrics(option.font).horizontalAdvance("0")))
         row = self._model.row_at(index)
         if row is None:
             font = QFont(option.font)

@@ -46,6 +46,12 @@ class Readouts(QTreeView):
     def _tell_detail(self, index: QModelIndex) -> None:
         self.detail_changed.emit(self._model.tip_at(index))
 
+    def take_focus(self) -> None:
+        """Give the keyboard to the readouts, on the quantity it was on, or on the first."""
+        self.setFocus()
+        if not self.currentIndex().isValid() and self._model.rowCount():
+            self.setCurrentIndex(self._model.index(0, 0, self._model.index(0, 0)))
+
     @property
     def stale(self) -> bool:
         return self._model.stale

@@ -12,7 +12,7 @@ from app.forms.trap import TrapForm
 from app.plan import Plan
 from app.widgets.form import Form
 
-WIDTH = 306
+WIDTH = 38  # digits of the system's font: larger type gets a wider bench
 
 
 class Bench(QScrollArea):
@@ -65,7 +65,13 @@ class Bench(QScrollArea):
         self.species.take_focus()
 
     def sizeHint(self) -> QSize:
-        return QSize(WIDTH, 600)
+        return QSize(self.usual_width(), 600)
 
     def minimumSizeHint(self) -> QSize:
-        return QSize(230, 120)
+        body = self.widget()
+        bar = self.verticalScrollBar().sizeHint().width()
+        return QSize(body.minimumSizeHint().width() + bar if body is not None else 230, 120)
+
+    def usual_width(self) -> int:
+        """The width that suits the fields."""
+        return max(WIDTH * self.fontMetrics().horizontalAdvance("0"), self.minimumSizeHint().width())

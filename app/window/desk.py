@@ -18,12 +18,12 @@ from app.widgets.detail import Detail
 from app.widgets.page import Page
 from app.widgets.readouts import Readouts
 from app.widgets.verdict import Verdict
-from app.window.bench import WIDTH as BENCH_WIDTH
 from app.window.bench import Bench
 from app.window.settings import Settings
 
-FOLD_WIDTH = 1200
-READOUTS_WIDTH = 366
+# In digits of the system's font, about 8 pixels each: larger type folds sooner.
+FOLD_WIDTH = 150
+READOUTS_WIDTH = 46
 
 
 class Desk(QWidget):
@@ -102,9 +102,7 @@ class Desk(QWidget):
     def show_readouts(self) -> None:
         if self.folded:
             self.tabs.setCurrentWidget(self.side)
-        self.readouts.setFocus()
-        if not self.readouts.currentIndex().isValid():
-            self.readouts.setCurrentIndex(self.readouts.model().index(0, 0))
+        self.readouts.take_focus()
 
     # ---------------------------------------------------------------- places
 
@@ -113,7 +111,7 @@ class Desk(QWidget):
         return self.tabs.indexOf(self.side) >= 0
 
     def resizeEvent(self, event: QResizeEvent) -> None:
-        self._fold(self.width() < FOLD_WIDTH)
+        self._fold(self.width() < FOLD_WIDTH * self._digit())
 
     def _fold(self, fold: bool) -> None:
         if fold == self.folded:
@@ -135,8 +133,11 @@ class Desk(QWidget):
         self.side.setSizes([640, 62, 104])
 
     def _share_out(self) -> None:
-        middle = max(self.width() - BENCH_WIDTH - READOUTS_WIDTH, 400)
-        self.columns.setSizes([BENCH_WIDTH, middle, READOUTS_WIDTH][: self.columns.count()])
+        left, right = self.bench.usual_width(), READOUTS_WIDTH * self._digit()
+        self.columns.setSizes([left, max(self.width() - left - right, 400), right][: self.columns.count()])
+
+    def _digit(self) -> int:
+        return self.fontMetrics().horizontalAdvance("0")
 
     def next_pane(self, step: int) -> None:
         """Move the keyboard to the next visible part, or with -1 to the one before."""

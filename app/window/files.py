@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from pathlib import Path
 
 from PySide6.QtCore import QMimeData, QObject
@@ -18,11 +18,14 @@ Tell = Callable[[str], None]
 
 
 class Files(QObject):
-    """The file commands of one window. `tell` shows one sentence to the user."""
+    """The file commands of one window. `tell` shows one sentence to the user; `problems` are those of the fields."""
 
-    def __init__(self, document: Document, settings: Settings, window: QWidget, tell: Tell) -> None:
+    def __init__(
+        self, document: Document, settings: Settings, window: QWidget, tell: Tell, problems: Callable[[], Sequence[str]]
+    ) -> None:
         super().__init__(window)
         self._document, self._settings, self._window, self._tell = document, settings, window, tell
+        self._problems = problems
 
     @property
     def name(self) -> str:
@@ -92,6 +95,8 @@ class Files(QObject):
             self._tell(f"{error}; the plan is still here, unsaved.")
             return False
         self._document.saved(path, text)
+        if self._problems():
+            self._tell(f"{path.name} was saved with the last good value of the field that cannot be read.")
         self._settings.remember_file(path)
         return True
 

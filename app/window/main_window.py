@@ -98,7 +98,7 @@ class MainWindow(QMainWindow):
         self.answers = Answers(self)
         self.desk = Desk(self.looks.theme)
         self.banner = Banner()
-        self.files = Files(self.document, self.settings, self, self.tell)
+        self.files = Files(self.document, self.settings, self, self.tell, lambda: self.desk.bench.problems)
         self.recovery = Recovery(self.document, self.settings.state_folder, self)
         self.actions_by_id = install_actions(self)
         self._recent = QMenu("Open &recent", self)
@@ -174,6 +174,7 @@ class MainWindow(QMainWindow):
         from app.words import deciding_figures, verdict
 
         desk = self.desk
+        desk.bench.species.show_length(answer.scattering)
         desk.verdict.show_answer(verdict(answer), deciding_figures(answer))
         if desk.readouts_in_front:
             desk.readouts.show_answer(answer, self.settings.units)

@@ -110,3 +110,28 @@ def test_a_scattering_length_and_a_field_exclude_each_other(window: MainWindow, 
 
 def test_an_empty_scattering_length_shows_the_number_of_the_data_and_how_sure_it_is(window: MainWindow) -> None:
     assert window.desk.bench.species.length.placeholderText() == "100.4 a0 (recalled)"
+
+
+def test_a_field_tells_the_scattering_length_that_it_makes(window: MainWindow, settle: Settle) -> None:
+    from app.widgets.form import plan_with_entry
+
+    window.document.edit(plan_with_entry(window.document.plan, "species.key", "133Cs"), "species")
+    form = window.desk.bench.species
+    type_into(form.field, "21 G")
+    settle(window)
+    assert window.answers.cloud is not None
+    length = window.answers.cloud.scattering.value
+    shown = form._notes["species.field"].text()
+    if length is None:
+        assert shown
+    else:
+        assert shown == f"a = {length / 5.29177210544e-11:.4g} a0 at this field"
+
+
+def test_saving_with_a_wrong_field_says_which_value_was_kept(window: MainWindow, tmp_path, monkeypatch) -> None:
+    from PySide6.QtWidgets import QFileDialog
+
+    monkeypatch.setattr(QFileDialog, "getSaveFileName", lambda *_args: (str(tmp_path / "a.toml"), ""))
+    type_into(window.desk.bench.cloud.temperature, "hot")
+    assert window.files.save()
+    assert "saved with the last good value" in window.banner.text
