@@ -7,6 +7,7 @@ With u = V/kT a sum over the trap is <h> = (2/sqrt(pi)) integral of sqrt(u) h(u)
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from functools import cache
 
 import numpy as np
@@ -21,6 +22,9 @@ _STEP = 0.14
 _LOG_W = np.arange(-11.0, 1.7, _STEP)
 _CELLS = 512  # cells at once, to bound the memory
 
+Integrand = Callable[[Floats, Floats], Floats]
+"""h of u and of the argument of the Bose or Fermi functions."""
+
 
 @cache
 def legendre(order: int) -> tuple[Floats, Floats]:
@@ -31,31 +35,45 @@ def legendre(order: int) -> tuple[Floats, Floats]:
 
 def bose_overlap(alpha: ArrayLike) -> Floats:
     """<g_3/2(e^(-alpha-u))^2> for alpha >= 0. [1] Relative error below 1e-12."""
-    a = np.asarray(alpha, dtype=np.float64)
-    u = np.exp(2.0 * _LOG_W)
-    weights = 4.0 / math.sqrt(math.pi) * _STEP * u**1.5
-    flat = a.reshape(-1)
-    result = np.empty_like(flat)
-    for start in range(0, flat.size, _CELLS):
-        part = slice(start, start + _CELLS)
-        result[part] = bose(1.5, flat[part, np.newaxis] + u) ** 2 @ weights
-    return result.reshape(a.shape)
+    return bose_mean(alpha, lambda u, deep: bose(1.5, deep) ** 2)
 
 
 def fermi_overlap(log_z: ArrayLike) -> Floats:
     """<f_3/2(z e^-u)^2>. [1] Relative error below 1e-10, below 1e-12 outside 20 < ln z < 2000."""
-    eta = np.asarray(log_z, dtype=np.float64)
+    return fermi_mean(log_z, lambda u, local: fermi(1.5, local) ** 2)
+
+
+def bose_mean(alpha: ArrayLike, integrand: Integrand) -> Floats:
+    """<h> of h(u, alpha + u), a product of powers of u and of at least two Bose functions of order 3/2 or more. [1]
+
+    Several integrands at once: their values may have more dimensions in front, which the answer keeps.
+    """
+    a = np.asarray(alpha, dtype=np.float64)
+    u = np.exp(2.0 * _LOG_W)
+    weights = 4.0 / math.sqrt(math.pi) * _STEP * u**1.5
+    return _in_parts(lambda part: integrand(u, part + u) @ weights, a)
+
+
+def fermi_mean(log_z: ArrayLike, integrand: Integrand) -> Floats:
+    """<h> of h(u, ln z - u), likewise of Fermi functions. [1]"""
     x, weights = legendre(48)
-    flat = eta.reshape(-1)
-    result = np.empty_like(flat)
-    for start in range(0, flat.size, _CELLS):
-        part = flat[start : start + _CELLS, np.newaxis]
+
+    def column(part: Floats) -> Floats:
         # Two panels in w = sqrt(u): the filled inside, and the rim of width kT and the empty outside.
         edge = np.sqrt(np.maximum(part, 1.0))
         end = np.sqrt(np.maximum(part, 0.0) + 40.0)
-        total = np.zeros(part.shape[0])
+        total: Floats = np.zeros(part.shape[0])
         for low, high in ((np.zeros_like(edge), edge), (edge, end)):
             w = low + (high - low) * x
-            total += ((high - low) * weights * w * w * fermi(1.5, part - w * w) ** 2).sum(axis=-1)
-        result[start : start + _CELLS] = 4.0 / math.sqrt(math.pi) * total
-    return result.reshape(eta.shape)
+            total = total + ((high - low) * weights * w * w * integrand(w * w, part - w * w)).sum(axis=-1)
+        return 4.0 / math.sqrt(math.pi) * total
+
+    return _in_parts(column, np.asarray(log_z, dtype=np.float64))
+
+
+def _in_parts(function: Callable[[Floats], Floats], values: Floats) -> Floats:
+    """The function of a column of values, over any number of them; its answers run along the last axis."""
+    flat = values.reshape(-1, 1)
+    parts = [function(flat[start : start + _CELLS]) for start in range(0, max(len(flat), 1), _CELLS)]
+    result: Floats = np.concatenate(parts, axis=-1)
+    return result.reshape((*result.shape[:-1], *values.shape))
