@@ -41,13 +41,14 @@ def percent(share: float) -> str:
     value = 100.0 * share
     if 0.0 < value < 0.1:
         return _("< 0.1 %")
-    return f"{value:.1f} %" if value < 9.95 or 99.0 < value < 100.0 else f"{value:.0f} %"
+    fine = 0.0 < value < 9.95 or 99.0 < value < 99.95
+    return f"{value:.1f} %" if fine else f"{value:.0f} %"
 
 
 def times(factor: float) -> str:
-    """A factor for a sentence: "1.9", "12", "3.4e4"."""
+    """A factor for a sentence: "1.45", "3.0", "12", "3.4e4"."""
     if factor < 9.95:
-        return f"{factor:.2g}" if factor >= 2 else f"{factor:.2f}"
+        return f"{factor:.1f}" if factor >= 2.0 else f"{factor:.2f}"
     return f"{factor:.0f}" if factor < 1e4 else number(factor, 2)
 
 
@@ -91,8 +92,13 @@ def _fermions(answer: CloudAnswer) -> str:
         return _("{word}: T/TF = {ratio}, with {filled} of the lowest level filled.").format(
             word=word, ratio=number(reduced, 2), filled=percent(_occupation(float(solved.log_fugacity)))
         )
+    aim = f"{limit:.3g}"
+    if reduced < 1.0:
+        return _("Partly degenerate at T/TF = {ratio}: {factor} times too hot for T/TF = {limit}.").format(
+            ratio=number(reduced, 2), factor=times(reduced / limit), limit=aim
+        )
     return _("A thermal cloud: {factor} times too hot for T/TF = {limit}.").format(
-        factor=times(reduced / limit), limit=number(limit, 2)
+        factor=times(reduced / limit), limit=aim
     )
 
 
@@ -175,7 +181,7 @@ def _chance(answer: CloudAnswer) -> str:
     shown = percent(share) if 0.001 <= share <= 0.999 else (_("> 99.9 %") if share > 0.5 else _("< 0.1 %"))
     if answer.bosons:
         return _("condensed with {share} probability").format(share=shown)
-    return _("T/TF < {limit} with {share} probability").format(limit=number(answer.threshold, 2), share=shown)
+    return _("T/TF < {limit} with {share} probability").format(limit=f"{answer.threshold:.3g}", share=shown)
 
 
 def reason_missing(need: Need) -> str:

@@ -99,7 +99,7 @@ def _fermion_field(answer: MapAnswer) -> Field:
         shade=place(logs),
         split=SPLIT,
         bar_label=_("T/TF"),
-        ticks=tuple((float(place(np.array(math.log10(tick)))), number(tick, 2)) for tick in ticks),
+        ticks=tuple((float(place(np.array(math.log10(tick)))), f"{tick:.3g}") for tick in ticks),
     )
 
 
@@ -165,9 +165,7 @@ def _contour(
 
 def _thresholds(answer: MapAnswer) -> tuple[Curve, ...]:
     name = (
-        _("condensation, ideal")
-        if answer.bosons
-        else _("T/TF = {limit}").format(limit=number(answer.fermi_threshold, 2))
+        _("condensation, ideal") if answer.bosons else _("T/TF = {limit}").format(limit=f"{answer.fermi_threshold:.3g}")
     )
     ideal = Curve(name=name, role=Role.THRESHOLD, x=answer.atoms, y=answer.threshold)
     if not answer.bosons or not np.any(np.isfinite(answer.threshold_shifted)):
