@@ -34,6 +34,8 @@ class Cloud:
     spin_components : int. Number of equally filled spin states.
     scattering_length : array_like or None. [m] s-wave length: of two atoms of the same state for bosons, of different
         states for fermions. None, and NaN within an array, where unknown. It may be negative.
+    dipolar_length : float or None. [m] Of the magnetic moment, `physics.scattering.dipolar_length`; None leaves
+        collisions of dipoles out. It enters collision rates only.
 
     Raises
     ------
@@ -47,6 +49,7 @@ class Cloud:
     temperature: Any
     spin_components: int = 1
     scattering_length: Any = None
+    dipolar_length: float | None = None
 
     def __post_init__(self) -> None:
         for field, quantity, unit in (
@@ -65,6 +68,8 @@ class Cloud:
             length = as_floats(self.scattering_length)
             require_not_infinite("scattering length", length, "m")
             object.__setattr__(self, "scattering_length", length)
+        if self.dipolar_length is not None and not 0.0 <= self.dipolar_length < np.inf:
+            raise ValueError(f"dipolar length must be finite and not negative, got {self.dipolar_length:g} m")
         try:
             _ = self.shape
         except ValueError:

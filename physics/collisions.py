@@ -1,10 +1,12 @@
-"""Elastic s-wave collisions of trapped atoms.
+"""Elastic collisions of trapped atoms: s-waves, and those of magnetic dipoles.
 
 References
 ----------
 [1] J. Dalibard, in Bose-Einstein Condensation in Atomic Gases, Proc. Int. School of Physics "Enrico Fermi" CXL, 321
     (1999): cross-sections. Recalled.
 [2] W. Ketterle and N. J. van Druten, Adv. At. Mol. Opt. Phys. 37, 181 (1996): collision rates in a trap. Recalled.
+[3] J. L. Bohn and D. S. Jin, Phys. Rev. A 89, 022702 (2014): dipoles.
+[4] H. Wu and C. J. Foot, J. Phys. B 29, L321 (1996): collisions until energies are thermal. Recalled.
 """
 
 from __future__ import annotations
@@ -16,6 +18,9 @@ import numpy as np
 from physics.checks import Floats
 from physics.constants import boltzmann, reduced_planck
 from physics.particles import Statistics
+
+RETHERMALISATION_COLLISIONS = 2.7
+"""Collisions an atom needs until energies along all axes are alike, for a cross-section without speed in it. [4]"""
 
 
 def mean_speed(mass: float, temperature: Floats) -> Floats:
@@ -37,6 +42,29 @@ def low_energy_cross_section(statistics: Statistics, scattering_length: Floats, 
     elif spin_components == 1:
         return np.zeros_like(scattering_length)
     return states * scattering_length**2
+
+
+def cross_section(scattering_length: Floats, wavenumber: Floats) -> Floats:
+    """8 pi a^2/(1 + k^2 a^2) of two identical bosons, k = m v/(2 hbar) for their relative speed v; half of it of atoms
+    that can be told apart. [m^2] [1]"""
+    a, k = scattering_length, wavenumber
+    sigma: Floats = 8.0 * math.pi * a**2 / (1.0 + (k * a) ** 2)
+    return sigma
+
+
+def dipolar_cross_section(statistics: Statistics, dipolar_length: Floats) -> Floats:
+    """Cross-section of aligned dipoles of one state, over all directions, in addition to that of s-waves. [m^2] [3]
+
+    (32 pi/45) a_d^2 of bosons, (32 pi/15) a_d^2 of fermions. First Born approximation at threshold: it depends on no
+    speed and on nothing of short range, for k a_d << 1.
+
+    Parameters
+    ----------
+    dipolar_length : array_like. [m] a_dd = mu0 mu^2 m/(12 pi hbar^2), which is (2/3) a_d.
+    """
+    share = 45.0 if statistics is Statistics.BOSE else 15.0
+    sigma: Floats = 32.0 * math.pi / share * (1.5 * dipolar_length) ** 2
+    return sigma
 
 
 # Trapezoidal rule in ln t; the integrands are regular for |arg t| < pi/2 and fall as t at the low end.
@@ -62,3 +90,8 @@ def mean_collision_rate(peak_density: Floats, cross_section: Floats, speed: Floa
     The mean density is n(0)/2^(3/2), the mean relative speed sqrt(2) vbar. [2]
     """
     return 0.5 * peak_density * cross_section * speed
+
+
+def peak_collision_rate(peak_density: Floats, cross_section: Floats, speed: Floats) -> Floats:
+    """Collisions per time of an atom where the density is largest, n(0) sigma sqrt(2) vbar. [1/s]"""
+    return math.sqrt(2.0) * peak_density * cross_section * speed

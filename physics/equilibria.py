@@ -323,19 +323,29 @@ class Equilibrium:
     # Collisions.
 
     @quantity
-    def elastic_collision_rate(self) -> Floats:
-        """Mean s-wave collisions per atom and time, n(0) sigma vbar/2. [1/s]
+    def collision_cross_section(self) -> Floats:
+        """sigma of an atom with its partners in all spin states, such that n counts those of one state. [m^2]
 
-        n(0) is the largest thermal density of one spin state, vbar the classical mean speed, sigma counts partners in
-        all spin states (the same length is taken for all pairs) and is averaged over classical speeds. Quantum
-        statistics of the colliding atoms is in n(0) only. 0 for one spin state of fermions.
+        The same s-wave length is taken for all pairs; its part is averaged over classical speeds. Dipoles collide
+        with those of their own state. 0 for one spin state of fermions without a moment.
         """
         cloud = self.cloud
-        if not self.bosons and cloud.spin_components == 1:
-            return np.zeros(())
-        sigma = collisions.low_energy_cross_section(cloud.statistics, cloud.length, cloud.spin_components)
-        sigma = sigma * collisions.thermal_cross_section_factor(self._mass, self._temperature, cloud.length)
-        density = self.peak_phase_space_density / self._quantum_volume
+        sigma: Floats = np.zeros(())
+        if self.bosons or cloud.spin_components > 1:
+            sigma = collisions.low_energy_cross_section(cloud.statistics, cloud.length, cloud.spin_components)
+            sigma = sigma * collisions.thermal_cross_section_factor(self._mass, self._temperature, cloud.length)
+        if cloud.dipolar_length is not None:
+            sigma = sigma + collisions.dipolar_cross_section(cloud.statistics, np.asarray(cloud.dipolar_length))
+        return sigma
+
+    @quantity
+    def elastic_collision_rate(self) -> Floats:
+        """Mean collisions per atom and time, n(0) sigma vbar/2. [1/s]
+
+        n(0) is the largest thermal density of one spin state, vbar the classical mean speed. Quantum statistics of
+        the colliding atoms is in n(0) only.
+        """
+        density, sigma = self.peak_phase_space_density / self._quantum_volume, self.collision_cross_section
         return collisions.mean_collision_rate(density, sigma, collisions.mean_speed(self._mass, self._temperature))
 
     @quantity

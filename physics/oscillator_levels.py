@@ -26,7 +26,7 @@ import numpy as np
 from physics.checks import Floats
 
 _ORDER = 20  # nodes a block: relative error 5.8^-40
-_COARSE_ORDER = 8  # where pairs of them are summed: 5.8^-16
+COARSE_ORDER = 8  # where pairs of them are summed: 5.8^-16
 _RANGE = 45.0  # e^-45 is nothing
 _STEPS = 200
 
@@ -128,6 +128,35 @@ class OscillatorLevels:
         of that axis is not used."""
         return self._sum_of_propagators(alpha, squares, along)
 
+    def densities_in_space(self, alpha: float, nodes: int) -> tuple[Floats, Floats, Floats]:
+        """Density of the excited atoms and of one atom in the ground level at points of an eighth of space, and the
+        weights that make a sum over them an integral over all of it.
+
+        Densities in units of 1/(pi^(3/2) aho^3), the integral in the inverse of that: one atom gives 1.
+
+        Parameters
+        ----------
+        nodes : int. Along each half axis. They are even in t = arsinh(x/a), in which the narrow ground level and the
+            wide cloud of excited atoms are both smooth and end as e^(-e^2t).
+        """
+        tables, grounds, weights = [], [], []
+        for spacing in self.spacings:
+            end = math.asinh(math.sqrt(40.0 * max(1.0, 1.0 / spacing)))
+            t = np.linspace(0.0, end, nodes)
+            x, weight = np.sinh(t), 2.0 / math.sqrt(math.pi) * np.cosh(t) * (end / (nodes - 1))
+            weight[0] *= 0.5
+            jb = np.minimum(self._j * spacing, 300.0)[:, np.newaxis]
+            tables.append(np.exp(-x * x * np.tanh(0.5 * jb)) / np.sqrt(-np.expm1(-2.0 * jb)))
+            grounds.append(np.exp(-x * x))
+            weights.append(weight)
+        powers = self._fugacity_powers(alpha)
+        pairs = ((tables[0] * powers[:, np.newaxis])[:, :, np.newaxis] * tables[1][:, np.newaxis, :]).reshape(-1, nodes**2)
+        ground = np.einsum("a,b,c->abc", *grounds)
+        # Less the ground level itself, as everywhere here: it has no power series where it holds many atoms.
+        together = (pairs.T @ tables[2]).reshape(ground.shape)
+        excited = np.maximum(together - powers.sum() * ground, 0.0)
+        return excited, ground, np.einsum("a,b,c->abc", *weights)
+
     def _sum_of_propagators(self, alpha: float, squares: Floats, along: int | None) -> Floats:
         j = self._j[:, np.newaxis]
         # ln of each propagator over that of the ground level: 1/sqrt(1 - e^(-2jb)) at the centre, and a wider Gaussian.
@@ -152,7 +181,7 @@ def squared_density(spacings: Floats, alpha: float, ground: float) -> float:
 
     Relative error below 1e-10.
     """
-    levels = OscillatorLevels(spacings, _COARSE_ORDER)
+    levels = OscillatorLevels(spacings, COARSE_ORDER)
     j = levels._j
     amplitude, tanh = np.ones_like(j), np.empty((3, j.size))
     for i in range(3):

@@ -179,6 +179,23 @@ def density_product(x: Floats) -> Floats:
     return _in_parts(column, x)
 
 
+def triple_products(x: Floats) -> Floats:
+    """(3, ...) <(x - u)^2 d>, <(x - u) d^2> over the condensate and <d^3> over all, of d = n_thermal lambda^3. [1]"""
+
+    def column(x: Floats) -> Floats:
+        v, weights, g = _outside(1.5)
+        outside: Floats = (weights * np.sqrt(v + x) * g**3).sum(axis=-1)
+        u, v, weights, g = _inside(x, 1.5)
+        shares = weights * np.sqrt(u) * g
+        # Deeper than the reach of g the condensate is alone, so its first two products end there too.
+        return np.stack([(shares * v * v).sum(axis=-1), (shares * v * g).sum(axis=-1),
+                         outside + (shares * g * g).sum(axis=-1)])  # fmt: skip
+
+    flat = np.asarray(x, dtype=np.float64).reshape(-1)
+    parts = [column(flat[start : start + _CELLS, np.newaxis]) for start in range(0, max(flat.size, 1), _CELLS)]
+    return np.concatenate(parts, axis=-1).reshape((3, *np.shape(x)))
+
+
 def column_through_shell(height: Floats) -> Floats:
     """integral of g_3/2(e^-|t^2 - height|) dt/sqrt(pi) over all t, for a line of sight through the condensate whose
     chemical potential over kT there is `height` >= 0. [1] g_2(1) at height 0."""

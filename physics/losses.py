@@ -1,0 +1,102 @@
+"""How trapped atoms are lost and heated: the constants that say so, and the bounds on them.
+
+Rate constants are those of a THERMAL gas, dn/dt = -K2 n^2 and -K3 n^3, n the density of one spin state. In a condensate
+identical bosons meet K2/2 and K3/6 as often [1]: a quoted value for a condensate is to be multiplied by 2 or 6.
+
+References
+----------
+[1] E. A. Burt et al., Phys. Rev. Lett. 79, 337 (1997): the factor 3! between condensate and thermal gas.
+[2] T. Weber, J. Herbig, M. Mark, H.-C. Naegerl, R. Grimm, Phys. Rev. Lett. 91, 123201 (2003): three-body loss at large
+    scattering lengths, 3 x 67 hbar a^4/m at most, and the heat that it leaves.
+[3] J. P. D'Incao, H. Suno, B. D. Esry, Phys. Rev. Lett. 93, 123201 (2004): the unitarity limit. Recalled.
+[4] T. A. Savard, K. M. O'Hara, J. E. Thomas, Phys. Rev. A 56, R1095 (1997): heating by noise of a laser's intensity.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from physics.checks import Floats, as_floats, require_not_infinite, require_positive
+from physics.constants import boltzmann, reduced_planck
+
+SCALING_CEILING = 201.0
+"""K3 m/(hbar a^4) that large scattering lengths allow at most. [1] [2]"""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Losses:
+    """What takes atoms from a trap or heats them. None where unknown, which is not 0.
+
+    Attributes
+    ----------
+    background_lifetime : array_like or None. [s] 1/e, of collisions with the background gas.
+    two_body : array_like or None. [m^3/s] K2 of a thermal gas.
+    three_body : array_like or None. [m^6/s] K3 of a thermal gas.
+    heating : array_like or None. [K/s] By light, noise and whatever else does not depend on density.
+    intensity_noise : array_like or None. [1/Hz] One-sided spectrum of the relative intensity of the trapping light,
+        at twice the trap frequencies.
+    recombination_heat : array_like or None. [J] Left in the cloud by one three-body event.
+
+    Raises
+    ------
+    ValueError : for a lifetime that is not positive, or another value that is negative or infinite.
+    """
+
+    background_lifetime: Any = None
+    two_body: Any = None
+    three_body: Any = None
+    heating: Any = None
+    intensity_noise: Any = None
+    recombination_heat: Any = None
+
+    def __post_init__(self) -> None:
+        units = {"two_body": "m^3/s", "three_body": "m^6/s", "heating": "K/s", "intensity_noise": "1/Hz",
+                 "recombination_heat": "J"}  # fmt: skip
+        if self.background_lifetime is not None:
+            lifetime = as_floats(self.background_lifetime)
+            require_positive("background lifetime", lifetime, "s")
+            object.__setattr__(self, "background_lifetime", lifetime)
+        for name, unit in units.items():
+            value = getattr(self, name)
+            if value is not None:
+                floats, words = as_floats(value), name.replace("_", " ")
+                require_not_infinite(words, floats, unit)
+                if np.any(floats < 0.0):
+                    raise ValueError(f"{words} must not be negative, got {np.min(floats):g} {unit}")
+                object.__setattr__(self, name, floats)
+
+
+def scaling_ceiling(mass: float, scattering_length: ArrayLike) -> Floats:
+    """Largest K3 = 201 hbar a^4/m of identical bosons near a resonance, where a is the only length. [m^6/s] [2]
+
+    For a < 0 the factor is larger at each Efimov resonance; far from a magnetic resonance, where a is no longer than
+    the range of the forces, there is no such law.
+    """
+    a = np.asarray(scattering_length, dtype=np.float64)
+    ceiling: Floats = SCALING_CEILING * reduced_planck * a**4 / mass
+    return ceiling
+
+
+def unitary_ceiling(mass: float, temperature: ArrayLike) -> Floats:
+    """Largest K3 of identical bosons at a temperature, 36 sqrt(3) pi^2 hbar^5/(m^3 (kT)^2). [m^6/s] [3]"""
+    kT = boltzmann * np.asarray(temperature, dtype=np.float64)
+    ceiling: Floats = 36.0 * math.sqrt(3.0) * math.pi**2 * reduced_planck**5 / (mass**3 * kT**2)
+    return ceiling
+
+
+def noise_heating_rate(frequency: ArrayLike, spectral_density: ArrayLike) -> Floats:
+    """Rate pi^2 f^2 S(2f) at which the energy along an axis grows by e. [1/s] [4]
+
+    Parameters
+    ----------
+    frequency : array_like. [Hz] Of the trap, along the axis.
+    spectral_density : array_like. [1/Hz] One-sided, of the relative intensity, at twice that frequency.
+    """
+    f, S = np.asarray(frequency, dtype=np.float64), np.asarray(spectral_density, dtype=np.float64)
+    rate: Floats = math.pi**2 * f**2 * S
+    return rate
