@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from gettext import gettext as _
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
+from app.language import translate as _
 from app.units import format_quantity
 from app.words import number, percent, times
 from physics.caveats import Caveat, Severity

@@ -7,11 +7,11 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from gettext import gettext as _
 from typing import TYPE_CHECKING
 
 import numpy as np
 
+from app.language import translate as _
 from app.quantities import QUANTITIES, Need, Row, display_factor
 from app.units import best_unit, format_quantity
 

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import math
 from dataclasses import replace
-from gettext import gettext as _
 from typing import cast
 
 import numpy as np
@@ -13,6 +12,7 @@ from contourpy import LineType, contour_generator
 from app.engine import CloudAnswer, MapAnswer
 from app.figures.picture import Array, Axis, Curve, Field, Label, Mark, Picture, Role
 from app.figures.ticks import power_text
+from app.language import translate as _
 from app.words import number, verdict
 
 SPLIT = 0.62

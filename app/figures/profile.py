@@ -4,13 +4,13 @@ from __future__ import annotations
 
 import math
 from enum import Enum
-from gettext import gettext as _
 
 import numpy as np
 
 from app.engine import ProfileAnswer, round_up
 from app.figures.picture import Array, Axis, Curve, Picture, Role
 from app.figures.ticks import power_text
+from app.language import translate as _
 from app.units import factor
 
 AXES = ("x", "y", "z")

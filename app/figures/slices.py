@@ -4,12 +4,12 @@ from __future__ import annotations
 
 import math
 from enum import Enum
-from gettext import gettext as _
 
 import numpy as np
 
 from app.engine import SlicesAnswer
 from app.figures.picture import Array, Axis, Curve, Mark, Picture, Role
+from app.language import translate as _
 from app.quantities import QUANTITIES, Row, display_factor
 from app.words import number, temperature
 
