@@ -42,10 +42,6 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _("The scattering length is {value}, not repulsive, so the ideal gas is used."),
             _length,
         ),
-        "model_not_offered": (
-            _("The model {asked} is not offered here, so the ideal gas is used. Choose semi-ideal or exact levels."),
-            _PLAIN,
-        ),
         "model_bosons_only": (_("The model {asked} describes bosons; the ideal Fermi gas is used."), _PLAIN),
         "length_unknown": (
             _("The scattering length is not known{why}: collision rates and shifts by interaction are left out."),

@@ -37,6 +37,10 @@ COLLAPSE = 0.575
 """N0 |a|/aho above which an attractive condensate in an isotropic trap collapses. [1]"""
 
 
+_REPULSIVE = (Model.SEMI_IDEAL, Model.HARTREE_FOCK)
+"""Models whose condensate is that of Thomas and Fermi."""
+
+
 class Severity(Enum):
     """How much a caveat weighs.
 
@@ -75,7 +79,6 @@ CAVEAT_IDS = MappingProxyType(
     {
         "model_length_unknown": "no value: ideal used, the scattering length is not known",
         "model_not_repulsive": "scattering length [m]: ideal used, the model needs a repulsive gas",
-        "model_not_offered": "no value: ideal used, the model is not offered",
         "model_bosons_only": "no value: ideal used, the model describes bosons",
         "length_unknown": "no value: scattering length not known, so neither collisions nor shifts by interaction",
         "length_recalled": "scattering length [m]: recalled from its source, not read there",
@@ -178,7 +181,7 @@ def _boson_levels(solved: Equilibrium) -> Iterator[Caveat]:
         return
     if over_t > 1.0:
         # A Thomas-Fermi condensate spans many levels however cold it is; then only its few thermal atoms are concerned.
-        if solved.model is Model.SEMI_IDEAL and _lowest(solved.chemical_potential / level) > 1.0:
+        if solved.model in _REPULSIVE and _lowest(solved.chemical_potential / level) > 1.0:
             yield Caveat(id="frozen_thermal", severity=Severity.WARNING, value=over_t)
         else:
             frozen = _frozen_axes(solved, solved.thermal_energy)
@@ -205,16 +208,17 @@ def _bosons(solved: Equilibrium) -> Iterator[Caveat]:
             yield Caveat(id="collapse", severity=Severity.REFUSAL, value=excess, numbers=numbers)
         else:
             yield Caveat(id="attractive", severity=Severity.NOTE, value=_lowest(length), numbers=numbers)
-    if solved.model is Model.SEMI_IDEAL:
+    if solved.model in _REPULSIVE:
         weakest = _lowest(np.where(condensed > 0.0, reduced, np.inf))
         if weakest < _THOMAS_FERMI:
             yield Caveat(id="thomas_fermi", severity=Severity.WARNING, value=weakest)
+    if solved.model is Model.SEMI_IDEAL:
         ratio = np.asarray(solved.reduced_temperature)
         near = (ratio > _NEAR_THRESHOLD[0]) & (ratio < _NEAR_THRESHOLD[1])
         if np.any(near):
             yield Caveat(id="near_threshold", severity=Severity.NOTE, value=float(np.max(ratio[near])))
     # The condensate of a gas without interaction is far denser than a real one, so it is not what is judged.
-    density = solved.peak_density if solved.model is Model.SEMI_IDEAL else _thermal_density(solved)
+    density = solved.peak_density if solved.model in _REPULSIVE else _thermal_density(solved)
     dense, long = _highest(density * np.abs(length) ** 3), _highest(np.abs(length) / solved.thermal_wavelength)
     if dense > _DENSE:
         yield Caveat(id="dense", severity=Severity.WARNING, value=dense)

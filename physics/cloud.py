@@ -115,6 +115,7 @@ def equilibrium(
     ValueError : unless fermi_threshold and efficiency are positive.
     """
     from physics.exact_levels import ExactLevels
+    from physics.hartree_fock import HartreeFock
     from physics.ideal_bose import IdealBose
     from physics.ideal_fermi import IdealFermi
     from physics.semi_ideal import SemiIdeal
@@ -131,7 +132,12 @@ def equilibrium(
     if cloud.statistics is Statistics.FERMI:
         kind = IdealFermi
     else:
-        kind = {Model.IDEAL: IdealBose, Model.EXACT_LEVELS: ExactLevels, Model.SEMI_IDEAL: SemiIdeal}[model]
+        kind = {
+            Model.IDEAL: IdealBose,
+            Model.EXACT_LEVELS: ExactLevels,
+            Model.SEMI_IDEAL: SemiIdeal,
+            Model.HARTREE_FOCK: HartreeFock,
+        }[model]
     return kind(
         cloud=cloud, model=model, replaced=replaced, fermi_threshold=float(fermi_threshold), efficiency=efficiency
     )
@@ -143,9 +149,7 @@ def _obstacle(cloud: Cloud, model: Model) -> Replacement | None:
         return None
     if cloud.statistics is Statistics.FERMI:
         return Replacement.BOSONS_ONLY
-    if model not in AVAILABLE_MODELS:
-        return Replacement.NOT_OFFERED
-    if model is Model.SEMI_IDEAL:
+    if model in (Model.SEMI_IDEAL, Model.HARTREE_FOCK):
         if np.any(np.isnan(cloud.length)):
             return Replacement.LENGTH_UNKNOWN
         if np.any(cloud.length <= 0.0):

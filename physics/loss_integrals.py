@@ -26,6 +26,7 @@ from physics.equation_of_state import trapped_log_fugacity
 from physics.equilibria import Equilibrium
 from physics.exact_levels import ExactLevels, ground_distance
 from physics.harmonic_integrals import bose_mean, fermi_mean
+from physics.hartree_fock import HartreeFock
 from physics.ideal_bose import IdealBose
 from physics.ideal_fermi import IdealFermi
 from physics.oscillator_levels import COARSE_ORDER, OscillatorLevels
@@ -114,6 +115,8 @@ def two_and_three_body_densities(equilibrium: Equilibrium) -> tuple[Floats, Floa
             return _ideal_fermi(solved)
         if isinstance(solved, ExactLevels):
             return _exact_levels(solved)
+        if isinstance(solved, HartreeFock):
+            return solved.pair_density, solved.triple_density
     raise TypeError(f"no mean density for losses is known for {type(solved).__name__}")
 
 

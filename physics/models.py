@@ -23,8 +23,8 @@ class Model(Enum):
         return self.value
 
 
-AVAILABLE_MODELS = (Model.IDEAL, Model.EXACT_LEVELS, Model.SEMI_IDEAL)
-"""The models that `equilibrium` can use; it answers a request for any other with the ideal one, and says so."""
+AVAILABLE_MODELS = tuple(Model)
+"""The models that `equilibrium` can use."""
 
 
 class Replacement(Enum):
@@ -32,5 +32,4 @@ class Replacement(Enum):
 
     LENGTH_UNKNOWN = "scattering length unknown"
     NOT_REPULSIVE = "scattering length not positive"
-    NOT_OFFERED = "model not offered"
     BOSONS_ONLY = "model for bosons only"

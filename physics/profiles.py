@@ -1,7 +1,7 @@
 """Density of a trapped cloud along a trap axis, and its column density.
 
-A model answers with the same formulas as for its other quantities: local density for ideal and semi-ideal gases, the
-propagator for exact levels. In local density an ideal condensate has no width of its own; it is given that of the
+A model answers with the same formulas as for its other quantities: local density for ideal, semi-ideal and
+Hartree-Fock gases, the propagator for exact levels. In local density an ideal condensate has no width of its own; it is given that of the
 oscillator's ground level, a Gaussian. The classical profile is the Boltzmann cloud of the same N and T.
 """
 
@@ -18,6 +18,8 @@ from physics import semi_ideal_integrals as integrals
 from physics.checks import Floats
 from physics.equilibria import Equilibrium
 from physics.exact_levels import ExactLevels, ground_distance
+from physics.hartree_fock import HartreeFock
+from physics.hartree_fock_integrals import column_densities, local_densities
 from physics.ideal_bose import IdealBose
 from physics.ideal_fermi import IdealFermi
 from physics.oscillator_levels import OscillatorLevels
@@ -104,6 +106,8 @@ def _parts(equilibrium: Equilibrium) -> _Parts:
         return lambda x, axis, along: _ideal_fermi(equilibrium, x, axis, along)
     if isinstance(equilibrium, ExactLevels):
         return lambda x, axis, along: _exact_levels(equilibrium, x, axis, along)
+    if isinstance(equilibrium, HartreeFock):
+        return lambda x, axis, along: _hartree_fock(equilibrium, x, axis, along)
     raise TypeError(f"no profile is known for {type(equilibrium).__name__}")
 
 
@@ -169,6 +173,16 @@ def _semi_ideal(equilibrium: SemiIdeal, x: Floats, axis: int, along: int | None)
     thermal[inside] = integrals.column_through_shell(height[inside])
     condensate: Floats = unit * scale * 4.0 / (3.0 * _ROOT_PI) * depth**1.5
     return thermal * unit, condensate
+
+
+def _hartree_fock(equilibrium: HartreeFock, x: Floats, axis: int, along: int | None) -> tuple[Floats, Floats]:
+    height = float(equilibrium.log_fugacity) - _potential(equilibrium, x, axis)  # (mu - V)/kT
+    # At the centre rounding must not take a cloud that is all but condensed over the edge.
+    condensed = float(equilibrium.condensate_fraction) > 0.0
+    densities = local_densities if along is None else column_densities
+    thermal, condensate = densities(equilibrium.repulsion, height, condensed=condensed)
+    unit = _density_unit(equilibrium, along)
+    return thermal * unit, condensate * unit
 
 
 def _exact_levels(equilibrium: ExactLevels, x: Floats, axis: int, along: int | None) -> tuple[Floats, Floats]:

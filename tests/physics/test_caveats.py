@@ -31,6 +31,7 @@ def found(solved: Equilibrium, **given: Any) -> dict[str, Caveat]:
 def test_a_plain_cloud_has_no_caveat(bosons: Maker, fermions: Maker) -> None:
     assert caveats_of(bosons(**PLAIN), certainty=Certainty.SEEN) == ()
     assert caveats_of(bosons(**COLD)) == ()
+    assert caveats_of(bosons(Model.HARTREE_FOCK, **COLD)) == ()
     assert caveats_of(fermions(**PLAIN, spin_components=2, scattering_length=1e-9)) == ()
 
 
@@ -39,7 +40,7 @@ def test_a_plain_cloud_has_no_caveat(bosons: Maker, fermions: Maker) -> None:
     [
         ({"scattering_length": None}, "model_length_unknown", None),
         ({"scattering_length": -1e-10}, "model_not_repulsive", -1e-10),
-        ({"model": Model.HARTREE_FOCK}, "model_not_offered", None),
+        ({"model": Model.HARTREE_FOCK, "scattering_length": -1e-10}, "model_not_repulsive", -1e-10),
     ],
 )
 def test_a_replaced_model_is_told(bosons: Maker, given: dict[str, Any], id: str, value: float | None) -> None:
@@ -114,8 +115,9 @@ def test_frozen_axes_make_the_gas_low_dimensional(bosons: Maker, temperature: fl
     assert caveat.numbers == {"frozen_axes": frozen}
 
 
-def test_a_large_cold_condensate_is_three_dimensional(bosons: Maker) -> None:
-    caveats = found(bosons(**{**PLAIN, "temperature": 1e-9}))
+@pytest.mark.parametrize("model", [Model.SEMI_IDEAL, Model.HARTREE_FOCK])
+def test_a_large_cold_condensate_is_three_dimensional(bosons: Maker, model: Model) -> None:
+    caveats = found(bosons(model, **{**PLAIN, "temperature": 1e-9}))
     assert set(caveats) == {"frozen_thermal"}
     assert caveats["frozen_thermal"].value == pytest.approx(planck * 50.0 / (boltzmann * 1e-9), rel=1e-12)
 
@@ -134,12 +136,14 @@ def test_small_condensates_are_not_of_thomas_and_fermi(bosons: Maker) -> None:
     ratio = float(solved.condensate_atoms) * 1e-12 / float(solved.oscillator_length)
     assert weak["thomas_fermi"].value == pytest.approx(ratio, rel=1e-12)
     assert "thomas_fermi" not in found(bosons(**COLD))
+    assert "thomas_fermi" in found(bosons(Model.HARTREE_FOCK, **COLD, scattering_length=1e-12))
     assert "thomas_fermi" not in found(bosons(**PLAIN, scattering_length=1e-12))  # no condensate
 
 
 @pytest.mark.parametrize(("t", "raised"), [(0.85, False), (0.95, True), (1.05, False)])
 def test_just_below_threshold_thermal_repulsion_counts(bosons: Maker, t: float, raised: bool) -> None:
     threshold = float(bosons(**PLAIN).critical_temperature)
+    assert "near_threshold" not in found(bosons(Model.HARTREE_FOCK, **{**PLAIN, "temperature": t * threshold}))
     caveats = found(bosons(**{**PLAIN, "temperature": t * threshold}))
     assert ("near_threshold" in caveats) is raised
     if raised:

@@ -69,9 +69,12 @@ def test_defaults_are_semi_ideal_for_bosons_and_ideal_for_fermions(bosons: Maker
         (Model.SEMI_IDEAL, {"scattering_length": [1e-9, math.nan]}, Replacement.LENGTH_UNKNOWN),
         (Model.SEMI_IDEAL, {"scattering_length": 0.0}, Replacement.NOT_REPULSIVE),
         (Model.SEMI_IDEAL, {"scattering_length": [1e-9, -1e-9]}, Replacement.NOT_REPULSIVE),
-        (Model.HARTREE_FOCK, {}, Replacement.NOT_OFFERED),
+        (Model.HARTREE_FOCK, {"scattering_length": None}, Replacement.LENGTH_UNKNOWN),
+        (Model.HARTREE_FOCK, {"scattering_length": 0.0}, Replacement.NOT_REPULSIVE),
+        (Model.HARTREE_FOCK, {"scattering_length": -1e-9}, Replacement.NOT_REPULSIVE),
         (Model.SEMI_IDEAL, FERMI, Replacement.BOSONS_ONLY),
         (Model.EXACT_LEVELS, FERMI, Replacement.BOSONS_ONLY),
+        (Model.HARTREE_FOCK, FERMI, Replacement.BOSONS_ONLY),
     ],
 )
 def test_a_model_that_cannot_hold_gives_way_to_the_ideal_one(

@@ -36,7 +36,7 @@ def test_bosons_of_any_number_and_temperature_have_finite_answers(
     assert all(np.isnan(getattr(solved, name)) for name in OF_FERMIONS)
     assert solved.fugacity > 0.0  # inf where e^(mu/kT) is out of range
     assert 0.0 <= solved.condensate_fraction <= 1.0
-    has_radii = model is Model.SEMI_IDEAL and solved.condensate_fraction > 0.0
+    has_radii = model in (Model.SEMI_IDEAL, Model.HARTREE_FOCK) and solved.condensate_fraction > 0.0
     assert np.all(np.isfinite(solved.condensate_radii)) == has_radii
 
 
