@@ -15,11 +15,16 @@ from app.units import (
     DEPTH,
     EFFICIENCY,
     FREQUENCY,
+    HEATING_RATE,
+    INTENSITY_NOISE,
+    LIFETIME,
     MAGNETIC_FIELD,
     PHASE_SPACE_DENSITY,
     REDUCED_TEMPERATURE,
     SCATTERING_LENGTH,
     TEMPERATURE,
+    THREE_BODY_RATE,
+    TWO_BODY_RATE,
     Kind,
     Quantity,
 )
@@ -80,6 +85,23 @@ class CloudChoice:
 
 
 @dataclass(frozen=True, kw_only=True)
+class LossesChoice:
+    """What takes atoms away or heats them; None: as the data have it, or unknown.
+
+    background_lifetime : [s] 1/e, of collisions with the background gas
+    two_body, three_body : [m^3/s], [m^6/s] K of a thermal gas
+    heating : [K/s] that does not depend on density
+    intensity_noise : [1/Hz] one-sided, fractional, at twice the trap frequencies
+    """
+
+    background_lifetime: Quantity | None = None
+    two_body: Quantity | None = None
+    three_body: Quantity | None = None
+    heating: Quantity | None = None
+    intensity_noise: Quantity | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
 class TargetChoice:
     """What counts as reached: at most one of the first three; and an assumed efficiency of evaporation."""
 
@@ -110,6 +132,7 @@ class Plan:
     species: SpeciesChoice
     trap: TrapChoice
     cloud: CloudChoice
+    losses: LossesChoice = LossesChoice()
     target: TargetChoice = TargetChoice()
     unused: tuple[str, ...] = ()
     source: str = field(default="", compare=False, repr=False)
@@ -177,7 +200,14 @@ _FIELDS = (
         tip="Isotope. Its mass, statistics and scattering data come from the presets, each with its source.",
         required=True,
         # What was said about another species' states and collisions does not carry over.
-        excludes=("species.state", "species.spin_components", "species.scattering_length", "species.field"),
+        excludes=(
+            "species.state",
+            "species.spin_components",
+            "species.scattering_length",
+            "species.field",
+            "losses.two_body",
+            "losses.three_body",
+        ),
     ),
     PlanField(
         path="species.state",
@@ -252,6 +282,46 @@ _FIELDS = (
         entry=Entry.MODEL,
         flag="--model",
         tip="Description of the gas; by default semi-ideal for bosons and ideal for fermions.",
+    ),
+    PlanField(
+        path="losses.background_lifetime",
+        label="Background lifetime",
+        entry=Entry.QUANTITY,
+        kind=LIFETIME,
+        flag="--background-lifetime",
+        tip="1/e lifetime of the atoms by collisions with the background gas.",
+    ),
+    PlanField(
+        path="losses.two_body",
+        label="Two-body loss K₂",
+        entry=Entry.QUANTITY,
+        kind=TWO_BODY_RATE,
+        flag="--two-body",
+        tip="dn/dt = −K₂ n² of a thermal gas, n of one spin state; overrides the data. A condensate loses half of it.",
+    ),
+    PlanField(
+        path="losses.three_body",
+        label="Three-body loss K₃",
+        entry=Entry.QUANTITY,
+        kind=THREE_BODY_RATE,
+        flag="--three-body",
+        tip="dn/dt = −K₃ n³ of a thermal gas; overrides the data. A condensate loses one sixth of it.",
+    ),
+    PlanField(
+        path="losses.heating",
+        label="Heating",
+        entry=Entry.QUANTITY,
+        kind=HEATING_RATE,
+        flag="--heating",
+        tip="Rise of temperature per time by light, noise and whatever else does not depend on density.",
+    ),
+    PlanField(
+        path="losses.intensity_noise",
+        label="Intensity noise",
+        entry=Entry.QUANTITY,
+        kind=INTENSITY_NOISE,
+        flag="--intensity-noise",
+        tip="One-sided spectrum of the light's relative intensity at twice the trap frequencies; heats an optical trap.",
     ),
     PlanField(
         path="target.reduced_temperature",

@@ -30,6 +30,8 @@ _BY_SI_UNIT: Mapping[str, tuple[tuple[str, str | Decimal], ...]] = {
     "J/T": (("muB", repr(bohr_magneton)), ("J/T", "1")),
     "K/s": (("nK/s", "1e-9"), ("µK/s", "1e-6"), ("K/s", "1")),
     "1/s": (("1/s", "1"),),
+    "1/Hz": (("1/Hz", "1"),),
+    "m^2": (("m^2", "1"), ("cm^2", "1e-4")),
     "1/m": (("1/m", "1"), ("1/µm", "1e6")),
     "1/m^2": (("1/m^2", "1"), ("1/cm^2", "1e4"), ("1/µm^2", "1e12")),
     "1/m^3": (("1/m^3", "1"), ("1/cm^3", "1e6"), ("cm^-3", "1e6"), ("1/µm^3", "1e18")),
@@ -100,6 +102,24 @@ SCATTERING_LENGTH = Kind(
 )
 MAGNETIC_FIELD = Kind(
     name="magnetic field", si_unit="T", units=("G", "mG", "mT", "T"), low=0.0, high=10.0, example="155.2 G"
+)
+LIFETIME = Kind(name="lifetime", si_unit="s", units=("s", "ms", "min", "h"), low=1e-6, high=1e9, example="60 s")
+TWO_BODY_RATE = Kind(
+    name="two-body rate constant", si_unit="m^3/s", units=("cm^3/s", "m^3/s"), low=0.0, high=1e-9, example="1e-14 cm^3/s"
+)
+THREE_BODY_RATE = Kind(
+    name="three-body rate constant",
+    si_unit="m^6/s",
+    units=("cm^6/s", "m^6/s"),
+    low=0.0,
+    high=1e-27,
+    example="4e-29 cm^6/s",
+)
+HEATING_RATE = Kind(
+    name="heating rate", si_unit="K/s", units=("nK/s", "µK/s", "K/s"), low=0.0, high=10.0, example="20 nK/s"
+)
+INTENSITY_NOISE = Kind(
+    name="intensity noise", si_unit="1/Hz", units=("1/Hz",), low=0.0, high=1.0, example="1e-12 1/Hz"
 )
 REDUCED_TEMPERATURE = Kind(name="reduced temperature", si_unit="", units=("",), low=1e-4, high=1e4, example="0.5")
 PHASE_SPACE_DENSITY = Kind(name="phase-space density", si_unit="", units=("",), low=1e-15, high=1e6, example="2.612")

@@ -15,6 +15,7 @@ from app.choices import (
     TARGETS,
     CloudChoice,
     Entry,
+    LossesChoice,
     Plan,
     PlanError,
     PlanField,
@@ -32,6 +33,7 @@ __all__ = [
     "TARGETS",
     "CloudChoice",
     "Entry",
+    "LossesChoice",
     "Plan",
     "PlanError",
     "PlanField",
@@ -55,8 +57,8 @@ def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: str | None 
     texts : dotted path of PLAN_FIELDS -> text; an empty text removes an optional entry
     where : what errors call the place; by default the flag of each field
 
-    A new species drops what was said of the other one's state, spin states, scattering length and field; a scattering
-    length drops a field and the other way round; a target drops the other targets.
+    A new species drops what was said of the other one's state, spin states, scattering length, field and losses by
+    collision; a scattering length drops a field and the other way round; a target drops the other targets.
 
     Raises
     ------

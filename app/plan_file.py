@@ -16,6 +16,7 @@ from app.choices import (
     PLAN_FIELDS,
     CloudChoice,
     Entry,
+    LossesChoice,
     Plan,
     PlanError,
     PlanField,
@@ -37,7 +38,6 @@ _CLOUD_KEYS = tuple(f.name for f in PLAN_FIELDS.values() if f.section == "cloud"
 KEPT: Mapping[str, tuple[str, ...]] = {
     "trap.beam": ("name", "on", "wavelength", "power", "waist", "waists", "direction", "focus"),
     "trap.coils": ("axis", "centre", "bias", "gradient", "curvature", "levitation", "knife"),
-    "losses": ("background_lifetime", "two_body", "three_body", "heating", "intensity_noise"),
     "ramp": ("stage",),
     "ramp.stage": ("duration", *_MOVE, "move"),
     "ramp.stage.move": _MOVE,
@@ -52,7 +52,7 @@ KEPT: Mapping[str, tuple[str, ...]] = {
 }
 """Sections of the format that this version keeps as they are and does not compute, with their keys."""
 
-_SECTIONS = ("species", "trap", "cloud", "target")
+_SECTIONS = ("species", "trap", "cloud", "losses", "target")
 
 
 class _Written(str):
@@ -136,6 +136,7 @@ def build_plan(entries: Mapping[str, object], where: Callable[[PlanField], str])
             species=species,
             trap=TrapChoice(**section("trap")),
             cloud=CloudChoice(**section("cloud")),
+            losses=LossesChoice(**section("losses")),
             target=target,
         )
     except PlanError as error:

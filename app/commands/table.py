@@ -30,6 +30,10 @@ _QUANTITIES = {
     "depth": "trap.depth",
     "scattering_length": "species.scattering_length",
     "field": "species.field",
+    "background_lifetime": "losses.background_lifetime",
+    "two_body": "losses.two_body",
+    "three_body": "losses.three_body",
+    "heating": "losses.heating",
     "reduced_temperature": "target.reduced_temperature",
     "efficiency": "target.efficiency",
 }

@@ -44,10 +44,10 @@ def plan_with_entry(plan: Plan, path: str, value: object) -> Plan:
     Raises PlanError where no plan can have it.
     """
     field = PLAN_FIELDS[path]
-    entries: dict[str, Any] = {field.name: value}
-    if value is not None:
-        entries |= {PLAN_FIELDS[other].name: None for other in field.excludes}
-    changes: dict[str, Any] = {field.section: replace(getattr(plan, field.section), **entries)}
+    entries: dict[str, dict[str, Any]] = {field.section: {field.name: value}}
+    for other in (PLAN_FIELDS[path] for path in field.excludes if value is not None):
+        entries.setdefault(other.section, {})[other.name] = None
+    changes: dict[str, Any] = {name: replace(getattr(plan, name), **entry) for name, entry in entries.items()}
     return replace(plan, **changes)
 
 

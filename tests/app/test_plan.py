@@ -21,6 +21,7 @@ from app.plan import (
     PLAN_FIELDS,
     CloudChoice,
     Entry,
+    LossesChoice,
     Plan,
     PlanError,
     SpeciesChoice,
@@ -38,9 +39,12 @@ from app.units import (
     DEPTH,
     EFFICIENCY,
     FREQUENCY,
+    INTENSITY_NOISE,
+    LIFETIME,
     REDUCED_TEMPERATURE,
     SCATTERING_LENGTH,
     TEMPERATURE,
+    THREE_BODY_RATE,
     Quantity,
     read_quantity,
 )
@@ -85,10 +89,16 @@ def test_a_file_of_format_1_is_read_with_all_its_sections() -> None:
     )
     assert plan.target.reduced_temperature == read_quantity("0.5", REDUCED_TEMPERATURE)
     assert plan.target.efficiency == read_quantity("2.5", EFFICIENCY)
+    assert plan.losses == LossesChoice(
+        background_lifetime=read_quantity("60 s", LIFETIME),
+        three_body=read_quantity("4e-29 cm^6/s", THREE_BODY_RATE),
+        intensity_noise=read_quantity("1e-12 1/Hz", INTENSITY_NOISE),
+    )
+    assert plan.losses.three_body is not None
+    assert plan.losses.three_body.value == pytest.approx(4e-41, rel=1e-14)
     assert plan.unused == (
         "trap.beam",
         "trap.coils",
-        "losses",
         "ramp",
         "limits",
         "measured",
@@ -144,6 +154,22 @@ def test_numbers_without_unit_may_stand_bare() -> None:
             r"ramp\.stage\.duraton is not .* nearest is ramp\.stage\.duration",
         ),
         (PLAIN + '"a.b" = 1\n', r"cloud\.a\.b is not a key of a plan"),
+        (
+            PLAIN + '[losses]\nthree_body = "4e-29"\n',
+            r'losses\.three_body: three-body rate constant needs a unit: type for instance "4e-29 cm\^6/s"',
+        ),
+        (
+            PLAIN + '[losses]\ntwo_body = "1e-14 cm^6/s"\n',
+            r'losses\.two_body: "cm\^6/s" is not a unit of two-body rate constant: cm\^3/s, m\^3/s are read',
+        ),
+        (
+            PLAIN + '[losses]\nheating = "-1 nK/s"\n',
+            r'losses\.heating: heating rate must be from 0 nK/s to 10 K/s, got "-1 nK/s"',
+        ),
+        (
+            PLAIN + '[losses]\nbackground_lifetime = 60\n',
+            r'losses\.background_lifetime: needs a unit: write a text in quotes, such as "60 s", not 60$',
+        ),
         (changed('"200 nK"', '"200"'), r'^a\.toml: cloud\.temperature: temperature needs a unit: .* not "200"$'),
         (
             changed('"200 nK"', "200"),
@@ -226,7 +252,13 @@ def test_reading_a_usual_plan_loads_neither_pint_nor_tomlkit() -> None:
 
 
 def test_the_table_names_every_attribute_once() -> None:
-    sections = {"species": SpeciesChoice, "trap": TrapChoice, "cloud": CloudChoice, "target": TargetChoice}
+    sections = {
+        "species": SpeciesChoice,
+        "trap": TrapChoice,
+        "cloud": CloudChoice,
+        "losses": LossesChoice,
+        "target": TargetChoice,
+    }
     expected = {"title"} | {f"{name}.{f.name}" for name, part in sections.items() for f in dataclasses.fields(part)}
     assert set(PLAN_FIELDS) == expected
     flags = [field.flag for field in PLAN_FIELDS.values()]
@@ -385,6 +417,24 @@ def test_a_copied_plan_takes_the_unused_sections_along() -> None:
     assert 'keys = ["87Rb", "41K", "133Cs"]' in again.source
 
 
+def test_losses_are_saved_and_taken_back() -> None:
+    plan = plan_with(parse_plan(PLAIN, "a.toml"), {"losses.background_lifetime": "60(5) s", "losses.heating": "20 nK/s"})
+    written = write_plan(plan)
+    assert '[losses]\nbackground_lifetime = "60(5) s"\nheating = "20 nK/s"' in written
+    assert parse_plan(written, "b.toml") == plan
+    without = plan_with(plan, {"losses.background_lifetime": "", "losses.heating": ""})
+    assert without.losses == LossesChoice()
+    assert parse_plan(write_plan(without), "c.toml") == without
+
+
+def test_another_species_drops_what_was_said_of_losses_by_collisions() -> None:
+    texts = {"losses.background_lifetime": "60 s", "losses.two_body": "1e-14 cm^3/s", "losses.three_body": "1e-28 cm^6/s"}
+    plan = plan_with(plan_with(parse_plan(PLAIN, "a.toml"), texts), {"species.key": "23Na"})
+    assert plan.losses.background_lifetime is not None
+    assert plan.losses.two_body is None
+    assert plan.losses.three_body is None
+
+
 def test_a_file_without_the_section_gets_it() -> None:
     plan = plan_with(parse_plan(PLAIN, "a.toml"), {"target.efficiency": "2.5", "title": "Mine"})
     written = write_plan(plan)
@@ -419,6 +469,9 @@ def plans(draw: st.DrawFn) -> Plan:
         "cloud.atoms": draw(number_texts(1, 10**9)),
         "cloud.temperature": draw(number_texts(1, 9000)) + draw(st.sampled_from([" nK", " µK", " kHz"])),
         "cloud.model": optional(st.sampled_from([model.value for model in AVAILABLE_MODELS])),
+        "losses.background_lifetime": optional(number_texts(1, 900).map(lambda t: t + " s")),
+        "losses.three_body": optional(number_texts(1, 99).map(lambda t: t + "e-30 cm^6/s")),
+        "losses.heating": optional(number_texts(1, 900).map(lambda t: t + " nK/s")),
         "target.efficiency": optional(number_texts(1, 5)),
     }
     if collisions:
