@@ -1,8 +1,8 @@
 """Density of a trapped cloud along a trap axis, and its column density.
 
-A model answers with the same formulas as for its other quantities: local density for ideal, semi-ideal and
-Hartree-Fock gases, the propagator for exact levels. In local density an ideal condensate has no width of its own; it is given that of the
-oscillator's ground level, a Gaussian. The classical profile is the Boltzmann cloud of the same N and T.
+A model answers with the same formulas as for its other quantities: local density for ideal, semi-ideal and Hartree-Fock
+gases, the propagator for exact levels. In local density an ideal condensate has no width of its own; it is given that
+of the oscillator's ground level, a Gaussian. The classical profile is the Boltzmann cloud of the same N and T.
 """
 
 from __future__ import annotations
@@ -180,7 +180,7 @@ def _hartree_fock(equilibrium: HartreeFock, x: Floats, axis: int, along: int | N
     # At the centre rounding must not take a cloud that is all but condensed over the edge.
     condensed = float(equilibrium.condensate_fraction) > 0.0
     densities = local_densities if along is None else column_densities
-    thermal, condensate = densities(equilibrium.repulsion, height, condensed=condensed)
+    thermal, condensate = densities(float(equilibrium.repulsion), height, condensed=condensed)
     unit = _density_unit(equilibrium, along)
     return thermal * unit, condensate * unit
 
