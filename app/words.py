@@ -203,6 +203,12 @@ def shown_unit(unit: str) -> str:
     return "" if unit == "1" else unit
 
 
+def symbol_of(row: Row, answer: CloudAnswer) -> str:
+    """The symbol for the statistics at hand, where a row has one for each: "T/Tc or T/TF"."""
+    symbols = row.symbol.split(" or ")
+    return symbols[0] if answer.bosons else symbols[-1]
+
+
 def row_tip(row: Row) -> str:
     """Formula, validity and source of a quantity, for its tip."""
     return "\n".join(

@@ -11,7 +11,7 @@ import numpy as np
 from app.engine import CloudAnswer
 from app.quantities import QUANTITIES, Need, Row, display_factor
 from app.units import best_unit
-from app.words import number, reason_missing, row_tip, shown_unit, value_text
+from app.words import number, reason_missing, row_tip, shown_unit, symbol_of, value_text
 
 _RAISED = str.maketrans("123456789", "¹²³⁴⁵⁶⁷⁸⁹")
 
@@ -51,12 +51,12 @@ def readings_of(answer: CloudAnswer, chosen_units: Mapping[str, str]) -> dict[st
         if need in (Need.BOSONS, Need.FERMIONS):
             continue
         if need is not None:
-            readings[name] = Reading(_symbol(row, answer), "–", reason=reason_missing(need))
+            readings[name] = Reading(symbol_of(row, answer), "–", reason=reason_missing(need))
             continue
         unit = chosen_units.get(name, "")
         if unit not in row.units:
             unit = unit_for(row, answer.value(name))
-        readings[name] = Reading(_symbol(row, answer), value_text(answer, row, unit), shown_unit(unit))
+        readings[name] = Reading(symbol_of(row, answer), value_text(answer, row, unit), shown_unit(unit))
     return readings
 
 
@@ -83,9 +83,3 @@ def printed_unit(unit: str) -> str:
     """A unit as it is set in print: "cm⁻³" for "1/cm^3"."""
     found = re.fullmatch(r"1/(\w+?)(?:\^(\d))?", unit)
     return unit if found is None else f"{found[1]}⁻{(found[2] or '1').translate(_RAISED)}"
-
-
-def _symbol(row: Row, answer: CloudAnswer) -> str:
-    """The symbol for the statistics at hand, where a row has one for each: "T/Tc or T/TF"."""
-    symbols = row.symbol.split(" or ")
-    return symbols[0] if answer.bosons else symbols[-1]

@@ -1,0 +1,165 @@
+"""The numbers that go in, each with the text it came from: the plan's, the data's, constants."""
+
+from __future__ import annotations
+
+from app.choices import PLAN_FIELDS
+from app.explanations.explanation import Input, Origin
+from app.explanations.sheet import Sheet, once
+from app.explanations.terms import Leaf
+from app.units import Quantity, format_quantity
+from physics.constants import boltzmann, planck, reduced_planck
+from physics.equilibria import INTERACTION_COEFFICIENT
+from physics.statistics import zeta
+
+_CODATA = "CODATA 2022"
+_ZETA = "Riemann zeta function, DLMF 25.2"
+
+
+def _typed(sheet: Sheet, symbol: str, meaning: str, quantity: Quantity, unit: str) -> Leaf:
+    return sheet.enter(
+        Input(symbol=symbol, meaning=meaning, text=quantity.text, value=quantity.value, unit=unit, origin=Origin.TYPED)
+    )
+
+
+def _constant(sheet: Sheet, symbol: str, meaning: str, value: float, unit: str, source: str) -> Leaf:
+    text = format_quantity(value, digits=10)
+    return sheet.enter(
+        Input(
+            symbol=symbol, meaning=meaning, text=f"{text} {unit}" if unit != "1" else text, value=value, unit=unit,
+            origin=Origin.CONSTANT, source=source,
+        )
+    )  # fmt: skip
+
+
+@once
+def atoms(sheet: Sheet) -> Leaf:
+    return _typed(sheet, "N", "atom number of one spin state", sheet.answer.plan.cloud.atoms, "1")
+
+
+@once
+def temperature(sheet: Sheet) -> Leaf:
+    return _typed(sheet, "T", "temperature", sheet.answer.plan.cloud.temperature, "K")
+
+
+@once
+def frequencies(sheet: Sheet) -> tuple[Leaf, Leaf, Leaf]:
+    first, second, third = sheet.answer.plan.trap.frequencies
+    return (
+        _typed(sheet, "f₁", "trap frequency along axis 1", first, "Hz"),
+        _typed(sheet, "f₂", "trap frequency along axis 2", second, "Hz"),
+        _typed(sheet, "f₃", "trap frequency along axis 3", third, "Hz"),
+    )
+
+
+@once
+def depth(sheet: Sheet) -> Leaf:
+    quantity = sheet.answer.plan.trap.depth
+    if quantity is None:
+        raise ValueError("the plan has no trap depth")
+    return _typed(sheet, "U", "trap depth", quantity, "J")
+
+
+@once
+def efficiency(sheet: Sheet) -> Leaf:
+    quantity = sheet.answer.plan.target.efficiency
+    if quantity is None:
+        raise ValueError("the plan has no evaporation efficiency")
+    return _typed(sheet, "γ", "assumed efficiency of evaporation, −d ln D/d ln N", quantity, "1")
+
+
+@once
+def mass(sheet: Sheet) -> Leaf:
+    known = sheet.answer.state.isotope.mass
+    return sheet.enter(
+        Input(
+            symbol="m", meaning=f"mass of {sheet.answer.state.key}", text=known.text, value=known.value, unit="kg",
+            origin=Origin.DATA, source=known.source, certainty=known.certainty,
+        )
+    )  # fmt: skip
+
+
+@once
+def scattering_length(sheet: Sheet) -> Leaf | None:
+    """a, or None where it is not known."""
+    answer = sheet.answer
+    typed, used = answer.plan.species.scattering_length, answer.scattering
+    meaning = "scattering length" if sheet.bosons else "scattering length between the spin states"
+    if typed is not None:
+        return _typed(sheet, "a", meaning, typed, "m")
+    if used.value is None:
+        return None
+    field, stated = answer.plan.species.field, answer.state.scattering_length
+    text = format_quantity(used.value, "a0", digits=6)
+    if used.from_resonances and field is not None:
+        text, meaning = f"{text} at {field.text}", f"{meaning}, from the resonances"
+    elif stated is not None:
+        text = stated.text
+    return sheet.enter(
+        Input(
+            symbol="a", meaning=meaning, text=text, value=used.value, unit="m", origin=Origin.DATA, source=used.source,
+            certainty=used.certainty,
+        )
+    )  # fmt: skip
+
+
+@once
+def spin_states(sheet: Sheet) -> Leaf:
+    count, typed = sheet.answer.cloud.spin_components, sheet.answer.plan.species.spin_components
+    return sheet.enter(
+        Input(
+            symbol="s", meaning="equally filled spin states", text=str(count), value=float(count), unit="1",
+            origin=Origin.TYPED if typed is not None else Origin.DATA,
+            source="" if typed is not None else f"the state {sheet.answer.state.name}",
+        )
+    )  # fmt: skip
+
+
+@once
+def fermi_threshold(sheet: Sheet) -> Leaf:
+    typed, meaning = sheet.answer.plan.target.reduced_temperature, "T/TF that counts as the threshold"
+    if typed is not None:
+        return _typed(sheet, "t", meaning, typed, "1")
+    value = sheet.answer.threshold
+    field = PLAN_FIELDS["target.reduced_temperature"]
+    return sheet.enter(
+        Input(
+            symbol="t", meaning=meaning, text=f"{value:g}", value=value, unit="1", origin=Origin.ASSUMED,
+            source=f'"{field.label}" is not given',
+        )
+    )  # fmt: skip
+
+
+@once
+def h(sheet: Sheet) -> Leaf:
+    return _constant(sheet, "h", "Planck constant", planck, "J s", f"{_CODATA}, exact")
+
+
+@once
+def hbar(sheet: Sheet) -> Leaf:
+    return _constant(sheet, "ħ", "reduced Planck constant, h/2π", reduced_planck, "J s", f"{_CODATA}, exact")
+
+
+@once
+def k(sheet: Sheet) -> Leaf:
+    return _constant(sheet, "k", "Boltzmann constant", boltzmann, "J/K", f"{_CODATA}, exact")
+
+
+@once
+def zeta_2(sheet: Sheet) -> Leaf:
+    return _constant(sheet, "ζ(2)", "zeta function at 2, π²/6", zeta(2.0), "1", _ZETA)
+
+
+@once
+def zeta_3(sheet: Sheet) -> Leaf:
+    return _constant(sheet, "ζ(3)", "g₃(1): all that excited levels hold", zeta(3.0), "1", _ZETA)
+
+
+@once
+def zeta_3_2(sheet: Sheet) -> Leaf:
+    return _constant(sheet, "ζ(3/2)", "g_3/2(1): the largest n λ³ of thermal bosons", zeta(1.5), "1", _ZETA)
+
+
+@once
+def interaction_coefficient(sheet: Sheet) -> Leaf:
+    source = "Giorgini, Pitaevskii, Stringari, Phys. Rev. A 54, R4633 (1996)"
+    return _constant(sheet, "c₂", "coefficient of the interaction shift", INTERACTION_COEFFICIENT, "1", source)
