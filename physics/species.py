@@ -192,8 +192,9 @@ class Species:
         return tuple(self.state(name) for name in state.components)
 
 
+@cache
 def species_keys() -> tuple[str, ...]:
-    """Keys of all species in the data, by mass number, then by symbol. Reads no file."""
+    """Keys of all species in the data, by mass number, then by symbol. Reads no file, and the folder once."""
     return tuple(sorted((path.stem for path in PRESETS.glob("*.toml")), key=mass_order))
 
 

@@ -7,7 +7,7 @@ from dataclasses import replace
 from typing import cast
 
 import numpy as np
-from contourpy import LineType, contour_generator
+from contourpy import ContourGenerator, LineType, contour_generator
 
 from app.engine import CloudAnswer, MapAnswer
 from app.figures.picture import Array, Axis, Curve, Field, Label, Mark, Picture, Role
@@ -23,6 +23,8 @@ HIGHEST_RATIO = 100.0
 LOWEST_RATIO = 0.01
 _FRACTIONS = (0.1, 0.5, 0.9)
 _RATIOS = (10.0, 1.0, 0.1)
+_DECADES = _("phase-space density, decades")
+_SHORTEST_LABELLED = 12  # points: a contour that only cuts a corner gets no label
 _THRESHOLD_DENSITY = 2.612375348685488  # zeta(3/2)
 
 
@@ -104,59 +106,50 @@ def _fermion_field(answer: MapAnswer) -> Field:
 
 
 def _boson_lines(answer: MapAnswer) -> list[tuple[Curve, list[Label]]]:
-    density = np.log10(np.maximum(answer.peak_phase_space_density, 1e-30))
+    density = _contours(answer, np.log10(np.maximum(answer.peak_phase_space_density, 1e-30)))
+    fraction = _contours(answer, answer.condensate_fraction)
     # The peak is flat once condensed: a contour at 2.612 itself would wander, the threshold has its own line.
-    decades = [
-        _contour(
-            answer,
-            density,
-            float(exponent),
-            power_text(10.0**exponent),
-            Role.DECADE,
-            _("phase-space density, decades") if exponent == 0 else "",
-        )
+    lines = [
+        _contour(density, exponent, power_text(10.0**exponent), Role.DECADE, _DECADES if exponent == 0 else "")
         for exponent in range(-12, 1)
     ]
-    fractions = [
+    lines += [
         _contour(
-            answer,
-            answer.condensate_fraction,
-            share,
-            f"{share:.0%}".replace("%", " %"),
-            Role.FRACTION,
-            _("condensed fraction") if share == 0.5 else "",
+            fraction, share, f"{100 * share:.0f} %", Role.FRACTION, _("condensed fraction") if share == 0.5 else ""
         )
         for share in _FRACTIONS
     ]
-    return [line for line in (*decades, *fractions) if line is not None]
+    return [line for line in lines if line is not None]
 
 
 def _fermion_lines(answer: MapAnswer) -> list[tuple[Curve, list[Label]]]:
-    logs = np.log10(answer.reduced_temperature)
+    logs = _contours(answer, np.log10(answer.reduced_temperature))
     lines = [
-        _contour(answer, logs, math.log10(ratio), f"{ratio:g}", Role.DECADE, _("T/TF, decades") if ratio == 1.0 else "")
+        _contour(logs, math.log10(ratio), f"{ratio:g}", Role.DECADE, _("T/TF, decades") if ratio == 1.0 else "")
         for ratio in _RATIOS
     ]
     return [line for line in lines if line is not None]
 
 
-def _contour(
-    answer: MapAnswer, field: Array, level: float, text: str, role: Role, name: str
-) -> tuple[Curve, list[Label]] | None:
-    """A contour as one NaN-broken curve in data coordinates, with its label a fifth of the way along it."""
+def _contours(answer: MapAnswer, field: Array) -> ContourGenerator:
     # Contours are straight in logarithms, where interpolating along a cell edge is right too.
-    generator = contour_generator(
+    return contour_generator(
         np.log10(answer.atoms), np.log10(answer.temperature), field, name="serial", line_type=LineType.Separate
     )
-    found = cast(list[Array], generator.lines(level))
-    pieces = [10.0**piece for piece in found if len(piece) > 1]
+
+
+def _contour(
+    contours: ContourGenerator, level: float, text: str, role: Role, name: str
+) -> tuple[Curve, list[Label]] | None:
+    """A contour as one NaN-broken curve in data coordinates, with its label a fifth of the way along it."""
+    pieces = [10.0**piece for piece in cast(list[Array], contours.lines(level)) if len(piece) > 1]
     if not pieces:
         return None
     gap = np.full((1, 2), np.nan)
     points = np.concatenate([part for piece in pieces for part in (piece, gap)])[:-1]
     curve = Curve(name=name, role=role, x=points[:, 0], y=points[:, 1])
     longest = max(pieces, key=len)
-    if len(longest) < answer.atoms.size // 8:
+    if len(longest) < _SHORTEST_LABELLED:
         return curve, []
     ordered = longest[np.argsort(longest[:, 0])]
     x, y = ordered[len(ordered) // 5 if role is Role.DECADE else 4 * len(ordered) // 5]

@@ -27,8 +27,9 @@ _CLOUD_STEP = "atom number and temperature"
 
 @dataclass(frozen=True, eq=False)
 class _Ground:
-    """The map without the cloud, ready to be shown under it."""
+    """The map without the cloud, ready to be shown under it; `depends_on` is all that it was made from."""
 
+    depends_on: object
     answer: MapAnswer
     picture: Picture
 
@@ -59,22 +60,30 @@ class MapPage(Page):
         if cloud is None:
             return None
 
+        depends_on = _what_a_map_depends_on(plan, limits)
+        if self._ground is not None and self._ground.depends_on == depends_on:
+            return None
+
         def job() -> _Ground:
             answer = map_answer(plan, limits)
-            if self._ground is not None and answer is self._ground.answer:
-                return self._ground
-            return _Ground(answer, map_picture(answer, cloud))
+            return _Ground(depends_on, answer, map_picture(answer, cloud))
 
         return job
 
     def take_part(self, answer: Any) -> None:
-        self._ground = answer
-        self.plot.show(self._picture)
+        # A map that was under way when its trap was changed back has nothing to be shown under.
+        if self.cloud is not None and answer.depends_on == self._wanted(self.cloud.plan):
+            self._ground = answer
+            self.plot.show(self._picture)
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
-        if self._ground is not None:
+        # A cloud in another trap waits for the map of that trap, which is under way: one paint instead of two.
+        if self._ground is not None and self._ground.depends_on == self._wanted(cloud.plan):
             self.plot.show(self._picture)
+
+    def _wanted(self, plan: Plan) -> object:
+        return _what_a_map_depends_on(plan, self._wanted_limits(plan))
 
     def _picture(self) -> Picture:
         assert self._ground is not None
@@ -135,6 +144,10 @@ class MapPage(Page):
 
     def csv(self) -> str:
         return "" if self._ground is None else map_csv(self._ground.answer)
+
+
+def _what_a_map_depends_on(plan: Plan, limits: MapLimits) -> object:
+    return plan.species, plan.trap, plan.cloud.model, plan.target, limits
 
 
 def moved_quantity(old: Quantity, value: float, kind: Kind, units: tuple[str, ...]) -> Quantity:

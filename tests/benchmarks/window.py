@@ -1,0 +1,85 @@
+"""From a changed value to the painted window, 1400 x 900, on each page: milliseconds, and as a share of a full draw.
+
+A frame lasts from the edit of the plan until forms, verdict, readouts, caveats and the page's plots are painted with
+the new answer. The full draw is that of the page's canvases alone, in the same run.
+"""
+
+from __future__ import annotations
+
+import os
+import statistics
+import tempfile
+import time
+from collections.abc import Iterator
+from pathlib import Path
+
+os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
+os.environ.setdefault("QT_API", "pyside6")
+
+from PySide6.QtCore import QSize
+from PySide6.QtWidgets import QApplication
+
+from app.plan import Plan, plan_with, read_plan
+from app.window.live_canvas import LiveCanvas
+from app.window.main_window import MainWindow
+from app.window.settings import Settings
+from app.window.start import application
+
+PLAN = Path(__file__).resolve().parents[2] / "presets" / "plans" / "crossed_trap_rubidium.toml"
+FRAMES = 60
+
+
+def _settle(window: MainWindow) -> None:
+    while not window.answers.settled:
+        QApplication.processEvents()
+        time.sleep(5e-5)  # as an event loop at rest, so that the worker has the interpreter to itself
+    QApplication.processEvents()
+
+
+def _frame(window: MainWindow, plan: Plan) -> float:
+    begin = time.perf_counter()
+    window.document.edit(plan, "temperature", "benchmark")
+    _settle(window)
+    return 1e3 * (time.perf_counter() - begin)
+
+
+def _full_draw(canvases: list[LiveCanvas]) -> float:
+    begin = time.perf_counter()
+    for canvas in canvases:
+        canvas.draw()
+    return 1e3 * (time.perf_counter() - begin)
+
+
+def rows() -> Iterator[tuple[str, float, float | None]]:
+    """(what, measured, goal)."""
+    application()
+    base = read_plan(PLAN)
+    # Slow enough that axes hold still, as in a drag; the trap moves with the temperature, so that maps change too.
+    steps = [
+        plan_with(
+            base,
+            {
+                "cloud.temperature": f"{170 + 0.5 * step:.6g}(10) nK",
+                "trap.frequencies": f"{120 + 0.02 * step:.6g} Hz, 120 Hz, 20 Hz",
+            },
+        )
+        for step in range(FRAMES)
+    ]
+    with tempfile.TemporaryDirectory() as folder:
+        window = MainWindow(Settings(Path(folder)), size=QSize(1400, 900))
+        window.show()
+        window.furnish(base)
+        for place, page in enumerate(window.desk.pages):
+            window.desk.show_page(place)
+            _settle(window)
+            for plan in steps[:8]:
+                _frame(window, plan)
+            canvases = [canvas for canvas in page.findChildren(LiveCanvas) if canvas.isVisible()]
+            live = [_frame(window, plan) for plan in steps]
+            full = statistics.median(_full_draw(canvases) for _ in range(7))
+            median = statistics.median(live)
+            yield f"{page.title}: value changed to painted, ms, median", median, 33.0
+            yield f"{page.title}: value changed to painted, ms, 95th percentile", sorted(live)[int(0.95 * FRAMES)], 60.0
+            yield f"{page.title}: the same over a full draw of its plots", median / full, None
+        window.document.stack.setClean()
+        window.close()
