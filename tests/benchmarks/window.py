@@ -46,7 +46,8 @@ def _frame(window: MainWindow, plan: Plan) -> float:
 def _full_draw(canvases: list[LiveCanvas]) -> float:
     begin = time.perf_counter()
     for canvas in canvases:
-        canvas.draw()
+        canvas.draw_idle()
+    QApplication.processEvents()
     return 1e3 * (time.perf_counter() - begin)
 
 
