@@ -31,6 +31,18 @@ def _length(value: float) -> str:
     return format_quantity(value, "a0", digits=4)
 
 
+def _two_body(value: float) -> str:
+    return format_quantity(value, "cm^3/s", digits=2)
+
+
+def _three_body(value: float) -> str:
+    return format_quantity(value, "cm^6/s", digits=2)
+
+
+def _density(value: float) -> str:
+    return format_quantity(value, "1/cm^3", digits=2)
+
+
 _PLAIN: Callable[[float], str] = number
 _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingProxyType(
     {
@@ -110,7 +122,7 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _PLAIN,
         ),
         "fermi_interaction": (
-            _("kF|a| is {value} (1/kFa = {inverse}): interactions are strong, and this ideal Fermi gas has none."),
+            _("kF|a| is {value} (1/kFa = {inverse}): this ideal gas has no such interaction. See the estimates."),
             _PLAIN,
         ),
         "polarised_fermions": (
@@ -123,6 +135,50 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
         ),
         "hydrodynamic": (
             _("Atoms collide {value} times per radian of the fastest axis: the cloud is hydrodynamic there."),
+            _PLAIN,
+        ),
+        "no_background": (
+            _("No background lifetime is given: lifetimes and the ratio of collisions are upper bounds. Type one."),
+            _PLAIN,
+        ),
+        "three_body_unknown": (
+            _("The three-body rate constant is not known: lifetimes leave that loss out. Type it if you have it."),
+            _PLAIN,
+        ),
+        "two_body_recalled": (
+            _("The two-body rate constant {value} is recalled from its source. Check it before you rely on it."),
+            _two_body,
+        ),
+        "three_body_recalled": (
+            _("The three-body rate constant {value} is recalled from its source. Check it before you rely on it."),
+            _three_body,
+        ),
+        "three_body_scaling": (
+            _("K₃ is {value} times what resonant three-body loss at this scattering length can be. Check K₃ and a."),
+            times,
+        ),
+        "three_body_unitarity": (
+            _("K₃ is {value} times what is possible at this temperature. Type a smaller one: this loss is too fast."),
+            times,
+        ),
+        "three_body_elsewhere": (
+            _("K₃ of the data belongs to another scattering length; by a⁴ it changes {value} times. Type yours."),
+            times,
+        ),
+        "loss_fast": (
+            _("In one rethermalisation time {value} of the atoms are lost: no equilibrium. Compress, or lose less."),
+            percent,
+        ),
+        "heating_fast": (
+            _("T rises by {value} in one rethermalisation time: no steady cloud. Compress, or lower light and noise."),
+            percent,
+        ),
+        "loss_ideal_condensate": (
+            _("Losses reckon with a condensate without repulsion, of {value}. A real one is thinner: use semi-ideal."),
+            _density,
+        ),
+        "dipolar_fast": (
+            _("k a_d is {value}: these dipoles are too fast for the cross-section that is used, which is an estimate."),
             _PLAIN,
         ),
         "truncated": (

@@ -1,64 +1,20 @@
 """One row for every quantity that an answer gives: label, symbol, units, formula, source and what it needs.
 
 Readouts, command output, JSON, table columns, tips and plots all read this list; there is no second one. A row's
-`name` is the attribute of `physics.cloud.Equilibrium` that holds the number, in SI units.
+`name` is the attribute that holds the number, in SI units, of `physics.cloud.Equilibrium`, of `physics.rates.Rates` or
+of `physics.fermi_interactions.FermiEstimates`. The rows of the latter two are in `app.rate_quantities`.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
-from enum import Enum
 from types import MappingProxyType
 
+from app.quantity_row import Group, Need, Row
+from app.rate_quantities import COLLISION_ROWS, FERMI_ROWS, LOSS_ROWS
 from app.units import factor
 
-
-class Group(Enum):
-    """Heading under which a quantity is read."""
-
-    DEGENERACY = "Degeneracy"
-    THRESHOLD = "Distance to threshold"
-    CONDENSATE = "Condensate"
-    FERMI_SEA = "Fermi sea"
-    CLOUD = "Cloud"
-    COLLISIONS = "Collisions"
-    CLASSICAL = "Classical formulas against quantum"
-
-
-class Need(Enum):
-    """What must be there for a quantity to have a value; the text completes "needs ..."."""
-
-    BOSONS = "bosons"
-    FERMIONS = "fermions"
-    CONDENSATE = "a condensate"
-    INTERACTING_CONDENSATE = "a condensate with a known repulsive scattering length"
-    SCATTERING_LENGTH = "a known scattering length"
-    COLLISIONS = "collisions between the atoms, with a known scattering length"
-    DEPTH = "a trap depth"
-    EFFICIENCY = "an evaporation efficiency in the target"
-
-
-@dataclass(frozen=True, kw_only=True)
-class Row:
-    """A quantity. `unit` is its SI unit, `units` the ones offered for display (the first also for tables)."""
-
-    name: str
-    label: str
-    symbol: str
-    unit: str
-    units: tuple[str, ...]
-    group: Group
-    formula: str
-    source: str
-    validity: str
-    needs: tuple[Need, ...] = ()
-    axes: bool = False  # one value for each trap axis
-
-    def __post_init__(self) -> None:
-        if not self.units:
-            raise ValueError(f"quantity {self.name!r} must offer at least one unit")
-
+__all__ = ["QUANTITIES", "Group", "Need", "Row", "display_factor", "rows_in"]
 
 _TEMPERATURES = ("nK", "µK", "K", "kHz")
 _LENGTHS = ("µm", "nm", "mm")
@@ -204,6 +160,7 @@ _ROWS = (
         validity="zero-temperature cloud, centre",
         needs=(Need.FERMIONS,),
     ),
+    *FERMI_ROWS,
     Row(
         name="temperature_to_threshold",
         label="threshold temperature over T, at this N",
@@ -378,6 +335,8 @@ _ROWS = (
         validity="thermal atoms, s-wave",
         needs=(Need.COLLISIONS,),
     ),
+    *COLLISION_ROWS,
+    *LOSS_ROWS,
     Row(
         name="classical_density_error",
         label="classical peak density",

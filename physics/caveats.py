@@ -14,7 +14,7 @@ References
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 from enum import Enum
 from types import MappingProxyType
@@ -101,6 +101,17 @@ CAVEAT_IDS = MappingProxyType(
         "pauli_blocking": "T/TF: collisions slowed by filled levels, left out of the rate",
         "hydrodynamic": "mean collision rate over the highest angular trap frequency",
         "truncated": "depth over kT: the trap cuts the cloud, which is answered as if it did not",
+        "no_background": "no value: no background lifetime, so that lifetimes are upper bounds",
+        "three_body_unknown": "no value: K3 not known, three-body loss left out",
+        "two_body_recalled": "K2 [m^3/s]: recalled from its source, not read there",
+        "three_body_recalled": "K3 [m^6/s]: recalled from its source, not read there",
+        "three_body_scaling": "K3 over 201 hbar a^4/m",
+        "three_body_unitarity": "K3 over its largest value at this temperature",
+        "three_body_elsewhere": "(a/a of the measurement)^4: K3 was measured at another scattering length",
+        "loss_fast": "share of the atoms lost in one rethermalisation time",
+        "heating_fast": "share of T gained in one rethermalisation time",
+        "loss_ideal_condensate": "peak density [1/m^3]: of a condensate without repulsion, which losses reckon with",
+        "dipolar_fast": "k a_d: cross-section of dipoles taken as for slow atoms",
     }
 )
 """Every caveat, and what its value means."""
@@ -136,8 +147,13 @@ def caveats_of(
     found = [*_model(equilibrium), *_data(equilibrium, certainty)]
     found += [*_boson_levels(equilibrium), *_bosons(equilibrium)] if bosons else [*_fermions(equilibrium, dipolar)]
     found += _any(equilibrium)
+    return gravest_first(found)
+
+
+def gravest_first(caveats: Iterable[Caveat]) -> tuple[Caveat, ...]:
+    """Caveats in the order in which they are to be read."""
     gravest = list(Severity)[::-1]
-    return tuple(sorted(found, key=lambda caveat: gravest.index(caveat.severity)))
+    return tuple(sorted(caveats, key=lambda caveat: gravest.index(caveat.severity)))
 
 
 def _model(solved: Equilibrium) -> Iterator[Caveat]:

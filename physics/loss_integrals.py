@@ -34,7 +34,6 @@ from physics.particles import Statistics
 from physics.semi_ideal import SemiIdeal
 from physics.statistics import bose, fermi, zeta
 
-
 _MANY = 128  # values beyond which nodes through their range are cheaper
 
 Ufunc = Callable[[Floats], Floats]
@@ -95,7 +94,7 @@ def energies_of_lost_atoms(statistics: Statistics, degeneracy: Floats) -> Floats
 
     if statistics is Statistics.FERMI:
         return _through_nodes(fermions, log_z, np.arcsinh, np.sinh)
-    return np.where(X < zeta(3.0), _through_nodes(bosons, 0.0 - log_z, np.sqrt, np.square), np.nan)
+    return np.where(zeta(3.0) > X, _through_nodes(bosons, 0.0 - log_z, np.sqrt, np.square), np.nan)
 
 
 def two_and_three_body_densities(equilibrium: Equilibrium) -> tuple[Floats, Floats]:

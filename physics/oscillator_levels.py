@@ -150,7 +150,8 @@ class OscillatorLevels:
             grounds.append(np.exp(-x * x))
             weights.append(weight)
         powers = self._fugacity_powers(alpha)
-        pairs = ((tables[0] * powers[:, np.newaxis])[:, :, np.newaxis] * tables[1][:, np.newaxis, :]).reshape(-1, nodes**2)
+        first = tables[0] * powers[:, np.newaxis]
+        pairs = (first[:, :, np.newaxis] * tables[1][:, np.newaxis, :]).reshape(-1, nodes**2)
         ground = np.einsum("a,b,c->abc", *grounds)
         # Less the ground level itself, as everywhere here: it has no power series where it holds many atoms.
         together = (pairs.T @ tables[2]).reshape(ground.shape)

@@ -59,7 +59,7 @@ class Rates:
 
     @quantity
     def hydrodynamic_ratio(self) -> Floats:
-        """Mean collision rate over the highest angular trap frequency: above 1 atoms do not cross the cloud freely. [1]"""
+        """Mean collision rate over the highest angular trap frequency: above 1 atoms do not cross freely. [1]"""
         fastest: Floats = np.max(self.equilibrium.cloud.trap.angular_frequencies, axis=-1)
         return self.equilibrium.elastic_collision_rate / fastest
 
@@ -145,7 +145,7 @@ class Rates:
             self.two_body_loss_rate * (self._energy_of_another - two),
             self.three_body_loss_rate * (self._energy_of_another - three),
         )
-        rate = T * _sum_of_known(*taken) / self._heat_capacity
+        rate: Floats = T * _sum_of_known(*taken) / self._heat_capacity
         if self.losses.recombination_heat is not None:
             events = self.three_body_loss_rate / 3.0
             rate = rate + events * self.losses.recombination_heat / (boltzmann * self._heat_capacity)
@@ -158,7 +158,8 @@ class Rates:
         if spectrum is None:
             return _unknown()
         growth = noise_heating_rate(self.equilibrium.cloud.trap.frequencies, np.expand_dims(spectrum, -1))
-        return self.equilibrium.cloud.temperature * np.mean(growth, axis=-1)
+        rate: Floats = self.equilibrium.cloud.temperature * np.mean(growth, axis=-1)
+        return rate
 
     @quantity
     def heating_rate(self) -> Floats:
@@ -173,7 +174,7 @@ class Rates:
         statistics = self.equilibrium.cloud.statistics
         X = self.equilibrium.classical_phase_space_density
         if statistics is Statistics.BOSE:
-            X = np.where(X < zeta(3.0), X, np.nan)
+            X = np.where(zeta(3.0) > X, X, np.nan)
         mean = 3.0 * equation_of_state.energy_over_classical(statistics, X)
         heat = 3.0 * equation_of_state.trapped_heat_capacity_over_classical(statistics, X)
         # E = 3 kT tau^3 g_4, N = tau^3 g_3 at fixed T: dE/dN = 3 kT g_3/g_2; and heat = 12 g_4/g_3 - 9 g_3/g_2.

@@ -9,13 +9,16 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
+from app.answers.losses import LossesInUse, Solution, losses_in_use, typed_losses
 from app.answers.part import part
 from app.quantities import QUANTITIES, Need, Row
-from physics.caveats import Caveat, caveats_of
+from physics.caveats import Caveat, caveats_of, gravest_first
 from physics.cloud import Cloud, Equilibrium, Model, equilibrium
+from physics.constants import bohr_radius
+from physics.loss_caveats import loss_caveats
 from physics.particles import Statistics
-from physics.scattering import LengthInUse, length_at_field
-from physics.sensitivity import lattice, sample
+from physics.scattering import LengthInUse, dipolar_length, length_at_field
+from physics.sensitivity import interval, lattice, sample
 from physics.species import State, load_species
 from physics.traps import HarmonicTrap
 
@@ -24,6 +27,9 @@ if TYPE_CHECKING:
     from app.units import Quantity
 
 Array = NDArray[np.float64]
+
+STRONG_DIPOLES = 10.0 * bohr_radius
+"""Dipolar lengths below are left out: alkali atoms have less than one Bohr radius, chromium 15, dysprosium 130."""
 
 SAMPLES = 4096
 SEED = 20
@@ -43,6 +49,8 @@ class CloudAnswer:
     cloud: Cloud
     equilibrium: Equilibrium
     scattering: LengthInUse
+    losses: LossesInUse
+    solution: Solution
     caveats: tuple[Caveat, ...]
     efficiency: float | None
     threshold: float
@@ -58,7 +66,7 @@ class CloudAnswer:
 
     def value(self, name: str) -> float | Array:
         """A quantity by its NAME, in SI; NaN where it does not apply, three values for a quantity with axes."""
-        return getattr(self.equilibrium, name)  # type: ignore[no-any-return]
+        return self.solution.value(name)
 
     def missing(self, row: Row) -> Need | None:
         """The first thing that a quantity needs and this cloud does not have."""
@@ -82,6 +90,35 @@ class CloudAnswer:
                 return self.cloud.trap.depth is not None
             case Need.EFFICIENCY:
                 return self.efficiency is not None
+            case _:
+                return self._allows(need)
+
+    def _allows(self, need: Need) -> bool:
+        """Whether there is what rates and estimates need."""
+        losses, rates, solved = self.losses.losses, self.solution.rates, self.equilibrium
+        match need:
+            case Need.COLLIDING:
+                return bool(solved.elastic_collision_rate > 0.0)
+            case Need.BACKGROUND:
+                return losses.background_lifetime is not None
+            case Need.TWO_BODY:
+                return losses.two_body is not None
+            case Need.THREE_BODY:
+                return losses.three_body is not None
+            case Need.LOSSES:
+                return bool(np.isfinite(rates.total_loss_rate))
+            case Need.NO_CONDENSATE:
+                return not self.bosons or bool(solved.reduced_temperature > 1.0)
+            case Need.HEATING:
+                return bool(np.isfinite(rates.heating_rate))
+            case Need.MIXTURE:
+                return not bool(np.isnan(self.solution.estimates.interaction_parameter))
+            case Need.POSITIVE_LENGTH:
+                return bool(self.cloud.length > 0.0)
+            case Need.KNOWN_COUPLING:
+                return bool(np.isfinite(self.solution.estimates.superfluid_temperature))
+            case _:
+                raise ValueError(f"whether there is {need.value} is not known")
 
     @cached_property
     def uncertain(self) -> bool:
@@ -89,25 +126,45 @@ class CloudAnswer:
         return any(quantity.sigma for quantity in _inputs(self.plan).values())
 
     @cached_property
+    def _draws(self) -> dict[str, float | Array]:
+        return _draws(self.plan)
+
+    @cached_property
+    def _sampled_solution(self) -> Solution:
+        assert self._sampled is not None
+        return Solution(
+            equilibrium=self._sampled, losses=losses_in_use(self.plan, self.state, self._draws).losses
+        )  # fmt: skip
+
+    @cached_property
     def _sampled(self) -> Equilibrium | None:
         """The same cloud at many draws of its uncertain inputs; None where there are none, or where a model is too
         slow to be sampled."""
         if not self.uncertain or self.model not in (Model.IDEAL, Model.SEMI_IDEAL):
             return None
-        drawn = _cloud(self.plan, self.state, self.scattering.value, _draws(self.plan))
+        drawn = _cloud(self.plan, self.state, self.scattering.value, self._draws)
         return equilibrium(drawn, self.model, fermi_threshold=self.threshold, efficiency=self.efficiency)
 
     def interval(self, name: str) -> tuple[float | Array, float | Array] | None:
         """16 and 84 percent of a quantity over the stated uncertainties, or None where nothing is uncertain."""
+        if name not in self._intervals:
+            self._intervals[name] = self._interval(name)
+        return self._intervals[name]
+
+    @cached_property
+    def _intervals(self) -> dict[str, tuple[float | Array, float | Array] | None]:
+        """Intervals already worked out: the verdict and its numbers ask for the same few."""
+        return {}
+
+    def _interval(self, name: str) -> tuple[float | Array, float | Array] | None:
         if self._sampled is None:
             return None
         row = QUANTITIES[name]
-        samples = np.asarray(getattr(self._sampled, name), dtype=float)
-        shape = (SAMPLES, 3) if row.axes else (SAMPLES,)
-        samples = np.broadcast_to(samples, shape)
+        samples = np.asarray(self._sampled_solution.value(name), dtype=float)
+        samples = np.broadcast_to(samples, (SAMPLES, 3) if row.axes else (SAMPLES,))
         if not np.all(np.isfinite(samples)):
             return None
-        low, high = np.quantile(samples, (0.16, 0.84), axis=0)
+        low, _median, high = interval(samples)
         return (low, high) if row.axes else (float(low), float(high))
 
     @cached_property
@@ -119,25 +176,44 @@ class CloudAnswer:
         return float(np.mean(np.asarray(self._sampled.reduced_temperature) < limit))
 
 
-@part("species", "trap", "cloud", "target")
+@part("species", "trap", "cloud", "losses", "target")
 def cloud_answer(plan: Plan) -> CloudAnswer:
     """The cloud of the plan."""
     state = load_species(plan.species.key).state(plan.species.state)
     scattering = _scattering(plan, state)
-    cloud = _cloud(plan, state, scattering.value, {name: item.value for name, item in _inputs(plan).items()})
+    numbers: dict[str, float | Array] = {name: item.value for name, item in _inputs(plan).items()}
+    cloud, losses = _cloud(plan, state, scattering.value, numbers), losses_in_use(plan, state, numbers)
     efficiency = _number(plan.target.efficiency)
     threshold = _number(plan.target.reduced_temperature) or FERMI_THRESHOLD
     solved = equilibrium(cloud, plan.cloud.model, fermi_threshold=threshold, efficiency=efficiency)
+    solution = Solution(equilibrium=solved, losses=losses.losses)
+    caveats = (
+        *caveats_of(solved, certainty=scattering.certainty, dipolar=cloud.dipolar_length is not None),
+        *loss_caveats(
+            solution.rates,
+            certainties=losses.certainties(),
+            measured_length=_measured_length(state, losses),
+        ),
+    )
     return CloudAnswer(
         plan=plan,
         state=state,
         cloud=cloud,
         equilibrium=solved,
         scattering=scattering,
-        caveats=caveats_of(solved, certainty=scattering.certainty),
+        losses=losses,
+        solution=solution,
+        caveats=gravest_first(caveats),
         efficiency=efficiency,
         threshold=threshold,
     )
+
+
+def _measured_length(state: State, losses: LossesInUse) -> float | None:
+    """Scattering length at which K3 of the data was measured, as far as the data tell."""
+    if losses.three_body is None or state.scattering_length is None or state.scattering_length_is_background:
+        return None
+    return state.scattering_length.value
 
 
 def _inputs(plan: Plan) -> dict[str, Quantity]:
@@ -148,6 +224,7 @@ def _inputs(plan: Plan) -> dict[str, Quantity]:
         "temperature": plan.cloud.temperature,
         **{f"frequency {axis}": quantity for axis, quantity in enumerate(plan.trap.frequencies)},
         **{name: quantity for name, quantity in optional.items() if quantity is not None},
+        **typed_losses(plan),
     }
 
 
@@ -182,7 +259,16 @@ def _cloud(plan: Plan, state: State, scattering_length: float | None, draws: dic
         temperature=draws["temperature"],
         spin_components=plan.species.spin_components or state.spin_components,
         scattering_length=draws.get("scattering_length", scattering_length),
+        dipolar_length=_dipolar_length(plan, state),
     )
+
+
+def _dipolar_length(plan: Plan, state: State) -> float | None:
+    """Of atoms whose moments count in collisions; None for mixtures, whose states have moments of their own."""
+    if state.magnetic_moment is None or (plan.species.spin_components or state.spin_components) > 1:
+        return None
+    length = float(dipolar_length(state.mass, state.magnetic_moment.value))
+    return length if length > STRONG_DIPOLES else None
 
 
 def _scattering(plan: Plan, state: State) -> LengthInUse:

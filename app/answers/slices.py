@@ -10,9 +10,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.cloud import cloud_answer
+from app.answers.losses import Solution
 from app.answers.part import part
 from app.quantities import QUANTITIES
-from physics.cloud import Equilibrium, Model, equilibrium
+from physics.cloud import Model, equilibrium
 
 if TYPE_CHECKING:
     from app.plan import Plan
@@ -41,7 +42,7 @@ class SlicesAnswer:
     threshold_atoms: float
 
 
-@part("species", "trap", "cloud", "target")
+@part("species", "trap", "cloud", "losses", "target")
 def slices_answer(plan: Plan, names: tuple[str, ...]) -> SlicesAnswer:
     """Slices through the map at the cloud. A quantity with axes gives its mean over them."""
     central = cloud_answer(plan)
@@ -54,7 +55,8 @@ def slices_answer(plan: Plan, names: tuple[str, ...]) -> SlicesAnswer:
     def along(atoms: float | Array, temperature: float | Array) -> tuple[Array, ...]:
         cloud = replace(central.cloud, atoms=atoms, temperature=temperature)
         solved = equilibrium(cloud, central.model, fermi_threshold=central.threshold, efficiency=central.efficiency)
-        return tuple(_plain(solved, name, points) for name in names)
+        solution = Solution(equilibrium=solved, losses=central.losses.losses)
+        return tuple(_plain(solution, name, points) for name in names)
 
     return SlicesAnswer(
         atoms=atoms,
@@ -64,7 +66,7 @@ def slices_answer(plan: Plan, names: tuple[str, ...]) -> SlicesAnswer:
         names=names,
         values_temperature=along(atoms, temperatures),
         values_atoms=along(numbers, temperature),
-        now=tuple(float(_plain(central.equilibrium, name, 1)[0]) for name in names),
+        now=tuple(float(_plain(central.solution, name, 1)[0]) for name in names),
         threshold_temperature=temperature * float(central.equilibrium.temperature_to_threshold),
         threshold_atoms=atoms * float(central.equilibrium.atoms_to_threshold),
     )
@@ -77,8 +79,8 @@ def _decade_around(value: float) -> tuple[float, float]:
     return 10.0 ** (place - 1.5), 10.0 ** (place + 1.5)
 
 
-def _plain(solved: Equilibrium, name: str, points: int) -> Array:
-    values = np.asarray(getattr(solved, name), dtype=float)
+def _plain(solution: Solution, name: str, points: int) -> Array:
+    values = np.asarray(solution.value(name), dtype=float)
     if QUANTITIES[name].axes:
         values = np.mean(values, axis=-1)
     return np.broadcast_to(values, (points,))

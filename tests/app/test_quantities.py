@@ -9,6 +9,8 @@ import pytest
 from app.quantities import QUANTITIES, Group, Need, display_factor, rows_in
 from physics.constants import boltzmann, planck
 from physics.equilibria import Equilibrium
+from physics.fermi_interactions import FermiEstimates
+from physics.rates import Rates
 
 # The names that scripts rely on; the table may grow, none of these may go.
 CONTRACT = (
@@ -34,6 +36,7 @@ CONTRACT = (
     "energy_per_atom",
     "elastic_collision_rate",
     "mean_free_path",
+    "three_body_lifetime",
     "truncation",
     "classical_density_error",
     "classical_energy_error",
@@ -50,7 +53,7 @@ def test_every_name_of_the_contract_is_there() -> None:
 @pytest.mark.parametrize("name", QUANTITIES)
 def test_every_row_is_a_quantity_of_the_equilibrium_and_says_all_about_itself(name: str) -> None:
     row = QUANTITIES[name]
-    assert hasattr(Equilibrium, name)
+    assert sum(hasattr(holder, name) for holder in (Equilibrium, Rates, FermiEstimates)) == 1
     assert all((row.label, row.symbol, row.formula, row.source, row.validity))
     for unit in row.units:
         assert display_factor(unit, row) > 0.0

@@ -1,0 +1,63 @@
+"""What a row of the table of quantities says: heading, label, units, formula, source, and what the quantity needs."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import Enum
+
+
+class Group(Enum):
+    """Heading under which a quantity is read."""
+
+    DEGENERACY = "Degeneracy"
+    THRESHOLD = "Distance to threshold"
+    CONDENSATE = "Condensate"
+    FERMI_SEA = "Fermi sea"
+    CLOUD = "Cloud"
+    COLLISIONS = "Collisions"
+    LOSSES = "Losses and heating"
+    CLASSICAL = "Classical formulas against quantum"
+
+
+class Need(Enum):
+    """What must be there for a quantity to have a value; the text completes "needs ..."."""
+
+    BOSONS = "bosons"
+    FERMIONS = "fermions"
+    CONDENSATE = "a condensate"
+    INTERACTING_CONDENSATE = "a condensate with a known repulsive scattering length"
+    SCATTERING_LENGTH = "a known scattering length"
+    COLLISIONS = "collisions between the atoms, with a known scattering length"
+    DEPTH = "a trap depth"
+    EFFICIENCY = "an evaporation efficiency in the target"
+    COLLIDING = "atoms that collide"
+    BACKGROUND = "a background lifetime"
+    TWO_BODY = "a two-body rate constant"
+    THREE_BODY = "a three-body rate constant"
+    LOSSES = "a background lifetime or a rate constant of losses"
+    NO_CONDENSATE = "a cloud without a condensate"
+    HEATING = "losses or a heating rate"
+    MIXTURE = "two spin states with a known scattering length"
+    POSITIVE_LENGTH = "a positive scattering length between the spin states"
+    KNOWN_COUPLING = "1/(kF a) below −1, within ±0.2 or above 1: between, there is no simple estimate"
+
+
+@dataclass(frozen=True, kw_only=True)
+class Row:
+    """A quantity. `unit` is its SI unit, `units` the ones offered for display (the first also for tables)."""
+
+    name: str
+    label: str
+    symbol: str
+    unit: str
+    units: tuple[str, ...]
+    group: Group
+    formula: str
+    source: str
+    validity: str
+    needs: tuple[Need, ...] = ()
+    axes: bool = False  # one value for each trap axis
+
+    def __post_init__(self) -> None:
+        if not self.units:
+            raise ValueError(f"quantity {self.name!r} must offer at least one unit")
