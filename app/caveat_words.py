@@ -116,6 +116,18 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _("The condensate would hold {value} times the {collapse} atoms at which attraction makes it collapse."),
             times,
         ),
+        "dipolar": (
+            _("The dipolar length {dipole} is {value} of a: dipoles shape the cloud, and this answer leaves them out."),
+            _PLAIN,
+        ),
+        "dipolar_unstable": (
+            _("The dipolar length {dipole} is {value} a: above 1 dipoles make a round condensate collapse. Raise a."),
+            _PLAIN,
+        ),
+        "density_jump": (
+            _("At the condensate's edge the density jumps by {value}, an artefact of the mean field: trust sums only."),
+            percent,
+        ),
         "dense": (_("n|a|³ reaches {value}: the gas is too dense for mean-field formulas."), _PLAIN),
         "long_range_length": (
             _("|a|/λ is {value}: interactions shift everything near the threshold by several percent."),
@@ -202,6 +214,7 @@ def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
         value="" if caveat.value is None else say(caveat.value),
         why=_why_unknown(answer),
         asked=asked.value,
+        dipole=_length(numbers.get("dipolar_length", 0.0)),
         collapse=number(numbers.get("collapse_atoms", 0.0), 2),
         inverse=number(numbers.get("inverse", 0.0), 2),
         frozen=_frozen(int(numbers.get("frozen_axes", 0))),

@@ -23,6 +23,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from physics.checks import Floats
+from physics.condensate import COLLAPSE, Condensate
 from physics.constants import reduced_planck
 from physics.models import Model
 from physics.particles import Certainty, Statistics
@@ -32,9 +33,6 @@ if TYPE_CHECKING:
     from collections.abc import Mapping
 
     from physics.equilibria import Equilibrium
-
-COLLAPSE = 0.575
-"""N0 |a|/aho above which an attractive condensate in an isotropic trap collapses. [1]"""
 
 
 _REPULSIVE = (Model.SEMI_IDEAL, Model.HARTREE_FOCK)
@@ -94,6 +92,9 @@ CAVEAT_IDS = MappingProxyType(
         "near_threshold": "T/Tc0: repulsion among thermal atoms, left out, counts here",
         "attractive": "scattering length [m]; collapse_atoms",
         "collapse": "N0 over the largest stable number; collapse_atoms",
+        "dipolar": "a_dd/a: the interaction of magnetic dipoles, left out, counts; dipolar_length",
+        "dipolar_unstable": "a_dd/a above 1: their attraction makes a large condensate unstable; dipolar_length",
+        "density_jump": "share by which the density of the mean field jumps at the edge of the condensate, an artefact",
         "dense": "n |a|^3 at the peak",
         "long_range_length": "|a|/lambda",
         "fermi_interaction": "kF |a|; inverse = 1/(kF a)",
@@ -124,6 +125,8 @@ _SHELLS = 0.2
 _FEW_ATOMS = 100.0
 _THOMAS_FERMI = 10.0
 _NEAR_THRESHOLD = (0.9, 1.0)
+_DIPOLAR, _DIPOLAR_UNSTABLE = 0.1, 1.0
+_JUMP = 0.05
 # (128/15) sqrt(n a^3/pi), the first correction to the energy of a condensate [2], is 5 % at the first; Tc moves by
 # 3.4 a/lambda, 10 % at the second.
 _DENSE, _LONG = 1e-4, 0.03
@@ -233,6 +236,19 @@ def _bosons(solved: Equilibrium) -> Iterator[Caveat]:
         near = (ratio > _NEAR_THRESHOLD[0]) & (ratio < _NEAR_THRESHOLD[1])
         if np.any(near):
             yield Caveat(id="near_threshold", severity=Severity.NOTE, value=float(np.max(ratio[near])))
+    if solved.model is Model.HARTREE_FOCK:
+        jump = _highest(np.where(condensed > 0.0, _edge_density_jump(solved), 0.0))
+        if jump > _JUMP:
+            yield Caveat(id="density_jump", severity=Severity.NOTE, value=jump)
+    dipolar = _highest(Condensate(equilibrium=solved).dipolar_ratio)
+    if dipolar > _DIPOLAR:
+        unstable = dipolar > _DIPOLAR_UNSTABLE
+        yield Caveat(
+            id="dipolar_unstable" if unstable else "dipolar",
+            severity=Severity.WARNING if unstable else Severity.NOTE,
+            value=dipolar,
+            numbers=MappingProxyType({"dipolar_length": float(solved.cloud.dipolar_length or 0.0)}),
+        )
     # The condensate of a gas without interaction is far denser than a real one, so it is not what is judged.
     density = solved.peak_density if solved.model in _REPULSIVE else _thermal_density(solved)
     dense, long = _highest(density * np.abs(length) ** 3), _highest(np.abs(length) / solved.thermal_wavelength)
@@ -240,6 +256,13 @@ def _bosons(solved: Equilibrium) -> Iterator[Caveat]:
         yield Caveat(id="dense", severity=Severity.WARNING, value=dense)
     if long > _LONG:
         yield Caveat(id="long_range_length", severity=Severity.WARNING, value=long)
+
+
+def _edge_density_jump(solved: Equilibrium) -> Floats:
+    from physics.hartree_fock import HartreeFock  # not loaded for other models
+
+    assert isinstance(solved, HartreeFock)
+    return solved.edge_density_jump
 
 
 def _thermal_density(solved: Equilibrium) -> Floats:

@@ -14,7 +14,6 @@ References
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator
 from dataclasses import dataclass, fields
 from functools import cached_property
@@ -23,14 +22,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.checks import Floats
-from physics.constants import boltzmann, planck
 from physics.equilibria import Equilibrium, quantity
 from physics.hartree_fock_integrals import (
     Edge,
     Shells,
     condensed_centre,
     inner_shells,
-    onset_ratio,
     thermal_centre,
     thermal_shells,
 )
@@ -126,13 +123,6 @@ class HartreeFock(Equilibrium):
         return _Sums(**{field.name: total for field, total in zip(fields(_Sums), totals, strict=True)})
 
     @quantity
-    def onset_temperature(self) -> Floats:
-        """Where the condensate of this model appears, at this atom number. [K]"""
-        threshold = np.asarray(self.critical_temperature)
-        repulsion = 2.0 * self.cloud.length * np.sqrt(2.0 * math.pi * self._mass * boltzmann * threshold) / planck
-        return threshold * onset_ratio(repulsion.reshape(-1)).reshape(repulsion.shape)
-
-    @quantity
     def log_fugacity(self) -> Floats:
         """mu/kT, mu from the bottom of the trap. [1]"""
         centre, condensed = self._solution
@@ -155,6 +145,14 @@ class HartreeFock(Equilibrium):
         centre, condensed = self._solution
         density = bose(1.5, centre) + np.where(condensed, centre / self._edge.repulsion, 0.0)
         return self._shaped(density) / self._quantum_volume
+
+    @quantity
+    def edge_density_jump(self) -> Floats:
+        """Density just inside the condensate's edge over that just outside, minus 1: an artefact of the mean field that
+        vanishes as 4 a/lambda. [1]"""
+        edge = self._edge
+        inside = edge.inside / edge.repulsion + bose(1.5, edge.inside)
+        return self._shaped(inside / bose(1.5, edge.outside) - 1.0)
 
     @quantity
     def mean_density(self) -> Floats:

@@ -164,6 +164,34 @@ def test_attraction_and_collapse(bosons: Maker) -> None:
     assert not {"attractive", "collapse"} & set(found(bosons(**COLD)))
 
 
+def test_the_mean_field_tells_its_step_at_the_edge(bosons: Maker) -> None:
+    # For small a/lambda the density jumps by 4 a/lambda; the next order takes a fifth of that here.
+    assert "density_jump" not in found(bosons(Model.HARTREE_FOCK, **COLD))
+    strong = found(bosons(Model.HARTREE_FOCK, **COLD, scattering_length=1.5e-8))["density_jump"]
+    solved = bosons(Model.HARTREE_FOCK, **COLD)
+    step = 4.0 * 1.5e-8 / float(solved.thermal_wavelength)
+    assert 0.7 * step < strong.value < step
+    assert "density_jump" not in found(bosons(Model.HARTREE_FOCK, **PLAIN, scattering_length=3e-8))  # no condensate
+    assert "density_jump" not in found(bosons(**COLD, scattering_length=1.5e-8))
+
+
+@pytest.mark.parametrize(
+    ("dipole", "id", "severity"),
+    [(4e-10, None, None), (1e-9, "dipolar", Severity.NOTE), (6e-9, "dipolar_unstable", Severity.WARNING)],
+)
+def test_dipoles_count_where_their_length_is_near_the_other(
+    bosons: Maker, dipole: float, id: str | None, severity: Severity | None
+) -> None:
+    # a = 5.3 nm
+    solved = bosons(**COLD, dipolar_length=dipole)
+    caveats = {key: value for key, value in found(solved).items() if key.startswith("dipolar")}
+    assert set(caveats) == ({id} if id else set())
+    if id:
+        assert caveats[id].severity is severity
+        assert caveats[id].value == pytest.approx(dipole / float(solved.cloud.length), rel=1e-12)
+        assert caveats[id].numbers == {"dipolar_length": dipole}
+
+
 def test_strong_interaction_of_bosons(bosons: Maker) -> None:
     solved = bosons(**COLD, scattering_length=6e-8)
     strong = found(solved)
