@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
 from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
@@ -10,6 +11,7 @@ from app.commands.trouble import fail
 
 if TYPE_CHECKING:
     from app.engine import CloudAnswer
+    from app.explanations import Explanation
     from app.quantities import Row
 
 
@@ -20,6 +22,13 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
     )
     add_plan_arguments(parser)
     parser.add_argument("--json", action="store_true", help="print one JSON object")
+    parser.add_argument(
+        "--explain",
+        action="append",
+        default=[],
+        metavar="NAME",
+        help="show how a quantity, by its NAME in the JSON object, is worked out; may be given several times",
+    )
     parser.set_defaults(run=run)
 
 
@@ -29,10 +38,38 @@ def run(args: argparse.Namespace) -> int:
 
     try:
         answer = cloud_answer(plan_of(args))
+        explanations = _explanations(answer, args.explain)
     except (ValueError, OSError) as error:
         return fail(error)
-    print(json_answer(args, state_body(answer)) if args.json else state_text(answer))
+    if args.json:
+        print(json_answer(args, state_body(answer) | _explained(explanations)))
+    else:
+        print(_explained_text(answer, explanations) if explanations else state_text(answer))
     return 0
+
+
+def _explanations(answer: CloudAnswer, names: Sequence[str]) -> list[Explanation]:
+    if not names:
+        return []
+    from app.explanations import explain
+
+    return [explain(answer, name) for name in names]
+
+
+def _explained(explanations: Sequence[Explanation]) -> dict[str, Any]:
+    """What `--explain` adds to the JSON object: nothing without it."""
+    if not explanations:
+        return {}
+    from app.explanations import explanation_body
+
+    return {"explain": [explanation_body(explanation) for explanation in explanations]}
+
+
+def _explained_text(answer: CloudAnswer, explanations: Sequence[Explanation]) -> str:
+    from app.explanations import explanation_text
+    from app.words import heading
+
+    return "\n\n\n".join([heading(answer), *(explanation_text(explanation) for explanation in explanations)])
 
 
 def state_body(answer: CloudAnswer) -> dict[str, Any]:

@@ -1,4 +1,4 @@
-"""Densities, collisions, and how far the classical formulas are off."""
+"""Densities: at the densest point, and as an atom meets it on average."""
 
 from __future__ import annotations
 
@@ -18,9 +18,8 @@ from app.explanations.degeneracy import (
 )
 from app.explanations.scales import classical_phase_space_density, oscillator_length, thermal_wavelength
 from app.explanations.sheet import Regime, Sheet, once
-from app.explanations.sizes import defined, energy_per_atom
-from app.explanations.terms import FIVE_HALVES, NOTHING, PI, THREE_HALVES, Leaf, root
-from physics import equation_of_state
+from app.explanations.sizes import defined
+from app.explanations.terms import FIVE_HALVES, PI, THREE_HALVES, Leaf, root
 from physics.particles import Statistics
 
 
@@ -107,107 +106,3 @@ def _semi_ideal_squares(sheet: Sheet) -> Leaf:
     )
     total = condensate + 2 * B * product + square
     return sheet.step("P", "∫ (n λ³)² over the trap", total)
-
-
-# ---------------------------------------------------------------- collisions
-
-
-@once
-def low_energy_cross_section(sheet: Sheet) -> Leaf:
-    a, s = _length(sheet), inputs.spin_states(sheet)
-    meaning = "cross-section of slow atoms, summed over the partners in all spin states"
-    formula = 8 * PI * a**2 + 4 * PI * (s - 1) * a**2 if sheet.bosons else 4 * PI * (s - 1) * a**2
-    return sheet.step("σ₀", meaning, formula, "m^2")
-
-
-def _length(sheet: Sheet) -> Leaf:
-    a = inputs.scattering_length(sheet)
-    if a is None:
-        raise ValueError("collisions need a scattering length")
-    return a
-
-
-@once
-def cross_section(sheet: Sheet) -> Leaf:
-    slow, a, m = low_energy_cross_section(sheet), _length(sheet), inputs.mass(sheet)
-    kT = inputs.k(sheet) * inputs.temperature(sheet)
-    K = sheet.step("K", "(wavenumber times a)², at the energy kT", m * kT * a**2 / inputs.hbar(sheet) ** 2)
-    meaning = "what the unitarity limit leaves of σ₀, averaged over the thermal speeds"
-    c = defined(sheet, "c", meaning, functions.SPEED_AVERAGE, K)
-    return sheet.step("σ", "cross-section", c * slow, "m^2")
-
-
-@once
-def elastic_collision_rate(sheet: Sheet) -> Leaf:
-    value, meaning = sheet.number("elastic_collision_rate"), "elastic collisions of an atom, mean over the cloud"
-    if not sheet.bosons and sheet.answer.cloud.spin_components == 1:
-        inputs.spin_states(sheet)
-        why = "collisions of an atom: none among fermions of one spin state"
-        return sheet.step("Γ", why, NOTHING, "1/s", value=value)
-    n, sigma = thermal_density(sheet), cross_section(sheet)
-    kT, m = inputs.k(sheet) * inputs.temperature(sheet), inputs.mass(sheet)
-    speed = sheet.step("v̄", "mean thermal speed", root(8 * kT / (PI * m)), "m/s")
-    return sheet.step("Γ", meaning, n * sigma * speed / 2, "1/s", value=value)
-
-
-@once
-def mean_free_path(sheet: Sheet) -> Leaf:
-    formula = 1 / (root(2) * thermal_density(sheet) * cross_section(sheet))
-    meaning = "mean free path where the thermal density is largest"
-    return sheet.step("ℓ", meaning, formula, "m", value=sheet.number("mean_free_path"))
-
-
-# ---------------------------------------------------------------- classical formulas
-
-
-@once
-def classical_density_error(sheet: Sheet) -> Leaf:
-    formula = classical_phase_space_density(sheet) / peak_phase_space_density(sheet) - 1
-    meaning = "classical over quantum peak density of the thermal atoms, less 1"
-    return sheet.step("n_cl/n − 1", meaning, formula, value=sheet.number("classical_density_error"))
-
-
-@once
-def classical_energy_error(sheet: Sheet) -> Leaf:
-    formula = 3 * inputs.k(sheet) * inputs.temperature(sheet) / energy_per_atom(sheet) - 1
-    meaning = "classical over quantum energy, less 1"
-    return sheet.step("3kT N/E − 1", meaning, formula, value=sheet.number("classical_energy_error"))
-
-
-@once
-def classical_pressure_error(sheet: Sheet) -> Leaf:
-    D = peak_phase_space_density(sheet)
-    unknown = Leaf("ln z_D", float(equation_of_state.log_fugacity(sheet.statistics, D.amount)))
-    where = functions.definition(sheet.statistics)
-    density, pressure = (functions.polylog(sheet.statistics, order, unknown) for order in (1.5, 2.5))
-    if sheet.bosons and unknown.amount == 0.0:
-        sheet.case("the thermal atoms are saturated where they are densest", D, "≥", inputs.zeta_3_2(sheet))
-        sheet.step("ln z_D", "log of the fugacity there", NOTHING)
-    else:
-        sheet.solve(unknown, "log of the fugacity where the atoms are densest", density, D, where=where)
-    meaning = "classical over quantum pressure where the thermal atoms are densest, less 1"
-    formula = density / pressure - 1
-    value = sheet.number("classical_pressure_error")
-    return sheet.step("n kT/p − 1", meaning, formula, value=value, where=where)
-
-
-@once
-def fitted_temperature_error(sheet: Sheet) -> Leaf:
-    X = classical_phase_space_density(sheet)
-    unknown = Leaf("ln z_X", float(equation_of_state.trapped_log_fugacity(sheet.statistics, X.amount)))
-    if sheet.bosons and X.amount >= inputs.zeta_3(sheet).amount:
-        sheet.case("the thermal atoms are saturated", X, "≥", inputs.zeta_3(sheet))
-        sheet.step("ln z_X", "log of the fugacity of the thermal atoms", NOTHING)
-    else:
-        left = functions.polylog(sheet.statistics, 3.0, unknown)
-        meaning = "log of the fugacity of an ideal gas of these atoms"
-        sheet.solve(unknown, meaning, left, X, where=functions.definition(sheet.statistics))
-    ratio = defined(
-        sheet,
-        "θ",
-        "T_fit/T of a Gaussian fit to the expanded cloud",
-        functions.fit_temperature(sheet.statistics),
-        unknown,
-    )
-    meaning = "fitted over true temperature, less 1"
-    return sheet.step("T_fit/T − 1", meaning, ratio - 1, value=sheet.number("fitted_temperature_error"))

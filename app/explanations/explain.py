@@ -9,8 +9,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from app.explanations import degeneracy, densities, inputs, scales, sizes
-from app.explanations.explanation import Explanation, Step
+from app.explanations import classical, collisions, degeneracy, densities, inputs, scales, sizes
+from app.explanations.explanation import Explanation, Origin, Step
 from app.explanations.sheet import Regime, Sheet
 from app.quantities import QUANTITIES, Need, Row, display_factor
 from app.words import number, reason_missing, shown_unit, symbol_of, value_text
@@ -46,12 +46,17 @@ EXPLAINED: MappingProxyType[str, Callable[[Sheet], object]] = MappingProxyType(
         "thermal_wavelength": scales.thermal_wavelength,
         "mean_frequency": scales.mean_frequency,
         "truncation": scales.truncation,
-        "elastic_collision_rate": densities.elastic_collision_rate,
-        "mean_free_path": densities.mean_free_path,
-        "classical_density_error": densities.classical_density_error,
-        "classical_energy_error": densities.classical_energy_error,
-        "classical_pressure_error": densities.classical_pressure_error,
-        "fitted_temperature_error": densities.fitted_temperature_error,
+        "collision_cross_section": collisions.collision_cross_section,
+        "elastic_collision_rate": collisions.elastic_collision_rate,
+        "peak_collision_rate": collisions.peak_collision_rate,
+        "mean_free_path": collisions.mean_free_path,
+        "rethermalisation_time": collisions.rethermalisation_time,
+        "hydrodynamic_ratio": collisions.hydrodynamic_ratio,
+        "free_path_ratios": collisions.free_path_ratios,
+        "classical_density_error": classical.classical_density_error,
+        "classical_energy_error": classical.classical_energy_error,
+        "classical_pressure_error": classical.classical_pressure_error,
+        "fitted_temperature_error": classical.fitted_temperature_error,
     }
 )
 """What puts the steps to a quantity, by its NAME, on a sheet; a NAME without an entry is explained by its row alone."""
@@ -99,7 +104,7 @@ def explain(answer: CloudAnswer, name: str, unit: str | None = None) -> Explanat
         reason="" if values is not None else reason(answer, row),
         formula=row.formula,
         model=_model(answer),
-        inputs=tuple(sheet.inputs),
+        inputs=tuple(entry for origin in Origin for entry in sheet.inputs if entry.origin is origin),
         steps=tuple(sheet.steps),
         validity=row.validity,
         source=row.source,
@@ -165,8 +170,10 @@ def reason(answer: CloudAnswer, row: Row) -> str:
             if row.name == "fugacity":
                 return "beyond the largest number that can be computed with; its logarithm is not"
             return "not defined for this cloud"
-        case _:
+        case Need.DEPTH | Need.EFFICIENCY:
             return f"{reason_missing(need)}, which the plan does not give"
+        case _:
+            return reason_missing(need)
 
 
 def _no_condensate(answer: CloudAnswer) -> str:

@@ -12,9 +12,9 @@ class Origin(Enum):
     """Where an input comes from."""
 
     TYPED = "typed"
+    ASSUMED = "assumed"
     DATA = "from the data"
     CONSTANT = "constant"
-    ASSUMED = "assumed"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -88,7 +88,7 @@ class Explanation:
     text : the value for reading, with its unit and, where the plan states uncertainties, its interval
     formula, validity, source : of the quantity, whatever the cloud
     model : the model used, in a sentence
-    inputs : what was typed or looked up, in the order of use
+    inputs : what was typed, what is assumed, what the data say, and constants
     steps : how the value follows from them, in order
     """
 

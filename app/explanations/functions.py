@@ -24,7 +24,7 @@ _ORDERS = {1.5: "3/2", 2.0: "2", 2.5: "5/2", 3.0: "3", 4.0: "4"}
 _PRINTED = {"2": "₂", "3": "₃", "4": "₄"}
 
 BOSE_FUNCTION = "g_s(z) = Σ_j z^j/j^s, the Bose function"
-FERMI_FUNCTION = "f_s(z) = −Σ_j (−z)^j/j^s (z ≤ 1; its continuation beyond), the Fermi function"
+FERMI_FUNCTION = "f_s(z) = (1/Γ(s)) ∫ t^(s−1)/(exp(t)/z + 1) dt over t > 0, the Fermi function"
 
 
 def polylog_name(statistics: Statistics, order: float) -> str:

@@ -103,6 +103,21 @@ def scattering_length(sheet: Sheet) -> Leaf | None:
 
 
 @once
+def dipolar_length(sheet: Sheet) -> Leaf | None:
+    """a_dd, or None where collisions of dipoles are left out."""
+    length, moment = sheet.answer.cloud.dipolar_length, sheet.answer.state.magnetic_moment
+    if length is None:
+        return None
+    return sheet.enter(
+        Input(
+            symbol="a_dd", meaning="dipolar length, µ₀ µ² m/(12 π ħ²)", text=format_quantity(length, "a0", digits=6),
+            value=float(length), unit="m", origin=Origin.DATA, source=moment.source if moment else "",
+            certainty=moment.certainty if moment else None,
+        )
+    )  # fmt: skip
+
+
+@once
 def spin_states(sheet: Sheet) -> Leaf:
     count, typed = sheet.answer.cloud.spin_components, sheet.answer.plan.species.spin_components
     return sheet.enter(

@@ -69,14 +69,15 @@ class Sheet:
         self.inputs: list[Input] = []
         self.steps: list[Step] = []
         self.made: dict[object, object] = {}
+        self._defined: set[str] = set()
 
     def number(self, name: str) -> float:
         """A quantity of the answer that is a single number, in SI."""
-        return float(np.asarray(getattr(self.solved, name)))
+        return float(np.asarray(self.answer.value(name)))
 
     def values(self, name: str) -> list[float]:
         """A quantity of the answer that has a value along each axis, in SI."""
-        return [float(value) for value in np.asarray(getattr(self.solved, name))]
+        return [float(value) for value in np.asarray(self.answer.value(name))]
 
     def enter(self, entry: Input) -> Leaf:
         """Put an input on the sheet."""
@@ -99,7 +100,7 @@ class Sheet:
                 result=line.result,
                 value=amount,
                 unit=unit,
-                where=where,
+                where=self._first(where),
                 agrees=line.agrees,
             )
         )
@@ -121,11 +122,17 @@ class Sheet:
                 left=sides.result,
                 right=result_text(right.amount),
                 right_symbol=right.symbol,
-                where=where,
+                where=self._first(where),
                 agrees=sides.agrees,
             )
         )
         return unknown
+
+    def _first(self, definition: str) -> str:
+        """A definition where it is met first, and nothing after that."""
+        known = definition in self._defined
+        self._defined.add(definition)
+        return "" if known else definition
 
     def case(self, meaning: str, left: Leaf, sign: str, right: Leaf) -> None:
         """A comparison that decides which formulas hold; `meaning` says what follows."""
@@ -143,8 +150,10 @@ class Sheet:
             )
         )
 
-    def along(self, name: str, symbol: str, meaning: str, formulas: tuple[Term, Term, Term]) -> Axes:
-        """A quantity that has a value, in metres, along each axis."""
+    def along(
+        self, name: str, symbol: str, meaning: str, formulas: tuple[Term, Term, Term], *, unit: str = "m"
+    ) -> Axes:
+        """A quantity that has a value along each axis."""
         first, second, third = (
             self.step(f"{symbol}{number}", f"{meaning} along axis {axis}", formula, "m", value=value)
             for axis, (number, formula, value) in enumerate(

@@ -70,10 +70,10 @@ def thermal_radii(sheet: Sheet) -> Axes:
     formulas: tuple[Term, Term, Term]
     if sheet.regime is Regime.EXACT_LEVELS:
         S, (W1, W2, W3) = excited_atoms(sheet), excited_energies(sheet)
-        formulas = (v / w1 * root(W1 / S), v / w2 * root(W2 / S), v / w3 * root(W3 / S))
+        formulas = (v * root(W1 / S) / w1, v * root(W2 / S) / w2, v * root(W3 / S) / w3)
     else:
         shape = root(potential_share(sheet))
-        formulas = (v / w1 * shape, v / w2 * shape, v / w3 * shape)
+        formulas = (v * shape / w1, v * shape / w2, v * shape / w3)
     return sheet.along("thermal_radii", "σ", "rms radius of the thermal atoms", formulas)
 
 

@@ -56,7 +56,7 @@ class Script:
     def leaf(self, leaf: Leaf) -> Text:
         if self.digits is None:
             compound = any(sign in leaf.symbol for sign in " /−+")
-            return Text(leaf.symbol, Binding.PRODUCT if compound else Binding.ATOM)
+            return Text(leaf.symbol, Binding.SUM if compound else Binding.ATOM)
         text = operand_text(leaf.amount, self.digits)
         if text.startswith("-"):
             return Text(text, Binding.SUM)
@@ -178,10 +178,11 @@ class Product(Term):
     right: Term
 
     def written(self, script: Script) -> Text:
-        left, right = (part.written(script) for part in (self.left, self.right))
-        # A quotient to the right of a factor is bracketed, so that nobody has to know which sign goes first.
-        inner = right.at(Binding.LITERAL if isinstance(self.right, Quotient) or not script.numbers else Binding.PRODUCT)
-        return Text(left.at(Binding.PRODUCT) + (" × " if script.numbers else " ") + inner, Binding.PRODUCT)
+        # Without a sign between, a quotient beside a factor is bracketed, so that nobody has to guess what it is over.
+        first = Binding.LITERAL if isinstance(self.left, Quotient) and not script.numbers else Binding.PRODUCT
+        second = Binding.LITERAL if isinstance(self.right, Quotient) else Binding.PRODUCT
+        left, right = self.left.written(script).at(first), self.right.written(script).at(second)
+        return Text(f"{left} × {right}" if script.numbers else f"{left} {right}", Binding.PRODUCT)
 
     def value(self, read: Read) -> float:
         return self.left.value(read) * self.right.value(read)

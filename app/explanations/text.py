@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from textwrap import wrap
 from typing import Any
 
 from app.explanations.explanation import Explanation, Input, Origin, Step, StepKind
@@ -12,6 +13,10 @@ NUMBERS_NOTE = (
     "Numbers are in SI units. Results have six significant digits; numbers that are put in have one or more beyond, "
     "as many as it takes to find the result again."
 )
+
+
+WIDTH = 100
+"""Columns of text after which sentences are broken; formulas are never broken."""
 
 
 def explanation_text(explanation: Explanation) -> str:
@@ -69,7 +74,7 @@ def step_lines(step: Step) -> list[str]:
     result = f"{step.result} {_unit(step.unit)}".strip()
     match step.kind:
         case StepKind.CASE:
-            return [f"{step.expression}, as {step.numbers}"]
+            return [f"{step.expression}: {step.numbers}"]
         case StepKind.GIVEN:
             return [f"{step.symbol} = {result}"]
         case StepKind.EQUATION:
@@ -90,8 +95,15 @@ def _steps(explanation: Explanation) -> list[str]:
         lines.append(f"  {number}. {step.meaning}")
         lines += [f"       {line}" for line in step_lines(step)]
         if step.where:
-            lines.append(f"       where {step.where}")
-    return [*lines, "", NUMBERS_NOTE]
+            lines += wrap(f"where {step.where}", WIDTH, initial_indent=" " * 7, subsequent_indent=" " * 9)
+    if explanation.value is not None:
+        lines.append(f"  {result_line(explanation)}")
+    return [*lines, "", *wrap(NUMBERS_NOTE, WIDTH)]
+
+
+def result_line(explanation: Explanation) -> str:
+    """The value once more, after the steps in SI units, as it is read."""
+    return f"So {explanation.symbol} = {explanation.text}."
 
 
 def _unit(unit: str) -> str:
