@@ -53,6 +53,8 @@ KEPT: Mapping[str, tuple[str, ...]] = {
 """Sections of the format that this version keeps as they are and does not compute, with their keys."""
 
 _SECTIONS = ("species", "trap", "cloud", "losses", "target")
+_DEEPEST = max(section.count(".") for section in KEPT)
+LONGEST = 80  # characters of a name, and of a file's own words in a message
 
 
 class _Written(str):
@@ -83,7 +85,11 @@ def parse_plan(text: str, name: str) -> Plan:
     try:
         data = tomllib.loads(text, parse_float=_Written)
     except tomllib.TOMLDecodeError as error:
-        raise PlanError(f"{name} is not a readable TOML file: {error}") from None
+        raise PlanError(f"{name} is not a readable TOML file: {_one_line(str(error))}") from None
+    except ValueError:  # the one other error of the reader: a whole number of thousands of digits
+        raise PlanError(f"{name} is not a plan file: it holds a number beyond every one that can be read") from None
+    except RecursionError:
+        raise PlanError(f"{name} is not a plan file: its lists or tables are nested too deeply") from None
     _check_format(data, name)
     _check_keys(data, name)
     parts = [part for part in ("beam", "coils") if part in _table(data, "trap", name)]
@@ -175,6 +181,8 @@ def _read_entry(field: PlanField, entry: object, so_far: Mapping[str, Any]) -> o
         raise PlanError(f"must be a text in quotes, got {_shown(entry)}")
     if field.entry is Entry.TEXT:
         return entry
+    if len(entry) > LONGEST or not entry.isprintable():
+        raise PlanError(f"must be one line of at most {LONGEST} characters, got {_shown(entry)}")
     if field.entry is Entry.MODEL:
         return _model(entry)
     from physics.species import load_species
@@ -208,8 +216,8 @@ def _frequencies(entry: object) -> tuple[Quantity, ...]:
 def _whole(entry: object) -> int:
     with contextlib.suppress(ValueError):
         if isinstance(entry, str) and not isinstance(entry, _Written) and entry.strip().isascii():
-            return int(entry.strip()) if entry.strip().isdigit() else int("")
-        if isinstance(entry, int) and not isinstance(entry, bool):
+            return int(entry.strip()) if entry.strip().isdigit() and len(entry) < LONGEST else int("")
+        if isinstance(entry, int) and not isinstance(entry, bool) and abs(entry) < 10**LONGEST:
             return entry
     raise PlanError(f"must be a whole number, got {_shown(entry)}")
 
@@ -239,8 +247,14 @@ def _shown(entry: object) -> str:
     if isinstance(entry, list):
         return f"a list of {len(entry)}"
     if isinstance(entry, str) and not isinstance(entry, _Written):
-        return f'"{entry}"'
-    return str(entry)
+        return f'"{_one_line(entry)}"'
+    return _one_line(str(entry))
+
+
+def _one_line(text: str) -> str:
+    """A text that may be anything, fit to stand in a sentence: printable, and not longer than one can read."""
+    shown = "".join(c if c.isprintable() else ascii(c)[1:-1] for c in text[:LONGEST])
+    return shown if len(text) <= LONGEST else f"{shown[: LONGEST - 1]}…"
 
 
 def _check_format(data: Mapping[str, object], name: str) -> None:
@@ -250,7 +264,7 @@ def _check_format(data: Mapping[str, object], name: str) -> None:
         raise PlanError(f'{name} is not a plan file: it must say "coldward = {FORMAT}", {got}')
     if found > FORMAT:
         raise PlanError(
-            f"{name} is a plan of format {found}, and this version of Coldward reads format {FORMAT}: "
+            f"{name} is a plan of format {_shown(found)}, and this version of Coldward reads format {FORMAT}: "
             "open it with a newer version; the file was not changed"
         )
 
@@ -266,7 +280,7 @@ def _check_keys(data: Mapping[str, Any], name: str) -> None:
         path = f"{section}.{key}".lstrip(".")
         place = f"in [{section}]" if section else "at the top"
         raise PlanError(
-            f"{name}: {path} is not a key of a plan: the nearest is {_nearest(path, everywhere)}; "
+            f"{name}: {_one_line(path)} is not a key of a plan: the nearest is {_nearest(path, everywhere)}; "
             f"allowed {place} are {', '.join(allowed)}"
         )
 
@@ -282,9 +296,11 @@ def _known_keys() -> dict[str, tuple[str, ...]]:
 
 
 def _keys(table: Mapping[str, Any], section: str) -> Iterator[tuple[str, str]]:
-    """(section, key) of all keys, those of tables within lists too."""
+    """(section, key) of all keys, those of tables within lists too, as deep as the format goes."""
     for key, value in table.items():
         yield section, key
+        if section.count(".") >= _DEEPEST:
+            continue
         for inner in value if isinstance(value, list) else [value]:
             if isinstance(inner, Mapping):
                 yield from _keys(inner, f"{section}.{key}".lstrip("."))
@@ -306,5 +322,5 @@ def _holds(data: Mapping[str, Any], section: str) -> bool:
 
 
 def _nearest(text: str, known: list[str]) -> str:
-    plain = text.casefold()
+    plain = text[:LONGEST].casefold()
     return max(known, key=lambda name: difflib.SequenceMatcher(None, plain, name.casefold()).ratio())

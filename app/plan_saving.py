@@ -25,21 +25,23 @@ def write_plan(plan: Plan, previous_text: str | None = None) -> str:
     previous_text : the file as it was; by default the one that the plan came from. Its comments, its layout and the
         sections that this version does not use are kept, and so is every entry whose meaning did not change.
     """
-    import tomlkit
-
     previous = plan.source if previous_text is None else previous_text
     previous = previous.removeprefix("\ufeff")
+    old = entries_of(parse_plan(previous, "the file as it was")) if previous.strip() else {}
+    new = entries_of(plan)
+    changed = [path for path in PLAN_FIELDS if _written(old.get(path)) != _written(new.get(path))]
+    if previous.strip() and not changed:
+        return previous
+
+    import tomlkit
+
     if previous.strip():
-        old = entries_of(parse_plan(previous, "the file as it was"))
         document = tomlkit.parse(previous)
     else:
-        old = {}
         document = tomlkit.document()
         document["coldward"] = FORMAT
-    new = entries_of(plan)
-    for path, field in PLAN_FIELDS.items():
-        if _written(old.get(path)) == _written(new.get(path)):
-            continue
+    for path in changed:
+        field = PLAN_FIELDS[path]
         if path in new:
             _put(document, field, new[path])
         else:
@@ -89,7 +91,7 @@ def _value(field: PlanField, entry: Any) -> Any:
 
 def _drop(document: TOMLDocument, field: PlanField) -> None:
     table: Any = document[field.section] if field.section else document
-    table.remove(field.name)
+    del table[field.name]  # not remove: a table whose parts stand apart in the file has none
 
 
 def save_plan(plan: Plan, path: str | os.PathLike[str], previous_text: str | None = None) -> str:

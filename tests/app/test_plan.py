@@ -167,7 +167,7 @@ def test_numbers_without_unit_may_stand_bare() -> None:
             r'losses\.heating: heating rate must be from 0 nK/s to 10 K/s, got "-1 nK/s"',
         ),
         (
-            PLAIN + '[losses]\nbackground_lifetime = 60\n',
+            PLAIN + "[losses]\nbackground_lifetime = 60\n",
             r'losses\.background_lifetime: needs a unit: write a text in quotes, such as "60 s", not 60$',
         ),
         (changed('"200 nK"', '"200"'), r'^a\.toml: cloud\.temperature: temperature needs a unit: .* not "200"$'),
@@ -213,6 +213,24 @@ def test_numbers_without_unit_may_stand_bare() -> None:
             r"target\.condensate_atoms: a target is one of .* got reduced_temperature and condensate_atoms$",
         ),
         ('title = """a\nb"""\n' + PLAIN, r"title: title must be one line of at most 200 characters$"),
+        (
+            "coldward = " + 5000 * "9",
+            r"^a\.toml is not a plan file: it holds a number beyond every one that can be read$",
+        ),
+        ("coldward = " + 90 * "9", r"^a\.toml is a plan of format 9{79}…, and this version of Coldward reads format 1"),
+        (PLAIN + "x = " + 3000 * "[" + 3000 * "]", r"^a\.toml is not a plan file: its lists or tables are nested too"),
+        (PLAIN + "title" + 3000 * ".a" + " = 1", r"cloud\.title is not a key of a plan: the nearest is cloud"),
+        ("title" + 3000 * ".a" + " = 1\n" + PLAIN, r"^a\.toml: title: must be a text in quotes, got a table$"),
+        ('"a\\u0000\\nb" = 1\n' + PLAIN, r"^a\.toml: a\\x00\\nb is not a key of a plan"),
+        (changed('"87Rb"', '"87\\u202eRb"'), r'species\.key: must be one line of .* got "87\\u202eRb"$'),
+        (
+            changed('"87Rb"', f'"{300 * "8"}"'),
+            r'species\.key: must be one line of at most 80 characters, got "8{79}…"$',
+        ),
+        (
+            changed('"87Rb"', '"87Rb"\nspin_components = ' + 90 * "1"),
+            r"spin_components: must be a whole number, got 1+…$",
+        ),
         ('title = "x"\nspecies = 1\n' + "coldward = 1", r"^a\.toml: species must be a section \[species\], got 1$"),
     ],
 )
@@ -418,7 +436,9 @@ def test_a_copied_plan_takes_the_unused_sections_along() -> None:
 
 
 def test_losses_are_saved_and_taken_back() -> None:
-    plan = plan_with(parse_plan(PLAIN, "a.toml"), {"losses.background_lifetime": "60(5) s", "losses.heating": "20 nK/s"})
+    plan = plan_with(
+        parse_plan(PLAIN, "a.toml"), {"losses.background_lifetime": "60(5) s", "losses.heating": "20 nK/s"}
+    )
     written = write_plan(plan)
     assert '[losses]\nbackground_lifetime = "60(5) s"\nheating = "20 nK/s"' in written
     assert parse_plan(written, "b.toml") == plan
@@ -428,11 +448,38 @@ def test_losses_are_saved_and_taken_back() -> None:
 
 
 def test_another_species_drops_what_was_said_of_losses_by_collisions() -> None:
-    texts = {"losses.background_lifetime": "60 s", "losses.two_body": "1e-14 cm^3/s", "losses.three_body": "1e-28 cm^6/s"}
+    texts = {
+        "losses.background_lifetime": "60 s",
+        "losses.two_body": "1e-14 cm^3/s",
+        "losses.three_body": "1e-28 cm^6/s",
+    }
     plan = plan_with(plan_with(parse_plan(PLAIN, "a.toml"), texts), {"species.key": "23Na"})
     assert plan.losses.background_lifetime is not None
     assert plan.losses.two_body is None
     assert plan.losses.three_body is None
+
+
+APART = """\
+coldward = 1
+[trap]
+frequencies = ["120 Hz", "120 Hz", "20 Hz"]
+depth = "5 uK"
+[species]
+key = "87Rb"
+[trap.coils]  # a part of the trap that stands apart
+bias = "1.5 G"
+[cloud]
+atoms = "1e5"
+temperature = "200 nK"
+"""
+
+
+@pytest.mark.parametrize(("path", "text"), [("trap.depth", ""), ("trap.depth", "6 µK"), ("losses.heating", "1 nK/s")])
+def test_a_section_in_two_places_can_be_changed(path: str, text: str) -> None:
+    after = plan_with(parse_plan(APART, "a.toml"), {path: text})
+    written = write_plan(after)
+    assert parse_plan(written, "b.toml") == after
+    assert "# a part of the trap that stands apart" in written
 
 
 def test_a_file_without_the_section_gets_it() -> None:
