@@ -272,16 +272,20 @@ def _thermal_density(solved: Equilibrium) -> Floats:
 
 def _fermions(solved: Equilibrium, dipolar: bool) -> Iterator[Caveat]:
     level = _highest_level(solved)
+    exact = solved.model is Model.EXACT_LEVELS
     squares = np.sum((reduced_planck * solved.cloud.trap.angular_frequencies) ** 2, axis=-1)
     number_error = _highest(squares / (4.0 * solved.fermi_energy**2))
     filled = _lowest(solved.fermi_energy / level)
     shells = _lowest(solved.thermal_energy / level)
-    if filled < _FERMI_LEVELS:
+    if exact:
+        if _lowest(solved.cloud.atoms) < _FEW_ATOMS:
+            yield Caveat(id="few_atoms", severity=Severity.NOTE, value=_lowest(solved.cloud.atoms))
+    elif filled < _FERMI_LEVELS:
         frozen = _frozen_axes(solved, solved.fermi_energy / _FERMI_LEVELS)
         yield Caveat(id="low_dimension", severity=Severity.REFUSAL, value=filled, numbers=frozen)
     elif number_error > _FERMI_NUMBER_ERROR:
         yield Caveat(id="local_density", severity=Severity.WARNING, value=number_error)
-    if shells < _SHELLS:
+    if shells < _SHELLS and not exact:
         yield Caveat(id="shell_structure", severity=Severity.NOTE, value=shells)
     if solved.cloud.spin_components == 1:
         if not dipolar:

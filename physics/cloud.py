@@ -114,6 +114,7 @@ def equilibrium(
     ------
     ValueError : unless fermi_threshold and efficiency are positive.
     """
+    from physics.exact_fermions import ExactFermions
     from physics.exact_levels import ExactLevels
     from physics.hartree_fock import HartreeFock
     from physics.ideal_bose import IdealBose
@@ -130,7 +131,7 @@ def equilibrium(
         model = Model.IDEAL
     kind: type[Equilibrium]
     if cloud.statistics is Statistics.FERMI:
-        kind = IdealFermi
+        kind = ExactFermions if model is Model.EXACT_LEVELS else IdealFermi
     else:
         kind = {
             Model.IDEAL: IdealBose,
@@ -145,7 +146,7 @@ def equilibrium(
 
 def _obstacle(cloud: Cloud, model: Model) -> Replacement | None:
     """What keeps the cloud from being described by the model, or None."""
-    if model is Model.IDEAL:
+    if model in (Model.IDEAL, Model.EXACT_LEVELS):
         return None
     if cloud.statistics is Statistics.FERMI:
         return Replacement.BOSONS_ONLY

@@ -17,6 +17,7 @@ from numpy.typing import ArrayLike
 from physics import semi_ideal_integrals as integrals
 from physics.checks import Floats
 from physics.equilibria import Equilibrium
+from physics.exact_fermions import ExactFermions
 from physics.exact_levels import ExactLevels, ground_distance
 from physics.hartree_fock import HartreeFock
 from physics.hartree_fock_integrals import column_densities, local_densities
@@ -88,7 +89,7 @@ def _profile(equilibrium: Equilibrium, axis: int, positions: ArrayLike, along: i
         raise ValueError(f"axis must be 0, 1 or 2, got {axis}")
     x = np.asarray(positions, dtype=np.float64).reshape(-1)
     with np.errstate(all="ignore"):
-        thermal, condensate = _parts(equilibrium)(x, axis, along)
+        thermal, condensate = _parts(equilibrium, axis)(x, axis, along)
         classical = _classical(equilibrium, x, axis, along)
     return Profile(positions=x, thermal=thermal, condensate=condensate, total=thermal + condensate, classical=classical)
 
@@ -96,12 +97,14 @@ def _profile(equilibrium: Equilibrium, axis: int, positions: ArrayLike, along: i
 _Parts = Callable[[Floats, int, int | None], tuple[Floats, Floats]]
 
 
-def _parts(equilibrium: Equilibrium) -> _Parts:
+def _parts(equilibrium: Equilibrium, axis: int) -> _Parts:
     """Thermal and condensate density of the equilibrium's model, as a function of positions, axis, line of sight."""
     if isinstance(equilibrium, SemiIdeal) and equilibrium.condensate_fraction > 0.0:
         return lambda x, axis, along: _semi_ideal(equilibrium, x, axis, along)
     if isinstance(equilibrium, IdealBose):
         return lambda x, axis, along: _ideal_bose(equilibrium, x, axis, along)
+    if isinstance(equilibrium, ExactFermions) and equilibrium.levels().resolves(axis):
+        return lambda x, axis, along: _exact_fermions(equilibrium, x, axis, along)
     if isinstance(equilibrium, IdealFermi):
         return lambda x, axis, along: _ideal_fermi(equilibrium, x, axis, along)
     if isinstance(equilibrium, ExactLevels):
@@ -158,6 +161,12 @@ def _ideal_fermi(equilibrium: IdealFermi, x: Floats, axis: int, along: int | Non
     order = 1.5 if along is None else 2.0
     log_z = float(equilibrium.log_fugacity) - _potential(equilibrium, x, axis)
     return fermi(order, log_z) * _density_unit(equilibrium, along), np.zeros_like(x)
+
+
+def _exact_fermions(equilibrium: ExactFermions, x: Floats, axis: int, along: int | None) -> tuple[Floats, Floats]:
+    squares = (x / float(equilibrium.oscillator_lengths[axis])) ** 2
+    density = equilibrium.levels().density(float(equilibrium.log_fugacity), axis, squares, along)
+    return density / float(equilibrium.thermal_wavelength) ** (3 if along is None else 2), np.zeros_like(x)
 
 
 def _semi_ideal(equilibrium: SemiIdeal, x: Floats, axis: int, along: int | None) -> tuple[Floats, Floats]:

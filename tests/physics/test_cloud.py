@@ -73,7 +73,6 @@ def test_defaults_are_semi_ideal_for_bosons_and_ideal_for_fermions(bosons: Maker
         (Model.HARTREE_FOCK, {"scattering_length": 0.0}, Replacement.NOT_REPULSIVE),
         (Model.HARTREE_FOCK, {"scattering_length": -1e-9}, Replacement.NOT_REPULSIVE),
         (Model.SEMI_IDEAL, FERMI, Replacement.BOSONS_ONLY),
-        (Model.EXACT_LEVELS, FERMI, Replacement.BOSONS_ONLY),
         (Model.HARTREE_FOCK, FERMI, Replacement.BOSONS_ONLY),
     ],
 )
