@@ -12,6 +12,7 @@ from app.answers.cloud import FERMI_THRESHOLD, SAMPLES, CloudAnswer, cloud_answe
 from app.answers.map import MAP_POINTS, MapAnswer, MapLimits, map_answer, usual_limits
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
 from app.answers.slices import SLICE_POINTS, SlicesAnswer, slices_answer
+from app.answers.tuning import TuningAnswer, tuning_answer, usual_fields
 
 __all__ = [
     "FERMI_THRESHOLD",
@@ -24,10 +25,13 @@ __all__ = [
     "MapLimits",
     "ProfileAnswer",
     "SlicesAnswer",
+    "TuningAnswer",
     "cloud_answer",
     "map_answer",
     "profile_answer",
     "round_up",
     "slices_answer",
+    "tuning_answer",
+    "usual_fields",
     "usual_limits",
 ]

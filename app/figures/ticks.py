@@ -58,10 +58,10 @@ def span(axis: Axis) -> tuple[float, float]:
 
 
 def axis_title(axis: Axis) -> str:
-    """Label with unit, powers raised; without it where the ticks carry the unit."""
+    """Label with unit, as in print; without it where the ticks carry the unit."""
     if not axis.unit or axis.prefixed:
         return axis.label
-    unit = re.sub(r"\^(-?\d+)", lambda power: power[1].translate(_RAISED), axis.unit)
+    unit = re.sub(r"\^(-?\d+)", lambda power: power[1].translate(_RAISED), axis.unit).replace("a0", "a₀")
     return f"{axis.label} [{unit}]"
 
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Any
@@ -14,8 +13,9 @@ from app.engine import CloudAnswer, MapAnswer, MapLimits, map_answer, usual_limi
 from app.figures.map import map_picture, with_cloud
 from app.figures.picture import Picture
 from app.figures.theme import Theme
+from app.moving import moved_quantity
 from app.plan import Plan
-from app.units import ATOM_NUMBER, TEMPERATURE, Kind, Quantity, best_unit, exact_text, read_quantity, unit_of
+from app.units import ATOM_NUMBER, TEMPERATURE
 from app.widgets.page import Page
 from app.words import number, temperature
 from physics.cloud import Model, equilibrium
@@ -148,16 +148,3 @@ class MapPage(Page):
 
 def _what_a_map_depends_on(plan: Plan, limits: MapLimits) -> object:
     return plan.species, plan.trap, plan.cloud.model, plan.target, limits
-
-
-def moved_quantity(old: Quantity, value: float, kind: Kind, units: tuple[str, ...]) -> Quantity:
-    """A quantity moved by hand: three digits, in a unit that suits it, with the same relative uncertainty."""
-    value = _rounded(min(max(value, kind.low), kind.high), 3)
-    unit = unit_of(old.text, kind)
-    unit = best_unit(value, units) if unit in units else unit
-    sigma = _rounded(old.sigma / old.value * value, 1) if old.sigma else None
-    return read_quantity(exact_text(value, unit, sigma, kind=kind), kind)
-
-
-def _rounded(value: float, digits: int) -> float:
-    return round(value, digits - 1 - math.floor(math.log10(abs(value))))
