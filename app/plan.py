@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import replace
+from types import MappingProxyType
 
 from app.choices import (
     DEFAULT_PLAN,
@@ -48,14 +49,17 @@ __all__ = [
 ]
 
 
-def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: str | None = None) -> Plan:
+_NO_NAMES: Mapping[str, str] = MappingProxyType({})
+
+
+def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: Mapping[str, str] = _NO_NAMES) -> Plan:
     """A plan with some entries replaced by texts, as a command line or a form gives them.
 
     Parameters
     ----------
     plan : what the texts override; None: there is nothing yet, and all required entries must be among the texts
     texts : dotted path of PLAN_FIELDS -> text; an empty text removes an optional entry
-    where : what errors call the place; by default the flag of each field
+    where : what errors call a field, by its dotted path; by default, and where the path is not named, its flag
 
     A new species drops what was said of the other one's state, spin states, scattering length, field and losses by
     collision; a scattering length drops a field and the other way round; a target drops the other targets.
@@ -79,7 +83,7 @@ def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: str | None 
         for other in PLAN_FIELDS[path].excludes:
             if not texts.get(other, "").strip():
                 entries.pop(other, None)
-    changed = build_plan(entries, lambda field: where or field.flag)
+    changed = build_plan(entries, lambda field: where.get(field.path, field.flag))
     return changed if plan is None else replace(changed, unused=plan.unused, source=plan.source)
 
 

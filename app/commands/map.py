@@ -6,7 +6,7 @@ import argparse
 import sys
 from typing import TYPE_CHECKING
 
-from app.commands.plan_arguments import add_plan_arguments, plan_of
+from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
 from app.commands.trouble import fail
 
 if TYPE_CHECKING:
@@ -28,16 +28,17 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
     parser.add_argument("--atoms-range", metavar="TEXT", help='such as "1e3 to 1e7"')
     parser.add_argument("--temperature-range", metavar="TEXT", help='such as "10 nK to 10 uK"')
     parser.add_argument("--points", type=int, default=None, metavar="NUMBER", help="grid points along each direction")
+    parser.add_argument("--json", action="store_true", help="print one JSON object; a FILE is written too")
     parser.set_defaults(run=run)
 
 
 def run(args: argparse.Namespace) -> int:
     """Write the map of the plan."""
-    from app.answers.csv_text import map_csv
+    from app.answers.csv_text import csv_of, json_of, map_columns
     from app.commands.output import write_answer
     from app.engine import MAP_POINTS, cloud_answer, map_answer
 
-    points = args.points or 2 * MAP_POINTS
+    points = 2 * MAP_POINTS if args.points is None else args.points
     if not 2 <= points <= 2000:
         return fail(f"--points must be from 2 to 2000, got {points}")
     try:
@@ -49,7 +50,11 @@ def run(args: argparse.Namespace) -> int:
 
             return [map_picture(answer, cloud_answer(plan))]
 
-        write_answer(args.output, lambda: map_csv(answer), pictures)
+        columns = map_columns(answer)
+        if args.output or not args.json:
+            write_answer(args.output, lambda: csv_of(columns), pictures)
+        if args.json:
+            print(json_answer(args, {"model": answer.model.value, **json_of(columns)}))
     except (ValueError, OSError) as error:
         return fail(error)
     if answer.model is not cloud_answer(plan).model:

@@ -34,17 +34,17 @@ def plan_of(args: argparse.Namespace) -> Plan:
     from app.plan import plan_with, read_plan
 
     base = None if args.plan is None else read_plan(Path(args.plan))
-    return plan_with(base, _given(args))
+    return plan_with(base, given_flags(args))
 
 
-def _given(args: argparse.Namespace) -> dict[str, str]:
+def given_flags(args: argparse.Namespace) -> dict[str, str]:
     """Plan keys that flags have set, with their texts."""
     return {path: text for path in PLAN_FIELDS if (text := getattr(args, path, None)) is not None}
 
 
 def json_answer(args: argparse.Namespace, body: dict[str, Any], **more: Any) -> str:
     """One JSON object that opens with contract, version and input, as all verbs print it."""
-    entry: dict[str, Any] = {"plan": args.plan, **_given(args), **more}
+    entry: dict[str, Any] = {"plan": args.plan, **given_flags(args), **more}
     return json.dumps(
         {"coldward": CONTRACT, "version": __version__, "input": entry, **body}, ensure_ascii=False, allow_nan=False
     )

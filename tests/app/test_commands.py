@@ -166,7 +166,24 @@ def test_a_range_that_is_none_is_refused(capsys: pytest.CaptureFixture[str]) -> 
     assert main(["map", str(PLANS[0]), "--atoms-range", "1e5-2e5"]) == 1
     assert '--atoms-range: a range is written "low to high", got "1e5-2e5"' in capsys.readouterr().err
     assert main(["map", str(PLANS[0]), "--points", "1"]) == 1
-    assert "--points must be from 2 to 2000, got 1" in capsys.readouterr().err
+    for points in ("1", "0", "-5"):
+        assert main(["map", str(PLANS[0]), "--points", points]) == 1
+        assert f"--points must be from 2 to 2000, got {points}" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize(("verb", "more"), [("map", ["--points", "4"]), ("profile", ["--axis", "z"])])
+def test_map_and_profile_as_json_hold_the_numbers_of_the_csv(
+    verb: str, more: list[str], tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    target = tmp_path / "answer.csv"
+    assert main([verb, *FLAGS, *more, "--json", "-o", str(target)]) == 0
+    answer = json.loads(capsys.readouterr().out, parse_constant=lambda text: pytest.fail(f"{text} in JSON"))
+    assert list(answer)[:4] == ["coldward", "version", "input", "model"]
+    header, *rows = csv.reader(io.StringIO(target.read_text()))
+    units = {name: f" [{unit}]" if unit != "1" else "" for name, unit in answer["units"].items()}
+    assert header == [name + units[name] for name in answer["columns"]]
+    for name, cells in zip(answer["columns"], zip(*rows, strict=True), strict=True):
+        assert answer["columns"][name] == [float(cell) for cell in cells]
 
 
 def test_the_profile_goes_to_stdout_without_a_file(capsys: pytest.CaptureFixture[str]) -> None:
@@ -223,9 +240,56 @@ def test_a_row_says_what_state_says(tmp_path: Path, capsys: pytest.CaptureFixtur
     assert float(row["condensate_radii_z [m]"]) == answer["quantities"]["condensate_radii"]["value"][2]
 
 
+WHOLE = "species,state,atoms,temperature [uK],fx [Hz],fy [Hz],fz [Hz],depth [uK]\n"
+
+
+def test_a_table_that_says_all_needs_no_plan(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    clouds = write_clouds(
+        tmp_path, WHOLE + "87Rb,F=2 mF=+2,1e5,0.2,120,120,20,5\n6Li,,1e5,,300,300,20,\n87Rb,,1e5,0.2,,120,20,\n"
+    )
+    assert main(["table", clouds]) == 1
+    captured = capsys.readouterr()
+    rows = list(csv.DictReader(io.StringIO(captured.out)))
+    answer = state_json(capsys, *FLAGS, "--state", "F=2 mF=+2", "--depth", "5 uK")
+    assert [row["species"] for row in rows] == ["87Rb"]
+    assert float(rows[0]["truncation"]) == answer["quantities"]["truncation"]["value"]
+    assert captured.err.splitlines() == [
+        f'coldward: {clouds}, line 3: column "temperature [uK]" is missing: give the temperature, such as "200 nK"',
+        f"coldward: {clouds}, line 4: fx must be given too, or --frequencies for all rows",
+    ]
+
+
+def test_flags_fill_what_a_table_leaves_open(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    clouds = write_clouds(tmp_path, "Atoms,fz [Hz]\n1e5,20\n,30\n")
+    assert main(["table", clouds, "--species", "87Rb", "--temperature", "200 nK"]) == 1
+    assert capsys.readouterr().err.count("fx and fy must be given too, or --frequencies for all rows") == 2
+    assert main(["table", clouds, "--species", "87Rb", "--frequencies", "120 Hz,120 Hz,9 Hz"]) == 1
+    assert "line 2: column temperature is missing" in capsys.readouterr().err
+    assert main(["table", clouds, *FLAGS[:4], "--temperature", "200 nK"]) == 1
+    captured = capsys.readouterr()
+    assert 'line 3: column "Atoms" is missing' in captured.err
+    row = next(csv.DictReader(io.StringIO(captured.out)))
+    assert float(row["mean_frequency [Hz]"]) == pytest.approx((120 * 120 * 20) ** (1 / 3))
+
+
+def test_a_table_as_json_names_the_line_of_every_row(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    clouds = write_clouds(tmp_path, "temperature [nK]\n80\n-1\n")
+    assert main(["table", clouds, *FLAGS, "--json"]) == 1
+    answer = json.loads(capsys.readouterr().out)
+    assert list(answer)[:3] == ["coldward", "version", "input"]
+    assert [row["line"] for row in answer["rows"]] == [2]
+    body = state_json(capsys, *FLAGS, "--temperature", "80 nK")
+    assert answer["rows"][0]["quantities"] == body["quantities"]
+    assert answer["refused"][0]["line"] == 3
+    assert answer["refused"][0]["reason"].startswith('column "temperature [nK]": temperature must be from 1 pK')
+
+
 @pytest.mark.parametrize(
     ("text", "message"),
     [
+        ("temperature [nK],temperature [uK]\n1,1\n", 'columns "temperature [nK]" and "temperature [uK]" say the same'),
+        ("atom\n1e5\n", 'column "atom" is not read; did you mean "atoms"?'),
+        ("atoms;temperature [uK]\n1e5;0,2\n", "must have commas between its cells, and decimal points within them"),
         ("", "clouds.csv has no header line"),
         ("pressure [Pa]\n1\n", 'column "pressure \\[Pa\\]" has a unit but is not one of atoms'),
     ],
@@ -235,6 +299,12 @@ def test_a_table_that_cannot_be_read_is_one_sentence(
 ) -> None:
     assert main(["table", write_clouds(tmp_path, text), *FLAGS]) == 1
     assert message.replace("\\", "") in capsys.readouterr().err
+
+
+def test_a_table_that_is_not_there_is_one_sentence(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["table", str(tmp_path / "none.csv")]) == 1
+    error = capsys.readouterr().err
+    assert error == f"coldward: {tmp_path / 'none.csv'} could not be read: No such file or directory\n"
 
 
 # --- words ---

@@ -331,7 +331,7 @@ def test_a_missing_flag_is_named() -> None:
     with pytest.raises(KeyError, match="no\\.field is not a field of a plan"):
         plan_with(DEFAULT_PLAN, {"no.field": "1"})
     with pytest.raises(PlanError, match=r"^line 7: temperature needs a unit"):
-        plan_with(DEFAULT_PLAN, {"cloud.temperature": "1"}, where="line 7")
+        plan_with(DEFAULT_PLAN, {"cloud.temperature": "1"}, where={"cloud.temperature": "line 7"})
 
 
 def test_an_empty_text_removes_an_optional_entry() -> None:
