@@ -321,7 +321,7 @@ _FIELDS = (
         entry=Entry.QUANTITY,
         kind=INTENSITY_NOISE,
         flag="--intensity-noise",
-        tip="One-sided spectrum of the light's relative intensity at twice the trap frequencies; heats an optical trap.",
+        tip="One-sided spectrum of the light's relative intensity at twice the trap frequencies; it heats the cloud.",
     ),
     PlanField(
         path="target.reduced_temperature",

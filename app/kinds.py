@@ -105,7 +105,12 @@ MAGNETIC_FIELD = Kind(
 )
 LIFETIME = Kind(name="lifetime", si_unit="s", units=("s", "ms", "min", "h"), low=1e-6, high=1e9, example="60 s")
 TWO_BODY_RATE = Kind(
-    name="two-body rate constant", si_unit="m^3/s", units=("cm^3/s", "m^3/s"), low=0.0, high=1e-9, example="1e-14 cm^3/s"
+    name="two-body rate constant",
+    si_unit="m^3/s",
+    units=("cm^3/s", "m^3/s"),
+    low=0.0,
+    high=1e-9,
+    example="1e-14 cm^3/s",
 )
 THREE_BODY_RATE = Kind(
     name="three-body rate constant",
@@ -118,9 +123,7 @@ THREE_BODY_RATE = Kind(
 HEATING_RATE = Kind(
     name="heating rate", si_unit="K/s", units=("nK/s", "µK/s", "K/s"), low=0.0, high=10.0, example="20 nK/s"
 )
-INTENSITY_NOISE = Kind(
-    name="intensity noise", si_unit="1/Hz", units=("1/Hz",), low=0.0, high=1.0, example="1e-12 1/Hz"
-)
+INTENSITY_NOISE = Kind(name="intensity noise", si_unit="1/Hz", units=("1/Hz",), low=0.0, high=1.0, example="1e-12 1/Hz")
 REDUCED_TEMPERATURE = Kind(name="reduced temperature", si_unit="", units=("",), low=1e-4, high=1e4, example="0.5")
 PHASE_SPACE_DENSITY = Kind(name="phase-space density", si_unit="", units=("",), low=1e-15, high=1e6, example="2.612")
 EFFICIENCY = Kind(name="evaporation efficiency", si_unit="", units=("",), low=0.01, high=100.0, example="2.5")
