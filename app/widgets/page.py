@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from io import BytesIO
 from pathlib import Path
 from typing import Any, Literal, get_args
@@ -16,6 +15,7 @@ from app.figures.export_data import write_csv
 from app.figures.picture import Axis, Picture
 from app.figures.theme import LIGHT, Theme
 from app.files import write_atomically
+from app.newest import Job
 from app.plan import Plan
 from app.units import best_unit, format_quantity
 from app.widgets.limits_dialog import LimitsDialog, kind_of
@@ -23,7 +23,6 @@ from app.widgets.plot import Plot
 from app.widgets.plot_bar import PlotBar
 from app.window.live_canvas import LiveCanvas
 
-Job = Callable[[], Any]
 PictureFormat = Literal["png", "svg", "pdf"]
 
 
@@ -31,12 +30,15 @@ class Page(QWidget):
     """A page shows its part of the answer while it is visible.
 
     Signals: plan_edited(Plan, what, merge key) when the user changes the plan on a plot; part_wanted() when the part
-    on show is no longer the one to show; told(str) for one sentence to the user; folder_used(Path) after a file was
+    on show is no longer the one to show; part_stopped() and part_allowed() when the user does not want a long one to
+    be worked out, or wants it after all; told(str) for one sentence to the user; folder_used(Path) after a file was
     saved there.
     """
 
     plan_edited = Signal(object, str, str)
     part_wanted = Signal()
+    part_stopped = Signal()
+    part_allowed = Signal()
     told = Signal(str)
     folder_used = Signal(object)
 
@@ -51,6 +53,8 @@ class Page(QWidget):
         self._active: Plot | None = None
         self.bar = PlotBar()
         self.bar.pressed.connect(self._press)
+        self.bar.progress.stopped.connect(self.part_stopped)
+        self.bar.progress.allowed.connect(self.part_allowed)
         self.column = QVBoxLayout(self)
         self.column.setContentsMargins(0, 0, 0, 0)
         self.column.setSpacing(0)
@@ -91,8 +95,16 @@ class Page(QWidget):
         raise NotImplementedError
 
     def take_part(self, answer: Any) -> None:
-        """Show the result of `part`."""
+        """Show the result of `part`, or of a job in steps so much of it as there is."""
         raise NotImplementedError
+
+    def show_progress(self, what: str, share: float) -> None:
+        """The part is being worked out, and this share of it is done."""
+        self.bar.progress.show_share(what, share)
+
+    def show_end(self, *, stopped: bool) -> None:
+        """Nothing is being worked out any more: all is there, or the user stopped it."""
+        self.bar.progress.end(stopped=stopped)
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         """Keep the newest cloud, and show it where the page does."""

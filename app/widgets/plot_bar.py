@@ -1,4 +1,4 @@
-"""The line under a plot: what the pointer reads, and what can be done with the plot."""
+"""The line under a plot: what the pointer reads, what is being worked out, and what can be done with the plot."""
 
 from __future__ import annotations
 
@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QHBoxLayout, QMenu, QToolButton, QWidget
 
+from app.widgets.progress_line import ProgressLine
 from app.widgets.status_line import StatusLine
 
 
@@ -41,11 +42,12 @@ class PlotBar(QWidget):
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
-        self.status = StatusLine()
+        self.status, self.progress = StatusLine(), ProgressLine()
         row = QHBoxLayout(self)
         row.setContentsMargins(12, 2, 8, 4)
         row.setSpacing(2)
         row.addWidget(self.status, 1)
+        row.addWidget(self.progress)
         self.buttons: dict[str, QToolButton] = {}
         for tool in TOOLS:
             button = self._button(tool.text, tool.tip)

@@ -7,15 +7,29 @@ that the visible page shows is asked from the one worker thread, where the newes
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import TYPE_CHECKING, Any
+from functools import partial
+from typing import TYPE_CHECKING, Any, Protocol
 
 from PySide6.QtCore import QObject, Qt, QTimer, Signal
 
 from app.engine import CloudAnswer, cloud_answer
-from app.newest import Newest
+from app.newest import Job, Newest, Steps
 
 if TYPE_CHECKING:
     from app.plan import Plan
+
+
+class PartView(Protocol):
+    """What shows a part of the answer: a page."""
+
+    def take_part(self, answer: Any) -> None:
+        """Show a part, or so much of it as there is."""
+
+    def show_progress(self, what: str, share: float) -> None:
+        """A part is being worked out: in a few words what, and how much of it is done."""
+
+    def show_end(self, *, stopped: bool) -> None:
+        """Nothing is being worked out any more: all is there, or the user stopped it."""
 
 
 class Answers(QObject):
@@ -25,7 +39,7 @@ class Answers(QObject):
     cloud_ready = Signal(object)
     cloud_failed = Signal(str)
     part_failed = Signal(str)
-    _arrived = Signal(int, object, object)
+    _arrived = Signal(int, bool, object)
 
     # Attributes: cloud, the newest answer; current, whether it answers the newest plan; cloud_count, for tests.
 
@@ -37,6 +51,9 @@ class Answers(QObject):
         self.current = False
         self._plan: Plan | None = None
         self._asked = self._taken = 0  # numbers of the newest part asked for, and of the newest that arrived
+        self._view: PartView | None = None  # that waits for a job in steps
+        self._job: Steps | None = None
+        self._stopped: Steps | None = None  # by the user, who does not want it again
         self._turn = QTimer(self)
         self._turn.setSingleShot(True)
         self._turn.timeout.connect(self.answer_now)
@@ -62,19 +79,64 @@ class Answers(QObject):
             self.current = True
             self.cloud_ready.emit(self.cloud)
 
-    def ask_part(self, job: Callable[[], Any], deliver: Callable[[Any], None]) -> None:
-        """Run `job` on the worker; `deliver` is called with its result in the GUI thread, unless it was overtaken."""
+    # ---------------------------------------------------------------- parts
+
+    def ask_part(self, job: Job, view: PartView) -> None:
+        """Run `job` on the worker for a view, which is given the result in the GUI thread, unless it was overtaken.
+
+        A job in steps that is under way for the view already goes on; one that the user stopped is not begun again.
+        """
+        if isinstance(job, Steps) and job in (self._job, self._stopped):
+            return
+        self._leave()
+        view.show_end(stopped=False)
         self._asked += 1
         number = self._asked
+        told: Callable[[float], None] = lambda _share: None  # noqa: E731
+        if isinstance(job, Steps):
+            self._view, self._job, self._stopped = view, job, None
+            told = partial(self._tell, number, view, job.what)
         self.newest.ask(
             job,
-            lambda result: self._arrived.emit(number, deliver, result),
-            lambda error: self._arrived.emit(number, self._part_trouble, error),
+            lambda result: self._arrived.emit(number, True, partial(view.take_part, result)),
+            lambda error: self._arrived.emit(number, True, partial(self._part_trouble, error)),
+            part=lambda part: self._arrived.emit(number, False, partial(view.take_part, part)),
+            told=told,
         )
 
-    def _take(self, number: int, deliver: Callable[[Any], None], result: Any) -> None:
-        self._taken = number
-        deliver(result)
+    def stop_part(self) -> None:
+        """Stop the job in steps that is under way, as the user wishes."""
+        if self._job is None:
+            return
+        self.newest.stop()
+        self._stopped, view = self._job, self._view
+        self._taken = self._asked
+        self._job = self._view = None
+        if view is not None:
+            view.show_end(stopped=True)
+
+    def allow_part(self) -> None:
+        """Let the job that was stopped be asked for again."""
+        self._stopped = None
+
+    def _tell(self, number: int, view: PartView, what: str, share: float) -> None:
+        self._arrived.emit(number, False, partial(view.show_progress, what, share))
+
+    def _take(self, number: int, last: bool, act: Callable[[], None]) -> None:
+        newest = number == self._asked
+        if self._taken == self._asked or not (newest or last):
+            return  # stopped, or a step of a job that was overtaken, while it was on its way
+        if last:
+            self._taken = number
+        if last and newest:
+            self._leave()
+        act()
+
+    def _leave(self) -> None:
+        """Nothing is under way in steps any more."""
+        view, self._job, self._view = self._view, None, None
+        if view is not None:
+            view.show_end(stopped=False)
 
     def _part_trouble(self, error: Exception) -> None:
         if not isinstance(error, ValueError | OSError):

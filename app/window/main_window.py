@@ -142,6 +142,8 @@ class MainWindow(QMainWindow):
         desk.page_changed.connect(self._page_changed)
         for page in desk.pages:
             page.part_wanted.connect(self._ask_part)
+            page.part_stopped.connect(answers.stop_part)
+            page.part_allowed.connect(self._allow_part)
         # files, history, looks
         document.file_changed.connect(self._file_changed)
         document.clean_changed.connect(lambda clean: self.setWindowModified(not clean))
@@ -214,7 +216,11 @@ class MainWindow(QMainWindow):
             return
         job = page.part(self.answers.cloud.plan)
         if job is not None:
-            self.answers.ask_part(job, page.take_part)
+            self.answers.ask_part(job, page)
+
+    def _allow_part(self) -> None:
+        self.answers.allow_part()
+        self._ask_part()
 
     def _choose_unit(self, name: str, unit: str) -> None:
         self.settings.units = {**self.settings.units, name: unit}
