@@ -43,22 +43,21 @@ def classical_pressure_error(sheet: Sheet) -> Leaf:
 
 
 @once
-def fitted_temperature_error(sheet: Sheet) -> Leaf:
+def trapped_log_fugacity(sheet: Sheet) -> Leaf:
+    """ln z of an ideal gas of the same X, whatever the model."""
     X = classical_phase_space_density(sheet)
     unknown = Leaf("ln z_X", float(equation_of_state.trapped_log_fugacity(sheet.statistics, X.amount)))
     if sheet.bosons and X.amount >= inputs.zeta_3(sheet).amount:
         sheet.case("the thermal atoms are saturated", X, "≥", inputs.zeta_3(sheet))
-        sheet.step("ln z_X", "log of the fugacity of the thermal atoms", NOTHING)
-    else:
-        left = functions.polylog(sheet.statistics, 3.0, unknown)
-        meaning = "log of the fugacity of an ideal gas of these atoms"
-        sheet.solve(unknown, meaning, left, X, where=functions.definition(sheet.statistics))
-    ratio = defined(
-        sheet,
-        "θ",
-        "T_fit/T of a Gaussian fit to the expanded cloud",
-        functions.fit_temperature(sheet.statistics),
-        unknown,
-    )
+        return sheet.step("ln z_X", "log of the fugacity of the thermal atoms", NOTHING, value=unknown.amount)
+    left = functions.polylog(sheet.statistics, 3.0, unknown)
+    meaning = "log of the fugacity of an ideal gas of these atoms"
+    return sheet.solve(unknown, meaning, left, X, where=functions.definition(sheet.statistics))
+
+
+@once
+def fitted_temperature_error(sheet: Sheet) -> Leaf:
+    fit, ln_z = functions.fit_temperature(sheet.statistics), trapped_log_fugacity(sheet)
+    ratio = defined(sheet, "θ", "T_fit/T of a Gaussian fit to the expanded cloud", fit, ln_z)
     meaning = "fitted over true temperature, less 1"
     return sheet.step("T_fit/T − 1", meaning, ratio - 1, value=sheet.number("fitted_temperature_error"))

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from app.explanations import classical, collisions, degeneracy, densities, inputs, scales, sizes
+from app.explanations import classical, collisions, degeneracy, densities, fermi_sea, inputs, losses, scales, sizes
 from app.explanations.explanation import Explanation, Origin, Step
 from app.explanations.sheet import Regime, Sheet
 from app.quantities import QUANTITIES, Need, Row, display_factor
@@ -33,6 +33,11 @@ EXPLAINED: MappingProxyType[str, Callable[[Sheet], object]] = MappingProxyType(
         "fermi_temperature": scales.fermi_temperature,
         "fermi_energy": scales.fermi_energy,
         "fermi_wavenumber": scales.fermi_wavenumber,
+        "fermi_radii": fermi_sea.fermi_radii,
+        "interaction_parameter": fermi_sea.interaction_parameter,
+        "superfluid_temperature": fermi_sea.superfluid_temperature,
+        "interacting_chemical_potential": fermi_sea.interacting_chemical_potential,
+        "pair_binding_energy": fermi_sea.pair_binding_energy,
         "temperature_to_threshold": scales.temperature_to_threshold,
         "atoms_to_threshold": scales.atoms_to_threshold,
         "atoms_left_at_target": scales.atoms_left_at_target,
@@ -53,6 +58,15 @@ EXPLAINED: MappingProxyType[str, Callable[[Sheet], object]] = MappingProxyType(
         "rethermalisation_time": collisions.rethermalisation_time,
         "hydrodynamic_ratio": collisions.hydrodynamic_ratio,
         "free_path_ratios": collisions.free_path_ratios,
+        "good_to_bad_ratio": losses.good_to_bad_ratio,
+        "background_lifetime": losses.background_lifetime,
+        "two_body_lifetime": losses.two_body_lifetime,
+        "three_body_lifetime": losses.three_body_lifetime,
+        "total_lifetime": losses.total_lifetime,
+        "loss_per_rethermalisation": losses.loss_per_rethermalisation,
+        "loss_heating_rate": losses.loss_heating_rate,
+        "heating_rate": losses.heating_rate,
+        "three_body_ceiling": losses.three_body_ceiling,
         "classical_density_error": classical.classical_density_error,
         "classical_energy_error": classical.classical_energy_error,
         "classical_pressure_error": classical.classical_pressure_error,

@@ -16,7 +16,8 @@ from physics import equation_of_state, harmonic_integrals, semi_ideal_integrals
 from physics.checks import as_floats
 from physics.collisions import thermal_cross_section_factor
 from physics.constants import atomic_mass, boltzmann, reduced_planck
-from physics.oscillator_levels import OscillatorLevels, squared_density
+from physics.loss_integrals import energies_of_lost_atoms
+from physics.oscillator_levels import COARSE_ORDER, OscillatorLevels, squared_density
 from physics.particles import Statistics
 from physics.statistics import bose, fermi
 
@@ -93,10 +94,54 @@ FERMI_OVERLAP = Defined(
     "J(ln z) = (2/√π) ∫ √u f_3/2(z exp(−u))² du over u > 0",
     lambda log_z: float(harmonic_integrals.fermi_overlap(log_z)),
 )
+DENSITY_PRODUCT_CC = Defined(
+    "F_CC",
+    "F_CC(x) = (2/√π) ∫ √u (x − u)² d(u) du over 0 < u < x, with d(u) = g_3/2(exp(−|u − x|))",
+    lambda x: float(semi_ideal_integrals.triple_products(np.array([x]))[0, 0]),
+)
+DENSITY_PRODUCT_C2 = Defined(
+    "F_C2",
+    "F_C2(x) = (2/√π) ∫ √u (x − u) d(u)² du over 0 < u < x, with d(u) = g_3/2(exp(−|u − x|))",
+    lambda x: float(semi_ideal_integrals.triple_products(np.array([x]))[1, 0]),
+)
+DENSITY_CUBED = Defined(
+    "F_3",
+    f"F_3(x) = (2/√π) ∫ √u d(u)³ {_SHELL}",
+    lambda x: float(semi_ideal_integrals.triple_products(np.array([x]))[2, 0]),
+)
 
 
 def overlap(statistics: Statistics) -> Defined:
     return BOSE_OVERLAP if statistics is Statistics.BOSE else FERMI_OVERLAP
+
+
+def triple_overlap(statistics: Statistics) -> Defined:
+    """<n^3> in units of lambda^-9 over the trap."""
+    name = polylog_name(statistics, 1.5)
+
+    def function(log_z: float) -> float:
+        if statistics is Statistics.BOSE:
+            return float(harmonic_integrals.bose_mean(0.0 - log_z, lambda u, deep: bose(1.5, deep) ** 3))
+        return float(harmonic_integrals.fermi_mean(log_z, lambda u, local: fermi(1.5, local) ** 3))
+
+    return Defined("J₃", f"J₃(ln z) = (2/√π) ∫ √u {name}(z exp(−u))³ du over u > 0", function)
+
+
+def lost_energy(statistics: Statistics, atoms: int) -> Defined:
+    """Mean energy of an atom that collisions of so many take from a thermal cloud, in kT."""
+    density, pressure = polylog_name(statistics, 1.5), polylog_name(statistics, 2.5)
+    power, name = {2: "", 3: "²"}[atoms], f"e_{atoms}"
+
+    def function(log_z: float) -> float:
+        X = bose(3.0, -log_z) if statistics is Statistics.BOSE else fermi(3.0, log_z)
+        return float(energies_of_lost_atoms(statistics, as_floats(X))[atoms - 2])
+
+    return Defined(
+        name,
+        f"{name}(ln z) = ∫ √u d(u){power} [(3/2) p(u) + u d(u)] du/∫ √u d(u){'²³'[atoms - 2]} du over u > 0, "
+        f"with d(u) = {density}(z exp(−u)), p(u) = {pressure}(z exp(−u))",
+        function,
+    )
 
 
 def _levels(*spacings: float) -> OscillatorLevels:
@@ -124,6 +169,32 @@ SQUARED_DENSITY = Defined(
     "M(α, b₁, b₂, b₃) = Σ_jl exp(−(j+l)α) Π_i {[1 − exp(−2j b_i)] [1 − exp(−2l b_i)] [tanh(j b_i/2) + "
     "tanh(l b_i/2)]}^(−1/2), j and l = 1, 2, ...",
     lambda alpha, *b: squared_density(np.array(b), float(alpha), 1.0 / float(np.expm1(alpha))),
+)
+
+
+def _level_sum(alpha: float, spacings: tuple[float, ...], triples: bool) -> float:
+    levels = OscillatorLevels(np.array(spacings), COARSE_ORDER)
+    t, ground, weights = levels.densities_in_space(float(alpha), _NODES)
+    c = ground / float(np.expm1(alpha))
+    if triples:
+        return float(np.sum(weights * (c**3 / 6.0 + 1.5 * c * c * t + 3.0 * c * t * t + t**3)))
+    return float(np.sum(weights * (0.5 * c * c + 2.0 * c * t + t * t)))
+
+
+_NODES = 24
+_IN_SPACE = (
+    "a_i² = ħ/(m ω_i), ρ = Σ_i r_i²/a_i², c = exp(−ρ)/(exp(α) − 1), t = Σ_j exp(−jα) {Π_i [1 − exp(−2j b_i)]^(−1/2) "
+    "exp[−(r_i/a_i)² tanh(j b_i/2)] − exp(−ρ)}, j = 1, 2, ..."
+)
+LEVEL_PAIRS = Defined(
+    "L₂",
+    f"L₂(α, b₁, b₂, b₃) = ∫ (c²/2 + 2 c t + t²) d³r/(π^(3/2) a₁ a₂ a₃), {_IN_SPACE}",
+    lambda alpha, *b: _level_sum(alpha, b, triples=False),
+)
+LEVEL_TRIPLES = Defined(
+    "L₃",
+    f"L₃(α, b₁, b₂, b₃) = ∫ (c³/6 + (3/2) c² t + 3 c t² + t³) d³r/(π^(3/2) a₁ a₂ a₃), {_IN_SPACE}",
+    lambda alpha, *b: _level_sum(alpha, b, triples=True),
 )
 
 

@@ -21,7 +21,8 @@ def _typed(sheet: Sheet, symbol: str, meaning: str, quantity: Quantity, unit: st
     )
 
 
-def _constant(sheet: Sheet, symbol: str, meaning: str, value: float, unit: str, source: str) -> Leaf:
+def constant(sheet: Sheet, symbol: str, meaning: str, value: float, unit: str, source: str) -> Leaf:
+    """A number that is the same for every cloud."""
     text = format_quantity(value, digits=10)
     return sheet.enter(
         Input(
@@ -117,6 +118,40 @@ def dipolar_length(sheet: Sheet) -> Leaf | None:
     )  # fmt: skip
 
 
+_LOSSES = {
+    "background_lifetime": ("τ_bg", "1/e lifetime by collisions with the background gas", "s"),
+    "two_body": ("K₂", "two-body rate constant of a thermal gas", "m^3/s"),
+    "three_body": ("K₃", "three-body rate constant of a thermal gas", "m^6/s"),
+    "heating": ("Ṫ_given", "heating that does not depend on density", "K/s"),
+    "intensity_noise": ("S", "relative intensity noise of the light, at 2f", "1/Hz"),
+}
+
+
+def loss(sheet: Sheet, name: str) -> Leaf:
+    """A number that says how atoms are lost or heated, typed or from the data."""
+    if name not in sheet.made:
+        sheet.made[name] = _loss(sheet, name)
+    leaf = sheet.made[name]
+    assert isinstance(leaf, Leaf)
+    return leaf
+
+
+def _loss(sheet: Sheet, name: str) -> Leaf:
+    symbol, meaning, unit = _LOSSES[name]
+    typed, used = getattr(sheet.answer.plan.losses, name), sheet.answer.losses
+    if typed is not None:
+        return _typed(sheet, symbol, meaning, typed, unit)
+    known = {"two_body": used.two_body, "three_body": used.three_body}.get(name)
+    if known is None:
+        raise ValueError(f"neither plan nor data have a {name.replace('_', ' ')}")
+    return sheet.enter(
+        Input(
+            symbol=symbol, meaning=meaning, text=known.text, value=known.value, unit=unit, origin=Origin.DATA,
+            source=known.source, certainty=known.certainty,
+        )
+    )  # fmt: skip
+
+
 @once
 def spin_states(sheet: Sheet) -> Leaf:
     count, typed = sheet.answer.cloud.spin_components, sheet.answer.plan.species.spin_components
@@ -146,35 +181,35 @@ def fermi_threshold(sheet: Sheet) -> Leaf:
 
 @once
 def h(sheet: Sheet) -> Leaf:
-    return _constant(sheet, "h", "Planck constant", planck, "J s", f"{_CODATA}, exact")
+    return constant(sheet, "h", "Planck constant", planck, "J s", f"{_CODATA}, exact")
 
 
 @once
 def hbar(sheet: Sheet) -> Leaf:
-    return _constant(sheet, "ħ", "reduced Planck constant, h/2π", reduced_planck, "J s", f"{_CODATA}, exact")
+    return constant(sheet, "ħ", "reduced Planck constant, h/2π", reduced_planck, "J s", f"{_CODATA}, exact")
 
 
 @once
 def k(sheet: Sheet) -> Leaf:
-    return _constant(sheet, "k", "Boltzmann constant", boltzmann, "J/K", f"{_CODATA}, exact")
+    return constant(sheet, "k", "Boltzmann constant", boltzmann, "J/K", f"{_CODATA}, exact")
 
 
 @once
 def zeta_2(sheet: Sheet) -> Leaf:
-    return _constant(sheet, "ζ(2)", "zeta function at 2, π²/6", zeta(2.0), "1", _ZETA)
+    return constant(sheet, "ζ(2)", "zeta function at 2, π²/6", zeta(2.0), "1", _ZETA)
 
 
 @once
 def zeta_3(sheet: Sheet) -> Leaf:
-    return _constant(sheet, "ζ(3)", "g₃(1): all that excited levels hold", zeta(3.0), "1", _ZETA)
+    return constant(sheet, "ζ(3)", "g₃(1): all that excited levels hold", zeta(3.0), "1", _ZETA)
 
 
 @once
 def zeta_3_2(sheet: Sheet) -> Leaf:
-    return _constant(sheet, "ζ(3/2)", "g_3/2(1): the largest n λ³ of thermal bosons", zeta(1.5), "1", _ZETA)
+    return constant(sheet, "ζ(3/2)", "g_3/2(1): the largest n λ³ of thermal bosons", zeta(1.5), "1", _ZETA)
 
 
 @once
 def interaction_coefficient(sheet: Sheet) -> Leaf:
     source = "Giorgini, Pitaevskii, Stringari, Phys. Rev. A 54, R4633 (1996)"
-    return _constant(sheet, "c₂", "coefficient of the interaction shift", INTERACTION_COEFFICIENT, "1", source)
+    return constant(sheet, "c₂", "coefficient of the interaction shift", INTERACTION_COEFFICIENT, "1", source)

@@ -27,7 +27,9 @@ if TYPE_CHECKING:
 T = TypeVar("T")
 Axes = tuple[Leaf, Leaf, Leaf]
 
-_COMPARE: dict[str, Callable[[float, float], bool]] = {">": operator.gt, "≤": operator.le, "≥": operator.ge}
+_COMPARE: dict[str, Callable[[float, float], bool]] = {
+    ">": operator.gt, "<": operator.lt, "≤": operator.le, "≥": operator.ge
+}  # fmt: skip
 
 
 class Regime(Enum):
@@ -176,19 +178,23 @@ class Sheet:
 
     def _given(self, name: str, symbol: str, where: str, amount: float) -> Leaf:
         row = QUANTITIES[name]
+        return self.unexplained(symbol, f"{row.label}{where}", amount, row.unit)
+
+    def unexplained(self, symbol: str, meaning: str, amount: float, unit: str) -> Leaf:
+        """A value of the model's numerical solution, of which no steps are written down."""
         self.steps.append(
             Step(
                 kind=StepKind.GIVEN,
-                meaning=f"{row.label}{where}, from the numerical solution of the model {self.solved.model.value}",
+                meaning=f"{meaning}, from the numerical solution of the model {self.solved.model.value}",
                 symbol=symbol,
-                expression=row.formula,
+                expression="",
                 numbers="",
                 result=result_text(amount),
                 value=amount,
-                unit=row.unit,
+                unit=unit,
             )
         )
-        return Leaf(symbol, amount, row.unit)
+        return Leaf(symbol, amount, unit)
 
 
 def once(make: Callable[[Sheet], T]) -> Callable[[Sheet], T]:

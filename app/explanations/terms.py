@@ -16,7 +16,7 @@ import numpy as np
 
 from app.units import format_quantity
 
-_RAISED = {2: "²", 3: "³"}
+_RAISED = {2: "²", 3: "³", 4: "⁴", 5: "⁵"}
 
 Read = Callable[["Leaf"], float]
 

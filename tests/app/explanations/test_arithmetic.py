@@ -1,0 +1,250 @@
+"""The arithmetic on show is worked out again, by other means, and must give what is printed beside it."""
+
+from __future__ import annotations
+
+import math
+import operator
+import re
+from collections.abc import Callable
+from itertools import pairwise
+from typing import Any
+
+import mpmath
+import numpy as np
+from scipy.integrate import quad
+from scipy.optimize import minimize_scalar
+
+from app.engine import CloudAnswer
+from app.explanations import Explanation, StepKind, explain
+from app.quantities import QUANTITIES
+from physics.statistics import bose, fermi
+
+
+def explanations(answer: CloudAnswer) -> list[Explanation]:
+    return [explain(answer, name) for name in QUANTITIES]
+
+
+# --- a calculator ---
+
+
+def integral(function: Callable[[float], float], *edges: float) -> float:
+    """By scipy, over sqrt(u), in which the integrands are smooth but for kinks at the edges."""
+    roots = [math.sqrt(edge) for edge in (0.0, *edges)]
+    roots += [roots[-1] + 1.0, roots[-1] + 3.0, roots[-1] + 7.0]
+    pieces = ((a, b) for a, b in pairwise(roots) if b > a)
+    return float(sum(quad(lambda w: 2 * w * function(w * w), a, b, epsrel=1e-11, limit=200)[0] for a, b in pieces))
+
+
+def shell(weight: Callable[[float, float, float], float]) -> Callable[[Any], float]:
+    """(2/sqrt(pi)) integral of sqrt(u) weight(u, x - u, d(u)) over the trap around a condensate of height x."""
+
+    def function(height: Any) -> float:
+        x = float(height)
+        return 2 / math.sqrt(math.pi) * integral(
+            lambda u: math.sqrt(u) * weight(u, x - u, bose(1.5, abs(u - x))), x
+        )  # fmt: skip
+
+    return function
+
+
+def levels(alpha: Any, spacings: tuple[Any, ...], term: Callable[..., Any]) -> float:
+    """Sum over j of exp(-j alpha) term(j b_1, j b_2, j b_3), term by term."""
+    b = np.array([float(spacing) for spacing in spacings])
+    j = np.arange(1.0, 60.0 / b.min())
+    return float(np.sum(np.exp(-j * float(alpha)) * term(*(j * spacing for spacing in b))))
+
+
+def product(*jb: Any) -> Any:
+    return 1.0 / np.prod([-np.expm1(-x) for x in jb], axis=0)
+
+
+def squared_levels(alpha: Any, *spacings: Any) -> float:
+    """The double sum, with what long powers leave, the ground level's share, summed by itself."""
+    b = np.array([float(spacing) for spacing in spacings])
+    j = np.arange(1.0, 45.0 / b.min())
+    powers, ground = np.exp(-j * float(alpha)), 1.0 / math.expm1(float(alpha))
+    pairs, mixed, both = np.ones((j.size, j.size)), np.ones_like(j), 8.0**-0.5
+    for spacing in b:
+        one, tanh = -np.expm1(-2 * j * spacing), np.tanh(j * spacing / 2)
+        pairs = pairs / np.sqrt(one[:, None] * one * (tanh[:, None] + tanh))
+        mixed = mixed / np.sqrt(one * (tanh + 1.0))
+    excited = powers @ (pairs - mixed - mixed[:, None] + both) @ powers
+    return float(excited + 2.0 * ground * (powers @ (mixed - both)) + both * ground * ground)
+
+
+def level_integral(alpha: Any, spacings: tuple[Any, ...], density: Callable[[Any, Any], Any]) -> float:
+    """Over space, by Gauss and Legendre in r_i/a_i, of the densities of ground and excited levels in units of n₁."""
+    b = np.array([float(spacing) for spacing in spacings])
+    j, ground = np.arange(1.0, 45.0 / b.min()), 1.0 / math.expm1(float(alpha))
+    tables, widths, grounds = [], [], []
+    for spacing in b:
+        nodes, weights = np.polynomial.legendre.leggauss(70)
+        reach = math.sqrt(40.0 * max(1.0, 2.0 / spacing))
+        x, dx = reach * ((nodes + 1) / 2) ** 2, reach * weights * (nodes + 1) / 2  # denser towards the centre
+        tables.append(np.exp(-np.outer(x**2, np.tanh(j * spacing / 2))) / np.sqrt(-np.expm1(-2 * j * spacing)))
+        widths.append(2.0 / math.sqrt(math.pi) * dx)
+        grounds.append(np.exp(-(x**2)))
+    first = tables[0] * np.exp(-j * float(alpha))
+    shape = np.einsum("a,b,c->abc", *grounds)
+    pairs = (first[:, None, :] * tables[1][None, :, :]).reshape(-1, j.size)
+    excited = (pairs @ tables[2].T).reshape(shape.shape) - np.exp(-j * float(alpha)).sum() * shape
+    return float(np.einsum("abc,a,b,c->", density(ground * shape, excited), *widths))
+
+
+def fitted(statistics: Callable[[float, float], float]) -> Callable[[Any], float]:
+    def image(q: float, log_z: float) -> float:
+        return integral(lambda t: statistics(2.0, log_z - t) * math.exp(-q * t), max(log_z, 0.0))
+
+    def ratio(log_z: Any) -> float:
+        x = float(log_z)
+        best = minimize_scalar(lambda q: -q * image(q, x) ** 2, bracket=(0.5, 1.2), options={"xtol": 1e-9})
+        return 1.0 / float(best.x)
+
+    return ratio
+
+
+def bose_at(s: float, log_z: float) -> float:
+    return float(bose(s, -log_z))
+
+
+def fermi_at(s: float, log_z: float) -> float:
+    return float(fermi(s, log_z))
+
+
+def fermi_function(s: float) -> Callable[[Any], Any]:
+    """By its integral, without the polylogarithm's cut."""
+    return lambda z: (
+        mpmath.quad(
+            lambda t: t ** (s - 1) / (mpmath.exp(t) / z + 1), [0, 1, abs(mpmath.log(z)) + 1, abs(mpmath.log(z)) + 60]
+        )
+        / mpmath.gamma(s)
+    )
+
+
+def interaction_average(K: Any) -> Any:
+    return (1 - mpmath.exp(1 / K) * mpmath.e1(1 / K) / K) / K
+
+
+BOSONS = {f"g_{name}": (lambda z, s=s: mpmath.polylog(s, z)) for name, s in
+          (("3_2", 1.5), ("5_2", 2.5), ("2", 2), ("3", 3), ("4", 4))}  # fmt: skip
+FERMI = {f"f_{name}": fermi_function(s) for name, s in (("3_2", 1.5), ("5_2", 2.5), ("2", 2), ("3", 3), ("4", 4))}
+SHARED: dict[str, Any] = {
+    **BOSONS, **FERMI, "pi": mpmath.pi, "exp": mpmath.exp, "ln": mpmath.log, "c": interaction_average,
+    "F": shell(lambda u, v, d: d),
+    "F_V": shell(lambda u, v, d: u * d),
+    "F_L": shell(lambda u, v, d: abs(v) * d),
+    "F_2": shell(lambda u, v, d: d * d),
+    "F_C": shell(lambda u, v, d: max(v, 0.0) * d),
+    "F_K": lambda x: 3 / math.sqrt(math.pi) * integral(
+        lambda u: math.sqrt(u) * bose(2.5, abs(u - float(x))), float(x)),
+    "S": lambda alpha, *b: levels(alpha, b, lambda *jb: product(*jb) - 1),
+    "Q": lambda alpha, *b: levels(alpha, b, lambda *jb: np.sqrt(product(*(2 * x for x in jb))) - 1),
+    "W": lambda alpha, *b: float(b[0]) * levels(
+        alpha, b, lambda *jb: (product(*jb) - 1) / 2 + product(*jb) / np.expm1(jb[0])),
+    "M": squared_levels,
+    "L_2": lambda alpha, *b: level_integral(alpha, b, lambda c, t: c * c / 2 + 2 * c * t + t * t),
+    "L_3": lambda alpha, *b: level_integral(
+        alpha, b, lambda c, t: c**3 / 6 + 1.5 * c * c * t + 3 * c * t * t + t**3),
+    "F_CC": shell(lambda u, v, d: max(v, 0.0) ** 2 * d),
+    "F_C2": shell(lambda u, v, d: max(v, 0.0) * d * d),
+    "F_3": shell(lambda u, v, d: d**3),
+}  # fmt: skip
+
+
+def overlap(statistics: Callable[[float, float], float], power: int) -> Callable[[Any], float]:
+    def mean(log_z: Any) -> float:
+        x = float(log_z)
+        total = integral(lambda u: math.sqrt(u) * statistics(1.5, x - u) ** power, max(x, 0.0))
+        return 2 / math.sqrt(math.pi) * total
+
+    return mean
+
+
+def lost_energy(statistics: Callable[[float, float], float], atoms: int) -> Callable[[Any], float]:
+    def density(log_z: float, u: float) -> float:
+        return math.sqrt(u) * statistics(1.5, log_z - u) ** (atoms - 1)
+
+    def energy(log_z: float, u: float) -> float:
+        return 1.5 * statistics(2.5, log_z - u) + u * statistics(1.5, log_z - u)
+
+    def mean(log_z: Any) -> float:
+        x, edge = float(log_z), max(float(log_z), 0.0)
+        above = integral(lambda u: density(x, u) * energy(x, u), edge)
+        return above / integral(lambda u: density(x, u) * statistics(1.5, x - u), edge)
+
+    return mean
+
+
+def calculated(numbers: str, bosons: bool) -> float:
+    """What a pocket calculator with the functions of the definitions makes of a line of numbers."""
+    text = re.sub(r"([gf])_(\d)/2\(", r"\1_\2_2(", numbers)
+    text = re.sub(r"([gfJL])([₂₃₄])\(", lambda m: f"{m[1]}_{'₀₁₂₃₄'.index(m[2])}(", text)
+    text = text.replace("×", "*").replace("^", "**").replace("π", "pi").replace("θ", "theta")
+    text = re.sub(r"(?<![\w.])(\d+(?:\.\d+)?(?:e-?\d+)?)", r"mpf('\1')", text)
+    statistics = bose_at if bosons else fermi_at
+    names = {
+        **SHARED, "J": overlap(statistics, 2), "J_3": overlap(statistics, 3), "theta": fitted(statistics),
+        "e_2": lost_energy(statistics, 2), "e_3": lost_energy(statistics, 3), "mpf": mpmath.mpf,
+    }  # fmt: skip
+    with mpmath.workdps(25):
+        return float(eval(text, {"__builtins__": {}}, names))
+
+
+COMPARISONS = {">": operator.gt, "<": operator.lt, "≥": operator.ge, "≤": operator.le}
+
+
+def last_place(text: str) -> float:
+    """The value of one unit in the last digit of a number as printed."""
+    mantissa, _, exponent = text.partition("e")
+    return 10.0 ** (int(exponent or 0) - len(mantissa.partition(".")[2]))
+
+
+def assert_printed(value: float, text: str, what: object) -> None:
+    """The value, rounded to the digits printed, is what is printed."""
+    slack = 1e-8 * abs(float(text))  # of the quadratures here
+    assert abs(value - float(text)) <= 0.5 * last_place(text) + slack, what
+
+
+def test_every_line_of_numbers_gives_the_result_beside_it(answer: CloudAnswer) -> None:
+    seen: set[tuple[str, str]] = set()
+    for explanation in explanations(answer):
+        for step in explanation.steps:
+            if (step.numbers, step.result) in seen:
+                continue
+            seen.add((step.numbers, step.result))
+            what = (explanation.name, step)
+            if step.kind is StepKind.FORMULA:
+                assert_printed(calculated(step.numbers, answer.bosons), step.result, what)
+            elif step.kind is StepKind.EQUATION:
+                assert_printed(calculated(step.numbers, answer.bosons), step.left, what)
+                assert step.left == step.right, what
+            elif step.kind is StepKind.CASE:
+                left, sign, right = step.numbers.split()
+                assert COMPARISONS[sign](float(left), float(right)), what
+            assert step.agrees, what
+    assert len(seen) > 10
+
+
+def test_results_have_six_digits_or_are_nothing(answer: CloudAnswer) -> None:
+    """Fewer only for a difference that vanishes: the classical formulas of a cloud that is classical."""
+    for explanation in explanations(answer):
+        for step in explanation.steps:
+            digits = re.sub(r"e.*|[-.]", "", step.result).lstrip("0")
+            short = step.kind is StepKind.CASE or step.result == "0" or explanation.name.endswith("_error")
+            assert short or len(digits) == 6, (explanation.name, step)
+
+
+def test_numbers_come_from_inputs_or_from_steps_before(answer: CloudAnswer) -> None:
+    """Every symbol of a line stands among the inputs or was found in a line above."""
+    functions = {"F_V", "F_L", "F_K", "F_2", "F_3", "F_C", "F_CC", "F_C2", "e_2", "e_3", "exp", "ln", "π"}
+    functions |= set("fgFJLMQSWcθ")
+    for explanation in explanations(answer):
+        known = {entry.symbol for entry in explanation.inputs} | functions
+        for step in explanation.steps:
+            unknown = step.expression
+            for symbol in sorted(known | {step.symbol} - {""}, key=len, reverse=True):
+                if step.kind is StepKind.EQUATION or symbol != step.symbol or symbol in known:
+                    unknown = unknown.replace(symbol, " ")
+            left = re.sub(r"_[35]/2|[₁₂₃₄²³⁴⁵\d\s()+−×/^=<>≤≥,.|]", "", unknown)
+            assert step.kind is StepKind.GIVEN or left == "", (explanation.name, step, left)
+            known |= {step.symbol} - {""}
