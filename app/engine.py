@@ -11,7 +11,8 @@ from __future__ import annotations
 from app.answers.cloud import FERMI_THRESHOLD, SAMPLES, CloudAnswer, cloud_answer
 from app.answers.map import MAP_POINTS, MapAnswer, MapLimits, map_answer, usual_limits
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
-from app.answers.slices import SLICE_POINTS, SlicesAnswer, slices_answer
+from app.answers.rates import RatesAnswer, RateSet, rates_answer
+from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
 from app.answers.tuning import TuningAnswer, tuning_answer, usual_fields
 
 __all__ = [
@@ -20,15 +21,19 @@ __all__ = [
     "PROFILE_POINTS",
     "SAMPLES",
     "SLICE_POINTS",
+    "Against",
     "CloudAnswer",
     "MapAnswer",
     "MapLimits",
     "ProfileAnswer",
+    "RateSet",
+    "RatesAnswer",
     "SlicesAnswer",
     "TuningAnswer",
     "cloud_answer",
     "map_answer",
     "profile_answer",
+    "rates_answer",
     "round_up",
     "slices_answer",
     "tuning_answer",

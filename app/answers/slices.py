@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, replace
+from enum import Enum
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -21,6 +22,13 @@ if TYPE_CHECKING:
 Array = NDArray[np.float64]
 
 SLICE_POINTS = 241
+
+
+class Against(Enum):
+    """What runs along the horizontal axis of a slice."""
+
+    TEMPERATURE = "T"
+    ATOMS = "N"
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -49,8 +57,8 @@ def slices_answer(plan: Plan, names: tuple[str, ...]) -> SlicesAnswer:
     atoms, temperature = float(central.cloud.atoms), float(central.cloud.temperature)
     # A level sum costs milliseconds, and a hundred points draw a smooth line.
     points = 61 if central.model is Model.EXACT_LEVELS else SLICE_POINTS
-    temperatures = np.geomspace(*_decade_around(temperature), points)
-    numbers = np.geomspace(*_decade_around(atoms), points)
+    temperatures = np.geomspace(*decades_around(temperature), points)
+    numbers = np.geomspace(*decades_around(atoms), points)
 
     def along(atoms: float | Array, temperature: float | Array) -> tuple[Array, ...]:
         cloud = replace(central.cloud, atoms=atoms, temperature=temperature)
@@ -72,7 +80,7 @@ def slices_answer(plan: Plan, names: tuple[str, ...]) -> SlicesAnswer:
     )
 
 
-def _decade_around(value: float) -> tuple[float, float]:
+def decades_around(value: float) -> tuple[float, float]:
     """A range that reaches at least a decade to both sides and moves only in half decades, so that a drag seldom
     changes an axis."""
     place = round(2.0 * math.log10(value)) / 2.0

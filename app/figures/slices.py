@@ -3,23 +3,14 @@
 from __future__ import annotations
 
 import math
-from enum import Enum
 
 import numpy as np
 
-from app.engine import SlicesAnswer
+from app.engine import Against, SlicesAnswer
 from app.figures.picture import Array, Axis, Curve, Mark, Picture, Role
 from app.language import translate as _
 from app.quantities import QUANTITIES, Row, display_factor
 from app.words import number, temperature
-
-
-class Against(Enum):
-    """What runs along the horizontal axis of a slice."""
-
-    TEMPERATURE = "T"
-    ATOMS = "N"
-
 
 LINEAR = frozenset({"condensate_fraction", "atoms_left_at_target", "classical_density_error", "classical_energy_error"})
 """Quantities that read best on a linear axis; the others span decades."""

@@ -9,8 +9,8 @@ from typing import Any
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QLabel, QMenu, QScrollArea, QToolButton, QWidget
 
-from app.engine import SlicesAnswer, slices_answer
-from app.figures.slices import Against, slice_picture
+from app.engine import Against, SlicesAnswer, slices_answer
+from app.figures.slices import slice_picture
 from app.figures.theme import Theme
 from app.plan import Plan
 from app.quantities import QUANTITIES, Group, Need, rows_in

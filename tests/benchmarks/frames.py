@@ -17,11 +17,11 @@ os.environ.setdefault("QT_API", "pyside6")
 
 from PySide6.QtWidgets import QApplication
 
-from app.engine import cloud_answer, map_answer, profile_answer, slices_answer, usual_limits
+from app.engine import Against, cloud_answer, map_answer, profile_answer, slices_answer, usual_limits
 from app.figures.map import map_picture
 from app.figures.picture import Picture
 from app.figures.profile import Depth, profile_picture
-from app.figures.slices import Against, slice_picture
+from app.figures.slices import slice_picture
 from app.plan import plan_with
 from app.plan_file import read_plan
 from app.window.live_canvas import LiveCanvas

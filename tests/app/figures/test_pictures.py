@@ -5,11 +5,11 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from app.engine import MapLimits, cloud_answer, map_answer, profile_answer, slices_answer
+from app.engine import Against, MapLimits, cloud_answer, map_answer, profile_answer, slices_answer
 from app.figures.map import SPLIT, map_picture, with_cloud
 from app.figures.picture import Axis, Picture, Role
 from app.figures.profile import Depth, profile_picture
-from app.figures.slices import Against, slice_picture
+from app.figures.slices import slice_picture
 from app.plan import DEFAULT_PLAN, Plan, plan_with
 
 LIMITS = MapLimits(atoms_low=1e3, atoms_high=1e7, temperature_low=1e-8, temperature_high=1e-5)

@@ -1,0 +1,126 @@
+"""All rates of a cloud on one logarithmic axis, so that what limits is seen at once."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from app.engine import Against, RatesAnswer, RateSet
+from app.figures.picture import Array, Axis, Curve, Label, Mark, Picture, Role
+from app.language import translate as _
+from app.units import best_unit, format_quantity
+from app.words import number, temperature
+
+_DECADES = 9  # shown at most, from the fastest rate down
+
+_CURVES = (
+    ("rethermalisation", _("rethermalisation"), Role.FIRST),
+    ("losses", _("all known losses"), Role.TOTAL),
+    ("three_body", _("three-body loss"), Role.FOURTH),
+    ("two_body", _("two-body loss"), Role.THIRD),
+    ("background", _("background loss"), Role.SECOND),
+    ("heating", _("heating, dT/dt over T"), Role.CLASSICAL),
+)
+"""Attribute of `RateSet`, what the legend calls it, and its line."""
+
+
+def rates_picture(answer: RatesAnswer) -> Picture:
+    """Rethermalisation, losses and heating against temperature or atom number, the cloud and the threshold marked."""
+    curves = [
+        Curve(name=name, role=role, x=answer.grid, y=_positive(getattr(answer.rates, attribute)))
+        for attribute, name, role in _CURVES
+        if _several(answer.rates) or attribute != "losses"
+    ]
+    curves = [curve for curve in curves if np.any(np.isfinite(curve.y))]
+    drawn, axis = bool(curves), _rate_axis(curves)
+    labels = []
+    # A thin line with a word: a line of the threshold's own would look like that of all losses.
+    if answer.grid[0] < answer.threshold < answer.grid[-1]:
+        curves.append(_upright(answer.threshold, Role.DECADE, axis))
+        foot = axis.low * (axis.high / axis.low) ** 0.05
+        labels.append(Label(text=_("threshold"), role=Role.THRESHOLD, x=answer.threshold, y=foot))
+    curves.append(_upright(answer.place, Role.CLOUD, axis))
+    marks = tuple(
+        Mark(name=name, role=Role.CLOUD, x=answer.place, y=float(value))
+        for name, value in ((_("cloud"), answer.now.rethermalisation), ("", answer.now.losses))
+        if axis.low <= float(value) <= axis.high
+    )
+    return Picture(
+        title=_title(answer),
+        x=_place_axis(answer),
+        y=axis,
+        curves=tuple(curves),
+        marks=marks,
+        labels=tuple(labels),
+        summary=limits_sentence(answer.now),
+        note="" if drawn else _("no rate is known: give a scattering length and losses"),
+    )
+
+
+def _upright(place: float, role: Role, axis: Axis) -> Curve:
+    return Curve(name="", role=role, x=np.array([place, place]), y=np.array([axis.low, axis.high]))
+
+
+def limits_sentence(now: RateSet) -> str:
+    """What limits the cloud, in one sentence: the fastest loss, and how it compares with rethermalisation."""
+    losses = {
+        _("background gas"): now.background,
+        _("two-body collisions"): now.two_body,
+        _("three-body collisions"): now.three_body,
+    }
+    known = {name: float(rate) for name, rate in losses.items() if float(rate) > 0.0}
+    thermal = float(now.rethermalisation)
+    known_thermal = math.isfinite(thermal) and thermal > 0.0
+    if not known:
+        return (
+            _("No loss is known; atoms rethermalise in {time}.").format(time=_time(thermal))
+            if known_thermal
+            else _("Neither losses nor collisions are known.")
+        )
+    name, rate = max(known.items(), key=lambda item: item[1])
+    together = _("Loss by {what} limits: {time}, with all known losses {all}.")
+    text = (together if len(known) > 1 else _("Loss by {what} limits: {time}; no other is known.")).format(
+        what=name, time=_time(rate), all=_time(float(now.losses))
+    )
+    if not known_thermal:
+        return text
+    ratio = thermal / float(now.losses)
+    return _("{text} Atoms rethermalise in {time}, {ratio} times in that lifetime.").format(
+        text=text, time=_time(thermal), ratio=number(ratio, 2)
+    )
+
+
+def _time(rate: float) -> str:
+    seconds = 1.0 / rate
+    return format_quantity(seconds, best_unit(seconds, ("µs", "ms", "s")), digits=3)
+
+
+def _title(answer: RatesAnswer) -> str:
+    if answer.against is Against.TEMPERATURE:
+        return _("rates of an atom at N = {N}").format(N=number(answer.atoms))
+    return _("rates of an atom at T = {T}").format(T=temperature(answer.temperature))
+
+
+def _place_axis(answer: RatesAnswer) -> Axis:
+    low, high = float(answer.grid[0]), float(answer.grid[-1])
+    if answer.against is Against.TEMPERATURE:
+        return Axis(label=_("temperature T"), unit="K", low=low, high=high, log=True, prefixed=True)
+    return Axis(label=_("atoms N"), unit="", low=low, high=high, log=True)
+
+
+def _rate_axis(curves: list[Curve]) -> Axis:
+    """Whole decades, at most nine of them from the top: what is slower limits nothing."""
+    values = np.concatenate([curve.y[np.isfinite(curve.y)] for curve in curves]) if curves else np.array([1.0])
+    top = math.ceil(math.log10(float(values.max())) + 0.05)
+    bottom = max(math.floor(math.log10(float(values.min())) - 0.05), top - _DECADES)
+    return Axis(label=_("rate"), unit="1/s", low=10.0**bottom, high=10.0**top, log=True)
+
+
+def _positive(values: Array) -> Array:
+    return np.where(values > 0.0, values, np.nan)
+
+
+def _several(rates: RateSet) -> bool:
+    """Whether more than one loss is known, so that their sum says something new."""
+    return sum(bool(np.any(part > 0.0)) for part in (rates.background, rates.two_body, rates.three_body)) > 1
