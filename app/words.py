@@ -65,8 +65,12 @@ def verdict(answer: CloudAnswer) -> str:
 def _bosons(answer: CloudAnswer) -> str:
     solved = answer.equilibrium
     reduced, fraction = float(solved.reduced_temperature), float(solved.condensate_fraction)
-    if abs(reduced - 1.0) < NEAR or _straddles(answer, 1.0):
+    if abs(reduced - 1.0) < NEAR:
         return _("At the edge of condensation: T is {ratio} of the critical temperature.").format(
+            ratio=percent(reduced)
+        )
+    if _straddles(answer, 1.0):
+        return _("Condensed or not, within the uncertainty: T is {ratio} of the critical temperature.").format(
             ratio=percent(reduced)
         )
     if reduced < 1.0:
@@ -85,8 +89,12 @@ def _bosons(answer: CloudAnswer) -> str:
 def _fermions(answer: CloudAnswer) -> str:
     solved = answer.equilibrium
     reduced, limit = float(solved.reduced_temperature), answer.threshold
-    if abs(reduced / limit - 1.0) < NEAR or _straddles(answer, limit):
+    if abs(reduced / limit - 1.0) < NEAR:
         return _("At the edge of degeneracy: T/TF = {ratio}.").format(ratio=number(reduced, 2))
+    if _straddles(answer, limit):
+        return _("Degenerate or not, within the uncertainty: T/TF = {ratio}, and the edge is at {limit}.").format(
+            ratio=number(reduced, 2), limit=f"{limit:.3g}"
+        )
     if reduced < limit:
         word = _("Deeply degenerate") if reduced < 0.2 else _("Degenerate")
         return _("{word}: T/TF = {ratio}, with {filled} of the lowest level filled.").format(

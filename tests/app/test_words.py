@@ -43,9 +43,15 @@ def test_fermions_are_told_where_they_stand(temperature: str, expected: str) -> 
     assert sentence(species__key="40K", cloud__temperature=temperature) == expected
 
 
-def test_a_cloud_whose_error_spans_the_threshold_is_at_the_edge() -> None:
-    assert sentence(cloud__temperature="160(30) nK").startswith("At the edge of condensation")
+def test_a_cloud_whose_error_spans_the_threshold_may_be_on_either_side() -> None:
+    assert sentence(cloud__temperature="160(30) nK") == (
+        "Condensed or not, within the uncertainty: T is 116 % of the critical temperature."
+    )
     assert sentence(cloud__temperature="160 nK").startswith("Close, not condensed")
+    assert sentence(cloud__temperature="140(30) nK").startswith("At the edge of condensation")
+    assert sentence(species__key="40K", cloud__temperature="150(30) nK") == (
+        "Degenerate or not, within the uncertainty: T/TF = 0.56, and the edge is at 0.5."
+    )
 
 
 def test_the_distance_to_the_threshold_is_given_three_ways() -> None:
