@@ -9,7 +9,17 @@ cloud part is cheap enough for the thread that asks; the others are vectorised a
 from __future__ import annotations
 
 from app.answers.cloud import FERMI_THRESHOLD, SAMPLES, CloudAnswer, cloud_answer
-from app.answers.map import MAP_POINTS, MapAnswer, MapLimits, map_answer, usual_limits
+from app.answers.map import (
+    MAP_POINTS,
+    MapAnswer,
+    MapLimits,
+    draft_map,
+    is_slow,
+    map_answer,
+    map_points,
+    map_with_progress,
+    usual_limits,
+)
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
 from app.answers.rates import RatesAnswer, RateSet, rates_answer
 from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
@@ -31,7 +41,11 @@ __all__ = [
     "SlicesAnswer",
     "TuningAnswer",
     "cloud_answer",
+    "draft_map",
+    "is_slow",
     "map_answer",
+    "map_points",
+    "map_with_progress",
     "profile_answer",
     "rates_answer",
     "round_up",

@@ -14,6 +14,7 @@ from app.figures.picture import Array, Axis, Curve, Field, Label, Mark, Picture,
 from app.figures.ticks import power_text
 from app.language import translate as _
 from app.words import number, verdict
+from physics.models import Model
 
 SPLIT = 0.62
 """Place of the threshold in the colour scale: below it the thermal cloud, above it the degenerate one."""
@@ -24,6 +25,10 @@ LOWEST_RATIO = 0.01
 _FRACTIONS = (0.1, 0.5, 0.9)
 _RATIOS = (10.0, 1.0, 0.1)
 _DECADES = _("phase-space density, decades")
+_OWN_THRESHOLD = {
+    Model.EXACT_LEVELS: _("exact levels saturated"),
+    Model.HARTREE_FOCK: _("Hartree-Fock onset"),
+}
 _SHORTEST_LABELLED = 12  # points: a contour that only cuts a corner gets no label
 _THRESHOLD_DENSITY = 2.612375348685488  # zeta(3/2)
 
@@ -58,6 +63,7 @@ def map_picture(answer: MapAnswer, cloud: CloudAnswer) -> Picture:
         marks=(_cloud_mark(cloud),),
         labels=tuple(labels),
         summary=verdict(cloud),
+        note="" if answer.complete else _("shown: {model}").format(model=answer.model.label),
     )
 
 
@@ -157,16 +163,20 @@ def _contour(
 
 
 def _thresholds(answer: MapAnswer) -> tuple[Curve, ...]:
-    name = (
-        _("condensation, ideal") if answer.bosons else _("T/TF = {limit}").format(limit=f"{answer.fermi_threshold:.3g}")
-    )
-    ideal = Curve(name=name, role=Role.THRESHOLD, x=answer.atoms, y=answer.threshold)
-    if not answer.bosons or not np.any(np.isfinite(answer.threshold_shifted)):
-        return (ideal,)
-    shifted = np.where(answer.threshold_shifted > 0.0, answer.threshold_shifted, np.nan)
-    return (
-        ideal,
-        Curve(name=_("condensation, shifted"), role=Role.THRESHOLD_SHIFTED, x=answer.atoms, y=shifted),
+    """The ideal threshold, the one with first-order shifts, and that of the model where it has its own."""
+    if not answer.bosons:
+        name = _("T/TF = {limit}").format(limit=f"{answer.fermi_threshold:.3g}")
+        return (Curve(name=name, role=Role.THRESHOLD, x=answer.atoms, y=answer.threshold),)
+    lines = [
+        (_("condensation, ideal"), Role.THRESHOLD, answer.threshold),
+        (_("shifted by size and interaction"), Role.THRESHOLD_SHIFTED, answer.threshold_shifted),
+    ]
+    if answer.model in _OWN_THRESHOLD:
+        lines.append((_OWN_THRESHOLD[answer.model], Role.THRESHOLD_OF_MODEL, answer.threshold_of_model))
+    return tuple(
+        Curve(name=name, role=role, x=answer.atoms, y=np.where(line > 0.0, line, np.nan))
+        for name, role, line in lines
+        if np.any(line > 0.0)
     )
 
 

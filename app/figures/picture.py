@@ -26,6 +26,7 @@ class Role(Enum):
     CLASSICAL = auto()
     THRESHOLD = auto()
     THRESHOLD_SHIFTED = auto()
+    THRESHOLD_OF_MODEL = auto()
     DECADE = auto()
     FRACTION = auto()
     FIRST = auto()  # curves of unlike quantities, told apart by order

@@ -26,7 +26,15 @@ Lab = tuple[float, float, float]
 _RGB_TO_XYZ = np.array([[0.4124, 0.3576, 0.1805], [0.2126, 0.7152, 0.0722], [0.0193, 0.1192, 0.9505]])
 _WHITE = _RGB_TO_XYZ.sum(axis=1)
 _MAP_ROLES = frozenset(
-    {Role.THRESHOLD, Role.THRESHOLD_SHIFTED, Role.DECADE, Role.FRACTION, Role.CLOUD, Role.UNCERTAINTY}
+    {
+        Role.THRESHOLD,
+        Role.THRESHOLD_SHIFTED,
+        Role.THRESHOLD_OF_MODEL,
+        Role.DECADE,
+        Role.FRACTION,
+        Role.CLOUD,
+        Role.UNCERTAINTY,
+    }
 )
 
 
@@ -134,6 +142,7 @@ def _lines(
         Role.CLASSICAL: LineStyle(colour=quiet, width=1.3, dash=(3.0, 2.4)),
         Role.THRESHOLD: LineStyle(colour=ink, width=1.9),
         Role.THRESHOLD_SHIFTED: LineStyle(colour=ink, width=1.5, dash=(5.0, 2.2)),
+        Role.THRESHOLD_OF_MODEL: LineStyle(colour=blue, width=1.7, dash=(6.0, 1.6, 1.4, 1.6)),
         Role.DECADE: LineStyle(colour=ink, width=0.6),
         Role.FRACTION: LineStyle(colour=ink, width=1.1, dash=(1.2, 2.0)),
         Role.FIRST: LineStyle(colour=blue, width=1.8),

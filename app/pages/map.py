@@ -2,23 +2,33 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Any
 
 from PySide6.QtWidgets import QWidget
 
 from app.answers.csv_text import map_csv
-from app.engine import CloudAnswer, MapAnswer, MapLimits, map_answer, usual_limits
+from app.engine import (
+    CloudAnswer,
+    MapAnswer,
+    MapLimits,
+    draft_map,
+    is_slow,
+    map_answer,
+    map_with_progress,
+    usual_limits,
+)
 from app.figures.map import map_picture, with_cloud
 from app.figures.picture import Picture
 from app.figures.theme import Theme
+from app.language import translate as _
 from app.moving import moved_quantity
+from app.newest import Job, Steps, Watch
 from app.plan import Plan
 from app.units import ATOM_NUMBER, TEMPERATURE
 from app.widgets.page import Page
 from app.words import number, temperature
-from physics.cloud import Model, equilibrium
+from physics.cloud import equilibrium
 
 _TEMPERATURE_UNITS = ("pK", "nK", "µK", "mK", "K")
 HINT = "Drag the cloud, or double-click where it should be"
@@ -54,21 +64,30 @@ class MapPage(Page):
         canvas.pointer_moved.connect(self._read_pointer)
         self.plot.view_changed.connect(self.part_wanted)
 
-    def part(self, plan: Plan) -> Callable[[], _Ground] | None:
+    def part(self, plan: Plan) -> Job | None:
         limits = self._wanted_limits(plan)
         cloud = self.cloud
         if cloud is None:
             return None
 
         depends_on = _what_a_map_depends_on(plan, limits)
-        if self._ground is not None and self._ground.depends_on == depends_on:
+        ground = self._ground
+        if ground is not None and ground.depends_on == depends_on and ground.answer.complete:
             return None
 
-        def job() -> _Ground:
-            answer = map_answer(plan, limits)
+        def shown(answer: MapAnswer) -> _Ground:
             return _Ground(depends_on, answer, map_picture(answer, cloud))
 
-        return job
+        def in_steps(watch: Watch) -> _Ground | None:
+            if not watch.deliver(shown(draft_map(plan, limits))):
+                return None
+            answer = map_with_progress(plan, limits, watch.tell)
+            return None if answer is None else shown(answer)
+
+        if is_slow(cloud.model):
+            what = _("{model} map").format(model=cloud.model.label)
+            return Steps(what=what, depends_on=(self.title, depends_on), run=in_steps)
+        return lambda: shown(map_answer(plan, limits))
 
     def take_part(self, answer: Any) -> None:
         # A map that was under way when its trap was changed back has nothing to be shown under.
@@ -131,8 +150,7 @@ class MapPage(Page):
             return
         atoms, kelvin = place
         central = self.cloud
-        model = Model.IDEAL if central.model is Model.EXACT_LEVELS else central.model
-        there = equilibrium(replace(central.cloud, atoms=atoms, temperature=kelvin), model)
+        there = equilibrium(replace(central.cloud, atoms=atoms, temperature=kelvin), central.model)
         ratio = "T/Tc" if central.bosons else "T/TF"
         self.bar.status.say(
             f"N = {number(atoms)}   T = {temperature(kelvin)}   "
