@@ -17,10 +17,12 @@ from app.widgets.readout_model import AnyIndex, ReadoutModel, ReadoutPainter
 
 class Readouts(QTreeView):
     """The readouts pane. unit_chosen(name, unit) is sent when the reader picks another unit for a quantity;
-    detail_changed(str) with formula, source and range when another quantity is selected."""
+    detail_changed(str) with formula, source and range when another quantity is selected; why_asked(name) when the
+    reader wants to see how a number is worked out."""
 
     unit_chosen = Signal(str, str)
     detail_changed = Signal(str)
+    why_asked = Signal(str)
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -85,6 +87,8 @@ class Readouts(QTreeView):
         if row is None:
             return None
         menu = QMenu(self)
+        menu.addAction("Why this number…").triggered.connect(lambda: self.why_asked.emit(row.name))
+        menu.addSeparator()
         present = self._model.reading_of(row).unit
         for unit in row.units if len(row.units) > 1 else ():
             action = menu.addAction(f"in {unit}" if unit != "1" else "as a plain number")
@@ -96,6 +100,15 @@ class Readouts(QTreeView):
         menu.addAction("Copy value").triggered.connect(self.copy)
         menu.addAction("Copy all readouts").triggered.connect(self.copy_all)
         return menu
+
+    def ask_why(self) -> None:
+        """Ask how the current quantity is worked out; the first one where a heading or nothing is current."""
+        row = self._model.row_at(self.currentIndex())
+        if row is None:
+            group = self._model.index(max(self.currentIndex().row(), 0), 0)
+            row = self._model.row_at(self._model.index(0, 0, group))
+        if row is not None:
+            self.why_asked.emit(row.name)
 
     def _choose_at(self, index: QModelIndex) -> None:
         self._open_menu(index, self.viewport().mapToGlobal(self.visualRect(index).bottomLeft()))

@@ -128,6 +128,14 @@ ACTIONS: tuple[ActionSpec, ...] = (
     ),
     ActionSpec("view.readouts", _V, "&Readouts", "Ctrl+4", "Go to the readouts", lambda w: w.desk.show_readouts()),
     ActionSpec(
+        "view.why",
+        _V,
+        "&Why this number…",
+        "Ctrl+I",
+        "Inputs, formulas and intermediate values of the selected readout",
+        lambda w: w.desk.readouts.ask_why(),
+    ),
+    ActionSpec(
         "view.next_pane",
         _V,
         "&Next pane",

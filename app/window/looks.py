@@ -47,7 +47,7 @@ def style_sheet_of(theme: Theme) -> str:
         #banner {{ background: {theme.base}; border: none; border-bottom: 2px solid {theme.warning}; }}
         #bannerSign {{ color: {theme.warning}; font-weight: bold; }}
         #verdictSentence {{ background: transparent; }}
-        #bench, #benchBody, #readouts, #caveats, #detail {{ background: {theme.window}; border: none; }}
+        #bench, #benchBody, #readouts, #caveats, #detail, #explanation {{ background: {theme.window}; border: none; }}
         #formTitle, #paneTitle {{ color: {theme.muted}; font-weight: 600; }}
         #fieldNote, #plotStatus, #detail {{ color: {theme.muted}; }}
         #fieldError {{ color: {theme.error}; }}

@@ -30,6 +30,7 @@ if TYPE_CHECKING:
     from app.window.looks import Looks
     from app.window.recovery import Recovery
     from app.window.undo import Document
+    from app.window.why import Why
 
 FIRST_SIZE = QSize(1400, 900)
 
@@ -49,6 +50,7 @@ class MainWindow(QMainWindow):
     looks: Looks
     recovery: Recovery
     banner: Banner
+    why: Why
     actions_by_id: dict[str, QAction]
 
     def __init__(self, settings: Settings, *, size: QSize | None = None) -> None:
@@ -91,6 +93,7 @@ class MainWindow(QMainWindow):
         from app.window.looks import Looks
         from app.window.recovery import Recovery, install_excepthook
         from app.window.undo import Document
+        from app.window.why import Why
 
         self.looks = Looks(self.settings, theme, self)
         self.setPalette(QPalette())
@@ -98,6 +101,7 @@ class MainWindow(QMainWindow):
         self.answers = Answers(self)
         self.desk = Desk(self.looks.theme)
         self.banner = Banner()
+        self.why = Why(self)
         self.files = Files(self.document, self.settings, self, self.tell, lambda: self.desk.bench.problems)
         self.recovery = Recovery(self.document, self.settings.state_folder, self)
         self.actions_by_id = install_actions(self)
@@ -156,6 +160,7 @@ class MainWindow(QMainWindow):
             self.looks.theme_changed.connect(page.set_theme)
         # what is remembered, and what is told
         desk.readouts.unit_chosen.connect(self._choose_unit)
+        desk.readouts.why_asked.connect(self._explain)
         desk.slices.chosen_changed.connect(lambda names: self.settings.put("slices/chosen", names))
         for page in desk.pages:
             page.told.connect(self.tell)
@@ -181,6 +186,7 @@ class MainWindow(QMainWindow):
         if desk.readouts_in_front:
             desk.readouts.show_answer(answer, self.settings.units)
             desk.caveats.show_lines(caveat_lines(answer))
+        self.why.show_answer(answer, self.settings.units)
         for page in desk.pages:
             page.show_cloud(answer)
         self._ask_part()
@@ -200,6 +206,7 @@ class MainWindow(QMainWindow):
     def _mark_stale(self, reason: str) -> None:
         self.desk.verdict.mark_stale(reason)
         self.desk.readouts.mark_stale()
+        self.why.mark_stale()
         for page in self.desk.pages:
             page.mark_stale("last good answer")
 
@@ -226,6 +233,13 @@ class MainWindow(QMainWindow):
         self.settings.units = {**self.settings.units, name: unit}
         if self.answers.cloud is not None:
             self.desk.readouts.show_answer(self.answers.cloud, self.settings.units)
+            self.why.show_answer(self.answers.cloud, self.settings.units)
+
+    def _explain(self, name: str) -> None:
+        if self.answers.cloud is not None:
+            self.why.ask(name, self.answers.cloud, self.settings.units)
+        if self.desk.verdict.stale:
+            self.why.mark_stale()
 
     # ---------------------------------------------------------------- files and history
 
