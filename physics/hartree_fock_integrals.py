@@ -145,20 +145,19 @@ class Edge:
         return np.clip(rise, 0.0, steepest * above)  # y is convex and flat at the edge
 
 
-def _alpha_outside(g: Floats, inside: Floats, height: Floats) -> Floats:
+def _alpha_outside(g: Floats, alpha_inside: Floats, height: Floats) -> Floats:
     """alpha of the thermal gas at y_min: between 0 and that of the condensate."""
     # Newton for r = sqrt(alpha), in which g_3/2 is regular; a step that leaves the bracket becomes a bisection.
-    low, high = np.zeros_like(g), np.sqrt(inside)
+    low, high = np.zeros_like(g), np.sqrt(alpha_inside)
     r: Floats = (math.sqrt(2.0) - 1.0) * high  # the limit of small g
     for _ in range(_STEPS):
         alpha = r * r
         miss = alpha - 2.0 * g * bose(1.5, alpha) + height
         low, high = np.where(miss > 0.0, low, r), np.where(miss > 0.0, r, high)
-        proposed = r - miss / (2.0 * r * (1.0 + 2.0 * g * bose(0.5, alpha)))
-        new = np.where((proposed > low) & (proposed < high), proposed, 0.5 * (low + high))
-        moved = np.max(np.abs(new - r), initial=0.0)
-        r = new
-        if moved < 1e-15:
+        step = miss / (2.0 * r * (1.0 + 2.0 * g * bose(0.5, alpha)))
+        inside = (r - step >= low) & (r - step <= high)
+        r = np.where(inside, r - step, 0.5 * (low + high))
+        if np.all(np.abs(step) < 2e-15 * np.maximum(r, 1.0)):  # rounding of the mean field; also where r is at the end
             break
     return r * r
 
