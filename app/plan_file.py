@@ -223,18 +223,16 @@ def _whole(entry: object) -> int:
 
 
 def _model(entry: str) -> Model:
-    from physics.cloud import AVAILABLE_MODELS, Model
+    from physics.cloud import AVAILABLE_MODELS
 
     def plain(text: str) -> str:
         return "".join(c for c in text.casefold() if c.isalpha())
 
     names = ", ".join(f'"{model.value}"' for model in AVAILABLE_MODELS)
-    found = next((model for model in Model if plain(model.value) == plain(entry)), None)
+    found = next((model for model in AVAILABLE_MODELS if plain(model.value) == plain(entry)), None)
     if found is None:
         near = _nearest(entry, [model.value for model in AVAILABLE_MODELS])
         raise PlanError(f'"{entry}" is not a model: {names} are; the nearest is "{near}"')
-    if found not in AVAILABLE_MODELS:
-        raise PlanError(f'"{found.value}" is not computed by this version: {names} are')
     return found
 
 
