@@ -240,10 +240,10 @@ def test_what_is_wrong_is_said_in_one_sentence(text: str, sentence: str) -> None
     assert "\n" not in str(caught.value)
 
 
-def test_a_model_that_is_not_computed_yet_is_refused() -> None:
-    for model in set(Model) - set(AVAILABLE_MODELS):
-        with pytest.raises(PlanError, match=f'"{model.value}" is not computed by this version'):
-            parse_plan(PLAIN + f'model = "{model.value}"\n', "a.toml")
+@pytest.mark.parametrize("model", AVAILABLE_MODELS)
+def test_every_model_is_read_however_it_is_spelt(model: Model) -> None:
+    for text in (model.value, model.value.upper(), model.value.replace("-", " ")):
+        assert parse_plan(f'{PLAIN}model = "{text}"\n', "a.toml").cloud.model is model
 
 
 def test_files_that_are_none(tmp_path: Path) -> None:
