@@ -191,11 +191,6 @@ def _ideal_fermi(solved: IdealFermi) -> tuple[Floats, Floats]:
     return squared / solved._quantum_volume, cubed / solved._quantum_volume**2
 
 
-# Nodes along each half axis, for sums over space of the density of exact levels. In t = arsinh(x/a), a the width of the
-# ground level, both it and the wide thermal cloud are smooth, and end as e^(-e^2t).
-_NODES = 24  # along each half axis: relative error below 1e-8
-
-
 def _exact_levels(solved: ExactLevels) -> tuple[Floats, Floats]:
     """The ground level is the condensate, though without a threshold the excited atoms near it are hardly thermal."""
     shape = solved.cloud.shape
@@ -210,7 +205,7 @@ def _exact_levels(solved: ExactLevels) -> tuple[Floats, Floats]:
 def _level_densities(spacings: Floats, ground: float) -> tuple[float, float]:
     """Integrals for two- and three-body losses, in units of the peak density of one ground-level atom. [1]"""
     levels = OscillatorLevels(spacings, COARSE_ORDER)
-    excited, condensate, weights = levels.densities_in_space(float(ground_distance(ground)), _NODES)
+    excited, condensate, weights = levels.densities_in_space(float(ground_distance(ground)))
     c, t = ground * condensate, excited
     two = float(np.sum(weights * (0.5 * c * c + 2.0 * c * t + t * t)))
     three = float(np.sum(weights * (c**3 / 6.0 + 1.5 * c * c * t + 3.0 * c * t * t + t**3)))

@@ -29,6 +29,7 @@ _ORDER = 20  # nodes a block: relative error 5.8^-40
 COARSE_ORDER = 8  # where pairs of them are summed: 5.8^-16
 _RANGE = 45.0  # e^-45 is nothing
 _STEPS = 200
+_NODES = 6.0  # of an integral over space, for each unit of t
 
 
 @cache
@@ -128,22 +129,19 @@ class OscillatorLevels:
         of that axis is not used."""
         return self._sum_of_propagators(alpha, squares, along)
 
-    def densities_in_space(self, alpha: float, nodes: int) -> tuple[Floats, Floats, Floats]:
+    def densities_in_space(self, alpha: float) -> tuple[Floats, Floats, Floats]:
         """Density of the excited atoms and of one atom in the ground level at points of an eighth of space, and the
         weights that make a sum over them an integral over all of it.
 
-        Densities in units of 1/(pi^(3/2) aho^3), the integral in the inverse of that: one atom gives 1.
-
-        Parameters
-        ----------
-        nodes : int. Along each half axis. They are even in t = arsinh(x/a), in which the narrow ground level and the
-            wide cloud of excited atoms are both smooth and end as e^(-e^2t).
+        Densities in units of 1/(pi^(3/2) aho^3), the integral in the inverse of that: one atom gives 1. Nodes are even
+        in t = arsinh(x/a), in which the narrow ground level and the wide cloud of excited atoms are both smooth and
+        end as e^(-e^2t); integrals of densities squared and cubed have relative errors below 1e-8.
         """
         tables, grounds, weights = [], [], []
         for spacing in self.spacings:
             end = math.asinh(math.sqrt(40.0 * max(1.0, 1.0 / spacing)))
-            t = np.linspace(0.0, end, nodes)
-            x, weight = np.sinh(t), 2.0 / math.sqrt(math.pi) * np.cosh(t) * (end / (nodes - 1))
+            t, step = np.linspace(0.0, end, math.ceil(_NODES * end), retstep=True)
+            x, weight = np.sinh(t), 2.0 / math.sqrt(math.pi) * np.cosh(t) * step
             weight[0] *= 0.5
             jb = np.minimum(self._j * spacing, 300.0)[:, np.newaxis]
             tables.append(np.exp(-x * x * np.tanh(0.5 * jb)) / np.sqrt(-np.expm1(-2.0 * jb)))
@@ -151,7 +149,7 @@ class OscillatorLevels:
             weights.append(weight)
         powers = self._fugacity_powers(alpha)
         first = tables[0] * powers[:, np.newaxis]
-        pairs = (first[:, :, np.newaxis] * tables[1][:, np.newaxis, :]).reshape(-1, nodes**2)
+        pairs = (first[:, :, np.newaxis] * tables[1][:, np.newaxis, :]).reshape(self._j.size, -1)
         ground = np.einsum("a,b,c->abc", *grounds)
         # Less the ground level itself, as everywhere here: it has no power series where it holds many atoms.
         together = (pairs.T @ tables[2]).reshape(ground.shape)

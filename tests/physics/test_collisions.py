@@ -4,10 +4,12 @@ from __future__ import annotations
 
 import math
 
+import mpmath
 import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from scipy.integrate import quad
 from scipy.special import exp1
 
 from physics import collisions
@@ -80,3 +82,48 @@ def test_mean_rate_is_an_average_over_the_cloud() -> None:
     assert speed == pytest.approx(math.sqrt(8.0 * boltzmann * TEMPERATURE / (math.pi * MASS)), rel=1e-15)
     rate = collisions.mean_collision_rate(np.asarray(3e18), np.asarray(1e-15), speed)
     assert rate == pytest.approx(3e18 * mean * 1e-15 * math.sqrt(2.0) * float(speed), rel=1e-10)
+
+
+def test_thermal_cross_section_by_quadrature() -> None:
+    # <sigma v>/<v> of sigma0/(1 + k^2 a^2): over relative speeds, weight v^3 e^(-m v^2/4kT).
+    length = length_for(2.5)
+    scale = math.sqrt(4.0 * boltzmann * TEMPERATURE / MASS)
+
+    def weighted(v: float, sigma: bool) -> float:
+        k = MASS * v * scale / (2.0 * reduced_planck)
+        share = float(collisions.cross_section(np.asarray(length), np.asarray(k))) if sigma else 1.0
+        return v**3 * math.exp(-v * v) * share
+
+    mean = quad(weighted, 0.0, 9.0, (True,), epsrel=1e-12)[0] / quad(weighted, 0.0, 9.0, (False,), epsrel=1e-12)[0]
+    assert 8.0 * math.pi * length**2 * factor(2.5) == pytest.approx(mean, rel=1e-10)
+
+
+@given(st.floats(-12.0, 12.0))
+def test_thermal_cross_section_to_rounding_everywhere(log_K: float) -> None:
+    K = 10.0**log_K
+    with mpmath.workdps(60):
+        y = 1 / mpmath.mpf(K)
+        exact = float(y * (1 - y * mpmath.exp(y) * mpmath.expint(1, y))) if K > 1e-3 else None
+    if exact is None:  # 1 - 2K + 6K^2 ...: the mean of K^n t^n is (n + 1)! K^n
+        exact = 1.0 - 2.0 * K + 6.0 * K**2 - 24.0 * K**3 + 120.0 * K**4 - 720.0 * K**5
+    assert factor(K) == pytest.approx(exact, rel=1e-12)
+
+
+def test_cross_section_at_zero_speed_and_at_unitarity() -> None:
+    a, k = np.asarray(1e-8), np.asarray([0.0, 1e12])
+    assert collisions.cross_section(a, k)[0] == pytest.approx(8.0 * math.pi * 1e-16, rel=1e-14)
+    assert collisions.cross_section(a, k)[1] == pytest.approx(8.0 * math.pi / 1e24, rel=1e-6)
+
+
+def test_dipolar_cross_sections() -> None:
+    # J. L. Bohn and D. S. Jin, Phys. Rev. A 89, 022702 (2014), with a_d = 1.5 a_dd: 2.234 a_d^2 and 6.702 a_d^2.
+    bosons = collisions.dipolar_cross_section(Statistics.BOSE, np.asarray(2.0 / 3.0))
+    fermions = collisions.dipolar_cross_section(Statistics.FERMI, np.asarray(2.0 / 3.0))
+    assert bosons == pytest.approx(2.234, rel=1e-3)
+    assert fermions == pytest.approx(6.702, rel=1e-3)
+
+
+def test_peak_rate_meets_atoms_at_the_relative_speed() -> None:
+    assert collisions.peak_collision_rate(np.asarray(2.0), np.asarray(3.0), np.asarray(5.0)) == pytest.approx(
+        30.0 * math.sqrt(2.0), rel=1e-14
+    )
