@@ -24,6 +24,7 @@ from physics.checks import Floats
 from physics.constants import boltzmann, planck
 from physics.harmonic_integrals import legendre
 from physics.particles import Statistics
+from physics.smooth import through_nodes
 from physics.statistics import bose, bose_inverse, fermi, fermi_inverse
 
 VIRIAL_PRESSURE = (
@@ -112,7 +113,19 @@ def gaussian_fit_temperature(statistics: Statistics, log_z: ArrayLike) -> Floats
     log_z : array_like. [1] ln z, at most 0 for bosons.
     """
     eta = np.asarray(log_z, dtype=np.float64)
-    flat = eta.reshape(-1, 1)
+    if statistics is Statistics.BOSE:
+        # Near saturation the image is regular in sqrt(-ln z).
+        root = np.sqrt(0.0 - eta.reshape(-1))
+        flat = through_nodes(lambda root: _fitted_temperature(statistics, -root * root), root)
+    else:
+        flat = through_nodes(lambda log_z: _fitted_temperature(statistics, log_z), eta.reshape(-1))
+    result: Floats = flat.reshape(eta.shape)
+    return result[()]
+
+
+def _fitted_temperature(statistics: Statistics, log_z: Floats) -> Floats:
+    """T_fit/T for a flat array of ln z."""
+    flat = log_z[:, np.newaxis]
     t, weights = _image_radii(flat)  # t = r^2/2
     column = weights * _function(statistics, 2.0)(flat - t)
     # With q = T/T_fit the best height leaves q P(q)^2 to be made largest, P the integral of column e^(-qt): where the
@@ -124,8 +137,8 @@ def gaussian_fit_temperature(statistics: Statistics, log_z: ArrayLike) -> Floats
         q = np.exp(middle)
         positive = (column * np.exp(-q * t) * (1.0 - 2.0 * q * t)).sum(axis=-1, keepdims=True) > 0.0
         low, high = np.where(positive, middle, low), np.where(positive, high, middle)
-    result: Floats = np.exp(-0.5 * (low + high)).reshape(eta.shape)
-    return result[()]
+    fitted: Floats = np.exp(-0.5 * (low + high))[:, 0]
+    return fitted
 
 
 def _image_radii(log_z: Floats) -> tuple[Floats, Floats]:

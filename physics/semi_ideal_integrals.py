@@ -21,6 +21,7 @@ import numpy as np
 
 from physics.checks import Floats
 from physics.harmonic_integrals import legendre
+from physics.smooth import through_nodes
 from physics.statistics import bose, zeta
 from physics.statistics_tables import Segments, first_index, split
 
@@ -62,12 +63,17 @@ def _inside(x: Floats, order: float) -> tuple[Floats, Floats, Floats, Floats]:
 
 def _in_parts(function: Callable[[Floats], Floats], x: Floats) -> Floats:
     """The function of flat columns, over any number of x."""
-    flat = np.asarray(x, dtype=np.float64).reshape(-1)
-    result = np.empty_like(flat)
-    for start in range(0, flat.size, _CELLS):
-        part = slice(start, start + _CELLS)
-        result[part] = function(flat[part, np.newaxis])
-    return result.reshape(np.shape(x))
+
+    def everywhere(x: Floats) -> Floats:
+        result = np.empty_like(x)
+        for start in range(0, x.size, _CELLS):
+            part = slice(start, start + _CELLS)
+            result[part] = function(x[part, np.newaxis])
+        return result
+
+    # Near x = 0 these functions are regular in sqrt(x), but for logarithms.
+    root = np.sqrt(np.asarray(x, dtype=np.float64).reshape(-1))
+    return through_nodes(lambda root: everywhere(root * root), root).reshape(np.shape(x))
 
 
 def _mean(x: Floats, integrand: Integrand, order: float = 1.5) -> Floats:
