@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 from app.language import translate as _
 from app.units import best_unit, format_quantity
 from physics.particles import Certainty
-from physics.scattering import WhyUnknown
+from physics.scattering import LengthInUse, WhyUnknown
 
 if TYPE_CHECKING:
     from app.answers.tuning import TuningAnswer
@@ -57,11 +57,8 @@ def length_sentence(cloud: CloudAnswer) -> str:
     )
 
 
-def note_under_field(cloud: CloudAnswer) -> str:
-    """What the typed field makes of the scattering length, short; empty where no field is given."""
-    used = cloud.scattering
-    if cloud.plan.species.field is None:
-        return ""
+def length_note(used: LengthInUse) -> str:
+    """What a field makes of the scattering length, short."""
     if used.value is None:
         return _reason(used.reason)
     if not used.from_resonances:
@@ -102,7 +99,7 @@ def sources_text(answer: TuningAnswer) -> str:
     return "\n".join((*sources, *answer.notes))
 
 
-def no_curve_sentences(answer: TuningAnswer) -> tuple[str, str]:
+def no_curve_sentences(answer: TuningAnswer, cloud: CloudAnswer) -> tuple[str, str]:
     """Why there is no curve, and what can be done, for a state that no field tunes."""
     state, used = answer.state, answer.without_field
     what = _("{species}, {state}").format(species=state.key, state=state.name)
@@ -112,7 +109,9 @@ def no_curve_sentences(answer: TuningAnswer) -> tuple[str, str]:
         )
         return why, _("Choose a mixture of two spin states.")
     why = _("{what}: the data have no magnetic resonance of this state.").format(what=what)
-    if used.value is not None:
+    if cloud.plan.species.scattering_length is not None:
+        why += " " + length_sentence(cloud)
+    elif used.value is not None:
         why += " " + _("Its scattering length is {length} ({certainty}) at any field.").format(
             length=length_text(used.value), certainty=_certainty(used.certainty)
         )

@@ -52,11 +52,6 @@ class TuningCurve:
         edges = [self.low, *(edge for pair in self.ranges for edge in pair), self.high]
         return tuple((start, end) for start, end in zip(edges[::2], edges[1::2], strict=True) if end > start)
 
-    def nearest(self, field: float) -> float:
-        """The described field that is nearest to a given one. [T]"""
-        inside = (min(max(field, low), high) for low, high in self.ranges)
-        return min(inside, key=lambda candidate: abs(candidate - field), default=field)
-
 
 def tuning_curve(forms: Sequence[ResonanceForm], low: float, high: float) -> TuningCurve:
     """The curve of a channel's resonance forms between two fields [T].

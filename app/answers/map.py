@@ -72,8 +72,8 @@ class MapAnswer:
 
     model : the model that the map is of; `asked` is that of the plan's cloud, of which this may be a draft only
     threshold, threshold_shifted, threshold_of_model : temperatures along `atoms` [K]: the ideal one of a large cloud,
-        with its first-order shifts by finite size and interaction, and the one of the model where it has its own. The
-        latter two are NaN for fermions, or where there is none.
+        with its first-order shifts by finite size and interaction, and the one of the model asked for where it has its
+        own. The latter two are NaN for fermions, or where there is none.
     """
 
     limits: MapLimits
@@ -162,7 +162,7 @@ def _map(
         condensate_fraction=np.broadcast_to(fraction, shape),
         threshold=np.ravel(line),
         threshold_shifted=np.ravel(np.broadcast_to(solved.critical_temperature_shifted, (1, points))),
-        threshold_of_model=_threshold_of_model(central.cloud, atoms, model),
+        threshold_of_model=_threshold_of_model(central.cloud, atoms, central.model),
     )
 
 

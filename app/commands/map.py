@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import argparse
-import sys
 from typing import TYPE_CHECKING
 
 from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
@@ -36,13 +35,13 @@ def run(args: argparse.Namespace) -> int:
     """Write the map of the plan."""
     from app.answers.csv_text import csv_of, json_of, map_columns
     from app.commands.output import write_answer
-    from app.engine import MAP_POINTS, cloud_answer, map_answer
+    from app.engine import cloud_answer, map_answer, map_points
 
-    points = 2 * MAP_POINTS if args.points is None else args.points
-    if not 2 <= points <= 2000:
-        return fail(f"--points must be from 2 to 2000, got {points}")
+    if args.points is not None and not 2 <= args.points <= 2000:
+        return fail(f"--points must be from 2 to 2000, got {args.points}")
     try:
         plan = plan_of(args)
+        points = args.points or 2 * map_points(cloud_answer(plan).model)
         answer = map_answer(plan, _limits(args, plan), points)
 
         def pictures() -> list[object]:
@@ -57,8 +56,6 @@ def run(args: argparse.Namespace) -> int:
             print(json_answer(args, {"model": answer.model.value, **json_of(columns)}))
     except (ValueError, OSError) as error:
         return fail(error)
-    if answer.model is not cloud_answer(plan).model:
-        print(f"coldward: the map shows the model {answer.model.value!r}", file=sys.stderr)
     return 0
 
 

@@ -38,6 +38,9 @@ def run(args: argparse.Namespace) -> int:
     if args.pictures and not has_display:
         os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 
+    # Small matrix products gain nothing from threads, which would take turns away from the window.
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
     from app.window.preflight import obstacle, toolkit_obstacle
 
     trouble = obstacle() or toolkit_obstacle()

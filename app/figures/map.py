@@ -63,7 +63,7 @@ def map_picture(answer: MapAnswer, cloud: CloudAnswer) -> Picture:
         marks=(_cloud_mark(cloud),),
         labels=tuple(labels),
         summary=verdict(cloud),
-        note="" if answer.complete else _("shown: {model}").format(model=answer.model.label),
+        note="" if answer.complete else _("shown in its place: {model}").format(model=answer.model.label),
     )
 
 
@@ -171,8 +171,8 @@ def _thresholds(answer: MapAnswer) -> tuple[Curve, ...]:
         (_("condensation, ideal"), Role.THRESHOLD, answer.threshold),
         (_("shifted by size and interaction"), Role.THRESHOLD_SHIFTED, answer.threshold_shifted),
     ]
-    if answer.model in _OWN_THRESHOLD:
-        lines.append((_OWN_THRESHOLD[answer.model], Role.THRESHOLD_OF_MODEL, answer.threshold_of_model))
+    if answer.asked in _OWN_THRESHOLD:
+        lines.append((_OWN_THRESHOLD[answer.asked], Role.THRESHOLD_OF_MODEL, answer.threshold_of_model))
     return tuple(
         Curve(name=name, role=role, x=answer.atoms, y=np.where(line > 0.0, line, np.nan))
         for name, role, line in lines

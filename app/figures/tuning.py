@@ -17,6 +17,7 @@ from physics.scattering import WhyUnknown, scattering_length_at_field, tuning
 
 GAUSS = 1e-4
 _EVEN = 400
+_EDGE = 0.98  # of the length axis: a mark further out would be cut
 
 
 def tuning_picture(answer: TuningAnswer, cloud: CloudAnswer) -> Picture:
@@ -83,10 +84,10 @@ def with_field(ground: Picture, cloud: CloudAnswer) -> Picture:
 
 def _height(cloud: CloudAnswer, axis: Axis) -> float:
     """Where the mark of the field stands: at the length in use, or at the edge of the plot where that is beyond."""
-    used = cloud.scattering
+    used, edge = cloud.scattering, _EDGE * axis.high
     if used.value is None:
-        return axis.high if used.reason is WhyUnknown.AT_POLE else 0.0
-    return min(max(used.value / bohr_radius, axis.low), axis.high)
+        return edge if used.reason is WhyUnknown.AT_POLE else 0.0
+    return min(max(used.value / bohr_radius, -edge), edge)
 
 
 def _reach(answer: TuningAnswer) -> float:
@@ -96,7 +97,7 @@ def _reach(answer: TuningAnswer) -> float:
     even: Array = scattering_length_at_field(tuning(answer.state), np.linspace(curve.low, curve.high, _EVEN))
     known = np.abs(even[np.isfinite(even)]) / bohr_radius
     # Half of the fields in the inner part of the plot: a wing of a broad resonance is seen, and a narrow one on it.
-    return round_up(max(2.5 * float(np.median(known)), 1.0)) if known.size else 1.0
+    return round_up(max(4.0 * float(np.median(known)), 1.0)) if known.size else 1.0
 
 
 def _poles(poles: tuple[float, ...], reach: float) -> tuple[Curve, ...]:

@@ -6,7 +6,7 @@ from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QCompleter, QWidget
 
 from app.plan import PLAN_FIELDS, Plan
-from app.units import format_quantity
+from app.tuning_words import length_note
 from app.widgets.form import Choice, Form
 from physics.constants import atomic_mass
 from physics.particles import Certainty
@@ -112,12 +112,8 @@ class SpeciesForm(Form):
 
     def show_length(self, length: LengthInUse) -> None:
         """What the magnetic field, where one is given, makes of the scattering length."""
-        if self._plan is None or self._plan.species.field is None:
-            self.show_note(_FIELD, "")
-        elif length.value is None:
-            self.show_note(_FIELD, f"{length.reason.value}" if length.reason else "scattering length not known")
-        else:
-            self.show_note(_FIELD, f"a = {format_quantity(length.value, 'a0', digits=4)} at this field")
+        given = self._plan is not None and self._plan.species.field is not None
+        self.show_note(_FIELD, length_note(length) if given else "")
 
 
 def _told(number: Sourced | None) -> str:

@@ -79,7 +79,7 @@ class MapPage(Page):
             return _Ground(depends_on, answer, map_picture(answer, cloud))
 
         def in_steps(watch: Watch) -> _Ground | None:
-            if not watch.deliver(shown(draft_map(plan, limits))):
+            if not (watch.deliver(shown(draft_map(plan, limits))) and watch.tell(0.0)):
                 return None
             answer = map_with_progress(plan, limits, watch.tell)
             return None if answer is None else shown(answer)

@@ -43,12 +43,22 @@ class Plot(QObject):
         self._source = source
         self.canvas.show_picture(self.picture)
 
+    def clear(self) -> None:
+        """There is nothing to show."""
+        self._source = None
+
     def picture(self) -> Picture:
         """The newest picture, in the present view."""
         if self._source is None:
             raise RuntimeError("a plot was asked for a picture before it had a source")
         picture = self._source()
-        return in_view(picture, self.view) if self.view else picture
+        if self.view is None:
+            return picture
+        try:
+            return in_view(picture, self.view)
+        except ValueError:  # limits of a linear axis that has turned logarithmic since they were wished for
+            self.view = None
+            return picture
 
     @property
     def ready(self) -> bool:

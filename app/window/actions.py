@@ -126,7 +126,16 @@ ACTIONS: tuple[ActionSpec, ...] = (
         lambda w: w.desk.show_page(2),
         "page",
     ),
-    ActionSpec("view.readouts", _V, "&Readouts", "Ctrl+4", "Go to the readouts", lambda w: w.desk.show_readouts()),
+    ActionSpec(
+        "view.field",
+        _V,
+        "&Field",
+        "Ctrl+4",
+        "Scattering length against magnetic field",
+        lambda w: w.desk.show_page(3),
+        "page",
+    ),
+    ActionSpec("view.readouts", _V, "&Readouts", "Ctrl+R", "Go to the readouts", lambda w: w.desk.show_readouts()),
     ActionSpec(
         "view.why",
         _V,
