@@ -24,6 +24,7 @@ from numpy.typing import NDArray
 from physics.checks import Floats
 from physics.equilibria import Equilibrium, quantity
 from physics.hartree_fock_integrals import (
+    CELLS_AT_ONCE,
     Edge,
     Shells,
     condensed_centre,
@@ -32,8 +33,6 @@ from physics.hartree_fock_integrals import (
     thermal_shells,
 )
 from physics.statistics import bose
-
-_CELLS = 256  # at once, to bound the memory
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -64,8 +63,8 @@ class HartreeFock(Equilibrium):
         return shaped
 
     def _parts(self) -> Iterator[slice]:
-        for start in range(0, self._edge.repulsion.size, _CELLS):
-            yield slice(start, start + _CELLS)
+        for start in range(0, self._edge.repulsion.size, CELLS_AT_ONCE):
+            yield slice(start, start + CELLS_AT_ONCE)
 
     @cached_property
     def repulsion(self) -> Floats:

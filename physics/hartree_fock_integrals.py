@@ -44,6 +44,7 @@ _BEYOND = np.exp(2.0 * (_T - np.exp(-_T)))
 _BEYOND_WEIGHTS = 2.0 * _STEP * _BEYOND * (1.0 + np.exp(-_T))
 _REACH = math.sqrt(40.0)  # there are no thermal atoms at a greater sqrt(alpha)
 _HEART, _MANTLE = 16, 40  # nodes inside the condensate: where it is too dense for thermal atoms, and around that
+CELLS_AT_ONCE = 256  # to bound the memory
 _STEPS = 60  # far more than ever needed: from 4 to 8
 _TINY = float(np.finfo(np.float64).tiny)
 _WEAKEST = 1e-100  # a repulsion that makes no difference
@@ -318,16 +319,24 @@ def local_densities(repulsion: float, height: Floats, *, condensed: bool) -> tup
 def column_densities(repulsion: float, height: Floats, *, condensed: bool) -> tuple[Floats, Floats]:
     """`local_densities` summed along lines of sight on which (mu - V)/kT is at most `height`, in units of
     sqrt(2 pi) thermal lengths. [1]"""
+    thermal, condensate = np.empty_like(height), np.zeros_like(height)
+    for start in range(0, height.size, CELLS_AT_ONCE):
+        part = slice(start, start + CELLS_AT_ONCE)
+        thermal[part], condensate[part] = _columns(repulsion, height[part], condensed)
+    return thermal, condensate
+
+
+def _columns(repulsion: float, height: Floats, condensed: bool) -> tuple[Floats, Floats]:
     edge = Edge.of(np.full_like(height, repulsion))
     inside = (height >= edge.height) & condensed
     thermal, condensate = np.empty_like(height), np.zeros_like(height)
     if np.any(inside):
-        part = edge.at(inside)
-        centre = condensed_alpha(part, height[inside])
-        inner, outer = inner_shells(part, centre), part.outer_shells().lifted(part.rise(centre))
+        within = edge.at(inside)
+        centre = condensed_alpha(within, height[inside])
+        inner, outer = inner_shells(within, centre), within.outer_shells().lifted(within.rise(centre))
         thermal[inside] = inner.column(inner.thermal) + outer.column(outer.thermal)
         condensate[inside] = inner.column(inner.condensate)
-    part = edge.at(~inside)
-    shells = thermal_shells(part.repulsion, thermal_alpha(part, height[~inside]))
+    without = edge.at(~inside)
+    shells = thermal_shells(without.repulsion, thermal_alpha(without, height[~inside]))
     thermal[~inside] = shells.column(shells.thermal)
     return thermal, condensate
