@@ -40,7 +40,8 @@ class Role(Enum):
 @dataclass(frozen=True, kw_only=True)
 class Axis:
     """One axis. Data are in `unit`; with `prefixed` the unit is a bare SI unit and tick labels carry the prefix
-    ("100 nK"), which reads best over many decades."""
+    ("100 nK"), which reads best over many decades; with `power` ticks count in that power of ten, which the title
+    names, and data stay in `unit`."""
 
     label: str
     unit: str
@@ -48,12 +49,15 @@ class Axis:
     high: float
     log: bool = False
     prefixed: bool = False
+    power: int = 0
 
     def __post_init__(self) -> None:
         if not (np.isfinite(self.low) and np.isfinite(self.high) and self.low < self.high):
             raise ValueError(f"axis {self.label!r} must run from low to high, got {self.low:g} to {self.high:g}")
         if self.log and self.low <= 0.0:
             raise ValueError(f"logarithmic axis {self.label!r} must start above zero, got {self.low:g}")
+        if self.power and (self.log or self.prefixed):
+            raise ValueError(f"axis {self.label!r} must be linear and not prefixed to count in a power of ten")
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -9,9 +9,10 @@ import numpy as np
 
 from app.engine import ProfileAnswer, round_up
 from app.figures.picture import Array, Axis, Curve, Picture, Role
-from app.figures.ticks import power_text
+from app.figures.ticks import raised
 from app.language import translate as _
 from app.units import factor
+from app.words import number
 
 AXES = ("x", "y", "z")
 """Names of the trap axes, in the order of the plan's frequencies."""
@@ -24,8 +25,7 @@ class Depth(Enum):
     COLUMN = "column density"
 
 
-_UNITS = {Depth.DENSITY: ("1/cm^3", "cm⁻³"), Depth.COLUMN: ("1/cm^2", "cm⁻²")}
-"""Unit, and how an axis writes it."""
+_UNITS = {Depth.DENSITY: "cm^-3", Depth.COLUMN: "cm^-2"}
 
 _LENGTHS = ("nm", "µm", "mm", "m")
 
@@ -33,7 +33,7 @@ _LENGTHS = ("nm", "µm", "mm", "m")
 def profile_picture(answer: ProfileAnswer, shows: Depth, *, log: bool = False) -> Picture:
     """Thermal, condensed and total density, and the classical cloud of the same N and T dashed."""
     profile = answer.density if shows is Depth.DENSITY else answer.column
-    unit, written = _UNITS[shows]
+    unit = _UNITS[shows]
     reach = float(answer.positions[-1])
     length = next((name for name in reversed(_LENGTHS) if reach >= 3.0 * factor(name)), "nm")
     x = answer.positions / factor(length)
@@ -44,11 +44,6 @@ def profile_picture(answer: ProfileAnswer, shows: Depth, *, log: bool = False) -
             (_("condensate"), Role.CONDENSATE, profile.condensate),
         ]
     peak = max(float(np.max(values)) for _name, _role, values in parts) / factor(unit)
-    # A power of ten in the unit keeps the ticks short; a logarithmic axis has its own powers.
-    power = 0 if log else 3 * math.floor(math.log10(peak) / 3.0)
-    scale = factor(unit) * 10.0**power
-    written = f"{power_text(10.0**power)} {written}" if power else written
-    top = peak / 10.0**power
     axis = AXES[answer.axis]
     what = (
         _("density along {axis} through the centre")
@@ -59,11 +54,11 @@ def profile_picture(answer: ProfileAnswer, shows: Depth, *, log: bool = False) -
     return Picture(
         title=title,
         x=Axis(label=_("position {axis}").format(axis=axis), unit=length, low=float(x[0]), high=float(x[-1])),
-        y=_density_axis(shows, written, top, log),
+        y=_density_axis(shows, unit, peak, log),
         curves=tuple(
-            Curve(name=name, role=role, x=x, y=_above_zero(values / scale, log)) for name, role, values in parts
+            Curve(name=name, role=role, x=x, y=_above_zero(values / factor(unit), log)) for name, role, values in parts
         ),
-        summary=_("{what}; largest value {top:.3g} {unit}").format(what=title, top=top, unit=written),
+        summary=_("{what}; largest value {peak} {unit}").format(what=title, peak=number(peak), unit=raised(unit)),
     )
 
 
@@ -72,7 +67,9 @@ def _density_axis(shows: Depth, unit: str, top: float, log: bool) -> Axis:
     if log:
         high = 10.0 ** math.ceil(math.log10(1.2 * top))
         return Axis(label=label, unit=unit, low=1e-5 * high, high=high, log=True)
-    return Axis(label=label, unit=unit, low=0.0, high=round_up(1.05 * top))
+    # A power of ten in the title keeps the ticks short; a logarithmic axis has its own powers.
+    power = 3 * math.floor(math.log10(top) / 3.0)
+    return Axis(label=label, unit=unit, low=0.0, high=round_up(1.05 * top), power=power)
 
 
 def _above_zero(values: Array, log: bool) -> Array:

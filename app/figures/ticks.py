@@ -58,11 +58,16 @@ def span(axis: Axis) -> tuple[float, float]:
 
 
 def axis_title(axis: Axis) -> str:
-    """Label with unit, as in print; without it where the ticks carry the unit."""
-    if not axis.unit or axis.prefixed:
+    """Label with unit, powers raised; without it where the ticks carry the unit."""
+    if (not axis.unit and not axis.power) or axis.prefixed:
         return axis.label
-    unit = re.sub(r"\^(-?\d+)", lambda power: power[1].translate(_RAISED), axis.unit).replace("a0", "a₀")
-    return f"{axis.label} [{unit}]"
+    power = power_text(10.0**axis.power) if axis.power else ""
+    return f"{axis.label} [{f'{power} {raised(axis.unit)}'.strip()}]"
+
+
+def raised(unit: str) -> str:
+    """A unit as it is printed: "cm⁻³" for "cm^-3"."""
+    return re.sub(r"\^(-?\d+)", lambda power: power[1].translate(_RAISED), unit).replace("a0", "a₀")
 
 
 def ticks_of(axis: Axis, most: int = 8) -> Ticks:
@@ -103,6 +108,7 @@ def _round_values(low: float, high: float, most: int) -> list[float]:
 def _texts(axis: Axis, values: list[float]) -> tuple[str, ...]:
     if not values:
         return ()
+    values = [v / 10.0**axis.power for v in values]
     largest = max(abs(v) for v in values)
     if axis.prefixed:
         shared = None if axis.log else _prefix_exponent(largest)

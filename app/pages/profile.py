@@ -85,8 +85,13 @@ class ProfilePage(Page):
         dragged would otherwise change the axis all the time."""
         picture = profile_picture(answer, depth, log=self.log.isChecked())
         held = self._held.get(depth)
-        alike = held is not None and replace(held, high=picture.y.high, low=picture.y.low) == picture.y
-        if held is not None and alike and FILLED * held.high < picture.y.high <= held.high:
+        alike = (
+            held is not None
+            and held.log == picture.y.log
+            and replace(picture.y, low=held.low, high=held.high) == held
+            and FILLED * held.high < picture.y.high <= held.high
+        )
+        if held is not None and alike:
             return replace(picture, y=held)
         self._held[depth] = picture.y
         return picture

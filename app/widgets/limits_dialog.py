@@ -2,26 +2,49 @@
 
 from __future__ import annotations
 
+from decimal import Decimal
+
 from PySide6.QtWidgets import QDialog, QDialogButtonBox, QGridLayout, QLabel, QLineEdit, QVBoxLayout, QWidget
 
 from app.figures.picture import Axis, Picture
-from app.units import Kind, QuantityError, best_unit, exact_text, format_quantity, read_quantity
+from app.figures.ticks import raised
+from app.kinds import EVERYDAY, Kind
+from app.unit_text import exact_factor, normal_unit
+from app.units import QuantityError, best_unit, exact_text, format_quantity, localised, read_quantity
 from app.window.views import View, view_of
 
 _PREFIXED = {"K": ("K", "mK", "µK", "nK", "pK"), "m": ("m", "mm", "µm", "nm")}
+_PLAIN = ("", "1", "%")  # a share in percent is typed, and read, as the number on its axis
 
 
 def kind_of(axis: Axis) -> Kind:
     """What may be typed as a limit of an axis: its own unit, and prefixed ones where ticks are prefixed."""
-    units = _PREFIXED.get(axis.unit, (axis.unit,)) if axis.prefixed else (axis.unit,)
+    unit = "" if axis.unit in _PLAIN else normal_unit(axis.unit)
+    units = _PREFIXED.get(unit, (unit,)) if axis.prefixed else (unit,)
     return Kind(
         name=axis.label,
-        si_unit=axis.unit,
+        si_unit=EVERYDAY[unit][1] if unit in EVERYDAY else unit,
         units=units,
         low=1e-300 if axis.log else -1e300,
         high=1e300,
-        example=format_quantity(axis.low, best_unit(axis.low, units), digits=3),
+        example=format_quantity(_si(axis, axis.low), best_unit(axis.low, units), digits=3),
     )
+
+
+def place_text(axis: Axis, value: float, digits: int = 3) -> str:
+    """A place on an axis, to read: "7.10 µm", "5.20e12 cm⁻³"."""
+    si = _si(axis, value)
+    text = format_quantity(si, best_unit(si, kind_of(axis).units), digits=digits)
+    return raised(f"{text} %" if axis.unit == "%" else text)
+
+
+def _si(axis: Axis, value: float) -> float:
+    """A number of an axis in SI units, to the last digit what reading its text gives."""
+    return value if axis.unit in _PLAIN else float(Decimal(repr(float(value))) * exact_factor(axis.unit))
+
+
+def _on_axis(axis: Axis, value: float) -> float:
+    return value if axis.unit in _PLAIN else float(Decimal(repr(value)) / exact_factor(axis.unit))
 
 
 class LimitsDialog(QDialog):
@@ -38,7 +61,7 @@ class LimitsDialog(QDialog):
         grid = QGridLayout()
         grid.setHorizontalSpacing(10)
         for row, axis in enumerate(self._axes):
-            heading = QLabel(axis.label)
+            heading = QLabel(f"{axis.label} [%]" if axis.unit == "%" else axis.label)
             grid.addWidget(heading, row, 0)
             for column, (word, value) in enumerate((("from", axis.low), ("to", axis.high))):
                 field = QLineEdit(self._text(axis, value))
@@ -64,10 +87,13 @@ class LimitsDialog(QDialog):
         self._view: View | None = view_of(picture)
         self._check()
 
-    @staticmethod
-    def _text(axis: Axis, value: float) -> str:
-        kind = kind_of(axis)
-        return exact_text(float(f"{value:.4g}"), best_unit(value, kind.units), kind=kind)
+    def _text(self, axis: Axis, value: float) -> str:
+        kind, si = kind_of(axis), _si(axis, float(f"{value:.4g}"))
+        return localised(exact_text(si, best_unit(si, kind.units), kind=kind), decimal_comma=self._comma)
+
+    @property
+    def _comma(self) -> bool:
+        return self.locale().decimalPoint() == ","
 
     @property
     def view(self) -> View | None:
@@ -79,7 +105,9 @@ class LimitsDialog(QDialog):
         try:
             values = []
             for place, field in enumerate(self.fields):
-                values.append(read_quantity(field.text(), kind_of(self._axes[place // 2])).value)
+                axis = self._axes[place // 2]
+                read = read_quantity(field.text(), kind_of(axis), decimal_comma=self._comma)
+                values.append(_on_axis(axis, read.value))
             for axis, low, high in zip(self._axes, values[::2], values[1::2], strict=True):
                 if not low < high:
                     raise QuantityError(f"{axis.label} must run from a low to a high limit")

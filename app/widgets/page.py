@@ -12,13 +12,12 @@ from PySide6.QtWidgets import QDialog, QFileDialog, QVBoxLayout, QWidget
 
 from app.engine import CloudAnswer
 from app.figures.export_data import write_csv
-from app.figures.picture import Axis, Picture
+from app.figures.picture import Picture
 from app.figures.theme import LIGHT, Theme
 from app.files import write_atomically
 from app.newest import Job
 from app.plan import Plan
-from app.units import best_unit, format_quantity
-from app.widgets.limits_dialog import LimitsDialog, kind_of
+from app.widgets.limits_dialog import LimitsDialog, place_text
 from app.widgets.plot import Plot
 from app.widgets.plot_bar import PlotBar
 from app.window.live_canvas import LiveCanvas
@@ -86,7 +85,7 @@ class Page(QWidget):
         if place is None or picture is None:
             return ""
         axes = zip((picture.x, picture.y), place, strict=True)
-        return "   ".join(f"{axis.label} = {axis_text(axis, value)}" for axis, value in axes)
+        return "   ".join(f"{axis.label} = {place_text(axis, value)}" for axis, value in axes)
 
     # ---------------------------------------------------------------- for the window
 
@@ -234,8 +233,3 @@ class Page(QWidget):
         else:
             self.folder = path.parent
             self.folder_used.emit(path.parent)
-
-
-def axis_text(axis: Axis, value: float) -> str:
-    """A place on an axis, to read."""
-    return format_quantity(value, best_unit(value, kind_of(axis).units), digits=3)

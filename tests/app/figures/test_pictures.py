@@ -10,6 +10,7 @@ from app.figures.map import SPLIT, map_picture, with_cloud
 from app.figures.picture import Axis, Picture, Role
 from app.figures.profile import Depth, profile_picture
 from app.figures.slices import slice_picture
+from app.figures.ticks import axis_title, ticks_of
 from app.plan import DEFAULT_PLAN, Plan, plan_with
 
 LIMITS = MapLimits(atoms_low=1e3, atoms_high=1e7, temperature_low=1e-8, temperature_high=1e-5)
@@ -165,9 +166,11 @@ def test_a_condensed_cloud_shows_its_parts_which_add_up() -> None:
 def test_the_unit_of_a_density_axis_carries_the_power_of_ten() -> None:
     picture = profile_picture(profile_answer(DEFAULT_PLAN, 0), Depth.DENSITY)
     peak = float(cloud_answer(DEFAULT_PLAN).equilibrium.peak_density)
-    assert picture.y.unit == "10¹² cm⁻³"
-    assert picture.curves[0].y.max() == pytest.approx(peak / 1e18)
-    assert profile_picture(profile_answer(DEFAULT_PLAN, 0), Depth.DENSITY, log=True).y.unit == "cm⁻³"
+    assert axis_title(picture.y) == "density n [10¹² cm⁻³]"
+    assert ticks_of(picture.y).texts[-1] == "8"
+    assert picture.curves[0].y.max() == pytest.approx(peak / 1e6)
+    logarithmic = profile_picture(profile_answer(DEFAULT_PLAN, 0), Depth.DENSITY, log=True)
+    assert axis_title(logarithmic.y) == "density n [cm⁻³]"
 
 
 def test_axes_refuse_what_cannot_be_drawn() -> None:
@@ -175,3 +178,5 @@ def test_axes_refuse_what_cannot_be_drawn() -> None:
         Axis(label="T", unit="K", low=2.0, high=1.0)
     with pytest.raises(ValueError, match="logarithmic axis 'T' must start above zero, got 0"):
         Axis(label="T", unit="K", low=0.0, high=1.0, log=True)
+    with pytest.raises(ValueError, match="axis 'T' must be linear and not prefixed to count in a power of ten"):
+        Axis(label="T", unit="K", low=1.0, high=2.0, log=True, power=3)

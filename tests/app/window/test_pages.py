@@ -7,10 +7,13 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from PySide6.QtCore import QLocale
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
 
+from app.figures.picture import Axis, Picture
 from app.kinds import TEMPERATURE
+from app.quantities import QUANTITIES
 from app.units import read_quantity
 from app.widgets.form import plan_with_entry
 from app.widgets.limits_dialog import LimitsDialog
@@ -47,6 +50,33 @@ def test_zoom_stays_through_live_changes_and_whole_plot_ends_it(
     window.actions_by_id["plot.home"].trigger()
     settle(window)
     assert limits(window)[:2] == pytest.approx(whole[:2])
+
+
+def test_a_view_that_a_logarithmic_axis_cannot_have_gives_way(window: MainWindow, settle: Settle) -> None:
+    window.desk.show_page(2)
+    settle(window)
+    window.actions_by_id["plot.down"].trigger()
+    settle(window)
+    assert limits(window)[2] < 0.0
+    window.desk.profile.log.click()
+    settle(window)
+    assert window.desk.page.active.canvas.picture.y.log
+    assert limits(window)[2] > 0.0
+    assert window.banner.text == ""
+
+
+def test_density_turns_logarithmic_and_linear_again(window: MainWindow, settle: Settle) -> None:
+    window.desk.show_page(2)
+    settle(window)
+    linear = limits(window)
+    for log in (True, False, True):
+        window.desk.profile.log.click()
+        settle(window)
+        assert window.desk.page.active.canvas.picture.y.log is log
+    window.desk.profile.log.click()
+    settle(window)
+    assert limits(window) == linear
+    assert window.banner.text == ""
 
 
 def test_panning_moves_by_a_share_of_the_range(window: MainWindow, settle: Settle) -> None:
@@ -86,6 +116,65 @@ def test_limits_are_typed_with_units_and_wrong_ones_are_told(window: MainWindow)
     low_n.setText("-5")
     assert dialog.view is None
     dialog.deleteLater()
+
+
+EVERY_UNIT = sorted({unit for row in QUANTITIES.values() for unit in row.units} | {"", "cm^-3", "cm^-2", "mm", "a0"})
+
+
+@pytest.mark.parametrize("unit", EVERY_UNIT)
+def test_limits_are_those_of_the_axis_in_every_unit(window: MainWindow, unit: str) -> None:
+    axis = Axis(label="something", unit=unit, low=0.02, high=37.5)
+    dialog = LimitsDialog(Picture(title="", x=axis, y=axis))
+    assert dialog.problem.text() == ""
+    assert dialog.view == (0.02, 37.5, 0.02, 37.5)
+    assert all(len(field.text()) <= 5 + len(f" {unit}") for field in dialog.fields)
+    dialog.fields[0].setText("1.5" if unit in ("", "1", "%") else f"1.5 {unit}")
+    assert dialog.view is not None
+    assert dialog.view[0] == 1.5
+    dialog.deleteLater()
+
+
+def test_limits_follow_the_decimal_comma(window: MainWindow) -> None:
+    axis = Axis(label="place", unit="µm", low=-1.5, high=2.5)
+    before = QLocale()
+    QLocale.setDefault(QLocale("de_DE"))
+    try:
+        dialog = LimitsDialog(Picture(title="", x=axis, y=axis))
+    finally:
+        QLocale.setDefault(before)
+    assert dialog.fields[0].text() == "-1,5 µm"
+    dialog.fields[1].setText("3,25 µm")
+    assert dialog.view is not None
+    assert dialog.view[1] == 3.25
+    dialog.deleteLater()
+
+
+@pytest.mark.parametrize("number", [0, 1, 2])
+def test_every_plot_reads_its_pointer_and_offers_its_limits(window: MainWindow, settle: Settle, number: int) -> None:
+    window.desk.show_page(number)
+    settle(window)
+    page = window.desk.page
+    for plot in page.plots:
+        picture = plot.picture()
+        place = (picture.x.high, picture.y.high)
+        plot.canvas.pointer_moved.emit(place)
+        assert page.bar.status.text
+        assert picture.x.label in page.pointer_text(plot, place)
+        dialog = LimitsDialog(picture)
+        assert dialog.view == pytest.approx((picture.x.low, picture.x.high, picture.y.low, picture.y.high), rel=1e-3)
+        dialog.deleteLater()
+    assert window.banner.text == ""
+
+
+def test_the_pointer_reads_units_as_they_are_printed(window: MainWindow, settle: Settle) -> None:
+    window.desk.show_page(2)
+    settle(window)
+    plot = window.desk.page.plots[0]
+    assert window.desk.page.pointer_text(plot, (7.1, 5.2e12)) == "position x = 7.10 µm   density n = 5.20e12 cm⁻³"
+    window.desk.show_page(1)
+    settle(window)
+    plot = window.desk.page.plots[2]
+    assert window.desk.page.pointer_text(plot, (2e-7, 43.0)) == "temperature T = 200 nK   condensed fraction = 43.0 %"
 
 
 def test_limits_out_of_every_range_leave_the_view_as_it_was(window: MainWindow) -> None:
