@@ -8,7 +8,7 @@ cloud part is cheap enough for the thread that asks; the others are vectorised a
 
 from __future__ import annotations
 
-from app.answers.cloud import FERMI_THRESHOLD, SAMPLES, CloudAnswer, cloud_answer
+from app.answers.cloud import FERMI_THRESHOLD, CloudAnswer, cloud_answer
 from app.answers.map import (
     MAP_POINTS,
     MapAnswer,
@@ -24,6 +24,7 @@ from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, r
 from app.answers.rates import RatesAnswer, RateSet, rates_answer
 from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
 from app.answers.tuning import TuningAnswer, tuning_answer, usual_fields
+from app.answers.uncertainty import SAMPLES, Method, Spread
 
 __all__ = [
     "FERMI_THRESHOLD",
@@ -35,10 +36,12 @@ __all__ = [
     "CloudAnswer",
     "MapAnswer",
     "MapLimits",
+    "Method",
     "ProfileAnswer",
     "RateSet",
     "RatesAnswer",
     "SlicesAnswer",
+    "Spread",
     "TuningAnswer",
     "cloud_answer",
     "draft_map",

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from app.answers.uncertainty import MODEL_FREE, Method
 from app.language import translate as _
 from app.quantities import QUANTITIES, Need, Row, display_factor
 from app.units import best_unit, format_quantity
@@ -115,8 +116,8 @@ def _occupation(log_z: float) -> float:
 
 
 def _straddles(answer: CloudAnswer, limit: float) -> bool:
-    interval = answer.interval("reduced_temperature")
-    return interval is not None and float(interval[0]) < limit < float(interval[1])
+    spread = answer.spread("reduced_temperature")
+    return spread is not None and float(spread.low) < limit < float(spread.high)
 
 
 def deciding_figures(answer: CloudAnswer) -> tuple[Figure, ...]:
@@ -127,9 +128,9 @@ def deciding_figures(answer: CloudAnswer) -> tuple[Figure, ...]:
         Figure(
             _("peak phase-space density"),
             number(float(solved.peak_phase_space_density)),
-            _range(answer, "peak_phase_space_density") or (_("2.612 condenses") if answer.bosons else ""),
+            _quick_range(answer, "peak_phase_space_density") or (_("2.612 condenses") if answer.bosons else ""),
         ),
-        Figure(ratio_name, number(float(solved.reduced_temperature)), _range(answer, "reduced_temperature")),
+        Figure(ratio_name, number(float(solved.reduced_temperature)), _quick_range(answer, "reduced_temperature")),
     ]
     if answer.bosons:
         figures.append(
@@ -174,11 +175,21 @@ def _efficiency(answer: CloudAnswer) -> str:
     return _("with efficiency γ = {gamma}").format(gamma=number(answer.efficiency or math.nan, 2))
 
 
-def _range(answer: CloudAnswer, name: str) -> str:
-    interval = answer.interval(name)
-    if interval is None:
+def _quick_range(answer: CloudAnswer, name: str) -> str:
+    """The range of a pure number where it is at hand: one that would take many answers does not hold up the verdict."""
+    if answer.uncertainty.method is Method.FIRST_ORDER and name not in MODEL_FREE:
         return ""
-    low, high = (number(float(bound)) for bound in interval)
+    return range_text(answer, QUANTITIES[name], "1")
+
+
+def range_text(answer: CloudAnswer, row: Row, unit: str) -> str:
+    """16 to 84 percent of a quantity in one of its units, without the unit; empty where nothing is uncertain, and for
+    a quantity with axes."""
+    spread = None if row.axes or answer.missing(row) is not None else answer.spread(row.name)
+    if spread is None:
+        return ""
+    factor = display_factor(unit, row)
+    low, high = (number(float(bound) / factor) for bound in (spread.low, spread.high))
     return "" if low == high else _("{low} to {high}").format(low=low, high=high)
 
 
@@ -240,9 +251,5 @@ def heading(answer: CloudAnswer) -> str:
 def value_with_interval(answer: CloudAnswer, row: Row) -> str:
     """A quantity in its first unit, with its 16 to 84 percent range where the plan states uncertainties."""
     text = value_text(answer, row, row.units[0])
-    interval = None if row.axes or text == "–" else answer.interval(row.name)
-    if interval is None:
-        return text
-    factor = display_factor(row.units[0], row)
-    low, high = (number(float(bound) / factor) for bound in interval)
-    return text if low == high else _("{value}  ({low} to {high})").format(value=text, low=low, high=high)
+    between = "" if text == "–" else range_text(answer, row, row.units[0])
+    return f"{text}  ({between})" if between else text

@@ -43,11 +43,21 @@ def through_nodes(function: Callable[[Floats], Floats], points: Floats) -> Float
     for degree in _DEGREES:
         if 4 * degree > points.size:
             break
-        coefficients = chebyshev.chebinterpolate(lambda t: function(low + 0.5 * (high - low) * (t + 1.0)), degree)
+        nodes = low + 0.5 * (high - low) * (chebyshev.chebpts1(degree + 1) + 1.0)
+        coefficients = np.asarray(_coefficients(function(nodes)), dtype=np.float64)
         tail = np.abs(coefficients[-(degree // 3) :])
         if np.max(tail) <= TOLERANCE * np.max(np.abs(coefficients)):
             # Clipped, for the ends may come out an ulp beyond -1 and 1.
             t = np.clip(2.0 * (points - low) / (high - low) - 1.0, -1.0, 1.0)
-            values: Floats = chebyshev.chebval(t, coefficients)
-            return values
+            return np.asarray(chebyshev.chebval(t, coefficients), dtype=np.float64)
     return function(points)
+
+
+def _coefficients(values: Floats) -> Floats:
+    """Chebyshev coefficients of the polynomial through values at the roots of the next polynomial."""
+    count = values.size
+    angles = np.pi * (np.arange(count) + 0.5)[::-1] / count
+    waves = np.cos(np.outer(np.arange(count), angles))
+    coefficients: Floats = 2.0 / count * (waves @ values)
+    coefficients[0] *= 0.5
+    return coefficients

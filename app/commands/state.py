@@ -101,11 +101,12 @@ def _quantity(answer: CloudAnswer, row: Row) -> dict[str, Any]:
     missing = answer.missing(row)
     value = None if missing is not None else np.asarray(answer.value(row.name), dtype=float).tolist()
     entry["value"] = _finite(value)
-    interval = answer.interval(row.name)
+    spread = None if missing is not None else answer.spread(row.name)
     if entry["value"] is None:
         entry["reason"] = reason_missing(missing) if missing is not None else "not defined for this cloud"
-    elif interval is not None:
-        entry["low"], entry["high"] = (_finite(np.asarray(bound).tolist()) for bound in interval)
+    elif spread is not None:
+        bounds = {"low": spread.low, "high": spread.high, "median": spread.median}
+        entry |= {place: _finite(np.asarray(bound).tolist()) for place, bound in bounds.items()}
     return {**entry, "label": row.label, "source": row.source}
 
 

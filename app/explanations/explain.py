@@ -12,8 +12,8 @@ import numpy as np
 from app.explanations import classical, collisions, degeneracy, densities, fermi_sea, inputs, losses, scales, sizes
 from app.explanations.explanation import Explanation, Origin, Step
 from app.explanations.sheet import Regime, Sheet
-from app.quantities import QUANTITIES, Need, Row, display_factor
-from app.words import number, reason_missing, shown_unit, symbol_of, value_text
+from app.quantities import QUANTITIES, Need, Row
+from app.words import number, range_text, reason_missing, shown_unit, symbol_of, value_text
 from physics.models import Model
 from physics.species_names import nearest_first
 
@@ -147,13 +147,12 @@ def _lay_out(sheet: Sheet, row: Row) -> None:
 
 def _text(answer: CloudAnswer, row: Row, unit: str) -> str:
     """The value with its unit, and its interval where there is one."""
-    shown, scale = shown_unit(unit), display_factor(unit, row)
+    shown = shown_unit(unit)
     text = f"{value_text(answer, row, unit)} {shown}".strip()
-    interval = None if row.axes else answer.interval(row.name)
-    if interval is None:
+    between = range_text(answer, row, unit)
+    if not between:
         return text
-    low, high = (number(float(bound) / scale) for bound in interval)
-    return text if low == high else f"{text} ({f'{low} to {high} {shown}'.strip()} in 68 % of the draws)"
+    return f"{text} ({f'{between} {shown}'.strip()} by {answer.uncertainty.method.value})"
 
 
 def _model(answer: CloudAnswer) -> str:

@@ -9,9 +9,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from app.engine import CloudAnswer
-from app.quantities import QUANTITIES, Need, Row, display_factor
+from app.quantities import QUANTITIES, Need, Row
 from app.units import best_unit
-from app.words import number, reason_missing, row_tip, shown_unit, symbol_of, value_text
+from app.words import range_text, reason_missing, row_tip, shown_unit, symbol_of, value_text
 
 _RAISED = str.maketrans("123456789", "¹²³⁴⁵⁶⁷⁸⁹")
 
@@ -64,12 +64,11 @@ def interval_text(answer: CloudAnswer, name: str) -> str:
     """The interval of a quantity over the stated uncertainties, in the unit that suits it; empty where there is
     none."""
     row = QUANTITIES[name]
-    interval = None if answer.missing(row) else answer.interval(name)
-    if interval is None or row.axes:
+    if answer.missing(row):
         return ""
     unit = unit_for(row, answer.value(name))
-    low, high = (number(float(bound) / display_factor(unit, row)) for bound in interval)
-    return f"{low} to {high} {shown_unit(unit)}".strip()
+    between = range_text(answer, row, unit)
+    return f"{between} {shown_unit(unit)}".strip() if between else ""
 
 
 def unit_for(row: Row, value: object) -> str:

@@ -7,9 +7,11 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from app.answers.uncertainty import MODEL_FREE
 from app.engine import (
     SAMPLES,
     MapLimits,
+    Method,
     cloud_answer,
     map_answer,
     profile_answer,
@@ -104,8 +106,8 @@ def test_without_uncertainties_there_is_no_interval() -> None:
         DEFAULT_PLAN, {"cloud.atoms": "1e5", "cloud.temperature": "200 nK", "trap.frequencies": "120 Hz, 120 Hz, 20 Hz"}
     )
     answer = cloud_answer(plan)
-    assert not answer.uncertain
-    assert answer.interval("reduced_temperature") is None
+    assert not answer.uncertainty.any
+    assert answer.spread("reduced_temperature") is None
     assert answer.probability_beyond_threshold is None
 
 
@@ -120,12 +122,12 @@ def test_intervals_follow_linear_error_propagation_where_errors_are_small() -> N
         },
     )
     answer = cloud_answer(plan)
-    interval = answer.interval("reduced_temperature")
-    assert interval is not None
+    spread = answer.spread("reduced_temperature")
+    assert spread is not None
     centre = float(answer.equilibrium.reduced_temperature)
     parts = np.array([3 / 200, 0.02 / 3, 1 / 360, 1 / 360, 0.01 / 3])
     expected = centre * np.sqrt(np.sum(parts**2)) * 0.994457883  # 84 % is 0.9945 standard deviations
-    assert (interval[1] - interval[0]) / 2 == pytest.approx(expected, rel=5e-3)
+    assert (float(spread.high) - float(spread.low)) / 2 == pytest.approx(expected, rel=5e-3)
 
 
 def test_the_chance_of_being_condensed_is_one_half_at_the_threshold() -> None:
@@ -160,3 +162,69 @@ def test_axis_ends_are_round_and_not_below_the_value() -> None:
         end = round_up(float(value))
         assert value <= end * (1 + 1e-12)
         assert end <= 2.0 * value
+
+
+# --- uncertainty beyond sampling ---
+
+
+@pytest.mark.parametrize("model", ["Hartree-Fock", "exact levels"])
+def test_models_that_are_not_sampled_are_spread_by_derivatives(model: str) -> None:
+    plan = plan_with(
+        DEFAULT_PLAN, {"cloud.model": model, "cloud.atoms": "1.00(2)e5", "cloud.temperature": "90.0(5) nK"}
+    )
+    answer = cloud_answer(plan)
+    sampled = answer.spread("reduced_temperature")
+    assert sampled is not None
+    assert sampled.method is Method.DRAWS  # T/Tc0 does not depend on the model
+    spread = answer.spread("condensate_fraction")
+    assert spread is not None
+    assert spread.method is Method.FIRST_ORDER
+    # by hand: the fraction one standard deviation up and down in each input, added in quadrature
+    pieces = []
+    for name, low, high in (("cloud.atoms", 1e5 / 1.0202, 1e5 * 1.0202), ("cloud.temperature", 89.5013, 90.5014)):
+        unit = "" if name == "cloud.atoms" else " nK"
+        ends = [
+            float(cloud_answer(plan_with(plan, {name: f"{end:.8g}{unit}"})).equilibrium.condensate_fraction)
+            for end in (low, high)
+        ]
+        pieces.append(0.5 * (ends[1] - ends[0]))
+    assert (float(spread.high) - float(spread.low)) / 2 == pytest.approx(0.99446 * np.hypot(*pieces), rel=2e-3)
+
+
+def test_first_order_and_sampling_agree_where_errors_are_small() -> None:
+    texts = {"cloud.atoms": "1.000(5)e5", "cloud.temperature": "80.0(2) nK"}
+    sampled = cloud_answer(plan_with(DEFAULT_PLAN, texts)).spread("condensate_fraction")
+    linear = cloud_answer(plan_with(DEFAULT_PLAN, {**texts, "cloud.model": "Hartree-Fock"})).spread(
+        "condensate_fraction"
+    )
+    assert sampled is not None
+    assert linear is not None
+    # another model, so another slope: alike to 15 percent
+    widths = [float(spread.high) - float(spread.low) for spread in (sampled, linear)]
+    assert widths[1] == pytest.approx(widths[0], rel=0.15)
+
+
+def test_an_uncertain_field_spreads_the_scattering_length() -> None:
+    plan = plan_with(
+        DEFAULT_PLAN,
+        {"species.key": "85Rb", "species.field": "163.0(2) G", "cloud.atoms": "1e5", "cloud.temperature": "200 nK"},
+    )
+    spread = cloud_answer(plan).spread("elastic_collision_rate")
+    assert spread is not None
+    # a = abg (1 - Delta/(B - B0)) with abg = -443 a0, B0 = 155.041 G, Delta = 10.71 G (presets); rate ~ a^2 nearly
+    ends = [-443 * (1 - 10.71 / (field - 155.041)) for field in (163.0 - 0.2, 163.0 + 0.2)]
+    ratio = float(spread.high) / float(spread.low)
+    assert ratio == pytest.approx((ends[0] / ends[1]) ** 2, rel=0.02)
+
+
+def test_every_quantity_that_is_said_not_to_depend_on_the_model_does_not() -> None:
+    answers = [
+        cloud_answer(
+            plan_with(DEFAULT_PLAN, {"cloud.model": model, "cloud.temperature": "90 nK", "trap.depth": "1 uK"})
+        )
+        for model in ("ideal", "semi-ideal", "exact levels", "Hartree-Fock")
+    ]
+    for name in MODEL_FREE:
+        values = [np.asarray(answer.value(name)) for answer in answers]
+        for value in values[1:]:
+            np.testing.assert_array_equal(value, values[0], err_msg=name)
