@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from app.explanations import functions, inputs
-from app.explanations.degeneracy import peak_phase_space_density
+from app.explanations.degeneracy import peak_phase_space_density, trapped_log_fugacity
 from app.explanations.scales import classical_phase_space_density
 from app.explanations.sheet import Sheet, once
 from app.explanations.sizes import defined, energy_per_atom
@@ -40,19 +40,6 @@ def classical_pressure_error(sheet: Sheet) -> Leaf:
     formula = density / pressure - 1
     value = sheet.number("classical_pressure_error")
     return sheet.step("n kT/p − 1", meaning, formula, value=value, where=where)
-
-
-@once
-def trapped_log_fugacity(sheet: Sheet) -> Leaf:
-    """ln z of an ideal gas of the same X, whatever the model."""
-    X = classical_phase_space_density(sheet)
-    unknown = Leaf("ln z_X", float(equation_of_state.trapped_log_fugacity(sheet.statistics, X.amount)))
-    if sheet.bosons and X.amount >= inputs.zeta_3(sheet).amount:
-        sheet.case("the thermal atoms are saturated", X, "≥", inputs.zeta_3(sheet))
-        return sheet.step("ln z_X", "log of the fugacity of the thermal atoms", NOTHING, value=unknown.amount)
-    left = functions.polylog(sheet.statistics, 3.0, unknown)
-    meaning = "log of the fugacity of an ideal gas of these atoms"
-    return sheet.solve(unknown, meaning, left, X, where=functions.definition(sheet.statistics))
 
 
 @once

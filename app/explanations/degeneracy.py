@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
-from app.explanations import functions, inputs
+from app.explanations import fermi_levels, functions, hartree_fock, inputs
 from app.explanations.scales import (
     classical_phase_space_density,
     oscillator_length,
+    spacings,
     thermal_wavelength,
 )
 from app.explanations.sheet import Regime, Sheet, once
 from app.explanations.terms import FIVE_HALVES, NOTHING, PI, THREE_HALVES, Leaf, exp, ln, root
+from physics import equation_of_state
 from physics.exact_levels import ground_distance
 
 
@@ -31,8 +33,30 @@ def log_fugacity(sheet: Sheet) -> Leaf:
             b1, b2, b3 = spacings(sheet)
             formula = (b1 + b2 + b3) / 2 - ground_level_distance(sheet)
             return sheet.step("ln z", "log of the fugacity z: µ/kT, from the trap bottom", formula, value=value)
+        case Regime.HARTREE_FOCK:
+            return hartree_fock.log_fugacity(sheet)
+        case Regime.EXACT_FERMIONS:
+            return fermi_levels.log_fugacity(sheet)
         case Regime.OTHER:
             return sheet.given("log_fugacity", "ln z")
+
+
+@once
+def trapped_log_fugacity(sheet: Sheet) -> Leaf:
+    """ln z of an ideal gas of the same X, whatever the model."""
+    X = classical_phase_space_density(sheet)
+    unknown = Leaf("ln z_X", float(equation_of_state.trapped_log_fugacity(sheet.statistics, X.amount)))
+    if sheet.bosons and X.amount >= inputs.zeta_3(sheet).amount:
+        sheet.case("the thermal atoms are saturated", X, "≥", inputs.zeta_3(sheet))
+        return sheet.step("ln z_X", "log of the fugacity of the thermal atoms", NOTHING, value=unknown.amount)
+    left = functions.polylog(sheet.statistics, 3.0, unknown)
+    meaning = "log of the fugacity of an ideal gas of these atoms"
+    return sheet.solve(unknown, meaning, left, X, where=functions.definition(sheet.statistics))
+
+
+def local_log_fugacity(sheet: Sheet) -> Leaf:
+    """ln z of the density in local density: fermions in discrete levels have their mean densities so."""
+    return trapped_log_fugacity(sheet) if sheet.regime is Regime.EXACT_FERMIONS else log_fugacity(sheet)
 
 
 @once
@@ -63,6 +87,10 @@ def peak_phase_space_density(sheet: Sheet) -> Leaf:
             formula = excited_density(sheet) * thermal_wavelength(sheet) ** 3
             meaning = "n λ³ of the atoms in excited levels, at the centre"
             return sheet.step("D", meaning, formula, value=value)
+        case Regime.HARTREE_FOCK:
+            return hartree_fock.peak_phase_space_density(sheet)
+        case Regime.EXACT_FERMIONS:
+            return fermi_levels.peak_phase_space_density(sheet)
         case Regime.OTHER:
             return sheet.given("peak_phase_space_density", "D")
 
@@ -86,7 +114,7 @@ def condensate_fraction(sheet: Sheet) -> Leaf:
     match sheet.regime:
         case Regime.THERMAL:
             condensed(sheet)
-            return sheet.step("N₀/N", meaning, NOTHING, value=value)
+            return sheet.nothing("N₀/N", meaning)
         case Regime.CONDENSED_IDEAL:
             condensed(sheet)
             formula = 1 - inputs.zeta_3(sheet) / classical_phase_space_density(sheet)
@@ -97,6 +125,8 @@ def condensate_fraction(sheet: Sheet) -> Leaf:
         case Regime.EXACT_LEVELS:
             meaning = "share of the atoms in the ground level"
             return sheet.step("N₀/N", meaning, condensate_atoms(sheet) / inputs.atoms(sheet), value=value)
+        case Regime.HARTREE_FOCK:
+            return hartree_fock.condensate_fraction(sheet)
         case _:
             return sheet.given("condensate_fraction", "N₀/N")
 
@@ -142,16 +172,6 @@ def height(sheet: Sheet) -> Leaf:
 
 
 # ---------------------------------------------------------------- exact levels
-
-
-@once
-def spacings(sheet: Sheet) -> tuple[Leaf, Leaf, Leaf]:
-    h, kT = inputs.h(sheet), inputs.k(sheet) * inputs.temperature(sheet)
-    first, second, third = (
-        sheet.step(f"b{number}", f"level spacing along axis {axis}, over kT", h * f / kT)
-        for axis, (number, f) in enumerate(zip("₁₂₃", inputs.frequencies(sheet), strict=True), start=1)
-    )
-    return first, second, third
 
 
 @once

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from app.explanations import functions, inputs
+from app.explanations import functions, hartree_fock, inputs
 from app.explanations.degeneracy import (
     condensate_atoms,
     condensate_fraction,
@@ -12,11 +12,10 @@ from app.explanations.degeneracy import (
     ground_level_density,
     ground_level_distance,
     height,
-    log_fugacity,
+    local_log_fugacity,
     peak_phase_space_density,
-    spacings,
 )
-from app.explanations.scales import classical_phase_space_density, oscillator_length, thermal_wavelength
+from app.explanations.scales import classical_phase_space_density, oscillator_length, spacings, thermal_wavelength
 from app.explanations.sheet import Regime, Sheet, once
 from app.explanations.sizes import defined
 from app.explanations.terms import FIVE_HALVES, PI, THREE_HALVES, Leaf, root
@@ -40,7 +39,7 @@ def ideal_condensate_density(sheet: Sheet) -> Leaf:
 def peak_density(sheet: Sheet) -> Leaf:
     value, meaning = sheet.number("peak_density"), "peak density of one spin state"
     match sheet.regime:
-        case Regime.THERMAL | Regime.FERMIONS:
+        case Regime.THERMAL | Regime.FERMIONS | Regime.EXACT_FERMIONS:
             formula = peak_phase_space_density(sheet) / thermal_wavelength(sheet) ** 3
         case Regime.CONDENSED_IDEAL:
             formula = thermal_density(sheet) + ideal_condensate_density(sheet)
@@ -48,6 +47,8 @@ def peak_density(sheet: Sheet) -> Leaf:
             return _semi_ideal_peak(sheet)
         case Regime.EXACT_LEVELS:
             formula = excited_density(sheet) + condensate_atoms(sheet) * ground_level_density(sheet)
+        case Regime.HARTREE_FOCK:
+            return hartree_fock.peak_density(sheet)
         case Regime.OTHER:
             return sheet.given("peak_density", "n(0)")
     return sheet.step("n(0)", meaning, formula, "1/m^3", value=value)
@@ -74,6 +75,8 @@ def mean_density(sheet: Sheet) -> Leaf:
     match sheet.regime:
         case Regime.OTHER:
             return sheet.given("mean_density", "⟨n⟩")
+        case Regime.HARTREE_FOCK:
+            return hartree_fock.mean_density(sheet)
         case Regime.EXACT_LEVELS:
             function = functions.SQUARED_DENSITY
             alpha, b = ground_level_distance(sheet), spacings(sheet)
@@ -84,7 +87,7 @@ def mean_density(sheet: Sheet) -> Leaf:
             formula = total / (classical_phase_space_density(sheet) * thermal_wavelength(sheet) ** 3)
         case regime:
             function = functions.overlap(sheet.statistics)
-            J = defined(sheet, "J", "∫ (n_th λ³)² over the trap", function, log_fugacity(sheet))
+            J = defined(sheet, "J", "∫ (n_th λ³)² over the trap", function, local_log_fugacity(sheet))
             thermal = J / (classical_phase_space_density(sheet) * thermal_wavelength(sheet) ** 3)
             if regime is Regime.CONDENSED_IDEAL:
                 among = sheet.step("⟨n⟩_th", "thermal atoms among themselves", thermal, "1/m^3")

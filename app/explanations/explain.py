@@ -148,11 +148,8 @@ def _lay_out(sheet: Sheet, row: Row) -> None:
 def _text(answer: CloudAnswer, row: Row, unit: str) -> str:
     """The value with its unit, and its interval where there is one."""
     shown = shown_unit(unit)
-    text = f"{value_text(answer, row, unit)} {shown}".strip()
-    between = range_text(answer, row, unit)
-    if not between:
-        return text
-    return f"{text} ({f'{between} {shown}'.strip()} by {answer.uncertainty.method.value})"
+    text, interval = f"{value_text(answer, row, unit)} {shown}".strip(), range_text(answer, row, unit)
+    return f"{text} ({f'{interval} {shown}'.strip()}, 16 to 84 %)" if interval else text
 
 
 def _model(answer: CloudAnswer) -> str:

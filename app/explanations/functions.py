@@ -21,7 +21,7 @@ from physics.oscillator_levels import COARSE_ORDER, OscillatorLevels, squared_de
 from physics.particles import Statistics
 from physics.statistics import bose, fermi
 
-_ORDERS = {1.5: "3/2", 2.0: "2", 2.5: "5/2", 3.0: "3", 4.0: "4"}
+_ORDERS = {0.5: "1/2", 1.5: "3/2", 2.0: "2", 2.5: "5/2", 3.0: "3", 4.0: "4"}
 _PRINTED = {"2": "₂", "3": "₃", "4": "₄"}
 
 BOSE_FUNCTION = "g_s(z) = Σ_j z^j/j^s, the Bose function"
@@ -174,14 +174,13 @@ SQUARED_DENSITY = Defined(
 
 def _level_sum(alpha: float, spacings: tuple[float, ...], triples: bool) -> float:
     levels = OscillatorLevels(np.array(spacings), COARSE_ORDER)
-    t, ground, weights = levels.densities_in_space(float(alpha), _NODES)
+    t, ground, weights = levels.densities_in_space(float(alpha))
     c = ground / float(np.expm1(alpha))
     if triples:
         return float(np.sum(weights * (c**3 / 6.0 + 1.5 * c * c * t + 3.0 * c * t * t + t**3)))
     return float(np.sum(weights * (0.5 * c * c + 2.0 * c * t + t * t)))
 
 
-_NODES = 24
 _IN_SPACE = (
     "a_i² = ħ/(m ω_i), ρ = Σ_i r_i²/a_i², c = exp(−ρ)/(exp(α) − 1), t = Σ_j exp(−jα) {Π_i [1 − exp(−2j b_i)]^(−1/2) "
     "exp[−(r_i/a_i)² tanh(j b_i/2)] − exp(−ρ)}, j = 1, 2, ..."

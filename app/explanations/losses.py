@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-from app.explanations import functions, inputs
-from app.explanations.classical import trapped_log_fugacity
+from app.explanations import functions, hartree_fock, inputs
 from app.explanations.collisions import elastic_collision_rate, known_length, rethermalisation_time
 from app.explanations.degeneracy import (
     condensate_fraction,
@@ -12,11 +11,11 @@ from app.explanations.degeneracy import (
     ground_level_density,
     ground_level_distance,
     height,
-    log_fugacity,
-    spacings,
+    local_log_fugacity,
+    trapped_log_fugacity,
 )
 from app.explanations.densities import ideal_condensate_density, thermal_density
-from app.explanations.scales import classical_phase_space_density, thermal_wavelength
+from app.explanations.scales import classical_phase_space_density, spacings, thermal_wavelength
 from app.explanations.sheet import Regime, Sheet, once
 from app.explanations.sizes import defined
 from app.explanations.terms import FIVE_HALVES, PI, Leaf, Term, root
@@ -34,9 +33,11 @@ def pair_density(sheet: Sheet) -> Leaf:
     match sheet.regime:
         case Regime.OTHER:
             return sheet.unexplained("⟨n⟩", _PAIRS, value, "1/m^3")
+        case Regime.HARTREE_FOCK:
+            formula: Term = hartree_fock.pair_density(sheet)
         case Regime.EXACT_LEVELS:
             L = defined(sheet, "L₂", "this integral, over n₁", functions.LEVEL_PAIRS, *_levels(sheet))
-            formula: Term = L * ground_level_density(sheet) / inputs.atoms(sheet)
+            formula = L * ground_level_density(sheet) / inputs.atoms(sheet)
         case Regime.CONDENSED_SEMI_IDEAL:
             x, B = height(sheet), density_scale(sheet)
             mixed = defined(sheet, "F_C", "overlap of thermal atoms and condensate", functions.DENSITY_PRODUCT, x)
@@ -46,7 +47,7 @@ def pair_density(sheet: Sheet) -> Leaf:
             formula = (pure + 2 * B * mixed + alike) / _volume(sheet)
         case regime:
             function = functions.overlap(sheet.statistics)
-            J = defined(sheet, "J", "∫ (n_th λ³)² over the trap", function, log_fugacity(sheet))
+            J = defined(sheet, "J", "∫ (n_th λ³)² over the trap", function, local_log_fugacity(sheet))
             formula = J / _volume(sheet)
             if regime is Regime.CONDENSED_IDEAL:
                 among = sheet.step("⟨n⟩_th", "thermal atoms among themselves", formula, "1/m^3")
@@ -61,9 +62,11 @@ def triple_density(sheet: Sheet) -> Leaf:
     match sheet.regime:
         case Regime.OTHER:
             return sheet.unexplained("⟨n²⟩", _TRIPLES, value, "1/m^6")
+        case Regime.HARTREE_FOCK:
+            formula: Term = hartree_fock.triple_density(sheet)
         case Regime.EXACT_LEVELS:
             L = defined(sheet, "L₃", "this integral, over n₁²", functions.LEVEL_TRIPLES, *_levels(sheet))
-            formula: Term = L * ground_level_density(sheet) ** 2 / inputs.atoms(sheet)
+            formula = L * ground_level_density(sheet) ** 2 / inputs.atoms(sheet)
         case Regime.CONDENSED_SEMI_IDEAL:
             x, B = height(sheet), density_scale(sheet)
             two = defined(sheet, "F_CC", "two condensed atoms and a thermal one", functions.DENSITY_PRODUCT_CC, x)
@@ -75,7 +78,7 @@ def triple_density(sheet: Sheet) -> Leaf:
             formula = total / (_volume(sheet) * thermal_wavelength(sheet) ** 3)
         case regime:
             function = functions.triple_overlap(sheet.statistics)
-            J = defined(sheet, "J₃", "∫ (n_th λ³)³ over the trap", function, log_fugacity(sheet))
+            J = defined(sheet, "J₃", "∫ (n_th λ³)³ over the trap", function, local_log_fugacity(sheet))
             formula = J / (_volume(sheet) * thermal_wavelength(sheet) ** 3)
             if regime is Regime.CONDENSED_IDEAL:
                 among = sheet.step("⟨n²⟩_th", "thermal atoms among themselves", formula, "1/m^6")

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from app.explanations import inputs
-from app.explanations.sheet import Sheet, once
+from app.explanations.sheet import Axes, Sheet, once
 from app.explanations.terms import ALL, PI, SIXTH, TWO_THIRDS, Leaf, cube_root, root
 
 
@@ -20,9 +20,19 @@ def mean_angular_frequency(sheet: Sheet) -> Leaf:
 
 
 @once
-def angular_frequencies(sheet: Sheet) -> tuple[Leaf, Leaf, Leaf]:
+def angular_frequencies(sheet: Sheet) -> Axes:
     first, second, third = (
         sheet.step(f"ω{number}", f"angular frequency along axis {axis}", 2 * PI * f, "rad/s")
+        for axis, (number, f) in enumerate(zip("₁₂₃", inputs.frequencies(sheet), strict=True), start=1)
+    )
+    return first, second, third
+
+
+@once
+def spacings(sheet: Sheet) -> Axes:
+    h, kT = inputs.h(sheet), inputs.k(sheet) * inputs.temperature(sheet)
+    first, second, third = (
+        sheet.step(f"b{number}", f"level spacing along axis {axis}, over kT", h * f / kT)
         for axis, (number, f) in enumerate(zip("₁₂₃", inputs.frequencies(sheet), strict=True), start=1)
     )
     return first, second, third

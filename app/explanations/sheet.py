@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING, TypeVar
 import numpy as np
 
 from app.explanations.explanation import Input, Step, StepKind
-from app.explanations.terms import SYMBOLS, Leaf, Term, balanced, exact, operand_text, result_text, worked
+from app.explanations.terms import NOTHING, SYMBOLS, Leaf, Term, balanced, exact, operand_text, result_text, worked
 from app.quantities import QUANTITIES
 from physics.cloud import Equilibrium, Model
 from physics.particles import Statistics
@@ -39,24 +39,24 @@ class Regime(Enum):
     CONDENSED_IDEAL = "ideal bosons below the threshold"
     CONDENSED_SEMI_IDEAL = "semi-ideal bosons below the threshold"
     EXACT_LEVELS = "bosons in discrete levels"
+    HARTREE_FOCK = "bosons in the mean field of all"
     FERMIONS = "ideal fermions"
+    EXACT_FERMIONS = "fermions in discrete levels"
     OTHER = "a model whose steps are not written down"
 
 
 def regime_of(solved: Equilibrium) -> Regime:
     """The formulas behind the equilibrium of a single cloud."""
-    if solved.cloud.statistics is Statistics.FERMI:
-        return Regime.FERMIONS if solved.model is Model.IDEAL else Regime.OTHER
     condensed = float(solved.classical_phase_space_density) > zeta(3.0)
-    match solved.model:
-        case Model.IDEAL:
-            return Regime.CONDENSED_IDEAL if condensed else Regime.THERMAL
-        case Model.SEMI_IDEAL:
-            return Regime.CONDENSED_SEMI_IDEAL if condensed else Regime.THERMAL
-        case Model.EXACT_LEVELS:
-            return Regime.EXACT_LEVELS
-        case _:
-            return Regime.OTHER
+    known = {
+        (Statistics.BOSE, Model.IDEAL): Regime.CONDENSED_IDEAL if condensed else Regime.THERMAL,
+        (Statistics.BOSE, Model.SEMI_IDEAL): Regime.CONDENSED_SEMI_IDEAL if condensed else Regime.THERMAL,
+        (Statistics.BOSE, Model.EXACT_LEVELS): Regime.EXACT_LEVELS,
+        (Statistics.BOSE, Model.HARTREE_FOCK): Regime.HARTREE_FOCK,
+        (Statistics.FERMI, Model.IDEAL): Regime.FERMIONS,
+        (Statistics.FERMI, Model.EXACT_LEVELS): Regime.EXACT_FERMIONS,
+    }
+    return known.get((solved.cloud.statistics, solved.model), Regime.OTHER)
 
 
 class Sheet:
@@ -135,6 +135,10 @@ class Sheet:
         known = definition in self._defined
         self._defined.add(definition)
         return "" if known else definition
+
+    def nothing(self, symbol: str, meaning: str, unit: str = "1") -> Leaf:
+        """A value that is 0 by what stands above it."""
+        return self.step(symbol, meaning, NOTHING, unit)
 
     def case(self, meaning: str, left: Leaf, sign: str, right: Leaf) -> None:
         """A comparison that decides which formulas hold; `meaning` says what follows."""

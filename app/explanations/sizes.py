@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from app.explanations import functions, inputs
+from app.explanations import fermi_levels, functions, hartree_fock, inputs
 from app.explanations.degeneracy import (
     chemical_potential,
     condensate_atoms,
@@ -11,10 +11,9 @@ from app.explanations.degeneracy import (
     ground_level_distance,
     height,
     log_fugacity,
-    spacings,
 )
 from app.explanations.functions import Defined
-from app.explanations.scales import angular_frequencies, classical_phase_space_density
+from app.explanations.scales import angular_frequencies, classical_phase_space_density, spacings
 from app.explanations.sheet import Axes, Regime, Sheet, once
 from app.explanations.terms import SEVEN_HALVES, Leaf, Term, root
 
@@ -50,6 +49,8 @@ def excited_energies(sheet: Sheet) -> Axes:
 def potential_share(sheet: Sheet) -> Leaf:
     """<V> of a thermal atom over (3/2) kT, in the models of local density."""
     meaning = "mean potential energy of a thermal atom, over (3/2) kT"
+    if sheet.regime is Regime.HARTREE_FOCK:
+        return hartree_fock.potential_share(sheet)
     if sheet.regime is Regime.CONDENSED_SEMI_IDEAL:
         x, F = height(sheet), thermal_number(sheet)
         energy = defined(sheet, "F_V", "potential energy of thermal atoms, / kT (kT/ħω̄)³", functions.TRAP_ENERGY, x)
@@ -71,6 +72,9 @@ def thermal_radii(sheet: Sheet) -> Axes:
     if sheet.regime is Regime.EXACT_LEVELS:
         S, (W1, W2, W3) = excited_atoms(sheet), excited_energies(sheet)
         formulas = (v * root(W1 / S) / w1, v * root(W2 / S) / w2, v * root(W3 / S) / w3)
+    elif sheet.regime is Regime.EXACT_FERMIONS:
+        N, (E1, E2, E3) = inputs.atoms(sheet), fermi_levels.energies(sheet)
+        formulas = (v * root(E1 / N) / w1, v * root(E2 / N) / w2, v * root(E3 / N) / w3)
     else:
         shape = root(potential_share(sheet))
         formulas = (v * shape / w1, v * shape / w2, v * shape / w3)
@@ -79,6 +83,8 @@ def thermal_radii(sheet: Sheet) -> Axes:
 
 @once
 def condensate_radii(sheet: Sheet) -> Axes:
+    if sheet.regime is Regime.HARTREE_FOCK:
+        return hartree_fock.condensate_radii(sheet)
     if sheet.regime is not Regime.CONDENSED_SEMI_IDEAL:
         return sheet.given_along("condensate_radii", "R")
     mu, m = chemical_potential(sheet), inputs.mass(sheet)
@@ -92,10 +98,15 @@ def energy_per_atom(sheet: Sheet) -> Leaf:
     value, meaning = sheet.number("energy_per_atom"), "energy per atom, from the trap bottom"
     if sheet.regime is Regime.OTHER:
         return sheet.given("energy_per_atom", "E/N")
+    if sheet.regime is Regime.HARTREE_FOCK:
+        return hartree_fock.energy_per_atom(sheet)
     kT = inputs.k(sheet) * inputs.temperature(sheet)
     match sheet.regime:
         case Regime.CONDENSED_SEMI_IDEAL:
             formula = kT * _semi_ideal_energy(sheet) / classical_phase_space_density(sheet)
+        case Regime.EXACT_FERMIONS:
+            E1, E2, E3 = fermi_levels.energies(sheet)
+            formula = kT * (E1 + E2 + E3) / inputs.atoms(sheet)
         case Regime.EXACT_LEVELS:
             formula = kT * _level_energy(sheet) / inputs.atoms(sheet)
         case Regime.CONDENSED_IDEAL:

@@ -6,7 +6,7 @@ from html import escape
 
 from PySide6.QtCore import QEvent, QMimeData, QSize, Qt
 from PySide6.QtGui import QGuiApplication, QPalette
-from PySide6.QtWidgets import QDialog, QDialogButtonBox, QFrame, QTextBrowser, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QDialog, QDialogButtonBox, QFrame, QPushButton, QTextBrowser, QVBoxLayout, QWidget
 
 from app.explanations import Explanation, Input, Step, StepKind, explanation_text
 from app.explanations.text import NUMBERS_NOTE, facts, headline, input_cells, result_line, step_lines
@@ -92,6 +92,9 @@ class ExplanationDialog(QDialog):
         buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Close)
         self.copy_button = buttons.addButton("&Copy as text", QDialogButtonBox.ButtonRole.ActionRole)
         self.copy_button.clicked.connect(self.view.copy_all)
+        for button in buttons.buttons():
+            if isinstance(button, QPushButton):
+                button.setAutoDefault(False)  # Return belongs to the text, which does nothing with it
         buttons.rejected.connect(self.reject)
         column = QVBoxLayout(self)
         column.addWidget(self.view, 1)
@@ -123,7 +126,7 @@ def _html(explanation: Explanation, muted: str, *, stale: bool) -> str:
 
 def _input_row(entry: Input, muted: str) -> tuple[str, ...]:
     symbol, text, meaning, origin = input_cells(entry)
-    return escape(symbol), escape(text), escape(meaning), _quiet(origin, muted)
+    return escape(symbol), escape(text), f"{escape(meaning)} {_quiet(f'({origin})', muted)}"
 
 
 def _step(number: int, step: Step, muted: str) -> str:

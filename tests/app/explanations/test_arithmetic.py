@@ -12,7 +12,8 @@ from typing import Any
 import mpmath
 import numpy as np
 from scipy.integrate import quad
-from scipy.optimize import minimize_scalar
+from scipy.optimize import brentq, minimize_scalar
+from scipy.special import gammaln
 
 from app.engine import CloudAnswer
 from app.explanations import Explanation, StepKind, explain
@@ -125,9 +126,9 @@ def interaction_average(K: Any) -> Any:
     return (1 - mpmath.exp(1 / K) * mpmath.e1(1 / K) / K) / K
 
 
-BOSONS = {f"g_{name}": (lambda z, s=s: mpmath.polylog(s, z)) for name, s in
-          (("3_2", 1.5), ("5_2", 2.5), ("2", 2), ("3", 3), ("4", 4))}  # fmt: skip
-FERMI = {f"f_{name}": fermi_function(s) for name, s in (("3_2", 1.5), ("5_2", 2.5), ("2", 2), ("3", 3), ("4", 4))}
+ORDERS = (("1_2", 0.5), ("3_2", 1.5), ("5_2", 2.5), ("2", 2), ("3", 3), ("4", 4))
+BOSONS = {f"g_{name}": (lambda z, s=s: mpmath.polylog(s, z)) for name, s in ORDERS}
+FERMI = {f"f_{name}": fermi_function(s) for name, s in ORDERS}
 SHARED: dict[str, Any] = {
     **BOSONS, **FERMI, "pi": mpmath.pi, "exp": mpmath.exp, "ln": mpmath.log, "c": interaction_average,
     "F": shell(lambda u, v, d: d),
@@ -175,17 +176,112 @@ def lost_energy(statistics: Callable[[float, float], float], atoms: int) -> Call
     return mean
 
 
-def calculated(numbers: str, bosons: bool) -> float:
+def each_level(term: Callable[..., Any]) -> Callable[..., float]:
+    """Sum of term(filling, b, n) over the levels of a trap, one by one."""
+
+    def total(log_z: Any, *spacings: Any) -> float:
+        b = [float(spacing) for spacing in spacings]
+        n = np.meshgrid(*(np.arange((max(float(log_z), 0.0) + 40.0) / spacing) for spacing in b), indexing="ij")
+        energy = sum(spacing * (level + 0.5) for spacing, level in zip(b, n, strict=True))
+        return float(np.sum(term(1.0 / (np.exp(energy - float(log_z)) + 1.0), b, n)))
+
+    return total
+
+
+def at_centre(n: Any) -> Any:
+    """|φ_n(0)|² of an oscillator, in units of the inverse width of its ground level."""
+    return np.where(n % 2 == 0, np.exp(gammaln(n + 1) - n * math.log(2) - 2 * gammaln(n // 2 + 1)), 0.0) / math.sqrt(
+        math.pi
+    )
+
+
+FERMI_LEVELS = {
+    "A": each_level(lambda f, b, n: f),
+    "E": each_level(lambda f, b, n: f * b[0] * (n[0] + 0.5)),
+    "B": each_level(
+        lambda f, b, n: f * math.prod(math.sqrt(2 * math.pi * x) * at_centre(k) for x, k in zip(b, n, strict=True))),
+}  # fmt: skip
+
+
+class MeanField:
+    """The Hartree-Fock densities of a given repulsion, by their definition."""
+
+    def __init__(self, g: Any) -> None:
+        self.g = float(g)
+        self.inside = brentq(lambda b: 2 * self.g * bose(0.5, b) - 1, 1e-12, 50.0, xtol=1e-18, rtol=1e-14)
+        height = self.inside + 2 * self.g * bose(1.5, self.inside)
+        self.outside = brentq(
+            lambda b: 2 * self.g * bose(1.5, b) - b - height, 0.0, self.inside, xtol=1e-18, rtol=1e-14)  # fmt: skip
+
+    def heart(self, alpha: float, h: Callable[..., float]) -> float:
+        length = alpha - self.inside
+
+        def piece(w: float) -> float:
+            beta = alpha - length * w * w
+            u = length * w * w + 2 * self.g * (bose(1.5, alpha) - bose(1.5, beta))
+            fall = 1 - 2 * self.g * bose(0.5, beta)
+            return math.sqrt(max(u, 0.0)) * h(u, beta / self.g, bose(1.5, beta), beta) * fall * 2 * length * w
+
+        return self._quad(piece, (0.0, 0.5, 0.9, 0.99, 1.0))
+
+    def around(self, start: float, u_e: float, h: Callable[..., float]) -> float:
+        def piece(x: float) -> float:
+            beta = start + math.exp(x)
+            u = u_e + math.exp(x) + 2 * self.g * (bose(1.5, start) - bose(1.5, beta))
+            rise = 1 + 2 * self.g * bose(0.5, beta)
+            return math.sqrt(u) * h(u, 0.0, bose(1.5, beta), beta) * rise * math.exp(x)
+
+        return self._quad(piece, (-45.0, -20.0, -10.0, -5.0, -2.0, 0.0, 2.0, 3.8))
+
+    @staticmethod
+    def _quad(piece: Callable[[float], float], edges: tuple[float, ...]) -> float:
+        total = sum(quad(piece, a, b, epsrel=1e-11, limit=200)[0] for a, b in pairwise(edges))
+        return 2 / math.sqrt(math.pi) * float(total)
+
+
+def hartree_fock(h: Callable[..., float], condensed: bool) -> Callable[[Any, Any], float]:
+    def total(alpha: Any, g: Any) -> float:
+        field, centre = MeanField(g), float(alpha)
+        if not condensed:
+            return field.around(centre, 0.0, h)
+        edge = centre - field.inside + 2 * field.g * (bose(1.5, centre) - bose(1.5, field.inside))
+        return field.heart(centre, h) + field.around(field.outside, edge, h)
+
+    return total
+
+
+def verge(g: Any) -> float:
+    field = MeanField(g)
+    return field.around(field.outside, 0.0, lambda u, c, t, beta: t)
+
+
+MEAN_FIELD: dict[str, Callable[..., float]] = {
+    "H": lambda u, c, t, beta: c + t,
+    "H_0": lambda u, c, t, beta: c,
+    "H_T": lambda u, c, t, beta: t,
+    "H_V": lambda u, c, t, beta: u * t,
+    "H_U": lambda u, c, t, beta: u * (c + t),
+    "H_P": lambda u, c, t, beta: bose(2.5, beta),
+    "H_N": lambda u, c, t, beta: (c + t) ** 2,
+    "H_2": lambda u, c, t, beta: c * c + 4 * c * t + 2 * t * t,
+    "H_3": lambda u, c, t, beta: c**3 + 9 * c * c * t + 18 * c * t * t + 6 * t**3,
+}
+
+
+def calculated(numbers: str, answer: CloudAnswer) -> float:
     """What a pocket calculator with the functions of the definitions makes of a line of numbers."""
     text = re.sub(r"([gf])_(\d)/2\(", r"\1_\2_2(", numbers)
     text = re.sub(r"([gfJL])([₂₃₄])\(", lambda m: f"{m[1]}_{'₀₁₂₃₄'.index(m[2])}(", text)
     text = text.replace("×", "*").replace("^", "**").replace("π", "pi").replace("θ", "theta")
     text = re.sub(r"(?<![\w.])(\d+(?:\.\d+)?(?:e-?\d+)?)", r"mpf('\1')", text)
-    statistics = bose_at if bosons else fermi_at
-    names = {
-        **SHARED, "J": overlap(statistics, 2), "J_3": overlap(statistics, 3), "theta": fitted(statistics),
-        "e_2": lost_energy(statistics, 2), "e_3": lost_energy(statistics, 3), "mpf": mpmath.mpf,
+    statistics = bose_at if answer.bosons else fermi_at
+    condensed = bool(answer.bosons and answer.equilibrium.condensate_fraction > 0.0)
+    mean_field = {name: hartree_fock(h, condensed) for name, h in MEAN_FIELD.items()}
+    integrals = {
+        "J": overlap(statistics, 2), "J_3": overlap(statistics, 3), "theta": fitted(statistics),
+        "e_2": lost_energy(statistics, 2), "e_3": lost_energy(statistics, 3),
     }  # fmt: skip
+    names = {**SHARED, **FERMI_LEVELS, **integrals, **mean_field, "H_e": verge, "mpf": mpmath.mpf}
     with mpmath.workdps(25):
         return float(eval(text, {"__builtins__": {}}, names))
 
@@ -214,9 +310,9 @@ def test_every_line_of_numbers_gives_the_result_beside_it(answer: CloudAnswer) -
             seen.add((step.numbers, step.result))
             what = (explanation.name, step)
             if step.kind is StepKind.FORMULA:
-                assert_printed(calculated(step.numbers, answer.bosons), step.result, what)
+                assert_printed(calculated(step.numbers, answer), step.result, what)
             elif step.kind is StepKind.EQUATION:
-                assert_printed(calculated(step.numbers, answer.bosons), step.left, what)
+                assert_printed(calculated(step.numbers, answer), step.left, what)
                 assert step.left == step.right, what
             elif step.kind is StepKind.CASE:
                 left, sign, right = step.numbers.split()
@@ -237,7 +333,7 @@ def test_results_have_six_digits_or_are_nothing(answer: CloudAnswer) -> None:
 def test_numbers_come_from_inputs_or_from_steps_before(answer: CloudAnswer) -> None:
     """Every symbol of a line stands among the inputs or was found in a line above."""
     functions = {"F_V", "F_L", "F_K", "F_2", "F_3", "F_C", "F_CC", "F_C2", "e_2", "e_3", "exp", "ln", "π"}
-    functions |= set("fgFJLMQSWcθ")
+    functions |= {"H_0", "H_T", "H_V", "H_U", "H_P", "H_N", "H_2", "H_3", "H_e"} | set("fgABEFHJLMQSWcθ")
     for explanation in explanations(answer):
         known = {entry.symbol for entry in explanation.inputs} | functions
         for step in explanation.steps:
@@ -245,6 +341,6 @@ def test_numbers_come_from_inputs_or_from_steps_before(answer: CloudAnswer) -> N
             for symbol in sorted(known | {step.symbol} - {""}, key=len, reverse=True):
                 if step.kind is StepKind.EQUATION or symbol != step.symbol or symbol in known:
                     unknown = unknown.replace(symbol, " ")
-            left = re.sub(r"_[35]/2|[₁₂₃₄²³⁴⁵\d\s()+−×/^=<>≤≥,.|]", "", unknown)
+            left = re.sub(r"_[135]/2|[₁₂₃₄²³⁴⁵\d\s()+−×/^=<>≤≥,.|]", "", unknown)
             assert step.kind is StepKind.GIVEN or left == "", (explanation.name, step, left)
             known |= {step.symbol} - {""}
