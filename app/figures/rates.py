@@ -47,14 +47,15 @@ def rates_picture(answer: RatesAnswer) -> Picture:
         if axis.low <= float(value) <= axis.high
     )
     return Picture(
-        title=_title(answer),
+        title=_("how fast atoms rethermalise, are lost and are heated"),
         x=_place_axis(answer),
         y=axis,
         curves=tuple(curves),
         marks=marks,
         labels=tuple(labels),
         summary=limits_sentence(answer.now),
-        note="" if drawn else _("no rate is known: give a scattering length and losses"),
+        # A note is redrawn with the data, a title with the frame: what moves with the cloud stands in the note.
+        note=_fixed(answer) if drawn else _("no rate is known: give a scattering length and losses"),
     )
 
 
@@ -96,10 +97,30 @@ def _time(rate: float) -> str:
     return format_quantity(seconds, best_unit(seconds, ("µs", "ms", "s")), digits=3)
 
 
-def _title(answer: RatesAnswer) -> str:
+def unknown_sentence(now: RateSet) -> str:
+    """What is not known of the cloud's rates, and so not drawn; empty where all is."""
+    unknown = [
+        name
+        for name, rate in (
+            (_("collisions (no scattering length)"), now.elastic),
+            (_("background lifetime"), now.background),
+            (_("two-body constant"), now.two_body),
+            (_("three-body constant"), now.three_body),
+        )
+        if not math.isfinite(float(rate))
+    ]
+    return _("Not known, and not drawn: {what}.").format(what=", ".join(unknown)) if unknown else ""
+
+
+def rate_text(rate: float) -> str:
+    """A rate as a pointer reads it: with the time that it means."""
+    return _("{rate} 1/s, once in {time}").format(rate=number(rate), time=_time(rate))
+
+
+def _fixed(answer: RatesAnswer) -> str:
     if answer.against is Against.TEMPERATURE:
-        return _("rates of an atom at N = {N}").format(N=number(answer.atoms))
-    return _("rates of an atom at T = {T}").format(T=temperature(answer.temperature))
+        return _("at N = {N}").format(N=number(answer.atoms))
+    return _("at T = {T}").format(T=temperature(answer.temperature))
 
 
 def _place_axis(answer: RatesAnswer) -> Axis:
@@ -114,7 +135,7 @@ def _rate_axis(curves: list[Curve]) -> Axis:
     values = np.concatenate([curve.y[np.isfinite(curve.y)] for curve in curves]) if curves else np.array([1.0])
     top = math.ceil(math.log10(float(values.max())) + 0.05)
     bottom = max(math.floor(math.log10(float(values.min())) - 0.05), top - _DECADES)
-    return Axis(label=_("rate"), unit="1/s", low=10.0**bottom, high=10.0**top, log=True)
+    return Axis(label=_("rate, or 1 over lifetime"), unit="1/s", low=10.0**bottom, high=10.0**top, log=True)
 
 
 def _positive(values: Array) -> Array:

@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 from functools import partial
 from typing import Any
 
-from PySide6.QtWidgets import QLabel, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QWidget
 
 from app.engine import CloudAnswer, TuningAnswer, tuning_answer, usual_fields
 from app.figures.picture import Picture
@@ -18,10 +18,8 @@ from app.plan import Plan
 from app.tuning_words import data_sentence, field_text, length_sentence, no_curve_sentences, sources_text
 from app.units import MAGNETIC_FIELD, Quantity
 from app.widgets.banner import Offer
-from app.widgets.empty_state import EmptyState
 from app.widgets.form import plan_with_entry
-from app.widgets.page import Page
-from app.widgets.status_line import StatusLine
+from app.widgets.single_plot_page import SinglePlotPage
 
 HINT = "Drag the field along the curve, or double-click where it should be"
 HINT_WITHOUT = "Double-click where the field should be, or type it in the Species form"
@@ -39,32 +37,12 @@ class _Ground:
     picture: Picture | None
 
 
-class FieldPage(Page):
+class FieldPage(SinglePlotPage):
     title = "Field"
+    plot_name = "Scattering length against magnetic field"
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
-        self.plot = self.add_plot("Scattering length against magnetic field")
-        self.sentence, self.data = StatusLine(strong=True), QLabel()
-        self.data.setObjectName("plotStatus")
-        self.data.setWordWrap(True)
-        self.empty = EmptyState()
-        heading = QVBoxLayout()
-        heading.setContentsMargins(14, 8, 14, 2)
-        heading.setSpacing(1)
-        heading.addWidget(self.sentence)
-        heading.addWidget(self.data)
-        shown = QWidget()
-        column = QVBoxLayout(shown)
-        column.setContentsMargins(0, 0, 0, 0)
-        column.setSpacing(0)
-        column.addLayout(heading)
-        column.addWidget(self.plot.canvas, 1)
-        column.addWidget(self.bar)
-        self.stack = QStackedWidget()
-        self.stack.addWidget(shown)
-        self.stack.addWidget(self.empty)
-        self.column.addWidget(self.stack)
         self._ground: _Ground | None = None
         self._fields: _Fields | None = None
         self._gas: object = None  # what the fields were chosen for
@@ -106,17 +84,12 @@ class FieldPage(Page):
         if ground is None or ground.depends_on != _what_a_curve_depends_on(cloud.plan, self._wanted_fields(cloud.plan)):
             return
         if ground.picture is None:
-            self.plot.clear()
-            self.empty.tell(*no_curve_sentences(ground.answer, cloud), self._offers(ground.answer))
-            self.stack.setCurrentWidget(self.empty)
+            self.show_empty(*no_curve_sentences(ground.answer, cloud), self._offers(ground.answer))
             return
-        self.stack.setCurrentIndex(0)
-        self.sentence.say(length_sentence(cloud))
-        self.data.setText(data_sentence(ground.answer))
-        self.data.setToolTip(sources_text(ground.answer))
         if not self.plot.canvas.underMouse():
             self._read_pointer(None)
-        self.plot.show(partial(with_field, ground.picture, cloud))
+        self.detail.setToolTip(sources_text(ground.answer))
+        self.show_plot(partial(with_field, ground.picture, cloud), length_sentence(cloud), data_sentence(ground.answer))
 
     def _offers(self, answer: TuningAnswer) -> tuple[Offer, ...]:
         return tuple(Offer(f"Use {state.name}", partial(self._use_state, state.name)) for state in answer.tunable)
@@ -137,12 +110,6 @@ class FieldPage(Page):
         if held is None or (field is not None and not held[0] <= field.value <= held[1]):
             self._fields = usual_fields(plan)
         return self._fields
-
-    def take_focus(self) -> None:
-        if self.stack.currentWidget() is self.empty:
-            self.empty.take_focus()
-        else:
-            super().take_focus()
 
     # ---------------------------------------------------------------- moving the field
 

@@ -8,12 +8,11 @@ from PySide6.QtWidgets import QSizePolicy, QWidget
 
 
 class StatusLine(QWidget):
-    """Shows one line, quiet unless strong, elided where it is too long; its full text is its accessible name."""
+    """Shows one quiet line, elided where it is too long; its full text is its accessible name and tip."""
 
-    def __init__(self, parent: QWidget | None = None, *, strong: bool = False) -> None:
+    def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._text = ""
-        self._role = QPalette.ColorRole.WindowText if strong else QPalette.ColorRole.PlaceholderText
         self.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
 
     @property
@@ -31,6 +30,6 @@ class StatusLine(QWidget):
 
     def paintEvent(self, event: QPaintEvent) -> None:
         painter = QPainter(self)
-        painter.setPen(self.palette().color(self._role))
+        painter.setPen(self.palette().color(QPalette.ColorRole.PlaceholderText))
         shown = painter.fontMetrics().elidedText(self._text, Qt.TextElideMode.ElideRight, self.width())
         painter.drawText(self.rect(), Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter, shown)

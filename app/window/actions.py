@@ -135,6 +135,15 @@ ACTIONS: tuple[ActionSpec, ...] = (
         lambda w: w.desk.show_page(3),
         "page",
     ),
+    ActionSpec(
+        "view.collisions",
+        _V,
+        "&Collisions",
+        "Ctrl+5",
+        "How fast atoms rethermalise, are lost and are heated",
+        lambda w: w.desk.show_page(4),
+        "page",
+    ),
     ActionSpec("view.readouts", _V, "&Readouts", "Ctrl+R", "Go to the readouts", lambda w: w.desk.show_readouts()),
     ActionSpec(
         "view.why",

@@ -10,6 +10,7 @@ from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QApplication, QLabel, QSplitter, QTabWidget, QVBoxLayout, QWidget
 
 from app.figures.theme import Theme
+from app.pages.collisions import CollisionsPage
 from app.pages.field import FieldPage
 from app.pages.map import MapPage
 from app.pages.profile import ProfilePage
@@ -38,8 +39,8 @@ class Desk(QWidget):
         self.verdict = Verdict()
         self.bench = Bench()
         self.map, self.slices, self.profile = MapPage(theme), SlicesPage(theme), ProfilePage(theme)
-        self.field = FieldPage(theme)
-        self.pages: tuple[Page, ...] = (self.map, self.slices, self.profile, self.field)
+        self.field, self.collisions = FieldPage(theme), CollisionsPage(theme)
+        self.pages: tuple[Page, ...] = (self.map, self.slices, self.profile, self.field, self.collisions)
         self.tabs = QTabWidget()
         self.tabs.setDocumentMode(True)
         self.tabs.setAccessibleName("Pages")

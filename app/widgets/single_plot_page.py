@@ -1,0 +1,73 @@
+"""A page of one plot under a sentence that says what it shows; where there is nothing to plot, why, and what helps."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QLabel, QStackedWidget, QVBoxLayout, QWidget
+
+from app.figures.theme import Theme
+from app.widgets.banner import Offer
+from app.widgets.empty_state import EmptyState
+from app.widgets.page import Page
+from app.widgets.plot import Source
+
+
+class SinglePlotPage(Page):
+    """Attributes: plot; sentence and detail, the texts over it; options, a column for choices under these; empty, what
+    stands in the place of the plot."""
+
+    plot_name = ""
+
+    def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
+        super().__init__(theme, parent)
+        self.plot = self.add_plot(self.plot_name)
+        self.sentence, self.detail, self.empty = QLabel(), QLabel(), EmptyState()
+        self.detail.setObjectName("plotStatus")
+        for label in (self.sentence, self.detail):
+            label.setWordWrap(True)
+            label.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+        self.options = QVBoxLayout()
+        heading = QVBoxLayout()
+        heading.setContentsMargins(14, 8, 14, 4)
+        heading.setSpacing(2)
+        heading.addWidget(self.sentence)
+        heading.addWidget(self.detail)
+        heading.addLayout(self.options)
+        self._plotted = QWidget()
+        column = QVBoxLayout(self._plotted)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(0)
+        column.addLayout(heading)
+        column.addWidget(self.plot.canvas, 1)
+        column.addWidget(self.bar)
+        self.stack = QStackedWidget()
+        self.stack.addWidget(self._plotted)
+        self.stack.addWidget(self.empty)
+        self.column.addWidget(self.stack)
+
+    @property
+    def is_empty(self) -> bool:
+        """Whether there is nothing to plot."""
+        return self.stack.currentWidget() is self.empty
+
+    def show_plot(self, source: Source, sentence: str, detail: str) -> None:
+        """Show what `source` gives, and the texts over it."""
+        self.stack.setCurrentWidget(self._plotted)
+        self.sentence.setText(sentence)
+        self.detail.setText(detail)
+        self.detail.setVisible(bool(detail))
+        self.plot.show(source)
+
+    def show_empty(self, why: str, remedy: str, offers: Sequence[Offer] = ()) -> None:
+        """Say why there is nothing to plot, and what can be done."""
+        self.plot.clear()
+        self.empty.tell(why, remedy, offers)
+        self.stack.setCurrentWidget(self.empty)
+
+    def take_focus(self) -> None:
+        if self.is_empty:
+            self.empty.take_focus()
+        else:
+            super().take_focus()
