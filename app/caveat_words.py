@@ -73,7 +73,7 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _PLAIN,
         ),
         "local_density_fermions": (
-            _("Levels are coarse: local density counts the atoms {value} off at the same Fermi energy."),
+            _("Levels are coarse: local density counts the atoms {value} off at the same EF. Use exact levels."),
             percent,
         ),
         "exact_levels_advised": (
@@ -81,7 +81,7 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _PLAIN,
         ),
         "shell_structure": (
-            _("kT is only {value} of the highest level spacing: the shells of the oscillator show."),
+            _("kT is only {value} of the highest level spacing: shells of the oscillator show. See exact levels."),
             _PLAIN,
         ),
         "low_dimension_bosons": (
@@ -89,7 +89,7 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _PLAIN,
         ),
         "low_dimension_fermions": (
-            _("The Fermi energy is only {value} level spacings, {frozen}: the gas is not three-dimensional."),
+            _("The Fermi energy is only {value} level spacings, {frozen}: not three-dimensional. Use exact levels."),
             _PLAIN,
         ),
         "frozen_thermal": (
