@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from types import MappingProxyType
 
+from app.condensate_quantities import CONDENSATE_ROWS, THRESHOLD_ROWS
 from app.quantity_row import Group, Need, Row
 from app.rate_quantities import COLLISION_ROWS, FERMI_ROWS, LOSS_ROWS
 from app.units import factor
@@ -124,6 +125,7 @@ _ROWS = (
         validity="first order in both; the interaction term is left out where a is unknown",
         needs=(Need.BOSONS,),
     ),
+    *THRESHOLD_ROWS,
     Row(
         name="fermi_temperature",
         label="Fermi temperature",
@@ -232,6 +234,7 @@ _ROWS = (
         needs=(Need.BOSONS, Need.INTERACTING_CONDENSATE),
         axes=True,
     ),
+    *CONDENSATE_ROWS,
     Row(
         name="thermal_radii",
         label="thermal radii (rms)",

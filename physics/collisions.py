@@ -18,6 +18,7 @@ import numpy as np
 from physics.checks import Floats
 from physics.constants import boltzmann, reduced_planck
 from physics.particles import Statistics
+from physics.smooth import through_nodes
 
 RETHERMALISATION_COLLISIONS = 2.7
 """Collisions an atom needs until energies along all axes are alike, for a cross-section without speed in it. [4]"""
@@ -80,8 +81,14 @@ def thermal_cross_section_factor(mass: float, temperature: Floats, scattering_le
     K = np.asarray(mass * boltzmann * temperature * scattering_length**2 / reduced_planck**2, dtype=np.float64)
     t = np.exp(_LOG_T)
     weights = 0.25 * t * t * np.exp(-t)
-    factor: Floats = (weights / (1.0 + K[..., np.newaxis] * t)).sum(axis=-1)
-    return factor
+
+    def averaged(K: Floats) -> Floats:
+        factor: Floats = (weights / (1.0 + K[:, np.newaxis] * t)).sum(axis=-1)
+        return factor
+
+    if np.all(K > 0.0):
+        return through_nodes(lambda logs: averaged(np.exp(logs)), np.log(K).reshape(-1)).reshape(K.shape)
+    return averaged(K.reshape(-1)).reshape(K.shape)
 
 
 def mean_collision_rate(peak_density: Floats, cross_section: Floats, speed: Floats) -> Floats:

@@ -14,6 +14,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from physics.checks import Floats
+from physics.smooth import through_nodes
 from physics.statistics import bose, fermi
 
 # Trapezoidal rule in ln w, u = w^2. g_3/2(e^(-alpha-w^2)) is regular for |arg w| < pi/4, so the rule converges as
@@ -51,7 +52,10 @@ def bose_mean(alpha: ArrayLike, integrand: Integrand) -> Floats:
     a = np.asarray(alpha, dtype=np.float64)
     u = np.exp(2.0 * _LOG_W)
     weights = 4.0 / math.sqrt(math.pi) * _STEP * u**1.5
-    return _in_parts(lambda part: integrand(u, part + u) @ weights, a)
+    # The means are regular in sqrt(alpha) near saturation.
+    root = np.sqrt(a.reshape(-1))
+    means = through_nodes(lambda root: _in_parts(lambda part: integrand(u, part + u) @ weights, root * root), root)
+    return means.reshape((*means.shape[:-1], *a.shape))
 
 
 def fermi_mean(log_z: ArrayLike, integrand: Integrand) -> Floats:
@@ -68,7 +72,9 @@ def fermi_mean(log_z: ArrayLike, integrand: Integrand) -> Floats:
             total = total + ((high - low) * weights * w * w * integrand(w * w, part - w * w)).sum(axis=-1)
         return 4.0 / math.sqrt(math.pi) * total
 
-    return _in_parts(column, np.asarray(log_z, dtype=np.float64))
+    z = np.asarray(log_z, dtype=np.float64)
+    means = through_nodes(lambda flat: _in_parts(column, flat), z.reshape(-1))
+    return means.reshape((*means.shape[:-1], *z.shape))
 
 
 def _in_parts(function: Callable[[Floats], Floats], values: Floats) -> Floats:

@@ -22,12 +22,12 @@ def through_nodes(function: Callable[[Floats], Floats], points: Floats) -> Float
 
     Parameters
     ----------
-    function : of a flat array, giving one value an element.
-    points : (n,). Finite.
+    function : of a flat array (n,), giving (..., n): one value an element, or several.
+    points : (n,). Where one is not finite, all are evaluated.
 
     Returns
     -------
-    (n,). Relative to the largest value in the range the error is about `TOLERANCE`.
+    (..., n). Relative to the largest value in the range the error is about `TOLERANCE`.
 
     Reference
     ---------
@@ -38,15 +38,17 @@ def through_nodes(function: Callable[[Floats], Floats], points: Floats) -> Float
     from numpy.polynomial import chebyshev
 
     low, high = float(np.min(points)), float(np.max(points))
-    if not low < high:
-        return np.full(points.shape, function(np.array([low]))[0])
+    if not np.isfinite(high - low):
+        return function(points)
+    if low == high:
+        return np.repeat(function(points[:1]), points.size, axis=-1)
     for degree in _DEGREES:
         if 4 * degree > points.size:
             break
         nodes = low + 0.5 * (high - low) * (chebyshev.chebpts1(degree + 1) + 1.0)
         coefficients = np.asarray(_coefficients(function(nodes)), dtype=np.float64)
-        tail = np.abs(coefficients[-(degree // 3) :])
-        if np.max(tail) <= TOLERANCE * np.max(np.abs(coefficients)):
+        sizes = np.abs(coefficients)
+        if np.all(np.max(sizes[-(degree // 3) :], axis=0) <= TOLERANCE * np.max(sizes, axis=0)):
             # Clipped, for the ends may come out an ulp beyond -1 and 1.
             t = np.clip(2.0 * (points - low) / (high - low) - 1.0, -1.0, 1.0)
             return np.asarray(chebyshev.chebval(t, coefficients), dtype=np.float64)
@@ -54,10 +56,10 @@ def through_nodes(function: Callable[[Floats], Floats], points: Floats) -> Float
 
 
 def _coefficients(values: Floats) -> Floats:
-    """Chebyshev coefficients of the polynomial through values at the roots of the next polynomial."""
-    count = values.size
+    """Chebyshev coefficients, along the first axis, of the polynomials through values at the roots of the next one."""
+    count = values.shape[-1]
     angles = np.pi * (np.arange(count) + 0.5)[::-1] / count
     waves = np.cos(np.outer(np.arange(count), angles))
-    coefficients: Floats = 2.0 / count * (waves @ values)
+    coefficients: Floats = 2.0 / count * np.moveaxis(values @ waves.T, -1, 0)
     coefficients[0] *= 0.5
     return coefficients

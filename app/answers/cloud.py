@@ -80,6 +80,14 @@ class CloudAnswer:
                 return self.cloud.scattering_length is not None
             case Need.COLLISIONS:
                 return bool(np.isfinite(self.equilibrium.elastic_collision_rate))
+            case Need.REPULSIVE:
+                return bool(self.cloud.length > 0.0)
+            case Need.ATTRACTIVE:
+                return bool(self.cloud.length < 0.0)
+            case Need.STABLE_CONDENSATE:
+                return bool(np.isfinite(self.solution.condensate.release_energy_per_atom))
+            case Need.DIPOLES:
+                return bool(np.isfinite(self.solution.condensate.dipolar_ratio))
             case Need.DEPTH:
                 return self.cloud.trap.depth is not None
             case Need.EFFICIENCY:

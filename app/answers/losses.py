@@ -10,11 +10,14 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
+from app.condensate_quantities import CONDENSATE_ATTRIBUTES, THRESHOLD_ATTRIBUTES
 from physics.cloud import Equilibrium
+from physics.condensate import Condensate
 from physics.fermi_interactions import FermiEstimates
 from physics.losses import Losses
 from physics.particles import Certainty
 from physics.rates import Rates
+from physics.thresholds import Thresholds
 
 if TYPE_CHECKING:
     from app.plan import Plan
@@ -71,11 +74,23 @@ class Solution:
     def estimates(self) -> FermiEstimates:
         return FermiEstimates(equilibrium=self.equilibrium)
 
+    @cached_property
+    def condensate(self) -> Condensate:
+        return Condensate(equilibrium=self.equilibrium)
+
+    @cached_property
+    def thresholds(self) -> Thresholds:
+        return Thresholds(equilibrium=self.equilibrium)
+
     def value(self, name: str) -> float | Array:
         """A quantity, in SI; NaN where it does not apply.
 
         Raises AttributeError for a name that is no quantity.
         """
+        if name in CONDENSATE_ATTRIBUTES:
+            return getattr(self.condensate, CONDENSATE_ATTRIBUTES[name])  # type: ignore[no-any-return]
+        if name in THRESHOLD_ATTRIBUTES:
+            return getattr(self.thresholds, THRESHOLD_ATTRIBUTES[name])  # type: ignore[no-any-return]
         for holder in (self.equilibrium, self.rates, self.estimates):
             if hasattr(type(holder), name):
                 return getattr(holder, name)  # type: ignore[no-any-return]

@@ -89,6 +89,8 @@ class Uncertainty:
         return {}
 
     def _spread(self, name: str) -> Spread | None:
+        if name in ONE_BY_ONE:
+            return self._first_order(name)
         if self.method is Method.DRAWS:
             return self._from_draws(self._drawn, name)
         if name in MODEL_FREE:
@@ -170,6 +172,10 @@ MODEL_FREE = frozenset(
     }
 )
 """Quantities that every model gives alike."""
+
+
+ONE_BY_ONE = frozenset({"critical_temperature_exact_levels"})
+"""Quantities found by a search for each cloud, too slow for thousands of draws."""
 
 
 def _spread(low: Array, median: Array, high: Array, method: Method) -> Spread:

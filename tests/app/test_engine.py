@@ -228,3 +228,44 @@ def test_every_quantity_that_is_said_not_to_depend_on_the_model_does_not() -> No
         values = [np.asarray(answer.value(name)) for answer in answers]
         for value in values[1:]:
             np.testing.assert_array_equal(value, values[0], err_msg=name)
+
+
+# --- the condensate by itself, and thresholds beyond the ideal one ---
+
+
+def test_a_weakly_interacting_condensate_has_the_width_of_the_ground_level() -> None:
+    plan = plan_with(
+        DEFAULT_PLAN,
+        {
+            "cloud.temperature": "10 nK",
+            "cloud.atoms": "1e4",
+            "species.scattering_length": "0.001 a0",
+            "cloud.model": "ideal",
+        },
+    )
+    radii = np.asarray(cloud_answer(plan).value("condensate_rms_radii"))
+    # sqrt(hbar/(2 m w)) of 87Rb at 120 Hz and 20 Hz, by hand
+    np.testing.assert_allclose(radii, [6.961e-7, 6.961e-7, 1.7051e-6], rtol=2e-3)
+
+
+def test_the_exact_threshold_stands_beside_the_shifted_one() -> None:
+    # 1e5 atoms at 120:120:20 Hz. First order: 0.7275 (86.67/66.04) 1e5^(-1/3) = 2.06 %; exact levels a little more.
+    answer = cloud_answer(DEFAULT_PLAN)
+    ratio = float(answer.value("critical_temperature_exact_levels")) / float(answer.value("critical_temperature"))
+    assert 1.0 - ratio == pytest.approx(0.0206, rel=0.06)
+
+
+@pytest.mark.parametrize(
+    ("texts", "name", "value"),
+    [
+        # 0.575 aho/|a|: aho = 3.797 um for 7Li at 100 Hz, |a| = 20 a0 = 1.0584 nm
+        ({"species.key": "7Li", "species.scattering_length": "-20 a0"}, "collapse_atoms", 2062.0),
+        # 130.8 a0 of 164Dy (mu0 mu^2 m/(12 pi hbar^2) at 9.93 muB) over 100 a0
+        ({"species.key": "164Dy", "species.scattering_length": "100 a0"}, "dipolar_ratio", 1.308),
+    ],
+)
+def test_limits_of_condensates(texts: dict[str, str], name: str, value: float) -> None:
+    plan = plan_with(
+        DEFAULT_PLAN, {**texts, "trap.frequencies": "100 Hz, 100 Hz, 100 Hz", "cloud.temperature": "20 nK"}
+    )
+    assert float(cloud_answer(plan).value(name)) == pytest.approx(value, rel=5e-3)

@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Mapping
 
 import pytest
 
+from app.condensate_quantities import CONDENSATE_ATTRIBUTES, THRESHOLD_ATTRIBUTES
 from app.quantities import QUANTITIES, Group, Need, display_factor, rows_in
 from physics.constants import boltzmann, planck
 from physics.equilibria import Equilibrium
@@ -53,7 +55,9 @@ def test_every_name_of_the_contract_is_there() -> None:
 @pytest.mark.parametrize("name", QUANTITIES)
 def test_every_row_is_a_quantity_of_the_equilibrium_and_says_all_about_itself(name: str) -> None:
     row = QUANTITIES[name]
-    assert sum(hasattr(holder, name) for holder in (Equilibrium, Rates, FermiEstimates)) == 1
+    holders = (Equilibrium, Rates, FermiEstimates, CONDENSATE_ATTRIBUTES, THRESHOLD_ATTRIBUTES)
+    found = [name in holder if isinstance(holder, Mapping) else hasattr(holder, name) for holder in holders]
+    assert found.count(True) == 1
     assert all((row.label, row.symbol, row.formula, row.source, row.validity))
     for unit in row.units:
         assert display_factor(unit, row) > 0.0

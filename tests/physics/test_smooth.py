@@ -43,3 +43,14 @@ def test_few_points_and_equal_points_are_evaluated_as_they_are() -> None:
     few = np.linspace(0.0, 1.0, 7)
     np.testing.assert_array_equal(through_nodes(np.exp, few), np.exp(few))
     np.testing.assert_array_equal(through_nodes(np.exp, np.full(1000, 0.3)), np.full(1000, np.exp(0.3)))
+
+
+def test_several_functions_at_once_keep_their_shape() -> None:
+    points = np.random.default_rng(3).uniform(0.5, 2.0, 1000)
+    values = through_nodes(lambda x: np.stack([np.exp(x), np.log(x), 0.0 * x + 2.0]), points)
+    np.testing.assert_allclose(values, [np.exp(points), np.log(points), np.full(1000, 2.0)], atol=1e-9)
+
+
+def test_points_that_are_not_finite_do_not_spoil_the_others() -> None:
+    points = np.array([np.nan, np.inf, *np.linspace(0.0, 1.0, 998)])
+    np.testing.assert_array_equal(through_nodes(np.exp, points), np.exp(points))
