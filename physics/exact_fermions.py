@@ -3,7 +3,7 @@
 Grand canonical: means over an exchange of atoms. Energies and mu count from the bottom of the trap, so the zero-point
 energy is in them. What is summed is the fugacity, energies and with them the radii, and the density at the centre and
 along the axes. The mean density is that of local density, whose ripples average out in it; scales such as TF are those
-of a large cloud. A cloud takes some milliseconds; an array is done one by one.
+of a large cloud. A cloud takes a millisecond or some; those of an array with many levels within kT are done at once.
 
 Reference
 ---------
@@ -12,15 +12,20 @@ Reference
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from physics.checks import Floats
 from physics.equilibria import quantity
 from physics.fermi_levels import FermiLevels
+from physics.fermi_series import FINE, FineLevels
 from physics.ideal_fermi import IdealFermi
+from physics.statistics import fermi
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -34,6 +39,16 @@ class ExactFermions(IdealFermi):
         spacings: Floats = np.broadcast_to(self.cloud.trap.frequencies / tau, (*self.cloud.shape, 3))
         return spacings
 
+    @cached_property
+    def _fine(self) -> NDArray[np.bool_]:
+        """Clouds with many levels within kT along every axis: all done at once."""
+        fine: NDArray[np.bool_] = np.all(self.spacings <= FINE, axis=-1)
+        return fine
+
+    @cached_property
+    def _fine_levels(self) -> FineLevels:
+        return FineLevels(self.spacings[self._fine])
+
     def levels(self, index: tuple[int, ...] = ()) -> FermiLevels:
         """The levels of one cloud."""
         return FermiLevels(self.spacings[index], self._highest(index))
@@ -44,31 +59,46 @@ class ExactFermions(IdealFermi):
         local = np.broadcast_to(self._log_z, self.cloud.shape)[index]
         return float(local) + 0.5 * float(self.spacings[index].sum())
 
+    def _filled(self, values: Floats, fine: Callable[[], Floats], one: Callable[[tuple[int, ...]], Any]) -> Floats:
+        """Values of fine clouds and of the others, these one by one."""
+        if np.any(self._fine):
+            values[self._fine] = fine()
+        for index in zip(*np.nonzero(np.atleast_1d(~self._fine)), strict=True):
+            place = index if self.cloud.shape else ()
+            values[place] = one(place)
+        return values
+
     @quantity
     def log_fugacity(self) -> Floats:
-        atoms = np.broadcast_to(self._atoms, self.cloud.shape)
-        local = np.broadcast_to(self._log_z, self.cloud.shape)
-        found = np.empty(self.cloud.shape)
-        for index in np.ndindex(self.cloud.shape):
-            low, high = float(local[index]), self._highest(index)
-            found[index] = FermiLevels(self.spacings[index], high).log_fugacity(float(atoms[index]), low, high)
-        return found
+        atoms, local = (np.broadcast_to(value, self.cloud.shape) for value in (self._atoms, self._log_z))
+        # The first correction to local density is a good start everywhere.
+        start = local + np.sum(self.spacings**2, axis=-1) / 24.0 * fermi(1.0, local) / fermi(2.0, local)
+
+        def one(index: tuple[int, ...]) -> float:
+            return self.levels(index).log_fugacity(float(atoms[index]), float(start[index]), self._highest(index))
+
+        fine = self._fine
+        return self._filled(
+            np.empty(self.cloud.shape), lambda: self._fine_levels.log_fugacity(atoms[fine], start[fine]), one
+        )
 
     @quantity
     def peak_phase_space_density(self) -> Floats:
         """n lambda^3 at the centre, where a few filled shells may leave a dip. [1]"""
-        density = np.empty(self.cloud.shape)
-        for index in np.ndindex(self.cloud.shape):
-            density[index] = self.levels(index).central_density(float(self.log_fugacity[index]))
-        return density
+        return self._filled(
+            np.empty(self.cloud.shape),
+            lambda: self._fine_levels.central_density(self.log_fugacity[self._fine]),
+            lambda index: self.levels(index).central_density(float(self.log_fugacity[index])),
+        )
 
     @cached_property
     def _energies(self) -> Floats:
         """(..., 3) Energy of an atom along each axis, in kT. [1]"""
-        energies = np.empty((*self.cloud.shape, 3))
-        with np.errstate(all="ignore"):
-            for index in np.ndindex(self.cloud.shape):
-                energies[index] = self.levels(index).energies(float(self.log_fugacity[index]))
+        energies = self._filled(
+            np.empty((*self.cloud.shape, 3)),
+            lambda: self._fine_levels.energies(self.log_fugacity[self._fine]),
+            lambda index: self.levels(index).energies(float(self.log_fugacity[index])),
+        )
         each: Floats = energies / np.expand_dims(self._atoms, -1)
         return each
 

@@ -3,9 +3,7 @@
 Energies in kT, from the bottom of the trap; b_i = hbar w_i/kT. An axis is summed in one of two ways:
 
     coarse, b > 1/2: level by level. Axes of equal frequency are one ladder with degenerate rungs.
-    fine, b <= 1/2: by the series of its partition function in powers of b^2, 1/(2 sinh(b/2)) = (1/b)(1 - b^2/24 ...),
-    which turns a sum over m fine axes into f_m and lower orders, f_(m-2) ... [1]. What it leaves out, the shells of
-    these axes, is of order e^(-2 pi^2/b) in sums, and e^(-pi^2/b), 3e-9 at most, in densities.
+    fine, b <= 1/2: by the series of its partition function in powers of b^2, see `physics.fermi_series`.
 
 Where there would be more than a million rungs all axes are taken as fine: then thousands of shells are filled, and what
 their steps do to the atom number is below 1e-6. So the cost is bounded, and small in traps with equal frequencies.
@@ -21,16 +19,21 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from functools import cache
 
 import numpy as np
 from numpy.typing import ArrayLike
 
 from physics.checks import Floats
+from physics.fermi_series import (
+    FINE,
+    centre_series,
+    energy_series,
+    fermi_series,
+    partition_series,
+    product_series,
+)
 from physics.statistics import fermi
 
-_FINE = 0.5
-_TERMS = 9  # of the series in b^2
 _RANGE = 38.0  # e^-38 is nothing beside 1
 _MOST = 1_000_000  # rungs
 _AT_ONCE = 200_000
@@ -86,7 +89,7 @@ class FermiLevels:
         self.spacings = spacings
         self._made: dict[tuple[tuple[int, ...], tuple[int, ...]], Floats] = {}
         self._reach = max(highest_log_z, 0.0) + _RANGE
-        self._coarse = tuple(i for i in range(3) if spacings[i] > _FINE)
+        self._coarse = tuple(i for i in range(3) if spacings[i] > FINE)
         if _rung_count([spacings[group[0]] for group in _equal(spacings, self._coarse)], self._reach) > _MOST:
             self._coarse = ()
         self._energies, self._counts = self._rungs(self._coarse, ())
@@ -109,13 +112,14 @@ class FermiLevels:
         by mu/kT."""
         coefficients = self._coefficients(tuple(summed), tuple(centred))
         order = len(summed) + 0.5 * len(centred) + raised
-        return _series(coefficients, order, local) / float(np.prod(self.spacings[list(summed)]))
+        return fermi_series(coefficients, order, local) / float(np.prod(self.spacings[list(summed)]))
 
     def _coefficients(self, summed: tuple[int, ...], centred: tuple[int, ...]) -> Floats:
         """Of the series over fine axes."""
         if (summed, centred) not in self._made:
-            factors = [*(_partition(self.spacings[i]) for i in summed), *(_centre(self.spacings[i]) for i in centred)]
-            self._made[summed, centred] = _product(factors)
+            ladders = [partition_series(self.spacings[i]) for i in summed]
+            centres = [centre_series(self.spacings[i]) for i in centred]
+            self._made[summed, centred] = product_series([*ladders, *centres])
         return self._made[summed, centred]
 
     def _fine(self, axes: Sequence[int]) -> tuple[int, ...]:
@@ -155,22 +159,20 @@ class FermiLevels:
         moved = float(self._counts[part] @ np.where(distance < 0.0, -tails, tails))
         return float(filled - atoms) + moved, float(self._counts[part] @ (tails * (1.0 - tails)))
 
-    def log_fugacity(self, atoms: float, low: float, high: float) -> float:
-        """mu/kT at which the levels hold so many atoms of one spin state: below `high`, and looked for from `low` on,
+    def log_fugacity(self, atoms: float, start: float, high: float) -> float:
+        """mu/kT at which the levels hold so many atoms of one spin state: below `high`, and looked for from `start` on,
         both ways."""
-        width = max(high - low, 1e-3)
-        while self._excess(low, atoms)[0] > 0.0:
-            low, width = low - width, 2.0 * width
-        x = low
+        x, low, width = min(start, high), -math.inf, max(high - start, 1e-3)
         for _ in range(_STEPS):
             miss, slope = self._excess(x, atoms)
             low, high = (low, x) if miss > 0.0 else (x, high)
-            step = miss / slope if slope > 0.0 else math.inf
+            step = miss / slope if slope > 0.0 else math.copysign(math.inf, miss)
             proposed = x - step
             if miss == 0.0 or abs(step) < 1e-8:  # squared by the step just made
                 return proposed if low <= proposed <= high else x
             if not low < proposed < high:
-                proposed = 0.5 * (low + high)
+                width *= 2.0
+                proposed = 0.5 * (low + high) if math.isfinite(low) else high - width
                 if proposed in (low, high):
                     break
             x = proposed
@@ -185,11 +187,10 @@ class FermiLevels:
                 energies, counts = _ladder(self.spacings[axis], 1, self._reach)
                 result[axis] = (energies * counts) @ self._sum(log_z - energies, others, ())
                 continue
-            # -dZ/dj of this axis, Z = (1/b) sum of a_k j^(2k-1), times Z of the others.
-            own = _partition(self.spacings[axis]) * (1.0 - 2.0 * np.arange(_TERMS))
-            fine, order = self._fine(others), len(self._fine(others)) + 2.0
-            coefficients = _product([own, *(_partition(self.spacings[i]) for i in fine)])
-            each = _series(coefficients, order, log_z - self._energies)
+            fine = self._fine(others)
+            own = energy_series(partition_series(self.spacings[axis]))
+            coefficients = product_series([own, *(partition_series(self.spacings[i]) for i in fine)])
+            each = fermi_series(coefficients, len(fine) + 2.0, log_z - self._energies)
             result[axis] = self._counts @ each / float(np.prod(self.spacings[[axis, *fine]]))
         return result
 
@@ -269,96 +270,3 @@ def _level_densities(filled: Floats, squares: Floats) -> Floats:
         total += share * psi * psi
         psi, before = math.sqrt(2.0 / n) * x * psi - math.sqrt((n - 1.0) / n) * before, psi
     return total
-
-
-# Coefficients of powers of b^2 in the series of (b/2)/sinh(b/2) and of sqrt(b/sinh b).
-
-
-@cache
-def _inverse_sinh(power: float) -> Floats:
-    """Series of (sinh(x)/x)^power in x^2."""
-    sinh = np.array([1.0 / math.factorial(2 * k + 1) for k in range(_TERMS)])
-    series = np.zeros(_TERMS)
-    series[0] = 1.0
-    for n in range(1, _TERMS):  # J. C. P. Miller's recurrence
-        series[n] = sum((k * power - n + k) * sinh[k] * series[n - k] for k in range(1, n + 1)) / n
-    return series
-
-
-def _partition(spacing: float) -> Floats:
-    coefficients: Floats = _inverse_sinh(-1.0) * (0.5 * spacing) ** (2.0 * np.arange(_TERMS))
-    return coefficients
-
-
-def _centre(spacing: float) -> Floats:
-    coefficients: Floats = _inverse_sinh(-0.5) * spacing ** (2.0 * np.arange(_TERMS))
-    return coefficients
-
-
-def _product(series: Sequence[Floats]) -> Floats:
-    product = np.concatenate([[1.0], np.zeros(_TERMS - 1)])
-    for factor in series:
-        product = np.convolve(product, factor)[:_TERMS]
-    return product
-
-
-def _series(coefficients: Floats, order: float, log_z: Floats) -> Floats:
-    """Sum of coefficients times f_order, f_(order-2), ... of ln z."""
-    total = np.zeros_like(log_z)
-    growth = 1.0  # of the orders that follow, (2k)!/pi^(2k)
-    for k, coefficient in enumerate(coefficients.tolist()):
-        growth *= max(2.0 * k * (2.0 * k - 1.0), 1.0) / (math.pi**2 if k else 1.0)
-        if abs(coefficient) * growth < 1e-17:
-            break
-        lower = order - 2.0 * k
-        if lower < -4.75 and lower != math.floor(lower):
-            break  # beyond what derivatives are good for, and small
-        total = total + coefficient * _fermi(lower, log_z)
-    return total
-
-
-def _fermi(order: float, log_z: Floats) -> Floats:
-    """f_s for any order that is a multiple of 1/2; below 1/2 a derivative."""
-    if order > 0.0:
-        return np.asarray(fermi(order, log_z))
-    if order == math.floor(order):
-        return _logistic(-int(order), log_z)
-    # Derivatives of f_1/2, which is regular for |Im ln z| < pi, by Chebyshev polynomials over +-1.
-    nodes, differentiate = _stencil(round(0.5 - order))
-    values: Floats = np.asarray(fermi(0.5, log_z[..., np.newaxis] + nodes)) @ differentiate
-    return values
-
-
-@cache
-def _stencil(derivative: int) -> tuple[Floats, Floats]:
-    """Nodes and weights that make a derivative at 0 of a function at the nodes."""
-    count = 20
-    angle = math.pi * (np.arange(count) + 0.5) / count
-    nodes = np.cos(angle)
-    weights = np.empty(count)
-    for place in range(count):
-        coefficients = np.cos(np.arange(count) * angle[place]) * 2.0 / count
-        coefficients[0] *= 0.5
-        weights[place] = np.polynomial.chebyshev.chebval(0.0, np.polynomial.chebyshev.chebder(coefficients, derivative))
-    return nodes, weights
-
-
-@cache
-def _logistic_polynomial(derivative: int) -> Floats:
-    """R with the derivative of 1/(1 + e^-x) being p R(q), q = -tanh(x/2), p = (1 - q^2)/4."""
-    R = np.polynomial.Polynomial([1.0])
-    q, two_p = np.polynomial.Polynomial([0.0, 1.0]), np.polynomial.Polynomial([0.5, 0.0, -0.5])
-    for _ in range(derivative - 1):
-        R = q * R - two_p * R.deriv()
-    return np.asarray(R.coef)
-
-
-def _logistic(derivative: int, log_z: Floats) -> Floats:
-    tail = np.exp(-np.abs(log_z))
-    inner = 1.0 / (1.0 + tail)
-    if derivative == 0:
-        return np.where(log_z < 0.0, tail * inner, inner)
-    values: Floats = (
-        tail * inner * inner * np.polynomial.polynomial.polyval(-np.tanh(0.5 * log_z), _logistic_polynomial(derivative))
-    )
-    return values

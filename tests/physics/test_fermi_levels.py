@@ -6,6 +6,7 @@ import csv
 import math
 from pathlib import Path
 
+import mpmath
 import numpy as np
 import pytest
 from scipy.optimize import brentq
@@ -16,6 +17,7 @@ from physics.fermi_levels import (
     finite_size_chemical_potential,
     finite_size_number,
 )
+from physics.fermi_series import FineLevels, centre_series, fermi_series, partition_series
 from physics.statistics import fermi, fermi_inverse
 
 TABLE = Path(__file__).parent.parent / "reference" / "fermion_levels.csv"
@@ -199,3 +201,34 @@ def test_more_levels_than_can_be_summed_are_taken_as_fine() -> None:
 def test_only_axes_with_few_levels_have_a_profile() -> None:
     levels = FermiLevels(np.array([1.0, 1.0, 1e-3]), 10.0)
     assert [levels.resolves(axis) for axis in range(3)] == [True, True, False]
+
+
+@pytest.mark.parametrize("log_z", [-3.0, 2.0, 9.0])
+def test_many_fine_clouds_at_once_are_the_sums_over_all_levels(log_z: float) -> None:
+    spacings = np.array([[0.3, 0.45, 0.2], [0.25, 0.5, 0.4], [0.49, 0.49, 0.49]])
+    levels = FineLevels(spacings)
+    each = np.full(3, log_z)
+    expected = [direct(b, log_z) for b in spacings]
+    np.testing.assert_allclose(levels.atoms(each), [atoms for atoms, _, _ in expected], rtol=1e-12)
+    np.testing.assert_allclose(levels.energies(each), [energies for _, energies, _ in expected], rtol=1e-12)
+    np.testing.assert_allclose(levels.central_density(each), [density for _, _, density in expected], rtol=1e-5)
+    for start in (-5.0, 0.0, 12.0):
+        found = levels.log_fugacity(levels.atoms(each), each + start)
+        np.testing.assert_allclose(found, each, atol=1e-12)
+
+
+def test_series_of_the_partition_function() -> None:
+    # Z b = sum of a_k j^(2k-1): at j = 1, b/(2 sinh(b/2)); the density at the centre, sqrt(b/sinh b).
+    b = np.array([0.1, 0.3, 0.5])
+    np.testing.assert_allclose(partition_series(b).sum(axis=-1), 0.5 * b / np.sinh(0.5 * b), rtol=1e-14)
+    np.testing.assert_allclose(centre_series(b).sum(axis=-1), np.sqrt(b / np.sinh(b)), rtol=1e-12)
+
+
+@pytest.mark.parametrize("order", [2.0, 0.0, -1.0, -2.0, -5.0, -0.5, -1.5, -3.5])
+def test_fermi_functions_below_order_one_half(order: float) -> None:
+    # -Li_s(-z), continued; for z < 1 the power series.
+    alone = np.concatenate([[1.0], np.zeros(8)])
+    for log_z in (-4.0, -1.0, -0.3):
+        expected = float(mpmath.re(-mpmath.polylog(order, -mpmath.exp(log_z))))
+        found = float(fermi_series(alone, order, np.asarray(log_z)))
+        assert found == pytest.approx(expected, rel=1e-7 if order % 1 else 1e-12)
