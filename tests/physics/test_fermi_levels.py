@@ -9,6 +9,8 @@ from pathlib import Path
 import mpmath
 import numpy as np
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 from scipy.optimize import brentq
 
 from physics.fermi_levels import (
@@ -232,3 +234,10 @@ def test_fermi_functions_below_order_one_half(order: float) -> None:
         expected = float(mpmath.re(-mpmath.polylog(order, -mpmath.exp(log_z))))
         found = float(fermi_series(alone, order, np.asarray(log_z)))
         assert found == pytest.approx(expected, rel=1e-7 if order % 1 else 1e-12)
+
+
+@given(st.tuples(*[st.floats(-3.0, 2.5)] * 3), st.floats(0.0, 5.0))
+def test_any_number_of_atoms_finds_its_chemical_potential(logs: tuple[float, float, float], log_atoms: float) -> None:
+    spacings, atoms = 10.0 ** np.array(logs), 10.0**log_atoms
+    levels, log_z, _ = solved(spacings, atoms)
+    assert levels.atoms(log_z) == pytest.approx(atoms, rel=1e-9)
