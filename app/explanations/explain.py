@@ -9,7 +9,18 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from app.explanations import classical, collisions, degeneracy, densities, fermi_sea, inputs, losses, scales, sizes
+from app.explanations import (
+    classical,
+    collisions,
+    condensate,
+    degeneracy,
+    densities,
+    fermi_sea,
+    inputs,
+    losses,
+    scales,
+    sizes,
+)
 from app.explanations.explanation import Explanation, Origin, Step
 from app.explanations.sheet import Regime, Sheet
 from app.quantities import QUANTITIES, Need, Row
@@ -43,6 +54,13 @@ EXPLAINED: MappingProxyType[str, Callable[[Sheet], object]] = MappingProxyType(
         "atoms_left_at_target": scales.atoms_left_at_target,
         "condensate_fraction": degeneracy.condensate_fraction,
         "condensate_atoms": degeneracy.condensate_atoms,
+        "critical_temperature_exact_levels": condensate.critical_temperature_exact_levels,
+        "condensate_interaction": condensate.interaction,
+        "condensate_rms_radii": condensate.condensate_rms_radii,
+        "condensate_release_energy": condensate.condensate_release_energy,
+        "healing_length": condensate.healing_length,
+        "collapse_atoms": condensate.collapse_atoms,
+        "dipolar_ratio": condensate.dipolar_ratio,
         "condensate_radii": sizes.condensate_radii,
         "thermal_radii": sizes.thermal_radii,
         "peak_density": densities.peak_density,

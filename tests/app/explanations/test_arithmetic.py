@@ -123,7 +123,7 @@ def fermi_function(s: float) -> Callable[[Any], Any]:
 
 
 def interaction_average(K: Any) -> Any:
-    return (1 - mpmath.exp(1 / K) * mpmath.e1(1 / K) / K) / K
+    return (1 - mpmath.exp(1 / K) * mpmath.e1(1 / K) / K) / K if K else mpmath.mpf(1)
 
 
 ORDERS = (("1_2", 0.5), ("3_2", 1.5), ("5_2", 2.5), ("2", 2), ("3", 3), ("4", 4))
@@ -201,6 +201,11 @@ FERMI_LEVELS = {
     "B": each_level(
         lambda f, b, n: f * math.prod(math.sqrt(2 * math.pi * x) * at_centre(k) for x, k in zip(b, n, strict=True))),
 }  # fmt: skip
+
+
+def gaussian(strength: Any, *levels: Any) -> Any:
+    ratios = [strength / level for level in levels]
+    return mpmath.sqrt(2 * mpmath.pi) * strength * mpmath.sqrt(mpmath.fprod(x + mpmath.sqrt(1 + x * x) for x in ratios))
 
 
 class MeanField:
@@ -281,7 +286,7 @@ def calculated(numbers: str, answer: CloudAnswer) -> float:
         "J": overlap(statistics, 2), "J_3": overlap(statistics, 3), "theta": fitted(statistics),
         "e_2": lost_energy(statistics, 2), "e_3": lost_energy(statistics, 3),
     }  # fmt: skip
-    names = {**SHARED, **FERMI_LEVELS, **integrals, **mean_field, "H_e": verge, "mpf": mpmath.mpf}
+    names = {**SHARED, **FERMI_LEVELS, **integrals, **mean_field, "H_e": verge, "V": gaussian, "mpf": mpmath.mpf}
     with mpmath.workdps(25):
         return float(eval(text, {"__builtins__": {}}, names))
 
@@ -333,7 +338,7 @@ def test_results_have_six_digits_or_are_nothing(answer: CloudAnswer) -> None:
 def test_numbers_come_from_inputs_or_from_steps_before(answer: CloudAnswer) -> None:
     """Every symbol of a line stands among the inputs or was found in a line above."""
     functions = {"F_V", "F_L", "F_K", "F_2", "F_3", "F_C", "F_CC", "F_C2", "e_2", "e_3", "exp", "ln", "π"}
-    functions |= {"H_0", "H_T", "H_V", "H_U", "H_P", "H_N", "H_2", "H_3", "H_e"} | set("fgABEFHJLMQSWcθ")
+    functions |= {"H_0", "H_T", "H_V", "H_U", "H_P", "H_N", "H_2", "H_3", "H_e"} | set("fgABEFHJLMQSVWcθ")
     for explanation in explanations(answer):
         known = {entry.symbol for entry in explanation.inputs} | functions
         for step in explanation.steps:
