@@ -20,6 +20,7 @@ from app.answers.map import (
     map_with_progress,
     usual_limits,
 )
+from app.answers.models import ModelsAnswer, models_answer
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
 from app.answers.rates import RatesAnswer, RateSet, rates_answer
 from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
@@ -37,6 +38,7 @@ __all__ = [
     "MapAnswer",
     "MapLimits",
     "Method",
+    "ModelsAnswer",
     "ProfileAnswer",
     "RateSet",
     "RatesAnswer",
@@ -49,6 +51,7 @@ __all__ = [
     "map_answer",
     "map_points",
     "map_with_progress",
+    "models_answer",
     "profile_answer",
     "rates_answer",
     "round_up",

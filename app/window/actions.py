@@ -144,6 +144,15 @@ ACTIONS: tuple[ActionSpec, ...] = (
         lambda w: w.desk.show_page(4),
         "page",
     ),
+    ActionSpec(
+        "view.models",
+        _V,
+        "M&odels",
+        "Ctrl+6",
+        "The cloud by every model that could describe it",
+        lambda w: w.desk.show_page(5),
+        "page",
+    ),
     ActionSpec("view.readouts", _V, "&Readouts", "Ctrl+R", "Go to the readouts", lambda w: w.desk.show_readouts()),
     ActionSpec(
         "view.why",

@@ -13,6 +13,7 @@ from app.figures.theme import Theme
 from app.pages.collisions import CollisionsPage
 from app.pages.field import FieldPage
 from app.pages.map import MapPage
+from app.pages.models import ModelsPage
 from app.pages.profile import ProfilePage
 from app.pages.slices import SlicesPage
 from app.widgets.caveats import Caveats
@@ -39,8 +40,15 @@ class Desk(QWidget):
         self.verdict = Verdict()
         self.bench = Bench()
         self.map, self.slices, self.profile = MapPage(theme), SlicesPage(theme), ProfilePage(theme)
-        self.field, self.collisions = FieldPage(theme), CollisionsPage(theme)
-        self.pages: tuple[Page, ...] = (self.map, self.slices, self.profile, self.field, self.collisions)
+        self.field, self.collisions, self.models = FieldPage(theme), CollisionsPage(theme), ModelsPage(theme)
+        self.pages: tuple[Page, ...] = (
+            self.map,
+            self.slices,
+            self.profile,
+            self.field,
+            self.collisions,
+            self.models,
+        )
         self.tabs = QTabWidget()
         self.tabs.setDocumentMode(True)
         self.tabs.setAccessibleName("Pages")

@@ -47,7 +47,8 @@ def style_sheet_of(theme: Theme) -> str:
         #banner {{ background: {theme.base}; border: none; border-bottom: 2px solid {theme.warning}; }}
         #bannerSign {{ color: {theme.warning}; font-weight: bold; }}
         #verdictSentence {{ background: transparent; }}
-        #bench, #benchBody, #readouts, #caveats, #detail, #explanation {{ background: {theme.window}; border: none; }}
+        #bench, #benchBody, #readouts, #caveats, #detail, #explanation, #factTable {{
+            background: {theme.window}; border: none; }}
         #formTitle, #paneTitle {{ color: {theme.muted}; font-weight: 600; }}
         #fieldNote, #plotStatus, #detail {{ color: {theme.muted}; }}
         #fieldError {{ color: {theme.error}; }}
@@ -66,6 +67,9 @@ def style_sheet_of(theme: Theme) -> str:
         QTabBar::tab:selected {{ color: {theme.text}; border-bottom-color: {theme.accent}; }}
         QTabBar::tab:focus {{ text-decoration: underline; }}
         QSplitter::handle {{ background: {theme.border}; }}
+        #factTable QHeaderView::section {{ background: {theme.window}; color: {theme.muted}; border: none;
+                                          padding: 2px 16px 2px 3px; }}
+        #factTable::item {{ padding-right: 16px; }}
         QToolTip {{ color: {theme.text}; background: {theme.base}; border: 1px solid {theme.border}; padding: 3px; }}
     """
 

@@ -324,10 +324,12 @@ class MainWindow(QMainWindow):
 
     def copy(self) -> None:
         """Copy what the keyboard is on: a text, readouts, or else the plot."""
+        from app.widgets.fact_table import FactTable
+
         focus = self.focusWidget()
         if focus is self.desk.readouts:
             self.desk.readouts.copy()
-        elif isinstance(focus, QTextEdit):
+        elif isinstance(focus, QTextEdit | FactTable):
             focus.copy()
         elif focus is not None and any(focus is plot.canvas for plot in self.desk.page.plots):
             self.desk.page.copy_picture()

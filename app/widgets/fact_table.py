@@ -1,0 +1,107 @@
+"""A small table of texts to read, as high as its rows, whose rows can be chosen and copied."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from PySide6.QtCore import QSize, Qt, Signal
+from PySide6.QtGui import QFont, QGuiApplication
+from PySide6.QtWidgets import (
+    QAbstractItemView,
+    QFrame,
+    QHeaderView,
+    QSizePolicy,
+    QTableWidget,
+    QTableWidgetItem,
+    QWidget,
+)
+
+
+@dataclass(frozen=True)
+class FactRow:
+    """A row: its name, its cells, what its tip says, and whether it is the one in use. A row whose cells but the first
+    are empty has one text across all of them."""
+
+    name: str
+    cells: tuple[str, ...]
+    tip: str = ""
+    in_use: bool = False
+
+
+class FactTable(QTableWidget):
+    """chosen(str) is sent with the name of a row that is double-clicked, or entered."""
+
+    chosen = Signal(str)
+
+    def __init__(self, name: str, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setObjectName("factTable")
+        self.setAccessibleName(name)
+        self.setFrameShape(QFrame.Shape.NoFrame)
+        self.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
+        self.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
+        self.setSelectionMode(QAbstractItemView.SelectionMode.ExtendedSelection)
+        self.setShowGrid(False)
+        self.setTabKeyNavigation(False)
+        self.setVerticalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
+        self.verticalHeader().hide()
+        header = self.horizontalHeader()
+        header.setDefaultAlignment(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter)
+        header.setHighlightSections(False)
+        header.setSectionsClickable(False)
+        header.setStretchLastSection(True)
+        self._rows: tuple[FactRow, ...] = ()
+        self.cellActivated.connect(lambda row, _column: self.chosen.emit(self._rows[row].name))
+
+    def show_rows(self, headings: Sequence[str], rows: Sequence[FactRow]) -> None:
+        """Show these rows; texts that stay are left alone."""
+        if tuple(rows) == self._rows and self.columnCount() == len(headings):
+            return
+        self._rows = tuple(rows)
+        self.setColumnCount(len(headings))
+        self.setHorizontalHeaderLabels(list(headings))
+        self.setRowCount(len(rows))
+        line = self.fontMetrics().height() + 5
+        self.clearSpans()
+        for place, row in enumerate(rows):
+            self.setRowHeight(place, line)
+            for column, text in enumerate((f"● {row.name}" if row.in_use else f"    {row.name}", *row.cells)):
+                self._put(place, column, text, row)
+            if len(row.cells) > 1 and not any(row.cells[1:]):
+                self.setSpan(place, 1, 1, len(row.cells))
+        self.horizontalHeader().resizeSections(QHeaderView.ResizeMode.ResizeToContents)
+        self.updateGeometry()
+
+    def _put(self, place: int, column: int, text: str, row: FactRow) -> None:
+        item = self.item(place, column) or QTableWidgetItem()
+        font = QFont(self.font())
+        font.setBold(row.in_use)
+        item.setFont(font)
+        item.setText(text)
+        item.setToolTip(row.tip)
+        if column == 0:
+            said = f"{row.name}, in use" if row.in_use else row.name
+            item.setData(Qt.ItemDataRole.AccessibleTextRole, said)
+        self.setItem(place, column, item)
+
+    def row_texts(self) -> tuple[tuple[str, ...], ...]:
+        """What is on show, row by row."""
+        return tuple((row.name, *row.cells) for row in self._rows)
+
+    def copy(self) -> None:
+        """The selected rows, or all if none is, with headings, as tab-separated text."""
+        chosen = sorted({index.row() for index in self.selectionModel().selectedRows()}) or range(len(self._rows))
+        texts = (self.horizontalHeaderItem(column) for column in range(self.columnCount()))
+        lines = ["\t".join(item.text() if item is not None else "" for item in texts)]
+        lines += ["\t".join((self._rows[place].name, *self._rows[place].cells)) for place in chosen]
+        QGuiApplication.clipboard().setText("\n".join(lines))
+
+    def sizeHint(self) -> QSize:
+        rows = sum(self.rowHeight(place) for place in range(self.rowCount()))
+        bar = self.horizontalScrollBar().sizeHint().height() if self.horizontalScrollBar().isVisible() else 0
+        return QSize(300, self.horizontalHeader().sizeHint().height() + rows + bar + 2)
+
+    def minimumSizeHint(self) -> QSize:
+        return QSize(200, self.sizeHint().height())
