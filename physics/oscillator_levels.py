@@ -29,7 +29,7 @@ _ORDER = 20  # nodes a block: relative error 5.8^-40
 COARSE_ORDER = 8  # where pairs of them are summed: 5.8^-16
 _RANGE = 45.0  # e^-45 is nothing
 _STEPS = 200
-_NODES = 6.0  # of an integral over space, for each unit of t
+_NODES = 4.0  # of an integral over space, for each unit of t
 
 
 @cache
@@ -135,7 +135,7 @@ class OscillatorLevels:
 
         Densities in units of 1/(pi^(3/2) aho^3), the integral in the inverse of that: one atom gives 1. Nodes are even
         in t = arsinh(x/a), in which the narrow ground level and the wide cloud of excited atoms are both smooth and
-        end as e^(-e^2t); integrals of densities squared and cubed have relative errors below 1e-8.
+        end as e^(-e^2t); integrals of densities squared and cubed have relative errors below 1e-6.
         """
         tables, grounds, weights = [], [], []
         for spacing in self.spacings:
