@@ -25,7 +25,7 @@ from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, r
 from app.answers.rates import RatesAnswer, RateSet, rates_answer
 from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
 from app.answers.tuning import TuningAnswer, tuning_answer, usual_fields
-from app.answers.uncertainty import SAMPLES, Method, Spread
+from app.answers.uncertainty import SAMPLES, Joint, Method, Spread
 
 __all__ = [
     "FERMI_THRESHOLD",
@@ -35,6 +35,7 @@ __all__ = [
     "SLICE_POINTS",
     "Against",
     "CloudAnswer",
+    "Joint",
     "MapAnswer",
     "MapLimits",
     "Method",

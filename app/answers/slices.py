@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from app.answers.cloud import cloud_answer
 from app.answers.losses import Solution
 from app.answers.part import part
+from app.answers.uncertainty import Joint
 from app.quantities import QUANTITIES
 from physics.cloud import Model, equilibrium
 
@@ -35,7 +36,9 @@ class Against(Enum):
 class SlicesAnswer:
     """Quantities along temperature at the plan's atom number, and along atom number at its temperature.
 
-    `values_temperature` and `values_atoms` hold the quantities asked for, by NAME, on the two grids.
+    `values_temperature` and `values_atoms` hold the quantities asked for, by NAME, on the two grids;
+    `joints_temperature` and `joints_atoms` how each scatters together with what runs along the grid, None where nothing
+    is uncertain.
     """
 
     atoms: float
@@ -46,6 +49,8 @@ class SlicesAnswer:
     values_temperature: tuple[Array, ...]
     values_atoms: tuple[Array, ...]
     now: tuple[float, ...]
+    joints_temperature: tuple[Joint | None, ...]
+    joints_atoms: tuple[Joint | None, ...]
     threshold_temperature: float
     threshold_atoms: float
 
@@ -75,6 +80,8 @@ def slices_answer(plan: Plan, names: tuple[str, ...]) -> SlicesAnswer:
         values_temperature=along(atoms, temperatures),
         values_atoms=along(numbers, temperature),
         now=tuple(float(_plain(central.solution, name, 1)[0]) for name in names),
+        joints_temperature=tuple(central.uncertainty.joint(name, "temperature") for name in names),
+        joints_atoms=tuple(central.uncertainty.joint(name, "atoms") for name in names),
         threshold_temperature=temperature * float(central.equilibrium.temperature_to_threshold),
         threshold_atoms=atoms * float(central.equilibrium.atoms_to_threshold),
     )

@@ -6,6 +6,7 @@ of first order, from one answer above and one below for each uncertain input.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from enum import Enum
@@ -50,6 +51,22 @@ class Spread:
     median: float | Array
     high: float | Array
     method: Method
+
+
+@dataclass(frozen=True, kw_only=True)
+class Joint:
+    """How an input and a quantity scatter together.
+
+    input_deviation : standard deviation of the input's logarithm
+    deviation : of the quantity, SI
+    log_deviation : of the quantity's logarithm; NaN unless it is positive
+    correlation : of the two, -1 to 1
+    """
+
+    input_deviation: float
+    deviation: float
+    log_deviation: float
+    correlation: float
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -115,6 +132,46 @@ class Uncertainty:
         if not np.all(np.isfinite(reach) & np.isfinite(centre)):
             return None
         return _spread(centre - reach, centre, centre + reach, Method.FIRST_ORDER)
+
+    def joint(self, name: str, against: str) -> Joint | None:
+        """How a quantity, or its mean over the axes, scatters together with the input `against`, "atoms" or
+        "temperature"; None where nothing is uncertain, or where some draw has no value."""
+        if not self.any:
+            return None
+        x, y = self._scatter(name, against)
+        if not np.all(np.isfinite(y)):
+            return None
+        positive = bool(np.all(y > 0.0))
+        scale = np.log(y) if positive else y
+        deviations = float(np.std(x)), float(np.std(scale))
+        # Without a scatter of their own, rounding would be all that is correlated.
+        known = min(deviations) > 1e-12 * max(1.0, float(np.max(np.abs(scale))))
+        correlation = float(np.mean((x - x.mean()) * (scale - scale.mean())) / math.prod(deviations)) if known else 0.0
+        return Joint(
+            input_deviation=deviations[0],
+            deviation=float(np.std(y)),
+            log_deviation=deviations[1] if positive else math.nan,
+            correlation=min(max(correlation, -1.0), 1.0),
+        )
+
+    def _scatter(self, name: str, against: str) -> tuple[Array, Array]:
+        """Logarithms of the input, and values of the quantity: at the draws, or for derivatives of first order at
+        points that have the same moments, one deviation to both sides along each uncertain input."""
+
+        def plain(solution: Solution) -> Array:
+            values = np.asarray(solution.value(name), dtype=float)
+            return values.mean(axis=-1) if QUANTITIES[name].axes else values
+
+        if self.method is Method.DRAWS and name not in ONE_BY_ONE:
+            x = np.log(np.broadcast_to(self._draws[against], (SAMPLES,)))
+            return x, np.broadcast_to(plain(self._drawn), (SAMPLES,))
+        reach, start = math.sqrt(len(self._uncertain)), math.log(float(values_of(self.plan)[against]))
+        centre, shifts, values = float(plain(self.central)), [], []
+        for pair, (item, quantity) in zip(self._steps, self._uncertain.items(), strict=True):
+            for solution, moved in zip(pair, _one_deviation(quantity), strict=True):
+                shifts.append(math.log(moved) - start if item == against else 0.0)
+                values.append(float(plain(solution)) - centre)
+        return start + reach * np.array(shifts), centre + reach * np.array(values)
 
     @cached_property
     def _steps(self) -> tuple[tuple[Solution, Solution], ...]:

@@ -184,6 +184,7 @@ def _cloud_mark(cloud: CloudAnswer) -> Mark:
     atoms, temperature = cloud.plan.cloud.atoms, cloud.plan.cloud.temperature
     outline = None
     if atoms.sigma or temperature.sigma:
+        # Two independent measurements, so that the axes of the ellipse are those of the map.
         angle = np.linspace(0.0, 2.0 * np.pi, 73)
         outline = Curve(
             name="",

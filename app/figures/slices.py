@@ -6,7 +6,7 @@ import math
 
 import numpy as np
 
-from app.engine import Against, SlicesAnswer
+from app.engine import Against, Joint, SlicesAnswer
 from app.figures.picture import Array, Axis, Curve, Mark, Picture, Role
 from app.language import translate as _
 from app.quantities import QUANTITIES, Row, display_factor
@@ -44,7 +44,9 @@ def slice_picture(answer: SlicesAnswer, name: str, against: Against, unit: str |
         )
     marks: tuple[Mark, ...] = ()
     if math.isfinite(now) and axis.low <= now <= axis.high:
-        marks = (Mark(name=_("cloud"), role=Role.CLOUD, x=at, y=now),)
+        joint = (answer.joints_temperature if along_t else answer.joints_atoms)[place]
+        outline = None if joint is None else _ellipse(at, now, joint, factor, axis.log)
+        marks = (Mark(name=_("cloud"), role=Role.CLOUD, x=at, y=now, outline=outline),)
     fixed = (
         _("at N = {N}").format(N=number(answer.atoms))
         if along_t
@@ -62,6 +64,18 @@ def slice_picture(answer: SlicesAnswer, name: str, against: Against, unit: str |
         # A note is redrawn with the data, a title with the frame: what moves with the cloud stands in the note.
         note=fixed if np.any(np.isfinite(y)) else _("no value here"),
     )
+
+
+def _ellipse(at: float, now: float, joint: Joint, factor: float, log: bool) -> Curve | None:
+    """One standard deviation around the cloud. The quantity follows from the input, so that the two are correlated and
+    the ellipse leans; on the map, N and T are measured independently and it does not."""
+    angle = np.linspace(0.0, 2.0 * np.pi, 73)
+    along = np.cos(angle)
+    across = joint.correlation * along + math.sqrt(1.0 - joint.correlation**2) * np.sin(angle)
+    if log and not math.isfinite(joint.log_deviation):
+        return None
+    y = now * np.exp(joint.log_deviation * across) if log else now + joint.deviation / factor * across
+    return Curve(name="", role=Role.UNCERTAINTY, x=at * np.exp(joint.input_deviation * along), y=y)
 
 
 def _value_axis(row: Row, unit: str, values: Array, now: float) -> Axis:

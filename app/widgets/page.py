@@ -179,6 +179,8 @@ class Page(QWidget):
 
     def copy_picture(self) -> None:
         """The plots on the clipboard, as an image and as SVG; on white, which is what papers want."""
+        if not self._has_plots():
+            return
         data = QMimeData()
         png, svg = self._drawn("png"), self._drawn("svg")
         data.setImageData(QImage.fromData(png))
@@ -192,7 +194,16 @@ class Page(QWidget):
         save_pictures(self.pictures(), buffer, form, theme=LIGHT)
         return buffer.getvalue()
 
+    def _has_plots(self) -> bool:
+        """Whether anything is plotted; if not, the user is told."""
+        if self.pictures():
+            return True
+        self.told.emit(f"Nothing is plotted on the page {self.title} that could be copied or saved.")
+        return False
+
     def save_picture(self) -> None:
+        if not self._has_plots():
+            return
         chosen, _ = QFileDialog.getSaveFileName(
             self, "Save the plot", str(self.folder / f"{self.title.lower()}.png"),
             "Pictures (*.png *.svg *.pdf);;PNG (*.png);;SVG (*.svg);;PDF (*.pdf)",
@@ -206,10 +217,12 @@ class Page(QWidget):
         form = next((known for known in get_args(PictureFormat) if known == ending), None)
         if form is None:
             self.told.emit(f"{path.name} must end in .png, .svg or .pdf.")
-        else:
+        elif self._has_plots():
             self._write(path, self._drawn(form))
 
     def save_data(self) -> None:
+        if not self._has_plots():
+            return
         chosen, _ = QFileDialog.getSaveFileName(
             self, "Save the numbers behind the plot", str(self.folder / f"{self.title.lower()}.csv"), "CSV (*.csv)"
         )

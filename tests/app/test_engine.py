@@ -13,7 +13,9 @@ from app.engine import (
     MapLimits,
     Method,
     cloud_answer,
+    draft_map,
     map_answer,
+    map_with_progress,
     profile_answer,
     round_up,
     slices_answer,
@@ -269,3 +271,67 @@ def test_limits_of_condensates(texts: dict[str, str], name: str, value: float) -
         DEFAULT_PLAN, {**texts, "trap.frequencies": "100 Hz, 100 Hz, 100 Hz", "cloud.temperature": "20 nK"}
     )
     assert float(cloud_answer(plan).value(name)) == pytest.approx(value, rel=5e-3)
+
+
+# --- maps of slow models, and what scatters together ---
+
+
+@pytest.mark.parametrize("name", ["exact levels", "Hartree-Fock"])
+def test_the_map_of_a_slow_model_says_what_the_cloud_says_there(name: str) -> None:
+    plan = plan_with(DEFAULT_PLAN, {"cloud.atoms": "2e5", "cloud.temperature": "150 nK", "cloud.model": name})
+    limits = MapLimits(atoms_low=2e5, atoms_high=4e5, temperature_low=1.5e-7, temperature_high=3e-7)
+    shares: list[float] = []
+
+    def tick(share: float) -> bool:
+        shares.append(share)
+        return True
+
+    answer = map_with_progress(plan, limits, tick)
+    assert answer is not None
+    solved = cloud_answer(plan).equilibrium
+    assert answer.complete
+    assert answer.peak_phase_space_density[0, 0] == pytest.approx(float(solved.peak_phase_space_density), rel=1e-9)
+    assert answer.condensate_fraction[0, 0] == pytest.approx(float(solved.condensate_fraction), rel=1e-6)
+    assert shares == sorted(shares)
+    assert shares[-1] == 1.0
+    assert map_with_progress(plan, limits, lambda _share: False) is None
+    draft = draft_map(plan, limits)
+    assert not draft.complete
+    # The lines of the draft are those of the map, so that nothing around it moves when it arrives.
+    np.testing.assert_allclose(draft.threshold_of_model[[0, -1]], answer.threshold_of_model[[0, -1]], rtol=1e-9)
+
+
+def test_an_input_and_what_follows_from_it_scatter_together() -> None:
+    # D ~ N T^-3 (f1 f2 f3) of a classical cloud: ln D scatters by the sum in quadrature, and by its share with N.
+    plan = plan_with(
+        DEFAULT_PLAN,
+        {
+            "cloud.atoms": "1.00(5)e5",
+            "cloud.temperature": "2.00(4) µK",
+            "trap.frequencies": "120 Hz, 120 Hz, 20.0(4) Hz",
+        },
+    )
+    atoms, temperature, trap = 0.05, 3 * 0.02, 0.02
+    whole = np.sqrt(atoms**2 + temperature**2 + trap**2)
+    for model in ("ideal", "exact levels"):
+        uncertainty = cloud_answer(plan_with(plan, {"cloud.model": model})).uncertainty
+        along_n = uncertainty.joint("classical_phase_space_density", "atoms")
+        along_t = uncertainty.joint("classical_phase_space_density", "temperature")
+        assert along_n is not None
+        assert along_t is not None
+        assert along_n.input_deviation == pytest.approx(atoms, rel=0.02)
+        assert along_n.log_deviation == pytest.approx(whole, rel=0.02)
+        assert along_n.correlation == pytest.approx(atoms / whole, abs=0.03)
+        assert along_t.correlation == pytest.approx(-temperature / whole, abs=0.03)
+
+
+def test_what_is_certain_scatters_with_nothing() -> None:
+    certain = plan_with(
+        DEFAULT_PLAN, {"cloud.atoms": "1e5", "cloud.temperature": "200 nK", "trap.frequencies": "120 Hz, 120 Hz, 20 Hz"}
+    )
+    assert cloud_answer(certain).uncertainty.joint("peak_density", "atoms") is None
+    warm = plan_with(certain, {"cloud.temperature": "200(10) nK"})
+    joint = cloud_answer(warm).uncertainty.joint("critical_temperature", "temperature")
+    assert joint is not None
+    assert joint.correlation == 0.0
+    assert joint.log_deviation < 1e-12

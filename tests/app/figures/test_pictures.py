@@ -145,6 +145,21 @@ def test_axes_hold_still_under_small_changes_of_the_cloud() -> None:
     assert [p.y for p in pictures[:2]] == [p.y for p in pictures[2:]]
 
 
+def test_the_ellipse_of_a_slice_leans_along_its_curve() -> None:
+    plan = plan_with(DEFAULT_PLAN, {"cloud.atoms": "1.0(2)e5", "cloud.temperature": "300 nK"})
+    answer = slices_answer(plan, ("reduced_temperature",))
+    against_n = slice_picture(answer, "reduced_temperature", Against.ATOMS).marks[0]
+    assert against_n.outline is not None
+    x, y = np.log(against_n.outline.x), np.log(against_n.outline.y)
+    # T/Tc ~ N^(-1/3), and only N is uncertain here: the ellipse is the piece of that line within one deviation.
+    slope = np.polyfit(x, y, 1)[0]
+    assert slope == pytest.approx(-1 / 3, rel=1e-3)
+    assert x.max() - np.log(1e5) == pytest.approx(0.198, abs=0.003)  # of ln N, sqrt(ln(1 + 0.2^2))
+    against_t = slice_picture(answer, "reduced_temperature", Against.TEMPERATURE).marks[0]
+    assert against_t.outline is not None
+    assert np.ptp(against_t.outline.x) < 1e-20
+
+
 # --- profile ---
 
 
