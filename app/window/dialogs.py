@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from html import escape
-from importlib.metadata import PackageNotFoundError, version
 
 from PySide6.QtCore import QSize, Qt, qVersion
 from PySide6.QtGui import QKeySequence
 from PySide6.QtWidgets import QDialog, QDialogButtonBox, QLabel, QTextBrowser, QVBoxLayout, QWidget
 
+from app import __version__
 from app.quantities import Group, rows_in
 from app.window.actions import ACTIONS, MenuName, key_sequences
 
@@ -16,13 +16,6 @@ NOTICE = (
     "Results are planning estimates. The lab's own measurements and licensed practice decide; the program controls no "
     "hardware."
 )
-
-
-def program_version() -> str:
-    try:
-        return version("coldward")
-    except PackageNotFoundError:
-        return "from source"
 
 
 class TextDialog(QDialog):
@@ -50,7 +43,7 @@ class AboutDialog(QDialog):
         super().__init__(parent)
         self.setWindowTitle("About Coldward")
         text = QLabel(
-            f"<h2>Coldward {escape(program_version())}</h2>"
+            f"<h2>Coldward {__version__}</h2>"
             "<p>Plans the cooling of trapped atoms to a Bose-Einstein condensate or a degenerate Fermi gas.</p>"
             f"<p>{escape(NOTICE)}</p>"
             "<p>Coldward is free software under the BSD-3-Clause licence. Its window is made with Qt for Python "

@@ -9,20 +9,21 @@ from __future__ import annotations
 import contextlib
 import os
 import platform
+import secrets
 import sys
 import traceback
 from collections.abc import Callable
-from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 from types import TracebackType
 
 from PySide6.QtCore import QLockFile, QObject, QTimer, qVersion
 
+from app import __version__
 from app.files import write_atomically
 from app.plan import write_plan
 from app.window.undo import Document
 
-QUIET_TIME_MS = 4000  # unsaved changes are copied this long after the last edit
+COPY_AFTER_MS = 4000  # an unsaved change is in the copy at most this long after it was made
 
 
 class Recovery(QObject):
@@ -34,17 +35,22 @@ class Recovery(QObject):
         self._folder = folder / "recovery"
         with contextlib.suppress(OSError):
             self._folder.mkdir(parents=True, exist_ok=True)
-        stem = f"session-{os.getpid()}"
+        # Not the process number alone: a later session can have that of one that was killed, and its copy.
+        stem = f"session-{os.getpid()}-{secrets.token_hex(4)}"
         self.copy_path = self._folder / f"{stem}.toml"
         self._lock = QLockFile(str(self._folder / f"{stem}.lock"))
         self._lock.setStaleLockTime(0)  # stale only when its process is gone
         self._lock.tryLock(0)
         self._timer = QTimer(self)
         self._timer.setSingleShot(True)
-        self._timer.setInterval(QUIET_TIME_MS)
+        self._timer.setInterval(COPY_AFTER_MS)
         self._timer.timeout.connect(self._copy_if_unsaved)
-        document.plan_changed.connect(lambda _plan: self._timer.start())
+        document.plan_changed.connect(self._plan_changed)
         document.clean_changed.connect(self._clean_changed)
+
+    def _plan_changed(self) -> None:
+        if not self._timer.isActive():  # not put off by further edits: whoever drags for minutes keeps a copy too
+            self._timer.start()
 
     def _copy_if_unsaved(self) -> None:
         if not self._document.clean:
@@ -116,9 +122,5 @@ def summary(error: BaseException) -> str:
 
 def details(error: BaseException) -> str:
     """All that a report of the error needs: versions and the trace."""
-    try:
-        own = version("coldward")
-    except PackageNotFoundError:
-        own = "unknown version"
-    about = f"Coldward {own}, Python {platform.python_version()}, Qt {qVersion()}, {platform.platform()}"
+    about = f"Coldward {__version__}, Python {platform.python_version()}, Qt {qVersion()}, {platform.platform()}"
     return about + "\n" + "".join(traceback.format_exception(error))

@@ -67,6 +67,23 @@ def test_unsaved_changes_are_copied_aside_after_a_rest_and_dropped_once_saved(wi
     assert not window.recovery.copy_path.exists()
 
 
+def test_further_edits_do_not_put_the_copy_off(window: MainWindow, qtbot: QtBot) -> None:
+    window.recovery._timer.setInterval(100)
+    for number in range(100):
+        window.document.edit(replace(CHANGED, title=str(number)), "title", "drag")
+        qtbot.wait(10)
+        if window.recovery.copy_path.exists():
+            break
+    assert 0 < number < 60
+    assert read_plan(window.recovery.copy_path).title != DEFAULT_PLAN.title
+
+
+def test_two_sessions_of_one_process_number_keep_two_copies(make_window) -> None:
+    # The system gives a number again once its process is gone.
+    first, second = make_window(), make_window()
+    assert first.recovery.copy_path != second.recovery.copy_path
+
+
 def leave_behind(folder: Path, content: str) -> Path:
     """What a session that was killed leaves: a copy whose lock nobody holds."""
     path = folder / "recovery" / "session-999999.toml"
