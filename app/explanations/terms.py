@@ -272,6 +272,7 @@ def ln(inner: Term) -> Term:
 RESULT_DIGITS = 6
 _OPERAND_DIGITS = (7, 8, 9, 10, 12, 14)
 _ALL_DIGITS = 17
+_NUDGE, _ROUNDING = 1e-9, 1e-14
 
 
 def exact(leaf: Leaf) -> float:
@@ -317,15 +318,37 @@ class Worked:
 
 
 def worked(formula: Term, value: float) -> Worked:
-    """The formula with just as many digits as reproduce `value` to six; with fewer digits of the result where
-    differences of nearly equal numbers leave no six."""
+    """The formula with just as many digits as reproduce `value` to six.
+
+    Where differences of nearly equal numbers leave no six digits, the result has fewer, or is 0.
+    """
     for digits in (*_OPERAND_DIGITS, _ALL_DIGITS):
         if _same(formula.value(as_written(digits)), value, RESULT_DIGITS):
             return Worked(formula.written(Script(digits)).text, result_text(value))
-    for kept in range(RESULT_DIGITS - 1, 1, -1):
-        if _same(formula.value(exact), value, kept):
-            return Worked(formula.written(Script(_ALL_DIGITS)).text, result_text(value, kept))
+    found = formula.value(exact)
+    if abs(found - value) <= _rounding(formula):
+        numbers = formula.written(Script(_ALL_DIGITS)).text
+        fewer = (kept for kept in range(RESULT_DIGITS - 1, 0, -1) if _same(found, value, kept))
+        kept = next(fewer, 0)
+        return Worked(numbers, result_text(value, kept) if kept else result_text(0.0))
     return Worked(formula.written(Script(_OPERAND_DIGITS[0])).text, result_text(value), agrees=False)
+
+
+def _rounding(formula: Term) -> float:
+    """How far the rounding of the numbers that go in, and of the parts of a difference, may move what comes out."""
+    leaves: dict[Leaf, None] = {}
+
+    def recording(leaf: Leaf) -> float:
+        leaves[leaf] = None
+        return leaf.amount
+
+    def moved(by: Leaf) -> float:
+        return formula.value(lambda leaf: leaf.amount * (1.0 + _NUDGE) if leaf == by else leaf.amount)
+
+    value = formula.value(recording)
+    numbers = sum(abs(moved(leaf) - value) for leaf in leaves) * (_ROUNDING / _NUDGE)
+    parts = _ROUNDING * abs(formula.right.value(exact)) if isinstance(formula, Sum) else 0.0
+    return numbers + parts
 
 
 def balanced(left: Term, right: Leaf) -> Worked:

@@ -11,14 +11,66 @@ from typing import Any
 
 import mpmath
 import numpy as np
+import pytest
 from scipy.integrate import quad
 from scipy.optimize import brentq, minimize_scalar
 from scipy.special import gammaln
 
 from app.engine import CloudAnswer
 from app.explanations import Explanation, StepKind, explain
+from app.explanations.terms import SYMBOLS, Leaf, Script, Term, exact, root, worked
 from app.quantities import QUANTITIES
 from physics.statistics import bose, fermi
+
+
+def test_what_is_left_of_equal_numbers_is_nothing() -> None:
+    third, other = Leaf("a", 1.0 / 3.0), Leaf("b", 1.0 / 3.0 * (1.0 + 4e-16))
+    line = worked(third - other, other.amount - third.amount)
+    assert (line.result, line.agrees) == ("0", True)
+
+
+@pytest.mark.parametrize("value", [6.001, 6.0001, -6.0, 0.0])
+def test_arithmetic_that_does_not_give_the_result_is_told(value: float) -> None:
+    line = worked(Leaf("a", 2.0) * Leaf("b", 3.0), value)
+    assert not line.agrees
+    assert line.numbers == "2 × 3"
+
+
+def test_a_difference_has_the_digits_that_it_deserves() -> None:
+    near, one = Leaf("a", 1.0 + 1.234567e-12), Leaf("b", 1.0)
+    line = worked(near - one, 1.23456e-12)
+    assert line.agrees
+    assert float(line.result) == pytest.approx(1.2345e-12, rel=1e-3)
+    assert len(line.result) < len("1.23456e-12")
+
+
+def test_as_many_digits_are_put_in_as_the_result_needs() -> None:
+    near, one = Leaf("a", 1.000123456789), Leaf("b", 1.0)
+    line = worked(near - one, near.amount - one.amount)
+    assert line.result == "1.23457e-4"
+    assert line.numbers == "1.000123457 - 1"
+
+
+@pytest.mark.parametrize(
+    ("formula", "symbols", "numbers"),
+    [
+        (Leaf("a", 2.0) / (Leaf("b", 3.0) * Leaf("c", 4.0)), "a/(b c)", "2/(3 × 4)"),
+        ((Leaf("a", 2.0) / Leaf("b", 3.0)) * Leaf("c", 4.0), "(a/b) c", "2/3 × 4"),
+        (Leaf("c", 4.0) * (Leaf("a", 2.0) / Leaf("b", 3.0)), "c (a/b)", "4 × (2/3)"),
+        (Leaf("ln z", -0.5) * Leaf("k", 2.0), "(ln z) k", "(-0.5) × 2"),
+        (Leaf("a", 2e-9) ** 2, "a²", "(2e-9)^2"),
+        (1 - (Leaf("a", 2.0) - Leaf("b", 3.0)), "1 − (a − b)", "1 - (2 - 3)"),
+        (1 - Leaf("a", -2.0), "1 − a", "1 - (-2)"),
+        (-Leaf("a", -2.0), "−a", "-(-2)"),
+        (root(2 * Leaf("a", 2.0)), "(2 a)^(1/2)", "(2 × 2)^(1/2)"),
+        ((Leaf("a", 2.0) ** 2) ** 3, "(a²)³", "(2^2)^3"),
+    ],
+)
+def test_formulas_are_written_without_doubt(formula: Term, symbols: str, numbers: str) -> None:
+    assert formula.written(SYMBOLS).text == symbols
+    assert formula.written(Script(7)).text == numbers
+    value = float(eval(numbers.replace("×", "*").replace("^", "**")))
+    assert formula.value(exact) == pytest.approx(value, rel=1e-14)
 
 
 def explanations(answer: CloudAnswer) -> list[Explanation]:
