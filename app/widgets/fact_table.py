@@ -53,38 +53,52 @@ class FactTable(QTableWidget):
         header.setSectionsClickable(False)
         header.setStretchLastSection(True)
         self._rows: tuple[FactRow, ...] = ()
+        self._headings: tuple[str, ...] = ()
         self.cellActivated.connect(lambda row, _column: self.chosen.emit(self._rows[row].name))
 
     def show_rows(self, headings: Sequence[str], rows: Sequence[FactRow]) -> None:
         """Show these rows; texts that stay are left alone."""
-        if tuple(rows) == self._rows and self.columnCount() == len(headings):
-            return
-        self._rows = tuple(rows)
-        self.setColumnCount(len(headings))
-        self.setHorizontalHeaderLabels(list(headings))
-        self.setRowCount(len(rows))
-        line = self.fontMetrics().height() + 5
-        self.clearSpans()
+        before, self._rows = self._rows, tuple(rows)
+        if tuple(headings) != self._headings or len(before) != len(rows):
+            self._headings, before = tuple(headings), ()
+            self._lay_out()
         for place, row in enumerate(rows):
-            self.setRowHeight(place, line)
-            for column, text in enumerate((f"● {row.name}" if row.in_use else f"    {row.name}", *row.cells)):
-                self._put(place, column, text, row)
-            if len(row.cells) > 1 and not any(row.cells[1:]):
-                self.setSpan(place, 1, 1, len(row.cells))
+            if place >= len(before) or before[place] != row:
+                self._put_row(place, row)
+        # Columns follow longer texts at once and never shrink, so that a value that moves does not shake them.
+        for column in range(1, len(headings) - 1):
+            if self.sizeHintForColumn(column) > self.columnWidth(column):
+                self.setColumnWidth(column, self.sizeHintForColumn(column))
+
+    def _lay_out(self) -> None:
+        """Rows and columns anew, with empty cells."""
+        self.setColumnCount(len(self._headings))
+        self.setRowCount(len(self._rows))
+        self.setHorizontalHeaderLabels(list(self._headings))
+        self.clearSpans()
+        for place, row in enumerate(self._rows):
+            self.setRowHeight(place, self.fontMetrics().height() + 5)
+            for column in range(len(self._headings)):
+                self.setItem(place, column, QTableWidgetItem())
+            self._put_row(place, row)
         self.horizontalHeader().resizeSections(QHeaderView.ResizeMode.ResizeToContents)
         self.updateGeometry()
 
-    def _put(self, place: int, column: int, text: str, row: FactRow) -> None:
-        item = self.item(place, column) or QTableWidgetItem()
+    def _put_row(self, place: int, row: FactRow) -> None:
         font = QFont(self.font())
         font.setBold(row.in_use)
-        item.setFont(font)
-        item.setText(text)
-        item.setToolTip(row.tip)
-        if column == 0:
-            said = f"{row.name}, in use" if row.in_use else row.name
-            item.setData(Qt.ItemDataRole.AccessibleTextRole, said)
-        self.setItem(place, column, item)
+        for column, text in enumerate((f"● {row.name}" if row.in_use else f"    {row.name}", *row.cells)):
+            item = self.item(place, column)
+            assert item is not None
+            item.setFont(font)
+            item.setText(text)
+            item.setToolTip(row.tip)
+            if column == 0:
+                said = f"{row.name}, in use" if row.in_use else row.name
+                item.setData(Qt.ItemDataRole.AccessibleTextRole, said)
+        across = len(row.cells) if len(row.cells) > 1 and not any(row.cells[1:]) else 1
+        if self.columnSpan(place, 1) != across:
+            self.setSpan(place, 1, 1, across)
 
     def row_texts(self) -> tuple[tuple[str, ...], ...]:
         """What is on show, row by row."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import cached_property
 
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QLabel, QStackedWidget, QVBoxLayout, QWidget
@@ -15,15 +16,14 @@ from app.widgets.plot import Source
 
 
 class SinglePlotPage(Page):
-    """Attributes: plot; sentence and detail, the texts over it; options, a column for choices under these; empty, what
-    stands in the place of the plot."""
+    """Attributes: plot; sentence and detail, the texts over it; options, a column for choices under these."""
 
     plot_name = ""
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
         self.plot = self.add_plot(self.plot_name)
-        self.sentence, self.detail, self.empty = QLabel(), QLabel(), EmptyState()
+        self.sentence, self.detail = QLabel(), QLabel()
         self.detail.setObjectName("plotStatus")
         for label in (self.sentence, self.detail):
             label.setWordWrap(True)
@@ -44,13 +44,19 @@ class SinglePlotPage(Page):
         column.addWidget(self.bar)
         self.stack = QStackedWidget()
         self.stack.addWidget(self._plotted)
-        self.stack.addWidget(self.empty)
         self.column.addWidget(self.stack)
+
+    @cached_property
+    def empty(self) -> EmptyState:
+        """Built when first needed: most pages have something to plot."""
+        empty = EmptyState()
+        self.stack.addWidget(empty)
+        return empty
 
     @property
     def is_empty(self) -> bool:
         """Whether there is nothing to plot."""
-        return self.stack.currentWidget() is self.empty
+        return self.stack.currentWidget() is not self._plotted
 
     def show_plot(self, source: Source, sentence: str, detail: str) -> None:
         """Show what `source` gives, and the texts over it."""
