@@ -42,13 +42,17 @@ def tip_of(row: Row, reading: Reading, interval: str) -> str:
     return "\n".join(lines)
 
 
+_OTHER_GASES = frozenset({Need.BOSONS, Need.FERMIONS, Need.ATTRACTIVE, Need.DIPOLES})
+"""What this gas will not have, whatever its temperature and number: its quantities are left out."""
+
+
 def readings_of(answer: CloudAnswer, chosen_units: Mapping[str, str]) -> dict[str, Reading]:
-    """What the readouts show of an answer: quantities of the other statistics are left out, and those that lack an
+    """What the readouts show of an answer: quantities of other gases are left out, and those that lack an
     input say so."""
     readings = {}
     for name, row in QUANTITIES.items():
         need = answer.missing(row)
-        if need in (Need.BOSONS, Need.FERMIONS):
+        if need in _OTHER_GASES:
             continue
         if need is not None:
             readings[name] = Reading(symbol_of(row, answer), "–", reason=reason_missing(need))
