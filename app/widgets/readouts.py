@@ -28,7 +28,10 @@ class Readouts(QTreeView):
         super().__init__(parent)
         self.setObjectName("readouts")
         self.setAccessibleName("Readouts")
-        self.setWhatsThis("All quantities of the present cloud. Return chooses a unit, Ctrl+C copies a value.")
+        self.setWhatsThis(
+            "All quantities of the present cloud. Return chooses a unit, Ctrl+C copies a value, Ctrl+I shows how it is "
+            "worked out."
+        )
         self._model = ReadoutModel(self)
         self.setModel(self._model)
         self.setItemDelegate(ReadoutPainter(self._model, self))
