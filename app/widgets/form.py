@@ -81,12 +81,12 @@ class Form(QWidget):
         self._grid.setVerticalSpacing(3)
         self._grid.setColumnMinimumWidth(0, self.fontMetrics().horizontalAdvance(LONGEST_LABEL))
         self._grid.setColumnStretch(1, 1)
-        heading = QLabel(title)
-        heading.setObjectName("formTitle")
-        font = QFont(heading.font())
+        self.heading = QLabel(title)
+        self.heading.setObjectName("formTitle")
+        font = QFont(self.heading.font())
         font.setWeight(QFont.Weight.DemiBold)
-        heading.setFont(font)
-        self._grid.addWidget(heading, 0, 0, 1, 2)
+        self.heading.setFont(font)
+        self._grid.addWidget(self.heading, 0, 0, 1, 2)
 
     # ---------------------------------------------------------------- building
 

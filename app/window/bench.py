@@ -6,6 +6,7 @@ from PySide6.QtCore import QSize, Qt, Signal
 from PySide6.QtWidgets import QFrame, QScrollArea, QVBoxLayout, QWidget
 
 from app.forms.cloud import CloudForm
+from app.forms.losses import LossesForm
 from app.forms.species import SpeciesForm
 from app.forms.target import TargetForm
 from app.forms.trap import TrapForm
@@ -30,7 +31,8 @@ class Bench(QScrollArea):
         self.setWidgetResizable(True)
         self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-        self.species, self.trap, self.cloud, self.target = SpeciesForm(), TrapForm(), CloudForm(), TargetForm()
+        self.species, self.trap, self.cloud = SpeciesForm(), TrapForm(), CloudForm()
+        self.losses, self.target = LossesForm(), TargetForm()
         body = QWidget()
         body.setObjectName("benchBody")
         column = QVBoxLayout(body)
@@ -45,7 +47,7 @@ class Bench(QScrollArea):
 
     @property
     def forms(self) -> tuple[Form, ...]:
-        return self.species, self.trap, self.cloud, self.target
+        return self.species, self.trap, self.cloud, self.losses, self.target
 
     @property
     def problems(self) -> tuple[str, ...]:
