@@ -197,7 +197,7 @@ def _quantity_text(entry: object, unit_needed: bool, example: str) -> str:
         raise PlanError(f'must be a text in quotes, such as "{example}", got {_shown(entry)}')
     text = entry.replace("_", "") if isinstance(entry, _Written) else str(entry)
     if unit_needed and (isinstance(entry, _Written) or not isinstance(entry, str)):
-        raise PlanError(f'needs a unit: write a text in quotes, such as "{example}", not {text}')
+        raise PlanError(f'needs a unit: write a text in quotes, such as "{example}", not {_one_line(text)}')
     return text
 
 
