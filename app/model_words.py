@@ -31,6 +31,9 @@ _OBSTACLES = {
     Replacement.NOT_REPULSIVE: _("needs a positive scattering length"),
     Replacement.BOSONS_ONLY: _("for bosons only"),
 }
+LEAST_SUPERFLUID = 1e-3
+"""Tc/TF below which the exponentially small estimate of weak attraction says nothing but "never"."""
+
 MEANING = {
     Model.IDEAL: _("No interaction, levels close together. A condensate fills the ground level of the oscillator."),
     Model.SEMI_IDEAL: _("A Thomas-Fermi condensate that repels thermal atoms, which do not repel one another."),
@@ -140,6 +143,8 @@ def interaction_sentence(cloud: CloudAnswer) -> str:
         return said + " " + _("Estimates exist below −1, within ±0.2 and above 1; between, it takes crossover theory.")
     fermi = cloud.equilibrium
     below = float(estimates.superfluid_temperature) / float(fermi.fermi_temperature)
+    if below < LEAST_SUPERFLUID:
+        return said + " " + _("Superfluid only far below any temperature that is reached.")
     said += " " + _("Superfluid below about {ratio} TF ({T}), {regime}.").format(
         ratio=number(below, 2), T=temperature(float(estimates.superfluid_temperature)), regime=_regime(coupling)
     )

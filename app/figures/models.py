@@ -9,6 +9,7 @@ import numpy as np
 from app.answers.models import ModelsAnswer
 from app.figures.picture import Axis, Curve, Mark, Picture, Role
 from app.language import translate as _
+from app.model_words import LEAST_SUPERFLUID
 from app.words import number
 from physics.models import Model
 
@@ -57,7 +58,7 @@ def _fermions(answer: ModelsAnswer) -> Picture:
     curves = (*_curves(answer), *_upright(answer, y))
     if math.isfinite(answer.estimate) and y.low < answer.estimate < y.high:
         marks = (*marks, Mark(name=_("with interaction, T = 0"), role=Role.THRESHOLD, x=0.0, y=answer.estimate))
-    if 0.0 < answer.superfluid < x.high:
+    if LEAST_SUPERFLUID < answer.superfluid < x.high:
         curves = (*curves, _line(_("superfluid below, estimate"), Role.THRESHOLD_SHIFTED, answer.superfluid, y))
     return Picture(
         title=_("chemical potential by model"),

@@ -12,9 +12,9 @@ from physics.species import Sourced, load_species
 
 _TITLE = "Losses"
 _ROWS = (
-    ("losses.background_lifetime", "u", ""),
-    ("losses.two_body", "w", ""),
-    ("losses.three_body", "k", ""),
+    ("losses.background_lifetime", "u", "Vacuum lifetime"),
+    ("losses.two_body", "w", "Two-body K₂"),
+    ("losses.three_body", "k", "Three-body K₃"),
     ("losses.heating", "b", "One-body heating"),
     ("losses.intensity_noise", "o", ""),
 )

@@ -57,6 +57,7 @@ def style_sheet_of(theme: Theme) -> str:
         QComboBox QLineEdit {{ border: none; padding: 0px; }}
         QLineEdit:focus {{ border-color: {theme.accent}; }}
         QLineEdit[invalid="true"] {{ border-color: {theme.error}; }}
+        QToolButton#formTitle {{ border: none; padding: 0px; }}
         QToolButton:checked {{ background: {theme.accent}; color: {theme.base}; border-radius: 3px; }}
         QRadioButton::indicator {{ width: 11px; height: 11px; border: 1px solid {theme.muted}; border-radius: 6px;
                                    background: {theme.base}; }}

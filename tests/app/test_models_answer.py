@@ -134,7 +134,8 @@ def test_models_that_are_not_done_yet_have_no_numbers() -> None:
     [
         ({"species.field": "900 G"}, "Estimates exist below −1"),
         ({"species.field": "832 G"}, "near unitarity"),
-        ({"species.scattering_length": "-500 a0"}, "weak attraction"),
+        ({"species.scattering_length": "-4000 a0"}, "weak attraction"),
+        ({"species.scattering_length": "-290 a0"}, "far below any temperature"),
         ({"species.scattering_length": "500 a0"}, "as pairs"),
         ({"species.state": "F=1/2 mF=+1/2"}, "no s-wave interaction"),
         ({}, "the scattering length is not known"),
