@@ -25,7 +25,7 @@ def moved_quantity(
     unit = best_unit(value, units) if unit in units else unit
     sigma = old.sigma
     if relative and sigma is not None:
-        sigma = _rounded(sigma / old.value * value, 1)
+        sigma = _rounded_error(sigma / old.value * value)
     return read_quantity(exact_text(value, unit, sigma, kind=kind), kind)
 
 
@@ -37,6 +37,12 @@ def stepped(value: float, step: float) -> float:
 def fine_step(span: float) -> float:
     """A power of ten that divides a range into a thousand steps or more: finer than a hand can move a mark over it."""
     return float(10.0 ** math.floor(math.log10(span / 1000.0)))
+
+
+def _rounded_error(sigma: float) -> float:
+    """One digit, or two below 30, where one would be too coarse."""
+    two = _rounded(sigma, 2)
+    return two if f"{two:e}"[0] in "12" else _rounded(sigma, 1)
 
 
 def _rounded(value: float, digits: int) -> float:

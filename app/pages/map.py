@@ -24,7 +24,7 @@ from app.figures.theme import Theme
 from app.language import translate as _
 from app.moving import moved_quantity
 from app.newest import Job, Steps, Watch
-from app.plan import Plan
+from app.plan import CloudChoice, Plan
 from app.units import ATOM_NUMBER, TEMPERATURE
 from app.widgets.page import Page
 from app.words import number, temperature
@@ -56,6 +56,8 @@ class MapPage(Page):
         self._limits: MapLimits | None = None
         self._gas: object = None  # what the limits were chosen for
         self._drag = 0
+        self._written: CloudChoice | None = None  # the cloud as it was before it was moved here
+        self._moves: set[CloudChoice] = set()  # where it has been moved to since
         self.bar.status.say(HINT)
         canvas = self.plot.canvas
         canvas.mark_dragged.connect(self._drag_to)
@@ -137,11 +139,16 @@ class MapPage(Page):
         if self.cloud is None:
             return
         plan = self.cloud.plan
+        # Each move starts from what the user wrote, not from the move before: rounded errors would drift.
+        if self._written is None or plan.cloud not in self._moves:
+            self._written, self._moves = plan.cloud, {plan.cloud}
+        written = self._written
         moved = replace(
             plan.cloud,
-            atoms=moved_quantity(plan.cloud.atoms, atoms, ATOM_NUMBER, ("",)),
-            temperature=moved_quantity(plan.cloud.temperature, temperature_value, TEMPERATURE, _TEMPERATURE_UNITS),
+            atoms=moved_quantity(written.atoms, atoms, ATOM_NUMBER, ("",)),
+            temperature=moved_quantity(written.temperature, temperature_value, TEMPERATURE, _TEMPERATURE_UNITS),
         )
+        self._moves.add(moved)
         self.plan_edited.emit(replace(plan, cloud=moved), _CLOUD_STEP, merge_key)
 
     def _read_pointer(self, place: tuple[float, float] | None) -> None:

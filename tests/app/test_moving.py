@@ -10,7 +10,12 @@ TEMPERATURES = ("nK", "µK", "mK")
 
 @pytest.mark.parametrize(
     ("old", "value", "text"),
-    [("200 nK", 3.4567e-7, "346 nK"), ("200(10) nK", 4e-7, "400(20) nK"), ("1.2 uK", 5e-8, "50 nK")],
+    [
+        ("200 nK", 3.4567e-7, "346 nK"),
+        ("200(10) nK", 4e-7, "400(20) nK"),
+        ("1.2 uK", 5e-8, "50 nK"),
+        ("200(10) nK", 2.8e-7, "280(14) nK"),
+    ],
 )
 def test_three_digits_a_fitting_unit_and_the_same_relative_uncertainty(old: str, value: float, text: str) -> None:
     moved = moved_quantity(read_quantity(old, TEMPERATURE), value, TEMPERATURE, TEMPERATURES)

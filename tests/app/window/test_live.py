@@ -122,3 +122,16 @@ def test_the_pointer_reads_the_cloud_that_would_be_there(window: MainWindow) -> 
     page.plot.canvas.pointer_moved.emit((1e5, 2e-7))
     assert page.bar.status.text.startswith("N = 1.00e5   T = 200 nK   D = ")
     assert "T/Tc = 1.4" in page.bar.status.text
+
+
+def test_a_long_way_by_many_moves_keeps_the_relative_uncertainty(window: MainWindow, settle: Settle) -> None:
+    before = window.document.plan.cloud
+    assert before.atoms.sigma is not None
+    for _ in range(40):
+        QTest.keyClick(window.desk.map.plot.canvas, Qt.Key.Key_Right)
+        settle(window)
+    after = window.document.plan.cloud
+    assert after.atoms.value > 2.0 * before.atoms.value
+    assert after.atoms.sigma is not None
+    relative = after.atoms.sigma / after.atoms.value
+    assert relative == pytest.approx(before.atoms.sigma / before.atoms.value, rel=0.2)  # one digit is written
