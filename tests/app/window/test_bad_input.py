@@ -125,7 +125,7 @@ def test_a_field_tells_the_scattering_length_that_it_makes(window: MainWindow, s
     if length is None:
         assert shown
     else:
-        assert shown == f"a = {length / 5.29177210544e-11:.4g} a0 at this field"
+        assert shown == f"a = {length / 5.29177210544e-11:.4g} a0 at this field (recalled)"
 
 
 def test_saving_with_a_wrong_field_says_which_value_was_kept(window: MainWindow, tmp_path, monkeypatch) -> None:

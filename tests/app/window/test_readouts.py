@@ -114,7 +114,7 @@ def test_a_narrow_window_folds_the_readouts_into_a_tab(make_window, settle: Sett
     window = make_window(size=(1000, 700))
     desk = window.desk
     assert desk.folded
-    assert desk.tabs.count() == 4
+    assert desk.tabs.count() == len(desk.pages) + 1
     assert not desk.readouts.isVisible()
     window.actions_by_id["view.readouts"].trigger()
     settle(window)
