@@ -54,14 +54,16 @@ def _full_draw(canvases: list[LiveCanvas]) -> float:
 def rows() -> Iterator[tuple[str, float, float | None]]:
     """(what, measured, goal)."""
     application()
-    base = read_plan(PLAN)
-    # Slow enough that axes hold still, as in a drag; the trap moves with the temperature, so that maps change too.
+    base = plan_with(read_plan(PLAN), {"species.state": "F=1 mF=+1", "species.field": "1000 G"})
+    # Slow enough that axes hold still, as in a drag; trap and field move with the temperature, so that maps and curves
+    # change too.
     steps = [
         plan_with(
             base,
             {
                 "cloud.temperature": f"{170 + 0.5 * step:.6g}(10) nK",
                 "trap.frequencies": f"{120 + 0.02 * step:.6g} Hz, 120 Hz, 20 Hz",
+                "species.field": f"{1000 + 0.02 * step:.7g} G",
             },
         )
         for step in range(FRAMES)
