@@ -1,0 +1,168 @@
+"""What a trap is to a cloud while its controls move: depth, volume curve and frequencies, control by control.
+
+`TrapPath` is all that the kinetics of evaporation asks of a trap. Closed forms for a harmonic trap and for a quadrupole
+are here; a trap of beams and coils gives a path of surveys.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from functools import cached_property
+from types import MappingProxyType
+from typing import Protocol
+
+from physics.constants import planck
+from physics.ramps import Control, Knob
+from physics.traps.harmonic import HarmonicTrap
+from physics.truncated_boltzmann import HARMONIC, QUADRUPOLE
+from physics.volume_curve import VolumeCurve
+
+DEPTH, SCALE, GRADIENT = Control(Knob.DEPTH), Control(Knob.SCALE), Control(Knob.GRADIENT)
+
+
+@dataclass(frozen=True, kw_only=True)
+class TrapPoint:
+    """A trap at one setting of its controls, for atoms of one state.
+
+    Attributes
+    ----------
+    depth : float or None. [J] Energy above the bottom at which atoms leave; None where the trap holds nothing.
+    volume : float. [m^3] W at the depth.
+    curve : VolumeCurve. Shape of W below it.
+    frequencies : (3,) or None. [Hz] None in a quadrupole, which has none.
+    light_heating : float. [W] Energy per atom and second that scattered light leaves.
+    reason : text. Why nothing is held.
+    """
+
+    depth: float | None
+    volume: float = math.nan
+    curve: VolumeCurve = field(default_factory=VolumeCurve)
+    frequencies: tuple[float, float, float] | None = None
+    light_heating: float = 0.0
+    reason: str = ""
+
+    def __post_init__(self) -> None:
+        if self.depth is None:
+            return
+        for name, value, unit in (("depth", self.depth, "J"), ("volume at the depth", self.volume, "m^3")):
+            if not 0.0 < value < math.inf:
+                raise ValueError(f"{name} of a trap must be positive and finite, got {value:g} {unit}")
+        if not 0.0 <= self.light_heating < math.inf:
+            raise ValueError(f"heating by light must be finite and not negative, got {self.light_heating:g} W")
+
+    def levels(self, mass: float) -> float:
+        """Number of levels below the depth. [1]"""
+        assert self.depth is not None
+        momentum = math.sqrt(2.0 * mass * self.depth) / planck
+        return 4.0 * math.pi / 3.0 * momentum**3 * self.volume * self.curve.rim_levels
+
+
+class TrapPath(Protocol):
+    """A trap and its controls."""
+
+    @property
+    def standing(self) -> Mapping[Control, float]:
+        """The controls that can be moved, where they stand before a ramp; NaN where that is not known. [SI]"""
+
+    @property
+    def nodes(self) -> int:
+        """Number of points along a stage between which all is interpolated."""
+
+    def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+        """The trap at values of its controls. It may remember what it has computed."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class FixedTrap:
+    """A trap without controls."""
+
+    point: TrapPoint
+    nodes: int = 1
+
+    @property
+    def standing(self) -> Mapping[Control, float]:
+        return MappingProxyType({})
+
+    def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+        return self.point
+
+
+@dataclass(frozen=True, kw_only=True)
+class HarmonicPath:
+    """A harmonic trap cut at a depth, which moves by itself or with the whole trap.
+
+    Attributes
+    ----------
+    mass : float. [kg]
+    trap : HarmonicTrap. A single one.
+    light_heating : float. [W] Per atom, at scale 1; in proportion to the scale.
+    """
+
+    mass: float
+    trap: HarmonicTrap
+    light_heating: float = 0.0
+    nodes: int = 17
+
+    def __post_init__(self) -> None:
+        if self.trap.shape:
+            raise ValueError(f"a ramp starts from one trap, got traps of shape {self.trap.shape}")
+
+    @cached_property
+    def standing(self) -> Mapping[Control, float]:
+        depth = math.nan if self.trap.depth is None else float(self.trap.depth)
+        return MappingProxyType({DEPTH: depth, SCALE: 1.0})
+
+    def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+        s = controls[SCALE]
+        if DEPTH not in controls:
+            raise ValueError("the depth of the trap must be known to evaporate from it")
+        depth, root = s * controls[DEPTH], math.sqrt(s)
+        fx, fy, fz = (float(f) * root for f in self.trap.frequencies)
+        angular = (2.0 * math.pi) ** 3 * fx * fy * fz
+        volume = 4.0 * math.pi / 3.0 * (2.0 * depth / self.mass) ** 1.5 / angular
+        return TrapPoint(
+            depth=depth,
+            volume=volume,
+            curve=_HARMONIC,
+            frequencies=(fx, fy, fz),
+            light_heating=s * self.light_heating,
+        )
+
+
+@dataclass(frozen=True, kw_only=True)
+class QuadrupolePath:
+    """A quadrupole field cut at a depth, by a knife.
+
+    Attributes
+    ----------
+    moment : float. [J/T] dE/dB of the atoms.
+    gradient : float. [T/m] On the strong axis, half of it on the others.
+    depth : float. [J]
+    """
+
+    moment: float
+    gradient: float
+    depth: float
+    nodes: int = 17
+
+    def __post_init__(self) -> None:
+        for name, value, unit in (("moment", self.moment, "J/T"), ("gradient", self.gradient, "T/m")):
+            if not 0.0 < value < math.inf:
+                raise ValueError(f"{name} must be positive and finite, got {value:g} {unit}")
+
+    @cached_property
+    def standing(self) -> Mapping[Control, float]:
+        return MappingProxyType({DEPTH: self.depth, GRADIENT: self.gradient})
+
+    def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+        depth, force = controls[DEPTH], self.moment * abs(controls[GRADIENT])
+        if force == 0.0:
+            return TrapPoint(depth=None, reason="the gradient is zero")
+        volume = 16.0 * math.pi / 3.0 * (depth / force) ** 3
+        return TrapPoint(depth=depth, volume=volume, curve=_QUADRUPOLE)
+
+
+_HARMONIC = VolumeCurve(exponent=HARMONIC)
+_QUADRUPOLE = VolumeCurve(exponent=QUADRUPOLE)

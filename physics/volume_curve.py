@@ -1,0 +1,145 @@
+"""The volume curve W(U) of a trap: how large the region around the minimum is in which the potential is below U.
+
+Every integral over a large cloud is one over dW. Here U is in units of the depth and W in units of its value there,
+which leaves the shape of the trap; the scales are kept beside it.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, field
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+
+from physics.checks import Floats, as_floats, require_positive
+from physics.harmonic_integrals import legendre
+from physics.spline import Spline
+from physics.truncated_boltzmann import HARMONIC
+
+# Panels: [1/2, 1], then halves down to 2^-(_HALVINGS + 1), then the power law of the bottom.
+_HALVINGS = 14
+_RIM, _PANEL, _BOTTOM = 24, 12, 24
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class VolumeCurve:
+    """Shape of a volume curve.
+
+    Attributes
+    ----------
+    energies : (n,). [1] U over the depth, increasing, from above 0 to 1. None for a pure power law.
+    volumes : (n,). [1] W over its value at the depth, increasing to 1. None for a pure power law.
+    exponent : float. [1] d of W ~ U^d below the first of the energies, or everywhere: 3/2 at a harmonic bottom.
+
+    Raises
+    ------
+    ValueError : for an exponent that is negative, or curves that do not increase to 1 at the depth.
+    """
+
+    energies: Any = None
+    volumes: Any = None
+    exponent: float = HARMONIC
+
+    _spline: Spline | None = field(init=False, repr=False, default=None)
+
+    def __post_init__(self) -> None:
+        if not 0.0 < self.exponent < math.inf:
+            raise ValueError(f"exponent of a volume curve must be positive and finite, got {self.exponent:g}")
+        if (self.energies is None) != (self.volumes is None):
+            raise ValueError("a volume curve needs energies and volumes, got only one of them")
+        if self.energies is None:
+            return
+        u, w = as_floats(self.energies), as_floats(self.volumes)
+        if u.ndim != 1 or u.shape != w.shape or len(u) < 2:
+            raise ValueError(
+                f"energies and volumes must be lists of one length, 2 or more, got shapes {u.shape} and {w.shape}"
+            )
+        require_positive("energy of a volume curve", u, "")
+        require_positive("volume of a volume curve", w, "")
+        for name, values in (("energies", u), ("volumes", w)):
+            if np.any(np.diff(values) <= 0.0):
+                raise ValueError(f"{name} of a volume curve must increase")
+            if abs(values[-1] - 1.0) > 1e-12:
+                raise ValueError(f"{name} of a volume curve must end at 1, at the depth, got {values[-1]:g}")
+        object.__setattr__(self, "energies", u)
+        object.__setattr__(self, "volumes", w)
+        spline = Spline(np.log(u), np.log(w)[:, np.newaxis])
+        object.__setattr__(self, "_spline", spline)
+
+    @property
+    def power_law(self) -> bool:
+        """Whether the curve is one power law all the way."""
+        return self._spline is None
+
+    def volume(self, energy: Floats) -> Floats:
+        """W over its value at the depth at energies between 0 and 1. [1]"""
+        u = np.asarray(energy, dtype=np.float64)
+        if self._spline is None:
+            powers: Floats = u**self.exponent
+            return powers
+        first, lowest = float(self.energies[0]), float(self.volumes[0])
+        inside = np.exp(self._spline(np.log(np.maximum(u, first)))[..., 0])
+        return np.where(u < first, lowest * (u / first) ** self.exponent, inside)
+
+    def energy(self, volume: Floats) -> Floats:
+        """U over the depth at which W has a share, between 0 and 1, of its value there. [1]"""
+        w = np.asarray(volume, dtype=np.float64)
+        if self._spline is None:
+            powers: Floats = w ** (1.0 / self.exponent)
+            return powers
+        first, lowest = float(self.energies[0]), float(self.volumes[0])
+        # Newton steps on the logarithms, from the straight line between the points.
+        target = np.log(np.maximum(w, lowest))
+        place = np.interp(target, np.log(self.volumes), np.log(self.energies))
+        for _ in range(6):
+            step = (target - self._spline(place)[..., 0]) / np.maximum(self._spline.slopes(place)[..., 0], 1e-3)
+            place = np.clip(place + step, math.log(first), 0.0)
+        return np.where(w < lowest, first * (w / lowest) ** (1.0 / self.exponent), np.exp(place))
+
+    def _growth(self, energy: Floats) -> Floats:
+        """d ln W/d ln U."""
+        if self._spline is None:
+            return np.full_like(energy, self.exponent)
+        first = float(self.energies[0])
+        inside = self._spline.slopes(np.log(np.maximum(energy, first)))[..., 0]
+        return np.where(energy < first, self.exponent, inside)
+
+    @cached_property
+    def measure(self) -> tuple[Floats, Floats]:
+        """Energies U and weights dW of a quadrature from 0 to 1 that resolves e^(-eta U) up to eta of some thousands
+        and the square root with which densities end at the depth."""
+        return self.measure_below(1.0)
+
+    def measure_below(self, limit: float) -> tuple[Floats, Floats]:
+        """The same from 0 to another limit, at most 1."""
+        nodes, weights = [], []
+        x, w = legendre(_RIM)
+        # U = 1 - v^2/2 takes away the half-integer powers of 1 - U.
+        nodes.append(1.0 - 0.5 * x * x)
+        weights.append(x * w)
+        x, w = legendre(_PANEL)
+        for k in range(1, _HALVINGS + 1):
+            width = 0.5 ** (k + 1)
+            nodes.append(width * (1.0 + x))
+            weights.append(width * w)
+        x, w = legendre(_BOTTOM)
+        bottom = 0.5 ** (_HALVINGS + 1)
+        nodes.append(bottom * x * x)
+        weights.append(2.0 * bottom * x * w)
+        u, du = limit * np.concatenate(nodes), limit * np.concatenate(weights)
+        dw = self.volume(u) * self._growth(u) / u * du
+        return as_floats(u), as_floats(dw)
+
+    @cached_property
+    def rim_levels(self) -> float:
+        """s = integral of (1 - U)^(3/2) dW: levels below the depth over those of a box of that volume. [1]"""
+        u, dw = self.measure
+        return float(np.sum(dw * (1.0 - u) ** 1.5))
+
+    @cached_property
+    def highest_energy(self) -> float:
+        """Mean energy over the depth of a cloud that fills all levels evenly: none that is cut has more. [1]"""
+        u, dw = self.measure
+        return float(np.sum(dw * (u * (1.0 - u) ** 1.5 + 0.6 * (1.0 - u) ** 2.5))) / self.rim_levels
