@@ -89,7 +89,12 @@ def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, flo
     above = PAD + title_height + len(rows) * line + (6.0 if rows else 2.0)
     inner_height = max(height - below - above, SMALLEST)
     y_ticks = ticks_of(picture.y, max(2, int(inner_height / (2.6 * theme.small_size))))
-    y_title = _broken(axis_title(picture.y), theme.font_size, inner_height + 0.5 * above, measure)
+    # Title and legend stand above the axes from the left edge on: what is taller than the axes would run into them.
+    tallest = inner_height + 6.0
+    y_title = "\n".join(
+        shortened(part, theme.font_size, tallest, measure)
+        for part in _broken(axis_title(picture.y), theme.font_size, tallest, measure).split("\n")
+    )
     tick_width = widest(y_ticks.texts, theme.small_size, measure)
     # whole steps of 4 pt: the axes do not twitch with each new tick text
     before = 4.0 * np.ceil((PAD + (1 + y_title.count("\n")) * line + TICK_GAP + tick_width + TICK_GAP + TICK) / 4.0)

@@ -79,13 +79,16 @@ def _boson_field(answer: MapAnswer) -> Field:
     condensed = SPLIT + (1.0 - SPLIT) * (1.0 - answer.reduced_temperature)
     shade = np.where(answer.reduced_temperature < 1.0, condensed, SPLIT * np.minimum(thermal, 1.0))
     ticks = [((exponent - low) / (high - low) * SPLIT, power_text(10.0**exponent)) for exponent in range(-6, 1, 2)]
-    ticks += [(SPLIT + (1.0 - SPLIT) * (1.0 - ratio), f"{ratio:g}") for ratio in (1.0, 0.5, 0.0)]
+    # Temperatures in words: a bare 1 for T/Tc beside 10⁰ for the density would say two things alike.
+    ticks += [
+        (SPLIT + (1.0 - SPLIT) * (1.0 - ratio), text) for ratio, text in ((1.0, "Tc"), (0.5, "0.5 Tc"), (0.0, "0"))
+    ]
     return Field(
         x=answer.atoms,
         y=answer.temperature,
         shade=shade,
         split=SPLIT,
-        bar_label=_("peak phase-space density, then T/Tc"),
+        bar_label=_("peak phase-space density, then T"),
         ticks=tuple(ticks),
     )
 

@@ -46,6 +46,7 @@ class SpeciesForm(Form):
         assert line is not None
         line.editingFinished.connect(self._isotope_typed)
         line.setPlaceholderText("type to search, such as Rb")
+        line.setAccessibleName("Isotope, typed")
         self.add_row(_KEY.path, "Isotope", "i", self.isotope, _KEY.tip)
         self.state = Choice()
         self.state.activated.connect(lambda _index: self._choose_state())

@@ -97,9 +97,11 @@ class FigureRow(QWidget):
             left, width = round(x), round(column - GAP)
             painter.setFont(caption_font)
             painter.setPen(quiet)
-            for top, text in ((tops[0], figure.caption), (tops[2], figure.detail)):
-                shown = caption_metrics.elidedText(text, Qt.TextElideMode.ElideRight, width)
-                painter.drawText(QRect(left, top, width, small), alignment, shown)
+            caption = caption_metrics.elidedText(figure.caption, Qt.TextElideMode.ElideRight, width)
+            painter.drawText(QRect(left, tops[0], width, small), alignment, caption)
+            # A number cut short would be another number: a detail is shown whole or not at all.
+            if caption_metrics.horizontalAdvance(figure.detail) <= width:
+                painter.drawText(QRect(left, tops[2], width, small), alignment, figure.detail)
             painter.setFont(value_font)
             painter.setPen(quiet if self._stale else ink)
             painter.drawText(QRect(left, tops[1], width + GAP, large), alignment, figure.value)

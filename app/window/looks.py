@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+from functools import lru_cache
+
 from PySide6.QtCore import QObject, Qt, Signal
-from PySide6.QtGui import QColor, QPalette
+from PySide6.QtGui import QColor, QFontInfo, QPalette
 from PySide6.QtWidgets import QApplication
 
 from app.figures.theme import DARK, LIGHT, Theme
@@ -80,6 +83,28 @@ def system_is_dark() -> bool:
     return QApplication.styleHints().colorScheme() is Qt.ColorScheme.Dark
 
 
+USUAL_TYPE = 12.0  # pixels: the size of the system's type that the plots' own sizes are made for
+
+
+@lru_cache(maxsize=8)
+def sized(theme: Theme, scale: float) -> Theme:
+    """The theme with type of another size on plots."""
+    if scale == 1.0:
+        return theme
+    return replace(
+        theme,
+        small_size=theme.small_size * scale,
+        font_size=theme.font_size * scale,
+        title_size=theme.title_size * scale,
+    )
+
+
+def type_scale() -> float:
+    """How much larger than usual the system's type is, in steps of a twentieth; never below the usual."""
+    size = QFontInfo(QApplication.font()).pixelSize()
+    return max(1.0, round(20.0 * size / USUAL_TYPE) / 20.0)
+
+
 class Looks(QObject):
     """Holds the theme in use. theme_changed(Theme) is sent whenever it becomes another one."""
 
@@ -114,7 +139,7 @@ class Looks(QObject):
             ThemeChoice.LIGHT: False,
             ThemeChoice.SYSTEM: system_is_dark(),
         }[self._choice]
-        theme = DARK if dark else LIGHT
+        theme = sized(DARK if dark else LIGHT, type_scale())
         application = QApplication.instance()
         if not isinstance(application, QApplication):
             raise RuntimeError("a look needs a running application")

@@ -1,7 +1,7 @@
 """Light and dark: followed, overridden, readable."""
 
 import pytest
-from PySide6.QtGui import QPalette
+from PySide6.QtGui import QFont, QPalette
 from PySide6.QtWidgets import QApplication
 
 from app.figures.theme import DARK, LIGHT, Theme, contrast
@@ -67,3 +67,18 @@ def test_a_new_plot_has_the_present_look(window: MainWindow) -> None:
     QApplication.processEvents()
     assert all(plot.canvas.theme is DARK for plot in window.desk.slices.plots)
     window.looks.choose(ThemeChoice.LIGHT)
+
+
+def test_plots_follow_the_size_of_the_system_s_type(make_window) -> None:
+    before = QApplication.font()
+    larger = QFont(before)
+    larger.setPixelSize(18)
+    QApplication.setFont(larger)
+    try:
+        window = make_window()
+        theme = window.desk.map.plot.canvas.theme
+        assert theme.font_size == pytest.approx(1.5 * LIGHT.font_size)
+        assert theme.background == LIGHT.background
+        window.close()
+    finally:
+        QApplication.setFont(before)
