@@ -136,7 +136,7 @@ def _read(path: Path) -> tuple[list[str], list[tuple[int, list[str]]]]:
         raise ValueError(f"{path}, line {reader.line_num}: {error}") from error
     if not rows:
         raise ValueError(f"{path} has no header line")
-    header = [cell.strip() for cell in rows[0][1]]
+    header = [" ".join(cell.split()) for cell in rows[0][1]]
     if len(header) == 1 and any(mark in header[0] for mark in ";\t"):
         raise ValueError(f"{path} must have commas between its cells, and decimal points within them")
     return header, rows[1:]
@@ -217,7 +217,7 @@ def _frequency(text: str, column: _Column) -> str:
 def _frequencies(base: Plan | None, flags: dict[str, str], axes: dict[int, str]) -> list[str]:
     """Three texts: those of the row, and for axes that it leaves out those of the plan or of the flag."""
     if base is not None:
-        others = [quantity.text for quantity in base.trap.frequencies]
+        others = [quantity.text for quantity in base.trap.frequencies or ()]
     else:
         others = flags.get("trap.frequencies", "").split(",")
     if len(others) != 3 and len(axes) != 3:
