@@ -9,6 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from app.engine import CloudAnswer
+from app.figures.ticks import raised
 from app.quantities import QUANTITIES, Need, Row
 from app.units import best_unit
 from app.words import range_text, reason_missing, row_tip, shown_unit, symbol_of, value_text
@@ -83,6 +84,6 @@ def unit_for(row: Row, value: object) -> str:
 
 
 def printed_unit(unit: str) -> str:
-    """A unit as it is set in print: "cm⁻³" for "1/cm^3"."""
+    """A unit as it is set in print: "cm⁻³" for "1/cm^3", "cm⁶/s" for "cm^6/s"."""
     found = re.fullmatch(r"1/(\w+?)(?:\^(\d))?", unit)
-    return unit if found is None else f"{found[1]}⁻{(found[2] or '1').translate(_RAISED)}"
+    return raised(unit) if found is None else f"{found[1]}⁻{(found[2] or '1').translate(_RAISED)}"

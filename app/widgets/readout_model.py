@@ -165,7 +165,7 @@ class ReadoutPainter(QStyledItemDelegate):
         painter.setFont(font)
         metrics = painter.fontMetrics()
         left, middle = Qt.AlignmentFlag.AlignLeft, Qt.AlignmentFlag.AlignVCenter
-        unit_width = metrics.horizontalAdvance("cm⁻³") + 4
+        unit_width = metrics.horizontalAdvance("cm⁶/s") + 4
         value_right = area.right() - unit_width - self.GAP
         value_width = metrics.horizontalAdvance(reading.value)
         painter.setPen(quiet)

@@ -9,7 +9,7 @@ from PySide6.QtTest import QAbstractItemModelTester, QTest
 
 from app.quantities import QUANTITIES
 from app.widgets.form import plan_with_entry
-from app.widgets.readings import Reading
+from app.widgets.readings import Reading, printed_unit
 from app.widgets.readout_model import ReadoutModel
 from app.window.main_window import MainWindow
 
@@ -142,3 +142,11 @@ def test_caveats_are_words_and_can_be_selected(window: MainWindow) -> None:
         assert line.word in text
         assert line.sentence in text
     assert caveats.textInteractionFlags() & Qt.TextInteractionFlag.TextSelectableByKeyboard
+
+
+@pytest.mark.parametrize(
+    ("unit", "printed"),
+    [("1/cm^3", "cm⁻³"), ("1/s", "s⁻¹"), ("cm^2", "cm²"), ("cm^6/s", "cm⁶/s"), ("µm", "µm"), ("a0", "a₀")],
+)
+def test_units_are_set_as_in_print(unit: str, printed: str) -> None:
+    assert printed_unit(unit) == printed
