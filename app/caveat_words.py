@@ -43,6 +43,15 @@ def _density(value: float) -> str:
     return format_quantity(value, "1/cm^3", digits=2)
 
 
+def _whole(value: float) -> str:
+    return f"{value:.0f}" if value < 1e4 else number(value)
+
+
+def _share(value: float) -> str:
+    """A share that can be reckoned above one, where it says no more than "all"."""
+    return percent(value) if value < 1.0 else _("all")
+
+
 _PLAIN: Callable[[float], str] = number
 _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingProxyType(
     {
@@ -80,6 +89,10 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _("The highest level spacing is {value} kT: local density does not describe this cloud. Use exact levels."),
             _PLAIN,
         ),
+        "exact_levels_advised_shift": (
+            _("So few atoms lower Tc by {shift}: local density is far off near it. Use exact levels."),
+            _PLAIN,
+        ),
         "shell_structure": (
             _("kT is only {value} of the highest level spacing: shells of the oscillator show. See exact levels."),
             _PLAIN,
@@ -98,7 +111,7 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
         ),
         "few_atoms": (
             _("With {value} atoms, means at a fluctuating number differ from those at a fixed one."),
-            _PLAIN,
+            _whole,
         ),
         "thomas_fermi": (
             _("N₀a/a_ho is {value}: the condensate is too small for the Thomas-Fermi shape, which is used."),
@@ -179,7 +192,7 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
         ),
         "loss_fast": (
             _("In one rethermalisation time {value} of the atoms are lost: no equilibrium. Compress, or lose less."),
-            percent,
+            _share,
         ),
         "heating_fast": (
             _("T rises by {value} in one rethermalisation time: no steady cloud. Compress, or lower light and noise."),
@@ -217,6 +230,7 @@ def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
         dipole=_length(numbers.get("dipolar_length", 0.0)),
         collapse=number(numbers.get("collapse_atoms", 0.0), 2),
         inverse=number(numbers.get("inverse", 0.0), 2),
+        shift=percent(numbers.get("shift", 0.0)),
         frozen=_frozen(int(numbers.get("frozen_axes", 0))),
     )
 
@@ -240,6 +254,8 @@ def caveat_lines(answer: CloudAnswer) -> tuple[CaveatLine, ...]:
 
 
 def _key(caveat: Caveat, answer: CloudAnswer) -> str:
+    if "shift" in caveat.numbers:
+        return f"{caveat.id}_shift"
     if caveat.id in ("local_density", "low_dimension"):
         return f"{caveat.id}_{'bosons' if answer.bosons else 'fermions'}"
     return caveat.id

@@ -83,7 +83,7 @@ CAVEAT_IDS = MappingProxyType(
         "length_computed": "scattering length [m]: worked out from other data",
         "finite_size": "first-order shift -dTc/Tc0 by the finite size of the trap's levels",
         "local_density": "hbar w_max/kTc0 of bosons, relative error of N of fermions: local density is off",
-        "exact_levels_advised": "hbar w_max/kT: only exact levels describe this cloud",
+        "exact_levels_advised": "hbar w_max/kT: only exact levels describe this cloud; shift, if that is the reason",
         "shell_structure": "kT/(hbar w_max): shells of the oscillator show",
         "low_dimension": "hbar w_max/kT of bosons, EF/(hbar w_max) of fermions; frozen_axes",
         "frozen_thermal": "hbar w_max/kT: thermal atoms hardly reach the first level of the tightest axis",
@@ -206,7 +206,8 @@ def _boson_levels(solved: Equilibrium) -> Iterator[Caveat]:
             frozen = _frozen_axes(solved, solved.thermal_energy)
             yield Caveat(id="low_dimension", severity=Severity.REFUSAL, value=over_t, numbers=frozen)
     elif over_t > _LEVEL_OVER_T_TOO_LARGE or shift > _SHIFT_TOO_LARGE:
-        yield Caveat(id="exact_levels_advised", severity=Severity.WARNING, value=over_t)
+        few = MappingProxyType({"shift": shift}) if over_t <= _LEVEL_OVER_T_TOO_LARGE else MappingProxyType({})
+        yield Caveat(id="exact_levels_advised", severity=Severity.WARNING, value=over_t, numbers=few)
     elif over_tc > _LEVEL_OVER_TC_WARNED or shift > _SHIFT_WARNED:
         yield Caveat(id="local_density", severity=Severity.WARNING, value=over_tc)
     if shift > _SHIFT_SHOWN:
@@ -274,14 +275,18 @@ def _fermions(solved: Equilibrium, dipolar: bool) -> Iterator[Caveat]:
     level = _highest_level(solved)
     exact = solved.model is Model.EXACT_LEVELS
     squares = np.sum((reduced_planck * solved.cloud.trap.angular_frequencies) ** 2, axis=-1)
-    number_error = _highest(squares / (4.0 * solved.fermi_energy**2))
-    filled = _lowest(solved.fermi_energy / level)
+    # N at a given mu, to second order in hbar w: -sum (hbar w)^2/(24 (kT)^2) f_1/f_3, which is 1/(4 EF^2) at T = 0.
+    hot = np.logaddexp(0.0, solved.log_fugacity) / solved.classical_phase_space_density
+    number_error = _highest(squares / (24.0 * solved.thermal_energy**2) * hot)
+    # A gas has three dimensions where kT reaches all axes, however few of its levels are filled.
+    cold = np.asarray(solved.thermal_energy / level) < 1.0
+    filled = _lowest(np.where(cold, solved.fermi_energy / level, np.inf))
     shells = _lowest(solved.thermal_energy / level)
     if exact:
         if _lowest(solved.cloud.atoms) < _FEW_ATOMS:
             yield Caveat(id="few_atoms", severity=Severity.NOTE, value=_lowest(solved.cloud.atoms))
     elif filled < _FERMI_LEVELS:
-        frozen = _frozen_axes(solved, solved.fermi_energy / _FERMI_LEVELS)
+        frozen = _frozen_axes(solved, np.maximum(solved.fermi_energy / _FERMI_LEVELS, solved.thermal_energy))
         yield Caveat(id="low_dimension", severity=Severity.REFUSAL, value=filled, numbers=frozen)
     elif number_error > _FERMI_NUMBER_ERROR:
         yield Caveat(id="local_density", severity=Severity.WARNING, value=number_error)
