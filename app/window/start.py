@@ -7,6 +7,7 @@ import os
 import sys
 from dataclasses import dataclass
 from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QSize, Qt, QTimer
@@ -51,7 +52,14 @@ def open_window(wishes: Wishes) -> int:
     A plan that cannot be read is told of in the window; where only pictures are wanted, on stderr with status 1.
     """
     app = application()
-    settings = Settings(wishes.settings_folder)
+    if wishes.pictures is None or wishes.settings_folder is not None:
+        return _run(app, Settings(wishes.settings_folder), wishes)
+    # Pictures show the program, not what one user has made of it, and leave that alone.
+    with TemporaryDirectory(prefix="coldward-") as folder:
+        return _run(app, Settings(Path(folder)), wishes)
+
+
+def _run(app: QApplication, settings: Settings, wishes: Wishes) -> int:
     size = wishes.size or (FIRST_SIZE if wishes.pictures is not None else None)
     window = MainWindow(settings, size=size)
     status: list[int] = []

@@ -146,6 +146,16 @@ def test_pictures_need_no_display_and_show_every_page(tmp_path: Path) -> None:
         assert len(image.convert("RGB").getcolors(1 << 24) or ()) > 200  # a colour field was painted
 
 
+def test_pictures_leave_alone_what_a_user_has_made_of_the_window(tmp_path: Path) -> None:
+    own = {name: str(tmp_path / name) for name in ("XDG_CONFIG_HOME", "XDG_STATE_HOME")}
+    left_behind = tmp_path / "XDG_STATE_HOME" / "coldward" / "recovery" / "session-1.toml"
+    left_behind.parent.mkdir(parents=True)
+    left_behind.write_text("a copy that the window would offer", encoding="utf-8")
+    done = coldward("--pictures", str(tmp_path / "shots"), "--size", "640x480", **own)
+    assert done.returncode == 0, done.stderr
+    assert [path for path in tmp_path.rglob("*") if path.is_file() and path.suffix != ".png"] == [left_behind]
+
+
 def test_pictures_of_a_plan_that_cannot_be_read_are_refused_in_one_sentence(tmp_path: Path) -> None:
     plan = tmp_path / "bad.toml"
     plan.write_text("coldward = 1\n[cloud]\natoms = 'many'\n")
