@@ -6,10 +6,11 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from enum import Enum, auto
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
+from app.plan_field import Entry, PlanError, PlanField
+from app.trap_choices import TrapChoice
 from app.units import (
     ATOM_NUMBER,
     DEPTH,
@@ -25,16 +26,11 @@ from app.units import (
     TEMPERATURE,
     THREE_BODY_RATE,
     TWO_BODY_RATE,
-    Kind,
     Quantity,
 )
 
 if TYPE_CHECKING:
     from physics.cloud import Model
-
-
-class PlanError(ValueError):
-    """A plan that cannot be read, or a value that no plan can have. The message is one sentence for the user."""
 
 
 MOST_SPIN_STATES = 20
@@ -61,18 +57,6 @@ class SpeciesChoice:
             raise PlanError("give either a scattering length or a magnetic field, not both")
         if self.spin_components is not None and not 1 <= self.spin_components <= MOST_SPIN_STATES:
             raise PlanError(f"spin_components must be from 1 to {MOST_SPIN_STATES}, got {self.spin_components}")
-
-
-@dataclass(frozen=True, kw_only=True)
-class TrapChoice:
-    """A harmonic trap: ordinary frequencies along its three axes [Hz], and optionally its depth [J]."""
-
-    frequencies: tuple[Quantity, Quantity, Quantity]
-    depth: Quantity | None = None
-
-    def __post_init__(self) -> None:
-        if len(self.frequencies) != 3:
-            raise PlanError(f"frequencies must be three, got {len(self.frequencies)}")
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -142,48 +126,6 @@ class Plan:
             raise PlanError(f"title must be one line of at most {LONGEST_TITLE} characters")
 
 
-class Entry(Enum):
-    """How a field is written."""
-
-    TEXT = auto()
-    SPECIES = auto()
-    STATE = auto()
-    WHOLE = auto()
-    MODEL = auto()
-    QUANTITY = auto()
-    FREQUENCIES = auto()
-
-
-@dataclass(frozen=True, kw_only=True)
-class PlanField:
-    """One key of a plan.
-
-    path : "section.key" in the file, and the attributes of Plan
-    label : what forms call it
-    tip : what it means, for tool tips and help
-    flag : command-line option
-    kind : of quantities
-    excludes : other keys that setting this one clears
-    """
-
-    path: str
-    label: str
-    tip: str
-    entry: Entry
-    flag: str
-    kind: Kind | None = None
-    required: bool = False
-    excludes: tuple[str, ...] = ()
-
-    @property
-    def section(self) -> str:
-        return self.path.rpartition(".")[0]
-
-    @property
-    def name(self) -> str:
-        return self.path.rpartition(".")[2]
-
-
 def _other_targets(name: str) -> tuple[str, ...]:
     return tuple(f"target.{other}" for other in TARGETS if other != name)
 
@@ -247,7 +189,8 @@ _FIELDS = (
         entry=Entry.FREQUENCIES,
         kind=FREQUENCY,
         flag="--frequencies",
-        tip="Ordinary frequencies along the three axes, in Hz: ω/2π. 2π×120 Hz is read as 120 Hz.",
+        tip="Ordinary frequencies along the three axes, in Hz: ω/2π. 2π×120 Hz is read as 120 Hz. They "
+        "replace beams and coils.",
         required=True,
     ),
     PlanField(
@@ -257,6 +200,13 @@ _FIELDS = (
         kind=DEPTH,
         flag="--depth",
         tip="Energy from the bottom to the lowest way out, as a temperature, a frequency or an energy.",
+    ),
+    PlanField(
+        path="trap.gravity",
+        label="Gravity",
+        entry=Entry.GRAVITY,
+        flag="--gravity",
+        tip='Direction in which atoms fall, such as "0, 0, -1", or "off"; trap frequencies hold its effect already.',
     ),
     PlanField(
         path="cloud.atoms",

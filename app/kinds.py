@@ -29,6 +29,9 @@ _BY_SI_UNIT: Mapping[str, tuple[tuple[str, str | Decimal], ...]] = {
     "J": (("peV", _E.scaleb(-12)), ("neV", _E.scaleb(-9)), ("µeV", _E.scaleb(-6)), ("eV", _E), ("J", "1")),
     "J/T": (("muB", repr(bohr_magneton)), ("J/T", "1")),
     "K/s": (("nK/s", "1e-9"), ("µK/s", "1e-6"), ("K/s", "1")),
+    "W": (("µW", "1e-6"), ("mW", "1e-3"), ("W", "1")),
+    "T/m": (("G/cm", "1e-2"), ("T/m", "1")),
+    "T/m^2": (("G/cm^2", "1"), ("T/m^2", "1")),
     "1/s": (("1/s", "1"),),
     "1/Hz": (("1/Hz", "1"),),
     "m^2": (("m^2", "1"), ("cm^2", "1e-4")),
@@ -102,6 +105,21 @@ SCATTERING_LENGTH = Kind(
 )
 MAGNETIC_FIELD = Kind(
     name="magnetic field", si_unit="T", units=("G", "mG", "mT", "T"), low=0.0, high=10.0, example="155.2 G"
+)
+WAVELENGTH = Kind(name="wavelength", si_unit="m", units=("nm", "µm"), low=1e-7, high=1e-4, example="1064 nm")
+BEAM_POWER = Kind(name="beam power", si_unit="W", units=("W", "mW", "µW"), low=0.0, high=1e5, example="2.5 W")
+BEAM_WAIST = Kind(name="beam waist", si_unit="m", units=("µm", "mm"), low=1e-7, high=0.1, example="70 µm")
+BEAM_QUALITY = Kind(name="beam quality", si_unit="", units=("",), low=1.0, high=1000.0, example="1.1")
+POSITION = Kind(name="position", si_unit="m", units=("µm", "mm", "m"), low=-10.0, high=10.0, example="0 µm")
+BIAS_FIELD = Kind(name="bias field", si_unit="T", units=("G", "mG", "mT", "T"), low=-10.0, high=10.0, example="1.5 G")
+FIELD_GRADIENT = Kind(
+    name="field gradient", si_unit="T/m", units=("G/cm", "T/m"), low=-1e5, high=1e5, example="30.5 G/cm"
+)
+FIELD_CURVATURE = Kind(
+    name="field curvature", si_unit="T/m^2", units=("G/cm^2", "T/m^2"), low=-1e9, high=1e9, example="150 G/cm^2"
+)
+RADIO_FREQUENCY = Kind(
+    name="radio frequency", si_unit="Hz", units=("MHz", "kHz", "Hz"), low=1.0, high=1e11, example="2.1 MHz"
 )
 LIFETIME = Kind(name="lifetime", si_unit="s", units=("s", "ms", "min", "h"), low=1e-6, high=1e9, example="60 s")
 TWO_BODY_RATE = Kind(

@@ -1,7 +1,7 @@
 """The Plan and everything that makes one: files, flags, forms.
 
-The dataclasses and the table of fields are in `app.choices`, the file format in `app.plan_file`; other modules import
-them from here.
+The dataclasses and the tables of fields are in `app.choices` and `app.trap_choices`, the file format in
+`app.plan_file`; other modules import them from here.
 """
 
 from __future__ import annotations
@@ -15,25 +15,28 @@ from app.choices import (
     PLAN_FIELDS,
     TARGETS,
     CloudChoice,
-    Entry,
     LossesChoice,
     Plan,
-    PlanError,
-    PlanField,
     SpeciesChoice,
     TargetChoice,
-    TrapChoice,
 )
+from app.plan_field import Entry, PlanError, PlanField
 from app.plan_file import FORMAT, build_plan, entries_of, parse_plan, read_plan
 from app.plan_saving import save_plan, write_plan
+from app.trap_choices import BEAM_FIELDS, BEAMS, COILS, COILS_FIELDS, BeamChoice, CoilsChoice, Gravity, TrapChoice
 
 __all__ = [
+    "BEAM_FIELDS",
+    "COILS_FIELDS",
     "DEFAULT_PLAN",
     "FORMAT",
     "PLAN_FIELDS",
     "TARGETS",
+    "BeamChoice",
     "CloudChoice",
+    "CoilsChoice",
     "Entry",
+    "Gravity",
     "LossesChoice",
     "Plan",
     "PlanError",
@@ -49,6 +52,7 @@ __all__ = [
 ]
 
 
+_FLAGS = {path: field.flag for path, field in PLAN_FIELDS.items()}
 _NO_NAMES: Mapping[str, str] = MappingProxyType({})
 
 
@@ -62,7 +66,8 @@ def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: Mapping[str
     where : what errors call a field, by its dotted path; by default, and where the path is not named, its flag
 
     A new species drops what was said of the other one's state, spin states, scattering length, field and losses by
-    collision; a scattering length drops a field and the other way round; a target drops the other targets.
+    collision; a scattering length drops a field and the other way round; a target drops the other targets; trap
+    frequencies drop beams and coils.
 
     Raises
     ------
@@ -83,7 +88,10 @@ def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: Mapping[str
         for other in PLAN_FIELDS[path].excludes:
             if not texts.get(other, "").strip():
                 entries.pop(other, None)
-    changed = build_plan(entries, lambda field: where.get(field.path, field.flag))
+    if texts.get("trap.frequencies", "").strip():
+        entries.pop(BEAMS, None)
+        entries.pop(COILS, None)
+    changed = build_plan(entries, lambda path: where.get(path) or _FLAGS.get(path, path))
     return changed if plan is None else replace(changed, unused=plan.unused, source=plan.source)
 
 

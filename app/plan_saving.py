@@ -3,95 +3,150 @@
 from __future__ import annotations
 
 import os
-import re
+import tomllib
 from typing import TYPE_CHECKING, Any
 
-from app.choices import PLAN_FIELDS, Plan, PlanError, PlanField
+from app.choices import PLAN_FIELDS, Plan
 from app.files import write_atomically
+from app.plan_field import PlanError, PlanField
 from app.plan_file import FORMAT, entries_of, parse_plan
-from app.units import Quantity
+from app.toml_blocks import blocks_of, with_lines
+from app.toml_entries import drop, missing_lines, put, section_text, written
+from app.trap_choices import TrapChoice
+from app.trap_saving import beam_text, coils_text, put_beams_and_coils, rearranged, with_new_keys
 
 if TYPE_CHECKING:
-    from enum import Enum
+    from collections.abc import Iterable, Mapping
 
     from tomlkit import TOMLDocument
-
-_BARE_NUMBER = re.compile(r"-?(0|[1-9][0-9]*)(\.[0-9]+)?([eE][+-]?[0-9]+)?")
 
 
 def write_plan(plan: Plan, previous_text: str | None = None) -> str:
     """The text of a plan file.
 
     previous_text : the file as it was; by default the one that the plan came from. Its comments, its layout and the
-        sections that this version does not use are kept, and so is every entry whose meaning did not change.
+        sections that this version does not use are kept, and so is every entry whose meaning did not change. Beams and
+        coils move with the comments above them; where they stand in no sections of their own (in one line, say), and
+        others are wanted, all of [trap] is written anew.
+
+    Raises
+    ------
+    PlanError
+        The layout of the file is one that the plan cannot be put into.
     """
     previous = plan.source if previous_text is None else previous_text
     previous = previous.removeprefix("\ufeff")
-    old = entries_of(parse_plan(previous, "the file as it was")) if previous.strip() else {}
-    new = entries_of(plan)
-    changed = [path for path in PLAN_FIELDS if _written(old.get(path)) != _written(new.get(path))]
-    if previous.strip() and not changed:
+    if not previous.strip():
+        return _new_text(plan)
+    before = parse_plan(previous, "the file as it was")
+    if _says_the_same(before, plan):
         return previous
+    text = _with_changes(previous, before, plan)
+    if text is None or not _reads_as(text, plan):
+        text = _with_new_trap(previous, before, plan)
+    if _reads_as(text, plan):
+        return text
+    raise PlanError("the plan cannot be put into a file of this layout: save it under another name")
 
+
+def _says_the_same(one: Plan, other: Plan) -> bool:
+    a, b = entries_of(one), entries_of(other)
+    return a.keys() == b.keys() and all(written(a[path]) == written(b[path]) for path in a)
+
+
+def _reads_as(text: str, plan: Plan) -> bool:
+    try:
+        return _says_the_same(parse_plan(text, "the new file"), plan)
+    except PlanError:
+        return False
+
+
+def _new_text(plan: Plan) -> str:
+    """A plan that had no file: sections in the order of the fields."""
     import tomlkit
 
-    if previous.strip():
-        document = tomlkit.parse(previous)
-    else:
-        document = tomlkit.document()
-        document["coldward"] = FORMAT
-    for path in changed:
-        field = PLAN_FIELDS[path]
-        if path in new:
-            _put(document, field, new[path])
-        else:
-            _drop(document, field)
+    document = tomlkit.parse(f"coldward = {FORMAT}\n")
+    _put_fields(document, {}, entries_of(plan), PLAN_FIELDS)
+    text = tomlkit.dumps(document)
+    return text if plan.trap.harmonic else rearranged(text, None, plan.trap) or text
+
+
+def _with_changes(previous: str, before: Plan, plan: Plan) -> str | None:
+    """The file with what differs; None where its layout does not allow it."""
+    import tomlkit
+    from tomlkit.exceptions import TOMLKitError
+
+    text: str | None = previous
+    made = not (plan.trap.harmonic and before.trap.harmonic)
+    try:
+        if made:
+            text = rearranged(previous, before.trap, plan.trap)
+        if text is None:
+            return None
+        document = tomlkit.parse(_with_new_lines(with_new_keys(text, plan.trap) if made else text, plan))
+    except (tomllib.TOMLDecodeError, TOMLKitError):  # the sections that came are at odds with those that are there
+        return None
+    if made:
+        put_beams_and_coils(document, before.trap, plan.trap)
+    _put_fields(document, entries_of(before), entries_of(plan), PLAN_FIELDS)
     return tomlkit.dumps(document)
 
 
-def _written(entry: object) -> object:
-    """What an entry says in the file: two quantities are the same when their texts are."""
-    if isinstance(entry, tuple):
-        return tuple(_written(part) for part in entry)
-    return entry.text if isinstance(entry, Quantity) else entry
+def _with_new_lines(text: str, plan: Plan) -> str:
+    """The file with a line for each field that it has no entry for, in sections that it has."""
+    data, blocks, entries = tomllib.loads(text), blocks_of(text), entries_of(plan)
+    for section in {field.section for field in PLAN_FIELDS.values()}:
+        places = [place for place, block in enumerate(blocks) if block.path == section]
+        table = data.get(section) if section else data
+        if len(places) == 1 and isinstance(table, dict):
+            fields = {field.name: field for field in PLAN_FIELDS.values() if field.section == section}
+            own = {name: entries[field.path] for name, field in fields.items() if field.path in entries}
+            blocks[places[0]] = with_lines(blocks[places[0]], missing_lines(table, fields, own))
+    return "".join(block.text for block in blocks)
 
 
-def _put(document: TOMLDocument, field: PlanField, entry: Any) -> None:
+def _with_new_trap(previous: str, before: Plan, plan: Plan) -> str:
+    """The file with all of its trap written anew, at its end."""
     import tomlkit
 
-    table: Any = document
-    if field.section:
-        if field.section not in document:
-            document[field.section] = tomlkit.table()
-        table = document[field.section]
-    if isinstance(entry, tuple):
-        texts = [quantity.text for quantity in entry]
-        present = table.get(field.name)
-        if isinstance(present, list) and len(present) == len(texts):
-            for index, text in enumerate(texts):  # one by one: the list's own comments and line breaks stay
-                if present[index] != text:
-                    present[index] = text
+    document = tomlkit.parse(previous)
+    del document["trap"]
+    others = [path for path, field in PLAN_FIELDS.items() if field.section != "trap"]
+    _put_fields(document, entries_of(before), entries_of(plan), others)
+    text = tomlkit.dumps(document).rstrip()
+    return "\n\n".join([text, *_trap_sections(plan.trap)])
+
+
+def _trap_sections(trap: TrapChoice) -> list[str]:
+    fields = {field.name: field for field in PLAN_FIELDS.values() if field.section == "trap"}
+    entries = {name: value for name in fields if (value := getattr(trap, name)) is not None}
+    sections = [section_text("[trap]", fields, entries)] if entries else []
+    sections += [beam_text(beam) for beam in trap.beams]
+    return sections if trap.coils is None else [*sections, coils_text(trap.coils)]
+
+
+def _put_fields(
+    document: TOMLDocument, before: Mapping[str, object], after: Mapping[str, object], paths: Iterable[str]
+) -> None:
+    for path in paths:
+        if written(before.get(path)) == written(after.get(path)):
+            continue
+        field = PLAN_FIELDS[path]
+        if path in after:
+            put(_table(document, field), field, after[path])
         else:
-            table[field.name] = texts
-        return
-    table[field.name] = _value(field, entry)
+            drop(_table(document, field), field)
 
 
-def _value(field: PlanField, entry: Any) -> Any:
-    import tomlkit
+def _table(document: TOMLDocument, field: PlanField) -> Any:
+    """The table that a field stands in, made where there is none yet."""
+    if not field.section:
+        return document
+    if field.section not in document:
+        import tomlkit
 
-    if isinstance(entry, Quantity):
-        bare = field.section == "target" and _BARE_NUMBER.fullmatch(entry.text)
-        return tomlkit.value(entry.text) if bare else entry.text
-    if isinstance(entry, str | int):
-        return entry
-    choice: Enum = entry
-    return choice.value
-
-
-def _drop(document: TOMLDocument, field: PlanField) -> None:
-    table: Any = document[field.section] if field.section else document
-    del table[field.name]  # not remove: a table whose parts stand apart in the file has none
+        document[field.section] = tomlkit.table()
+    return document[field.section]
 
 
 def save_plan(plan: Plan, path: str | os.PathLike[str], previous_text: str | None = None) -> str:

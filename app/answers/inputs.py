@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.losses import typed_losses
+from app.plan_field import PlanError
 from physics.cloud import Cloud
 from physics.constants import bohr_radius
 from physics.scattering import LengthInUse, dipolar_length, length_at_field, scattering_length_at_field, tuning
@@ -37,10 +38,19 @@ def inputs_of(plan: Plan) -> dict[str, Quantity]:
     return {
         "atoms": plan.cloud.atoms,
         "temperature": plan.cloud.temperature,
-        **{f"frequency {axis}": quantity for axis, quantity in enumerate(plan.trap.frequencies)},
+        **{f"frequency {axis}": quantity for axis, quantity in enumerate(_frequencies(plan))},
         **{name: quantity for name, quantity in optional.items() if quantity is not None},
         **typed_losses(plan),
     }
+
+
+def _frequencies(plan: Plan) -> tuple[Quantity, Quantity, Quantity]:
+    if plan.trap.frequencies is None:
+        raise PlanError(
+            f"this version needs trap frequencies, and the trap of this plan is made of {plan.trap.makers}: it is kept "
+            "as it is, without an answer"
+        )
+    return plan.trap.frequencies
 
 
 def values_of(plan: Plan) -> dict[str, float | Array]:

@@ -44,7 +44,10 @@ def temperature(sheet: Sheet) -> Leaf:
 
 @once
 def frequencies(sheet: Sheet) -> tuple[Leaf, Leaf, Leaf]:
-    first, second, third = sheet.answer.plan.trap.frequencies
+    quantities = sheet.answer.plan.trap.frequencies
+    if quantities is None:
+        raise ValueError("the plan has no trap frequencies")
+    first, second, third = quantities
     return (
         _typed(sheet, "f₁", "trap frequency along axis 1", first, "Hz"),
         _typed(sheet, "f₂", "trap frequency along axis 2", second, "Hz"),

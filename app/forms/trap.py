@@ -28,14 +28,20 @@ class TrapForm(Form):
         self.depth_field.setPlaceholderText("not given")
 
     def show_plan(self, plan: Plan) -> None:
-        for field, quantity in zip(self.frequencies, plan.trap.frequencies, strict=True):
+        trap = plan.trap
+        for field, quantity in zip(self.frequencies, trap.frequencies or (None,) * len(AXES), strict=True):
             field.set_quantity(quantity)
-        self.depth_field.set_quantity(plan.trap.depth)
+            field.setEnabled(trap.harmonic)
+            field.setPlaceholderText("" if trap.harmonic else "not given")
+        self.depth_field.set_quantity(trap.depth)
+        self.depth_field.setEnabled(trap.harmonic)
+        self.show_note("trap.depth", "" if trap.harmonic else f"Made of {trap.makers}, as the plan file says.")
 
 
 def _put(place: int, plan: Plan, quantity: Quantity | None) -> Plan:
-    frequencies = list(plan.trap.frequencies)
+    assert plan.trap.frequencies is not None  # else the fields are off
     assert quantity is not None  # the fields are not optional
+    frequencies = list(plan.trap.frequencies)
     frequencies[place] = quantity
     x, y, z = frequencies
     return replace(plan, trap=replace(plan.trap, frequencies=(x, y, z)))
