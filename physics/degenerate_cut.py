@@ -90,16 +90,17 @@ def _bosons(d: float, occupation: Floats, eta: Floats, numbers: tuple[Floats, Fl
         alpha = np.where(saturated, 0.0, np.maximum(alpha + step, 0.0))
         if np.all(np.abs(step) < 1e-12 * (1.0 + alpha)):
             break
-    peak = np.asarray(bose(1.5, alpha))
-    for j in range(1, _NEAR + 1):
-        peak = peak - np.exp(-j * alpha) * (1.0 - incomplete_gamma(1.5, j * eta)) / j**1.5
+    j = np.arange(1.0, _NEAR + 1.0)
+    missing_momenta = (1.0 - incomplete_gamma(1.5, np.multiply.outer(eta, j))) / j**1.5
+    peak = _bose(1.5, alpha) - np.sum(np.exp(-np.multiply.outer(alpha, j)) * missing_momenta, axis=-1)
     fraction = np.where(saturated, 1.0 - full / wanted, 0.0)
     return Degeneracy(peak_phase_space_density=peak, condensate_fraction=fraction, saturated=saturated)
 
 
 def _bose(order: float, alpha: Floats) -> Floats:
     if order <= 4.0 and (2.0 * order).is_integer():
-        return np.asarray(bose(order, alpha))
+        # One value by itself is looked up in a tenth of the time.
+        return np.full(alpha.shape, bose(order, alpha.item())) if alpha.size == 1 else np.asarray(bose(order, alpha))
     j = np.arange(1, _SERIES + 1)
     total: Floats = np.exp(-alpha[..., np.newaxis] * j) @ j**-order
     return total

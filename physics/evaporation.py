@@ -22,7 +22,7 @@ import numpy as np
 from physics.checks import Floats
 from physics.constants import boltzmann
 from physics.evaporation_budget import Budget, Ledger, StageSummary, efficiencies
-from physics.evaporation_rates import ATOM_PROCESSES, ENERGY_PROCESSES, Kinetics
+from physics.evaporation_rates import ATOM_PROCESSES, ENERGY_PROCESSES, FEWEST_ATOMS, Kinetics
 from physics.evaporation_rows import Rows, joined, rows_of
 from physics.evaporation_target import Target
 from physics.gas import Gas
@@ -42,9 +42,6 @@ ROWS = 240
 
 FEWEST_ROWS = 12
 """Of a stage."""
-
-FEWEST_ATOMS = 100.0
-"""Atom number at which a simulation ends: the kinetics is one of many atoms."""
 
 
 class EndReason(Enum):

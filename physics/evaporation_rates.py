@@ -13,7 +13,7 @@ from __future__ import annotations
 
 import math
 from enum import Enum
-from typing import NamedTuple
+from typing import NamedTuple, Protocol
 
 from physics.checks import Floats
 from physics.constants import boltzmann
@@ -21,10 +21,13 @@ from physics.gas import Gas
 from physics.kinetic_tables import Averages
 from physics.losses import Losses, noise_heating_rate
 from physics.runge_kutta import OutOfRange
-from physics.stage_trap import StageTrap, TrapNow
+from physics.stage_trap import TrapNow
 
 LOWEST_TRUNCATION = 0.1
 """eta below which a cloud counts as no longer trapped."""
+
+FEWEST_ATOMS = 100.0
+"""Atom number at which all counts as lost: the kinetics is one of many atoms."""
 
 
 class Process(Enum):
@@ -95,13 +98,24 @@ class CloudNow(NamedTuple):
         return math.sqrt(2.0) * met * self.cross_section * self.speed
 
 
+class MovingTrap(Protocol):
+    """A trap as a function of time."""
+
+    @property
+    def bottom_exponent(self) -> float: ...
+
+    def now(self, time: float) -> TrapNow: ...
+
+    def averages(self, now: TrapNow, share: float) -> Averages | None: ...
+
+
 class Kinetics:
     """The right-hand side of the kinetics: of ln N, ln E and the budgets of atoms and energy by process.
 
     A budget counts atoms lost, and energy gained, since its start.
     """
 
-    def __init__(self, gas: Gas, losses: Losses, trap: StageTrap) -> None:
+    def __init__(self, gas: Gas, losses: Losses, trap: MovingTrap) -> None:
         self.gas, self.trap = gas, trap
         self._background = 0.0 if losses.background_lifetime is None else 1.0 / float(losses.background_lifetime)
         self._two = float(losses.two_body or 0.0)
@@ -118,7 +132,10 @@ class Kinetics:
         ------
         OutOfRange : where the trap cannot hold so much energy, or hardly.
         """
-        trap = self.trap.now(time)
+        return self.cloud_in(self.trap.now(time), atoms, energy)
+
+    def cloud_in(self, trap: TrapNow, atoms: float, energy: float) -> CloudNow:
+        """The same in the trap as it is at one time."""
         averages = self.trap.averages(trap, energy / atoms / trap.depth)
         if averages is None:
             raise OutOfRange

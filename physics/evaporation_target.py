@@ -47,10 +47,10 @@ class Target:
             if math.isnan(here):
                 raise ValueError("a target reduced temperature needs a trap that has frequencies")
             return here - self.reduced_temperature
-        solved_cheaply = occupation(gas, cloud)
+        occupied = occupation(gas, cloud)
         if self.peak_phase_space_density is not None:
-            if _MOST_ENHANCED * solved_cheaply < self.peak_phase_space_density:
-                return 1.0
+            if _MOST_ENHANCED * occupied < self.peak_phase_space_density:
+                return self.peak_phase_space_density - occupied
             solved = degeneracy_of(gas, bottom_exponent, [cloud])
             if solved.saturated[0]:
                 return -1.0 if self.peak_phase_space_density < 2.6124 else 1.0
@@ -59,6 +59,6 @@ class Target:
             raise ValueError("a target of condensate atoms is one for bosons")
         assert self.condensate_atoms is not None
         fraction = 0.0
-        if solved_cheaply > 0.5:
+        if occupied > 0.5:
             fraction = float(degeneracy_of(gas, bottom_exponent, [cloud]).condensate_fraction[0])
         return self.condensate_atoms - fraction * cloud.atoms

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import NamedTuple
 
 import numpy as np
@@ -38,87 +38,28 @@ class TrapNow(NamedTuple):
         return 1.5 * self.depth_rate + self.volume_rate + self.rim_rate
 
 
-class StageTrap:
-    """A trap while its controls follow their courses over a stretch without corners.
+class TrapCurve:
+    """The trap between points along one line of its controls, a smooth function of the place on that line.
 
     Attributes
     ----------
-    begin, end : float. [s] Within the stage. The end is that of the stretch, or where the trap holds nothing any more.
-    held : bool. Whether the trap holds atoms to the end of the stretch.
+    low, high : float. Range of places.
     bottom_exponent : float. d of the volume curve at the bottom of the trap.
     """
 
-    def __init__(
-        self, courses: Mapping[Control, Course], path: TrapPath, begin: float, end: float, *, places: int | None = None
-    ) -> None:
-        self.courses = {control: course.within(begin, end) for control, course in courses.items()}
-        self.begin, self.end = begin, end
-        self._constant: TrapNow | None = None
-        moving = [course for course in self.courses.values() if not course.still]
-        self._single = moving[0] if len(moving) == 1 else None
-        single = self._single
-        self._logarithmic = single is not None and min(single.value(begin), single.value(end)) > 0.0
-        times = self._times(moving, begin, end, places or path.nodes)
-        points: list[TrapPoint] = []
-        for time in times:
-            point = path.at({control: course.value(time) for control, course in self.courses.items()})
-            if point.depth is None:
-                break
-            points.append(point)
-        self.held = len(points) == len(times)
-        self.reason = "" if self.held else point.reason
-        if not points:
-            self.end = begin
-            return
-        self.end = float(times[len(points) - 1])
-        order = self._places(times[: len(points)])
+    def __init__(self, places: Floats, points: Sequence[TrapPoint]) -> None:
         # Along a falling control the places fall: turned round, so that they increase.
-        if len(order) > 1 and order[1] < order[0]:
-            order, points = order[::-1], points[::-1]
-        self._spline = Spline(order, np.array([_numbers(point) for point in points]))
-        self._table = kinetic_table(order, [point.curve for point in points])
+        if len(places) > 1 and places[1] < places[0]:
+            places, points = places[::-1], points[::-1]
+        self._spline = Spline(places, np.array([_numbers(point) for point in points]))
+        self._table = kinetic_table(places, [point.curve for point in points])
         self.bottom_exponent = points[0].curve.exponent
-        self._low, self._high = float(order[0]), float(order[-1])
-        if not moving:
-            self._constant = self._at(self._low, 0.0)
+        self.low, self.high = float(places[0]), float(places[-1])
 
-    def _times(self, moving: list[Course], begin: float, end: float, nodes: int) -> Floats:
-        """Times of the points: even steps of one moving control, of all logarithms together where several move."""
-        if not moving:
-            return np.array([begin])
-        if self._single is None:
-            nodes = 3 * nodes
-        fine = np.linspace(begin, end, 20 * nodes + 1)
-        path = np.zeros(len(fine))
-        for course in moving:
-            values = course.values(fine)
-            # Of a control that may vanish or change its sign the share of its range counts.
-            scaled = np.log(values) if np.all(values > 0.0) else values / np.ptp(values)
-            path[1:] += np.cumsum(np.abs(np.diff(scaled)))
-        even: Floats = np.interp(np.linspace(0.0, path[-1], nodes), path, fine)
-        even[0], even[-1] = begin, end
-        return even
-
-    def _places(self, times: Floats) -> Floats:
-        return np.array([self._place(t)[0] for t in times])
-
-    def _place(self, time: float) -> tuple[float, float]:
-        """Where along the stretch, and how fast that changes: ln of a single control, itself, or the time."""
-        course = self._single
-        if course is None:
-            return time, 1.0
-        value, slope = course.value(time), course.slope(time)
-        return (math.log(value), slope / value) if self._logarithmic else (value, slope)
-
-    def now(self, time: float) -> TrapNow:
-        """The trap at a time within the stage."""
-        if self._constant is not None:
-            return self._constant
-        place, speed = self._place(time)
+    def at(self, place: float, speed: float) -> TrapNow:
+        """The trap at a place, moving along the line at a speed per second."""
         # A rounding beyond the ends.
-        return self._at(min(max(place, self._low), self._high), speed)
-
-    def _at(self, place: float, speed: float) -> TrapNow:
+        place = min(max(place, self.low), self.high)
         values, slopes = self._spline.both(place)
         depth, volume, rim, top, x, y, z, light = values
         d_depth, d_volume, d_rim, _, dx, dy, dz, _ = slopes
@@ -141,6 +82,78 @@ class StageTrap:
         """Averages of a cloud whose mean energy is a share of the depth; None where no cut cloud has so much."""
         excess = now.highest / share - 1.0
         return self._table.averages(now.place, math.log(excess)) if excess > 0.0 else None
+
+
+class StageTrap:
+    """A trap while its controls follow their courses over a stretch without corners.
+
+    Attributes
+    ----------
+    begin, end : float. [s] Within the stage. The end is that of the stretch, or where the trap holds nothing any more.
+    held : bool. Whether the trap holds atoms to the end of the stretch; `reason` says why not.
+    """
+
+    def __init__(self, courses: Mapping[Control, Course], path: TrapPath, begin: float, end: float) -> None:
+        self.courses = {control: course.within(begin, end) for control, course in courses.items()}
+        self.begin, self.end = begin, end
+        self._constant: TrapNow | None = None
+        moving = [course for course in self.courses.values() if not course.still]
+        self._single = moving[0] if len(moving) == 1 else None
+        single = self._single
+        self._logarithmic = single is not None and min(single.value(begin), single.value(end)) > 0.0
+        times = self._times(moving, begin, end, path.nodes)
+        points: list[TrapPoint] = []
+        for time in times:
+            point = path.at({control: course.value(time) for control, course in self.courses.items()})
+            if point.depth is None:
+                break
+            points.append(point)
+        self.held = len(points) == len(times)
+        self.reason = "" if self.held else point.reason
+        if not points:
+            self.end = begin
+            return
+        if not self.held:
+            self.end = float(times[len(points) - 1])
+        self._curve = TrapCurve(np.array([self._place(t)[0] for t in times[: len(points)]]), points)
+        self.bottom_exponent = self._curve.bottom_exponent
+        if not moving:
+            self._constant = self._curve.at(self._curve.low, 0.0)
+
+    def _times(self, moving: list[Course], begin: float, end: float, nodes: int) -> Floats:
+        """Times of the points: even steps of one moving control, of all logarithms together where several move."""
+        if not moving:
+            return np.array([begin])
+        if self._single is None:
+            nodes = 3 * nodes
+        fine = np.linspace(begin, end, 20 * nodes + 1)
+        path = np.zeros(len(fine))
+        for course in moving:
+            values = course.values(fine)
+            # Of a control that may vanish or change its sign the share of its range counts.
+            scaled = np.log(values) if np.all(values > 0.0) else values / np.ptp(values)
+            path[1:] += np.cumsum(np.abs(np.diff(scaled)))
+        even: Floats = np.interp(np.linspace(0.0, path[-1], nodes), path, fine)
+        even[0], even[-1] = begin, end
+        return even
+
+    def _place(self, time: float) -> tuple[float, float]:
+        """Where along the stretch, and how fast that changes: ln of a single control, itself, or the time."""
+        course = self._single
+        if course is None:
+            return time, 1.0
+        value, slope = course.value(time), course.slope(time)
+        return (math.log(value), slope / value) if self._logarithmic else (value, slope)
+
+    def now(self, time: float) -> TrapNow:
+        """The trap at a time within the stage."""
+        if self._constant is not None:
+            return self._constant
+        return self._curve.at(*self._place(time))
+
+    def averages(self, now: TrapNow, share: float) -> Averages | None:
+        """As of `TrapCurve`."""
+        return self._curve.averages(now, share)
 
 
 def _numbers(point: TrapPoint) -> tuple[float, ...]:
