@@ -38,6 +38,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
     args = build_parser(given[:1] if given[0] in VERBS else VERBS).parse_args(given)
     try:
         return int(args.run(args))
+    except ArithmeticError as error:
+        # Numbers at the edge of what can be given, where a model finds no solution.
+        print(f"coldward: {error}", file=sys.stderr)
+        return 1
     except BrokenPipeError:
         # The reader of a pipe has what it wanted; stdout must not complain once more at exit.
         sys.stdout = None

@@ -50,6 +50,8 @@ class MapPage(Page):
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
         self.plot = self.add_plot("Map of atom number and temperature")
+        # Where no plan can put a cloud there is nothing to answer.
+        self.plot.bounds = (ATOM_NUMBER.low, ATOM_NUMBER.high, TEMPERATURE.low, TEMPERATURE.high)
         self.column.addWidget(self.plot.canvas, 1)
         self.column.addWidget(self.bar)
         self._ground: _Ground | None = None

@@ -13,7 +13,7 @@ from PySide6.QtCore import QObject, Signal
 
 from app.figures.picture import Picture
 from app.window.live_canvas import LiveCanvas
-from app.window.views import View, moved, view_of, zoomed
+from app.window.views import View, kept_within, moved, view_of, zoomed
 
 Source = Callable[[], Picture]
 
@@ -34,6 +34,7 @@ class Plot(QObject):
         super().__init__(canvas)
         self.canvas = canvas
         self.view: View | None = None
+        self.bounds: View | None = None  # beyond which there is nothing to see
         self._source: Source | None = None
         canvas.view_requested.connect(self.set_view)
         canvas.home_requested.connect(self.home)
@@ -68,10 +69,13 @@ class Plot(QObject):
     def set_view(self, view: View | None) -> None:
         """Show this part; None shows the whole. Limits that the axes cannot have are passed over."""
         if view is not None and self._source is not None:
+            picture = self._source()
             try:
-                in_view(self._source(), view)
+                in_view(picture, view)
             except ValueError:
                 return
+            if self.bounds is not None:
+                view = kept_within(picture, view, self.bounds)
         if view == self.view:
             return
         self.view = view

@@ -38,6 +38,13 @@ def boxed(picture: Picture, view: View, x_shares: tuple[float, float], y_shares:
     return _cut(picture, view, x_shares, y_shares)
 
 
+def kept_within(picture: Picture, view: View, bounds: View) -> View:
+    """The view moved, and where it is too wide cut, to lie within bounds."""
+    x = _kept(picture.x, (view[0], view[1]), (bounds[0], bounds[1]))
+    y = _kept(picture.y, (view[2], view[3]), (bounds[2], bounds[3]))
+    return (*x, *y)
+
+
 def stepped(axis: Axis, value: float, direction: int, large: bool) -> float:
     """A value moved by one key's step, kept on the axis."""
     if direction == 0:
@@ -59,6 +66,17 @@ def _about(share: float, factor: float) -> tuple[float, float]:
 def _at(axis: Axis, share: float) -> float:
     low, high = span(axis)
     return to_data(axis, low + min(max(share, 0.0), 1.0) * (high - low))
+
+
+def _kept(axis: Axis, ends: tuple[float, float], bounds: tuple[float, float]) -> tuple[float, float]:
+    if bounds[0] <= ends[0] and ends[1] <= bounds[1]:
+        return ends
+    low, high = (to_drawing(axis, end) for end in ends)
+    least, most = (to_drawing(axis, end) for end in bounds)
+    if high - low >= most - least:
+        return bounds
+    move = max(least - low, 0.0) + min(most - high, 0.0)
+    return max(to_data(axis, low + move), bounds[0]), min(to_data(axis, high + move), bounds[1])
 
 
 def _cut(picture: Picture, view: View, x_shares: tuple[float, float], y_shares: tuple[float, float]) -> View | None:

@@ -112,6 +112,19 @@ def test_a_missing_file_is_one_sentence_and_status_1(tmp_path: Path, capsys: pyt
     assert captured.err.count("\n") == 1
 
 
+def test_a_model_that_finds_no_solution_says_so(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    import app.engine
+
+    def lost(*_args: object) -> None:
+        raise ArithmeticError("the condensate did not converge")
+
+    monkeypatch.setattr(app.engine, "cloud_answer", lost)
+    assert main(["state", *FLAGS]) == 1
+    assert capsys.readouterr().err == "coldward: the condensate did not converge\n"
+
+
 def test_a_command_line_that_cannot_be_read_is_status_2() -> None:
     with pytest.raises(SystemExit) as exit_status:
         main(["state", "--no-such-flag"])
@@ -129,6 +142,41 @@ def test_verbs_load_no_window_toolkit_and_state_no_plotting(verb: str) -> None:
     )
     done = subprocess.run([sys.executable, "-c", code], cwd=ROOT, capture_output=True, text=True, check=True)
     assert done.stderr.strip().splitlines()[-1] == "0 []"
+
+
+MADE = ROOT / "tests" / "data" / "plan_of_beams_and_coils.toml"
+
+
+def test_a_trap_of_beams_and_coils_has_no_answer_yet(capsys: pytest.CaptureFixture[str]) -> None:
+    for verb in ("state", "map", "profile"):
+        assert main([verb, str(MADE)]) == 1
+        captured = capsys.readouterr()
+        assert captured.out == ""
+        assert captured.err.startswith(
+            "coldward: this version needs trap frequencies, and the trap of this plan is made"
+        )
+        assert captured.err.count("\n") == 1
+
+
+def test_frequencies_take_the_place_of_beams_and_coils(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    flags = ["--frequencies", "120 Hz, 120 Hz, 20 Hz"]
+    answer = state_json(capsys, str(MADE), *flags)
+    assert answer["quantities"]["mean_frequency"]["value"] == pytest.approx((120 * 120 * 20) ** (1 / 3), rel=1e-12)
+    clouds = write_clouds(tmp_path, "atoms,fx [Hz],fy [Hz],fz [Hz]\n1e5,120,120,20\n1e5,120,,\n1e5,,,\n")
+    assert main(["table", clouds, "--plan", str(MADE)]) == 1
+    captured = capsys.readouterr()
+    row = next(csv.DictReader(io.StringIO(captured.out)))
+    assert float(row["mean_frequency [Hz]"]) == answer["quantities"]["mean_frequency"]["value"]
+    errors = captured.err.splitlines()
+    assert errors[0].endswith("line 3: fy and fz must be given too, or --frequencies for all rows")
+    assert "line 4: this version needs trap frequencies" in errors[1]
+
+
+def test_what_stands_beside_the_frequencies_is_told_of(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["state", str(MADE.with_name("plan_version_1.toml"))]) == 0
+    text = capsys.readouterr().out
+    assert "The section [trap.beam] of the plan is kept, and not used: the trap frequencies are given." in text
+    assert "The section [ramp] of the plan is kept, and not computed by this version." in text
 
 
 # --- map and profile ---

@@ -12,7 +12,7 @@ from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
 
 from app.figures.picture import Axis, Picture
-from app.kinds import TEMPERATURE
+from app.kinds import ATOM_NUMBER, TEMPERATURE
 from app.quantities import QUANTITIES
 from app.units import read_quantity
 from app.widgets.form import plan_with_entry
@@ -62,6 +62,22 @@ def test_a_view_that_a_logarithmic_axis_cannot_have_gives_way(window: MainWindow
     settle(window)
     assert window.desk.page.active.canvas.picture.y.log
     assert limits(window)[2] > 0.0
+    assert window.banner.text == ""
+
+
+def test_the_map_ends_where_no_cloud_can_be(window: MainWindow, settle: Settle) -> None:
+    for _ in range(8):
+        window.actions_by_id["plot.zoom_out"].trigger()
+        settle(window)
+    assert limits(window) == (ATOM_NUMBER.low, ATOM_NUMBER.high, TEMPERATURE.low, TEMPERATURE.high)
+    for name in ("plot.left", "plot.up", "plot.right", "plot.down"):
+        window.actions_by_id[name].trigger()
+        settle(window)
+        assert limits(window) == (ATOM_NUMBER.low, ATOM_NUMBER.high, TEMPERATURE.low, TEMPERATURE.high)
+    plot = window.desk.map.plot
+    plot.set_view((1e14, 1e16, 1e-8, 1e-6))
+    settle(window)
+    assert limits(window) == pytest.approx((1e13, 1e15, 1e-8, 1e-6))
     assert window.banner.text == ""
 
 
