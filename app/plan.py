@@ -7,8 +7,9 @@ The dataclasses and the tables of fields are in `app.choices` and `app.trap_choi
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import replace
+from dataclasses import fields, is_dataclass, replace
 from types import MappingProxyType
+from typing import Any
 
 from app.choices import (
     DEFAULT_PLAN,
@@ -48,6 +49,7 @@ __all__ = [
     "plan_with",
     "read_plan",
     "save_plan",
+    "with_same_change",
     "write_plan",
 ]
 
@@ -93,6 +95,27 @@ def plan_with(plan: Plan | None, texts: Mapping[str, str], *, where: Mapping[str
         entries.pop(COILS, None)
     changed = build_plan(entries, lambda path: where.get(path) or _FLAGS.get(path, path))
     return changed if plan is None else replace(changed, unused=plan.unused, source=plan.source)
+
+
+def with_same_change(plan: Plan, before: Plan, after: Plan) -> Plan:
+    """A plan with each part, such as the atom number, that differs between two other ones, as the later one has it.
+
+    Raises
+    ------
+    PlanError
+        No plan can have that part beside what this one says.
+    """
+    changes: dict[str, Any] = {}
+    for section in fields(Plan):
+        old, new = getattr(before, section.name), getattr(after, section.name)
+        if old == new or not section.compare:
+            continue
+        if is_dataclass(new) and not isinstance(new, type):
+            parts = {part.name: getattr(new, part.name) for part in fields(new)}
+            parts = {name: value for name, value in parts.items() if value != getattr(old, name)}
+            new = replace(getattr(plan, section.name), **parts)
+        changes[section.name] = new
+    return replace(plan, **changes)
 
 
 def _same_species(before: object, text: str) -> bool:

@@ -41,7 +41,8 @@ class Answers(QObject):
     part_failed = Signal(str)
     _arrived = Signal(int, bool, object)
 
-    # Attributes: cloud, the newest answer; current, whether it answers the newest plan; cloud_count, for tests.
+    # Attributes: cloud, the newest answer; current, whether it answers the newest plan; failure, why the newest plan
+    # that was tried has no answer, or empty; cloud_count, for tests.
 
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
@@ -49,6 +50,7 @@ class Answers(QObject):
         self.cloud: CloudAnswer | None = None
         self.cloud_count = 0
         self.current = False
+        self.failure = ""
         self._plan: Plan | None = None
         self._asked = self._taken = 0  # numbers of the newest part asked for, and of the newest that arrived
         self._view: PartView | None = None  # that waits for a job in steps
@@ -73,10 +75,11 @@ class Answers(QObject):
         self.cloud_count += 1
         try:
             self.cloud = cloud_answer(self._plan)
-        except (ValueError, OSError) as error:
-            self.cloud_failed.emit(str(error))
+        except (ValueError, OSError, ArithmeticError) as error:
+            self.failure = str(error)
+            self.cloud_failed.emit(self.failure)
         else:
-            self.current = True
+            self.current, self.failure = True, ""
             self.cloud_ready.emit(self.cloud)
 
     # ---------------------------------------------------------------- parts
@@ -139,7 +142,7 @@ class Answers(QObject):
             view.show_end(stopped=False)
 
     def _part_trouble(self, error: Exception) -> None:
-        if not isinstance(error, ValueError | OSError):
+        if not isinstance(error, ValueError | OSError | ArithmeticError):
             raise error
         self.part_failed.emit(str(error))
 

@@ -133,7 +133,7 @@ class MainWindow(QMainWindow):
         # what the user does becomes a plan
         desk.bench.plan_edited.connect(document.edit)
         for page in desk.pages:
-            page.plan_edited.connect(document.edit)
+            page.plan_edited.connect(self._edit_on_page)
         # the plan goes to the forms and becomes an answer
         document.loading.connect(desk.bench.discard_edits)
         document.plan_changed.connect(self._plan_changed)
@@ -176,6 +176,20 @@ class MainWindow(QMainWindow):
         self.desk.bench.set_plan(plan)
         self.answers.set_plan(plan)
 
+    def _edit_on_page(self, plan: Plan, what: str, merge_key: str) -> None:
+        """Make the change that a page made to the plan of the answer on show; the present plan may be a newer one."""
+        from app.plan import with_same_change
+
+        shown = self.answers.cloud
+        if shown is None:
+            return
+        try:
+            changed = with_same_change(self.document.plan, shown.plan, plan)
+        except ValueError as error:
+            self.tell(f"{error}.")
+        else:
+            self.document.edit(changed, what, merge_key)
+
     def _show_cloud(self, answer: CloudAnswer) -> None:
         from app.caveat_words import caveat_lines
         from app.words import deciding_figures, verdict
@@ -192,13 +206,14 @@ class MainWindow(QMainWindow):
         self._ask_part()
         self._judge()
 
-    def _cloud_failed(self, sentence: str) -> None:
-        self._mark_stale(sentence)
+    def _cloud_failed(self, _sentence: str) -> None:
+        self._judge()
 
     def _judge(self) -> None:
-        """A field that cannot be read marks everything as not current; once all can, the answer is again."""
-        problems = self.desk.bench.problems
-        if problems:
+        """A field that cannot be read, or a plan without an answer, marks everything as not current; once all is well,
+        the answer is again."""
+        problems = [*self.desk.bench.problems, self.answers.failure]
+        if any(problems):
             self._mark_stale(problems[0])
         elif self.desk.verdict.stale and self.answers.cloud is not None and self.answers.current:
             self._show_cloud(self.answers.cloud)

@@ -125,6 +125,9 @@ def _take_pictures(window: MainWindow, wishes: Wishes) -> int:
     from app.window.pictures import grab_all
 
     assert wishes.pictures is not None
+    if window.answers.cloud is None:
+        print(f"coldward: {window.answers.failure}", file=sys.stderr)
+        return 1
     try:
         for path in grab_all(window, wishes.pictures):
             print(path)

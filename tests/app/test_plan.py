@@ -31,6 +31,7 @@ from app.plan import (
     plan_with,
     read_plan,
     save_plan,
+    with_same_change,
     write_plan,
 )
 from app.plan_file import entries_of
@@ -369,6 +370,17 @@ def test_values_that_flags_leave_alone_are_not_read_again() -> None:
     kept = Quantity("4.167323825 kHz", 2e-7)
     plan = dataclasses.replace(DEFAULT_PLAN, cloud=dataclasses.replace(DEFAULT_PLAN.cloud, temperature=kept))
     assert plan_with(plan, {"cloud.atoms": "2e5"}).cloud.temperature is kept
+
+
+def test_a_change_can_be_made_to_another_plan_too() -> None:
+    hotter = plan_with(DEFAULT_PLAN, {"cloud.temperature": "1 uK"})
+    other = plan_with(DEFAULT_PLAN, {"cloud.atoms": "7e6", "species.key": "6Li", "title": "other"})
+    assert with_same_change(other, DEFAULT_PLAN, hotter) == plan_with(other, {"cloud.temperature": "1 uK"})
+    assert with_same_change(other, DEFAULT_PLAN, DEFAULT_PLAN) == other
+    field = plan_with(DEFAULT_PLAN, {"species.field": "10 G", "title": "field"})
+    assert with_same_change(other, DEFAULT_PLAN, field) == plan_with(other, {"species.field": "10 G", "title": "field"})
+    with pytest.raises(PlanError, match="give either a scattering length or a magnetic field, not both"):
+        with_same_change(plan_with(other, {"species.scattering_length": "9 a0"}), DEFAULT_PLAN, field)
 
 
 # --- saving ----------------------------------------------------------------------------------------------------------
