@@ -31,6 +31,9 @@ from physics.trap_path import TrapPath, TrapPoint
 SLOWEST_TIME = 3600.0
 """Longest ramp where no limit is set. [s]"""
 
+SHALLOWEST = 2.0
+"""Lowest truncation parameter to which a drift may lead."""
+
 
 @dataclass(frozen=True, kw_only=True)
 class Limits:
@@ -171,7 +174,8 @@ class HeldKinetics:
         self.first_depth = line.curve.at(line.place(line.start), 0.0).depth
 
     def goal(self, law: Law, depth: float) -> float:
-        return law.start + law.drift * math.log10(self.first_depth / depth)
+        """Truncation parameter to hold at a depth, not below `SHALLOWEST`."""
+        return max(law.start + law.drift * math.log10(self.first_depth / depth), SHALLOWEST)
 
     def moved(self, law: Law, log_atoms: float, log_energy: float, place: float) -> tuple[CloudNow, float, int]:
         """The cloud, the speed of the place, and what limits it: 0 nothing, 1 a speed, 2 an end of the range."""

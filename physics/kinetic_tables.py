@@ -14,9 +14,9 @@ from typing import NamedTuple, Protocol
 import numpy as np
 
 from physics.checks import Floats
+from physics.curve_shape import CurveShape
 from physics.spline import Spline
 from physics.truncated_averages import relative_number, truncated_averages
-from physics.volume_curve import VolumeCurve
 
 
 class Averages(NamedTuple):
@@ -58,7 +58,7 @@ def _truncations(count: int) -> Floats:
     return np.exp(np.interp(np.linspace(0.0, 1.0, count), [0.0, 0.12, 0.88, 1.0], logs))
 
 
-def _rows(curve: VolumeCurve, count: int) -> tuple[Floats, Floats]:
+def _rows(curve: CurveShape, count: int) -> tuple[Floats, Floats]:
     """L and the averages, all but the last, at the tabulated values of eta."""
     eta = _truncations(count)
     found = truncated_averages(curve, eta)
@@ -80,14 +80,14 @@ def _rows(curve: VolumeCurve, count: int) -> tuple[Floats, Floats]:
 
 
 @lru_cache(maxsize=1024)
-def _coarse_rows(curve: VolumeCurve) -> tuple[Floats, Floats]:
+def _coarse_rows(curve: CurveShape) -> tuple[Floats, Floats]:
     return _rows(curve, _COARSE)
 
 
 class FixedShape:
     """Averages in a trap that keeps its shape."""
 
-    def __init__(self, curve: VolumeCurve) -> None:
+    def __init__(self, curve: CurveShape) -> None:
         position, rows = _rows(curve, _FINE)
         still = np.zeros((len(rows), 1))
         self._spline = Spline(position, np.concatenate([rows, still], axis=-1))
@@ -99,7 +99,7 @@ class FixedShape:
 class ChangingShape:
     """Averages along a stage: cubic in the place along it and in L."""
 
-    def __init__(self, places: Floats, curves: Sequence[VolumeCurve]) -> None:
+    def __init__(self, places: Floats, curves: Sequence[CurveShape]) -> None:
         found = [_coarse_rows(curve) for curve in curves]
         numbers = np.stack([rows[:, 1] for _, rows in found])
         slopes = Spline(places, numbers).slopes(places)
@@ -140,20 +140,20 @@ class ChangingShape:
 @cache
 def power_law_table(exponent: float) -> FixedShape:
     """The table of a power law, made once."""
-    return FixedShape(VolumeCurve(exponent=exponent))
+    return FixedShape(CurveShape(exponent=exponent))
 
 
 @lru_cache(maxsize=64)
-def _single_table(curve: VolumeCurve) -> FixedShape:
+def _single_table(curve: CurveShape) -> FixedShape:
     return FixedShape(curve)
 
 
 @lru_cache(maxsize=32)
-def _changing_table(places: tuple[float, ...], curves: tuple[VolumeCurve, ...]) -> ChangingShape:
+def _changing_table(places: tuple[float, ...], curves: tuple[CurveShape, ...]) -> ChangingShape:
     return ChangingShape(np.array(places), curves)
 
 
-def kinetic_table(places: Floats, curves: Sequence[VolumeCurve]) -> KineticTable:
+def kinetic_table(places: Floats, curves: Sequence[CurveShape]) -> KineticTable:
     """The table along a stage, from the curves at some places along it; remembered for the next ramp."""
     first = curves[0]
     if all(curve.power_law and curve.exponent == first.exponent for curve in curves):

@@ -14,10 +14,10 @@ from types import MappingProxyType
 from typing import Protocol
 
 from physics.constants import planck
+from physics.curve_shape import CurveShape
 from physics.ramps import Control, Knob
 from physics.traps.harmonic import HarmonicTrap
 from physics.truncated_boltzmann import HARMONIC, QUADRUPOLE
-from physics.volume_curve import VolumeCurve
 
 DEPTH, SCALE, GRADIENT = Control(Knob.DEPTH), Control(Knob.SCALE), Control(Knob.GRADIENT)
 
@@ -30,7 +30,7 @@ class TrapPoint:
     ----------
     depth : float or None. [J] Energy above the bottom at which atoms leave; None where the trap holds nothing.
     volume : float. [m^3] W at the depth.
-    curve : VolumeCurve. Shape of W below it.
+    curve : CurveShape. Shape of W below it.
     frequencies : (3,) or None. [Hz] None in a quadrupole, which has none.
     light_heating : float. [W] Energy per atom and second that scattered light leaves.
     reason : text. Why nothing is held.
@@ -38,7 +38,7 @@ class TrapPoint:
 
     depth: float | None
     volume: float = math.nan
-    curve: VolumeCurve = field(default_factory=VolumeCurve)
+    curve: CurveShape = field(default_factory=CurveShape)
     frequencies: tuple[float, float, float] | None = None
     light_heating: float = 0.0
     reason: str = ""
@@ -164,5 +164,5 @@ class QuadrupolePath:
         return TrapPoint(depth=depth, volume=volume, curve=_QUADRUPOLE)
 
 
-_HARMONIC = VolumeCurve(exponent=HARMONIC)
-_QUADRUPOLE = VolumeCurve(exponent=QUADRUPOLE)
+_HARMONIC = CurveShape(exponent=HARMONIC)
+_QUADRUPOLE = CurveShape(exponent=QUADRUPOLE)

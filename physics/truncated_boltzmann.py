@@ -45,7 +45,7 @@ def incomplete_gamma(a: float, x: ArrayLike) -> Floats:
     found = np.empty_like(flat)
     low = flat < a + 1.0
     if np.any(low):
-        found[low] = _power(a, flat[low]) * _kummer(a + 1.0, flat[low], 60)
+        found[low] = _power(a, flat[low]) * _kummer(a + 1.0, flat[low], 40)
     high = flat[~low]
     # 1 - Q with Q a finite sum of positive terms, after erfc for half-integers.
     tail, order = (np.zeros_like(high), 0.0) if twice % 2 == 0 else (_erfc(np.sqrt(high)), 0.5)

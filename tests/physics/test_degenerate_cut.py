@@ -9,17 +9,17 @@ import pytest
 from scipy.integrate import quad
 
 from physics.checks import Floats
+from physics.curve_shape import CurveShape
 from physics.degenerate_cut import Degeneracy, degeneracy
 from physics.equation_of_state import peak_density_over_classical
 from physics.particles import Statistics
 from physics.statistics import zeta
 from physics.truncated_averages import relative_number
 from physics.truncated_boltzmann import HARMONIC, QUADRUPOLE, reduced_number
-from physics.volume_curve import VolumeCurve
 
 
 def solve(statistics: Statistics, exponent: float, occupation: list[float], eta: float) -> Degeneracy:
-    curve, truncation = VolumeCurve(exponent=exponent), np.full(len(occupation), eta)
+    curve, truncation = CurveShape(exponent=exponent), np.full(len(occupation), eta)
     numbers = tuple(relative_number(curve, j * truncation) for j in (1, 2, 3))
     return degeneracy(statistics, exponent, np.array(occupation), truncation, numbers)  # type: ignore[arg-type]
 

@@ -15,6 +15,7 @@ from scipy.integrate import solve_ivp
 from scipy.special import gammainc
 
 from physics.constants import atomic_mass, boltzmann
+from physics.curve_shape import CurveShape
 from physics.evaporation import Cancelled, EndReason, Evaporation, evaporate
 from physics.evaporation_rates import Process
 from physics.evaporation_target import Target
@@ -27,7 +28,6 @@ from physics.transfer import Transfer
 from physics.trap_path import DEPTH, GRADIENT, SCALE, HarmonicPath, QuadrupolePath, TrapPoint
 from physics.traps import HarmonicTrap
 from physics.truncated_boltzmann import HARMONIC, evaporation_volume, excess_energy, mean_energy
-from physics.volume_curve import VolumeCurve
 
 MASS = 87.0 * atomic_mass
 RUBIDIUM = Gas(statistics=Statistics.BOSE, mass=MASS, scattering_length=5.3e-9)
@@ -165,7 +165,7 @@ class Morphing:
     def at(self, controls: Mapping[Control, float]) -> TrapPoint:
         d = 1.5 + 1.5 * controls[BIAS]
         u = np.geomspace(1e-4, 1.0, 50)
-        return TrapPoint(depth=self.depth, volume=1e-12, curve=VolumeCurve(energies=u, volumes=u**d, exponent=d))
+        return TrapPoint(depth=self.depth, volume=1e-12, curve=CurveShape(energies=u, volumes=u**d, exponent=d))
 
 
 def test_a_slow_change_of_shape_changes_the_phase_space_density_by_the_exponents() -> None:
@@ -204,7 +204,7 @@ def test_polarised_fermions_do_not_evaporate() -> None:
 
 def test_a_tabulated_volume_curve_is_as_good_as_the_closed_form() -> None:
     u = np.geomspace(1e-4, 1.0, 60)
-    curve = VolumeCurve(energies=u, volumes=u**1.5)
+    curve = CurveShape(energies=u, volumes=u**1.5)
     closed = trap()
 
     @dataclass(frozen=True)
@@ -218,7 +218,7 @@ def test_a_tabulated_volume_curve_is_as_good_as_the_closed_form() -> None:
         def at(self, controls: Mapping[Control, float]) -> TrapPoint:
             point = closed.at(controls)
             # A new curve at each place, so that the changing table is used.
-            again = VolumeCurve(energies=u, volumes=curve.volumes)
+            again = CurveShape(energies=u, volumes=curve.volumes)
             return TrapPoint(depth=point.depth, volume=point.volume, curve=again, frequencies=point.frequencies)
 
     losses = Losses(background_lifetime=30.0, three_body=4e-41)

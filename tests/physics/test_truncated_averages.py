@@ -9,8 +9,8 @@ import pytest
 from scipy.integrate import quad
 
 from physics import truncated_boltzmann as cut
+from physics.curve_shape import CurveShape
 from physics.truncated_averages import relative_number, truncated_averages
-from physics.volume_curve import VolumeCurve
 
 ETA = np.geomspace(0.05, 1900.0, 60)
 
@@ -18,10 +18,10 @@ ETA = np.geomspace(0.05, 1900.0, 60)
 @pytest.mark.parametrize("exponent", [1.0, cut.HARMONIC, 2.2, cut.QUADRUPOLE])
 @pytest.mark.parametrize("tabulated", [False, True])
 def test_power_laws_give_the_closed_forms(exponent: float, tabulated: bool) -> None:
-    curve = VolumeCurve(exponent=exponent)
+    curve = CurveShape(exponent=exponent)
     if tabulated:
         u = np.geomspace(1e-4, 1.0, 40)
-        curve = VolumeCurve(energies=u, volumes=u**exponent, exponent=exponent)
+        curve = CurveShape(energies=u, volumes=u**exponent, exponent=exponent)
     found = truncated_averages(curve, ETA)
     number = math.gamma(exponent + 1.0) * ETA**-exponent * cut.reduced_number(exponent, ETA)
     np.testing.assert_allclose(found.number, number, rtol=1e-9)
@@ -38,7 +38,7 @@ def test_power_laws_give_the_closed_forms(exponent: float, tabulated: bool) -> N
 def test_losses_of_an_uncut_cloud_take_cold_atoms(exponent: float) -> None:
     # n ~ e^(-U/kT): <n> = n(0)/2^d and <n^2> = n(0)^2/3^d, with d/2 and d/3 kT of potential energy where atoms meet:
     # 9/4 and 2 kT in a harmonic trap.
-    found = truncated_averages(VolumeCurve(exponent=exponent), 200.0)
+    found = truncated_averages(CurveShape(exponent=exponent), 200.0)
     assert float(found.pair) == pytest.approx(2.0**-exponent, rel=1e-10)
     assert float(found.triple) == pytest.approx(3.0**-exponent, rel=1e-10)
     assert float(found.pair_energy) == pytest.approx(1.5 + exponent / 2.0, rel=1e-10)
@@ -53,7 +53,7 @@ def dimple(u: np.ndarray) -> np.ndarray:
 @pytest.mark.parametrize("eta", [0.8, 4.0, 9.0])
 def test_any_curve_gives_the_sum_over_phase_space(eta: float) -> None:
     u = np.concatenate([np.geomspace(1e-5, 0.05, 40), np.linspace(0.055, 1.0, 160)])
-    found = truncated_averages(VolumeCurve(energies=u, volumes=dimple(u)), eta)
+    found = truncated_averages(CurveShape(energies=u, volumes=dimple(u)), eta)
 
     def over(function) -> float:  # type: ignore[no-untyped-def]
         """Integral over dW."""
@@ -83,11 +83,11 @@ def test_any_curve_gives_the_sum_over_phase_space(eta: float) -> None:
 
 def test_a_curve_is_read_back_from_its_volumes() -> None:
     u = np.geomspace(1e-4, 1.0, 80)
-    curve = VolumeCurve(energies=u, volumes=dimple(u))
+    curve = CurveShape(energies=u, volumes=dimple(u))
     asked = np.array([1e-6, 1e-3, 0.2, 0.77, 1.0])
     np.testing.assert_allclose(curve.energy(curve.volume(asked)), asked, rtol=1e-9)
     np.testing.assert_allclose(curve.volume(asked[1:]), dimple(asked[1:]), rtol=1e-5)
-    assert VolumeCurve().energy(np.asarray(0.125)) == pytest.approx(0.25)
+    assert CurveShape().energy(np.asarray(0.125)) == pytest.approx(0.25)
 
 
 @pytest.mark.parametrize(
@@ -103,4 +103,4 @@ def test_a_curve_is_read_back_from_its_volumes() -> None:
 )
 def test_curves_that_cannot_be_are_refused_in_a_sentence(given: dict[str, object], sentence: str) -> None:
     with pytest.raises(ValueError, match=sentence):
-        VolumeCurve(**given)  # type: ignore[arg-type]
+        CurveShape(**given)  # type: ignore[arg-type]

@@ -19,8 +19,8 @@ EXPONENTS = (cut.BOX, 1.0, cut.HARMONIC, 2.2, cut.QUADRUPOLE)
 
 
 def level_sums(exponent: float, eta: float) -> dict[str, float]:
-    """Integrals over the density of states e^(d + 1/2) as Luiten, Reynolds, Walraven, Phys. Rev. A 53, 381 (1996) define
-    them, energies in kT: number, energy, V_ev, X_ev."""
+    """Integrals over the density of states e^(d + 1/2), energies in kT: number, energy, V_ev and X_ev as defined by
+    Luiten, Reynolds, Walraven, Phys. Rev. A 53, 381 (1996)."""
     power = exponent + 0.5
 
     def over(weight: Any) -> float:

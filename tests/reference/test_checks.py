@@ -21,6 +21,7 @@ from physics import collisions, equation_of_state
 from physics.caveats import COLLAPSE
 from physics.cloud import Cloud, Equilibrium, Model, equilibrium
 from physics.constants import atomic_mass, bohr_radius, boltzmann, planck
+from physics.curve_shape import CurveShape
 from physics.equilibria import FINITE_SIZE_COEFFICIENT
 from physics.fermi_interactions import FermiEstimates
 from physics.loss_integrals import two_and_three_body_densities
@@ -30,6 +31,7 @@ from physics.particles import Statistics
 from physics.species import load_species
 from physics.statistics import bose, fermi, zeta
 from physics.traps import HarmonicTrap
+from physics.truncated_averages import truncated_averages
 
 Inputs = Mapping[str, Any]
 
@@ -206,6 +208,20 @@ def fermi_integral(inputs: Inputs) -> float:
     return fermi(1.5, inputs["eta"])
 
 
+def truncated(what: str) -> Callable[[Inputs], float]:
+    """A cut cloud in a trap of W ~ U^(a - 3/2), by quadrature; volumes over that of the uncut cloud."""
+
+    def value(inputs: Inputs) -> float:
+        exponent, eta = inputs["a"] - 1.5, inputs["eta"]
+        found = truncated_averages(CurveShape(exponent=exponent), eta)
+        number = float(found.number) * eta**exponent / math.gamma(exponent + 1.0)
+        if what == "number":
+            return number
+        return float(getattr(found, what)) * (number if what == "evaporation" else 1.0)
+
+    return value
+
+
 def _from(function: Callable[..., Equilibrium], name: str) -> Callable[[Inputs], float]:
     return lambda inputs: float(getattr(function(inputs), name))
 
@@ -263,6 +279,10 @@ RECIPES: dict[str, Callable[[Inputs], float]] = {
     "E01": bunching,
     "E02": rubidium_constants,
     "E04": helium_collisions,
+    **{f"E{n:02}": truncated("number") for n in (5, 9, 13)},
+    **{f"E{n:02}": truncated("energy") for n in (6, 10, 14)},
+    **{f"E{n:02}": truncated("evaporation") for n in (7, 11, 15)},
+    **{f"E{n:02}": truncated("excess") for n in (8, 12, 16)},
     "E18": lambda i: float(noise_heating_rate(i["f_trap_Hz"], i["S_one_sided_per_Hz"])),
 }
 
@@ -271,11 +291,11 @@ BOUNDS: dict[str, Callable[[Inputs], float]] = {"A09": condensate_density, "A23"
 
 # The program has no beams yet (C01, C02, C04), no sum over lines (C05, C06, C08), no coils and no gravity against them
 # (D01 to D04), no TOP trap (D06, D07, D09), no quadrupole (D08), no recoil (C09 to C13, E19, F03, F04, F07, F08), no
-# evaporation (E05 to E16), no imaging (F01, F02, F05, F06) and no expansion (F09 to F12).
+# imaging (F01, F02, F05, F06) and no expansion (F09 to F12).
 NOT_YET = {
     *(f"C{n:02}" for n in (1, 2, 4, 5, 6, 8, 9, 10, 11, 12, 13)),
     *(f"D{n:02}" for n in (1, 2, 3, 4, 6, 7, 8, 9)),
-    *(f"E{n:02}" for n in (*range(5, 17), 19)),
+    *(f"E{n:02}" for n in (19,)),
     *(f"F{n:02}" for n in range(1, 13)),
 }
 

@@ -1,7 +1,7 @@
-"""The volume curve W(U) of a trap: how large the region around the minimum is in which the potential is below U.
+"""The shape of a trap's volume curve W(U), for clouds that are cut off at its depth.
 
-Every integral over a large cloud is one over dW. Here U is in units of the depth and W in units of its value there,
-which leaves the shape of the trap; the scales are kept beside it.
+Every integral over a large cloud is one over dW. Here U is in units of the depth and W in units of its value there; the
+scales are kept beside it. The volume curve of a trap in the laboratory is in `physics.traps.volume_curve`.
 """
 
 from __future__ import annotations
@@ -24,7 +24,7 @@ _RIM, _PANEL, _BOTTOM = 24, 12, 24
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class VolumeCurve:
+class CurveShape:
     """Shape of a volume curve.
 
     Attributes
