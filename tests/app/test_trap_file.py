@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
-from app.plan import PlanError, parse_plan, plan_with, read_plan
+from app.plan import Plan, PlanError, parse_plan, plan_with, read_plan, write_plan
 from app.trap_choices import ALONG_Z, ORIGIN, BeamChoice, CoilsChoice, Gravity, TrapChoice
 from app.units import (
     BEAM_POWER,
@@ -21,6 +22,7 @@ from app.units import (
 )
 
 DATA = Path(__file__).parent.parent / "data"
+PRESETS = sorted((Path(__file__).parents[2] / "presets" / "traps").glob("*.toml"))
 CLOUD = 'coldward = 1\n[species]\nkey = "87Rb"\n[cloud]\natoms = "1e5"\ntemperature = "200 nK"\n'
 BEAM = '[[trap.beam]]\nwavelength = "1064 nm"\npower = "2.5 W"\nwaist = "70 um"\ndirection = [1, 0, 0]\n'
 COILS = '[trap.coils]\ngradient = "30.5 G/cm"\n'
@@ -115,6 +117,32 @@ def test_frequencies_count_before_beams_that_stand_beside_them() -> None:
 
 def test_a_trap_of_beams_is_in_use() -> None:
     assert parse_plan(CLOUD + BEAM + COILS, "a.toml").unused == ()
+
+
+# --- the traps that come with the program -----------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("path", PRESETS, ids=lambda path: path.stem)
+def test_a_preset_trap_is_a_whole_plan(path: Path) -> None:
+    plan = read_plan(path)
+    assert plan.title
+    assert plan.trap.makers
+    assert write_plan(plan) == path.read_text(encoding="utf-8")
+    assert read_again(plan) == plan
+
+
+def read_again(plan: Plan) -> Plan:
+    """The plan, written without the file that it came from; what no version computes yet is not in it."""
+    return replace(parse_plan(write_plan(replace(plan, source="")), "new.toml"), unused=plan.unused)
+
+
+def test_preset_traps_are_of_light_of_coils_and_of_both_for_many_species() -> None:
+    plans = [read_plan(path) for path in PRESETS]
+    kinds = [(bool(plan.trap.beams), plan.trap.coils is not None) for plan in plans]
+    assert len(plans) >= 8
+    assert min(kinds.count(kind) for kind in ((True, False), (False, True), (True, True))) >= 2
+    assert len({plan.species.key for plan in plans}) >= 6
+    assert len({plan.title for plan in plans}) == len(plans)
 
 
 # --- what is refused -------------------------------------------------------------------------------------------------
