@@ -11,7 +11,7 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 import app.plan_saving
@@ -540,6 +540,7 @@ def plans(draw: st.DrawFn) -> Plan:
     return plan_with(None, texts)
 
 
+@settings(deadline=None)
 @given(plan=plans())
 def test_a_written_plan_is_read_back_as_it_was(plan: Plan) -> None:
     text = write_plan(plan)
@@ -548,6 +549,7 @@ def test_a_written_plan_is_read_back_as_it_was(plan: Plan) -> None:
     assert write_plan(again) == text
 
 
+@settings(deadline=None)
 @given(before=plans(), after=plans())
 def test_any_plan_can_be_saved_over_any_other(before: Plan, after: Plan) -> None:
     written = write_plan(after, write_plan(before))

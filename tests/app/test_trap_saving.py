@@ -7,7 +7,7 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from app.kinds import Kind
@@ -257,7 +257,7 @@ def test_a_saved_file_is_read_back(tmp_path: Path) -> None:
 
 def quantities(kind: Kind, low: float, high: float, unit: str) -> st.SearchStrategy[Quantity]:
     numbers = st.one_of(
-        st.integers(round(low), round(high)).map(str), st.floats(low, high).map(lambda value: f"{value:.4g}")
+        st.integers(round(low), round(high)).map(str), st.floats(low, high).map(lambda value: f"{value:.3f}")
     )
     return numbers.map(lambda number: read_quantity(f"{number} {unit}".strip(), kind))
 
@@ -307,6 +307,7 @@ MADE = st.builds(
 TRAPS = st.one_of(MADE, MADE, st.just(DEFAULT_PLAN.trap))
 
 
+@settings(max_examples=60, deadline=None)
 @given(trap=TRAPS)
 def test_a_written_trap_is_read_back_as_it_was(trap: TrapChoice) -> None:
     plan = replace(DEFAULT_PLAN, trap=trap)
@@ -316,12 +317,14 @@ def test_a_written_trap_is_read_back_as_it_was(trap: TrapChoice) -> None:
     assert write_plan(again) == text
 
 
+@settings(max_examples=60, deadline=None)
 @given(before=TRAPS, after=TRAPS, layout=st.sampled_from(["\n", "\r\n"]))
 def test_any_trap_can_be_saved_over_any_other(before: TrapChoice, after: TrapChoice, layout: str) -> None:
     text = write_plan(replace(DEFAULT_PLAN, trap=before)).replace("\n", layout)
     saved(replace(DEFAULT_PLAN, trap=after), text)
 
 
+@settings(max_examples=60, deadline=None)
 @given(data=st.data(), trap=MADE)
 def test_beams_in_any_order_keep_their_comments(data: st.DataObject, trap: TrapChoice) -> None:
     plan = replace(DEFAULT_PLAN, trap=trap)
