@@ -76,7 +76,6 @@ class SemiIdeal(IdealBose):
     def condensate_fraction(self) -> Floats:
         """From mu = (hbar wbar/2) (15 N0 a/aho)^(2/5). [1]"""
 
-
         def below() -> Floats:
             share = self._coupling * self._height**2 * np.sqrt(self._height) / self._below(self._degeneracy)
             return np.minimum(share, 1.0)
