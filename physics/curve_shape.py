@@ -65,7 +65,7 @@ class CurveShape:
                 raise ValueError(f"{name} of a volume curve must end at 1, at the depth, got {values[-1]:g}")
         object.__setattr__(self, "energies", u)
         object.__setattr__(self, "volumes", w)
-        spline = Spline(np.log(u), np.log(w)[:, np.newaxis])
+        spline = Spline(np.log(u), np.log(w)[:, np.newaxis], monotone=True)
         object.__setattr__(self, "_spline", spline)
 
     @property

@@ -143,7 +143,7 @@ class Kinetics:
         if eta < LOWEST_TRUNCATION:
             raise OutOfRange
         kT = trap.depth / eta
-        density = atoms / (trap.volume * math.exp(averages.log_number))
+        density = atoms / (trap.level_volume * math.exp(averages.log_number))
         temperature = kT / boltzmann
         sigma, speed = self.gas.cross_section(temperature), self.gas.mean_speed(temperature)
         return CloudNow(atoms, energy, kT, eta, density, sigma, speed, trap, averages)
@@ -156,7 +156,7 @@ class Kinetics:
         evaporation = n * now.cross_section * now.speed * math.exp(averages.log_evaporation - eta)
         number = math.exp(averages.log_number)
         # Share of the atoms in the levels at the rim, over the relative number of these levels.
-        rim = 4.0 / (3.0 * math.sqrt(math.pi)) * eta * math.sqrt(eta) * math.exp(-eta) * trap.rim_levels / number
+        rim = 4.0 / (3.0 * math.sqrt(math.pi)) * eta * math.sqrt(eta) * math.exp(-eta) / number
         levels_rate = trap.levels_rate
         spilling = rim * max(0.0, -levels_rate)
         two = self._two * n * math.exp(averages.log_pair) if self._two else 0.0

@@ -26,10 +26,16 @@ from physics.losses import Losses
 from physics.ramps import Control
 from physics.runge_kutta import Integrator, OutOfRange, Step
 from physics.stage_trap import TrapCurve, TrapNow
-from physics.trap_path import TrapPath, TrapPoint
+from physics.trap_path import TrapPath, TrapPoint, points_between
 
 SLOWEST_TIME = 3600.0
 """Longest ramp where no limit is set. [s]"""
+
+_STOPPING = 0.02
+"""Distance from the end of the range, in the logarithm of the control, over which it comes to rest."""
+
+MOST_STEPS = 4000
+"""Steps after which a run is given up as not reaching the target."""
 
 SHALLOWEST = 2.0
 """Lowest truncation parameter to which a drift may lead."""
@@ -98,7 +104,7 @@ def line_of(path: TrapPath, control: Control, limits: Limits) -> Line:
         raise ValueError(f"{control.label} stands at {start:g}, outside of its range from {low:g} to {high:g}")
     logarithmic = low > 0.0
     ends = (math.log(low), math.log(high)) if logarithmic else (low, high)
-    places = np.linspace(*ends, path.nodes)
+    places = np.linspace(*ends, points_between(path.nodes, low, high))
     # Settings at which the trap holds nothing end the range, on the side of the start that they are on.
     points: list[TrapPoint | None] = []
     for place in places.tolist():
@@ -195,7 +201,7 @@ class HeldKinetics:
         retherm = RETHERMALISATION_COLLISIONS / cloud.collision_rate if cloud.collision_rate > 0.0 else math.inf
         largest = self.limits.depth_change / retherm
         # d ln(depth)/dt = -x keeps ln(E/N) - ln(depth): rest + x down = -x.
-        wanted = rest / (1.0 + down) + 0.3 * largest * math.log(goal / cloud.truncation)
+        wanted = rest / max(1.0 + down, 0.1) + 0.3 * largest * math.log(goal / cloud.truncation)
         if wanted > 0.0:
             wanted = 0.0
         limit = 0
@@ -207,8 +213,10 @@ class HeldKinetics:
             fastest = self.limits.fastest / value if self.line.logarithmic else self.limits.fastest
             if -speed > fastest:
                 speed, limit = -fastest, 1
-        if place <= curve.low:
-            return still, 0.0, 2
+        # The control comes to rest at the end of its range, not at once, so that the solution has no corner.
+        left = (place - curve.low) / _STOPPING
+        if left < 1.0:
+            return cloud, speed * max(left, 0.0), 2
         return cloud, speed, limit
 
     def derivatives(self, law: Law, values: Floats) -> list[float]:
@@ -255,7 +263,7 @@ class HeldKinetics:
 
         try:
             reached = missing(0.0, values) <= 0.0
-            while not reached and now < time and here[0] > math.log(FEWEST_ATOMS):
+            while not reached and now < time and here[0] > math.log(FEWEST_ATOMS) and len(steps) < MOST_STEPS:
                 step = integrator.advance(now, here, time)
                 if step is None:
                     break

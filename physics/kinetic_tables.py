@@ -22,8 +22,9 @@ from physics.truncated_averages import relative_number, truncated_averages
 class Averages(NamedTuple):
     """Averages of a cut cloud, logarithms where they range over decades; see `TruncatedAverages`.
 
-    `log_number_half` and `log_number_third` are `log_number` at half and a third of the temperature; `number_slope` is
-    the change of `log_number` along the stage at fixed eta.
+    `log_number` is that of V_e over the level volume, the volume at the depth times `CurveShape.rim_levels`: both leave
+    the very rim out, where a counted volume curve is uncertain. `log_number_half` and `log_number_third` are the same
+    at half and a third of the temperature; `number_slope` is the change of `log_number` along the stage at fixed eta.
     """
 
     log_truncation: float
@@ -65,7 +66,7 @@ def _rows(curve: CurveShape, count: int) -> tuple[Floats, Floats]:
     position = np.log(curve.highest_energy * eta / found.energy - 1.0)
     columns = (
         np.log(eta),
-        np.log(found.number),
+        np.log(found.number / curve.rim_levels),
         np.log(found.evaporation),
         found.excess,
         found.centre,
@@ -73,8 +74,8 @@ def _rows(curve: CurveShape, count: int) -> tuple[Floats, Floats]:
         np.log(found.triple),
         found.pair_energy,
         found.triple_energy,
-        np.log(relative_number(curve, 2.0 * eta)),
-        np.log(relative_number(curve, 3.0 * eta)),
+        np.log(relative_number(curve, 2.0 * eta) / curve.rim_levels),
+        np.log(relative_number(curve, 3.0 * eta) / curve.rim_levels),
     )
     return position, np.stack(columns, axis=-1)
 

@@ -180,7 +180,7 @@ class _Search:
         # ln of E^(-3) N^4 w^3 in a harmonic trap: how degenerate; it orders runs that fall short.
         trap = self.held.line.curve.at(run.place, 0.0)
         density = 4.0 * math.log(run.atoms) - 3.0 * math.log(run.energy) + 1.5 * math.log(trap.depth)
-        return -1e6 + density - math.log(trap.volume)
+        return -1e6 + density - math.log(trap.level_volume)
 
     def best_between(self, low: float, high: float, drift: float, count: int) -> HeldRun:
         """Golden-section search."""

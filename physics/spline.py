@@ -23,19 +23,22 @@ class Spline:
     ----------
     places : (n,), increasing.
     values : (n, m). m functions.
+    monotone : bool. Give up the second continuous derivative so that the curve never falls where the values rise, nor
+        the other way round [2].
 
-    Reference
-    ---------
+    References
+    ----------
     [1] C. de Boor, A Practical Guide to Splines (1978), chapter IV, "not-a-knot". Recalled.
+    [2] F. N. Fritsch and R. E. Carlson, SIAM J. Numer. Anal. 17, 238 (1980). Recalled.
     """
 
-    def __init__(self, places: Floats, values: Floats) -> None:
+    def __init__(self, places: Floats, values: Floats, *, monotone: bool = False) -> None:
         x, y = np.asarray(places, dtype=np.float64), np.asarray(values, dtype=np.float64)
         if x.ndim != 1 or y.ndim != 2 or len(x) != len(y) or len(x) < 1:
             raise ValueError(f"places (n,) and values (n, m) must go together, got shapes {x.shape} and {y.shape}")
         if np.any(np.diff(x) <= 0.0):
             raise ValueError("places of a spline must increase")
-        slopes = _slopes(x, y)
+        slopes = _monotone(x, y, _slopes(x, y)) if monotone else _slopes(x, y)
         self.places = x
         self._list: list[float] = x.tolist()
         self._last = max(len(x) - 2, 0)
@@ -103,6 +106,18 @@ class Spline:
         _, b, c, d = np.moveaxis(self._pieces[index], -2, 0)
         found: Floats = b + t * (2.0 * c + t * 3.0 * d)
         return found
+
+
+def _monotone(x: Floats, y: Floats, slopes: Floats) -> Floats:
+    """Slopes no steeper than three times the lesser of the two secants beside each place, and of their sign."""
+    if len(x) < 2:
+        return slopes
+    secants = np.diff(y, axis=0) / np.diff(x)[:, np.newaxis]
+    before, after = np.concatenate([secants[:1], secants]), np.concatenate([secants, secants[-1:]])
+    least = np.where(before * after > 0.0, np.minimum(np.abs(before), np.abs(after)), 0.0)
+    sign = np.sign(after)
+    limited: Floats = sign * np.clip(sign * slopes, 0.0, 3.0 * least)
+    return limited
 
 
 def _slopes(x: Floats, y: Floats) -> Floats:

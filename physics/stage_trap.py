@@ -13,7 +13,7 @@ from physics.kinetic_tables import Averages, kinetic_table
 from physics.ramp_shapes import Course
 from physics.ramps import Control
 from physics.spline import Spline
-from physics.trap_path import TrapPath, TrapPoint
+from physics.trap_path import TrapPath, TrapPoint, points_between
 
 
 class TrapNow(NamedTuple):
@@ -22,20 +22,18 @@ class TrapNow(NamedTuple):
     place: float
     speed: float
     depth: float
-    volume: float
-    rim_levels: float
+    level_volume: float
     highest: float
     log_frequencies: tuple[float, float, float]
     light_heating: float
     depth_rate: float
     volume_rate: float
-    rim_rate: float
     frequency_rates: tuple[float, float, float]
 
     @property
     def levels_rate(self) -> float:
         """d ln S/dt of the number of levels below the depth. [1/s]"""
-        return 1.5 * self.depth_rate + self.volume_rate + self.rim_rate
+        return 1.5 * self.depth_rate + self.volume_rate
 
 
 class TrapCurve:
@@ -61,20 +59,18 @@ class TrapCurve:
         # A rounding beyond the ends.
         place = min(max(place, self.low), self.high)
         values, slopes = self._spline.both(place)
-        depth, volume, rim, top, x, y, z, light = values
-        d_depth, d_volume, d_rim, _, dx, dy, dz, _ = slopes
+        depth, volume, top, x, y, z, light = values
+        d_depth, d_volume, _, dx, dy, dz, _ = slopes
         return TrapNow(
             place,
             speed,
             math.exp(depth),
             math.exp(volume),
-            math.exp(rim),
             top,
             (x, y, z),
             light,
             d_depth * speed,
             d_volume * speed,
-            d_rim * speed,
             (dx * speed, dy * speed, dz * speed),
         )
 
@@ -101,7 +97,8 @@ class StageTrap:
         self._single = moving[0] if len(moving) == 1 else None
         single = self._single
         self._logarithmic = single is not None and min(single.value(begin), single.value(end)) > 0.0
-        times = self._times(moving, begin, end, path.nodes)
+        count = sum(points_between(path.nodes, course.value(begin), course.value(end)) for course in moving)
+        times = self._times(moving, begin, end, count)
         points: list[TrapPoint] = []
         for time in times:
             point = path.at({control: course.value(time) for control, course in self.courses.items()})
@@ -125,7 +122,7 @@ class StageTrap:
         if not moving:
             return np.array([begin])
         if self._single is None:
-            nodes = 3 * nodes
+            nodes = 2 * nodes
         fine = np.linspace(begin, end, 20 * nodes + 1)
         path = np.zeros(len(fine))
         for course in moving:
@@ -159,12 +156,10 @@ class StageTrap:
 def _numbers(point: TrapPoint) -> tuple[float, ...]:
     assert point.depth is not None
     frequencies = (math.nan,) * 3 if point.frequencies is None else tuple(math.log(f) for f in point.frequencies)
-    curve = point.curve
     return (
         math.log(point.depth),
-        math.log(point.volume),
-        math.log(curve.rim_levels),
-        curve.highest_energy,
+        math.log(point.level_volume),
+        point.curve.highest_energy,
         *frequencies,
         point.light_heating,
     )

@@ -52,11 +52,29 @@ class TrapPoint:
         if not 0.0 <= self.light_heating < math.inf:
             raise ValueError(f"heating by light must be finite and not negative, got {self.light_heating:g} W")
 
+    @property
+    def level_volume(self) -> float:
+        """Volume of the box of this depth that has as many levels. [m^3]"""
+        return self.volume * self.curve.rim_levels
+
     def levels(self, mass: float) -> float:
         """Number of levels below the depth. [1]"""
         assert self.depth is not None
         momentum = math.sqrt(2.0 * mass * self.depth) / planck
-        return 4.0 * math.pi / 3.0 * momentum**3 * self.volume * self.curve.rim_levels
+        return 4.0 * math.pi / 3.0 * momentum**3 * self.level_volume
+
+
+FEWEST_NODES = 5
+
+
+def points_between(nodes: int, first: float, last: float) -> int:
+    """Number of points for a change of one control from one value to another.
+
+    As dense as `nodes` for a hundredfold change; of a control that vanishes or changes its sign, `nodes`.
+    """
+    if min(first, last) <= 0.0:
+        return nodes
+    return max(FEWEST_NODES, 1 + math.ceil(nodes * abs(math.log(last / first)) / math.log(100.0)))
 
 
 class TrapPath(Protocol):
@@ -68,7 +86,7 @@ class TrapPath(Protocol):
 
     @property
     def nodes(self) -> int:
-        """Number of points along a stage between which all is interpolated."""
+        """Number of points, between which all is interpolated, for a hundredfold change of a control."""
 
     def at(self, controls: Mapping[Control, float]) -> TrapPoint:
         """The trap at values of its controls. It may remember what it has computed."""

@@ -38,6 +38,19 @@ def test_few_places_give_the_polynomial_through_them(count: int) -> None:
     np.testing.assert_allclose(spline(points)[:, 0], points ** (count - 1), atol=1e-14)
 
 
+def test_a_monotone_one_never_turns_back() -> None:
+    x = np.array([0.0, 1.0, 2.0, 2.1, 3.0, 4.0])
+    y = np.array([0.0, 0.0, 0.1, 3.0, 3.1, 3.1])[:, np.newaxis]
+    points = np.linspace(0.0, 4.0, 401)
+    found = Spline(x, y, monotone=True)(points)[:, 0]
+    assert np.all(np.diff(found) >= -1e-15)
+    assert np.any(np.diff(Spline(x, y)(points)[:, 0]) < -1e-3)
+    np.testing.assert_allclose(Spline(x, y, monotone=True)(x), y, atol=1e-14)
+    # Where the values are smooth it is the same spline.
+    smooth = np.exp(x)[:, np.newaxis]
+    np.testing.assert_allclose(Spline(x, smooth, monotone=True)(x), smooth)
+
+
 def test_places_must_increase() -> None:
     with pytest.raises(ValueError, match=r"^places of a spline must increase$"):
         Spline(np.array([0.0, 0.0]), np.zeros((2, 1)))

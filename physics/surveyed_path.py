@@ -1,0 +1,118 @@
+"""A trap of beams and coils along its controls: a survey at each setting, remembered."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from functools import cached_property
+from types import MappingProxyType
+
+import numpy as np
+
+from physics.curve_shape import CurveShape
+from physics.ramps import Control, Knob
+from physics.species import State
+from physics.trap_path import SCALE, TrapPoint
+from physics.traps.survey import Survey, survey
+from physics.traps.trap import Trap
+
+_COIL_PARTS = {
+    Knob.KNIFE: "knife",
+    Knob.BIAS: "bias",
+    Knob.GRADIENT: "gradient",
+    Knob.CURVATURE: "curvature",
+    Knob.LEVITATION: "levitation",
+}
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class SurveyedPath:
+    """A trap in the laboratory whose controls can be moved.
+
+    They are the power of each beam that is on, the scale of all powers together, and each part of the coils that the
+    trap has.
+
+    Attributes
+    ----------
+    trap : Trap. As it stands before the ramp.
+    state : State
+    nodes : int. Surveys for a hundredfold change of a control, between which all is interpolated.
+    progress : called after each new survey.
+    """
+
+    trap: Trap
+    state: State
+    nodes: int = 25
+    progress: Callable[[], None] | None = None
+
+    _known: dict[tuple[tuple[Control, float], ...], TrapPoint] = field(default_factory=dict, init=False, repr=False)
+
+    @cached_property
+    def standing(self) -> Mapping[Control, float]:
+        found = {Control(Knob.POWER, beam.name): float(beam.power) for beam in self.trap.beams if beam.on}
+        if found:
+            found[SCALE] = 1.0
+        for knob, part in _COIL_PARTS.items():
+            value = None if self.trap.coils is None else getattr(self.trap.coils, part)
+            if value is not None:
+                found[Control(knob)] = float(value)
+        return MappingProxyType(found)
+
+    def trap_at(self, controls: Mapping[Control, float]) -> Trap:
+        """The trap with its controls at these values."""
+        trap, scale = self.trap, controls.get(SCALE, 1.0)
+        for beam in self.trap.beams:
+            power = controls.get(Control(Knob.POWER, beam.name))
+            if power is not None:
+                trap = trap.with_beam(beam.name, power=scale * power)
+        parts = {part: controls[Control(knob)] for knob, part in _COIL_PARTS.items() if Control(knob) in controls}
+        return trap.with_coils(**parts) if parts else trap
+
+    def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+        # Powers times scale make the trap, so that a scale and a common change of the powers share surveys.
+        scale = controls.get(SCALE, 1.0)
+        values = {c: scale * v if c.knob is Knob.POWER else v for c, v in controls.items() if c != SCALE}
+        # To twelve digits: the same setting comes along with different roundings.
+        key = tuple((c, float(f"{v:.12g}")) for c, v in sorted(values.items(), key=lambda item: item[0].label))
+        if key not in self._known:
+            self._known[key] = point_of(survey(self.trap_at(controls), self.state))
+            if self.progress is not None:
+                self.progress()
+        return self._known[key]
+
+
+def point_of(found: Survey) -> TrapPoint:
+    """What the kinetics needs of a survey.
+
+    The volume of a focused beam without gravity has no end at the depth; there 0.95 of it counts as the depth.
+    Elsewhere the last step of the volume curve is carried on to the depth, where counting ended a little below.
+    """
+    curve = found.volume_curve
+    if not found.trapped or found.depth is None or curve is None:
+        reason = "the depth is not known" if found.reason is None else found.reason.value
+        return TrapPoint(depth=None, reason=reason)
+    energies, volumes = np.asarray(curve.energies), np.asarray(curve.volumes)
+    # Counted volumes may stand still between two energies.
+    rising = np.concatenate([[True], np.diff(np.maximum.accumulate(volumes)) > 1e-9 * volumes[1:]])
+    rising[-1] = True
+    energies, volumes = energies[rising], volumes[rising]
+    if len(volumes) > 1 and volumes[-1] <= volumes[-2]:
+        energies, volumes = np.delete(energies, -2), np.delete(volumes, -2)
+    frequencies = None
+    if found.frequencies is not None:
+        x, y, z = (float(f) for f in found.frequencies)
+        frequencies = (x, y, z)
+    depth = float(energies[-1]) if found.volume_curve_ceiling is not None else float(found.depth)
+    if depth > energies[-1] * (1.0 + 1e-9) and len(energies) > 4:
+        growth = math.log(volumes[-1] / volumes[-4]) / math.log(energies[-1] / energies[-4])
+        volumes = np.append(volumes, volumes[-1] * (depth / energies[-1]) ** growth)
+        energies = np.append(energies, depth)
+    depth = float(energies[-1])
+    return TrapPoint(
+        depth=depth if math.isfinite(depth) else None,
+        volume=float(volumes[-1]),
+        curve=CurveShape(energies=energies / depth, volumes=volumes / volumes[-1], exponent=curve.power),
+        frequencies=frequencies,
+        light_heating=float(found.heating.power),
+    )
