@@ -21,6 +21,14 @@ _HOME = {
     "Model": "cloud",
     "equilibrium": "cloud",
     "HarmonicTrap": "traps",
+    "Gas": "gas",
+    "Losses": "losses",
+    "Ramp": "ramps",
+    "Stage": "ramps",
+    "Move": "ramps",
+    "Target": "evaporation_target",
+    "evaporate": "evaporation",
+    "design_ramp": "ramp_design",
 }
 
 __all__ = sorted(_HOME)
