@@ -29,6 +29,11 @@ _HOME = {
     "Target": "evaporation_target",
     "evaporate": "evaporation",
     "design_ramp": "ramp_design",
+    "GaussianBeam": "traps",
+    "Coils": "traps",
+    "Gravity": "traps",
+    "Trap": "traps",
+    "survey": "traps.survey",
 }
 
 __all__ = sorted(_HOME)

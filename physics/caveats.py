@@ -102,6 +102,8 @@ CAVEAT_IDS = MappingProxyType(
         "pauli_blocking": "T/TF: collisions slowed by filled levels, left out of the rate",
         "hydrodynamic": "mean collision rate over the highest angular trap frequency",
         "truncated": "depth over kT: the trap cuts the cloud, which is answered as if it did not",
+        "harmonic_trap": "volume of a classical cloud over that in the harmonic trap, which answers; truncation, arms",
+        "trap_uncertainty": "no value: uncertain numbers of beams and coils move frequencies and depth to first order",
         "no_background": "no value: no background lifetime, so that lifetimes are upper bounds",
         "three_body_unknown": "no value: K3 not known, three-body loss left out",
         "two_body_recalled": "K2 [m^3/s]: recalled from its source, not read there",

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from physics.traps.beam import GaussianBeam
+from physics.traps.coils import Coils, FieldSeeker
 from physics.traps.harmonic import HarmonicTrap
+from physics.traps.trap import Gravity, Trap
 
-__all__ = ["HarmonicTrap"]
+__all__ = ["Coils", "FieldSeeker", "GaussianBeam", "Gravity", "HarmonicTrap", "Trap"]

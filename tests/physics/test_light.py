@@ -49,9 +49,9 @@ def in_atomic_units(key: str, wavelength: float) -> float:
         ("87Rb", 1064.0, 687.3, 0.004 * 687.3),
         # Between 1160 and 1170. Recalled.
         ("133Cs", 1064.0, 1165.0, 5.0),
-        # At the magic wavelength of the clock: Middelmann et al., Phys. Rev. Lett. 109, 263004 (2012), 286.0(3). Recalled.
+        # At the magic wavelength of the clock, 286.0(3); value and source (Safronova et al. (2013), as below) recalled.
         ("88Sr", 813.43, 286.0, 0.3),
-        # At that of ytterbium, 186: Dzuba and Derevianko, J. Phys. B 43, 074011 (2010), to 1 %. Recalled.
+        # At that of ytterbium, 186; value and source, Dzuba and Derevianko, J. Phys. B 43, 074011 (2010), recalled.
         ("174Yb", 759.35, 186.0, 1.9),
         # Exact for hydrogen at 1064 nm, 4.55; the constant hides part of the dispersion.
         ("1H", 1064.0, 4.55, 0.012),

@@ -1,0 +1,249 @@
+"""Traps solved backwards: which power gives this frequency or this depth, which one still holds, which gradient lifts.
+
+The search goes up and down in factors from where the trap stands, and closes in on the first change of sign. A power at
+which nothing is held counts as a frequency and a depth of zero.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from physics.checks import Floats, as_floats
+from physics.constants import standard_gravity
+from physics.traps.descent import settle
+from physics.traps.potential import NoPotential, potential_of
+from physics.traps.survey import Survey, survey
+
+if TYPE_CHECKING:
+    from physics.species import State
+    from physics.traps.trap import Trap
+
+_FACTOR = 2.0
+_TIMES = 10
+"""Steps up and down, each by that factor, in which a solution is looked for."""
+
+_ALL = "factor on all powers"
+
+_CLOSE = 1e-6
+"""Relative accuracy of a solution."""
+
+_FOUND = 1e-4
+"""Relative distance from the wanted value that counts as met; where the trap lets go, the values jump."""
+
+
+class NoSolution(ValueError):
+    """No value of the control gives what is wanted; one sentence says between what was looked."""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Solved:
+    """A value of the control, and the trap and its survey there."""
+
+    value: float
+    trap: Trap
+    survey: Survey
+
+
+Change = Callable[[float], "Trap"]
+Reading = Callable[[Survey], float | None]
+
+
+def solve(
+    change: Change, reading: Reading, target: float, start: float, state: State, *, control: str = "value"
+) -> Solved:
+    """The value of a control at which a reading of the survey has the wanted value.
+
+    Parameters
+    ----------
+    change : gives the trap at a value of the control.
+    reading : of a survey; None counts as zero.
+    target : float. Positive.
+    start : float. Positive, near which the search begins.
+    control : what an error calls the control.
+
+    Raises
+    ------
+    NoSolution : where none is found.
+    """
+    if not target > 0.0:
+        raise ValueError(f"wanted value must be positive, got {target:g}")
+    if not start > 0.0:
+        raise ValueError(f"{control} must start from a positive value, got {start:g}")
+    seen: dict[float, Survey] = {}
+
+    def excess(logarithm: float) -> float:
+        seen[logarithm] = survey(change(math.exp(logarithm)), state)
+        value = reading(seen[logarithm])
+        return (0.0 if value is None else value) / target - 1.0
+
+    from scipy.optimize import brentq
+
+    low, high = _bracket(excess, math.log(start), control)
+    root = float(brentq(excess, low, high, xtol=_CLOSE, rtol=1e-12)) if low < high else low
+    # What was computed last need not be the root itself.
+    if abs(excess(root)) > _FOUND:
+        raise NoSolution(f"no {control} gives the wanted value: where the trap lets go, it jumps past it")
+    value = math.exp(root)
+    return Solved(value=value, trap=change(value), survey=seen[root])
+
+
+def _bracket(excess: Callable[[float], float], start: float, control: str) -> tuple[float, float]:
+    here = excess(start)
+    if here == 0.0:
+        return start, start
+    step = math.log(_FACTOR)
+    edges = {-1: start, 1: start}
+    for _ in range(_TIMES):
+        for sign in (1, -1):
+            there = edges[sign] + sign * step
+            if (excess(there) > 0.0) != (here > 0.0):
+                return min(there, edges[sign]), max(there, edges[sign])
+            edges[sign] = there
+    low, high = (math.exp(edges[sign]) for sign in (-1, 1))
+    raise NoSolution(f"no {control} from {low:.3g} to {high:.3g} gives the wanted value")
+
+
+def power_for_mean_frequency(trap: Trap, state: State, beam: str, frequency: float) -> Solved:
+    """Power [W] of a beam that makes the geometric mean of the frequencies [Hz] what is wanted."""
+    return _power(trap, state, beam, lambda found: found.mean_frequency, frequency)
+
+
+def power_for_depth(trap: Trap, state: State, beam: str, depth: float) -> Solved:
+    """Power [W] of a beam that makes the depth [J] what is wanted."""
+    return _power(trap, state, beam, lambda found: found.depth, depth)
+
+
+def _power(trap: Trap, state: State, beam: str, reading: Reading, target: float) -> Solved:
+    return solve(
+        lambda power: trap.with_beam(beam, power=power, on=True),
+        reading,
+        target,
+        trap.beam(beam).power or 1.0,
+        state,
+        control=f"power of beam {beam} in W",
+    )
+
+
+def scale_for_mean_frequency(trap: Trap, state: State, frequency: float) -> Solved:
+    """Factor on the powers of all beams that makes the geometric mean of the frequencies [Hz] what is wanted."""
+    return solve(
+        trap.with_powers_scaled,
+        lambda found: found.mean_frequency,
+        frequency,
+        1.0,
+        state,
+        control=_ALL,
+    )
+
+
+def scale_for_depth(trap: Trap, state: State, depth: float) -> Solved:
+    """Factor on the powers of all beams that makes the depth [J] what is wanted."""
+    return solve(trap.with_powers_scaled, lambda found: found.depth, depth, 1.0, state, control=_ALL)
+
+
+def calibrated_power(trap: Trap, state: State, beam: str, axis: int, frequency: float) -> Solved:
+    """Power [W] of a beam that explains a frequency [Hz] measured along an axis (0, 1, 2 as in a survey)."""
+    return _power(trap, state, beam, _along(axis), frequency)
+
+
+def calibrated_waist(
+    trap: Trap, state: State, beam: str, axis: int, frequency: float, *, which: int | None = None
+) -> Solved:
+    """Waist [m] of a beam that explains a frequency [Hz] measured along an axis (0, 1, 2 as in a survey).
+
+    `which`: 0 for the horizontal, 1 for the vertical waist; None scales both and gives their geometric mean.
+    """
+    waists = as_floats(trap.beam(beam).waists)
+    start = float(np.sqrt(np.prod(waists))) if which is None else float(waists[which])
+
+    def change(waist: float) -> Trap:
+        scaled = waists * (waist / start)
+        return trap.with_beam(beam, waists=scaled if which is None else np.where(np.arange(2) == which, scaled, waists))
+
+    return solve(change, _along(axis), frequency, start, state, control=f"waist of beam {beam} in m")
+
+
+def _along(axis: int) -> Reading:
+    if axis not in (0, 1, 2):
+        raise ValueError(f"axis must be 0, 1 or 2, got {axis}")
+    return lambda found: None if found.frequencies is None else float(found.frequencies[axis])
+
+
+def levitation_gradient(state: State) -> float:
+    """Gradient m g/|dE/dB| of the field's magnitude along gravity that carries an atom. [T/m]
+
+    Raises
+    ------
+    ValueError : for a state without a known magnetic moment.
+    """
+    slope = state.zeeman_slope
+    if slope is None or slope.value == 0.0:
+        raise ValueError(f"{state.key} in {state.name} has no known magnetic moment to be levitated by")
+    return state.mass * standard_gravity / abs(slope.value)
+
+
+def lowest_power(trap: Trap, state: State, beam: str) -> float:
+    """Least power of a beam with which the trap still holds atoms. [W]
+
+    Found by halving, then from the way in which the minimum softens: there the minimum and the pass merge, and the
+    square of the determinant of the Hessian goes to zero as a straight line.
+
+    Raises
+    ------
+    NoSolution : where the trap holds at no power, or without the beam too.
+    """
+    place = trap.beam(beam)
+    start = place.power or 1.0
+
+    def held(power: float) -> Survey:
+        return survey(trap.with_beam(beam, power=power, on=True), state)
+
+    high, found = start, held(start)
+    while not found.trapped:
+        if high > start * _FACTOR**_TIMES:
+            raise NoSolution(f"the trap holds nothing up to a power of {high:.3g} W of beam {beam}")
+        high *= 2.0
+        found = held(high)
+    if survey(trap.with_beam(beam, on=False), state).trapped:
+        raise NoSolution(f"the trap holds atoms without beam {beam} too")
+    low = 0.0
+    while high - low > 0.1 * high:
+        middle = 0.5 * (low + high)
+        there = held(middle)
+        if there.trapped:
+            high, found = middle, there
+        else:
+            low = middle
+        if high < 1e-12 * start:
+            raise NoSolution(f"the trap holds atoms down to no power at all of beam {beam}")
+    minimum = as_floats(found.minimum)
+    edge = high
+    for near in (0.0, 1e-3, 1e-5):
+        powers = [edge * (1.0 + near + share) for share in ((0.0, 0.01) if near == 0.0 else (0.0, near))]
+        squares = []
+        for power in reversed(powers):
+            square, minimum = _stiffness(trap, state, beam, power, minimum)
+            squares.append(square)
+        far, close = squares
+        if not far > close > 0.0:
+            break
+        edge = powers[0] - close * (powers[1] - powers[0]) / (far - close)
+    return edge
+
+
+def _stiffness(trap: Trap, state: State, beam: str, power: float, start: Floats) -> tuple[float, Floats]:
+    """Square of the determinant of the Hessian at the minimum, and the minimum; NaN where it is gone."""
+    try:
+        potential = potential_of(trap.with_beam(beam, power=power, on=True), state)
+    except NoPotential:
+        return math.nan, start
+    minimum = settle(potential, start, potential.length, 100.0 * potential.length)
+    if minimum is None:
+        return math.nan, start
+    values = np.linalg.eigvalsh(potential.hessian(minimum)[2])
+    return (float(np.prod(values / values[-1])) ** 2 if values[0] > 0.0 else math.nan), minimum

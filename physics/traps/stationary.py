@@ -1,0 +1,215 @@
+"""Minima and passes of a potential: all points in the charts where its gradient vanishes.
+
+Where every component of the gradient changes its sign within a cell and its neighbours, or nearly so, Newton's method
+starts from that cell and keeps what it reaches nearby. The number of falling directions tells minima (none) from
+passes (one).
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from physics.checks import Floats
+from physics.traps.charts import Chart
+from physics.traps.landscape import Landscape
+from physics.traps.potential import Potential
+
+_MARGIN = 0.3
+"""Share of its range in the neighbourhood by which a component may miss the change of sign: two points that are about
+to merge lie within one cell."""
+
+_STEPS = 20
+_STRAY = 4.0
+"""Newton steps, and cells over which they may lead."""
+
+_TOGETHER = 3.0
+"""One over the distance, in cells, at which two searches count as one after the first step; its powers after more."""
+
+_FEW, _NEAR, _LEFT = 50, 3.0, 0.3
+"""With more starts than a few, only those count whose first step is shorter than so many cells and leaves no more than
+this part of the force."""
+
+_NOTHING = 1e-4
+"""Share of the deepest light shift below which a place counts as outside, where there is nothing but light."""
+
+_FLAT = 1e-9
+"""Eigenvalue, relative to the largest in units of the cell, below which a direction counts as flat."""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class StationaryPoint:
+    """A point without force; at a `cusp` the force jumps, and there is no curvature.
+
+    `curvature` is the Hessian [N/m]; at a cusp, the matrix A of U = U0 + |A r| + f.r [N] whose f is `force`.
+    """
+
+    position: Floats
+    energy: float
+    falling: int
+    curvature: Floats
+    cusp: bool = False
+    force: Floats | None = None
+
+    @property
+    def minimum(self) -> bool:
+        """Whether the energy rises, or stays, in all directions."""
+        return self.falling == 0
+
+
+def stationary_points(landscape: Landscape) -> list[StationaryPoint]:
+    """All minima, passes and tops in the charts, each once, by rising energy; cusps of the field among them."""
+    potential = landscape.potential
+    found: list[StationaryPoint] = [cusp_at(potential, point) for point in potential.cusps()]
+    zeros = () if potential.coils is None or not potential.shaped else potential.coils.zeros()
+    searches = [(chart, *_starts(landscape, index)) for index, chart in enumerate(landscape.charts)]
+    if potential.zeeman_slope > 0.0:
+        searches += [(landscape.charts[-1], *_beside(potential, zero)) for zero in zeros]
+    for chart, starts, edges in searches:
+        for point in _refined(potential, chart, starts, edges):
+            # Newton's method also closes in on a cusp from all sides, whether it is a minimum or not.
+            at_zero = any(np.linalg.norm(point.position - zero) < 1e-8 * potential.length for zero in zeros)
+            if not at_zero and all(_apart(point, other) for other in found):
+                found.append(point)
+    return sorted(found, key=lambda point: point.energy)
+
+
+def _beside(potential: Potential, zero: Floats) -> tuple[Floats, Floats]:
+    """Starts on the valley that leads away from a zero of the field where other forces pull harder than it holds."""
+    assert potential.coils is not None
+    matrix = potential.zeeman_slope * potential.coils.jacobian(zero)
+    if abs(np.linalg.det(matrix)) == 0.0:
+        return np.zeros((0, 3)), np.zeros((0, 3, 3))
+    pull = np.linalg.solve(matrix.T, potential.smooth_gradient(zero))
+    if not np.linalg.norm(pull) >= 1.0:
+        return np.zeros((0, 3)), np.zeros((0, 3, 3))
+    valley = -np.linalg.solve(matrix, pull)
+    distances = potential.length * np.geomspace(1e-5, 3.0, 24)
+    starts = zero + np.outer(distances, valley / np.linalg.norm(valley))
+    return starts, distances[:, np.newaxis, np.newaxis] * np.eye(3)
+
+
+def cusp_at(potential: Potential, point: Floats) -> StationaryPoint:
+    """The minimum at a zero of the field."""
+    assert potential.coils is not None
+    return StationaryPoint(
+        position=point,
+        energy=float(potential.energy(point)),
+        falling=0,
+        curvature=potential.zeeman_slope * potential.coils.jacobian(point),
+        cusp=True,
+        force=potential.smooth_gradient(point),
+    )
+
+
+def _apart(point: StationaryPoint, other: StationaryPoint) -> bool:
+    away = point.position - other.position
+    size = max(float(np.linalg.norm(point.position)), float(np.linalg.norm(other.position)), 1e-6)
+    return bool(np.linalg.norm(away) > 1e-6 * size)
+
+
+def _starts(landscape: Landscape, index: int) -> tuple[Floats, Floats]:
+    """Cells from which a search is worth while: their middles (n, 3), and their edges as columns (n, 3, 3)."""
+    potential, chart = landscape.potential, landscape.charts[index]
+    points = chart.cell_points
+    energy, gradient = landscape.energies[index], landscape.gradients[index]
+    # Over the depth of the light there, which takes the steep fall of its wings out of the comparison.
+    light = np.abs(energy - potential.dark(points))
+    scale = light + max(1e-9 * float(np.max(light)), np.finfo(float).tiny)
+    able = np.ones(tuple(n - 2 for n in chart.shape), dtype=bool)
+    for axis in chart.frame:
+        component = (gradient @ axis) / scale
+        low, high = _neighbourhood(component, np.minimum), _neighbourhood(component, np.maximum)
+        margin = _MARGIN * (high - low)
+        able &= (low <= margin) & (high >= -margin) & (high > low)
+    if potential.level_outside is not None:
+        # Far from all light the gradient vanishes everywhere.
+        able &= (light > _NOTHING * np.max(light))[1:-1, 1:-1, 1:-1]
+    indices = np.argwhere(able) + 1
+    starts, edges = points[tuple(indices.T)], chart.cell_edges(indices)
+    if len(starts) > _FEW:
+        steps, _, _ = _newton(potential, starts, edges)
+        near = np.linalg.norm(steps, axis=-1) < _NEAR
+        starts, edges, steps = starts[near], edges[near], steps[near]
+        # Where the first step leads, little of the force may be left; in the wings of a beam, 0.4 of it always is.
+        there = starts + np.einsum("nij,nj->ni", edges, steps)
+        left = np.linalg.norm(_slopes(potential, there, edges), axis=-1)
+        good = left < _LEFT * np.linalg.norm(_slopes(potential, starts, edges), axis=-1)
+        starts, edges = starts[good], edges[good]
+    return starts, edges
+
+
+def _neighbourhood(values: Floats, extreme: np.ufunc) -> Floats:
+    """Extremes over the 27 cells around each inner one."""
+    a = extreme(extreme(values[:-2], values[1:-1]), values[2:])
+    b = extreme(extreme(a[:, :-2], a[:, 1:-1]), a[:, 2:])
+    result: Floats = extreme(extreme(b[:, :, :-2], b[:, :, 1:-1]), b[:, :, 2:])
+    return result
+
+
+def _slopes(potential: Potential, points: Floats, edges: Floats) -> Floats:
+    """(n, 3) Slopes of the energy along the edges of cells. [J]"""
+    slopes: Floats = np.einsum("nki,nk->ni", edges, potential.gradient(points)[1])
+    return slopes
+
+
+def _newton(potential: Potential, points: Floats, edges: Floats) -> tuple[Floats, NDArray[np.bool_], Floats]:
+    """Newton's step (n, 3) in units of the cell, whether the point is settled, and the energy.
+
+    A flat direction gets no step, and settles only without a force along it.
+    """
+    energy, gradient, hessian = potential.hessian(points)
+    slope = np.einsum("nki,nk->ni", edges, gradient)
+    bend = np.swapaxes(edges, 1, 2) @ hessian @ edges
+    scale = np.maximum(np.max(np.abs(bend), axis=(-2, -1)), np.finfo(float).tiny)
+    step, determinant = _solved(bend / scale[:, np.newaxis, np.newaxis], -slope / scale[:, np.newaxis])
+    settled = np.max(np.abs(step), axis=-1) < 1e-9
+    for k in map(int, np.flatnonzero(np.abs(determinant) < _FLAT)):
+        values, vectors = np.linalg.eigh(bend[k] / scale[k])
+        along, flat = slope[k] / scale[k] @ vectors, np.abs(values) <= _FLAT
+        step[k] = vectors @ np.where(flat, 0.0, -along / np.where(flat, 1.0, values))
+        settled[k] = np.max(np.abs(step[k])) < 1e-9 and not np.any(flat & (np.abs(along) > 1e-6))
+    return step, settled, energy
+
+
+def _solved(matrices: Floats, right: Floats) -> tuple[Floats, Floats]:
+    """Solutions of symmetric systems (n, 3, 3) by their adjugates, and the determinants."""
+    a, b, c = matrices[:, 0], matrices[:, 1], matrices[:, 2]
+    adjugate = np.stack([np.cross(b, c), np.cross(c, a), np.cross(a, b)], axis=1)
+    determinant = np.einsum("ni,ni->n", a, adjugate[:, 0])
+    safe = np.where(np.abs(determinant) > 0.0, determinant, 1.0)
+    return np.einsum("nji,nj->ni", adjugate, right) / safe[:, np.newaxis], determinant
+
+
+def _refined(potential: Potential, chart: Chart, starts: Floats, edges: Floats) -> list[StationaryPoint]:
+    """What Newton's method reaches from starts, in units of their cells; what strays far is dropped."""
+    r, alive = starts.copy(), np.arange(len(starts))
+    units = np.linalg.inv(edges) if len(starts) else edges
+    done: list[tuple[Floats, float, int]] = []
+    for count in range(_STEPS):
+        if 0 < count < 5:
+            # Neighbours head for the same place: one of them is enough.
+            near = np.rint(_TOGETHER**count * chart.cell_coordinates(r[alive])).astype(np.int64)
+            alive = alive[np.sort(np.unique(near, axis=0, return_index=True)[1])]
+        if not len(alive):
+            break
+        step, settled, energy = _newton(potential, r[alive], edges[alive])
+        last = np.einsum("nij,nj->ni", edges[alive], step)
+        for k in map(int, np.flatnonzero(settled)):
+            place = r[alive[k]] + last[k]
+            if all(np.any(np.abs(units[alive[k]] @ (place - other)) > 1e-6) for other, _, _ in done):
+                done.append((place, float(energy[k]), int(alive[k])))
+        length = np.linalg.norm(step, axis=-1, keepdims=True)
+        step *= np.minimum(1.0, 1.0 / np.maximum(length, 1e-300))
+        r[alive] += np.einsum("nij,nj->ni", edges[alive], step)
+        away = np.linalg.norm(np.einsum("nij,nj->ni", units[alive], r[alive] - starts[alive]), axis=-1)
+        alive = alive[~settled & (away < _STRAY)]
+    found = []
+    for position, energy_there, k in done:
+        curvature = potential.hessian(position)[2]
+        values = np.linalg.eigvalsh(edges[k].T @ curvature @ edges[k])
+        falling = int(np.sum(values < -_FLAT * np.max(np.abs(values))))
+        found.append(StationaryPoint(position=position, energy=energy_there, falling=falling, curvature=curvature))
+    return found

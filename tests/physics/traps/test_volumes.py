@@ -1,0 +1,200 @@
+"""Volume curves against formulas and against counting random points."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import replace
+from typing import Any
+
+import numpy as np
+import pytest
+
+from physics.constants import bohr_magneton, boltzmann, standard_gravity
+from physics.species import State
+from physics.traps import Coils, GaussianBeam, Trap
+from physics.traps.notes import NoteKind
+from physics.traps.potential import Potential
+from physics.traps.rays import ray_volumes, shape_of
+from physics.traps.stationary import StationaryPoint
+from physics.traps.survey import Survey, survey
+from physics.traps.volume_curve import VolumeCurve
+
+
+def curve_of(found: Survey) -> VolumeCurve:
+    assert found.volume_curve is not None
+    return found.volume_curve
+
+
+def shares(found: Survey, *parts: float) -> Any:
+    assert found.depth is not None
+    return found.depth * np.array(parts)
+
+
+class Bowl(Potential):
+    """A harmonic potential, or one that adds to it a multiple of the fourth power of its root."""
+
+    def gradient(self, points: Any) -> tuple[Any, Any]:
+        stiffness = np.diag([1.0, 50.0, 3.0]) * 1e-18
+        force = points @ stiffness
+        energy = 0.5 * np.sum(points * force, axis=-1)
+        return energy + 1e28 * energy**2, force * (1.0 + 2e28 * energy)[..., np.newaxis]
+
+
+def test_rays_are_exact_where_the_levels_are_ellipsoids() -> None:
+    bowl = Bowl(mass=1e-25)
+    curvature = np.diag([1.0, 50.0, 3.0]) * 1e-18
+    minimum = StationaryPoint(position=np.zeros(3), energy=0.0, falling=0, curvature=curvature)
+    shape = shape_of(minimum)
+    assert shape is not None
+    unit = 4.0 * math.pi / 3.0 * 2.0**1.5 / math.sqrt(np.linalg.det(curvature))
+    assert (shape.power, shape.coefficient) == (1.5, pytest.approx(unit, rel=1e-12))
+    energies = np.geomspace(1e-32, 1e-28, 50)
+    found = ray_volumes(bowl, minimum, shape, energies)
+    assert found.limit == energies[-1]
+    # U + 1e28 U^2 = E has the volume of a harmonic trap at U.
+    U = (np.sqrt(1.0 + 4e28 * energies) - 1.0) / 2e28
+    assert found.volumes == pytest.approx(unit * U**1.5, rel=2e-5)
+
+
+def test_a_harmonic_field_has_the_volume_of_a_harmonic_trap(rubidium: State) -> None:
+    # W = (4 pi/3)(2U/m)^{3/2}/(w1 w2 w3), in a field whose bias is far above the knife.
+    slope, B0 = 0.500583 * bohr_magneton, 1e-2
+    knife = (slope * B0 + boltzmann * 1e-6) / 6.62607015e-34
+    coils = Coils(bias=B0, gradient=10.0, curvature=500.0, axis=(1, 0, 0), knife=knife)
+    found = survey(Trap(coils=coils, gravity=None), rubidium)
+    U = shares(found, 0.2, 0.5, 0.8, 0.95)
+    omegas = 2.0 * math.pi * np.asarray(found.frequencies)
+    expected = 4.0 * math.pi / 3.0 * (2.0 * U / rubidium.mass) ** 1.5 / np.prod(omegas)
+    assert curve_of(found).volume(U) == pytest.approx(expected, rel=1e-3)
+    # The rest is the field's own: 1 uK over the 336 uK of the bias; a tenth of the energy leaves a tenth of it.
+    low = shares(found, 0.02)
+    first = 4.0 * math.pi / 3.0 * (2.0 * low / rubidium.mass) ** 1.5 / np.prod(omegas)
+    assert curve_of(found).volume(low) == pytest.approx(first, rel=1e-4)
+
+
+@pytest.mark.parametrize("gravity", [True, False])
+def test_a_quadrupole_has_the_volume_of_its_formula(gravity: bool, rubidium: State) -> None:
+    # (16 pi/3)(U/mu B')^3; gravity along the strong axis moves and stretches the ellipsoids: over (1 - f^2)^2,
+    # f = m g/(mu B').
+    trap = Trap(coils=Coils(gradient=2.0, knife=2e6))
+    found = survey(trap if gravity else replace(trap, gravity=None), rubidium)
+    force = 0.500583 * bohr_magneton * 2.0
+    f = rubidium.mass * standard_gravity / force if gravity else 0.0
+    U = shares(found, 0.001, 0.2, 0.5, 0.8, 0.95, 1.0)
+    expected = 16.0 * math.pi / 3.0 * (U / force) ** 3 / (1.0 - f * f) ** 2
+    assert curve_of(found).volume(U) == pytest.approx(expected, rel=1e-4)
+    assert curve_of(found).power == 3.0
+
+
+def test_one_beam_without_gravity_has_the_volume_of_its_integral(single: Trap, rubidium: State) -> None:
+    # At a distance of z = x zR the radius of a level u = U/U0 is (w0^2/2)(1 + x^2) ln(1/((1-u)(1+x^2))).
+    found = survey(replace(single, gravity=None), rubidium)
+    beam = single.beams[0]
+    curve = curve_of(found)
+    x, weights = np.polynomial.legendre.leggauss(200)
+    for u, allowed in ((0.01, 1e-4), (0.2, 1e-4), (0.5, 1e-4), (0.8, 1e-3), (0.94, 5e-3)):
+        edge = math.sqrt(u / (1.0 - u))
+        q = 1.0 + (edge * x) ** 2
+        area = math.pi * 70e-6**2 / 2.0 * q * np.log(1.0 / ((1.0 - u) * q))
+        expected = beam.rayleigh_lengths[0] * edge * float(weights @ area)
+        assert curve.volume(u * found.depth) == pytest.approx(expected, rel=allowed), u  # type: ignore[operator]
+    assert curve.ceiling == pytest.approx(0.95 * found.depth)  # type: ignore[operator]
+    assert [note.value for note in found.notes if note.kind is NoteKind.INFINITE_ARMS] == [0.95]
+    assert np.isnan(curve.volume(0.96 * found.depth))  # type: ignore[operator]
+
+
+def sagging_crossing(found: Survey, parts: list[float], count: int, seed: int) -> tuple[Any, Any]:
+    """Volume and its standard deviation by random points: around the crossing, and along each of the four arms.
+
+    What is beyond the barrier below a beam is told by the slope: there, and only there, the potential falls downwards
+    more than half a beam radius below the axis.
+    """
+    potential = found.potential
+    assert potential is not None
+    rng = np.random.default_rng(seed)
+    limits = found.energy_at_minimum + shares(found, *parts)  # type: ignore[operator]
+    near, far = 2.5e-4, 3e-2
+    total, variance = np.zeros(len(parts)), np.zeros(len(parts))
+
+    def count_in(points: Any, each: Any) -> None:
+        energy, gradient = potential.gradient(points)
+        radius = np.zeros(len(points))
+        for beam, along, aside in zip(potential.beams, points[:, :2].T, points[:, 1::-1].T, strict=True):
+            width = beam.widths(np.abs(along))[:, 0]
+            radius = np.maximum(radius, np.where(np.abs(aside) < 3.0 * width, width, 0.0))
+        inside = ~((points[:, 2] < -0.5 * radius) & (gradient[:, 2] > 0.0))
+        for k, limit in enumerate(limits):
+            values = np.where(inside & (energy < limit), each, 0.0)
+            total[k] += np.mean(values)
+            variance[k] += np.var(values) / len(values)
+
+    # Half of the points in a cube around the minimum, half in the rest of the square where the beams overlap.
+    core = 9e-5
+    x, y, z = rng.uniform(-core, core, (3, count))
+    count_in(np.stack([x, y, z], axis=-1), (2.0 * core) ** 3)
+    x, y = rng.uniform(-near, near, (2, count))
+    z = rng.uniform(-1.2e-4, 1.2e-4, count)
+    outside = (np.abs(x) > core) | (np.abs(y) > core) | (np.abs(z) > core)
+    count_in(np.stack([x, y, z], axis=-1), np.where(outside, (2.0 * near) ** 2 * 2.4e-4, 0.0))
+    for axis, beam in enumerate(potential.beams):
+        s = near * np.exp(rng.random(count) * math.log(far / near))
+        width = 2.2 * beam.widths(s)[:, 0]
+        aside = np.minimum(width, near)
+        points = np.empty((count, 3))
+        points[:, axis] = rng.choice([-1.0, 1.0], count) * s
+        points[:, 1 - axis] = aside * rng.uniform(-1.0, 1.0, count)
+        points[:, 2] = width * rng.uniform(-1.0, 1.0, count)
+        count_in(points, 2.0 * s * math.log(far / near) * 2.0 * aside * 2.0 * width)
+    return total, np.sqrt(variance)
+
+
+def test_a_sagging_crossing_has_the_volume_that_random_points_count(crossed: Trap, rubidium: State) -> None:
+    found = survey(crossed, rubidium)
+    parts = [0.2, 0.5, 0.6, 0.8, 0.95]
+    runs = [sagging_crossing(found, parts, 400_000, seed) for seed in range(4)]
+    counted = np.mean([total for total, _ in runs], axis=0)
+    deviation = np.sqrt(np.sum([sigma**2 for _, sigma in runs], axis=0)) / len(runs)
+    assert np.all(deviation < 0.005 * counted)
+    U = shares(found, *parts)
+    curve = curve_of(found)
+    assert np.all(np.abs(curve.volume(U) - counted) < 0.01 * counted + 2.0 * deviation)
+    # The arms hold most of the volume above 0.55 of the depth: 7 times the harmonic volume, then 190 times.
+    assert counted[2:4] / (curve.coefficient * U[2:4] ** 1.5) == pytest.approx([7.2, 192.5], rel=0.03)
+    assert curve.arm_share(U[0]) == 0.0
+    assert curve.arm_share(U[3]) > 0.95
+
+
+def test_a_small_part_of_a_cold_cloud_and_most_of_a_hot_one_is_in_the_arms(crossed: Trap, rubidium: State) -> None:
+    curve = curve_of(survey(crossed, rubidium))
+    cold, warm, hot = curve.atoms_in_arms(np.array([2e-6, 8e-6, 30e-6]))
+    assert 0.0 <= cold < 1e-3
+    assert cold < warm < hot
+    assert hot > 0.9
+
+
+def test_a_well_beyond_a_pass_joins_at_the_energy_of_the_pass(rubidium: State) -> None:
+    # Two equal beams side by side: twice the volume of one, but only above the pass between them.
+    beams = tuple(
+        GaussianBeam(name=name, wavelength=1064e-9, power=0.5, waists=40e-6, direction=(1, 0, 0), focus=(0, y, 0))
+        for name, y in (("A", -1e-4), ("B", 1.02e-4))
+    )
+    found = survey(Trap(beams=beams), rubidium)
+    assert found.basin is not None
+    assert found.basin.inner_passes
+    at = found.basin.inner_passes[0] - found.basin.minimum.energy
+    curve = curve_of(found)
+    below, above = curve.volume(np.array([0.96, 1.04]) * at)
+    assert above / below == pytest.approx(2.0 * (1.04 / 0.96) ** 2.5, rel=0.15)
+
+
+def test_volumes_do_not_depend_on_the_size_of_the_cells(crossed: Trap, rubidium: State) -> None:
+    from physics.traps.landscape import Landscape
+    from physics.traps.volumes import volume_curve_of
+
+    found = survey(crossed, rubidium)
+    assert found.basin is not None
+    assert found.landscape is not None
+    finer = volume_curve_of(replace(found.landscape, fineness=1.6), found.basin)
+    assert isinstance(found.landscape, Landscape)
+    U = shares(found, 0.3, 0.6, 0.8, 0.95)
+    assert curve_of(found).volume(U) == pytest.approx(finer.volume(U), rel=0.01)
