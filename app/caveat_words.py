@@ -206,6 +206,17 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _("k a_d is {value}: these dipoles are too fast for the cross-section that is used, which is an estimate."),
             _PLAIN,
         ),
+        "harmonic_trap": (
+            _(
+                "Answered in the harmonic trap of the same frequencies; in the real one{cut} a classical cloud fills "
+                "{value} times its volume{arms}."
+            ),
+            times,
+        ),
+        "trap_uncertainty": (
+            _("Uncertain numbers of beams and coils move the frequencies and the depth to first order."),
+            _PLAIN,
+        ),
         "truncated": (
             _("The trap is only {value} kT deep: it cuts the cloud, which is answered as if uncut. Deepen or cool."),
             _PLAIN,
@@ -231,6 +242,8 @@ def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
         collapse=number(numbers.get("collapse_atoms", 0.0), 2),
         inverse=number(numbers.get("inverse", 0.0), 2),
         shift=percent(numbers.get("shift", 0.0)),
+        cut=_cut(numbers.get("truncation")),
+        arms=_arms(numbers.get("arms")),
         frozen=_frozen(int(numbers.get("frozen_axes", 0))),
     )
 
@@ -271,3 +284,13 @@ def _why_unknown(answer: CloudAnswer) -> str:
 
 def _frozen(axes: int) -> str:
     return _("one axis is frozen out") if axes == 1 else _("{count} axes are frozen out").format(count=axes)
+
+
+def _cut(truncation: float | None) -> str:
+    return "" if truncation is None else _(", {depth} kT deep,").format(depth=times(truncation))
+
+
+def _arms(truncation: float | None) -> str:
+    return (
+        "" if truncation is None else _(", and spreads into the arms from {energy} kT").format(energy=times(truncation))
+    )

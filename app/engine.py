@@ -24,6 +24,7 @@ from app.answers.models import ModelsAnswer, models_answer
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
 from app.answers.rates import RatesAnswer, RateSet, rates_answer
 from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
+from app.answers.trap import TrapAnswer, trap_answer, trap_of
 from app.answers.tuning import TuningAnswer, tuning_answer, usual_fields
 from app.answers.uncertainty import SAMPLES, Joint, Method, Spread
 
@@ -45,6 +46,7 @@ __all__ = [
     "RatesAnswer",
     "SlicesAnswer",
     "Spread",
+    "TrapAnswer",
     "TuningAnswer",
     "cloud_answer",
     "draft_map",
@@ -57,6 +59,8 @@ __all__ = [
     "rates_answer",
     "round_up",
     "slices_answer",
+    "trap_answer",
+    "trap_of",
     "tuning_answer",
     "usual_fields",
     "usual_limits",

@@ -12,9 +12,11 @@ from numpy.typing import NDArray
 from app.answers.inputs import Numbers, cloud_of, scattering_in_use, values_of
 from app.answers.losses import LossesInUse, Solution, losses_in_use
 from app.answers.part import part
+from app.answers.trap import trap_answer
+from app.answers.trap_inputs import trap_inputs
 from app.answers.uncertainty import Spread, Uncertainty
 from app.quantities import Need, Row
-from physics.caveats import Caveat, caveats_of, gravest_first
+from physics.caveats import Caveat, Severity, caveats_of, gravest_first
 from physics.cloud import Cloud, Equilibrium, Model, equilibrium
 from physics.loss_caveats import loss_caveats
 from physics.particles import Statistics
@@ -156,6 +158,7 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
             certainties=losses.certainties(),
             measured_length=_measured_length(state, losses),
         ),
+        *_trap_caveats(plan),
     )
     return CloudAnswer(
         plan=plan,
@@ -175,6 +178,17 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
         efficiency=efficiency,
         threshold=threshold,
     )
+
+
+def _trap_caveats(plan: Plan) -> tuple[Caveat, ...]:
+    """What it costs to answer in the harmonic trap of beams and coils; nothing where the frequencies are given."""
+    if plan.trap.harmonic:
+        return ()
+    from physics.trap_caveats import harmonic_trap_caveat
+
+    caveat = harmonic_trap_caveat(trap_answer(plan).survey, plan.cloud.temperature.value)
+    uncertain = Caveat(id="trap_uncertainty", severity=Severity.NOTE)
+    return (caveat, uncertain) if trap_inputs(plan) else (caveat,)
 
 
 def _measured_length(state: State, losses: LossesInUse) -> float | None:

@@ -9,11 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.losses import typed_losses
-from app.plan_field import PlanError
+from app.answers.trap_inputs import trap_in_use, trap_inputs
 from physics.cloud import Cloud
 from physics.constants import bohr_radius
 from physics.scattering import LengthInUse, dipolar_length, length_at_field, scattering_length_at_field, tuning
-from physics.traps import HarmonicTrap
 
 if TYPE_CHECKING:
     from app.plan import Plan
@@ -31,26 +30,16 @@ STRONG_DIPOLES = 10.0 * bohr_radius
 def inputs_of(plan: Plan) -> dict[str, Quantity]:
     """The plan's quantities that enter an answer, by the name of what they are."""
     optional = {
-        "depth": plan.trap.depth,
         "scattering_length": plan.species.scattering_length,
         "field": plan.species.field,
     }
     return {
         "atoms": plan.cloud.atoms,
         "temperature": plan.cloud.temperature,
-        **{f"frequency {axis}": quantity for axis, quantity in enumerate(_frequencies(plan))},
+        **trap_inputs(plan),
         **{name: quantity for name, quantity in optional.items() if quantity is not None},
         **typed_losses(plan),
     }
-
-
-def _frequencies(plan: Plan) -> tuple[Quantity, Quantity, Quantity]:
-    if plan.trap.frequencies is None:
-        raise PlanError(
-            f"this version needs trap frequencies, and the trap of this plan is made of {plan.trap.makers}: it is kept "
-            "as it is, without an answer"
-        )
-    return plan.trap.frequencies
 
 
 def values_of(plan: Plan) -> dict[str, float | Array]:
@@ -68,11 +57,10 @@ def scattering_in_use(plan: Plan, state: State) -> LengthInUse:
 
 def cloud_of(plan: Plan, state: State, scattering: LengthInUse, numbers: Numbers) -> Cloud:
     """The cloud that these numbers describe; draws of a number make a cloud of as many draws."""
-    frequencies = np.stack(np.broadcast_arrays(*(numbers[f"frequency {axis}"] for axis in range(3))), axis=-1)
     return Cloud(
         statistics=state.statistics,
         mass=state.mass,
-        trap=HarmonicTrap(frequencies=frequencies, depth=numbers.get("depth")),
+        trap=trap_in_use(plan, numbers),
         atoms=numbers["atoms"],
         temperature=numbers["temperature"],
         spin_components=plan.species.spin_components or state.spin_components,

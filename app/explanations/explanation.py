@@ -14,6 +14,7 @@ class Origin(Enum):
     TYPED = "typed"
     ASSUMED = "assumed"
     DATA = "from the data"
+    TRAP = "from beams and coils"
     CONSTANT = "constant"
 
 

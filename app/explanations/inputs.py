@@ -44,23 +44,37 @@ def temperature(sheet: Sheet) -> Leaf:
 
 @once
 def frequencies(sheet: Sheet) -> tuple[Leaf, Leaf, Leaf]:
-    quantities = sheet.answer.plan.trap.frequencies
-    if quantities is None:
-        raise ValueError("the plan has no trap frequencies")
-    first, second, third = quantities
-    return (
-        _typed(sheet, "f₁", "trap frequency along axis 1", first, "Hz"),
-        _typed(sheet, "f₂", "trap frequency along axis 2", second, "Hz"),
-        _typed(sheet, "f₃", "trap frequency along axis 3", third, "Hz"),
+    typed = sheet.answer.plan.trap.frequencies
+    first, second, third = (
+        _typed(sheet, symbol, meaning, typed[axis], "Hz")
+        if typed is not None
+        else _surveyed(sheet, symbol, meaning, float(sheet.answer.cloud.trap.frequencies[axis]), "Hz", "Hz")
+        for axis, (symbol, meaning) in enumerate(
+            (f"f{mark}", f"trap frequency along axis {axis}") for axis, mark in enumerate("₁₂₃", start=1)
+        )
     )
+    return first, second, third
 
 
 @once
 def depth(sheet: Sheet) -> Leaf:
-    quantity = sheet.answer.plan.trap.depth
-    if quantity is None:
+    typed, used = sheet.answer.plan.trap.depth, sheet.answer.cloud.trap.depth
+    if typed is not None:
+        return _typed(sheet, "U", "trap depth", typed, "J")
+    if used is None:
         raise ValueError("the plan has no trap depth")
-    return _typed(sheet, "U", "trap depth", quantity, "J")
+    return _surveyed(sheet, "U", "trap depth", float(used), "µK", "J")
+
+
+def _surveyed(sheet: Sheet, symbol: str, meaning: str, value: float, shown: str, unit: str) -> Leaf:
+    """A number of the harmonic trap at the minimum of beams and coils."""
+    text = format_quantity(value, shown, digits=6, si_unit=unit)
+    return sheet.enter(
+        Input(
+            symbol=symbol, meaning=meaning, text=text, value=value, unit=unit, origin=Origin.TRAP,
+            source=sheet.answer.plan.trap.makers,
+        )
+    )  # fmt: skip
 
 
 @once

@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import replace
 from functools import partial
-from typing import Any
+from typing import Any, cast
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QFont, QWheelEvent
@@ -91,9 +91,10 @@ class Form(QWidget):
     # ---------------------------------------------------------------- building
 
     def add_row(self, key: str, label: str, letter: str, widget: QWidget, tip: str) -> None:
-        """A labelled widget, with room for a note and for an error under it."""
-        buddy = QLabel(with_mnemonic(label, letter))
-        buddy.setBuddy(widget)
+        """A labelled widget, with room for a note and for an error under it; an empty letter gives no mnemonic."""
+        buddy = QLabel(with_mnemonic(label, letter) if letter else label)
+        if letter:
+            buddy.setBuddy(widget)
         buddy.setToolTip(tip)
         widget.setAccessibleName(label)
         if not isinstance(widget, QuantityField):
@@ -138,6 +139,18 @@ class Form(QWidget):
         line.editingFinished.connect(partial(self._end_session, key))
         line.error_changed.connect(partial(self.show_problem, key))
         return line
+
+    def add_fact(self, key: str, label: str, tip: str) -> QLabel:
+        """A labelled text to read and to copy, which nothing can be typed into."""
+        fact = QLabel()
+        fact.setObjectName("fact")
+        fact.setWordWrap(True)
+        fact.setTextInteractionFlags(
+            Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
+        )
+        fact.setFocusPolicy(Qt.FocusPolicy.TabFocus)
+        self.add_row(key, label, "", fact, tip)
+        return fact
 
     # ---------------------------------------------------------------- edits
 
@@ -201,10 +214,15 @@ class Form(QWidget):
             label.setText(text)
             label.setVisible(bool(text))
 
+    def note_of(self, key: str) -> str:
+        """The quiet word under a field, or nothing."""
+        return self._notes[key].text()
+
     def show_row(self, key: str, shown: bool) -> None:
         """Show or hide a field with its label and messages."""
         for widget in self._widgets[key]:
-            widget.setVisible(shown and (not isinstance(widget, QLabel) or bool(widget.text())))
+            message = widget in (self._notes[key], self._errors[key])
+            widget.setVisible(shown and (not message or bool(cast(QLabel, widget).text())))
 
     def take_focus(self) -> None:
         """Give the keyboard to the first field."""

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -196,6 +197,7 @@ class MainWindow(QMainWindow):
 
         desk = self.desk
         desk.bench.species.show_length(answer.scattering)
+        self._show_trap(answer.plan)
         desk.verdict.show_answer(verdict(answer), deciding_figures(answer))
         if desk.readouts_in_front:
             desk.readouts.show_answer(answer, self.settings.units)
@@ -207,7 +209,17 @@ class MainWindow(QMainWindow):
         self._judge()
 
     def _cloud_failed(self, _sentence: str) -> None:
+        self._show_trap(self.document.plan)
         self._judge()
+
+    def _show_trap(self, plan: Plan) -> None:
+        """What beams and coils come to, which the cloud's answer has asked for already."""
+        if plan.trap.harmonic:
+            return
+        from app.engine import trap_answer
+
+        with suppress(ValueError):  # such as an unknown state, of which the cloud's answer has told
+            self.desk.bench.trap.show_trap(trap_answer(plan))
 
     def _judge(self) -> None:
         """A field that cannot be read, or a plan without an answer, marks everything as not current; once all is well,

@@ -147,15 +147,29 @@ def test_verbs_load_no_window_toolkit_and_state_no_plotting(verb: str) -> None:
 MADE = ROOT / "tests" / "data" / "plan_of_beams_and_coils.toml"
 
 
-def test_a_trap_of_beams_and_coils_has_no_answer_yet(capsys: pytest.CaptureFixture[str]) -> None:
-    for verb in ("state", "map", "profile"):
-        assert main([verb, str(MADE)]) == 1
-        captured = capsys.readouterr()
-        assert captured.out == ""
-        assert captured.err.startswith(
-            "coldward: this version needs trap frequencies, and the trap of this plan is made"
-        )
-        assert captured.err.count("\n") == 1
+@pytest.mark.parametrize("verb", ["state", "map", "profile"])
+def test_a_trap_that_holds_nothing_has_no_cloud(verb: str, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main([verb, str(MADE.with_name("plan_of_a_trap_that_holds_nothing.toml"))]) == 1
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    start = "coldward: the trap of this plan, beams A and cross and coils, holds no atoms: gravity pulls the atoms out"
+    assert captured.err.startswith(start)
+    assert captured.err.count("\n") == 1
+
+
+def test_a_cloud_in_beams_has_the_frequencies_and_the_depth_of_its_trap(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["trap", str(MADE), "--json"]) == 0
+    trap = json.loads(capsys.readouterr().out)
+    answer = state_json(capsys, str(MADE))
+    quantities = answer["quantities"]
+    assert quantities["mean_frequency"]["value"] == pytest.approx(np.prod(trap["frequencies"]) ** (1 / 3), rel=1e-9)
+    assert quantities["truncation"]["value"] == pytest.approx(trap["depth_temperature"] / 200e-9, rel=1e-9)
+    assert "harmonic_trap" in {caveat["id"] for caveat in answer["caveats"]}
+    # 2.5(1) W: frequencies of a trap of light go with the root of the power, its depth with the power
+    spread = quantities["truncation"]
+    assert (spread["high"] - spread["low"]) / spread["median"] == pytest.approx(
+        2 * 0.994 * np.hypot(0.04, 0.05), rel=0.05
+    )
 
 
 def test_frequencies_take_the_place_of_beams_and_coils(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
@@ -169,7 +183,7 @@ def test_frequencies_take_the_place_of_beams_and_coils(tmp_path: Path, capsys: p
     assert float(row["mean_frequency [Hz]"]) == answer["quantities"]["mean_frequency"]["value"]
     errors = captured.err.splitlines()
     assert errors[0].endswith("line 3: fy and fz must be given too, or --frequencies for all rows")
-    assert "line 4: this version needs trap frequencies" in errors[1]
+    assert len(errors) == 1
 
 
 def test_what_stands_beside_the_frequencies_is_told_of(capsys: pytest.CaptureFixture[str]) -> None:

@@ -473,3 +473,31 @@ def test_rows_are_those_of_the_cloud_at_each_time() -> None:
     assert last.efficiency == pytest.approx(
         -math.log(D[-1] / D[first.last]) / math.log(N[-1] / N[first.last]), rel=1e-9
     )
+
+
+@pytest.mark.parametrize("eta", [500.0, 5000.0, 1e5])
+def test_a_very_deep_trap_is_that_of_a_harmonic_bottom(eta: float) -> None:
+    # Beyond the range of the tables: background loss and heating of an uncut cloud, closed and tabulated.
+    losses = Losses(background_lifetime=20.0, heating=1e-7, three_body=1e-38)
+    u = np.geomspace(1e-9, 1.0, 90)
+    deep = trap(eta * 1e-5)
+
+    @dataclass(frozen=True)
+    class Tabulated:
+        nodes: int = 9
+
+        @property
+        def standing(self) -> Mapping[Control, float]:
+            return deep.standing
+
+        def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+            point, w = deep.at(controls), u**1.5 * (1.0 + u)
+            shape = CurveShape(energies=u, volumes=w / w[-1])
+            return TrapPoint(depth=point.depth, volume=2.0 * point.volume, curve=shape, frequencies=point.frequencies)
+
+    runs = [evaporate(APART, 1e6, 1e-5, lowering(0.8), path, losses=losses) for path in (deep, Tabulated())]
+    assert runs[0].temperature[0] == pytest.approx(1e-5, rel=1e-6)
+    assert runs[1].temperature[0] == pytest.approx(1e-5, rel=3e-2 if eta < 1e3 else 3e-3)
+    for name in ("atoms", "temperature"):
+        one, other = (run.final[name] for run in runs)
+        assert other == pytest.approx(one, rel=5.0 / eta)

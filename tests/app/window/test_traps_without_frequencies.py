@@ -1,4 +1,4 @@
-"""A plan whose trap is made of beams and coils: it is shown and kept, and the window says that it has no answer."""
+"""A plan whose beams and coils hold nothing: it is shown and kept, and the window says that it has no answer."""
 
 from __future__ import annotations
 
@@ -17,8 +17,8 @@ from app.window.main_window import MainWindow
 
 Settle = Callable[[MainWindow], None]
 ROOT = Path(__file__).parents[3]
-FILE = ROOT / "tests" / "data" / "plan_of_beams_and_coils.toml"
-REASON = "this version needs trap frequencies, and the trap of this plan is made of beams A and cross and coils"
+FILE = ROOT / "tests" / "data" / "plan_of_a_trap_that_holds_nothing.toml"
+REASON = "the trap of this plan, beams A and cross and coils, holds no atoms: gravity pulls the atoms out"
 
 
 @pytest.fixture

@@ -1,0 +1,274 @@
+"""What is said of a trap: why it holds nothing, why a number is missing, what to mind, and the cautions."""
+
+from __future__ import annotations
+
+import math
+from types import MappingProxyType
+from typing import TYPE_CHECKING
+
+from app.language import translate as _
+from app.units import best_unit, format_quantity
+from app.words import number, percent, temperature
+from physics.constants import boltzmann
+from physics.light import NoPolarizability
+from physics.traps.boundary import Exit
+from physics.traps.notes import Note, NoteKind
+from physics.traps.potential import NotTrapped
+from physics.traps.survey import NoFrequencies
+
+if TYPE_CHECKING:
+    from app.answers.trap import TrapAnswer
+    from app.plan import TrapChoice
+    from physics.checks import Floats
+
+CAUTIOUS_POWER = 0.5
+"""[W] Power of a beam from which the caution about light is shown."""
+
+_REASONS = MappingProxyType(
+    {
+        NotTrapped.NOTHING_ON: _("no beam is on, and no coils make a field that changes in space"),
+        NotTrapped.NO_POLARIZABILITY: _("what beam {beam} does to {species} is not known, as {light}"),
+        NotTrapped.NO_MOMENT: _("the magnetic moment of {state} is not known, or its spin states have different ones"),
+        NotTrapped.NOT_MAGNETIC: _("{state} has no magnetic moment that coils could hold"),
+        NotTrapped.HIGH_FIELD_SEEKER: _("{state} is drawn to high fields, and coils have no maximum of the field"),
+        NotTrapped.BLUE_LIGHT: _("every beam is tuned above the lines of {species} and pushes the atoms out"),
+        NotTrapped.FIELD_OPENS: _("the bias is too high for the gradient, so that the field falls away from the axis"),
+        NotTrapped.GRAVITY: _("gravity pulls the atoms out; give more power or a steeper field, or levitate them"),
+        NotTrapped.LEVITATION: _("the levitation gradient is so steep that it pulls the atoms out"),
+        NotTrapped.KNIFE: _("the radio-frequency knife is set so low that it takes away every atom"),
+        NotTrapped.NO_MINIMUM: _("the potential has no minimum"),
+    }
+)
+_LIGHT = MappingProxyType(
+    {
+        NoPolarizability.NOT_IN_DATA: _("the data have neither its lines nor a polarizability"),
+        NoPolarizability.FAR_FROM_PUBLISHED: _("{wavelength} is too far from the only published polarizability"),
+        NoPolarizability.ON_RESONANCE: _("{wavelength} is within a few linewidths of a line"),
+    }
+)
+_NO_FREQUENCIES = MappingProxyType(
+    {
+        NoFrequencies.CUSP: _("the field vanishes at the minimum, where the potential has a cusp, not a parabola"),
+        NoFrequencies.FLAT: _("the potential does not rise in every direction from the minimum"),
+    }
+)
+_WAYS_OUT = MappingProxyType(
+    {
+        Exit.PASS: _("over a pass of the potential"),
+        Exit.KNIFE: _("at the radio-frequency knife"),
+        Exit.WALL: _("at the wall"),
+        Exit.ARM_END: _("at the end of a beam's arm"),
+        Exit.OPEN_SPACE: _("into free space, on every side"),
+    }
+)
+_NOTES = MappingProxyType(
+    {
+        NoteKind.BLUE_LIGHT: _("Beam {beam} is tuned above the nearest line and pushes the atoms away from its light."),
+        NoteKind.NEAR_RESONANCE: _(
+            "Beam {beam} is only {share} from a line: polarisation and hyperfine structure, left out, count there."
+        ),
+        NoteKind.PUBLISHED_POLARIZABILITY: _(
+            "For beam {beam} the polarizability is one published for a wavelength {share} away."
+        ),
+        NoteKind.INFINITE_ARMS: _("The volume curve ends at {share} of the depth: above, the volume has no end."),
+        NoteKind.WALL: _("Nothing but the walls, taken {length} away, limits this trap: its depth is a guess."),
+        NoteKind.ARM_END: _("The way out is the end of a beam's arm, as far as it is followed."),
+        NoteKind.FIELD_ZERO: _("The field vanishes at the minimum: cold atoms lose their state there."),
+        NoteKind.LINEAR_ZEEMAN: _("Fields reach {frequency} in µB·B/h, and the Zeeman effect is taken as linear."),
+        NoteKind.KNIFE_IDLE: _("The radio-frequency knife at {frequency} does nothing to this state."),
+    }
+)
+
+
+def reason_not_trapped(answer: TrapAnswer) -> str:
+    """Why nothing is held, as a clause without a full stop; empty where atoms are held."""
+    found = answer.survey
+    if found.reason is None:
+        return ""
+    light = found.light
+    why = (
+        ""
+        if light is None or light.reason is None
+        else _LIGHT[light.reason].format(wavelength=_length(light.wavelength))
+    )
+    return _REASONS[found.reason].format(
+        beam=found.beam, species=answer.state.key, state=f"{answer.state.key} {answer.state.name}", light=why
+    )
+
+
+def reason_no_frequencies(answer: TrapAnswer) -> str:
+    """Why a trap that holds atoms has no frequencies, as a clause; empty where it has."""
+    missing = answer.survey.no_frequencies
+    return "" if missing is None else _NO_FREQUENCIES[missing]
+
+
+def reasons_missing(answer: TrapAnswer) -> dict[str, str]:
+    """Name of each number that the answer does not have -> why, as a clause."""
+    found = answer.survey
+    if not answer.trapped:
+        return dict.fromkeys(NUMBERS, _("not trapped"))
+    reasons: dict[str, str] = {}
+    if found.frequencies is None:
+        reasons |= dict.fromkeys(("frequencies", "axes"), reason_no_frequencies(answer))
+    if found.depth is None:
+        reasons |= dict.fromkeys(("depth", "depth_temperature", "volume_curve"), _("the depth is not given"))
+    if answer.trap.harmonic:
+        given = _("the trap is given by its frequencies")
+        reasons |= dict.fromkeys(("sag", "scattering_rate", "heating_rate", "escape", "arm_depth"), given)
+        return reasons
+    if found.sag is None:
+        off = answer.trap.gravity_direction is None
+        reasons["sag"] = _("gravity is off") if off else _("without gravity nothing would be held there")
+    if not math.isfinite(found.heating.scattering_rate):
+        unknown = _("how the atoms scatter light of this wavelength is not known")
+        reasons |= dict.fromkeys(("scattering_rate", "heating_rate"), unknown)
+    if found.escape is None or found.escape.direction is None:
+        reasons["escape"] = _("the way out is not in one direction")
+    if found.arm_depth is None:
+        reasons["arm_depth"] = _("no arm of a beam opens below the depth")
+    return reasons
+
+
+NUMBERS = (
+    "frequencies",
+    "axes",
+    "minimum",
+    "sag",
+    "depth",
+    "depth_temperature",
+    "arm_depth",
+    "scattering_rate",
+    "heating_rate",
+    "volume_curve",
+    "escape",
+)
+"""Names of the numbers of a trap, in the order of its JSON object."""
+
+
+def heading(answer: TrapAnswer) -> str:
+    """What the answer is about: species, state, what the trap is made of."""
+    made = answer.trap.makers if not answer.trap.harmonic else _("given frequencies")
+    return _("{species}, {state}; trap of {made}").format(species=answer.state.key, state=answer.state.name, made=made)
+
+
+def trap_rows(answer: TrapAnswer) -> list[tuple[str, str]]:
+    """Name and value of the numbers of a trap that holds atoms; a clause where one is missing."""
+    found, missing = answer.survey, reasons_missing(answer)
+    direction = None if found.escape is None else found.escape.direction
+    leaves = way_out(answer) + ("" if direction is None else _along(direction))
+    rows = [
+        ("frequencies", _("frequencies"), frequencies_text(answer)),
+        ("depth", _("depth"), depth_text(answer)),
+        ("arm_depth", _("depth to an arm"), _kelvin(found.arm_depth)),
+        ("escape", _("atoms leave"), leaves),
+        ("minimum", _("minimum at"), _place(found.minimum)),
+        ("sag", _("sag"), sag_text(answer)),
+        ("scattering_rate", _("photons scattered"), f"{number(found.heating.scattering_rate)} 1/s"),
+        ("heating_rate", _("heating by them"), f"{number(1e9 * found.heating.heating_rate)} nK/s"),
+    ]
+    gone = {"arm_depth"} if "arm_depth" in missing else set()
+    if not leaves or answer.trap.harmonic:
+        gone |= {"escape", "scattering_rate", "heating_rate", "minimum"}
+    return [
+        (label, text if name not in missing or name == "escape" else f"– ({missing[name]})")
+        for name, label, text in rows
+        if name not in gone
+    ]
+
+
+def mode_rows(answer: TrapAnswer) -> list[tuple[str, str]]:
+    """Each frequency with the direction of its axis; none where there are no frequencies, or they are given."""
+    found = answer.survey
+    if found.frequencies is None or answer.trap.harmonic:
+        return []
+    return [
+        (_("{frequency} Hz").format(frequency=number(float(f), 4)), _along(axis).strip())
+        for f, axis in zip(found.frequencies, found.axes, strict=True)
+    ]
+
+
+def frequencies_text(answer: TrapAnswer) -> str:
+    """The three frequencies; "–" without."""
+    frequencies = answer.survey.frequencies
+    return "–" if frequencies is None else " × ".join(number(float(f), 4) for f in frequencies) + " Hz"
+
+
+def depth_text(answer: TrapAnswer) -> str:
+    """The depth as a temperature; "–" where it is not known."""
+    return _kelvin(answer.survey.depth)
+
+
+def sag_text(answer: TrapAnswer) -> str:
+    """The sag; "–" where it is not known."""
+    sag = answer.survey.sag
+    return "–" if sag is None else _small_length(sag)
+
+
+def _kelvin(energy: float | None) -> str:
+    return "–" if energy is None else temperature(energy / boltzmann)
+
+
+def _small_length(value: float) -> str:
+    """A length that comes out of a search: what is below a picometre is none."""
+    if abs(value) < 1e-12:
+        return "0 µm"
+    return format_quantity(value, best_unit(abs(value), ("nm", "µm", "mm")), digits=3).replace("-", "−")
+
+
+def _place(point: Floats) -> str:
+    texts = (number(1e6 * round(float(part), 12), 4).replace("-", "−") for part in point)
+    return f"({', '.join(texts)}) µm"
+
+
+def _along(direction: Floats) -> str:
+    texts = (f"{float(part) + 0.0:.3f}".replace("-0.000", "0.000").replace("-", "−") for part in direction)
+    return _(" along ({direction})").format(direction=", ".join(texts))
+
+
+def way_out(answer: TrapAnswer) -> str:
+    """Over what atoms leave, in a few words; empty where that is not known."""
+    escape = answer.survey.escape
+    return "" if escape is None else _WAYS_OUT[escape.kind]
+
+
+def note_text(note: Note) -> str:
+    """A note on the trap, with its number, as a sentence."""
+    value = abs(note.value)
+    lengths = {NoteKind.WALL: _length}
+    frequencies = (NoteKind.LINEAR_ZEEMAN, NoteKind.KNIFE_IDLE)
+    return _NOTES[note.kind].format(
+        beam=note.beam,
+        share=percent(value),
+        length=lengths.get(note.kind, number)(value),
+        frequency=_frequency(value) if note.kind in frequencies else "",
+    )
+
+
+def cautions(trap: TrapChoice) -> tuple[str, ...]:
+    """What to mind about the light and the coils that a trap is made of, as sentences."""
+    found = []
+    if any(beam.power.value >= CAUTIOUS_POWER for beam in trap.beams):
+        found.append(
+            _(
+                "Beams from 0.5 W are typically class 4 and, beyond 700 nm, invisible: follow IEC 60825-1 or ANSI "
+                "Z136.1, local rules and your laser safety officer."
+            )
+        )
+    if trap.coils is not None:
+        found.append(
+            _(
+                "Coils carry high currents, get hot and store energy, and their stray field reaches far (0.5 mT is the "
+                "line for active implants): use interlocks, and follow local electrical codes."
+            )
+        )
+    if found:
+        found.append(_("These are planning estimates: your own measurement and licensed practice decide."))
+    return tuple(found)
+
+
+def _length(value: float) -> str:
+    return format_quantity(value, best_unit(value, ("nm", "µm", "mm")), digits=4)
+
+
+def _frequency(value: float) -> str:
+    return format_quantity(value, best_unit(value, ("kHz", "MHz")), digits=2)

@@ -1,0 +1,137 @@
+"""`coldward trap`, as a script calls it."""
+
+from __future__ import annotations
+
+import json
+import math
+import subprocess
+import sys
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+
+from app.__main__ import main
+from physics.constants import boltzmann
+
+ROOT = Path(__file__).resolve().parents[2]
+PLANS = sorted(path for folder in ("plans", "traps") for path in (ROOT / "presets" / folder).glob("*.toml"))
+MADE = ROOT / "tests" / "data" / "plan_of_beams_and_coils.toml"
+KEYS = [
+    "coldward", "version", "input", "trapped", "reason", "frequencies", "axes", "minimum", "sag", "depth",
+    "depth_temperature", "arm_depth", "scattering_rate", "heating_rate", "volume_curve", "escape", "way_out", "reasons",
+    "notes",
+]  # fmt: skip
+NUMBERS = KEYS[5:16]
+QUADRUPOLE = """coldward = 1
+[species]
+key = "87Rb"
+state = "F=1 mF=-1"
+[trap.coils]
+gradient = "150 G/cm"
+[cloud]
+atoms = "1e5"
+temperature = "20 uK"
+"""
+
+
+def trap_json(capsys: pytest.CaptureFixture[str], *arguments: str) -> dict[str, Any]:
+    assert main(["trap", *arguments, "--json"]) == 0
+    captured = capsys.readouterr()
+    assert captured.err == ""
+    answer: dict[str, Any] = json.loads(captured.out, parse_constant=lambda text: pytest.fail(f"{text} in JSON"))
+    assert list(answer) == KEYS
+    assert answer["coldward"] == 1
+    assert set(answer["reasons"]) == {name for name in NUMBERS if answer[name] is None}
+    return answer
+
+
+def changed(tmp_path: Path, old: str, new: str) -> str:
+    text = MADE.read_text(encoding="utf-8")
+    assert old in text
+    path = tmp_path / "changed.toml"
+    path.write_text(text.replace(old, new), encoding="utf-8")
+    return str(path)
+
+
+@pytest.mark.parametrize("plan", [*PLANS, MADE], ids=lambda path: path.stem)
+def test_every_preset_plan_keeps_the_contract(plan: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    answer = trap_json(capsys, str(plan))
+    assert answer["trapped"] is True
+    assert answer["reason"] is None
+    if answer["frequencies"] is not None:
+        assert all(frequency > 0.0 for frequency in answer["frequencies"])
+        np.testing.assert_allclose(np.array(answer["axes"]) @ np.transpose(answer["axes"]), np.eye(3), atol=1e-9)
+    if answer["depth"] is not None:
+        assert answer["depth_temperature"] == pytest.approx(answer["depth"] / boltzmann, rel=1e-12)
+        energy, volume = (np.array(answer["volume_curve"][name]) for name in ("energy", "volume"))
+        assert energy[-1] <= answer["depth"] * (1.0 + 1e-12)
+        assert np.all(np.diff(energy) > 0.0)
+        assert np.all(np.diff(volume) >= 0.0)
+
+
+def test_frequencies_on_the_command_line_are_the_trap(capsys: pytest.CaptureFixture[str]) -> None:
+    flags = ["--frequencies", "120 Hz, 90 Hz, 20 Hz", "--atoms", "1e5", "--temperature", "1 uK", "--depth", "5 uK"]
+    answer = trap_json(capsys, "--species", "87Rb", *flags)
+    assert answer["frequencies"] == [120.0, 90.0, 20.0]
+    assert answer["depth_temperature"] == pytest.approx(5e-6, rel=1e-12)
+    # W(U) = (4 pi/3) (2U/m)^(3/2)/(w1 w2 w3), the ellipsoid of a harmonic potential
+    mass = 86.909180531 * 1.66053906892e-27
+    omegas = math.prod(2.0 * math.pi * f for f in answer["frequencies"])
+    expected = 4.0 * math.pi / 3.0 * (2.0 * answer["depth"] / mass) ** 1.5 / omegas
+    assert answer["volume_curve"]["volume"][-1] == pytest.approx(expected, rel=1e-8)
+    assert answer["reasons"]["sag"] == "the trap is given by its frequencies"
+
+
+def test_a_trap_that_holds_nothing_is_an_answer(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    plan = changed(tmp_path, '"2.5(1) W"', '"2.5 mW"')
+    plan_text = Path(plan).read_text(encoding="utf-8").replace('levitation = "30.5 G/cm"', 'levitation = "1 G/cm"')
+    Path(plan).write_text(plan_text, encoding="utf-8")
+    answer = trap_json(capsys, plan)
+    assert answer["trapped"] is False
+    assert answer["reason"].startswith("gravity pulls the atoms out")
+    assert {answer[name] for name in NUMBERS} == {None}
+    assert main(["trap", plan]) == 0
+    assert "Not trapped: gravity pulls the atoms out" in capsys.readouterr().out
+
+
+def test_a_quadrupole_has_a_depth_and_no_frequencies(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path = tmp_path / "quadrupole.toml"
+    path.write_text(QUADRUPOLE, encoding="utf-8")
+    answer = trap_json(capsys, str(path))
+    assert answer["frequencies"] is None
+    assert "cusp" in answer["reasons"]["frequencies"]
+    assert answer["depth"] > 0.0
+    assert {"field_zero", "wall"} <= {note["id"] for note in answer["notes"]}
+    assert main(["trap", str(path)]) == 0
+    assert "– (the field vanishes at the minimum" in capsys.readouterr().out
+
+
+def test_the_readable_page_has_the_numbers_and_the_cautions(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["trap", str(MADE)]) == 0
+    page = capsys.readouterr().out
+    assert page.startswith("133Cs, F=3 mF=+3; trap of beams A and cross and coils\n")
+    for name in ("frequencies", "depth", "atoms leave", "minimum at", "sag", "photons scattered"):
+        assert f"\n{name}  " in page
+    assert "IEC 60825-1" in page
+    assert "0.5 mT" in page
+    assert "nan" not in page
+    assert main(["trap", str(PLANS[0])]) == 0
+    assert "IEC" not in capsys.readouterr().out
+
+
+def test_a_plan_that_cannot_be_read_is_one_sentence(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["trap", str(tmp_path / "none.toml")]) == 1
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert captured.err.startswith("coldward: ")
+    assert captured.err.count("\n") == 1
+
+
+def test_the_verb_needs_no_window_toolkit_and_no_plotting() -> None:
+    code = (
+        f"import sys; from app.__main__ import main; assert main(['trap', {str(MADE)!r}, '--json']) == 0; "
+        "sys.exit(any(name.split('.')[0] in ('PySide6', 'matplotlib') for name in sys.modules))"
+    )
+    assert subprocess.run([sys.executable, "-c", code], cwd=ROOT, capture_output=True, check=False).returncode == 0

@@ -1,0 +1,147 @@
+"""The harmonic trap that a cloud in beams and coils is put in, and how it follows their uncertain numbers."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from app.answers.trap_inputs import trap_in_use, trap_inputs, trap_slopes
+from app.engine import cloud_answer, trap_answer
+from app.plan import DEFAULT_PLAN, Plan, parse_plan, read_plan
+
+PRESETS = sorted((Path(__file__).parents[2] / "presets" / "traps").glob("*.toml"))
+WITHOUT_FREQUENCIES = {"quadrupole_rubidium"}
+
+CROSSED = """coldward = 1
+[species]
+key = "87Rb"
+state = "F=1 mF=-1"
+[[trap.beam]]
+name = "long"
+wavelength = "1064 nm"
+power = "{power}"
+waist = "72 um"
+direction = [1, 0, 0]
+[[trap.beam]]
+wavelength = "1064 nm"
+power = "480 mW"
+waists = ["85 um", "{vertical}"]
+direction = [0, 1, 0]
+focus = ["0 um", "0 um", "{height}"]
+[cloud]
+atoms = "1.4e5"
+temperature = "400 nK"
+"""
+QUADRUPOLE = """coldward = 1
+[species]
+key = "87Rb"
+state = "F=1 mF=-1"
+[trap.coils]
+gradient = "150 G/cm"
+[cloud]
+atoms = "1e5"
+temperature = "20 uK"
+"""
+
+
+def crossed(power: str = "520 mW", vertical: str = "85 um", height: str = "0 um") -> Plan:
+    return parse_plan(CROSSED.format(power=power, vertical=vertical, height=height), "crossed.toml")
+
+
+def test_what_is_uncertain_of_beams_and_coils_enters_by_name() -> None:
+    assert list(trap_inputs(DEFAULT_PLAN)) == ["frequency 0", "frequency 1", "frequency 2"]
+    assert trap_inputs(crossed()) == {}
+    uncertain = crossed("520(5) mW", "85(1) um", "0(1) um")
+    assert list(trap_inputs(uncertain)) == ["power of beam long", "waists 1 of beam A", "focus 2 of beam A"]
+
+
+def test_a_trap_without_uncertainty_is_that_of_the_survey() -> None:
+    plan = crossed()
+    trap, found = trap_in_use(plan, {}), trap_answer(plan).survey
+    np.testing.assert_array_equal(trap.frequencies, found.frequencies)
+    assert trap.depth == found.depth
+
+
+@pytest.mark.parametrize(
+    ("uncertain", "name", "value", "moved"),
+    [
+        (crossed(power="520(5) mW"), "power of beam long", 0.525, crossed(power="525 mW")),
+        (crossed(vertical="85(1) um"), "waists 1 of beam A", 86e-6, crossed(vertical="86 um")),
+        (crossed(height="0(2) um"), "focus 2 of beam A", -2e-6, crossed(height="-2 um")),
+    ],
+    ids=["power", "waist", "focus"],
+)
+def test_one_deviation_gives_what_a_new_survey_gives(uncertain: Plan, name: str, value: float, moved: Plan) -> None:
+    trap, found = trap_in_use(uncertain, {name: value}), trap_answer(moved).survey
+    central = trap_answer(uncertain).survey
+    np.testing.assert_allclose(trap.frequencies, found.frequencies, rtol=1e-3)
+    assert found.depth is not None
+    assert central.depth is not None
+    # the change of the depth itself, to the second order that is left out
+    assert trap.depth - central.depth == pytest.approx(found.depth - central.depth, rel=0.05)
+
+
+def test_draws_of_a_number_make_as_many_traps() -> None:
+    uncertain = crossed(power="520(5) mW")
+    trap = trap_in_use(uncertain, {"power of beam long": np.array([0.51, 0.52, 0.53])})
+    assert trap.frequencies.shape == (3, 3)
+    assert np.shape(trap.depth) == (3,)
+    assert np.all(np.diff(trap.depth) > 0.0)
+    np.testing.assert_allclose(trap.frequencies[1], trap_answer(uncertain).survey.frequencies, rtol=1e-12)
+
+
+def test_an_uncertain_power_spreads_what_depends_on_it() -> None:
+    answer = cloud_answer(crossed(power="520(26) mW"))
+    slope = trap_slopes(answer.plan)["power of beam long"]
+    spread = answer.spread("mean_frequency")
+    assert spread is not None
+    # 16 and 84 percent lie 0.994 deviations to both sides
+    expected = np.exp(2.0 * 0.99446 * 0.05 * np.mean(slope.frequencies))
+    assert spread.high / spread.low == pytest.approx(expected, rel=1e-3)
+    assert {"harmonic_trap", "trap_uncertainty"} <= {caveat.id for caveat in answer.caveats}
+    assert cloud_answer(crossed()).spread("mean_frequency") is None
+
+
+@pytest.mark.parametrize(
+    ("plan", "sentence"),
+    [
+        (
+            parse_plan(QUADRUPOLE, "a.toml"),
+            r"^the trap of this plan, coils, has no frequencies, .*: the field vanishes",
+        ),
+        (
+            parse_plan(
+                CROSSED.format(power="1 mW", vertical="85 um", height="0 um").replace("480 mW", "1 mW"), "a.toml"
+            ),
+            r"^the trap of this plan, beams long and A, holds no atoms: gravity pulls the atoms out",
+        ),
+    ],
+    ids=["cusp", "falls"],
+)
+def test_a_trap_without_frequencies_is_one_sentence(plan: Plan, sentence: str) -> None:
+    with pytest.raises(ValueError, match=sentence):
+        cloud_answer(plan)
+
+
+@pytest.mark.parametrize(
+    "path", [path for path in PRESETS if path.stem not in WITHOUT_FREQUENCIES], ids=lambda p: p.stem
+)
+def test_every_preset_trap_with_frequencies_holds_a_cloud_that_is_answered(path: Path) -> None:
+    answer = cloud_answer(read_plan(path))
+    assert answer.value("peak_phase_space_density") > 0.0
+    assert answer.value("truncation") > 3.0
+    spread = answer.spread("mean_frequency")
+    assert spread is not None
+    assert spread.low < answer.value("mean_frequency") < spread.high
+    (caveat,) = (caveat for caveat in answer.caveats if caveat.id == "harmonic_trap")
+    assert caveat.value is not None
+    assert caveat.value > 0.5
+
+
+@pytest.mark.parametrize("name", sorted(WITHOUT_FREQUENCIES))
+def test_a_preset_trap_without_frequencies_is_refused_as_yet(name: str) -> None:
+    (path,) = (path for path in PRESETS if path.stem == name)
+    with pytest.raises(ValueError, match="has no frequencies"):
+        cloud_answer(read_plan(path))
