@@ -40,6 +40,9 @@ TOLERANCE = 1e-7
 ROWS = 240
 """Rows of the columns over a whole ramp, shared by its stages according to their duration."""
 
+MOST_STEPS = 20_000
+"""Of a stretch of a ramp: hundreds are usual where rates range over many decades."""
+
 FEWEST_ROWS = 12
 """Of a stage."""
 
@@ -131,7 +134,8 @@ def evaporate(
 
     Raises
     ------
-    ValueError : for values that cannot be, a scattering length that is needed and unknown, a control without a start.
+    ValueError : for values that cannot be, a scattering length that is needed and unknown, a control without a start,
+        or rates that make more than `MOST_STEPS` steps of a stage.
     """
     for name, value, unit in (("atom number", atoms, ""), ("temperature", temperature, "K")):
         if not 0.0 < value < math.inf:
@@ -275,6 +279,10 @@ class _Run:
                 reason = EndReason.NOT_TRAPPED
                 break
             steps.append(step)
+            if len(steps) > MOST_STEPS:
+                raise ValueError(
+                    f"the ramp changes too fast to follow at {time:g} s of a stage, after {MOST_STEPS} steps"
+                )
             now = self._events(kinetics, step.end, step.finish)
             for event, missing in now.items():
                 if missing <= 0.0:

@@ -31,13 +31,14 @@ class Budget:
 
     @property
     def atoms_missing(self) -> float:
-        """What the sum over the processes misses of the difference, over the atoms before. [1]"""
+        """What the sum over the processes misses of the difference, over the atoms before. [1] An error of steps."""
         return (self.atoms_before - self.atoms_after - sum(self.atoms.values())) / self.atoms_before
 
     @property
     def energy_missing(self) -> float:
-        """The same of the energy. [1]"""
-        return (self.energy_after - self.energy_before - sum(self.energy.values())) / self.energy_before
+        """The same of the energy, over the larger of that before and after. [1]"""
+        missing = self.energy_after - self.energy_before - sum(self.energy.values())
+        return missing / max(self.energy_before, self.energy_after)
 
     def share(self, process: Process) -> float:
         """Of the atoms lost; NaN where none were. [1]"""

@@ -140,7 +140,7 @@ class Kinetics:
         if averages is None:
             raise OutOfRange
         eta = math.exp(averages.log_truncation)
-        if eta < LOWEST_TRUNCATION:
+        if not LOWEST_TRUNCATION <= eta < 1e20:
             raise OutOfRange
         kT = trap.depth / eta
         density = atoms / (trap.level_volume * math.exp(averages.log_number))

@@ -7,6 +7,7 @@ whose trap changes its shape they depend also on where the controls stand.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from functools import cache, lru_cache
 from typing import NamedTuple, Protocol
@@ -92,9 +93,11 @@ class FixedShape:
         position, rows = _rows(curve, _FINE)
         still = np.zeros((len(rows), 1))
         self._spline = Spline(position, np.concatenate([rows, still], axis=-1))
+        self._exponent, self._high = curve.exponent, float(position[-1])
 
     def averages(self, place: float, position: float) -> Averages:
-        return Averages._make(self._spline.at(position))
+        found = Averages._make(self._spline.at(min(position, self._high)))
+        return found if position <= self._high else _colder(found, self._exponent, position, self._high)
 
 
 class ChangingShape:
@@ -119,13 +122,13 @@ class ChangingShape:
         both = Spline(places, along.reshape(count, -1)).pieces.reshape(-1, 4, _EVEN - 1, 4, columns)
         self._pieces = np.ascontiguousarray(np.swapaxes(both, 1, 2)).reshape(-1, _EVEN - 1, 16, columns)
         self._places = Spline(places, np.zeros((count, 1)))
-        self._low, self._step = low, (high - low) / (_EVEN - 1)
+        self._exponent = curves[0].exponent
+        self._low, self._high, self._step = low, high, (high - low) / (_EVEN - 1)
 
     def averages(self, place: float, position: float) -> Averages:
         i, s = self._places.place(place)
         x = (position - self._low) / self._step
         j = min(max(int(x), 0), _EVEN - 2)
-        # Beyond the table eta is thousands or below 0.05: held at its end, which no result depends on.
         t = min(max(x - j, 0.0), 1.0) * self._step
         s2, t2 = s * s, t * t
         s3, t3 = s2 * s, t2 * t
@@ -135,7 +138,23 @@ class ChangingShape:
             *(s2, s2 * t, s2 * t2, s2 * t3),
             *(s3, s3 * t, s3 * t2, s3 * t3),
         )
-        return Averages._make(np.dot(weights, self._pieces[i, j]).tolist())
+        found = Averages._make(np.dot(weights, self._pieces[i, j]).tolist())
+        return found if x <= _EVEN - 1 else _colder(found, self._exponent, position, self._high)
+
+
+def _colder(last: Averages, exponent: float, position: float, end: float) -> Averages:
+    """Averages beyond the end of a table, from those there: of an uncut cloud at the bottom of the trap.
+
+    There E/NkT is a constant, so that eta goes as 1/h, which is 1 + e^L.
+    """
+    further = math.log1p(math.exp(position)) - math.log1p(math.exp(end)) if position < 600.0 else position - end
+    return last._replace(
+        log_truncation=last.log_truncation + further,
+        log_number=last.log_number - exponent * further,
+        log_number_half=last.log_number_half - exponent * further,
+        log_number_third=last.log_number_third - exponent * further,
+        log_evaporation=last.log_evaporation + further,
+    )
 
 
 @cache

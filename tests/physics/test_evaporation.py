@@ -500,4 +500,5 @@ def test_a_very_deep_trap_is_that_of_a_harmonic_bottom(eta: float) -> None:
     assert runs[1].temperature[0] == pytest.approx(1e-5, rel=3e-2 if eta < 1e3 else 3e-3)
     for name in ("atoms", "temperature"):
         one, other = (run.final[name] for run in runs)
-        assert other == pytest.approx(one, rel=5.0 / eta)
+        # The table ends at eta = 2000, where the arms still hold a thousandth.
+        assert other == pytest.approx(one, rel=max(5.0 / eta, 1e-3))
