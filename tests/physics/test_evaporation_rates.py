@@ -1,0 +1,223 @@
+"""Rates of a cut cloud along a ramp: limits with closed answers, and an integration of its own."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass
+from types import MappingProxyType
+
+import numpy as np
+import pytest
+from scipy.integrate import solve_ivp
+from scipy.special import gammainc
+
+from physics.constants import atomic_mass, boltzmann
+from physics.curve_shape import CurveShape
+from physics.evaporation import evaporate
+from physics.evaporation_rates import Process
+from physics.gas import Gas
+from physics.losses import Losses
+from physics.particles import Statistics
+from physics.ramp_shapes import Shape
+from physics.ramps import Control, Knob, Move, Ramp, Stage
+from physics.trap_path import DEPTH, GRADIENT, SCALE, HarmonicPath, QuadrupolePath, TrapPoint
+from physics.traps import HarmonicTrap
+
+MASS = 87.0 * atomic_mass
+RUBIDIUM = Gas(statistics=Statistics.BOSE, mass=MASS, scattering_length=5.3e-9)
+APART = Gas(statistics=Statistics.FERMI, mass=MASS)
+"""Atoms that do not collide."""
+
+
+def trap(depth: float = 3e-4, *frequencies: float) -> HarmonicPath:
+    """Depth in kelvin."""
+    return HarmonicPath(
+        mass=MASS, trap=HarmonicTrap(frequencies=frequencies or (500.0, 500.0, 100.0), depth=boltzmann * depth)
+    )
+
+
+def hold(duration: float) -> Ramp:
+    return Ramp(stages=(Stage(duration=duration),))
+
+
+def lowering(*ends: float, duration: float = 2.0) -> Ramp:
+    moves = [Move(control=SCALE, end=end, shape=Shape.EXPONENTIAL) for end in ends]
+    return Ramp(stages=tuple(Stage(duration=duration, moves=(move,)) for move in moves))
+
+
+# An integration of its own.
+
+
+def test_plain_evaporation_goes_as_the_published_equations_integrated_by_the_library() -> None:
+    # Luiten, Reynolds, Walraven, Phys. Rev. A 53, 381 (1996), harmonic trap: dN/dt = -n^2 sigma v e^-eta V_ev,
+    # dE/dt = dN/dt (e_t + kappa kT), written in N and T with the library's gamma functions and a constant sigma.
+    cold = Gas(statistics=Statistics.BOSE, mass=MASS, scattering_length=1e-12)
+    depth, angular = boltzmann * 1e-4, 2.0 * math.pi * (500.0 * 500.0 * 100.0) ** (1.0 / 3.0)
+    sigma = 8.0 * math.pi * 1e-24
+    stretch = (5e-9 / 1e-12) ** 2  # the same collisions in a shorter unit of time
+
+    def slopes(t: float, y: np.ndarray) -> list[float]:
+        N, T = np.exp(y)
+        kT = boltzmann * T
+        eta = depth / kT
+        P3, P4, P5 = gammainc(3, eta), gammainc(4, eta), gammainc(5, eta)
+        density = N / (P3 * (2.0 * math.pi * kT / (MASS * angular**2)) ** 1.5)
+        speed = math.sqrt(8.0 * kT / (math.pi * MASS))
+        volume = eta - 4.0 * P4 / P3
+        rate = stretch * density * sigma * speed * math.exp(-eta) * volume
+        carried = eta + 1.0 - P5 / P3 / volume
+        energy = 3.0 * P4 / P3
+        # C = dE/dT at fixed N and depth.
+        p3 = eta**2 * math.exp(-eta) / 2.0
+        heat = energy - eta * p3 / P3 * (eta - energy)
+        return [-rate, -rate * (carried - energy) / heat]
+
+    exact = solve_ivp(slopes, (0.0, 10.0), np.log([2e6, 2e-5]), method="DOP853", rtol=1e-11, atol=1e-11)
+    # The same number of collisions takes longer with the short scattering length.
+    run = evaporate(cold, 2e6, 2e-5, hold(10.0 * stretch), trap(1e-4))
+    assert run.atoms[-1] == pytest.approx(math.exp(exact.y[0, -1]), rel=1e-6)
+    assert run.temperature[-1] == pytest.approx(math.exp(exact.y[1, -1]), rel=1e-6)
+    assert run.atoms[-1] < 1.5e6
+
+
+# Limits with closed answers.
+
+
+def test_background_loss_keeps_the_temperature() -> None:
+    run = evaporate(APART, 1e6, 1e-5, hold(30.0), trap(), losses=Losses(background_lifetime=20.0))
+    assert run.time[-1] == 30.0
+    np.testing.assert_allclose(run.atoms, 1e6 * np.exp(-run.time / 20.0), rtol=1e-6)
+    np.testing.assert_allclose(run.temperature, 1e-5, rtol=1e-7)
+
+
+@pytest.mark.parametrize(("body", "share"), [("two_body", 0.25), ("three_body", 1.0 / 3.0)])
+def test_losses_of_the_centre_heat(body: str, share: float) -> None:
+    # dT/dt = (T/4) K2 <n>, (T/3) K3 <n^2> in a deep harmonic trap: T as the power -1/4 or -1/3 of N.
+    constant = 1e-19 if body == "two_body" else 3e-38
+    run = evaporate(APART, 1e6, 1e-5, hold(1.0), trap(), losses=Losses(**{body: constant}))
+    assert 0.6e6 < run.atoms[-1] < 0.9e6
+    np.testing.assert_allclose(run.temperature, 1e-5 * (run.atoms / 1e6) ** -share, rtol=1e-6)
+    n = run.rows.peak_density[0]
+    rate = constant * (n / 8.0**0.5 if body == "two_body" else n**2 / 27.0**0.5)
+    assert (run.rows.two_body_rate + run.rows.three_body_rate)[0] == pytest.approx(rate, rel=1e-7)
+
+
+def test_recombination_heat_comes_once_an_event() -> None:
+    losses = Losses(three_body=3e-35, recombination_heat=boltzmann * 1e-4)
+    budget = evaporate(APART, 1e6, 1e-5, hold(0.2), trap(), losses=losses).budget
+    events = budget.atoms[Process.THREE_BODY] / 3.0
+    assert budget.energy[Process.RECOMBINATION] == pytest.approx(events * boltzmann * 1e-4, rel=1e-9)
+
+
+def test_heating_raises_the_temperature_at_its_rate() -> None:
+    deep = trap(1e-3)
+    run = evaporate(APART, 1e6, 1e-5, hold(2.0), deep, losses=Losses(heating=1e-6))
+    assert run.temperature[-1] == pytest.approx(1.2e-5, rel=1e-7)
+    light = HarmonicPath(mass=MASS, trap=deep.trap, light_heating=3.0 * boltzmann * 1e-6)
+    assert evaporate(APART, 1e6, 1e-5, hold(2.0), light).temperature[-1] == pytest.approx(1.2e-5, rel=1e-7)
+    # Noise makes the energy grow by e at the mean over the axes of pi^2 f^2 S.
+    S = 1e-7
+    noisy = evaporate(APART, 1e6, 1e-5, hold(2.0), deep, losses=Losses(intensity_noise=S))
+    growth = math.pi**2 * S * (2.0 * 500.0**2 + 100.0**2) / 3.0
+    assert noisy.temperature[-1] == pytest.approx(1e-5 * math.exp(2.0 * growth), rel=1e-7)
+
+
+@pytest.mark.parametrize("shape", [Shape.LINEAR, Shape.EXPONENTIAL])
+@pytest.mark.parametrize("end", [4.0, 0.5])
+def test_a_slow_change_of_strength_keeps_the_phase_space_density(shape: Shape, end: float) -> None:
+    # T goes as the frequencies, sqrt(scale); depth and T apart, an almost uncut cloud.
+    ramp = Ramp(stages=(Stage(duration=1.0, moves=(Move(control=SCALE, end=end, shape=shape),)),))
+    run = evaporate(APART, 1e6, 1e-5, ramp, trap(4e-4))
+    assert run.temperature[-1] == pytest.approx(1e-5 * math.sqrt(end), rel=2e-6)
+    assert run.rows.classical_phase_space_density[-1] == pytest.approx(
+        run.rows.classical_phase_space_density[0], rel=1e-5
+    )
+
+
+def test_compression_of_a_quadrupole() -> None:
+    # W ~ (U/B')^3 and N T^-9/2 B'^3: T as B'^(2/3).
+    path = QuadrupolePath(moment=4.6e-24, gradient=1.0, depth=boltzmann * 5e-3)
+    ramp = Ramp(stages=(Stage(duration=1.0, moves=(Move(control=GRADIENT, end=3.0),)),))
+    run = evaporate(APART, 1e6, 5e-5, ramp, path)
+    assert run.temperature[-1] == pytest.approx(5e-5 * 3.0 ** (2.0 / 3.0), rel=1e-6)
+
+
+BIAS = Control(Knob.BIAS)
+
+
+@dataclass(frozen=True)
+class Morphing:
+    """A trap whose volume curve goes from U^(3/2) to U^3 as its control goes from 0 to 1, at one depth and volume."""
+
+    depth: float
+    nodes: int = 25
+
+    @property
+    def standing(self) -> Mapping[Control, float]:
+        return MappingProxyType({BIAS: 0.0})
+
+    def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+        d = 1.5 + 1.5 * controls[BIAS]
+        u = np.geomspace(1e-4, 1.0, 50)
+        return TrapPoint(depth=self.depth, volume=1e-12, curve=CurveShape(energies=u, volumes=u**d, exponent=d))
+
+
+def test_a_slow_change_of_shape_changes_the_phase_space_density_by_the_exponents() -> None:
+    # Entropy: D2/D1 = e^(d2 - d1) for a cloud that is hardly cut.
+    ramp = Ramp(stages=(Stage(duration=1.0, moves=(Move(control=BIAS, end=1.0),)),))
+    for kelvin in (1e-6, 2e-6):
+        run = evaporate(APART, 1e6, kelvin, ramp, Morphing(depth=boltzmann * 9e-5))
+        assert float(np.min(run.rows.truncation)) > 12.0
+        change = run.rows.classical_phase_space_density[-1] / run.rows.classical_phase_space_density[0]
+        assert change == pytest.approx(math.exp(1.5), rel=1e-4)
+        assert run.budget.atoms[Process.SPILLED] < 1e-3 * 1e6
+
+
+def test_spilling_of_a_light_trap() -> None:
+    # d ln N/d ln U = (eta^3/4) e^-eta/P(3, eta) without collisions, at the first moment.
+    for eta in (4.0, 6.0):
+        run = evaporate(APART, 1e6, 3e-4 / eta, lowering(0.999), trap())
+        P = float(gammainc(3, eta))
+        slope = math.log(run.atoms[-1] / 1e6) / math.log(0.999)
+        assert slope == pytest.approx(eta**3 / 4.0 * math.exp(-eta) / P, rel=3e-3)
+    # A knife spills twice as much, at the same frequencies, and does no work.
+    cut = Ramp(
+        stages=(Stage(duration=1.0, moves=(Move(control=DEPTH, start=boltzmann * 3e-4, end=boltzmann * 2.7e-4),)),)
+    )
+    run = evaporate(APART, 1e6, 3e-4 / 6.0, cut, trap())
+    assert run.temperature[-1] == pytest.approx(3e-4 / 6.0, rel=1e-6)
+    assert run.atoms[-1] / 1e6 == pytest.approx(float(gammainc(3, 5.4) / gammainc(3, 6.0)), rel=1e-7)
+    assert abs(run.budget.energy[Process.WORK]) < 1e-7 * run.budget.energy_before
+
+
+def test_polarised_fermions_do_not_evaporate() -> None:
+    run = evaporate(APART, 1e6, 5e-5, hold(5.0), trap())
+    assert run.atoms[-1] == pytest.approx(1e6, rel=1e-12)
+    assert run.rows.elastic_collision_rate[-1] == 0.0
+
+
+def test_a_tabulated_volume_curve_is_as_good_as_the_closed_form() -> None:
+    u = np.geomspace(1e-4, 1.0, 60)
+    curve = CurveShape(energies=u, volumes=u**1.5)
+    closed = trap()
+
+    @dataclass(frozen=True)
+    class Tabulated:
+        nodes: int = 25
+
+        @property
+        def standing(self) -> Mapping[Control, float]:
+            return closed.standing
+
+        def at(self, controls: Mapping[Control, float]) -> TrapPoint:
+            point = closed.at(controls)
+            # A new curve at each place, so that the changing table is used.
+            again = CurveShape(energies=u, volumes=curve.volumes)
+            return TrapPoint(depth=point.depth, volume=point.volume, curve=again, frequencies=point.frequencies)
+
+    losses = Losses(background_lifetime=30.0, three_body=4e-41)
+    one = evaporate(RUBIDIUM, 2e6, 3e-5, lowering(0.1), closed, losses=losses)
+    other = evaporate(RUBIDIUM, 2e6, 3e-5, lowering(0.1), Tabulated(), losses=losses)
+    assert other.atoms[-1] == pytest.approx(one.atoms[-1], rel=1e-6)
+    assert other.temperature[-1] == pytest.approx(one.temperature[-1], rel=1e-6)
