@@ -65,22 +65,22 @@ def counted_volumes(
     mark : answers a question about points (n, 3).
     """
     landscape, sound, masks = _region(landscape, start, bottom, float(energies[-1]))
-    late = [widened(landscape.reach(start, bottom + _BEFORE * energy).masks) for energy in inner_passes]
+    late = [_beyond(landscape, start, bottom + _BEFORE * energy) for energy in inner_passes]
     volumes, marked = np.zeros(len(energies)), np.zeros(len(energies))
     for k, mask in enumerate(masks):
         cells = np.argwhere(mask)
         if not len(cells):
             continue
         parts = _parts(landscape, k, cells) if len(cells) < _MANY else _wholes(landscape, k, cells)
-        height = parts.energies - bottom
-        for energy, before in zip(inner_passes, late, strict=True):
+        height, half = parts.energies - bottom, parts.half_ranges
+        for energy, beyond in zip(inner_passes, late, strict=True):
             # Low places that were not reached below a pass join at its energy.
-            apart = ~before[k][tuple(cells.T)][:, np.newaxis]
-            height = np.where(apart & (height < energy), energy, height)
-        near = height - np.sum(parts.half_ranges, axis=-1) < energies[-1]
+            apart = beyond[k][tuple(cells.T)][:, np.newaxis] & (height < energy)
+            height, half = np.where(apart, energy, height), np.where(apart[..., np.newaxis], 0.0, half)
+        near = height - np.sum(half, axis=-1) < energies[-1]
         r = parts.points[near]
         share = _share(landscape, masks, k, np.broadcast_to(cells[:, np.newaxis], (*near.shape, 3))[near], r)
-        values = height[near], parts.half_ranges[near], parts.volumes[near] * share
+        values = height[near], half[near], parts.volumes[near] * share
         asked = mark(r)
         volumes += _spread(values, energies)
         marked += _spread((values[0][asked], values[1][asked], values[2][asked]), energies)
@@ -181,6 +181,14 @@ def _share(landscape: Landscape, masks: Sequence[Mask], k: int, cells: NDArray[n
             total = total + np.where(there, 1.0 / other.cell_volumes.ravel()[index], 0.0)
     share: Floats = own / total
     return share
+
+
+def _beyond(landscape: Landscape, start: Floats, level: float) -> tuple[Mask, ...]:
+    """Cells below a level that are not reached, with those around them that are around none that is reached."""
+    reached = landscape.reach(start, level).masks
+    others = tuple((energy < level) & ~mask for energy, mask in zip(landscape.energies, reached, strict=True))
+    around = zip(others, widened(others), widened(reached), strict=True)
+    return tuple(other | (wide & ~near) for other, wide, near in around)
 
 
 def _region(

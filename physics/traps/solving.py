@@ -32,6 +32,8 @@ _ALL = "factor on all powers"
 _CLOSE = 1e-6
 """Relative accuracy of a solution."""
 
+_MOST_STEPS = 40
+
 _FOUND = 1e-4
 """Relative distance from the wanted value that counts as met; where the trap lets go, the values jump."""
 
@@ -221,18 +223,26 @@ def lowest_power(trap: Trap, state: State, beam: str) -> float:
             low = middle
         if high < 1e-12 * start:
             raise NoSolution(f"the trap holds atoms down to no power at all of beam {beam}")
-    minimum = as_floats(found.minimum)
-    edge = high
-    for near in (0.0, 1e-3, 1e-5):
-        powers = [edge * (1.0 + near + share) for share in ((0.0, 0.01) if near == 0.0 else (0.0, near))]
-        squares = []
-        for power in reversed(powers):
-            square, minimum = _stiffness(trap, state, beam, power, minimum)
-            squares.append(square)
-        far, close = squares
-        if not far > close > 0.0:
+    return _edge(trap, state, beam, high, as_floats(found.minimum))
+
+
+def _edge(trap: Trap, state: State, beam: str, power: float, minimum: Floats) -> float:
+    """Where the square of the determinant of the Hessian goes to zero, coming down from a power at which it is not."""
+    far, (far_square, minimum) = 1.02 * power, _stiffness(trap, state, beam, 1.02 * power, minimum)
+    square, minimum = _stiffness(trap, state, beam, power, minimum)
+    edge = power
+    for _ in range(_MOST_STEPS):
+        if not far_square > square > 0.0:
             break
-        edge = powers[0] - close * (powers[1] - powers[0]) / (far - close)
+        edge = power - square * (far - power) / (far_square - square)
+        if power - edge < _CLOSE * power:
+            break
+        for part in (0.1, 0.3, 0.6, 0.9):
+            closer = edge + part * (power - edge)
+            next_square, next_minimum = _stiffness(trap, state, beam, closer, minimum)
+            if next_square > 0.0:
+                break
+        far, far_square, power, square, minimum = power, square, closer, next_square, next_minimum
     return edge
 
 

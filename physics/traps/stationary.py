@@ -7,6 +7,7 @@ passes (one).
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -31,6 +32,9 @@ _TOGETHER = 3.0
 _FEW, _NEAR, _LEFT = 50, 3.0, 0.3
 """With more starts than a few, only those count whose first step is shorter than so many cells and leaves no more than
 this part of the force."""
+
+_MOST_AROUND, _AROUND = 4, np.array([0.15, 0.4, 1.0])
+"""The lowest minima around which passes are looked for once more, and distances in cells."""
 
 _NOTHING = 1e-4
 """Share of the deepest light shift below which a place counts as outside, where there is nothing but light."""
@@ -67,13 +71,35 @@ def stationary_points(landscape: Landscape) -> list[StationaryPoint]:
     searches = [(chart, *_starts(landscape, index)) for index, chart in enumerate(landscape.charts)]
     if potential.zeeman_slope > 0.0:
         searches += [(landscape.charts[-1], *_beside(potential, zero)) for zero in zeros]
-    for chart, starts, edges in searches:
-        for point in _refined(potential, chart, starts, edges):
+
+    def add(points: list[StationaryPoint]) -> None:
+        for point in points:
             # Newton's method also closes in on a cusp from all sides, whether it is a minimum or not.
             at_zero = any(np.linalg.norm(point.position - zero) < 1e-8 * potential.length for zero in zeros)
             if not at_zero and all(_apart(point, other) for other in found):
                 found.append(point)
+
+    for chart, starts, edges in searches:
+        add(_refined(potential, starts, edges, chart))
+    minima = [point for point in found if point.minimum and not point.cusp]
+    for chart in landscape.charts:
+        # A pass that is about to merge with a minimum lies in the same cell.
+        add(_refined(potential, *_around(chart, minima)))
     return sorted(found, key=lambda point: point.energy)
+
+
+def _around(chart: Chart, minima: Sequence[StationaryPoint]) -> tuple[Floats, Floats]:
+    """Starts around minima, along the axes of their Hessians in units of the cell that holds them."""
+    starts, edges = [np.zeros((0, 3))], [np.zeros((0, 3, 3))]
+    for minimum in minima[:_MOST_AROUND]:
+        index, inside = chart.cells_of(minimum.position)
+        if inside:
+            edge = chart.cell_edges(np.array([np.unravel_index(int(index), chart.shape)]))
+            _, vectors = np.linalg.eigh(edge[0].T @ minimum.curvature @ edge[0])
+            ways = np.concatenate([vectors.T, -vectors.T]) @ edge[0].T
+            starts.append(minimum.position + (_AROUND[:, np.newaxis, np.newaxis] * ways).reshape(-1, 3))
+            edges.append(np.repeat(edge, len(starts[-1]), axis=0))
+    return np.concatenate(starts), np.concatenate(edges)
 
 
 def _beside(potential: Potential, zero: Floats) -> tuple[Floats, Floats]:
@@ -183,14 +209,16 @@ def _solved(matrices: Floats, right: Floats) -> tuple[Floats, Floats]:
     return np.einsum("nji,nj->ni", adjugate, right) / safe[:, np.newaxis], determinant
 
 
-def _refined(potential: Potential, chart: Chart, starts: Floats, edges: Floats) -> list[StationaryPoint]:
-    """What Newton's method reaches from starts, in units of their cells; what strays far is dropped."""
+def _refined(potential: Potential, starts: Floats, edges: Floats, chart: Chart | None = None) -> list[StationaryPoint]:
+    """What Newton's method reaches from starts, in units of their cells; what strays far is dropped.
+
+    With a chart, starts that head for the same place in it count once.
+    """
     r, alive = starts.copy(), np.arange(len(starts))
     units = np.linalg.inv(edges) if len(starts) else edges
     done: list[tuple[Floats, float, int]] = []
     for count in range(_STEPS):
-        if 0 < count < 5:
-            # Neighbours head for the same place: one of them is enough.
+        if chart is not None and 0 < count < 5:
             near = np.rint(_TOGETHER**count * chart.cell_coordinates(r[alive])).astype(np.int64)
             alive = alive[np.sort(np.unique(near, axis=0, return_index=True)[1])]
         if not len(alive):

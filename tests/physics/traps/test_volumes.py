@@ -103,17 +103,20 @@ def test_one_beam_without_gravity_has_the_volume_of_its_integral(single: Trap, r
     assert np.isnan(curve.volume(0.96 * found.depth))  # type: ignore[operator]
 
 
-def sagging_crossing(found: Survey, parts: list[float], count: int, seed: int) -> tuple[Any, Any]:
-    """Volume and its standard deviation by random points: around the crossing, and along each of the four arms.
+def sagging_crossing(
+    found: Survey, parts: list[float], core: float, far: float, wide: float, seed: int
+) -> tuple[Any, Any]:
+    """Volume and its variance by random points: in a cube around the crossing, and along its four arms.
 
-    What is beyond the barrier below a beam is told by the slope: there, and only there, the potential falls downwards
-    more than half a beam radius below the axis.
+    The half edge of the cube is `core` [m], and it holds all where `far` is 0. Arms are followed up to `far` [m], over
+    `wide` beam radii to each side. What is beyond the barrier below a beam is told by the slope: there, and only there,
+    the potential falls downwards more than half a beam radius below the axis.
     """
     potential = found.potential
     assert potential is not None
-    rng = np.random.default_rng(seed)
+    rng, count = np.random.default_rng(seed), 300_000
     limits = found.energy_at_minimum + shares(found, *parts)  # type: ignore[operator]
-    near, far = 2.5e-4, 3e-2
+    near = 2.5e-4
     total, variance = np.zeros(len(parts)), np.zeros(len(parts))
 
     def count_in(points: Any, each: Any) -> None:
@@ -128,33 +131,40 @@ def sagging_crossing(found: Survey, parts: list[float], count: int, seed: int) -
             total[k] += np.mean(values)
             variance[k] += np.var(values) / len(values)
 
-    # Half of the points in a cube around the minimum, half in the rest of the square where the beams overlap.
-    core = 9e-5
     x, y, z = rng.uniform(-core, core, (3, count))
     count_in(np.stack([x, y, z], axis=-1), (2.0 * core) ** 3)
+    if far == 0.0:
+        return total, variance
     x, y = rng.uniform(-near, near, (2, count))
     z = rng.uniform(-1.2e-4, 1.2e-4, count)
     outside = (np.abs(x) > core) | (np.abs(y) > core) | (np.abs(z) > core)
     count_in(np.stack([x, y, z], axis=-1), np.where(outside, (2.0 * near) ** 2 * 2.4e-4, 0.0))
     for axis, beam in enumerate(potential.beams):
         s = near * np.exp(rng.random(count) * math.log(far / near))
-        width = 2.2 * beam.widths(s)[:, 0]
+        width = wide * beam.widths(s)[:, 0]
         aside = np.minimum(width, near)
         points = np.empty((count, 3))
         points[:, axis] = rng.choice([-1.0, 1.0], count) * s
         points[:, 1 - axis] = aside * rng.uniform(-1.0, 1.0, count)
         points[:, 2] = width * rng.uniform(-1.0, 1.0, count)
         count_in(points, 2.0 * s * math.log(far / near) * 2.0 * aside * 2.0 * width)
-    return total, np.sqrt(variance)
+    return total, variance
 
 
 def test_a_sagging_crossing_has_the_volume_that_random_points_count(crossed: Trap, rubidium: State) -> None:
     found = survey(crossed, rubidium)
     parts = [0.2, 0.5, 0.6, 0.8, 0.95]
-    runs = [sagging_crossing(found, parts, 400_000, seed) for seed in range(4)]
-    counted = np.mean([total for total, _ in runs], axis=0)
-    deviation = np.sqrt(np.sum([sigma**2 for _, sigma in runs], axis=0)) / len(runs)
-    assert np.all(deviation < 0.005 * counted)
+    # Below 0.55 of the depth nothing is in the arms; at 0.6 the longer one is filled over 2.6 mm, close to its axis.
+    setups = [
+        (parts[:1], 4.5e-5, 0.0, 0.0),
+        (parts[1:2], 9e-5, 0.0, 0.0),
+        (parts[2:3], 9e-5, 4e-3, 0.5),
+        (parts[3:], 9e-5, 3e-2, 2.2),
+    ]
+    runs = [[sagging_crossing(found, *setup, seed) for setup in setups] for seed in range(3)]
+    counted = np.mean([np.concatenate([total for total, _ in run]) for run in runs], axis=0)
+    deviation = np.sqrt(np.mean([np.concatenate([square for _, square in run]) for run in runs], axis=0) / len(runs))
+    assert np.all(deviation < 0.008 * counted)
     U = shares(found, *parts)
     curve = curve_of(found)
     assert np.all(np.abs(curve.volume(U) - counted) < 0.01 * counted + 2.0 * deviation)
@@ -176,7 +186,7 @@ def test_a_well_beyond_a_pass_joins_at_the_energy_of_the_pass(rubidium: State) -
     # Two equal beams side by side: twice the volume of one, but only above the pass between them.
     beams = tuple(
         GaussianBeam(name=name, wavelength=1064e-9, power=0.5, waists=40e-6, direction=(1, 0, 0), focus=(0, y, 0))
-        for name, y in (("A", -1e-4), ("B", 1.02e-4))
+        for name, y in (("A", -3.6e-5), ("B", 3.6e-5))
     )
     found = survey(Trap(beams=beams), rubidium)
     assert found.basin is not None
@@ -184,7 +194,8 @@ def test_a_well_beyond_a_pass_joins_at_the_energy_of_the_pass(rubidium: State) -
     at = found.basin.inner_passes[0] - found.basin.minimum.energy
     curve = curve_of(found)
     below, above = curve.volume(np.array([0.96, 1.04]) * at)
-    assert above / below == pytest.approx(2.0 * (1.04 / 0.96) ** 2.5, rel=0.15)
+    # Random points count 2.74: each by itself grows as well, fast so close to the pass.
+    assert above / below == pytest.approx(2.74, rel=0.03)
 
 
 def test_volumes_do_not_depend_on_the_size_of_the_cells(crossed: Trap, rubidium: State) -> None:

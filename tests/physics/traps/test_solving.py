@@ -1,0 +1,134 @@
+"""Traps solved backwards."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from physics.constants import boltzmann, standard_gravity
+from physics.light import light_shift, polarizability
+from physics.species import State, load_species
+from physics.traps import Coils, Trap
+from physics.traps.solving import (
+    NoSolution,
+    calibrated_power,
+    calibrated_waist,
+    levitation_gradient,
+    lowest_power,
+    power_for_depth,
+    power_for_mean_frequency,
+    scale_for_depth,
+    scale_for_mean_frequency,
+    solve,
+)
+from physics.traps.survey import survey
+
+
+def test_lowest_power_of_one_beam_is_that_of_its_formula(single: Trap, rubidium: State) -> None:
+    # U0 = (sqrt(e)/2) m g w0: the steepest slope of the profile, at half the waist, carries the atom.
+    found = lowest_power(single, rubidium, "A")
+    alpha = polarizability(rubidium.isotope, 1064e-9).value
+    assert alpha is not None
+    U0 = -float(light_shift(alpha, replace(single.beams[0], power=found).peak_intensity))
+    assert U0 / (rubidium.mass * standard_gravity * 70e-6) == pytest.approx(math.sqrt(math.e) / 2.0, rel=1e-5)
+    assert survey(single.with_beam("A", power=1.001 * found), rubidium).trapped
+    assert not survey(single.with_beam("A", power=0.999 * found), rubidium).trapped
+
+
+def test_lowest_power_is_found_from_below_too(single: Trap, rubidium: State) -> None:
+    from_above = lowest_power(single, rubidium, "A")
+    assert lowest_power(single.with_beam("A", power=0.05), rubidium, "A") == pytest.approx(from_above, rel=1e-4)
+
+
+def test_a_beam_that_is_not_needed_has_no_lowest_power(crossed: Trap, rubidium: State) -> None:
+    with pytest.raises(NoSolution, match=r"^the trap holds atoms without beam A too$"):
+        lowest_power(crossed, rubidium, "A")
+    blue = Trap(beams=(replace(crossed.beams[0], wavelength=532e-9),))
+    with pytest.raises(NoSolution, match=r"^the trap holds nothing up to a power of"):
+        lowest_power(blue, rubidium, "A")
+
+
+def test_power_for_a_depth_and_for_a_mean_frequency(crossed: Trap, rubidium: State) -> None:
+    deep = power_for_depth(crossed, rubidium, "A", 80e-6 * boltzmann)
+    assert deep.survey.depth == pytest.approx(80e-6 * boltzmann, rel=1e-4)
+    assert survey(crossed.with_beam("A", power=deep.value), rubidium).depth == deep.survey.depth
+    stiff = power_for_mean_frequency(crossed, rubidium, "B", 350.0)
+    assert stiff.survey.mean_frequency == pytest.approx(350.0, rel=1e-5)
+    assert stiff.trap.beam("B").power == stiff.value
+    assert stiff.trap.beam("A").power == 2.5
+
+
+def test_without_gravity_all_powers_follow_the_square_of_the_frequency(crossed: Trap, rubidium: State) -> None:
+    free = replace(crossed, gravity=None)
+    now = survey(free, rubidium)
+    assert now.mean_frequency is not None
+    assert now.depth is not None
+    doubled = scale_for_mean_frequency(free, rubidium, 2.0 * now.mean_frequency)
+    assert doubled.value == pytest.approx(4.0, rel=1e-5)
+    assert scale_for_depth(free, rubidium, 0.5 * now.depth).value == pytest.approx(0.5, rel=1e-5)
+
+
+def test_a_measured_frequency_calibrates_power_or_waist(single: Trap, rubidium: State) -> None:
+    free = replace(single, gravity=None)
+    true = free.with_beam("A", power=2.2, waists=74e-6)
+    measured = survey(true, rubidium).frequencies
+    waist = calibrated_waist(free.with_beam("A", power=2.2), rubidium, "A", 2, float(measured[2]))
+    assert waist.value == pytest.approx(74e-6, rel=1e-5)
+    power = calibrated_power(free.with_beam("A", waists=74e-6), rubidium, "A", 2, float(measured[2]))
+    assert power.value == pytest.approx(2.2, rel=1e-5)
+
+
+def test_one_of_two_waists_can_be_calibrated(single: Trap, rubidium: State) -> None:
+    free = replace(single, gravity=None).with_beam("A", waists=(90e-6, 40e-6))
+    measured = survey(free, rubidium).frequencies
+    start = free.with_beam("A", waists=(90e-6, 50e-6))
+    # The vertical frequency goes as (wx wz^3)^(-1/2).
+    found = calibrated_waist(start, rubidium, "A", 2, float(measured[2]), which=1)
+    assert found.value == pytest.approx(40e-6, rel=1e-5)
+    assert np.asarray(found.trap.beam("A").waists) == pytest.approx([90e-6, 40e-6], rel=1e-5)
+    both = calibrated_waist(start, rubidium, "A", 2, float(measured[2]))
+    waists = np.asarray(both.trap.beam("A").waists)
+    assert waists[1] / waists[0] == pytest.approx(5.0 / 9.0)
+    assert math.sqrt(np.prod(waists)) == pytest.approx(both.value)
+
+
+def test_the_levitation_gradient_carries_the_atom() -> None:
+    for key, name in (("87Rb", "F=1 mF=-1"), ("133Cs", "F=3 mF=+3")):
+        state = load_species(key).state(name)
+        weak = levitation_gradient(state)
+        assert state.zeeman_slope is not None
+        assert weak * abs(state.zeeman_slope.value) == pytest.approx(state.mass * standard_gravity, rel=1e-12)
+    with pytest.raises(ValueError, match=r"^88Sr in ground state has no known magnetic moment"):
+        levitation_gradient(load_species("88Sr").state())
+
+
+def test_gradients_are_solved_for_as_well(rubidium: State) -> None:
+    trap = Trap(coils=Coils(gradient=1.0, knife=2e6))
+    # The knife takes atoms at the bottom: h f (1 - m g/(mu B')) is three quarters of h f.
+    slope = rubidium.zeeman_slope
+    assert slope is not None
+    found = solve(
+        lambda gradient: trap.with_coils(gradient=gradient),
+        lambda seen: seen.depth,
+        0.75 * 6.62607015e-34 * 2e6,
+        1.0,
+        rubidium,
+        control="gradient in T/m",
+    )
+    assert found.value == pytest.approx(4.0 * rubidium.mass * standard_gravity / slope.value, rel=1e-5)
+
+
+def test_what_cannot_be_is_said_in_one_sentence(crossed: Trap, single: Trap, rubidium: State) -> None:
+    with pytest.raises(NoSolution, match=r"^no power of beam A in W from \S+ to \S+ gives the wanted value$"):
+        power_for_depth(crossed, rubidium, "A", 1e-6 * boltzmann)
+    with pytest.raises(NoSolution, match=r"^no power of beam A in W gives the wanted value: where the trap lets go"):
+        power_for_mean_frequency(single, rubidium, "A", 5.0)
+    with pytest.raises(ValueError, match=r"^wanted value must be positive, got 0$"):
+        power_for_depth(crossed, rubidium, "A", 0.0)
+    with pytest.raises(ValueError, match=r"^axis must be 0, 1 or 2, got 3$"):
+        calibrated_power(crossed, rubidium, "A", 3, 100.0)
+    with pytest.raises(ValueError, match=r"^value must start from a positive value, got 0$"):
+        solve(crossed.with_powers_scaled, lambda seen: seen.depth, 1.0, 0.0, rubidium)
