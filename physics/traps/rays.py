@@ -23,6 +23,9 @@ from physics.traps.stationary import StationaryPoint
 
 _POLAR, _AROUND = 24, 32
 _RADII = np.concatenate([np.linspace(0.0, 1.5, 19)[1:], 1.5 * np.geomspace(1.0, 1000.0, 46)[1:]])
+_AT_ONCE = 16
+"""Radii computed together; a ray that has ended by then is not followed further."""
+
 _AGREE = 2e-3
 """Relative difference of the fine and the coarse rule that is let pass; the fine rule is then good to about 1e-5."""
 
@@ -81,10 +84,7 @@ def ray_volumes(potential: Potential, minimum: StationaryPoint, shape: Shape, en
     top = float(energies[-1])
     radii = _RADII * (top if minimum.cusp else np.sqrt(top))
     steps = directions @ shape.matrix.T
-    points = minimum.position + steps[:, np.newaxis, :] * radii[:, np.newaxis]
-    energy, gradient = potential.gradient(points)
-    height = energy - minimum.energy
-    rise = np.einsum("nrk,nk->nr", gradient, steps)
+    height, rise = _along(potential, minimum, steps, radii, top)
     # Along rays the root of the energy, or for a cusp the energy, starts as a straight line.
     bent = 1.0 if minimum.cusp else 0.5
     below = np.maximum.accumulate(height <= 0.0, axis=1)
@@ -98,7 +98,8 @@ def ray_volumes(potential: Potential, minimum: StationaryPoint, shape: Shape, en
     if not len(able):
         return RayVolumes(energies=able, volumes=able, limit=0.0)
     y = np.where(good, np.maximum(height, 0.0), np.inf) ** bent
-    slope = bent * np.where(good, rise, np.inf) * np.where(good, np.maximum(height, 1e-300), 1.0) ** (bent - 1.0)
+    known = good & np.isfinite(height)
+    slope = bent * np.where(known, rise, np.inf) * np.where(known, height, 1.0) ** (bent - 1.0)
     q = _inverse(radii, y, slope, able**bent)
     cubes = q**3 / 3.0 * abs(float(np.linalg.det(shape.matrix)))
     fine, rough = weights @ cubes, coarse @ cubes
@@ -106,6 +107,28 @@ def ray_volumes(potential: Potential, minimum: StationaryPoint, shape: Shape, en
     count = int(np.argmax(differ)) if np.any(differ) else len(able)
     limit = float(able[count - 1]) if count else 0.0
     return RayVolumes(energies=able[:count], volumes=fine[:count], limit=limit)
+
+
+def _along(
+    potential: Potential, minimum: StationaryPoint, steps: Floats, radii: Floats, top: float
+) -> tuple[Floats, Floats]:
+    """(rays, radii) Energy above the minimum and its slope along rays, until it is over `top` or falls.
+
+    Where a ray is not followed any more, its energy is infinite.
+    """
+    height, rise = np.full((len(steps), len(radii)), np.inf), np.ones((len(steps), len(radii)))
+    going = np.arange(len(steps))
+    for first in range(0, len(radii), _AT_ONCE):
+        part = slice(first, first + _AT_ONCE)
+        points = minimum.position + steps[going, np.newaxis, :] * radii[part, np.newaxis]
+        energy, gradient = potential.gradient(points)
+        height[going, part] = energy - minimum.energy
+        rise[going, part] = np.einsum("nrk,nk->nr", gradient, steps[going])
+        ended = np.any((height[going, part] > top) | (rise[going, part] <= 0.0), axis=1)
+        going = going[~ended]
+        if not len(going):
+            break
+    return height, rise
 
 
 def _inverse(radii: Floats, y: Floats, slope: Floats, levels: Floats) -> Floats:

@@ -24,7 +24,8 @@ to merge lie within one cell."""
 
 _STEPS = 20
 _STRAY = 4.0
-"""Newton steps, and cells over which they may lead."""
+_PATIENCE, _SLOW = 8, 0.05
+"""Newton steps at most, cells over which they may lead, and how short they must be after how many of them."""
 
 _TOGETHER = 3.0
 """One over the distance, in cells, at which two searches count as one after the first step; its powers after more."""
@@ -68,23 +69,21 @@ def stationary_points(landscape: Landscape) -> list[StationaryPoint]:
     potential = landscape.potential
     found: list[StationaryPoint] = [cusp_at(potential, point) for point in potential.cusps()]
     zeros = () if potential.coils is None or not potential.shaped else potential.coils.zeros()
-    searches = [(chart, *_starts(landscape, index)) for index, chart in enumerate(landscape.charts)]
+    searches = [_starts(landscape, index) for index in range(len(landscape.charts))]
     if potential.zeeman_slope > 0.0:
-        searches += [(landscape.charts[-1], *_beside(potential, zero)) for zero in zeros]
+        searches += [_beside(potential, zero) for zero in zeros]
 
-    def add(points: list[StationaryPoint]) -> None:
-        for point in points:
+    def add(starts: Sequence[tuple[Floats, Floats]], charts: Sequence[Chart]) -> None:
+        for point in _refined(potential, starts, charts):
             # Newton's method also closes in on a cusp from all sides, whether it is a minimum or not.
             at_zero = any(np.linalg.norm(point.position - zero) < 1e-8 * potential.length for zero in zeros)
             if not at_zero and all(_apart(point, other) for other in found):
                 found.append(point)
 
-    for chart, starts, edges in searches:
-        add(_refined(potential, starts, edges, chart))
+    add(searches, landscape.charts)
+    # A pass that is about to merge with a minimum lies in the same cell.
     minima = [point for point in found if point.minimum and not point.cusp]
-    for chart in landscape.charts:
-        # A pass that is about to merge with a minimum lies in the same cell.
-        add(_refined(potential, *_around(chart, minima)))
+    add([_around(chart, minima) for chart in landscape.charts], ())
     return sorted(found, key=lambda point: point.energy)
 
 
@@ -168,10 +167,13 @@ def _starts(landscape: Landscape, index: int) -> tuple[Floats, Floats]:
 
 
 def _neighbourhood(values: Floats, extreme: np.ufunc) -> Floats:
-    """Extremes over the 27 cells around each inner one."""
-    a = extreme(extreme(values[:-2], values[1:-1]), values[2:])
-    b = extreme(extreme(a[:, :-2], a[:, 1:-1]), a[:, 2:])
-    result: Floats = extreme(extreme(b[:, :, :-2], b[:, :, 1:-1]), b[:, :, 2:])
+    """Extremes over each inner cell and the six that share a face with it."""
+    inner = slice(1, -1)
+    result = values[inner, inner, inner]
+    for shifted in (slice(None, -2), slice(2, None)):
+        result = extreme(result, values[shifted, inner, inner])
+        result = extreme(result, values[inner, shifted, inner])
+        result = extreme(result, values[inner, inner, shifted])
     return result
 
 
@@ -179,6 +181,18 @@ def _slopes(potential: Potential, points: Floats, edges: Floats) -> Floats:
     """(n, 3) Slopes of the energy along the edges of cells. [J]"""
     slopes: Floats = np.einsum("nki,nk->ni", edges, potential.gradient(points)[1])
     return slopes
+
+
+def _spread_out(
+    charts: Sequence[Chart], origin: NDArray[np.int64], r: Floats, which: NDArray[np.int64], per_cell: float
+) -> NDArray[np.int64]:
+    """Those indices whose points r are the first of their chart at a place; `per_cell` places fit along a cell."""
+    kept = [which[origin >= len(charts)]]
+    for k, chart in enumerate(charts):
+        own = np.flatnonzero(origin == k)
+        places = np.rint(per_cell * chart.cell_coordinates(r[own])).astype(np.int64)
+        kept.append(which[own[np.sort(np.unique(places, axis=0, return_index=True)[1])]])
+    return np.concatenate(kept)
 
 
 def _newton(potential: Potential, points: Floats, edges: Floats) -> tuple[Floats, NDArray[np.bool_], Floats]:
@@ -209,18 +223,22 @@ def _solved(matrices: Floats, right: Floats) -> tuple[Floats, Floats]:
     return np.einsum("nji,nj->ni", adjugate, right) / safe[:, np.newaxis], determinant
 
 
-def _refined(potential: Potential, starts: Floats, edges: Floats, chart: Chart | None = None) -> list[StationaryPoint]:
-    """What Newton's method reaches from starts, in units of their cells; what strays far is dropped.
+def _refined(
+    potential: Potential, searches: Sequence[tuple[Floats, Floats]], charts: Sequence[Chart]
+) -> list[StationaryPoint]:
+    """What Newton's method reaches from starts, in units of their cells; what strays far or takes long is dropped.
 
-    With a chart, starts that head for the same place in it count once.
+    Each of the first searches belongs to the chart of the same place; in it, starts that head for one place count once.
     """
+    starts = np.concatenate([np.zeros((0, 3)), *(points for points, _ in searches)])
+    edges = np.concatenate([np.zeros((0, 3, 3)), *(cells for _, cells in searches)])
+    origin = np.repeat(np.arange(len(searches)), np.array([len(points) for points, _ in searches], dtype=np.int64))
     r, alive = starts.copy(), np.arange(len(starts))
     units = np.linalg.inv(edges) if len(starts) else edges
     done: list[tuple[Floats, float, int]] = []
     for count in range(_STEPS):
-        if chart is not None and 0 < count < 5:
-            near = np.rint(_TOGETHER**count * chart.cell_coordinates(r[alive])).astype(np.int64)
-            alive = alive[np.sort(np.unique(near, axis=0, return_index=True)[1])]
+        if 0 < count < 5:
+            alive = _spread_out(charts, origin[alive], r[alive], alive, _TOGETHER**count)
         if not len(alive):
             break
         step, settled, energy = _newton(potential, r[alive], edges[alive])
@@ -233,7 +251,8 @@ def _refined(potential: Potential, starts: Floats, edges: Floats, chart: Chart |
         step *= np.minimum(1.0, 1.0 / np.maximum(length, 1e-300))
         r[alive] += np.einsum("nij,nj->ni", edges[alive], step)
         away = np.linalg.norm(np.einsum("nij,nj->ni", units[alive], r[alive] - starts[alive]), axis=-1)
-        alive = alive[~settled & (away < _STRAY)]
+        going = (away < _STRAY) & (length[:, 0] < (_SLOW if count >= _PATIENCE else np.inf))
+        alive = alive[~settled & going]
     found = []
     for position, energy_there, k in done:
         curvature = potential.hessian(position)[2]
