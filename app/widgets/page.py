@@ -172,6 +172,7 @@ class Page(QWidget):
         dialog = LimitsDialog(plot.picture(), self)
         if dialog.exec() == QDialog.DialogCode.Accepted and dialog.view is not None:
             plot.set_view(dialog.view)
+        dialog.deleteLater()
 
     def pictures(self) -> tuple[Picture, ...]:
         """What the page shows now, as pictures for export."""

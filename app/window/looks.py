@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import gc
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import replace
 from functools import lru_cache
 
@@ -78,6 +81,17 @@ def style_sheet_of(theme: Theme) -> str:
     """
 
 
+@contextmanager
+def _no_collection() -> Iterator[None]:
+    collecting = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if collecting:
+            gc.enable()
+
+
 def system_is_dark() -> bool:
     """Whether the desktop's own look is dark; light where it does not say."""
     return QApplication.styleHints().colorScheme() is Qt.ColorScheme.Dark
@@ -143,8 +157,11 @@ class Looks(QObject):
         application = QApplication.instance()
         if not isinstance(application, QApplication):
             raise RuntimeError("a look needs a running application")
-        application.setPalette(palette_of(theme))
-        application.setStyleSheet(style_sheet_of(theme))
+        # Both walk over all widgets and call back into Python; a garbage collection in between could destroy one of
+        # them under the toolkit's feet.
+        with _no_collection():
+            application.setPalette(palette_of(theme))
+            application.setStyleSheet(style_sheet_of(theme))
         self._settings.put("view/backdrop", theme.window)
         if theme is not self.theme:
             self.theme = theme

@@ -16,7 +16,7 @@ from PySide6.QtCore import QPoint, QPointF, QSize, Qt
 from PySide6.QtGui import QGuiApplication, QWheelEvent
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QComboBox
-from shiboken6 import isValid
+from shiboken6 import delete, isValid
 
 from app.engine import cloud_answer
 from app.plan import DEFAULT_PLAN, read_plan
@@ -229,8 +229,7 @@ def window(tmp_path: Path) -> Iterator[MainWindow]:
     yield window
     window.document.stack.setClean()
     window.close()
-    window.deleteLater()
-    QApplication.processEvents()
+    delete(window)  # at once: windows that pile up make every change of the look slower
 
 
 @pytest.mark.long
