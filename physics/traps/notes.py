@@ -64,7 +64,7 @@ def _notes(landscape: Landscape, basin: Basin | None, ceiling: float | None) -> 
         yield Note(kind=NoteKind.ARM_END, value=basin.depth)
     if basin.minimum.cusp:
         yield Note(kind=NoteKind.FIELD_ZERO, value=float(np.max(np.linalg.svd(basin.minimum.curvature)[1])))
-    if potential.zeeman_slope != 0.0 and coils is not None:
+    if potential.zeeman_slope != 0.0 and coils is not None and not potential.stretched:
         places = [basin.minimum.position] + ([] if basin.escape.position is None else [basin.escape.position])
         field = float(np.max(potential.magnetic_field(np.array(places))))
         frequency = max(bohr_magneton * field / planck, coils.knife or 0.0)

@@ -67,6 +67,7 @@ class Potential:
     lift : (3,). [N] Force of the levitation.
     knife_energy : float or None. [J] |m| h f: the magnetic energy at which the knife takes atoms away.
     lights : polarizability at each beam, by its name.
+    stretched : bool. Whether the Zeeman effect of the state is linear in any field, but for the nucleus.
     """
 
     mass: float
@@ -78,6 +79,7 @@ class Potential:
     lift: Floats = field(default_factory=lambda: as_floats(np.zeros(3)))
     knife_energy: float | None = None
     lights: Mapping[str, Polarizability] = field(default_factory=lambda: MappingProxyType({}))
+    stretched: bool = False
 
     @cached_property
     def shaped(self) -> bool:
@@ -90,6 +92,11 @@ class Potential:
         force = self.weight + self.lift
         small = np.linalg.norm(force) <= 1e-9 * np.linalg.norm(self.weight)
         return as_floats(np.zeros(3) if small else force)
+
+    @cached_property
+    def without_coils(self) -> Potential:
+        """The potential of light and gravity alone."""
+        return replace(self, coils=None, lift=as_floats(np.zeros(3)), knife_energy=None)
 
     @cached_property
     def without_force(self) -> Potential:
@@ -252,4 +259,13 @@ def potential_of(trap: Trap, state: State) -> Potential:
         lift=as_floats(lift),
         knife_energy=knife,
         lights=MappingProxyType(lights),
+        stretched=_stretched(state),
     )
+
+
+def _stretched(state: State) -> bool:
+    """Whether all angular momenta of the state point one way."""
+    isotope = state.isotope
+    number = state.mF if state.mF is not None else state.mJ
+    spin = isotope.J if state.mF is None else isotope.J + isotope.nuclear_spin.value
+    return number is not None and abs(number) == spin

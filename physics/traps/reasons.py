@@ -29,6 +29,9 @@ def why_not_trapped(landscape: Landscape, points: Sequence[StationaryPoint]) -> 
             return NotTrapped.NOT_MAGNETIC
         if len(potential.beams) and not potential.shaped:
             return NotTrapped.BLUE_LIGHT
+    opposed = potential.shaped and potential.zeeman_slope < 0.0
+    if opposed and _holds(replace(landscape, potential=potential.without_coils)):
+        return NotTrapped.HIGH_FIELD_SEEKER
     if np.any(potential.force) and _holds(replace(landscape, potential=potential.without_force)):
         # Something else would hold, but for what pulls: gravity, or a gradient that is more than enough against it.
         return NotTrapped.GRAVITY if float(potential.force @ potential.weight) > 0.0 else NotTrapped.LEVITATION

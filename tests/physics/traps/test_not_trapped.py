@@ -63,6 +63,12 @@ def test_high_field_seekers_are_not_held_by_coils() -> None:
             check_empty(survey(Trap(coils=coils, gravity=gravity), state), NotTrapped.HIGH_FIELD_SEEKER)
 
 
+def test_a_quadrupole_pushes_high_field_seekers_out_of_a_beam(single: Trap) -> None:
+    state = load_species("87Rb").state("F=1 mF=+1")
+    assert survey(single, state).trapped
+    check_empty(survey(replace(single, coils=Coils(gradient=0.5)), state), NotTrapped.HIGH_FIELD_SEEKER)
+
+
 def test_atoms_without_a_moment_are_not_held_by_coils() -> None:
     check_empty(survey(Trap(coils=Coils(gradient=2.0)), load_species("88Sr").state()), NotTrapped.NOT_MAGNETIC)
 

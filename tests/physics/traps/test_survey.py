@@ -242,6 +242,9 @@ def test_published_polarizabilities_and_strong_fields_are_noted(crossed: Trap, r
         [bohr_magneton * 0.01 / planck]
     )
     assert survey(crossed, rubidium).notes == ()
+    # In a stretched state it is linear at any field.
+    stretched = load_species("87Rb").state("F=2 mF=+2")
+    assert survey(replace(crossed, coils=Coils(bias=0.01)), stretched).notes == ()
     near = survey(crossed.with_beam("B", wavelength=796e-9, power=0.02), rubidium)
     assert NoteKind.NEAR_RESONANCE in kinds(near)
 
