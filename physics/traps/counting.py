@@ -176,9 +176,9 @@ def _share(landscape: Landscape, masks: Sequence[Mask], k: int, cells: NDArray[n
     total = own
     for m, other in enumerate(landscape.charts):
         if m != k and np.any(masks[m]):
+            # Also where the other chart sees nothing of the region: with smaller cells it knows better.
             index, inside = other.cells_of(r)
-            there = inside & masks[m].ravel()[index]
-            total = total + np.where(there, 1.0 / other.cell_volumes.ravel()[index], 0.0)
+            total = total + np.where(inside, 1.0 / other.cell_volumes.ravel()[index], 0.0)
     share: Floats = own / total
     return share
 

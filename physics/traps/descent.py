@@ -22,9 +22,12 @@ _MOST_STEPS = 300
 _FINEST = 1e-9
 """Radius, over the length in which the potential changes, below which there is no way on."""
 
-_WAY, _LOW = 12, 0.1
-"""Points of a straight way to a minimum at which the energy is looked at, and the height, over that of the lowest pass,
-below which a place can be close to a minimum."""
+_FINE, _MOST_ON_WAY = 0.2, 2000
+"""Distance of the points of a straight way to a minimum at which the energy is looked at, over the length in which the
+potential changes, and how many there are at most."""
+
+_LOW = 0.1
+"""Height, over that of the lowest pass above a minimum, below which a place can be close to it."""
 
 _AT = 1e-6
 """Distance from a minimum, over the length in which the potential changes, within which a place is the minimum."""
@@ -122,7 +125,6 @@ def _arrived(
     Close means low against the lowest pass above that minimum, and with a straight way down to it.
     """
     where = np.full(len(r), NOWHERE, dtype=np.int64)
-    share = np.linspace(0.0, 1.0, _WAY)[1:-1, np.newaxis]
     for index, point in enumerate(minima):
         away = r - point.position
         where[np.linalg.norm(away, axis=-1) < _AT * potential.length] = index
@@ -132,6 +134,10 @@ def _arrived(
         height = energy - point.energy
         able = np.flatnonzero((where == NOWHERE) & (energy < level) & (height < 2.0 * start) & (start < 2.0 * height))
         if len(able):
+            # Fine enough to see a thin barrier on the way.
+            longest = float(np.max(np.linalg.norm(away[able], axis=-1)))
+            count = int(np.clip(longest / (_FINE * potential.length), 12, _MOST_ON_WAY))
+            share = np.linspace(0.0, 1.0, count)[1:-1, np.newaxis]
             ways = point.position + share * away[able, np.newaxis]
             where[able[np.all(potential.energy(ways) <= energy[able, np.newaxis], axis=1)]] = index
     return where
