@@ -22,9 +22,9 @@ _MOST_STEPS = 300
 _FINEST = 1e-9
 """Radius, over the length in which the potential changes, below which there is no way on."""
 
-_FINE, _MOST_ON_WAY = 0.2, 2000
-"""Distance of the points of a straight way to a minimum at which the energy is looked at, over the length in which the
-potential changes, and how many there are at most."""
+_FINE, _MOST_ON_WAY = 0.25, 500
+"""Distance of the points of a straight way at which the energy is looked at, over the length in which the potential
+changes, and how many there are at most."""
 
 _LOW = 0.1
 """Height, over that of the lowest pass above a minimum, below which a place can be close to it."""
@@ -58,10 +58,11 @@ class _Slide:
         energy, gradient, hessian = self._potential.hessian(trial)
         expected = np.sum(along * step + 0.5 * values * step**2, axis=-1)
         gain = energy - self.energy[which]
-        better = gain < 0.0
         with np.errstate(divide="ignore", invalid="ignore"):
-            faithful = np.abs(gain / expected - 1.0) < 0.5
-        self.radius[which] *= np.where(better & faithful, 2.0, np.where(better, 0.7, 0.2))
+            ratio = gain / expected
+        better = (gain < 0.0) & (ratio > 0.2) & (ratio < 2.0)
+        better[better] = _level(self._potential, self.points[which][better], trial[better], self.energy[which][better])
+        self.radius[which] *= np.where(better & (np.abs(ratio - 1.0) < 0.4), 2.0, np.where(better, 0.8, 0.25))
         self.lengths[which] = np.linalg.norm(step, axis=-1)
         moved = which[better]
         self.points[moved], self.energy[moved] = trial[better], energy[better]
@@ -134,13 +135,19 @@ def _arrived(
         height = energy - point.energy
         able = np.flatnonzero((where == NOWHERE) & (energy < level) & (height < 2.0 * start) & (start < 2.0 * height))
         if len(able):
-            # Fine enough to see a thin barrier on the way.
-            longest = float(np.max(np.linalg.norm(away[able], axis=-1)))
-            count = int(np.clip(longest / (_FINE * potential.length), 12, _MOST_ON_WAY))
-            share = np.linspace(0.0, 1.0, count)[1:-1, np.newaxis]
-            ways = point.position + share * away[able, np.newaxis]
-            where[able[np.all(potential.energy(ways) <= energy[able, np.newaxis], axis=1)]] = index
+            ways = _level(potential, r[able], np.broadcast_to(point.position, (len(able), 3)), energy[able])
+            where[able[ways]] = index
     return where
+
+
+def _level(potential: Potential, here: Floats, there: Floats, energy: Floats) -> NDArray[np.bool_]:
+    """Whether straight ways (n, 3) to (n, 3) stay, at points fine enough to see a thin barrier, below energies (n,)."""
+    longest = float(np.max(np.linalg.norm(there - here, axis=-1), initial=0.0))
+    count = int(np.clip(longest / (_FINE * potential.length), 2, _MOST_ON_WAY))
+    share = np.linspace(0.0, 1.0, count)[1:-1, np.newaxis]
+    ways = here[:, np.newaxis] + share * (there - here)[:, np.newaxis]
+    below: NDArray[np.bool_] = np.all(potential.energy(ways) <= energy[:, np.newaxis], axis=1)
+    return below
 
 
 def _start(point: StationaryPoint, away: Floats) -> Floats:
