@@ -9,7 +9,9 @@ from dataclasses import dataclass, field
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
+from app.candidate_choices import CandidatesChoice, PassengerChoice
 from app.plan_field import Entry, PlanError, PlanField
+from app.ramp_choices import LimitsChoice, MeasuredChoice, StageChoice
 from app.trap_choices import TrapChoice
 from app.units import (
     ATOM_NUMBER,
@@ -107,6 +109,11 @@ TARGETS = ("reduced_temperature", "peak_phase_space_density", "condensate_atoms"
 class Plan:
     """One cloud in one trap, and what it is wanted for.
 
+    ramp : stages of the evaporation, in order
+    limits : what a designed ramp keeps
+    measured : clouds measured on the way
+    candidates : other species to be compared
+    passenger : a second species in the trap
     unused : sections of its file that this version keeps but does not compute
     source : text of the file it came from, so that saving keeps comments, layout and unused sections; it does not
         count when plans are compared
@@ -118,6 +125,11 @@ class Plan:
     cloud: CloudChoice
     losses: LossesChoice = LossesChoice()
     target: TargetChoice = TargetChoice()
+    ramp: tuple[StageChoice, ...] = ()
+    limits: LimitsChoice = field(default_factory=LimitsChoice)
+    measured: tuple[MeasuredChoice, ...] = ()
+    candidates: CandidatesChoice = field(default_factory=CandidatesChoice)
+    passenger: PassengerChoice | None = None
     unused: tuple[str, ...] = ()
     source: str = field(default="", compare=False, repr=False)
 

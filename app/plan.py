@@ -11,6 +11,7 @@ from dataclasses import fields, is_dataclass, replace
 from types import MappingProxyType
 from typing import Any
 
+from app.candidate_choices import Basis, CandidateChoice, CandidatesChoice, PassengerChoice
 from app.choices import (
     DEFAULT_PLAN,
     PLAN_FIELDS,
@@ -24,6 +25,7 @@ from app.choices import (
 from app.plan_field import Entry, PlanError, PlanField
 from app.plan_file import FORMAT, build_plan, entries_of, parse_plan, read_plan
 from app.plan_saving import save_plan, write_plan
+from app.ramp_choices import ControlLimits, Handing, LimitsChoice, MeasuredChoice, MoveChoice, StageChoice
 from app.trap_choices import BEAM_FIELDS, BEAMS, COILS, COILS_FIELDS, BeamChoice, CoilsChoice, Gravity, TrapChoice
 
 __all__ = [
@@ -33,16 +35,26 @@ __all__ = [
     "FORMAT",
     "PLAN_FIELDS",
     "TARGETS",
+    "Basis",
     "BeamChoice",
+    "CandidateChoice",
+    "CandidatesChoice",
     "CloudChoice",
     "CoilsChoice",
+    "ControlLimits",
     "Entry",
     "Gravity",
+    "Handing",
+    "LimitsChoice",
     "LossesChoice",
+    "MeasuredChoice",
+    "MoveChoice",
+    "PassengerChoice",
     "Plan",
     "PlanError",
     "PlanField",
     "SpeciesChoice",
+    "StageChoice",
     "TargetChoice",
     "TrapChoice",
     "parse_plan",

@@ -1,0 +1,64 @@
+"""What a user says of other species: candidates to be compared, and a passenger in the same trap."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import Enum
+from typing import TYPE_CHECKING
+
+from app.plan_field import PlanError
+from app.units import Quantity
+
+if TYPE_CHECKING:
+    from app.choices import CloudChoice, SpeciesChoice
+
+
+class Basis(Enum):
+    """In what candidates are judged."""
+
+    SAME_FREQUENCIES = "same frequencies"
+    SAME_LIGHT = "same light"
+    SAME_START = "same start"
+
+
+@dataclass(frozen=True, kw_only=True)
+class CandidateChoice:
+    """One species and state to be compared; what is None is as the plan's cloud or the data have it."""
+
+    key: str
+    state: str | None = None
+    atoms: Quantity | None = None
+    temperature: Quantity | None = None
+    field: Quantity | None = None
+    scattering_length: Quantity | None = None
+
+    def __post_init__(self) -> None:
+        if self.scattering_length is not None and self.field is not None:
+            raise PlanError(
+                "give either a scattering length or a magnetic field, not both", path="candidate.scattering_length"
+            )
+
+
+@dataclass(frozen=True, kw_only=True)
+class CandidatesChoice:
+    """Which species are compared, and in what.
+
+    keys : species, each in all of its states; with no keys and no candidates, all that there are
+    candidates : single states with conditions of their own
+    """
+
+    basis: Basis = Basis.SAME_FREQUENCIES
+    keys: tuple[str, ...] = ()
+    candidates: tuple[CandidateChoice, ...] = ()
+
+
+@dataclass(frozen=True, kw_only=True)
+class PassengerChoice:
+    """A second species, or spin state, in the same trap.
+
+    scattering_length : [m] between the two species; None: as the data have it
+    """
+
+    species: SpeciesChoice
+    cloud: CloudChoice
+    scattering_length: Quantity | None = None
