@@ -65,7 +65,7 @@ def cloud_of(plan: Plan, state: State, scattering: LengthInUse, numbers: Numbers
         temperature=numbers["temperature"],
         spin_components=plan.species.spin_components or state.spin_components,
         scattering_length=_length(state, scattering, numbers),
-        dipolar_length=_dipolar_length(plan, state),
+        dipolar_length=dipolar_length_of(plan, state),
     )
 
 
@@ -77,7 +77,7 @@ def _length(state: State, scattering: LengthInUse, numbers: Numbers) -> float | 
     return scattering.value
 
 
-def _dipolar_length(plan: Plan, state: State) -> float | None:
+def dipolar_length_of(plan: Plan, state: State) -> float | None:
     """Of atoms whose moments count in collisions; None for mixtures, whose states have moments of their own."""
     if state.magnetic_moment is None or (plan.species.spin_components or state.spin_components) > 1:
         return None
