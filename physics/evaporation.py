@@ -13,26 +13,25 @@ from __future__ import annotations
 
 import itertools
 import math
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass, fields
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
 from enum import Enum
+from typing import Protocol
 
 import numpy as np
 
 from physics.checks import Floats
-from physics.constants import boltzmann
-from physics.evaporation_budget import Budget, Ledger, StageSummary, efficiencies
-from physics.evaporation_rates import ATOM_PROCESSES, ENERGY_PROCESSES, FEWEST_ATOMS, Kinetics
-from physics.evaporation_rows import Rows, joined, rows_of
+from physics.evaporation_rates import FEWEST_ATOMS, CloudNow, Kinetics
 from physics.evaporation_target import Target
+from physics.evaporation_track import EndReason, Evaporation, Mark, Track
 from physics.gas import Gas
 from physics.losses import Losses
-from physics.ramps import Control, Placed, Ramp
+from physics.ramps import Placed, Ramp
 from physics.runge_kutta import Integrator, OutOfRange, Step
 from physics.stage_trap import StageTrap
-from physics.transfer import slow_transfer, sudden_transfer
-from physics.trap_path import FixedTrap, TrapPath, TrapPoint
-from physics.truncated_averages import truncated_averages
+from physics.trap_path import TrapPath
+
+__all__ = ["Cancelled", "EndReason", "Evaporation", "evaporate"]
 
 TOLERANCE = 1e-7
 """Error of a step, in ln N and ln E; results are good to about ten times this."""
@@ -45,62 +44,6 @@ MOST_STEPS = 20_000
 
 FEWEST_ROWS = 12
 """Of a stage."""
-
-
-class EndReason(Enum):
-    """Why a simulation ended."""
-
-    TARGET = "target reached"
-    RAMP = "ramp ended"
-    ATOMS = "atoms lost"
-    NOT_TRAPPED = "not trapped"
-
-    @property
-    def label(self) -> str:
-        return self.value
-
-
-@dataclass(frozen=True, kw_only=True, eq=False)
-class Evaporation:
-    """A simulated ramp.
-
-    Attributes
-    ----------
-    time : (n,) [s] From the start of the ramp; the same time twice where a control jumps or the trap changes.
-    stage : (n,) number of the stage, from 0.
-    rows : Rows. The columns.
-    controls : (n,) each. NaN where a trap does not have one. [SI]
-    reason : EndReason. explanation : text of the trap where it held nothing, else empty.
-    budget : Budget of the whole ramp.
-    stages : one StageSummary each, of those that began.
-    """
-
-    gas: Gas
-    losses: Losses
-    time: Floats
-    stage: Floats
-    rows: Rows
-    controls: Mapping[Control, Floats]
-    reason: EndReason
-    explanation: str
-    budget: Budget
-    stages: tuple[StageSummary, ...]
-
-    @property
-    def final(self) -> dict[str, float]:
-        """The last of each single column; NaN where there is no row, of a cloud that was never trapped."""
-        columns = {"time": self.time, **{field.name: getattr(self.rows, field.name) for field in fields(self.rows)}}
-        return {
-            name: float(column[-1]) if len(column) else math.nan for name, column in columns.items() if column.ndim == 1
-        }
-
-    @property
-    def atoms(self) -> Floats:
-        return self.rows.atoms
-
-    @property
-    def temperature(self) -> Floats:
-        return self.rows.temperature
 
 
 def evaporate(
@@ -141,140 +84,175 @@ def evaporate(
         if not 0.0 < value < math.inf:
             raise ValueError(f"{name} must be positive and finite, got {value:g} {unit}".rstrip())
     _ = gas.cold_cross_section
-    run = _Run(gas, losses or Losses(), target, fewest_atoms, tolerance, ramp.duration)
-    share = rows / ramp.duration
-    for placed in ramp.placed(path.standing):
-        if tick is not None and not tick(placed.begin / ramp.duration):
-            raise Cancelled
-        transfer = placed.stage.transfer
-        if transfer is not None:
-            path = transfer.path
-        count = max(FEWEST_ROWS, round(share * placed.stage.duration))
-        if placed.number == 0:
-            run.start(atoms, temperature, path.at(placed.values(0.0)))
-        if run.stage(placed, path, count) is not None:
-            break
-    return run.finished()
+    track = Track(gas, losses or Losses())
+    run = Run(track, path, Limits(target=target, fewest_atoms=fewest_atoms, tolerance=tolerance))
+    reason = run.follow(ramp, (atoms, temperature), rows, tick)
+    return track.finished(reason)
 
 
 class Cancelled(Exception):
     """The caller's tick said to stop."""
 
 
-class _Run:
-    """The simulation while it runs."""
+@dataclass(frozen=True, kw_only=True)
+class Limits:
+    """When a simulation ends, and how exactly it steps."""
 
-    def __init__(
-        self,
-        gas: Gas,
-        losses: Losses,
-        target: Target | None,
-        fewest: float,
-        tolerance: float,
-        duration: float,
-    ) -> None:
-        self.gas, self.losses, self.target, self.fewest = gas, losses, target, fewest
-        self.tolerance, self.duration = tolerance, duration
-        self.ledger = Ledger()
-        self.reason: EndReason | None = None
-        self.explanation = ""
-        self.parts: list[tuple[Floats, int, Rows, dict[Control, Floats]]] = []
-        self.summaries: list[StageSummary] = []
-        self.point: TrapPoint | None = None
-        self.count = 0
-        self.jumped = False
+    target: Target | None
+    fewest_atoms: float
+    tolerance: float
 
-    def start(self, atoms: float, temperature: float, point: TrapPoint) -> None:
-        """The first cloud: as many atoms at that temperature in the cut trap."""
-        self.atoms, self.energy, self.begun = atoms, math.nan, (atoms, math.nan)
-        self.point = point
-        if point.depth is None:
-            return
-        mean = truncated_averages(point.curve, point.depth / (boltzmann * temperature)).energy
-        self.energy = atoms * float(mean) * boltzmann * temperature
-        self.begun = (atoms, self.energy)
 
-    def stage(self, placed: Placed, path: TrapPath, count: int) -> EndReason | None:
+class Solver(Protocol):
+    """Takes steps; see `physics.runge_kutta.Integrator`."""
+
+    def advance(self, time: float, values: Floats, end: float) -> Step | None: ...
+
+
+class System(Protocol):
+    """What moves together along one stretch of a ramp, the gas that evaporates first."""
+
+    def variables(self) -> Floats: ...
+
+    def solver(self, tolerance: float, smallest: float) -> Solver: ...
+
+    def lead(self, time: float, values: Floats) -> CloudNow:
+        """The cloud that evaporates."""
+
+    def ends(self, values: Floats) -> dict[Enum, float]:
+        """What is left until ends of its own, not positive where they have come."""
+
+    def settle(self, values: Floats) -> None: ...
+
+    def keep(self, placed: Placed, rows: Iterator[tuple[float, Floats]]) -> None:
+        """Rows at times, from the variables then."""
+
+
+class Alone:
+    """A gas by itself."""
+
+    def __init__(self, track: Track, kinetics: Kinetics) -> None:
+        self.track, self.kinetics = track, kinetics
+
+    def variables(self) -> Floats:
+        return self.track.variables()
+
+    def solver(self, tolerance: float, smallest: float) -> Solver:
+        return Integrator(
+            derivatives=self.kinetics.derivatives,
+            tolerance=tolerance,
+            scales=self.track.scales(),
+            smallest=smallest,
+        )
+
+    def lead(self, time: float, values: Floats) -> CloudNow:
+        return self.kinetics.cloud(time, math.exp(values[0]), math.exp(values[1]))
+
+    def ends(self, values: Floats) -> dict[Enum, float]:
+        return {}
+
+    def settle(self, values: Floats) -> None:
+        self.track.settle(values)
+
+    def keep(self, placed: Placed, rows: Iterator[tuple[float, Floats]]) -> None:
+        times, clouds = [], []
+        for time, values in rows:
+            try:
+                clouds.append(self.lead(time, values))
+            except OutOfRange:
+                continue
+            times.append(time)
+        controls = {control: course.values(np.array(times)) for control, course in placed.courses.items()}
+        self.track.keep(placed, self.kinetics, times, clouds, controls)
+
+
+class Run:
+    """A simulation while it runs.
+
+    Parameters
+    ----------
+    track : Track. Of the gas that evaporates.
+    path : TrapPath. Of the trap at the start.
+    """
+
+    def __init__(self, track: Track, path: TrapPath, limits: Limits) -> None:
+        self.track, self.path, self.limits = track, path, limits
+
+    def follow(
+        self, ramp: Ramp, start: tuple[float, float], rows: int, tick: Callable[[float], bool] | None
+    ) -> EndReason:
+        """All stages in turn, from atoms and temperature at the start; why it ended."""
+        share = rows / ramp.duration
+        for placed in ramp.placed(self.path.standing):
+            if tick is not None and not tick(placed.begin / ramp.duration):
+                raise Cancelled
+            transfer = placed.stage.transfer
+            if transfer is not None:
+                self.path = transfer.path
+            count = max(FEWEST_ROWS, round(share * placed.stage.duration))
+            if placed.number == 0:
+                self.track.start(*start, self.path.at(placed.values(0.0)))
+            reason = self.stage(placed, count)
+            if reason is not None:
+                return reason
+        return EndReason.RAMP
+
+    def stage(self, placed: Placed, count: int) -> EndReason | None:
         """One stage; the reason where the simulation ends in it."""
-        before = (self.ledger.copy(), self.atoms, self.energy, self.count)
-        self._hand_over(placed, path)
-        reason = self.reason
-        corners = (0.0, *placed.breaks, placed.stage.duration)
+        track, path = self.track, self.path
+        before = self.begin(placed)
+        held = track.hand_over(path.at(placed.values(0.0)), placed.stage.transfer, self.limits.fewest_atoms)
+        reason = None if held else EndReason.NOT_TRAPPED
         finish = 0.0
-        for begin, end in itertools.pairwise(corners):
+        for begin, end in itertools.pairwise((0.0, *placed.breaks, placed.stage.duration)):
             if reason is None:
                 part = max(4, round(count * (end - begin) / placed.stage.duration))
-                finish, reason = self._stretch(placed, path, begin, end, part)
-        if self.count > before[3]:
-            self._summarise(placed, before, placed.begin + finish)
-        self.point = path.at(placed.values(placed.stage.duration)) if reason is None else None
-        self.reason = reason
+                finish, reason = self.stretch(placed, begin, end, part)
+        self.end(placed, before, placed.begin + finish)
+        track.point = path.at(placed.values(placed.stage.duration)) if reason is None else None
         return reason
 
-    def _hand_over(self, placed: Placed, path: TrapPath) -> None:
-        """From the trap of the last stage to that of this one, if they differ."""
-        transfer, old = placed.stage.transfer, self.point
-        new = path.at(placed.values(0.0))
-        if old is None or old.depth is None or new.depth is None:
-            return
-        jumps = any(abs(a / b - 1.0) > 1e-9 for a, b in ((old.depth, new.depth), (old.volume, new.volume)))
-        if transfer is None and not jumps:
-            return
-        temperature = self._temperature(old)
-        if transfer is not None and not transfer.sudden:
-            found = slow_transfer(temperature, old, new)
-        else:
-            found = sudden_transfer(temperature, old, new, transfer.displacement if transfer else (0.0, 0.0, 0.0))
-        atoms = self.atoms * found.share
-        if atoms < self.fewest or math.isnan(found.energy):
-            self.reason = EndReason.NOT_TRAPPED
-            self.explanation = "the new trap does not hold the cloud"
-            return
-        energy = atoms * found.energy
-        self.ledger.add_transfer(self.atoms - atoms, energy - self.energy)
-        self.atoms, self.energy, self.jumped = atoms, energy, True
+    def begin(self, placed: Placed) -> Mark:
+        """Before a stage."""
+        return self.track.mark()
 
-    def _temperature(self, point: TrapPoint) -> float:
-        """Of the cloud in a trap at rest."""
-        trap = StageTrap({}, FixedTrap(point=point), 0.0, 1.0)
-        return Kinetics(self.gas, self.losses, trap).cloud(0.0, self.atoms, self.energy).temperature
+    def end(self, placed: Placed, before: Mark, time: float) -> None:
+        """After it, at a time of the ramp."""
+        self.track.summarise(placed, before, time)
 
-    def _stretch(
-        self, placed: Placed, path: TrapPath, begin: float, end: float, count: int
-    ) -> tuple[float, EndReason | None]:
+    def stretch(self, placed: Placed, begin: float, end: float, count: int) -> tuple[float, EndReason | None]:
         """One stretch without corners; where it ended, and why if before its end."""
-        trap = StageTrap(placed.courses, path, begin, end)
+        track = self.track
+        trap = StageTrap(placed.courses, self.path, begin, end)
         if trap.end <= trap.begin:
-            self.explanation = trap.reason
+            track.explanation = trap.reason
             return begin, EndReason.NOT_TRAPPED
-        kinetics = Kinetics(self.gas, self.losses, trap)
-        steps, finish, reason = self._steps(kinetics, begin, trap.end)
+        system = Alone(track, Kinetics(track.gas, track.losses, trap))
+        finish, reason = self.advance(placed, system, trap.bottom_exponent, (begin, trap.end), count)
+        assert reason is None or isinstance(reason, EndReason)
         if reason is None and not trap.held:
-            reason, self.explanation = EndReason.NOT_TRAPPED, trap.reason
-        self._keep(placed, kinetics, steps, begin, finish, count)
+            reason, track.explanation = EndReason.NOT_TRAPPED, trap.reason
         return finish, reason
 
-    def _steps(self, kinetics: Kinetics, begin: float, end: float) -> tuple[list[Step], float, EndReason | None]:
-        many = len(ATOM_PROCESSES)
-        values = np.zeros(2 + many + len(ENERGY_PROCESSES))
-        values[:2] = math.log(self.atoms), math.log(self.energy)
-        scales = np.ones(len(values))
-        scales[2 : 2 + many], scales[2 + many :] = self.atoms, self.energy
-        integrator = Integrator(
-            derivatives=kinetics.derivatives,
-            tolerance=self.tolerance,
-            scales=scales,
-            smallest=1e-9 * (end - begin),
-        )
+    def advance(
+        self, placed: Placed, system: System, bottom_exponent: float, span: tuple[float, float], count: int
+    ) -> tuple[float, Enum | None]:
+        """Steps of a system from one time to another, with about as many rows; where it ended, and why if before."""
+        begin, end = span
+        values = system.variables()
+        solver = system.solver(self.limits.tolerance, 1e-9 * (end - begin))
         steps: list[Step] = []
         time = begin
+
+        def left(t: float, y: Floats) -> dict[Enum, float]:
+            return self._left(system, bottom_exponent, t, y)
+
         try:
-            ends = self._events(kinetics, time, values)
+            reason = next((reason for reason, missing in left(time, values).items() if missing <= 0.0), None)
         except OutOfRange:
-            return steps, time, EndReason.NOT_TRAPPED
-        reason = next((reason for reason, missing in ends.items() if missing <= 0.0), None)
+            reason = EndReason.NOT_TRAPPED
         while reason is None and time < end:
-            step = integrator.advance(time, values, end)
+            step = solver.advance(time, values, end)
             if step is None:
                 reason = EndReason.NOT_TRAPPED
                 break
@@ -283,101 +261,34 @@ class _Run:
                 raise ValueError(
                     f"the ramp changes too fast to follow at {time:g} s of a stage, after {MOST_STEPS} steps"
                 )
-            now = self._events(kinetics, step.end, step.finish)
-            for event, missing in now.items():
-                if missing <= 0.0:
-                    reason = event
-
-                    def left(t: float, y: Floats, event: EndReason = event) -> float:
-                        return self._events(kinetics, t, y)[event]
-
-                    time = step.crossing(left)
-                    values = step.at(time)
-                    break
-            else:
+            reason = next((r for r, missing in left(step.end, step.finish).items() if missing <= 0.0), None)
+            if reason is None:
                 time, values = step.end, step.finish
-        self.atoms, self.energy = math.exp(values[0]), math.exp(values[1])
-        self.ledger.add_rows(values[2 : 2 + many].tolist(), values[2 + many :].tolist())
-        return steps, time, reason
+            else:
+                time = step.crossing(lambda t, y, event=reason: left(t, y)[event])  # type: ignore[misc]
+                values = step.at(time)
+        system.settle(values)
+        system.keep(placed, self._rows(steps, begin, time, values, count))
+        return time, reason
 
-    def _events(self, kinetics: Kinetics, time: float, values: Floats) -> dict[EndReason, float]:
+    def _left(self, system: System, bottom_exponent: float, time: float, values: Floats) -> dict[Enum, float]:
         """What is left until each kind of end, not positive where it has come."""
-        atoms, energy = math.exp(values[0]), math.exp(values[1])
-        found = {EndReason.ATOMS: atoms / self.fewest - 1.0}
-        if self.target is not None:
-            cloud = kinetics.cloud(time, atoms, energy)
-            found[EndReason.TARGET] = self.target.missing(self.gas, kinetics.trap.bottom_exponent, cloud)
-        return found
+        found: dict[Enum, float] = {EndReason.ATOMS: math.exp(values[0]) / self.limits.fewest_atoms - 1.0}
+        target = self.limits.target
+        if target is not None:
+            found[EndReason.TARGET] = target.missing(self.track.gas, bottom_exponent, system.lead(time, values))
+        return found | system.ends(values)
 
-    def _keep(
-        self, placed: Placed, kinetics: Kinetics, steps: list[Step], begin: float, finish: float, count: int
-    ) -> None:
-        """Rows at even times of a stretch, its ends among them."""
+    def _rows(
+        self, steps: list[Step], begin: float, finish: float, last: Floats, count: int
+    ) -> Iterator[tuple[float, Floats]]:
+        """Even times of a stretch, its ends among them, and the variables there."""
         times = np.linspace(begin, finish, count + 1) if finish > begin else np.array([begin])
-        if self.parts and not self.jumped and len(times) > 1:
+        if self.track.count and not self.track.jumped and len(times) > 1:
             times = times[1:]
-        self.jumped = False
-        clouds, kept, index = [], [], 0
-        for time in times:
+        self.track.jumped = False
+        index = 0
+        for time in times.tolist():
             while index < len(steps) - 1 and steps[index].end < time:
                 index += 1
-            if steps and time < finish:
-                atoms, energy = np.exp(steps[index].at(time)[:2]).tolist()
-            else:
-                atoms, energy = self.atoms, self.energy
-            try:
-                clouds.append(kinetics.cloud(float(time), atoms, energy))
-            except OutOfRange:
-                continue
-            kept.append(float(time))
-        if not kept:
-            return
-        controls = {control: course.values(np.array(kept)) for control, course in placed.courses.items()}
-        self.parts.append((placed.begin + np.array(kept), placed.number, rows_of(kinetics, clouds), controls))
-        self.count += len(kept)
-
-    def _summarise(self, placed: Placed, before: tuple[Ledger, float, float, int], end: float) -> None:
-        ledger, atoms, energy, first = before
-        temperature, density = (
-            np.concatenate([getattr(rows, name) for _, _, rows, _ in self.parts])
-            for name in ("temperature", "classical_phase_space_density")
-        )
-        start = max(first - 1, 0)
-        gamma, alpha = efficiencies(
-            (atoms, self.atoms),
-            (float(temperature[start]), float(temperature[-1])),
-            (float(density[start]), float(density[-1])),
-        )
-        self.summaries.append(
-            StageSummary(
-                number=placed.number,
-                label=placed.stage.label,
-                begin=placed.begin,
-                end=end,
-                first=first,
-                last=self.count - 1,
-                budget=self.ledger.since(ledger, (atoms, self.atoms), (energy, self.energy)),
-                efficiency=gamma,
-                cooling=alpha,
-            )
-        )
-
-    def finished(self) -> Evaporation:
-        controls = dict.fromkeys(control for *_, values in self.parts for control in values)
-        return Evaporation(
-            gas=self.gas,
-            losses=self.losses,
-            time=np.concatenate([np.empty(0), *(time for time, *_ in self.parts)]),
-            stage=np.concatenate([np.empty(0), *(np.full(len(time), number) for time, number, *_ in self.parts)]),
-            rows=joined([rows for _, _, rows, _ in self.parts]),
-            controls={
-                control: np.concatenate(
-                    [values.get(control, np.full(len(time), np.nan)) for time, _, _, values in self.parts]
-                )
-                for control in controls
-            },
-            reason=self.reason or EndReason.RAMP,
-            explanation=self.explanation,
-            budget=self.ledger.since(Ledger(), (self.begun[0], self.atoms), (self.begun[1], self.energy)),
-            stages=tuple(self.summaries),
-        )
+            yield time, steps[index].at(time) if steps and time < finish else last

@@ -44,6 +44,7 @@ class Process(Enum):
     HEATING = "heating"
     LIGHT = "light"
     NOISE = "intensity noise"
+    CONTACT = "contact"
 
     @property
     def label(self) -> str:
@@ -66,6 +67,7 @@ ENERGY_PROCESSES = (
     Process.HEATING,
     Process.LIGHT,
     Process.NOISE,
+    Process.CONTACT,
 )
 """Processes that change the energy, in the order of `Kinetics`."""
 
@@ -73,7 +75,8 @@ ENERGY_PROCESSES = (
 class CloudNow(NamedTuple):
     """The cloud at one time. Rates are per atom. [SI]
 
-    `reference_density` is n_ref, that of the centre of the uncut cloud.
+    `reference_density` is n_ref, that of the centre of the uncut cloud. Of a second species in the trap: the collisions
+    with it, times the share of energy that one hands over, and the power that they bring; 0 where there is none.
     """
 
     atoms: float
@@ -85,6 +88,8 @@ class CloudNow(NamedTuple):
     speed: float
     trap: TrapNow
     averages: Averages
+    partner_rate: float = 0.0
+    partner_power: float = 0.0
 
     @property
     def temperature(self) -> float:
@@ -153,7 +158,11 @@ class Kinetics:
         `ENERGY_PROCESSES` [W]."""
         trap, averages, eta, kT, n = now.trap, now.averages, now.truncation, now.thermal_energy, now.reference_density
         mean = now.energy / now.atoms
-        evaporation = n * now.cross_section * now.speed * math.exp(averages.log_evaporation - eta)
+        escape = math.exp(averages.log_evaporation - eta)
+        evaporation = n * now.cross_section * now.speed * escape
+        if now.partner_rate:
+            # As of as many collisions, <n> sigma sqrt(2) vbar, with atoms of its own kind.
+            evaporation += now.partner_rate * escape * math.exp(-averages.log_pair) / math.sqrt(2.0)
         number = math.exp(averages.log_number)
         # Share of the atoms in the levels at the rim, over the relative number of these levels.
         rim = 4.0 / (3.0 * math.sqrt(math.pi)) * eta * math.sqrt(eta) * math.exp(-eta) / number
@@ -177,6 +186,7 @@ class Kinetics:
             self._heating,
             trap.light_heating,
             noise,
+            now.partner_power,
         )
         return atoms, energy
 
@@ -192,7 +202,10 @@ class Kinetics:
         log_atoms, log_energy = float(values[0]), float(values[1])
         if not (abs(log_atoms) < 700.0 and abs(log_energy) < 700.0):
             raise OutOfRange
-        now = self.cloud(time, math.exp(log_atoms), math.exp(log_energy))
+        return self.flows(self.cloud(time, math.exp(log_atoms), math.exp(log_energy)))
+
+    def flows(self, now: CloudNow) -> list[float]:
+        """The same of a cloud that is known."""
         lost, gained = self.rates(now)
         N = now.atoms
         mean = now.energy / N
