@@ -21,6 +21,7 @@ from app.answers.map import (
     usual_limits,
 )
 from app.answers.models import ModelsAnswer, models_answer
+from app.answers.preparation import prepare_trap, surveyed
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
 from app.answers.rates import RatesAnswer, RateSet, rates_answer
 from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
@@ -55,10 +56,12 @@ __all__ = [
     "map_points",
     "map_with_progress",
     "models_answer",
+    "prepare_trap",
     "profile_answer",
     "rates_answer",
     "round_up",
     "slices_answer",
+    "surveyed",
     "trap_answer",
     "trap_of",
     "tuning_answer",

@@ -165,12 +165,20 @@ class Newest:
             tell(what)
 
 
+_brief = threading.Lock()
+_usual: list[float] = []  # the interval to go back to, once for each that asked for brief turns and is not done
+
+
 @contextmanager
 def brief_turns() -> Iterator[None]:
-    """Threads at Python code take turns more often."""
-    usual = sys.getswitchinterval()
-    sys.setswitchinterval(BRIEF_TURN)
+    """Threads at Python code take turns more often, until the last one that asked for it is done."""
+    with _brief:
+        _usual.append(_usual[0] if _usual else sys.getswitchinterval())
+        sys.setswitchinterval(BRIEF_TURN)
     try:
         yield
     finally:
-        sys.setswitchinterval(usual)
+        with _brief:
+            before = _usual.pop()
+            if not _usual:
+                sys.setswitchinterval(before)

@@ -5,9 +5,9 @@ from __future__ import annotations
 import threading
 from collections import OrderedDict
 from collections.abc import Callable, Hashable
-from functools import wraps
+from functools import update_wrapper
 from operator import attrgetter
-from typing import TYPE_CHECKING, Concatenate, ParamSpec, TypeVar
+from typing import TYPE_CHECKING, Any, Concatenate, Generic, ParamSpec, TypeVar
 
 if TYPE_CHECKING:
     from app.plan import Plan
@@ -18,28 +18,45 @@ T = TypeVar("T")
 _KEPT = 8
 
 
-def part(*fields: str) -> Callable[[Callable[Concatenate[Plan, P], T]], Callable[Concatenate[Plan, P], T]]:
+class Part(Generic[P, T]):
+    """A function of a plan that keeps its newest answers; any thread may ask it."""
+
+    __name__: str
+
+    def __init__(self, function: Callable[Concatenate[Plan, P], T], fields: tuple[str, ...], keep: int) -> None:
+        update_wrapper(self, function)
+        self._function = function
+        self._read: Callable[[Plan], Any] = attrgetter(*fields)
+        self._keep = keep
+        self._kept: OrderedDict[Hashable, T] = OrderedDict()
+        self._lock = threading.Lock()
+
+    def __call__(self, plan: Plan, *args: P.args, **kwargs: P.kwargs) -> T:
+        key = self._key(plan, args, kwargs)
+        with self._lock:
+            if key in self._kept:
+                self._kept.move_to_end(key)
+                return self._kept[key]
+        value = self._function(plan, *args, **kwargs)
+        with self._lock:
+            self._kept[key] = value
+            if len(self._kept) > self._keep:
+                self._kept.popitem(last=False)
+        return value
+
+    def kept(self, plan: Plan, *args: P.args, **kwargs: P.kwargs) -> T | None:
+        """The answer if it is there already; nothing is worked out."""
+        with self._lock:
+            return self._kept.get(self._key(plan, args, kwargs))
+
+    def _key(self, plan: Plan, args: tuple[Any, ...], kwargs: dict[str, Any]) -> Hashable:
+        return self._read(plan), args, tuple(sorted(kwargs.items()))
+
+
+def part(*fields: str, keep: int = _KEPT) -> Callable[[Callable[Concatenate[Plan, P], T]], Part[P, T]]:
     """Keep a part's newest answers, keyed by the plan fields that it depends on and its other arguments."""
 
-    def decorate(function: Callable[Concatenate[Plan, P], T]) -> Callable[Concatenate[Plan, P], T]:
-        read = attrgetter(*fields)
-        kept: OrderedDict[Hashable, T] = OrderedDict()
-        lock = threading.Lock()
-
-        @wraps(function)
-        def answer(plan: Plan, *args: P.args, **kwargs: P.kwargs) -> T:
-            key = (read(plan), args, tuple(sorted(kwargs.items())))
-            with lock:
-                if key in kept:
-                    kept.move_to_end(key)
-                    return kept[key]
-            value = function(plan, *args, **kwargs)
-            with lock:
-                kept[key] = value
-                if len(kept) > _KEPT:
-                    kept.popitem(last=False)
-            return value
-
-        return answer  # type: ignore[return-value]  # wraps() forgets that `plan` may be given by place only
+    def decorate(function: Callable[Concatenate[Plan, P], T]) -> Part[P, T]:
+        return Part(function, fields, keep)
 
     return decorate

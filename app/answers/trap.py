@@ -32,7 +32,11 @@ class TrapAnswer:
         return self.survey.trapped
 
 
-@part("species.key", "species.state", "trap")
+KEPT = 24
+"""Surveys that are kept, 4 MB each, so that going back to an earlier value of a control costs none."""
+
+
+@part("species.key", "species.state", "trap", keep=KEPT)
 def trap_answer(plan: Plan) -> TrapAnswer:
     """The trap of the plan; nothing in it depends on the cloud."""
     from physics.traps.survey import survey, survey_of_harmonic  # loads in 100 ms, which a start need not wait for

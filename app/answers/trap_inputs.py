@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.part import part
-from app.answers.trap import trap_answer, trap_of
+from app.answers.trap import KEPT, trap_answer, trap_of
 from app.plan_field import PlanError
 from app.units import Quantity
 from physics.traps import HarmonicTrap, Trap
@@ -91,7 +91,7 @@ def surveyed_trap(plan: Plan) -> HarmonicTrap:
     return harmonic
 
 
-@part("species.key", "species.state", "trap")
+@part("species.key", "species.state", "trap", keep=KEPT)
 def trap_slopes(plan: Plan) -> dict[str, Slope]:
     """Name of each uncertain number of beams and coils -> how the harmonic trap follows it."""
     from physics.traps.potential import potential_of

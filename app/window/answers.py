@@ -1,7 +1,8 @@
-"""Keeps the answer up to date with the plan: the cheap part in the GUI thread, the long ones on a worker.
+"""Keeps the answer up to date with the plan: the cheap part in the GUI thread, the long ones on workers.
 
 However many edits come between two turns of the event loop, the cloud is answered once, for the newest plan. The part
-that the visible page shows is asked from the one worker thread, where the newest request wins.
+that the visible page shows is asked from a worker thread, where the newest request wins. A trap of beams and coils that
+was not met before is first surveyed, on a worker of its own; while it is, the last good answer stays.
 """
 
 from __future__ import annotations
@@ -12,11 +13,14 @@ from typing import TYPE_CHECKING, Any, Protocol
 
 from PySide6.QtCore import QObject, Qt, QTimer, Signal
 
-from app.engine import CloudAnswer, cloud_answer
-from app.newest import Job, Newest, Steps
+from app.engine import CloudAnswer, cloud_answer, prepare_trap, surveyed
+from app.newest import Job, Newest, Steps, brief_turns
 
 if TYPE_CHECKING:
     from app.plan import Plan
+
+LONG_SURVEY_MS = 120
+"""Milliseconds after which a survey that is not there yet is told of; a shorter one would only flicker."""
 
 
 class PartView(Protocol):
@@ -34,24 +38,30 @@ class PartView(Protocol):
 
 class Answers(QObject):
     """Signals: cloud_ready(CloudAnswer); cloud_failed(str), one sentence, when the plan cannot be answered;
-    part_failed(str) when the visible page's part cannot."""
+    surveying() when the answer waits for the survey of a trap; part_failed(str) when the visible page's part cannot."""
 
     cloud_ready = Signal(object)
     cloud_failed = Signal(str)
+    surveying = Signal()
     part_failed = Signal(str)
     _arrived = Signal(int, bool, object)
+    _surveyed = Signal(object, object)
 
     # Attributes: cloud, the newest answer; current, whether it answers the newest plan; failure, why the newest plan
-    # that was tried has no answer, or empty; cloud_count, for tests.
+    # that was tried has no answer, or empty; waiting, whether the newest plan's trap is being surveyed, and that was
+    # told; cloud_count, for tests.
 
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self.newest = Newest()
+        self.surveyor = Newest()
         self.cloud: CloudAnswer | None = None
         self.cloud_count = 0
         self.current = False
         self.failure = ""
+        self.waiting = False
         self._plan: Plan | None = None
+        self._under_survey = False
         self._asked = self._taken = 0  # numbers of the newest part asked for, and of the newest that arrived
         self._view: PartView | None = None  # that waits for a job in steps
         self._job: Steps | None = None
@@ -59,8 +69,13 @@ class Answers(QObject):
         self._turn = QTimer(self)
         self._turn.setSingleShot(True)
         self._turn.timeout.connect(self.answer_now)
-        # The worker's results hop to the GUI thread here.
+        self._patience = QTimer(self)
+        self._patience.setSingleShot(True)
+        self._patience.setInterval(LONG_SURVEY_MS)
+        self._patience.timeout.connect(self._tell_of_survey)
+        # The workers' results hop to the GUI thread here.
         self._arrived.connect(self._take, Qt.ConnectionType.QueuedConnection)
+        self._surveyed.connect(self._take_survey, Qt.ConnectionType.QueuedConnection)
 
     def set_plan(self, plan: Plan) -> None:
         """Answer this plan at the next turn of the event loop."""
@@ -68,19 +83,74 @@ class Answers(QObject):
         self._turn.start(0)
 
     def answer_now(self) -> None:
-        """Answer the newest plan at once."""
+        """Answer the newest plan: at once, or where its trap has not been surveyed yet, as soon as it is."""
         self._turn.stop()
         if self._plan is None:
             return
+        if surveyed(self._plan):
+            self._end_survey()
+            self._answer(self._plan)
+            return
+        if not self._under_survey:
+            self._patience.start()
+        self._under_survey = True
+        plan = self._plan
+        # Not through the worker's own delivery, which drops what was overtaken: surveys on the way of a long drag are
+        # worth showing.
+        self.surveyor.ask(partial(self._survey, plan), _ignore, _ignore)
+
+    def _answer(self, plan: Plan) -> None:
         self.cloud_count += 1
+        newest = plan == self._plan
         try:
-            self.cloud = cloud_answer(self._plan)
+            self.cloud = cloud_answer(plan)
         except (ValueError, OSError, ArithmeticError) as error:
-            self.failure = str(error)
-            self.cloud_failed.emit(self.failure)
+            if newest:
+                self._fail(str(error))
+            return
+        self.current = newest
+        self.failure = "" if newest else self.failure
+        self.cloud_ready.emit(self.cloud)
+
+    def _fail(self, sentence: str) -> None:
+        self.failure = sentence
+        self.cloud_failed.emit(sentence)
+
+    # ---------------------------------------------------------------- surveys
+
+    def _survey(self, plan: Plan) -> None:
+        """On the worker."""
+        try:
+            with brief_turns():
+                prepare_trap(plan)
+        except Exception as error:  # whatever it is, it is the GUI thread's to tell
+            self._surveyed.emit(plan, error)
         else:
-            self.current, self.failure = True, ""
-            self.cloud_ready.emit(self.cloud)
+            self._surveyed.emit(plan, None)
+
+    def _take_survey(self, plan: Plan, error: Exception | None) -> None:
+        if not self._under_survey or self._plan is None:
+            return
+        if error is not None:
+            if plan == self._plan:
+                self._end_survey()
+                if not isinstance(error, ValueError | OSError | ArithmeticError):
+                    raise error
+                self._fail(str(error))
+        elif plan == self._plan or surveyed(self._plan):
+            self._end_survey()
+            self._answer(self._plan)
+        else:
+            self.waiting = True
+            self._answer(plan)  # on the way to the newest one
+
+    def _end_survey(self) -> None:
+        self._under_survey = self.waiting = False
+        self._patience.stop()
+
+    def _tell_of_survey(self) -> None:
+        self.waiting = True
+        self.surveying.emit()
 
     # ---------------------------------------------------------------- parts
 
@@ -148,9 +218,15 @@ class Answers(QObject):
 
     @property
     def settled(self) -> bool:
-        """Whether nothing is under way: no plan to answer, no job on the worker, no result to be shown."""
-        return not self._turn.isActive() and self._taken == self._asked
+        """Whether nothing is under way: no plan to answer, no job on a worker, no result to be shown."""
+        return not self._turn.isActive() and not self._under_survey and self._taken == self._asked
 
     def close(self) -> None:
         self._turn.stop()
+        self._patience.stop()
         self.newest.close()
+        self.surveyor.close()
+
+
+def _ignore(_what: object) -> None:
+    pass

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from contextlib import suppress
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -142,6 +141,7 @@ class MainWindow(QMainWindow):
         # the answer goes to all that show it
         answers.cloud_ready.connect(self._show_cloud)
         answers.cloud_failed.connect(self._cloud_failed)
+        answers.surveying.connect(self._judge)
         answers.part_failed.connect(self.tell)
         # a page that comes to the front, or wants to show something else, asks for its part
         desk.page_changed.connect(self._page_changed)
@@ -213,19 +213,19 @@ class MainWindow(QMainWindow):
         self._judge()
 
     def _show_trap(self, plan: Plan) -> None:
-        """What beams and coils come to, which the cloud's answer has asked for already."""
-        if plan.trap.harmonic:
-            return
+        """What beams and coils come to, if that is known: the cloud's answer has asked for it."""
         from app.engine import trap_answer
 
-        with suppress(ValueError):  # such as an unknown state, of which the cloud's answer has told
-            self.desk.bench.trap.show_trap(trap_answer(plan))
+        answer = None if plan.trap.harmonic else trap_answer.kept(plan)
+        if answer is not None:
+            self.desk.bench.trap.show_trap(answer)
 
     def _judge(self) -> None:
-        """A field that cannot be read, or a plan without an answer, marks everything as not current; once all is well,
-        the answer is again."""
-        problems = [*self.desk.bench.problems, self.answers.failure]
-        if any(problems):
+        """A field that cannot be read, a survey that takes time, or a plan without an answer, marks everything as not
+        current; once all is well, the answer is again."""
+        survey = "the trap is being surveyed" if self.answers.waiting else ""
+        problems = [problem for problem in (*self.desk.bench.problems, survey, self.answers.failure) if problem]
+        if problems:
             self._mark_stale(problems[0])
         elif self.desk.verdict.stale and self.answers.cloud is not None and self.answers.current:
             self._show_cloud(self.answers.cloud)

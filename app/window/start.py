@@ -122,9 +122,10 @@ def _problem_of(path: Path) -> str:
 
 
 def _take_pictures(window: MainWindow, wishes: Wishes) -> int:
-    from app.window.pictures import grab_all
+    from app.window.pictures import grab_all, settle
 
     assert wishes.pictures is not None
+    settle(window)
     if window.answers.cloud is None:
         print(f"coldward: {window.answers.failure}", file=sys.stderr)
         return 1

@@ -1,0 +1,46 @@
+"""What an answer for a cloud needs of a trap of beams and coils, worked out ahead: its survey and what hangs on it.
+
+It takes up to a second, so the window has it done on a worker thread; after it a cloud is answered within a frame.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from app.answers.trap import trap_answer
+from app.answers.trap_inputs import trap_inputs, trap_slopes
+
+if TYPE_CHECKING:
+    from app.plan import Plan
+
+_LATER = ("volume_curve", "arms", "heating", "spin_flips", "notes")
+"""What a survey works out when it is first asked for it."""
+
+
+def surveyed(plan: Plan) -> bool:
+    """Whether a cloud in the trap of the plan can be answered at once."""
+    if plan.trap.harmonic:
+        return True
+    answer = trap_answer.kept(plan)
+    if answer is None or not all(name in vars(answer.survey) for name in _LATER):
+        return False
+    return not _followed(plan) or not answer.trapped or trap_slopes.kept(plan) is not None
+
+
+def prepare_trap(plan: Plan) -> None:
+    """Survey the trap of the plan, so that afterwards it is `surveyed`; that it holds nothing is an answer.
+
+    Raises ValueError where the species, or its state, is not known.
+    """
+    if plan.trap.harmonic:
+        return
+    answer = trap_answer(plan)
+    for name in _LATER:
+        getattr(answer.survey, name)
+    if answer.trapped and _followed(plan):
+        trap_slopes(plan)
+
+
+def _followed(plan: Plan) -> bool:
+    """Whether the trap has uncertain numbers, which its frequencies and depth follow."""
+    return bool(trap_inputs(plan))
