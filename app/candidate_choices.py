@@ -14,11 +14,26 @@ if TYPE_CHECKING:
 
 
 class Basis(Enum):
-    """In what candidates are judged."""
+    """In what candidates are judged.
+
+    SAME_FREQUENCIES: each in a harmonic trap of the plan's frequencies and depth.
+    SAME_LIGHT: each in the plan's beams and coils, which are another trap to each.
+    SAME_START: each in the plan's trap, whichever way it is given, and all begin alike, see `Start`.
+    """
 
     SAME_FREQUENCIES = "same frequencies"
     SAME_LIGHT = "same light"
     SAME_START = "same start"
+
+
+class Start(Enum):
+    """What is alike where candidates start alike.
+
+    PHASE_SPACE_DENSITY: N (hbar wbar/kT)^3, which says how far from degeneracy a cloud begins; the temperature follows.
+    """
+
+    ATOMS_AND_TEMPERATURE = "same atoms and temperature"
+    PHASE_SPACE_DENSITY = "same phase-space density"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -45,9 +60,11 @@ class CandidatesChoice:
 
     keys : species, each in all of its states; with no keys and no candidates, all that there are
     candidates : single states with conditions of their own
+    start : what a same start is
     """
 
     basis: Basis = Basis.SAME_FREQUENCIES
+    start: Start = Start.ATOMS_AND_TEMPERATURE
     keys: tuple[str, ...] = ()
     candidates: tuple[CandidateChoice, ...] = ()
 

@@ -1,0 +1,269 @@
+"""One candidate, judged: what the columns of a comparison say of it, how sure that is, and where it fails."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from enum import Enum
+from functools import cached_property
+from typing import TYPE_CHECKING
+
+from app.answers.candidate_trap import TrapFacts
+from app.answers.uncertainty import Spread
+from app.candidate_columns import COLUMNS, Column, Datum, Part
+from app.language import translate as _
+from app.quantity_row import Need
+from app.sureness import Sureness, least_sure, sureness_of
+from app.words import reason_missing
+from physics.scattering import tuning
+from physics.species_tables import Resonance
+
+if TYPE_CHECKING:
+    from app.answers.candidate_evaporation import EvaporationResult
+    from app.answers.cloud import CloudAnswer
+    from app.plan import CandidateChoice, Plan
+    from physics.species import State
+
+
+class Failure(Enum):
+    """Where a candidate fails, the gravest first."""
+
+    NOT_TRAPPED = "not trapped"
+    NO_ANSWER = "no answer"
+    NO_COLLISIONS = "no collisions"
+    NO_DATA = "no data"
+    ATTRACTIVE = "attractive"
+
+    @property
+    def label(self) -> str:
+        return _(self.value)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Cell:
+    """One number of a row, in SI; NaN where there is none, with the reason.
+
+    reason : why there is no number, or what is assumed
+    """
+
+    value: float
+    sureness: Sureness
+    reason: str = ""
+
+    @property
+    def known(self) -> bool:
+        return math.isfinite(self.value)
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class CandidateRow:
+    """A candidate as it is judged.
+
+    candidate : species and state, with the conditions of its own
+    plan : the plan with this candidate in it
+    trap : what the trap is to it
+    cloud : its answer; None where there is none
+    failure, reason : where it fails and why, as a clause; None and empty where it does not
+    in_light : whether its trap follows from data of the species
+    evaporation : the best evaporation; None before it was worked out
+    """
+
+    candidate: CandidateChoice
+    plan: Plan
+    state: State
+    trap: TrapFacts
+    cloud: CloudAnswer | None
+    failure: Failure | None
+    reason: str
+    in_light: bool
+    evaporation: EvaporationResult | None = None
+
+    @property
+    def key(self) -> str:
+        return self.state.key
+
+    @property
+    def name(self) -> str:
+        """Species and state, as a row is called."""
+        return f"{self.state.key}  {self.state.name}"
+
+    @property
+    def bosons(self) -> bool:
+        return self.state.isotope.statistics.value == "boson"
+
+    @property
+    def trapped(self) -> bool:
+        return self.trap.held
+
+    @cached_property
+    def broadest_resonance(self) -> Resonance | None:
+        """Of those by which the data tune the state."""
+        found = [resonance for form in tuning(self.state) for resonance in form.resonances]
+        return max(found, key=lambda resonance: abs(resonance.width.value), default=None)
+
+    @property
+    def described_fields(self) -> tuple[tuple[float, float], ...]:
+        """Ranges of field [T] in which the data tune the state."""
+        return tuple((form.low, form.high) for form in tuning(self.state))
+
+    # ---------------------------------------------------------------- cells
+
+    def cell(self, name: str) -> Cell:
+        """What a column says of this candidate."""
+        if name not in self._cells:
+            self._cells[name] = self._cell(COLUMNS[name])
+        return self._cells[name]
+
+    @cached_property
+    def _cells(self) -> dict[str, Cell]:
+        return {}
+
+    def spread(self, name: str) -> Spread | None:
+        """16 to 84 percent of a number over the stated uncertainties; None where it has none."""
+        column, cloud = COLUMNS[name], self.cloud
+        if cloud is None or not self.cell(name).known:
+            return None
+        if column.part is Part.CLOUD:
+            return cloud.spread(name)
+        if column.part is not Part.THRESHOLD:
+            return None
+        share = 1.0 if cloud.bosons else cloud.threshold
+        found = cloud.spread("critical_temperature" if cloud.bosons else "fermi_temperature")
+        if found is None:
+            return None
+        return Spread(
+            low=share * found.low, median=share * found.median, high=share * found.high, method=found.method
+        )  # fmt: skip
+
+    def _cell(self, column: Column) -> Cell:
+        value, reason = self._value(column)
+        if not math.isfinite(value):
+            return Cell(value=math.nan, sureness=Sureness.UNKNOWN, reason=reason or _("not defined for this cloud"))
+        assumed = self._assumed(column)
+        sure = [self._sureness(datum) for datum in column.data]
+        if assumed:
+            sure.append(Sureness.ASSUMED)
+        return Cell(value=value, sureness=least_sure(*sure), reason=assumed)
+
+    def _value(self, column: Column) -> tuple[float, str]:
+        """The number, NaN where there is none, and why there is none."""
+        name, cloud = column.name, self.cloud
+        match column.part:
+            case Part.SPECIES:
+                return self.state.mass, ""
+            case Part.TUNING:
+                return self._tuning(name)
+            case Part.TRAP:
+                return self.trap.values[name], self.trap.reasons[name]
+        if cloud is None:
+            return math.nan, self.reason
+        match column.part:
+            case Part.LENGTH:
+                found = cloud.scattering
+                return (found.value, "") if found.value is not None else (math.nan, length_reason(cloud))
+            case Part.THRESHOLD:
+                solved = cloud.equilibrium
+                if cloud.bosons:
+                    return float(solved.critical_temperature), ""
+                return cloud.threshold * float(solved.fermi_temperature), ""
+            case Part.EVAPORATION:
+                return self._evaporation(name)
+        need = cloud.missing(column.row)
+        if need is not None:
+            return math.nan, self._reason_missing(need, cloud)
+        return float(cloud.value(name)), ""
+
+    def _reason_missing(self, need: Need, cloud: CloudAnswer) -> str:
+        said = reason_missing(need)
+        return f"{said}: {length_reason(cloud)}" if _LENGTH_NEEDS & {need} and cloud.scattering.value is None else said
+
+    def _tuning(self, name: str) -> tuple[float, str]:
+        found = self.broadest_resonance
+        if found is None:
+            return math.nan, _("the data have no magnetic resonance of this state")
+        return (found.position.value if name == "resonance_field" else abs(found.width.value)), ""
+
+    def _evaporation(self, name: str) -> tuple[float, str]:
+        if self.evaporation is None:
+            return math.nan, _("not worked out yet")
+        return getattr(self.evaporation, _OF_EVAPORATION[name]), self.evaporation.reason
+
+    # ---------------------------------------------------------------- how sure
+
+    def _sureness(self, datum: Datum) -> Sureness:
+        cloud = self.cloud
+        match datum:
+            case Datum.TRAP:
+                return self.trap.sureness if self.in_light else Sureness.SEEN
+            case Datum.RESONANCES:
+                forms = tuning(self.state)
+                return least_sure(*(sureness_of(form.certainty) for form in forms))
+        if cloud is None:
+            return Sureness.SEEN
+        if datum is Datum.LENGTH:
+            # Where it is not known, it does not enter what has a value without it.
+            return sureness_of(cloud.scattering.certainty)
+        sourced = cloud.losses.two_body if datum is Datum.TWO_BODY else cloud.losses.three_body
+        return Sureness.SEEN if sourced is None else sureness_of(sourced.certainty)
+
+    def _assumed(self, column: Column) -> str:
+        """What is assumed or left out in a number; empty where nothing is."""
+        cloud = self.cloud
+        if cloud is None:
+            return ""
+        if column.name in _OF_THRESHOLD and not cloud.bosons and self.plan.target.reduced_temperature is None:
+            return _("T/TF = {limit} stands for the threshold: the plan's target names none").format(
+                limit=f"{cloud.threshold:.3g}"
+            )
+        if column.name in _OF_ALL_LOSSES:
+            losses = cloud.losses.losses
+            left_out = [
+                word
+                for word, number in (
+                    (_("background gas"), losses.background_lifetime),
+                    (_("two-body loss"), losses.two_body),
+                    (_("three-body loss"), losses.three_body),
+                )
+                if number is None
+            ]
+            if left_out:
+                said = _("without {losses}, of which nothing is known: an upper bound")
+                if column.name in _MORE_WITH_LOSSES:
+                    said = _("without {losses}, of which nothing is known: a lower bound")
+                return said.format(losses=_(" and ").join(left_out))
+        return ""
+
+
+_OF_THRESHOLD = frozenset({"threshold_temperature", "temperature_to_threshold", "atoms_to_threshold"})
+_OF_ALL_LOSSES = frozenset(
+    {
+        "total_lifetime",
+        "good_to_bad_ratio",
+        "loss_per_rethermalisation",
+        "loss_heating_rate",
+        "heating_rate",
+        "evaporated_atoms",
+    }
+)
+_MORE_WITH_LOSSES = frozenset({"loss_per_rethermalisation", "loss_heating_rate", "heating_rate"})
+_OF_EVAPORATION = {"evaporated_atoms": "atoms", "evaporation_time": "time"}
+_LENGTH_NEEDS = frozenset(
+    {
+        Need.SCATTERING_LENGTH,
+        Need.COLLISIONS,
+        Need.REPULSIVE,
+        Need.ATTRACTIVE,
+        Need.INTERACTING_CONDENSATE,
+        Need.STABLE_CONDENSATE,
+    }
+)
+
+
+def length_reason(cloud: CloudAnswer) -> str:
+    """Why a cloud has no scattering length, and at which fields the data have one."""
+    found = cloud.scattering
+    said = _(found.reason.value) if found.reason is not None else ""
+    if found.ranges:
+        fields = _(" and ").join(f"{1e4 * low:.4g}–{1e4 * high:.4g} G" for low, high in found.ranges)
+        said += _("; they have it at {fields}").format(fields=fields)
+    return said

@@ -1,0 +1,229 @@
+"""Species and states side by side: each put into the plan, in the same frequencies, the same light, or from the same
+start.
+
+There is one way to answer for a cloud, `app.answers.cloud`; a candidate is the plan with another species in it.
+"""
+
+from __future__ import annotations
+
+import math
+import time
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, replace
+from types import MappingProxyType
+from typing import TYPE_CHECKING
+
+from app.answers.candidate_row import CandidateRow, Failure, length_reason
+from app.answers.candidate_trap import trap_facts
+from app.answers.cloud import cloud_answer
+from app.answers.part import part
+from app.answers.trap_inputs import surveyed_trap
+from app.candidate_choices import Basis, CandidateChoice, Start
+from app.choices import SpeciesChoice
+from app.language import translate as _
+from app.plan_field import PlanError
+from app.trap_choices import TrapChoice
+from app.units import Quantity, best_unit, format_quantity
+from app.words import number
+from physics.scattering import WhyUnknown
+from physics.species import load_species, species_keys
+
+if TYPE_CHECKING:
+    from app.answers.candidate_evaporation import EvaporationResult
+    from app.answers.cloud import CloudAnswer
+    from app.plan import Plan
+
+KEPT = 160
+"""Rows that are kept: all states of the data, twice."""
+
+PATIENCE = 0.1
+"""Seconds between deliveries of the rows that are there."""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class CandidatesAnswer:
+    """The candidates of a plan, so far as they are judged.
+
+    expected : number of rows when all are
+    """
+
+    basis: Basis
+    start: Start
+    rows: tuple[CandidateRow, ...]
+    expected: int
+
+    @property
+    def complete(self) -> bool:
+        return len(self.rows) == self.expected
+
+
+def candidates_of(plan: Plan) -> tuple[CandidateChoice, ...]:
+    """The states to be compared, by mass number: those of the plan, or all of the data where it names none.
+
+    Raises ValueError for a species or state that the data do not have.
+    """
+    choice = plan.candidates
+    keys = choice.keys or (() if choice.candidates else species_keys())
+    found = {}
+    for key in keys:
+        species = load_species(key)
+        for state in species.states:
+            found[species.key, state.name] = CandidateChoice(key=species.key, state=state.name)
+    for own in choice.candidates:
+        species = load_species(own.key)
+        state = species.state(own.state)
+        found[species.key, state.name] = replace(own, key=species.key, state=state.name)
+    order = {key: place for place, key in enumerate(species_keys())}
+    return tuple(sorted(found.values(), key=lambda candidate: order[candidate.key]))
+
+
+def candidates_answer(
+    plan: Plan,
+    deliver: Callable[[CandidatesAnswer], bool] = lambda _answer: True,
+    tick: Callable[[float], bool] = lambda _share: True,
+    evaporations: Mapping[Plan, EvaporationResult] = MappingProxyType({}),
+) -> CandidatesAnswer | None:
+    """Every candidate of the plan, judged in its basis.
+
+    `deliver` is given the rows that are there from time to time, `tick` the share that is done; a false answer of
+    either stops the work, and the result is None. `evaporations` are results that are there already, by row's plan.
+
+    Raises PlanError, in one sentence, where the basis cannot be had.
+    """
+    choice = plan.candidates
+    frame = _frame(plan)
+    candidates = candidates_of(plan)
+    rows: list[CandidateRow] = []
+
+    def answer() -> CandidatesAnswer:
+        return CandidatesAnswer(basis=choice.basis, start=choice.start, rows=tuple(rows), expected=len(candidates))
+
+    last = time.monotonic()
+    for candidate in candidates:
+        row = _row(_plan_of(plan, candidate, frame), candidate, frame.in_light)
+        found = evaporations.get(row.plan)
+        rows.append(row if found is None else replace(row, evaporation=found))
+        if not tick(len(rows) / len(candidates)):
+            return None
+        if time.monotonic() - last > PATIENCE and len(rows) < len(candidates):
+            if not deliver(answer()):
+                return None
+            last = time.monotonic()
+    return answer()
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Frame:
+    """What all candidates share: the trap, and where they start alike in phase-space density, that of the plan's own
+    cloud: N (f/T)^3 [1/(s K)^3]."""
+
+    trap: TrapChoice
+    in_light: bool
+    density: float | None = None
+
+
+def _frame(plan: Plan) -> _Frame:
+    basis, harmonic = plan.candidates.basis, plan.trap.harmonic
+    if basis is Basis.SAME_LIGHT and harmonic:
+        raise PlanError(
+            "the same light needs a trap of beams or coils, and the trap of this plan is given by its frequencies",
+            path="candidates.basis",
+        )
+    if basis is Basis.SAME_FREQUENCIES:
+        return _Frame(trap=plan.trap if harmonic else _frequencies_of(plan), in_light=False)
+    density = None
+    if basis is Basis.SAME_START and plan.candidates.start is Start.PHASE_SPACE_DENSITY:
+        frequency = trap_facts(plan).mean_frequency if not harmonic else _mean_frequency(plan.trap)
+        if math.isnan(frequency):
+            surveyed_trap(plan)  # says why there is none
+        density = plan.cloud.atoms.value * (frequency / plan.cloud.temperature.value) ** 3
+    return _Frame(trap=plan.trap, in_light=not harmonic, density=density)
+
+
+def _frequencies_of(plan: Plan) -> TrapChoice:
+    """The harmonic trap that the plan's own atoms see in its beams and coils."""
+    found = surveyed_trap(plan)
+    frequencies = tuple(_exactly(float(value), "Hz") for value in found.frequencies)
+    depth = None if found.depth is None else _exactly(float(found.depth), "µK", si_unit="J")
+    return TrapChoice(frequencies=(frequencies[0], frequencies[1], frequencies[2]), depth=depth)
+
+
+def _exactly(value: float, unit: str, *, si_unit: str | None = None) -> Quantity:
+    """A number that was worked out, with all its digits; its text is only to be read."""
+    return Quantity(format_quantity(value, unit, digits=4, si_unit=si_unit), value)
+
+
+def _mean_frequency(trap: TrapChoice) -> float:
+    assert trap.frequencies is not None
+    return math.prod(quantity.value for quantity in trap.frequencies) ** (1.0 / 3.0)
+
+
+def _plan_of(plan: Plan, candidate: CandidateChoice, frame: _Frame) -> Plan:
+    """The plan with the candidate in the place of its own species.
+
+    A field of the laboratory, background gas, heating and noise stay; a typed scattering length and constants of
+    two- and three-body loss hold for the plan's own atoms only.
+    """
+    own = load_species(plan.species.key).state(plan.species.state)
+    same = (own.key, own.name) == (candidate.key, candidate.state)
+    species, losses = plan.species, plan.losses
+    if not same:
+        species = SpeciesChoice(key=candidate.key, state=candidate.state, field=plan.species.field)
+        losses = replace(losses, two_body=None, three_body=None)
+    if candidate.field is not None or candidate.scattering_length is not None:
+        species = replace(species, field=candidate.field, scattering_length=candidate.scattering_length)
+    put = replace(plan, species=species, losses=losses, trap=frame.trap)
+    same_cloud = plan.candidates.basis is Basis.SAME_START and frame.density is None
+    atoms = plan.cloud.atoms if same_cloud else candidate.atoms or plan.cloud.atoms
+    temperature = plan.cloud.temperature if same_cloud else candidate.temperature or plan.cloud.temperature
+    if frame.density is not None:
+        frequency = trap_facts(put).mean_frequency if frame.in_light else _mean_frequency(frame.trap)
+        if math.isfinite(frequency):
+            value = frequency * (atoms.value / frame.density) ** (1.0 / 3.0)
+            temperature = _exactly(value, best_unit(value, ("nK", "µK", "mK")))
+    return replace(put, cloud=replace(plan.cloud, atoms=atoms, temperature=temperature))
+
+
+@part("species", "trap", "cloud", "losses", "target", keep=KEPT)
+def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow:
+    """The candidate that was put into the plan, judged."""
+    state = load_species(plan.species.key).state(plan.species.state)
+    trap = trap_facts(plan)
+    cloud, failure, reason = None, None, ""
+    if not trap.held:
+        failure, reason = Failure.NOT_TRAPPED, trap.not_held
+    else:
+        try:
+            cloud = cloud_answer(plan)
+        except (ValueError, ArithmeticError) as error:
+            failure, reason = Failure.NO_ANSWER, trap.no_frequencies or str(error)
+        else:
+            failure, reason = _failure(cloud)
+    return CandidateRow(
+        candidate=candidate,
+        plan=plan,
+        state=state,
+        trap=trap,
+        cloud=cloud,
+        failure=failure,
+        reason=reason,
+        in_light=in_light,
+    )
+
+
+def _failure(cloud: CloudAnswer) -> tuple[Failure | None, str]:
+    """Where a trapped cloud fails on its way to degeneracy."""
+    scattering = cloud.scattering
+    collides = float(cloud.equilibrium.elastic_collision_rate)
+    if scattering.reason is WhyUnknown.POLARISED:
+        if collides > 0.0:  # by their dipoles
+            return None, ""
+        return Failure.NO_COLLISIONS, _("fermions in one spin state do not meet in s-waves")
+    if scattering.value is None:
+        return Failure.NO_DATA, length_reason(cloud)
+    if scattering.value == 0.0 and not collides > 0.0:
+        return Failure.NO_COLLISIONS, _("the scattering length is zero")
+    if cloud.bosons and scattering.value < 0.0:
+        most = float(cloud.value("collapse_atoms"))
+        return Failure.ATTRACTIVE, _("a condensate collapses beyond {atoms} atoms").format(atoms=number(most, 2))
+    return None, ""
