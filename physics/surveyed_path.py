@@ -25,6 +25,9 @@ _COIL_PARTS = {
     Knob.LEVITATION: "levitation",
 }
 
+Setting = tuple[tuple[Control, float], ...]
+"""Values of controls, in the order of their labels. [SI]"""
+
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class SurveyedPath:
@@ -46,7 +49,16 @@ class SurveyedPath:
     nodes: int = 25
     progress: Callable[[], None] | None = None
 
-    _known: dict[tuple[tuple[Control, float], ...], TrapPoint] = field(default_factory=dict, init=False, repr=False)
+    _known: dict[Setting, TrapPoint] = field(default_factory=dict, init=False, repr=False)
+
+    @property
+    def known(self) -> Mapping[Setting, TrapPoint]:
+        """What was surveyed so far."""
+        return MappingProxyType(self._known)
+
+    def learn(self, points: Mapping[Setting, TrapPoint]) -> None:
+        """Take over what another path of this trap and state has surveyed."""
+        self._known.update({key: point for key, point in points.items() if key not in self._known})
 
     @cached_property
     def standing(self) -> Mapping[Control, float]:
@@ -103,6 +115,10 @@ def point_of(found: Survey) -> TrapPoint:
     if found.frequencies is not None:
         x, y, z = (float(f) for f in found.frequencies)
         frequencies = (x, y, z)
+    minimum = None
+    if found.minimum is not None:
+        x, y, z = (float(place) for place in found.minimum)
+        minimum = (x, y, z)
     depth = float(energies[-1]) if found.volume_curve_ceiling is not None else float(found.depth)
     if depth > energies[-1] * (1.0 + 1e-9) and len(energies) > 4:
         growth = math.log(volumes[-1] / volumes[-4]) / math.log(energies[-1] / energies[-4])
@@ -114,5 +130,7 @@ def point_of(found: Survey) -> TrapPoint:
         volume=float(volumes[-1]),
         curve=CurveShape(energies=energies / depth, volumes=volumes / volumes[-1], exponent=curve.power),
         frequencies=frequencies,
+        minimum=minimum,
+        axes=None if found.axes is None else tuple(tuple(row) for row in np.asarray(found.axes).tolist()),
         light_heating=float(found.heating.power),
     )

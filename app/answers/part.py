@@ -38,11 +38,18 @@ class Part(Generic[P, T]):
                 self._kept.move_to_end(key)
                 return self._kept[key]
         value = self._function(plan, *args, **kwargs)
+        self._remember(key, value)
+        return value
+
+    def take(self, answer: T, plan: Plan, *args: P.args, **kwargs: P.kwargs) -> None:
+        """Keep an answer that was worked out elsewhere."""
+        self._remember(self._key(plan, args, kwargs), answer)
+
+    def _remember(self, key: Hashable, value: T) -> None:
         with self._lock:
             self._kept[key] = value
             if len(self._kept) > self._keep:
                 self._kept.popitem(last=False)
-        return value
 
     def kept(self, plan: Plan, *args: P.args, **kwargs: P.kwargs) -> T | None:
         """The answer if it is there already; nothing is worked out."""
