@@ -44,7 +44,7 @@ from app.figures.layout import (
 )
 from app.figures.picture import Curve, Field, Picture, Role
 from app.figures.theme import LIGHT, LineStyle, Theme, colour_scale
-from app.figures.ticks import axis_title, span, to_drawing
+from app.figures.ticks import frame_title, span, to_drawing
 
 HALO_WIDTH = 2.2
 MARK_SIZE, DRAGGABLE_SIZE, MARK_EDGE = 6.0, 9.0, 1.2
@@ -139,7 +139,7 @@ def _write_axis_titles(picture: Picture, axes: Axes, theme: Theme, layout: Layou
     x_offset = -(TICK + TICK_GAP + theme.small_size * LINE + 0.5 * line + 1.0)
     lines = 1 + layout.y_title.count("\n")
     y_offset = TICK + 2 * TICK_GAP + widest(layout.y_ticks.texts, theme.small_size, text_size) + 0.5 * lines * line
-    _write(axes, 0.5, x_offset / layout.height, axis_title(picture.x), theme.font_size, theme, ha="center")
+    _write(axes, 0.5, x_offset / layout.height, frame_title(picture.x), theme.font_size, theme, ha="center")
     _write(axes, -y_offset / layout.width, 0.5, layout.y_title, theme.font_size, theme, ha="center", va="center",
            rotation="vertical", multialignment="center")  # fmt: skip
 

@@ -12,7 +12,7 @@ import numpy as np
 
 from app.figures.picture import Field, Picture, Role
 from app.figures.theme import Theme
-from app.figures.ticks import Ticks, axis_title, span, ticks_of
+from app.figures.ticks import Ticks, frame_title, span, ticks_of
 
 Measure = Callable[[str, float], tuple[float, float]]
 """Width and line height [pt] of a text at a type size [pt]."""
@@ -78,7 +78,7 @@ def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, flo
     """Fits axes and all around them into `room` (left, bottom, width, height) [pt]."""
     left, bottom, width, height = room
     line = theme.font_size * LINE
-    below = PAD + line + TICK_GAP + theme.small_size * LINE + TICK
+    below = PAD + (line if frame_title(picture.x) else 0.0) + TICK_GAP + theme.small_size * LINE + TICK
     entries = legend_entries(picture)
     title_height = theme.title_size * LINE + 2.0 if picture.title else 0.0
     rows = _legend_rows(entries, theme, width - 2.0 * PAD, measure)
@@ -93,11 +93,12 @@ def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, flo
     tallest = inner_height + 6.0
     y_title = "\n".join(
         shortened(part, theme.font_size, tallest, measure)
-        for part in _broken(axis_title(picture.y), theme.font_size, tallest, measure).split("\n")
+        for part in _broken(frame_title(picture.y), theme.font_size, tallest, measure).split("\n")
     )
     tick_width = widest(y_ticks.texts, theme.small_size, measure)
     # whole steps of 4 pt: the axes do not twitch with each new tick text
-    before = 4.0 * np.ceil((PAD + (1 + y_title.count("\n")) * line + TICK_GAP + tick_width + TICK_GAP + TICK) / 4.0)
+    beside = (1 + y_title.count("\n")) * line + TICK_GAP if y_title else 0.0
+    before = 4.0 * np.ceil((PAD + beside + tick_width + TICK_GAP + TICK) / 4.0)
     after = PAD + 12.0 if picture.field is None else bar_room(picture.field, theme, measure)
     inner_width = max(width - before - after, SMALLEST)
     x_ticks = _fitting_ticks(picture, theme, inner_width, measure)

@@ -35,13 +35,19 @@ class Role(Enum):
     FOURTH = auto()
     CLOUD = auto()  # the present cloud: a point, or a line at its place
     UNCERTAINTY = auto()
+    STAGE = auto()  # where a stage of a ramp ends
+    CURSOR = auto()  # the time that is read
+    REFERENCE = auto()  # a ramp that was kept to compare with
+    REST = auto()  # of a ramp, from a measured cloud on
+    TRACK = auto()  # of a ramp on the map
+    MEASURED = auto()
 
 
 @dataclass(frozen=True, kw_only=True)
 class Axis:
     """One axis. Data are in `unit`; with `prefixed` the unit is a bare SI unit and tick labels carry the prefix
     ("100 nK"), which reads best over many decades; with `power` ticks count in that power of ten, which the title
-    names, and data stay in `unit`."""
+    names, and data stay in `unit`; one that is not `titled` has no title beside it, since the picture's says what it shows."""
 
     label: str
     unit: str
@@ -50,6 +56,7 @@ class Axis:
     log: bool = False
     prefixed: bool = False
     power: int = 0
+    titled: bool = True
 
     def __post_init__(self) -> None:
         if not (np.isfinite(self.low) and np.isfinite(self.high) and self.low < self.high):

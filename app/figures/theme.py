@@ -34,6 +34,7 @@ _MAP_ROLES = frozenset(
         Role.FRACTION,
         Role.CLOUD,
         Role.UNCERTAINTY,
+        Role.TRACK,
     }
 )
 
@@ -151,6 +152,12 @@ def _lines(
         Role.FOURTH: LineStyle(colour=purple, width=1.8, dash=(1.6, 1.8)),
         Role.CLOUD: LineStyle(colour=cloud, width=1.4, dash=(9.0, 3.0), marker="o"),
         Role.UNCERTAINTY: LineStyle(colour=cloud, width=1.2),
+        Role.STAGE: LineStyle(colour=quiet, width=0.7, dash=(1.0, 2.5)),
+        Role.CURSOR: LineStyle(colour=cloud, width=0.9),
+        Role.REFERENCE: LineStyle(colour=quiet, width=1.0),
+        Role.REST: LineStyle(colour=purple, width=1.5, dash=(4.0, 2.0)),
+        Role.TRACK: LineStyle(colour=cloud, width=1.7, marker="s"),
+        Role.MEASURED: LineStyle(colour=orange, width=1.1, marker="D"),
     }
 
 

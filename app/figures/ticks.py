@@ -65,6 +65,11 @@ def axis_title(axis: Axis) -> str:
     return f"{axis.label} [{f'{power} {raised(axis.unit)}'.strip()}]"
 
 
+def frame_title(axis: Axis) -> str:
+    """What stands beside the axis: its title, or nothing."""
+    return axis_title(axis) if axis.titled else ""
+
+
 def raised(unit: str) -> str:
     """A unit as it is printed: "cm⁻³" for "cm^-3"."""
     return re.sub(r"\^(-?\d+)", lambda power: power[1].translate(_RAISED), unit).replace("a0", "a₀")
