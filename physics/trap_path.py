@@ -32,6 +32,8 @@ class TrapPoint:
     volume : float. [m^3] W at the depth.
     curve : CurveShape. Shape of W below it.
     frequencies : (3,) or None. [Hz] None in a quadrupole, which has none.
+    minimum : (3,) or None. [m] Where the bottom is; None where that is not known.
+    axes : (3, 3) or None. Rows: unit vectors that the frequencies belong to; None: x, y and z.
     light_heating : float. [W] Energy per atom and second that scattered light leaves.
     reason : text. Why nothing is held.
     """
@@ -40,6 +42,8 @@ class TrapPoint:
     volume: float = math.nan
     curve: CurveShape = field(default_factory=CurveShape)
     frequencies: tuple[float, float, float] | None = None
+    minimum: tuple[float, float, float] | None = None
+    axes: tuple[tuple[float, ...], ...] | None = None
     light_heating: float = 0.0
     reason: str = ""
 
