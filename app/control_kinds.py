@@ -8,10 +8,17 @@ from types import MappingProxyType
 from app.kinds import (
     BEAM_POWER,
     BIAS_FIELD,
+    BIAS_FIELD_SPEED,
+    CURVATURE_SPEED,
     DEPTH,
+    DEPTH_SPEED,
     FIELD_CURVATURE,
     FIELD_GRADIENT,
+    GRADIENT_SPEED,
+    POWER_SPEED,
     RADIO_FREQUENCY,
+    RADIO_FREQUENCY_SPEED,
+    SCALE_SPEED,
     Kind,
 )
 from physics.ramps import Control, Knob
@@ -30,6 +37,21 @@ CONTROL_KINDS: Mapping[Knob, Kind] = MappingProxyType(
         Knob.LEVITATION: FIELD_GRADIENT,
     }
 )
+"""What the values of a control are."""
+
+SPEED_KINDS: Mapping[Knob, Kind] = MappingProxyType(
+    {
+        Knob.DEPTH: DEPTH_SPEED,
+        Knob.SCALE: SCALE_SPEED,
+        Knob.POWER: POWER_SPEED,
+        Knob.KNIFE: RADIO_FREQUENCY_SPEED,
+        Knob.BIAS: BIAS_FIELD_SPEED,
+        Knob.GRADIENT: GRADIENT_SPEED,
+        Knob.CURVATURE: CURVATURE_SPEED,
+        Knob.LEVITATION: GRADIENT_SPEED,
+    }
+)
+"""What the change per second of a control is."""
 
 
 def control_named(text: str) -> Control:

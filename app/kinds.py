@@ -29,9 +29,15 @@ _BY_SI_UNIT: Mapping[str, tuple[tuple[str, str | Decimal], ...]] = {
     "J": (("peV", _E.scaleb(-12)), ("neV", _E.scaleb(-9)), ("µeV", _E.scaleb(-6)), ("eV", _E), ("J", "1")),
     "J/T": (("muB", repr(bohr_magneton)), ("J/T", "1")),
     "K/s": (("nK/s", "1e-9"), ("µK/s", "1e-6"), ("K/s", "1")),
+    "J/s": (("J/s", "1"),),
+    "Hz/s": (("Hz/s", "1"), ("kHz/s", "1e3"), ("MHz/s", "1e6")),
+    "T/s": (("mG/s", "1e-7"), ("G/s", "1e-4"), ("T/s", "1")),
     "W": (("µW", "1e-6"), ("mW", "1e-3"), ("W", "1")),
+    "W/s": (("mW/s", "1e-3"), ("W/s", "1")),
     "T/m": (("G/cm", "1e-2"), ("T/m", "1")),
+    "T/m/s": (("G/cm/s", "1e-2"), ("T/m/s", "1")),
     "T/m^2": (("G/cm^2", "1"), ("T/m^2", "1")),
+    "T/m^2/s": (("G/cm^2/s", "1"), ("T/m^2/s", "1")),
     "1/s": (("1/s", "1"),),
     "1/Hz": (("1/Hz", "1"),),
     "m^2": (("m^2", "1"), ("cm^2", "1e-4")),
@@ -51,10 +57,11 @@ STAND_INS: Mapping[str, tuple[tuple[str, Decimal], ...]] = MappingProxyType(
     {
         "K": (("J", _WIDE.divide(Decimal(1), _K)), ("Hz", _WIDE.divide(_H, _K))),
         "J": (("K", _K), ("Hz", _H)),
+        "J/s": (("K/s", _K), ("Hz/s", _H)),
     }
 )
 """SI unit -> other SI units that stand for it, with factors: temperatures as energies over k or frequencies times
-h/k, energies as temperatures or frequencies."""
+h/k, energies as temperatures or frequencies, and so per second."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -120,6 +127,56 @@ FIELD_CURVATURE = Kind(
 )
 RADIO_FREQUENCY = Kind(
     name="radio frequency", si_unit="Hz", units=("MHz", "kHz", "Hz"), low=1.0, high=1e11, example="2.1 MHz"
+)
+DURATION = Kind(name="duration", si_unit="s", units=("s", "ms", "µs", "min"), low=1e-6, high=1e6, example="2 s")
+TIME = Kind(name="time", si_unit="s", units=("s", "ms", "µs", "min"), low=0.0, high=1e6, example="1 s")
+EXPONENT = Kind(name="exponent", si_unit="", units=("",), low=0.01, high=100.0, example="1.5")
+CLOUD_WIDTH = Kind(name="width of the cloud", si_unit="m", units=("µm", "mm"), low=1e-8, high=1.0, example="85 µm")
+DEPTH_SPEED = Kind(
+    name="change of the depth per time",
+    si_unit="J/s",
+    units=("µK/s", "nK/s", "kHz/s", "MHz/s", "J/s"),
+    low=boltzmann * 1e-15,
+    high=boltzmann * 1e6,
+    example="5 µK/s",
+)
+SCALE_SPEED = Kind(
+    name="change of the scale per time", si_unit="1/s", units=("1/s",), low=1e-9, high=1e6, example="0.2 1/s"
+)
+POWER_SPEED = Kind(
+    name="change of the power per time", si_unit="W/s", units=("W/s", "mW/s"), low=1e-12, high=1e9, example="0.1 W/s"
+)
+RADIO_FREQUENCY_SPEED = Kind(
+    name="change of the radio frequency per time",
+    si_unit="Hz/s",
+    units=("MHz/s", "kHz/s", "Hz/s"),
+    low=1e-3,
+    high=1e15,
+    example="0.5 MHz/s",
+)
+BIAS_FIELD_SPEED = Kind(
+    name="change of the bias field per time",
+    si_unit="T/s",
+    units=("G/s", "mG/s", "T/s"),
+    low=1e-15,
+    high=1e6,
+    example="1 G/s",
+)
+GRADIENT_SPEED = Kind(
+    name="change of the gradient per time",
+    si_unit="T/m/s",
+    units=("G/cm/s", "T/m/s"),
+    low=1e-12,
+    high=1e9,
+    example="10 G/cm/s",
+)
+CURVATURE_SPEED = Kind(
+    name="change of the curvature per time",
+    si_unit="T/m^2/s",
+    units=("G/cm^2/s", "T/m^2/s"),
+    low=1e-9,
+    high=1e12,
+    example="50 G/cm^2/s",
 )
 LIFETIME = Kind(name="lifetime", si_unit="s", units=("s", "ms", "min", "h"), low=1e-6, high=1e9, example="60 s")
 TWO_BODY_RATE = Kind(

@@ -12,6 +12,13 @@ from types import MappingProxyType
 from typing import Any
 
 from app.candidate_choices import Basis, CandidateChoice, CandidatesChoice, PassengerChoice
+from app.candidate_fields import (
+    CANDIDATE_FIELDS,
+    CANDIDATES_FIELDS,
+    PASSENGER_CLOUD_FIELDS,
+    PASSENGER_FIELDS,
+    PASSENGER_SPECIES_FIELDS,
+)
 from app.choices import (
     DEFAULT_PLAN,
     PLAN_FIELDS,
@@ -26,14 +33,32 @@ from app.plan_field import Entry, PlanError, PlanField
 from app.plan_file import FORMAT, build_plan, entries_of, parse_plan, read_plan
 from app.plan_saving import save_plan, write_plan
 from app.ramp_choices import ControlLimits, Handing, LimitsChoice, MeasuredChoice, MoveChoice, StageChoice
+from app.ramp_fields import (
+    CONTROL_LIMITS_FIELDS,
+    LIMITS_FIELDS,
+    MEASURED_FIELDS,
+    MOVE_FIELDS,
+    STAGE_FIELDS,
+    fields_of_control,
+)
 from app.trap_choices import BEAM_FIELDS, BEAMS, COILS, COILS_FIELDS, BeamChoice, CoilsChoice, Gravity, TrapChoice
 
 __all__ = [
     "BEAM_FIELDS",
+    "CANDIDATES_FIELDS",
+    "CANDIDATE_FIELDS",
     "COILS_FIELDS",
+    "CONTROL_LIMITS_FIELDS",
     "DEFAULT_PLAN",
     "FORMAT",
+    "LIMITS_FIELDS",
+    "MEASURED_FIELDS",
+    "MOVE_FIELDS",
+    "PASSENGER_CLOUD_FIELDS",
+    "PASSENGER_FIELDS",
+    "PASSENGER_SPECIES_FIELDS",
     "PLAN_FIELDS",
+    "STAGE_FIELDS",
     "TARGETS",
     "Basis",
     "BeamChoice",
@@ -57,6 +82,7 @@ __all__ = [
     "StageChoice",
     "TargetChoice",
     "TrapChoice",
+    "fields_of_control",
     "parse_plan",
     "plan_with",
     "read_plan",

@@ -6,13 +6,13 @@ from __future__ import annotations
 import contextlib
 import difflib
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping, Sequence
 from enum import Enum
 from typing import TYPE_CHECKING, Any
 
 from app.plan_field import Entry, PlanError, PlanField
 from app.trap_choices import Direction, Gravity, require_direction, require_name
-from app.units import Quantity, read_quantity
+from app.units import TIME, Quantity, read_quantity
 
 if TYPE_CHECKING:
     from app.kinds import Kind
@@ -42,6 +42,12 @@ def read_entry(field: PlanField, entry: object, so_far: Mapping[str, Any]) -> ob
         case Entry.QUANTITY:
             assert field.kind is not None
             return read_quantity(_quantity_text(entry, field.kind), field.kind)
+        case Entry.WIDTHS:
+            return _widths(entry, field)
+        case Entry.POINTS:
+            return _points(entry, field)
+        case Entry.KEYS:
+            return _keys(entry)
         case Entry.WHOLE:
             return _whole(entry)
         case Entry.SWITCH:
@@ -59,6 +65,8 @@ def read_entry(field: PlanField, entry: object, so_far: Mapping[str, Any]) -> ob
     match field.entry:
         case Entry.MODEL:
             return _model(entry)
+        case Entry.CHOICE:
+            return _choice(entry, field)
         case Entry.NAME:
             return _name(entry)
     from physics.species import load_species
@@ -66,6 +74,30 @@ def read_entry(field: PlanField, entry: object, so_far: Mapping[str, Any]) -> ob
     if field.entry is Entry.SPECIES:
         return load_species(entry).key
     return load_species(so_far["species.key"]).state(entry).name
+
+
+def read_section(
+    section: Mapping[str, Any], fields: Mapping[str, PlanField], place: Callable[[PlanField], str]
+) -> dict[str, Any]:
+    """What a section says, by key. PlanError in one sentence, which begins with the place of the field at fault."""
+    values: dict[str, Any] = {}
+    for name, field in fields.items():
+        if name in section:
+            try:
+                values[name] = read_entry(field, section[name], {"species.key": values.get("key")})
+            except ValueError as error:
+                raise PlanError(f"{place(field)}: {error}") from None
+        elif field.required:
+            raise PlanError(f"{place(field)} is missing: give the {field.label.lower()}, such as {_example(field)}")
+    return values
+
+
+def _example(field: PlanField) -> str:
+    if field.kind is not None:
+        return f'"{field.kind.example}"'
+    if field.options:
+        return f'"{field.options[0].value}"'
+    return {Entry.DIRECTION: "[1, 0, 0]", Entry.SPECIES: '"87Rb"'}.get(field.entry, '"after the first stage"')
 
 
 def _quantity_text(entry: object, kind: Kind) -> str:
@@ -95,6 +127,55 @@ def _quantities(entry: object, field: PlanField, count: int) -> tuple[Quantity, 
         got = f"{len(entry)} of them" if isinstance(entry, list) else shown(entry)
         raise PlanError(f"must be {_WORDS[count]}, such as {example}, got {got}")
     return tuple(read_quantity(_quantity_text(part, kind), kind) for part in entry)
+
+
+def _widths(entry: object, field: PlanField) -> tuple[Quantity, ...]:
+    """One to three quantities of one kind."""
+    kind = field.kind
+    assert kind is not None
+    if not isinstance(entry, list) or not 1 <= len(entry) <= 3:
+        example = ", ".join([f'"{kind.example.replace("µ", "u")}"'] * 2)
+        got = f"{len(entry)} of them" if isinstance(entry, list) else shown(entry)
+        raise PlanError(f"must be a list of one to three, such as [{example}], got {got}")
+    return tuple(read_quantity(_quantity_text(part, kind), kind) for part in entry)
+
+
+def _points(entry: object, field: PlanField) -> tuple[tuple[Quantity, Quantity], ...]:
+    """Pairs of a time and a value."""
+    kind = field.kind
+    assert kind is not None
+    plain = kind.example.replace("µ", "u")
+    example = f'[["0 s", "{plain}"], ["1 s", "{plain}"]]'
+    if not isinstance(entry, list):
+        raise PlanError(f"must be a list of times and values, such as {example}, got {shown(entry)}")
+    points = []
+    for place, pair in enumerate(entry, start=1):
+        if not isinstance(pair, list) or len(pair) != 2:
+            raise PlanError(f"must be pairs of a time and a value, such as {example}, point {place} is {shown(pair)}")
+        try:
+            time = read_quantity(_quantity_text(pair[0], TIME), TIME)
+            points.append((time, read_quantity(_quantity_text(pair[1], kind), kind)))
+        except ValueError as error:
+            raise PlanError(f"point {place}: {error}") from None
+    return tuple(points)
+
+
+def _keys(entry: object) -> tuple[str, ...]:
+    """Names of species, from a list in a file or from a text with commas."""
+    from physics.species import load_species
+
+    if isinstance(entry, str) and not isinstance(entry, Written):
+        entry = [part for part in _parts(entry) if part]
+    if not isinstance(entry, list):
+        raise PlanError(f'must be a list of species, such as ["87Rb", "41K"], got {shown(entry)}')
+    for part in entry:
+        if not isinstance(part, str) or isinstance(part, Written) or len(part) > LONGEST or not part.isprintable():
+            raise PlanError(f'must be a list of species, such as ["87Rb", "41K"], got {shown(part)} among them')
+    keys = tuple(load_species(part).key for part in entry)
+    twice = next((key for place, key in enumerate(keys) if key in keys[:place]), None)
+    if twice is not None:
+        raise PlanError(f"names {twice} twice")
+    return keys
 
 
 def _parts(text: str) -> list[str]:
@@ -166,14 +247,27 @@ def _whole(entry: object) -> int:
 def _model(entry: str) -> Model:
     from physics.cloud import AVAILABLE_MODELS
 
+    found: Model = _option(entry, AVAILABLE_MODELS, "a model")
+    return found
+
+
+def _choice(entry: str, field: PlanField) -> Enum:
+    article = "an" if field.name[0] in "aeiou" else "a"
+    found: Enum = _option(entry, field.options, f"{article} {field.name}")
+    return found
+
+
+def _option(entry: str, options: Sequence[Any], what: str) -> Any:
+    """The one of some options whose words these are; case, spaces and hyphens do not matter."""
+
     def plain(text: str) -> str:
         return "".join(c for c in text.casefold() if c.isalpha())
 
-    names = ", ".join(f'"{model.value}"' for model in AVAILABLE_MODELS)
-    found = next((model for model in AVAILABLE_MODELS if plain(model.value) == plain(entry)), None)
+    found = next((option for option in options if plain(option.value) == plain(entry)), None)
     if found is None:
-        near = nearest(entry, [model.value for model in AVAILABLE_MODELS])
-        raise PlanError(f'"{entry}" is not a model: {names} are; the nearest is "{near}"')
+        names = ", ".join(f'"{option.value}"' for option in options)
+        near = nearest(entry, [option.value for option in options])
+        raise PlanError(f'"{entry}" is not {what}: {names} are; the nearest is "{near}"')
     return found
 
 

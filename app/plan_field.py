@@ -37,9 +37,13 @@ class Entry(Enum):
     TWO = auto()
     DIRECTION = auto()
     PLACE = auto()
+    CHOICE = auto()
+    KEYS = auto()
+    WIDTHS = auto()
+    POINTS = auto()
 
 
-QUANTITIES = (Entry.QUANTITY, Entry.FREQUENCIES, Entry.TWO, Entry.PLACE)
+QUANTITIES = (Entry.QUANTITY, Entry.FREQUENCIES, Entry.TWO, Entry.PLACE, Entry.WIDTHS)
 """Entries made of one quantity or of several, all of one kind."""
 
 
@@ -51,7 +55,8 @@ class PlanField:
     label : what forms call it
     tip : what it means, for tool tips and help
     flag : command-line option; empty where there is none
-    kind : of quantities
+    kind : of quantities; None where it follows from another entry, such as the control that moves
+    options : of choices, what may be chosen
     excludes : other keys that setting this one clears
     """
 
@@ -61,6 +66,7 @@ class PlanField:
     entry: Entry
     flag: str = ""
     kind: Kind | None = None
+    options: tuple[Enum, ...] = ()
     required: bool = False
     excludes: tuple[str, ...] = ()
 

@@ -7,37 +7,77 @@ import tomllib
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import replace
 from pathlib import Path
+from types import MappingProxyType
 from typing import Any
 
+from app.candidate_choices import CandidatesChoice
+from app.candidate_fields import (
+    CANDIDATE,
+    CANDIDATE_FIELDS,
+    CANDIDATES,
+    CANDIDATES_FIELDS,
+    PASSENGER,
+    PASSENGER_CLOUD,
+    PASSENGER_CLOUD_FIELDS,
+    PASSENGER_FIELDS,
+    PASSENGER_SPECIES,
+    PASSENGER_SPECIES_FIELDS,
+)
+from app.candidate_file import read_candidates, read_passenger
 from app.choices import PLAN_FIELDS, CloudChoice, LossesChoice, Plan, SpeciesChoice, TargetChoice
 from app.plan_entries import Written, nearest, one_line, read_entry, shown
 from app.plan_field import PlanError
+from app.ramp_choices import LimitsChoice
+from app.ramp_fields import (
+    CONTROL_LIMITS,
+    CONTROL_LIMITS_FIELDS,
+    LIMITS,
+    LIMITS_FIELDS,
+    MEASURED,
+    MEASURED_FIELDS,
+    MOVE_FIELDS,
+    MOVES,
+    RAMP,
+    STAGE_FIELDS,
+    STAGE_TRAP,
+    STAGE_TRAP_FIELDS,
+    STAGES,
+)
+from app.ramp_file import read_limits, read_measured, read_ramp
 from app.trap_choices import BEAM_FIELDS, BEAMS, COILS, COILS_FIELDS, TrapChoice
 from app.trap_file import read_beams, read_coils
 
 FORMAT = 1
 
-_MOVE = ("control", "beam", "start", "end", "shape", "points", "tau", "exponent")
-_SPECIES_KEYS = tuple(f.name for f in PLAN_FIELDS.values() if f.section == "species")
-_CLOUD_KEYS = tuple(f.name for f in PLAN_FIELDS.values() if f.section == "cloud")
-
-KEPT: Mapping[str, tuple[str, ...]] = {
-    "ramp": ("stage",),
-    "ramp.stage": ("duration", *_MOVE, "move"),
-    "ramp.stage.move": _MOVE,
-    "limits": ("time", "control"),
-    "limits.control": ("control", "beam", "low", "high", "fastest"),
-    "measured": ("label", "stage", "time", "atoms", "temperature", "widths", "expansion_time"),
-    "candidates": ("basis", "keys"),
-    "candidate": ("key", "state", "atoms", "temperature", "field", "scattering_length"),
-    "passenger": ("species", "cloud"),
-    "passenger.species": _SPECIES_KEYS,
-    "passenger.cloud": _CLOUD_KEYS,
-}
-"""Sections of the format that this version keeps as they are and does not compute, with their keys."""
-
 _SECTIONS = ("species", "trap", "cloud", "losses", "target")
-_DEEPEST = max(section.count(".") for section in KEPT)
+_OUTERMOST = (RAMP, LIMITS, MEASURED, CANDIDATES, CANDIDATE, PASSENGER)
+
+_KEYS: Mapping[str, tuple[str, ...]] = MappingProxyType(
+    {
+        "": ("coldward", "title", *_SECTIONS, *_OUTERMOST),
+        **{section: tuple(f.name for f in PLAN_FIELDS.values() if f.section == section) for section in _SECTIONS},
+        "trap": (*(f.name for f in PLAN_FIELDS.values() if f.section == "trap"), "beam", "coils"),
+        BEAMS: tuple(BEAM_FIELDS),
+        COILS: tuple(COILS_FIELDS),
+        RAMP: ("stage",),
+        STAGES: (*STAGE_FIELDS, *MOVE_FIELDS, "move", "trap"),
+        MOVES: tuple(MOVE_FIELDS),
+        STAGE_TRAP: (*STAGE_TRAP_FIELDS, "beam", "coils"),
+        f"{STAGE_TRAP}.beam": tuple(BEAM_FIELDS),
+        f"{STAGE_TRAP}.coils": tuple(COILS_FIELDS),
+        LIMITS: (*LIMITS_FIELDS, "control"),
+        CONTROL_LIMITS: tuple(CONTROL_LIMITS_FIELDS),
+        MEASURED: tuple(MEASURED_FIELDS),
+        CANDIDATES: tuple(CANDIDATES_FIELDS),
+        CANDIDATE: tuple(CANDIDATE_FIELDS),
+        PASSENGER: (*PASSENGER_FIELDS, "species", "cloud"),
+        PASSENGER_SPECIES: tuple(PASSENGER_SPECIES_FIELDS),
+        PASSENGER_CLOUD: tuple(PASSENGER_CLOUD_FIELDS),
+    }
+)
+"""Section -> its keys."""
+
+_DEEPEST = max(section.count(".") for section in _KEYS)
 
 
 # --- reading ---------------------------------------------------------------------------------------------------------
@@ -78,15 +118,14 @@ def parse_plan(text: str, name: str) -> Plan:
     if "trap.frequencies" not in entries:
         entries |= {part: data["trap"][part.rpartition(".")[2]] for part in made}
         made = []
+    entries |= {section: data[section] for section in _OUTERMOST if section in data}
     plan = build_plan(entries, lambda path: f"{name}: {path}")
-    held = [section for section in KEPT if _holds(data, section)]
-    outermost = tuple(s for s in held if not any(s.startswith(f"{other}.") for other in held))
-    return replace(plan, unused=(*made, *outermost), source=text)
+    return replace(plan, unused=tuple(made), source=text)
 
 
 def build_plan(entries: Mapping[str, object], where: Callable[[str], str]) -> Plan:
-    """A plan from its entries by dotted path: as they stand in a file or on a command line, or as read before. Beams
-    and coils are one entry each.
+    """A plan from its entries by dotted path: as they stand in a file or on a command line, or as read before. Beams,
+    coils and each of ramp, limits, measured clouds, candidates and passenger are one entry.
 
     `where` gives the name of a path in errors: file and key, or flag.
     """
@@ -105,6 +144,17 @@ def build_plan(entries: Mapping[str, object], where: Callable[[str], str]) -> Pl
 
     beams = read_beams(entries[BEAMS], where) if BEAMS in entries else ()
     coils = read_coils(entries[COILS], where) if COILS in entries else None
+    others: dict[str, Any] = {}
+    if RAMP in entries:
+        others["ramp"] = read_ramp(entries[RAMP], where)
+    if LIMITS in entries:
+        others["limits"] = read_limits(entries[LIMITS], where)
+    if MEASURED in entries:
+        others["measured"] = read_measured(entries[MEASURED], where)
+    if CANDIDATES in entries or CANDIDATE in entries:
+        others["candidates"] = read_candidates(entries.get(CANDIDATES), entries.get(CANDIDATE), where)
+    if PASSENGER in entries:
+        others["passenger"] = read_passenger(entries[PASSENGER], where)
     last = "title"
     try:
         last = _last_of("species", values)
@@ -121,6 +171,7 @@ def build_plan(entries: Mapping[str, object], where: Callable[[str], str]) -> Pl
             cloud=CloudChoice(**section("cloud")),
             losses=LossesChoice(**section("losses")),
             target=target,
+            **others,
         )
     except PlanError as error:
         raise PlanError(f"{where(error.path or last)}: {error}") from None
@@ -147,6 +198,14 @@ def entries_of(plan: Plan) -> dict[str, object]:
         entries[BEAMS] = plan.trap.beams
     if plan.trap.coils is not None:
         entries[COILS] = plan.trap.coils
+    others = (
+        (RAMP, plan.ramp, ()),
+        (LIMITS, plan.limits, LimitsChoice()),
+        (MEASURED, plan.measured, ()),
+        (CANDIDATES, plan.candidates, CandidatesChoice()),
+        (PASSENGER, plan.passenger, None),
+    )
+    entries |= {section: value for section, value, usual in others if value != usual}
     return entries
 
 
@@ -170,29 +229,17 @@ def _check_format(data: Mapping[str, object], name: str) -> None:
 
 def _check_keys(data: Mapping[str, Any], name: str) -> None:
     """Every key of the file is one of the format's."""
-    known = _known_keys()
     for section, key in _keys(data, ""):
-        allowed = known.get(section)
+        allowed = _KEYS.get(section)
         if allowed is None or key in allowed:  # None: a table where a value belongs, which its own check refuses
             continue
-        everywhere = sorted({f"{s}.{k}".lstrip(".") for s, keys in known.items() for k in keys})
+        everywhere = sorted({f"{s}.{k}".lstrip(".") for s, keys in _KEYS.items() for k in keys})
         path = f"{section}.{key}".lstrip(".")
         place = f"in [{section}]" if section else "at the top"
         raise PlanError(
             f"{name}: {one_line(path)} is not a key of a plan: the nearest is {nearest(path, everywhere)}; "
             f"allowed {place} are {', '.join(allowed)}"
         )
-
-
-def _known_keys() -> dict[str, tuple[str, ...]]:
-    known: dict[str, tuple[str, ...]] = dict(KEPT)
-    for section in _SECTIONS:
-        known[section] = tuple(f.name for f in PLAN_FIELDS.values() if f.section == section)
-    known["trap"] += ("beam", "coils")
-    known |= {BEAMS: tuple(BEAM_FIELDS), COILS: tuple(COILS_FIELDS)}
-    outermost = [section for section in KEPT if "." not in section]
-    known[""] = ("coldward", "title", *_SECTIONS, *outermost)
-    return known
 
 
 def _keys(table: Mapping[str, Any], section: str) -> Iterator[tuple[str, str]]:

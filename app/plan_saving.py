@@ -10,6 +10,8 @@ from app.choices import PLAN_FIELDS, Plan
 from app.files import write_atomically
 from app.plan_field import PlanError, PlanField
 from app.plan_file import FORMAT, entries_of, parse_plan
+from app.plan_sections import ROOTS, changed_roots, new_sections, sections_of, texts, within_roots
+from app.section_saving import with_sections
 from app.toml_blocks import blocks_of, with_lines
 from app.toml_entries import drop, missing_lines, put, section_text, written
 from app.trap_choices import TrapChoice
@@ -27,7 +29,8 @@ def write_plan(plan: Plan, previous_text: str | None = None) -> str:
     previous_text : the file as it was; by default the one that the plan came from. Its comments, its layout and the
         sections that this version does not use are kept, and so is every entry whose meaning did not change. Beams and
         coils move with the comments above them; where they stand in no sections of their own (in one line, say), and
-        others are wanted, all of [trap] is written anew.
+        others are wanted, all of [trap] is written anew. So it is with the sections of ramp, limits, measured clouds,
+        candidates and passenger.
 
     Raises
     ------
@@ -41,12 +44,36 @@ def write_plan(plan: Plan, previous_text: str | None = None) -> str:
     before = parse_plan(previous, "the file as it was")
     if _says_the_same(before, plan):
         return previous
-    text = _with_changes(previous, before, plan)
-    if text is None or not _reads_as(text, plan):
-        text = _with_new_trap(previous, before, plan)
-    if _reads_as(text, plan):
-        return text
+    for sections in (_with_sections, _with_new_sections):
+        for put_all in (_with_changes, _with_new_trap):
+            text = sections(previous, before, plan)
+            text = None if text is None else put_all(text, before, plan)
+            if text is not None and _reads_as(text, plan):
+                return text
     raise PlanError("the plan cannot be put into a file of this layout: save it under another name")
+
+
+def _with_sections(previous: str, before: Plan, plan: Plan) -> str | None:
+    """The file with the ramp, the other species and what goes with them as the plan has it; None where its layout does
+    not allow it."""
+    data = tomllib.loads(previous)
+    old, new = sections_of(before, data), new_sections(plan, before, data)
+    roots = changed_roots(old, new)
+    return with_sections(previous, within_roots(old, roots), within_roots(new, roots))
+
+
+def _with_new_sections(previous: str, before: Plan, plan: Plan) -> str | None:
+    """The file with those of these parts that changed written anew, at its end."""
+    import tomlkit
+
+    data = tomllib.loads(previous)
+    new = new_sections(plan)
+    roots = changed_roots(sections_of(before, data), new_sections(plan, before, data))
+    document = tomlkit.parse(previous)
+    for root in roots:
+        if root in document:
+            del document[root]
+    return "\n\n".join([tomlkit.dumps(document).rstrip(), *texts(new, roots)])
 
 
 def _says_the_same(one: Plan, other: Plan) -> bool:
@@ -68,7 +95,9 @@ def _new_text(plan: Plan) -> str:
     document = tomlkit.parse(f"coldward = {FORMAT}\n")
     _put_fields(document, {}, entries_of(plan), PLAN_FIELDS)
     text = tomlkit.dumps(document)
-    return text if plan.trap.harmonic else rearranged(text, None, plan.trap) or text
+    if not plan.trap.harmonic:
+        text = rearranged(text, None, plan.trap) or text
+    return "\n".join([text, *texts(new_sections(plan), tuple(ROOTS))])
 
 
 def _with_changes(previous: str, before: Plan, plan: Plan) -> str | None:

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from enum import Enum
+from itertools import pairwise
 
 from app.plan_field import PlanError
 from app.trap_choices import TrapChoice
@@ -47,6 +49,11 @@ class MoveChoice:
         if self.tau is not None and (not power_law or self.end is not None):
             what = "an end or a tau, not both" if power_law else f"no tau; it goes with {Shape.POWER_LAW.value}"
             raise PlanError(f"the shape {self.shape.value} takes {what}", path="ramp.stage.tau")
+        times = [time.value for time, _ in self.points]
+        if table and (len(times) < 2 or times[0] != 0.0 or any(b <= a for a, b in pairwise(times))):
+            raise PlanError(
+                "the points of a table must be two or more, at times that increase from 0 s", path="ramp.stage.points"
+            )
         if not table and self.end is None and self.tau is None:
             raise PlanError(f"{self.control.label} moves without an end", path="ramp.stage.end")
 
@@ -81,8 +88,19 @@ class StageChoice:
         for control in controls:
             if controls.count(control) > 1:
                 raise PlanError(f"a stage moves {control.label} twice", path="ramp.stage.move.control")
+        for move in self.moves:
+            last = move.points[-1][0] if move.points else self.duration
+            if not math.isclose(last.value, self.duration.value, rel_tol=1e-9):
+                raise PlanError(
+                    f"the table of {move.control.label} must end at the duration of its stage, {self.duration.text}, "
+                    f"got {last.text}",
+                    path="ramp.stage.move.points",
+                )
         if (self.handing is None) != (self.trap is None):
-            raise PlanError("a transfer needs the trap that the cloud goes into, and how", path="ramp.stage.transfer")
+            raise PlanError(
+                'a transfer needs the trap that the cloud goes into, ramp.stage.trap, and to be "slow" or "sudden"',
+                path="ramp.stage.transfer",
+            )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -120,7 +138,7 @@ class LimitsChoice:
 @dataclass(frozen=True, kw_only=True)
 class MeasuredChoice:
     """A cloud that was measured: after a stage (counted from 1) or at a time [s] of the ramp, else in the trap of the
-    plan; by its temperature, or by rms widths [m] along x, y, z after an expansion time [s]."""
+    plan; by its temperature, or by one to three rms widths [m], along x, y and z, after an expansion time [s]."""
 
     label: str
     atoms: Quantity
@@ -141,5 +159,7 @@ class MeasuredChoice:
             raise PlanError(f"stages are counted from 1, got {self.stage}", path="measured.stage")
         if (self.temperature is None) == (not self.widths):
             raise PlanError("give a temperature, or else widths and an expansion time", path="measured.temperature")
+        if len(self.widths) > 3:
+            raise PlanError(f"widths are one to three, got {len(self.widths)}", path="measured.widths")
         if bool(self.widths) != (self.expansion_time is not None):
             raise PlanError("widths and the expansion time go together", path="measured.expansion_time")

@@ -11,7 +11,14 @@ from app.plan_field import PlanField
 from app.units import Quantity
 
 _BARE_NUMBER = re.compile(r"-?(0|[1-9][0-9]*)(\.[0-9]+)?([eE][+-]?[0-9]+)?")
-_MAY_BE_BARE = ("target", "trap.beam")  # sections whose pure numbers stand without quotes
+_MAY_BE_BARE = (
+    "target",
+    "trap.beam",
+    "ramp.stage",
+    "ramp.stage.move",
+    "ramp.stage.trap.beam",
+    "limits.control",
+)  # sections whose pure numbers stand without quotes
 
 
 def written(entry: object) -> object:

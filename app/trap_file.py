@@ -6,7 +6,7 @@ from collections.abc import Callable, Mapping
 from types import MappingProxyType
 from typing import Any
 
-from app.plan_entries import read_entry, shown
+from app.plan_entries import read_section, shown
 from app.plan_field import PlanError, PlanField
 from app.trap_choices import (
     ALONG_Z,
@@ -53,7 +53,7 @@ def _beam(section: Mapping[str, Any], name: str, where: Where) -> BeamChoice:
     def place(field: PlanField) -> str:
         return f"{where(field.path)}{of}"
 
-    values = _values(section, BEAM_FIELDS, place)
+    values = read_section(section, BEAM_FIELDS, place)
     values["name"] = name
     one, two = values.pop("waist", None), values.pop("waists", None)
     if (one is None) == (two is None):
@@ -69,28 +69,11 @@ def read_coils(section: object, where: Where) -> CoilsChoice:
         return section
     if not isinstance(section, Mapping):
         raise PlanError(f"{where(COILS)}: coils are one section [{COILS}], got {shown(section)}")
-    values = _values(section, COILS_FIELDS, lambda field: where(field.path))
+    values = read_section(section, COILS_FIELDS, lambda field: where(field.path))
     try:
         return CoilsChoice(**values)
     except PlanError as error:
         raise PlanError(f"{where(error.path)}: {error}") from None
-
-
-def _values(
-    section: Mapping[str, Any], fields: Mapping[str, PlanField], place: Callable[[PlanField], str]
-) -> dict[str, Any]:
-    """What a section says, by attribute."""
-    values: dict[str, Any] = {}
-    for name, field in fields.items():
-        if name in section:
-            try:
-                values[name] = read_entry(field, section[name], {})
-            except ValueError as error:
-                raise PlanError(f"{place(field)}: {error}") from None
-        elif field.required:
-            example = f'"{field.kind.example}"' if field.kind else "[1, 0, 0]"
-            raise PlanError(f"{place(field)} is missing: give the {field.label.lower()}, such as {example}")
-    return values
 
 
 # --- the other way: what beams and coils say in the file --------------------------------------------------------------

@@ -97,15 +97,7 @@ def test_a_file_of_format_1_is_read_with_all_its_sections() -> None:
     )
     assert plan.losses.three_body is not None
     assert plan.losses.three_body.value == pytest.approx(4e-41, rel=1e-14)
-    assert plan.unused == (
-        "trap.beam",
-        "trap.coils",
-        "ramp",
-        "limits",
-        "measured",
-        "candidates",
-        "passenger",
-    )
+    assert plan.unused == ("trap.beam", "trap.coils")
 
 
 def test_a_plan_is_hashable_and_equal_by_content() -> None:

@@ -1,0 +1,64 @@
+"""The keys of candidates and of a passenger, each listed once: loader, saving and forms read these tables."""
+
+from __future__ import annotations
+
+from app.candidate_choices import Basis, Start
+from app.choices import PLAN_FIELDS
+from app.kinds import SCATTERING_LENGTH
+from app.plan_field import Entry, PlanField
+from app.ramp_fields import by_name, within
+
+CANDIDATES, CANDIDATE = "candidates", "candidate"
+PASSENGER, PASSENGER_SPECIES, PASSENGER_CLOUD = "passenger", "passenger.species", "passenger.cloud"
+"""Sections of the file that hold them."""
+
+CANDIDATES_FIELDS = by_name(
+    (
+        PlanField(
+            path="candidates.basis",
+            label="Compared at",
+            entry=Entry.CHOICE,
+            options=tuple(Basis),
+            tip="What is the same for all: the trap frequencies, the light, or the start.",
+        ),
+        PlanField(
+            path="candidates.start",
+            label="Start",
+            entry=Entry.CHOICE,
+            options=tuple(Start),
+            tip="What is alike where all start alike: atoms and temperature, or the phase-space density.",
+        ),
+        PlanField(
+            path="candidates.keys",
+            label="Species",
+            entry=Entry.KEYS,
+            tip="Species that are compared, each in all of its states; none named: all that there are.",
+        ),
+    )
+)
+
+_OWN = (
+    "species.key",
+    "species.state",
+    "cloud.atoms",
+    "cloud.temperature",
+    "species.field",
+    "species.scattering_length",
+)
+
+CANDIDATE_FIELDS = within(CANDIDATE, (PLAN_FIELDS[path] for path in _OWN))
+
+PASSENGER_FIELDS = by_name(
+    (
+        PlanField(
+            path="passenger.scattering_length",
+            label="Scattering length between the species",
+            entry=Entry.QUANTITY,
+            kind=SCATTERING_LENGTH,
+            tip="s-wave scattering length of an atom of one with an atom of the other; overrides the data.",
+        ),
+    )
+)
+
+PASSENGER_SPECIES_FIELDS = within(PASSENGER_SPECIES, (f for f in PLAN_FIELDS.values() if f.section == "species"))
+PASSENGER_CLOUD_FIELDS = within(PASSENGER_CLOUD, (f for f in PLAN_FIELDS.values() if f.section == "cloud"))
