@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from app.candidate_choices import Basis, Start
 from app.choices import PLAN_FIELDS
 from app.kinds import SCATTERING_LENGTH
@@ -46,7 +48,7 @@ _OWN = (
     "species.scattering_length",
 )
 
-CANDIDATE_FIELDS = within(CANDIDATE, (PLAN_FIELDS[path] for path in _OWN))
+CANDIDATE_FIELDS = within(CANDIDATE, (replace(PLAN_FIELDS[path], required=path == "species.key") for path in _OWN))
 
 PASSENGER_FIELDS = by_name(
     (

@@ -254,19 +254,14 @@ def caveat_line(caveat: Caveat, answer: CloudAnswer) -> CaveatLine:
 
 
 def caveat_lines(answer: CloudAnswer) -> tuple[CaveatLine, ...]:
-    """All caveats of an answer, gravest first, and the sections of the plan that are kept but not computed."""
+    """All caveats of an answer, gravest first, and beams and coils of its plan that stand beside trap frequencies."""
+    sentence = _("The section [{name}] of the plan is kept, and not used: the trap frequencies are given.")
     unused = tuple(
-        CaveatLine(_SIGNS[Severity.NOTE], _WORDS[Severity.NOTE], _unused_sentence(name).format(name=name))
+        CaveatLine(_SIGNS[Severity.NOTE], _WORDS[Severity.NOTE], sentence.format(name=name))
         for name in answer.plan.unused
-        if answer.plan.trap.harmonic or not name.startswith("trap.")
+        if answer.plan.trap.harmonic
     )
     return (*(caveat_line(caveat, answer) for caveat in answer.caveats), *unused)
-
-
-def _unused_sentence(name: str) -> str:
-    if name.startswith("trap."):
-        return _("The section [{name}] of the plan is kept, and not used: the trap frequencies are given.")
-    return _("The section [{name}] of the plan is kept, and not computed by this version.")
 
 
 def _key(caveat: Caveat, answer: CloudAnswer) -> str:

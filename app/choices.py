@@ -114,7 +114,7 @@ class Plan:
     measured : clouds measured on the way
     candidates : other species to be compared
     passenger : a second species in the trap
-    unused : sections of its file that this version keeps but does not compute
+    unused : beams and coils of its file that do not count beside trap frequencies
     source : text of the file it came from, so that saving keeps comments, layout and unused sections; it does not
         count when plans are compared
     """

@@ -37,7 +37,15 @@ def by_name(fields: Iterable[PlanField]) -> Mapping[str, PlanField]:
 
 def within(section: str, fields: Iterable[PlanField]) -> Mapping[str, PlanField]:
     """The same keys in another section of the file, by key."""
-    return by_name(replace(field, path=f"{section}.{field.name}", flag="") for field in fields)
+    found = tuple(fields)
+    names = {field.name for field in found}
+
+    def moved(field: PlanField) -> PlanField:
+        others = [path.rpartition(".")[2] for path in field.excludes]
+        excludes = tuple(f"{section}.{name}" for name in others if name in names)
+        return replace(field, path=f"{section}.{field.name}", flag="", excludes=excludes)
+
+    return by_name(moved(field) for field in found)
 
 
 STAGE_FIELDS = by_name(

@@ -59,7 +59,7 @@ def _stage(section: Mapping[str, Any], of: str, where: Where) -> StageChoice:
     direct = [key for key in DIRECT_MOVE_FIELDS if key in section]
     moves = [_move(section, DIRECT_MOVE_FIELDS, of, where)] if direct else []
     for number, move in enumerate(listed, start=1):
-        name = of if len(listed) == 1 else f" {number}{of}"
+        name = of if len(listed) == 1 else f" of move {number}{of}"
         moves.append(_move(move, MOVE_FIELDS, name, where))
     trap = _trap(section["trap"], of, where) if "trap" in section else None
     try:

@@ -190,7 +190,6 @@ def test_what_stands_beside_the_frequencies_is_told_of(capsys: pytest.CaptureFix
     assert main(["state", str(MADE.with_name("plan_version_1.toml"))]) == 0
     text = capsys.readouterr().out
     assert "The section [trap.beam] of the plan is kept, and not used: the trap frequencies are given." in text
-    assert "The section [ramp] of the plan is kept, and not computed by this version." in text
 
 
 # --- map and profile ---
