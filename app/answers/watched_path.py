@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import itertools
+import math
+import time
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, replace
 
@@ -12,6 +14,9 @@ from physics.trap_path import TrapPath, TrapPoint, points_between
 
 Tick = Callable[[float], bool]
 """Told the share of the work that is done, from 0 to 1; its answer says whether to go on."""
+
+_PAUSE = 0.03
+"""[s] Between two tellings: often enough to stop at once, and not so often that telling takes the time."""
 
 
 @dataclass(kw_only=True)
@@ -28,6 +33,7 @@ class Progress:
     part: float = 0.9
     share: float = field(default=0.0, init=False)
     _asked: int = field(default=0, init=False)
+    _told: float = field(default=-math.inf, init=False)
 
     def survey(self) -> None:
         """One more; Cancelled where nobody waits any more."""
@@ -44,6 +50,10 @@ class Progress:
 
     def _said(self, share: float) -> bool:
         self.share = max(self.share, share)
+        now = time.monotonic()
+        if now < self._told + _PAUSE:
+            return True
+        self._told = now
         return self.tick(self.share)
 
 

@@ -15,6 +15,7 @@ from PySide6.QtCore import QObject, Qt, QTimer, Signal
 
 from app.engine import CloudAnswer, cloud_answer, prepare_trap, surveyed
 from app.newest import Job, Newest, Steps, brief_turns
+from app.process import own_process
 
 if TYPE_CHECKING:
     from app.plan import Plan
@@ -46,6 +47,7 @@ class Answers(QObject):
     part_failed = Signal(str)
     _arrived = Signal(int, bool, object)
     _surveyed = Signal(object, object)
+    _solved = Signal(int, object)
 
     # Attributes: cloud, the newest answer; current, whether it answers the newest plan; failure, why the newest plan
     # that was tried has no answer, or empty; waiting, whether the newest plan's trap is being surveyed, and that was
@@ -55,6 +57,7 @@ class Answers(QObject):
         super().__init__(parent)
         self.newest = Newest()
         self.surveyor = Newest()
+        self.solver = Newest()
         self.cloud: CloudAnswer | None = None
         self.cloud_count = 0
         self.current = False
@@ -62,6 +65,7 @@ class Answers(QObject):
         self.waiting = False
         self._plan: Plan | None = None
         self._under_survey = False
+        self._solving, self._solvings = False, 0
         self._asked = self._taken = 0  # numbers of the newest part asked for, and of the newest that arrived
         self._view: PartView | None = None  # that waits for a job in steps
         self._job: Steps | None = None
@@ -76,6 +80,7 @@ class Answers(QObject):
         # The workers' results hop to the GUI thread here.
         self._arrived.connect(self._take, Qt.ConnectionType.QueuedConnection)
         self._surveyed.connect(self._take_survey, Qt.ConnectionType.QueuedConnection)
+        self._solved.connect(self._take_solved, Qt.ConnectionType.QueuedConnection)
 
     def set_plan(self, plan: Plan) -> None:
         """Answer this plan at the next turn of the event loop."""
@@ -152,6 +157,38 @@ class Answers(QObject):
         self.waiting = True
         self.surveying.emit()
 
+    # ---------------------------------------------------------------- questions on the side
+
+    def solve(self, job: Callable[[], Any], take: Callable[[Any], None], refuse: Callable[[str], None]) -> None:
+        """Run a job that is no part of the plan's answer on a worker of its own; its result, or the sentence of its
+        ValueError, is given in the GUI thread. A newer job, or `drop_solving`, overtakes it."""
+        self._solving, self._solvings = True, self._solvings + 1
+        number = self._solvings
+
+        def fail(error: Exception) -> None:
+            self._solved.emit(number, partial(self._refuse, error, refuse))
+
+        def run() -> Any:
+            with brief_turns():
+                return job()
+
+        self.solver.ask(run, lambda result: self._solved.emit(number, partial(take, result)), fail)
+
+    def drop_solving(self) -> None:
+        """Nobody waits for that job any more."""
+        self._solving = False
+        self.solver.stop()
+
+    def _take_solved(self, number: int, act: Callable[[], None]) -> None:
+        if self._solving and number == self._solvings:
+            self._solving = False
+            act()
+
+    def _refuse(self, error: Exception, refuse: Callable[[str], None]) -> None:
+        if not isinstance(error, ValueError | OSError | ArithmeticError):
+            raise error
+        refuse(str(error))
+
     # ---------------------------------------------------------------- parts
 
     def ask_part(self, job: Job, view: PartView) -> None:
@@ -219,13 +256,17 @@ class Answers(QObject):
     @property
     def settled(self) -> bool:
         """Whether nothing is under way: no plan to answer, no job on a worker, no result to be shown."""
-        return not self._turn.isActive() and not self._under_survey and self._taken == self._asked
+        busy = self._turn.isActive() or self._under_survey or self._solving
+        return not busy and self._taken == self._asked
 
     def close(self) -> None:
         self._turn.stop()
         self._patience.stop()
+        self.newest.stop()
+        own_process.close()
         self.newest.close()
         self.surveyor.close()
+        self.solver.close()
 
 
 def _ignore(_what: object) -> None:

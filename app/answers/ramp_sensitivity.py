@@ -1,0 +1,71 @@
+"""Which input of a plan's ramp counts most: what a tenth more or less of each does to the atoms at the end."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from app.answers.part import part
+from app.answers.ramp import RAMP_FIELDS
+from app.answers.ramp_inputs import gas_of, losses_of, target_of
+from app.answers.ramp_start import start_of
+from app.plan_field import PlanError
+
+if TYPE_CHECKING:
+    from app.answers.watched_path import Tick
+    from app.plan import Plan
+    from physics.ramp_sensitivity import RampSensitivity
+
+CHANGE = 0.1
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class SensitivityAnswer:
+    """change : relative, of every input. found : the strongest first."""
+
+    change: float
+    found: tuple[RampSensitivity, ...]
+
+
+def sensitivity_answer(plan: Plan, since: str | None = None, tick: Tick | None = None) -> SensitivityAnswer:
+    """What a tenth of each input does to the atoms at the end of the ramp. Arguments as of `ramp_answer`."""
+    kept = _sensitivity.kept(plan, since)
+    if kept is None and tick is not None:
+        kept = _worked_out(plan, since, tick)
+        _sensitivity.take(kept, plan, since)
+    return kept if kept is not None else _sensitivity(plan, since)
+
+
+def kept_sensitivity(plan: Plan, since: str | None = None) -> SensitivityAnswer | None:
+    """The same if it is there already."""
+    return _sensitivity.kept(plan, since)
+
+
+def keep_sensitivity(answer: SensitivityAnswer, plan: Plan, since: str | None = None) -> None:
+    """Keep the answer of a process of its own."""
+    _sensitivity.take(answer, plan, since)
+
+
+@part(*RAMP_FIELDS)
+def _sensitivity(plan: Plan, since: str | None) -> SensitivityAnswer:
+    return _worked_out(plan, since, None)
+
+
+def _worked_out(plan: Plan, since: str | None, tick: Tick | None) -> SensitivityAnswer:
+    from physics.ramp_sensitivity import ramp_sensitivities
+
+    start = start_of(plan, since)
+    if start.ramp is None:
+        raise PlanError("nothing is left of the ramp after its last stage")
+    ramp, path = start.ramp, start.path
+    if tick is not None:
+        from app.answers.watched_path import Progress, WatchedPath, watched_ramp
+
+        # The tick of the runs says how far it is; surveys between them only whether to go on.
+        progress = Progress(tick=tick, part=0.0)
+        ramp, path, tick = watched_ramp(ramp, progress), WatchedPath(path=path, progress=progress), progress.rest
+    found = ramp_sensitivities(
+        gas_of(plan), start.atoms, start.temperature, ramp, path,
+        losses=losses_of(plan), target=target_of(plan), change=CHANGE, tick=tick,
+    )  # fmt: skip
+    return SensitivityAnswer(change=CHANGE, found=found)
