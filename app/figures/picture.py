@@ -47,7 +47,7 @@ class Role(Enum):
 class Axis:
     """One axis. Data are in `unit`; with `prefixed` the unit is a bare SI unit and tick labels carry the prefix
     ("100 nK"), which reads best over many decades; with `power` ticks count in that power of ten, which the title
-    names, and data stay in `unit`; one that is not `titled` has no title beside it, since the picture's says what it shows."""
+    names, and data stay in `unit`; one that is not `titled` has no title beside it, where the picture's says enough."""
 
     label: str
     unit: str
@@ -107,12 +107,14 @@ class Mark:
 
 @dataclass(frozen=True, kw_only=True)
 class Label:
-    """A short text at a place in data coordinates, such as the value of a contour line."""
+    """A short text at a place in data coordinates, such as the value of a contour line: its middle is there; with a
+    `side` of 1 it begins just right of the place, of -1 it ends just left of it."""
 
     text: str
     role: Role
     x: float
     y: float
+    side: int = 0
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -42,6 +42,8 @@ class Page(QWidget):
     folder_used = Signal(object)
 
     title = ""
+    needs_cloud = True
+    """Whether there is something to show only for a plan whose cloud has an answer."""
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(parent)

@@ -16,6 +16,7 @@ from app.pages.map import MapPage
 from app.pages.models import ModelsPage
 from app.pages.profile import ProfilePage
 from app.pages.slices import SlicesPage
+from app.pages.trap import TrapPage
 from app.widgets.caveats import Caveats
 from app.widgets.detail import Detail
 from app.widgets.page import Page
@@ -40,11 +41,13 @@ class Desk(QWidget):
         self.verdict = Verdict()
         self.bench = Bench()
         self.map, self.slices, self.profile = MapPage(theme), SlicesPage(theme), ProfilePage(theme)
+        self.trap = TrapPage(theme)
         self.field, self.collisions, self.models = FieldPage(theme), CollisionsPage(theme), ModelsPage(theme)
         self.pages: tuple[Page, ...] = (
             self.map,
             self.slices,
             self.profile,
+            self.trap,
             self.field,
             self.collisions,
             self.models,

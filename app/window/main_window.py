@@ -211,6 +211,7 @@ class MainWindow(QMainWindow):
     def _cloud_failed(self, _sentence: str) -> None:
         self._show_trap(self.document.plan)
         self._judge()
+        self._ask_part()
 
     def _show_trap(self, plan: Plan) -> None:
         """What beams and coils come to, if that is known: the cloud's answer has asked for it."""
@@ -234,8 +235,10 @@ class MainWindow(QMainWindow):
         self.desk.verdict.mark_stale(reason)
         self.desk.readouts.mark_stale()
         self.why.mark_stale()
+        without_cloud = bool(self.answers.failure) and not self.desk.bench.problems
         for page in self.desk.pages:
-            page.mark_stale("last good answer")
+            if page.needs_cloud or not without_cloud:  # the others show the present plan
+                page.mark_stale("last good answer")
 
     def _page_changed(self) -> None:
         page = self.desk.page_in_front
@@ -243,12 +246,17 @@ class MainWindow(QMainWindow):
             self.actions_by_id[f"view.{page.title.lower()}"].setChecked(True)
         if self.answers.cloud is not None:
             self._show_cloud(self.answers.cloud)
+        else:
+            self._ask_part()
 
     def _ask_part(self) -> None:
         page = self.desk.page_in_front
-        if page is None or self.answers.cloud is None:
+        plan = None if self.answers.cloud is None else self.answers.cloud.plan
+        if page is not None and not page.needs_cloud and self.answers.failure:
+            plan = self.document.plan
+        if page is None or plan is None:
             return
-        job = page.part(self.answers.cloud.plan)
+        job = page.part(plan)
         if job is not None:
             self.answers.ask_part(job, page)
 

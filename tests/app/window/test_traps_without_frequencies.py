@@ -66,7 +66,8 @@ def test_a_drag_on_an_older_map_moves_the_cloud_and_nothing_else(
         window.desk.tabs.setCurrentWidget(page)
         settle(window)
         assert window.desk.verdict.stale
-        assert all(plot.canvas.stale_text is not None for plot in page.plots if plot.ready)
+        if page.needs_cloud:  # the others show the trap as it is
+            assert all(plot.canvas.stale_text is not None for plot in page.plots if plot.ready)
 
 
 def test_undo_and_frequencies_bring_the_answer_back(window: MainWindow, settle: Settle, plan_file: Path) -> None:
