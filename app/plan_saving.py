@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import itertools
 import os
 import tomllib
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from app.choices import PLAN_FIELDS, Plan
@@ -18,7 +20,7 @@ from app.trap_choices import TrapChoice
 from app.trap_saving import beam_text, coils_text, put_beams_and_coils, rearranged, with_new_keys
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable, Mapping
+    from collections.abc import Callable, Iterable, Iterator, Mapping
 
     from tomlkit import TOMLDocument
 
@@ -44,13 +46,27 @@ def write_plan(plan: Plan, previous_text: str | None = None) -> str:
     before = parse_plan(previous, "the file as it was")
     if _says_the_same(before, plan):
         return previous
-    for sections in (_with_sections, _with_new_sections):
-        for put_all in (_with_changes, _with_new_trap):
-            text = sections(previous, before, plan)
-            text = None if text is None else put_all(text, before, plan)
-            if text is not None and _reads_as(text, plan):
-                return text
+    for text in _texts(previous, before, plan):
+        if text is not None and _reads_as(text, plan):
+            return text
     raise PlanError("the plan cannot be put into a file of this layout: save it under another name")
+
+
+def _texts(previous: str, before: Plan, plan: Plan) -> Iterator[str | None]:
+    """The file with what differs, in more and more of it written anew; None where its layout does not allow it."""
+    from tomlkit.exceptions import TOMLKitError
+
+    ways: tuple[Callable[[str, Plan, Plan], str | None], ...] = (
+        _with_sections,
+        _with_new_sections,
+        partial(_with_new_sections, all_of_them=True),
+    )
+    for with_parts, put_all in itertools.product(ways, (_with_changes, _with_new_trap)):
+        try:
+            text = with_parts(previous, before, plan)
+            yield None if text is None else put_all(text, before, plan)
+        except (tomllib.TOMLDecodeError, TOMLKitError):  # the sections that came are at odds with those there
+            yield None
 
 
 def _with_sections(previous: str, before: Plan, plan: Plan) -> str | None:
@@ -62,18 +78,19 @@ def _with_sections(previous: str, before: Plan, plan: Plan) -> str | None:
     return with_sections(previous, within_roots(old, roots), within_roots(new, roots))
 
 
-def _with_new_sections(previous: str, before: Plan, plan: Plan) -> str | None:
-    """The file with those of these parts that changed written anew, at its end."""
+def _with_new_sections(previous: str, before: Plan, plan: Plan, *, all_of_them: bool = False) -> str:
+    """The file with those of these parts that changed, or with all of them, written anew at its end."""
     import tomlkit
 
     data = tomllib.loads(previous)
-    new = new_sections(plan)
-    roots = changed_roots(sections_of(before, data), new_sections(plan, before, data))
-    document = tomlkit.parse(previous)
+    changed = changed_roots(sections_of(before, data), new_sections(plan, before, data))
+    roots = tuple(ROOTS) if all_of_them else changed
+    text = "".join(block.text for block in blocks_of(previous) if block.path.split(".")[0] not in roots)
+    document = tomlkit.parse(text)
     for root in roots:
-        if root in document:
+        if root in document:  # in one line, say
             del document[root]
-    return "\n\n".join([tomlkit.dumps(document).rstrip(), *texts(new, roots)])
+    return "\n\n".join([tomlkit.dumps(document).rstrip(), *texts(new_sections(plan), roots)])
 
 
 def _says_the_same(one: Plan, other: Plan) -> bool:
@@ -103,18 +120,14 @@ def _new_text(plan: Plan) -> str:
 def _with_changes(previous: str, before: Plan, plan: Plan) -> str | None:
     """The file with what differs; None where its layout does not allow it."""
     import tomlkit
-    from tomlkit.exceptions import TOMLKitError
 
     text: str | None = previous
     made = not (plan.trap.harmonic and before.trap.harmonic)
-    try:
-        if made:
-            text = rearranged(previous, before.trap, plan.trap)
-        if text is None:
-            return None
-        document = tomlkit.parse(_with_new_lines(with_new_keys(text, plan.trap) if made else text, plan))
-    except (tomllib.TOMLDecodeError, TOMLKitError):  # the sections that came are at odds with those that are there
+    if made:
+        text = rearranged(previous, before.trap, plan.trap)
+    if text is None:
         return None
+    document = tomlkit.parse(_with_new_lines(with_new_keys(text, plan.trap) if made else text, plan))
     if made:
         put_beams_and_coils(document, before.trap, plan.trap)
     _put_fields(document, entries_of(before), entries_of(plan), PLAN_FIELDS)

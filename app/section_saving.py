@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import tomllib
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 from typing import Any
 
@@ -111,13 +111,14 @@ def with_sections(text: str, old: Sections, new: Sections) -> str | None:
 
 def _with_bare_header(path: str, slots: int, old: Sections, new: Sections) -> tuple[list[Section], list[Section]]:
     """The old and the new sections of a path. A header of the file that says nothing, or what is usual, counts as one:
-    it stays unless all that was within it goes."""
+    it stays unless all that was within it goes. So does one that no longer says anything of its own."""
     olds, news = list(old[path]), list(new[path])
-    if slots == 1 and not olds:
+    had, has = (any(part[p] for p in part if p.startswith(f"{path}.")) for part in (old, new))
+    bare = slots == 1 and not olds
+    if bare:
         olds = [Section(path=path, many=False, fields={}, entries={})]
-        had, has = (any(part[p] for p in part if p.startswith(f"{path}.")) for part in (old, new))
-        if not news and (has or not had):
-            news = olds
+    if slots == 1 and not news and (has or (bare and not had)):
+        news = [replace(olds[0], entries={})]
     return olds, news
 
 
@@ -159,7 +160,8 @@ def _changed(text: str, old: Section, new: Section) -> str | None:
     body = text.rstrip()
     tail = text[len(body) :]
     if old.inner:
-        arranged = with_sections(text, old.inner, new.inner)
+        end = "\r\n" if tail.startswith("\r\n") else "\n"
+        arranged = with_sections(body + end, old.inner, new.inner)
         if arranged is None:
             return None
         text = arranged.rstrip() + tail

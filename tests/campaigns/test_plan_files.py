@@ -34,7 +34,8 @@ VALUES = (
 )  # fmt: skip
 SECTIONS = (
     "[species]", "[trap]", "[cloud]", "[losses]", "[[trap]]", "[trap.coils]", "[[trap.beam]]", "[species.key]",
-    "[a.b.c]", "[passenger.species]", "[[ramp.stage]]", "ramp = 3", "[target]", "title.x = 1",
+    "[a.b.c]", "[passenger.species]", "[[ramp.stage]]", "ramp = 3", "[target]", "title.x = 1", "[ramp]", "[limits]",
+    "[[ramp.stage.move]]", "[ramp.stage.trap]", "[[limits.control]]", "[[measured]]", "[candidates]", "[[candidate]]",
     "title" + 2000 * ".a" + " = 1",
 )  # fmt: skip
 MARKS = ("\x00", '"', "[", "]", "{", "\u2028", "\ufeff", "é", "\r", "\\", "=", ".", "#", "1", "e", "\U0001f600")
@@ -79,6 +80,18 @@ CHANGES = {
 TRAPS = tuple(parse_plan(text, "whole.toml").trap for text in WHOLE)
 
 
+PARTS = tuple(parse_plan(text, "whole.toml") for text in WHOLE)
+
+
+def shuffled(chance: random.Random, plan: Plan) -> Plan:
+    """The plan with its stages in another order, without the first of them, and with another plan's other parts."""
+    stages = [*plan.ramp]
+    chance.shuffle(stages)
+    other = chance.choice(PARTS)
+    parts = {name: getattr(other, name) for name in chance.sample(("limits", "measured", "candidates", "passenger"), 2)}
+    return replace(plan, ramp=(*stages[1:], *other.ramp[:1]), **parts)
+
+
 def without_trap_sections(plan: Plan) -> Plan:
     """Beams beside frequencies are unused in a file and go where others take their place."""
     return replace(plan, unused=tuple(name for name in plan.unused if not name.startswith("trap.")))
@@ -114,7 +127,12 @@ def test_damaged_plans_are_refused_in_one_sentence_or_can_be_saved() -> None:
             assert write_plan(plan) == text.removeprefix("\ufeff"), number
             harmonic = plan_with(plan, {path: chance.choice(texts) for path, texts in CHANGES.items()})
             other = chance.choice(TRAPS)
-            for changed in (harmonic, replace(plan, trap=other, title="äöü"), rearranged(chance, plan)):
+            for changed in (
+                harmonic,
+                replace(plan, trap=other, title="äöü"),
+                rearranged(chance, plan),
+                shuffled(chance, plan),
+            ):
                 again = parse_plan(write_plan(changed), "changed.toml")
                 assert without_trap_sections(again) == without_trap_sections(changed), number
         assert time.monotonic() - began < PATIENCE, number
