@@ -75,10 +75,17 @@ _LOG_T = np.arange(-36.0, 3.75, 0.25)
 def thermal_cross_section_factor(mass: float, temperature: Floats, scattering_length: Floats) -> Floats:
     """<sigma v>/<v> of sigma0/(1 + k^2 a^2) over sigma0, for two classical atoms of equal mass. [1]
 
-    With K = m kT a^2/hbar^2 it is the mean of 1/(1 + K t) over the collision energies t kT, weighted t e^-t: 1 for
-    K << 1, 1/K at unitarity, in closed form [1 - e^(1/K) E1(1/K)/K]/K. Relative error below 1e-13 for every K.
+    `thermal_factor` of K = m kT a^2/hbar^2.
     """
     K = np.asarray(mass * boltzmann * temperature * scattering_length**2 / reduced_planck**2, dtype=np.float64)
+    return thermal_factor(K)
+
+
+def thermal_factor(K: Floats) -> Floats:
+    """Mean of 1/(1 + K t) over the collision energies t kT, weighted t e^-t. [1]
+
+    1 for K << 1, 1/K at unitarity, in closed form [1 - e^(1/K) E1(1/K)/K]/K. Relative error below 1e-13 for every K.
+    """
     t = np.exp(_LOG_T)
     weights = 0.25 * t * t * np.exp(-t)
 

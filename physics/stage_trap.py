@@ -87,6 +87,7 @@ class StageTrap:
     ----------
     begin, end : float. [s] Within the stage. The end is that of the stretch, or where the trap holds nothing any more.
     held : bool. Whether the trap holds atoms to the end of the stretch; `reason` says why not.
+    places, points : where along the stretch, and the traps there, between which all is interpolated.
     """
 
     def __init__(self, courses: Mapping[Control, Course], path: TrapPath, begin: float, end: float) -> None:
@@ -112,7 +113,9 @@ class StageTrap:
             return
         if not self.held:
             self.end = float(times[len(points) - 1])
-        self._curve = TrapCurve(np.array([self._place(t)[0] for t in times[: len(points)]]), points)
+        self.places: Floats = np.array([self._place(t)[0] for t in times[: len(points)]])
+        self.points = tuple(points)
+        self._curve = TrapCurve(self.places, points)
         self.bottom_exponent = self._curve.bottom_exponent
         if not moving:
             self._constant = self._curve.at(self._curve.low, 0.0)
