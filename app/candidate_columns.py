@@ -1,7 +1,8 @@
 """The columns in which species are compared.
 
-Every quantity of a cloud that is one number is one, and so is what only a comparison asks. A column's texts are a row of the table of quantities. Those of the cloud are the very rows of `app.quantities`; the
-others, of the trap, the tuning and the evaporation, are here.
+Every quantity of a cloud that is one number is one, and so is what only a comparison asks: of the trap, the tuning and
+the evaporation. A column's texts are a row of the table of quantities; those of the cloud are the very rows of
+`app.quantities`, the others are here.
 """
 
 from __future__ import annotations

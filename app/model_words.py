@@ -26,7 +26,7 @@ _HEADINGS = {
     "peak_density": _("peak density"),
     "energy_per_atom": _("energy per atom/k"),
 }
-_OBSTACLES = {
+OBSTACLES = {
     Replacement.LENGTH_UNKNOWN: _("needs a known scattering length"),
     Replacement.NOT_REPULSIVE: _("needs a positive scattering length"),
     Replacement.BOSONS_ONLY: _("for bosons only"),
@@ -60,7 +60,7 @@ def cells_of(answer: ModelsAnswer, model: Model) -> tuple[str, ...]:
     if row is None:
         return ("…",) * count
     if row.obstacle is not None:
-        return (_OBSTACLES[row.obstacle], *("",) * (count - 1))
+        return (OBSTACLES[row.obstacle], *("",) * (count - 1))
     present = answer.rows.get(answer.present)
     return tuple(_cell(name, row, None if model is answer.present else present) for name in columns_of(answer))
 

@@ -15,7 +15,7 @@ from app.language import translate as _
 from app.quantity_row import Need
 from app.sureness import Sureness, least_sure, sureness_of
 from app.words import reason_missing
-from physics.scattering import tuning
+from physics.scattering import WhyUnknown, tuning
 from physics.species_tables import Resonance
 
 if TYPE_CHECKING:
@@ -215,6 +215,8 @@ class CandidateRow:
             return _("T/TF = {limit} stands for the threshold: the plan's target names none").format(
                 limit=f"{cloud.threshold:.3g}"
             )
+        if column.part is Part.EVAPORATION and self.evaporation is not None and self.evaporation.assumed:
+            return self.evaporation.assumed
         if column.name in _OF_ALL_LOSSES:
             losses = cloud.losses.losses
             left_out = [
@@ -262,8 +264,13 @@ _LENGTH_NEEDS = frozenset(
 def length_reason(cloud: CloudAnswer) -> str:
     """Why a cloud has no scattering length, and at which fields the data have one."""
     found = cloud.scattering
-    said = _(found.reason.value) if found.reason is not None else ""
-    if found.ranges:
-        fields = _(" and ").join(f"{1e4 * low:.4g}–{1e4 * high:.4g} G" for low, high in found.ranges)
-        said += _("; they have it at {fields}").format(fields=fields)
-    return said
+    fields = _(" or ").join(f"{1e4 * low:.4g}–{1e4 * high:.4g} G" for low, high in found.ranges)
+    match found.reason:
+        case WhyUnknown.NEEDS_FIELD if fields:
+            return _("needs a magnetic field: the data have the scattering length at {fields}").format(fields=fields)
+        case WhyUnknown.OUTSIDE_RANGE if fields:
+            return _("at this field the data say nothing: they do at {fields}").format(fields=fields)
+        case None:
+            return ""
+        case reason:
+            return _(reason.value)

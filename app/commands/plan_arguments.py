@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 import json
+from collections.abc import Collection
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -14,8 +15,9 @@ if TYPE_CHECKING:
     from app.plan import Plan
 
 
-def add_plan_arguments(parser: argparse.ArgumentParser, *, name: str = "plan") -> None:
-    """Add the plan file, as an argument or under an option of that name, and the overriding flags to a verb."""
+def add_plan_arguments(parser: argparse.ArgumentParser, *, name: str = "plan", without: Collection[str] = ()) -> None:
+    """Add the plan file, as an argument or under an option of that name, and the overriding flags to a verb, but for
+    the plan keys of `without`."""
     text = "plan file; without one, flags give the plan"
     if name.startswith("-"):
         parser.add_argument(name, metavar="PLAN", help=text)
@@ -23,6 +25,8 @@ def add_plan_arguments(parser: argparse.ArgumentParser, *, name: str = "plan") -
         parser.add_argument(name, nargs="?", metavar="PLAN", help=text)
     group = parser.add_argument_group("plan keys, which override the file")
     for path, field in PLAN_FIELDS.items():
+        if path in without:
+            continue
         group.add_argument(field.flag, dest=path, metavar="TEXT", help=field.tip.replace("%", "%%"))
 
 

@@ -1,0 +1,355 @@
+"""`coldward compare`: which species would do best in this laboratory."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from dataclasses import replace
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
+from app.commands.trouble import fail
+
+if TYPE_CHECKING:
+    from app.answers.candidate_row import CandidateRow
+    from app.answers.candidates import CandidatesAnswer
+    from app.candidate_order import Score, Weight
+    from app.plan import Plan
+
+_OWN = ("species.key", "species.state", "species.spin_components", "species.scattering_length")
+"""Plan keys that say nothing where many species are compared."""
+
+_SEPARATELY = ("evaporated_atoms", "evaporation_time")
+
+
+def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+    """Add the verb to the command line."""
+    text = "species and states side by side in one trap, or from one start"
+    parser = verbs.add_parser("compare", help=text, description=text[0].upper() + text[1:] + ".")
+    add_plan_arguments(parser, without=_OWN)
+    parser.add_argument(
+        "--basis", metavar="BASIS", help='"same frequencies", "same light" or "same start"; the plan\'s without it'
+    )
+    parser.add_argument(
+        "--start",
+        metavar="START",
+        help='of a same start: "same atoms and temperature" or "same phase-space density"',
+    )
+    parser.add_argument(
+        "--species",
+        dest="keys",
+        metavar="KEYS",
+        help="species, such as 87Rb,41K, each in all of its states; without it those of the plan, or all",
+    )
+    parser.add_argument(
+        "--columns", metavar="NAMES", help="columns by the NAME of their quantity, such as mean_density,sag"
+    )
+    parser.add_argument("--sort", metavar="NAME", help='column to order by, the better end first; or "score"')
+    parser.add_argument(
+        "--only",
+        action="append",
+        default=[],
+        metavar="FILTER",
+        help="show what passes: bosons, fermions, trapped, colliding, without failure, or a column with a limit, such "
+        'as "total_lifetime >= 10 s"; may be given several times',
+    )
+    parser.add_argument(
+        "--weight",
+        action="append",
+        default=[],
+        metavar="NAME=NUMBER",
+        help='how much a column counts in the score, such as "good_to_bad_ratio=2" or "sag=1 less"; may be given '
+        "several times",
+    )
+    parser.add_argument("--evaporate", action="store_true", help="find the best evaporation of each; takes longer")
+    parser.add_argument("-o", "--output", metavar="FILE", help="CSV file")
+    parser.add_argument("--json", action="store_true", help="print one JSON object; a FILE is written too")
+    parser.set_defaults(run=run)
+
+
+def run(args: argparse.Namespace) -> int:
+    """Judge the candidates; say of those without an answer why."""
+    from app.answers.candidates import candidates_answer
+    from app.candidate_order import fails, read_sieve, read_weight
+    from app.files import write_atomically
+
+    try:
+        plan = _plan(args)
+        names = _columns(args)
+        sieve = read_sieve(args.only)
+        weights = tuple(read_weight(text) for text in args.weight)
+        answer = candidates_answer(plan)
+        assert answer is not None  # nothing stops it
+        if args.evaporate:
+            answer = _evaporated(answer)
+        rows, scores = _arranged(args, [row for row in answer.rows if sieve.passes(row)], weights)
+        if args.output is not None:
+            write_atomically(Path(args.output), compare_csv(rows, names, scores).encode())
+    except (ValueError, OSError) as error:
+        return fail(error)
+    if args.json:
+        body = compare_body(answer, rows, names, scores, weights)
+        print(json_answer(args, body, species=args.keys, columns=args.columns, only=args.only, weight=args.weight))
+    elif args.output is None:
+        print(compare_text(answer, plan, rows, names, scores, weights))
+    without_answer = [row for row in answer.rows if fails(row)]
+    for row in without_answer:
+        print(f"coldward: {row.key} {row.state.name}: {row.reason}", file=sys.stderr)
+    return 1 if without_answer else 0
+
+
+def _plan(args: argparse.Namespace) -> Plan:
+    from app.candidate_choices import Basis, Start
+    from physics.species import load_species
+
+    keys = [load_species(key).key for key in args.keys.split(",")] if args.keys else []
+    if args.plan is None:
+        # Nothing of the plan's own species enters where flags give the trap by its frequencies.
+        setattr(args, "species.key", keys[0] if keys else "87Rb")
+    plan = plan_of(args)
+    choice = plan.candidates
+    if keys:
+        choice = replace(choice, keys=tuple(keys), candidates=())
+    if args.basis is not None:
+        choice = replace(choice, basis=_member(Basis, args.basis, "--basis"))
+    if args.start is not None:
+        choice = replace(choice, start=_member(Start, args.start, "--start"))
+    return replace(plan, candidates=choice)
+
+
+def _member(kind: type[Any], text: str, flag: str) -> Any:
+    plain = " ".join(text.casefold().split())
+    found = next((member for member in kind if member.value == plain), None)
+    if found is None:
+        allowed = ", ".join(f'"{member.value}"' for member in kind)
+        raise ValueError(f'{flag} must be one of {allowed}, got "{text}"')
+    return found
+
+
+def _columns(args: argparse.Namespace) -> tuple[str, ...]:
+    from app.candidate_columns import BRIEF_COLUMNS, USUAL_COLUMNS, column
+
+    if args.columns:
+        return tuple(dict.fromkeys(column(name).name for name in args.columns.split(",")))
+    if args.json or args.output is not None:
+        return tuple(name for name in USUAL_COLUMNS if args.evaporate or name not in _SEPARATELY)
+    return (*BRIEF_COLUMNS[:3], *_SEPARATELY) if args.evaporate else BRIEF_COLUMNS
+
+
+def _arranged(
+    args: argparse.Namespace, rows: list[CandidateRow], weights: tuple[Weight, ...]
+) -> tuple[list[CandidateRow], list[Score]]:
+    """The rows in the order that is asked for, and their scores."""
+    from app.candidate_columns import column
+    from app.candidate_order import SCORE, order_by, score_rows
+
+    scores = list(score_rows(rows, weights))
+    if args.sort is None and not weights:
+        return rows, scores
+    if args.sort is None or args.sort.strip().casefold() == SCORE:
+        if not weights:
+            raise ValueError("--sort score needs at least one --weight")
+        values, descending = [score.value for score in scores], True
+    else:
+        by = column(args.sort)
+        values, descending = [row.cell(by.name).value for row in rows], by.more_is_better
+    places = order_by(values, descending)
+    return [rows[place] for place in places], [scores[place] for place in places]
+
+
+def _evaporated(answer: CandidatesAnswer) -> CandidatesAnswer:
+    from app.answers.candidate_evaporation import evaporate_rows
+
+    rows = evaporate_rows(answer.rows)
+    assert rows is not None  # nothing stops it
+    return replace(answer, rows=rows)
+
+
+# --- as JSON ---------------------------------------------------------------------------------------------------------
+
+
+def compare_body(
+    answer: CandidatesAnswer,
+    rows: list[CandidateRow],
+    names: tuple[str, ...],
+    scores: list[Score],
+    weights: tuple[Weight, ...],
+) -> dict[str, Any]:
+    """The answer as the JSON contract has it; numbers in SI."""
+    from app.candidate_choices import Basis
+    from app.candidate_words import model_reason
+
+    found = []
+    for row, score in zip(rows, scores, strict=True):
+        entry: dict[str, Any] = {
+            "key": row.key,
+            "state": row.state.name,
+            "trapped": row.trapped,
+            "reason": row.reason or None,
+            "model": None if row.cloud is None else row.cloud.model.value,
+            "fails": None if row.failure is None else row.failure.value,
+            "model_reason": model_reason(row) or None,
+            "quantities": {name: _quantity(row, name) for name in names},
+        }
+        if weights:
+            entry["score"] = _finite(score.value)
+            entry["score_parts"] = {
+                weight.name: _finite(part) for weight, part in zip(weights, score.parts, strict=True)
+            }
+        found.append(entry)
+    same = {"start": answer.start.value} if answer.basis is Basis.SAME_START else {}
+    return {"basis": answer.basis.value, **same, "rows": found}
+
+
+def _quantity(row: CandidateRow, name: str) -> dict[str, Any]:
+    from app.candidate_columns import COLUMNS
+
+    cell, of = row.cell(name), COLUMNS[name].row
+    entry: dict[str, Any] = {"value": _finite(cell.value), "unit": of.unit, "low": None, "high": None}
+    spread = row.spread(name)
+    if spread is not None:
+        entry |= {
+            place: _finite(float(bound))
+            for place, bound in (("low", spread.low), ("high", spread.high), ("median", spread.median))
+        }
+    if cell.reason:
+        entry["reason"] = cell.reason
+    return {**entry, "certainty": cell.sureness.value, "label": of.label, "source": of.source}
+
+
+def _finite(value: float) -> float | None:
+    import math
+
+    return value if math.isfinite(value) else None
+
+
+# --- as a table ------------------------------------------------------------------------------------------------------
+
+
+def compare_csv(rows: list[CandidateRow], names: tuple[str, ...], scores: list[Score]) -> str:
+    """One candidate a line: numbers in SI and in full precision, each followed by how sure it is; empty where
+    unknown."""
+    import csv
+    import io
+
+    from app.candidate_columns import COLUMNS
+    from app.candidate_words import model_reason
+
+    out = io.StringIO()
+    writer = csv.writer(out, lineterminator="\n")
+    header = ["species", "state", "trapped", "fails", "reason", "model", "model_reason"]
+    for name in names:
+        unit = COLUMNS[name].row.unit
+        header += [name if unit == "1" else f"{name} [{unit}]", f"{name} certainty"]
+    weighed = any(score.parts for score in scores)
+    writer.writerow([*header, "score"] if weighed else header)
+    for row, score in zip(rows, scores, strict=True):
+        model = "" if row.cloud is None else row.cloud.model.value
+        failure = "" if row.failure is None else row.failure.value
+        line = [row.key, row.state.name, str(row.trapped).lower(), failure, row.reason, model, model_reason(row)]
+        for name in names:
+            cell = row.cell(name)
+            line += [repr(cell.value) if cell.known else "", cell.sureness.value]
+        writer.writerow([*line, "" if _finite(score.value) is None else repr(score.value)] if weighed else line)
+    return out.getvalue()
+
+
+_SHORT_HEADINGS = {
+    "threshold_temperature": "threshold T",
+    "peak_phase_space_density": "peak nλ³",
+    "scattering_length": "a",
+    "elastic_collision_rate": "elastic",
+    "good_to_bad_ratio": "good/bad",
+    "evaporated_atoms": "left",
+    "evaporation_time": "after",
+}
+"""What the brief table says over its columns, where a label would be too wide."""
+
+
+def compare_text(
+    answer: CandidatesAnswer,
+    plan: Plan,
+    rows: list[CandidateRow],
+    names: tuple[str, ...],
+    scores: list[Score],
+    weights: tuple[Weight, ...],
+) -> str:
+    """The answer as a readable page."""
+    from app import candidate_words as words
+    from app.candidate_columns import COLUMNS
+    from app.sureness import legend
+    from app.tables import text_table
+    from app.words import shown_unit
+
+    units = {name: words.unit_for_column(name, [row.cell(name) for row in rows]) for name in names}
+    header = ["species", "state"]
+    for name in names:
+        title, unit = _SHORT_HEADINGS.get(name, COLUMNS[name].row.symbol), shown_unit(units[name])
+        header.append(f"{title} [{unit}]" if unit else title)
+    table = [
+        [
+            row.key,
+            words.short_state(row.state),
+            *(_padded(words.cell_text(row.cell(name), name, units[name])) for name in names),
+        ]
+        for row in rows
+    ]
+    if weights:
+        header.append("score")
+        table = [[*cells, words.score_text(score)] for cells, score in zip(table, scores, strict=True)]
+    lines = [words.heading(answer, plan), words.summary(answer.rows, len(rows)), ""]
+    if rows:
+        lines += [text_table(header, table, right=range(2, len(header))), "", legend()]
+    for title, groups in (
+        ("Where they fail", _failures(rows)),
+        ("Where evaporation falls short", _evaporations(rows)),
+        ("Another model than the usual", _models(rows)),
+    ):
+        if groups:
+            lines += ["", title, *groups]
+    return "\n".join(lines)
+
+
+def _padded(text: str) -> str:
+    """The text with room for a mark, so that numbers without one stand under those with one."""
+    return text if text[-1:] in "ʳᶜᵃ" else f"{text} "
+
+
+def _failures(rows: list[CandidateRow]) -> list[str]:
+    from app.candidate_words import failure_groups
+
+    return _wrapped((f"{failure.label}: {reason}", members) for failure, reason, members in failure_groups(rows))
+
+
+def _evaporations(rows: list[CandidateRow]) -> list[str]:
+    groups: dict[str, list[CandidateRow]] = {}
+    for row in rows:
+        if row.evaporation is not None and row.evaporation.reason and row.evaporation.reason != row.reason:
+            groups.setdefault(row.evaporation.reason, []).append(row)
+    return _wrapped(groups.items())
+
+
+def _models(rows: list[CandidateRow]) -> list[str]:
+    from app.candidate_words import model_reason
+
+    groups: dict[str, list[CandidateRow]] = {}
+    for row in rows:
+        reason = model_reason(row)
+        if reason and row.cloud is not None:
+            groups.setdefault(f"{row.cloud.model.label}, as {reason}", []).append(row)
+    return _wrapped(groups.items())
+
+
+def _wrapped(groups: Any) -> list[str]:
+    import textwrap
+
+    from app.candidate_words import names_of
+
+    lines: list[str] = []
+    for reason, members in groups:
+        lines += textwrap.wrap(reason, 98, initial_indent="  ", subsequent_indent="    ")
+        lines += textwrap.wrap(
+            names_of(members), 98, initial_indent="      ", subsequent_indent="      ", break_on_hyphens=False
+        )
+    return lines
