@@ -244,26 +244,50 @@ def note_text(note: Note) -> str:
     )
 
 
+LIGHT_CAUTION = _(
+    "Beams from 0.5 W are typically class 4 and, beyond 700 nm, invisible: follow IEC 60825-1 or ANSI Z136.1, local "
+    "rules and your laser safety officer."
+)
+COILS_CAUTION = _(
+    "Coils carry high currents, get hot and store energy, and their stray field reaches far (0.5 mT is the line for "
+    "active implants): use interlocks, and follow local electrical codes."
+)
+ESTIMATES = _("These are planning estimates: your own measurement and licensed practice decide.")
+
+
 def cautions(trap: TrapChoice) -> tuple[str, ...]:
     """What to mind about the light and the coils that a trap is made of, as sentences."""
-    found = []
-    if any(beam.power.value >= CAUTIOUS_POWER for beam in trap.beams):
-        found.append(
-            _(
-                "Beams from 0.5 W are typically class 4 and, beyond 700 nm, invisible: follow IEC 60825-1 or ANSI "
-                "Z136.1, local rules and your laser safety officer."
-            )
-        )
-    if trap.coils is not None:
-        found.append(
-            _(
-                "Coils carry high currents, get hot and store energy, and their stray field reaches far (0.5 mT is the "
-                "line for active implants): use interlocks, and follow local electrical codes."
-            )
-        )
-    if found:
-        found.append(_("These are planning estimates: your own measurement and licensed practice decide."))
-    return tuple(found)
+    light = any(beam.power.value >= CAUTIOUS_POWER for beam in trap.beams)
+    found = [text for text, counts in ((LIGHT_CAUTION, light), (COILS_CAUTION, trap.coils is not None)) if counts]
+    return (*found, ESTIMATES) if found else ()
+
+
+def caution_title(trap: TrapChoice) -> str:
+    """What the cautions are about, in a few words; empty where there are none."""
+    light = any(beam.power.value >= CAUTIOUS_POWER for beam in trap.beams)
+    about = [word for word, counts in ((_("laser light"), light), (_("coils"), trap.coils is not None)) if counts]
+    return _("Mind: {what}").format(what=_(" and ").join(about)) if about else ""
+
+
+def fact_texts(answer: TrapAnswer) -> dict[str, str]:
+    """Name -> text of the numbers that decide about a trap; "–" where one is not known, and none that means nothing."""
+    if not answer.trapped:
+        return {"frequencies": _("not trapped"), "depth": "–", "sag": "–"}
+    found, missing = answer.survey, reasons_missing(answer)
+    texts = {
+        "frequencies": frequencies_text(answer),
+        "depth": depth_text(answer),
+        "arm_depth": _kelvin(found.arm_depth),
+        "sag": sag_text(answer),
+    }
+    if found.heating.scattering_rates:
+        texts |= {
+            "scattering_rate": f"{number(found.heating.scattering_rate)} 1/s",
+            "heating_rate": f"{number(1e9 * found.heating.heating_rate)} nK/s",
+        }
+    # An arm that does not open, and light of unknown effect, are left out; the rest says "–".
+    gone = {name for name in texts if name in missing and name not in ("frequencies", "depth", "sag")}
+    return {name: text for name, text in texts.items() if name not in gone}
 
 
 def _length(value: float) -> str:

@@ -13,10 +13,11 @@ from typing import Any, cast
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QFont, QWheelEvent
-from PySide6.QtWidgets import QComboBox, QGridLayout, QLabel, QWidget
+from PySide6.QtWidgets import QComboBox, QGridLayout, QHBoxLayout, QLabel, QWidget
 
-from app.plan import PLAN_FIELDS, Plan, PlanError
+from app.plan import PLAN_FIELDS, Plan, PlanError, PlanField
 from app.units import Kind, Quantity
+from app.widgets.entry_field import EntryField
 from app.widgets.quantity_field import QuantityField
 
 LONGEST_LABEL = "Scattering length "  # all forms give their labels this much room
@@ -59,8 +60,16 @@ def with_mnemonic(label: str, letter: str) -> str:
     return f"{label[:place]}&{label[place:]}"
 
 
+Put = Callable[[Plan, Any], Plan]
+"""How what a field holds enters the plan; PlanError where no plan can have it."""
+
+
 class Form(QWidget):
-    """Signals: plan_edited(Plan, what, merge key); problems_changed() when what cannot be read changes."""
+    """Signals: plan_edited(Plan, what, merge key); problems_changed() when what cannot be read changes.
+
+    `owner` ends what the fields are called in a list of steps or by a screen reader, such as " of beam A", where
+    several forms have fields of one name.
+    """
 
     plan_edited = Signal(object, str, str)
     problems_changed = Signal()
@@ -69,7 +78,10 @@ class Form(QWidget):
         super().__init__(parent)
         self.setAccessibleName(title)
         self._plan: Plan | None = None
+        self.owner = ""
+        self._labels: dict[str, str] = {}
         self._fields: dict[str, QuantityField] = {}
+        self._entries: dict[str, EntryField] = {}
         self._sessions: dict[str, int] = {}
         self._errors: dict[str, QLabel] = {}
         self._notes: dict[str, QLabel] = {}
@@ -96,11 +108,21 @@ class Form(QWidget):
         if letter:
             buddy.setBuddy(widget)
         buddy.setToolTip(tip)
-        widget.setAccessibleName(label)
+        self._labels[key] = label
+        widget.setAccessibleName(label + self.owner)
         if not isinstance(widget, QuantityField):
             widget.setToolTip(tip)
             widget.setWhatsThis(tip)
             widget.setAccessibleDescription(tip)
+        note, error = self._add_messages(key)
+        self._widgets[key] = (buddy, widget, note, error)
+        self._grid.addWidget(buddy, self._row, 0)
+        self._grid.addWidget(widget, self._row, 1)
+        self._grid.addWidget(note, self._row + 1, 1)
+        self._grid.addWidget(error, self._row + 2, 0, 1, 2)
+        self._row += 3
+
+    def _add_messages(self, key: str) -> tuple[QLabel, QLabel]:
         note, error = QLabel(), QLabel()
         note.setObjectName("fieldNote")
         error.setObjectName("fieldError")
@@ -109,36 +131,66 @@ class Form(QWidget):
             message.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
             message.hide()
         self._notes[key], self._errors[key] = note, error
-        self._widgets[key] = (buddy, widget, note, error)
-        self._grid.addWidget(buddy, self._row, 0)
-        self._grid.addWidget(widget, self._row, 1)
-        self._grid.addWidget(note, self._row + 1, 1)
-        self._grid.addWidget(error, self._row + 2, 0, 1, 2)
-        self._row += 3
+        return note, error
 
     def add_quantity(
-        self,
-        path: str,
-        letter: str,
-        *,
-        label: str = "",
-        key: str = "",
-        put: Callable[[Plan, Quantity | None], Plan] | None = None,
+        self, path: str | PlanField, letter: str, *, label: str = "", key: str = "", put: Put | None = None
     ) -> QuantityField:
         """A field for a quantity of the plan. `put` says how it enters the plan, where it is no entry of its own."""
-        field = PLAN_FIELDS[path]
-        kind = field.kind
-        assert isinstance(kind, Kind)
-        key, label = key or path, label or field.label
-        line = QuantityField(kind, label, tip=field.tip, optional=not field.required)
+        field = PLAN_FIELDS[path] if isinstance(path, str) else path
+        key, label = key or field.path, label or field.label
+        line = self._quantity_line(field, label)
         self.add_row(key, label, letter, line, field.tip)
+        self._connect_quantity(key, label, line, put or partial(_put, field.path))
+        return line
+
+    def add_place(
+        self, field: PlanField, key: str, puts: tuple[Put, Put, Put], *, label: str = ""
+    ) -> tuple[QuantityField, QuantityField, QuantityField]:
+        """Three fields side by side, under their label, for a point of the laboratory."""
+        label = label or field.label
+        heading = QLabel(f"{label} x, y, z")
+        heading.setToolTip(field.tip)
+        row = QHBoxLayout()
+        row.setSpacing(4)
+        self._grid.addWidget(heading, self._row, 0, 1, 2)
+        self._grid.addLayout(row, self._row + 1, 0, 1, 2)
+        self._row += 2
+        lines = []
+        for axis, put in zip("xyz", puts, strict=True):
+            line = self._quantity_line(field, f"{label} {axis}")
+            part = f"{key}.{axis}"
+            self._labels[part] = f"{label} {axis}"
+            line.setAccessibleName(f"{label} {axis}{self.owner}")
+            line.setMinimumWidth(line.fontMetrics().horizontalAdvance("-10 µm") + 14)
+            row.addWidget(line, 1)
+            note, error = self._add_messages(part)
+            self._widgets[part] = (*((heading,) if axis == "x" else ()), line, note, error)
+            self._grid.addWidget(note, self._row, 0, 1, 2)
+            self._grid.addWidget(error, self._row + 1, 0, 1, 2)
+            self._row += 2
+            self._connect_quantity(part, f"{label} {axis}", line, put)
+            lines.append(line)
+        x, y, z = lines
+        return x, y, z
+
+    def _quantity_line(self, field: PlanField, label: str) -> QuantityField:
+        assert isinstance(field.kind, Kind)
+        return QuantityField(field.kind, label, tip=field.tip, optional=not field.required)
+
+    def _connect_quantity(self, key: str, label: str, line: QuantityField, put: Put) -> None:
         self._fields[key] = line
         self._sessions[key] = 0
-        enter = put or partial(_put, path)
-        line.changed.connect(lambda quantity: self._changed(key, label, enter, quantity))
+        line.changed.connect(lambda quantity: self._changed(key, label, put, quantity))
         line.editingFinished.connect(partial(self._end_session, key))
         line.error_changed.connect(partial(self.show_problem, key))
-        return line
+
+    def add_entry(self, key: str, label: str, letter: str, line: EntryField, tip: str, put: Put) -> None:
+        """A line for something else than a quantity, taken when it is finished: a step of its own."""
+        self.add_row(key, label, letter, line, tip)
+        self._entries[key] = line
+        line.entered.connect(lambda value: self._changed(key, label, put, value, own_step=True))
+        line.error_changed.connect(partial(self.show_problem, key))
 
     def add_fact(self, key: str, label: str, tip: str) -> QLabel:
         """A labelled text to read and to copy, which nothing can be typed into."""
@@ -154,17 +206,16 @@ class Form(QWidget):
 
     # ---------------------------------------------------------------- edits
 
-    def _changed(
-        self, key: str, label: str, enter: Callable[[Plan, Quantity | None], Plan], quantity: Quantity | None
-    ) -> None:
+    def _changed(self, key: str, label: str, put: Put, value: object, *, own_step: bool = False) -> None:
         if self._plan is None:
             return
         try:
-            plan = enter(self._plan, quantity)
+            plan = put(self._plan, value)
         except PlanError as error:
-            self._fields[key].show_error(str(error))
+            (self._fields.get(key) or self._entries[key]).show_error(str(error))
             return
-        self.plan_edited.emit(plan, label.lower(), f"{key} {self._sessions[key]}")
+        step = "" if own_step else f"{self.owner}{key} {self._sessions[key]}"
+        self.plan_edited.emit(plan, _step_name(label, self.owner), step)
 
     def _end_session(self, key: str) -> None:
         """The next edit of this field is another step for undo."""
@@ -174,6 +225,16 @@ class Form(QWidget):
         """An edit that is a step of its own, such as a choice from a list."""
         if self._plan is not None:
             self.plan_edited.emit(plan_with_entry(self._plan, path, value), PLAN_FIELDS[path].label.lower(), "")
+
+    def set_owner(self, owner: str) -> None:
+        """Whose fields these are, from now on."""
+        if owner == self.owner:
+            return
+        self.owner = owner
+        for key, label in self._labels.items():
+            for widget in self._widgets[key]:
+                if not isinstance(widget, QLabel) or widget.objectName() == "fact":
+                    widget.setAccessibleName(label + owner)
 
     # ---------------------------------------------------------------- showing
 
@@ -187,7 +248,8 @@ class Form(QWidget):
 
     def discard_edits(self) -> None:
         """Drop texts that could not be read: another plan is about to be shown."""
-        for field in self._fields.values():
+        fields: list[QuantityField | EntryField] = [*self._fields.values(), *self._entries.values()]
+        for field in fields:
             field.blockSignals(True)
             field.revert()
             field.blockSignals(False)
@@ -221,7 +283,7 @@ class Form(QWidget):
     def show_row(self, key: str, shown: bool) -> None:
         """Show or hide a field with its label and messages."""
         for widget in self._widgets[key]:
-            message = widget in (self._notes[key], self._errors[key])
+            message = widget is self._notes[key] or widget is self._errors[key]
             widget.setVisible(shown and (not message or bool(cast(QLabel, widget).text())))
 
     def take_focus(self) -> None:
@@ -234,3 +296,8 @@ class Form(QWidget):
 
 def _put(path: str, plan: Plan, quantity: Quantity | None) -> Plan:
     return plan_with_entry(plan, path, quantity)
+
+
+def _step_name(label: str, owner: str) -> str:
+    """What undo calls a change: small letters, but for an owner's name."""
+    return f"{label[:1].lower()}{label[1:]}{owner}" if owner else label.lower()

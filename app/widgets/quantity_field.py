@@ -222,7 +222,7 @@ class QuantityField(QLineEdit):
         elif event.key() == Qt.Key.Key_Escape and (self._editing or self._error):
             self.revert()
             event.accept()
-        elif _is_undo(event) and not self._editing:
+        elif is_undo(event) and not self._editing:
             event.ignore()
         else:
             super().keyPressEvent(event)
@@ -232,7 +232,7 @@ class QuantityField(QLineEdit):
         if (
             event.type() == QEvent.Type.ShortcutOverride
             and isinstance(event, QKeyEvent)
-            and _is_undo(event)
+            and is_undo(event)
             and not self._editing
         ):
             event.ignore()
@@ -304,5 +304,6 @@ class QuantityField(QLineEdit):
 _PLAIN = (Qt.KeyboardModifier.NoModifier, Qt.KeyboardModifier.KeypadModifier)
 
 
-def _is_undo(event: QKeyEvent) -> bool:
+def is_undo(event: QKeyEvent) -> bool:
+    """Whether a key is that of undo or redo."""
     return event.matches(QKeySequence.StandardKey.Undo) or event.matches(QKeySequence.StandardKey.Redo)

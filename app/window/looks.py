@@ -58,6 +58,13 @@ def style_sheet_of(theme: Theme) -> str:
         #formTitle, #paneTitle {{ color: {theme.muted}; font-weight: 600; }}
         #fieldNote, #plotStatus, #detail {{ color: {theme.muted}; }}
         #fieldError {{ color: {theme.error}; }}
+        #fact[stale="true"] {{ color: {theme.muted}; }}
+        #cardTitle, #cautionTitle {{ border: none; padding: 2px 4px 2px 0px; }}
+        #cardTitle[off="true"] {{ color: {theme.muted}; }}
+        #cardMenu {{ border: none; padding: 0px 4px; color: {theme.muted}; }}
+        #cardMenu::menu-indicator {{ image: none; }}
+        #caution {{ border: none; border-left: 2px solid {theme.warning}; }}
+        #cautionTitle {{ color: {theme.muted}; }}
         QLineEdit {{ border: 1px solid {theme.border}; border-radius: 3px; padding: 3px 5px;
                      background: {theme.base}; }}
         QComboBox QLineEdit {{ border: none; padding: 0px; }}

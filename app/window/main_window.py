@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -21,6 +22,7 @@ from PySide6.QtWidgets import QMainWindow, QMenu, QTextEdit, QVBoxLayout, QWidge
 from app.window.settings import Settings, ThemeChoice, rectangle_on_screens
 
 if TYPE_CHECKING:
+    from app.answers.trap_solving import Wish
     from app.engine import CloudAnswer
     from app.plan import Plan
     from app.widgets.banner import Banner, Offer
@@ -138,6 +140,8 @@ class MainWindow(QMainWindow):
         document.loading.connect(desk.bench.discard_edits)
         document.plan_changed.connect(self._plan_changed)
         desk.bench.problems_changed.connect(self._judge)
+        desk.bench.trap.solving_wanted.connect(self._solve)
+        desk.bench.trap.solving_dropped.connect(answers.drop_solving)
         # the answer goes to all that show it
         answers.cloud_ready.connect(self._show_cloud)
         answers.cloud_failed.connect(self._cloud_failed)
@@ -220,6 +224,14 @@ class MainWindow(QMainWindow):
         answer = None if plan.trap.harmonic else trap_answer.kept(plan)
         if answer is not None:
             self.desk.bench.trap.show_trap(answer)
+
+    def _solve(self, wish: Wish) -> None:
+        """A wish of the Trap form goes to the worker, and what meets it comes back to the form."""
+        from app.answers.trap_solving import solve_trap
+
+        card = self.desk.bench.trap.solving
+        if card is not None:
+            self.answers.solve(partial(solve_trap, self.document.plan, wish), card.show_solved, card.show_no_solution)
 
     def _judge(self) -> None:
         """A field that cannot be read, a survey that takes time, or a plan without an answer, marks everything as not

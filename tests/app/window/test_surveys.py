@@ -123,6 +123,7 @@ def test_surveys_on_the_way_are_shown_as_not_current(
     surveys.gate.clear()
     window.document.edit(first, "plan")
     window.answers.answer_now()
+    qtbot.waitUntil(lambda: len(surveys.threads) == 1, timeout=5000)
     window.document.edit(last, "plan")
     window.answers.answer_now()
     surveys.gate.set()
