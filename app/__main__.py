@@ -9,7 +9,7 @@ from importlib import import_module
 
 from app import __version__
 
-VERBS = ("window", "state", "trap", "map", "profile", "compare", "table", "species")
+VERBS = ("window", "state", "trap", "map", "profile", "evaporate", "compare", "table", "species")
 """Modules of app.commands, in the order in which help lists them."""
 
 _DESCRIPTION = """\

@@ -20,7 +20,7 @@ _RATES = ("1/s",)
 
 @dataclass(frozen=True, kw_only=True)
 class RampColumn:
-    """A column. `unit` is its SI unit, `units` are offered for display, the usual one first; `formula` says what it is."""
+    """A column. `unit` is its SI unit, `units` are offered for display, and `formula` says what it is."""
 
     name: str
     label: str

@@ -1,0 +1,258 @@
+"""What `coldward evaporate` prints: one line a stage, the verdict, where the atoms went, what limits."""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from app.language import translate as _
+from app.ramp_words import (
+    LOSSES,
+    PROCESSES,
+    SIGNS,
+    WEIGHTS,
+    bound_text,
+    change_text,
+    control_text,
+    design_sentence,
+    duration,
+    input_text,
+    limiting,
+    ramp_caveat_text,
+    ramp_verdict,
+)
+from app.tables import columns
+from app.units import best_unit, format_quantity
+from app.words import number, percent, temperature
+from physics.evaporation_rates import Process
+
+if TYPE_CHECKING:
+    from app.answers.ramp import RampAnswer
+    from app.answers.ramp_design import DesignAnswer
+    from app.answers.ramp_sensitivity import SensitivityAnswer
+    from app.answers.waypoints import DeparturesAnswer, WaypointsAnswer
+    from app.commands.evaporate import Evaporated
+    from app.plan import StageChoice
+    from physics.waypoints import Departure
+
+_FEW = 8
+
+
+def evaporate_text(found: Evaporated) -> str:
+    """All that was asked for, as a readable page."""
+    blocks: list[list[str]] = []
+    if found.answer is not None:
+        blocks.append(_opening(found.answer))
+    if found.design is not None:
+        blocks += [_design(found.design), _trade_off(found.design)]
+    if found.answer is not None:
+        blocks += [_stages(found.answer), [ramp_verdict(found.answer)], _budget(found.answer), _limits(found)]
+    if found.waypoints is not None:
+        blocks.append(_waypoints(found.waypoints))
+        blocks.append(_departures(found.departures))
+    if found.sensitivity is not None:
+        planned = found.answer.run.final["atoms"] if found.answer is not None else math.nan
+        blocks.append(_sensitivity(found.sensitivity, planned))
+    if found.answer is not None:
+        blocks.append(_caveats(found.answer))
+    return "\n\n".join("\n".join(block) for block in blocks if block)
+
+
+def _opening(answer: RampAnswer) -> list[str]:
+    heading = _("{species}, {state}; kinetics of a cut thermal cloud").format(
+        species=answer.state.key, state=answer.state.name
+    )
+    if answer.measured is None:
+        return [heading]
+    cloud = _('from the measured cloud "{label}", {time} into the ramp').format(
+        label=answer.measured.choice.label, time=duration(answer.begin)
+    )
+    return [heading, cloud]
+
+
+def _stages(answer: RampAnswer) -> list[str]:
+    """One row for the start, and one at the end of each stage."""
+    run, rows = answer.run, answer.run.rows
+    if not len(run.time):
+        return []
+    ratio = _("T/Tc") if answer.bosons else _("T/TF")
+    header = (
+        _("stage"), _("until"), "N", "T", "D", ratio, "η", "Γ [1/s]", "γ", _("evaporated"), _("lost"),
+    )  # fmt: skip
+
+    def cloud(row: int) -> tuple[str, ...]:
+        return (
+            duration(float(run.time[row])),
+            number(float(rows.atoms[row]), 3),
+            temperature(float(rows.temperature[row])),
+            number(float(rows.peak_phase_space_density[row]), 3),
+            number(float(rows.reduced_temperature[row]), 3),
+            number(float(rows.truncation[row]), 2),
+            number(float(rows.elastic_collision_rate[row]), 2),
+        )
+
+    table = [header, (_("start"), *cloud(0), "", "", "")]
+    for stage in run.stages:
+        budget = stage.budget
+        cooled = budget.atoms[Process.EVAPORATED] + budget.atoms[Process.SPILLED]
+        lost = sum(budget.atoms[process] for process in (*LOSSES, Process.TRANSFER))
+        name = str(stage.number + 1 + answer.first) + (f" {stage.label}" if stage.label else "")
+        gamma = number(stage.efficiency, 2).replace("-", "−")
+        shares = (percent(max(part, 0.0) / budget.atoms_before) for part in (cooled, lost))
+        table.append((name, *cloud(stage.last), gamma, *shares))
+    return columns(table, right=range(1, len(header)))
+
+
+def _budget(answer: RampAnswer) -> list[str]:
+    """Where the atoms went."""
+    budget = answer.run.budget
+    lost = sum(budget.atoms.values())
+    if not lost > 1e-3 * budget.atoms_before:
+        return []
+    rows = [
+        (PROCESSES[process], number(atoms, 3), percent(atoms / lost))
+        for process, atoms in sorted(budget.atoms.items(), key=lambda item: -item[1])
+        if atoms > 0.0
+    ]
+    total = _("Of {before} atoms {lost} are lost, {left} are left").format(
+        before=number(budget.atoms_before, 3), lost=number(lost, 3), left=number(budget.atoms_after, 3)
+    )
+    return [total, *columns(rows, indent=2, right=(1, 2))]
+
+
+def _limits(found: Evaporated) -> list[str]:
+    """What limits: of a design what was found by easing each, of a simulation what its losses say."""
+    assert found.answer is not None
+    if found.design is None or not found.design.design.bounds:
+        said = limiting(found.answer)
+        return [said] if said else []
+    lines = [bound_text(bound, gain) for bound, gain in found.design.design.bounds]
+    return [_("What limits"), *(f"  {line}" for line in lines)]
+
+
+def _design(found: DesignAnswer) -> list[str]:
+    rows = [_stage_row(place, stage) for place, stage in enumerate(found.stages, start=1)]
+    return [design_sentence(found), *columns(rows, indent=2)]
+
+
+def _stage_row(place: int, stage: StageChoice) -> tuple[str, ...]:
+    moves = [
+        f"{move.control.label} {_('to')} {move.end.text if move.end is not None else move.points[-1][1].text}"
+        + f" ({move.shape.label})"
+        for move in stage.moves
+        if move.end is not None or move.points
+    ]
+    return (str(place), stage.duration.text, ", ".join(moves) or _("hold"))
+
+
+def _trade_off(found: DesignAnswer) -> list[str]:
+    """Final atoms and time against the truncation parameter that is held, and the most atoms in a time."""
+    trade = found.design.trade_off
+    even = np.linspace(0, len(trade.truncation) - 1, min(_FEW, len(trade.truncation))).round().astype(int)
+    rows = [
+        (
+            number(float(trade.truncation[k]), 3),
+            number(float(trade.atoms[k]), 3) if trade.reached[k] else "–",
+            duration(float(trade.time[k])) if trade.reached[k] else _("not reached"),
+        )
+        for k in dict.fromkeys(even.tolist())
+    ]
+    lines = [_("Held truncation parameter, and what it leaves at the target")]
+    lines += columns([("η", "N", _("after")), *rows], indent=2, right=(0, 1, 2))
+    if len(trade.times) > 1:
+        even = np.linspace(0, len(trade.times) - 1, min(_FEW, len(trade.times))).round().astype(int)
+        front = [
+            (duration(float(trade.times[k])), number(float(trade.best_atoms[k]), 3))
+            for k in dict.fromkeys(even.tolist())
+        ]
+        lines += ["", _("Most atoms at the target, by the time that it may take")]
+        lines += columns([(_("time"), "N"), *front], indent=2, right=(0, 1))
+    return lines
+
+
+def _waypoints(found: WaypointsAnswer) -> list[str]:
+    after = duration(found.expansion_time)
+    how = _("of the simulated ramp")
+    if found.efficiency is not None:
+        how = _("with an assumed efficiency of {gamma}").format(gamma=number(found.efficiency, 3))
+    lines = [_("Clouds to aim at, {how}; rms widths after {time} of expansion").format(how=how, time=after)]
+    if found.points:
+        moved = [
+            control
+            for control in found.points[0].controls
+            if len({point.controls.get(control) for point in found.points}) > 1 or len(found.points) == 1
+        ]
+        header = ("D", _("after"), "N", "T", *(c.label for c in moved), "U/k", "η", "Γ [1/s]", _("widths"))
+        rows = [
+            (
+                number(point.phase_space_density, 3),
+                "–" if math.isnan(point.time) else duration(point.time),
+                number(point.atoms, 3),
+                temperature(point.temperature),
+                *(control_text(c, point.controls.get(c, math.nan)) for c in moved),
+                format_quantity(
+                    point.depth, best_unit(point.depth, ("nK", "µK", "mK", "K"), "J"), digits=3, si_unit="J"
+                ),
+                number(point.truncation, 2),
+                number(point.collision_rate, 2),
+                _widths(point.widths),
+            )
+            for point in found.points
+        ]
+        lines += columns([header, *rows], indent=2, right=range(len(header)))
+    if found.missed:
+        missed = ", ".join(number(density, 3) for density in found.missed)
+        lines.append(_("Not reached: D = {missed}").format(missed=missed))
+    return lines
+
+
+def _widths(widths: tuple[float, float, float]) -> str:
+    if not all(math.isfinite(width) for width in widths):
+        return "–"
+    return " × ".join(number(1e6 * width, 3) for width in widths) + " µm"
+
+
+def _departures(found: tuple[DeparturesAnswer, ...]) -> list[str]:
+    """Atoms at the end for a cloud that is off at a waypoint, one row each."""
+    if not found:
+        return []
+    errors = [f'"{source}"' for source in sorted({one.source for one in found}) if source]
+    title = _("Atoms at the end, if the cloud is off at a waypoint by its measured error")
+    lines = [_("{title} (that of {clouds})").format(title=title, clouds=", ".join(errors)) if errors else title]
+    order = ((0, 0), (-1, 0), (1, 0), (0, -1), (0, 1))
+    header = ("D", _("off by"), _("as planned"), _("N less"), _("N more"), _("T less"), _("T more"))
+    rows = []
+    for one in found:
+        cells = {
+            (int(np.sign(d.atoms_factor - 1.0)), int(np.sign(d.temperature_factor - 1.0))): _left(d, one.departures[0])
+            for d in one.departures
+        }
+        errors_of = (("N", one.atoms_error), ("T", one.temperature_error))
+        off = ", ".join(f"{symbol} {percent(error)}" for symbol, error in errors_of if error > 0.0)
+        rows.append((number(one.waypoint.phase_space_density, 3), off, *(cells.get(sign, "–") for sign in order)))
+    return [*lines, *columns([header, *rows], indent=2, right=range(len(header)))]
+
+
+def _left(one: Departure, planned: Departure) -> str:
+    """Atoms at the end, and why it ended where that is not as planned."""
+    atoms = number(one.run.final["atoms"], 3)
+    return atoms if one.run.reason is planned.run.reason else f"{atoms}, {one.run.reason.label}"
+
+
+def _sensitivity(found: SensitivityAnswer, planned: float) -> list[str]:
+    change = percent(found.change)
+    rows = [(input_text(one), *change_text(one, planned)) for one in found.found]
+    header = ("", _("less"), _("more"))
+    return [
+        _("Atoms at the end, with each input {change} less or more").format(change=change),
+        *columns([header, *rows], indent=2, right=(1, 2)),
+    ]
+
+
+def _caveats(answer: RampAnswer) -> list[str]:
+    if not answer.caveats:
+        return []
+    lines = [f"  {SIGNS[c.severity]} {WEIGHTS[c.severity]}: {ramp_caveat_text(c)}" for c in answer.caveats]
+    return [_("What this answer does not cover"), *lines]
