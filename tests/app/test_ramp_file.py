@@ -86,7 +86,7 @@ def test_limits_are_in_the_unit_of_their_control(plan: Plan) -> None:
         fastest=quantity("40 uK/s", DEPTH_SPEED),
     )
     assert depth.fastest is not None
-    assert depth.fastest.value == pytest.approx(40e-6 * 1.380649e-23, rel=1e-14)
+    assert depth.fastest.value / 1.380649e-23 == pytest.approx(40e-6, rel=1e-14, abs=0.0)
     assert power == ControlLimits(control=Control(Knob.POWER, "A"), fastest=quantity("2 W/s", POWER_SPEED))
 
 
