@@ -250,7 +250,12 @@ def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
 
 def caveat_line(caveat: Caveat, answer: CloudAnswer) -> CaveatLine:
     """A caveat for reading: sign, word and sentence."""
-    return CaveatLine(_SIGNS[caveat.severity], _WORDS[caveat.severity], caveat_text(caveat, answer))
+    return line_of(caveat.severity, caveat_text(caveat, answer))
+
+
+def line_of(severity: Severity, sentence: str) -> CaveatLine:
+    """A sentence with the sign and the word of its weight."""
+    return CaveatLine(_SIGNS[severity], _WORDS[severity], sentence)
 
 
 def caveat_lines(answer: CloudAnswer) -> tuple[CaveatLine, ...]:

@@ -10,8 +10,9 @@ from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
 from app.commands.trouble import fail
 
 if TYPE_CHECKING:
-    from app.engine import CloudAnswer
+    from app.engine import CloudAnswer, MixtureAnswer
     from app.explanations import Explanation
+    from app.plan import Plan
     from app.quantities import Row
 
 
@@ -37,15 +38,45 @@ def run(args: argparse.Namespace) -> int:
     from app.engine import cloud_answer
 
     try:
-        answer = cloud_answer(plan_of(args))
+        plan = plan_of(args)
+        answer, mixture = cloud_answer(plan), _mixture(plan)
         explanations = _explanations(answer, args.explain)
     except (ValueError, OSError) as error:
         return fail(error)
     if args.json:
-        print(json_answer(args, state_body(answer) | _explained(explanations)))
+        print(json_answer(args, state_body(answer) | _passenger(mixture) | _explained(explanations)))
+    elif explanations:
+        print(_explained_text(answer, explanations))
     else:
-        print(_explained_text(answer, explanations) if explanations else state_text(answer))
+        print("\n\n\n".join([state_text(answer), *_passenger_text(mixture)]))
     return 0
+
+
+def _mixture(plan: Plan) -> MixtureAnswer | None:
+    if plan.passenger is None:
+        return None
+    from app.engine import mixture_answer
+
+    return mixture_answer(plan)
+
+
+def _passenger(mixture: MixtureAnswer | None) -> dict[str, Any]:
+    """What a passenger adds to the JSON object: nothing without one."""
+    if mixture is None:
+        return {}
+    from app.commands.mixture_report import mixture_body
+
+    own = None if mixture.passenger is None else state_body(mixture.passenger)
+    return {"passenger": mixture_body(mixture, own)}
+
+
+def _passenger_text(mixture: MixtureAnswer | None) -> list[str]:
+    if mixture is None:
+        return []
+    from app.commands.mixture_report import mixture_text
+
+    own = [] if mixture.passenger is None else [state_text(mixture.passenger)]
+    return [*own, mixture_text(mixture)]
 
 
 def _explanations(answer: CloudAnswer, names: Sequence[str]) -> list[Explanation]:

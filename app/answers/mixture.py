@@ -1,0 +1,123 @@
+"""A passenger in the trap of the plan: its cloud, and what the two clouds do to each other."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from app.answers.cloud import CloudAnswer, cloud_answer
+from app.answers.part import part
+from app.answers.passenger import between_of, passenger_plan
+from app.answers.trap import trap_answer
+from app.plan_field import PlanError
+from physics.caveats import Severity
+from physics.mixture_caveats import (
+    MixtureCaveat,
+    MixtureCaveatKind,
+    between_caveats,
+    gravest_first,
+    mixture_caveats,
+)
+from physics.mixtures import Mixture, Place
+from physics.pair_scattering import PairLength
+from physics.species import State, load_species
+
+if TYPE_CHECKING:
+    from app.plan import Plan
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class MixtureAnswer:
+    """Two clouds in one trap.
+
+    coolant : the cloud of the plan
+    state : of the passenger
+    passenger : its cloud by itself; None where the trap does not answer for it, for the reason
+    mixture : both together; None with it
+    between : the scattering length between the two
+    own_trap : whether the passenger's frequencies and depth follow from beams and coils; else they are those given
+    """
+
+    plan: Plan
+    coolant: CloudAnswer
+    state: State
+    passenger: CloudAnswer | None
+    mixture: Mixture | None
+    between: PairLength
+    own_trap: bool
+    caveats: tuple[MixtureCaveat, ...]
+    reason: str = ""
+
+    @property
+    def trapped(self) -> bool:
+        return self.passenger is not None
+
+    def value(self, name: str) -> float:
+        """A quantity of `app.mixture_quantities` by its NAME, in SI; NaN where it is unknown or does not apply."""
+        if name == "scattering_length_between":
+            return math.nan if self.between.value is None else self.between.value
+        return math.nan if self.mixture is None else float(getattr(self.mixture, name))
+
+
+@part("species", "trap", "cloud", "losses", "target", "passenger")
+def mixture_answer(plan: Plan) -> MixtureAnswer:
+    """The passenger of the plan beside its cloud.
+
+    Raises
+    ------
+    PlanError
+        There is no passenger, or none that can be; or the trap does not answer for the first species.
+    """
+    own = passenger_plan(plan)
+    between, own_trap = between_of(plan), not plan.trap.harmonic
+    coolant = cloud_answer(plan)
+    state = load_species(own.species.key).state(own.species.state)
+    passenger, mixture, reason = None, None, ""
+    caveats = [*between_caveats(between)]
+    try:
+        passenger = cloud_answer(own)
+    except PlanError as error:
+        if not own_trap:
+            raise
+        reason = str(error)
+        caveats.append(MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_NOT_HELD, severity=Severity.REFUSAL))
+    if passenger is not None:
+        efficiency = coolant.efficiency
+        mixture = Mixture(
+            coolant=coolant.equilibrium,
+            passenger=passenger.equilibrium,
+            places=(_place(plan), _place(own)),
+            scattering_length=between.value,
+            cooling=None if efficiency is None else (efficiency + 1.0) / 3.0,
+        )
+        caveats += mixture_caveats(mixture, lifetime=_lifetime(coolant, passenger))
+        if not own_trap:
+            caveats.append(MixtureCaveat(kind=MixtureCaveatKind.SAME_FREQUENCIES, severity=Severity.NOTE))
+    return MixtureAnswer(
+        plan=plan,
+        coolant=coolant,
+        state=state,
+        passenger=passenger,
+        mixture=mixture,
+        between=between,
+        own_trap=own_trap,
+        caveats=gravest_first(iter(caveats)),
+        reason=reason,
+    )
+
+
+def _place(plan: Plan) -> Place:
+    """Of atoms whose frequencies are given, the centre; gravity is in them."""
+    if plan.trap.harmonic:
+        return Place()
+    survey = trap_answer(plan).survey
+    return Place(minimum=survey.minimum, axes=np.eye(3) if survey.axes is None else survey.axes)
+
+
+def _lifetime(*answers: CloudAnswer) -> float:
+    rates = [float(answer.solution.rates.total_loss_rate) for answer in answers]
+    known = [rate for rate in rates if math.isfinite(rate) and rate > 0.0]
+    return 1.0 / max(known) if known else math.inf

@@ -1,0 +1,169 @@
+"""The plan's ramp with its passenger: the first species evaporates, the passenger follows, both against time."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from app.answers.part import part
+from app.answers.passenger import between_of, passenger_plan
+from app.answers.ramp_inputs import gas_of, losses_of, path_of, state_of, target_of
+from app.answers.ramp_start import start_of
+from app.plan_field import PlanError
+from physics.caveats import Severity
+from physics.constants import boltzmann
+from physics.mixture_caveats import (
+    MixtureCaveat,
+    MixtureCaveatKind,
+    between_caveats,
+    gravest_first,
+    sympathetic_caveats,
+)
+from physics.pair_scattering import PairLength
+from physics.species import State
+
+if TYPE_CHECKING:
+    from app.answers.watched_path import Tick
+    from app.plan import Plan
+    from physics.ramps import Ramp
+    from physics.sympathetic import SympatheticCooling
+    from physics.trap_path import TrapPath
+
+SYMPATHETIC_FIELDS = ("species", "trap", "cloud.atoms", "cloud.temperature", "losses", "target", "ramp", "passenger")
+"""What a ramp with a passenger depends on."""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class SympatheticAnswer:
+    """A simulated ramp with a passenger.
+
+    states : of the first species and of the passenger
+    run : columns, budget and end of both; the columns of the passenger may end earlier
+    between : the scattering length between the two
+    caveats : of the two together; those of the first alone are in the ramp's answer
+    """
+
+    plan: Plan
+    states: tuple[State, State]
+    run: SympatheticCooling
+    between: PairLength
+    caveats: tuple[MixtureCaveat, ...]
+
+    @property
+    def passenger_reduced_temperature(self) -> float:
+        """T/Tc or T/TF of the passenger at the end of its columns; NaN where it was never held. [1]"""
+        return self.run.passenger.final["reduced_temperature"]
+
+
+def sympathetic_answer(plan: Plan, tick: Tick | None = None) -> SympatheticAnswer:
+    """The plan's ramp with its passenger.
+
+    A trap of beams and coils is surveyed along the ramp for both species, for seconds where it was not before; `tick`
+    is told how far that is, and `Cancelled` raised where it says to stop.
+
+    Raises
+    ------
+    PlanError
+        There is no passenger or no ramp; the scattering length between the two is not known; or no trap of the plan
+        can follow the ramp.
+    ValueError
+        The first species has a scattering length that is needed and not known; or numbers that nothing can follow.
+    """
+    kept = _sympathetic.kept(plan)
+    if kept is None and tick is not None:
+        kept = _simulated(plan, tick)
+        _sympathetic.take(kept, plan)
+    return kept if kept is not None else _sympathetic(plan)
+
+
+@part(*SYMPATHETIC_FIELDS)
+def _sympathetic(plan: Plan) -> SympatheticAnswer:
+    return _simulated(plan, None)
+
+
+def _simulated(plan: Plan, tick: Tick | None) -> SympatheticAnswer:
+    from physics.sympathetic import Passenger, evaporate_with_passenger
+
+    own, between = passenger_plan(plan), between_of(plan)
+    if between.value is None:
+        assert between.reason is not None
+        raise PlanError(f"{between.reason.value}; give passenger.scattering_length")
+    start = start_of(plan)
+    if start.ramp is None or any(stage.transfer is not None for stage in start.ramp.stages):
+        raise PlanError("a ramp that hands the cloud over to another trap is not computed with a second species")
+    ramp, path = start.ramp, start.path
+    own_path, caveats = _path_of(own, ramp)
+    if tick is not None:
+        from app.answers.watched_path import Progress, WatchedPath, surveys_along, watched_ramp
+
+        progress = Progress(tick=tick, surveys=surveys_along(ramp, path) + surveys_along(ramp, own_path))
+        ramp, path = watched_ramp(ramp, progress), WatchedPath(path=path, progress=progress)
+        own_path = WatchedPath(path=own_path, progress=progress)
+    gas = gas_of(own)
+    passenger = Passenger(
+        gas=gas,
+        path=own_path,
+        atoms=own.cloud.atoms.value,
+        temperature=own.cloud.temperature.value,
+        scattering_length=between.value,
+        losses=losses_of(own),
+    )
+    run = evaporate_with_passenger(
+        gas_of(plan),
+        start.atoms,
+        start.temperature,
+        ramp,
+        path,
+        passenger,
+        losses=losses_of(plan),
+        target=target_of(plan),
+    )
+    if gas.scattering_length is None and passenger.colliding is not gas:
+        caveats.append(MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_LENGTH_UNKNOWN, severity=Severity.NOTE))
+    if plan.trap.harmonic:
+        caveats.append(MixtureCaveat(kind=MixtureCaveatKind.SAME_FREQUENCIES, severity=Severity.NOTE))
+    return SympatheticAnswer(
+        plan=plan,
+        states=(state_of(plan), state_of(own)),
+        run=run,
+        between=between,
+        caveats=gravest_first(iter([*between_caveats(between), *caveats, *sympathetic_caveats(run)])),
+    )
+
+
+def _path_of(own: Plan, ramp: Ramp) -> tuple[TrapPath, list[MixtureCaveat]]:
+    """The passenger's trap. Of given frequencies the depth is that of the plan, and stays where a ramp moves the depth
+    by itself: that cuts the first species."""
+    from physics.trap_path import DEPTH, HarmonicPath
+
+    path = path_of(own)
+    depths = list(_values_of_depth(ramp))
+    if not isinstance(path, HarmonicPath):
+        return path, []
+    if path.trap.depth is None:
+        depth = max(depths)  # the ramp gives one, else it could not be followed
+        trap = replace(path.trap, depth=depth)
+        return replace(path, trap=trap), [_depth_caveat(MixtureCaveatKind.PASSENGER_DEPTH_UNKNOWN, depth)]
+    if not math.isnan(path.standing[DEPTH]) and depths:
+        return path, [_depth_caveat(MixtureCaveatKind.PASSENGER_DEPTH_STAYS, float(path.trap.depth))]
+    return path, []
+
+
+def _values_of_depth(ramp: Ramp) -> Iterator[float]:
+    from physics.trap_path import DEPTH
+
+    for stage in ramp.stages:
+        for move in stage.moves:
+            if move.control == DEPTH:
+                yield move.last
+                if move.start is not None:
+                    yield move.start
+                yield from (value for _, value in move.points)
+
+
+def _depth_caveat(kind: MixtureCaveatKind, depth: float) -> MixtureCaveat:
+    return MixtureCaveat(kind=kind, severity=Severity.NOTE, value=float(np.float64(depth) / boltzmann))
