@@ -1,7 +1,8 @@
 """The Plan and everything that makes one: files, flags, forms.
 
-The dataclasses and the tables of fields are in `app.choices` and `app.trap_choices`, the file format in
-`app.plan_file`; other modules import them from here.
+The dataclasses are in `app.choices`, `app.trap_choices`, `app.ramp_choices` and `app.candidate_choices`, the tables of
+fields there and in `app.ramp_fields` and `app.candidate_fields`, the file format in `app.plan_file`; other modules
+import them from here.
 """
 
 from __future__ import annotations
@@ -148,10 +149,11 @@ def with_same_change(plan: Plan, before: Plan, after: Plan) -> Plan:
         old, new = getattr(before, section.name), getattr(after, section.name)
         if old == new or not section.compare:
             continue
-        if is_dataclass(new) and not isinstance(new, type):
+        own = getattr(plan, section.name)
+        if is_dataclass(new) and not isinstance(new, type) and old is not None and own is not None:
             parts = {part.name: getattr(new, part.name) for part in fields(new)}
             parts = {name: value for name, value in parts.items() if value != getattr(old, name)}
-            new = replace(getattr(plan, section.name), **parts)
+            new = replace(own, **parts)
         changes[section.name] = new
     return replace(plan, **changes)
 

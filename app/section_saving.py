@@ -9,11 +9,12 @@ from __future__ import annotations
 import tomllib
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
+from functools import partial
 from types import MappingProxyType
 from typing import Any
 
 from app.plan_field import PlanField
-from app.toml_blocks import Block, blocks_of, joined, with_lines
+from app.toml_blocks import Block, blocks_of, joined, replaced, with_lines
 from app.toml_entries import missing_lines, put_changed, section_text, written
 
 _NOTHING: Mapping[str, Any] = MappingProxyType({})
@@ -94,7 +95,7 @@ def with_sections(text: str, old: Sections, new: Sections) -> str | None:
         blocks = [
             Block(path, section.text) if n is None else slots[n] for n, section in zip(sources, news, strict=True)
         ]
-        after = _replaced(after, slots, blocks)
+        after = replaced(after, slots, blocks, partial(_home, path))
     groups = _groups(joined(after, before), old)
     for path, found in pairs.items():
         places = [place for place, block in enumerate(groups) if block.path == path]
@@ -135,24 +136,12 @@ def _groups(text: str, sections: Sections) -> list[Block]:
     return groups
 
 
-def _replaced(blocks: Sequence[Block], old: Sequence[Block], new: Sequence[Block]) -> list[Block]:
-    """Blocks with the new ones in the places of the old ones; those that are left over follow the last of these. Where
-    there was none, they stand before the sections within their own, else after their neighbours, else at the end."""
-    waiting = list(new)
-    result: list[Block] = []
-    end = None
-    for block in blocks:
-        if block not in old:
-            result.append(block)
-        elif waiting:
-            result.append(waiting.pop(0))
-            end = len(result)
-    if end is None and waiting:
-        path = waiting[0].path
-        within = [place for place, block in enumerate(result) if block.path.startswith(f"{path}.")]
-        beside = [n for n, block in enumerate(result, start=1) if block.path.split(".")[0] == path.split(".")[0]]
-        end = within[0] if within else beside[-1] if beside else len(result)
-    return [*result[:end], *waiting, *result[end:]] if waiting else result
+def _home(path: str, blocks: Sequence[Block]) -> int:
+    """Where the first section of a path goes: before those within it, else after its neighbours, else at the end."""
+    within = [place for place, block in enumerate(blocks) if block.path.startswith(f"{path}.")]
+    root = path.split(".")[0]
+    beside = [place for place, block in enumerate(blocks, start=1) if block.path.split(".")[0] == root]
+    return within[0] if within else beside[-1] if beside else len(blocks)
 
 
 def _changed(text: str, old: Section, new: Section) -> str | None:

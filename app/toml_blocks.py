@@ -8,7 +8,7 @@ read the result and compare.
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -60,6 +60,27 @@ def joined(blocks: Sequence[Block], before: Sequence[Block]) -> str:
         text += block.text if block in before else block.text.replace("\n", end)
         last = block
     return text if not before or last is before[-1] else text.rstrip() + end
+
+
+def replaced(
+    blocks: Sequence[Block], old: Sequence[Block], new: Sequence[Block], home: Callable[[Sequence[Block]], int]
+) -> list[Block]:
+    """Blocks with the new ones in the places of the old ones; those that are left over follow the last of these.
+
+    home : where there was no old one, the place of the first new one among the other blocks
+    """
+    waiting = list(new)
+    result: list[Block] = []
+    end = None
+    for block in blocks:
+        if block not in old:
+            result.append(block)
+        elif waiting:
+            result.append(waiting.pop(0))
+            end = len(result)
+    if end is None:
+        end = home(result)
+    return [*result[:end], *waiting, *result[end:]]
 
 
 def with_lines(block: Block, lines: Sequence[str], *, first: bool = False) -> Block:

@@ -6,7 +6,7 @@ import tomllib
 from collections.abc import Sequence
 from typing import Any
 
-from app.toml_blocks import Block, blocks_of, joined, with_lines
+from app.toml_blocks import Block, blocks_of, joined, replaced, with_lines
 from app.toml_entries import missing_lines, put_changed, section_text
 from app.trap_choices import BEAM_FIELDS, BEAMS, COILS, COILS_FIELDS, BeamChoice, CoilsChoice, TrapChoice
 from app.trap_file import USUAL, beam_entries, beam_names, coils_entries
@@ -54,27 +54,17 @@ def rearranged(text: str, old: TrapChoice | None, new: TrapChoice) -> str | None
     ]
     if new.harmonic and not any(block.path == "trap" for block in before):
         beams = [Block("trap", "[trap]\n")]
-    after = _replaced(before, slots, beams)
+    after = replaced(before, slots, beams, _home)
     if not (had_coils and new.coils is not None):
-        after = _replaced(after, coils, [] if new.coils is None else [Block(COILS, coils_text(new.coils))])
+        own = [] if new.coils is None else [Block(COILS, coils_text(new.coils))]
+        after = replaced(after, coils, own, _home)
     return joined(after, before)
 
 
-def _replaced(blocks: Sequence[Block], old: Sequence[Block], new: Sequence[Block]) -> list[Block]:
-    """Blocks with the new ones in the places of the old ones; those that are left over follow the last of these, or
-    else the trap's or the species' last block, or the whole file."""
-    waiting = list(new)
-    result: list[Block] = []
-    end = 0
-    for block in blocks:
-        if block not in old:
-            result.append(block)
-        elif waiting:
-            result.append(waiting.pop(0))
-            end = len(result)
-    homes = [[place for place, b in enumerate(result, start=1) if b.path.split(".")[0] == home] for home in _HOMES]
-    end = end or next((places[-1] for places in homes if places), len(result))
-    return [*result[:end], *waiting, *result[end:]]
+def _home(blocks: Sequence[Block]) -> int:
+    """Where the first beam or the coils go: after the trap's or else the species' last block, or at the end."""
+    homes = [[place for place, b in enumerate(blocks, start=1) if b.path.split(".")[0] == home] for home in _HOMES]
+    return next((places[-1] for places in homes if places), len(blocks))
 
 
 _HOMES = ("trap", "species")

@@ -375,6 +375,22 @@ def test_a_change_can_be_made_to_another_plan_too() -> None:
         with_same_change(plan_with(other, {"species.scattering_length": "9 a0"}), DEFAULT_PLAN, field)
 
 
+def test_the_same_change_is_made_to_a_plan_with_and_without_a_passenger() -> None:
+    whole = read_plan(DATA / "plan_version_1.toml")
+    without = dataclasses.replace(whole, passenger=None, ramp=())
+    plain = parse_plan(PLAIN, "a.toml")
+    came = with_same_change(plain, without, whole)
+    assert (came.passenger, came.ramp) == (whole.passenger, whole.ramp)
+    gone = with_same_change(came, whole, without)
+    assert (gone.passenger, gone.ramp) == (None, ())
+    assert whole.passenger is not None
+    longer = dataclasses.replace(
+        whole,
+        passenger=dataclasses.replace(whole.passenger, scattering_length=read_quantity("3 a0", SCATTERING_LENGTH)),
+    )
+    assert with_same_change(plain, whole, longer).passenger == longer.passenger
+
+
 # --- saving ----------------------------------------------------------------------------------------------------------
 
 
