@@ -10,6 +10,7 @@ from PySide6.QtWidgets import QDialog, QDialogButtonBox, QLabel, QTextBrowser, Q
 
 from app import __version__
 from app.quantities import Group, rows_in
+from app.trap_words import COILS_CAUTION, LIGHT_CAUTION
 from app.window.actions import ACTIONS, MenuName, key_sequences
 
 NOTICE = (
@@ -46,6 +47,7 @@ class AboutDialog(QDialog):
             f"<h2>Coldward {__version__}</h2>"
             "<p>Plans the cooling of trapped atoms to a Bose-Einstein condensate or a degenerate Fermi gas.</p>"
             f"<p>{escape(NOTICE)}</p>"
+            f"<p>{escape(LIGHT_CAUTION)}</p><p>{escape(COILS_CAUTION)}</p>"
             "<p>Coldward is free software under the BSD-3-Clause licence. Its window is made with Qt for Python "
             "(PySide6), used unmodified under the GNU Lesser General Public License, version 3; Qt's libraries stay "
             f"separate files that can be replaced.</p><p>Qt {escape(qVersion())}</p>"

@@ -91,6 +91,8 @@ def test_about_names_licences_and_what_the_numbers_are_for(window: MainWindow) -
         "Lesser General Public License",
         "planning estimates",
         "no hardware",
+        "IEC 60825-1 or ANSI Z136.1",
+        "0.5 mT",
     ):
         assert words in text
 
