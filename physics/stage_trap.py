@@ -124,8 +124,6 @@ class StageTrap:
         """Times of the points: even steps of one moving control, of all logarithms together where several move."""
         if not moving:
             return np.array([begin])
-        if self._single is None:
-            nodes = 2 * nodes
         fine = np.linspace(begin, end, 20 * nodes + 1)
         path = np.zeros(len(fine))
         for course in moving:
