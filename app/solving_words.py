@@ -17,7 +17,7 @@ if TYPE_CHECKING:
 def change_lines(solved: SolvedTrap) -> list[str]:
     """A line for each number that changes: its name, what it was, what it becomes."""
     return [
-        _("{name}: {before} → {after}").format(name=_begun(name), before=_text(before), after=after.text)
+        _("{name}: {before} → {after}").format(name=_begun(name), before=_text(before), after=_text(after))
         for name, before, after in solved.changes
     ]
 
@@ -47,8 +47,9 @@ def _of(answer: TrapAnswer, text: Callable[[TrapAnswer], str]) -> str:
     return text(answer) if answer.trapped else _("not trapped")
 
 
-def _text(before: Quantity | None) -> str:
-    return _("none") if before is None else before.text
+def _text(quantity: Quantity | None) -> str:
+    """A quantity, or that there is none; a line may end before it, and not before its unit."""
+    return _("none") if quantity is None else quantity.text.replace(" ", "\N{NO-BREAK SPACE}")
 
 
 def _begun(name: str) -> str:

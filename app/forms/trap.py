@@ -53,7 +53,7 @@ class TrapForm(Form):
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__("Trap", parent)
-        self.by_frequencies, self.by_beams = QRadioButton("F&requencies"), QRadioButton("Beams and c&oils")
+        self.by_frequencies, self.by_beams = QRadioButton("Fre&quencies"), QRadioButton("Beams and coils")
         self.by_frequencies.setToolTip("The trap is given by three frequencies and, if known, its depth")
         self.by_beams.setToolTip("The trap is made of laser beams and magnetic coils; frequencies and depth follow")
         self._add_choice()

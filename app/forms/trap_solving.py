@@ -8,7 +8,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QWidget
+from PySide6.QtWidgets import QLabel, QPushButton, QWidget
 
 from app.answers.trap_solving import Aim, SolvedTrap, Wish
 from app.figures.profile import AXES
@@ -67,14 +67,10 @@ class SolvingCard(Form):
         )
         self.apply = QPushButton("Take it")
         self.apply.clicked.connect(self._take)
-        self._buttons = QWidget()
-        row = QHBoxLayout(self._buttons)
-        row.setContentsMargins(0, 2, 0, 0)
-        row.addWidget(self.button)
-        row.addWidget(self.apply)
-        row.addStretch(1)
-        self._grid.addWidget(self._buttons, self._row, 0, 1, 2)
+        left = Qt.AlignmentFlag.AlignLeft
+        self._grid.addWidget(self.button, self._row, 1, left)
         self._grid.addWidget(self.result, self._row + 1, 0, 1, 2)
+        self._grid.addWidget(self.apply, self._row + 2, 1, left)
         self.head.folded_changed.connect(self.set_unfolded)
         self.set_unfolded(False)
 
@@ -111,7 +107,7 @@ class SolvingCard(Form):
     def set_unfolded(self, unfolded: bool) -> None:
         """Show or hide all but the title."""
         self.head.set_unfolded(unfolded)
-        self._buttons.setVisible(unfolded)
+        self.button.setVisible(unfolded)
         self.result.setVisible(unfolded and bool(self.result.text()))
         self._show_rows()
 

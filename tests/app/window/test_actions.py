@@ -6,7 +6,7 @@ import pytest
 from PySide6.QtCore import QPoint, Qt
 from PySide6.QtGui import QKeySequence
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QApplication, QLabel, QMenu, QWidget
+from PySide6.QtWidgets import QAbstractButton, QApplication, QLabel, QMenu, QWidget
 from pytestqt.qtbot import QtBot
 
 from app.window.actions import ACTIONS, MenuName, key_sequences
@@ -68,6 +68,8 @@ def test_mnemonics_of_the_window_are_unique(window: MainWindow) -> None:
     letters += [mnemonic(label.text()) for label in window.desk.findChildren(QLabel) if label.buddy() is not None]
     assert len(letters) >= 18
     assert "" not in letters
+    buttons = window.desk.bench.findChildren(QAbstractButton)
+    letters += [letter for button in buttons if (letter := mnemonic(button.text()))]
     assert [letter for letter, count in Counter(letters).items() if count > 1] == []
 
 
@@ -144,7 +146,7 @@ def test_panes_are_reached_one_after_the_other(window: MainWindow, qtbot: QtBot)
 
 
 def test_every_input_and_plot_has_a_name_a_tip_and_help(window: MainWindow) -> None:
-    from PySide6.QtWidgets import QAbstractButton, QComboBox, QLineEdit
+    from PySide6.QtWidgets import QComboBox, QLineEdit
 
     desk = window.desk
     widgets = [w for kind in (QLineEdit, QComboBox) for w in desk.bench.findChildren(kind)]

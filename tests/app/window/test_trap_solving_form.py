@@ -40,6 +40,10 @@ def card(crossed: MainWindow) -> SolvingCard:
     return card
 
 
+def result_of(card: SolvingCard) -> str:
+    return card.result.text().replace("\N{NO-BREAK SPACE}", " ")
+
+
 def choose(box: Choice, data: object) -> None:
     index = box.findData(data)
     box.setCurrentIndex(index)
@@ -65,7 +69,7 @@ def test_a_power_for_a_depth_is_read_before_it_is_taken(crossed: MainWindow, car
     assert threads
     assert threading.get_ident() not in threads
     assert crossed.document.plan == plan
-    first, frequencies, depth, _sag = card.result.text().splitlines()
+    first, frequencies, depth, _sag = result_of(card).splitlines()
     assert first.startswith("Power of beam long: 520(5) mW → ")
     assert frequencies.startswith("Frequencies: ")
     assert depth == "Depth: 6.78 µK → 12.0 µK"
@@ -89,7 +93,7 @@ def test_a_measured_frequency_calibrates_a_waist(crossed: MainWindow, card: Solv
     QTest.keyClicks(card.frequency_field, "150 Hz")
     QTest.keyClick(card.button, Qt.Key.Key_Space)
     settle(crossed)
-    assert card.result.text().startswith("Waist of beam long: 72(2) um → 74.")
+    assert result_of(card).startswith("Waist of beam long: 72(2) um → 74.")
     card.apply.click()
     settle(crossed)
     assert trap_answer(crossed.document.plan).survey.frequencies[2] == pytest.approx(150.0, rel=1e-4)
@@ -112,7 +116,7 @@ def test_the_gradient_that_levitates_brings_coils(crossed: MainWindow, card: Sol
     assert not card.beam.isVisible()
     card.button.click()
     settle(crossed)
-    assert "Levitation of the coils: none → 30.4" in card.result.text()
+    assert "Levitation of the coils: none → 30.4" in result_of(card)
     card.apply.click()
     coils = crossed.document.plan.trap.coils
     assert coils is not None
