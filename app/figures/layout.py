@@ -84,11 +84,13 @@ def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, flo
     rows = _legend_rows(entries, theme, width - 2.0 * PAD, measure)
     if height - below - title_height - len(rows) * line < 4.0 * SMALLEST:
         rows = ()
-    if height - below - title_height < 2.0 * SMALLEST:
+    # A small multiple has nothing but its title to say what it shows.
+    if height - below - title_height < (2.0 if picture.y.titled else 1.1) * SMALLEST:
         title_height = 0.0
     above = PAD + title_height + len(rows) * line + (6.0 if rows else 2.0)
     inner_height = max(height - below - above, SMALLEST)
-    y_ticks = ticks_of(picture.y, max(2, int(inner_height / (2.6 * theme.small_size))))
+    room_of_tick = (2.6 if picture.y.titled else 1.6) * theme.small_size
+    y_ticks = ticks_of(picture.y, max(2, int(inner_height / room_of_tick)))
     # Title and legend stand above the axes from the left edge on: what is taller than the axes would run into them.
     tallest = inner_height + 6.0
     y_title = "\n".join(

@@ -8,6 +8,7 @@ was not met before is first surveyed, on a worker of its own; while it is, the l
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from functools import partial
 from typing import TYPE_CHECKING, Any, Protocol
 
@@ -108,11 +109,13 @@ class Answers(QObject):
         self.cloud_count += 1
         newest = plan == self._plan
         try:
-            self.cloud = cloud_answer(plan)
+            cloud = cloud_answer(plan)
         except (ValueError, OSError, ArithmeticError) as error:
             if newest:
                 self._fail(str(error))
             return
+        # Kept answers belong to plans that may differ in what the cloud does not depend on, such as the ramp.
+        self.cloud = cloud if cloud.plan == plan else replace(cloud, plan=plan)
         self.current = newest
         self.failure = "" if newest else self.failure
         self.cloud_ready.emit(self.cloud)

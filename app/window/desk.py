@@ -10,11 +10,13 @@ from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QApplication, QLabel, QSplitter, QTabWidget, QVBoxLayout, QWidget
 
 from app.figures.theme import Theme
+from app.pages.candidates import CandidatesPage
 from app.pages.collisions import CollisionsPage
 from app.pages.field import FieldPage
 from app.pages.map import MapPage
 from app.pages.models import ModelsPage
 from app.pages.profile import ProfilePage
+from app.pages.ramp import RampPage
 from app.pages.slices import SlicesPage
 from app.pages.trap import TrapPage
 from app.widgets.caveats import Caveats
@@ -41,16 +43,19 @@ class Desk(QWidget):
         self.verdict = Verdict()
         self.bench = Bench()
         self.map, self.slices, self.profile = MapPage(theme), SlicesPage(theme), ProfilePage(theme)
-        self.trap = TrapPage(theme)
+        self.trap, self.ramp = TrapPage(theme), RampPage(theme)
         self.field, self.collisions, self.models = FieldPage(theme), CollisionsPage(theme), ModelsPage(theme)
+        self.candidates = CandidatesPage(theme)
         self.pages: tuple[Page, ...] = (
             self.map,
             self.slices,
             self.profile,
             self.trap,
+            self.ramp,
             self.field,
             self.collisions,
             self.models,
+            self.candidates,
         )
         self.tabs = QTabWidget()
         self.tabs.setDocumentMode(True)

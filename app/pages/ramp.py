@@ -1,0 +1,427 @@
+"""The Ramp page: what becomes of the cloud along its evaporation, and the stages to be edited."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from functools import cached_property
+from typing import TYPE_CHECKING, Any
+
+from PySide6.QtCore import QEvent, QObject, Qt
+from PySide6.QtGui import QKeyEvent, QShowEvent
+from PySide6.QtWidgets import QWidget
+
+from app.engine import CloudAnswer
+from app.figures.theme import Theme
+from app.newest import Job, Steps, Watch
+from app.plan import Plan
+from app.widgets.banner import Offer
+from app.widgets.page import Page
+
+if TYPE_CHECKING:
+    from app.answers.ramp import RampAnswer
+    from app.answers.ramp_inputs import MeasuredCloud
+    from app.figures.ramp_columns import Course
+    from app.figures.ramp_controls import Handle
+    from app.widgets.ramp_panel import RampPanel
+    from app.widgets.ramp_plots import Scene
+
+HINT = "Point at a time, or use the left and right arrow keys, to read all values"
+_STEP = "ramp"
+_NO_RAMP = "This plan has no ramp yet."
+_START = "Start from a usual one, which lowers the trap to a tenth in five seconds, or let one be designed."
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Found:
+    """What the worker hands out. plan : to which it belongs. failure : why there is no answer, else empty."""
+
+    plan: Plan
+    ramp: RampAnswer | None = None
+    rest: RampAnswer | None = None
+    measured: tuple[MeasuredCloud, ...] = ()
+    extra: Any = None
+    failure: str = ""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Reference:
+    """A ramp that was kept to compare with."""
+
+    name: str
+    answer: RampAnswer
+
+
+class RampPage(Page):
+    """Attributes: references, the ramps kept; reading, the time that is read [s] or None."""
+
+    title = "Ramp"
+
+    def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
+        super().__init__(theme, parent)
+        self.references: list[Reference] = []
+        self.reading: float | None = None
+        self.since: str | None = None  # label of the measured cloud from which the rest is drawn
+        self._found: Found | None = None
+        self._under_way: object = None  # plan of a quick job that was asked for and has not come back
+        self._overtaken = False
+        self._drag = 0
+        self._written: Plan | None = None  # as it was before the drag that is under way
+        self._built = False
+        self._bounds: tuple[float, ...] = ()  # ends of the stages on show [s]
+
+    # ---------------------------------------------------------------- building, when first seen
+
+    @cached_property
+    def panel(self) -> RampPanel:
+        """All that is on the page; built when it is first shown, so that a start does not wait for it."""
+        from app.widgets.ramp_panel import RampPanel
+
+        panel = RampPanel(self)
+        self.column.addWidget(panel, 1)
+        panel.body.addWidget(self.bar)
+        panel.columns.time_read.connect(self.read_time)
+        panel.controls.time_read.connect(self.read_time)
+        panel.controls.handle_dragged.connect(self._drag_to)
+        panel.controls.handle_released.connect(self._end_drag)
+        panel.stages.plan_edited.connect(self.plan_edited)
+        panel.stages.problem_changed.connect(self._problem_changed)
+        panel.view_changed.connect(self._view_changed)
+        panel.keep.clicked.connect(self.keep_reference)
+        panel.drop.clicked.connect(self.drop_references)
+        self.bar.status.say(HINT)
+        self._built = True
+        return panel
+
+    def showEvent(self, event: QShowEvent) -> None:
+        self.panel.show()
+        self._under_way = None
+        super().showEvent(event)
+
+    # ---------------------------------------------------------------- answers
+
+    def part(self, plan: Plan) -> Job | None:
+        from app.answers.ramp import kept_ramp
+
+        if not self._built:
+            return None
+        if not plan.ramp and not self.panel.extra_wanted(plan):
+            return None
+        if self._is_answered(plan):
+            return None
+        quick = plan.trap.harmonic and all(stage.trap is None or stage.trap.harmonic for stage in plan.ramp)
+        if quick and kept_ramp(plan, None) is None:
+            # A drag brings plans faster than they can be simulated: each that is under way is finished and shown, and
+            # the newest then follows, instead of all being overtaken.
+            if self._under_way is not None:
+                self._overtaken = True
+                return None
+            self._under_way = plan
+        return self._job(plan)
+
+    def _is_answered(self, plan: Plan) -> bool:
+        found = self._found
+        return found is not None and self._key(found.plan) == self._key(plan) and self.panel.has_extra(plan)
+
+    def _key(self, plan: Plan) -> object:
+        from app.answers.ramp_jobs import ramp_depends_on
+
+        return ramp_depends_on(plan), self.since
+
+    def _job(self, plan: Plan) -> Steps:
+        since = self.since
+        extra, extra_key = self.panel.extra_job(plan)
+
+        def run(watch: Watch) -> Found | None:
+            found = _simulated(plan, since, watch)
+            if found is None or extra is None:
+                return found
+            if not watch.deliver(found):
+                return None
+            try:
+                more = extra.run(watch)
+            except (ValueError, OSError, ArithmeticError, RuntimeError) as error:
+                return replace(found, extra=error)
+            return None if more is None else replace(found, extra=more)
+
+        what = "ramp" if extra is None else extra.what
+        return Steps(what=what, depends_on=(self.title, self._key(plan), extra_key), run=run)
+
+    def take_part(self, answer: Any) -> None:
+        self._under_way = None
+        if answer is None:
+            return
+        self._found = answer
+        if answer.extra is not None:
+            self.panel.take_extra(answer.plan, answer.extra)
+        self._show()
+        if self._overtaken:
+            self._overtaken = False
+            self.part_wanted.emit()
+
+    def show_end(self, *, stopped: bool) -> None:
+        super().show_end(stopped=stopped)
+        if stopped:
+            self._under_way = None
+
+    # ---------------------------------------------------------------- showing
+
+    def show_cloud(self, cloud: CloudAnswer) -> None:
+        super().show_cloud(cloud)
+        if self._built and self.isVisible():
+            self._show()
+
+    def mark_stale(self, reason: str) -> None:
+        if self._built:
+            super().mark_stale(reason)
+
+    def set_theme(self, theme: Theme) -> None:
+        super().set_theme(theme)
+        if self._built:
+            self.panel.set_theme(theme)
+
+    @property
+    def answer(self) -> RampAnswer | None:
+        """The simulated ramp on show."""
+        return None if self._found is None else self._found.ramp
+
+    def _show(self) -> None:
+        """The stages of the newest plan at once, and the newest simulation there is."""
+        from app.answers.ramp_inputs import path_of, ramp_of
+        from app.figures.ramp_controls import control_curves
+
+        if self.cloud is None:
+            return
+        plan, panel = self.cloud.plan, self.panel
+        panel.set_plan(plan)
+        if not plan.ramp:
+            self._found = None if self._found is not None and self._found.plan.ramp else self._found
+            panel.show_empty(_NO_RAMP, _START, self._offers(plan))
+            return
+        panel.show_ramp()
+        try:
+            ramp = ramp_of(plan)
+            curves = control_curves(ramp, path_of(plan).standing)
+        except ValueError as error:
+            panel.tell(str(error), "")
+            super().mark_stale("last good answer")
+            return
+        scene = self._scene(plan, ramp.duration)
+        self._bounds = scene.bounds
+        panel.controls.show_curves(curves, scene, self.reading)
+        found = self._found
+        if found is None:
+            return
+        if found.failure:
+            panel.tell(f"{found.failure}.", "")
+            super().mark_stale("last good answer")
+            return
+        if found.ramp is not None:
+            from app.ramp_words import ramp_verdict
+
+            panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
+            panel.table.show_ramp(found.ramp)
+            panel.columns.show_courses(self._courses(found), scene, _points(found.measured), self.reading)
+        if not panel.stages.problem:
+            for plot in self._plots:
+                plot.canvas.set_stale(False)
+        self._say_values()
+
+    def _detail(self, answer: RampAnswer) -> str:
+        """When it condenses, what limits, what to change, and how it compares."""
+        from app.ramp_advice import advice, difference, onset
+
+        beside = [f"Beside “{ref.name}”: {difference(answer, ref.answer)}." for ref in self.references]
+        return " ".join(part for part in (onset(answer), advice(answer).text, *beside) if part)
+
+    def _scene(self, plan: Plan, duration: float) -> Scene:
+        from app.figures.ramp_columns import round_end
+        from app.widgets.ramp_plots import Scene
+
+        ends = [duration, *(float(ref.answer.run.time[-1]) for ref in self.references if len(ref.answer.run.time))]
+        bounds, time = [], 0.0
+        for stage in plan.ramp:
+            time += stage.duration.value
+            bounds.append(time)
+        labels = tuple(stage.label or f"{place}" for place, stage in enumerate(plan.ramp, start=1))
+        return Scene(end=round_end(max(ends)), bounds=tuple(bounds), labels=labels)
+
+    def _courses(self, found: Found) -> list[Course]:
+        from app.figures.picture import Role
+        from app.figures.ramp_columns import Course
+
+        assert found.ramp is not None
+        courses = [Course(name="ramp", run=found.ramp.run, begin=found.ramp.begin)]
+        if found.rest is not None:
+            courses.append(Course(name="rest", run=found.rest.run, begin=found.rest.begin, role=Role.REST))
+        courses += [
+            Course(name=ref.name, run=ref.answer.run, begin=ref.answer.begin, role=Role.REFERENCE)
+            for ref in self.references
+        ]
+        return courses
+
+    def _offers(self, plan: Plan) -> tuple[Offer, ...]:
+        return (
+            Offer("Start from a usual ramp", self.start_usual),
+            Offer("Design one", lambda: self.panel.choose_view("Design")),
+        )
+
+    def start_usual(self) -> None:
+        """Give the plan the usual ramp."""
+        from app.ramp_edits import checked, usual_ramp
+
+        if self.cloud is None:
+            return
+        try:
+            plan = checked(replace(self.cloud.plan, ramp=usual_ramp(self.cloud.plan)))
+        except ValueError as error:
+            self.told.emit(f"{error}.")
+        else:
+            self.plan_edited.emit(plan, _STEP, "")
+
+    def _view_changed(self) -> None:
+        self._show()
+        self.part_wanted.emit()
+
+    def _problem_changed(self, sentence: str) -> None:
+        """A field of the table cannot be read: the plots stay, marked as not following it."""
+        for plot in self._plots:
+            plot.canvas.set_stale(bool(sentence), "last good answer")
+
+    # ---------------------------------------------------------------- references
+
+    def keep_reference(self) -> None:
+        """Keep the ramp on show, to be drawn thin beside those that follow."""
+        answer = self.answer
+        if answer is None or self.cloud is None:
+            return
+        count = len(self.references) + 1
+        name = self.cloud.plan.title or "ramp"
+        taken = {ref.name for ref in self.references}
+        self.references.append(Reference(name=name if name not in taken else f"{name} {count}", answer=answer))
+        self._references_changed()
+
+    def drop_references(self) -> None:
+        """Draw this ramp alone again."""
+        self.references.clear()
+        self._references_changed()
+
+    def _references_changed(self) -> None:
+        self.panel.show_references([ref.name for ref in self.references])
+        self._show()
+
+    # ---------------------------------------------------------------- reading values
+
+    def read_time(self, time: float | None) -> None:
+        """Read all values at a time; None: at none."""
+        if time != self.reading:
+            self.reading = time
+            self._show()
+
+    def _say_values(self) -> None:
+        from app.ramp_words import duration
+
+        found = self._found
+        if self.reading is None or found is None or found.ramp is None:
+            self.bar.status.say(HINT)
+            return
+        stage = next((k for k, end in enumerate(self._bounds, start=1) if self.reading <= end), len(self._bounds))
+        parts = [f"t = {duration(self.reading)}", f"stage {stage}"]
+        parts += [
+            f"{curve.control.label} = {curve.text(curve.at(self.reading))}" for curve in self.panel.controls.curves
+        ]
+        self.bar.status.say("   ".join(parts))
+
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        """Left and right arrow keys on a plot of the cloud move the time that is read."""
+        if event.type() == QEvent.Type.KeyPress and self._built and isinstance(event, QKeyEvent):
+            steps = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}.get(Qt.Key(event.key()), 0)
+            shift = event.modifiers() == Qt.KeyboardModifier.ShiftModifier
+            plain = event.modifiers() in (Qt.KeyboardModifier.NoModifier, Qt.KeyboardModifier.KeypadModifier)
+            if steps and (plain or shift) and any(plot.canvas is watched for plot in self.panel.columns.plots.values()):
+                self._step_cursor(steps * (10 if shift else 1))
+                return True
+            if event.key() == Qt.Key.Key_Escape and self.reading is not None:
+                self.read_time(None)
+                return True
+        return super().eventFilter(watched, event)
+
+    def _step_cursor(self, steps: int) -> None:
+        if self.cloud is None or self.answer is None or not len(self.answer.run.time):
+            return
+        end = float(self.answer.run.time[-1])
+        here = self.reading if self.reading is not None else (0.0 if steps > 0 else end)
+        self.read_time(min(max(here + 0.01 * steps * end, 0.0), end))
+
+    # ---------------------------------------------------------------- dragging ends of stages
+
+    def _drag_to(self, handle: Handle, time: float, value: float) -> None:
+        from app.moving import fine_step
+        from app.ramp_edits import checked, with_end_dragged, with_start_dragged
+
+        if self.cloud is None:
+            return
+        plan = self.cloud.plan
+        if self._written is None:
+            self._written = plan
+        written = self._written
+        if handle.stage >= min(len(plan.ramp), len(written.ramp)):
+            return
+        try:
+            if handle.start:
+                plan = with_start_dragged(plan, written, handle.stage, handle.control, value)
+            else:
+                begin = sum(stage.duration.value for stage in written.ramp[: handle.stage])
+                step = fine_step(self._scene(written, sum(s.duration.value for s in written.ramp)).end)
+                duration: float | None = time - begin
+                if abs(time - begin - plan.ramp[handle.stage].duration.value) < 0.5 * step:
+                    duration = None
+                plan = with_end_dragged(plan, written, handle.stage, handle.control, duration, value, step)
+            plan = checked(plan)
+        except ValueError:
+            return  # where no ramp can go: the handle stays at the last place where one can
+        self.plan_edited.emit(plan, _STEP, f"ramp drag {self._drag}")
+
+    def _end_drag(self) -> None:
+        self._drag += 1
+        self._written = None
+
+    # ---------------------------------------------------------------- focus
+
+    def take_focus(self) -> None:
+        self.panel.take_focus()
+
+
+def _simulated(plan: Plan, since: str | None, watch: Watch) -> Found | None:
+    """The ramp of a plan, and the rest of it from a measured cloud; None where it was stopped."""
+    from app.answers.ramp_inputs import measured_clouds
+    from app.answers.ramp_jobs import ramp_job
+
+    if not plan.ramp:
+        return Found(plan=plan)
+    try:
+        answer = ramp_job(plan).run(watch)
+        if answer is None:
+            return None
+        measured = measured_clouds(plan)
+        rest = None
+        if since is not None and any(choice.label == since for choice in plan.measured):
+            rest = ramp_job(plan, since).run(watch)
+    except (ValueError, OSError, ArithmeticError, RuntimeError) as error:
+        return Found(plan=plan, failure=str(error))
+    return Found(plan=plan, ramp=answer, rest=rest, measured=measured)
+
+
+def _points(measured: tuple[MeasuredCloud, ...]) -> list[Any]:
+    from app.figures.ramp_columns import MeasuredPoint
+
+    return [
+        MeasuredPoint(
+            label=cloud.choice.label,
+            time=cloud.time or 0.0,
+            atoms=cloud.atoms,
+            temperature=cloud.temperature,
+            atoms_sigma=cloud.atoms_sigma,
+            temperature_sigma=cloud.temperature_sigma,
+        )
+        for cloud in measured
+    ]

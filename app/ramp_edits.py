@@ -1,0 +1,388 @@
+"""What a user can do to the stages of a ramp: plans in, plans out.
+
+A stage has a place, counted from 0. What cannot be raises PlanError with one sentence, as the plan's own checks do.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import replace
+
+from app.answers.ramp_inputs import path_of
+from app.control_kinds import CONTROL_KINDS
+from app.moving import moved_quantity
+from app.plan import Plan
+from app.ramp_choices import Handing, MoveChoice, StageChoice
+from app.trap_choices import TrapChoice
+from app.units import (
+    DEPTH,
+    DURATION,
+    EXPONENT,
+    FREQUENCY,
+    Quantity,
+    exact_text,
+    factor,
+    quantity,
+    read_quantity,
+    unit_of,
+)
+from physics.constants import boltzmann
+from physics.ramp_shapes import Shape
+from physics.ramps import Control, Knob
+
+USUAL_DURATION = "5 s"
+USUAL_SHARE = 0.1
+"""Of a control at the end of a usual ramp, over that at its start."""
+
+USUAL_TRUNCATION = 10.0
+"""Depth over kT at the start of a usual ramp where the trap's own depth is not known."""
+
+_USUAL_EXPONENT = "2"
+_DEPTH, _SCALE = Control(Knob.DEPTH), Control(Knob.SCALE)
+
+Standing = Mapping[Control, float]
+
+
+def standing_at(plan: Plan, place: int) -> dict[Control, float]:
+    """Where each control stands when a stage begins, after its transfer; NaN where that is not known. [SI]
+
+    A place past the last stage gives the controls at the end of the ramp.
+    """
+    values = dict(path_of(plan).standing)
+    for stage in plan.ramp[:place]:
+        values |= _begun(plan, stage, values)
+        for move in stage.moves:
+            values[move.control] = end_of(move, values.get(move.control, math.nan), stage.duration.value)
+    if place < len(plan.ramp):
+        values |= _begun(plan, plan.ramp[place], values)
+    return values
+
+
+def _begun(plan: Plan, stage: StageChoice, values: dict[Control, float]) -> Standing:
+    if stage.trap is None:
+        return values
+    values.clear()
+    return path_of(replace(plan, trap=stage.trap)).standing
+
+
+def end_of(move: MoveChoice, standing: float, duration: float) -> float:
+    """Value of a control after a move, from where it stood. [SI]"""
+    if move.points:
+        return move.points[-1][1].value
+    if move.end is not None:
+        return move.end.value
+    start = standing if move.start is None else move.start.value
+    assert move.tau is not None
+    assert move.exponent is not None
+    return float(start * (1.0 + duration / move.tau.value) ** -move.exponent.value)
+
+
+def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
+    """An exponential to a tenth in five seconds, of the depth, of the power of all beams, or of the knife."""
+    duration = read_quantity(USUAL_DURATION, DURATION)
+    trap = plan.trap
+    if trap.harmonic:
+        start = None
+        depth = trap.depth.value if trap.depth is not None else math.nan
+        if trap.depth is None:
+            depth = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
+            start = quantity(depth, _depth_unit(depth), kind=DEPTH, digits=2)
+        end = quantity(USUAL_SHARE * depth, _depth_unit(USUAL_SHARE * depth), kind=DEPTH, digits=3)
+        moves: tuple[MoveChoice, ...] = (MoveChoice(control=_DEPTH, start=start, end=end, shape=Shape.EXPONENTIAL),)
+        return (StageChoice(duration=duration, moves=moves, label="lower the depth"),)
+    beams = [beam for beam in trap.beams if beam.on and beam.power.value > 0.0]
+    if beams:
+        moves = tuple(
+            MoveChoice(
+                control=Control(Knob.POWER, beam.name),
+                end=scaled(beam.power, USUAL_SHARE, Knob.POWER),
+                shape=Shape.EXPONENTIAL,
+            )
+            for beam in beams
+        )
+        return (StageChoice(duration=duration, moves=moves, label="lower the light"),)
+    coils = trap.coils
+    if coils is not None and coils.knife is not None:
+        # Above the resonance at the bottom of the trap, which a bias field sets: half-way down is within any of them.
+        share = 0.5 if coils.bias is not None and coils.bias.value else USUAL_SHARE
+        move = MoveChoice(
+            control=Control(Knob.KNIFE), end=scaled(coils.knife, share, Knob.KNIFE), shape=Shape.EXPONENTIAL
+        )
+        return (StageChoice(duration=duration, moves=(move,), label="lower the knife"),)
+    return (StageChoice(duration=duration, label="hold"),)
+
+
+def scaled(value: Quantity, by: float, knob: Knob) -> Quantity:
+    """A value of a control times a factor, in its unit, without uncertainty."""
+    kind = CONTROL_KINDS[knob]
+    return quantity(value.value * by, unit_of(value.text, kind), kind=kind)
+
+
+def control_quantity(control: Control, value: float) -> Quantity:
+    """A value of a control as a quantity to three digits, in a unit that suits it."""
+    kind = CONTROL_KINDS[control.knob]
+    unit = _depth_unit(value) if control.knob is Knob.DEPTH else _unit_for(value, control)
+    return quantity(value, unit, kind=kind)
+
+
+def _depth_unit(energy: float) -> str:
+    kelvin = energy / boltzmann
+    return next((unit for unit, size in (("nK", 1e-6), ("µK", 1e-3)) if kelvin < size), "mK")
+
+
+def _unit_for(value: float, control: Control) -> str:
+    units = CONTROL_KINDS[control.knob].units
+    sized = sorted(((factor(unit, CONTROL_KINDS[control.knob].si_unit), unit) for unit in units), reverse=True)
+    if control.knob in (Knob.POWER, Knob.KNIFE) and value:
+        return next((unit for size, unit in sized if abs(value) >= size), sized[-1][1])
+    return units[0]
+
+
+# --- stages -----------------------------------------------------------------------------------------------------------
+
+
+def with_stage(plan: Plan, place: int, stage: StageChoice) -> Plan:
+    """The plan with another stage in a place."""
+    return replace(plan, ramp=(*plan.ramp[:place], stage, *plan.ramp[place + 1 :]))
+
+
+def with_new_stage(plan: Plan, place: int, *, hold: bool = False) -> Plan:
+    """The plan with a new stage before a place: one that goes on as the stage before it does, or a hold."""
+    before = plan.ramp[place - 1] if place else None
+    duration = before.duration if before is not None else read_quantity("1 s", DURATION)
+    moves: tuple[MoveChoice, ...] = ()
+    if not hold:
+        standing = standing_at(replace(plan, ramp=plan.ramp[:place]), place)
+        like = [move for move in (before.moves if before is not None else ()) if move.end is not None]
+        controls = [move.control for move in like] or _moved_first(plan)
+        for control in controls:
+            here = standing.get(control, math.nan)
+            if math.isfinite(here) and here:
+                shape = Shape.EXPONENTIAL if here > 0.0 else Shape.LINEAR
+                moves += (MoveChoice(control=control, end=control_quantity(control, 0.5 * here), shape=shape),)
+        if not moves and not plan.ramp:
+            return replace(plan, ramp=usual_ramp(plan))
+    stage = StageChoice(duration=duration, moves=moves, label="hold" if hold else "")
+    return replace(plan, ramp=(*plan.ramp[:place], stage, *plan.ramp[place:]))
+
+
+def _moved_first(plan: Plan) -> list[Control]:
+    usual = usual_ramp(plan)
+    return [move.control for stage in usual for move in stage.moves]
+
+
+def with_copy(plan: Plan, place: int) -> Plan:
+    """The plan with a stage twice, one after the other. Starts that were given stay with the first."""
+    stage = plan.ramp[place]
+    moves = tuple(replace(move, start=None) if move.end is not None else move for move in stage.moves)
+    copy = replace(stage, moves=moves, handing=None, trap=None)
+    return replace(plan, ramp=(*plan.ramp[: place + 1], copy, *plan.ramp[place + 1 :]))
+
+
+def without_stage(plan: Plan, place: int) -> Plan:
+    """The plan without a stage."""
+    return replace(plan, ramp=(*plan.ramp[:place], *plan.ramp[place + 1 :]))
+
+
+def with_stage_moved(plan: Plan, place: int, by: int) -> Plan:
+    """The plan with a stage earlier (-1) or later (+1); at either end nothing changes."""
+    other = place + by
+    if not 0 <= other < len(plan.ramp):
+        return plan
+    stages = list(plan.ramp)
+    stages[place], stages[other] = stages[other], stages[place]
+    return replace(plan, ramp=tuple(stages))
+
+
+def with_duration(plan: Plan, place: int, duration: Quantity) -> Plan:
+    """The plan with another duration of a stage; tables stretch with it."""
+    stage = plan.ramp[place]
+    stretch = duration.value / stage.duration.value
+    moves = tuple(_stretched(move, stretch, duration) if move.points else move for move in stage.moves)
+    return with_stage(plan, place, replace(stage, duration=duration, moves=moves))
+
+
+def _stretched(move: MoveChoice, stretch: float, duration: Quantity) -> MoveChoice:
+    unit = unit_of(duration.text, DURATION)
+    points = [
+        (Quantity(exact_text(time.value * stretch, unit, kind=DURATION), time.value * stretch), value)
+        for time, value in move.points[:-1]
+    ]
+    return replace(move, points=(*points, (Quantity(duration.text, duration.value), move.points[-1][1])))
+
+
+def with_label(plan: Plan, place: int, label: str) -> Plan:
+    """The plan with another name of a stage."""
+    return with_stage(plan, place, replace(plan.ramp[place], label=label))
+
+
+# --- moves ------------------------------------------------------------------------------------------------------------
+
+
+def with_move(plan: Plan, place: int, number: int, move: MoveChoice) -> Plan:
+    """The plan with another move in a stage."""
+    moves = plan.ramp[place].moves
+    return with_stage(plan, place, replace(plan.ramp[place], moves=(*moves[:number], move, *moves[number + 1 :])))
+
+
+def without_move(plan: Plan, place: int, number: int) -> Plan:
+    """The plan whose stage leaves a control at rest."""
+    moves = plan.ramp[place].moves
+    return with_stage(plan, place, replace(plan.ramp[place], moves=(*moves[:number], *moves[number + 1 :])))
+
+
+def free_controls(plan: Plan, place: int) -> tuple[Control, ...]:
+    """Controls that the trap of a stage has, and that it does not move yet."""
+    moved = {move.control for move in plan.ramp[place].moves}
+    return tuple(control for control in standing_at(plan, place) if control not in moved)
+
+
+def with_new_move(plan: Plan, place: int, control: Control) -> Plan:
+    """The plan whose stage moves one control more: to where it stands, so that nothing changes yet."""
+    here = standing_at(plan, place).get(control, math.nan)
+    start = None
+    if math.isnan(here):
+        here = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value if control == _DEPTH else 1.0
+        start = control_quantity(control, here)
+    move = MoveChoice(control=control, start=start, end=control_quantity(control, here))
+    stage = plan.ramp[place]
+    return with_stage(plan, place, replace(stage, moves=(*stage.moves, move)))
+
+
+def with_control(plan: Plan, place: int, number: int, control: Control) -> Plan:
+    """The plan whose move turns another knob, by the same factor where both are positive."""
+    old = plan.ramp[place].moves[number]
+    standing = standing_at(plan, place)
+    here, there = standing.get(old.control, math.nan), standing.get(control, math.nan)
+    share = end_of(old, here, plan.ramp[place].duration.value) / here if here > 0.0 else math.nan
+    if control.knob is old.control.knob:
+        return with_move(plan, place, number, replace(old, control=control))
+    start = None
+    if math.isnan(there):
+        there = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value if control == _DEPTH else 1.0
+        start = control_quantity(control, there)
+    share = share if math.isfinite(share) and share > 0.0 else 1.0
+    move = MoveChoice(
+        control=control,
+        start=start,
+        end=control_quantity(control, share * there),
+        shape=old.shape if old.shape is Shape.EXPONENTIAL and there > 0.0 else Shape.LINEAR,
+    )
+    return with_move(plan, place, number, move)
+
+
+def with_shape(plan: Plan, place: int, number: int, shape: Shape) -> Plan:
+    """The plan whose move has another shape, between the same values."""
+    stage = plan.ramp[place]
+    old = stage.moves[number]
+    if shape is old.shape:
+        return plan
+    here = standing_at(plan, place).get(old.control, math.nan)
+    end = old.end or control_quantity(old.control, end_of(old, here, stage.duration.value))
+    start = old.points[0][1] if old.points else old.start
+    if shape is Shape.TABLE:
+        first = start or control_quantity(old.control, here)
+        zero = Quantity("0 s", 0.0)
+        last = (Quantity(stage.duration.text, stage.duration.value), end)
+        move = MoveChoice(control=old.control, shape=shape, points=((zero, first), last))
+    else:
+        exponent = read_quantity(_USUAL_EXPONENT, EXPONENT) if shape is Shape.POWER_LAW else None
+        move = MoveChoice(control=old.control, start=start, end=end, shape=shape, exponent=exponent)
+    return with_move(plan, place, number, move)
+
+
+# --- by hand on a graph -----------------------------------------------------------------------------------------------
+
+
+def with_end_dragged(
+    plan: Plan, written: Plan, place: int, control: Control, duration: float | None, value: float, step: float
+) -> Plan:
+    """The plan whose stage ends elsewhere, as when the end of its curve is dragged.
+
+    written : the plan before the drag, whose texts say in which units and how
+    duration : [s] rounded to whole steps [s]; None: as it is
+    value : [SI] of the control
+    """
+    stage = written.ramp[place]
+    if duration is not None:
+        moved = moved_quantity(stage.duration, max(duration, step), DURATION, (), step=step)
+        plan = with_duration(plan, place, moved)
+    number = next((k for k, move in enumerate(stage.moves) if move.control == control), None)
+    if number is None:
+        return plan
+    old, move = stage.moves[number], plan.ramp[place].moves[number]
+    kind, units = CONTROL_KINDS[control.knob], _units_of(control)
+    if old.points:
+        last = moved_quantity(old.points[-1][1], value, kind, units)
+        move = replace(move, points=(*move.points[:-1], (move.points[-1][0], last)))
+    else:
+        end = old.end or control_quantity(control, value)
+        move = replace(move, end=moved_quantity(end, value, kind, units), tau=None)
+    return with_move(plan, place, number, move)
+
+
+def with_start_dragged(plan: Plan, written: Plan, place: int, control: Control, value: float) -> Plan:
+    """The plan whose stage starts a control from another value, where it has a start of its own."""
+    number = next((k for k, move in enumerate(written.ramp[place].moves) if move.control == control), None)
+    if number is None:
+        return plan
+    old, move = written.ramp[place].moves[number], plan.ramp[place].moves[number]
+    kind, units = CONTROL_KINDS[control.knob], _units_of(control)
+    if old.points:
+        first = moved_quantity(old.points[0][1], value, kind, units)
+        return with_move(plan, place, number, replace(move, points=((move.points[0][0], first), *move.points[1:])))
+    if old.start is None:
+        return plan
+    return with_move(plan, place, number, replace(move, start=moved_quantity(old.start, value, kind, units)))
+
+
+def _units_of(control: Control) -> tuple[str, ...]:
+    return {Knob.DEPTH: ("nK", "µK", "mK"), Knob.POWER: ("µW", "mW", "W"), Knob.KNIFE: ("Hz", "kHz", "MHz")}.get(
+        control.knob, ()
+    )
+
+
+# --- transfers --------------------------------------------------------------------------------------------------------
+
+
+def with_transfer(plan: Plan, place: int, handing: Handing | None, trap: TrapChoice | None = None) -> Plan:
+    """The plan whose stage begins in another trap, slowly or suddenly; None: in the trap of the stage before.
+
+    trap : None: the one that it has, or else a harmonic one of the plan's frequencies and depth
+    """
+    stage = plan.ramp[place]
+    if handing is None:
+        return with_stage(plan, place, replace(stage, handing=None, trap=None))
+    return with_stage(plan, place, replace(stage, handing=handing, trap=trap or stage.trap or _next_trap(plan)))
+
+
+def _next_trap(plan: Plan) -> TrapChoice:
+    if plan.trap.frequencies is not None:
+        depth = plan.trap.depth
+        if depth is None:
+            value = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
+            depth = quantity(value, _depth_unit(value), kind=DEPTH, digits=2)
+        return TrapChoice(frequencies=plan.trap.frequencies, depth=depth)
+    hundred = read_quantity("100 Hz", FREQUENCY)
+    value = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
+    return TrapChoice(
+        frequencies=(hundred, hundred, hundred), depth=quantity(value, _depth_unit(value), kind=DEPTH, digits=2)
+    )
+
+
+def trap_text(trap: TrapChoice) -> str:
+    """A trap in a few words: its frequencies, or what makes it."""
+    if trap.frequencies is None:
+        return trap.makers
+    depth = f", {trap.depth.text} deep" if trap.depth is not None else ""
+    return " × ".join(f.text for f in trap.frequencies) + depth
+
+
+def checked(plan: Plan) -> Plan:
+    """The plan, if its ramp can be followed; else PlanError."""
+    from app.answers.ramp_inputs import ramp_of
+
+    if plan.ramp:
+        ramp_of(plan)
+    return plan

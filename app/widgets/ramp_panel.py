@@ -1,0 +1,249 @@
+"""The inside of the page Ramp: the verdict on top, the views below, the controls under those that need them."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING, Any, Protocol
+
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QResizeEvent
+from PySide6.QtWidgets import (
+    QButtonGroup,
+    QFrame,
+    QHBoxLayout,
+    QLabel,
+    QScrollArea,
+    QStackedWidget,
+    QToolButton,
+    QVBoxLayout,
+    QWidget,
+)
+
+from app.figures.theme import Theme
+from app.newest import Steps
+from app.plan import Plan
+from app.widgets.banner import Offer
+from app.widgets.empty_state import EmptyState
+from app.widgets.ramp_plots import ColumnPlots, ControlPlots
+from app.widgets.ramp_stages import StageEditor
+from app.widgets.stage_table import StageTable
+
+if TYPE_CHECKING:
+    from app.widgets.page import Page
+
+
+COURSE, STAGES, DESIGN, WAYPOINTS = "Course", "Stages", "Design", "Waypoints"
+NEED_NO_RAMP = (DESIGN, WAYPOINTS)
+"""Views that have something to say of a plan without stages."""
+
+ROOM_FOR_ALL = 660
+"""[logical pixels] Height from which the plots of the cloud stand under the table of stages too."""
+
+
+class RampView(Protocol):
+    """A view that asks for an answer of its own."""
+
+    def set_plan(self, plan: Plan) -> None: ...
+
+    def extra_job(self, plan: Plan) -> tuple[Steps | None, object]:
+        """The work whose result it shows, and what that depends on; None where it has all it needs."""
+
+    def take_extra(self, plan: Plan, extra: Any) -> None: ...
+
+    def set_theme(self, theme: Theme) -> None: ...
+
+    def take_focus(self) -> None: ...
+
+
+class RampPanel(QWidget):
+    """view_changed() is sent when another view comes to the front."""
+
+    view_changed = Signal()
+
+    def __init__(self, page: Page) -> None:
+        super().__init__()
+        self.body = QVBoxLayout(self)
+        self.body.setContentsMargins(0, 0, 0, 0)
+        self.body.setSpacing(0)
+        self.sentence, self.detail = QLabel(), QLabel()
+        self.detail.setObjectName("plotStatus")
+        heading = QVBoxLayout()
+        heading.setContentsMargins(14, 8, 14, 2)
+        heading.setSpacing(2)
+        for label in (self.sentence, self.detail):
+            label.setWordWrap(True)
+            label.setTextInteractionFlags(
+                Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
+            )
+            heading.addWidget(label)
+        self.body.addLayout(heading)
+        self.columns = ColumnPlots(page.add_plot)
+        self.controls = ControlPlots(page.add_plot, page.remove_plot)
+        self.table = StageTable()
+        self.stages = StageEditor()
+        self.empty = EmptyState()
+        self.stack = QStackedWidget()
+        self.choice = QButtonGroup(self)
+        self._switch = QHBoxLayout()
+        self._switch.setContentsMargins(12, 2, 12, 4)
+        self._switch.setSpacing(2)
+        self.keep, self.drop = QToolButton(), QToolButton()
+        self._make_reference_buttons()
+        self.body.addLayout(self._switch)
+        self._under = _scrolled(self.table)
+        self.body.addWidget(self.stack, 2)
+        self.body.addWidget(self.empty, 1)
+        self.body.addWidget(self.columns, 3)
+        self.body.addWidget(self.controls)
+        self.body.addWidget(self._under)
+        self.views: dict[str, QWidget] = {}
+        self._extra: dict[str, RampView] = {}
+        self.add_view(COURSE, "What becomes of the cloud along the ramp", QWidget())
+        self.add_view(STAGES, "The stages, to be edited", self.stages)
+        self._is_empty = False
+        self.show_ramp()
+
+    def _make_reference_buttons(self) -> None:
+        self._switch.addStretch(1)
+        self.reference_label = QLabel()
+        self.reference_label.setObjectName("plotStatus")
+        self.reference_label.hide()
+        self._switch.addWidget(self.reference_label)
+        for button, text, tip in (
+            (self.keep, "Keep as reference", "Keep this ramp, drawn thin beside those that follow"),
+            (self.drop, "Drop", "Draw this ramp alone again"),
+        ):
+            button.setText(text)
+            button.setToolTip(tip)
+            button.setAccessibleName(tip)
+            button.setAutoRaise(True)
+            self._switch.addWidget(button)
+        self.drop.hide()
+
+    def add_view(self, name: str, tip: str, widget: QWidget, view: RampView | None = None) -> None:
+        """One more view, with its button."""
+        button = QToolButton()
+        button.setText(name)
+        button.setCheckable(True)
+        button.setAutoRaise(True)
+        button.setToolTip(tip)
+        button.setAccessibleName(f"{name}: {tip}")
+        number = len(self.views)
+        self.choice.addButton(button, number)
+        self._switch.insertWidget(number, button)
+        self.stack.addWidget(widget)
+        self.views[name] = widget
+        if view is not None:
+            self._extra[name] = view
+        if number == 0:
+            button.setChecked(True)
+        button.clicked.connect(lambda: self.choose_view(name))
+
+    # ---------------------------------------------------------------- views
+
+    @property
+    def view(self) -> str:
+        """Name of the view in front."""
+        return list(self.views)[max(self.choice.checkedId(), 0)]
+
+    def choose_view(self, name: str) -> None:
+        """Bring a view to the front."""
+        number = list(self.views).index(name)
+        self.choice.button(number).setChecked(True)
+        self.stack.setCurrentIndex(number)
+        self._arrange()
+        self.view_changed.emit()
+
+    def show_ramp(self) -> None:
+        """There is a ramp."""
+        self._is_empty = False
+        self._arrange()
+
+    def show_empty(self, why: str, remedy: str, offers: Sequence[Offer]) -> None:
+        """There is no ramp: say so in the views that show one."""
+        self._is_empty = True
+        self.empty.tell(why, remedy, offers)
+        self.sentence.setText("")
+        self.detail.setText("")
+        self._arrange()
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        super().resizeEvent(event)
+        self._arrange()
+
+    def _arrange(self) -> None:
+        view, there = self.view, not self._is_empty
+        own = view != COURSE and (there or view in NEED_NO_RAMP)
+        self.empty.setVisible(not there and not own)
+        self.stack.setVisible(own)
+        self.columns.setVisible(there and (view == COURSE or (view == STAGES and self.height() >= ROOM_FOR_ALL)))
+        self.controls.setVisible(there and view in (COURSE, STAGES) and bool(self.controls.curves))
+        self._under.setVisible(there and view == COURSE)
+        self.keep.setVisible(there)
+        self.sentence.setVisible(there)
+        self.detail.setVisible(there and bool(self.detail.text()))
+        if view == COURSE:
+            most = max(self.table.sizeHint().height() + 10, 60)
+            self._under.setFixedHeight(min(most, max(self.height() // 4, 84)))
+
+    def tell(self, sentence: str, detail: str) -> None:
+        """The verdict, and what limits."""
+        self.sentence.setText(sentence)
+        self.detail.setText(detail)
+        self._arrange()
+
+    def show_references(self, names: Sequence[str]) -> None:
+        """Which ramps are kept."""
+        self.reference_label.setText(f"beside {', '.join(names)}" if names else "")
+        self.reference_label.setVisible(bool(names))
+        self.drop.setVisible(bool(names))
+
+    def set_plan(self, plan: Plan) -> None:
+        self.stages.set_plan(plan)
+        view = self._extra.get(self.view)
+        if view is not None:
+            view.set_plan(plan)
+
+    def set_theme(self, theme: Theme) -> None:
+        self.table.set_theme(theme)
+        for view in self._extra.values():
+            view.set_theme(theme)
+
+    # ---------------------------------------------------------------- answers of the views' own
+
+    def extra_wanted(self, plan: Plan) -> bool:
+        """Whether the view in front wants something worked out that needs no ramp."""
+        return self.extra_job(plan)[0] is not None
+
+    def has_extra(self, plan: Plan) -> bool:
+        """Whether the view in front has all it needs."""
+        return not self.extra_wanted(plan)
+
+    def extra_job(self, plan: Plan) -> tuple[Steps | None, object]:
+        view = self._extra.get(self.view)
+        return (None, None) if view is None else view.extra_job(plan)
+
+    def take_extra(self, plan: Plan, extra: Any) -> None:
+        view = self._extra.get(self.view)
+        if view is not None:
+            view.take_extra(plan, extra)
+
+    def take_focus(self) -> None:
+        if self._is_empty and self.empty.isVisible():
+            self.empty.take_focus()
+        elif self.view == STAGES:
+            self.stages.take_focus()
+        elif self.view in self._extra:
+            self._extra[self.view].take_focus()
+        else:
+            next(iter(self.columns.plots.values())).canvas.setFocus()
+
+
+def _scrolled(widget: QWidget) -> QScrollArea:
+    area = QScrollArea()
+    area.setFrameShape(QFrame.Shape.NoFrame)
+    area.setWidgetResizable(True)
+    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+    area.setWidget(widget)
+    area.setViewportMargins(14, 2, 4, 2)
+    return area
