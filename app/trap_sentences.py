@@ -1,11 +1,13 @@
-"""What the page of a trap says over its plots."""
+"""What is said of a trap on its page, and of the controls that are turned."""
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from app.answers.trap_controls import Control, ControlKind
 from app.language import translate as _
 from app.trap_words import depth_text, frequencies_text, reason_no_frequencies, reason_not_trapped, sag_text, way_out
+from app.units import best_unit, format_quantity
 from app.words import temperature, times
 from physics.constants import boltzmann
 
@@ -14,6 +16,41 @@ if TYPE_CHECKING:
 
 NO_SCAN = _("This trap is given by its frequencies: there is no power and no gradient to turn.")
 NO_SCAN_REMEDY = _("Make the trap of beams or coils, and see here what becomes of it while one of them is turned.")
+
+
+CONTROL_UNITS = {
+    ControlKind.POWER: ("µW", "mW", "W"),
+    ControlKind.POWERS: ("",),
+    ControlKind.WAIST: ("µm", "mm"),
+    ControlKind.GRADIENT: ("G/cm",),
+    ControlKind.BIAS: ("mG", "G"),
+    ControlKind.CURVATURE: ("G/cm^2",),
+    ControlKind.LEVITATION: ("G/cm",),
+    ControlKind.KNIFE: ("kHz", "MHz"),
+}
+"""Units in which each control is shown."""
+
+
+def control_name(control: Control) -> str:
+    """The control in words."""
+    if control.kind is ControlKind.POWER:
+        return _("power of beam {beam}").format(beam=control.beam)
+    if control.kind is ControlKind.WAIST:
+        return _("waist of beam {beam}").format(beam=control.beam)
+    return {
+        ControlKind.POWERS: _("factor on all powers"),
+        ControlKind.GRADIENT: _("gradient of the coils"),
+        ControlKind.BIAS: _("bias of the coils"),
+        ControlKind.CURVATURE: _("curvature of the coils"),
+        ControlKind.LEVITATION: _("levitation gradient"),
+        ControlKind.KNIFE: _("radio-frequency knife"),
+    }[control.kind]
+
+
+def control_text(control: Control, value: float) -> str:
+    """A value of the control [SI], with its unit."""
+    units = CONTROL_UNITS[control.kind]
+    return format_quantity(value, best_unit(value, units), digits=5)
 
 
 def trap_sentence(answer: TrapAnswer, kelvin: float) -> str:

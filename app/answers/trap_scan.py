@@ -4,18 +4,18 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
-from enum import Enum
 from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.trap import trap_of
+from app.answers.trap_controls import Control, controls
 from physics.species import load_species
 from physics.traps import Trap
 
 if TYPE_CHECKING:
-    from app.plan import Plan, TrapChoice
+    from app.plan import Plan
     from physics.traps.survey import Survey
 
 Array = NDArray[np.float64]
@@ -23,66 +23,6 @@ Flags = NDArray[np.bool_]
 
 SCAN_POINTS = 33
 """2^n + 1: the points halve the gaps between those before."""
-
-
-class ControlKind(Enum):
-    """What can be turned; the value is the word for it."""
-
-    POWER = "power"
-    POWERS = "all powers"
-    GRADIENT = "gradient"
-    BIAS = "bias"
-    CURVATURE = "curvature"
-    LEVITATION = "levitation"
-    KNIFE = "knife"
-
-
-_COILS = (
-    ControlKind.GRADIENT,
-    ControlKind.BIAS,
-    ControlKind.CURVATURE,
-    ControlKind.LEVITATION,
-    ControlKind.KNIFE,
-)
-
-
-@dataclass(frozen=True)
-class Control:
-    """A control of a trap; `beam` names the beam of a power."""
-
-    kind: ControlKind
-    beam: str = ""
-
-    def now(self, trap: Trap) -> float:
-        """Where the control stands, in SI; a factor of 1 for all powers."""
-        if self.kind is ControlKind.POWER:
-            return float(trap.beam(self.beam).power)
-        if self.kind is ControlKind.POWERS:
-            return 1.0
-        return float(getattr(trap.coils, self.kind.value) or 0.0)
-
-    def turned(self, trap: Trap, value: float) -> Trap:
-        """The trap with the control at another value."""
-        if self.kind is ControlKind.POWER:
-            return trap.with_beam(self.beam, power=value, on=True)
-        if self.kind is ControlKind.POWERS:
-            return trap.with_powers_scaled(value)
-        return trap.with_coils(**{self.kind.value: value})
-
-
-def controls(choice: TrapChoice) -> tuple[Control, ...]:
-    """The controls that a trap has; none where it is given by its frequencies."""
-    beams = [beam for beam in choice.beams if beam.power.value > 0.0]
-    found = [Control(ControlKind.POWERS)] if sum(beam.on for beam in beams) > 1 else []
-    found += [Control(ControlKind.POWER, beam.name) for beam in beams]
-    if choice.coils is not None:
-        found += [Control(kind) for kind in _COILS if _stands(choice, kind)]
-    return tuple(found)
-
-
-def _stands(choice: TrapChoice, kind: ControlKind) -> bool:
-    quantity = getattr(choice.coils, kind.value)
-    return quantity is not None and quantity.value != 0.0
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -3,13 +3,17 @@
 from __future__ import annotations
 
 import argparse
+from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
+from app.answers.trap_controls import OF_BEAM, Control, ControlKind, Until
 from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
 from app.commands.trouble import fail
 
 if TYPE_CHECKING:
+    from app.answers.trap_until import SolvedControl
     from app.engine import TrapAnswer
+    from app.plan import Plan
 
 
 def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
@@ -18,20 +22,124 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
     parser = verbs.add_parser("trap", help=text, description=text[0].upper() + text[1:] + ".")
     add_plan_arguments(parser)
     parser.add_argument("--json", action="store_true", help="print one JSON object")
+    group = parser.add_argument_group("solving backwards", _BACKWARDS)
+    group.add_argument("--vary", choices=[kind.value for kind in ControlKind], help="what is turned")
+    group.add_argument("--beam", metavar="NAME", help="whose power or waist; may be left out where there is one beam")
+    group.add_argument(
+        "--until",
+        type=_wish,
+        metavar="WISH",
+        help='what is wanted: depth="10 uK", mean_frequency="100 Hz", frequency_x="80 Hz" (or _y, _z); holds, for the '
+        "least value that still holds atoms; levitates, for the levitation that carries them",
+    )
     parser.set_defaults(run=run)
+
+
+_BACKWARDS = (
+    "Turn one control until the trap is what it should be, and print where it stands then and the trap with it: "
+    '--vary power --beam A --until depth="10 uK"'
+)
+
+
+@dataclass(frozen=True)
+class _Wish:
+    """A wish as it was typed: its name, and the text of its value."""
+
+    name: str
+    text: str = ""
+
+
+def _wish(text: str) -> _Wish:
+    name, _, value = text.partition("=")
+    until = {until.value: until for until in Until}.get(name.strip())
+    if until is None:
+        names = ", ".join(f"{known.value}=…" if known.wants_number else known.value for known in Until)
+        raise argparse.ArgumentTypeError(f'"{text}" is no wish; use one of {names}')
+    if until.wants_number != bool(value.strip()):
+        raise argparse.ArgumentTypeError(
+            f'{until.value} needs a value, such as {until.value}="{_EXAMPLES[until]}"'
+            if until.wants_number
+            else f"{until.value} takes no value"
+        )
+    return _Wish(until.value, value.strip())
+
+
+_EXAMPLES = {until: "10 uK" if until is Until.DEPTH else "100 Hz" for until in Until}
 
 
 def run(args: argparse.Namespace) -> int:
     """Answer for the plan that file and flags give. That a trap holds nothing is an answer."""
     from app.engine import trap_answer
 
+    if (args.vary is None) != (args.until is None):
+        missing, there = ("--until", "--vary") if args.until is None else ("--vary", "--until")
+        fail(f"{there} goes with {missing}, which is missing")
+        return 2
     try:
-        answer = trap_answer(plan_of(args))
-        body = trap_body(answer) if args.json else {}
+        plan = plan_of(args)
+        solved = None if args.vary is None else _solved(plan, args)
+        answer = trap_answer(plan) if solved is None else solved.answer
+        body = (trap_body(answer) | _solution(solved, args)) if args.json else {}
     except (ValueError, OSError) as error:
         return fail(error)
-    print(json_answer(args, body) if args.json else trap_text(answer))
+    if args.json:
+        typed = {} if solved is None else {"vary": args.vary, "beam": args.beam, "until": args.until.name}
+        print(json_answer(args, body, **typed))
+    else:
+        print("\n\n".join([*([] if solved is None else [solution_text(solved)]), trap_text(answer)]))
     return 0
+
+
+def _solved(plan: Plan, args: argparse.Namespace) -> SolvedControl:
+    from app.answers.trap_until import solve_until
+    from app.units import DEPTH, FREQUENCY, read_quantity
+
+    until = Until(args.until.name)
+    kind = DEPTH if until is Until.DEPTH else FREQUENCY
+    target = read_quantity(args.until.text, kind).value if until.wants_number else None
+    return solve_until(plan, _control(plan, args), until, target)
+
+
+def _control(plan: Plan, args: argparse.Namespace) -> Control:
+    from app.plan_field import PlanError
+
+    kind, beams = ControlKind(args.vary), plan.trap.beams
+    if kind not in OF_BEAM:
+        return Control(kind)
+    if args.beam is not None:
+        return Control(kind, plan.trap.beam(args.beam).name)
+    if len(beams) != 1 and not plan.trap.harmonic:
+        names = ", ".join(beam.name for beam in beams) or "none"
+        raise PlanError(f"--vary {kind.value} needs --beam with the name of a beam; the trap's beams: {names}")
+    return Control(kind, beams[0].name if beams else "")
+
+
+def _solution(solved: SolvedControl | None, args: argparse.Namespace) -> dict[str, Any]:
+    """What solving backwards adds to the JSON object; nothing without it. The trap is that with the solution."""
+    if solved is None:
+        return {}
+    from app.answers.trap_until import control_unit
+
+    return {
+        "solution": {
+            "vary": solved.control.kind.value,
+            "beam": solved.control.beam or None,
+            "until": args.until.name,
+            "wanted": args.until.text or None,
+            "value": solved.value,
+            "unit": control_unit(solved.control) or "1",
+            "before": solved.before,
+        }
+    }
+
+
+def solution_text(solved: SolvedControl) -> str:
+    """Where the control must stand, and where it stood, in one line."""
+    from app.trap_sentences import control_name, control_text
+
+    name = control_name(solved.control)
+    stood = "" if solved.before is None else f" (it was {control_text(solved.control, solved.before)})"
+    return f"{name[0].upper()}{name[1:]}: {control_text(solved.control, solved.value)}{stood}"
 
 
 def trap_body(answer: TrapAnswer) -> dict[str, Any]:

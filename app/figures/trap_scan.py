@@ -7,39 +7,17 @@ import math
 import numpy as np
 
 from app.answers.profile import round_up
-from app.answers.trap_scan import Control, ControlKind, TrapScan
+from app.answers.trap_scan import TrapScan
 from app.answers.trap_shape import LABORATORY
 from app.figures.picture import Array, Axis, Curve, Label, Picture, Role
 from app.figures.trap_cuts import energy_unit
 from app.language import translate as _
-from app.units import best_unit, factor, format_quantity
+from app.trap_sentences import CONTROL_UNITS, control_name, control_text
+from app.units import best_unit, factor
 from physics.constants import boltzmann
 
-_UNITS = {
-    ControlKind.POWER: ("µW", "mW", "W"),
-    ControlKind.POWERS: ("",),
-    ControlKind.GRADIENT: ("G/cm",),
-    ControlKind.BIAS: ("mG", "G"),
-    ControlKind.CURVATURE: ("G/cm^2",),
-    ControlKind.LEVITATION: ("G/cm",),
-    ControlKind.KNIFE: ("kHz", "MHz"),
-}
 _ROLES = (Role.FIRST, Role.SECOND, Role.THIRD)
 _NAMED_AT = 0.05  # of the curve, from its end
-
-
-def control_name(control: Control) -> str:
-    """The control in words."""
-    if control.kind is ControlKind.POWER:
-        return _("power of beam {beam}").format(beam=control.beam)
-    return {
-        ControlKind.POWERS: _("factor on all powers"),
-        ControlKind.GRADIENT: _("gradient of the coils"),
-        ControlKind.BIAS: _("bias of the coils"),
-        ControlKind.CURVATURE: _("curvature of the coils"),
-        ControlKind.LEVITATION: _("levitation gradient"),
-        ControlKind.KNIFE: _("radio-frequency knife"),
-    }[control.kind]
 
 
 def scan_pictures(scan: TrapScan) -> tuple[Picture, Picture, Picture]:
@@ -85,22 +63,15 @@ def _picture(scan: TrapScan, what: str, label: str, unit: str, values: Array, na
         curves=tuple(curves),
         labels=tuple(labels),
         summary=_("{what} along the {control}; now {now}.").format(
-            what=what, control=control_name(scan.control), now=now_text(scan)
+            what=what, control=control_name(scan.control), now=control_text(scan.control, scan.now)
         ),
         note="" if finite.size or not scan.complete else _("no value here"),
     )
 
 
-def now_text(scan: TrapScan) -> str:
-    """Where the control stands, as text."""
-    if scan.control.kind is ControlKind.POWERS:
-        return _("1, as they are")
-    return format_quantity(scan.now, best_unit(scan.now, _UNITS[scan.control.kind]), digits=4)
-
-
 def _x_axis(scan: TrapScan) -> tuple[Axis, float]:
     low, high = float(scan.values[0]), float(scan.values[-1])
-    unit = best_unit(scan.now, _UNITS[scan.control.kind])
+    unit = best_unit(scan.now, CONTROL_UNITS[scan.control.kind])
     scale = factor(unit)
     axis = Axis(
         label=control_name(scan.control), unit=unit, low=low / scale, high=high / scale, log=low > 0.0

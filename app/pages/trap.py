@@ -10,19 +10,20 @@ import numpy as np
 from PySide6.QtWidgets import QGridLayout, QLabel, QStackedWidget, QVBoxLayout, QWidget
 
 from app.answers.trap import TrapAnswer, trap_answer
+from app.answers.trap_controls import Control, controls
 from app.answers.trap_cuts import Cut, trap_cuts
-from app.answers.trap_scan import Control, TrapScan, controls, trap_scan
+from app.answers.trap_scan import TrapScan, trap_scan
 from app.answers.trap_section import Section, Window, planes, trap_section
 from app.answers.trap_shape import TrapShape, shape_scale
 from app.engine import CloudAnswer
 from app.figures.theme import Theme
 from app.figures.trap_cuts import CloudLevels, cut_picture
-from app.figures.trap_scan import control_name, scan_pictures
+from app.figures.trap_scan import scan_pictures
 from app.figures.trap_section import section_picture
 from app.language import translate as _
 from app.newest import Job, Steps, Watch
 from app.plan import Plan
-from app.trap_sentences import NO_SCAN, NO_SCAN_REMEDY, trap_detail, trap_sentence
+from app.trap_sentences import NO_SCAN, NO_SCAN_REMEDY, control_name, trap_detail, trap_sentence
 from app.units import factor
 from app.widgets.empty_state import EmptyState
 from app.widgets.page import Page

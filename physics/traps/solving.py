@@ -226,6 +226,42 @@ def lowest_power(trap: Trap, state: State, beam: str) -> float:
     return _edge(trap, state, beam, high, as_floats(found.minimum))
 
 
+def lowest_value(change: Change, start: float, state: State, *, control: str = "value") -> float:
+    """Least value of a control with which the trap still holds atoms, by halving, to a relative 1e-6.
+
+    Parameters
+    ----------
+    change : gives the trap at a value of the control.
+    start : float. Positive, near which the search begins.
+    control : what an error calls the control.
+
+    Raises
+    ------
+    NoSolution : where the trap holds at no value that is looked at, or at all of them.
+    """
+    if not start > 0.0:
+        raise ValueError(f"{control} must start from a positive value, got {start:g}")
+
+    def held(value: float) -> bool:
+        return survey(change(value), state).trapped
+
+    high = start
+    while not held(high):
+        high *= _FACTOR
+        if high > start * _FACTOR**_TIMES:
+            raise NoSolution(f"the trap holds nothing from {start:.3g} to {high:.3g}, the {control}")
+    low = high
+    while held(low):
+        low /= _FACTOR
+        if low < start / _FACTOR**_TIMES:
+            raise NoSolution(f"the trap still holds atoms at {low:.3g}, the {control}")
+    high = min(high, _FACTOR * low)
+    while high - low > _CLOSE * high:
+        middle = 0.5 * (low + high)
+        low, high = (low, middle) if held(middle) else (middle, high)
+    return high
+
+
 def _edge(trap: Trap, state: State, beam: str, power: float, minimum: Floats) -> float:
     """Where the square of the determinant of the Hessian goes to zero, coming down from a power at which it is not."""
     far, (far_square, minimum) = 1.02 * power, _stiffness(trap, state, beam, 1.02 * power, minimum)

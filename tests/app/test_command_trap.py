@@ -135,3 +135,117 @@ def test_the_verb_needs_no_window_toolkit_and_no_plotting() -> None:
         "sys.exit(any(name.split('.')[0] in ('PySide6', 'matplotlib') for name in sys.modules))"
     )
     assert subprocess.run([sys.executable, "-c", code], cwd=ROOT, capture_output=True, check=False).returncode == 0
+
+
+CROSSED = str(ROOT / "presets" / "traps" / "crossed_beams_rubidium.toml")
+ONE_BEAM = str(ROOT / "presets" / "traps" / "single_beam_lithium.toml")
+LEVITATED = str(ROOT / "presets" / "traps" / "levitated_caesium.toml")
+COILS = str(ROOT / "presets" / "traps" / "quadrupole_rubidium.toml")
+
+
+def solved_json(capsys: pytest.CaptureFixture[str], plan: str, *arguments: str) -> dict[str, Any]:
+    assert main(["trap", plan, *arguments, "--json"]) == 0
+    answer: dict[str, Any] = json.loads(capsys.readouterr().out)
+    assert list(answer) == [*KEYS, "solution"]
+    assert answer["input"]["vary"] == answer["solution"]["vary"]
+    return answer
+
+
+@pytest.mark.parametrize(
+    ("wish", "read", "wanted"),
+    [
+        ("depth=10 uK", lambda answer: answer["depth_temperature"], 10e-6),
+        ("mean_frequency=150 Hz", lambda answer: math.prod(answer["frequencies"]) ** (1.0 / 3.0), 150.0),
+        ("frequency_z=0.2 kHz", lambda answer: answer["frequencies"][2], 200.0),
+    ],
+)
+def test_a_power_is_found_for_what_is_wanted_of_the_trap(
+    wish: str, read: Any, wanted: float, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    answer = solved_json(capsys, CROSSED, "--vary", "power", "--beam", "long", "--until", wish)
+    assert read(answer) == pytest.approx(wanted, rel=1e-4)
+    solution = answer["solution"]
+    assert (solution["beam"], solution["unit"], solution["before"]) == ("long", "W", 0.52)
+    # the trap of the printed power, surveyed afresh, is the printed trap
+    text = Path(CROSSED).read_text(encoding="utf-8").replace('"520(5) mW"', f'"{solution["value"]!r} W"')
+    path = tmp_path / "solved.toml"
+    path.write_text(text, encoding="utf-8")
+    assert read(trap_json(capsys, str(path))) == pytest.approx(wanted, rel=1e-4)
+
+
+def test_all_powers_a_waist_and_a_gradient_can_be_varied(capsys: pytest.CaptureFixture[str]) -> None:
+    doubled = solved_json(capsys, CROSSED, "--vary", "waist", "--beam", "across", "--until", "frequency_x=93 Hz")
+    assert doubled["frequencies"][0] == pytest.approx(93.0, rel=1e-4)
+    assert doubled["solution"]["unit"] == "m"
+    assert solved_json(capsys, CROSSED, "--vary", "powers", "--until", "depth=20 uK")["solution"]["unit"] == "1"
+    # a quadrupole holds once its pull along gravity beats the weight: mu B' = m g, mu = muB/2 of this state
+    least = solved_json(capsys, COILS, "--vary", "gradient", "--until", "holds")["solution"]["value"]
+    weight = 86.909180531 * 1.66053906892e-27 * 9.80665
+    assert least == pytest.approx(weight / (0.5 * 9.2740100657e-24), rel=2e-3)  # gF is that near 1/2
+
+
+def test_the_lowest_power_that_holds_is_printed_with_the_one_that_stood_there(
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    assert main(["trap", ONE_BEAM, "--vary", "power", "--until", "holds"]) == 0
+    page = capsys.readouterr().out
+    assert page.startswith("Power of beam A: 4.9")
+    assert "mW (it was 9.0000 W)" in page.splitlines()[0]
+    assert "6Li" in page
+    assert "Not trapped" not in page
+
+
+def test_the_levitation_that_carries_the_atoms(capsys: pytest.CaptureFixture[str]) -> None:
+    answer = solved_json(capsys, LEVITATED, "--vary", "levitation", "--until", "levitates")
+    # m g/mu of the stretched state, mu = 0.75 muB: 31.1 G/cm
+    assert answer["solution"]["value"] == pytest.approx(0.311, rel=2e-3)
+    assert answer["sag"] == pytest.approx(0.0, abs=1e-9)
+
+
+@pytest.mark.parametrize(
+    ("plan", "arguments", "sentence"),
+    [
+        (
+            CROSSED,
+            ("power", "--until", "holds"),
+            "needs --beam with the name of a beam; the trap's beams: long, across",
+        ),
+        (CROSSED, ("power", "--beam", "B", "--until", "holds"), 'the trap has no beam "B"; its beams: long, across'),
+        (CROSSED, ("gradient", "--until", "holds"), "the coils of the trap have no gradient to vary"),
+        (CROSSED, ("power", "--beam", "long", "--until", "depth=10 kg"), '"kg" is not a unit of trap depth'),
+        (COILS, ("gradient", "--until", "mean_frequency=5 Hz"), "no gradient of the coils in T/m from"),
+        (COILS, ("powers", "--until", "holds"), "the trap has no beams whose powers could be varied"),
+        (COILS, ("gradient", "--until", "levitates"), "only the levitation can be varied until it levitates"),
+        (str(PLANS[0]), ("power", "--until", "holds"), "given by its frequencies has no beams or coils to vary"),
+    ],
+)
+def test_a_wish_that_cannot_be_met_is_one_sentence(
+    plan: str, arguments: tuple[str, ...], sentence: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["trap", plan, "--vary", *arguments]) == 1
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert sentence in captured.err
+    assert captured.err.count("\n") == 1
+
+
+@pytest.mark.parametrize(
+    ("arguments", "sentence"),
+    [
+        (("--vary", "power"), "--vary goes with --until, which is missing"),
+        (("--until", "holds"), "--until goes with --vary, which is missing"),
+        (("--vary", "colour", "--until", "holds"), "invalid choice: 'colour'"),
+        (("--vary", "power", "--until", "deep"), '"deep" is no wish; use one of depth=…, mean_frequency=…'),
+        (("--vary", "power", "--until", "depth"), 'depth needs a value, such as depth="10 uK"'),
+        (("--vary", "power", "--until", "holds=3"), "holds takes no value"),
+    ],
+)
+def test_flags_that_cannot_be_read_are_a_status_of_their_own(
+    arguments: tuple[str, ...], sentence: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    try:
+        status = main(["trap", CROSSED, *arguments])
+    except SystemExit as stop:  # argparse
+        status = int(stop.code or 0)
+    assert status == 2
+    assert sentence in capsys.readouterr().err

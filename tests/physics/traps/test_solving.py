@@ -18,6 +18,7 @@ from physics.traps.solving import (
     calibrated_waist,
     levitation_gradient,
     lowest_power,
+    lowest_value,
     power_for_depth,
     power_for_mean_frequency,
     scale_for_depth,
@@ -49,6 +50,23 @@ def test_a_beam_that_is_not_needed_has_no_lowest_power(crossed: Trap, rubidium: 
     blue = Trap(beams=(replace(crossed.beams[0], wavelength=532e-9),))
     with pytest.raises(NoSolution, match=r"^the trap holds nothing up to a power of"):
         lowest_power(blue, rubidium, "A")
+
+
+def test_the_lowest_value_of_any_control_is_found_by_halving(single: Trap, rubidium: State) -> None:
+    by_halving = lowest_value(lambda power: single.with_beam("A", power=power), 1.0, rubidium)
+    assert by_halving == pytest.approx(lowest_power(single, rubidium, "A"), rel=1e-4)
+    # a quadrupole holds once mu B' = m g on its strong, upright axis
+    assert rubidium.zeeman_slope is not None
+    weight = rubidium.mass * standard_gravity
+    gradient = lowest_value(lambda value: Trap(coils=Coils(gradient=value)), 1.0, rubidium)
+    assert gradient == pytest.approx(weight / rubidium.zeeman_slope.value, rel=1e-5)
+    free = replace(single, gravity=None)
+    with pytest.raises(NoSolution, match=r"^the trap still holds atoms at 0.00\d+, the power in W$"):
+        lowest_value(lambda power: free.with_beam("A", power=power), 1.0, rubidium, control="power in W")
+    with pytest.raises(NoSolution, match=r"^the trap holds nothing from 1e-08 to 2.05e-05, the power in W$"):
+        lowest_value(lambda power: single.with_beam("A", power=power), 1e-8, rubidium, control="power in W")
+    with pytest.raises(ValueError, match=r"^value must start from a positive value, got 0$"):
+        lowest_value(lambda power: single.with_beam("A", power=power), 0.0, rubidium)
 
 
 def test_power_for_a_depth_and_for_a_mean_frequency(crossed: Trap, rubidium: State) -> None:
