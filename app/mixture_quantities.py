@@ -204,3 +204,15 @@ _ROWS = (
 
 MIXTURE_QUANTITIES = MappingProxyType({row.name: row for row in _ROWS})
 """NAME -> row, in the order in which they are shown."""
+
+CONTACT_COLUMNS = tuple(
+    MIXTURE_QUANTITIES[name]
+    for name in (
+        "overlap_share",
+        "distance",
+        "coolant_collision_rate",
+        "passenger_collision_rate",
+        "relaxation_time",
+    )
+)
+"""Those that are also columns of `physics.sympathetic.ContactRows`, along a ramp."""

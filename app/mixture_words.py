@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from collections.abc import Callable
 
     from app.answers.mixture import MixtureAnswer
+    from app.answers.sympathetic import SympatheticAnswer
     from app.quantity_row import Row
     from physics.pair_scattering import PairLength
 
@@ -201,3 +202,39 @@ def mixture_rows(answer: MixtureAnswer) -> list[tuple[str, str, str, str]]:
         for row in MIXTURE_QUANTITIES.values()
         if math.isfinite(answer.value(row.name))
     ]
+
+
+# --- along a ramp ----------------------------------------------------------------------------------------------------
+
+
+def sympathetic_caveat_texts(answer: SympatheticAnswer) -> list[str]:
+    """The sentences of all caveats of a ramp with a passenger, gravest first."""
+    left = answer.run.passenger.explanation
+    return [mixture_caveat_text(caveat, answer.between, why=left, left=left) for caveat in answer.caveats]
+
+
+def sympathetic_caveat_lines(answer: SympatheticAnswer) -> tuple[CaveatLine, ...]:
+    """The same for reading."""
+    texts = sympathetic_caveat_texts(answer)
+    return tuple(line_of(caveat.severity, text) for caveat, text in zip(answer.caveats, texts, strict=True))
+
+
+def sympathetic_verdict(answer: SympatheticAnswer) -> str:
+    """What becomes of the passenger, in one sentence."""
+    run, name = answer.run, answer.states[1].key
+    if not len(run.passenger.time):
+        why = f": {run.passenger.explanation}" if run.passenger.explanation else ""
+        return _("{name} is not held from the start{why}.").format(name=name, why=why)
+    end, passenger = run.passenger.final, run.passenger
+    ratio = _("T/Tc") if passenger.gas.bosons else _("T/TF")
+    said = _("{atoms} atoms of {name} at {temperature}, {ratio} = {value}, {share} of them left").format(
+        atoms=number(end["atoms"]),
+        name=name,
+        temperature=temperature(end["temperature"]),
+        ratio=ratio,
+        value=number(end["reduced_temperature"]),
+        share=percent(end["atoms"] / passenger.budget.atoms_before),
+    )
+    coolant = float(run.coolant.temperature[len(passenger.time) - 1])
+    beside = _("beside {name} at {temperature}").format(name=answer.states[0].key, temperature=temperature(coolant))
+    return f"{said}, {beside}."

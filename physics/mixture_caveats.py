@@ -9,17 +9,18 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 from enum import Enum
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from physics.caveats import Severity
-from physics.evaporation_rates import Process
-from physics.evaporation_track import EndReason
 from physics.miscibility import Mixing
 from physics.mixtures import Mixture
 from physics.pair_scattering import PairLength
 from physics.particles import Certainty
-from physics.sympathetic import SympatheticCooling
+
+if TYPE_CHECKING:
+    from physics.sympathetic import SympatheticCooling
 
 
 class MixtureCaveatKind(Enum):
@@ -121,6 +122,9 @@ def mixture_caveats(mixture: Mixture, *, lifetime: float = math.inf) -> _Found:
 
 def sympathetic_caveats(run: SympatheticCooling) -> _Found:
     """Of two clouds along a ramp; those of the coolant alone are `ramp_caveats`."""
+    from physics.evaporation_rates import Process
+    from physics.evaporation_track import EndReason
+
     kinds, passenger = MixtureCaveatKind, run.passenger
     yield _note(kinds.LOSSES_BETWEEN_UNKNOWN)
     if not len(passenger.time):
@@ -129,7 +133,7 @@ def sympathetic_caveats(run: SympatheticCooling) -> _Found:
     early = passenger.time[-1] < run.coolant.time[-1] * (1.0 - 1e-9)
     if early or passenger.reason is EndReason.NOT_TRAPPED:
         yield _warning(kinds.PASSENGER_LEAVES, float(passenger.time[-1]))
-    lowest = float(np.min(run.contact.share))
+    lowest = float(np.min(run.contact.overlap_share))
     if lowest < _APART[0]:
         yield _either(kinds.APART, lowest, lowest < _APART[1])
     cut = (passenger.budget.atoms[Process.EVAPORATED] + passenger.budget.atoms[Process.SPILLED]) / (

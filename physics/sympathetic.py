@@ -106,16 +106,16 @@ class ContactRows:
 
     Attributes
     ----------
-    share : overlap over that of the same clouds around one centre. [1]
-    displacement : of the minima. [m]
-    coolant_rate, passenger_rate : collisions with the other kind, per atom of each. [1/s]
+    overlap_share : overlap over that of the same clouds around one centre. [1]
+    distance : of the minima. [m]
+    coolant_collision_rate, passenger_collision_rate : collisions with the other kind, per atom of each. [1/s]
     relaxation_time : in which the difference of the temperatures falls by e. [s] NaN without collisions.
     """
 
-    share: Floats
-    displacement: Floats
-    coolant_rate: Floats
-    passenger_rate: Floats
+    overlap_share: Floats
+    distance: Floats
+    coolant_collision_rate: Floats
+    passenger_collision_rate: Floats
     relaxation_time: Floats
 
 
@@ -342,9 +342,9 @@ def _contact_rows(contacts: list[ContactNow]) -> ContactRows:
     rates = np.array([now.rates for now in contacts]).reshape(-1, 2)
     relaxation = np.array([now.relaxation for now in contacts])
     return ContactRows(
-        share=np.array([now.share for now in contacts]),
-        displacement=np.array([now.displacement for now in contacts]),
-        coolant_rate=rates[:, 0],
-        passenger_rate=rates[:, 1],
+        overlap_share=np.array([now.share for now in contacts]),
+        distance=np.array([now.displacement for now in contacts]),
+        coolant_collision_rate=rates[:, 0],
+        passenger_collision_rate=rates[:, 1],
         relaxation_time=np.divide(1.0, relaxation, out=np.full(len(contacts), np.nan), where=relaxation > 0.0),
     )

@@ -17,6 +17,7 @@ from physics.particles import Certainty
 
 if TYPE_CHECKING:
     from app.answers.ramp_inputs import MeasuredCloud
+    from app.answers.sympathetic import SympatheticAnswer
     from app.answers.watched_path import Tick
     from app.plan import Plan, StageChoice
     from physics.evaporation import Evaporation
@@ -36,6 +37,7 @@ RAMP_FIELDS = (
     "ramp",
     "measured",
     "limits",
+    "passenger",
 )  # fmt: skip
 """What a simulated or designed ramp depends on."""
 
@@ -50,6 +52,8 @@ class RampAnswer:
     first : number of the plan's stage with which it begins, from 0
     stages : of the plan
     measured : the cloud that it begins with, where that was measured
+    passenger : the passenger along with it, whose heat is in `run`; None without one
+    passenger_left_out : why there is none though the plan has one; else empty
     """
 
     state: State
@@ -62,6 +66,8 @@ class RampAnswer:
     begin: float = 0.0
     first: int = 0
     measured: MeasuredCloud | None = None
+    passenger: SympatheticAnswer | None = None
+    passenger_left_out: str = ""
 
     @property
     def bosons(self) -> bool:
@@ -110,7 +116,7 @@ def _ramp(plan: Plan, since: str | None) -> RampAnswer:
 
 
 def simulated(plan: Plan, start: RampStart, tick: Tick | None = None) -> RampAnswer:
-    """The ramp from a start. `tick` as of `ramp_answer`."""
+    """The ramp from a start, with the passenger if the plan has one. `tick` as of `ramp_answer`."""
     from physics.evaporation import evaporate
     from physics.ramp_caveats import ramp_caveats
     from physics.ramp_extremes import ramp_extremes
@@ -119,13 +125,17 @@ def simulated(plan: Plan, start: RampStart, tick: Tick | None = None) -> RampAns
         raise PlanError("nothing is left of the ramp after its last stage")
     state, target, gas = state_of(plan), target_of(plan), gas_of(plan)
     used = losses_in_use(plan, state, {name: quantity.value for name, quantity in typed_losses(plan).items()})
-    ramp, path = start.ramp, start.path
-    if tick is not None:
-        from app.answers.watched_path import Progress, WatchedPath, surveys_along, watched_ramp
+    passenger, left_out = _with_passenger(plan, start, tick)
+    if passenger is None:
+        ramp, path = start.ramp, start.path
+        if tick is not None:
+            from app.answers.watched_path import Progress, WatchedPath, surveys_along, watched_ramp
 
-        progress = Progress(tick=tick, surveys=surveys_along(ramp, path))
-        ramp, path = watched_ramp(ramp, progress), WatchedPath(path=path, progress=progress)
-    run = evaporate(gas, start.atoms, start.temperature, ramp, path, losses=used.losses, target=target)
+            progress = Progress(tick=tick, surveys=surveys_along(ramp, path))
+            ramp, path = watched_ramp(ramp, progress), WatchedPath(path=path, progress=progress)
+        run = evaporate(gas, start.atoms, start.temperature, ramp, path, losses=used.losses, target=target)
+    else:
+        run = passenger.run.coolant
     extremes = ramp_extremes(run)
     scattering = scattering_in_use(plan, state)
     return RampAnswer(
@@ -142,7 +152,21 @@ def simulated(plan: Plan, start: RampStart, tick: Tick | None = None) -> RampAns
         begin=start.begin,
         first=start.stage,
         measured=start.measured,
+        passenger=passenger,
+        passenger_left_out=left_out,
     )
+
+
+def _with_passenger(plan: Plan, start: RampStart, tick: Tick | None) -> tuple[SympatheticAnswer | None, str]:
+    """The ramp with the plan's passenger; without one, or where it cannot be computed, None and why."""
+    if plan.passenger is None:
+        return None, ""
+    from app.answers.sympathetic import sympathetic_run
+
+    try:
+        return sympathetic_run(plan, start, tick), ""
+    except PlanError as error:
+        return None, str(error)
 
 
 def _one_way_out(plan: Plan) -> bool:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 from collections.abc import Iterator
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
@@ -129,8 +130,13 @@ def _stage_at(plan: Plan, cloud: MeasuredCloud) -> int:
 
 
 def paths_of(plan: Plan) -> Iterator[TrapPath]:
-    """The trap of the plan, and every one that its ramp hands the cloud to."""
+    """The trap of the plan, as its passenger sees it too, and every one that its ramp hands the cloud to."""
     yield path_of(plan)
+    if plan.passenger is not None:
+        from app.answers.passenger import passenger_plan
+
+        with suppress(PlanError):  # one that cannot be is left out of the ramp
+            yield path_of(passenger_plan(plan))
     for stage in plan.ramp:
         if stage.trap is not None:
             yield path_of(replace(plan, trap=stage.trap))

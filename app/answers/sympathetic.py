@@ -9,10 +9,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from app.answers.part import part
-from app.answers.passenger import between_of, passenger_plan
+from app.answers.passenger import between_of, passenger_of, passenger_plan
 from app.answers.ramp_inputs import gas_of, losses_of, path_of, state_of, target_of
-from app.answers.ramp_start import start_of
 from app.plan_field import PlanError
 from physics.caveats import Severity
 from physics.constants import boltzmann
@@ -27,14 +25,12 @@ from physics.pair_scattering import PairLength
 from physics.species import State
 
 if TYPE_CHECKING:
+    from app.answers.ramp_start import RampStart
     from app.answers.watched_path import Tick
     from app.plan import Plan
     from physics.ramps import Ramp
     from physics.sympathetic import SympatheticCooling
     from physics.trap_path import TrapPath
-
-SYMPATHETIC_FIELDS = ("species", "trap", "cloud.atoms", "cloud.temperature", "losses", "target", "ramp", "passenger")
-"""What a ramp with a passenger depends on."""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -60,10 +56,7 @@ class SympatheticAnswer:
 
 
 def sympathetic_answer(plan: Plan, tick: Tick | None = None) -> SympatheticAnswer:
-    """The plan's ramp with its passenger.
-
-    A trap of beams and coils is surveyed along the ramp for both species, for seconds where it was not before; `tick`
-    is told how far that is, and `Cancelled` raised where it says to stop.
+    """The plan's ramp with its passenger; a part of `ramp_answer`, which keeps it.
 
     Raises
     ------
@@ -73,26 +66,26 @@ def sympathetic_answer(plan: Plan, tick: Tick | None = None) -> SympatheticAnswe
     ValueError
         The first species has a scattering length that is needed and not known; or numbers that nothing can follow.
     """
-    kept = _sympathetic.kept(plan)
-    if kept is None and tick is not None:
-        kept = _simulated(plan, tick)
-        _sympathetic.take(kept, plan)
-    return kept if kept is not None else _sympathetic(plan)
+    from app.answers.ramp import ramp_answer
+
+    passenger_of(plan)
+    found = ramp_answer(plan, None, tick)
+    if found.passenger is None:
+        raise PlanError(found.passenger_left_out)
+    return found.passenger
 
 
-@part(*SYMPATHETIC_FIELDS)
-def _sympathetic(plan: Plan) -> SympatheticAnswer:
-    return _simulated(plan, None)
-
-
-def _simulated(plan: Plan, tick: Tick | None) -> SympatheticAnswer:
+def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> SympatheticAnswer:
+    """The same from the start of a ramp. A trap of beams and coils is surveyed along it for both species; `tick` is
+    told how far that is, and `Cancelled` raised where it says to stop."""
     from physics.sympathetic import Passenger, evaporate_with_passenger
 
     own, between = passenger_plan(plan), between_of(plan)
     if between.value is None:
         assert between.reason is not None
         raise PlanError(f"{between.reason.value}; give passenger.scattering_length")
-    start = start_of(plan)
+    if start.measured is not None:
+        raise PlanError(f'the passenger is not known at the time of the measured cloud "{start.measured.choice.label}"')
     if start.ramp is None or any(stage.transfer is not None for stage in start.ramp.stages):
         raise PlanError("a ramp that hands the cloud over to another trap is not computed with a second species")
     ramp, path = start.ramp, start.path

@@ -11,6 +11,7 @@ if TYPE_CHECKING:
     from app.answers.ramp_sensitivity import SensitivityAnswer
     from app.answers.waypoints import DeparturesAnswer, WaypointsAnswer
     from app.commands.evaporate import Evaporated
+    from physics.evaporation import Evaporation
     from physics.evaporation_budget import Budget
 
 CONTRACT = (
@@ -52,22 +53,10 @@ def _no_ramp() -> dict[str, Any]:
 
 def ramp_body(answer: RampAnswer) -> dict[str, Any]:
     """A simulated ramp. A control whose values differ from the trap depth though it is called so is "depth setting"."""
-    from app.ramp_quantities import RAMP_COLUMNS, control_column
     from app.ramp_words import limiting, ramp_caveat_text, ramp_verdict
 
     run = answer.run
-    columns, units = {}, {}
-    for name, column in RAMP_COLUMNS.items():
-        columns[name] = _list(run.time if name == "time" else getattr(run.rows, name))
-        units[name] = column.unit
-    columns["stage"], units["stage"] = [int(number) + 1 + answer.first for number in run.stage], "1"
-    controls = []
-    for control, values in run.controls.items():
-        column = control_column(control)
-        numbers = _list(values)
-        name = column.name if column.name != "depth" or numbers == columns["depth"] else "depth setting"
-        columns[name], units[name] = numbers, column.unit
-        controls.append({"name": name, "control": control.knob.value, "beam": control.beam})
+    columns, units, controls = _columns(run, answer.first)
     return {
         "columns": columns,
         "units": units,
@@ -113,6 +102,71 @@ def ramp_body(answer: RampAnswer) -> dict[str, Any]:
         ],
         "verdict": ramp_verdict(answer),
         "limits": limiting(answer) or None,
+        **_passenger(answer),
+    }
+
+
+def _columns(run: Evaporation, first: int) -> tuple[dict[str, Any], dict[str, str], list[dict[str, Any]]]:
+    """The columns of one gas by name, their units, and which of them are controls."""
+    from app.ramp_quantities import RAMP_COLUMNS, control_column
+
+    columns, units = {}, {}
+    for name, column in RAMP_COLUMNS.items():
+        columns[name] = _list(run.time if name == "time" else getattr(run.rows, name))
+        units[name] = column.unit
+    columns["stage"], units["stage"] = [int(number) + 1 + first for number in run.stage], "1"
+    controls = []
+    for control, values in run.controls.items():
+        column = control_column(control)
+        numbers = _list(values)
+        name = column.name if column.name != "depth" or numbers == columns["depth"] else "depth setting"
+        columns[name], units[name] = numbers, column.unit
+        controls.append({"name": name, "control": control.knob.value, "beam": control.beam})
+    return columns, units, controls
+
+
+def _passenger(answer: RampAnswer) -> dict[str, Any]:
+    """What a passenger adds: its columns, with those of the contact; why it is left out; nothing without one."""
+    from app.mixture_quantities import CONTACT_COLUMNS
+    from app.mixture_words import sympathetic_caveat_texts, sympathetic_verdict
+
+    if answer.passenger_left_out:
+        return {"passenger": {"left_out": answer.passenger_left_out}}
+    if answer.passenger is None:
+        return {}
+    found = answer.passenger
+    run, contact, state = found.run.passenger, found.run.contact, found.states[1]
+    columns, units, _ = _columns(run, answer.first)
+    for row in CONTACT_COLUMNS:
+        columns[row.name], units[row.name] = _list(getattr(contact, row.name)), row.unit
+    return {
+        "passenger": {
+            "key": state.key,
+            "state": state.name,
+            "columns": columns,
+            "units": units,
+            "final": {name: numbers[-1] if numbers else None for name, numbers in columns.items()},
+            "reason": run.reason.value,
+            "explanation": run.explanation or None,
+            "atoms_before": run.budget.atoms_before,
+            "atoms_after": run.budget.atoms_after,
+            "budget": _atoms(run.budget),
+            "energy_before": _finite(run.budget.energy_before),
+            "energy_after": _finite(run.budget.energy_after),
+            "energy_budget": {process: _finite(energy) for process, energy in _energy(run.budget).items()},
+            "scattering_length": found.between.value,
+            "scattering_length_source": found.between.source or None,
+            "caveats": [
+                {
+                    "id": caveat.id,
+                    "severity": caveat.severity.value,
+                    "text": text,
+                    "value": _finite(caveat.value),
+                }
+                for caveat, text in zip(found.caveats, sympathetic_caveat_texts(found), strict=True)
+            ],
+            "verdict": sympathetic_verdict(found),
+        }
     }
 
 

@@ -49,6 +49,7 @@ def evaporate_text(found: Evaporated) -> str:
         blocks += [_design(found.design), _trade_off(found.design)]
     if found.answer is not None:
         blocks += [_stages(found.answer), [ramp_verdict(found.answer)], _budget(found.answer), _limits(found)]
+        blocks += _passenger(found.answer)
     if found.waypoints is not None:
         blocks.append(_waypoints(found.waypoints))
         blocks.append(_departures(found.departures))
@@ -251,8 +252,44 @@ def _sensitivity(found: SensitivityAnswer, planned: float) -> list[str]:
     ]
 
 
-def _caveats(answer: RampAnswer) -> list[str]:
-    if not answer.caveats:
+def _passenger(answer: RampAnswer) -> list[list[str]]:
+    """The passenger at the ends of the stages, and what becomes of it; nothing without one."""
+    if answer.passenger_left_out:
+        return [[_("The passenger is left out: {why}.").format(why=answer.passenger_left_out)]]
+    if answer.passenger is None:
         return []
+    from app.mixture_words import sympathetic_verdict
+
+    found = answer.passenger
+    run, contact, state = found.run.passenger, found.run.contact, found.states[1]
+    heading = _("{species}, {state}, the passenger").format(species=state.key, state=state.name)
+    ends = [0, *(stage.last for stage in run.stages)] if len(run.time) else []
+    ratio = _("T/Tc") if run.gas.bosons else _("T/TF")
+    header = (_("until"), "N", "T", "D", ratio, "η", _("overlap"), "Γ₂₁ [1/s]", "τ₁₂")
+    table = [
+        (
+            duration(float(run.time[row])),
+            number(float(run.rows.atoms[row]), 3),
+            temperature(float(run.rows.temperature[row])),
+            number(float(run.rows.peak_phase_space_density[row]), 3),
+            number(float(run.rows.reduced_temperature[row]), 3),
+            number(float(run.rows.truncation[row]), 2),
+            number(float(contact.overlap_share[row]), 2),
+            number(float(contact.passenger_collision_rate[row]), 2),
+            duration(float(contact.relaxation_time[row])) if math.isfinite(contact.relaxation_time[row]) else "–",
+        )
+        for row in ends
+    ]
+    lines = columns([header, *table], right=range(len(header))) if table else []
+    return [[heading, *lines], [sympathetic_verdict(found)]]
+
+
+def _caveats(answer: RampAnswer) -> list[str]:
     lines = [f"  {SIGNS[c.severity]} {WEIGHTS[c.severity]}: {ramp_caveat_text(c)}" for c in answer.caveats]
+    if answer.passenger is not None:
+        from app.mixture_words import sympathetic_caveat_lines
+
+        lines += [f"  {line.sign} {line.word}: {line.sentence}" for line in sympathetic_caveat_lines(answer.passenger)]
+    if not lines:
+        return []
     return [_("What this answer does not cover"), *lines]

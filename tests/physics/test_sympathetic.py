@@ -68,7 +68,10 @@ def assert_balanced(run: SympatheticCooling) -> None:
     given, taken = (one.budget.energy[Process.CONTACT] for one in (run.coolant, run.passenger))
     assert given == pytest.approx(-taken, rel=1e-9)
     rows = len(run.passenger.time)
-    assert all(len(getattr(run.contact, name)) == rows for name in ("share", "coolant_rate", "relaxation_time"))
+    assert all(
+        len(getattr(run.contact, name)) == rows
+        for name in ("overlap_share", "coolant_collision_rate", "relaxation_time")
+    )
 
 
 def test_two_spin_states_are_one_gas_of_two() -> None:
@@ -88,7 +91,7 @@ def test_two_spin_states_are_one_gas_of_two() -> None:
         assert run.atoms == pytest.approx(alone.atoms, rel=1e-4)
         assert run.temperature == pytest.approx(alone.temperature, rel=1e-4)
         assert run.rows.evaporation_rate == pytest.approx(alone.rows.evaporation_rate, rel=1e-3)
-    assert shared.contact.coolant_rate == pytest.approx(alone.rows.elastic_collision_rate, rel=1e-3)
+    assert shared.contact.coolant_collision_rate == pytest.approx(alone.rows.elastic_collision_rate, rel=1e-3)
     assert_balanced(shared)
 
 
@@ -163,8 +166,10 @@ def test_sag_takes_the_clouds_apart() -> None:
         scattering_length=LENGTH, vertical=2,
     )  # fmt: skip
     run = evaporate_with_passenger(RUBIDIUM, 1e7, 2.5e-5, cut(3e-6), trap(HEAVY, 100.0, 100.0, 100.0), soft)
-    assert run.contact.displacement == pytest.approx(np.full(len(run.contact.share), (155.26 - 24.84) * 1e-6), rel=1e-3)
-    assert run.contact.share[-1] < 0.3 * run.contact.share[0]
+    assert run.contact.distance == pytest.approx(
+        np.full(len(run.contact.overlap_share), (155.26 - 24.84) * 1e-6), rel=1e-3
+    )
+    assert run.contact.overlap_share[-1] < 0.3 * run.contact.overlap_share[0]
     assert run.passenger.temperature[-1] > 1.5 * run.coolant.temperature[-1]
 
 
