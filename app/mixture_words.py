@@ -98,6 +98,10 @@ _SENTENCES: MappingProxyType[MixtureCaveatKind, tuple[str, Callable[[float], str
               "estimated."),
             number,
         ),
+        _KINDS.PASSENGER_BLOCKED: (
+            _("At T/TF = {value} filled levels of the passenger block collisions: it cools more slowly than said."),
+            number,
+        ),
         _KINDS.PASSENGER_LAGS: (
             _("At the end the passenger is {value} times as hot as the first species: it cannot follow. Ramp slower."),
             number,

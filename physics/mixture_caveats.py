@@ -42,6 +42,7 @@ class MixtureCaveatKind(Enum):
     LOSSES_BETWEEN_UNKNOWN = "no value: losses in collisions of the two species are left out"
     PASSENGER_LEAVES = "time [s] at which the passenger is not held any more, or lost"
     PASSENGER_CUT = "lowest depth of the passenger over kT: it evaporates too"
+    PASSENGER_BLOCKED = "lowest T/TF of the passenger: filled levels block collisions, which is left out"
     PASSENGER_LAGS = "temperature of the passenger over that of the coolant at the end"
     PASSENGER_DEPTH_STAYS = "depth [K] that the passenger keeps while that of the first species moves"
     PASSENGER_DEPTH_UNKNOWN = "depth [K] that the passenger is taken to have: the largest of the ramp"
@@ -68,6 +69,7 @@ _PUSHED = (0.1, 0.5)
 _SLOW = (0.1, 1.0)
 _CUT_SHARE = (0.01, 0.1)
 _LAG = (1.1, 1.5)
+_FERMI = 0.5
 
 _Found = Iterator[MixtureCaveat]
 
@@ -144,6 +146,8 @@ def sympathetic_caveats(run: SympatheticCooling) -> _Found:
     densest = float(np.max(passenger.rows.classical_phase_space_density))
     if densest > _CLASSICAL_DENSITY:
         yield _note(kinds.DEGENERATE_MIXTURE, densest)
+    if not passenger.gas.bosons and float(np.min(passenger.rows.reduced_temperature)) < _FERMI:
+        yield _note(kinds.PASSENGER_BLOCKED, float(np.min(passenger.rows.reduced_temperature)))
     lag = float(passenger.temperature[-1] / run.coolant.temperature[len(passenger.time) - 1])
     if lag > _LAG[0]:
         yield _either(kinds.PASSENGER_LAGS, lag, lag > _LAG[1])

@@ -165,7 +165,7 @@ def _with_passenger(plan: Plan, start: RampStart, tick: Tick | None) -> tuple[Sy
 
     try:
         return sympathetic_run(plan, start, tick), ""
-    except PlanError as error:
+    except ValueError as error:  # what is wrong with the first species alone is said there
         return None, str(error)
 
 

@@ -8,7 +8,9 @@ from dataclasses import dataclass
 
 import numpy as np
 import pytest
+from scipy.integrate import solve_ivp
 
+from physics.checks import Floats
 from physics.constants import atomic_mass, bohr_radius, boltzmann
 from physics.evaporation import Cancelled, EndReason, evaporate
 from physics.evaporation_rates import Process
@@ -112,6 +114,38 @@ def test_two_clouds_in_contact_come_to_one_temperature() -> None:
     mean = (1e6 * run.coolant.temperature + 3e3 * run.passenger.temperature) / (1e6 + 3e3)
     assert mean == pytest.approx(np.full(len(mean), common), rel=1e-6)
     assert_balanced(run)
+
+
+def test_relaxation_by_the_published_law() -> None:
+    # d(T1 - T2)/dt = -(xm/3)(1/N1 + 1/N2) Z12 (T1 - T2), Z12 with the sag between the two, written out here and
+    # followed by another integrator: M. Mudrich et al., Phys. Rev. Lett. 88, 253001 (2002).
+    a, N1, N2, starts = 5.0 * bohr_radius, 1e6, 4e5, (2e-5, 4e-5)
+    f1, f2 = np.array([100.0, 90.0, 60.0]), np.array([150.0, 140.0, 80.0])
+    apart = 9.80665 * (1.0 / (2.0 * math.pi * f1[2]) ** 2 - 1.0 / (2.0 * math.pi * f2[2]) ** 2)
+
+    def slope(_: float, T: Floats) -> list[float]:
+        widths = boltzmann * (T[0] / (HEAVY * f1**2) + T[1] / (LIGHT * f2**2)) / (2.0 * math.pi) ** 2
+        overlap = math.exp(-(apart**2) / (2.0 * widths[2])) / float(np.prod(np.sqrt(2.0 * math.pi * widths)))
+        speed = math.sqrt(8.0 * boltzmann / math.pi * (T[0] / HEAVY + T[1] / LIGHT))
+        Z = 4.0 * math.pi * a * a * speed * N1 * N2 * overlap
+        share = 4.0 * HEAVY * LIGHT / (HEAVY + LIGHT) ** 2
+        heat = share / 3.0 * Z * (T[0] - T[1])
+        return [-heat / N1, heat / N2]
+
+    still = Gas(statistics=Statistics.FERMI, mass=HEAVY)
+    run = evaporate_with_passenger(
+        still, N1, starts[0], hold(3000.0), trap(HEAVY, *f1, depth=1.0),
+        Passenger(
+            gas=POTASSIUM, path=trap(LIGHT, *f2, depth=1.0), atoms=N2, temperature=starts[1], scattering_length=a,
+            vertical=2,
+        ),
+    )  # fmt: skip
+    time = run.coolant.time
+    exact = solve_ivp(slope, (0.0, 3000.0), starts, t_eval=time, rtol=1e-10, atol=1e-16).y
+    assert exact[1, -1] - exact[0, -1] < 0.5 * (starts[1] - starts[0])
+    # k^2 a^2 is 1e-3 there.
+    assert run.coolant.temperature == pytest.approx(exact[0], rel=1e-3)
+    assert run.passenger.temperature == pytest.approx(exact[1], rel=1e-3)
 
 
 def test_equal_temperatures_stay_equal() -> None:
