@@ -20,7 +20,6 @@ from app.answers.map import (
     map_with_progress,
     usual_limits,
 )
-from app.answers.mixture import MixtureAnswer, mixture_answer
 from app.answers.models import ModelsAnswer, models_answer
 from app.answers.preparation import prepare_trap, surveyed
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
@@ -42,7 +41,6 @@ __all__ = [
     "MapAnswer",
     "MapLimits",
     "Method",
-    "MixtureAnswer",
     "ModelsAnswer",
     "ProfileAnswer",
     "RateSet",
@@ -57,7 +55,6 @@ __all__ = [
     "map_answer",
     "map_points",
     "map_with_progress",
-    "mixture_answer",
     "models_answer",
     "prepare_trap",
     "profile_answer",

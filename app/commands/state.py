@@ -10,7 +10,8 @@ from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
 from app.commands.trouble import fail
 
 if TYPE_CHECKING:
-    from app.engine import CloudAnswer, MixtureAnswer
+    from app.answers.mixture import MixtureAnswer
+    from app.engine import CloudAnswer
     from app.explanations import Explanation
     from app.plan import Plan
     from app.quantities import Row
@@ -55,7 +56,7 @@ def run(args: argparse.Namespace) -> int:
 def _mixture(plan: Plan) -> MixtureAnswer | None:
     if plan.passenger is None:
         return None
-    from app.engine import mixture_answer
+    from app.answers.mixture import mixture_answer
 
     return mixture_answer(plan)
 
