@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import math
-from dataclasses import replace
-from typing import cast
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, cast
 
 import numpy as np
 from contourpy import ContourGenerator, LineType, contour_generator
@@ -15,6 +15,9 @@ from app.figures.ticks import power_text
 from app.language import translate as _
 from app.words import number, verdict
 from physics.models import Model
+
+if TYPE_CHECKING:
+    from physics.evaporation import Evaporation
 
 SPLIT = 0.62
 """Place of the threshold in the colour scale: below it the thermal cloud, above it the degenerate one."""
@@ -67,10 +70,65 @@ def map_picture(answer: MapAnswer, cloud: CloudAnswer) -> Picture:
     )
 
 
-def with_cloud(ground: Picture, cloud: CloudAnswer) -> Picture:
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Track:
+    """A simulated ramp on the map. measured : (atoms, temperature [K]) of clouds that were measured on the way."""
+
+    run: Evaporation
+    measured: tuple[tuple[float, float], ...] = ()
+
+
+def with_cloud(ground: Picture, cloud: CloudAnswer, track: Track | None = None) -> Picture:
     """A map of the same gas with another cloud on it: what a drag changes, and nothing else."""
     still = tuple(curve for curve in ground.curves if curve.role is not Role.CLOUD)
-    return replace(ground, curves=(*still, *_evaporation(cloud)), marks=(_cloud_mark(cloud),), summary=verdict(cloud))
+    way: tuple[Curve, ...] = ()
+    stages: tuple[Mark, ...] = ()
+    labels: tuple[Label, ...] = ()
+    if track is not None and len(track.run.time):
+        way, stages, labels = _way(track), _stage_marks(track), _stage_labels(track, ground)
+    return replace(
+        ground,
+        curves=(*still, *_evaporation(cloud), *way),
+        # The cloud last, so that it is on top and first under the pointer.
+        marks=(*stages, _cloud_mark(cloud)),
+        labels=(*labels, *ground.labels),
+        summary=verdict(cloud),
+    )
+
+
+def _way(track: Track) -> tuple[Curve, ...]:
+    rows = track.run.rows
+    return (Curve(name=_("simulated ramp"), role=Role.TRACK, x=rows.atoms, y=rows.temperature),)
+
+
+def _stage_marks(track: Track) -> tuple[Mark, ...]:
+    """Where each stage ends, and clouds that were measured."""
+    rows = track.run.rows
+    ends = [
+        Mark(name="", role=Role.TRACK, x=float(rows.atoms[stage.last]), y=float(rows.temperature[stage.last]))
+        for stage in track.run.stages
+    ]
+    seen = [
+        Mark(name=_("measured"), role=Role.MEASURED, x=atoms, y=kelvin)
+        for atoms, kelvin in track.measured
+        if math.isfinite(kelvin)
+    ]
+    return (*ends, *seen)
+
+
+def _stage_labels(track: Track, ground: Picture) -> tuple[Label, ...]:
+    """The number of each stage, a little to the left of where it ends."""
+    rows = track.run.rows
+    aside = (ground.x.low / ground.x.high) ** 0.035
+    return tuple(
+        Label(
+            text=f"{stage.number + 1}",
+            role=Role.TRACK,
+            x=float(rows.atoms[stage.last]) * aside,
+            y=float(rows.temperature[stage.last]),
+        )
+        for stage in track.run.stages
+    )
 
 
 def _boson_field(answer: MapAnswer) -> Field:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from typing import Any
 
+from PySide6.QtGui import QShowEvent
 from PySide6.QtWidgets import QWidget
 
 from app.answers.csv_text import map_csv
@@ -18,7 +19,7 @@ from app.engine import (
     map_with_progress,
     usual_limits,
 )
-from app.figures.map import map_picture, with_cloud
+from app.figures.map import Track, map_picture, with_cloud
 from app.figures.picture import Picture
 from app.figures.theme import Theme
 from app.language import translate as _
@@ -26,6 +27,7 @@ from app.moving import moved_quantity
 from app.newest import Job, Steps, Watch
 from app.plan import CloudChoice, Plan
 from app.units import ATOM_NUMBER, TEMPERATURE
+from app.widgets.pace import Pace
 from app.widgets.page import Page
 from app.words import number, temperature
 from physics.cloud import equilibrium
@@ -44,6 +46,14 @@ class _Ground:
     picture: Picture
 
 
+@dataclass(frozen=True, eq=False)
+class _Way:
+    """The plan's simulated ramp; `depends_on` as above. None: there is none, or it has no answer."""
+
+    depends_on: object
+    track: Track | None
+
+
 class MapPage(Page):
     title = "Map"
 
@@ -55,6 +65,8 @@ class MapPage(Page):
         self.column.addWidget(self.plot.canvas, 1)
         self.column.addWidget(self.bar)
         self._ground: _Ground | None = None
+        self._way: _Way | None = None
+        self._pace = Pace()
         self._limits: MapLimits | None = None
         self._gas: object = None  # what the limits were chosen for
         self._drag = 0
@@ -69,6 +81,34 @@ class MapPage(Page):
         self.plot.view_changed.connect(self.part_wanted)
 
     def part(self, plan: Plan) -> Job | None:
+        job = self._map_job(plan)
+        if not self._wants_way(plan):
+            return job
+
+        def both() -> tuple[_Way, Any]:
+            way = _way_of(plan)
+            return way, job() if callable(job) else None
+
+        def in_steps(watch: Watch) -> Any:
+            assert isinstance(job, Steps)
+            return job.run(watch) if watch.deliver(_way_of(plan)) else None
+
+        if isinstance(job, Steps):
+            return Steps(what=job.what, depends_on=job.depends_on, run=in_steps)
+        if not self._pace.begin():
+            return job
+        return both
+
+    def _wants_way(self, plan: Plan) -> bool:
+        """Whether the plan has a ramp that is quick to simulate, or is there already, and is not on show."""
+        if not plan.ramp or (self._way is not None and self._way.depends_on == _what_a_way_depends_on(plan)):
+            return False
+        from app.answers.ramp import kept_ramp
+
+        harmonic = plan.trap.harmonic and all(stage.trap is None or stage.trap.harmonic for stage in plan.ramp)
+        return harmonic or kept_ramp(plan) is not None
+
+    def _map_job(self, plan: Plan) -> Job | None:
         limits = self._wanted_limits(plan)
         cloud = self.cloud
         if cloud is None:
@@ -94,10 +134,29 @@ class MapPage(Page):
         return lambda: shown(map_answer(plan, limits))
 
     def take_part(self, answer: Any) -> None:
+        newer = False
+        if isinstance(answer, tuple):
+            self._way, answer = answer
+            newer = self._pace.arrived()
+        elif isinstance(answer, _Way):
+            self._way, answer = answer, None
+        if answer is None:
+            if self.cloud is not None:
+                self.show_cloud(self.cloud)
+        else:
+            self._take_ground(answer)
+        if newer:
+            self.part_wanted.emit()
+
+    def _take_ground(self, answer: _Ground) -> None:
         # A map that was under way when its trap was changed back has nothing to be shown under.
         if self.cloud is not None and answer.depends_on == self._wanted(self.cloud.plan):
             self._ground = answer
             self.plot.show(self._picture)
+
+    def showEvent(self, event: QShowEvent) -> None:
+        self._pace.arrived()  # what was under way was overtaken by another page
+        super().showEvent(event)
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
@@ -111,7 +170,9 @@ class MapPage(Page):
     def _picture(self) -> Picture:
         assert self._ground is not None
         assert self.cloud is not None
-        return with_cloud(self._ground.picture, self.cloud)
+        way = self._way
+        track = None if way is None or not self.cloud.plan.ramp else way.track
+        return with_cloud(self._ground.picture, self.cloud, track)
 
     def _wanted_limits(self, plan: Plan) -> MapLimits:
         """What the user asked to see; else the range that was shown, while it still suits the cloud."""
@@ -171,6 +232,23 @@ class MapPage(Page):
 
     def csv(self) -> str:
         return "" if self._ground is None else map_csv(self._ground.answer)
+
+
+def _what_a_way_depends_on(plan: Plan) -> object:
+    return plan.species, plan.trap, plan.cloud, plan.losses, plan.target, plan.ramp, plan.measured
+
+
+def _way_of(plan: Plan) -> _Way:
+    """On the worker: the simulated ramp."""
+    from app.answers.ramp import ramp_answer
+    from app.answers.ramp_inputs import measured_clouds
+
+    try:
+        answer = ramp_answer(plan)
+        measured = tuple((cloud.atoms, cloud.temperature) for cloud in measured_clouds(plan))
+    except (ValueError, OSError, ArithmeticError):  # told on the page of the ramp
+        return _Way(_what_a_way_depends_on(plan), None)
+    return _Way(_what_a_way_depends_on(plan), Track(run=answer.run, measured=measured))
 
 
 def _what_a_map_depends_on(plan: Plan, limits: MapLimits) -> object:

@@ -11,10 +11,12 @@ from PySide6.QtGui import QKeyEvent, QShowEvent
 from PySide6.QtWidgets import QWidget
 
 from app.engine import CloudAnswer
+from app.figures.picture import Picture
 from app.figures.theme import Theme
 from app.newest import Job, Steps, Watch
 from app.plan import Plan
 from app.widgets.banner import Offer
+from app.widgets.pace import Pace
 from app.widgets.page import Page
 
 if TYPE_CHECKING:
@@ -62,8 +64,7 @@ class RampPage(Page):
         self.reading: float | None = None
         self.since: str | None = None  # label of the measured cloud from which the rest is drawn
         self._found: Found | None = None
-        self._under_way: object = None  # plan of a quick job that was asked for and has not come back
-        self._overtaken = False
+        self._pace = Pace()
         self._drag = 0
         self._written: Plan | None = None  # as it was before the drag that is under way
         self._built = False
@@ -89,12 +90,13 @@ class RampPage(Page):
         panel.keep.clicked.connect(self.keep_reference)
         panel.drop.clicked.connect(self.drop_references)
         self.bar.status.say(HINT)
+        panel.set_theme(self.theme)
         self._built = True
         return panel
 
     def showEvent(self, event: QShowEvent) -> None:
         self.panel.show()
-        self._under_way = None
+        self._pace.arrived()
         super().showEvent(event)
 
     # ---------------------------------------------------------------- answers
@@ -109,13 +111,8 @@ class RampPage(Page):
         if self._is_answered(plan):
             return None
         quick = plan.trap.harmonic and all(stage.trap is None or stage.trap.harmonic for stage in plan.ramp)
-        if quick and kept_ramp(plan, None) is None:
-            # A drag brings plans faster than they can be simulated: each that is under way is finished and shown, and
-            # the newest then follows, instead of all being overtaken.
-            if self._under_way is not None:
-                self._overtaken = True
-                return None
-            self._under_way = plan
+        if quick and kept_ramp(plan, None) is None and not self._pace.begin():
+            return None
         return self._job(plan)
 
     def _is_answered(self, plan: Plan) -> bool:
@@ -147,21 +144,20 @@ class RampPage(Page):
         return Steps(what=what, depends_on=(self.title, self._key(plan), extra_key), run=run)
 
     def take_part(self, answer: Any) -> None:
-        self._under_way = None
+        newer = self._pace.arrived()
         if answer is None:
             return
         self._found = answer
         if answer.extra is not None:
             self.panel.take_extra(answer.plan, answer.extra)
         self._show()
-        if self._overtaken:
-            self._overtaken = False
+        if newer:
             self.part_wanted.emit()
 
     def show_end(self, *, stopped: bool) -> None:
         super().show_end(stopped=stopped)
         if stopped:
-            self._under_way = None
+            self._pace.arrived()
 
     # ---------------------------------------------------------------- showing
 
@@ -286,6 +282,10 @@ class RampPage(Page):
         """A field of the table cannot be read: the plots stay, marked as not following it."""
         for plot in self._plots:
             plot.canvas.set_stale(bool(sentence), "last good answer")
+
+    def pictures(self) -> tuple[Picture, ...]:
+        """Those of the view in front."""
+        return tuple(plot.picture() for plot in self._plots if plot.ready and plot.canvas.isVisible())
 
     # ---------------------------------------------------------------- references
 

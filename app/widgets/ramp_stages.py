@@ -6,7 +6,7 @@ from collections.abc import Callable
 from functools import partial
 from itertools import pairwise
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import Qt
 from PySide6.QtWidgets import (
     QFrame,
     QGridLayout,
@@ -23,14 +23,12 @@ from PySide6.QtWidgets import (
 
 from app import ramp_edits
 from app.plan import Plan
-from app.plan_field import PlanError
 from app.ramp_choices import LONGEST_LABEL, Handing, StageChoice
-from app.units import DURATION, Kind, Quantity
+from app.units import DURATION
+from app.widgets.plan_editor import PlanEditor
 from app.widgets.quantity_field import QuantityField
 from app.widgets.ramp_stage_rows import MoveLine, TransferLine, given
 from physics.ramps import Control, Knob
-
-Edit = Callable[[Plan, Quantity | None], Plan]
 
 _HEADINGS = ("", "Duration", "Control", "From", "To", "Shape", "Name", "")
 _POWER_WORTH_A_WORD = 0.5  # [W]
@@ -40,33 +38,22 @@ _CAUTION = (
 )
 
 
-class StageEditor(QWidget):
-    """Signals: plan_edited(Plan, what, merge key); problem_changed(str) with what cannot be read, or "";
-    stage_chosen(int) when the keyboard comes to a stage."""
-
-    plan_edited = Signal(object, str, str)
-    problem_changed = Signal(str)
+class StageEditor(PlanEditor):
+    """The table, and buttons that add to it. Its signals are those of `PlanEditor`."""
 
     def __init__(self, parent: QWidget | None = None) -> None:
-        super().__init__(parent)
+        super().__init__(ramp_edits.checked, parent)
         self.setAccessibleName("Stages of the ramp")
-        self._plan: Plan | None = None
         self._pattern: object = None
-        self._session = 0
-        self._fills: list[Callable[[Plan], None]] = []
-        self._errors: dict[QuantityField, str] = {}
         self.durations: list[QuantityField] = []
         self.moves: list[list[MoveLine]] = []
         self.menus: list[QMenu] = []
         self.labels: list[QLineEdit] = []
-        self.error = QLabel()
-        self.error.setObjectName("fieldError")
         self.caution = QLabel(_CAUTION)
         self.caution.setObjectName("fieldNote")
-        for label in (self.error, self.caution):
-            label.setWordWrap(True)
-            label.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
-            label.hide()
+        self.caution.setWordWrap(True)
+        self.caution.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+        self.caution.hide()
         self.add_button = QPushButton("Add a stage")
         self.add_button.setToolTip("A stage that goes on from the last one, to half of where its controls stand")
         self.add_button.clicked.connect(lambda: self.add_stage())
@@ -100,29 +87,16 @@ class StageEditor(QWidget):
 
     # ---------------------------------------------------------------- showing
 
-    def set_plan(self, plan: Plan) -> None:
-        """Show the stages of a plan. Nothing is emitted; a text that is being typed is left alone."""
-        self._plan = plan
+    def lay_out(self, plan: Plan) -> None:
+        """Rows for the stages of a plan."""
         pattern = tuple(_pattern(stage) for stage in plan.ramp), _controls_pattern(plan)
         if pattern != self._pattern:
             self._pattern = pattern
             self._build(plan)
-        for fill in self._fills:
-            fill(plan)
         powers = [move.end for stage in plan.ramp for move in stage.moves if move.control.knob is Knob.POWER]
         beams = [beam.power for beam in plan.trap.beams] if powers else []
         strongest = max((power.value for power in (*powers, *beams) if power is not None), default=0.0)
         self.caution.setVisible(strongest >= _POWER_WORTH_A_WORD)
-
-    def discard_edits(self) -> None:
-        """Drop what could not be read."""
-        for field in list(self._errors):
-            field.revert()
-
-    @property
-    def problem(self) -> str:
-        """What cannot be read, in a sentence; empty while all is well."""
-        return self.error.text()
 
     def _build(self, plan: Plan) -> None:
         """All rows anew. The keyboard stays in the row and the column where it was, as far as they are there."""
@@ -139,8 +113,7 @@ class StageEditor(QWidget):
             self._grid.addWidget(heading, 0, column)
         for column, stretch in ((1, 2), (2, 3), (3, 3), (4, 3), (5, 3), (6, 3)):
             self._grid.setColumnStretch(column, stretch)
-        self._fills.clear()
-        self._errors.clear()
+        self.forget_fields()
         self.durations, self.moves, self.menus, self.labels = [], [], [], []
         row = 1
         for number, stage in enumerate(plan.ramp):
@@ -151,7 +124,6 @@ class StageEditor(QWidget):
             layout.replaceWidget(old, self._table)
         old.hide()
         old.deleteLater()
-        self._show_problem()
         self._set_tab_order()
         if place is not None:
             self._focus_on(*place)
@@ -181,7 +153,7 @@ class StageEditor(QWidget):
         label.setAccessibleName(f"Name of {name}")
         label.setToolTip("A word of your own for the stage")
         label.editingFinished.connect(lambda: self._rename(number, label.text()))
-        self._fills.append(lambda plan: _show_text(label, plan.ramp[number].label))
+        self.add_fill(lambda plan: _show_text(label, plan.ramp[number].label))
         self.labels.append(label)
         self._grid.addWidget(label, row, 6)
         menu_button = QToolButton()
@@ -208,78 +180,7 @@ class StageEditor(QWidget):
             row += 1
         return row
 
-    # ---------------------------------------------------------------- fields
-
-    def add_field(
-        self,
-        kind: Kind,
-        label: str,
-        read: Callable[[Plan], Quantity | None],
-        write: Edit,
-        key: str,
-        *,
-        optional: bool = False,
-    ) -> QuantityField:
-        """A field that shows a quantity of the plan, and puts what is typed into it."""
-        field = QuantityField(kind, label, optional=optional)
-        field.setMinimumWidth(field.fontMetrics().horizontalAdvance("00.0 µK") + 14)
-        field.changed.connect(lambda value: self._put(field, label, write, value, key))
-        field.editingFinished.connect(self._end_session)
-        field.error_changed.connect(lambda sentence: self._set_error(field, sentence))
-        self._fills.append(lambda plan: field.set_quantity(read(plan)))
-        return field
-
-    def add_fill(self, fill: Callable[[Plan], None]) -> None:
-        """Something else that shows the plan, whenever there is another one."""
-        self._fills.append(fill)
-
-    def _put(self, field: QuantityField, label: str, write: Edit, value: Quantity | None, key: str) -> None:
-        if self._plan is None:
-            return
-        try:
-            plan = ramp_edits.checked(write(self._plan, value))
-        except (PlanError, ValueError) as error:
-            field.show_error(f"{label}: {error}")
-            return
-        self._plan = plan
-        self.plan_edited.emit(plan, label[:1].lower() + label[1:], f"ramp {key} {self._session}")
-
-    def _end_session(self) -> None:
-        self._session += 1
-
-    def _set_error(self, field: QuantityField, sentence: str) -> None:
-        if sentence:
-            self._errors[field] = sentence
-        else:
-            self._errors.pop(field, None)
-        self._show_problem()
-
-    def _show_problem(self) -> None:
-        sentence = next(iter(self._errors.values()), "")
-        if sentence != self.error.text():
-            self.error.setText(sentence)
-            self.error.setVisible(bool(sentence))
-            self.problem_changed.emit(sentence)
-
     # ---------------------------------------------------------------- stages
-
-    def edit(self, change: Callable[[Plan], Plan], what: str) -> None:
-        """A change that is a step of its own. What cannot be is told under the table, and nothing changes."""
-        if self._plan is None:
-            return
-        try:
-            plan = ramp_edits.checked(change(self._plan))
-        except (PlanError, ValueError) as error:
-            self.error.setText(f"{error}.")
-            self.error.show()
-            self.set_plan(self._plan)
-            return
-        if not self._errors:
-            self.error.setText("")
-            self.error.hide()
-        if plan != self._plan:
-            self.set_plan(plan)
-            self.plan_edited.emit(plan, what, "")
 
     def add_stage(self, *, hold: bool = False, before: int | None = None) -> None:
         """A new stage at the end, or before another one."""

@@ -291,3 +291,24 @@ def test_stages_survive_saving_and_reading(qtbot, window, settle, tmp_path):
     assert window.files._write(path)
     assert read_plan(path).ramp == window.document.plan.ramp
     assert read_quantity("750 ms", DURATION) == window.document.plan.ramp[1].duration
+
+
+def test_the_map_shows_the_ramp_with_the_ends_of_its_stages(qtbot, window, settle):
+    window.desk.tabs.setCurrentWidget(window.desk.map)
+    settle(window)
+    picture = window.desk.map.plot.picture()
+    (way,) = [curve for curve in picture.curves if curve.role is Role.TRACK]
+    ends = [mark for mark in picture.marks if mark.role is Role.TRACK]
+    assert len(ends) == 2
+    assert (ends[-1].x, ends[-1].y) == (way.x[-1], way.y[-1])
+    assert way.x[0] == pytest.approx(5e6)
+    cloud = window.document.plan.cloud
+    window.document.edit(
+        replace(window.document.plan, cloud=replace(cloud, atoms=read_quantity("2e6", ATOM_NUMBER))), "atoms", ""
+    )
+    settle(window)
+    (way,) = [c for c in window.desk.map.plot.picture().curves if c.role is Role.TRACK]
+    assert way.x[0] == pytest.approx(2e6)
+    window.document.edit(replace(window.document.plan, ramp=()), "ramp", "")
+    settle(window)
+    assert not any(curve.role is Role.TRACK for curve in window.desk.map.plot.picture().curves)

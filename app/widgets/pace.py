@@ -1,0 +1,27 @@
+"""Work for plans that come faster than it is done, as in a drag.
+
+What is under way is finished and shown, and the newest plan follows; else each would be overtaken by the next, and none
+shown.
+"""
+
+from __future__ import annotations
+
+
+class Pace:
+    """Whether work may begin now, and whether more is wanted once it is done."""
+
+    def __init__(self) -> None:
+        self._under_way = self._overtaken = False
+
+    def begin(self) -> bool:
+        """Whether to begin; else it is noted that there is something newer than what is under way."""
+        if self._under_way:
+            self._overtaken = True
+            return False
+        self._under_way = True
+        return True
+
+    def arrived(self) -> bool:
+        """The work is done, or given up; whether there is something newer."""
+        newer, self._overtaken, self._under_way = self._overtaken, False, False
+        return newer
