@@ -5,6 +5,8 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
+
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
     from app.answers.ramp_design import DesignAnswer
@@ -109,6 +111,7 @@ def ramp_body(answer: RampAnswer) -> dict[str, Any]:
 def _columns(run: Evaporation, first: int) -> tuple[dict[str, Any], dict[str, str], list[dict[str, Any]]]:
     """The columns of one gas by name, their units, and which of them are controls."""
     from app.ramp_quantities import RAMP_COLUMNS, control_column
+    from physics.trap_path import DEPTH
 
     columns, units = {}, {}
     for name, column in RAMP_COLUMNS.items():
@@ -119,7 +122,12 @@ def _columns(run: Evaporation, first: int) -> tuple[dict[str, Any], dict[str, st
     for control, values in run.controls.items():
         column = control_column(control)
         numbers = _list(values)
-        name = column.name if column.name != "depth" or numbers == columns["depth"] else "depth setting"
+        name = column.name
+        if control == DEPTH:
+            if np.allclose(values, run.rows.depth, rtol=1e-4, atol=0.0):
+                controls.append({"name": name, "control": control.knob.value, "beam": control.beam})
+                continue
+            name = "depth setting"
         columns[name], units[name] = numbers, column.unit
         controls.append({"name": name, "control": control.knob.value, "beam": control.beam})
     return columns, units, controls
