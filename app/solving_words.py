@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from types import MappingProxyType
 from typing import TYPE_CHECKING
 
+from app.answers.trap_controls import Control, ControlKind, Until
 from app.language import translate as _
 from app.trap_words import depth_text, frequencies_text, reason_not_trapped, sag_text
 
@@ -14,17 +16,46 @@ if TYPE_CHECKING:
     from app.units import Quantity
 
 
+UNTIL = MappingProxyType(
+    {
+        Until.DEPTH: _("the depth is"),
+        Until.MEAN_FREQUENCY: _("the mean frequency is"),
+        Until.FREQUENCY_X: _("the frequency nearest x is"),
+        Until.FREQUENCY_Y: _("the frequency nearest y is"),
+        Until.FREQUENCY_Z: _("the frequency nearest z is"),
+        Until.HOLDS: _("atoms are just held"),
+        Until.LEVITATES: _("it carries the atoms"),
+    }
+)
+"""What a control is turned until, in words that end in front of the number, where there is one."""
+
+_CALIBRATED = MappingProxyType(
+    {ControlKind.POWER: _("the power that reaches the atoms"), ControlKind.WAIST: _("the waist at the atoms")}
+)
+
+
+def solving_hint(control: Control, until: Until) -> str:
+    """What the answer is good for, where that needs a word."""
+    if until in (Until.FREQUENCY_X, Until.FREQUENCY_Y, Until.FREQUENCY_Z) and control.kind in _CALIBRATED:
+        return _("With a measured frequency, this calibrates {what}.").format(what=_CALIBRATED[control.kind])
+    if until is Until.HOLDS:
+        return _("The least value that still holds atoms, against gravity too.")
+    return ""
+
+
 def change_lines(solved: SolvedTrap) -> list[str]:
     """A line for each number that changes: its name, what it was, what it becomes."""
     return [
-        _("{name}: {before} → {after}").format(name=_begun(name), before=_text(before), after=_text(after))
-        for name, before, after in solved.changes
+        _("{name}: {before} → {after}").format(
+            name=_begun(change.name), before=_text(change.before), after=_text(change.after)
+        )
+        for change in solved.changes
     ]
 
 
 def what_changes(solved: SolvedTrap) -> str:
     """The numbers that change, for the list of steps."""
-    return _(" and ").join(name for name, _before, _after in solved.changes)
+    return _(" and ").join(change.name for change in solved.changes)
 
 
 def consequence_lines(solved: SolvedTrap) -> list[str]:

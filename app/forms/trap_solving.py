@@ -5,28 +5,27 @@ Nothing changes before the user has read what would, and takes it.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QLabel, QPushButton, QWidget
 
-from app.answers.trap_solving import Aim, SolvedTrap, Wish
-from app.figures.profile import AXES
-from app.plan import PLAN_FIELDS, BeamChoice, Plan, PlanField
-from app.units import DEPTH, FREQUENCY
+from app.answers.trap_controls import Control, ControlKind, Until
+from app.answers.trap_solving import SolvedTrap, Wish, solvable
+from app.plan import PLAN_FIELDS, Plan
+from app.solving_words import UNTIL, solving_hint
+from app.trap_sentences import control_name
+from app.units import Kind
 from app.widgets.card import CardHead
 from app.widgets.form import Choice, Form
 from app.widgets.quantity_field import QuantityField
 
 _TITLE = "Solve backwards"
-_AIM, _BEAM, _AXIS, _WAIST, _DEPTH, _FREQUENCY = _ROWS = ("aim", "beam", "axis", "which", "depth", "frequency")
-_TIPS = {
-    Aim.POWER_FOR_DEPTH: "The power at which the trap is as deep as is wanted.",
-    Aim.POWER_FOR_MEAN_FREQUENCY: "The power at which the geometric mean of the frequencies is what is wanted.",
-    Aim.LOWEST_POWER: "The least power that still holds atoms, against gravity too.",
-    Aim.LEVITATION: "The gradient at which the field carries the atoms.",
-    Aim.POWER_MEASURED: "A measured frequency tells how much power reaches the atoms.",
-    Aim.WAIST_MEASURED: "A measured frequency tells the waist of the beam.",
+_CONTROL, _UNTIL, _DEPTH, _FREQUENCY = "control", "until", "depth", "frequency"
+_COILS = {
+    ControlKind.GRADIENT: "gradient",
+    ControlKind.BIAS: "bias",
+    ControlKind.CURVATURE: "curvature",
+    ControlKind.LEVITATION: "levitation",
+    ControlKind.KNIFE: "RF knife",
 }
 
 
@@ -47,16 +46,12 @@ class SolvingCard(Form):
         self.head.button.hide()
         self.head.fold.setToolTip("Which power, waist or gradient gives what is wanted, or explains what was measured")
         self._grid.addWidget(self.head, 0, 0, 1, 2)
-        self.aim = self._choice(_AIM, "Find", [(aim.value, aim) for aim in Aim], "What to look for.")
-        self.aim.activated.connect(self._wish_changed)
-        self.beam = self._choice(_BEAM, "Beam", [], "The beam whose power or waist is looked for.")
-        axes = [(f"{axis}, nearest mode", place) for place, axis in enumerate(AXES)]
-        self.axis = self._choice(_AXIS, "Along", axes, "The axis nearest to which the frequency was measured.")
-        waists = [("both waists", None), ("horizontal waist", 0), ("vertical waist", 1)]
-        self.waist = self._choice(_WAIST, "Calibrate", waists, "Which waist the measurement tells.")
-        self.depth_field = self._number(_DEPTH, "Wanted depth", PLAN_FIELDS["trap.depth"])
-        self.frequency_field = self._number(_FREQUENCY, "Frequency", PLAN_FIELDS["trap.frequencies"])
-        self.beam.activated.connect(self._wish_changed)
+        self.control = self._choice(_CONTROL, "Turn", "Which number of the beams and coils is looked for.")
+        self.until = self._choice(_UNTIL, "Until", "What the trap is to be, or was measured to be.")
+        self.control.activated.connect(self._control_chosen)
+        self.until.activated.connect(self._show_rows)
+        self.depth_field = self._number(_DEPTH, "Wanted depth", "trap.depth")
+        self.frequency_field = self._number(_FREQUENCY, "Frequency", "trap.frequencies")
         self.button = QPushButton("Work it out")
         self.button.clicked.connect(self._press)
         self.result = QLabel()
@@ -74,18 +69,17 @@ class SolvingCard(Form):
         self.head.folded_changed.connect(self.set_unfolded)
         self.set_unfolded(False)
 
-    def _choice(self, key: str, label: str, items: Sequence[tuple[str, object]], tip: str) -> Choice:
+    def _choice(self, key: str, label: str, tip: str) -> Choice:
         box = Choice()
-        for text, value in items:
-            box.addItem(text, value)
         self.add_row(key, label, "", box, tip)
         box.activated.connect(self.forget)
         return box
 
-    def _number(self, key: str, label: str, field: PlanField) -> QuantityField:
-        kind = DEPTH if key == _DEPTH else FREQUENCY
-        line = QuantityField(kind, label, tip=field.tip, optional=True)
-        line.setPlaceholderText(f"such as {kind.example}")
+    def _number(self, key: str, label: str, path: str) -> QuantityField:
+        field = PLAN_FIELDS[path]
+        assert isinstance(field.kind, Kind)
+        line = QuantityField(field.kind, label, tip=field.tip, optional=True)
+        line.setPlaceholderText(f"such as {field.kind.example}")
         self.add_row(key, label, "", line, field.tip)
         self._fields[key] = line
         line.changed.connect(lambda _quantity: self.forget())
@@ -112,50 +106,51 @@ class SolvingCard(Form):
         self._show_rows()
 
     def _show_rows(self) -> None:
-        aim, shown = self._aim, self.unfolded
-        beam = self._beam
-        rows = {
-            _AIM: True,
-            _BEAM: aim.of_beam,
-            _AXIS: aim.measured,
-            _WAIST: aim is Aim.WAIST_MEASURED and beam is not None and len(beam.waists) == 2,
-            _DEPTH: aim is Aim.POWER_FOR_DEPTH,
-            _FREQUENCY: aim.wants_number and aim is not Aim.POWER_FOR_DEPTH,
-        }
-        for key, wanted in rows.items():
-            self.show_row(key, shown and wanted)
-        self.show_note(_AIM, _TIPS[aim])
-        if not shown:
-            self.show_row(_AIM, False)
+        shown, until, control = self.unfolded, self._until, self._control
+        number = until is not None and until.wants_number
+        self.show_row(_CONTROL, shown)
+        self.show_row(_UNTIL, shown)
+        self.show_row(_DEPTH, shown and until is Until.DEPTH)
+        self.show_row(_FREQUENCY, shown and number and until is not Until.DEPTH)
+        hint = "" if control is None or until is None or not shown else solving_hint(control, until)
+        self.show_note(_UNTIL, hint)
+        self.button.setEnabled(control is not None)
         self.apply.setVisible(shown and self.solved is not None)
 
     def show_plan(self, plan: Plan) -> None:
-        names, present = [beam.name for beam in plan.trap.beams], self.beam.currentText()
-        if names != [self.beam.itemText(place) for place in range(self.beam.count())]:
-            self.beam.clear()
-            self.beam.addItems(names)
-            self.beam.setCurrentIndex(max(0, self.beam.findText(present)))
-        if self.solved is not None and (plan.trap, plan.species) != (
-            self.solved.before.trap,
-            self.solved.before.species,
-        ):
+        here = self._control
+        there = tuple(solvable(plan.trap))
+        if there != tuple(self.control.itemData(place) for place in range(self.control.count())):
+            self.control.clear()
+            for control in there:
+                self.control.addItem(_COILS.get(control.kind) or control_name(control), control)
+            first = next((place for place, control in enumerate(there) if control.beam), 0)
+            self.control.setCurrentIndex(there.index(here) if here in there else first)
+        self._control_chosen()
+        found = self.solved
+        if found is not None and (plan.trap, plan.species) != (found.before.trap, found.before.species):
             self.forget()
+
+    def _control_chosen(self) -> None:
+        """What the control in use can be asked for."""
+        control, here = self._control, self._until
+        allowed = () if control is None or self._plan is None else solvable(self._plan.trap)[control]
+        if allowed != tuple(self.until.itemData(place) for place in range(self.until.count())):
+            self.until.clear()
+            for until in allowed:
+                self.until.addItem(UNTIL[until], until)
+            self.until.setCurrentIndex(allowed.index(here) if here in allowed else 0 if allowed else -1)
         self._show_rows()
 
     @property
-    def _aim(self) -> Aim:
-        aim: Aim = self.aim.currentData()
-        return aim
+    def _control(self) -> Control | None:
+        control: Control | None = self.control.currentData()
+        return control
 
     @property
-    def _beam(self) -> BeamChoice | None:
-        name = self.beam.currentText()
-        beams = () if self._plan is None else self._plan.trap.beams
-        return next((beam for beam in beams if beam.name == name), None)
-
-    def _wish_changed(self) -> None:
-        self.forget()
-        self._show_rows()
+    def _until(self) -> Until | None:
+        until: Until | None = self.until.currentData()
+        return until
 
     # ---------------------------------------------------------------- solving
 
@@ -165,29 +160,21 @@ class SolvingCard(Form):
             self.dropped.emit()
             self._say("")
             return
-        aim = self._aim
-        field = self.depth_field if aim is Aim.POWER_FOR_DEPTH else self.frequency_field
-        if aim.wants_number:
+        control, until = self._control, self._until
+        if control is None or until is None:
+            return
+        number = None
+        if until.wants_number:
+            key = _DEPTH if until is Until.DEPTH else _FREQUENCY
+            field = self._fields[key]
             field.commit()
             if field.error_text:
                 return
             if field.quantity is None:
-                self.show_problem(
-                    _DEPTH if field is self.depth_field else _FREQUENCY,
-                    "type the measured frequency" if aim.measured else "type the wanted value",
-                )
+                field.show_error("type the depth that is wanted" if key == _DEPTH else "type the frequency")
                 return
-        if aim.of_beam and self._beam is None:
-            self._say("The trap has no beam to solve for.")
-            return
-        number = None if not aim.wants_number or field.quantity is None else field.quantity.value
-        wish = Wish(
-            aim=aim,
-            beam=self.beam.currentText() if aim.of_beam else "",
-            axis=self.axis.currentData(),
-            number=number,
-            which=self.waist.currentData(),
-        )
+            number = field.quantity.value
+        wish = Wish(control=control, until=until, number=number)
         self.solved, self._busy = None, True
         self._say("Working it out …")
         self.wanted.emit(wish)

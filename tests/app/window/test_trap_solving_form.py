@@ -12,7 +12,7 @@ from PySide6.QtTest import QTest
 from pytestqt.qtbot import QtBot
 
 import app.answers.trap_solving
-from app.answers.trap_solving import Aim
+from app.answers.trap_controls import Control, ControlKind, Until
 from app.engine import trap_answer
 from app.forms.trap_solving import SolvingCard
 from app.plan import plan_with, read_plan
@@ -45,7 +45,7 @@ def result_of(card: SolvingCard) -> str:
 
 
 def choose(box: Choice, data: object) -> None:
-    index = box.findData(data)
+    index = [box.itemData(place) for place in range(box.count())].index(data)
     box.setCurrentIndex(index)
     box.activated.emit(index)
 
@@ -85,11 +85,11 @@ def test_a_power_for_a_depth_is_read_before_it_is_taken(crossed: MainWindow, car
 
 
 def test_a_measured_frequency_calibrates_a_waist(crossed: MainWindow, card: SolvingCard, settle: Settle) -> None:
-    choose(card.aim, Aim.WAIST_MEASURED)
-    choose(card.axis, 2)
+    choose(card.control, Control(ControlKind.WAIST, "long"))
+    choose(card.until, Until.FREQUENCY_Z)
+    assert "calibrates the waist" in card.note_of("until")
     assert card.frequency_field.isVisible()
     assert not card.depth_field.isVisible()
-    assert not card.waist.isVisible()  # of a round beam
     QTest.keyClicks(card.frequency_field, "150 Hz")
     QTest.keyClick(card.button, Qt.Key.Key_Space)
     settle(crossed)
@@ -100,7 +100,7 @@ def test_a_measured_frequency_calibrates_a_waist(crossed: MainWindow, card: Solv
 
 
 def test_the_lowest_power_still_holds(crossed: MainWindow, card: SolvingCard, settle: Settle) -> None:
-    choose(card.aim, Aim.LOWEST_POWER)
+    choose(card.until, Until.HOLDS)
     assert not card.depth_field.isVisible()
     card.button.click()
     settle(crossed)
@@ -112,8 +112,9 @@ def test_the_lowest_power_still_holds(crossed: MainWindow, card: SolvingCard, se
 
 
 def test_the_gradient_that_levitates_brings_coils(crossed: MainWindow, card: SolvingCard, settle: Settle) -> None:
-    choose(card.aim, Aim.LEVITATION)
-    assert not card.beam.isVisible()
+    choose(card.control, Control(ControlKind.LEVITATION))
+    assert card.until.currentData() is Until.LEVITATES
+    assert not card.depth_field.isVisible()
     card.button.click()
     settle(crossed)
     assert "Levitation of the coils: none → 30.4" in result_of(card)
@@ -127,9 +128,9 @@ def test_the_gradient_that_levitates_brings_coils(crossed: MainWindow, card: Sol
 
 
 def test_what_cannot_be_is_said_in_a_sentence(crossed: MainWindow, card: SolvingCard, settle: Settle) -> None:
-    choose(card.aim, Aim.POWER_FOR_MEAN_FREQUENCY)
+    choose(card.until, Until.MEAN_FREQUENCY)
     card.button.click()
-    assert "type the wanted value" in [label.text() for label in card._errors.values()]
+    assert card.frequency_field.error_text == "type the frequency"
     QTest.keyClicks(card.frequency_field, "9 MHz")
     card.button.click()
     settle(crossed)
@@ -147,7 +148,7 @@ def test_what_cannot_be_is_said_in_a_sentence(crossed: MainWindow, card: Solving
 def test_what_was_found_goes_with_the_trap_it_was_found_for(
     crossed: MainWindow, card: SolvingCard, settle: Settle
 ) -> None:
-    choose(card.aim, Aim.LEVITATION)
+    choose(card.control, Control(ControlKind.LEVITATION))
     card.button.click()
     settle(crossed)
     assert card.apply.isVisible()
@@ -164,7 +165,7 @@ def test_it_can_be_stopped_and_the_window_goes_on(
 ) -> None:
     gate = threading.Event()
     monkeypatch.setattr(app.answers.trap_solving, "solve_trap", lambda *_args: gate.wait(20.0))
-    choose(card.aim, Aim.LEVITATION)
+    choose(card.control, Control(ControlKind.LEVITATION))
     card.button.click()
     crossed.document.edit(plan_with(crossed.document.plan, {"cloud.temperature": "300 nK"}), "temperature")
     qtbot.waitUntil(lambda: crossed.answers.current, timeout=5000)  # the cloud is answered meanwhile
