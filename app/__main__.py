@@ -34,6 +34,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
     Exit status: 0 answered, 1 a file, value or some rows could not be answered, 2 the command line could not be read.
     """
+    if getattr(sys, "frozen", False):
+        from multiprocessing import freeze_support
+
+        freeze_support()  # an executable of one file starts itself for `app.process`
     given = list(sys.argv[1:] if arguments is None else arguments) or ["window"]
     args = build_parser(given[:1] if given[0] in VERBS else VERBS).parse_args(given)
     try:

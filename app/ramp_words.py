@@ -302,18 +302,18 @@ def bound_text(bound: Bound, gain: float) -> str:
 def design_sentence(found: DesignAnswer) -> str:
     """What was designed, and what for."""
     design = found.design
-    held = _("{eta} kT").format(eta=number(design.truncation, 3))
+    held = number(design.truncation, 3)
     if design.drift:
-        held += _(", {drift} more for each tenfold lower depth").format(drift=f"{design.drift:+.3g}".replace("-", "−"))
+        rate = f"{design.drift:+.3g}".replace("-", "−")
+        held = _("{eta}, {rate} for each tenfold lower depth,").format(eta=held, rate=rate)
     goal = aim(found.target, bosons=found.answer.bosons)
-    assumed = _(" (assumed: the plan names no target)") if found.assumed else ""
+    if found.assumed:
+        goal = _("{aim} (assumed: the plan names no target)").format(aim=goal)
     if not design.reached:
-        return _(
-            "No ramp of {control} reaches {aim}{assumed}; the one that comes closest holds the depth at {held}."
-        ).format(control=found.control.label, aim=goal, assumed=assumed, held=held)
-    return _("Most atoms reach {aim}{assumed} where {control} holds the depth at {held}.").format(
-        control=found.control.label, aim=goal, assumed=assumed, held=held
-    )
+        template = _("No ramp of {control} reaches {aim}; the one that comes closest holds η at {held}.")
+    else:
+        template = _("Most atoms reach {aim} where {control} moves so that the truncation parameter stays at {held}.")
+    return template.format(control=found.control.label, aim=goal, held=held.removesuffix(","))
 
 
 def input_text(one: RampSensitivity) -> str:

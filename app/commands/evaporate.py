@@ -221,7 +221,7 @@ def _write(args: argparse.Namespace, found: Evaporated) -> None:
                 raise PlanError("there is no ramp to write: the plan has no stages")
             step = None if args.step is None else read_quantity(args.step, DURATION).value
             units = None if args.units is None else read_units(args.units)
-            since = None if found.answer.measured is None or args.design else args.since
+            since = None if found.answer.measured is None else args.since
             beside = found.answer if args.with_cloud else None
             write_atomically(path, ramp_table(found.plan, step, units, since=since, answer=beside).encode())
         case ".toml":

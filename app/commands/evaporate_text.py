@@ -24,6 +24,7 @@ from app.ramp_words import (
     ramp_verdict,
 )
 from app.tables import columns
+from app.trap_words import cautions
 from app.units import best_unit, format_quantity
 from app.words import number, percent, temperature
 from physics.evaporation_rates import Process
@@ -58,6 +59,7 @@ def evaporate_text(found: Evaporated) -> str:
         blocks.append(_sensitivity(found.sensitivity, planned))
     if found.answer is not None:
         blocks.append(_caveats(found.answer))
+    blocks.append(list(cautions(found.plan.trap)))
     return "\n\n".join("\n".join(block) for block in blocks if block)
 
 

@@ -233,12 +233,12 @@ def test_a_design_is_written_and_simulates_to_the_same(
     again = evaporate_json(capsys, str(designed))
     assert again["final"]["atoms"] == pytest.approx(answer["final"]["atoms"], rel=0.01)
     text = evaporate_text(capsys, bare, "--design", "--control", "depth")
-    assert "Most atoms reach condensation where depth holds the depth at " in text
+    assert "Most atoms reach condensation where depth moves so that the truncation parameter stays at " in text
     assert "What limits\n  " in text
     assert "Most atoms at the target, by the time that it may take" in text
 
 
-def test_from_a_measured_cloud(plan: str, capsys: pytest.CaptureFixture[str]) -> None:
+def test_from_a_measured_cloud(plan: str, capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
     answer = evaporate_json(capsys, plan, "--from", "thursday")
     assert answer["from"] == "Thursday"
     assert answer["begin"] == pytest.approx(0.06)
@@ -246,7 +246,11 @@ def test_from_a_measured_cloud(plan: str, capsys: pytest.CaptureFixture[str]) ->
     assert answer["columns"]["atoms"][0] == pytest.approx(1.5e6)
     given = evaporate_json(capsys, plan, "--from", "after stage 1", "--atoms", "1.5e6", "--temperature", "15 uK")
     assert given["final"]["atoms"] == pytest.approx(answer["final"]["atoms"])
-    assert "after another " in evaporate_text(capsys, plan, "--from", "Thursday")
+    table = tmp_path / "rest.csv"
+    assert "after another " in evaporate_text(capsys, plan, "--from", "Thursday", "-o", str(table))
+    rows = table.read_text(encoding="utf-8").splitlines()
+    assert rows[1].startswith("0,500,0.3")
+    assert rows[-1].startswith("0.65,500,0.005")
 
 
 def test_csv_there_and_back(plan: str, capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
