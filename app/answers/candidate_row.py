@@ -12,9 +12,11 @@ from app.answers.candidate_trap import TrapFacts
 from app.answers.uncertainty import Spread
 from app.candidate_columns import COLUMNS, Column, Datum, Part
 from app.language import translate as _
+from app.quantities import QUANTITIES
 from app.quantity_row import Need
 from app.sureness import Sureness, least_sure, sureness_of
 from app.words import reason_missing
+from physics.constants import boltzmann
 from physics.scattering import WhyUnknown, tuning
 from physics.species_tables import Resonance
 
@@ -30,6 +32,7 @@ class Failure(Enum):
 
     NOT_TRAPPED = "not trapped"
     NO_ANSWER = "no answer"
+    TOO_SHALLOW = "too shallow"
     NO_COLLISIONS = "no collisions"
     NO_DATA = "no data"
     ATTRACTIVE = "attractive"
@@ -162,16 +165,24 @@ class CandidateRow:
                 found = cloud.scattering
                 return (found.value, "") if found.value is not None else (math.nan, length_reason(cloud))
             case Part.THRESHOLD:
-                solved = cloud.equilibrium
-                if cloud.bosons:
-                    return float(solved.critical_temperature), ""
-                return cloud.threshold * float(solved.fermi_temperature), ""
+                return self._threshold(cloud)
             case Part.EVAPORATION:
                 return self._evaporation(name)
         need = cloud.missing(column.row)
         if need is not None:
             return math.nan, self._reason_missing(need, cloud)
         return float(cloud.value(name)), ""
+
+    def _threshold(self, cloud: CloudAnswer) -> tuple[float, str]:
+        name, share = ("critical_temperature", 1.0) if cloud.bosons else ("fermi_temperature", cloud.threshold)
+        found = share * float(cloud.value(name))
+        if not math.isfinite(found):
+            need = cloud.missing(QUANTITIES[name])
+            return math.nan, "" if need is None else reason_missing(need)
+        depth = cloud.cloud.trap.depth
+        if depth is not None and boltzmann * found > float(depth):
+            return math.nan, _("at its threshold the cloud would be hotter than the trap is deep")
+        return found, ""
 
     def _reason_missing(self, need: Need, cloud: CloudAnswer) -> str:
         said = reason_missing(need)

@@ -3,13 +3,12 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
 from app.answers.part import part
 from app.answers.trap import trap_answer
-from app.choices import SpeciesChoice
 from app.sureness import Sureness, least_sure, sureness_of
 from app.trap_words import reason_no_frequencies, reason_not_trapped, reasons_missing
 from physics.species import State
@@ -55,16 +54,9 @@ class TrapFacts:
         return not self.not_held
 
 
+@part("species.key", "species.state", "trap", keep=KEPT)
 def trap_facts(plan: Plan) -> TrapFacts:
     """The trap of the plan for its species and state."""
-    if not plan.trap.harmonic and plan.trap.coils is None:
-        # Without a magnetic field all states of an isotope are held alike.
-        plan = replace(plan, species=SpeciesChoice(key=plan.species.key))
-    return _facts(plan)
-
-
-@part("species.key", "species.state", "trap", keep=KEPT)
-def _facts(plan: Plan) -> TrapFacts:
     answer = trap_answer(plan)
     found, missing = answer.survey, reasons_missing(answer)
     values, reasons = {}, {}

@@ -8,14 +8,14 @@ from __future__ import annotations
 
 import math
 import time
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from dataclasses import dataclass, replace
-from types import MappingProxyType
 from typing import TYPE_CHECKING
 
 from app.answers.candidate_row import CandidateRow, Failure, length_reason
 from app.answers.candidate_trap import trap_facts
 from app.answers.cloud import cloud_answer
+from app.answers.inputs import cloud_of, values_of
 from app.answers.part import part
 from app.answers.trap_inputs import surveyed_trap
 from app.candidate_choices import Basis, CandidateChoice, Start
@@ -25,18 +25,24 @@ from app.plan_field import PlanError
 from app.trap_choices import TrapChoice
 from app.units import Quantity, best_unit, format_quantity
 from app.words import number
-from physics.scattering import WhyUnknown
+from physics.models import Model
+from physics.scattering import LengthInUse, WhyUnknown
 from physics.species import load_species, species_keys
 
 if TYPE_CHECKING:
-    from app.answers.candidate_evaporation import EvaporationResult
     from app.answers.cloud import CloudAnswer
     from app.plan import Plan
 
 KEPT = 160
 """Rows that are kept: all states of the data, twice."""
 
-PATIENCE = 0.1
+NO_LENGTH = LengthInUse(value=None, reason=WhyUnknown.NOT_IN_DATA)
+"""What a cloud without interaction is given."""
+
+_MOST_STEPS = 60
+_NEARLY_SATURATED = 2.6
+
+PATIENCE = 0.3
 """Seconds between deliveries of the rows that are there."""
 
 
@@ -81,12 +87,11 @@ def candidates_answer(
     plan: Plan,
     deliver: Callable[[CandidatesAnswer], bool] = lambda _answer: True,
     tick: Callable[[float], bool] = lambda _share: True,
-    evaporations: Mapping[Plan, EvaporationResult] = MappingProxyType({}),
 ) -> CandidatesAnswer | None:
     """Every candidate of the plan, judged in its basis.
 
     `deliver` is given the rows that are there from time to time, `tick` the share that is done; a false answer of
-    either stops the work, and the result is None. `evaporations` are results that are there already, by row's plan.
+    either stops the work, and the result is None.
 
     Raises PlanError, in one sentence, where the basis cannot be had.
     """
@@ -100,9 +105,7 @@ def candidates_answer(
 
     last = time.monotonic()
     for candidate in candidates:
-        row = _row(_plan_of(plan, candidate, frame), candidate, frame.in_light)
-        found = evaporations.get(row.plan)
-        rows.append(row if found is None else replace(row, evaporation=found))
+        rows.append(_row(_plan_of(plan, candidate, frame), candidate, frame.in_light))
         if not tick(len(rows) / len(candidates)):
             return None
         if time.monotonic() - last > PATIENCE and len(rows) < len(candidates):
@@ -115,11 +118,12 @@ def candidates_answer(
 @dataclass(frozen=True, kw_only=True)
 class _Frame:
     """What all candidates share: the trap, and where they start alike in phase-space density, that of the plan's own
-    cloud: N (f/T)^3 [1/(s K)^3]."""
+    cloud [1]: the peak one, or of a condensed cloud, whose peak is flat, the classical one."""
 
     trap: TrapChoice
     in_light: bool
     density: float | None = None
+    classical: bool = False
 
 
 def _frame(plan: Plan) -> _Frame:
@@ -133,10 +137,11 @@ def _frame(plan: Plan) -> _Frame:
         return _Frame(trap=plan.trap if harmonic else _frequencies_of(plan), in_light=False)
     density = None
     if basis is Basis.SAME_START and plan.candidates.start is Start.PHASE_SPACE_DENSITY:
-        frequency = trap_facts(plan).mean_frequency if not harmonic else _mean_frequency(plan.trap)
-        if math.isnan(frequency):
-            surveyed_trap(plan)  # says why there is none
-        density = plan.cloud.atoms.value * (frequency / plan.cloud.temperature.value) ** 3
+        own = cloud_answer(plan).equilibrium
+        density = float(own.peak_phase_space_density)
+        if density > _NEARLY_SATURATED and own.bosons:
+            density = float(own.classical_phase_space_density)
+            return _Frame(trap=plan.trap, in_light=not harmonic, density=density, classical=True)
     return _Frame(trap=plan.trap, in_light=not harmonic, density=density)
 
 
@@ -151,11 +156,6 @@ def _frequencies_of(plan: Plan) -> TrapChoice:
 def _exactly(value: float, unit: str, *, si_unit: str | None = None) -> Quantity:
     """A number that was worked out, with all its digits; its text is only to be read."""
     return Quantity(format_quantity(value, unit, digits=4, si_unit=si_unit), value)
-
-
-def _mean_frequency(trap: TrapChoice) -> float:
-    assert trap.frequencies is not None
-    return math.prod(quantity.value for quantity in trap.frequencies) ** (1.0 / 3.0)
 
 
 def _plan_of(plan: Plan, candidate: CandidateChoice, frame: _Frame) -> Plan:
@@ -176,15 +176,41 @@ def _plan_of(plan: Plan, candidate: CandidateChoice, frame: _Frame) -> Plan:
     same_cloud = plan.candidates.basis is Basis.SAME_START and frame.density is None
     atoms = plan.cloud.atoms if same_cloud else candidate.atoms or plan.cloud.atoms
     temperature = plan.cloud.temperature if same_cloud else candidate.temperature or plan.cloud.temperature
-    if frame.density is not None:
-        frequency = trap_facts(put).mean_frequency if frame.in_light else _mean_frequency(frame.trap)
-        if math.isfinite(frequency):
-            value = frequency * (atoms.value / frame.density) ** (1.0 / 3.0)
-            temperature = _exactly(value, best_unit(value, ("nK", "µK", "mK")))
-    return replace(put, cloud=replace(plan.cloud, atoms=atoms, temperature=temperature))
+    put = replace(put, cloud=replace(plan.cloud, atoms=atoms, temperature=temperature))
+    if frame.density is None or not trap_facts(put).held:
+        return put
+    value = _temperature_at(put, frame.density, frame.classical)
+    temperature = _exactly(value, best_unit(value, ("nK", "µK", "mK")))
+    return replace(put, cloud=replace(put.cloud, temperature=temperature))
 
 
-@part("species", "trap", "cloud", "losses", "target", keep=KEPT)
+@part("species", "trap", "cloud.atoms", keep=KEPT)
+def _temperature_at(plan: Plan, density: float, classical: bool) -> float:
+    """The temperature [K] at which the plan's cloud has this phase-space density, in a trap that holds it."""
+    from physics.cloud import equilibrium
+
+    cloud = cloud_of(plan, load_species(plan.species.key).state(plan.species.state), NO_LENGTH, values_of(plan))
+
+    def miss(log_temperature: float) -> float:
+        solved = equilibrium(replace(cloud, temperature=math.exp(log_temperature)), Model.IDEAL)
+        found = solved.classical_phase_space_density if classical else solved.peak_phase_space_density
+        return math.log(float(found) / density)
+
+    # ln D falls by 3 for each unit of ln T of a classical cloud in a harmonic trap, by less near the rim of a real one
+    # and not at all where a condensate has formed.
+    here = math.log(plan.cloud.temperature.value)
+    value, slope = miss(here), -3.0
+    for _step in range(_MOST_STEPS):
+        step = max(-1.5, min(1.5, -value / slope))
+        there = miss(here + step)
+        if abs(step) < 1e-10:
+            break
+        slope = min((there - value) / step, -0.2)
+        here, value = here + step, there
+    return math.exp(here)
+
+
+@part("species", "trap", "cloud", "losses", "target", "limits", keep=KEPT)
 def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow:
     """The candidate that was put into the plan, judged."""
     state = load_species(plan.species.key).state(plan.species.state)
@@ -213,6 +239,13 @@ def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow
 
 def _failure(cloud: CloudAnswer) -> tuple[Failure | None, str]:
     """Where a trapped cloud fails on its way to degeneracy."""
+    truncation = float(cloud.value("truncation")) if cloud.cloud.trap.depth is not None else math.inf
+    if cloud.overfull:
+        return Failure.TOO_SHALLOW, _("the trap does not hold so many atoms")
+    if truncation < 1.0:
+        return Failure.TOO_SHALLOW, _("the cloud is hotter than the trap is deep: depth/kT = {eta}").format(
+            eta=number(truncation, 2)
+        )
     scattering = cloud.scattering
     collides = float(cloud.equilibrium.elastic_collision_rate)
     if scattering.reason is WhyUnknown.POLARISED:

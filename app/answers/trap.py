@@ -43,8 +43,21 @@ def trap_answer(plan: Plan) -> TrapAnswer:
 
     state = load_species(plan.species.key).state(plan.species.state)
     made = trap_of(plan)
-    found = survey_of_harmonic(made, state.mass) if isinstance(made, HarmonicTrap) else survey(made, state)
+    if isinstance(made, HarmonicTrap):
+        found = survey_of_harmonic(made, state.mass)
+    else:
+        found = _survey_in_light(plan) if made.coils is None else survey(made, state)
     return TrapAnswer(state=state, trap=plan.trap, survey=found)
+
+
+@part("species.key", "trap", keep=KEPT)
+def _survey_in_light(plan: Plan) -> Survey:
+    """The trap of beams only, which holds all states of an isotope alike."""
+    from physics.traps.survey import survey
+
+    made = trap_of(plan)
+    assert isinstance(made, Trap)
+    return survey(made, load_species(plan.species.key).states[0])
 
 
 def trap_of(plan: Plan) -> Trap | HarmonicTrap:

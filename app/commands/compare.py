@@ -71,6 +71,7 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
 def run(args: argparse.Namespace) -> int:
     """Judge the candidates; say of those without an answer why."""
     from app.answers.candidates import candidates_answer
+    from app.candidate_csv import candidates_csv
     from app.candidate_order import fails, read_sieve, read_weight
     from app.files import write_atomically
 
@@ -85,7 +86,7 @@ def run(args: argparse.Namespace) -> int:
             answer = _evaporated(answer)
         rows, scores = _arranged(args, [row for row in answer.rows if sieve.passes(row)], weights)
         if args.output is not None:
-            write_atomically(Path(args.output), compare_csv(rows, names, scores).encode())
+            write_atomically(Path(args.output), candidates_csv(rows, names, scores).encode())
     except (ValueError, OSError) as error:
         return fail(error)
     if args.json:
@@ -225,34 +226,6 @@ def _finite(value: float) -> float | None:
 
 
 # --- as a table ------------------------------------------------------------------------------------------------------
-
-
-def compare_csv(rows: list[CandidateRow], names: tuple[str, ...], scores: list[Score]) -> str:
-    """One candidate a line: numbers in SI and in full precision, each followed by how sure it is; empty where
-    unknown."""
-    import csv
-    import io
-
-    from app.candidate_columns import COLUMNS
-    from app.candidate_words import model_reason
-
-    out = io.StringIO()
-    writer = csv.writer(out, lineterminator="\n")
-    header = ["species", "state", "trapped", "fails", "reason", "model", "model_reason"]
-    for name in names:
-        unit = COLUMNS[name].row.unit
-        header += [name if unit == "1" else f"{name} [{unit}]", f"{name} certainty"]
-    weighed = any(score.parts for score in scores)
-    writer.writerow([*header, "score"] if weighed else header)
-    for row, score in zip(rows, scores, strict=True):
-        model = "" if row.cloud is None else row.cloud.model.value
-        failure = "" if row.failure is None else row.failure.value
-        line = [row.key, row.state.name, str(row.trapped).lower(), failure, row.reason, model, model_reason(row)]
-        for name in names:
-            cell = row.cell(name)
-            line += [repr(cell.value) if cell.known else "", cell.sureness.value]
-        writer.writerow([*line, "" if _finite(score.value) is None else repr(score.value)] if weighed else line)
-    return out.getvalue()
 
 
 _SHORT_HEADINGS = {

@@ -264,8 +264,9 @@ def drawing_note(picture: Picture) -> str:
 
 
 def _style_mark(point: Line2D, style: LineStyle, theme: Theme, size: float) -> None:
-    point.set(linestyle="", marker=style.marker or "o", markersize=size, markerfacecolor=style.colour,
-              markeredgecolor=theme.halo, markeredgewidth=MARK_EDGE)  # fmt: skip
+    face, edge = (theme.background, style.colour) if style.hollow else (style.colour, theme.halo)
+    point.set(linestyle="", marker=style.marker or "o", markersize=size, markerfacecolor=face, markeredgecolor=edge,
+              markeredgewidth=MARK_EDGE)  # fmt: skip
 
 
 def _draw_field(picture: Picture, field: Field, axes: Axes, theme: Theme) -> None:

@@ -89,7 +89,7 @@ def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, flo
         title_height = 0.0
     above = PAD + title_height + len(rows) * line + (6.0 if rows else 2.0)
     inner_height = max(height - below - above, SMALLEST)
-    room_of_tick = (2.6 if picture.y.titled else 1.6) * theme.small_size
+    room_of_tick = (1.3 if picture.y.names else 2.6 if picture.y.titled else 1.6) * theme.small_size
     y_ticks = ticks_of(picture.y, max(2, int(inner_height / room_of_tick)))
     # Title and legend stand above the axes from the left edge on: what is taller than the axes would run into them.
     tallest = inner_height + 6.0

@@ -41,13 +41,18 @@ class Role(Enum):
     REST = auto()  # of a ramp, from a measured cloud on
     TRACK = auto()  # of a ramp on the map
     MEASURED = auto()
+    SEEN = auto()  # numbers by how sure they are, see `app.sureness`
+    COMPUTED = auto()
+    RECALLED = auto()
+    ASSUMED = auto()
 
 
 @dataclass(frozen=True, kw_only=True)
 class Axis:
     """One axis. Data are in `unit`; with `prefixed` the unit is a bare SI unit and tick labels carry the prefix
     ("100 nK"), which reads best over many decades; with `power` ticks count in that power of ten, which the title
-    names, and data stay in `unit`; one that is not `titled` has no title beside it, where the picture's says enough."""
+    names, and data stay in `unit`; one that is not `titled` has no title beside it, where the picture's says enough.
+    With `names` the places 0, 1, 2 ... are no numbers but things, and the tick labels name them."""
 
     label: str
     unit: str
@@ -57,6 +62,7 @@ class Axis:
     prefixed: bool = False
     power: int = 0
     titled: bool = True
+    names: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         if not (np.isfinite(self.low) and np.isfinite(self.high) and self.low < self.high):
@@ -65,6 +71,8 @@ class Axis:
             raise ValueError(f"logarithmic axis {self.label!r} must start above zero, got {self.low:g}")
         if self.power and (self.log or self.prefixed):
             raise ValueError(f"axis {self.label!r} must be linear and not prefixed to count in a power of ten")
+        if self.names and self.log:
+            raise ValueError(f"axis {self.label!r} must be linear to have names at its places")
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -42,12 +42,13 @@ _MAP_ROLES = frozenset(
 @dataclass(frozen=True, kw_only=True)
 class LineStyle:
     """How a role is drawn. `dash` alternates ink and gap lengths [pt], empty for a solid line; `marker` is
-    Matplotlib's code of a marker, empty for none."""
+    Matplotlib's code of a marker, empty for none, drawn as an outline where it is `hollow`."""
 
     colour: str
     width: float
     dash: tuple[float, ...] = ()
     marker: str = ""
+    hollow: bool = False
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -158,6 +159,10 @@ def _lines(
         Role.REST: LineStyle(colour=purple, width=1.5, dash=(4.0, 2.0)),
         Role.TRACK: LineStyle(colour=cloud, width=1.7, marker="s"),
         Role.MEASURED: LineStyle(colour=orange, width=1.1, marker="D"),
+        Role.SEEN: LineStyle(colour=blue, width=1.0, marker="o"),
+        Role.COMPUTED: LineStyle(colour=blue, width=1.0, marker="s"),
+        Role.RECALLED: LineStyle(colour=blue, width=1.2, marker="o", hollow=True),
+        Role.ASSUMED: LineStyle(colour=orange, width=1.2, marker="D", hollow=True),
     }
 
 

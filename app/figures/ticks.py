@@ -78,11 +78,20 @@ def raised(unit: str) -> str:
 def ticks_of(axis: Axis, most: int = 8) -> Ticks:
     """At most about `most` labelled ticks between the ends of the axis, at round values."""
     low, high = span(axis)
+    if axis.names:
+        return _named(axis, low, high, most)
     if axis.log and high - low >= 0.9:
         return _decades(axis, low, high, most)
     values = _round_values(axis.low, axis.high, most)
     places = tuple(to_drawing(axis, value) for value in values)
     return Ticks(places=places, texts=_texts(axis, values))
+
+
+def _named(axis: Axis, low: float, high: float, most: int) -> Ticks:
+    """Every place with a name, or as many at even steps as fit."""
+    first, last = max(math.ceil(low), 0), min(math.floor(high), len(axis.names) - 1)
+    places = range(first, last + 1)[:: max(1, math.ceil((last - first + 1) / max(most, 1)))]
+    return Ticks(places=tuple(float(place) for place in places), texts=tuple(axis.names[place] for place in places))
 
 
 def _decades(axis: Axis, low: float, high: float, most: int) -> Ticks:

@@ -32,7 +32,9 @@ def kind_of(axis: Axis) -> Kind:
 
 
 def place_text(axis: Axis, value: float, digits: int = 3) -> str:
-    """A place on an axis, to read: "7.10 µm", "5.20e12 cm⁻³"."""
+    """A place on an axis, to read: "7.10 µm", "5.20e12 cm⁻³"; the nearest name where the places have names."""
+    if axis.names:
+        return axis.names[min(max(round(value), 0), len(axis.names) - 1)]
     si = _si(axis, value)
     text = format_quantity(si, best_unit(si, kind_of(axis).units), digits=digits)
     return raised(f"{text} %" if axis.unit == "%" else text)

@@ -155,10 +155,11 @@ class LiveLayer:
         size = (DRAGGABLE_SIZE if mark.draggable else MARK_SIZE) * self._scale
         context = self._renderer.new_gc()
         context.set_clip_rectangle(self.box)
-        context.set_foreground(self._theme.halo)
+        face, edge = (self._theme.background, style.colour) if style.hollow else (style.colour, self._theme.halo)
+        context.set_foreground(edge)
         context.set_linewidth(MARK_EDGE)
         where = Affine2D(shape.get_transform().get_matrix()).scale(size).translate(*place)
-        self._renderer.draw_path(context, shape.get_path(), where, _rgb(style.colour))
+        self._renderer.draw_path(context, shape.get_path(), where, _rgb(face))
 
     def _draw_labels(self, picture: Picture) -> None:
         size = self._theme.small_size

@@ -53,7 +53,8 @@ def style_sheet_of(theme: Theme) -> str:
         #banner {{ background: {theme.base}; border: none; border-bottom: 2px solid {theme.warning}; }}
         #bannerSign {{ color: {theme.warning}; font-weight: bold; }}
         #verdictSentence {{ background: transparent; }}
-        #bench, #benchBody, #readouts, #caveats, #detail, #explanation, #factTable {{
+        #bench, #benchBody, #readouts, #caveats, #detail, #explanation, #factTable,
+        #candidateTable {{
             background: {theme.window}; border: none; }}
         #formTitle, #paneTitle {{ color: {theme.muted}; font-weight: 600; }}
         #fieldNote, #plotStatus, #detail {{ color: {theme.muted}; }}
@@ -81,6 +82,12 @@ def style_sheet_of(theme: Theme) -> str:
         QTabBar::tab:selected {{ color: {theme.text}; border-bottom-color: {theme.accent}; }}
         QTabBar::tab:focus {{ text-decoration: underline; }}
         QSplitter::handle {{ background: {theme.border}; }}
+        #candidateTable QHeaderView, #candidateTable QTableCornerButton::section {{
+            background: {theme.window}; border: none; }}
+        #candidateTable QHeaderView::section {{ background: {theme.window}; border: none; padding: 2px 6px; }}
+        #candidateTable QHeaderView::section:horizontal {{ color: {theme.muted};
+                                                          border-bottom: 1px solid {theme.border}; }}
+        #candidateTable::item {{ padding: 0px 6px; }}
         #factTable QHeaderView::section {{ background: {theme.window}; color: {theme.muted}; border: none;
                                           padding: 2px 16px 2px 3px; }}
         #factTable::item {{ padding-right: 16px; }}

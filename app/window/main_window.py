@@ -174,6 +174,11 @@ class MainWindow(QMainWindow):
             self.actions_by_id[name].setEnabled(False)
         self._use_folder(self.settings.last_folder)
         desk.slices.choose(self.settings.texts("slices/chosen"))
+        desk.candidates.recall(
+            {name: self.settings.texts(f"candidates/{name}") for name in desk.candidates.memory()}, self.settings.units
+        )
+        desk.candidates.memory_changed.connect(self._keep_comparison)
+        desk.candidates.unit_chosen.connect(self._choose_unit)
 
     # ---------------------------------------------------------------- plan and answer
 
@@ -282,6 +287,10 @@ class MainWindow(QMainWindow):
             self.desk.readouts.show_answer(self.answers.cloud, self.settings.units)
             self.why.show_answer(self.answers.cloud, self.settings.units)
 
+    def _keep_comparison(self) -> None:
+        for name, texts in self.desk.candidates.memory().items():
+            self.settings.put(f"candidates/{name}", texts)
+
     def _explain(self, name: str) -> None:
         if self.answers.cloud is not None:
             self.why.ask(name, self.answers.cloud, self.settings.units)
@@ -371,12 +380,13 @@ class MainWindow(QMainWindow):
 
     def copy(self) -> None:
         """Copy what the keyboard is on: a text, readouts, or else the plot."""
+        from app.widgets.candidate_table import CandidateTable
         from app.widgets.fact_table import FactTable
 
         focus = self.focusWidget()
         if focus is self.desk.readouts:
             self.desk.readouts.copy()
-        elif isinstance(focus, QTextEdit | FactTable):
+        elif isinstance(focus, QTextEdit | FactTable | CandidateTable):
             focus.copy()
         elif focus is not None and any(focus is plot.canvas for plot in self.desk.page.plots):
             self.desk.page.copy_picture()

@@ -1,0 +1,172 @@
+"""Candidates ranked by one column: known numbers on an axis, and apart from them those that have none, with why."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from app.candidate_columns import COLUMNS
+from app.candidate_order import SCORE, order_by
+from app.candidate_words import short_name
+from app.figures.picture import Axis, Curve, Label, Mark, Picture, Role
+from app.language import translate as _
+from app.quantities import display_factor
+from app.sureness import Sureness
+from app.words import shown_unit
+
+if TYPE_CHECKING:
+    from app.answers.candidate_row import CandidateRow
+    from app.candidate_order import Score
+
+FIRST_SHOWN = 16
+"""Rows on show at first."""
+
+_LOG_FROM = 20.0
+"""Largest over smallest number from which an axis is logarithmic."""
+
+_ROLES = {
+    Sureness.SEEN: Role.SEEN,
+    Sureness.COMPUTED: Role.COMPUTED,
+    Sureness.RECALLED: Role.RECALLED,
+    Sureness.ASSUMED: Role.ASSUMED,
+}
+_LONGEST = 58  # characters of a reason
+
+
+@dataclass(frozen=True)
+class Ranked:
+    """A row of the chart: its number in display units, NaN where it has no place on the axis, and then why."""
+
+    name: str
+    value: float
+    sureness: Sureness
+    reason: str
+
+
+def ranking(rows: Sequence[CandidateRow], name: str, unit: str, scores: Sequence[Score]) -> tuple[Ranked, ...]:
+    """The rows as the chart takes them, in their order."""
+    if name == SCORE:
+        return tuple(
+            Ranked(
+                short_name(row),
+                score.value,
+                _least_sure_of(row, score),
+                _("a number that counts is not known") if math.isnan(score.value) else "",
+            )
+            for row, score in zip(rows, scores, strict=True)
+        )
+    factor = display_factor(unit, COLUMNS[name].row)
+    return tuple(
+        Ranked(short_name(row), cell.value / factor, cell.sureness, cell.reason)
+        for row in rows
+        for cell in [row.cell(name)]
+    )
+
+
+def _least_sure_of(_row: CandidateRow, score: Score) -> Sureness:
+    return Sureness.UNKNOWN if math.isnan(score.value) else Sureness.COMPUTED
+
+
+def ranked_picture(
+    rows: Sequence[CandidateRow], name: str, unit: str, descending: bool, scores: Sequence[Score] = ()
+) -> Picture:
+    """The rows from top to bottom: known numbers in their order, then, under a line, the others with why."""
+    ranked = ranking(rows, name, unit, scores)
+    ranked = tuple(ranked[place] for place in order_by([item.value for item in ranked], descending))
+    known = [item for item in ranked if math.isfinite(item.value)]
+    log = _logarithmic([item.value for item in known])
+    drawn = [item for item in known if not log or item.value > 0.0]
+    apart = [item for item in ranked if item not in drawn]
+    listed = (*drawn, *apart)
+    x = _value_axis(name, unit, [item.value for item in drawn], log)
+    count = len(listed)
+    shown = min(count, FIRST_SHOWN)
+    y = Axis(
+        label=_("candidate"),
+        unit="",
+        low=count - shown - 0.6,
+        high=max(count, 1) - 0.4,
+        titled=False,
+        names=tuple(item.name for item in reversed(listed)) or ("",),
+    )
+    marks, named = [], set()
+    for place, item in enumerate(drawn):
+        role = _ROLES[item.sureness]
+        word = "" if role in named else item.sureness.value
+        marks.append(Mark(name=word, role=role, x=item.value, y=float(count - 1 - place)))
+        named.add(role)
+    labels = [
+        Label(text=_short(item), role=Role.CLASSICAL, x=x.low, y=float(count - 1 - len(drawn) - place))
+        for place, item in enumerate(apart)
+    ]
+    curves = []
+    if drawn and apart:
+        border = count - len(drawn) - 0.5
+        curves.append(Curve(name="", role=Role.DECADE, x=np.array([x.low, x.high]), y=np.array([border, border])))
+    note = ""
+    if count > shown:
+        note = _("first {shown} of {count}; pan down or zoom out for the others").format(shown=shown, count=count)
+    return Picture(
+        title=_("ranked by {what}").format(what=_title(name)),
+        x=x,
+        y=y,
+        curves=tuple(curves),
+        marks=tuple(marks),
+        labels=tuple(labels),
+        summary=_summary(name, drawn, apart),
+        note=note,
+    )
+
+
+def _title(name: str) -> str:
+    return _("weighted score") if name == SCORE else COLUMNS[name].row.label
+
+
+def _logarithmic(values: Sequence[float]) -> bool:
+    positive = [value for value in values if value > 0.0]
+    if not positive or any(value < 0.0 for value in values):
+        return False
+    return max(positive) > _LOG_FROM * min(positive)
+
+
+def _value_axis(name: str, unit: str, values: Sequence[float], log: bool) -> Axis:
+    label, shown = _title(name), "" if name == SCORE else shown_unit(unit)
+    if name == SCORE:
+        return Axis(label=label, unit="", low=0.0, high=1.02)
+    if not values:
+        return Axis(label=label, unit=shown, low=0.0, high=1.0)
+    low, high = min(values), max(values)
+    if log:
+        margin = max(1.6, (high / low) ** 0.05)
+        return Axis(label=label, unit=shown, low=low / margin, high=high * margin, log=True)
+    reach = (high - low) or abs(high) or 1.0
+    # Zero belongs on a linear axis, unless all numbers lie far from it and close together.
+    if low > 0.0 and reach > 0.3 * high:
+        low = 0.0
+    elif high < 0.0 and reach > -0.3 * low:
+        high = 0.0
+    return Axis(label=label, unit=shown, low=low - (0.06 * reach if low else 0.0), high=high + 0.06 * reach)
+
+
+def _short(item: Ranked) -> str:
+    """Why a row stands apart, in one line."""
+    if item.value == 0.0:
+        return _("zero, which has no place on a logarithmic axis")
+    if math.isfinite(item.value):
+        return _("not positive, which has no place on a logarithmic axis")
+    text = item.reason
+    if len(text) > _LONGEST:
+        text = text[:_LONGEST].rsplit(" ", 1)[0].rstrip(",;:") + " …"
+    return _("unknown: {reason}").format(reason=text)
+
+
+def _summary(name: str, drawn: Sequence[Ranked], apart: Sequence[Ranked]) -> str:
+    if not drawn:
+        return _("No candidate has a number for {what}.").format(what=_title(name))
+    return _("By {what}, {first} comes first of {count}; {apart} have no number.").format(
+        what=_title(name), first=drawn[0].name, count=len(drawn), apart=len(apart)
+    )
