@@ -14,8 +14,8 @@ _MODEL = PLAN_FIELDS["cloud.model"]
 
 
 class CloudForm(Form):
-    def __init__(self, parent: QWidget | None = None) -> None:
-        super().__init__("Cloud", parent)
+    def __init__(self, parent: QWidget | None = None, *, owner: str = "") -> None:
+        super().__init__("Cloud", parent, owner=owner)
         self.atoms = self.add_quantity("cloud.atoms", "a")
         self.temperature = self.add_quantity("cloud.temperature", "t")
         self.model = Choice()

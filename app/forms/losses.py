@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QToolButton, QWidget
+from PySide6.QtWidgets import QWidget
 
 from app.plan import PLAN_FIELDS, Plan
 from app.tuning_words import CERTAINTY
+from app.widgets.fold_title import FoldTitle
 from app.widgets.form import Form
 from physics.species import Sourced, load_species
 
@@ -17,6 +18,7 @@ _ROWS = (
     ("losses.three_body", "k", "Three-body K₃"),
     ("losses.heating", "b", "One-body heating"),
     ("losses.intensity_noise", "o", ""),
+    ("losses.pointing_noise", "j", "Pointing jitter"),
 )
 
 
@@ -26,12 +28,7 @@ class LossesForm(Form):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(_TITLE, parent)
         self.heading.hide()
-        self.fold = QToolButton()
-        self.fold.setObjectName("formTitle")
-        self.fold.setAutoRaise(True)
-        self.fold.setText(_TITLE)
-        self.fold.setToolButtonStyle(Qt.ToolButtonStyle.ToolButtonTextBesideIcon)
-        self.fold.setFont(self.heading.font())
+        self.fold = FoldTitle(_TITLE, "background lifetime, rate constants and heating", self.heading.font())
         self.fold.clicked.connect(lambda: self.set_unfolded(not self.unfolded))
         self._grid.addWidget(self.fold, 0, 0, 1, 2, Qt.AlignmentFlag.AlignLeft)
         self.background, self.two_body, self.three_body, self.heating, self.noise = (
@@ -52,10 +49,7 @@ class LossesForm(Form):
         self._unfolded = unfolded
         for path, _letter, _label in _ROWS:
             self.show_row(path, unfolded)
-        self.fold.setArrowType(Qt.ArrowType.DownArrow if unfolded else Qt.ArrowType.RightArrow)
-        word = "Fold away" if unfolded else "Unfold"
-        self.fold.setToolTip(f"{word} background lifetime, rate constants and heating")
-        self.fold.setAccessibleName(f"{_TITLE}, {'unfolded' if unfolded else 'folded'}")
+        self.fold.show_unfolded(unfolded)
 
     def show_plan(self, plan: Plan) -> None:
         state = load_species(plan.species.key).state(plan.species.state)

@@ -29,8 +29,8 @@ _CERTAINTY = {
 
 
 class SpeciesForm(Form):
-    def __init__(self, parent: QWidget | None = None) -> None:
-        super().__init__("Species", parent)
+    def __init__(self, parent: QWidget | None = None, *, owner: str = "") -> None:
+        super().__init__("Species", parent, owner=owner)
         self.isotope = Choice()
         self.isotope.setEditable(True)
         self.isotope.setInsertPolicy(Choice.InsertPolicy.NoInsert)
@@ -46,7 +46,7 @@ class SpeciesForm(Form):
         assert line is not None
         line.editingFinished.connect(self._isotope_typed)
         line.setPlaceholderText("type to search, such as Rb")
-        line.setAccessibleName("Isotope, typed")
+        line.setAccessibleName(f"Isotope{owner}, typed")
         self.add_row(_KEY.path, "Isotope", "i", self.isotope, _KEY.tip)
         self.state = Choice()
         self.state.activated.connect(lambda _index: self._choose_state())

@@ -40,7 +40,8 @@ class Choice(QComboBox):
 
 
 def plan_with_entry(plan: Plan, path: str, value: object) -> Plan:
-    """The plan with one entry replaced; what a given value excludes is dropped.
+    """The plan with one entry replaced; what a given value excludes is dropped, and with another species the
+    scattering length that was typed for it and the passenger.
 
     Raises PlanError where no plan can have it.
     """
@@ -49,6 +50,8 @@ def plan_with_entry(plan: Plan, path: str, value: object) -> Plan:
     for other in (PLAN_FIELDS[path] for path in field.excludes if value is not None):
         entries.setdefault(other.section, {})[other.name] = None
     changes: dict[str, Any] = {name: replace(getattr(plan, name), **entry) for name, entry in entries.items()}
+    if path == "species.key" and plan.passenger is not None:
+        changes["passenger"] = replace(plan.passenger, scattering_length=None)
     return replace(plan, **changes)
 
 
@@ -68,17 +71,18 @@ class Form(QWidget):
     """Signals: plan_edited(Plan, what, merge key); problems_changed() when what cannot be read changes.
 
     `owner` ends what the fields are called in a list of steps or by a screen reader, such as " of beam A", where
-    several forms have fields of one name.
+    several forms have fields of one name. A form that is made with one has no mnemonics, which would mean two things.
     """
 
     plan_edited = Signal(object, str, str)
     problems_changed = Signal()
 
-    def __init__(self, title: str, parent: QWidget | None = None) -> None:
+    def __init__(self, title: str, parent: QWidget | None = None, *, owner: str = "") -> None:
         super().__init__(parent)
-        self.setAccessibleName(title)
+        self.setAccessibleName(title + owner)
         self._plan: Plan | None = None
-        self.owner = ""
+        self.owner = owner
+        self._mnemonics = not owner
         self._labels: dict[str, str] = {}
         self._fields: dict[str, QuantityField] = {}
         self._entries: dict[str, EntryField] = {}
@@ -104,6 +108,7 @@ class Form(QWidget):
 
     def add_row(self, key: str, label: str, letter: str, widget: QWidget, tip: str) -> None:
         """A labelled widget, with room for a note and for an error under it; an empty letter gives no mnemonic."""
+        letter = letter if self._mnemonics else ""
         buddy = QLabel(with_mnemonic(label, letter) if letter else label)
         if letter:
             buddy.setBuddy(widget)
@@ -224,7 +229,8 @@ class Form(QWidget):
     def edit(self, path: str, value: object) -> None:
         """An edit that is a step of its own, such as a choice from a list."""
         if self._plan is not None:
-            self.plan_edited.emit(plan_with_entry(self._plan, path, value), PLAN_FIELDS[path].label.lower(), "")
+            what = _step_name(PLAN_FIELDS[path].label, self.owner)
+            self.plan_edited.emit(plan_with_entry(self._plan, path, value), what, "")
 
     def set_owner(self, owner: str) -> None:
         """Whose fields these are, from now on."""

@@ -7,6 +7,7 @@ from PySide6.QtWidgets import QFrame, QScrollArea, QVBoxLayout, QWidget
 
 from app.forms.cloud import CloudForm
 from app.forms.losses import LossesForm
+from app.forms.passenger import PassengerForm
 from app.forms.species import SpeciesForm
 from app.forms.target import TargetForm
 from app.forms.trap import TrapForm
@@ -33,6 +34,10 @@ class Bench(QScrollArea):
         self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
         self.species, self.trap, self.cloud = SpeciesForm(), TrapForm(), CloudForm()
         self.losses, self.target = LossesForm(), TargetForm()
+        self.passenger = PassengerForm(
+            lambda owner: SpeciesForm(owner=owner),
+            lambda owner: CloudForm(owner=owner),
+        )
         body = QWidget()
         body.setObjectName("benchBody")
         column = QVBoxLayout(body)
@@ -47,7 +52,7 @@ class Bench(QScrollArea):
 
     @property
     def forms(self) -> tuple[Form, ...]:
-        return self.species, self.trap, self.cloud, self.losses, self.target
+        return self.species, self.trap, self.cloud, self.losses, self.target, self.passenger
 
     @property
     def problems(self) -> tuple[str, ...]:
