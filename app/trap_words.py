@@ -255,18 +255,27 @@ COILS_CAUTION = _(
 ESTIMATES = _("These are planning estimates: your own measurement and licensed practice decide.")
 
 
-def cautions(trap: TrapChoice) -> tuple[str, ...]:
-    """What to mind about the light and the coils that a trap is made of, as sentences."""
+def named_cautions(trap: TrapChoice) -> dict[str, str]:
+    """What to mind about the light and the coils that a trap is made of, and what all these numbers are: sentences by
+    id; none where there is nothing to mind."""
     light = any(beam.power.value >= CAUTIOUS_POWER for beam in trap.beams)
-    found = [text for text, counts in ((LIGHT_CAUTION, light), (COILS_CAUTION, trap.coils is not None)) if counts]
-    return (*found, ESTIMATES) if found else ()
+    found = {"laser_light": LIGHT_CAUTION} if light else {}
+    found |= {"coils": COILS_CAUTION} if trap.coils is not None else {}
+    return found | ({"estimates": ESTIMATES} if found else {})
+
+
+def cautions(trap: TrapChoice) -> tuple[str, ...]:
+    """The sentences of `named_cautions`."""
+    return tuple(named_cautions(trap).values())
 
 
 def caution_title(trap: TrapChoice) -> str:
     """What the cautions are about, in a few words; empty where there are none."""
-    light = any(beam.power.value >= CAUTIOUS_POWER for beam in trap.beams)
-    about = [word for word, counts in ((_("laser light"), light), (_("coils"), trap.coils is not None)) if counts]
+    about = [_ABOUT[name] for name in named_cautions(trap) if name in _ABOUT]
     return _("Mind: {what}").format(what=_(" and ").join(about)) if about else ""
+
+
+_ABOUT = MappingProxyType({"laser_light": _("laser light"), "coils": _("coils")})
 
 
 def fact_texts(answer: TrapAnswer) -> dict[str, str]:

@@ -144,7 +144,14 @@ def solution_text(solved: SolvedControl) -> str:
 
 def trap_body(answer: TrapAnswer) -> dict[str, Any]:
     """The answer as the JSON contract has it, in SI; `reasons` says of each number that is null why."""
-    from app.trap_words import NUMBERS, note_text, reason_not_trapped, reasons_missing, way_out
+    from app.trap_words import (
+        NUMBERS,
+        named_cautions,
+        note_text,
+        reason_not_trapped,
+        reasons_missing,
+        way_out,
+    )
 
     missing = reasons_missing(answer)
     return {
@@ -156,6 +163,10 @@ def trap_body(answer: TrapAnswer) -> dict[str, Any]:
         "notes": [
             {"id": note.kind.name.lower(), "text": note_text(note), "value": note.value, "beam": note.beam or None}
             for note in answer.survey.notes
+        ],
+        "caveats": [
+            {"id": name, "severity": "note", "text": text, "value": None}
+            for name, text in named_cautions(answer.trap).items()
         ],
     }
 

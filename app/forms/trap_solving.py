@@ -12,7 +12,6 @@ from app.answers.trap_controls import Control, ControlKind, Until
 from app.answers.trap_solving import SolvedTrap, Wish, solvable
 from app.plan import PLAN_FIELDS, Plan
 from app.solving_words import UNTIL, solving_hint
-from app.trap_sentences import control_name
 from app.units import Kind
 from app.widgets.card import CardHead
 from app.widgets.form import Choice, Form
@@ -20,13 +19,8 @@ from app.widgets.quantity_field import QuantityField
 
 _TITLE = "Solve backwards"
 _CONTROL, _UNTIL, _DEPTH, _FREQUENCY = "control", "until", "depth", "frequency"
-_COILS = {
-    ControlKind.GRADIENT: "gradient",
-    ControlKind.BIAS: "bias",
-    ControlKind.CURVATURE: "curvature",
-    ControlKind.LEVITATION: "levitation",
-    ControlKind.KNIFE: "RF knife",
-}
+_SHORT = {ControlKind.POWERS: "all powers", ControlKind.KNIFE: "RF knife"}
+"""Names of controls that are not those of the command line; the column is narrow."""
 
 
 class SolvingCard(Form):
@@ -123,7 +117,8 @@ class SolvingCard(Form):
         if there != tuple(self.control.itemData(place) for place in range(self.control.count())):
             self.control.clear()
             for control in there:
-                self.control.addItem(_COILS.get(control.kind) or control_name(control), control)
+                name = _SHORT.get(control.kind, control.kind.value)
+                self.control.addItem(f"{control.beam}: {name}" if control.beam else name, control)
             first = next((place for place, control in enumerate(there) if control.beam), 0)
             self.control.setCurrentIndex(there.index(here) if here in there else first)
         self._control_chosen()

@@ -21,7 +21,7 @@ MADE = ROOT / "tests" / "data" / "plan_of_beams_and_coils.toml"
 KEYS = [
     "coldward", "version", "input", "trapped", "reason", "frequencies", "axes", "minimum", "sag", "depth",
     "depth_temperature", "arm_depth", "scattering_rate", "heating_rate", "volume_curve", "escape", "way_out", "reasons",
-    "notes",
+    "notes", "caveats",
 ]  # fmt: skip
 NUMBERS = KEYS[5:16]
 QUADRUPOLE = """coldward = 1
@@ -119,6 +119,14 @@ def test_the_readable_page_has_the_numbers_and_the_cautions(capsys: pytest.Captu
     assert "nan" not in page
     assert main(["trap", str(PLANS[0])]) == 0
     assert "IEC" not in capsys.readouterr().out
+
+
+def test_cautions_are_caveats_of_the_object(capsys: pytest.CaptureFixture[str]) -> None:
+    caveats = trap_json(capsys, str(MADE))["caveats"]
+    assert [caveat["id"] for caveat in caveats] == ["laser_light", "coils", "estimates"]
+    assert all(caveat["severity"] == "note" and caveat["value"] is None for caveat in caveats)
+    assert "IEC 60825-1" in caveats[0]["text"]
+    assert trap_json(capsys, str(ROOT / "presets" / "plans" / "degenerate_lithium.toml"))["caveats"] == []
 
 
 def test_a_plan_that_cannot_be_read_is_one_sentence(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
