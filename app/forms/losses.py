@@ -18,7 +18,6 @@ _ROWS = (
     ("losses.three_body", "k", "Three-body K₃"),
     ("losses.heating", "b", "One-body heating"),
     ("losses.intensity_noise", "o", ""),
-    ("losses.pointing_noise", "j", "Pointing jitter"),
 )
 
 
