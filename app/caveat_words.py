@@ -13,7 +13,7 @@ from physics.caveats import Caveat, Severity
 from physics.models import Model
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
+    from collections.abc import Callable, Mapping
 
     from app.engine import CloudAnswer
 
@@ -64,6 +64,10 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _length,
         ),
         "model_bosons_only": (_("The model {asked} describes bosons; the ideal Fermi gas is used."), _PLAIN),
+        "model_harmonic_only": (
+            _("Exact levels are known of a harmonic trap only; in this one the ideal gas in local density is used."),
+            _PLAIN,
+        ),
         "length_unknown": (
             _("The scattering length is not known{why}: collision rates and shifts by interaction are left out."),
             _PLAIN,
@@ -208,14 +212,39 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
         ),
         "harmonic_trap": (
             _(
-                "Answered in the harmonic trap of the same frequencies; in the real one{cut} a classical cloud fills "
-                "{value} times its volume{arms}."
+                "Answered in the real trap{cut} where a classical cloud fills {value} times the volume that it has in "
+                "the harmonic trap of the same frequencies{arms}.{compared}"
             ),
             times,
         ),
         "trap_uncertainty": (
-            _("Uncertain numbers of beams and coils move the frequencies and the depth to first order."),
+            _("Uncertain numbers of beams and coils move the frequencies, the depth and the volume to first order."),
             _PLAIN,
+        ),
+        "shallow": (
+            _(
+                "The trap is only {value} kT deep: atoms evaporate fast, and the cloud is in equilibrium for a short "
+                "time only. Deepen or cool."
+            ),
+            _PLAIN,
+        ),
+        "overfull": (
+            _("These are {value} times as many atoms as the trap holds below its depth: there is no such cloud."),
+            _PLAIN,
+        ),
+        "no_frequencies": (
+            _(
+                "This trap has no frequencies, so that whatever needs them is not known; the answer counts its levels "
+                "as if they lay close."
+            ),
+            _PLAIN,
+        ),
+        "open_trap": (
+            _(
+                "Nothing closes this trap towards its depth, where its volume grows without end: atoms above {value} "
+                "of the depth are taken as lost."
+            ),
+            percent,
         ),
         "truncated": (
             _("The trap is only {value} kT deep: it cuts the cloud, which is answered as if uncut. Deepen or cool."),
@@ -243,7 +272,8 @@ def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
         inverse=number(numbers.get("inverse", 0.0), 2),
         shift=percent(numbers.get("shift", 0.0)),
         cut=_cut(numbers.get("truncation")),
-        arms=_arms(numbers.get("arms")),
+        arms=_arms(numbers.get("arms"), numbers.get("in_arms")),
+        compared=_compared(numbers, answer),
         frozen=_frozen(int(numbers.get("frozen_axes", 0))),
     )
 
@@ -290,7 +320,18 @@ def _cut(truncation: float | None) -> str:
     return "" if truncation is None else _(", {depth} kT deep,").format(depth=times(truncation))
 
 
-def _arms(truncation: float | None) -> str:
-    return (
-        "" if truncation is None else _(", and spreads into the arms from {energy} kT").format(energy=times(truncation))
+def _arms(truncation: float | None, share: float | None) -> str:
+    if truncation is None or share is None:
+        return ""
+    return _(": {share} of it lies in the arms, which open at {energy} kT").format(
+        share=percent(share), energy=times(truncation)
+    )
+
+
+def _compared(numbers: Mapping[str, float], answer: CloudAnswer) -> str:
+    if "real" not in numbers or "harmonic" not in numbers:
+        return ""
+    symbol = "T/Tc" if answer.bosons else "T/TF"
+    return _(" There {symbol} would be {harmonic} instead of {real}.").format(
+        symbol=symbol, harmonic=number(numbers["harmonic"]), real=number(numbers["real"])
     )

@@ -30,6 +30,7 @@ OBSTACLES = {
     Replacement.LENGTH_UNKNOWN: _("needs a known scattering length"),
     Replacement.NOT_REPULSIVE: _("needs a positive scattering length"),
     Replacement.BOSONS_ONLY: _("for bosons only"),
+    Replacement.HARMONIC_ONLY: _("for harmonic traps only"),
 }
 LEAST_SUPERFLUID = 1e-3
 """Tc/TF below which the exponentially small estimate of weak attraction says nothing but "never"."""

@@ -46,6 +46,10 @@ class Need(Enum):
     KNOWN_COUPLING = "1/(kF a) below −1, within ±0.2 or above 1: between, there is no simple estimate"
 
 
+    FREQUENCIES = "trap frequencies, which this trap does not have"
+    REAL_TRAP = "a trap of beams and coils that has frequencies"
+    HARMONIC = "a trap given by its frequencies, of which the levels are known"
+    ROOM = "fewer atoms: the trap does not hold so many"
 @dataclass(frozen=True, kw_only=True)
 class Row:
     """A quantity. `unit` is its SI unit, `units` the ones offered for display (the first also for tables)."""

@@ -28,6 +28,7 @@ from physics.constants import reduced_planck
 from physics.models import Model
 from physics.particles import Certainty, Statistics
 from physics.statistics import zeta
+from physics.traps.harmonic import HarmonicTrap
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -78,6 +79,7 @@ CAVEAT_IDS = MappingProxyType(
         "model_length_unknown": "no value: ideal used, the scattering length is not known",
         "model_not_repulsive": "scattering length [m]: ideal used, the model needs a repulsive gas",
         "model_bosons_only": "no value: ideal used, the model describes bosons",
+        "model_harmonic_only": "no value: ideal used, levels are known of a harmonic trap only",
         "length_unknown": "no value: scattering length not known, so neither collisions nor shifts by interaction",
         "length_recalled": "scattering length [m]: recalled from its source, not read there",
         "length_computed": "scattering length [m]: worked out from other data",
@@ -102,7 +104,12 @@ CAVEAT_IDS = MappingProxyType(
         "pauli_blocking": "T/TF: collisions slowed by filled levels, left out of the rate",
         "hydrodynamic": "mean collision rate over the highest angular trap frequency",
         "truncated": "depth over kT: the trap cuts the cloud, which is answered as if it did not",
-        "harmonic_trap": "volume of a classical cloud over that in the harmonic trap, which answers; truncation, arms",
+        "shallow": "depth over kT: atoms leave so shallow a trap fast, so that it is in equilibrium for a short time",
+        "overfull": "N over the most atoms that the trap holds below its depth",
+        "no_frequencies": "no value: a trap without frequencies; what needs them is unknown, local density is assumed",
+        "open_trap": "share of the depth, above which a volume has no end, that is the highest energy held",
+        "harmonic_trap": "volume of a classical cloud over that in the harmonic trap of the same frequencies;"
+        " truncation, arms, in_arms, and T over the threshold or TF in both: real, harmonic",
         "trap_uncertainty": "no value: uncertain numbers of beams and coils move frequencies and depth to first order",
         "no_background": "no value: no background lifetime, so that lifetimes are upper bounds",
         "three_body_unknown": "no value: K3 not known, three-body loss left out",
@@ -263,8 +270,9 @@ def _bosons(solved: Equilibrium) -> Iterator[Caveat]:
 
 def _edge_density_jump(solved: Equilibrium) -> Floats:
     from physics.hartree_fock import HartreeFock  # not loaded for other models
+    from physics.real_hartree_fock import RealHartreeFock
 
-    assert isinstance(solved, HartreeFock)
+    assert isinstance(solved, (HartreeFock, RealHartreeFock))
     return solved.edge_density_jump
 
 
@@ -278,7 +286,11 @@ def _fermions(solved: Equilibrium, dipolar: bool) -> Iterator[Caveat]:
     exact = solved.model is Model.EXACT_LEVELS
     squares = np.sum((reduced_planck * solved.cloud.trap.angular_frequencies) ** 2, axis=-1)
     # N at a given mu, to second order in hbar w: -sum (hbar w)^2/(24 (kT)^2) f_1/f_3, which is 1/(4 EF^2) at T = 0.
-    hot = np.logaddexp(0.0, solved.log_fugacity) / solved.classical_phase_space_density
+    log_z = np.asarray(solved.log_fugacity)
+    hot = (
+        np.where(np.isnan(log_z), np.nan, np.logaddexp(0.0, np.nan_to_num(log_z)))
+        / solved.classical_phase_space_density
+    )
     number_error = _highest(squares / (24.0 * solved.thermal_energy**2) * hot)
     # A gas has three dimensions where kT reaches all axes, however few of its levels are filled.
     cold = np.asarray(solved.thermal_energy / level) < 1.0
@@ -315,12 +327,29 @@ def _fermions(solved: Equilibrium, dipolar: bool) -> Iterator[Caveat]:
 
 def _any(solved: Equilibrium) -> Iterator[Caveat]:
     shallow = _lowest(solved.truncation)
+    real = not isinstance(solved.cloud.trap, HarmonicTrap)
     if shallow < _TRUNCATION:
-        yield Caveat(id="truncated", severity=Severity.WARNING, value=shallow)
+        yield Caveat(id="shallow" if real else "truncated", severity=Severity.WARNING, value=shallow)
+    if real:
+        yield from _real_trap(solved)
     fastest = np.max(solved.cloud.trap.angular_frequencies, axis=-1)
     crowded = _highest(solved.elastic_collision_rate / fastest)
     if crowded > 1.0:
         yield Caveat(id="hydrodynamic", severity=Severity.NOTE, value=crowded)
+
+
+def _real_trap(solved: Equilibrium) -> Iterator[Caveat]:
+    from physics.real_equilibria import RealEquilibrium  # not loaded for harmonic traps
+
+    assert isinstance(solved, RealEquilibrium)
+    share = _lowest(solved.trap.held / solved.trap.depth)
+    if share < 1.0 - 1e-9:
+        yield Caveat(id="open_trap", severity=Severity.NOTE, value=share)
+    if not solved.trap.has_frequencies:
+        yield Caveat(id="no_frequencies", severity=Severity.NOTE)
+    filling = _highest(solved.atoms_over_most)
+    if filling >= 1.0:
+        yield Caveat(id="overfull", severity=Severity.REFUSAL, value=filling)
 
 
 def _highest(value: Floats) -> float:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -13,6 +13,9 @@ from physics.equilibria import Equilibrium
 from physics.models import AVAILABLE_MODELS, Model, Replacement
 from physics.particles import Statistics
 from physics.traps.harmonic import HarmonicTrap
+
+if TYPE_CHECKING:
+    from physics.real_trap import RealTrap
 
 __all__ = ["AVAILABLE_MODELS", "Cloud", "Equilibrium", "Model", "Replacement", "equilibrium"]
 
@@ -28,7 +31,7 @@ class Cloud:
     ----------
     statistics : Statistics
     mass : float. [kg]
-    trap : HarmonicTrap
+    trap : HarmonicTrap or RealTrap. A Survey is taken as the trap that it found.
     atoms : array_like. [1] Atom number of ONE spin state.
     temperature : array_like. [K]
     spin_components : int. Number of equally filled spin states.
@@ -44,7 +47,7 @@ class Cloud:
 
     statistics: Statistics
     mass: float
-    trap: HarmonicTrap
+    trap: HarmonicTrap | RealTrap
     atoms: Any
     temperature: Any
     spin_components: int = 1
@@ -52,6 +55,7 @@ class Cloud:
     dipolar_length: float | None = None
 
     def __post_init__(self) -> None:
+        object.__setattr__(self, "trap", _filled(self.trap))
         for field, quantity, unit in (
             ("mass", "mass", "kg"),
             ("atoms", "atom number", ""),
@@ -92,6 +96,21 @@ class Cloud:
         return as_floats(np.nan) if self.scattering_length is None else self.scattering_length
 
 
+def _filled(trap: Any) -> HarmonicTrap | RealTrap:
+    """The trap that a cloud is put in."""
+    if isinstance(trap, HarmonicTrap):
+        return trap
+    from physics.real_trap import RealTrap, real_trap
+
+    if isinstance(trap, RealTrap):
+        return trap
+    from physics.traps.survey import Survey
+
+    if not isinstance(trap, Survey):
+        raise ValueError(f"trap of a cloud must be a HarmonicTrap, a RealTrap or a Survey, got {type(trap).__name__}")
+    return real_trap(trap) if trap.given is None else trap.given
+
+
 def equilibrium(
     cloud: Cloud,
     model: Model | None = None,
@@ -130,7 +149,11 @@ def equilibrium(
     if replaced is not None:
         model = Model.IDEAL
     kind: type[Equilibrium]
-    if cloud.statistics is Statistics.FERMI:
+    if not isinstance(cloud.trap, HarmonicTrap):
+        from physics.real_models import real_model
+
+        kind = real_model(cloud.statistics, model)
+    elif cloud.statistics is Statistics.FERMI:
         kind = ExactFermions if model is Model.EXACT_LEVELS else IdealFermi
     else:
         kind = {
@@ -146,8 +169,10 @@ def equilibrium(
 
 def _obstacle(cloud: Cloud, model: Model) -> Replacement | None:
     """What keeps the cloud from being described by the model, or None."""
-    if model in (Model.IDEAL, Model.EXACT_LEVELS):
+    if model is Model.IDEAL:
         return None
+    if model is Model.EXACT_LEVELS:
+        return None if isinstance(cloud.trap, HarmonicTrap) else Replacement.HARMONIC_ONLY
     if cloud.statistics is Statistics.FERMI:
         return Replacement.BOSONS_ONLY
     if model in (Model.SEMI_IDEAL, Model.HARTREE_FOCK):

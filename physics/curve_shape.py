@@ -22,6 +22,10 @@ from physics.truncated_boltzmann import HARMONIC
 _HALVINGS = 14
 _RIM, _PANEL, _BOTTOM = 24, 12, 24
 
+TURNS = (0.01, 0.02, 0.035, 0.05, 0.07, 0.1, 0.15, 0.2, 0.3, 0.4, 0.45, 0.5, 0.55, 0.6, 0.65, 0.7, 0.8, 0.9, 0.96)
+"""Energies over the depth between which panels of a quadrature lie where a curve may turn: where arms of crossed beams
+open, or a further minimum joins."""
+
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class CurveShape:
@@ -129,8 +133,12 @@ class CurveShape:
         nodes.append(bottom * x * x)
         weights.append(2.0 * bottom * x * w)
         u, du = limit * np.concatenate(nodes), limit * np.concatenate(weights)
-        dw = self.volume(u) * self._growth(u) / u * du
-        return as_floats(u), as_floats(dw)
+        return as_floats(u), as_floats(self.slope(u) * du)
+
+    def slope(self, energy: Floats) -> Floats:
+        """dW/dU at energies above 0 and up to 1. [1]"""
+        slope: Floats = self.volume(energy) * self._growth(energy) / energy
+        return slope
 
     @cached_property
     def rim_levels(self) -> float:

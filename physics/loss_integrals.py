@@ -31,6 +31,7 @@ from physics.ideal_bose import IdealBose
 from physics.ideal_fermi import IdealFermi
 from physics.oscillator_levels import COARSE_ORDER, OscillatorLevels
 from physics.particles import Statistics
+from physics.real_equilibria import RealEquilibrium
 from physics.semi_ideal import SemiIdeal
 from physics.statistics import bose, fermi, zeta
 
@@ -115,6 +116,8 @@ def two_and_three_body_densities(equilibrium: Equilibrium) -> tuple[Floats, Floa
         if isinstance(solved, ExactLevels):
             return _exact_levels(solved)
         if isinstance(solved, HartreeFock):
+            return solved.pair_density, solved.triple_density
+        if isinstance(solved, RealEquilibrium):
             return solved.pair_density, solved.triple_density
     raise TypeError(f"no mean density for losses is known for {type(solved).__name__}")
 

@@ -33,3 +33,4 @@ class Replacement(Enum):
     LENGTH_UNKNOWN = "scattering length unknown"
     NOT_REPULSIVE = "scattering length not positive"
     BOSONS_ONLY = "model for bosons only"
+    HARMONIC_ONLY = "levels of a harmonic trap only"

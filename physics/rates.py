@@ -26,6 +26,7 @@ from physics.loss_integrals import energies_of_lost_atoms, two_and_three_body_de
 from physics.losses import Losses, noise_heating_rate, scaling_ceiling, unitary_ceiling
 from physics.particles import Statistics
 from physics.statistics import zeta
+from physics.real_equilibria import RealEquilibrium
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -138,8 +139,8 @@ class Rates:
         Lost atoms carry less than their share of the energy: (T/4) K2 <n> + (T/3) K3 <n^2> of a classical cloud. From
         a degenerate one, background loss changes T also: it cools bosons and heats fermions [3]. NaN with a condensate.
         """
-        solved, T = self.equilibrium, self.equilibrium.cloud.temperature
-        two, three = energies_of_lost_atoms(solved.cloud.statistics, solved.classical_phase_space_density)
+        T = self.equilibrium.cloud.temperature
+        two, three = self._energies_of_lost_atoms
         taken = (
             self.background_loss_rate * (self._energy_of_another - self._mean_energy),
             self.two_body_loss_rate * (self._energy_of_another - two),
@@ -153,7 +154,10 @@ class Rates:
 
     @quantity
     def noise_heating_rate(self) -> Floats:
-        """T times the mean over the axes of pi^2 f^2 S(2f), by noise of the light's intensity. [K/s]"""
+        """T times the mean over the axes of pi^2 f^2 S(2f), by noise of the light's intensity. [K/s]
+
+        Along an axis that light and coils hold together, times the square of the light's share of the spring constant.
+        """
         spectrum = self.losses.intensity_noise
         if spectrum is None:
             return _unknown()
@@ -170,7 +174,11 @@ class Rates:
     @cached_property
     def _reduced(self) -> tuple[Floats, Floats, Floats]:
         """Energy of an atom and of one more at this T, both in kT, and heat capacity an atom, in k, of the ideal gas
-        in a harmonic trap: 3, 3 and 3 of a classical one; NaN with a condensate."""
+        in the trap: 3, 3 and 3 of a classical one in a harmonic trap; NaN with a condensate."""
+        if isinstance(self.equilibrium, RealEquilibrium):
+            condensed = np.nan_to_num(self.equilibrium.condensate_atoms) > 0.0
+            mean, another, heat = (np.where(condensed, np.nan, each) for each in self.equilibrium.heat)
+            return mean, another, heat
         statistics = self.equilibrium.cloud.statistics
         X = self.equilibrium.classical_phase_space_density
         if statistics is Statistics.BOSE:

@@ -15,6 +15,7 @@ import numpy as np
 from physics.checks import Floats
 from physics.cloud import Cloud, equilibrium
 from physics.models import Model
+from physics.real_trap import RealTrap
 from physics.traps import HarmonicTrap
 
 CELLS_AT_ONCE = 512
@@ -73,7 +74,13 @@ def _some_rows(cloud: Cloud, part: slice) -> Cloud:
         has_rows = np.ndim(value) == dimensions + inner and np.shape(value)[0] > 1
         return value[part] if has_rows else value
 
-    trap = HarmonicTrap(frequencies=cut(cloud.trap.frequencies, 1), depth=cut(cloud.trap.depth))
+    found, whole = cut(cloud.trap.frequencies, 1), cloud.trap
+    trap: HarmonicTrap | RealTrap
+    if isinstance(whole, HarmonicTrap):
+        trap = HarmonicTrap(frequencies=found, depth=cut(whole.depth))
+    else:
+        numbers = {name: cut(getattr(whole, name)) for name in ("held", "volume", "depth")}
+        trap = whole.with_numbers(frequencies=found, **numbers)
     return replace(
         cloud,
         trap=trap,

@@ -46,7 +46,7 @@ def through_nodes(function: Callable[[Floats], Floats], points: Floats) -> Float
         if 4 * degree > points.size:
             break
         nodes = low + 0.5 * (high - low) * (chebyshev.chebpts1(degree + 1) + 1.0)
-        coefficients = np.asarray(_coefficients(function(nodes)), dtype=np.float64)
+        coefficients = np.asarray(chebyshev_coefficients(function(nodes)), dtype=np.float64)
         sizes = np.abs(coefficients)
         if np.all(np.max(sizes[-(degree // 3) :], axis=0) <= TOLERANCE * np.max(sizes, axis=0)):
             # Clipped, for the ends may come out an ulp beyond -1 and 1.
@@ -55,7 +55,7 @@ def through_nodes(function: Callable[[Floats], Floats], points: Floats) -> Float
     return function(points)
 
 
-def _coefficients(values: Floats) -> Floats:
+def chebyshev_coefficients(values: Floats) -> Floats:
     """Chebyshev coefficients, along the first axis, of the polynomials through values at the roots of the next one."""
     count = values.shape[-1]
     angles = np.pi * (np.arange(count) + 0.5)[::-1] / count

@@ -10,8 +10,8 @@ from types import MappingProxyType
 
 import numpy as np
 
-from physics.curve_shape import CurveShape
 from physics.ramps import Control, Knob
+from physics.real_trap import held_curve
 from physics.species import State
 from physics.trap_path import SCALE, TrapPoint
 from physics.traps.survey import Survey, survey
@@ -98,19 +98,11 @@ def point_of(found: Survey) -> TrapPoint:
     """What the kinetics needs of a survey.
 
     The volume of a focused beam without gravity has no end at the depth; there 0.95 of it counts as the depth.
-    Elsewhere the last step of the volume curve is carried on to the depth, where counting ended a little below.
     """
-    curve = found.volume_curve
-    if not found.trapped or found.depth is None or curve is None:
+    if not found.trapped or found.depth is None or found.volume_curve is None:
         reason = "the depth is not known" if found.reason is None else found.reason.value
         return TrapPoint(depth=None, reason=reason)
-    energies, volumes = np.asarray(curve.energies), np.asarray(curve.volumes)
-    # Counted volumes may stand still between two energies.
-    rising = np.concatenate([[True], np.diff(np.maximum.accumulate(volumes)) > 1e-9 * volumes[1:]])
-    rising[-1] = True
-    energies, volumes = energies[rising], volumes[rising]
-    if len(volumes) > 1 and volumes[-1] <= volumes[-2]:
-        energies, volumes = np.delete(energies, -2), np.delete(volumes, -2)
+    depth, volume, curve = held_curve(found)
     frequencies = None
     if found.frequencies is not None:
         x, y, z = (float(f) for f in found.frequencies)
@@ -119,16 +111,10 @@ def point_of(found: Survey) -> TrapPoint:
     if found.minimum is not None:
         x, y, z = (float(place) for place in found.minimum)
         minimum = (x, y, z)
-    depth = float(energies[-1]) if found.volume_curve_ceiling is not None else float(found.depth)
-    if depth > energies[-1] * (1.0 + 1e-9) and len(energies) > 4:
-        growth = math.log(volumes[-1] / volumes[-4]) / math.log(energies[-1] / energies[-4])
-        volumes = np.append(volumes, volumes[-1] * (depth / energies[-1]) ** growth)
-        energies = np.append(energies, depth)
-    depth = float(energies[-1])
     return TrapPoint(
         depth=depth if math.isfinite(depth) else None,
-        volume=float(volumes[-1]),
-        curve=CurveShape(energies=energies / depth, volumes=volumes / volumes[-1], exponent=curve.power),
+        volume=volume,
+        curve=curve,
         frequencies=frequencies,
         minimum=minimum,
         axes=None if found.axes is None else tuple(tuple(row) for row in np.asarray(found.axes).tolist()),

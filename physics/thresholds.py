@@ -21,6 +21,7 @@ from physics.equilibria import Equilibrium, quantity
 from physics.hartree_fock_integrals import onset_ratio
 from physics.models import Model
 from physics.oscillator_levels import OscillatorLevels
+from physics.traps.harmonic import HarmonicTrap
 
 _STEPS = 60
 
@@ -60,10 +61,10 @@ class Thresholds:
         """Where the excited levels of the oscillator, mu at the ground level, hold all the atoms; no interaction. [K]
 
         A small cloud has no sharp threshold: this is the temperature at which its ground level is bound to fill. About
-        a millisecond each.
+        a millisecond each. NaN in a real trap, whose levels are not known.
         """
         solved = self.equilibrium
-        if not solved.bosons:
+        if not solved.bosons or not isinstance(solved.cloud.trap, HarmonicTrap):
             return np.full((), np.nan)
         frequencies = solved.cloud.trap.frequencies
         shape = np.broadcast_shapes(np.shape(solved.cloud.atoms), frequencies.shape[:-1])
@@ -82,6 +83,10 @@ class Thresholds:
         solved = self.equilibrium
         if not solved.bosons:
             return np.full((), np.nan)
+        if not isinstance(solved.cloud.trap, HarmonicTrap):
+            from physics.real_hartree_fock import RealHartreeFock
+
+            return RealHartreeFock(cloud=solved.cloud, model=Model.HARTREE_FOCK).onset_temperature
         ideal: Floats = np.asarray(solved.critical_temperature)
         repulsion = 2.0 * solved.cloud.length * np.sqrt(2.0 * math.pi * solved.cloud.mass * boltzmann * ideal) / planck
         known = repulsion > 0.0

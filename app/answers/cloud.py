@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import partial
-from typing import TYPE_CHECKING
+from functools import cached_property, partial
+from typing import TYPE_CHECKING, cast
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,9 +23,11 @@ from physics.particles import Statistics
 from physics.scattering import LengthInUse
 from physics.species import State, load_species
 
+from physics.traps.harmonic import HarmonicTrap
 if TYPE_CHECKING:
     from app.plan import Plan
 
+    from physics.real_equilibria import RealEquilibrium
 Array = NDArray[np.float64]
 
 FERMI_THRESHOLD = 0.5
@@ -77,7 +79,8 @@ class CloudAnswer:
             case Need.CONDENSATE:
                 return self.bosons and float(self.equilibrium.condensate_fraction) > 0.0
             case Need.INTERACTING_CONDENSATE:
-                return bool(np.all(np.isfinite(self.equilibrium.condensate_radii)))
+                condensed = self.bosons and float(self.equilibrium.condensate_fraction) > 0.0
+                return condensed and self.model in (Model.SEMI_IDEAL, Model.HARTREE_FOCK)
             case Need.SCATTERING_LENGTH:
                 return self.cloud.scattering_length is not None
             case Need.COLLISIONS:
@@ -117,6 +120,8 @@ class CloudAnswer:
                 return bool(np.isfinite(rates.heating_rate))
             case Need.MIXTURE:
                 return not bool(np.isnan(self.solution.estimates.interaction_parameter))
+            case Need.REAL_TRAP:
+                return self.real_trap is not None and self.real_trap.trap.has_frequencies
             case Need.POSITIVE_LENGTH:
                 return bool(self.cloud.length > 0.0)
             case Need.KNOWN_COUPLING:
@@ -158,7 +163,7 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
             certainties=losses.certainties(),
             measured_length=_measured_length(state, losses),
         ),
-        *_trap_caveats(plan),
+        *_trap_caveats(plan, solved),
     )
     return CloudAnswer(
         plan=plan,
@@ -180,15 +185,18 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
     )
 
 
-def _trap_caveats(plan: Plan) -> tuple[Caveat, ...]:
-    """What it costs to answer in the harmonic trap of beams and coils; nothing where the frequencies are given."""
+def _trap_caveats(plan: Plan, solved: Equilibrium) -> tuple[Caveat, ...]:
+    """How the harmonic trap of beams and coils would answer; nothing where the frequencies are given."""
     if plan.trap.harmonic:
         return ()
     from physics.trap_caveats import harmonic_trap_caveat
 
-    caveat = harmonic_trap_caveat(trap_answer(plan).survey, plan.cloud.temperature.value)
-    uncertain = Caveat(id="trap_uncertainty", severity=Severity.NOTE)
-    return (caveat, uncertain) if trap_inputs(plan) else (caveat,)
+    found = []
+    if isinstance(solved, RealEquilibrium) and solved.trap.has_frequencies:
+        found.append(harmonic_trap_caveat(trap_answer(plan).survey, solved))
+    if trap_inputs(plan):
+        found.append(Caveat(id="trap_uncertainty", severity=Severity.NOTE))
+    return tuple(found)
 
 
 def _measured_length(state: State, losses: LossesInUse) -> float | None:
@@ -196,3 +204,4 @@ def _measured_length(state: State, losses: LossesInUse) -> float | None:
     if losses.three_body is None or state.scattering_length is None or state.scattering_length_is_background:
         return None
     return state.scattering_length.value
+    from physics.real_equilibria import RealEquilibrium

@@ -1,6 +1,7 @@
-"""The harmonic trap of a cloud: given by its frequencies, or from the survey of beams and coils.
+"""The trap of a cloud: harmonic where its frequencies are given, else what the survey of beams and coils found.
 
-Frequencies and depth of a surveyed trap follow its uncertain numbers (powers, waists, gradients ...) to first order.
+Frequencies, depth and volume of a surveyed trap follow its uncertain numbers (powers, waists, gradients ...) to first
+order, its volume curve keeps its shape: W at a low energy goes as 1 over the product of the frequencies.
 """
 
 from __future__ import annotations
@@ -15,13 +16,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.part import part
-from app.answers.trap import KEPT, trap_answer, trap_of
+from app.answers.trap import KEPT, TrapAnswer, trap_answer, trap_of
 from app.plan_field import PlanError
 from app.units import Quantity
 from physics.traps import HarmonicTrap, Trap
 
 if TYPE_CHECKING:
     from app.plan import Plan, TrapChoice
+    from physics.real_trap import RealTrap
 
 Array = NDArray[np.float64]
 
@@ -31,12 +33,13 @@ STEP = 1e-3
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Slope:
-    """How the logarithms of the three frequencies and of the depth follow one number of the trap: in its logarithm
-    where it is positive, else in itself."""
+    """How the logarithms of the three frequencies, of the depth and of the volume at a low energy follow one number of
+    the trap: in its logarithm where it is positive, else in itself."""
 
     centre: float
     frequencies: Array
     depth: float
+    room: float
 
     def distance(self, values: float | Array) -> Array:
         """How far values of the number are from its central one."""
@@ -54,22 +57,47 @@ def trap_inputs(plan: Plan) -> dict[str, Quantity]:
     return named if choice.depth is None else {**named, "depth": choice.depth}
 
 
-def trap_in_use(plan: Plan, numbers: Mapping[str, float | Array]) -> HarmonicTrap:
-    """The harmonic trap of these numbers; many draws of a number make as many traps.
+def trap_in_use(plan: Plan, numbers: Mapping[str, float | Array]) -> HarmonicTrap | RealTrap:
+    """The trap of these numbers; many draws of a number make as many traps.
 
-    Raises PlanError, in one sentence, where beams and coils hold nothing or have no frequencies.
+    Raises PlanError, in one sentence, where beams and coils hold nothing.
     """
     if plan.trap.frequencies is not None:
         frequencies = np.stack(np.broadcast_arrays(*(numbers[f"frequency {axis}"] for axis in range(3))), axis=-1)
         return HarmonicTrap(frequencies=frequencies, depth=numbers.get("depth"))
-    central = surveyed_trap(plan)
-    exponents, deeper = np.zeros(3), np.zeros(())
-    for name, slope in trap_slopes(plan).items():
+    central, slopes = central_trap(plan), trap_slopes(plan)
+    if not slopes:
+        return central
+    exponents, deeper, wider = np.zeros(3), np.zeros(()), np.zeros(())
+    for name, slope in slopes.items():
         away = slope.distance(numbers[name])
         exponents = exponents + away[..., np.newaxis] * slope.frequencies
-        deeper = deeper + away * slope.depth
-    depth = None if central.depth is None else central.depth * np.exp(deeper)
-    return HarmonicTrap(frequencies=central.frequencies * np.exp(exponents), depth=depth)
+        deeper, wider = deeper + away * slope.depth, wider + away * slope.room
+    if isinstance(central, HarmonicTrap):
+        depth = None if central.depth is None else central.depth * np.exp(deeper)
+        return HarmonicTrap(frequencies=central.frequencies * np.exp(exponents), depth=depth)
+    return central.resized(depth=np.exp(deeper), frequencies=np.exp(exponents), room=np.exp(wider))
+
+
+@part("species.key", "species.state", "trap", keep=KEPT)
+def central_trap(plan: Plan) -> HarmonicTrap | RealTrap:
+    """The trap of the plan's beams and coils, with what clouds in it need; harmonic where its depth is not known.
+
+    Raises PlanError, in one sentence, where they hold nothing, or have neither a known depth nor frequencies.
+    """
+    from physics.real_trap import real_trap
+
+    found = _held(plan).survey
+    return surveyed_trap(plan) if found.depth is None or found.volume_curve is None else real_trap(found)
+
+
+def _held(plan: Plan) -> TrapAnswer:
+    from app.trap_words import reason_not_trapped
+
+    answer = trap_answer(plan)
+    if not answer.trapped:
+        raise PlanError(f"the trap of this plan, {plan.trap.makers}, holds no atoms: {reason_not_trapped(answer)}")
+    return answer
 
 
 def surveyed_trap(plan: Plan) -> HarmonicTrap:
@@ -77,26 +105,21 @@ def surveyed_trap(plan: Plan) -> HarmonicTrap:
 
     Raises PlanError, in one sentence, where they hold nothing or have no frequencies.
     """
-    from app.trap_words import reason_no_frequencies, reason_not_trapped
+    from app.trap_words import reason_no_frequencies
 
-    answer = trap_answer(plan)
-    if not answer.trapped:
-        raise PlanError(f"the trap of this plan, {plan.trap.makers}, holds no atoms: {reason_not_trapped(answer)}")
+    answer = _held(plan)
     harmonic = answer.survey.harmonic
     if harmonic is None:
         raise PlanError(
-            f"the trap of this plan, {plan.trap.makers}, has no frequencies, and this version answers for a cloud only "
-            f"with them: {reason_no_frequencies(answer)}"
+            f"the trap of this plan, {plan.trap.makers}, has no frequencies, which are needed here: "
+            f"{reason_no_frequencies(answer)}"
         )
     return harmonic
 
 
 @part("species.key", "species.state", "trap", keep=KEPT)
 def trap_slopes(plan: Plan) -> dict[str, Slope]:
-    """Name of each uncertain number of beams and coils -> how the harmonic trap follows it."""
-    from physics.traps.potential import potential_of
-    from physics.traps.response import nearby
-
+    """Name of each uncertain number of beams and coils -> how the trap follows it."""
     answer = trap_answer(plan)
     slopes = {}
     for name, (quantity, put) in _uncertain(plan.trap):
@@ -106,18 +129,35 @@ def trap_slopes(plan: Plan) -> dict[str, Slope]:
         for value in (quantity.value - step, quantity.value + step):
             trap = trap_of(replace(plan, trap=put(replace(quantity, value=value))))
             assert isinstance(trap, Trap)  # put changes a beam or the coils
-            ends.append(nearby(answer.survey, potential_of(trap, answer.state)))
+            ends.append(_nearby(answer, trap))
         below, above = ends
         if below is None or above is None:
             continue  # at the edge of what is held, where there is no first order
         width = math.log((quantity.value + step) / (quantity.value - step)) if quantity.value > 0.0 else 2.0 * step
-        depths = below.depth, above.depth
-        slopes[name] = Slope(
-            centre=quantity.value,
-            frequencies=np.log(above.frequencies / below.frequencies) / width,
-            depth=0.0 if None in depths else float(np.log(above.depth / below.depth)) / width,
-        )
+        frequencies, depth, room = ((high - low) / width for low, high in zip(below, above, strict=True))
+        slopes[name] = Slope(centre=quantity.value, frequencies=frequencies, depth=float(depth), room=float(room))
     return slopes
+
+
+def _nearby(answer: TrapAnswer, trap: Trap) -> tuple[Array, Array, Array] | None:
+    """Logarithms, but for constants, of the frequencies, the depth and the volume of a trap that differs a little from
+    the surveyed one; None where it cannot be followed."""
+    from physics.traps.potential import potential_of
+    from physics.traps.response import nearby
+
+    if answer.survey.frequencies is not None:
+        near = nearby(answer.survey, potential_of(trap, answer.state))
+        if near is None:
+            return None
+        logs = np.log(near.frequencies)
+        return logs, np.log(1.0 if near.depth is None else near.depth), -np.sum(logs)
+    # A cusp is quick to survey, and there is no shorter way.
+    from physics.traps.survey import survey
+
+    found = survey(trap, answer.state)
+    if found.depth is None or found.volume_curve is None:
+        return None
+    return np.zeros(3), np.log(found.depth), np.log(found.volume_curve.coefficient)
 
 
 _Put = Callable[[Quantity], "TrapChoice"]

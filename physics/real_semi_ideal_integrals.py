@@ -1,0 +1,211 @@
+"""Sums over a real trap of thermal bosons around a Thomas-Fermi condensate, and of the condensate.
+
+Energies in kT: mu = m, the highest energy that is held eta. The condensate lifts the potential V of thermal atoms to
+|V - mu| = v above mu, and those above top = eta - m are gone, so that n lambda^3 is a function of v and of the top.
+A sum of h over the volumes dw is done by parts, as -(integral of w dh), which needs no derivative of a curve. Outside
+the condensate it runs over sqrt(v), inside it over theta, v = m cos^2 theta, in which the roots at both ends are
+regular. Functions take flat arrays, one element a cloud; w is the volume over that at eta.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+
+from physics.checks import Floats
+from physics.curve_shape import CurveShape
+from physics.harmonic_integrals import legendre
+from physics.held_densities import HeldBose
+from physics.real_sums import ends_between, panels
+from physics.roots import rising_roots
+from physics.smooth_surface import Surface
+from physics.spline import Spline
+
+_OUTSIDE, _INSIDE, _DEEP = 8, 6, 48  # nodes, of each panel but for the last
+_REACH = 42.0  # kT beyond which there are no thermal atoms
+_LOWEST, _PLACES = 1e-6, 200
+_TINY = 1e-300
+_CELLS = 128  # at once, to bound the memory
+_DIRECT = 160  # clouds up to which sums are done one by one
+_STEP, _IN_ETA, _PER_STEP, _IN_M = 0.4, 9, 1.6, 26  # of surfaces: steps of ln eta, nodes
+_KEPT, _LEAST = 6, 1e-9
+_FULL = 0.9  # of eta, up to which mu is on a surface
+
+THERMAL_SUMS = ("number", "energy", "potential", "squared", "cubed", "product", "squared_product", "product_squared")
+"""Rows of `CondensateSums.thermal`: with d = n lambda^3 and c = m - V, positive inside the condensate, the sums of d;
+of the energy above mu; of V d; of d^2 and d^3; and over the condensate of c d, c^2 d and c d^2."""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class CondensateSums:
+    """Sums over a trap of a shape."""
+
+    shape: CurveShape
+
+    def thermal(self, eta: Floats, m: Floats) -> Floats:
+        """(8, cells) `THERMAL_SUMS`, for m from 0 to eta. [1]"""
+        gas = HeldBose(top=eta - m)
+        with np.errstate(all="ignore"):
+            v, w = self._outside(eta, m)
+            d, fall = gas.density_and_fall(v)
+            potential, nothing = v + m[:, np.newaxis], np.zeros(d.shape)
+            # -dh/dv of each row.
+            falls = [fall, 0.5 * d + v * fall, potential * fall - d, 2.0 * d * fall, 3.0 * d * d * fall, *3 * [nothing]]
+            outside = np.stack([np.sum(np.where(w > 0.0, w * each, 0.0), axis=-1) for each in falls])
+            v, w = self._inside(eta, m)
+            d, fall = gas.density_and_fall(v)
+            potential = m[:, np.newaxis] - v
+            falls = [fall, 0.5 * d + v * fall, potential * fall + d, 2.0 * d * fall, 3.0 * d * d * fall,
+                     v * fall - d, v * (v * fall - 2.0 * d), d * (2.0 * v * fall - d)]  # fmt: skip
+            inside = np.stack([np.sum(np.where(w > 0.0, w * each, 0.0), axis=-1) for each in falls])
+        total: Floats = outside - inside
+        return total
+
+    def _number(self, eta: Floats, m: Floats) -> Floats:
+        """(cells,) The first row of `thermal`, in a third of the time."""
+        gas = HeldBose(top=eta - m)
+        total = np.zeros(eta.shape)
+        with np.errstate(all="ignore"):
+            for sign, (v, w) in ((1.0, self._outside(eta, m)), (-1.0, self._inside(eta, m))):
+                total += sign * np.sum(np.where(w > 0.0, w * gas.fall(v), 0.0), axis=-1)
+        return total
+
+    def thermal_of_many(self, eta: Floats, m: Floats) -> Floats:
+        """`thermal` of any number of clouds: of many by way of a grid, with a relative error of about 1e-5."""
+        if eta.size <= _DIRECT:
+            return self._in_parts(self.thermal, eta, m)
+        surface = self._surface(eta)
+        parts = []
+        for start in range(0, eta.size, 4096):
+            part = slice(start, start + 4096)
+            found = surface.along(surface.across(np.log(eta[part])), _place(eta[part], m[part]))
+            parts.append(np.exp(found) * _scales(self.shape.exponent, eta[part], m[part]))
+        return np.concatenate(parts, axis=-1)
+
+    def _in_parts(self, function: Callable[[Floats, Floats], Floats], eta: Floats, m: Floats) -> Floats:
+        starts = range(0, max(eta.size, 1), _CELLS)
+        return np.concatenate([function(eta[at : at + _CELLS], m[at : at + _CELLS]) for at in starts], axis=-1)
+
+    @cached_property
+    def _surfaces(self) -> dict[tuple[float, float], Surface]:
+        return {}
+
+    def _surface(self, eta: Floats) -> Surface:
+        """ln of `thermal` over its scales, for these eta and all m."""
+        low = _STEP * math.floor(math.log(float(np.min(eta))) / _STEP)
+        high = _STEP * math.ceil(math.log(float(np.max(eta))) / _STEP)
+        for surface in self._surfaces.values():
+            if surface.x_range[0] <= low and high <= surface.x_range[1]:
+                return surface
+
+        def scaled(log_eta: Floats, place: Floats) -> Floats:
+            eta = np.exp(log_eta)
+            m = 0.25 * np.sinh(place * np.arcsinh(2.0 * np.sqrt(_FULL * eta))) ** 2
+            return np.log(self._in_parts(self.thermal, eta, m) / _scales(self.shape.exponent, eta, m))
+
+        counts = (_IN_ETA + math.ceil(_PER_STEP * (high - low) / _STEP), _IN_M)
+        if len(self._surfaces) > _KEPT:
+            self._surfaces.clear()
+        self._surfaces[low, high] = Surface(scaled, (low, high), (0.0, 1.0), counts)
+        return self._surfaces[low, high]
+
+    def height(self, eta: Floats, wanted: Floats, saturated: Floats, scale: Floats) -> Floats:
+        """m = mu/kT at which thermal atoms and the condensate, of density `scale` (m - V), are as many as wanted.
+
+        Parameters
+        ----------
+        wanted, saturated : N lambda^3 over the volume: of all atoms, and of the thermal ones at the threshold, fewer.
+
+        NaN where the trap does not hold so many.
+        """
+        number: Callable[[Floats], Floats]
+        if eta.size <= _DIRECT:
+
+            def number(m: Floats) -> Floats:
+                return self._in_parts(self._number, eta, m)
+        else:
+            surface, scales = self._surface(eta), self.shape.exponent
+            polynomials = surface.across(np.log(eta))[:1]
+
+            def number(m: Floats) -> Floats:
+                held: Floats = np.exp(surface.along(polynomials, _place(eta, m))[0]) * _scales(scales, eta, m)[0]
+                return held
+
+        start = number(np.zeros_like(eta))
+        beyond = wanted - saturated
+
+        def miss(log_m: Floats) -> Floats:
+            m = np.exp(log_m)
+            extra = scale * eta * self.condensed(m / eta)[0] + number(m) - start
+            with np.errstate(all="ignore"):
+                return np.where(extra > 0.0, np.log(extra / beyond), -np.inf)
+
+        # The logarithm of the atoms beyond the threshold against that of m: its slope is between 1/2 and 5/2 in a deep
+        # harmonic trap, and it is followed by secants within a bracket.
+        high = np.log(eta)
+        fits = scale * eta * self.condensed(np.ones_like(eta))[0] >= wanted
+        first = np.log(np.clip(beyond / saturated, 1e-7, 0.3)) + np.minimum(high, 0.0)
+        first = np.where(fits, np.minimum(first, high - 1e-3), np.nan)
+        low = np.full_like(high, math.log(_LEAST))
+        return np.exp(rising_roots(miss, low, high, first, slope=1.5))
+
+    def _outside(self, eta: Floats, m: Floats) -> tuple[Floats, Floats]:
+        """v, and w with the weights of an integral over v, (cells, nodes)."""
+        end = np.minimum(eta - m, _REACH)
+        root, width = panels(np.sqrt(ends_between(eta, m, np.zeros_like(m), end, (2.0, 10.0))), _OUTSIDE)
+        v = root * root
+        u = np.minimum((m[:, np.newaxis] + v) / eta[:, np.newaxis], 1.0)
+        return v, self.shape.volume(u) * 2.0 * root * width
+
+    def _inside(self, eta: Floats, m: Floats) -> tuple[Floats, Floats]:
+        """The same, as far from the edge as there are thermal atoms."""
+        reach = np.minimum(np.minimum(m, eta - m), _REACH)
+        above = -ends_between(eta, m, -reach, np.zeros_like(m), (-10.0, -2.0, -0.3))
+        share = np.minimum(above / np.maximum(m, _TINY)[:, np.newaxis], 1.0)
+        theta, width = panels(np.arccos(np.sqrt(share)), _INSIDE)
+        sine, cosine, height = np.sin(theta), np.cos(theta), m[:, np.newaxis]
+        u = height * sine**2 / eta[:, np.newaxis]
+        return height * cosine**2, self.shape.volume(u) * 2.0 * height * sine * cosine * width
+
+    def condensate(self, x: Floats) -> Floats:
+        """(3, cells) Integrals of x - u, its square and cube over dw, u up to x = mu over the highest energy. [1]"""
+        t, weights = legendre(_DEEP)
+        angle = 0.5 * math.pi * t
+        u, weights = np.cos(angle) ** 2, math.pi * weights * np.sin(angle) * np.cos(angle)
+        w = self.shape.volume(np.multiply.outer(x, u))
+        above = 1.0 - u
+        return np.stack(
+            [x * (w @ weights), 2.0 * x**2 * (w @ (weights * above)), 3.0 * x**3 * (w @ (weights * above**2))]
+        )
+
+    @cached_property
+    def _table(self) -> Spline:
+        """ln of the first of `condensate` over its power law, against ln x."""
+        x = np.geomspace(_LOWEST, 1.0, _PLACES)
+        logs = np.log(self.condensate(x)[0]) - (self.shape.exponent + 1.0) * np.log(x)
+        return Spline(np.log(x), logs[:, np.newaxis])
+
+    def condensed(self, x: Floats) -> tuple[Floats, Floats]:
+        """The first of `condensate`, tabulated, and its derivative by ln x."""
+        log = np.log(x)
+        inside, power = np.maximum(log, math.log(_LOWEST)), self.shape.exponent + 1.0
+        number = np.exp(self._table(inside)[..., 0] + power * log)
+        return number, number * (power + np.where(log > inside, 0.0, self._table.slopes(inside)[..., 0]))
+
+
+def _place(eta: Floats, m: Floats) -> Floats:
+    """Where m stands between 0 and nearly eta: in equal steps of its root, or of its logarithm where it is large."""
+    place: Floats = np.arcsinh(2.0 * np.sqrt(m)) / np.arcsinh(2.0 * np.sqrt(_FULL * eta))
+    return place
+
+
+def _scales(exponent: float, eta: Floats, m: Floats) -> Floats:
+    """(8, cells) What sums over the thermal atoms vary as: the volume that they reach, what is held of them, and for
+    products the part that is inside the condensate. What is left is taken as constant as mu nears the depth."""
+    held = eta**-exponent * np.maximum(1.0 - m / eta, 0.0) ** 1.5
+    inside = held * m ** (exponent + 1.0) / (1.0 + m) ** 2
+    return np.stack([held, held, held, held, held, inside, inside * m / (1.0 + m), inside])
