@@ -22,13 +22,13 @@ from physics.loss_caveats import loss_caveats
 from physics.particles import Statistics
 from physics.scattering import LengthInUse
 from physics.species import State, load_species
-
 from physics.traps.harmonic import HarmonicTrap
 if TYPE_CHECKING:
-    from app.plan import Plan
 
+    from app.plan import Plan
     from physics.real_equilibria import RealEquilibrium
 Array = NDArray[np.float64]
+
 
 FERMI_THRESHOLD = 0.5
 """T/TF that counts as degenerate where the plan's target names none."""
@@ -68,7 +68,29 @@ class CloudAnswer:
 
     def missing(self, row: Row) -> Need | None:
         """The first thing that a quantity needs and this cloud does not have."""
-        return next((need for need in row.needs if not self._has(need)), None)
+        need = next((need for need in row.needs if not self._has(need)), None)
+        return self._missing_of_trap(row) if need is None or self.overfull else need
+
+    def _missing_of_trap(self, row: Row) -> Need | None:
+        """What a real trap lacks, so that a quantity of its clouds is not known."""
+        trap = self.cloud.trap
+        if isinstance(trap, HarmonicTrap) or not np.any(np.isnan(self.value(row.name))):
+            return None
+        if self.overfull:
+            return Need.ROOM
+        if row.name == "critical_temperature_exact_levels":
+            return Need.HARMONIC
+        return None if trap.has_frequencies else Need.FREQUENCIES
+
+    @property
+    def real_trap(self) -> RealEquilibrium | None:
+        """The equilibrium, where it is that in a surveyed trap."""
+        return None if isinstance(self.cloud.trap, HarmonicTrap) else cast("RealEquilibrium", self.equilibrium)
+
+    @cached_property
+    def overfull(self) -> bool:
+        """Whether the trap does not hold so many atoms."""
+        return self.real_trap is not None and bool(self.real_trap.atoms_over_most >= 1.0)
 
     def _has(self, need: Need) -> bool:
         match need:
@@ -98,6 +120,8 @@ class CloudAnswer:
             case Need.EFFICIENCY:
                 return self.efficiency is not None
             case _:
+            case Need.REAL_TRAP:
+                return self.real_trap is not None and self.real_trap.trap.has_frequencies
                 return self._allows(need)
 
     def _allows(self, need: Need) -> bool:
@@ -120,8 +144,6 @@ class CloudAnswer:
                 return bool(np.isfinite(rates.heating_rate))
             case Need.MIXTURE:
                 return not bool(np.isnan(self.solution.estimates.interaction_parameter))
-            case Need.REAL_TRAP:
-                return self.real_trap is not None and self.real_trap.trap.has_frequencies
             case Need.POSITIVE_LENGTH:
                 return bool(self.cloud.length > 0.0)
             case Need.KNOWN_COUPLING:
@@ -198,10 +220,10 @@ def _trap_caveats(plan: Plan, solved: Equilibrium) -> tuple[Caveat, ...]:
         found.append(Caveat(id="trap_uncertainty", severity=Severity.NOTE))
     return tuple(found)
 
+    from physics.real_equilibria import RealEquilibrium
 
 def _measured_length(state: State, losses: LossesInUse) -> float | None:
     """Scattering length at which K3 of the data was measured, as far as the data tell."""
     if losses.three_body is None or state.scattering_length is None or state.scattering_length_is_background:
         return None
     return state.scattering_length.value
-    from physics.real_equilibria import RealEquilibrium
