@@ -15,7 +15,7 @@ from app.plan_field import PlanError
 from app.ramp_choices import StageChoice
 from app.trap_choices import LONGEST_NAME, BeamChoice, CoilsChoice, Direction, TrapChoice, free_names
 from app.units import DEPTH, FREQUENCY, Quantity, best_unit, quantity
-from physics.ramps import Control
+from physics.ramps import Control, Knob
 
 if TYPE_CHECKING:
     from app.answers.trap import TrapAnswer
@@ -170,13 +170,18 @@ def with_coils(plan: Plan) -> Plan:
 
 
 def without_coils(plan: Plan) -> Plan:
-    """The plan without coils; PlanError where nothing would be left."""
+    """The plan without coils; PlanError where nothing would be left, or where the ramp moves a part of them."""
+    moved = next((control for control in _controls(plan) if control.knob in _OF_COILS), None)
+    if moved is not None:
+        raise PlanError(f"the ramp moves the {moved.label} of the coils, so they stay")
     if not plan.trap.beams:
         raise PlanError("a trap needs a beam or coils: add a beam first, or give frequencies instead")
     return replace(plan, trap=replace(plan.trap, coils=None))
 
 
-# ---------------------------------------------------------------- names in the ramp
+# ---------------------------------------------------------------- what the ramp moves
+
+_OF_COILS = (Knob.KNIFE, Knob.BIAS, Knob.GRADIENT, Knob.CURVATURE, Knob.LEVITATION)
 
 
 def _controls(plan: Plan) -> Iterator[Control]:

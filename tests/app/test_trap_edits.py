@@ -25,7 +25,7 @@ from app.trap_edits import (
     without_beam,
     without_coils,
 )
-from app.units import BEAM_POWER, LIFETIME, read_quantity
+from app.units import BEAM_POWER, BIAS_FIELD, LIFETIME, read_quantity
 from physics.ramps import Control, Knob
 from physics.species import species_keys
 
@@ -142,3 +142,7 @@ def test_what_could_not_be_read_again_is_refused() -> None:
     with pytest.raises(PlanError, match=r"^a trap needs a beam or coils"):
         without_coils(without_beam(coils, "B"))
     assert without_coils(coils) == last
+    move = MoveChoice(control=Control(Knob.BIAS), end=read_quantity("2 G", BIAS_FIELD))
+    ramped = replace(coils, ramp=(StageChoice(duration=read_quantity("1 s", LIFETIME), moves=(move,)),))
+    with pytest.raises(PlanError, match=r"^the ramp moves the bias of the coils, so they stay"):
+        without_coils(ramped)
