@@ -10,7 +10,7 @@ from app.answers.inputs import scattering_in_use
 from app.answers.losses import losses_in_use, typed_losses
 from app.answers.part import part
 from app.answers.ramp_inputs import gas_of, state_of, target_of
-from app.answers.ramp_start import RampStart, start_of
+from app.answers.ramp_start import RampStart, require_collisions, start_of
 from app.answers.trap import trap_answer
 from app.plan_field import PlanError
 from physics.particles import Certainty
@@ -123,6 +123,7 @@ def simulated(plan: Plan, start: RampStart, tick: Tick | None = None) -> RampAns
 
     if start.ramp is None:
         raise PlanError("nothing is left of the ramp after its last stage")
+    require_collisions(plan)
     state, target, gas = state_of(plan), target_of(plan), gas_of(plan)
     used = losses_in_use(plan, state, {name: quantity.value for name, quantity in typed_losses(plan).items()})
     passenger, left_out = _with_passenger(plan, start, tick)

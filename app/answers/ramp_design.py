@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from app.answers.part import part
 from app.answers.ramp import RAMP_FIELDS, RampAnswer, simulated
 from app.answers.ramp_inputs import gas_of, limits_of, losses_of, target_of
-from app.answers.ramp_start import RampStart, start_of
+from app.answers.ramp_start import RampStart, require_collisions, start_of
 from app.control_kinds import CONTROL_KINDS
 from app.kinds import DURATION
 from app.plan_field import PlanError
@@ -137,6 +137,7 @@ def design_target(plan: Plan) -> tuple[Target, bool]:
 def _designed(plan: Plan, control: Control, since: str | None, tick: Tick | None) -> DesignAnswer:
     from physics.ramp_design import design_ramp
 
+    require_collisions(plan)
     start = start_of(plan, since, ramp=since is not None and bool(plan.ramp))
     target, assumed = design_target(plan)
     limits = limits_of(plan, control)

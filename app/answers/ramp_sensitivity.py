@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from app.answers.part import part
 from app.answers.ramp import RAMP_FIELDS
 from app.answers.ramp_inputs import gas_of, losses_of, target_of
-from app.answers.ramp_start import start_of
+from app.answers.ramp_start import require_collisions, start_of
 from app.plan_field import PlanError
 
 if TYPE_CHECKING:
@@ -54,6 +54,7 @@ def _sensitivity(plan: Plan, since: str | None) -> SensitivityAnswer:
 def _worked_out(plan: Plan, since: str | None, tick: Tick | None) -> SensitivityAnswer:
     from physics.ramp_sensitivity import ramp_sensitivities
 
+    require_collisions(plan)
     start = start_of(plan, since)
     if start.ramp is None:
         raise PlanError("nothing is left of the ramp after its last stage")

@@ -9,8 +9,10 @@ from contextlib import suppress
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from app.answers.ramp_inputs import MeasuredCloud, measured_clouds, path_of, ramp_of
+from app.answers.inputs import scattering_in_use
+from app.answers.ramp_inputs import MeasuredCloud, measured_clouds, path_of, ramp_of, state_of
 from app.plan_field import PlanError
+from physics.scattering import WhyUnknown
 
 if TYPE_CHECKING:
     from app.plan import Plan
@@ -75,6 +77,17 @@ def start_of(plan: Plan, since: str | None = None, *, ramp: bool = True) -> Ramp
         stage=_stage_at(plan, cloud),
         measured=cloud,
     )
+
+
+def require_collisions(plan: Plan) -> None:
+    """Raise PlanError where the scattering length, which decides how fast atoms evaporate, is not known.
+
+    Fermions of one spin state have none, and need none: they do not collide.
+    """
+    length = scattering_in_use(plan, state_of(plan))
+    if length.reason is None or length.reason is WhyUnknown.POLARISED:
+        return
+    raise PlanError(f"{length.reason.value}: give species.scattering_length, or species.field")
 
 
 def measured_cloud(plan: Plan, label: str) -> MeasuredCloud:

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from app.answers.ramp import ramp_answer
 from app.answers.ramp_design import design_target, usual_control
 from app.answers.ramp_inputs import gas_of, limits_of, losses_of, measured_clouds, path_of, ramp_of, target_of
-from app.answers.ramp_start import start_of
+from app.answers.ramp_start import require_collisions, start_of
 from app.plan_field import PlanError
 
 if TYPE_CHECKING:
@@ -83,6 +83,7 @@ def waypoints_answer(
         points = waypoints(run, densities, expansion_time)
         efficiency = None
     elif plan.target.efficiency is not None:
+        require_collisions(plan)
         efficiency, control = plan.target.efficiency.value, usual_control(plan, since)
         start = start_of(plan, since, ramp=False)
         densities = densities or _decades(_density_now(plan), _density_wanted(plan))
