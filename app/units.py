@@ -266,7 +266,9 @@ def _written(number: Decimal, spread: Decimal | None, place: int, unit: str) -> 
     """Plain digits where they are few; pure numbers go over to a power of ten one place earlier."""
     unit = "" if unit == "1" else unit
     largest = max(number.copy_abs(), spread or Decimal(0))
-    size = 0 if largest.is_zero() else (largest if spread else Context(prec=12).plus(largest)).adjusted()
+    # As it will be written: 9.96e4 to two digits is 1.0e5, not 10e4.
+    shown = largest if spread else _WIDE.quantize(largest, Decimal(1).scaleb(-place))
+    size = 0 if largest.is_zero() else (largest if shown.is_zero() else shown).adjusted()
     if _PLAIN_FROM < size < (_PLAIN_TO if unit else _PLAIN_TO - 1):
         body = write_number(number, spread, place)
     else:
