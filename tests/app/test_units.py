@@ -350,6 +350,20 @@ def test_energies_are_written_as_temperatures_and_frequencies() -> None:
     assert format_quantity(h * 1e4, "kHz", si_unit="J") == "10.0 kHz"
 
 
+@pytest.mark.parametrize(
+    ("value", "digits", "text"),
+    [
+        (9.96e4, 2, "1.0e5"),
+        (9.94e4, 2, "9.9e4"),
+        (9.996e-6, 3, "1.00e-5"),
+        (99996.0, 4, "1.000e5"),
+        (-9.96e4, 2, "-1.0e5"),
+    ],
+)
+def test_numbers_that_round_up_to_a_power_of_ten(value: float, digits: int, text: str) -> None:
+    assert format_quantity(value, digits=digits) == text
+
+
 def test_the_best_unit_has_few_zeros() -> None:
     assert best_unit(1.46e-7, TEMPERATURE.units) == "nK"
     assert best_unit(1e-6, TEMPERATURE.units) == "µK"
