@@ -3,7 +3,8 @@
 Each part is a pure function of the plan fields named in its decorator; these fields (and its other arguments) are
 the key under which its newest answers are kept. A visible page asks for its parts, a hidden page for none. The
 cloud part is cheap enough for the thread that asks; the others are vectorised and belong on the worker thread of
-`app.newest`.
+`app.newest`. What is about ramps stands in `app.answers.ramp`, `ramp_design`, `ramp_sensitivity` and `waypoints`, which
+a start does not load; `app.answers.ramp_jobs` has it as jobs.
 """
 
 from __future__ import annotations
