@@ -23,6 +23,7 @@ from app.units import (
     LIFETIME,
     MAGNETIC_FIELD,
     PHASE_SPACE_DENSITY,
+    POINTING_NOISE,
     REDUCED_TEMPERATURE,
     SCATTERING_LENGTH,
     TEMPERATURE,
@@ -76,8 +77,9 @@ class LossesChoice:
 
     background_lifetime : [s] 1/e, of collisions with the background gas
     two_body, three_body : [m^3/s], [m^6/s] K of a thermal gas
-    heating : [K/s] that does not depend on density
+    heating : [K/s] that does not depend on density; None: what the trap's own light brings
     intensity_noise : [1/Hz] one-sided, fractional, at twice the trap frequencies
+    pointing_noise : [m^2/Hz] one-sided, of the position of the trap along each axis, at the trap frequencies
     """
 
     background_lifetime: Quantity | None = None
@@ -85,6 +87,7 @@ class LossesChoice:
     three_body: Quantity | None = None
     heating: Quantity | None = None
     intensity_noise: Quantity | None = None
+    pointing_noise: Quantity | None = None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -275,7 +278,7 @@ _FIELDS = (
         entry=Entry.QUANTITY,
         kind=HEATING_RATE,
         flag="--heating",
-        tip="Rise of temperature per time by light, noise and whatever else does not depend on density.",
+        tip="Rise of temperature per time by whatever does not depend on density; overrides that by the trap's light.",
     ),
     PlanField(
         path="losses.intensity_noise",
@@ -284,6 +287,14 @@ _FIELDS = (
         kind=INTENSITY_NOISE,
         flag="--intensity-noise",
         tip="One-sided spectrum of the light's relative intensity at twice the trap frequencies; it heats the cloud.",
+    ),
+    PlanField(
+        path="losses.pointing_noise",
+        label="Pointing noise",
+        entry=Entry.QUANTITY,
+        kind=POINTING_NOISE,
+        flag="--pointing-noise",
+        tip="One-sided spectrum of the trap's position along each axis, at the trap frequencies; it heats the cloud.",
     ),
     PlanField(
         path="target.reduced_temperature",

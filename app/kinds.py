@@ -40,6 +40,7 @@ _BY_SI_UNIT: Mapping[str, tuple[tuple[str, str | Decimal], ...]] = {
     "T/m^2/s": (("G/cm^2/s", "1"), ("T/m^2/s", "1")),
     "1/s": (("1/s", "1"),),
     "1/Hz": (("1/Hz", "1"),),
+    "m^2/Hz": (("nm^2/Hz", "1e-18"), ("µm^2/Hz", "1e-12"), ("m^2/Hz", "1")),
     "m^2": (("m^2", "1"), ("cm^2", "1e-4")),
     "1/m": (("1/m", "1"), ("1/µm", "1e6")),
     "1/m^2": (("1/m^2", "1"), ("1/cm^2", "1e4"), ("cm^-2", "1e4"), ("1/µm^2", "1e12")),
@@ -199,6 +200,9 @@ HEATING_RATE = Kind(
     name="heating rate", si_unit="K/s", units=("nK/s", "µK/s", "K/s"), low=0.0, high=10.0, example="20 nK/s"
 )
 INTENSITY_NOISE = Kind(name="intensity noise", si_unit="1/Hz", units=("1/Hz",), low=0.0, high=1.0, example="1e-12 1/Hz")
+POINTING_NOISE = Kind(
+    name="pointing noise", si_unit="m^2/Hz", units=("nm^2/Hz", "m^2/Hz"), low=0.0, high=1e-6, example="1e-3 nm^2/Hz"
+)
 REDUCED_TEMPERATURE = Kind(name="reduced temperature", si_unit="", units=("",), low=1e-4, high=1e4, example="0.5")
 PHASE_SPACE_DENSITY = Kind(name="phase-space density", si_unit="", units=("",), low=1e-15, high=1e6, example="2.612")
 EFFICIENCY = Kind(name="evaporation efficiency", si_unit="", units=("",), low=0.01, high=100.0, example="2.5")

@@ -41,15 +41,18 @@ class Need(Enum):
     LOSSES = "a background lifetime or a rate constant of losses"
     NO_CONDENSATE = "a cloud without a condensate"
     HEATING = "losses or a heating rate"
+    LIGHT = "a trap of beams whose light the atoms scatter at a known rate"
+    LIGHT_HEATING = "a trap of beams, and no heating rate that is given"
+    FIELD_ZERO = "a trap at whose minimum the field vanishes"
     MIXTURE = "two spin states with a known scattering length"
     POSITIVE_LENGTH = "a positive scattering length between the spin states"
-    KNOWN_COUPLING = "1/(kF a) below −1, within ±0.2 or above 1: between, there is no simple estimate"
-
-
     FREQUENCIES = "trap frequencies, which this trap does not have"
     REAL_TRAP = "a trap of beams and coils that has frequencies"
     HARMONIC = "a trap given by its frequencies, of which the levels are known"
     ROOM = "fewer atoms: the trap does not hold so many"
+    KNOWN_COUPLING = "1/(kF a) below −1, within ±0.2 or above 1: between, there is no simple estimate"
+
+
 @dataclass(frozen=True, kw_only=True)
 class Row:
     """A quantity. `unit` is its SI unit, `units` the ones offered for display (the first also for tables)."""

@@ -28,6 +28,8 @@ _SOEDING = "Soeding et al., Appl. Phys. B 69, 257 (1999)"
 _WEBER = "Weber et al., Phys. Rev. Lett. 91, 123201 (2003)"
 _DINCAO = "D'Incao, Suno, Esry, Phys. Rev. Lett. 93, 123201 (2004)"
 _SAVARD = "Savard, O'Hara, Thomas, Phys. Rev. A 56, R1095 (1997)"
+_GRIMM = "Grimm, Weidemüller, Ovchinnikov, Adv. At. Mol. Opt. Phys. 42, 95 (2000)"
+_PETRICH = "Petrich, Anderson, Ensher, Cornell, Phys. Rev. Lett. 74, 3352 (1995), recalled"
 _AS_NOW = "the cloud as it is now: density, and with it the loss, falls as atoms go"
 
 FERMI_ROWS = (
@@ -208,13 +210,25 @@ LOSS_ROWS = (
         needs=(Need.THREE_BODY,),
     ),
     Row(
+        name="spin_flip_lifetime",
+        label="lifetime by spin flips at the zero of the field",
+        symbol="τ_flip",
+        unit="s",
+        units=_TIMES,
+        group=Group.LOSSES,
+        formula="1/(χ (ħ/m) (F/kT)²), F the force on the strong axis, χ = 0.54: the mean of those quoted, 0.16 to 1.85",
+        source=_PETRICH,
+        validity="an order of magnitude; thermal atoms in a quadrupole",
+        needs=(Need.FIELD_ZERO,),
+    ),
+    Row(
         name="total_lifetime",
         label="lifetime by all known losses",
         symbol="τ",
         unit="s",
         units=_TIMES,
         group=Group.LOSSES,
-        formula="1/τ = 1/τ₁ + 1/τ₂ + 1/τ₃, of those that are known",
+        formula="1/τ = 1/τ₁ + 1/τ₂ + 1/τ₃ + 1/τ_flip, of those that are known",
         source=_DEFINITION,
         validity="an upper bound where one is not known",
         needs=(Need.LOSSES,),
@@ -244,13 +258,38 @@ LOSS_ROWS = (
         needs=(Need.LOSSES, Need.NO_CONDENSATE),
     ),
     Row(
+        name="scattering_rate",
+        label="photons scattered",
+        symbol="Γ_sc",
+        unit="1/s",
+        units=_RATES,
+        group=Group.LOSSES,
+        formula="sum over the beams, each at its intensity in the minimum of the trap",
+        source=_GRIMM,
+        validity="per atom; an upper bound in a trap of attracting light; far from every line",
+        needs=(Need.LIGHT,),
+    ),
+    Row(
+        name="light_heating_rate",
+        label="heating by the trap's light",
+        symbol="dT/dt by light",
+        unit="K/s",
+        units=_HEATING,
+        group=Group.LOSSES,
+        formula="2 E_rec Γ_sc/(3k), summed over the beams; E_rec = h²/(2 m λ²)",
+        source=_GRIMM,
+        validity="a cloud in a harmonic trap, which holds 3 kT an atom",
+        needs=(Need.LIGHT_HEATING,),
+    ),
+    Row(
         name="heating_rate",
         label="heating, all that is known",
         symbol="dT/dt",
         unit="K/s",
         units=_HEATING,
         group=Group.LOSSES,
-        formula="given heating + T times the mean of π² f² S(2f) over the axes + heating by loss",
+        formula="given heating, else that by light + T times the mean of π² f² S(2f) over the axes "
+        "+ Σ 4π⁴ m f⁴ S_x/(3k) + heating by loss",
         source=f"{_SAVARD}; {_WEBER}",
         validity="a lower bound where a part is not known; with a condensate without that by loss",
         needs=(Need.HEATING,),

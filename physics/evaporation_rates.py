@@ -19,6 +19,7 @@ from physics.checks import Floats
 from physics.constants import boltzmann
 from physics.gas import Gas
 from physics.kinetic_tables import Averages
+from physics.light_heating import pointing_heating_power
 from physics.losses import Losses, noise_heating_rate
 from physics.runge_kutta import OutOfRange
 from physics.stage_trap import TrapNow
@@ -127,6 +128,9 @@ class Kinetics:
         self._three = float(losses.three_body or 0.0)
         self._event_heat = float(losses.recombination_heat or 0.0)
         self._noise = float(losses.intensity_noise or 0.0)
+        self._pointing = float(losses.pointing_noise or 0.0)
+        # A heating rate that is given has that by scattered light in it.
+        self._scatters = losses.heating is None
         # The rate is that of a cloud that keeps its atoms, where one holds (d + 3/2) kT.
         self._heating = (trap.bottom_exponent + 1.5) * boltzmann * float(losses.heating or 0.0)
 
@@ -174,6 +178,7 @@ class Kinetics:
         volume = trap.volume_rate + (1.5 - mean / kT) * trap.depth_rate + averages.number_slope * trap.speed
         work = -kT * (volume - rim * levels_rate)
         noise = mean * self._noise_rate(trap) if self._noise else 0.0
+        noise += self._pointing_power(trap) if self._pointing else 0.0
         atoms = (evaporation, spilling, self._background, two, three)
         energy = (
             -evaporation * (eta + averages.excess) * kT,
@@ -184,7 +189,7 @@ class Kinetics:
             three / 3.0 * self._event_heat,
             work,
             self._heating,
-            trap.light_heating,
+            trap.light_heating if self._scatters else 0.0,
             noise,
             now.partner_power,
         )
@@ -196,6 +201,13 @@ class Kinetics:
         if math.isnan(x + y + z):
             return 0.0
         return float(noise_heating_rate(1.0, self._noise)) * (x + y + z) / 3.0
+
+    def _pointing_power(self, trap: TrapNow) -> float:
+        """Energy per atom and second by a trap that shakes; none in a trap without frequencies. [W]"""
+        fourth = sum(math.exp(4.0 * log) for log in trap.log_frequencies)
+        if math.isnan(fourth):
+            return 0.0
+        return float(pointing_heating_power(self.gas.mass, 1.0, self._pointing)) * fourth
 
     def derivatives(self, time: float, values: Floats) -> list[float]:
         """Of (ln N, ln E, atoms lost by process, energy gained by process)."""

@@ -10,6 +10,8 @@ References
     scattering lengths, 3 x 67 hbar a^4/m at most, and the heat that it leaves.
 [3] J. P. D'Incao, H. Suno, B. D. Esry, Phys. Rev. Lett. 93, 123201 (2004): the unitarity limit. Recalled.
 [4] T. A. Savard, K. M. O'Hara, J. E. Thomas, Phys. Rev. A 56, R1095 (1997): heating by noise of a laser's intensity.
+[5] W. Petrich, M. H. Anderson, J. R. Ensher, E. A. Cornell, Phys. Rev. Lett. 74, 3352 (1995): loss at the zero of a
+    quadrupole. Recalled.
 """
 
 from __future__ import annotations
@@ -27,6 +29,23 @@ from physics.constants import boltzmann, reduced_planck
 SCALING_CEILING = 201.0
 """K3 m/(hbar a^4) that large scattering lengths allow at most. [1] [2]"""
 
+FLIP_COEFFICIENTS = (0.16, 1.85)
+"""The least and the largest factor quoted for the loss at a quadrupole's zero. Recalled: an order of magnitude. [5]"""
+
+
+_UNITS = {
+    "two_body": "m^3/s",
+    "three_body": "m^6/s",
+    "heating": "K/s",
+    "scattering_rate": "1/s",
+    "light_heating": "K/s",
+    "intensity_noise": "1/Hz",
+    "pointing_noise": "m^2/Hz",
+    "light_shares": "",
+    "zero_force": "N",
+    "recombination_heat": "J",
+}
+
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Losses:
@@ -38,8 +57,14 @@ class Losses:
     two_body : array_like or None. [m^3/s] K2 of a thermal gas.
     three_body : array_like or None. [m^6/s] K3 of a thermal gas.
     heating : array_like or None. [K/s] By light, noise and whatever else does not depend on density.
+    scattering_rate : array_like or None. [1/s] Photons of the trap's light that an atom scatters.
+    light_heating : array_like or None. [K/s] By light that the atoms scatter, where `heating` does not tell it.
     intensity_noise : array_like or None. [1/Hz] One-sided spectrum of the relative intensity of the trapping light,
         at twice the trap frequencies.
+    pointing_noise : array_like or None. [m^2/Hz] One-sided spectrum of the position of the trap, along each axis at the
+        frequency of that axis.
+    light_shares : (3,) or None. Share of the spring constant along each axis that the light makes; None: all of it.
+    zero_force : array_like or None. [N] Force of the field on its strong axis, where it vanishes at the minimum.
     recombination_heat : array_like or None. [J] Left in the cloud by one three-body event.
 
     Raises
@@ -51,23 +76,26 @@ class Losses:
     two_body: Any = None
     three_body: Any = None
     heating: Any = None
+    scattering_rate: Any = None
+    light_heating: Any = None
     intensity_noise: Any = None
+    pointing_noise: Any = None
+    light_shares: Any = None
+    zero_force: Any = None
     recombination_heat: Any = None
 
     def __post_init__(self) -> None:
-        units = {"two_body": "m^3/s", "three_body": "m^6/s", "heating": "K/s", "intensity_noise": "1/Hz",
-                 "recombination_heat": "J"}  # fmt: skip
         if self.background_lifetime is not None:
             lifetime = as_floats(self.background_lifetime)
             require_positive("background lifetime", lifetime, "s")
             object.__setattr__(self, "background_lifetime", lifetime)
-        for name, unit in units.items():
+        for name, unit in _UNITS.items():
             value = getattr(self, name)
             if value is not None:
                 floats, words = as_floats(value), name.replace("_", " ")
                 require_not_infinite(words, floats, unit)
                 if np.any(floats < 0.0):
-                    raise ValueError(f"{words} must not be negative, got {np.min(floats):g} {unit}")
+                    raise ValueError(f"{words} must not be negative, got {np.min(floats):g} {unit}".rstrip())
                 object.__setattr__(self, name, floats)
 
 
@@ -100,3 +128,18 @@ def noise_heating_rate(frequency: ArrayLike, spectral_density: ArrayLike) -> Flo
     f, S = np.asarray(frequency, dtype=np.float64), np.asarray(spectral_density, dtype=np.float64)
     rate: Floats = math.pi**2 * f**2 * S
     return rate
+
+
+def spin_flip_rates(mass: float, force: ArrayLike, temperature: ArrayLike) -> tuple[Floats, Floats]:
+    """The least and the largest estimate chi (hbar/m)(F/kT)^2 of the loss at the zero of a quadrupole. [1/s] [5]
+
+    Parameters
+    ----------
+    mass : float. [kg]
+    force : array_like. [N] F = dE/dB times the gradient on the strong axis.
+    temperature : array_like. [K]
+    """
+    kT = boltzmann * np.asarray(temperature, dtype=np.float64)
+    unit = reduced_planck / mass * (np.asarray(force, dtype=np.float64) / kT) ** 2
+    low, high = FLIP_COEFFICIENTS
+    return low * unit, high * unit

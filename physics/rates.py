@@ -22,11 +22,12 @@ from physics import collisions, equation_of_state
 from physics.checks import Floats
 from physics.constants import boltzmann
 from physics.equilibria import Equilibrium, quantity
+from physics.light_heating import harmonic_heating_rate, pointing_heating_power
 from physics.loss_integrals import energies_of_lost_atoms, two_and_three_body_densities
-from physics.losses import Losses, noise_heating_rate, scaling_ceiling, unitary_ceiling
+from physics.losses import Losses, noise_heating_rate, scaling_ceiling, spin_flip_rates, unitary_ceiling
 from physics.particles import Statistics
-from physics.statistics import zeta
 from physics.real_equilibria import RealEquilibrium
+from physics.statistics import zeta
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -94,9 +95,19 @@ class Rates:
         return _unknown() if constant is None else constant * self._densities[1]
 
     @quantity
+    def spin_flip_loss_rate(self) -> Floats:
+        """At the zero of a field: the geometric mean of the least and the largest estimate. [1/s]"""
+        force, cloud = self.losses.zero_force, self.equilibrium.cloud
+        if force is None:
+            return _unknown()
+        least, largest = spin_flip_rates(cloud.mass, force, cloud.temperature)
+        return np.sqrt(least * largest)
+
+    @quantity
     def total_loss_rate(self) -> Floats:
         """Sum of those loss rates that are known: not less than this. [1/s]"""
-        return _sum_of_known(self.background_loss_rate, self.two_body_loss_rate, self.three_body_loss_rate)
+        pairs, triples = self.two_body_loss_rate, self.three_body_loss_rate
+        return _sum_of_known(self.background_loss_rate, pairs, triples, self.spin_flip_loss_rate)
 
     @quantity
     def background_lifetime(self) -> Floats:
@@ -112,6 +123,11 @@ class Rates:
     def three_body_lifetime(self) -> Floats:
         """Atoms over their loss by three-body collisions, as the cloud is now. [s]"""
         return 1.0 / self.three_body_loss_rate
+
+    @quantity
+    def spin_flip_lifetime(self) -> Floats:
+        """Atoms over their loss at the zero of a field, as the cloud is now: an order of magnitude. [s]"""
+        return 1.0 / self.spin_flip_loss_rate
 
     @quantity
     def total_lifetime(self) -> Floats:
@@ -162,14 +178,45 @@ class Rates:
         if spectrum is None:
             return _unknown()
         growth = noise_heating_rate(self.equilibrium.cloud.trap.frequencies, np.expand_dims(spectrum, -1))
+        if self.losses.light_shares is not None:
+            growth = growth * self.losses.light_shares**2
         rate: Floats = self.equilibrium.cloud.temperature * np.mean(growth, axis=-1)
         return rate
 
     @quantity
+    def pointing_heating_rate(self) -> Floats:
+        """Sum over the axes of 4 pi^4 m f^4 S_x(f), over 3k, by a trap that shakes. [K/s]"""
+        spectrum, cloud = self.losses.pointing_noise, self.equilibrium.cloud
+        if spectrum is None:
+            return _unknown()
+        power = pointing_heating_power(cloud.mass, cloud.trap.frequencies, np.expand_dims(spectrum, -1))
+        return harmonic_heating_rate(np.sum(power, axis=-1))
+
+    @quantity
+    def scattering_rate(self) -> Floats:
+        """Photons of the trap's light that an atom scatters. [1/s]"""
+        rate = self.losses.scattering_rate
+        return _unknown() if rate is None else rate
+
+    @quantity
+    def light_heating_rate(self) -> Floats:
+        """By light that the atoms scatter; NaN where a heating rate is given, which has it in it. [K/s]"""
+        losses = self.losses
+        known = losses.light_heating is not None and losses.heating is None
+        return losses.light_heating if known else _unknown()
+
+    @quantity
     def heating_rate(self) -> Floats:
-        """Sum of the heating rates that are known: given, by noise, and by loss. [K/s]"""
-        given = _unknown() if self.losses.heating is None else self.losses.heating
-        return _sum_of_known(given, self.noise_heating_rate, self.loss_heating_rate)
+        """Sum of the heating rates that are known: given, or else by scattered light; by noise; by loss. [K/s]"""
+        given = self.light_heating_rate if self.losses.heating is None else self.losses.heating
+        return _sum_of_known(given, self.noise_heating_rate, self.pointing_heating_rate, self.loss_heating_rate)
+
+    @cached_property
+    def _energies_of_lost_atoms(self) -> Floats:
+        solved = self.equilibrium
+        if isinstance(solved, RealEquilibrium):
+            return solved.energies_of_lost_atoms
+        return energies_of_lost_atoms(solved.cloud.statistics, solved.classical_phase_space_density)
 
     @cached_property
     def _reduced(self) -> tuple[Floats, Floats, Floats]:

@@ -14,6 +14,7 @@ from app.answers.losses import LossesInUse, Solution, losses_in_use
 from app.answers.part import part
 from app.answers.trap import trap_answer
 from app.answers.trap_inputs import trap_inputs
+from app.answers.trap_losses import trap_losses
 from app.answers.uncertainty import Spread, Uncertainty
 from app.quantities import Need, Row
 from physics.caveats import Caveat, Severity, caveats_of, gravest_first
@@ -23,12 +24,12 @@ from physics.particles import Statistics
 from physics.scattering import LengthInUse
 from physics.species import State, load_species
 from physics.traps.harmonic import HarmonicTrap
-if TYPE_CHECKING:
 
+if TYPE_CHECKING:
     from app.plan import Plan
     from physics.real_equilibria import RealEquilibrium
-Array = NDArray[np.float64]
 
+Array = NDArray[np.float64]
 
 FERMI_THRESHOLD = 0.5
 """T/TF that counts as degenerate where the plan's target names none."""
@@ -119,9 +120,9 @@ class CloudAnswer:
                 return self.cloud.trap.depth is not None
             case Need.EFFICIENCY:
                 return self.efficiency is not None
-            case _:
             case Need.REAL_TRAP:
                 return self.real_trap is not None and self.real_trap.trap.has_frequencies
+            case _:
                 return self._allows(need)
 
     def _allows(self, need: Need) -> bool:
@@ -142,6 +143,12 @@ class CloudAnswer:
                 return not self.bosons or bool(solved.reduced_temperature > 1.0)
             case Need.HEATING:
                 return bool(np.isfinite(rates.heating_rate))
+            case Need.LIGHT:
+                return losses.scattering_rate is not None
+            case Need.LIGHT_HEATING:
+                return bool(np.isfinite(rates.light_heating_rate))
+            case Need.FIELD_ZERO:
+                return losses.zero_force is not None
             case Need.MIXTURE:
                 return not bool(np.isnan(self.solution.estimates.interaction_parameter))
             case Need.POSITIVE_LENGTH:
@@ -169,13 +176,15 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
     efficiency = None if plan.target.efficiency is None else plan.target.efficiency.value
     threshold = FERMI_THRESHOLD if plan.target.reduced_temperature is None else plan.target.reduced_temperature.value
 
+    of_trap = trap_losses(plan)
+
     def solve(numbers: Numbers, model: Model | None) -> Solution:
         cloud = cloud_of(plan, state, scattering, numbers)
         solved = equilibrium(cloud, model, fermi_threshold=threshold, efficiency=efficiency)
-        return Solution(equilibrium=solved, losses=losses_in_use(plan, state, numbers).losses)
+        return Solution(equilibrium=solved, losses=losses_in_use(plan, state, numbers, of_trap).losses)
 
     numbers = values_of(plan)
-    losses = losses_in_use(plan, state, numbers)
+    losses = losses_in_use(plan, state, numbers, of_trap)
     solution = solve(numbers, plan.cloud.model)
     solved, cloud = solution.equilibrium, solution.equilibrium.cloud
     caveats = (
@@ -211,6 +220,7 @@ def _trap_caveats(plan: Plan, solved: Equilibrium) -> tuple[Caveat, ...]:
     """How the harmonic trap of beams and coils would answer; nothing where the frequencies are given."""
     if plan.trap.harmonic:
         return ()
+    from physics.real_equilibria import RealEquilibrium
     from physics.trap_caveats import harmonic_trap_caveat
 
     found = []
@@ -220,7 +230,6 @@ def _trap_caveats(plan: Plan, solved: Equilibrium) -> tuple[Caveat, ...]:
         found.append(Caveat(id="trap_uncertainty", severity=Severity.NOTE))
     return tuple(found)
 
-    from physics.real_equilibria import RealEquilibrium
 
 def _measured_length(state: State, losses: LossesInUse) -> float | None:
     """Scattering length at which K3 of the data was measured, as far as the data tell."""

@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
 from functools import cached_property
-from typing import TYPE_CHECKING
+from types import MappingProxyType
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -47,10 +48,16 @@ def typed_losses(plan: Plan) -> dict[str, Quantity]:
     return {name: quantity for name, quantity in typed.items() if quantity is not None}
 
 
-def losses_in_use(plan: Plan, state: State, draws: Mapping[str, float | Array]) -> LossesInUse:
-    """The losses of the plan's cloud. `draws` has the value of each typed one by name, or many samples of it."""
+def losses_in_use(
+    plan: Plan,
+    state: State,
+    draws: Mapping[str, float | Array],
+    of_trap: Mapping[str, Any] = MappingProxyType({}),
+) -> LossesInUse:
+    """The losses of the plan's cloud. `draws` has the value of each typed one by name, or many samples of it; `of_trap`
+    what the trap itself does, as `trap_losses` has it, where it is to be counted."""
     typed = typed_losses(plan)
-    numbers: dict[str, float | Array] = {name: draws[name] for name in typed}
+    numbers: dict[str, Any] = {**of_trap, **{name: draws[name] for name in typed}}
     data = {"two_body": state.two_body, "three_body": state.three_body}
     used = {name: sourced for name, sourced in data.items() if sourced is not None and name not in typed}
     numbers |= {name: sourced.value for name, sourced in used.items()}

@@ -56,7 +56,11 @@ def passenger_plan(plan: Plan) -> Plan:
         plan,
         species=species,
         cloud=passenger.cloud,
-        losses=LossesChoice(background_lifetime=losses.background_lifetime, intensity_noise=losses.intensity_noise),
+        losses=LossesChoice(
+            background_lifetime=losses.background_lifetime,
+            intensity_noise=losses.intensity_noise,
+            pointing_noise=losses.pointing_noise,
+        ),
         target=TargetChoice(),
         ramp=(),
         measured=(),

@@ -29,9 +29,10 @@ class RateSet:
 
     elastic : elastic collisions of an atom, mean over the cloud
     rethermalisation : 1 over the rethermalisation time
-    background, two_body, three_body : losses, per atom; 1 over the lifetimes
+    background, two_body, three_body, spin_flips : losses, per atom; 1 over the lifetimes
     losses : all losses that are known
     heating : relative rise of the temperature, of all heating that is known; negative where losses cool
+    by_light : the part of it that the trap's own light brings
     """
 
     elastic: Array
@@ -39,8 +40,10 @@ class RateSet:
     background: Array
     two_body: Array
     three_body: Array
+    spin_flips: Array
     losses: Array
     heating: Array
+    by_light: Array
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -100,6 +103,8 @@ def _rates(solution: Solution, shape: tuple[int, ...]) -> RateSet:
         background=spread(rates.background_loss_rate),
         two_body=spread(rates.two_body_loss_rate),
         three_body=spread(rates.three_body_loss_rate),
+        spin_flips=spread(rates.spin_flip_loss_rate),
         losses=spread(rates.total_loss_rate),
         heating=spread(rates.heating_rate / np.asarray(solved.cloud.temperature)),
+        by_light=spread(rates.light_heating_rate / np.asarray(solved.cloud.temperature)),
     )

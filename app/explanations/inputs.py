@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import numpy as np
+
 from app.choices import PLAN_FIELDS
 from app.explanations.explanation import Input, Origin
 from app.explanations.sheet import Sheet, once
@@ -9,9 +11,11 @@ from app.explanations.terms import Leaf
 from app.units import Quantity, format_quantity
 from physics.constants import boltzmann, planck, reduced_planck
 from physics.equilibria import INTERACTION_COEFFICIENT
+from physics.losses import FLIP_COEFFICIENTS
 from physics.statistics import zeta
 
 _CODATA = "CODATA 2022"
+LOWERED = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
 _ZETA = "Riemann zeta function, DLMF 25.2"
 
 
@@ -68,7 +72,7 @@ def depth(sheet: Sheet) -> Leaf:
 
 def _surveyed(sheet: Sheet, symbol: str, meaning: str, value: float, shown: str, unit: str) -> Leaf:
     """A number of the harmonic trap at the minimum of beams and coils."""
-    text = format_quantity(value, shown, digits=6, si_unit=unit)
+    text = format_quantity(value, shown, digits=6, si_unit="" if unit == "1" else unit)
     return sheet.enter(
         Input(
             symbol=symbol, meaning=meaning, text=text, value=value, unit=unit, origin=Origin.TRAP,
@@ -141,6 +145,7 @@ _LOSSES = {
     "three_body": ("K₃", "three-body rate constant of a thermal gas", "m^6/s"),
     "heating": ("Ṫ_given", "heating that does not depend on density", "K/s"),
     "intensity_noise": ("S", "relative intensity noise of the light, at 2f", "1/Hz"),
+    "pointing_noise": ("S_x", "noise of the trap's position along each axis, at f", "m^2/Hz"),
 }
 
 
@@ -167,6 +172,47 @@ def _loss(sheet: Sheet, name: str) -> Leaf:
             source=known.source, certainty=known.certainty,
         )
     )  # fmt: skip
+
+
+@once
+def zero_force(sheet: Sheet) -> Leaf:
+    """Force of the field on its strong axis, at its zero."""
+    value = float(sheet.answer.losses.losses.zero_force)
+    return _surveyed(sheet, "F", "force of the field on its strong axis", value, "N", "N")
+
+
+@once
+def light_shares(sheet: Sheet) -> tuple[Leaf, ...]:
+    """Share of each spring constant that the light makes; none where it makes all of it."""
+    shares = sheet.answer.losses.losses.light_shares
+    if shares is None or bool(np.all(np.abs(shares - 1.0) < 1e-9)):
+        return ()
+    return tuple(
+        _surveyed(
+            sheet, f"s{mark}", f"share of the stiffness along axis {axis} that the light makes", float(share), "1", "1"
+        )
+        for axis, (mark, share) in enumerate(zip("₁₂₃", shares, strict=True), start=1)
+    )
+
+
+def scattering(sheet: Sheet) -> list[tuple[Leaf, Leaf]]:
+    """Of each beam that shines: its wavelength, and the photons that an atom at the minimum scatters of it."""
+    from app.answers.trap import trap_answer
+
+    plan, found = sheet.answer.plan, []
+    for place, (name, rate) in enumerate(trap_answer(plan).survey.heating.scattering_rates.items(), start=1):
+        mark = str(place).translate(LOWERED)
+        wavelength = _typed(sheet, f"λ{mark}", f"wavelength of beam {name}", plan.trap.beam(name).wavelength, "m")
+        photons = _surveyed(sheet, f"Γ{mark}", f"photons of beam {name} scattered at the minimum", rate, "1/s", "1/s")
+        found.append((wavelength, photons))
+    return found
+
+
+@once
+def flip_coefficient(sheet: Sheet) -> Leaf:
+    low, high = FLIP_COEFFICIENTS
+    meaning = f"geometric mean of the factors quoted, {low} and {high}"
+    return constant(sheet, "χ", meaning, (low * high) ** 0.5, "1", "Petrich et al., PRL 74, 3352 (1995), recalled")
 
 
 @once

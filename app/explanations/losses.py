@@ -125,8 +125,18 @@ def _lifetimes(sheet: Sheet) -> list[Leaf]:
         background_lifetime: losses.background_lifetime,
         two_body_lifetime: losses.two_body,
         three_body_lifetime: losses.three_body,
+        spin_flip_lifetime: losses.zero_force,
     }
     return [make(sheet) for make, value in known.items() if value is not None]
+
+
+@once
+def spin_flip_lifetime(sheet: Sheet) -> Leaf:
+    chi = inputs.flip_coefficient(sheet)
+    kT = inputs.k(sheet) * inputs.temperature(sheet)
+    formula = inputs.mass(sheet) * kT**2 / (chi * inputs.hbar(sheet) * inputs.zero_force(sheet) ** 2)
+    meaning = "lifetime by spin flips at the zero of the field"
+    return sheet.step("τ_flip", meaning, formula, "s", value=sheet.number("spin_flip_lifetime"))
 
 
 @once
@@ -184,15 +194,50 @@ def loss_heating_rate(sheet: Sheet) -> Leaf:
 
 
 @once
+def scattering_rate(sheet: Sheet) -> Leaf:
+    (_, total), *others = inputs.scattering(sheet)
+    rate: Term = total
+    for _, photons in others:
+        rate = rate + photons
+    return sheet.step("Γ_sc", "photons scattered", rate, "1/s", value=sheet.number("scattering_rate"))
+
+
+@once
+def light_heating_rate(sheet: Sheet) -> Leaf:
+    m, h, k = inputs.mass(sheet), inputs.h(sheet), inputs.k(sheet)
+    power: Term | None = None
+    for place, (wavelength, photons) in enumerate(inputs.scattering(sheet), start=1):
+        mark = str(place).translate(inputs.LOWERED)
+        recoil = sheet.step(
+            f"E{mark}", f"recoil energy of a photon, wavelength {mark}", h**2 / (2 * m * wavelength**2), "J"
+        )
+        part = 2 * recoil * photons
+        power = part if power is None else power + part
+    assert power is not None  # there is light, or there would be no value
+    meaning = "heating by the trap's light, where an atom holds 3 kT"
+    return sheet.step("Ṫ_light", meaning, power / (3 * k), "K/s", value=sheet.number("light_heating_rate"))
+
+
+@once
 def heating_rate(sheet: Sheet) -> Leaf:
     losses, parts = sheet.answer.losses.losses, []
     if losses.heating is not None:
         parts.append(inputs.loss(sheet, "heating"))
+    elif losses.light_heating is not None:
+        parts.append(light_heating_rate(sheet))
     if losses.intensity_noise is not None:
         f1, f2, f3 = inputs.frequencies(sheet)
         S, T = inputs.loss(sheet, "intensity_noise"), inputs.temperature(sheet)
-        formula = T * PI**2 * S * (f1**2 + f2**2 + f3**2) / 3
+        squares = [f1**2, f2**2, f3**2]
+        for place, share in enumerate(inputs.light_shares(sheet)):
+            squares[place] = squares[place] * share**2
+        formula = T * PI**2 * S * (squares[0] + squares[1] + squares[2]) / 3
         parts.append(sheet.step("Ṫ_noise", "heating by noise of the light's intensity", formula, "K/s"))
+    if losses.pointing_noise is not None:
+        f1, f2, f3 = inputs.frequencies(sheet)
+        S, m, k = inputs.loss(sheet, "pointing_noise"), inputs.mass(sheet), inputs.k(sheet)
+        formula = 4 * PI**4 * m * S * (f1**4 + f2**4 + f3**4) / (3 * k)
+        parts.append(sheet.step("Ṫ_pointing", "heating by a trap that shakes", formula, "K/s"))
     if sheet.number("loss_heating_rate") == sheet.number("loss_heating_rate"):
         parts.append(loss_heating_rate(sheet))
     total: Term = parts[0]

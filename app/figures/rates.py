@@ -20,7 +20,9 @@ _CURVES = (
     ("three_body", _("three-body loss"), Role.FOURTH),
     ("two_body", _("two-body loss"), Role.THIRD),
     ("background", _("background loss"), Role.SECOND),
+    ("spin_flips", _("spin flips at the field's zero"), Role.THRESHOLD_OF_MODEL),
     ("heating", _("heating, dT/dt over T"), Role.CLASSICAL),
+    ("by_light", _("of it, by the trap's light"), Role.FRACTION),
 )
 """Attribute of `RateSet`, what the legend calls it, and its line."""
 
@@ -69,6 +71,7 @@ def limits_sentence(now: RateSet) -> str:
         _("background gas"): now.background,
         _("two-body collisions"): now.two_body,
         _("three-body collisions"): now.three_body,
+        _("spin flips at the zero of the field"): now.spin_flips,
     }
     known = {name: float(rate) for name, rate in losses.items() if float(rate) > 0.0}
     thermal = float(now.rethermalisation)
@@ -144,4 +147,5 @@ def _positive(values: Array) -> Array:
 
 def _several(rates: RateSet) -> bool:
     """Whether more than one loss is known, so that their sum says something new."""
-    return sum(bool(np.any(part > 0.0)) for part in (rates.background, rates.two_body, rates.three_body)) > 1
+    parts = rates.background, rates.two_body, rates.three_body, rates.spin_flips
+    return sum(bool(np.any(part > 0.0)) for part in parts) > 1

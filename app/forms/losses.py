@@ -18,6 +18,7 @@ _ROWS = (
     ("losses.three_body", "k", "Three-body K₃"),
     ("losses.heating", "b", "One-body heating"),
     ("losses.intensity_noise", "o", ""),
+    ("losses.pointing_noise", "j", "Pointing jitter"),
 )
 
 
@@ -30,12 +31,13 @@ class LossesForm(Form):
         self.fold = FoldTitle(_TITLE, "background lifetime, rate constants and heating", self.heading.font())
         self.fold.clicked.connect(lambda: self.set_unfolded(not self.unfolded))
         self._grid.addWidget(self.fold, 0, 0, 1, 2, Qt.AlignmentFlag.AlignLeft)
-        self.background, self.two_body, self.three_body, self.heating, self.noise = (
+        self.background, self.two_body, self.three_body, self.heating, self.noise, self.pointing = (
             self.add_quantity(path, letter, label=label) for path, letter, label in _ROWS
         )
         self.background.setPlaceholderText("not known")
         self.heating.setPlaceholderText("not known")
         self.noise.setPlaceholderText("not known")
+        self.pointing.setPlaceholderText("not known")
         self._unfolded = True
         self.set_unfolded(False)
 

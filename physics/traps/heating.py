@@ -3,29 +3,24 @@
 References
 ----------
 [1] R. Grimm, M. Weidemueller, Yu. B. Ovchinnikov, Adv. At. Mol. Opt. Phys. 42, 95 (2000), section II.
-[2] W. Petrich, M. H. Anderson, J. R. Ensher, E. A. Cornell, Phys. Rev. Lett. 74, 3352 (1995): loss at the zero of a
-    quadrupole. Recalled.
 """
 
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import ArrayLike
 
 from physics.checks import Floats
-from physics.constants import boltzmann, reduced_planck
+from physics.constants import boltzmann
 from physics.light import scattering_rate
 from physics.light_heating import harmonic_heating_rate, pointing_heating_power, recoil_heating_power
-from physics.losses import noise_heating_rate
+from physics.losses import noise_heating_rate, spin_flip_rates
 from physics.traps.potential import Potential
 from physics.traps.stationary import StationaryPoint
-
-FLIP_COEFFICIENTS = (0.16, 1.85)
-"""The least and the largest factor quoted for the loss at a quadrupole's zero. Recalled: an order of magnitude. [2]"""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -83,6 +78,18 @@ def thermal_heating(potential: Potential, minimum: StationaryPoint, temperature:
     return heating_of(potential, points, product / np.sum(product))
 
 
+def light_shares(potential: Potential, minimum: Floats, axes: Floats) -> Floats:
+    """(3,) Share of the spring constant along each axis (rows of `axes`) that the light makes, at the minimum.
+
+    Noise of the intensity shakes this share alone: what it does is in proportion to the share squared.
+    """
+    _, _, whole = potential.hessian(minimum)
+    _, _, light = replace(potential.without_coils, weight=np.zeros(3)).hessian(minimum)
+    along = [np.einsum("ij,jk,ik->i", axes, hessian, axes) for hessian in (light, whole)]
+    shares: Floats = np.abs(along[0] / along[1])
+    return shares
+
+
 def noise_growth_rate(frequencies: ArrayLike, intensity_noise: ArrayLike) -> float:
     """Mean over the axes of the rate pi^2 f^2 S(2f) at which noise of the intensity makes the energy grow. [1/s]
 
@@ -107,7 +114,7 @@ def pointing_power(mass: float, frequencies: ArrayLike, pointing_noise: ArrayLik
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class SpinFlips:
-    """Loss of atoms that pass close to the zero of a quadrupole and lose the field's direction. [2]
+    """Loss of atoms that pass close to the zero of a quadrupole and lose the field's direction.
 
     `force` [N] is dE/dB times the gradient on the strong axis.
     """
@@ -117,10 +124,7 @@ class SpinFlips:
 
     def rates(self, temperature: ArrayLike) -> tuple[Floats, Floats]:
         """The least and the largest estimate chi (hbar/m)(mu B'/kT)^2 at temperatures of any shape [K]. [1/s]"""
-        kT = boltzmann * np.asarray(temperature, dtype=np.float64)
-        unit = reduced_planck / self.mass * (self.force / kT) ** 2
-        low, high = FLIP_COEFFICIENTS
-        return low * unit, high * unit
+        return spin_flip_rates(self.mass, self.force, temperature)
 
 
 def spin_flips_of(potential: Potential, minimum: StationaryPoint) -> SpinFlips:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -10,8 +11,9 @@ import pytest
 
 from app.__main__ import main
 from app.caveat_words import caveat_lines, caveat_text
-from app.engine import CloudAnswer, cloud_answer, slices_answer
-from app.plan import DEFAULT_PLAN, plan_with
+from app.engine import CloudAnswer, cloud_answer, slices_answer, trap_answer
+from app.explanations.explain import disagreeing, explain
+from app.plan import DEFAULT_PLAN, plan_with, read_plan
 from app.quantities import QUANTITIES, Group, Need, rows_in
 
 CERTAIN = {
@@ -205,3 +207,54 @@ def test_choosing_another_species_in_a_form_drops_the_constants_of_the_old_one()
     assert other.losses.three_body is None
     assert other.losses.background_lifetime == plan.losses.background_lifetime
     assert other.species.state is None
+
+
+# --- what the trap itself does ---
+
+TRAPS = Path(__file__).resolve().parents[2] / "presets" / "traps"
+
+
+def in_trap(name: str, **texts: str) -> CloudAnswer:
+    plan = read_plan(TRAPS / f"{name}.toml")
+    return cloud_answer(plan_with(plan, {path.replace("__", "."): text for path, text in texts.items()}))
+
+
+def test_light_heats_as_it_scatters_and_a_typed_rate_takes_its_place() -> None:
+    light, typed = in_trap("crossed_beams_rubidium"), in_trap("crossed_beams_rubidium", losses__heating="20 nK/s")
+    found = trap_answer(light.plan).survey.heating
+    assert light.value("scattering_rate") == found.scattering_rate
+    assert light.value("light_heating_rate") == pytest.approx(found.heating_rate, rel=1e-12)
+    # Grimm, Weidemueller, Ovchinnikov, Adv. At. Mol. Opt. Phys. 42, 95 (2000): dT/dt = T_rec Gamma/3 in a harmonic
+    # trap; T_rec of 87Rb at 1064 nm is 194.6 nK
+    assert found.heating_rate == pytest.approx(194.6e-9 * found.scattering_rate / 3.0, rel=2e-3)
+    loss = float(light.value("loss_heating_rate"))
+    assert light.value("heating_rate") == pytest.approx(loss + found.heating_rate, rel=1e-12)
+    assert typed.value("heating_rate") == pytest.approx(loss + 20e-9, rel=1e-12)
+    assert typed.missing(QUANTITIES["light_heating_rate"]) is Need.LIGHT_HEATING
+    assert typed.missing(QUANTITIES["scattering_rate"]) is None
+    assert answer().missing(QUANTITIES["scattering_rate"]) is Need.LIGHT
+
+
+def test_noise_of_the_light_does_nothing_to_a_trap_of_coils() -> None:
+    beams = in_trap("crossed_beams_rubidium", losses__intensity_noise="1e-10 1/Hz")
+    coils = in_trap("ioffe_coils_rubidium", losses__intensity_noise="1e-10 1/Hz")
+    assert beams.solution.rates.noise_heating_rate > 0.0
+    assert coils.solution.rates.noise_heating_rate == pytest.approx(0.0, abs=1e-30)
+    shaken = in_trap("ioffe_coils_rubidium", losses__pointing_noise="1e-3 nm^2/Hz")
+    assert shaken.solution.rates.pointing_heating_rate > 0.0
+
+
+@pytest.mark.parametrize("name", ["crossed_beams_rubidium", "hybrid_rubidium"])
+def test_the_steps_to_the_heat_of_the_trap_lead_all_the_way(name: str) -> None:
+    found = in_trap(name, losses__intensity_noise="1e-10 1/Hz", losses__pointing_noise="1e-3 nm^2/Hz")
+    for quantity in ("scattering_rate", "light_heating_rate"):
+        steps = explain(found, quantity)
+        assert steps.complete
+        assert not disagreeing(steps)
+        assert steps.value == pytest.approx(float(found.value(quantity)), rel=1e-12)
+    steps = explain(found, "heating_rate")
+    parts = {step.symbol: step for step in steps.steps if step.symbol in ("Ṫ_light", "Ṫ_noise", "Ṫ_pointing")}
+    rates = found.solution.rates
+    expected = rates.light_heating_rate, rates.noise_heating_rate, rates.pointing_heating_rate
+    assert [step.value for step in parts.values()] == pytest.approx([float(rate) for rate in expected], rel=1e-9)
+    assert all(step.agrees for step in parts.values())

@@ -116,6 +116,13 @@ def test_heating_raises_the_temperature_at_its_rate() -> None:
     assert run.temperature[-1] == pytest.approx(1.2e-5, rel=1e-7)
     light = HarmonicPath(mass=MASS, trap=deep.trap, light_heating=3.0 * boltzmann * 1e-6)
     assert evaporate(APART, 1e6, 1e-5, hold(2.0), light).temperature[-1] == pytest.approx(1.2e-5, rel=1e-7)
+    # A heating rate that is given has that by scattered light in it.
+    both = evaporate(APART, 1e6, 1e-5, hold(2.0), light, losses=Losses(heating=5e-7))
+    assert both.temperature[-1] == pytest.approx(1.1e-5, rel=1e-7)
+    # 4 pi^4 m f^4 S_x along each axis, and 3k to be warmed.
+    shaken = evaporate(APART, 1e6, 1e-5, hold(2.0), deep, losses=Losses(pointing_noise=1e-17))
+    power = 4.0 * math.pi**4 * MASS * 1e-17 * (2.0 * 500.0**4 + 100.0**4)
+    assert shaken.temperature[-1] == pytest.approx(1e-5 + 2.0 * power / (3.0 * boltzmann), rel=1e-7)
     # Noise makes the energy grow by e at the mean over the axes of pi^2 f^2 S.
     S = 1e-7
     noisy = evaporate(APART, 1e6, 1e-5, hold(2.0), deep, losses=Losses(intensity_noise=S))

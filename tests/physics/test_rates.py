@@ -10,7 +10,7 @@ import numpy as np
 import pytest
 
 from physics.cloud import Equilibrium, Model
-from physics.constants import boltzmann
+from physics.constants import boltzmann, reduced_planck
 from physics.losses import Losses
 from physics.rates import Rates
 
@@ -192,6 +192,45 @@ def test_noise_heats_by_the_mean_over_the_axes(bosons: Maker) -> None:
     )
     several = rates(bosons(temperature=[1e-7, 2e-7]), intensity_noise=[1e-10, 2e-10]).noise_heating_rate
     np.testing.assert_allclose(several, [1e-7 * mean, 4e-7 * mean], rtol=1e-13)
+
+
+def test_only_the_stiffness_of_the_light_shakes_with_its_intensity(bosons: Maker) -> None:
+    # k = k_light (1 + e) + k_rest: the relative noise of k is that of the light times its share.
+    found = rates(bosons(), intensity_noise=1e-10, light_shares=[1.0, 0.5, 0.0])
+    mean = math.pi**2 * 1e-10 * (120.0**2 + 0.25 * 90.0**2) / 3.0
+    assert found.noise_heating_rate == pytest.approx(2e-7 * mean, rel=1e-13)
+
+
+def test_a_trap_that_shakes_heats_by_the_sum_over_the_axes(bosons: Maker) -> None:
+    # Savard, O'Hara, Thomas, Phys. Rev. A 56, R1095 (1997): dE/dt = 4 pi^4 m f^4 S_x for each axis; E = 3kT.
+    solved = bosons()
+    found = rates(solved, pointing_noise=1e-18)
+    fourth = 120.0**4 + 90.0**4 + 20.0**4
+    expected = 4.0 * math.pi**4 * solved.cloud.mass * fourth * 1e-18 / (3.0 * boltzmann)
+    assert found.pointing_heating_rate == pytest.approx(expected, rel=1e-13)
+    assert found.heating_rate == pytest.approx(expected, rel=1e-13)
+
+
+def test_a_heating_rate_that_is_given_has_that_of_the_light_in_it(bosons: Maker) -> None:
+    cold = bosons(temperature=5e-8)  # with a condensate, so that heating by loss does not count
+    light = rates(cold, light_heating=2e-9, scattering_rate=0.1)
+    assert light.heating_rate == light.light_heating_rate == 2e-9
+    both = rates(cold, light_heating=2e-9, heating=5e-9)
+    assert both.heating_rate == 5e-9
+    assert np.isnan(both.light_heating_rate)
+    assert light.scattering_rate == 0.1
+    assert np.isnan(rates(cold).scattering_rate)
+
+
+def test_spin_flips_are_a_loss_that_grows_as_the_cloud_cools(bosons: Maker) -> None:
+    temperatures = np.array([1e-6, 2e-6])
+    found = rates(bosons(temperature=temperatures), zero_force=1e-25, background_lifetime=60.0)
+    # chi (hbar/m)(F/kT)^2, chi between 0.16 and 1.85
+    unit = reduced_planck / found.equilibrium.cloud.mass * (1e-25 / (boltzmann * temperatures)) ** 2
+    np.testing.assert_allclose(found.spin_flip_loss_rate, math.sqrt(0.16 * 1.85) * unit, rtol=1e-12)
+    np.testing.assert_allclose(found.total_loss_rate, found.spin_flip_loss_rate + 1.0 / 60.0, rtol=1e-12)
+    np.testing.assert_allclose(found.spin_flip_lifetime * found.spin_flip_loss_rate, 1.0, rtol=1e-12)
+    assert np.isnan(rates(bosons()).spin_flip_loss_rate)
 
 
 # --- bounds ---

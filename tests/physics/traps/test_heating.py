@@ -11,7 +11,7 @@ import pytest
 from physics.constants import boltzmann
 from physics.species import State
 from physics.traps import Coils, Trap
-from physics.traps.heating import noise_growth_rate, pointing_power, thermal_heating
+from physics.traps.heating import light_shares, noise_growth_rate, pointing_power, thermal_heating
 from physics.traps.survey import Survey, survey
 
 
@@ -36,6 +36,20 @@ def test_no_thermal_average_at_a_cusp(rubidium: State) -> None:
     assert found.basin is not None
     with pytest.raises(ValueError, match="needs a minimum with three frequencies"):
         thermal_heating(found.potential, found.basin.minimum, 1e-6)
+
+
+def test_the_light_makes_all_of_a_trap_of_beams_and_none_of_one_of_coils(single: Trap, rubidium: State) -> None:
+    coils = Coils(axis=[1.0, 0.0, 0.0], bias=2e-4, gradient=1.5, curvature=100.0)
+    for trap, share in ((single, 1.0), (Trap(coils=coils), 0.0)):
+        found = survey(trap, rubidium)
+        assert found.potential is not None
+        np.testing.assert_allclose(light_shares(found.potential, found.minimum, found.axes), share, atol=1e-12)
+    # Springs add: with both, the light's is its share of the sum.
+    found = survey(Trap(beams=single.beams, coils=coils, gravity=None), rubidium)
+    alone = survey(Trap(beams=single.beams, gravity=None), rubidium)
+    assert found.potential is not None
+    shares = light_shares(found.potential, found.minimum, found.axes)
+    np.testing.assert_allclose(shares, (alone.frequencies / found.frequencies) ** 2, rtol=1e-6)
 
 
 def test_noise_of_the_intensity_counts_as_the_mean_over_the_axes() -> None:
