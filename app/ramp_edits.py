@@ -113,6 +113,19 @@ def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
     return (StageChoice(duration=duration, label="hold"),)
 
 
+def with_known_depth(plan: Plan) -> Plan:
+    """The plan with a depth of its trap: where a harmonic one has none, that from which the ramp starts, or ten kT."""
+    trap = plan.trap
+    if not trap.harmonic or trap.depth is not None:
+        return plan
+    starts = [move.start for stage in plan.ramp[:1] for move in stage.moves if move.control == _DEPTH]
+    depth = next((start for start in starts if start is not None), None)
+    if depth is None:
+        value = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
+        depth = quantity(value, _depth_unit(value), kind=DEPTH, digits=2)
+    return replace(plan, trap=replace(trap, depth=depth))
+
+
 def scaled(value: Quantity, by: float, knob: Knob) -> Quantity:
     """A value of a control times a factor, in its unit, without uncertainty."""
     kind = CONTROL_KINDS[knob]

@@ -22,6 +22,7 @@ EXPANSION_TIME = 0.015
 """[s] After which widths are given where nothing else is asked for."""
 
 MOST_WAYPOINTS = 8
+_NEARLY = 0.998
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -121,7 +122,8 @@ def _decades(low: float, high: float) -> tuple[float, ...]:
     exponents = range(math.floor(math.log10(low)), math.ceil(math.log10(high)) + 1)
     steps = (1.0,) if math.log10(high / low) > MOST_WAYPOINTS / 3.0 else (1.0, 2.0, 5.0)
     found = [float(f"{step:g}e{k}") for k in exponents for step in steps]
-    return (*(value for value in found if 1.02 * low < value < 0.98 * high), high * (1.0 - 1e-12))
+    # A little below the highest: that of bosons saturates, and hardly grows any more for the rest of the ramp.
+    return (*(value for value in found if 1.02 * low < value < 0.98 * high), high * _NEARLY)
 
 
 def _density_now(plan: Plan) -> float:

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from functools import cached_property
+from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import QEvent, QObject, Qt
 from PySide6.QtGui import QKeyEvent, QShowEvent
-from PySide6.QtWidgets import QWidget
+from PySide6.QtWidgets import QFileDialog, QWidget
 
 from app.engine import CloudAnswer
 from app.figures.picture import Picture
@@ -35,9 +36,10 @@ _START = "Start from a usual one, which lowers the trap to a tenth in five secon
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Found:
-    """What the worker hands out. plan : to which it belongs. failure : why there is no answer, else empty."""
+    """What the worker hands out. plan, key : to which it belongs. failure : why there is no answer, else empty."""
 
     plan: Plan
+    key: object = None
     ramp: RampAnswer | None = None
     rest: RampAnswer | None = None
     measured: tuple[MeasuredCloud, ...] = ()
@@ -84,7 +86,13 @@ class RampPage(Page):
         panel.controls.time_read.connect(self.read_time)
         panel.controls.handle_dragged.connect(self._drag_to)
         panel.controls.handle_released.connect(self._end_drag)
-        panel.stages.plan_edited.connect(self.plan_edited)
+        for editor in (panel.stages, panel.design, panel.measured):
+            editor.plan_edited.connect(self.plan_edited)
+        panel.design.wanted.connect(self.part_allowed)
+        panel.waypoints.wanted.connect(self.part_wanted)
+        panel.waypoints.save_asked.connect(self._save_waypoints)
+        panel.waypoints.print_asked.connect(self._print_waypoints)
+        panel.measured.since_chosen.connect(self._follow_from)
         panel.stages.problem_changed.connect(self._problem_changed)
         panel.view_changed.connect(self._view_changed)
         panel.keep.clicked.connect(self.keep_reference)
@@ -117,7 +125,7 @@ class RampPage(Page):
 
     def _is_answered(self, plan: Plan) -> bool:
         found = self._found
-        return found is not None and self._key(found.plan) == self._key(plan) and self.panel.has_extra(plan)
+        return found is not None and found.key == self._key(plan) and self.panel.has_extra(plan)
 
     def _key(self, plan: Plan) -> object:
         from app.answers.ramp_jobs import ramp_depends_on
@@ -127,10 +135,14 @@ class RampPage(Page):
     def _job(self, plan: Plan) -> Steps:
         since = self.since
         extra, extra_key = self.panel.extra_job(plan)
+        key = self._key(plan)
 
         def run(watch: Watch) -> Found | None:
             found = _simulated(plan, since, watch)
-            if found is None or extra is None:
+            if found is None:
+                return None
+            found = replace(found, key=key)
+            if extra is None:
                 return found
             if not watch.deliver(found):
                 return None
@@ -141,7 +153,7 @@ class RampPage(Page):
             return None if more is None else replace(found, extra=more)
 
         what = "ramp" if extra is None else extra.what
-        return Steps(what=what, depends_on=(self.title, self._key(plan), extra_key), run=run)
+        return Steps(what=what, depends_on=(self.title, key, extra_key), run=run)
 
     def take_part(self, answer: Any) -> None:
         newer = self._pace.arrived()
@@ -158,6 +170,7 @@ class RampPage(Page):
         super().show_end(stopped=stopped)
         if stopped:
             self._pace.arrived()
+            self.panel.stopped()
 
     # ---------------------------------------------------------------- showing
 
@@ -198,7 +211,7 @@ class RampPage(Page):
             ramp = ramp_of(plan)
             curves = control_curves(ramp, path_of(plan).standing)
         except ValueError as error:
-            panel.tell(str(error), "")
+            panel.tell(f"{str(error)[:1].upper()}{str(error)[1:]}.", "")
             super().mark_stale("last good answer")
             return
         scene = self._scene(plan, ramp.duration)
@@ -208,7 +221,7 @@ class RampPage(Page):
         if found is None:
             return
         if found.failure:
-            panel.tell(f"{found.failure}.", "")
+            panel.tell(f"{found.failure[:1].upper()}{found.failure[1:]}.", "")
             super().mark_stale("last good answer")
             return
         if found.ramp is not None:
@@ -217,6 +230,7 @@ class RampPage(Page):
             panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
             panel.table.show_ramp(found.ramp)
             panel.columns.show_courses(self._courses(found), scene, _points(found.measured), self.reading)
+        panel.measured.show_answers(found.ramp, found.rest)
         if not panel.stages.problem:
             for plot in self._plots:
                 plot.canvas.set_stale(False)
@@ -286,6 +300,31 @@ class RampPage(Page):
     def pictures(self) -> tuple[Picture, ...]:
         """Those of the view in front."""
         return tuple(plot.picture() for plot in self._plots if plot.ready and plot.canvas.isVisible())
+
+    def _follow_from(self, label: str | None) -> None:
+        """Draw the rest of the ramp from a measured cloud too."""
+        self.since = label
+        self.part_wanted.emit()
+
+    # ---------------------------------------------------------------- waypoints on paper
+
+    def _save_waypoints(self) -> None:
+        chosen, _ = QFileDialog.getSaveFileName(
+            self, "Save the waypoints", str(self.folder / "waypoints.csv"), "CSV (*.csv)"
+        )
+        if chosen:
+            path = Path(chosen)
+            self._write(path if path.suffix else path.with_suffix(".csv"), self.panel.waypoints.csv().encode("utf-8"))
+
+    def _print_waypoints(self) -> None:
+        from PySide6.QtGui import QTextDocument
+        from PySide6.QtPrintSupport import QPrintDialog, QPrinter
+
+        printer = QPrinter(QPrinter.PrinterMode.HighResolution)
+        if QPrintDialog(printer, self).exec():
+            document = QTextDocument()
+            document.setHtml(self.panel.waypoints.html())
+            document.print_(printer)
 
     # ---------------------------------------------------------------- references
 

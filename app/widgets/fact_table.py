@@ -100,6 +100,11 @@ class FactTable(QTableWidget):
         if self.columnSpan(place, 1) != across:
             self.setSpan(place, 1, 1, across)
 
+    def fill_width(self) -> None:
+        """Let the last column take the room that is left."""
+        if self.columnCount():
+            self.horizontalHeader().setSectionResizeMode(self.columnCount() - 1, QHeaderView.ResizeMode.Stretch)
+
     def row_texts(self) -> tuple[tuple[str, ...], ...]:
         """What is on show, row by row."""
         return tuple((row.name, *row.cells) for row in self._rows)

@@ -83,7 +83,7 @@ class PlanEditor(QWidget):
         field.changed.connect(lambda value: self._put(field, label, write, value, key))
         field.editingFinished.connect(self._end_session)
         field.error_changed.connect(lambda sentence: self._set_error(field, sentence))
-        self._fills.append(lambda plan: field.set_quantity(read(plan)))
+        self._fills.append(lambda plan: _show(field, read(plan)))
         return field
 
     def _put(self, field: QuantityField, label: str, write: Edit, value: Quantity | None, key: str) -> None:
@@ -132,3 +132,10 @@ class PlanEditor(QWidget):
             self.error.setText(sentence)
             self.error.setVisible(bool(sentence))
             self.problem_changed.emit(sentence)
+
+
+def _show(field: QuantityField, quantity: Quantity | None) -> None:
+    """Show a quantity from its first digit on."""
+    if quantity != field.quantity:
+        field.set_quantity(quantity)
+        field.setCursorPosition(0)

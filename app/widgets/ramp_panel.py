@@ -13,6 +13,7 @@ from PySide6.QtWidgets import (
     QHBoxLayout,
     QLabel,
     QScrollArea,
+    QSizePolicy,
     QStackedWidget,
     QToolButton,
     QVBoxLayout,
@@ -24,8 +25,12 @@ from app.newest import Steps
 from app.plan import Plan
 from app.widgets.banner import Offer
 from app.widgets.empty_state import EmptyState
+from app.widgets.ramp_design import DesignView
+from app.widgets.ramp_measured import MeasuredView
 from app.widgets.ramp_plots import ColumnPlots, ControlPlots
+from app.widgets.ramp_sensitivity import SensitivityView
 from app.widgets.ramp_stages import StageEditor
+from app.widgets.ramp_waypoints import WaypointsView
 from app.widgets.stage_table import StageTable
 
 if TYPE_CHECKING:
@@ -33,11 +38,13 @@ if TYPE_CHECKING:
 
 
 COURSE, STAGES, DESIGN, WAYPOINTS = "Course", "Stages", "Design", "Waypoints"
+COUNTS, MEASURED = "What counts", "Measured"
 NEED_NO_RAMP = (DESIGN, WAYPOINTS)
 """Views that have something to say of a plan without stages."""
 
-ROOM_FOR_ALL = 660
-"""[logical pixels] Height from which the plots of the cloud stand under the table of stages too."""
+ROOM_FOR_GRAPH, ROOM_FOR_ALL = 610, 660
+"""[logical pixels] Height from which the controls stand under the plots of the cloud, and from which these plots stand
+under the table of stages too."""
 
 
 class RampView(Protocol):
@@ -49,6 +56,8 @@ class RampView(Protocol):
         """The work whose result it shows, and what that depends on; None where it has all it needs."""
 
     def take_extra(self, plan: Plan, extra: Any) -> None: ...
+
+    def stopped(self) -> None: ...
 
     def set_theme(self, theme: Theme) -> None: ...
 
@@ -100,15 +109,22 @@ class RampPanel(QWidget):
         self._extra: dict[str, RampView] = {}
         self.add_view(COURSE, "What becomes of the cloud along the ramp", QWidget())
         self.add_view(STAGES, "The stages, to be edited", self.stages)
+        self.design = DesignView(page.add_plot)
+        self.add_view(DESIGN, "The ramp that leaves most atoms at the target", self.design, self.design)
+        self.waypoints, self.sensitivity, self.measured = WaypointsView(), SensitivityView(), MeasuredView()
+        self.add_view(WAYPOINTS, "Clouds to aim at along the ramp", self.waypoints, self.waypoints)
+        self.add_view(COUNTS, "Which input moves the atoms at the end most", self.sensitivity, self.sensitivity)
+        self.add_view(MEASURED, "Clouds that were measured, and the rest from there", self.measured, self.measured)
         self._is_empty = False
         self.show_ramp()
 
     def _make_reference_buttons(self) -> None:
-        self._switch.addStretch(1)
         self.reference_label = QLabel()
         self.reference_label.setObjectName("plotStatus")
-        self.reference_label.hide()
-        self._switch.addWidget(self.reference_label)
+        self.reference_label.setContentsMargins(8, 0, 0, 0)
+        # As much room as there is: a long name does not make the page wider.
+        self.reference_label.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+        self._switch.addWidget(self.reference_label, 1)
         for button, text, tip in (
             (self.keep, "Keep as reference", "Keep this ramp, drawn thin beside those that follow"),
             (self.drop, "Drop", "Draw this ramp alone again"),
@@ -176,8 +192,10 @@ class RampPanel(QWidget):
         own = view != COURSE and (there or view in NEED_NO_RAMP)
         self.empty.setVisible(not there and not own)
         self.stack.setVisible(own)
-        self.columns.setVisible(there and (view == COURSE or (view == STAGES and self.height() >= ROOM_FOR_ALL)))
-        self.controls.setVisible(there and view in (COURSE, STAGES) and bool(self.controls.curves))
+        beside = view in (STAGES, MEASURED) and self.height() >= ROOM_FOR_ALL
+        self.columns.setVisible(there and (view == COURSE or beside))
+        graph = view == STAGES or (view == COURSE and self.height() >= ROOM_FOR_GRAPH)
+        self.controls.setVisible(there and graph and bool(self.controls.curves))
         self._under.setVisible(there and view == COURSE)
         self.keep.setVisible(there)
         self.sentence.setVisible(there)
@@ -195,7 +213,7 @@ class RampPanel(QWidget):
     def show_references(self, names: Sequence[str]) -> None:
         """Which ramps are kept."""
         self.reference_label.setText(f"beside {', '.join(names)}" if names else "")
-        self.reference_label.setVisible(bool(names))
+        self.reference_label.setToolTip(self.reference_label.text())
         self.drop.setVisible(bool(names))
 
     def set_plan(self, plan: Plan) -> None:
@@ -227,6 +245,12 @@ class RampPanel(QWidget):
         view = self._extra.get(self.view)
         if view is not None:
             view.take_extra(plan, extra)
+
+    def stopped(self) -> None:
+        """The user stopped what was under way."""
+        view = self._extra.get(self.view)
+        if view is not None:
+            view.stopped()
 
     def take_focus(self) -> None:
         if self._is_empty and self.empty.isVisible():

@@ -1,0 +1,125 @@
+"""Which input of a ramp counts most: what a tenth more or less of each does to the atoms at the end."""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QFrame, QLabel, QScrollArea, QVBoxLayout, QWidget
+
+from app.answers.ramp import kept_ramp
+from app.answers.ramp_jobs import ramp_depends_on, sensitivity_job
+from app.answers.ramp_sensitivity import CHANGE, SensitivityAnswer
+from app.figures.theme import LIGHT, Theme
+from app.newest import Steps
+from app.plan import Plan
+from app.ramp_words import change_text, input_text
+from app.widgets.effect_bar import EffectBar
+from app.widgets.fact_table import FactRow, FactTable
+from app.words import percent
+from physics.ramp_sensitivity import RampSensitivity
+
+_LEAST_REACH = 0.02  # of the logarithm of the atom number: smaller changes are no story
+
+
+class SensitivityView(QWidget):
+    """A table with a bar in each row, the strongest input first."""
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setAccessibleName("Which input counts most")
+        self._found_for: object = None
+        self._plan: Plan | None = None
+        self._theme = LIGHT
+        self.sentence = QLabel("Every input is changed by a tenth, one after the other.")
+        self.sentence.setObjectName("plotStatus")
+        self.sentence.setWordWrap(True)
+        self.sentence.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+        self.table = FactTable("What a tenth of each input does to the atoms at the end")
+        body = QWidget()
+        column = QVBoxLayout(body)
+        column.setContentsMargins(14, 4, 10, 6)
+        column.setSpacing(8)
+        column.addWidget(self.sentence)
+        column.addWidget(self.table)
+        column.addStretch(1)
+        area = QScrollArea()
+        area.setFrameShape(QFrame.Shape.NoFrame)
+        area.setWidgetResizable(True)
+        area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+        area.setWidget(body)
+        outer = QVBoxLayout(self)
+        outer.setContentsMargins(0, 0, 0, 0)
+        outer.addWidget(area)
+
+    def set_plan(self, plan: Plan) -> None:
+        self._plan = plan
+        if self._found_for is not None and self._found_for != ramp_depends_on(plan):
+            self.sentence.setText("These are the numbers of the ramp before; new ones are being worked out.")
+
+    def extra_job(self, plan: Plan) -> tuple[Steps | None, object]:
+        if not plan.ramp or self._found_for == ramp_depends_on(plan):
+            return None, None
+        return sensitivity_job(plan), "sensitivity"
+
+    def take_extra(self, plan: Plan, extra: Any) -> None:
+        self._found_for = ramp_depends_on(plan)
+        if isinstance(extra, Exception):
+            self.table.show_rows((), ())
+            self.sentence.setText(f"{str(extra)[:1].upper()}{str(extra)[1:]}.")
+        elif isinstance(extra, SensitivityAnswer):
+            answer = kept_ramp(plan)
+            planned = float(answer.run.atoms[-1]) if answer is not None and len(answer.run.time) else math.nan
+            self._show(extra, planned)
+
+    def _show(self, found: SensitivityAnswer, planned: float) -> None:
+        share = percent(CHANGE)
+        rows = []
+        for one in found.found:
+            less, more = change_text(one, planned)
+            rows.append(FactRow(name=input_text(one), cells=(less, more, "")))
+        self.table.show_rows(("input", f"{share} less", f"{share} more", "atoms at the end"), rows)
+        self.table.fill_width()
+        effects = [_effects(one, planned) for one in found.found]
+        finite = [abs(change) for pair in effects for change in pair if math.isfinite(change)]
+        reach = max([_LEAST_REACH, *finite])
+        for place, (less_change, more_change) in enumerate(effects):
+            bar = self.table.cellWidget(place, 3)
+            if not isinstance(bar, EffectBar):
+                bar = EffectBar()
+                bar.set_theme(self._theme)
+                self.table.setCellWidget(place, 3, bar)
+            bar.show_effect(less_change, more_change, reach)
+        if found.found:
+            first = found.found[0]
+            how = (
+                "it decides how the ramp ends"
+                if first.changes_end
+                else f"a tenth of it changes the atoms at the end by {percent(abs(math.expm1(CHANGE * first.slope)))}"
+            )
+            self.sentence.setText(
+                f"What counts most: {input_text(first)}; {how}. Bars: filled for more, outlined for less of it."
+            )
+
+    def stopped(self) -> None:
+        """Nothing to forget: it is asked for again when the user allows it."""
+
+    def set_theme(self, theme: Theme) -> None:
+        self._theme = theme
+        for place in range(self.table.rowCount()):
+            bar = self.table.cellWidget(place, 3)
+            if isinstance(bar, EffectBar):
+                bar.set_theme(theme)
+
+    def take_focus(self) -> None:
+        self.table.setFocus()
+
+
+def _effects(one: RampSensitivity, planned: float) -> tuple[float, float]:
+    """Changes of ln(atoms at the end) by less and by more of an input."""
+
+    def change(atoms: float) -> float:
+        return math.log(atoms / planned) if atoms > 0.0 and planned > 0.0 else math.nan
+
+    return change(one.atoms_less), change(one.atoms_more)
