@@ -121,8 +121,9 @@ class Contact:
 
     def joined(self, first: CloudNow, second: CloudNow, now: ContactNow) -> tuple[CloudNow, CloudNow]:
         """The clouds with what their contact does to each."""
+        lifting = self.collisions.lifting_share
         a, b = (
-            cloud._replace(partner_rate=self.collisions.energy_share * rate, partner_power=power)
+            cloud._replace(partner_rate=lifting * rate, partner_power=power)
             for cloud, rate, power in zip((first, second), now.rates, now.powers, strict=True)
         )
         return a, b

@@ -77,7 +77,7 @@ class CloudNow(NamedTuple):
     """The cloud at one time. Rates are per atom. [SI]
 
     `reference_density` is n_ref, that of the centre of the uncut cloud. Of a second species in the trap: the collisions
-    with it, times the share of energy that one hands over, and the power that they bring; 0 where there is none.
+    with it, as many as count for evaporation, and the power that they bring; 0 where there is none.
     """
 
     atoms: float

@@ -4,9 +4,9 @@ the first.
 Each gas has its own number and temperature, its own trap (frequencies, depth, sag) at the same controls, and its own
 losses. Heat flows between two classical Gaussian clouds by the rate of their collisions [1], and what one gains the
 other loses. Atoms of either also leave where a collision with the other kind lifts them over their depth: as often as
-collisions of their own kind would, times the share of energy that such a collision hands over. For equal masses and
-traps that is exact; for others it is an estimate, as is all of it once a cloud is degenerate. Losses in collisions of
-the two kinds are not counted: hardly any are known.
+collisions of their own kind would, less where the masses differ. For equal masses, traps and depths that is as good as
+the kinetics of one gas; for others it is an estimate, as is all of it once a cloud is degenerate. Losses in collisions
+of the two kinds are not counted: hardly any are known.
 
 Contact may be much faster than the ramp. Steps are linearly implicit, so that it costs no more when it is.
 
