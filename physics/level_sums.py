@@ -61,6 +61,16 @@ class Moments:
     softness: Floats
 
     @property
+    def rows(self) -> Floats:
+        """(5, ...) All of them."""
+        return np.concatenate([self.number[np.newaxis], self.energy[np.newaxis], self.softness])
+
+    @classmethod
+    def of(cls, rows: Floats) -> Moments:
+        """From `rows`."""
+        return cls(number=rows[0], energy=rows[1], softness=rows[2:])
+
+    @property
     def energy_of_another(self) -> Floats:
         """dE/dN at fixed T, over e_c. [1]"""
         energy: Floats = self.softness[1] / self.softness[0]
@@ -172,7 +182,7 @@ class LevelSums:
             soft = f * (1.0 + f)
             return np.stack([f @ levels, f @ (levels * x), soft @ levels, soft @ (levels * x), soft @ (levels * x * x)])
 
-        return _moments(_in_parts(sums, eta, alpha))
+        return Moments.of(_in_parts(sums, eta, alpha))
 
     def boson_alpha(self, eta: Floats, number: Floats) -> Floats:
         """-ln z of thermal bosons of a given N/A; 0 where they are saturated, or beyond."""
@@ -223,7 +233,7 @@ class LevelSums:
             soft = f * (1.0 - f)
             return np.stack([np.sum(levels * part, axis=-1) for part in (f, x * f, soft, x * soft, x * x * soft)])
 
-        return _moments(_in_parts(sums, eta, log_z))
+        return Moments.of(_in_parts(sums, eta, log_z))
 
     def fermi_log_z(self, eta: Floats, number: Floats) -> Floats:
         """ln z of fermions of a given N/A; NaN where there are not so many levels."""
@@ -318,10 +328,6 @@ def _fermi(energy: Floats) -> Floats:
     with np.errstate(over="ignore"):
         occupation: Floats = 1.0 / (np.exp(energy) + 1.0)
     return occupation
-
-
-def _moments(sums: Floats) -> Moments:
-    return Moments(number=sums[0], energy=sums[1], softness=sums[2:])
 
 
 def _in_parts(function: Callable[[Floats, Floats], Floats], eta: Floats, other: Floats) -> Floats:

@@ -31,6 +31,7 @@ from physics.equilibria import Equilibrium, quantity
 from physics.level_sums import LevelSums, Moments
 from physics.real_sums import ends_between, panels
 from physics.real_trap import RealTrap
+from physics.smooth_surface import through_grid
 from physics.truncated_boltzmann import incomplete_gamma
 
 _REACH, _PANEL = 42.0, 8
@@ -97,7 +98,7 @@ def classical_cloud(trap: RealTrap, eta: Floats) -> ClassicalCloud:
         number=levels * eta**1.5 / math.sqrt(math.pi),
         energy=eta * energy,
         centre=incomplete_gamma(1.5, eta),
-        squared=in_parts(squared, eta),
+        squared=through_grid(lambda x, _: in_parts(squared, np.exp(x))[np.newaxis], np.log(eta), np.zeros_like(eta))[0],
     )
 
 

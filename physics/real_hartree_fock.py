@@ -20,7 +20,7 @@ from physics.constants import boltzmann, planck
 from physics.equilibria import quantity
 from physics.models import Model
 from physics.real_equilibria import Densities, RealEquilibrium
-from physics.real_hartree_fock_integrals import SUMS, MeanField, Solution
+from physics.real_hartree_fock_integrals import SUMS, MeanField, Solution, local_densities
 from physics.real_ideal import RealIdealBose
 from physics.real_semi_ideal import atoms_over_most
 from physics.roots import rising_roots
@@ -72,6 +72,13 @@ class RealHartreeFock(RealEquilibrium):
         eta, wanted, g = (self._flat(each) for each in (self._eta, self._volume_number, self.repulsion))
         with np.errstate(all="ignore"):
             return field.solve(eta, g, wanted, self._flat(self._ideal._alpha))
+
+    def local_densities(self, potential: Floats) -> tuple[Floats, Floats]:
+        """n lambda^3 of thermal atoms and condensate, (places,), where the potential is so many kT; of a single cloud.
+        [1]"""
+        g, m = (float(np.ravel(each)[0]) for each in (self.repulsion, self._solution.m))
+        condensed = bool(np.isfinite(self._solution.rise[0]))
+        return local_densities(g, m, float(self._eta) - m, potential, condensed=condensed)
 
     def _sum(self, name: str) -> Floats:
         """A sum over N lambda^3, in the cloud's shape."""

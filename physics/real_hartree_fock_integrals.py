@@ -276,6 +276,28 @@ def _fall(top: Floats, v: Floats) -> Floats:
     return HeldBose(top=np.maximum(top, _TINY)).fall(v[:, np.newaxis])[:, 0]
 
 
+def local_densities(g: float, m: float, top: float, potential: Floats, *, condensed: bool) -> tuple[Floats, Floats]:
+    """n lambda^3 of thermal atoms and condensate where the potential is `potential` kT, (places,). [1]"""
+    gas, edge = HeldBose(top=np.array([top])), _edge(np.array([g]), np.array([top]))
+    height = m - potential
+    inside = (height >= edge.height[0]) & condensed
+
+    def density(v: Floats) -> Floats:
+        d: Floats = gas.density(v[np.newaxis])[0]
+        return d
+
+    v = np.empty_like(potential)
+    if np.any(inside):
+        y, least = height[inside], np.full(np.count_nonzero(inside), edge.inside[0])
+        v[inside] = rising_roots(lambda v: v + 2.0 * g * density(v) - y, least, np.maximum(y, least), y)
+    if not np.all(inside):
+        y = height[~inside]
+        first = float(edge.outside[0]) if condensed else 0.0
+        low, high = np.full_like(y, first), np.full_like(y, top)
+        v[~inside] = rising_roots(lambda v: v - 2.0 * g * density(v) + y, low, high, np.clip(-y, first, top))
+    return density(v), np.where(inside, v / g, 0.0)
+
+
 def _edge_at_centre(eta: Floats, g: Floats) -> tuple[_Edge, Floats]:
     """The edge of a condensate that is about to appear, and the top then."""
     top = eta.copy()

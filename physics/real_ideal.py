@@ -22,6 +22,7 @@ from physics.held_densities import HeldBose, HeldFermi
 from physics.level_sums import Moments
 from physics.real_equilibria import Densities, RealEquilibrium, in_parts
 from physics.real_sums import ends_between, panels
+from physics.smooth_surface import through_grid
 
 _PANEL, _REACH = 8, 42.0
 
@@ -125,7 +126,17 @@ class RealIdealFermi(RealEquilibrium):
     @cached_property
     def _log_z(self) -> Floats:
         eta, number = self._flat(self._eta), self._flat(self._number)
-        return self._shaped(self._levels_of_trap.fermi_log_z(eta, number))
+        levels = self._levels_of_trap
+        most = float(levels.levels_below(np.ones(1))[0])
+        if np.any(number > 0.5 * most):
+            return self._shaped(levels.fermi_log_z(eta, number))
+
+        def softened(log_eta: Floats, log_number: Floats) -> Floats:
+            """ln(1 + z), which is positive."""
+            return np.logaddexp(0.0, levels.fermi_log_z(np.exp(log_eta), np.exp(log_number)))[np.newaxis]
+
+        (soft,) = through_grid(softened, np.log(eta), np.log(number))
+        return self._shaped(soft + np.log(-np.expm1(-soft)))
 
     @quantity
     def log_fugacity(self) -> Floats:
@@ -150,9 +161,13 @@ class RealIdealFermi(RealEquilibrium):
 
     @cached_property
     def _moments(self) -> Moments:
-        log_z = self._flat(self._log_z)
-        moments = self._levels_of_trap.fermion_moments(self._flat(self._eta), np.nan_to_num(log_z))
-        return moments.where(~np.isnan(log_z))
+        log_z, levels = self._flat(self._log_z), self._levels_of_trap
+
+        def sums(log_eta: Floats, place: Floats) -> Floats:
+            return levels.fermion_moments(np.exp(log_eta), np.sinh(place)).rows
+
+        rows = through_grid(sums, np.log(self._flat(self._eta)), np.arcsinh(np.nan_to_num(log_z)))
+        return Moments.of(rows).where(~np.isnan(log_z))
 
     @cached_property
     def _potential_share(self) -> Floats:
@@ -190,7 +205,14 @@ def ideal_densities(solved: RealEquilibrium, kind: type[HeldBose] | type[HeldFer
         with np.errstate(invalid="ignore"):
             return np.stack([np.sum(np.where(w > 0.0, w * value, 0.0), axis=-1) for value in values])
 
-    squared, cubed, pair_energy, triple_energy, potential = in_parts(sums, solved._flat(solved._eta), log_z)
+    eta = solved._flat(solved._eta)
+    if kind is HeldBose:
+        found = through_grid(
+            lambda x, y: in_parts(sums, np.exp(x), -y * y), np.log(eta), np.sqrt(np.maximum(-log_z, 0.0))
+        )
+    else:
+        found = through_grid(lambda x, y: in_parts(sums, np.exp(x), np.sinh(y)), np.log(eta), np.arcsinh(log_z))
+    squared, cubed, pair_energy, triple_energy, potential = found
     return Densities(
         squared=squared,
         pairs=squared,

@@ -10,6 +10,8 @@ import numpy as np
 from physics.checks import Floats
 from physics.smooth import chebyshev_coefficients
 
+_FEW, _LEAST, _PER_UNIT, _AT_ONCE = 160, 7, 6.0, 4096
+
 
 class Surface:
     """Functions of x and y, interpolated between Chebyshev nodes of a rectangle.
@@ -50,6 +52,29 @@ class Surface:
         """(k, n) Their values at one y each."""
         found: Floats = np.sum(polynomials * _waves(y, *self.y_range, polynomials.shape[-1]), axis=-1)
         return found
+
+
+def through_grid(function: Callable[[Floats, Floats], Floats], x: Floats, y: Floats) -> Floats:
+    """Positive functions at many points that lie close together, by their logarithms on a grid; relative error about
+    1e-7 where these are smooth on the scale of 1.
+
+    Parameters
+    ----------
+    function : of flat arrays x and y (n,), giving (k, n).
+    x, y : (n,). For few points, or points that are spread wide, the function is evaluated at each.
+    """
+    if x.size <= _FEW or not (np.all(np.isfinite(x)) and np.all(np.isfinite(y))):
+        return function(x, y)
+    ranges = (float(np.min(x)), float(np.max(x))), (float(np.min(y)), float(np.max(y)))
+    counts = tuple(_LEAST + math.ceil(_PER_UNIT * (high - low)) if high > low else 1 for low, high in ranges)
+    if math.prod(counts) > x.size / 2:
+        return function(x, y)
+    surface = Surface(lambda x, y: np.log(function(x, y)), *ranges, (counts[0], counts[1]))
+    parts = []
+    for start in range(0, x.size, _AT_ONCE):
+        part = slice(start, start + _AT_ONCE)
+        parts.append(np.exp(surface.along(surface.across(x[part]), y[part])))
+    return np.concatenate(parts, axis=-1)
 
 
 def _nodes(low: float, high: float, count: int) -> Floats:

@@ -57,6 +57,8 @@ def usual_limits(plan: Plan) -> MapLimits:
     answer = cloud_answer(plan)
     atoms, temperature = float(answer.cloud.atoms), float(answer.cloud.temperature)
     threshold = temperature * float(answer.equilibrium.temperature_to_threshold)
+    if not math.isfinite(threshold):
+        threshold = temperature  # more fermions than the trap holds
     low_t, high_t = min(temperature, threshold), max(temperature, threshold)
     return MapLimits(
         atoms_low=min(1e3, 10.0 ** math.floor(math.log10(atoms) - 0.8)),

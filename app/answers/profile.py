@@ -1,4 +1,7 @@
-"""Density and column density of the plan's cloud along a trap axis."""
+"""Density and column density of the plan's cloud along a trap axis.
+
+In a real trap the axes are its normal modes; where it has none, x, y and z.
+"""
 
 from __future__ import annotations
 
@@ -9,8 +12,10 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
-from app.answers.cloud import cloud_answer
+from app.answers.cloud import CloudAnswer, cloud_answer
 from app.answers.part import part
+from app.answers.trap import trap_answer
+from app.plan_field import PlanError
 from app.quantities import QUANTITIES
 from physics.cloud import Cloud
 from physics.constants import boltzmann
@@ -18,10 +23,13 @@ from physics.profiles import Profile, column_density_profile, density_profile
 
 if TYPE_CHECKING:
     from app.plan import Plan
+    from physics.real_equilibria import RealEquilibrium
 
 Array = NDArray[np.float64]
 
 PROFILE_POINTS = 301
+_FAINT = 5.0
+"""kT above mu at which profiles in a real trap end, before they run out along the arms."""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -41,6 +49,9 @@ class ProfileAnswer:
 def profile_answer(plan: Plan, axis: int = 0) -> ProfileAnswer:
     """Profiles of the plan's cloud along trap axis 0, 1 or 2."""
     central = cloud_answer(plan)
+    line_of_sight = 2 if axis != 2 else 1
+    if central.real_trap is not None:
+        return _in_real_trap(plan, central, central.real_trap, axis, line_of_sight)
     reach = 4.0 * float(np.max(_classical_radii(central.cloud)[axis]))
     if central.missing(QUANTITIES["condensate_radii"]) is None:
         reach = max(reach, 1.3 * float(np.asarray(central.equilibrium.condensate_radii)[axis]))
@@ -52,7 +63,6 @@ def profile_answer(plan: Plan, axis: int = 0) -> ProfileAnswer:
         reach = max(reach, 1.3 * edge)
     reach = round_up(reach)
     positions = np.linspace(-reach, reach, PROFILE_POINTS)
-    line_of_sight = 2 if axis != 2 else 1
     return ProfileAnswer(
         axis=axis,
         line_of_sight=line_of_sight,
@@ -60,6 +70,26 @@ def profile_answer(plan: Plan, axis: int = 0) -> ProfileAnswer:
         positions=positions,
         density=density_profile(central.equilibrium, axis, positions),
         column=column_density_profile(central.equilibrium, axis, positions, line_of_sight),
+    )
+
+
+def _in_real_trap(
+    plan: Plan, central: CloudAnswer, solved: RealEquilibrium, axis: int, line_of_sight: int
+) -> ProfileAnswer:
+    from physics.real_profiles import RealProfiles
+
+    if central.overfull:
+        raise PlanError("the trap of this plan does not hold so many atoms below its depth: there is no profile")
+    profiles = RealProfiles(equilibrium=solved, survey=trap_answer(plan).survey)
+    reach = round_up(profiles.reach(axis, _FAINT))
+    positions = np.linspace(-reach, reach, PROFILE_POINTS)
+    return ProfileAnswer(
+        axis=axis,
+        line_of_sight=line_of_sight,
+        bosons=central.bosons,
+        positions=positions,
+        density=profiles.density(axis, positions),
+        column=profiles.column(axis, positions, line_of_sight),
     )
 
 
