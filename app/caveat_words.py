@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
 from app.language import translate as _
-from app.units import format_quantity
+from app.units import best_unit, format_quantity
 from app.words import number, percent, times
 from physics.caveats import Caveat, Severity
 from physics.models import Model
@@ -50,6 +51,16 @@ def _whole(value: float) -> str:
 def _share(value: float) -> str:
     """A share that can be reckoned above one, where it says no more than "all"."""
     return percent(value) if value < 1.0 else _("all")
+
+
+def _once_in(rate: float) -> str:
+    """A rate as the time that it means."""
+    seconds = 1.0 / rate if rate > 0.0 else math.inf
+    return format_quantity(seconds, best_unit(seconds, ("ms", "s", "h")), digits=2)
+
+
+def _heating(value: float) -> str:
+    return format_quantity(value, best_unit(value, ("nK/s", "µK/s")), digits=2)
 
 
 _PLAIN: Callable[[float], str] = number
@@ -246,6 +257,24 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             ),
             percent,
         ),
+        "one_way_out": (
+            _(
+                "Only {value} of all directions lead out of this trap. Atoms must find that way: evaporation in three "
+                "dimensions is an upper bound."
+            ),
+            percent,
+        ),
+        "spin_flips": (
+            _(
+                "Atoms lose their state at the zero of the field, each in about {value} ({least} to {largest}), and "
+                "sooner as they cool."
+            ),
+            _once_in,
+        ),
+        "light_heating": (
+            _("Scattered light warms the cloud by {value}, {share} of T in the {time} that it lasts."),
+            _heating,
+        ),
         "truncated": (
             _("The trap is only {value} kT deep: it cuts the cloud, which is answered as if uncut. Deepen or cool."),
             _PLAIN,
@@ -260,7 +289,10 @@ _WORDS = MappingProxyType(
 
 def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
     """The sentence of a caveat, with its number."""
-    template, say = _SENTENCES[_key(caveat, answer)]
+    key = _key(caveat, answer)
+    if key not in _SENTENCES:
+        return _of_trap(caveat)
+    template, say = _SENTENCES[key]
     numbers = caveat.numbers
     asked = answer.plan.cloud.model or Model.SEMI_IDEAL
     return template.format(
@@ -275,7 +307,19 @@ def caveat_text(caveat: Caveat, answer: CloudAnswer) -> str:
         arms=_arms(numbers.get("arms"), numbers.get("in_arms")),
         compared=_compared(numbers, answer),
         frozen=_frozen(int(numbers.get("frozen_axes", 0))),
+        least=_once_in(numbers.get("largest", 0.0)),
+        largest=_once_in(numbers.get("least", 0.0)),
+        share=percent(numbers.get("share", 0.0)),
+        time=_once_in(1.0 / numbers.get("time", math.inf)),
     )
+
+
+def _of_trap(caveat: Caveat) -> str:
+    """The sentence of a note on the trap."""
+    from app.trap_words import note_text  # what it loads is there, where there is a trap to speak of
+    from physics.traps.notes import Note, NoteKind
+
+    return note_text(Note(kind=NoteKind[caveat.id.upper()], value=caveat.value or 0.0, beam=caveat.subject))
 
 
 def caveat_line(caveat: Caveat, answer: CloudAnswer) -> CaveatLine:

@@ -231,9 +231,15 @@ def way_out(answer: TrapAnswer) -> str:
     return "" if escape is None else _WAYS_OUT[escape.kind]
 
 
+_SAME = 1e-3
+"""Relative distance of two wavelengths below which they are one."""
+
+
 def note_text(note: Note) -> str:
     """A note on the trap, with its number, as a sentence."""
     value = abs(note.value)
+    if note.kind is NoteKind.PUBLISHED_POLARIZABILITY and value < _SAME:
+        return _("For beam {beam} the polarizability is the one published for this wavelength.").format(beam=note.beam)
     lengths = {NoteKind.WALL: _length}
     frequencies = (NoteKind.LINEAR_ZEEMAN, NoteKind.KNIFE_IDLE)
     return _NOTES[note.kind].format(

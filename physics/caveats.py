@@ -62,12 +62,14 @@ class Caveat:
     severity : Severity
     value : float or None. The number that raised it, in SI units or a ratio; the table of ids says which.
     numbers : mapping of further numbers by name, SI.
+    subject : name of what it is about, such as one of several beams; empty where that is plain.
     """
 
     id: str
     severity: Severity
     value: float | None = None
     numbers: Mapping[str, float] = field(default_factory=lambda: MappingProxyType({}))
+    subject: str = ""
 
     def __post_init__(self) -> None:
         if self.id not in CAVEAT_IDS:
@@ -111,6 +113,16 @@ CAVEAT_IDS = MappingProxyType(
         "harmonic_trap": "volume of a classical cloud over that in the harmonic trap of the same frequencies;"
         " truncation, arms, in_arms, and T over the threshold or TF in both: real, harmonic",
         "trap_uncertainty": "no value: uncertain numbers of beams and coils move frequencies and depth to first order",
+        "blue_light": "relative detuning from the nearest line: the light of a beam (subject) repels the atoms",
+        "near_resonance": "relative detuning: the light of a beam (subject) is close to a line",
+        "published_polarizability": "relative distance of the wavelength of a beam (subject) from the published one",
+        "wall": "distance [m] of the wall, which alone limits the trap",
+        "arm_end": "energy [J] of the way out, the end of a beam's arm as far as it is followed",
+        "linear_zeeman": "muB B/h or radio frequency [Hz]: the Zeeman effect is taken as linear",
+        "knife_idle": "radio frequency [Hz] of a knife that does nothing to this state",
+        "one_way_out": "share of the directions that are open to atoms of the depth + kT: a narrow way out",
+        "spin_flips": "loss rate [1/s] at the zero of the field, an order of magnitude; least, largest",
+        "light_heating": "heating [K/s] by scattered light; share of T that it adds in the time [s] that a cloud lasts",
         "no_background": "no value: no background lifetime, so that lifetimes are upper bounds",
         "three_body_unknown": "no value: K3 not known, three-body loss left out",
         "two_body_recalled": "K2 [m^3/s]: recalled from its source, not read there",

@@ -194,7 +194,7 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
             certainties=losses.certainties(),
             measured_length=_measured_length(state, losses),
         ),
-        *_trap_caveats(plan, solved),
+        *_trap_caveats(plan, solution),
     )
     return CloudAnswer(
         plan=plan,
@@ -216,16 +216,19 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
     )
 
 
-def _trap_caveats(plan: Plan, solved: Equilibrium) -> tuple[Caveat, ...]:
-    """How the harmonic trap of beams and coils would answer; nothing where the frequencies are given."""
+def _trap_caveats(plan: Plan, solution: Solution) -> tuple[Caveat, ...]:
+    """What beams and coils do to the cloud, and how their harmonic trap would answer; nothing where the frequencies are
+    given."""
     if plan.trap.harmonic:
         return ()
     from physics.real_equilibria import RealEquilibrium
+    from physics.survey_caveats import survey_caveats
     from physics.trap_caveats import harmonic_trap_caveat
 
-    found = []
+    survey, solved = trap_answer(plan).survey, solution.equilibrium
+    found = [*survey_caveats(survey, solution.rates)]
     if isinstance(solved, RealEquilibrium) and solved.trap.has_frequencies:
-        found.append(harmonic_trap_caveat(trap_answer(plan).survey, solved))
+        found.append(harmonic_trap_caveat(survey, solved))
     if trap_inputs(plan):
         found.append(Caveat(id="trap_uncertainty", severity=Severity.NOTE))
     return tuple(found)

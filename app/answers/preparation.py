@@ -5,15 +5,17 @@ It takes up to a second, so the window has it done on a worker thread; after it 
 
 from __future__ import annotations
 
+from contextlib import suppress
 from typing import TYPE_CHECKING
 
 from app.answers.trap import trap_answer
-from app.answers.trap_inputs import trap_inputs, trap_slopes
+from app.answers.trap_inputs import central_trap, trap_inputs, trap_slopes
+from app.plan_field import PlanError
 
 if TYPE_CHECKING:
     from app.plan import Plan
 
-_LATER = ("volume_curve", "arms", "heating", "spin_flips", "notes")
+_LATER = ("volume_curve", "arms", "heating", "spin_flips", "barriers", "notes")
 """What a survey works out when it is first asked for it."""
 
 
@@ -37,8 +39,12 @@ def prepare_trap(plan: Plan) -> None:
     answer = trap_answer(plan)
     for name in _LATER:
         getattr(answer.survey, name)
-    if answer.trapped and _followed(plan):
+    if not answer.trapped:
+        return
+    if _followed(plan):
         trap_slopes(plan)
+    with suppress(PlanError):  # of which the cloud's answer tells
+        central_trap(plan)
 
 
 def _followed(plan: Plan) -> bool:

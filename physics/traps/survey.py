@@ -26,6 +26,7 @@ from physics.traps.heating import Heating, SpinFlips, heating_of, spin_flips_of
 from physics.traps.landscape import Landscape
 from physics.traps.modes import Modes, modes_of
 from physics.traps.notes import Note, notes_of
+from physics.traps.openings import barriers
 from physics.traps.potential import NoPotential, NotTrapped, Potential, potential_of
 from physics.traps.reasons import why_not_trapped
 from physics.traps.stationary import StationaryPoint, stationary_points
@@ -154,6 +155,24 @@ class Survey:
         if self.potential is None or self.basin is None or not self.basin.minimum.cusp:
             return None
         return spin_flips_of(self.potential, self.basin.minimum)
+
+    @cached_property
+    def barriers(self) -> Floats | None:
+        """(rays,) The highest energy over the minimum on the straight way out, in directions all around; None where the
+        trap is given by its frequencies or has no depth. [J]"""
+        if self.potential is None or self.depth is None:
+            return None
+        return barriers(self.potential, self.minimum, self.depth, self.frequencies, self.axes)
+
+    def open_share(self, temperature: float) -> float | None:
+        """Share of the directions in which nothing higher than the depth + kT stands in the way. [1]
+
+        Where it is small, atoms that have the energy to leave must first find the way: they evaporate more slowly than
+        kinetics in three dimensions says. `temperature`: [K]. None as `barriers`.
+        """
+        if self.barriers is None or self.depth is None:
+            return None
+        return float(np.mean(self.barriers <= self.depth + boltzmann * temperature))
 
     @cached_property
     def notes(self) -> tuple[Note, ...]:
