@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import QEvent, QObject, Qt
 from PySide6.QtGui import QKeyEvent, QShowEvent
-from PySide6.QtWidgets import QFileDialog, QWidget
+from PySide6.QtWidgets import QDialog, QFileDialog, QWidget
 
 from app.engine import CloudAnswer
 from app.figures.picture import Picture
@@ -70,7 +70,7 @@ class RampPage(Page):
         self._drag = 0
         self._written: Plan | None = None  # as it was before the drag that is under way
         self._built = False
-        self._bounds: tuple[float, ...] = ()  # ends of the stages on show [s]
+        self._scenery: Scene | None = None  # what all plots on show share
 
     # ---------------------------------------------------------------- building, when first seen
 
@@ -93,6 +93,8 @@ class RampPage(Page):
         panel.waypoints.save_asked.connect(self._save_waypoints)
         panel.waypoints.print_asked.connect(self._print_waypoints)
         panel.measured.since_chosen.connect(self._follow_from)
+        panel.stages.save_asked.connect(self.ask_save_table)
+        panel.stages.read_asked.connect(self.ask_read_table)
         panel.stages.problem_changed.connect(self._problem_changed)
         panel.view_changed.connect(self._view_changed)
         panel.keep.clicked.connect(self.keep_reference)
@@ -118,8 +120,7 @@ class RampPage(Page):
             return None
         if self._is_answered(plan):
             return None
-        quick = plan.trap.harmonic and all(stage.trap is None or stage.trap.harmonic for stage in plan.ramp)
-        if quick and kept_ramp(plan, None) is None and not self._pace.begin():
+        if _is_quick(plan) and kept_ramp(plan, None) is None and not self._pace.begin():
             return None
         return self._job(plan)
 
@@ -176,7 +177,16 @@ class RampPage(Page):
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
-        if self._built and self.isVisible():
+        if not (self._built and self.isVisible()):
+            return
+        found = self._found
+        if found is not None and found.key != self._key(cloud.plan):
+            # The curves follow with their answer, which is under way: one paint of them instead of two.
+            self._show_plan()
+            if not _is_quick(cloud.plan):
+                for plot in self.panel.columns.plots.values():
+                    plot.canvas.set_stale(True, "of the ramp before")
+        else:
             self._show()
 
     def mark_stale(self, reason: str) -> None:
@@ -195,46 +205,55 @@ class RampPage(Page):
 
     def _show(self) -> None:
         """The stages of the newest plan at once, and the newest simulation there is."""
+        if self._show_plan() and self._found is not None:
+            self._show_found(self._found)
+
+    def _show_plan(self) -> bool:
+        """The stages of the newest plan; whether there are any, and a ramp can be made of them."""
         from app.answers.ramp_inputs import path_of, ramp_of
         from app.figures.ramp_controls import control_curves
 
         if self.cloud is None:
-            return
+            return False
         plan, panel = self.cloud.plan, self.panel
         panel.set_plan(plan)
         if not plan.ramp:
             self._found = None if self._found is not None and self._found.plan.ramp else self._found
             panel.show_empty(_NO_RAMP, _START, self._offers(plan))
-            return
+            return False
         panel.show_ramp()
         try:
             ramp = ramp_of(plan)
             curves = control_curves(ramp, path_of(plan).standing)
         except ValueError as error:
-            panel.tell(f"{str(error)[:1].upper()}{str(error)[1:]}.", "")
-            super().mark_stale("last good answer")
-            return
-        scene = self._scene(plan, ramp.duration)
-        self._bounds = scene.bounds
-        panel.controls.show_curves(curves, scene, self.reading)
-        found = self._found
-        if found is None:
-            return
-        if found.failure:
-            panel.tell(f"{found.failure[:1].upper()}{found.failure[1:]}.", "")
-            super().mark_stale("last good answer")
-            return
-        if found.ramp is not None:
-            from app.ramp_words import ramp_verdict
+            self._tell_trouble(str(error))
+            return False
+        self._scenery = self._scene(plan, ramp.duration)
+        panel.controls.show_curves(curves, self._scenery, self.reading)
+        return True
 
+    def _show_found(self, found: Found) -> None:
+        """What was simulated."""
+        from app.ramp_words import ramp_verdict
+
+        panel = self.panel
+        if found.failure:
+            self._tell_trouble(found.failure)
+            return
+        if found.ramp is not None and self._scenery is not None:
             panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
             panel.table.show_ramp(found.ramp)
-            panel.columns.show_courses(self._courses(found), scene, _points(found.measured), self.reading)
+            panel.columns.show_courses(self._courses(found), self._scenery, _points(found.measured), self.reading)
         panel.measured.show_answers(found.ramp, found.rest)
         if not panel.stages.problem:
             for plot in self._plots:
                 plot.canvas.set_stale(False)
         self._say_values()
+
+    def _tell_trouble(self, sentence: str) -> None:
+        """Why there is no answer; what was there before stays, marked."""
+        self.panel.tell(f"{sentence[:1].upper()}{sentence[1:]}.", "")
+        super().mark_stale("last good answer")
 
     def _detail(self, answer: RampAnswer) -> str:
         """When it condenses, what limits, what to change, and how it compares."""
@@ -306,6 +325,52 @@ class RampPage(Page):
         self.since = label
         self.part_wanted.emit()
 
+    # ---------------------------------------------------------------- tables of the ramp
+
+    def ask_save_table(self) -> None:
+        """Ask how the ramp is to be written as a table, and where to."""
+        from app.widgets.ramp_table_dialog import RampTableDialog
+
+        if self.cloud is None or not self.cloud.plan.ramp:
+            return
+        try:
+            dialog = RampTableDialog(self.cloud.plan, self.answer, self)
+        except ValueError as error:
+            self.told.emit(f"{error}.")
+            return
+        if dialog.exec() == QDialog.DialogCode.Accepted:
+            chosen, _ = QFileDialog.getSaveFileName(self, "Save the ramp", str(self.folder / "ramp.csv"), "CSV (*.csv)")
+            if chosen:
+                path = Path(chosen)
+                self._write(path if path.suffix else path.with_suffix(".csv"), dialog.text.encode("utf-8"))
+        dialog.deleteLater()
+
+    def ask_read_table(self) -> None:
+        """Ask for a table, and make it the ramp."""
+        chosen, _ = QFileDialog.getOpenFileName(self, "Read a ramp", str(self.folder), "CSV (*.csv);;All files (*)")
+        if chosen:
+            self.read_table(Path(chosen))
+
+    def read_table(self, path: Path) -> None:
+        """Make the table of a file the ramp, as one stage; one that cannot be read changes nothing and is told of."""
+        from app.ramp_edits import checked
+        from app.ramp_table import read_ramp_table
+
+        if self.cloud is None:
+            return
+        try:
+            stage = read_ramp_table(path.read_text(encoding="utf-8"), path.name).stage(label=path.stem[:80])
+            plan = checked(replace(self.cloud.plan, ramp=(stage,)))
+        except UnicodeDecodeError:
+            self.told.emit(f"{path.name} is not a text in UTF-8.")
+        except OSError as error:
+            self.told.emit(f"{path} cannot be read: {error.strerror or error}.")
+        except ValueError as error:
+            self.told.emit(f"{error}.")
+        else:
+            self.folder_used.emit(path.parent)
+            self.plan_edited.emit(plan, _STEP, "")
+
     # ---------------------------------------------------------------- waypoints on paper
 
     def _save_waypoints(self) -> None:
@@ -363,7 +428,8 @@ class RampPage(Page):
         if self.reading is None or found is None or found.ramp is None:
             self.bar.status.say(HINT)
             return
-        stage = next((k for k, end in enumerate(self._bounds, start=1) if self.reading <= end), len(self._bounds))
+        bounds = self._scenery.bounds if self._scenery is not None else ()
+        stage = next((k for k, end in enumerate(bounds, start=1) if self.reading <= end), len(bounds))
         parts = [f"t = {duration(self.reading)}", f"stage {stage}"]
         parts += [
             f"{curve.control.label} = {curve.text(curve.at(self.reading))}" for curve in self.panel.controls.curves
@@ -448,6 +514,11 @@ def _simulated(plan: Plan, since: str | None, watch: Watch) -> Found | None:
     except (ValueError, OSError, ArithmeticError, RuntimeError) as error:
         return Found(plan=plan, failure=str(error))
     return Found(plan=plan, ramp=answer, rest=rest, measured=measured)
+
+
+def _is_quick(plan: Plan) -> bool:
+    """Whether the ramp is simulated within a moment: without surveys."""
+    return plan.trap.harmonic and all(stage.trap is None or stage.trap.harmonic for stage in plan.ramp)
 
 
 def _points(measured: tuple[MeasuredCloud, ...]) -> list[Any]:

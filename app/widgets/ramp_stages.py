@@ -6,7 +6,7 @@ from collections.abc import Callable
 from functools import partial
 from itertools import pairwise
 
-from PySide6.QtCore import Qt
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import (
     QFrame,
     QGridLayout,
@@ -39,7 +39,11 @@ _CAUTION = (
 
 
 class StageEditor(PlanEditor):
-    """The table, and buttons that add to it. Its signals are those of `PlanEditor`."""
+    """The table, and buttons that add to it. Besides the signals of `PlanEditor`: save_asked() and read_asked() when
+    the ramp is to be written to a file, or taken from one."""
+
+    save_asked = Signal()
+    read_asked = Signal()
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(ramp_edits.checked, parent)
@@ -65,6 +69,13 @@ class StageEditor(PlanEditor):
         self.buttons.addWidget(self.add_button)
         self.buttons.addWidget(self.hold_button)
         self.buttons.addStretch(1)
+        self.save_button, self.read_button = QPushButton("Save as table…"), QPushButton("Read a table…")
+        self.save_button.setToolTip("CSV: one row a time step, one column a control")
+        self.save_button.clicked.connect(self.save_asked)
+        self.read_button.setToolTip("CSV of times and controls, which becomes the ramp")
+        self.read_button.clicked.connect(self.read_asked)
+        self.buttons.addWidget(self.save_button)
+        self.buttons.addWidget(self.read_button)
         self._table = QWidget()
         self._grid = QGridLayout(self._table)
         area = QScrollArea()
@@ -267,7 +278,7 @@ class StageEditor(PlanEditor):
 
     def _set_tab_order(self) -> None:
         chain = [widget for row in self._order() for widget in row]
-        chain += [self.add_button, self.hold_button]
+        chain += [self.add_button, self.hold_button, self.save_button, self.read_button]
         for one, other in pairwise(chain):
             QWidget.setTabOrder(one, other)
 
