@@ -43,6 +43,18 @@ def make_window(qapp: QApplication, qtbot: QtBot, tmp_path: Path) -> Iterator[Ma
         delete(window)  # at once: windows that pile up make every change of the look slower
 
 
+@pytest.fixture(scope="module")
+def lasting_window(qapp: QApplication, tmp_path_factory: pytest.TempPathFactory) -> Iterator[MainWindow]:
+    """One window for all tests of a module, which each load a plan of their own into it."""
+    window = MainWindow(Settings(tmp_path_factory.mktemp("settings")), size=QSize(1400, 900))
+    window.show()
+    window.furnish(DEFAULT_PLAN, theme=ThemeChoice.LIGHT)
+    yield window
+    window.document.stack.setClean()
+    window.close()
+    delete(window)
+
+
 @pytest.fixture
 def window(make_window: MakeWindow) -> MainWindow:
     return make_window()

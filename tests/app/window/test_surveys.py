@@ -19,7 +19,7 @@ from app.units import BEAM_POWER, read_quantity
 from app.window.main_window import MainWindow
 
 Settle = Callable[[MainWindow], None]
-DATA = Path(__file__).parents[2] / "data"
+PRESETS = Path(__file__).parents[3] / "presets" / "traps"
 
 
 def with_power(plan: Plan, text: str) -> Plan:
@@ -29,7 +29,8 @@ def with_power(plan: Plan, text: str) -> Plan:
 
 @pytest.fixture(scope="module")
 def plan() -> Plan:
-    return read_plan(DATA / "plan_of_beams_and_coils.toml")
+    crossed = read_plan(PRESETS / "crossed_beams_rubidium.toml")
+    return plan_with(crossed, {"cloud.atoms": "4e5", "cloud.temperature": "620 nK"})
 
 
 class Surveys:
@@ -87,7 +88,7 @@ def test_the_window_surveys_on_a_worker_and_never_twice(
     assert made == 4  # a survey and a volume curve each
     assert threading.get_ident() not in surveys.threads
     # back, and another cloud: at once, in the GUI thread, without another survey
-    for shown in (first, plan_with(second, {"cloud.temperature": "150 nK"})):
+    for shown in (first, plan_with(second, {"cloud.temperature": "500 nK"})):
         window.document.edit(shown, "plan")
         window.answers.answer_now()
         assert window.answers.cloud.plan == shown

@@ -26,14 +26,23 @@ PRESETS = Path(__file__).parents[3] / "presets" / "traps"
 
 
 @pytest.fixture
-def crossed(make_window: Callable[..., MainWindow]) -> MainWindow:
-    return make_window(read_plan(PRESETS / "crossed_beams_rubidium.toml"))
+def crossed(lasting_window: MainWindow, settle: Settle) -> MainWindow:
+    plan = read_plan(PRESETS / "crossed_beams_rubidium.toml")
+    lasting_window.document.load(plan_with(plan, {"cloud.atoms": "4e5", "cloud.temperature": "620 nK"}), None, None)
+    lasting_window.desk.tabs.setCurrentWidget(lasting_window.desk.field)  # the page that asks least of a trap
+    settle(lasting_window)
+    return lasting_window
 
 
 @pytest.fixture
 def card(crossed: MainWindow) -> SolvingCard:
     card = crossed.desk.bench.trap.solving
     assert card is not None
+    card.set_unfolded(False)
+    card.depth_field.set_quantity(None)
+    card.frequency_field.set_quantity(None)
+    choose(card.control, Control(ControlKind.POWER, "long"))
+    choose(card.until, Until.DEPTH)
     assert not card.button.isVisible()
     QTest.keyClick(card.head.fold, Qt.Key.Key_Space)
     assert card.button.isVisible()
