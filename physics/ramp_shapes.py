@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import itertools
 import math
-from bisect import bisect_right
+from bisect import bisect_left, bisect_right
 from dataclasses import dataclass, replace
 from enum import Enum
 from functools import cached_property
@@ -15,6 +16,9 @@ from physics.checks import Floats
 
 if TYPE_CHECKING:
     from physics.ramps import Move
+
+_SLIGHT = 0.25
+"""Share of its slope by which the course of a table may turn at a point without a corner that counts."""
 
 
 class Shape(Enum):
@@ -64,16 +68,23 @@ class Course:
 
     @property
     def corners(self) -> tuple[float, ...]:
-        """Times within the stage at which the course has a corner. [s]"""
-        return self.times[1:-1]
+        """Times within the stage at which the course has a corner that counts. [s]
+
+        A table of many points that follows a curve has a slight one at each, over which the kinetics goes as over the
+        curve.
+        """
+        slopes = [(b - a) / (t - s) for (s, a), (t, b) in itertools.pairwise(zip(self.times, self.levels, strict=True))]
+        turns = zip(self.times[1:-1], itertools.pairwise(slopes), strict=True)
+        return tuple(t for t, (a, b) in turns if abs(b - a) > _SLIGHT * max(abs(a), abs(b)))
 
     def within(self, begin: float, finish: float) -> Course:
-        """The course between two neighbouring corners, smooth up to both ends; times stay those of the stage."""
+        """The course between two neighbouring corners; times stay those of the stage."""
         if self.shape is not Shape.TABLE:
             return self
-        index = self._interval(0.5 * (begin + finish))
-        times, levels = self.times[index : index + 2], self.levels[index : index + 2]
-        return replace(self, start=levels[0], end=levels[1], times=times, levels=levels)
+        first = self._interval(begin)
+        last = max(bisect_left(self.times, finish), first + 1)
+        times, levels = self.times[first : last + 1], self.levels[first : last + 1]
+        return replace(self, start=levels[0], end=levels[-1], times=times, levels=levels)
 
     @cached_property
     def _stretch(self) -> float:

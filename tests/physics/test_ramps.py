@@ -10,7 +10,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from physics.ramp_shapes import Shape
+from physics.ramp_shapes import Shape, course
 from physics.ramps import Control, Knob, Move, Ramp, Stage
 
 DEPTH, SCALE, GRADIENT = Control(Knob.DEPTH), Control(Knob.SCALE), Control(Knob.GRADIENT)
@@ -143,3 +143,21 @@ def test_stages_and_ramps_that_cannot_be_are_refused_in_a_sentence() -> None:
 def test_a_ramp_that_does_not_fit_the_trap_is_refused_in_a_sentence(move: Move, sentence: str) -> None:
     with pytest.raises(ValueError, match=sentence):
         list(single(move).placed(STANDING))
+
+
+def test_tables_of_many_points_have_corners_only_where_they_turn() -> None:
+    times = np.linspace(0.0, 2.0, 81)
+    falling = np.where(times <= 1.0, np.exp(-3.0 * times), np.exp(-3.0))
+    points = tuple(zip(times.tolist(), falling.tolist(), strict=True))
+    moved = course(Move(control=SCALE, shape=Shape.TABLE, points=points), 1.0, 2.0)
+    assert moved.corners == (1.0,)
+    first, second = moved.within(0.0, 1.0), moved.within(1.0, 2.0)
+    assert (first.start, first.end, len(first.times)) == (1.0, pytest.approx(np.exp(-3.0)), 41)
+    assert second.still
+    inside = moved.within(0.31, 0.72)  # between corners of another control
+    assert (inside.times[0], inside.times[-1]) == (pytest.approx(0.3), pytest.approx(0.725))
+    for t in (0.31, 0.5, 0.72):
+        assert inside.value(t) == pytest.approx(moved.value(t))
+        assert inside.slope(t) == pytest.approx(moved.slope(t))
+    sharp = course(Move(control=SCALE, shape=Shape.TABLE, points=((0.0, 1.0), (1.0, 0.9), (2.0, 0.1))), 1.0, 2.0)
+    assert sharp.corners == (1.0,)
