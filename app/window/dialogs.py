@@ -89,6 +89,17 @@ def shortcuts_dialog(parent: QWidget | None = None) -> TextDialog:
     )
     parts.append(
         _section(
+            "On a beam of the trap",
+            [
+                ("Fold or unfold", "Space", "On its name"),
+                ("Rename", "F2", "Anywhere on its card; the ramp follows"),
+                ("Duplicate", "Ctrl+D", "A copy behind it, with a name of its own"),
+                ("Move", "Alt+Up, Alt+Down", "Its place among the beams"),
+            ],
+        )
+    )
+    parts.append(
+        _section(
             "On the map",
             [
                 (
