@@ -18,6 +18,8 @@ from physics.evaporation import Evaporation
 MOST_DECADES = 6
 """Of a logarithmic axis: what lies further below is not worth the ink."""
 
+_PREFIXES = ("p", "n", "µ", "m", "")
+
 _CONDENSED = 2.612375348685488  # zeta(3/2)
 
 
@@ -49,8 +51,8 @@ class Column:
         """A value, in the unit shown, for reading."""
         if not math.isfinite(value):
             return "–"
-        if self.unit == "K":
-            return format_quantity(value, best_unit(value, ("pK", "nK", "µK", "mK", "K")), digits=3)
+        if self.prefixed:
+            return format_quantity(value, best_unit(value, [f"{p}{self.unit}" for p in _PREFIXES]), digits=3)
         return format_quantity(value, raised(self.unit), digits=3)
 
 
@@ -59,7 +61,7 @@ TEMPERATURE = Column(name="temperature", symbol="T", label=_("temperature T"), u
 DENSITY = Column(name="peak_phase_space_density", symbol="D", label=_("phase-space density D"))
 TRUNCATION = Column(name="truncation", symbol="η", label=_("truncation η = U/kT"), linear=True)
 TRAP_DEPTH = Column(name="depth", symbol="U", label=_("depth U/k"), unit="K", factor=boltzmann, prefixed=True)
-RATE = Column(name="elastic_collision_rate", symbol="γel", label=_("mean collision rate"), unit="s^-1")
+RATE = Column(name="elastic_collision_rate", symbol="γel", label=_("collisions/s, mean"))
 
 COLUMNS = (ATOMS, TEMPERATURE, DENSITY, TRUNCATION, TRAP_DEPTH, RATE)
 
@@ -127,8 +129,8 @@ def column_picture(
     """
     shown = [(course, column.values(course.run)) for course in courses]
     points = [(point, value) for point in measured if (value := point.value(column)) is not None]
-    axis = _value_axis(column, [values for _course, values in shown], [value for _point, (value, _s) in points])
-    curves = [_upright(axis, bounds, Role.STAGE)] if bounds else []
+    axis = value_axis(column, [values for _course, values in shown], [value for _point, (value, _s) in points])
+    curves = [upright(axis, bounds, Role.STAGE)] if bounds else []
     if column is DENSITY and axis.low < _CONDENSED < axis.high and courses and courses[0].run.gas.bosons:
         curves.append(Curve(name="", role=Role.FRACTION, x=np.array([0.0, end]), y=np.array([_CONDENSED, _CONDENSED])))
     for course, values in reversed(shown):
@@ -148,7 +150,7 @@ def column_picture(
         else:
             here = value_at(course, values, cursor)
             note = column.text(here)
-            curves.append(_upright(axis, (cursor,), Role.CURSOR))
+            curves.append(upright(axis, (cursor,), Role.CURSOR))
             if math.isfinite(here) and axis.low <= here <= axis.high:
                 marks.append(Mark(name="", role=Role.CLOUD, x=cursor, y=here))
     return Picture(
@@ -177,7 +179,8 @@ def last_of(values: Array) -> float:
     return float(values[-1]) if len(values) else math.nan
 
 
-def _upright(axis: Axis, times: Sequence[float], role: Role) -> Curve:
+def upright(axis: Axis, times: Sequence[float], role: Role) -> Curve:
+    """Lines from the lower to the upper end of the axis, at these times [s]."""
     x = np.repeat(np.asarray(times, dtype=np.float64), 3)
     x[2::3] = np.nan
     return Curve(name="", role=role, x=x, y=np.tile([axis.low, axis.high, np.nan], len(times)))
@@ -191,7 +194,7 @@ def _bar(axis: Axis, time: float, value: float, sigma: float | None) -> Curve | 
     return Curve(name="", role=Role.MEASURED, x=np.array([time, time]), y=np.array([low, high]))
 
 
-def _value_axis(column: Column, values: Sequence[Array], points: Sequence[float]) -> Axis:
+def value_axis(column: Column, values: Sequence[Array], points: Sequence[float]) -> Axis:
     """Limits that move in coarse steps, so that a change of the ramp seldom changes the axis."""
     finite = np.concatenate([*values, np.asarray(points, dtype=np.float64), np.empty(0)])
     finite = finite[np.isfinite(finite) & (finite > 0.0)]

@@ -139,13 +139,13 @@ def control_picture(
     *,
     cursor: float | None = None,
     axis: Axis | None = None,
-    last: bool = True,
+    letters: int = 100,
 ) -> Picture:
     """A control along a ramp.
 
     end : [s] of the time axis. bounds : [s] at which stages end. labels : of the stages
     axis : of the values, to be kept while it is dragged; None: one that suits
-    last : whether it stands at the bottom, and so has the title of the time
+    letters : about as many stand side by side: a stage too short for its label is named by its number
     """
     axis = axis or value_axis(curve)
     low, high = axis.low, axis.high
@@ -162,13 +162,17 @@ def control_picture(
     top = 10.0 ** (math.log10(high) - 0.08 * math.log10(high / low)) if axis.log else high - 0.08 * (high - low)
     begins = (0.0, *bounds[:-1])
     names = tuple(
-        Label(text=label, role=Role.CLASSICAL, x=0.5 * (a + b), y=top)
-        for a, b, label in zip(begins, bounds, labels, strict=False)
-        if label
+        Label(
+            text=label if label and len(label) <= letters * (b - a) / end else f"{number}",
+            role=Role.CLASSICAL,
+            x=0.5 * (a + b),
+            y=top,
+        )
+        for number, (a, b, label) in enumerate(zip(begins, bounds, labels, strict=True), start=1)
     )
     return Picture(
         title=curve.title,
-        x=Axis(label=_("time"), unit="s", low=0.0, high=end, titled=last),
+        x=Axis(label=_("time"), unit="s", low=0.0, high=end),
         y=axis,
         curves=tuple(curves),
         marks=tuple(Mark(name="", role=Role.CLOUD, x=x, y=y, draggable=True) for x, y in curve.places),

@@ -30,6 +30,7 @@ if TYPE_CHECKING:
 
 HINT = "Point at a time, or use the left and right arrow keys, to read all values"
 _STEP = "ramp"
+_SURVEYED = "The trap is surveyed along the ramp; the first time this takes some seconds."
 _NO_RAMP = "This plan has no ramp yet."
 _START = "Start from a usual one, which lowers the trap to a tenth in five seconds, or let one be designed."
 
@@ -230,6 +231,8 @@ class RampPage(Page):
             return False
         self._scenery = self._scene(plan, ramp.duration)
         panel.controls.show_curves(curves, self._scenery, self.reading)
+        if self._found is None and not _is_quick(plan):
+            panel.tell(_SURVEYED, "")
         return True
 
     def _show_found(self, found: Found) -> None:
@@ -241,8 +244,8 @@ class RampPage(Page):
             self._tell_trouble(found.failure)
             return
         if found.ramp is not None and self._scenery is not None:
-            panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
             panel.table.show_ramp(found.ramp)
+            panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
             panel.columns.show_courses(self._courses(found), self._scenery, _points(found.measured), self.reading)
         panel.measured.show_answers(found.ramp, found.rest)
         if not panel.stages.problem:
@@ -271,7 +274,7 @@ class RampPage(Page):
         for stage in plan.ramp:
             time += stage.duration.value
             bounds.append(time)
-        labels = tuple(stage.label or f"{place}" for place, stage in enumerate(plan.ramp, start=1))
+        labels = tuple(stage.label for stage in plan.ramp)
         return Scene(end=round_end(max(ends)), bounds=tuple(bounds), labels=labels)
 
     def _courses(self, found: Found) -> list[Course]:

@@ -12,7 +12,7 @@ from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QWidget
 
 from app.figures.picture import Axis, Picture
-from app.figures.ramp_columns import COLUMNS, Course, MeasuredPoint, column_picture
+from app.figures.ramp_columns import COLUMNS, Column, Course, MeasuredPoint, column_picture
 from app.figures.ramp_controls import ControlCurve, Handle, control_picture, value_axis
 from app.widgets.plot import Plot
 
@@ -23,6 +23,9 @@ _THREE_FROM = 62
 
 SMALL_HEIGHT, CONTROL_HEIGHT = 108, 158
 """[logical pixels] Least of a plot of the cloud; of a control."""
+
+_LETTERS = 90
+"""That stand side by side in the whole width."""
 
 _FILLED = 0.3  # of a held axis: with less, a new one is chosen
 
@@ -37,17 +40,17 @@ class Scene:
 
 
 class ColumnPlots(QWidget):
-    """Six small plots of the cloud. time_read(float | None) is sent as the pointer moves over one."""
+    """Small plots of quantities along a ramp. time_read(float | None) is sent as the pointer moves over one."""
 
     time_read = Signal(object)
 
-    def __init__(self, add_plot: AddPlot, parent: QWidget | None = None) -> None:
+    def __init__(self, add_plot: AddPlot, columns: Sequence[Column] = COLUMNS, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._grid = QGridLayout(self)
         self._grid.setContentsMargins(0, 0, 0, 0)
         self._grid.setSpacing(0)
         self._in_row = 0
-        self.plots = {column: add_plot(f"{column.label} against time") for column in COLUMNS}
+        self.plots = {column: add_plot(f"{column.label} against time") for column in columns}
         for plot in self.plots.values():
             plot.canvas.setMinimumHeight(SMALL_HEIGHT)
             plot.canvas.pointer_moved.connect(self._read)
@@ -124,7 +127,7 @@ class ControlPlots(QWidget):
         self.setVisible(bool(curves))
         for place, (plot, curve) in enumerate(zip(self.plots, curves, strict=True)):
             axis = self._axes[place] = _held(self._axes[place], curve)
-            plot.show(partial(_picture, curve, scene, cursor, axis))
+            plot.show(partial(_picture, curve, scene, cursor, axis, _LETTERS // len(curves)))
 
     def _drag(self, place: int, index: int, time: float, value: float) -> None:
         curve = self.curves[place]
@@ -139,8 +142,8 @@ class ControlPlots(QWidget):
         self.time_read.emit(None if place is None else place[0])
 
 
-def _picture(curve: ControlCurve, scene: Scene, cursor: float | None, axis: Axis) -> Picture:
-    return control_picture(curve, scene.end, scene.bounds, scene.labels, cursor=cursor, axis=axis)
+def _picture(curve: ControlCurve, scene: Scene, cursor: float | None, axis: Axis, letters: int) -> Picture:
+    return control_picture(curve, scene.end, scene.bounds, scene.labels, cursor=cursor, axis=axis, letters=letters)
 
 
 def _held(axis: Axis | None, curve: ControlCurve) -> Axis:

@@ -104,10 +104,11 @@ class StageEditor(PlanEditor):
         if pattern != self._pattern:
             self._pattern = pattern
             self._build(plan)
-        powers = [move.end for stage in plan.ramp for move in stage.moves if move.control.knob is Knob.POWER]
-        beams = [beam.power for beam in plan.trap.beams] if powers else []
-        strongest = max((power.value for power in (*powers, *beams) if power is not None), default=0.0)
-        self.caution.setVisible(strongest >= _POWER_WORTH_A_WORD)
+        ends = [move.end for stage in plan.ramp for move in stage.moves if move.control.knob is Knob.POWER]
+        highest = max((end.value for end in ends if end is not None), default=0.0)
+        standing = max((beam.power.value for beam in plan.trap.beams if beam.on), default=0.0)
+        # Said beside the beams already where these are so strong.
+        self.caution.setVisible(highest >= _POWER_WORTH_A_WORD > standing)
 
     def _build(self, plan: Plan) -> None:
         """All rows anew. The keyboard stays in the row and the column where it was, as far as they are there."""

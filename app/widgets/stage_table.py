@@ -36,6 +36,7 @@ _LOSSES: Mapping[Process, tuple[str, str, Role | None]] = {
 }
 """Name, short name, and whose colour it has."""
 
+_LONGEST_NAME = 17
 _LEAST = 0.005  # share of the lost atoms worth a part
 
 
@@ -57,9 +58,10 @@ class StageTable(FactTable):
             parts.append(())
         for stage in run.stages:
             shares = loss_parts(stage.budget)
-            name = f"{stage.number + 1 + answer.first}  {stage.label}".strip()
+            name = f"{stage.number + 1 + answer.first}  {_brief(stage.label)}".strip()
             cells = (*_cloud_cells(run, stage.last, answer.begin), _gamma(stage), _told(shares))
-            rows.append(FactRow(name=name, cells=cells, tip=_TIP))
+            tip = "\n".join(line for line in (stage.label, _told(shares), _TIP) if line)
+            rows.append(FactRow(name=name, cells=cells, tip=tip))
             parts.append(shares)
         if len(run.stages) > 1:
             shares = loss_parts(run.budget)
@@ -84,6 +86,11 @@ class StageTable(FactTable):
             bar = self.cellWidget(place, len(HEADINGS) - 1)
             if isinstance(bar, LossBar):
                 bar.set_theme(theme)
+
+
+def _brief(label: str) -> str:
+    """A label as far as there is room; its tip has all of it."""
+    return label if len(label) <= _LONGEST_NAME else f"{label[: _LONGEST_NAME - 1].rstrip()}…"
 
 
 def loss_parts(budget: Budget) -> tuple[Part, ...]:
