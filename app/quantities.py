@@ -11,6 +11,7 @@ from collections.abc import Iterator
 from types import MappingProxyType
 
 from app.condensate_quantities import CONDENSATE_ROWS, THRESHOLD_ROWS
+from app.harmonic_quantities import HARMONIC_ROWS
 from app.quantity_row import Group, Need, Row
 from app.rate_quantities import COLLISION_ROWS, FERMI_ROWS, LOSS_ROWS
 from app.units import factor
@@ -43,6 +44,7 @@ _ROWS = (
         units=_NUMBER,
         group=Group.DEGENERACY,
         formula="largest n λ³ of the thermal atoms of one spin state: g_3/2(z) for bosons, f_3/2(z) for fermions",
+        in_real_trap="largest n λ³ of the thermal atoms of one spin state, of momenta that are held",
         source=_ROBINSON,
         validity="local density; 2.612 at and below the condensation threshold",
     ),
@@ -98,9 +100,11 @@ _ROWS = (
         units=_ENERGIES,
         group=Group.DEGENERACY,
         formula="µ from the potential minimum; fixed by N = (kT/ħω̄)³ g₃(z) or f₃(z), by the condensate below threshold",
+        in_real_trap="µ from the potential minimum; fixed by N, the sum over the levels below the depth",
         source=f"{_BAGNATO}; {_BUTTS}",
         validity="local density; exact levels add the zero-point energy",
     ),
+    *HARMONIC_ROWS,
     Row(
         name="critical_temperature",
         label="critical temperature (ideal)",
@@ -109,6 +113,7 @@ _ROWS = (
         units=_TEMPERATURES,
         group=Group.THRESHOLD,
         formula="k Tc = ħ ω̄ (N/ζ(3))^(1/3)",
+        in_real_trap="N = ∫ ρ(ε) dε/(exp(ε/kTc) − 1), up to the depth; ρ from the volume curve",
         source=_BAGNATO,
         validity="ideal gas, N → ∞",
         needs=(Need.BOSONS,),
@@ -134,6 +139,7 @@ _ROWS = (
         units=_TEMPERATURES,
         group=Group.FERMI_SEA,
         formula="k TF = ħ ω̄ (6N)^(1/3), N per spin state",
+        in_real_trap="N = ∫ ρ(ε) dε up to k TF; ρ from the volume curve",
         source=_BUTTS,
         validity="ideal gas, many filled levels",
         needs=(Need.FERMIONS,),
@@ -193,6 +199,7 @@ _ROWS = (
         units=("%", "1"),
         group=Group.THRESHOLD,
         formula="(D_classical/D_threshold)^(1/γ), with γ = −d ln D/d ln N",
+        in_real_trap="(N/Nθ)^(1/γ), with γ = −d ln D/d ln N: at fixed T the classical D goes as N",
         source=_LUITEN,
         validity="constant efficiency γ all the way",
         needs=(Need.EFFICIENCY,),
@@ -229,6 +236,7 @@ _ROWS = (
         units=_LENGTHS,
         group=Group.CONDENSATE,
         formula="Thomas-Fermi R_i = (2µ/m)^(1/2)/ω_i, µ = (ħω̄/2)(15 N₀ a/a_ho)^(2/5)",
+        in_real_trap="(2µ/m)^(1/2)/ω_i with µ of the real trap: where a harmonic potential reaches µ",
         source=_DALFOVO,
         validity="N₀ a/a_ho ≫ 1",
         needs=(Need.BOSONS, Need.INTERACTING_CONDENSATE),
@@ -243,6 +251,7 @@ _ROWS = (
         units=_LENGTHS,
         group=Group.CLOUD,
         formula="root mean square position of the thermal atoms along each axis",
+        in_real_trap="rms radii of a harmonic cloud of the same mean potential energy",
         source=f"{_BAGNATO}; {_BUTTS}",
         validity="local density",
         axes=True,
@@ -277,6 +286,7 @@ _ROWS = (
         units=_ENERGIES,
         group=Group.CLOUD,
         formula="3 kT g₄/g₃ or f₄/f₃ above threshold; below it the model's own, with its interaction energy",
+        in_real_trap="∫ ρ(ε) ε f(ε) dε/N above threshold; below it the model's own, with its interaction energy",
         source=f"{_BAGNATO}; {_BUTTS}; {_NARASCHEWSKI}",
         validity="from the potential minimum",
     ),
@@ -322,6 +332,7 @@ _ROWS = (
         units=_RATES,
         group=Group.COLLISIONS,
         formula="n(0) σ v̄/2 for a thermal cloud, σ averaged over the thermal speeds",
+        in_real_trap="√2 ⟨n_cl⟩/n_cl(0) n(0) σ v̄, ⟨n_cl⟩/n_cl(0) of a classical cloud in the trap",
         source=_LUITEN,
         validity="thermal atoms, s-wave; the unitarity limit is in σ, an effective range is not",
         needs=(Need.COLLISIONS,),
@@ -348,6 +359,7 @@ _ROWS = (
         units=("%", "1"),
         group=Group.CLASSICAL,
         formula="N(ħω̄/kT)³ over the peak n λ³ of the thermal atoms, less 1",
+        in_real_trap="n λ³ of a classical cloud in this trap, cut at its depth, over the peak n λ³, less 1",
         source=_ROBINSON,
         validity="local density",
     ),
@@ -359,6 +371,7 @@ _ROWS = (
         units=("%", "1"),
         group=Group.CLASSICAL,
         formula="3 N k T over the energy of this answer, less 1",
+        in_real_trap="energy of a classical cloud in this trap, cut at its depth, over that of this answer, less 1",
         source=_ROBINSON,
         validity="local density",
     ),

@@ -10,6 +10,7 @@ class Group(Enum):
     """Heading under which a quantity is read."""
 
     DEGENERACY = "Degeneracy"
+    HARMONIC = "In the harmonic trap of these frequencies"
     THRESHOLD = "Distance to threshold"
     CONDENSATE = "Condensate"
     FERMI_SEA = "Fermi sea"
@@ -49,13 +50,16 @@ class Need(Enum):
     FREQUENCIES = "trap frequencies, which this trap does not have"
     REAL_TRAP = "a trap of beams and coils that has frequencies"
     HARMONIC = "a trap given by its frequencies, of which the levels are known"
-    ROOM = "fewer atoms: the trap does not hold so many"
+    ROOM = "fewer atoms than these, which the trap does not hold"
     KNOWN_COUPLING = "1/(kF a) below −1, within ±0.2 or above 1: between, there is no simple estimate"
 
 
 @dataclass(frozen=True, kw_only=True)
 class Row:
-    """A quantity. `unit` is its SI unit, `units` the ones offered for display (the first also for tables)."""
+    """A quantity. `unit` is its SI unit, `units` the ones offered for display (the first also for tables).
+
+    `in_real_trap` is the formula in a trap of beams and coils, where it is another one.
+    """
 
     name: str
     label: str
@@ -67,6 +71,7 @@ class Row:
     source: str
     validity: str
     needs: tuple[Need, ...] = ()
+    in_real_trap: str = ""
     axes: bool = False  # one value for each trap axis
 
     def __post_init__(self) -> None:

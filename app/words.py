@@ -60,7 +60,17 @@ def temperature(value: float) -> str:
 
 def verdict(answer: CloudAnswer) -> str:
     """One sentence: where the cloud stands."""
+    if answer.overfull:
+        return _("There is no such cloud: the trap holds no more than {most} atoms below its depth.").format(
+            most=number(_most(answer), 2)
+        )
     return _bosons(answer) if answer.bosons else _fermions(answer)
+
+
+def _most(answer: CloudAnswer) -> float:
+    """Atoms that a real trap holds at this temperature."""
+    assert answer.real_trap is not None
+    return float(answer.cloud.atoms) / float(answer.real_trap.atoms_over_most)
 
 
 def _bosons(answer: CloudAnswer) -> str:
@@ -123,6 +133,9 @@ def _straddles(answer: CloudAnswer, limit: float) -> bool:
 def deciding_figures(answer: CloudAnswer) -> tuple[Figure, ...]:
     """The few numbers that decide, and the distance to the threshold three ways."""
     solved = answer.equilibrium
+    if answer.overfull:
+        most = _("at most {N}").format(N=number(_most(answer), 2))
+        return (Figure(_("atoms"), number(float(answer.cloud.atoms), 2), most),)
     ratio_name = _("T/Tc") if answer.bosons else _("T/TF")
     figures = [
         Figure(
@@ -230,9 +243,9 @@ def symbol_of(row: Row, answer: CloudAnswer) -> str:
 
 def row_tip(row: Row) -> str:
     """Formula, validity and source of a quantity, for its tip."""
-    return "\n".join(
-        (row.formula, _("holds for: {what}").format(what=row.validity), _("source: {what}").format(what=row.source))
-    )
+    real = (_("in a trap of beams and coils: {what}").format(what=row.in_real_trap),) if row.in_real_trap else ()
+    holds, source = _("holds for: {what}").format(what=row.validity), _("source: {what}").format(what=row.source)
+    return "\n".join((row.formula, *real, holds, source))
 
 
 def label_with_unit(name: str, unit: str) -> str:

@@ -270,6 +270,23 @@ class Equilibrium:
         full = zeta(3.0) if self.bosons else 1.0 / 6.0
         return np.cbrt(full / self._degeneracy)
 
+    # What the harmonic trap of the same frequencies would answer, beside the answer in a real one.
+
+    @quantity
+    def harmonic_reduced_temperature(self) -> Floats:
+        """T/Tc0 or T/TF there; NaN unless the trap is a real one that has frequencies. [1]"""
+        return _nowhere()
+
+    @quantity
+    def harmonic_peak_phase_space_density(self) -> Floats:
+        """The same of the peak phase-space density. [1]"""
+        return _nowhere()
+
+    @quantity
+    def harmonic_condensate_fraction(self) -> Floats:
+        """The same of the condensed fraction; NaN of fermions. [1]"""
+        return _nowhere()
+
     # How far it is to the threshold: condensation of ideal bosons, or fermi_threshold.
 
     @quantity

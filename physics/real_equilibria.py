@@ -112,7 +112,7 @@ class RealEquilibrium(Equilibrium):
         assert isinstance(trap, RealTrap)
         return trap
 
-    @property
+    @cached_property
     def harmonic(self) -> Equilibrium:
         """The same cloud, by the same model, in the harmonic trap of the same frequencies, which has no end.
 
@@ -124,6 +124,18 @@ class RealEquilibrium(Equilibrium):
 
         cloud = replace(self.cloud, trap=self.trap.harmonic_trap)
         return equilibrium(cloud, self.model, fermi_threshold=self.fermi_threshold, efficiency=self.efficiency)
+
+    @quantity
+    def harmonic_reduced_temperature(self) -> Floats:
+        return self.harmonic.reduced_temperature if self.trap.has_frequencies else np.full((), np.nan)
+
+    @quantity
+    def harmonic_peak_phase_space_density(self) -> Floats:
+        return self.harmonic.peak_phase_space_density if self.trap.has_frequencies else np.full((), np.nan)
+
+    @quantity
+    def harmonic_condensate_fraction(self) -> Floats:
+        return self.harmonic.condensate_fraction if self.trap.has_frequencies else np.full((), np.nan)
 
     # Scales, in the shape of what they depend on.
 

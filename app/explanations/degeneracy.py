@@ -13,6 +13,7 @@ from app.explanations.sheet import Regime, Sheet, once
 from app.explanations.terms import FIVE_HALVES, NOTHING, PI, THREE_HALVES, Leaf, exp, ln, root
 from physics import equation_of_state
 from physics.exact_levels import ground_distance
+from physics.models import Model
 
 
 @once
@@ -93,6 +94,31 @@ def peak_phase_space_density(sheet: Sheet) -> Leaf:
             return fermi_levels.peak_phase_space_density(sheet)
         case Regime.OTHER:
             return sheet.given("peak_phase_space_density", "D")
+
+
+@once
+def harmonic_peak_phase_space_density(sheet: Sheet) -> Leaf:
+    symbol, name = "D harm.", "harmonic_peak_phase_space_density"
+    if sheet.regime is Regime.HARTREE_FOCK:
+        classical_phase_space_density(sheet)
+        return sheet.given(name, symbol)
+    formula = functions.polylog(sheet.statistics, 1.5, trapped_log_fugacity(sheet))
+    meaning = "largest n λ³ of the thermal atoms in the harmonic trap"
+    value, where = sheet.number(name), functions.definition(sheet.statistics)
+    return sheet.step(symbol, meaning, formula, value=value, where=where)
+
+
+@once
+def harmonic_condensate_fraction(sheet: Sheet) -> Leaf:
+    symbol, name = "N₀/N harm.", "harmonic_condensate_fraction"
+    X, full, value = classical_phase_space_density(sheet), inputs.zeta_3(sheet), sheet.number(name)
+    if X.amount <= full.amount and sheet.regime is not Regime.HARTREE_FOCK:
+        sheet.case("the excited levels of the harmonic trap hold all atoms", X, "≤", full)
+        return sheet.nothing(symbol, "condensed share of the atoms in the harmonic trap")
+    if sheet.solved.model is Model.IDEAL:
+        meaning = "condensed share of the atoms in the harmonic trap"
+        return sheet.step(symbol, meaning, 1 - full / X, value=value)
+    return sheet.given(name, symbol)
 
 
 # ---------------------------------------------------------------- the threshold and the condensate

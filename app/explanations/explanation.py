@@ -36,12 +36,14 @@ class StepKind(Enum):
     """How a step gets its result.
 
     FORMULA: by arithmetic. EQUATION: solved for, and checked by its two sides. GIVEN: by the model's own numerical
-    solution, without arithmetic to show. CASE: a comparison that decides how it goes on; it has no value.
+    solution, without arithmetic to show. INTEGRAL: by an integral over the trap, or the root of one, which is written
+    down and worked out numerically. CASE: a comparison that decides how it goes on; it has no value.
     """
 
     FORMULA = "formula"
     EQUATION = "equation"
     GIVEN = "given"
+    INTEGRAL = "integral"
     CASE = "case"
 
 

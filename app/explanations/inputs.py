@@ -70,8 +70,24 @@ def depth(sheet: Sheet) -> Leaf:
     return _surveyed(sheet, "U", "trap depth", float(used), "µK", "J")
 
 
+@once
+def highest_energy(sheet: Sheet) -> Leaf:
+    """epsilon_t of a real trap."""
+    solved = sheet.answer.real_trap
+    assert solved is not None
+    return _surveyed(sheet, "ε_t", "highest energy that the trap holds", float(solved.trap.held), "µK", "J")
+
+
+@once
+def volume_at_highest_energy(sheet: Sheet) -> Leaf:
+    solved = sheet.answer.real_trap
+    assert solved is not None
+    meaning = "volume of the trap below that energy, where its volume curve ends"
+    return _surveyed(sheet, "W(ε_t)", meaning, float(solved.trap.volume), "m^3", "m^3")
+
+
 def _surveyed(sheet: Sheet, symbol: str, meaning: str, value: float, shown: str, unit: str) -> Leaf:
-    """A number of the harmonic trap at the minimum of beams and coils."""
+    """A number of the trap that beams and coils make."""
     text = format_quantity(value, shown, digits=6, si_unit="" if unit == "1" else unit)
     return sheet.enter(
         Input(

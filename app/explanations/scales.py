@@ -134,6 +134,14 @@ def reduced_temperature(sheet: Sheet) -> Leaf:
 
 
 @once
+def harmonic_reduced_temperature(sheet: Sheet) -> Leaf:
+    X, value = classical_phase_space_density(sheet), sheet.number("harmonic_reduced_temperature")
+    symbol = "T/Tc harm." if sheet.bosons else "T/TF harm."
+    ratio = cube_root(inputs.zeta_3(sheet) / X) if sheet.bosons else 1 / cube_root(6 * X)
+    return sheet.step(symbol, "reduced temperature in the harmonic trap", ratio, value=value)
+
+
+@once
 def threshold_degeneracy(sheet: Sheet) -> Leaf:
     """X at the threshold."""
     if sheet.bosons:

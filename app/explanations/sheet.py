@@ -20,6 +20,7 @@ from app.quantities import QUANTITIES
 from physics.cloud import Equilibrium, Model
 from physics.particles import Statistics
 from physics.statistics import zeta
+from physics.traps.harmonic import HarmonicTrap
 
 if TYPE_CHECKING:
     from app.engine import CloudAnswer
@@ -48,6 +49,8 @@ class Regime(Enum):
 def regime_of(solved: Equilibrium) -> Regime:
     """The formulas behind the equilibrium of a single cloud."""
     condensed = float(solved.classical_phase_space_density) > zeta(3.0)
+    if not isinstance(solved.cloud.trap, HarmonicTrap):
+        condensed = float(solved.condensate_fraction) > 0.0
     known = {
         (Statistics.BOSE, Model.IDEAL): Regime.CONDENSED_IDEAL if condensed else Regime.THERMAL,
         (Statistics.BOSE, Model.SEMI_IDEAL): Regime.CONDENSED_SEMI_IDEAL if condensed else Regime.THERMAL,
@@ -72,6 +75,20 @@ class Sheet:
         self.steps: list[Step] = []
         self.made: dict[object, object] = {}
         self._defined: set[str] = set()
+
+    @property
+    def in_real_trap(self) -> bool:
+        """Whether the cloud is in a surveyed trap, answered through its volume curve."""
+        return self.answer.real_trap is not None
+
+    @property
+    def condensed(self) -> bool:
+        """Whether some of the atoms are condensed."""
+        return self.bosons and float(self.solved.condensate_fraction) > 0.0
+
+    def of_solution(self, name: str) -> float:
+        """A number that the model keeps besides the quantities, in SI."""
+        return float(np.asarray(getattr(self.solved, name)))
 
     def number(self, name: str) -> float:
         """A quantity of the answer that is a single number, in SI."""
@@ -184,6 +201,42 @@ class Sheet:
         row = QUANTITIES[name]
         return self.unexplained(symbol, f"{row.label}{where}", amount, row.unit)
 
+    def integral(self, name: str, symbol: str, meaning: str, expression: str, where: str) -> Leaf:
+        """A quantity of the answer that is an integral, or the root of one, which the program works out."""
+        return self.integral_of(symbol, meaning, expression, where, self.number(name), QUANTITIES[name].unit)
+
+    def integral_of(self, symbol: str, meaning: str, expression: str, where: str, amount: float, unit: str) -> Leaf:
+        """Any number that is an integral, or the root of one."""
+        self.steps.append(
+            Step(
+                kind=StepKind.INTEGRAL,
+                meaning=meaning,
+                symbol=symbol,
+                expression=expression,
+                numbers="",
+                result=result_text(amount),
+                value=amount,
+                unit=unit,
+                where=self._first(where) if where else "",
+            )
+        )
+        return Leaf(symbol, amount, unit)
+
+    def integral_along(self, name: str, symbol: str, meaning: str, expression: str) -> Axes:
+        """Such a quantity along each axis."""
+        unit = QUANTITIES[name].unit
+
+        def one(axis: int, mark: str, value: float) -> Leaf:
+            return self.integral_of(
+                f"{symbol}{mark}", f"{meaning}, along axis {axis}", f"{expression}{mark}", "", value, unit
+            )
+
+        first, second, third = (
+            one(axis, mark, value)
+            for axis, (mark, value) in enumerate(zip("₁₂₃", self.values(name), strict=True), start=1)
+        )
+        return first, second, third
+
     def unexplained(self, symbol: str, meaning: str, amount: float, unit: str) -> Leaf:
         """A value of the model's numerical solution, of which no steps are written down."""
         self.steps.append(
@@ -201,13 +254,21 @@ class Sheet:
         return Leaf(symbol, amount, unit)
 
 
+def _maker(sheet: Sheet, make: Callable[[Sheet], T]) -> Callable[[Sheet], T]:
+    if not sheet.in_real_trap:
+        return make
+    from app.explanations.real_trap import IN_REAL_TRAPS
+
+    return IN_REAL_TRAPS.get(make.__name__, make)  # type: ignore[return-value]  # as the function of that name
+
+
 def once(make: Callable[[Sheet], T]) -> Callable[[Sheet], T]:
-    """A value that stands on a sheet once, however many steps use it."""
+    """A value that stands on a sheet once, however many steps use it; in a real trap the one that holds there."""
 
     @wraps(make)
     def made(sheet: Sheet) -> T:
         if make not in sheet.made:
-            sheet.made[make] = make(sheet)
+            sheet.made[make] = _maker(sheet, make)(sheet)
         return sheet.made[make]  # type: ignore[return-value]
 
     return made

@@ -77,6 +77,8 @@ def step_lines(step: Step) -> list[str]:
             return [f"{step.expression}: {step.numbers}"]
         case StepKind.GIVEN:
             return [f"{step.symbol} = {result}"]
+        case StepKind.INTEGRAL:
+            return [f"{step.symbol} is {step.expression}", f"= {result}"]
         case StepKind.EQUATION:
             sides = f"check: left side {step.numbers} = {step.left}, right side {step.right_symbol} = {step.right}"
             return [f"solve {step.expression} for {step.symbol}", f"{step.symbol} = {result}", sides]

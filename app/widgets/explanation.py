@@ -131,7 +131,7 @@ def _input_row(entry: Input, muted: str) -> tuple[str, ...]:
 
 def _step(number: int, step: Step, muted: str) -> str:
     lines = [escape(line) for line in step_lines(step)]
-    if step.kind is StepKind.FORMULA or step.kind is StepKind.GIVEN:
+    if step.kind in (StepKind.FORMULA, StepKind.GIVEN, StepKind.INTEGRAL):
         lines[-1] = f"<b>{lines[-1]}</b>"
     elif step.kind is StepKind.EQUATION:
         lines[1] = f"<b>{lines[1]}</b>"

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from pathlib import Path
+
 import pytest
 
 from app.engine import cloud_answer
-from app.plan import DEFAULT_PLAN, plan_with
+from app.plan import DEFAULT_PLAN, plan_with, read_plan
 from app.words import deciding_figures, percent, times, verdict
 
 PLAIN = plan_with(DEFAULT_PLAN, {"cloud.atoms": "1e5", "cloud.temperature": "200 nK"})
@@ -88,3 +90,11 @@ def test_shares_have_sensible_digits(share: float, text: str) -> None:
 )
 def test_factors_have_sensible_digits(factor: float, text: str) -> None:
     assert times(factor) == text
+
+
+def test_more_atoms_than_a_trap_holds_is_no_cloud() -> None:
+    plan = read_plan(Path(__file__).parents[2] / "presets" / "traps" / "single_beam_lithium.toml")
+    answer = cloud_answer(plan_with(plan, {"cloud.atoms": "1e12"}))
+    assert verdict(answer).startswith("There is no such cloud: the trap holds no more than ")
+    (figure,) = deciding_figures(answer)
+    assert figure.detail.startswith("at most ")
