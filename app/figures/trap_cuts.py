@@ -21,6 +21,9 @@ _OVER, _UNDER = 1.3, 0.06
 _ABOVE = 0.055
 """Distance of a label from the line that it names, in parts of the plot's height."""
 
+_BELOW = 0.13
+"""Distance of a label from the mark above it, in parts of the plot's height."""
+
 _NAMED_AT = 1.16
 """Height at which the harmonic curve is named, in parts of the top of the well."""
 
@@ -54,21 +57,27 @@ def length_unit(reach: float) -> str:
 
 def cut_picture(shape: TrapShape, cut: Cut, levels: CloudLevels) -> Picture:
     """One cut, the harmonic curve dashed, with the depth, kT and the condensate's chemical potential."""
-    unit, length = energy_unit(shape.top), length_unit(cut.direction.reach)
+    seen = (cut.distance > -cut.direction.backward) & (cut.distance < cut.direction.forward)
+    high = shape.top if shape.answer.trapped else float(np.max(np.abs(cut.energy[seen])))
+    unit, length = energy_unit(high), length_unit(cut.direction.reach)
     kelvin, metre = boltzmann * factor(unit), factor(length)
     top = shape.top / kelvin
     s, energy = cut.distance / metre, cut.energy / kelvin
-    x = Axis(label=_along(cut), unit=length, low=-cut.direction.backward / metre, high=cut.direction.forward / metre)
-    y = Axis(label=_("potential U/k"), unit=unit, low=-_UNDER * top, high=_OVER * top)
+    x = Axis(
+        label=_along(shape, cut), unit=length, low=-cut.direction.backward / metre, high=cut.direction.forward / metre
+    )
+    low, high = (-_UNDER * top, _OVER * top) if shape.answer.trapped else _range(energy[seen])
+    y = Axis(label=_("potential U/k"), unit=unit, low=low, high=high)
     # Far outside the plot a steep curve would only cost ink.
     harmonic = np.where(cut.harmonic / kelvin < 2.0 * y.high, cut.harmonic / kelvin, np.nan)
-    shown = np.clip(energy, y.low - 3.0 * top, y.high + 3.0 * top)
-    curves = [Curve(name="", role=Role.CLASSICAL, x=s, y=harmonic)]
+    height = y.high - y.low
+    shown = np.clip(energy, y.low - 3.0 * height, y.high + 3.0 * height)
+    curves: list[Curve] = []
     labels: list[Label] = []
-    if np.any(np.isfinite(harmonic)):
+    if shape.potential is not None and np.any(np.isfinite(harmonic)):
+        curves.append(Curve(name="", role=Role.CLASSICAL, x=s, y=harmonic))
         _left, right = _turning_points(cut.distance, cut.harmonic, _NAMED_AT * shape.top, x, metre)
         labels.append(Label(text=_("harmonic"), role=Role.CLASSICAL, x=right, y=_NAMED_AT * top, side=1))
-    height = y.high - y.low
     depth = shape.answer.survey.depth
     if depth is not None and depth / kelvin < y.high:
         curves.append(_level(x, depth / kelvin, Role.DECADE))
@@ -82,7 +91,7 @@ def cut_picture(shape: TrapShape, cut: Cut, levels: CloudLevels) -> Picture:
         (levels.thermal, "kT", Role.THERMAL, 1),
         (levels.filled, levels.filled_name, Role.CONDENSATE, -1),
     ):
-        if energy_of is not None and _SMALL * shape.top < energy_of < _OVER * shape.top:
+        if energy_of is not None and shape.answer.trapped and _SMALL < energy_of / shape.top < _OVER:
             left, right = _turning_points(cut.distance, cut.energy, energy_of, x, metre)
             level = energy_of / kelvin
             curves.append(Curve(name="", role=role, x=np.array([left, right]), y=np.array([level, level])))
@@ -93,9 +102,7 @@ def cut_picture(shape: TrapShape, cut: Cut, levels: CloudLevels) -> Picture:
     if cut.escape is not None and x.low < cut.escape / metre < x.high:
         there = float(np.interp(cut.escape, cut.distance, cut.energy)) / kelvin
         marks = (Mark(name="", role=Role.THRESHOLD, x=cut.escape / metre, y=there),)
-        labels.append(
-            Label(text=_("way out"), role=Role.THRESHOLD, x=cut.escape / metre, y=there + 1.6 * _ABOVE * height)
-        )
+        labels.append(Label(text=_("way out"), role=Role.THRESHOLD, x=cut.escape / metre, y=there - _BELOW * height))
     return Picture(
         title=cut_title(cut),
         x=x,
@@ -118,8 +125,17 @@ def cut_title(cut: Cut) -> str:
     return _("along {axis}").format(axis=name)
 
 
-def _along(cut: Cut) -> str:
+def _along(shape: TrapShape, cut: Cut) -> str:
+    if not shape.answer.trapped:
+        return _("height over the middle") if cut.direction.upright else _("distance from the middle")
     return _("height over the minimum") if cut.direction.upright else _("distance from the minimum")
+
+
+def _range(energy: Array) -> tuple[float, float]:
+    """From the least to the highest energy, and a bit more."""
+    low, high = float(np.min(energy)), float(np.max(energy))
+    margin = 0.05 * (high - low) or 1.0
+    return low - margin, high + margin
 
 
 def _note(shape: TrapShape, cut: Cut) -> str:

@@ -26,7 +26,11 @@ _ABOVE = 0.032
 
 def section_picture(shape: TrapShape, section: Section, levels: CloudLevels) -> Picture:
     """Contours up to the depth, and beyond; the cloud as the lines where U = kT and U = µ."""
-    unit = energy_unit(shape.top)
+    bottom, highest = 0.0, shape.top
+    if not shape.answer.trapped:
+        # There is no well to fill with colour: all that is seen has its place on the scale.
+        bottom, highest = float(np.min(section.energy)), float(np.max(section.energy))
+    unit = energy_unit(max(abs(bottom), abs(highest)))
     kelvin = boltzmann * factor(unit)
     x_unit, y_unit = (length_unit(float(np.ptp(values)) / 2.0) for values in (section.x, section.y))
     x, y = section.x / factor(x_unit), section.y / factor(y_unit)
@@ -34,7 +38,8 @@ def section_picture(shape: TrapShape, section: Section, levels: CloudLevels) -> 
         Axis(label=_label(section, 0), unit=x_unit, low=float(x[0]), high=float(x[-1])),
         Axis(label=_label(section, 1), unit=y_unit, low=float(y[0]), high=float(y[-1])),
     )
-    top = shape.top / kelvin
+    low, top = bottom / kelvin, highest / kelvin
+    levels_shown = _levels(low, top)
     energy = section.energy / kelvin
     inside = ~(section.knife >= 0.0)
     seen = np.where(inside, energy, np.nan)
@@ -76,23 +81,27 @@ def section_picture(shape: TrapShape, section: Section, levels: CloudLevels) -> 
         if pieces:
             lines.append(_joined(pieces, Role.FRACTION))
             labels.append(_on_top(pieces, Role.FRACTION, _("knife")))
-    for level in _levels(top):
+    for level in levels_shown:
         pieces = _pieces(contours, level)
         if pieces:
             lines.insert(0, _joined(pieces, Role.DECADE))
             if max(map(len, pieces)) >= _SHORTEST_LABELLED:
                 labels.append(_on_top(pieces, Role.DECADE, f"{level:g}"))
     return Picture(
-        title=_title(section),
+        title=_title(shape, section),
         x=axes[0],
         y=axes[1],
         field=Field(
             x=x,
             y=y,
-            shade=np.clip(seen / top, 0.0, 1.0),
+            shade=np.clip((seen - low) / (top - low), 0.0, 1.0),
             split=1.0,
             bar_label=_("potential U/k [{unit}]").format(unit=unit),
-            ticks=tuple((level / top, f"{level:g}") for level in (0.0, *_levels(top))),
+            ticks=tuple(
+                ((level - low) / (top - low), f"{level:g}")
+                for level in (low, *levels_shown)
+                if level != low or low == 0.0
+            ),
         ),
         curves=tuple(lines),
         marks=tuple(marks),
@@ -102,7 +111,9 @@ def section_picture(shape: TrapShape, section: Section, levels: CloudLevels) -> 
     )
 
 
-def _title(section: Section) -> str:
+def _title(shape: TrapShape, section: Section) -> str:
+    if not shape.answer.trapped:
+        return _("potential over the plane {plane} through the middle").format(plane=section.plane.name)
     if section.plane.absolute:
         return _("potential over the plane {plane} through the minimum").format(plane=section.plane.name)
     return _("potential over the plane of {plane}").format(plane=section.plane.name)
@@ -113,12 +124,12 @@ def _label(section: Section, place: int) -> str:
     return direction.name if section.plane.absolute else _("along {axis}").format(axis=direction.name)
 
 
-def _levels(top: float) -> tuple[float, ...]:
-    """Round energies up to the top, about five."""
-    step = top / _TICKS
+def _levels(low: float, top: float) -> tuple[float, ...]:
+    """Round energies between the lowest and the top, about five."""
+    step = (top - low) / _TICKS
     power = 10.0 ** math.floor(math.log10(step))
     step = next(s * power for s in (1.0, 2.0, 5.0, 10.0) if s * power >= 0.999 * step)
-    return tuple(step * k for k in range(1, 1 + int(top / step * 0.999)))
+    return tuple(step * k for k in range(math.floor(low / step) + 1, math.ceil(top / step)))
 
 
 def _pieces(contours: ContourGenerator, level: float) -> list[Array]:

@@ -216,7 +216,6 @@ class TrapPage(Page):
         self.sentence.show()
         levels = self._levels(plan)
         if ground.scan is not None:
-            self._put_in_front(self.scans, TrapView.SCAN)
             self._show_scan(ground.scan)
         if shape is None:
             return
@@ -232,6 +231,11 @@ class TrapPage(Page):
                 plot.show(partial(cut_picture, shape, cut, levels))
 
     def _show_scan(self, scan: TrapScan) -> None:
+        """Three plots, or two of a trap that holds atoms without frequencies."""
+        stiff = bool(np.any(np.isfinite(scan.frequencies))) or not np.any(scan.trapped)
+        shown = self.scans if stiff else self.scans[1:]
+        self._bodies[TrapView.SCAN].arrange(shown, wide_first=stiff)
+        self._put_in_front(shown, TrapView.SCAN)
         made: list[Any] = []
 
         def picture(place: int) -> Any:
@@ -240,7 +244,8 @@ class TrapPage(Page):
             return made[0][place]
 
         for place, plot in enumerate(self.scans):
-            plot.show(partial(picture, place))
+            if plot in shown:
+                plot.show(partial(picture, place))
 
     def _levels(self, plan: Plan) -> CloudLevels:
         """Energies of the plan's cloud; what fills its levels only where there is an answer for it."""
@@ -306,6 +311,8 @@ class _Rows(QWidget):
         for plot in self._shown:
             self._grid.removeWidget(plot.canvas)
             plot.canvas.hide()
+        for row in range(self._grid.rowCount()):
+            self._grid.setRowStretch(row, 0)
         self._shown = plots
         odd = len(plots) % 2
         place = 0
