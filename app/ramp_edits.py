@@ -21,6 +21,7 @@ from app.units import (
     EXPONENT,
     FREQUENCY,
     Quantity,
+    best_unit,
     exact_text,
     factor,
     quantity,
@@ -39,6 +40,13 @@ USUAL_TRUNCATION = 10.0
 """Depth over kT at the start of a usual ramp where the trap's own depth is not known."""
 
 _USUAL_EXPONENT = "2"
+_PREFIXED: Mapping[Knob, tuple[str, ...]] = {
+    Knob.DEPTH: ("nK", "µK", "mK"),
+    Knob.POWER: ("µW", "mW", "W"),
+    Knob.KNIFE: ("Hz", "kHz", "MHz"),
+}
+"""Units among which a dragged value takes the one that suits it."""
+
 _DEPTH, _SCALE = Control(Knob.DEPTH), Control(Knob.SCALE)
 
 Standing = Mapping[Control, float]
@@ -325,13 +333,12 @@ def with_end_dragged(
     if number is None:
         return plan
     old, move = stage.moves[number], plan.ramp[place].moves[number]
-    kind, units = CONTROL_KINDS[control.knob], _units_of(control)
     if old.points:
-        last = moved_quantity(old.points[-1][1], value, kind, units)
+        last = _dragged(old.points[-1][1], value, control)
         move = replace(move, points=(*move.points[:-1], (move.points[-1][0], last)))
     else:
         end = old.end or control_quantity(control, value)
-        move = replace(move, end=moved_quantity(end, value, kind, units), tau=None)
+        move = replace(move, end=_dragged(end, value, control), tau=None)
     return with_move(plan, place, number, move)
 
 
@@ -341,19 +348,23 @@ def with_start_dragged(plan: Plan, written: Plan, place: int, control: Control, 
     if number is None:
         return plan
     old, move = written.ramp[place].moves[number], plan.ramp[place].moves[number]
-    kind, units = CONTROL_KINDS[control.knob], _units_of(control)
     if old.points:
-        first = moved_quantity(old.points[0][1], value, kind, units)
+        first = _dragged(old.points[0][1], value, control)
         return with_move(plan, place, number, replace(move, points=((move.points[0][0], first), *move.points[1:])))
     if old.start is None:
         return plan
-    return with_move(plan, place, number, replace(move, start=moved_quantity(old.start, value, kind, units)))
+    return with_move(plan, place, number, replace(move, start=_dragged(old.start, value, control)))
 
 
-def _units_of(control: Control) -> tuple[str, ...]:
-    return {Knob.DEPTH: ("nK", "µK", "mK"), Knob.POWER: ("µW", "mW", "W"), Knob.KNIFE: ("Hz", "kHz", "MHz")}.get(
-        control.knob, ()
-    )
+def _dragged(old: Quantity, value: float, control: Control) -> Quantity:
+    """A value of a control to three digits of the unit in which it was written, or of one with another prefix."""
+    kind = CONTROL_KINDS[control.knob]
+    value = min(max(value, kind.low), kind.high)
+    unit = unit_of(old.text, kind)
+    prefixed = _PREFIXED.get(control.knob, ())
+    if unit in prefixed:
+        unit = best_unit(value, prefixed, kind.si_unit)
+    return quantity(value, unit, kind=kind)
 
 
 # --- transfers --------------------------------------------------------------------------------------------------------
