@@ -67,8 +67,8 @@ class FactTable(QTableWidget):
                 self._put_row(place, row)
         # Columns follow longer texts at once and never shrink, so that a value that moves does not shake them.
         for column in range(1, len(headings) - 1):
-            if self.sizeHintForColumn(column) > self.columnWidth(column):
-                self.setColumnWidth(column, self.sizeHintForColumn(column))
+            if self._needed(column) > self.columnWidth(column):
+                self.setColumnWidth(column, self._needed(column))
 
     def _lay_out(self) -> None:
         """Rows and columns anew, with empty cells."""
@@ -82,7 +82,15 @@ class FactTable(QTableWidget):
                 self.setItem(place, column, QTableWidgetItem())
             self._put_row(place, row)
         self.horizontalHeader().resizeSections(QHeaderView.ResizeMode.ResizeToContents)
+        for column in range(1, len(self._headings) - 1):
+            self.setColumnWidth(column, self._needed(column))
         self.updateGeometry()
+
+    def _needed(self, column: int) -> int:
+        """Width of a column, to which a text across several does not add."""
+        own = [place for place in range(self.rowCount()) if self.columnSpan(place, column) == 1]
+        hints = [self.sizeHintForIndex(self.model().index(place, column)).width() for place in own]
+        return max([*hints, self.horizontalHeader().sectionSizeHint(column)])
 
     def _put_row(self, place: int, row: FactRow) -> None:
         font = QFont(self.font())

@@ -14,6 +14,7 @@ from app.pages.candidates import CandidatesPage
 from app.pages.collisions import CollisionsPage
 from app.pages.field import FieldPage
 from app.pages.map import MapPage
+from app.pages.mixture import MixturePage
 from app.pages.models import ModelsPage
 from app.pages.profile import ProfilePage
 from app.pages.ramp import RampPage
@@ -45,7 +46,7 @@ class Desk(QWidget):
         self.map, self.slices, self.profile = MapPage(theme), SlicesPage(theme), ProfilePage(theme)
         self.trap, self.ramp = TrapPage(theme), RampPage(theme)
         self.field, self.collisions, self.models = FieldPage(theme), CollisionsPage(theme), ModelsPage(theme)
-        self.candidates = CandidatesPage(theme)
+        self.mixture, self.candidates = MixturePage(theme), CandidatesPage(theme)
         self.pages: tuple[Page, ...] = (
             self.map,
             self.slices,
@@ -55,6 +56,7 @@ class Desk(QWidget):
             self.field,
             self.collisions,
             self.models,
+            self.mixture,
             self.candidates,
         )
         self.tabs = QTabWidget()

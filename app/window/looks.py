@@ -77,7 +77,7 @@ def style_sheet_of(theme: Theme) -> str:
                                    background: {theme.base}; }}
         QRadioButton::indicator:checked {{ border: 4px solid {theme.accent}; width: 5px; height: 5px; }}
         QTabWidget::pane {{ border: none; }}
-        QTabBar::tab {{ padding: 6px 16px 5px 16px; border: none; background: transparent; color: {theme.muted};
+        QTabBar::tab {{ padding: 6px 10px 5px 10px; border: none; background: transparent; color: {theme.muted};
                         border-bottom: 2px solid transparent; }}
         QTabBar::tab:selected {{ color: {theme.text}; border-bottom-color: {theme.accent}; }}
         QTabBar::tab:focus {{ text-decoration: underline; }}

@@ -133,8 +133,8 @@ def test_pictures_need_no_display_and_show_every_page(tmp_path: Path) -> None:
     assert done.returncode == 0, done.stderr
     names = {path.name for path in (tmp_path / "shots").iterdir()}
     assert names == {
-        "map.png", "slices.png", "profile.png", "field.png", "collisions.png", "models.png",
-        "readouts.png", "about.png", "limits.png", "shortcuts.png",
+        "map.png", "slices.png", "profile.png", "trap.png", "ramp.png", "field.png", "collisions.png", "models.png",
+        "mixture.png", "candidates.png", "readouts.png", "about.png", "limits.png", "shortcuts.png",
     }  # fmt: skip
     from PIL import Image
 
