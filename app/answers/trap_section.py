@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 Array = NDArray[np.float64]
 
 PLANE_POINTS = 141
+_STEPS = 5
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -87,9 +88,7 @@ def _section(shape: TrapShape, plane: Plane, window: Window | None) -> Section:
     first, second = plane.first, plane.second
     origin = np.array([shape.middle @ first.vector, shape.middle @ second.vector]) if plane.absolute else np.zeros(2)
     x0, y0 = origin
-    left, right, bottom, top = window or (
-        x0 - first.backward, x0 + first.forward, y0 - second.backward, y0 + second.forward,
-    )  # fmt: skip
+    left, right, bottom, top = window or (*_sides(x0, first), *_sides(y0, second))
     x, y = np.linspace(left, right, PLANE_POINTS), np.linspace(bottom, top, PLANE_POINTS)
     points = (
         shape.middle
@@ -117,3 +116,10 @@ def _section(shape: TrapShape, plane: Plane, window: Window | None) -> Section:
         escape=escape,
         aside=aside,
     )
+
+
+def _sides(middle: float, direction: Direction) -> tuple[float, float]:
+    """Both ends of a line through a place, in steps that are coarse against the sag of a trap that is changed."""
+    step = direction.reach / _STEPS
+    low, high = middle - direction.backward, middle + direction.forward
+    return step * round(low / step), step * round(high / step)

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from app.answers.profile import round_up
 from app.answers.trap_cuts import Cut
 from app.answers.trap_shape import TrapShape
 from app.figures.picture import Array, Axis, Curve, Label, Mark, Picture, Role
@@ -15,8 +16,8 @@ from app.units import best_unit, factor
 from app.words import number, temperature
 from physics.constants import boltzmann
 
-_OVER, _UNDER = 1.3, 0.06
-"""How far over the top of the well and under its bottom a cut is shown."""
+_OVER, _UNDER = 1.2, 0.05
+"""How far over the top of the well a cut is shown at least; how far under its bottom, in parts of that."""
 
 _ABOVE = 0.055
 """Distance of a label from the line that it names, in parts of the plot's height."""
@@ -24,7 +25,7 @@ _ABOVE = 0.055
 _BELOW = 0.13
 """Distance of a label from the mark above it, in parts of the plot's height."""
 
-_NAMED_AT = 1.16
+_NAMED_AT = 1.13
 """Height at which the harmonic curve is named, in parts of the top of the well."""
 
 _SMALL = 0.02
@@ -66,7 +67,9 @@ def cut_picture(shape: TrapShape, cut: Cut, levels: CloudLevels) -> Picture:
     x = Axis(
         label=_along(shape, cut), unit=length, low=-cut.direction.backward / metre, high=cut.direction.forward / metre
     )
-    low, high = (-_UNDER * top, _OVER * top) if shape.answer.trapped else _range(energy[seen])
+    # Limits in coarse steps, so that a change of the trap seldom draws the frame anew.
+    over = round_up(_OVER * top)
+    low, high = (-_UNDER * over, over) if shape.answer.trapped else _range(energy[seen])
     y = Axis(label=_("potential U/k"), unit=unit, low=low, high=high)
     # Far outside the plot a steep curve would only cost ink.
     harmonic = np.where(cut.harmonic / kelvin < 2.0 * y.high, cut.harmonic / kelvin, np.nan)

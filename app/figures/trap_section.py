@@ -8,6 +8,7 @@ from typing import cast
 import numpy as np
 from contourpy import ContourGenerator, LineType, contour_generator
 
+from app.answers.profile import round_up
 from app.answers.trap_section import Section
 from app.answers.trap_shape import TrapShape
 from app.figures.picture import Array, Axis, Curve, Field, Label, Mark, Picture, Role
@@ -26,7 +27,7 @@ _ABOVE = 0.032
 
 def section_picture(shape: TrapShape, section: Section, levels: CloudLevels) -> Picture:
     """Contours up to the depth, and beyond; the cloud as the lines where U = kT and U = µ."""
-    bottom, highest = 0.0, shape.top
+    bottom, highest = 0.0, round_up(shape.top / boltzmann) * boltzmann
     if not shape.answer.trapped:
         # There is no well to fill with colour: all that is seen has its place on the scale.
         bottom, highest = float(np.min(section.energy)), float(np.max(section.energy))
