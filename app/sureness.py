@@ -65,7 +65,9 @@ def least_sure(*sureness: Sureness) -> Sureness:
     return max(sureness, key=_ORDER.index, default=Sureness.SEEN)
 
 
+MARKED = tuple(sure for sure in Sureness if sure.mark)
+
+
 def legend() -> str:
     """What the marks mean, in one line."""
-    marked = (Sureness.COMPUTED, Sureness.RECALLED, Sureness.ASSUMED)
-    return ", ".join([*(f"{sure.mark} {sure.value}" for sure in marked), _("– unknown")])
+    return ", ".join([*(f"{sure.mark} {sure.value}" for sure in MARKED), _("– unknown")])

@@ -87,7 +87,9 @@ def classical_cloud(trap: RealTrap, eta: Floats) -> ClassicalCloud:
         nothing = np.zeros_like(eta)
         end = np.minimum(eta, _REACH)
         root, width = panels(np.sqrt(ends_between(eta, nothing, nothing, end, (2.0, 10.0))), _PANEL)
-        V, y = root * root, eta[:, np.newaxis] - root * root
+        # Rounding must not lead beyond the highest energy, where nothing is defined.
+        V = root * root
+        y = np.maximum(eta[:, np.newaxis] - V, 0.0)
         # By parts: the density e^-V P(3/2, y) falls by e^-V P(1/2, y).
         fall = 2.0 * np.exp(-2.0 * V) * incomplete_gamma(1.5, y) * incomplete_gamma(0.5, y)
         w = trap.curve.volume(np.minimum(V / eta[:, np.newaxis], 1.0))

@@ -168,6 +168,8 @@ class CandidateRow:
                 return self._threshold(cloud)
             case Part.EVAPORATION:
                 return self._evaporation(name)
+        if name == "temperature_to_threshold" and not self.cell("threshold_temperature").known:
+            return math.nan, self.cell("threshold_temperature").reason
         need = cloud.missing(column.row)
         if need is not None:
             return math.nan, self._reason_missing(need, cloud)

@@ -15,15 +15,15 @@ from app.candidate_words import short_name
 from app.figures.picture import Axis, Curve, Label, Mark, Picture, Role
 from app.language import translate as _
 from app.quantities import display_factor
-from app.sureness import Sureness
+from app.sureness import Sureness, least_sure
 from app.words import shown_unit
 
 if TYPE_CHECKING:
     from app.answers.candidate_row import CandidateRow
-    from app.candidate_order import Score
+    from app.candidate_order import Score, Weight
 
 FIRST_SHOWN = 16
-"""Rows on show at first."""
+"""Rows on show at first, where nothing is said of the room that there is."""
 
 _LOG_FROM = 20.0
 """Largest over smallest number from which an axis is logarithmic."""
@@ -47,44 +47,50 @@ class Ranked:
     reason: str
 
 
-def ranking(rows: Sequence[CandidateRow], name: str, unit: str, scores: Sequence[Score]) -> tuple[Ranked, ...]:
+def ranking(
+    rows: Sequence[CandidateRow], name: str, unit: str, scores: Sequence[Score], weights: Sequence[Weight]
+) -> tuple[Ranked, ...]:
     """The rows as the chart takes them, in their order."""
     if name == SCORE:
         return tuple(
             Ranked(
                 short_name(row),
                 score.value,
-                _least_sure_of(row, score),
+                least_sure(*(row.cell(weight.name).sureness for weight in weights)),
                 _("a number that counts is not known") if math.isnan(score.value) else "",
             )
             for row, score in zip(rows, scores, strict=True)
         )
     factor = display_factor(unit, COLUMNS[name].row)
     return tuple(
-        Ranked(short_name(row), cell.value / factor, cell.sureness, cell.reason)
+        Ranked(short_name(row), cell.value / factor, cell.sureness, cell.reason or row.reason)
         for row in rows
         for cell in [row.cell(name)]
     )
 
 
-def _least_sure_of(_row: CandidateRow, score: Score) -> Sureness:
-    return Sureness.UNKNOWN if math.isnan(score.value) else Sureness.COMPUTED
-
-
 def ranked_picture(
-    rows: Sequence[CandidateRow], name: str, unit: str, descending: bool, scores: Sequence[Score] = ()
+    rows: Sequence[CandidateRow],
+    name: str,
+    unit: str,
+    descending: bool,
+    scores: Sequence[Score] = (),
+    weights: Sequence[Weight] = (),
+    *,
+    room: int = FIRST_SHOWN,
 ) -> Picture:
-    """The rows from top to bottom: known numbers in their order, then, under a line, the others with why."""
-    ranked = ranking(rows, name, unit, scores)
+    """The rows from top to bottom: known numbers in their order, then, under a line, the others with why. As many as
+    there is `room` for are in view."""
+    ranked = ranking(rows, name, unit, scores, weights)
     ranked = tuple(ranked[place] for place in order_by([item.value for item in ranked], descending))
     known = [item for item in ranked if math.isfinite(item.value)]
-    log = _logarithmic([item.value for item in known])
+    log = name != SCORE and _logarithmic([item.value for item in known])
     drawn = [item for item in known if not log or item.value > 0.0]
     apart = [item for item in ranked if item not in drawn]
     listed = (*drawn, *apart)
     x = _value_axis(name, unit, [item.value for item in drawn], log)
     count = len(listed)
-    shown = min(count, FIRST_SHOWN)
+    shown = min(count, room)
     y = Axis(
         label=_("candidate"),
         unit="",
@@ -154,11 +160,10 @@ def _value_axis(name: str, unit: str, values: Sequence[float], log: bool) -> Axi
 
 def _short(item: Ranked) -> str:
     """Why a row stands apart, in one line."""
-    if item.value == 0.0:
-        return _("zero, which has no place on a logarithmic axis")
-    if math.isfinite(item.value):
-        return _("not positive, which has no place on a logarithmic axis")
     text = item.reason
+    if math.isfinite(item.value):
+        said = _("zero") if item.value == 0.0 else _("not positive")
+        return f"{said}: {text}" if text else _("{said}: no place on a logarithmic axis").format(said=said)
     if len(text) > _LONGEST:
         text = text[:_LONGEST].rsplit(" ", 1)[0].rstrip(",;:") + " …"
     return _("unknown: {reason}").format(reason=text)

@@ -17,8 +17,8 @@ from app.language import translate as _
 _MOST_NAMED = 3
 """Species that a label names; more are counted."""
 
-_LABELS = (0.88, 0.52, 0.16, 0.7, 0.34)
-"""Places along the lines where labels of neighbouring ones stand, so that they do not cover one another."""
+_WIDTH, _HEIGHT = 0.011, 0.07
+"""Half the width of a character, and the height of a line, about, as shares of the axes."""
 
 
 def thresholds_picture(thresholds: Thresholds, cloud: CloudAnswer, starts: Sequence[CandidateRow] = ()) -> Picture:
@@ -45,20 +45,13 @@ def thresholds_picture(thresholds: Thresholds, cloud: CloudAnswer, starts: Seque
         prefixed=True,
     )
     named: set[Role] = set()
-    curves, labels = [], []
-    for place, line in enumerate(thresholds.lines):
+    curves = []
+    for line in thresholds.lines:
         role = _role(line, cloud)
         curves.append(
             Curve(name="" if role in named else _name(role), role=role, x=thresholds.atoms, y=line.temperature)
         )
         named.add(role)
-        at = round(_LABELS[place % len(_LABELS)] * (len(thresholds.atoms) - 1))
-        drawn = np.flatnonzero(np.isfinite(line.temperature))
-        at = min(max(at, int(drawn[0])), int(drawn[-1]))
-        if math.isfinite(line.temperature[at]):
-            labels.append(
-                Label(text=line_text(line), role=role, x=float(thresholds.atoms[at]), y=float(line.temperature[at]))
-            )
     marks = [Mark(name=_("cloud"), role=Role.CLOUD, x=atoms, y=hot)]
     marks += [
         Mark(name="", role=Role.TRACK, x=row.plan.cloud.atoms.value, y=row.plan.cloud.temperature.value)
@@ -74,11 +67,43 @@ def thresholds_picture(thresholds: Thresholds, cloud: CloudAnswer, starts: Seque
         # The plan's own last, so that no other lies on it.
         curves=tuple(sorted(curves, key=lambda curve: curve.role not in (Role.FIRST, Role.SECOND))),
         marks=tuple(marks),
-        # The plan's own first: where labels meet, later ones give way.
-        labels=tuple(sorted(labels, key=lambda label: label.role in (Role.FIRST, Role.SECOND))),
+        labels=_labels(thresholds, cloud, x, y),
         summary=_summary(thresholds),
         note="" if thresholds.lines else _("no candidate has a threshold"),
     )
+
+
+def _labels(thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis) -> tuple[Label, ...]:
+    """A label on each line, where it is furthest from those that stand already; that of the plan's own first."""
+    taken: list[tuple[float, float, float]] = [
+        (_share(x, float(cloud.plan.cloud.atoms.value)), _share(y, float(cloud.plan.cloud.temperature.value)), 0.02)
+    ]
+    labels = []
+    for line in sorted(thresholds.lines, key=lambda line: _role(line, cloud) in (Role.FIRST, Role.SECOND)):
+        text = line_text(line)
+        reach = _WIDTH * (len(text) + 1)
+        places = [
+            (_share(x, float(atoms)), _share(y, float(hot)), float(atoms), float(hot))
+            for atoms, hot in zip(thresholds.atoms[2:-2], line.temperature[2:-2], strict=True)
+            if math.isfinite(hot)
+        ]
+        if not places:
+            continue
+        best = max(places, key=lambda place: _clearance(place[0], place[1], reach, taken))
+        taken.append((best[0], best[1], reach))
+        labels.append(Label(text=text, role=_role(line, cloud), x=best[2], y=best[3]))
+    return tuple(labels)
+
+
+def _share(axis: Axis, value: float) -> float:
+    return math.log(value / axis.low) / math.log(axis.high / axis.low)
+
+
+def _clearance(u: float, v: float, reach: float, taken: Sequence[tuple[float, float, float]]) -> float:
+    """How far a place is from the labels that stand, in the room that they need, and from the ends of the axis; no more
+    than is needed counts."""
+    others = (max(abs(u - x) / (reach + other), abs(v - y) / _HEIGHT) for x, y, other in taken)
+    return min(1.3, min(u, 1.0 - u) / reach, *others)
 
 
 def line_text(line: ThresholdLine) -> str:

@@ -7,30 +7,18 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import (
-    QButtonGroup,
-    QDialog,
-    QHBoxLayout,
-    QLabel,
-    QMenu,
-    QRadioButton,
-    QSplitter,
-    QStackedWidget,
-    QToolButton,
-    QVBoxLayout,
-    QWidget,
-)
+from PySide6.QtWidgets import QDialog, QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
 from app.answers.candidate_evaporation import EvaporationResult, evaporate_rows, hopeless
 from app.answers.candidate_row import CandidateRow
 from app.answers.candidate_thresholds import Thresholds, thresholds_of
 from app.answers.candidates import CandidatesAnswer, candidates_answer, candidates_of
-from app.candidate_choices import Basis, Start
-from app.candidate_columns import COLUMNS, USUAL_COLUMNS, columns_in
+from app.candidate_choices import Basis
+from app.candidate_columns import COLUMNS, USUAL_COLUMNS
 from app.candidate_csv import candidates_csv
 from app.candidate_order import SCORE, Score, Sieve, order_by, read_sieve, read_weight, score_rows
 from app.candidate_selection import with_candidates, with_species_of
-from app.candidate_words import basis_text, heading, summary, unit_for_column
+from app.candidate_words import heading, summary, unit_for_column
 from app.engine import CloudAnswer
 from app.figures.candidates_chart import ranked_picture
 from app.figures.candidates_map import line_near, line_text, thresholds_picture
@@ -39,30 +27,17 @@ from app.figures.theme import Theme
 from app.language import translate as _
 from app.newest import Job, Steps, Watch
 from app.plan import Plan
-from app.quantity_row import Group
-from app.sureness import legend
 from app.widgets.banner import Offer
+from app.widgets.candidate_bar import BASES, ChoiceBar, ViewBar
 from app.widgets.candidate_model import Shown
 from app.widgets.candidate_rules import CandidateRules
 from app.widgets.candidate_table import CandidateTable
 from app.widgets.detail import Detail
-from app.widgets.form import Choice
 from app.widgets.single_plot_page import SinglePlotPage
 from app.widgets.species_dialog import SpeciesDialog
 
+_LINES_AROUND, _LINE = 7.5, 1.25  # of a ranking: what is above and below its rows, and a row, in lines of text
 HINT = _("Return, or a double click in the table, uses a species")
-_BASES = (
-    (Basis.SAME_FREQUENCIES, Start.ATOMS_AND_TEMPERATURE),
-    (Basis.SAME_LIGHT, Start.ATOMS_AND_TEMPERATURE),
-    (Basis.SAME_START, Start.ATOMS_AND_TEMPERATURE),
-    (Basis.SAME_START, Start.PHASE_SPACE_DENSITY),
-)
-_BASIS_TIPS = (
-    _("Each in a harmonic trap of the plan's frequencies and depth"),
-    _("Each in the plan's beams and coils: frequencies, depth, sag and scattering are its own"),
-    _("Each in the trap of the plan, with the plan's atoms and temperature"),
-    _("Each in the trap of the plan, at the temperature that makes it as degenerate as the plan's cloud"),
-)
 
 
 @dataclass(frozen=True, eq=False)
@@ -91,7 +66,6 @@ class CandidatesPage(SinglePlotPage):
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
-        self.names: tuple[str, ...] = USUAL_COLUMNS
         self.sorted_by, self.descending = "", True
         self._units: dict[str, str] = {}
         self._found: _Found | None = None
@@ -100,15 +74,23 @@ class CandidatesPage(SinglePlotPage):
         self._evaporating: tuple[CandidateRow, ...] = ()
         self._rows: tuple[CandidateRow, ...] = ()
         self._scores: tuple[Score, ...] = ()
-        self.options.addLayout(self._make_choices())
+        self.choices, self.view = ChoiceBar(), ViewBar()
+        self.choices.basis_chosen.connect(self._choose_basis)
+        self.choices.species_asked.connect(self.ask_species)
+        self.choices.evaporation_asked.connect(self.ask_evaporation)
+        self.choices.columns_chosen.connect(self.choose_columns)
+        self.view.view_chosen.connect(self._choose_view)
+        self.view.order_chosen.connect(self._order)
+        self.options.addWidget(self.choices)
         self.rules = CandidateRules()
+        self.choices.rules_shown.connect(self.rules.setVisible)
         self.rules.changed.connect(self._rules_changed)
         self.rules.hide()
         self.options.addWidget(self.rules)
         self.table = CandidateTable()
         self.table.sort_asked.connect(self.sort_by)
         self.table.unit_chosen.connect(self._choose_unit)
-        self.table.hide_asked.connect(lambda name: self._toggle_column(name, False))
+        self.table.hide_asked.connect(lambda name: self.choices.toggle(name, False))
         self.table.use_asked.connect(self._use)
         self.table.detail_changed.connect(self._explain)
         self.splitter = QSplitter(Qt.Orientation.Vertical)
@@ -120,85 +102,16 @@ class CandidatesPage(SinglePlotPage):
         column.insertWidget(1, self.splitter, 1)
         self.splitter.addWidget(self.table)
         self.splitter.addWidget(self._make_lower())
-        self.splitter.setStretchFactor(0, 3)
-        self.splitter.setStretchFactor(1, 4)
+        self.splitter.setSizes([380, 420])
         self.bar.status.say(HINT)
         self.plot.canvas.pointer_moved.connect(self._read_pointer)
-        self._name_rules_button()
-
-    # ---------------------------------------------------------------- building
-
-    def _make_choices(self) -> QHBoxLayout:
-        row = QHBoxLayout()
-        row.setContentsMargins(0, 2, 0, 2)
-        row.setSpacing(6)
-        self.basis = Choice()
-        self.basis.setAccessibleName(_("In what candidates are compared"))
-        self.basis.setMinimumContentsLength(16)
-        for place, (basis, start) in enumerate(_BASES):
-            self.basis.addItem(basis_text(basis, start))
-            self.basis.setItemData(place, _BASIS_TIPS[place], Qt.ItemDataRole.ToolTipRole)
-        self.basis.setToolTip(_("In what candidates are compared"))
-        self.basis.activated.connect(self._choose_basis)
-        self.species = self._button(_("Species…"), _("Choose which species and states are compared"))
-        self.species.clicked.connect(self.ask_species)
-        self.columns_button = self._button(_("Columns"), _("Choose the columns of the table"))
-        self.columns_button.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)
-        self.columns_menu = QMenu(self.columns_button)
-        self.columns_menu.aboutToShow.connect(self._fill_columns)
-        self.columns_button.setMenu(self.columns_menu)
-        self.rules_button = self._button("", _("Your own filters, and weights for a score"))
-        self.rules_button.setCheckable(True)
-        self.rules_button.toggled.connect(lambda on: self.rules.setVisible(on))
-        self.evaporate = self._button(
-            _("Evaporate"), _("Find the best evaporation of every candidate on show, on all cores of this computer")
-        )
-        self.evaporate.clicked.connect(self.ask_evaporation)
-        for widget in (self.basis, self.species, self.columns_button, self.rules_button, self.evaporate):
-            row.addWidget(widget)
-        row.addStretch(1)
-        return row
-
-    @staticmethod
-    def _button(text: str, tip: str) -> QToolButton:
-        button = QToolButton()
-        button.setText(text)
-        button.setToolTip(tip)
-        button.setAccessibleName(tip)
-        return button
+        self._count_rules()
 
     def _make_lower(self) -> QWidget:
-        """The plots, the explanation of a cell, and the choice between them."""
-        self.view = QButtonGroup(self)
-        row = QHBoxLayout()
-        row.setContentsMargins(14, 4, 14, 0)
-        row.setSpacing(12)
-        for place, (text, tip) in enumerate(
-            (
-                (_("Thresholds"), _("Where each candidate becomes degenerate, over atom number and temperature")),
-                (_("Ranking"), _("The candidates in the order of one column")),
-                (_("Explanation"), _("All that is to be said of the cell that the keyboard is on")),
-            )
-        ):
-            button = QRadioButton(text)
-            button.setToolTip(tip)
-            button.setChecked(place == 0)
-            self.view.addButton(button, place)
-            row.addWidget(button)
-        self.ranked_by = Choice()
-        self.ranked_by.setAccessibleName(_("Order by"))
-        self.ranked_by.setToolTip(_("The column that orders table and ranking"))
-        self.ranked_by.setMinimumContentsLength(16)
-        self.ranked_by.activated.connect(lambda _place: self._order(str(self.ranked_by.currentData())))
-        self.marks = QLabel(legend())
-        self.marks.setObjectName("plotStatus")
-        row.addWidget(QLabel(_("ordered by")))
-        row.addWidget(self.ranked_by)
-        row.addStretch(1)
-        row.addWidget(self.marks)
-        self.view.idToggled.connect(self._choose_view)
+        """Plot and explanation, and the choice between them."""
         self.explanation = Detail()
         self.explanation.setAccessibleName(_("Explanation of the cell that the keyboard is on"))
+        self.explanation.document().setDocumentMargin(14)
         self.lower_half = QStackedWidget()
         self.lower_half.addWidget(self.plot.canvas)
         self.lower_half.addWidget(self.explanation)
@@ -206,7 +119,7 @@ class CandidatesPage(SinglePlotPage):
         column = QVBoxLayout(box)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(0)
-        column.addLayout(row)
+        column.addWidget(self.view)
         column.addWidget(self.lower_half, 1)
         return box
 
@@ -226,7 +139,7 @@ class CandidatesPage(SinglePlotPage):
     def recall(self, memory: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
         """Take up what `memory` gave; what cannot be read is left out."""
         self._units = dict(units)
-        self.names = tuple(name for name in memory.get("columns", ()) if name in COLUMNS) or USUAL_COLUMNS
+        self.choices.names = tuple(name for name in memory.get("columns", ()) if name in COLUMNS) or USUAL_COLUMNS
         order = tuple(memory.get("order", ()))
         if len(order) == 2 and (order[0] in COLUMNS or order[0] == SCORE):
             self.sorted_by, self.descending = order[0], order[1] == "descending"
@@ -243,7 +156,7 @@ class CandidatesPage(SinglePlotPage):
             except ValueError:
                 continue
         self.rules.set_rules(sieve, weights)
-        self._name_rules_button()
+        self._count_rules()
 
     def show_units(self, units: Mapping[str, str]) -> None:
         """Use these units, by the name of a quantity."""
@@ -290,9 +203,7 @@ class CandidatesPage(SinglePlotPage):
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
-        choice = cloud.plan.candidates
-        start = choice.start if choice.basis is Basis.SAME_START else Start.ATOMS_AND_TEMPERATURE
-        self.basis.setCurrentIndex(_BASES.index((choice.basis, start)))
+        self.choices.show_basis(cloud.plan.candidates.basis, cloud.plan.candidates.start)
         if self.isVisible() and self._found is not None:
             self._show()
 
@@ -338,14 +249,19 @@ class CandidatesPage(SinglePlotPage):
             own=(cloud.state.key, cloud.state.name),
         )
         self.table.show_rows(shown, name, self.descending)
-        self._fill_ranked_by()
-        self.evaporate.setEnabled(any(not hopeless(row) and row.evaporation is None for row in self._rows))
-        picture = self._chart(units) if self.view.checkedId() == 1 else self._map(cloud)
+        self.view.show_order(self.names, bool(weights), name)
+        self.choices.evaporate.setEnabled(any(not hopeless(row) and row.evaporation is None for row in self._rows))
+        picture = self._chart(units) if self.view.view == 1 else self._map(cloud)
         self.show_plot(lambda: picture, heading(found.answer, cloud.plan), summary(judged, len(self._rows)))
 
     def _with_evaporation(self, row: CandidateRow) -> CandidateRow:
         found = self._evaporations.get(evaporation_key(row.plan))
         return row if found is None else replace(row, evaporation=found)
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """The columns on show."""
+        return self.choices.names
 
     @property
     def _order_name(self) -> str:
@@ -364,31 +280,24 @@ class CandidatesPage(SinglePlotPage):
         name = self._order_name or self.names[0]
         better = COLUMNS[name].more_is_better if name != SCORE else True
         unit = units.get(name, "1")
+        line = self.plot.canvas.fontMetrics().height()
+        room = max(4, int((self.plot.canvas.height() / line - _LINES_AROUND) / _LINE))
         return ranked_picture(
-            self._rows, name, unit, self.descending if self._order_name else better, self._scores
-        )  # fmt: skip
-
-    def _fill_ranked_by(self) -> None:
-        """The columns on show, and what the rows are ordered by."""
-        wanted = [("", _("mass number")), *((name, COLUMNS[name].row.label) for name in self.names)]
-        if self.rules.weights:
-            wanted.insert(1, (SCORE, _("score")))
-        name = self._order_name
-        if name and name not in dict(wanted):
-            wanted.append((name, COLUMNS[name].row.label))
-        present = [(self.ranked_by.itemData(i), self.ranked_by.itemText(i)) for i in range(self.ranked_by.count())]
-        if present != wanted:
-            self.ranked_by.clear()
-            for data, text in wanted:
-                self.ranked_by.addItem(text, data)
-        self.ranked_by.setCurrentIndex([data for data, _text in wanted].index(name))
+            self._rows,
+            name,
+            unit,
+            self.descending if self._order_name else better,
+            self._scores,
+            self.rules.weights,
+            room=room,
+        )
 
     def _read_pointer(self, place: tuple[float, float] | None) -> None:
         if place is None:
             self.bar.status.say(HINT)
             return
         text = self.pointer_text(self.plot, place)
-        if self.view.checkedId() == 0 and self._thresholds is not None:
+        if self.view.view == 0 and self._thresholds is not None:
             near = line_near(self._thresholds[1], *place) if min(place) > 0.0 else None
             text += "" if near is None else f"   {line_text(near)}"
         self.bar.status.say(text)
@@ -399,9 +308,7 @@ class CandidatesPage(SinglePlotPage):
 
     # ---------------------------------------------------------------- what the user chooses
 
-    def _choose_view(self, place: int, chosen: bool) -> None:
-        if not chosen:
-            return
+    def _choose_view(self, place: int) -> None:
         self.lower_half.setCurrentIndex(1 if place == 2 else 0)
         if place != 2:
             self.plot.set_view(None)
@@ -423,7 +330,7 @@ class CandidatesPage(SinglePlotPage):
         self._ordered()
 
     def _ordered(self) -> None:
-        if self.view.checkedId() == 1:
+        if self.view.view == 1:
             self.plot.set_view(None)
         self.memory_changed.emit()
         self._show()
@@ -433,47 +340,25 @@ class CandidatesPage(SinglePlotPage):
         self.unit_chosen.emit(name, unit)
         self._show()
 
-    def _fill_columns(self) -> None:
-        self.columns_menu.clear()
-        for group in Group:
-            self.columns_menu.addSection(group.value)
-            for column in columns_in(group):
-                action = self.columns_menu.addAction(column.row.label)
-                action.setCheckable(True)
-                action.setChecked(column.name in self.names)
-                action.setToolTip(column.row.formula)
-                action.triggered.connect(lambda on, name=column.name: self._toggle_column(name, on))
-        self.columns_menu.addSeparator()
-        self.columns_menu.addAction(_("The usual columns")).triggered.connect(
-            lambda: self.choose_columns(USUAL_COLUMNS)
-        )  # fmt: skip
-
-    def _toggle_column(self, name: str, shown: bool) -> None:
-        names = (*self.names, name) if shown else tuple(other for other in self.names if other != name)
-        if names:
-            self.choose_columns(names)
-
     def choose_columns(self, names: Sequence[str]) -> None:
         """Show these columns."""
-        self.names = tuple(dict.fromkeys(name for name in names if name in COLUMNS)) or USUAL_COLUMNS
+        self.choices.names = tuple(dict.fromkeys(name for name in names if name in COLUMNS)) or USUAL_COLUMNS
         self.memory_changed.emit()
         self._show()
 
     def _rules_changed(self) -> None:
-        self._name_rules_button()
+        self._count_rules()
         self.memory_changed.emit()
         self._show()
 
-    def _name_rules_button(self) -> None:
+    def _count_rules(self) -> None:
         sieve = self.rules.sieve
-        parts = [_("Filters"), str(len(sieve.traits) + len(sieve.bounds) or "")]
-        parts += [_("· weights"), str(len(self.rules.weights) or "")]
-        self.rules_button.setText(" ".join(part for part in parts if part))
+        self.choices.count_rules(len(sieve.traits) + len(sieve.bounds), len(self.rules.weights))
 
     def _choose_basis(self, place: int) -> None:
         if self.cloud is None:
             return
-        basis, start = _BASES[place]
+        basis, start = BASES[place]
         plan = self.cloud.plan
         choice = replace(plan.candidates, basis=basis, start=start)
         if choice != plan.candidates:
@@ -497,7 +382,7 @@ class CandidatesPage(SinglePlotPage):
         self._evaporating = tuple(row for row in self._rows if row.evaporation is None)
         for name in ("evaporated_atoms", "evaporation_time"):
             if name not in self.names:
-                self.names = (*self.names, name)
+                self.choices.names = (*self.names, name)
         self.part_allowed.emit()
 
     def _use(self, row: CandidateRow) -> None:

@@ -28,7 +28,8 @@ from app.words import row_tip, shown_unit
 
 AnyIndex = QModelIndex | QPersistentModelIndex
 _MOST_TEXTS = 20_000
-LONGEST_LINE = 12  # characters of a heading
+_MOST_LINES = 3
+LONGEST_LINE = 13  # characters of a heading
 
 
 class Kind(Enum):
@@ -166,9 +167,14 @@ class CandidateModel(QAbstractTableModel):
                 return _("model")
             case Kind.SCORE:
                 return _("score")
-        label, unit = COLUMNS[head.name].row.label, shown_unit(self.shown.unit(head.name))
-        lines = _lines(label) if broken else [label]
-        return ("\n" if broken else " ").join([*lines, f"[{unit}]"] if unit else lines)
+        row, unit = COLUMNS[head.name].row, shown_unit(self.shown.unit(head.name))
+        if not broken:
+            return f"{row.label} [{unit}]" if unit else row.label
+        lines = _lines(row.label)
+        # A long label would make the heading higher than the rows are many; its tip has it.
+        if len(lines) > _MOST_LINES:
+            lines = [row.symbol]
+        return "\n".join([*lines, f"[{unit}]"] if unit else lines)
 
     def _head_tip(self, head: Head) -> str:
         match head.kind:

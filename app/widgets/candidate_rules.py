@@ -11,6 +11,7 @@ from app.candidate_columns import COLUMNS, columns_in
 from app.candidate_order import Bound, Sieve, Trait, Weight, limit_kind, read_bound, read_weight
 from app.language import translate as _
 from app.quantity_row import Group
+from app.widgets.flow import Flow
 from app.widgets.form import Choice
 
 _TRAIT_TIPS = {
@@ -183,19 +184,18 @@ class _Rules(QWidget):
         self.error.setObjectName("fieldError")
         self.error.setWordWrap(True)
         self.error.hide()
-        self.chips = QHBoxLayout()
-        self.chips.setSpacing(4)
+        self.chips = Flow()
         line = QHBoxLayout()
         line.setSpacing(4)
         for widget in (self.column, self.direction, self.text, self.add):
             line.addWidget(widget)
-        line.addLayout(self.chips)
         line.addStretch(1)
         grid = QGridLayout(self)
         grid.setContentsMargins(0, 0, 0, 0)
         grid.setVerticalSpacing(2)
         grid.addLayout(line, 0, 0)
-        grid.addWidget(self.error, 1, 0)
+        grid.addLayout(self.chips, 1, 0)
+        grid.addWidget(self.error, 2, 0)
         self.add.clicked.connect(self._send)
         self.text.returnPressed.connect(self._send)
 
@@ -222,6 +222,7 @@ class _Rules(QWidget):
         """One button a rule, which takes it away."""
         while (item := self.chips.takeAt(0)) is not None:
             if (old := item.widget()) is not None:
+                old.hide()
                 old.deleteLater()
         for text, drop in chips:
             chip = QToolButton()

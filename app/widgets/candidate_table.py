@@ -97,11 +97,12 @@ class CandidateTable(QTableView):
             self._widths = {}
         metrics = self.fontMetrics()
         digit = metrics.horizontalAdvance("0")
-        for place, key in enumerate(keys):
+        for place, (key, head) in enumerate(zip(keys, shown.heads, strict=True)):
             texts = {self.model_.text(line, place) for line in range(len(shown.rows))}
             wanted = max(
                 max((metrics.horizontalAdvance(text) for text in texts), default=0) + 3 * digit,
-                self.horizontalHeader().sectionSizeHint(place) + digit // 2,
+                max(metrics.horizontalAdvance(line) for line in self.model_.heading(head, broken=True).split("\n"))
+                + 3 * digit,
                 NARROWEST * digit,
             )
             self._widths[key] = max(wanted, self._widths.get(key, 0))

@@ -33,6 +33,12 @@ def compared(plan: Plan, **choice: object) -> CandidatesAnswer:
     return answer
 
 
+def compared_as_it_is(plan: Plan) -> CandidatesAnswer:
+    answer = candidates_answer(plan)
+    assert answer is not None
+    return answer
+
+
 def row_of(answer: CandidatesAnswer, key: str, state: str | None = None) -> CandidateRow:
     name = load_species(key).state(state).name
     return next(row for row in answer.rows if (row.key, row.state.name) == (key, name))
@@ -289,6 +295,23 @@ def test_an_unknown_loss_makes_a_lifetime_an_upper_bound() -> None:
     assert cell.value == pytest.approx(30.0)
     assert cell.sureness is Sureness.ASSUMED
     assert "upper bound" in cell.reason
+
+
+def test_the_demo_compares_what_it_says() -> None:
+    answer = compared_as_it_is(read_plan(ROOT / "presets" / "plans" / "which_species.toml"))
+    assert answer.basis is Basis.SAME_LIGHT
+    assert {row.key for row in answer.rows} >= {"6Li", "23Na", "39K", "40K", "87Rb", "133Cs", "164Dy", "168Er", "174Yb"}
+    for row in answer.rows:
+        assert row.trapped, row.name
+        # With a known scattering length there is a rate, whatever the trap.
+        if row.cloud is not None and row.cloud.scattering.value is not None:
+            assert row.cell("elastic_collision_rate").value > 0.0, row.name
+    lithium = row_of(answer, "6Li", "F=1/2 mF=+1/2 and F=1/2 mF=-1/2")
+    assert lithium.failure is None
+    assert lithium.cell("scattering_length").value > 1e-7
+    # A broad resonance: Chin, Grimm, Julienne, Tiesinga, Rev. Mod. Phys. 82, 1225 (2010), table IV: 834 G, 300 G wide;
+    # the data have a later measurement, Zuern et al., Phys. Rev. Lett. 110, 135301 (2013).
+    assert lithium.cell("resonance_field").value == pytest.approx(0.0832, rel=0.005)
 
 
 # --- as it goes ---

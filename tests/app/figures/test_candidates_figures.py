@@ -1,0 +1,110 @@
+"""The map of thresholds and the ranking of candidates: lines by their kind, unknown numbers apart and never at zero."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from app.answers.candidate_row import CandidateRow
+from app.answers.candidate_thresholds import thresholds_of
+from app.answers.candidates import candidates_answer
+from app.answers.cloud import cloud_answer
+from app.candidate_choices import CandidateChoice, CandidatesChoice
+from app.candidate_order import SCORE, read_weight, score_rows
+from app.figures.candidates_chart import ranked_picture
+from app.figures.candidates_map import line_near, thresholds_picture
+from app.figures.draw import picture_bytes
+from app.figures.picture import Role
+from app.figures.theme import DARK, LIGHT
+from app.plan import DEFAULT_PLAN
+from app.units import ATOM_NUMBER, TEMPERATURE, read_quantity
+
+
+@pytest.fixture(scope="module")
+def rows() -> tuple[CandidateRow, ...]:
+    answer = candidates_answer(DEFAULT_PLAN)
+    assert answer is not None
+    return answer.rows
+
+
+def test_in_the_same_frequencies_two_lines_say_all(rows: tuple[CandidateRow, ...]) -> None:
+    thresholds = thresholds_of(rows, 1e5)
+    assert sum(len(line.rows) for line in thresholds.lines) == len(rows)
+    fermions, bosons = thresholds.lines
+    assert (fermions.bosons, bosons.bosons) == (False, True)
+    # Tc = 0.9405 hbar wbar N^(1/3)/k: the digits by hand for N = 1e5, as in the tests of `coldward state`.
+    here = float(np.interp(math.log(1e5), np.log(thresholds.atoms), bosons.temperature))
+    assert here == pytest.approx(138.36e-9, rel=2e-3)
+    picture = thresholds_picture(thresholds, cloud_answer(DEFAULT_PLAN))
+    assert {curve.role for curve in picture.curves} == {Role.SECOND, Role.THRESHOLD}
+    assert not LIGHT.lines[Role.THRESHOLD].dash
+    assert LIGHT.lines[Role.SECOND].dash
+    assert len(picture.labels) == 2
+    assert [(mark.x, mark.y) for mark in picture.marks] == [(1e5, 2e-7)]
+    near = line_near(thresholds, 1e5, 138e-9)
+    assert near is bosons
+    assert line_near(thresholds, 1e5, 1e-6) is None
+
+
+def test_other_starts_are_marked(rows: tuple[CandidateRow, ...]) -> None:
+    own = CandidateChoice(
+        key="41K", atoms=read_quantity("3e5", ATOM_NUMBER), temperature=read_quantity("150 nK", TEMPERATURE)
+    )
+    answer = candidates_answer(replace(DEFAULT_PLAN, candidates=CandidatesChoice(candidates=(own,))))
+    assert answer is not None
+    picture = thresholds_picture(thresholds_of(answer.rows, 1e5), cloud_answer(DEFAULT_PLAN), answer.rows)
+    assert [(mark.role, mark.x, mark.y) for mark in picture.marks[1:]] == [(Role.TRACK, 3e5, 1.5e-7)]
+
+
+def test_unknown_numbers_stand_apart_with_their_reason(rows: tuple[CandidateRow, ...]) -> None:
+    picture = ranked_picture(rows, "elastic_collision_rate", "1/s", True)
+    assert picture.x.log
+    known = [row for row in rows if row.cell("elastic_collision_rate").value > 0.0]
+    assert len(picture.marks) == len(known)
+    assert len(picture.labels) == len(rows) - len(known)
+    values = [mark.x for mark in picture.marks]
+    assert values == sorted(values, reverse=True)
+    assert min(values) > 0.0
+    # Best on top; every row has a name of its own.
+    assert picture.marks[0].y == len(rows) - 1
+    assert len(picture.y.names) == len(rows)
+    texts = [label.text for label in picture.labels]
+    assert any(text.startswith("zero: fermions in one spin state") for text in texts)
+    assert any(text.startswith("unknown: needs") for text in texts)
+    lowest_mark, highest_label = picture.marks[-1].y, max(label.y for label in picture.labels)
+    assert lowest_mark == highest_label + 1.0
+
+
+def test_marks_tell_how_sure_a_number_is(rows: tuple[CandidateRow, ...]) -> None:
+    roles = {mark.role for mark in ranked_picture(rows, "scattering_length", "a0", True).marks}
+    assert {Role.SEEN, Role.RECALLED} <= roles
+    for theme in (LIGHT, DARK):
+        assert [theme.lines[role].hollow for role in (Role.SEEN, Role.COMPUTED, Role.RECALLED, Role.ASSUMED)] == [
+            False,
+            False,
+            True,
+            True,
+        ]
+
+
+def test_a_score_is_ranked_like_a_column_and_an_empty_one_says_so(rows: tuple[CandidateRow, ...]) -> None:
+    weights = (read_weight("scattering_length"),)
+    scores = score_rows(rows, weights)
+    picture = ranked_picture(rows, SCORE, "1", True, scores, weights, room=5)
+    assert len(picture.marks) == sum(not math.isnan(score.value) for score in scores)
+    assert picture.y.high - picture.y.low == pytest.approx(5.2)
+    assert "first 5 of" in picture.note
+    nothing = ranked_picture(rows, "evaporated_atoms", "1", True)
+    assert nothing.marks == ()
+    assert "No candidate has a number" in nothing.summary
+
+
+def test_they_are_drawn(rows: tuple[CandidateRow, ...]) -> None:
+    thresholds = thresholds_picture(thresholds_of(rows, 1e5), cloud_answer(DEFAULT_PLAN))
+    assert [label.text for label in thresholds.labels] == ["23 species of bosons", "9 species of fermions"]
+    assert "fermions: threshold T/TF" in picture_bytes((thresholds,), "svg").decode()
+    ranked = (ranked_picture(rows, "rethermalisation_time", "s", False), ranked_picture((), "mass", "u", True))
+    assert "168Er mJ=-6" in picture_bytes(ranked, "svg").decode()
