@@ -57,13 +57,19 @@ class DesignAnswer:
 
 
 def design_answer(
-    plan: Plan, control: Control | None = None, since: str | None = None, tick: Tick | None = None
+    plan: Plan,
+    control: Control | None = None,
+    since: str | None = None,
+    tick: Tick | None = None,
+    *,
+    drift: bool = True,
 ) -> DesignAnswer:
     """The ramp of one control that leaves most atoms at the target.
 
     control : None: the one that `usual_control` names
     since : label of a measured cloud, from which the rest is designed
     tick : told the share that is done; `Cancelled` where it says to stop
+    drift : whether the truncation parameter may drift with the depth; else it is held
 
     Raises
     ------
@@ -73,26 +79,30 @@ def design_answer(
         Atoms that do not collide, or a range of the control that does not hold.
     """
     control = control or usual_control(plan, since)
-    kept = _design.kept(plan, control, since)
+    kept = _design.kept(plan, control, since, drift)
     if kept is None and tick is not None:
-        kept = _designed(plan, control, since, tick)
-        _design.take(kept, plan, control, since)
-    return kept if kept is not None else _design(plan, control, since)
+        kept = _designed(plan, control, since, drift, tick)
+        _design.take(kept, plan, control, since, drift)
+    return kept if kept is not None else _design(plan, control, since, drift)
 
 
-def kept_design(plan: Plan, control: Control | None = None, since: str | None = None) -> DesignAnswer | None:
+def kept_design(
+    plan: Plan, control: Control | None = None, since: str | None = None, *, drift: bool = True
+) -> DesignAnswer | None:
     """The same if it is there already."""
-    return _design.kept(plan, control or usual_control(plan, since), since)
+    return _design.kept(plan, control or usual_control(plan, since), since, drift)
 
 
-def keep_design(answer: DesignAnswer, plan: Plan, control: Control | None = None, since: str | None = None) -> None:
+def keep_design(
+    answer: DesignAnswer, plan: Plan, control: Control | None = None, since: str | None = None, *, drift: bool = True
+) -> None:
     """Keep the answer of a process of its own."""
-    _design.take(answer, plan, control or usual_control(plan, since), since)
+    _design.take(answer, plan, control or usual_control(plan, since), since, drift)
 
 
 @part(*RAMP_FIELDS)
-def _design(plan: Plan, control: Control, since: str | None) -> DesignAnswer:
-    return _designed(plan, control, since, None)
+def _design(plan: Plan, control: Control, since: str | None, drift: bool) -> DesignAnswer:
+    return _designed(plan, control, since, drift, None)
 
 
 def controls_of(plan: Plan, since: str | None = None) -> tuple[Control, ...]:
@@ -134,7 +144,7 @@ def design_target(plan: Plan) -> tuple[Target, bool]:
     return Target(reduced_temperature=FERMI_THRESHOLD), True
 
 
-def _designed(plan: Plan, control: Control, since: str | None, tick: Tick | None) -> DesignAnswer:
+def _designed(plan: Plan, control: Control, since: str | None, drift: bool, tick: Tick | None) -> DesignAnswer:
     from physics.ramp_design import design_ramp
 
     require_collisions(plan)
@@ -155,7 +165,7 @@ def _designed(plan: Plan, control: Control, since: str | None, tick: Tick | None
         path, design_tick = WatchedPath(path=path, progress=progress), progress.rest
     design = design_ramp(
         gas_of(plan), start.atoms, start.temperature, path, control, target,
-        losses=losses_of(plan), limits=limits, tick=design_tick,
+        losses=losses_of(plan), limits=limits, drift=drift, tick=design_tick,
     )  # fmt: skip
     before = stages_before(plan, start)
     stages, answer = _rounded(plan, before, design, start, limits.time)

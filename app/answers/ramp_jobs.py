@@ -7,6 +7,7 @@ be surveyed for, go to the process; surveys that it makes on the way come back, 
 from __future__ import annotations
 
 from collections.abc import Callable, Hashable
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from app.answers.ramp import RAMP_FIELDS, RampAnswer, keep_ramp, kept_ramp, ramp_answer
@@ -52,17 +53,21 @@ def ramp_job(plan: Plan, since: str | None = None) -> Steps:
     return Steps(what=_("ramp"), depends_on=("ramp", ramp_depends_on(plan), since), run=run)
 
 
-def design_job(plan: Plan, control: Control | None = None, since: str | None = None) -> Steps:
+def design_job(plan: Plan, control: Control | None = None, since: str | None = None, *, drift: bool = True) -> Steps:
     """`design_answer`; None where it was stopped."""
 
     def run(watch: Watch) -> DesignAnswer | None:
         asked = control or usual_control(plan, since)
-        answer = kept_design(plan, asked, since) or apart(plan, design_answer, (plan, asked, since), watch)
+        answer = kept_design(plan, asked, since, drift=drift)
+        if answer is None:
+            answer = apart(plan, partial(design_answer, drift=drift), (plan, asked, since), watch)
         if answer is not None:
-            keep_design(answer, plan, asked, since)
+            keep_design(answer, plan, asked, since, drift=drift)
         return answer
 
-    return Steps(what=_("design of a ramp"), depends_on=("design", ramp_depends_on(plan), control, since), run=run)
+    return Steps(
+        what=_("design of a ramp"), depends_on=("design", ramp_depends_on(plan), control, since, drift), run=run
+    )
 
 
 def sensitivity_job(plan: Plan, since: str | None = None) -> Steps:

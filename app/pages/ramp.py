@@ -217,6 +217,9 @@ class RampPage(Page):
         if self.cloud is None:
             return False
         plan, panel = self.cloud.plan, self.panel
+        if self.since is not None and all(cloud.label != self.since for cloud in plan.measured):
+            self.since = panel.measured.since = None
+            panel.design.start_from(None)
         panel.set_plan(plan)
         if not plan.ramp:
             self._found = None if self._found is not None and self._found.plan.ramp else self._found
@@ -326,6 +329,7 @@ class RampPage(Page):
     def _follow_from(self, label: str | None) -> None:
         """Draw the rest of the ramp from a measured cloud too."""
         self.since = label
+        self.panel.design.start_from(label)
         self.part_wanted.emit()
 
     # ---------------------------------------------------------------- tables of the ramp

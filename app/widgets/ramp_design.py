@@ -7,7 +7,7 @@ from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QLabel, QPushButton, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QCheckBox, QGridLayout, QHBoxLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
 from app.answers.ramp_design import DesignAnswer, controls_of, usual_control
 from app.answers.ramp_jobs import design_job
@@ -51,6 +51,7 @@ class DesignView(PlanEditor):
         self._asked = False
         self._found: DesignAnswer | None = None
         self._found_for: object = None
+        self.since: str | None = None  # label of the measured cloud from which the rest is designed
         self._controls: tuple[Control, ...] = ()
         self._picked: Control | None = None
         self._limit_fields: QWidget | None = None
@@ -79,6 +80,9 @@ class DesignView(PlanEditor):
                 tip=field.tip,
             )  # fmt: skip
             self.targets[path] = line
+        self.drift = QCheckBox("η may drift with the depth")
+        self.drift.setChecked(True)
+        self.drift.setToolTip("Else one truncation parameter is held throughout")
         self.go = QPushButton("Design")
         self.go.clicked.connect(self.ask)
         self.apply = QPushButton("Put it into the plan")
@@ -109,6 +113,7 @@ class DesignView(PlanEditor):
         self._add(0, 0, "Move", self.control)
         self._add(0, 2, "Until", target)
         self._add(1, 0, "Longest time", self.time)
+        self._form.addWidget(self.drift, 2, 1)
         self._form.addWidget(self.go, 2, 3, Qt.AlignmentFlag.AlignLeft)
         self._form.setColumnStretch(1, 2)
         self._form.setColumnStretch(3, 3)
@@ -148,8 +153,8 @@ class DesignView(PlanEditor):
     def lay_out(self, plan: Plan) -> None:
         """The control's limits, in its own units, and the target's field."""
         try:
-            controls = controls_of(with_known_depth(plan))
-            usual = usual_control(with_known_depth(plan))
+            controls = controls_of(with_known_depth(plan), self.since)
+            usual = usual_control(with_known_depth(plan), self.since)
         except ValueError as error:
             self._say(as_sentence(error))
             controls, usual = (), None
@@ -252,7 +257,9 @@ class DesignView(PlanEditor):
     def extra_job(self, plan: Plan) -> tuple[Steps | None, object]:
         if not self._asked or self._picked is None:
             return None, None
-        return design_job(with_known_depth(plan), self._picked), ("design", self._picked)
+        drift = self.drift.isChecked()
+        job = design_job(with_known_depth(plan), self._picked, self.since, drift=drift)
+        return job, ("design", self._picked, self.since, drift)
 
     def take_extra(self, plan: Plan, extra: Any) -> None:
         self._asked = False
@@ -266,6 +273,13 @@ class DesignView(PlanEditor):
             for plot, make in zip(self.plots, (eta_picture, time_picture), strict=True):
                 plot.show(partial(make, extra.design))
         self._show_found()
+
+    def start_from(self, label: str | None) -> None:
+        """Design the rest of the ramp from a measured cloud; None: the whole of it."""
+        self.since = label
+        self.go.setText("Design" if label is None else f"Design the rest from “{label}”")
+        if self._plan is not None:
+            self.set_plan(self._plan)
 
     def stopped(self) -> None:
         """The user does not want it any more."""

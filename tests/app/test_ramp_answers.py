@@ -219,6 +219,13 @@ def test_a_designed_ramp_is_one_that_can_be_edited_saved_and_simulated(plan: Pla
 
 
 @pytest.mark.usefixtures("quick_designs")
+def test_a_held_truncation_parameter_leaves_no_more_atoms_than_one_that_may_drift(plan: Plan) -> None:
+    held, free = design_answer(plan, drift=False), design_answer(plan)
+    assert held.design.drift == 0.0
+    assert held.design.simulated.final["atoms"] <= free.design.simulated.final["atoms"] * (1.0 + 1e-6)
+
+
+@pytest.mark.usefixtures("quick_designs")
 def test_a_design_keeps_to_the_limits_and_to_the_unit(plan: Plan) -> None:
     limits = '[limits]\ntime = "300 ms"\n[[limits.control]]\ncontrol = "depth"\nlow = "0.5 uK"\nhigh = "0.5 mK"\n'
     limited = parse_plan(HEAD + TARGET + limits, "a.toml")
