@@ -18,7 +18,7 @@ from physics.evaporation import Evaporation
 MOST_DECADES = 6
 """Of a logarithmic axis: what lies further below is not worth the ink."""
 
-_PREFIXES = ("p", "n", "µ", "m", "")
+_PREFIXED = {"K": ("pK", "nK", "µK", "mK", "K"), "s": ("µs", "ms", "s")}
 
 _CONDENSED = 2.612375348685488  # zeta(3/2)
 
@@ -52,7 +52,7 @@ class Column:
         if not math.isfinite(value):
             return "–"
         if self.prefixed:
-            return format_quantity(value, best_unit(value, [f"{p}{self.unit}" for p in _PREFIXES]), digits=3)
+            return format_quantity(value, best_unit(value, _PREFIXED[self.unit]), digits=3)
         return format_quantity(value, raised(self.unit), digits=3)
 
 

@@ -147,6 +147,10 @@ def test_a_passenger_that_is_lost_ends_earlier_and_has_no_value_after() -> None:
     assert before.note == "1.50, 1.50 µK"
 
 
+def test_a_time_is_read_in_the_unit_that_suits_it() -> None:
+    assert [RELAXATION.text(value) for value in (9.93e-3, 1.2, 2e-6)] == ["9.93 ms", "1.20 s", "2.00 µs"]
+
+
 def test_a_passenger_that_is_never_held_is_not_named() -> None:
     first = Line(name="87Rb", role=Role.FIRST, time=np.array([0.0, 2.0]), values=np.array([2e-6, 1e-6]))
     none = Line(name="40K", role=Role.SECOND, time=np.empty(0), values=np.empty(0))
