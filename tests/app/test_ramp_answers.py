@@ -162,7 +162,7 @@ def test_what_cannot_be_answered_says_so(plan: Plan) -> None:
         ramp_answer(twice, "after stage 2")
     unknown = parse_plan((HEAD + STAGES).replace('"87Rb"', '"6Li"').replace('state = "F=1 mF=-1"\n', ""), "a.toml")
     asked = replace(unknown, species=replace(unknown.species, spin_components=2))
-    with pytest.raises(PlanError, match="species.scattering_length, or species.field"):
+    with pytest.raises(PlanError, match=r"species\.scattering_length, or species\.field"):
         ramp_answer(asked)
 
 
