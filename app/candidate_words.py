@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Sequence
-from statistics import median
 from typing import TYPE_CHECKING
 
 from app.answers.candidate_row import CandidateRow, Cell, Failure
@@ -61,12 +60,12 @@ def unit_for_column(name: str, cells: Iterable[Cell], chosen: str = "") -> str:
     row = COLUMNS[name].row
     if chosen in row.units:
         return chosen
-    sizes = [abs(cell.value) for cell in cells if cell.known and cell.value]
+    sizes = sorted(abs(cell.value) for cell in cells if cell.known and cell.value)
     if len(row.units) == 1 or "%" in row.units or not sizes:
         return row.units[0]
     # Of one family: nm beside a0, or kHz beside nK, is for the reader to choose.
     alike = tuple(unit for unit in row.units if unit[-1:] == row.units[0][-1:])
-    return best_unit(median(sizes), alike, row.unit)
+    return best_unit(sizes[len(sizes) // 2], alike, row.unit)
 
 
 def cell_number(cell: Cell, name: str, unit: str) -> str:

@@ -4,18 +4,27 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.candidate_row import CandidateRow
+from app.answers.cloud import cloud_answer
+from app.answers.part import part
 from physics.cloud import Model, equilibrium
 from physics.constants import boltzmann
+
+if TYPE_CHECKING:
+    from app.plan import Plan
 
 Array = NDArray[np.float64]
 
 ALIKE = 0.005
 """Relative difference below which thresholds count as one line: it would not be seen."""
+
+KEPT = 160
+"""Curves that are kept: all states of the data, twice."""
 
 _POINTS = 33
 _DECADES = 1.5
@@ -46,8 +55,8 @@ class Thresholds:
 
 def thresholds_of(rows: Sequence[CandidateRow], atoms: float) -> Thresholds:
     """Thresholds around an atom number, of all rows that have an answer."""
-    grid = np.geomspace(max(1.0, atoms * 10.0**-_DECADES), atoms * 10.0**_DECADES, _POINTS)
-    drawn = ((row, _threshold(row, grid)) for row in rows if row.cloud is not None)
+    grid = numbers_around(atoms)
+    drawn = ((row, _on(grid, row)) for row in rows if row.cloud is not None)
     found = sorted(
         ((row, line) for row, line in drawn if np.any(np.isfinite(line))),
         key=lambda item: (item[0].bosons, float(np.nanmin(item[1]))),
@@ -68,14 +77,33 @@ def _alike(one: Array, other: Array) -> bool:
     return bool(np.allclose(one, other, rtol=ALIKE, atol=0.0, equal_nan=True))
 
 
-def _threshold(row: CandidateRow, atoms: Array) -> Array:
-    assert row.cloud is not None
-    cloud = replace(row.cloud.cloud, atoms=atoms)
-    solved = equilibrium(cloud, Model.IDEAL, fermi_threshold=row.cloud.threshold)
+def _on(grid: Array, row: CandidateRow) -> Array:
+    """The threshold of a row at these numbers, which need not be those around its own."""
+    own, curve = numbers_around(row.plan.cloud.atoms.value), threshold_curve(row.plan)
+    if own[0] == grid[0] and own[-1] == grid[-1]:
+        return curve
+    logs: Array = np.interp(np.log(grid), np.log(own), np.log(curve), left=np.nan, right=np.nan)
+    return np.exp(logs)
+
+
+@part("species", "trap", "cloud.atoms", "target.reduced_temperature", keep=KEPT)
+def threshold_curve(plan: Plan) -> Array:
+    """Temperatures [K] at which the plan's atoms become degenerate, at numbers around the plan's, see `numbers_around`.
+
+    NaN where the cloud would be hotter than the trap is deep; the temperature of the plan does not enter.
+    """
+    answer = cloud_answer(plan)
+    atoms = numbers_around(plan.cloud.atoms.value)
+    cloud = replace(answer.cloud, atoms=atoms)
+    solved = equilibrium(cloud, Model.IDEAL, fermi_threshold=answer.threshold)
     found = np.asarray(
-        solved.critical_temperature if row.bosons else row.cloud.threshold * solved.fermi_temperature, dtype=float
+        solved.critical_temperature if answer.bosons else answer.threshold * solved.fermi_temperature, dtype=float
     )
     if cloud.trap.depth is not None:
-        # Hotter than the trap is deep there is no cloud that could cross a threshold.
         found = np.where(boltzmann * found > np.asarray(cloud.trap.depth), np.nan, found)
     return np.broadcast_to(found, atoms.shape)
+
+
+def numbers_around(atoms: float) -> Array:
+    """Atom numbers to both sides of one, down to a single atom."""
+    return np.geomspace(max(1.0, atoms * 10.0**-_DECADES), atoms * 10.0**_DECADES, _POINTS)

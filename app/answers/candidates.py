@@ -13,12 +13,14 @@ from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 from app.answers.candidate_row import CandidateRow, Failure, length_reason
+from app.answers.candidate_thresholds import threshold_curve
 from app.answers.candidate_trap import trap_facts
 from app.answers.cloud import cloud_answer
 from app.answers.inputs import cloud_of, values_of
 from app.answers.part import part
 from app.answers.trap_inputs import surveyed_trap
 from app.candidate_choices import Basis, CandidateChoice, Start
+from app.candidate_columns import USUAL_COLUMNS
 from app.choices import SpeciesChoice
 from app.language import translate as _
 from app.plan_field import PlanError
@@ -106,6 +108,7 @@ def candidates_answer(
     last = time.monotonic()
     for candidate in candidates:
         rows.append(_row(_plan_of(plan, candidate, frame), candidate, frame.in_light))
+        _work_ahead(rows[-1])
         if not tick(len(rows) / len(candidates)):
             return None
         if time.monotonic() - last > PATIENCE and len(rows) < len(candidates):
@@ -113,6 +116,14 @@ def candidates_answer(
                 return None
             last = time.monotonic()
     return answer()
+
+
+def _work_ahead(row: CandidateRow) -> None:
+    """Numbers that are worked out when they are first asked for, done here, where nobody waits for a window."""
+    for name in USUAL_COLUMNS:
+        row.cell(name)
+    if row.cloud is not None:
+        threshold_curve(row.plan)
 
 
 @dataclass(frozen=True, kw_only=True)
