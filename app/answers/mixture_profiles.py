@@ -3,24 +3,22 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.answers.mixture import mixture_answer
 from app.answers.part import part
-from app.answers.profile import PROFILE_POINTS, round_up
-from physics.profiles import density_profile
+from app.answers.profile import PROFILE_POINTS, profile_answer, round_up
+from app.plan_field import PlanError
 
 if TYPE_CHECKING:
-    from app.answers.cloud import CloudAnswer
     from app.plan import Plan
 
 Array = NDArray[np.float64]
 
-_RADII = 3.2  # rms radii to each side: the edge of a cold Fermi gas is at 2.83
-_EDGE = 1.3  # Thomas-Fermi radii
+_FAINT = 2e-3  # of the peak
 _Z = np.array([0.0, 0.0, 1.0])
 
 
@@ -42,7 +40,7 @@ class MixtureProfiles:
 
 @part("species", "trap", "cloud", "losses", "target", "passenger")
 def mixture_profiles(plan: Plan) -> MixtureProfiles | None:
-    """Profiles of the plan's two clouds; None where one is not held, or has no size, as in a quadrupole.
+    """Profiles of the plan's two clouds; None where one is not held, or has no profile.
 
     Raises
     ------
@@ -57,19 +55,24 @@ def mixture_profiles(plan: Plan) -> MixtureProfiles | None:
     clouds = (answer.coolant, answer.passenger)
     axes = [int(np.argmax(np.abs(np.asarray(place.axes) @ up))) for place in mixture.places]
     lowest = np.asarray(mixture.places[0].minimum)
-    centres = tuple(float((np.asarray(place.minimum) - lowest) @ up) for place in mixture.places)
-    reaches = [_reach(cloud, axis) for cloud, axis in zip(clouds, axes, strict=True)]
-    if not np.all(np.isfinite(reaches)):
+    first, second = (float((np.asarray(place.minimum) - lowest) @ up) for place in mixture.places)
+    try:
+        profiles = [profile_answer(cloud.plan, axis) for cloud, axis in zip(clouds, axes, strict=True)]
+    except PlanError:
         return None
-    reach = round_up(max(reach + abs(centre) for reach, centre in zip(reaches, centres, strict=True)))
+    shapes = [(profile.positions, profile.density.total) for profile in profiles]
+    if not all(np.all(np.isfinite(density)) and np.max(density) > 0.0 for _, density in shapes):
+        return None
+    reaches = [_reach(*shape) + abs(centre) for shape, centre in zip(shapes, (first, second), strict=True)]
+    reach = round_up(max(reaches))
     heights = np.linspace(-reach, reach, PROFILE_POINTS)
-    first, second = (
-        density_profile(_shaped(cloud), axis, heights - centre).total
-        for cloud, axis, centre in zip(clouds, axes, centres, strict=True)
-    )
+    densities = [
+        np.interp(heights - centre, positions, density, left=0.0, right=0.0)
+        for (positions, density), centre in zip(shapes, (first, second), strict=True)
+    ]
     peaks = [float(cloud.equilibrium.peak_density) for cloud in clouds]
     return MixtureProfiles(
-        heights=heights, centres=(centres[0], centres[1]), densities=(first, second), peaks=(peaks[0], peaks[1])
+        heights=heights, centres=(first, second), densities=(densities[0], densities[1]), peaks=(peaks[0], peaks[1])
     )
 
 
@@ -81,14 +84,6 @@ def _upwards(plan: Plan) -> Array:
     return np.asarray(-np.asarray(down, dtype=np.float64) / np.linalg.norm(down), dtype=np.float64)
 
 
-def _reach(cloud: CloudAnswer, axis: int) -> float:
+def _reach(positions: Array, density: Array) -> float:
     """How far from its centre a cloud is worth drawing. [m]"""
-    radii = np.asarray(cloud.equilibrium.condensate_radii, dtype=np.float64)
-    edge = float(radii[axis]) if radii.shape == (3,) and np.isfinite(radii[axis]) else 0.0
-    return max(_RADII * float(np.asarray(cloud.equilibrium.thermal_radii)[axis]), _EDGE * edge)
-
-
-def _shaped(cloud: CloudAnswer) -> Any:
-    """The equilibrium whose profile is drawn: in a real trap that of the harmonic trap at its bottom."""
-    real = getattr(cloud, "real_trap", None)
-    return cloud.equilibrium if real is None else real.harmonic
+    return float(np.max(np.abs(positions[density >= _FAINT * np.max(density)])))

@@ -210,9 +210,7 @@ class MixturePage(Page):
             left_out = found.ramp_failure or ("" if found.ramp is None else found.ramp.passenger_left_out)
             panel.tell(*texts)
             again = (Offer(_("Try again"), self._try_again),) if found.lost else ()
-            self._show_empty(
-                _("The passenger is not followed along the ramp."), _sentence(left_out), offers, views=True
-            )
+            self._show_empty(_("The passenger is not followed along the ramp."), _sentence(left_out), again, views=True)
             return
         panel.tell(sympathetic_verdict(passenger), ramp_verdict(found.ramp), sympathetic_caveat_lines(passenger))
         panel.show_body()
