@@ -37,7 +37,7 @@ n_c^2 + 4 n_c n_t + 2 n_t^2 and n_c^3 + 9 n_c^2 n_t + 18 n_c n_t^2 + 6 n_t^3."""
 _REACH, _ORDER = 42.0, 8
 _WEAKEST, _TINY = 1e-100, 1e-300
 _CELLS = 64
-_STEPS = 4  # of the top, which the mean field hardly moves
+_STEPS = 2  # of the top, which the mean field hardly moves
 
 
 class _Edge(NamedTuple):
@@ -124,7 +124,8 @@ class MeanField:
         if not np.all(thermal):
             below = ~thermal
             at = eta[below], g[below]
-            v, top_v, edge = self._condensed(*at, wanted[below], without[below], top[below])
+            near = _Edge(*(each[below] for each in first))
+            v, top_v, edge = self._condensed(*at, wanted[below], without[below], top[below], near)
             d = _density(top_v, v)
             m[below] = v + 2.0 * at[1] * d
             found[:, below] = self._inner(*at, top_v, m[below], v, edge)
@@ -155,11 +156,10 @@ class MeanField:
         return v, state["top"], state["m"]
 
     def _condensed(
-        self, eta: Floats, g: Floats, wanted: Floats, without: Floats, top: Floats
+        self, eta: Floats, g: Floats, wanted: Floats, without: Floats, top: Floats, near: _Edge
     ) -> tuple[Floats, Floats, _Edge]:
-        """v at the centre, the top and the edge, of clouds with a condensate."""
-        state = {"top": top}
-        edges = {"edge": _edge(g, top)}
+        """v at the centre, the top and the edge, of clouds with a condensate; `near` is the edge of a small one."""
+        state, edges = {"top": top}, {"edge": near}
         beyond = wanted - without
 
         def miss(log_x: Floats) -> Floats:
@@ -167,7 +167,7 @@ class MeanField:
             for _ in range(_STEPS):
                 m = np.minimum(v + 2.0 * g * _density(state["top"], v), eta)
                 state["top"] = eta - m
-            edges["edge"] = edge = _edge(g, state["top"], edges["edge"])
+            edges["edge"] = edge = _refined(edges["edge"], g, state["top"])
             number = self._inner_number(eta, g, state["top"], m, v, edge)
             number = number + self._outer_number(eta, g, state["top"], m, edge.outside)
             extra = number - without
@@ -300,24 +300,38 @@ def local_densities(g: float, m: float, top: float, potential: Floats, *, conden
 
 def _edge_at_centre(eta: Floats, g: Floats) -> tuple[_Edge, Floats]:
     """The edge of a condensate that is about to appear, and the top then."""
-    top = eta.copy()
+    first = _edge(g, eta)
     for _ in range(2):
-        first = _edge(g, top)
         top = eta - first.height
+        first = _refined(first, g, top)
     return first, top
 
 
-def _edge(g: Floats, top: Floats, near: _Edge | None = None) -> _Edge:
-    """Where a condensate ends. `near`: that of nearly the same top."""
+def _refined(edge: _Edge, g: Floats, top: Floats) -> _Edge:
+    """The edge for nearly the same top: one step towards it, which a search repeats as the top settles."""
+    gas = HeldBose(top=np.maximum(top, _TINY))
+    _, fall = gas.density_and_fall(edge.inside[:, np.newaxis])
+    # 1/fall^2 is nearly in proportion to v.
+    inside = np.minimum(edge.inside * (2.0 * g * fall[:, 0]) ** 2, top)
+    thermal_inside = gas.density(inside[:, np.newaxis])[:, 0]
+    height = inside + 2.0 * g * thermal_inside
+    d, fall = (each[:, 0] for each in gas.density_and_fall(edge.outside[:, np.newaxis]))
+    root = np.sqrt(edge.outside)
+    step = (edge.outside - 2.0 * g * d + height) / (2.0 * root * (1.0 + 2.0 * g * fall))
+    outside = np.clip(root - step, 0.1 * root, np.sqrt(inside)) ** 2
+    return _Edge(inside, outside, thermal_inside, _density(top, outside), height)
+
+
+def _edge(g: Floats, top: Floats) -> _Edge:
+    """Where a condensate ends."""
     # 1/fall^2 is nearly in proportion to v.
     highest = np.minimum(bose_inverse(0.5, 0.5 / g), top)
-    start = highest if near is None else np.minimum(near.inside, highest)
     target = np.log(2.0 * g)
 
     def flat(log_v: Floats) -> Floats:
         return -target - np.log(np.maximum(_fall(top, np.exp(log_v)), _TINY))
 
-    log_v = rising_roots(flat, np.full_like(g, -500.0), np.log(highest), np.log(start), slope=0.5, slopes=(0.1, 1e3))
+    log_v = rising_roots(flat, np.full_like(g, -500.0), np.log(highest), np.log(highest), slope=0.5, slopes=(0.1, 1e3))
     inside = np.exp(log_v)
     thermal_inside = _density(top, inside)
     height = inside + 2.0 * g * thermal_inside
@@ -326,8 +340,7 @@ def _edge(g: Floats, top: Floats, near: _Edge | None = None) -> _Edge:
         return root * root - 2.0 * g * _density(top, root * root) + height
 
     reach = np.sqrt(inside)
-    first = (np.sqrt(2.0) - 1.0) * reach if near is None else np.minimum(np.sqrt(near.outside), reach)
     slope = float(np.median(14.0 * g + 1e-3)) if g.size else 1.0
-    root = rising_roots(outer, np.zeros_like(g), reach, first, slope=slope, slopes=(1e-9, 1e9))
+    root = rising_roots(outer, np.zeros_like(g), reach, (np.sqrt(2.0) - 1.0) * reach, slope=slope, slopes=(1e-9, 1e9))
     outside = root * root
     return _Edge(inside, outside, thermal_inside, _density(top, outside), height)

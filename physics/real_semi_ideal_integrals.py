@@ -148,7 +148,12 @@ class CondensateSums:
         # harmonic trap, and it is followed by secants within a bracket.
         high = np.log(eta)
         fits = scale * eta * self.condensed(np.ones_like(eta))[0] >= wanted
-        first = np.log(np.clip(beyond / saturated, 1e-7, 0.3)) + np.minimum(high, 0.0)
+        # Below the roots of either part alone: a condensate that grows as a power of m, and thermal atoms as m.
+        alone = eta * (beyond / (scale * eta * self.condensed(np.ones_like(eta))[0])) ** (
+            1.0 / (self.shape.exponent + 1.0)
+        )
+        lifted = 0.73 * beyond / saturated
+        first = np.log(np.maximum(alone * lifted / (alone + lifted), _LEAST))
         first = np.where(fits, np.minimum(first, high - 1e-3), np.nan)
         low = np.full_like(high, math.log(_LEAST))
         return np.exp(rising_roots(miss, low, high, first, slope=1.5))
