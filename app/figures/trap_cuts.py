@@ -77,10 +77,11 @@ def cut_picture(shape: TrapShape, cut: Cut, levels: CloudLevels) -> Picture:
     shown = np.clip(energy, y.low - 3.0 * height, y.high + 3.0 * height)
     curves: list[Curve] = []
     labels: list[Label] = []
+    last: list[Label] = []  # gives way to the others where there is little room
     if shape.potential is not None and np.any(np.isfinite(harmonic)):
         curves.append(Curve(name="", role=Role.CLASSICAL, x=s, y=harmonic))
         _left, right = _turning_points(cut.distance, cut.harmonic, _NAMED_AT * shape.top, x, metre)
-        labels.append(Label(text=_("harmonic"), role=Role.CLASSICAL, x=right, y=_NAMED_AT * top, side=1))
+        last.append(Label(text=_("harmonic"), role=Role.CLASSICAL, x=right, y=_NAMED_AT * top, side=1))
     depth = shape.answer.survey.depth
     if depth is not None and depth / kelvin < y.high:
         curves.append(_level(x, depth / kelvin, Role.DECADE))
@@ -112,7 +113,7 @@ def cut_picture(shape: TrapShape, cut: Cut, levels: CloudLevels) -> Picture:
         y=y,
         curves=tuple(curves),
         marks=marks,
-        labels=tuple(labels),
+        labels=(*labels, *last),
         summary=_summary(shape, cut, levels),
         note=_note(shape, cut),
     )

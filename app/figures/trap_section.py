@@ -108,8 +108,18 @@ def section_picture(shape: TrapShape, section: Section, levels: CloudLevels) -> 
         marks=tuple(marks),
         labels=tuple(labels),
         summary=_("The potential over the plane {plane}.").format(plane=section.plane.name),
-        note=_("the way out lies beside this plane") if section.aside else "",
+        note=_note(section),
     )
+
+
+def _note(section: Section) -> str:
+    if section.aside:
+        return _("the way out lies beside this plane")
+    if section.escape is not None:
+        x, y = section.escape[:2]
+        if not (section.x[0] <= x <= section.x[-1] and section.y[0] <= y <= section.y[-1]):
+            return _("the way out lies further out")
+    return ""
 
 
 def _title(shape: TrapShape, section: Section) -> str:

@@ -47,8 +47,8 @@ def texts(picture: Picture) -> list[str]:
 def test_a_cut_marks_depth_cloud_condensate_and_way_out() -> None:
     levels = CloudLevels(thermal=boltzmann * 0.62e-6, filled=boltzmann * 0.3e-6)
     along_x, _, upright = cuts(preset("crossed_beams_rubidium"), levels)
-    assert texts(along_x) == ["harmonic", "depth 6.78 µK", "kT 620 nK", "µ 300 nK"]
-    assert texts(upright)[-1] == "way out"
+    assert texts(along_x) == ["depth 6.78 µK", "kT 620 nK", "µ 300 nK", "harmonic"]
+    assert texts(upright)[-2:] == ["way out", "harmonic"]
     assert (upright.title, upright.note) == ("along z and gravity", "157.6 Hz · sag 9.38 µm")
     assert upright.marks[0].x < 0.0
     assert upright.marks[0].y == pytest.approx(6.78, rel=2e-3)
@@ -99,6 +99,8 @@ def test_a_section_without_the_way_out_says_so() -> None:
     picture = section(preset("crossed_beams_rubidium"), "xy", CloudLevels(thermal=boltzmann * 0.62e-6))
     assert picture.note == "the way out lies beside this plane"
     assert "way out" not in texts(picture)
+    far = section(preset("single_beam_lithium"), "xz", CloudLevels(thermal=boltzmann * 3.4e-5))
+    assert far.note == "the way out lies further out"
 
 
 def test_a_section_of_what_is_not_held_has_all_its_energies_on_the_scale() -> None:
