@@ -88,7 +88,11 @@ def central_trap(plan: Plan) -> HarmonicTrap | RealTrap:
     from physics.real_trap import real_trap
 
     found = _held(plan).survey
-    return surveyed_trap(plan) if found.depth is None or found.volume_curve is None else real_trap(found)
+    if found.depth is None or found.volume_curve is None:
+        return surveyed_trap(plan)
+    trap = real_trap(found)
+    trap.levels.prepare()
+    return trap
 
 
 def _held(plan: Plan) -> TrapAnswer:

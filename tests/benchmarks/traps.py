@@ -4,9 +4,12 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable, Iterator
+from functools import partial
 
 import numpy as np
 
+from physics.cloud import Cloud, Model, equilibrium
+from physics.particles import Statistics
 from physics.species import load_species
 from physics.traps import Coils, GaussianBeam, Trap
 from physics.traps.survey import survey
@@ -38,6 +41,11 @@ def median(task: Callable[[], object]) -> float:
     return 1e3 * float(np.median(times))
 
 
+def condensed(cloud: Cloud, model: Model) -> float:
+    """Condensed fraction, worked out anew."""
+    return float(equilibrium(cloud, model).condensate_fraction)
+
+
 def rows() -> Iterator[tuple[str, float, float | None]]:
     """(what, measured, goal)."""
     state = load_species("87Rb").state("F=1 mF=-1")
@@ -48,4 +56,11 @@ def rows() -> Iterator[tuple[str, float, float | None]]:
     curve = found.volume_curve
     assert curve is not None
     energies = curve.ceiling * np.linspace(0.01, 1.0, 500)
+    for model in (Model.IDEAL, Model.SEMI_IDEAL, Model.HARTREE_FOCK):
+        cloud = Cloud(
+            trap=found, statistics=Statistics.BOSE, mass=state.mass, atoms=5e5, temperature=4e-7,
+            scattering_length=5.3e-9,
+        )  # fmt: skip
+        goal = None if model is Model.HARTREE_FOCK else 5.0
+        yield f"a condensed cloud in crossed beams, {model.value} [ms]", median(partial(condensed, cloud, model)), goal
     yield "density of states at 500 energies [ms]", median(lambda: curve.density_of_states(energies)), 5.0
