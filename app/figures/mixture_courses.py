@@ -14,7 +14,7 @@ from app.figures.ramp_columns import ATOMS, TEMPERATURE, Column, upright, value_
 from app.language import translate as _
 
 DEGENERACY = Column(name="reduced_temperature", symbol="T/Tc", label=_("T/Tc, T/TF"))
-CONTACT_RATE = Column(name="contact_rate", symbol="Γ₁₂", label=_("collisions/s, per atom"))
+CONTACT_RATE = Column(name="contact_rate", symbol="Γ₁₂", label=_("collisions/s"))
 OVERLAP = Column(name="overlap_share", symbol="overlap", label=_("overlap"), linear=True)
 RELAXATION = Column(name="relaxation_time", symbol="τ₁₂", label=_("rethermalisation"), unit="s", prefixed=True)
 

@@ -127,6 +127,15 @@ class MixturePage(Page):
             self._found = answer
             self._show()
 
+    def show_end(self, *, stopped: bool) -> None:
+        super().show_end(stopped=stopped)
+        if stopped and self._built and self.panel.is_empty:
+            self._show_empty(
+                _("The simulation of the ramp was stopped."),
+                _("Compute in the line below begins it again."),
+                views=True,
+            )
+
     # ---------------------------------------------------------------- showing
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
