@@ -9,7 +9,7 @@ _SOURCE = "as the quantity without this word, in a harmonic trap without end"
 HARMONIC_ROWS = (
     Row(
         name="harmonic_reduced_temperature",
-        label="reduced temperature, harmonic trap",
+        label="reduced temperature (harmonic)",
         symbol="T/Tc harm. or T/TF harm.",
         unit="1",
         units=("1",),
@@ -21,7 +21,7 @@ HARMONIC_ROWS = (
     ),
     Row(
         name="harmonic_peak_phase_space_density",
-        label="peak phase-space density, harmonic trap",
+        label="phase-space density (harmonic)",
         symbol="D harm.",
         unit="1",
         units=("1",),
@@ -33,7 +33,7 @@ HARMONIC_ROWS = (
     ),
     Row(
         name="harmonic_condensate_fraction",
-        label="condensed fraction, harmonic trap",
+        label="condensed fraction (harmonic)",
         symbol="N₀/N harm.",
         unit="1",
         units=("%", "1"),
