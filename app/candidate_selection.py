@@ -46,6 +46,22 @@ def with_candidates(plan: Plan, chosen: Collection[Which]) -> Plan:
     return replace(plan, candidates=replace(plan.candidates, keys=tuple(keys), candidates=tuple(single)))
 
 
+def with_conditions(plan: Plan, choice: CandidateChoice) -> Plan:
+    """The plan with one of its candidates in conditions of its own, or again in the plan's where it has none."""
+    which = (choice.key, choice.state)
+    given = plan.candidates
+    keys = given.keys if given.keys or given.candidates else species_keys()
+    others = tuple(
+        other
+        for other in given.candidates
+        if (load_species(other.key).key, load_species(other.key).state(other.state).name) != which
+    )
+    single = (*others, choice) if _has_own(choice) or choice.key not in keys else others
+    if keys == species_keys() and not single:
+        keys = ()
+    return replace(plan, candidates=replace(given, keys=keys, candidates=single))
+
+
 def _has_own(choice: CandidateChoice) -> bool:
     return any(
         number is not None for number in (choice.atoms, choice.temperature, choice.field, choice.scattering_length)

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import math
 import os
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Hashable, Sequence
 from dataclasses import dataclass, replace
 from functools import partial
 from queue import Empty, Queue
@@ -71,6 +71,11 @@ def best_evaporation(plan: Plan, tick: Tick | None = None) -> EvaporationResult:
             reason=short.format(density=number(final["peak_phase_space_density"], 2)), assumed=assumed
         )
     return EvaporationResult(atoms=final["atoms"], time=final["time"], assumed=assumed)
+
+
+def evaporation_key(plan: Plan) -> Hashable:
+    """What the best evaporation of a candidate depends on."""
+    return plan.species, plan.trap, plan.cloud, plan.losses, plan.target, plan.limits
 
 
 def hopeless(row: CandidateRow) -> str:

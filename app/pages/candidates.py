@@ -9,15 +9,16 @@ from typing import Any
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QDialog, QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
-from app.answers.candidate_evaporation import EvaporationResult, evaporate_rows, hopeless
+from app.answers.candidate_evaporation import EvaporationResult, evaporate_rows, evaporation_key, hopeless
 from app.answers.candidate_row import CandidateRow
 from app.answers.candidate_thresholds import Thresholds, thresholds_of
 from app.answers.candidates import CandidatesAnswer, candidates_answer, candidates_of
 from app.candidate_choices import Basis
 from app.candidate_columns import COLUMNS, USUAL_COLUMNS
 from app.candidate_csv import candidates_csv
-from app.candidate_order import SCORE, Score, Sieve, order_by, read_sieve, read_weight, score_rows
-from app.candidate_selection import with_candidates, with_species_of
+from app.candidate_memory import CandidateMemory, memory_from
+from app.candidate_order import SCORE, Score, order_by, score_rows
+from app.candidate_selection import with_candidates, with_conditions, with_species_of
 from app.candidate_words import heading, summary, unit_for_column
 from app.engine import CloudAnswer
 from app.figures.candidates_chart import ranked_picture
@@ -32,6 +33,7 @@ from app.widgets.candidate_bar import BASES, ChoiceBar, ViewBar
 from app.widgets.candidate_model import Shown
 from app.widgets.candidate_rules import CandidateRules
 from app.widgets.candidate_table import CandidateTable
+from app.widgets.conditions_dialog import ConditionsDialog
 from app.widgets.detail import Detail
 from app.widgets.single_plot_page import SinglePlotPage
 from app.widgets.species_dialog import SpeciesDialog
@@ -92,6 +94,7 @@ class CandidatesPage(SinglePlotPage):
         self.table.unit_chosen.connect(self._choose_unit)
         self.table.hide_asked.connect(lambda name: self.choices.toggle(name, False))
         self.table.use_asked.connect(self._use)
+        self.table.conditions_asked.connect(self.ask_conditions)
         self.table.detail_changed.connect(self._explain)
         self.splitter = QSplitter(Qt.Orientation.Vertical)
         self.splitter.setHandleWidth(1)
@@ -127,35 +130,20 @@ class CandidatesPage(SinglePlotPage):
 
     def memory(self) -> dict[str, tuple[str, ...]]:
         """Columns, order, filters and weights, as texts."""
-        order = (self.sorted_by, "descending" if self.descending else "ascending") if self.sorted_by else ()
-        sieve = self.rules.sieve
-        return {
-            "columns": self.names,
-            "order": order,
-            "filters": (*(trait.value for trait in sieve.traits), *(bound.written for bound in sieve.bounds)),
-            "weights": tuple(weight.written for weight in self.rules.weights),
-        }
+        return CandidateMemory(
+            columns=self.names,
+            ordered_by=self.sorted_by,
+            descending=self.descending,
+            sieve=self.rules.sieve,
+            weights=self.rules.weights,
+        ).texts()
 
-    def recall(self, memory: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
+    def recall(self, texts: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
         """Take up what `memory` gave; what cannot be read is left out."""
+        kept = memory_from(texts)
         self._units = dict(units)
-        self.choices.names = tuple(name for name in memory.get("columns", ()) if name in COLUMNS) or USUAL_COLUMNS
-        order = tuple(memory.get("order", ()))
-        if len(order) == 2 and (order[0] in COLUMNS or order[0] == SCORE):
-            self.sorted_by, self.descending = order[0], order[1] == "descending"
-        sieve, weights = Sieve(), []
-        for text in memory.get("filters", ()):
-            try:
-                one = read_sieve([text])
-            except ValueError:
-                continue
-            sieve = Sieve(traits=(*sieve.traits, *one.traits), bounds=(*sieve.bounds, *one.bounds))
-        for text in memory.get("weights", ()):
-            try:
-                weights.append(read_weight(text))
-            except ValueError:
-                continue
-        self.rules.set_rules(sieve, weights)
+        self.choices.names, self.sorted_by, self.descending = kept.columns, kept.ordered_by, kept.descending
+        self.rules.set_rules(kept.sieve, kept.weights)
         self._count_rules()
 
     def show_units(self, units: Mapping[str, str]) -> None:
@@ -377,6 +365,19 @@ class CandidatesPage(SinglePlotPage):
                 self.plan_edited.emit(changed, _("species to compare"), "")
         dialog.deleteLater()
 
+    def ask_conditions(self, row: CandidateRow) -> None:
+        """Let the user give a candidate an atom number, a temperature, a field or a length of its own."""
+        if self.cloud is None:
+            return
+        plan, species = self.cloud.plan, row.plan.species
+        usual = {"atoms": plan.cloud.atoms.text, "temperature": plan.cloud.temperature.text}
+        usual["field"] = "" if species.field is None else species.field.text
+        dialog = ConditionsDialog(row.candidate, usual, self)
+        if dialog.exec() == QDialog.DialogCode.Accepted and dialog.choice != row.candidate:
+            changed = with_conditions(plan, dialog.choice)
+            self.plan_edited.emit(changed, _("conditions of {key}").format(key=row.key), "")
+        dialog.deleteLater()
+
     def ask_evaporation(self) -> None:
         """Work out the best evaporation of the rows on show."""
         self._evaporating = tuple(row for row in self._rows if row.evaporation is None)
@@ -401,11 +402,6 @@ class CandidatesPage(SinglePlotPage):
             self.empty.take_focus()
         else:
             self.table.take_focus()
-
-
-def evaporation_key(plan: Plan) -> object:
-    """What the best evaporation of a candidate depends on."""
-    return plan.species, plan.trap, plan.cloud, plan.losses, plan.target, plan.limits
 
 
 def _judge(plan: Plan, depends_on: object, watch: Watch) -> _Found | None:

@@ -16,13 +16,14 @@ NARROWEST = 6  # digits of a column of numbers
 
 class CandidateTable(QTableView):
     """Signals: sort_asked(name) by the column of a quantity or the score; unit_chosen(name, unit); hide_asked(name);
-    use_asked(row), the candidate that is to become the plan's; detail_changed(str) with all that can be said of the
-    cell the keyboard is on."""
+    use_asked(row), the candidate that is to become the plan's; conditions_asked(row), to be compared in conditions of
+    its own; detail_changed(str) with all that can be said of the cell the keyboard is on."""
 
     sort_asked = Signal(str)
     unit_chosen = Signal(str, str)
     hide_asked = Signal(str)
     use_asked = Signal(object)
+    conditions_asked = Signal(object)
     detail_changed = Signal(str)
 
     def __init__(self, parent: QWidget | None = None) -> None:
@@ -148,11 +149,14 @@ class CandidateTable(QTableView):
         menu = self.head_menu(index.column()) or QMenu(self)
         first = menu.actions()[0] if menu.actions() else None
         use, copy = menu.addAction(_("Use this species")), menu.addAction(_("Copy rows"))
+        own = menu.addAction(_("Conditions of its own…"))
+        own.setToolTip(_("Compare it with another atom number, temperature, field or scattering length"))
+        own.triggered.connect(lambda: self.conditions_asked.emit(row))
         use.setToolTip(_("Put this species and state into the plan"))
         use.triggered.connect(lambda: self.use_asked.emit(row))
         copy.triggered.connect(self.copy)
         if first is not None:
-            for action in (use, copy):
+            for action in (use, own, copy):
                 menu.insertAction(first, action)
             menu.insertSeparator(first)
         return menu

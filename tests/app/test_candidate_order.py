@@ -14,8 +14,9 @@ from app.answers.candidates import candidates_answer
 from app.candidate_choices import CandidateChoice, CandidatesChoice
 from app.candidate_columns import COLUMNS, USUAL_COLUMNS, column, columns_in
 from app.candidate_csv import candidates_csv
+from app.candidate_memory import MEMORY_KEYS, CandidateMemory, memory_from
 from app.candidate_order import Sieve, Trait, Weight, order_by, read_bound, read_sieve, read_weight, score_rows
-from app.candidate_selection import with_candidates, with_species_of
+from app.candidate_selection import with_candidates, with_conditions, with_species_of
 from app.candidate_words import cell_text, short_state, unit_for_column
 from app.plan import DEFAULT_PLAN, PlanError
 from app.quantity_row import Group
@@ -174,6 +175,24 @@ def test_a_table_of_numbers_leaves_the_unknown_empty(rows: tuple[CandidateRow, .
         assert line.endswith(f"{cell.value!r},{cell.sureness.value}" if cell.known else ",,unknown")
 
 
+# --- what is remembered ---
+
+
+def test_what_is_remembered_comes_back_and_what_cannot_be_read_is_left_out() -> None:
+    memory = CandidateMemory(
+        columns=("mass", "sag"),
+        ordered_by="sag",
+        descending=False,
+        sieve=read_sieve(["bosons", "sag <= 50 um"]),
+        weights=(read_weight("mass=2 less"),),
+    )
+    assert tuple(memory.texts()) == MEMORY_KEYS
+    assert memory_from(memory.texts()) == memory
+    assert memory_from({}) == CandidateMemory()
+    damaged = {"columns": ("sagg",), "order": ("sag",), "filters": ("sag <=", "trapped"), "weights": ("=",)}
+    assert memory_from(damaged) == CandidateMemory(sieve=Sieve(traits=(Trait.TRAPPED,)))
+
+
 # --- which candidates ---
 
 
@@ -192,6 +211,16 @@ def test_chosen_states_are_written_as_briefly_as_can_be() -> None:
     )
     with pytest.raises(PlanError, match="at least one species"):
         with_candidates(plan, ())
+
+
+def test_conditions_of_its_own_leave_the_others_as_they_are() -> None:
+    field = read_quantity("850 G", MAGNETIC_FIELD)
+    own = CandidateChoice(key="6Li", state="F=1/2 mF=+1/2 and F=1/2 mF=-1/2", field=field)
+    plan = with_conditions(DEFAULT_PLAN, own)
+    assert plan.candidates == CandidatesChoice(keys=species_keys(), candidates=(own,))
+    assert with_conditions(plan, replace(own, field=None)) == DEFAULT_PLAN
+    alone = replace(DEFAULT_PLAN, candidates=CandidatesChoice(candidates=(own,)))
+    assert with_conditions(alone, replace(own, field=None)).candidates.candidates == (replace(own, field=None),)
 
 
 def test_a_candidate_becomes_the_plan_s_own_species(rows: tuple[CandidateRow, ...]) -> None:

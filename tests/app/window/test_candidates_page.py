@@ -19,6 +19,7 @@ from app.candidate_order import Trait
 from app.pages.candidates import CandidatesPage
 from app.plan import DEFAULT_PLAN, Plan, read_plan
 from app.widgets.candidate_model import Kind
+from app.widgets.conditions_dialog import ConditionsDialog
 from app.widgets.species_dialog import SpeciesDialog
 from app.window.main_window import MainWindow
 
@@ -304,6 +305,38 @@ def test_species_are_ticked_in_a_dialog(compared: MainWindow, settle: Settle, mo
     settle(compared)
     assert names(compared) == ["88Sr  ground state"]
     assert compared.document.plan.candidates.keys == ("88Sr",)
+
+
+def test_a_candidate_is_compared_in_a_field_of_its_own(
+    compared: MainWindow, settle: Settle, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    page = page_of(compared)
+
+    def typed(dialog: ConditionsDialog) -> int:
+        okay = dialog.buttons.button(dialog.buttons.StandardButton.Ok)
+        dialog.fields["field"].setText("160 furlongs")
+        dialog.fields["field"].textEdited.emit("160 furlongs")
+        dialog.fields["field"].commit()
+        assert not okay.isEnabled()
+        dialog.fields["field"].setText("160 G")
+        dialog.fields["field"].textEdited.emit("160 G")
+        assert okay.isEnabled()
+        return int(ConditionsDialog.DialogCode.Accepted)
+
+    monkeypatch.setattr(ConditionsDialog, "exec", typed)
+    place = names(compared).index("85Rb  F=2 mF=-2")
+    menu = page.table.menu_at(page.table.model_.index(place, 2))
+    assert menu is not None
+    next(action for action in menu.actions() if action.text().startswith("Conditions")).trigger()
+    settle(compared)
+    assert len(names(compared)) == 16
+    row = page.table.model_.shown.rows[place]
+    assert row.cell("scattering_length").known
+    assert row.failure is None
+    assert [c.key for c in compared.document.plan.candidates.candidates] == ["85Rb"]
+    compared.document.stack.undo()
+    settle(compared)
+    assert compared.document.plan == FEW
 
 
 def test_what_is_known_of_a_cell_is_there_for_readers_without_a_mouse(compared: MainWindow) -> None:
