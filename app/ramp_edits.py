@@ -87,7 +87,7 @@ def end_of(move: MoveChoice, standing: float, duration: float) -> float:
 
 
 def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
-    """An exponential to a tenth in five seconds, of the depth, of the power of all beams, or of the knife."""
+    """An exponential to a tenth in five seconds, of the depth, of the knife where there is one, or of all beams."""
     duration = read_quantity(USUAL_DURATION, DURATION)
     trap = plan.trap
     if trap.harmonic:
@@ -99,6 +99,10 @@ def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
         end = quantity(USUAL_SHARE * depth, _depth_unit(USUAL_SHARE * depth), kind=DEPTH, digits=3)
         moves: tuple[MoveChoice, ...] = (MoveChoice(control=_DEPTH, start=start, end=end, shape=Shape.EXPONENTIAL),)
         return (StageChoice(duration=duration, moves=moves, label="lower the depth"),)
+    coils = trap.coils
+    if coils is not None and coils.knife is not None:
+        move = MoveChoice(control=Control(Knob.KNIFE), end=_lower_knife(plan, coils.knife), shape=Shape.EXPONENTIAL)
+        return (StageChoice(duration=duration, moves=(move,), label="lower the knife"),)
     beams = [beam for beam in trap.beams if beam.on and beam.power.value > 0.0]
     if beams:
         moves = tuple(
@@ -110,15 +114,21 @@ def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
             for beam in beams
         )
         return (StageChoice(duration=duration, moves=moves, label="lower the light"),)
-    coils = trap.coils
-    if coils is not None and coils.knife is not None:
-        # Above the resonance at the bottom of the trap, which a bias field sets: half-way down is within any of them.
-        share = 0.5 if coils.bias is not None and coils.bias.value else USUAL_SHARE
-        move = MoveChoice(
-            control=Control(Knob.KNIFE), end=scaled(coils.knife, share, Knob.KNIFE), shape=Shape.EXPONENTIAL
-        )
-        return (StageChoice(duration=duration, moves=(move,), label="lower the knife"),)
     return (StageChoice(duration=duration, label="hold"),)
+
+
+def _lower_knife(plan: Plan, knife: Quantity) -> Quantity:
+    """A tenth of what the knife stands above the resonance at the bottom of the trap, which a bias field sets."""
+    from app.answers.trap import trap_answer
+
+    potential = trap_answer(plan).survey.potential
+    bias = plan.trap.coils.bias if plan.trap.coils is not None else None
+    bottom = 0.0
+    if potential is not None and potential.knife_energy and bias is not None:
+        bottom = knife.value * potential.zeeman_slope * abs(bias.value) / potential.knife_energy
+    if not 0.0 <= bottom < knife.value:
+        bottom = 0.0
+    return scaled(knife, (bottom + USUAL_SHARE * (knife.value - bottom)) / knife.value, Knob.KNIFE)
 
 
 def with_known_depth(plan: Plan) -> Plan:

@@ -40,6 +40,7 @@ from app.figures.layout import (
     lay_out,
     note_place,
     shortened,
+    title_size,
     widest,
 )
 from app.figures.picture import Curve, Field, Picture, Role
@@ -86,9 +87,10 @@ def draw_frame(picture: Picture, axes: Axes, theme: Theme) -> Layout:
     _draw_ticks(axes, theme, layout, with_grid=picture.field is None)
     _write_axis_titles(picture, axes, theme, layout)
     if layout.title_y is not None:
-        title = shortened(picture.title, theme.title_size, room[2] - 2.0 * PAD, text_size)
+        size = title_size(picture, theme)
+        title = shortened(picture.title, size, room[2] - 2.0 * PAD, text_size)
         place = ((room[0] + PAD) / page[0], layout.title_y / page[1])
-        figure.text(*place, title, size=theme.title_size, weight="bold", color=theme.foreground, va="center_baseline")
+        figure.text(*place, title, size=size, weight="bold", color=theme.foreground, va="center_baseline")
     for entry, x, y in layout.legend:
         _draw_entry(figure, theme, entry, x, y)
     if picture.field is not None:

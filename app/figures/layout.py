@@ -74,13 +74,18 @@ class Layout:
     y_title: str
 
 
+def title_size(picture: Picture, theme: Theme) -> float:
+    """Type size of the title [pt]; that of a small multiple leaves room for its note."""
+    return theme.title_size if picture.y.titled else theme.font_size
+
+
 def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, float], measure: Measure) -> Layout:
     """Fits axes and all around them into `room` (left, bottom, width, height) [pt]."""
     left, bottom, width, height = room
     line = theme.font_size * LINE
     below = PAD + (line if frame_title(picture.x) else 0.0) + TICK_GAP + theme.small_size * LINE + TICK
     entries = legend_entries(picture)
-    title_height = theme.title_size * LINE + 2.0 if picture.title else 0.0
+    title_height = title_size(picture, theme) * LINE + 2.0 if picture.title else 0.0
     rows = _legend_rows(entries, theme, width - 2.0 * PAD, measure)
     if height - below - title_height - len(rows) * line < 4.0 * SMALLEST:
         rows = ()
@@ -112,7 +117,7 @@ def lay_out(picture: Picture, theme: Theme, room: tuple[float, float, float, flo
     return Layout(
         left=left + before, bottom=bottom + below, width=inner_width, height=inner_height,
         title_left=left + PAD, right_end=left + width - PAD,
-        title_y=bottom + height - PAD - 0.5 * theme.title_size * LINE if title_height else None,
+        title_y=bottom + height - PAD - 0.5 * title_size(picture, theme) * LINE if title_height else None,
         legend=tuple(legend), x_ticks=x_ticks, y_ticks=y_ticks, y_title=y_title,
     )  # fmt: skip
 
@@ -176,5 +181,7 @@ def note_place(picture: Picture, layout: Layout, theme: Theme, note: str, measur
         right, middle = layout.left + layout.width - PAD, layout.bottom + PAD + 0.5 * theme.small_size * LINE
         return shortened(note, theme.small_size, layout.width - 2.0 * PAD, measure), right, middle
     # bold type is up to a fifth wider than what is measured
-    room = layout.right_end - layout.title_left - 1.2 * measure(picture.title, theme.title_size)[0] - ENTRY_GAP
+    room = (
+        layout.right_end - layout.title_left - 1.2 * measure(picture.title, title_size(picture, theme))[0] - ENTRY_GAP
+    )
     return shortened(note, theme.small_size, room, measure), layout.right_end, layout.title_y

@@ -15,6 +15,9 @@ from app.units import best_unit, format_quantity
 from physics.constants import boltzmann
 from physics.evaporation import Evaporation
 
+_NEAR, _BESIDE = 0.03, 0.15
+"""Of a decade: what is so near to the end of an axis gets so much room."""
+
 MOST_DECADES = 6
 """Of a logarithmic axis: what lies further below is not worth the ink."""
 
@@ -58,7 +61,7 @@ class Column:
 
 ATOMS = Column(name="atoms", symbol="N", label=_("atoms N"))
 TEMPERATURE = Column(name="temperature", symbol="T", label=_("temperature T"), unit="K", prefixed=True)
-DENSITY = Column(name="peak_phase_space_density", symbol="D", label=_("phase-space density D"))
+DENSITY = Column(name="peak_phase_space_density", symbol="D", label=_("phase-space density"))
 TRUNCATION = Column(name="truncation", symbol="η", label=_("truncation η = U/kT"), linear=True)
 TRAP_DEPTH = Column(name="depth", symbol="U", label=_("depth U/k"), unit="K", factor=boltzmann, prefixed=True)
 RATE = Column(name="elastic_collision_rate", symbol="γel", label=_("collisions/s, mean"))
@@ -194,6 +197,16 @@ def _bar(axis: Axis, time: float, value: float, sigma: float | None) -> Curve | 
     return Curve(name="", role=Role.MEASURED, x=np.array([time, time]), y=np.array([low, high]))
 
 
+def decades(least: float, most: float) -> tuple[float, float]:
+    """Exponents of whole decades that hold a range; a little more where it ends at one, instead of a whole one."""
+    low, high = math.log10(least), math.log10(most)
+    bottom, top = math.floor(low + 1e-6), math.ceil(high - 1e-6)
+    return (
+        bottom - (_BESIDE if low - bottom < _NEAR else 0.0),
+        top + (_BESIDE if top - high < _NEAR else 0.0),
+    )
+
+
 def value_axis(column: Column, values: Sequence[Array], points: Sequence[float]) -> Axis:
     """Limits that move in coarse steps, so that a change of the ramp seldom changes the axis."""
     finite = np.concatenate([*values, np.asarray(points, dtype=np.float64), np.empty(0)])
@@ -205,8 +218,8 @@ def value_axis(column: Column, values: Sequence[Array], points: Sequence[float])
         )
     if not finite.size:
         return Axis(label=column.label, unit=column.unit, low=0.1, high=1.0, log=True, titled=False)
-    high = math.ceil(math.log10(float(np.max(finite))) + 0.03)
-    low = max(math.floor(math.log10(float(np.min(finite))) - 0.03), high - MOST_DECADES)
+    low, high = decades(float(np.min(finite)), float(np.max(finite)))
+    low = max(low, high - MOST_DECADES)
     return Axis(
         label=column.label,
         unit=column.unit,

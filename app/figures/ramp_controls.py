@@ -10,6 +10,7 @@ import numpy as np
 
 from app.control_kinds import CONTROL_KINDS
 from app.figures.picture import Array, Axis, Curve, Label, Mark, Picture, Role
+from app.figures.ramp_columns import decades
 from app.language import translate as _
 from app.units import factor, format_quantity
 from physics.ramp_shapes import Shape
@@ -190,7 +191,7 @@ def value_axis(curve: ControlCurve) -> Axis:
     finite = curve.values[np.isfinite(curve.values)]
     least, most = (float(np.min(finite)), float(np.max(finite))) if finite.size else (0.0, 1.0)
     if least > 0.0 and most / least >= _LOG_FROM:
-        low, high = math.floor(math.log10(least) - 0.03), math.ceil(math.log10(most) + 0.03)
+        low, high = decades(least, most)
         return Axis(
             label=curve.title, unit=unit, low=10.0**low, high=10.0**high, log=True, prefixed=prefixed, titled=False
         )

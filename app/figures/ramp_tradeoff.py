@@ -17,12 +17,14 @@ def eta_picture(design: RampDesign) -> Picture:
     trade = design.trade_off
     reached = trade.reached.astype(bool)
     atoms = trade.atoms
-    low, high = _decades(atoms[np.isfinite(atoms) & (atoms > 0.0)])
+    # Runs that miss the target end with hardly an atom: they do not set the range where others reach it.
+    end = float(design.simulated.atoms[-1]) if len(design.simulated.time) else math.nan
+    told = np.append(atoms[reached] if np.any(reached) else atoms[atoms > 0.0], end)
+    low, high = _decades(told[np.isfinite(told)])
     curves = (
         Curve(name=_("reaches the target"), role=Role.FIRST, x=trade.truncation, y=np.where(reached, atoms, np.nan)),
         Curve(name=_("misses it"), role=Role.CLASSICAL, x=trade.truncation, y=np.where(reached, np.nan, atoms)),
     )
-    end = float(design.simulated.atoms[-1]) if len(design.simulated.time) else math.nan
     marks = (Mark(name=_("chosen"), role=Role.CLOUD, x=design.truncation, y=end),) if low <= end <= high else ()
     return Picture(
         title=_("atoms left against η"),

@@ -317,6 +317,20 @@ class RampPage(Page):
         self._show()
         self.part_wanted.emit()
 
+    @property
+    def problems(self) -> tuple[str, ...]:
+        """What cannot be read, as sentences."""
+        if not self._built:
+            return ()
+        editors = (self.panel.stages, self.panel.design, self.panel.measured)
+        return tuple(editor.problem for editor in editors if editor.problem)
+
+    def discard_edits(self) -> None:
+        """Drop texts that could not be read: another plan is about to be shown."""
+        if self._built:
+            for editor in (self.panel.stages, self.panel.design, self.panel.measured):
+                editor.discard_edits()
+
     def _problem_changed(self, sentence: str) -> None:
         """A field of the table cannot be read: the plots stay, marked as not following it."""
         for plot in self._plots:

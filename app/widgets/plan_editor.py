@@ -59,6 +59,15 @@ class PlanEditor(QWidget):
         self._errors.clear()
         self._show_problem()
 
+    def discard_edits(self) -> None:
+        """Drop texts that could not be read: another plan is about to be shown."""
+        for field in list(self._errors):
+            field.blockSignals(True)
+            field.revert()
+            field.blockSignals(False)
+        self._errors.clear()
+        self._show_problem()
+
     @property
     def problem(self) -> str:
         """What cannot be read, in a sentence; empty while all is well."""

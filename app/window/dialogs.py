@@ -111,6 +111,19 @@ def shortcuts_dialog(parent: QWidget | None = None) -> TextDialog:
             ],
         )
     )
+    parts.append(
+        _section(
+            "On the page Ramp",
+            [
+                (
+                    "Read all values",
+                    "Left, Right",
+                    "On a plot of the cloud: at the time before or after; Shift for ten",
+                ),
+                ("Move the end of a stage", "Arrow keys", "On a plot of a control: M chooses the next one"),
+            ],
+        )
+    )
     return TextDialog("Keyboard shortcuts", "".join(parts), QSize(720, 600), parent)
 
 

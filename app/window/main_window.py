@@ -104,7 +104,9 @@ class MainWindow(QMainWindow):
         self.desk = Desk(self.looks.theme)
         self.banner = Banner()
         self.why = Why(self)
-        self.files = Files(self.document, self.settings, self, self.tell, lambda: self.desk.bench.problems)
+        self.files = Files(
+            self.document, self.settings, self, self.tell, lambda: (*self.desk.bench.problems, *self.desk.ramp.problems)
+        )
         self.recovery = Recovery(self.document, self.settings.state_folder, self)
         self.actions_by_id = install_actions(self)
         self._recent = QMenu("Open &recent", self)
@@ -138,6 +140,7 @@ class MainWindow(QMainWindow):
             page.plan_edited.connect(self._edit_on_page)
         # the plan goes to the forms and becomes an answer
         document.loading.connect(desk.bench.discard_edits)
+        document.loading.connect(desk.ramp.discard_edits)
         document.plan_changed.connect(self._plan_changed)
         desk.bench.problems_changed.connect(self._judge)
         desk.bench.trap.solving_wanted.connect(self._solve)
