@@ -22,7 +22,7 @@ from physics.checks import Floats
 _VECTOR = (1, 1557, 1087, 701, 1163, 321, 1649, 207, 1827, 1203, 1935, 1869)
 
 DIMENSIONS = len(_VECTOR)
-"""The most inputs that can be uncertain at once."""
+"""Inputs that the lattice spreads jointly; of more, each has its draws at even quantiles in an order by chance."""
 
 
 def lattice(count: int, dimensions: int, *, seed: int = 0) -> Floats:
@@ -31,7 +31,7 @@ def lattice(count: int, dimensions: int, *, seed: int = 0) -> Floats:
     Parameters
     ----------
     count : int. Draws; made for 4096, good for other powers of two.
-    dimensions : int. From 0 to `DIMENSIONS`.
+    dimensions : int. Best up to `DIMENSIONS`.
     seed : int. Equal seeds give equal draws.
 
     Returns
@@ -40,12 +40,12 @@ def lattice(count: int, dimensions: int, *, seed: int = 0) -> Floats:
 
     Raises
     ------
-    ValueError : for more dimensions than the lattice has, or no draws.
+    ValueError : for no draws, or fewer dimensions than none.
     """
     if count < 1:
         raise ValueError(f"number of draws must be 1 or more, got {count}")
-    if not 0 <= dimensions <= DIMENSIONS:
-        raise ValueError(f"number of uncertain inputs must be 0 to {DIMENSIONS}, got {dimensions}")
+    if dimensions < 0:
+        raise ValueError(f"number of uncertain inputs must not be negative, got {dimensions}")
     return _deviates(count, dimensions, seed)
 
 
@@ -59,7 +59,9 @@ def _deviates(count: int, dimensions: int, seed: int) -> Floats:
     random = Random(seed)
     shift = np.array([random.random() for _ in range(dimensions)])
     vector = np.array(_VECTOR[:dimensions], dtype=np.int64)
-    points = (np.arange(count)[:, np.newaxis] * vector % count / count + shift) % 1.0
+    places = np.arange(count)[:, np.newaxis] * vector % count
+    more = [random.sample(range(count), count) for _ in range(dimensions - len(vector))]
+    points = (np.column_stack([places, *more]) / count + shift) % 1.0
     # A point at 0 would be infinitely far out; the shift keeps all from it, but for its own rounding.
     inside = np.clip(points, 1e-16, 1.0 - 1e-16)
     deviates = np.array([*map(NormalDist().inv_cdf, inside.ravel().tolist())], dtype=np.float64).reshape(inside.shape)

@@ -22,6 +22,13 @@ def test_columns_are_normal_and_uncorrelated() -> None:
     np.testing.assert_allclose(np.corrcoef(draws.T), np.eye(DIMENSIONS), atol=0.04)
 
 
+def test_more_inputs_than_the_lattice_has_are_drawn_too() -> None:
+    draws = lattice(4096, DIMENSIONS + 8)
+    np.testing.assert_array_equal(draws[:, :DIMENSIONS], lattice(4096, DIMENSIONS))
+    np.testing.assert_allclose(draws.std(axis=0), 1.0, atol=5e-3)
+    np.testing.assert_allclose(np.corrcoef(draws.T), np.eye(DIMENSIONS + 8), atol=0.08)
+
+
 def test_equal_seeds_give_equal_draws() -> None:
     np.testing.assert_array_equal(lattice(256, 3, seed=4), lattice(256, 3, seed=4))
     assert not np.allclose(lattice(256, 3, seed=4), lattice(256, 3, seed=5))
@@ -68,8 +75,8 @@ def test_interval_is_one_standard_deviation_wide() -> None:
 def test_impossible_requests_are_refused() -> None:
     with pytest.raises(ValueError, match=r"^number of draws must be 1 or more, got 0$"):
         lattice(0, 2)
-    with pytest.raises(ValueError, match=rf"^number of uncertain inputs must be 0 to {DIMENSIONS}, got 13$"):
-        lattice(16, 13)
+    with pytest.raises(ValueError, match=r"^number of uncertain inputs must not be negative, got -1$"):
+        lattice(16, -1)
     with pytest.raises(ValueError, match=r"^standard uncertainty must not be negative, got -1$"):
         sample(1.0, -1.0, np.zeros(3))
 
