@@ -19,8 +19,10 @@ from app.units import (
     ATOM_NUMBER,
     BEAM_POWER,
     BEAM_WAIST,
+    BIAS_FIELD,
     DEPTH,
     DURATION,
+    FIELD_CURVATURE,
     FIELD_GRADIENT,
     POWER_SPEED,
     RADIO_FREQUENCY,
@@ -28,7 +30,7 @@ from app.units import (
     WAVELENGTH,
     read_quantity,
 )
-from physics.constants import boltzmann
+from physics.constants import bohr_magneton, boltzmann, planck
 from physics.ramp_shapes import Shape
 from physics.ramps import Control, Knob
 
@@ -85,6 +87,18 @@ def test_a_usual_ramp_of_coils_lowers_the_knife():
     )
     (stage,) = ramp_edits.usual_ramp(replace(DEFAULT_PLAN, trap=TrapChoice(coils=coils)))
     assert [(move.control.label, move.end.value) for move in stage.moves] == [("knife", 2e6)]
+
+
+def test_a_usual_ramp_of_a_knife_ends_a_tenth_above_the_bottom_of_the_trap():
+    coils = CoilsChoice(
+        bias=read_quantity("1.5 G", BIAS_FIELD),
+        gradient=read_quantity("150 G/cm", FIELD_GRADIENT),
+        curvature=read_quantity("150 G/cm^2", FIELD_CURVATURE),
+        knife=read_quantity("20 MHz", RADIO_FREQUENCY),
+    )
+    (stage,) = ramp_edits.usual_ramp(replace(DEFAULT_PLAN, trap=TrapChoice(coils=coils)))
+    bottom = 0.5 * bohr_magneton * 1.5e-4 / planck  # |gF| = 1/2 of 87Rb
+    assert stage.moves[0].end.value == pytest.approx(bottom + 0.1 * (20e6 - bottom), rel=5e-3)
 
 
 def test_controls_stand_where_the_stages_before_left_them(plan):

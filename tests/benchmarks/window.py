@@ -11,6 +11,7 @@ import statistics
 import tempfile
 import time
 from collections.abc import Iterator
+from dataclasses import replace
 from pathlib import Path
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
@@ -20,6 +21,7 @@ from PySide6.QtCore import QSize
 from PySide6.QtWidgets import QApplication
 
 from app.plan import Plan, plan_with, read_plan
+from app.ramp_edits import usual_ramp
 from app.window.live_canvas import LiveCanvas
 from app.window.main_window import MainWindow
 from app.window.settings import Settings
@@ -68,6 +70,8 @@ def rows() -> Iterator[tuple[str, float, float | None]]:
         )
         for step in range(FRAMES)
     ]
+    ramp = usual_ramp(base)
+    with_ramp = [replace(plan, ramp=ramp) for plan in steps]
     with tempfile.TemporaryDirectory() as folder:
         window = MainWindow(Settings(Path(folder)), size=QSize(1400, 900))
         window.show()
@@ -75,10 +79,11 @@ def rows() -> Iterator[tuple[str, float, float | None]]:
         for place, page in enumerate(window.desk.pages):
             window.desk.show_page(place)
             _settle(window)
-            for plan in steps[:8]:
+            shown = with_ramp if page is window.desk.ramp else steps
+            for plan in shown[:8]:
                 _frame(window, plan)
             canvases = [canvas for canvas in page.findChildren(LiveCanvas) if canvas.isVisible()]
-            live = [_frame(window, plan) for plan in steps]
+            live = [_frame(window, plan) for plan in shown]
             full = statistics.median(_full_draw(canvases) for _ in range(7))
             median = statistics.median(live)
             yield f"{page.title}: value changed to painted, ms, median", median, 33.0

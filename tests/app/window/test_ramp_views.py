@@ -78,6 +78,19 @@ def test_a_design_is_worked_out_applied_and_undone(window, settle):
     assert window.document.plan == before
 
 
+def test_a_plan_without_a_ramp_offers_to_design_one(window, settle):
+    window.document.edit(replace(window.document.plan, ramp=()), "ramp", "")
+    settle(window)
+    page = window.desk.ramp
+    assert page.panel.empty.isVisible()
+    next(button for button in page.panel.empty.buttons() if button.text() == "Design one").click()
+    settle(window)
+    assert page.panel.view == "Design"
+    assert page.panel.design.go.isVisible()
+    assert page.panel.design.go.isEnabled()
+    assert not page.panel.empty.isVisible()
+
+
 def test_a_design_can_be_cancelled_and_asked_for_again(qtbot: QtBot, window, settle):
     page = view(window, settle, "Design")
     design = page.panel.design
