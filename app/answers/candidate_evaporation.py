@@ -157,23 +157,26 @@ class _Crew:
         return done
 
     def _work(self) -> None:
-        with OwnProcess() as process:
-            while not self._left:
-                try:
-                    place, plan = self._jobs.get_nowait()
-                except Empty:
-                    return
-                try:
-                    result = process.run(best_evaporation, (plan,), partial(self._tick, place))
-                except Stopped:
-                    return
-                except ProcessLost as error:
-                    result = EvaporationResult(reason=str(error))
-                except Exception as error:  # whatever it is, it belongs to the one who asked
-                    self._done.put(error)
-                    return
-                self._shares.pop(place, None)
-                self._done.put((place, result))
+        try:
+            with OwnProcess() as process:
+                self._work_through(process)
+        except Stopped:
+            return
+        except Exception as error:  # whatever it is, it belongs to the one who asked, and not to a thread that dies
+            self._done.put(error)
+
+    def _work_through(self, process: OwnProcess) -> None:
+        while not self._left:
+            try:
+                place, plan = self._jobs.get_nowait()
+            except Empty:
+                return
+            try:
+                result = process.run(best_evaporation, (plan,), partial(self._tick, place))
+            except ProcessLost as error:
+                result = EvaporationResult(reason=str(error))
+            self._shares.pop(place, None)
+            self._done.put((place, result))
 
     def _tick(self, place: int, share: float) -> bool:
         self._shares[place] = share

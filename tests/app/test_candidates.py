@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
 
@@ -11,12 +12,14 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from app.answers.candidate_evaporation import EvaporationResult, best_evaporation, evaporate_rows
 from app.answers.candidate_row import CandidateRow, Failure
 from app.answers.candidates import CandidatesAnswer, candidates_answer, candidates_of
 from app.answers.cloud import cloud_answer
 from app.candidate_choices import Basis, CandidateChoice, CandidatesChoice, Start
 from app.candidate_columns import COLUMNS, USUAL_COLUMNS, Part
 from app.plan import DEFAULT_PLAN, Plan, PlanError, SpeciesChoice, parse_plan, plan_with, read_plan
+from app.process import Stopped
 from app.sureness import Sureness
 from app.units import ATOM_NUMBER, MAGNETIC_FIELD, SCATTERING_LENGTH, TEMPERATURE, read_quantity
 from physics.constants import atomic_mass, boltzmann, reduced_planck
@@ -312,6 +315,79 @@ def test_the_demo_compares_what_it_says() -> None:
     # A broad resonance: Chin, Grimm, Julienne, Tiesinga, Rev. Mod. Phys. 82, 1225 (2010), table IV: 834 G, 300 G wide;
     # the data have a later measurement, Zuern et al., Phys. Rev. Lett. 110, 135301 (2013).
     assert lithium.cell("resonance_field").value == pytest.approx(0.0832, rel=0.005)
+
+
+# --- evaporation ---
+
+
+class MadeUpProcess:
+    """Stands for a process: rubidium takes until it is told to stop, erbium fails, the others are done at once."""
+
+    def __enter__(self) -> MadeUpProcess:
+        return self
+
+    def __exit__(self, *_error: object) -> None:
+        pass
+
+    def run(self, _task: object, arguments: tuple[Plan], tick: Callable[[float], bool]) -> EvaporationResult:
+        key = arguments[0].species.key
+        while key == "87Rb":
+            if not tick(0.5):
+                raise Stopped
+        if key == "168Er":
+            raise RuntimeError("made up")
+        return EvaporationResult(atoms=1e4, time=3.0)
+
+
+@pytest.fixture
+def made_up(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("app.answers.candidate_evaporation.OwnProcess", MadeUpProcess)
+
+
+@pytest.mark.usefixtures("made_up")
+def test_evaporations_come_as_they_are_done_and_hopeless_ones_without_trying() -> None:
+    rows = compared(DEFAULT_PLAN, keys=("41K", "40K", "174Yb")).rows
+    came: dict[int, EvaporationResult] = {}
+    shares: list[float] = []
+    done = evaporate_rows(
+        rows, lambda place, result: came.update({place: result}) is None, lambda share: shares.append(share) is None
+    )
+    assert done is not None
+    assert sorted(came) == list(range(len(rows)))
+    assert shares[-1] == 1.0
+    for row in done:
+        sound = row.failure is None
+        assert row.cell("evaporated_atoms").known is row.cell("evaporation_time").known is sound
+        if not sound:
+            assert row.cell("evaporated_atoms").reason == row.reason
+    # What losses are unknown makes it an upper bound.
+    assert {row.cell("evaporated_atoms").sureness for row in done if row.failure is None} == {Sureness.ASSUMED}
+
+
+@pytest.mark.usefixtures("made_up")
+def test_evaporations_that_nobody_wants_any_more_end_at_once() -> None:
+    rows = compared(DEFAULT_PLAN, keys=("87Rb",)).rows
+    shares: list[float] = []
+
+    def told(share: float) -> bool:
+        shares.append(share)
+        return share < 0.3
+
+    assert evaporate_rows(rows, told=told) is None
+    assert 0.3 <= shares[-1] < 1.0
+    assert evaporate_rows(compared(DEFAULT_PLAN, keys=("41K",)).rows, lambda *_found: False) is None
+
+
+@pytest.mark.usefixtures("made_up")
+def test_trouble_in_a_process_reaches_the_one_who_asked() -> None:
+    with pytest.raises(RuntimeError, match="made up"):
+        evaporate_rows(compared(DEFAULT_PLAN, keys=("168Er",)).rows)
+
+
+def test_without_a_depth_nothing_can_be_evaporated() -> None:
+    result = best_evaporation(DEFAULT_PLAN)
+    assert math.isnan(result.atoms)
+    assert "depth of the trap must be known" in result.reason
 
 
 # --- as it goes ---
