@@ -72,6 +72,7 @@ class RampPage(Page):
         self._written: Plan | None = None  # as it was before the drag that is under way
         self._built = False
         self._scenery: Scene | None = None  # what all plots on show share
+        self._shown: Plan | None = None  # whose stages are on show
 
     # ---------------------------------------------------------------- building, when first seen
 
@@ -164,7 +165,10 @@ class RampPage(Page):
         self._found = answer
         if answer.extra is not None:
             self.panel.take_extra(answer.plan, answer.extra)
-        self._show()
+        if self.cloud is not None and self.cloud.plan == self._shown and self._shown.ramp:
+            self._show_found(answer)
+        else:
+            self._show()
         if newer:
             self.part_wanted.emit()
 
@@ -214,6 +218,7 @@ class RampPage(Page):
         from app.answers.ramp_inputs import path_of, ramp_of
         from app.figures.ramp_controls import control_curves
 
+        self._shown = None
         if self.cloud is None:
             return False
         plan, panel = self.cloud.plan, self.panel
@@ -234,6 +239,7 @@ class RampPage(Page):
             return False
         self._scenery = self._scene(plan, ramp.duration)
         panel.controls.show_curves(curves, self._scenery, self.reading)
+        self._shown = plan
         if self._found is None and not _is_quick(plan):
             panel.tell(_SURVEYED, "")
         return True

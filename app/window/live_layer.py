@@ -176,7 +176,9 @@ class LiveLayer:
         text, right, middle = note_place(picture, self._layout, self._theme, note, text_size)
         if not text:
             return
-        stamp = text_stamp(text, self._theme.small_size, colour, self._theme.halo, float(self._renderer.dpi))
+        # In the row of the title nothing lies under it; a halo would take longer than all curves.
+        halo = self._theme.halo if self._layout.title_y is None else ""
+        stamp = text_stamp(text, self._theme.small_size, colour, halo, float(self._renderer.dpi))
         half = 0.5 * stamp.shape[1] - _SPRITE_PAD
         self._stamp(stamp, right * self._scale - half, middle * self._scale)
 
@@ -196,14 +198,22 @@ class LiveLayer:
         self._renderer.draw_path(context, path, Affine2D())
 
 
+@lru_cache(maxsize=4)
+def _figure_of(dpi: float) -> Figure:
+    """What a text asks for the resolution."""
+    return Figure(dpi=dpi)
+
+
 @lru_cache(maxsize=512)
 def text_stamp(text: str, size: float, colour: str, halo: str, dpi: float) -> Pixels:
-    """A text with halo as RGBA pixels, bottom row first, middle of the line in the middle."""
+    """A text as RGBA pixels, bottom row first, middle of the line in the middle; with a halo, or without where its
+    colour is empty."""
     width, height = (int(np.ceil(length * dpi / 72.0)) + 2 * _SPRITE_PAD for length in text_size(text, size))
     renderer: Renderer = RendererAgg(width, height, dpi)  # type: ignore[no-untyped-call]
     drawn = Text(0.5 * width, 0.5 * height, text, size=size, color=colour, ha="center", va="center_baseline")
-    drawn.set_figure(Figure(dpi=dpi))
-    drawn.set_path_effects([withStroke(linewidth=HALO_WIDTH, foreground=halo, alpha=0.85)])
+    drawn.set_figure(_figure_of(dpi))
+    if halo:
+        drawn.set_path_effects([withStroke(linewidth=HALO_WIDTH, foreground=halo, alpha=0.85)])
     drawn.draw(renderer)
     return np.ascontiguousarray(np.asarray(renderer.buffer_rgba())[::-1])
 
