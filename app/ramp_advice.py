@@ -114,7 +114,7 @@ def _losses(answer: RampAnswer) -> Iterator[Advice]:
     run = answer.run
     bad = {
         process: run.budget.share(process)
-        for process in (Process.BACKGROUND, Process.TWO_BODY, Process.THREE_BODY)
+        for process in (Process.BACKGROUND, Process.TWO_BODY, Process.THREE_BODY, Process.SPIN_FLIPS)
         if process in run.budget.atoms
     }
     worst = max(bad, key=lambda process: bad[process])
@@ -130,6 +130,11 @@ def _losses(answer: RampAnswer) -> Iterator[Advice]:
         yield Advice(
             _("Two-body loss takes {share} of the lost atoms.").format(share=share),
             _("A weaker trap loses fewer; another state may have none."),
+        )
+    elif worst is Process.SPIN_FLIPS:
+        yield Advice(
+            _("Spin flips at the zero of the field take {share} of the lost atoms.").format(share=share),
+            _("Leave the quadrupole while the cloud is hotter, or keep it from the zero by light."),
         )
     else:
         yield Advice(

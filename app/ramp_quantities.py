@@ -65,6 +65,7 @@ _COLUMNS = (
     _own("background_rate", "background loss", "Γ₁", "1/s", _RATES, "per atom"),
     _own("two_body_rate", "two-body loss", "Γ₂", "1/s", _RATES, "per atom"),
     _own("three_body_rate", "three-body loss", "Γ₃", "1/s", _RATES, "per atom"),
+    _own("spin_flip_rate", "spin flips", "Γ_flip", "1/s", _RATES, "per atom, at the zero of the field"),
     _shared("good_to_bad_ratio", formula="mean elastic rate over all known losses, evaporation apart"),
     _shared("hydrodynamic_ratio"),
     _own("adiabaticity", "change of the trap in its period", "|dω/dt|/ω²", "1", ("1",), "below 0.1: slow"),

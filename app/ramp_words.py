@@ -40,18 +40,20 @@ PROCESSES: Mapping[Process, str] = MappingProxyType(
         Process.BACKGROUND: _("background gas"),
         Process.TWO_BODY: _("two-body loss"),
         Process.THREE_BODY: _("three-body loss"),
+        Process.SPIN_FLIPS: _("spin flips at the field's zero"),
         Process.TRANSFER: _("transfer and jumps"),
         Process.RECOMBINATION: _("heat of recombination"),
         Process.WORK: _("work of the trap"),
         Process.HEATING: _("heating"),
         Process.LIGHT: _("scattered light"),
         Process.NOISE: _("intensity noise"),
+        Process.POINTING: _("pointing noise"),
         Process.CONTACT: _("contact with the other species"),
     }
 )
 """What takes atoms or brings energy, for reading."""
 
-LOSSES = (Process.BACKGROUND, Process.TWO_BODY, Process.THREE_BODY)
+LOSSES = (Process.BACKGROUND, Process.TWO_BODY, Process.THREE_BODY, Process.SPIN_FLIPS)
 """Processes that take atoms without cooling the others."""
 
 _GOOD = (Process.EVAPORATED, Process.SPILLED)
@@ -103,6 +105,10 @@ _CAVEATS: Mapping[RampCaveatKind, tuple[str, Callable[[float], str]]] = MappingP
         ),
         RampCaveatKind.LIGHT_HEATING: (
             _("Scattered light brings in {value} of the energy at the end. Lower powers sooner, or detune further."),
+            percent,
+        ),
+        RampCaveatKind.SPIN_FLIPS: (
+            _("About {value} of the atoms are lost at the zero of the field, an order of magnitude: known to ×4."),
             percent,
         ),
         RampCaveatKind.NO_BACKGROUND: (
@@ -159,6 +165,7 @@ _INPUTS: Mapping[Input, str] = MappingProxyType(
         Input.THREE_BODY: _("three-body loss K₃"),
         Input.HEATING: _("heating"),
         Input.INTENSITY_NOISE: _("intensity noise"),
+        Input.POINTING_NOISE: _("pointing noise"),
         Input.FREQUENCIES: _("trap frequencies, at this depth"),
         Input.DURATION: _("duration of the ramp"),
         Input.CONTROL: _("calibration of {control}"),

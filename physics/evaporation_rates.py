@@ -7,6 +7,7 @@ References
 ----------
 [1] O. J. Luiten, M. W. Reynolds, J. T. M. Walraven, Phys. Rev. A 53, 381 (1996).
 [2] T. Weber, J. Herbig, M. Mark, H.-C. Naegerl, R. Grimm, Phys. Rev. Lett. 91, 123201 (2003): heating by loss.
+[3] R. Dubessy et al., Phys. Rev. A 85, 013643 (2012): the heat that spin flips leave in a quadrupole. Recalled.
 """
 
 from __future__ import annotations
@@ -20,12 +21,16 @@ from physics.constants import boltzmann
 from physics.gas import Gas
 from physics.kinetic_tables import Averages
 from physics.light_heating import pointing_heating_power
-from physics.losses import Losses, noise_heating_rate
+from physics.losses import Losses, noise_heating_rate, usual_spin_flip_rate
 from physics.runge_kutta import OutOfRange
 from physics.stage_trap import TrapNow
 
 LOWEST_TRUNCATION = 0.1
 """eta below which a cloud counts as no longer trapped."""
+
+FLIPPED_ENERGY = 2.5
+"""Energy over kT of an atom that is lost at the zero of a quadrupole [3]: it passes at the bottom, where it has only
+kinetic energy, and as often as its speed times the area where its spin does not follow, which grows as the speed."""
 
 FEWEST_ATOMS = 100.0
 """Atom number at which all counts as lost: the kinetics is one of many atoms."""
@@ -39,12 +44,14 @@ class Process(Enum):
     BACKGROUND = "background"
     TWO_BODY = "two-body"
     THREE_BODY = "three-body"
+    SPIN_FLIPS = "spin flips"
     TRANSFER = "transfer"
     RECOMBINATION = "recombination heat"
     WORK = "work"
     HEATING = "heating"
     LIGHT = "light"
     NOISE = "intensity noise"
+    POINTING = "pointing noise"
     CONTACT = "contact"
 
     @property
@@ -58,6 +65,7 @@ ATOM_PROCESSES = (
     Process.BACKGROUND,
     Process.TWO_BODY,
     Process.THREE_BODY,
+    Process.SPIN_FLIPS,
 )
 """Processes that take atoms, in the order of `Kinetics`."""
 
@@ -68,6 +76,7 @@ ENERGY_PROCESSES = (
     Process.HEATING,
     Process.LIGHT,
     Process.NOISE,
+    Process.POINTING,
     Process.CONTACT,
 )
 """Processes that change the energy, in the order of `Kinetics`."""
@@ -177,20 +186,21 @@ class Kinetics:
         # d ln V_e/dt at fixed temperature: d ln/d ln eta of the number is 3/2 - E/NkT.
         volume = trap.volume_rate + (1.5 - mean / kT) * trap.depth_rate + averages.number_slope * trap.speed
         work = -kT * (volume - rim * levels_rate)
-        noise = mean * self._noise_rate(trap) if self._noise else 0.0
-        noise += self._pointing_power(trap) if self._pointing else 0.0
-        atoms = (evaporation, spilling, self._background, two, three)
+        flips = usual_spin_flip_rate(self.gas.mass, trap.zero_force, kT) if trap.zero_force > 0.0 else 0.0
+        atoms = (evaporation, spilling, self._background, two, three, flips)
         energy = (
             -evaporation * (eta + averages.excess) * kT,
             -spilling * trap.depth,
             -self._background * mean,
             -two * averages.pair_energy * kT,
             -three * averages.triple_energy * kT,
+            -flips * min(FLIPPED_ENERGY * kT, mean),
             three / 3.0 * self._event_heat,
             work,
             self._heating,
             trap.light_heating if self._scatters else 0.0,
-            noise,
+            mean * self._noise_rate(trap) if self._noise else 0.0,
+            self._pointing_power(trap) if self._pointing else 0.0,
             now.partner_power,
         )
         return atoms, energy
@@ -200,7 +210,7 @@ class Kinetics:
         x, y, z = (math.exp(2.0 * log) for log in trap.log_frequencies)
         if math.isnan(x + y + z):
             return 0.0
-        return float(noise_heating_rate(1.0, self._noise)) * (x + y + z) / 3.0
+        return float(noise_heating_rate(1.0, self._noise)) * max(trap.noise_share, 0.0) * (x + y + z) / 3.0
 
     def _pointing_power(self, trap: TrapNow) -> float:
         """Energy per atom and second by a trap that shakes; none in a trap without frequencies. [W]"""

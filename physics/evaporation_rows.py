@@ -32,7 +32,8 @@ class Rows:
     condensate_atoms : of ideal bosons in the cut trap.
     peak_density : of the cut classical cloud.
     elastic_collision_rate : mean per atom, and peak_collision_rate at the centre.
-    evaporation_rate, spilling_rate, background_rate, two_body_rate, three_body_rate : loss per atom.
+    evaporation_rate, spilling_rate, background_rate, two_body_rate, three_body_rate, spin_flip_rate : loss
+        per atom.
     good_to_bad_ratio : mean elastic rate over the known loss rates, evaporation and spilling apart.
     hydrodynamic_ratio : mean elastic rate over the highest angular frequency.
     adiabaticity : largest |dw/dt|/w^2.
@@ -58,6 +59,7 @@ class Rows:
     background_rate: Floats
     two_body_rate: Floats
     three_body_rate: Floats
+    spin_flip_rate: Floats
     good_to_bad_ratio: Floats
     hydrodynamic_ratio: Floats
     adiabaticity: Floats
@@ -127,6 +129,7 @@ def rows_of(kinetics: Kinetics, clouds: list[CloudNow]) -> Rows:
             background_rate=lost[:, 2],
             two_body_rate=lost[:, 3],
             three_body_rate=lost[:, 4],
+            spin_flip_rate=lost[:, 5],
             good_to_bad_ratio=np.where(bad > 0.0, rate / bad, np.nan),
             hydrodynamic_ratio=rate / np.max(angular, axis=1),
             adiabaticity=np.max(np.abs(of_trap("frequency_rates")) / angular, axis=1),

@@ -143,3 +143,9 @@ def spin_flip_rates(mass: float, force: ArrayLike, temperature: ArrayLike) -> tu
     unit = reduced_planck / mass * (np.asarray(force, dtype=np.float64) / kT) ** 2
     low, high = FLIP_COEFFICIENTS
     return low * unit, high * unit
+
+
+def usual_spin_flip_rate(mass: float, force: float, thermal_energy: float) -> float:
+    """The geometric mean of both estimates, of single numbers; kT [J] in the place of the temperature. [1/s]"""
+    low, high = FLIP_COEFFICIENTS
+    return math.sqrt(low * high) * reduced_planck / mass * (force / thermal_energy) ** 2

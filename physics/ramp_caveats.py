@@ -28,6 +28,7 @@ class RampCaveatKind(Enum):
     ONE_WAY_OUT = "no value: atoms leave in one direction, so that the rate of evaporation is an upper bound"
     PAULI_BLOCKING = "lowest T/TF: filled levels block collisions, which is left out"
     LIGHT_HEATING = "energy that scattered light brings in over the energy at the end"
+    SPIN_FLIPS = "share of the atoms lost at the zero of the field: an order of magnitude"
     NO_BACKGROUND = "no value: no background lifetime is given"
     THREE_BODY_UNKNOWN = "no value: K3 of bosons is not known"
     THREE_BODY_SCALING = "K3 over the most that a large scattering length allows"
@@ -59,6 +60,7 @@ _HYDRODYNAMIC = (1.0, 5.0)
 _LOSS = (0.1, 1.0)
 _FERMI = 0.5
 _LIGHT = 0.1
+_FLIPS = (0.01, 0.1)
 
 
 def ramp_caveats(run: Evaporation, extremes: RampExtremes, *, one_way_out: bool = False) -> tuple[RampCaveat, ...]:
@@ -104,6 +106,9 @@ def _losses(run: Evaporation, extremes: RampExtremes) -> Iterator[RampCaveat]:
     light = budget.energy[Process.LIGHT] / budget.energy_after
     if light > _LIGHT:
         yield _caveat(kinds.LIGHT_HEATING, light, light > 1.0)
+    flips = budget.atoms[Process.SPIN_FLIPS] / budget.atoms_before
+    if flips > _FLIPS[0]:
+        yield _caveat(kinds.SPIN_FLIPS, flips, flips > _FLIPS[1])
     if extremes.background_unknown:
         yield RampCaveat(kind=kinds.NO_BACKGROUND, severity=Severity.NOTE)
     if run.gas.bosons and run.losses.three_body is None:

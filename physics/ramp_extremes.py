@@ -48,7 +48,7 @@ def ramp_extremes(run: Evaporation) -> RampExtremes:
     """The worst numbers of a simulated ramp."""
     rows, gas, K3 = run.rows, run.gas, run.losses.three_body
     fermions = gas.statistics is Statistics.FERMI
-    bad = rows.background_rate + rows.two_body_rate + rows.three_body_rate
+    bad = rows.background_rate + rows.two_body_rate + rows.three_body_rate + rows.spin_flip_rate
     with np.errstate(all="ignore"):
         loss = np.where(
             rows.elastic_collision_rate > 0.0, RETHERMALISATION_COLLISIONS * bad / rows.elastic_collision_rate, np.nan

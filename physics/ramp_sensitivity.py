@@ -27,6 +27,7 @@ class Input(Enum):
     THREE_BODY = "three-body loss"
     HEATING = "heating"
     INTENSITY_NOISE = "intensity noise"
+    POINTING_NOISE = "pointing noise"
     FREQUENCIES = "trap frequencies"
     DURATION = "duration of the ramp"
     CONTROL = "control"
@@ -192,6 +193,7 @@ def _inputs(case: _Case) -> Iterator[tuple[Input, Control | None, Callable[[floa
         (Input.THREE_BODY, "three_body"),
         (Input.HEATING, "heating"),
         (Input.INTENSITY_NOISE, "intensity_noise"),
+        (Input.POINTING_NOISE, "pointing_noise"),
     ):
         if getattr(case.losses, name) is not None:
             yield kind, None, _loss(case, name)

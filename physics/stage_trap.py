@@ -26,6 +26,8 @@ class TrapNow(NamedTuple):
     highest: float
     log_frequencies: tuple[float, float, float]
     light_heating: float
+    noise_share: float
+    zero_force: float
     depth_rate: float
     volume_rate: float
     frequency_rates: tuple[float, float, float]
@@ -59,8 +61,8 @@ class TrapCurve:
         # A rounding beyond the ends.
         place = min(max(place, self.low), self.high)
         values, slopes = self._spline.both(place)
-        depth, volume, top, x, y, z, light = values
-        d_depth, d_volume, _, dx, dy, dz, _ = slopes
+        depth, volume, top, x, y, z, light, noise, force = values
+        d_depth, d_volume, _, dx, dy, dz, *_ = slopes
         return TrapNow(
             place,
             speed,
@@ -69,6 +71,8 @@ class TrapCurve:
             top,
             (x, y, z),
             light,
+            noise,
+            force,
             d_depth * speed,
             d_volume * speed,
             (dx * speed, dy * speed, dz * speed),
@@ -163,4 +167,6 @@ def _numbers(point: TrapPoint) -> tuple[float, ...]:
         point.curve.highest_energy,
         *frequencies,
         point.light_heating,
+        point.noise_share,
+        point.zero_force,
     )

@@ -14,6 +14,7 @@ from physics.ramps import Control, Knob
 from physics.real_trap import held_curve
 from physics.species import State
 from physics.trap_path import SCALE, TrapPoint
+from physics.traps.heating import light_shares
 from physics.traps.survey import Survey, survey
 from physics.traps.trap import Trap
 
@@ -119,4 +120,13 @@ def point_of(found: Survey) -> TrapPoint:
         minimum=minimum,
         axes=None if found.axes is None else tuple(tuple(row) for row in np.asarray(found.axes).tolist()),
         light_heating=float(found.heating.power),
+        light_shares=_light_shares(found),
+        zero_force=0.0 if found.spin_flips is None else found.spin_flips.force,
     )
+
+
+def _light_shares(found: Survey) -> tuple[float, float, float] | None:
+    if found.frequencies is None or found.potential is None:
+        return None
+    x, y, z = (float(share) for share in light_shares(found.potential, found.minimum, found.axes))
+    return x, y, z

@@ -35,6 +35,8 @@ class TrapPoint:
     minimum : (3,) or None. [m] Where the bottom is; None where that is not known.
     axes : (3, 3) or None. Rows: unit vectors that the frequencies belong to; None: x, y and z.
     light_heating : float. [W] Energy per atom and second that scattered light leaves.
+    light_shares : (3,) or None. [1] Share of the spring constant along each axis that the light makes; None: all of it.
+    zero_force : float. [N] Force of the field on its strong axis, where it vanishes at the bottom; else 0.
     reason : text. Why nothing is held.
     """
 
@@ -45,6 +47,8 @@ class TrapPoint:
     minimum: tuple[float, float, float] | None = None
     axes: tuple[tuple[float, ...], ...] | None = None
     light_heating: float = 0.0
+    light_shares: tuple[float, float, float] | None = None
+    zero_force: float = 0.0
     reason: str = ""
 
     def __post_init__(self) -> None:
@@ -55,11 +59,23 @@ class TrapPoint:
                 raise ValueError(f"{name} of a trap must be positive and finite, got {value:g} {unit}")
         if not 0.0 <= self.light_heating < math.inf:
             raise ValueError(f"heating by light must be finite and not negative, got {self.light_heating:g} W")
+        if not 0.0 <= self.zero_force < math.inf:
+            raise ValueError(f"force at a zero must be finite and not negative, got {self.zero_force:g} N")
 
     @property
     def level_volume(self) -> float:
         """Volume of the box of this depth that has as many levels. [m^3]"""
         return self.volume * self.curve.rim_levels
+
+    @property
+    def noise_share(self) -> float:
+        """Heating by noise of the light's intensity over that in a trap of light alone. [1] It goes as the square of
+        the light's share of the spring constant along each axis."""
+        if self.light_shares is None or self.frequencies is None:
+            return 1.0
+        squares = [f * f for f in self.frequencies]
+        lit = (share * share * square for share, square in zip(self.light_shares, squares, strict=True))
+        return sum(lit) / sum(squares)
 
     def levels(self, mass: float) -> float:
         """Number of levels below the depth. [1]"""
@@ -183,7 +199,7 @@ class QuadrupolePath:
         if force == 0.0:
             return TrapPoint(depth=None, reason="the gradient is zero")
         volume = 16.0 * math.pi / 3.0 * (depth / force) ** 3
-        return TrapPoint(depth=depth, volume=volume, curve=_QUADRUPOLE)
+        return TrapPoint(depth=depth, volume=volume, curve=_QUADRUPOLE, zero_force=force)
 
 
 _HARMONIC = CurveShape(exponent=HARMONIC)

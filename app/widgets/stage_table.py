@@ -32,6 +32,7 @@ _LOSSES: Mapping[Process, tuple[str, str, Role | None]] = {
     Process.BACKGROUND: ("background gas", "gas", Role.THIRD),
     Process.TWO_BODY: ("two-body", "2-b", Role.FOURTH),
     Process.THREE_BODY: ("three-body", "3-b", Role.SECOND),
+    Process.SPIN_FLIPS: ("spin flips", "flips", Role.THRESHOLD_OF_MODEL),
     Process.TRANSFER: ("transfer", "tr.", Role.FIRST),
 }
 """Name, short name, and whose colour it has."""

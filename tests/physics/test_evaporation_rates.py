@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from types import MappingProxyType
 
 import numpy as np
@@ -12,16 +12,16 @@ import pytest
 from scipy.integrate import solve_ivp
 from scipy.special import gammainc
 
-from physics.constants import atomic_mass, boltzmann
+from physics.constants import atomic_mass, boltzmann, reduced_planck
 from physics.curve_shape import CurveShape
 from physics.evaporation import evaporate
-from physics.evaporation_rates import Process
+from physics.evaporation_rates import FLIPPED_ENERGY, Process
 from physics.gas import Gas
-from physics.losses import Losses
+from physics.losses import Losses, spin_flip_rates
 from physics.particles import Statistics
 from physics.ramp_shapes import Shape
 from physics.ramps import Control, Knob, Move, Ramp, Stage
-from physics.trap_path import DEPTH, GRADIENT, SCALE, HarmonicPath, QuadrupolePath, TrapPoint
+from physics.trap_path import DEPTH, GRADIENT, SCALE, FixedTrap, HarmonicPath, QuadrupolePath, TrapPoint
 from physics.traps import HarmonicTrap
 
 MASS = 87.0 * atomic_mass
@@ -130,6 +130,55 @@ def test_heating_raises_the_temperature_at_its_rate() -> None:
     assert noisy.temperature[-1] == pytest.approx(1e-5 * math.exp(2.0 * growth), rel=1e-7)
 
 
+def test_noise_of_the_light_counts_by_the_square_of_its_share() -> None:
+    bare = trap(1e-3).at({DEPTH: boltzmann * 1e-3, SCALE: 1.0})
+    S = 1e-7
+    for shares in ((1.0, 0.5, 0.0), (0.0, 0.0, 0.0), (0.2, 1.3, 1.0)):
+        lit = FixedTrap(point=replace(bare, light_shares=shares))
+        run = evaporate(APART, 1e6, 1e-5, hold(2.0), lit, losses=Losses(intensity_noise=S))
+        part = sum((share * f) ** 2 for share, f in zip(shares, (500.0, 500.0, 100.0), strict=True))
+        assert run.temperature[-1] == pytest.approx(1e-5 * math.exp(2.0 * math.pi**2 * S * part / 3.0), rel=1e-7)
+    noise, shaking = (
+        evaporate(APART, 1e6, 1e-5, hold(2.0), trap(1e-3), losses=losses).budget.energy
+        for losses in (Losses(intensity_noise=S), Losses(pointing_noise=1e-17))
+    )
+    assert noise[Process.NOISE] > 0.0 == noise[Process.POINTING]
+    assert shaking[Process.POINTING] > 0.0 == shaking[Process.NOISE]
+
+
+def test_spin_flips_take_the_slow_atoms_of_a_quadrupole() -> None:
+    # Atoms of 5/2 kT leave a cloud of 9/2 kT an atom at Gamma = chi (hbar/m)(F/kT)^2: dT/dt = (4/9) Gamma T, so that
+    # T^2 grows evenly, by (8/9) chi hbar F^2/(m k^2) a second, and N goes as T^(-9/4).
+    moment, gradient = 4.64e-24, 2.0
+    path = QuadrupolePath(moment=moment, gradient=gradient, depth=boltzmann * 2e-3)
+    run = evaporate(APART, 1e6, 2e-5, hold(5.0), path)
+    chi = math.sqrt(0.16 * 1.85)
+    growth = 8.0 / 9.0 * chi * reduced_planck / MASS * (moment * gradient / boltzmann) ** 2
+    warmer = math.sqrt(1.0 + 5.0 * growth / 2e-5**2)
+    assert warmer > 1.05
+    assert run.temperature[-1] == pytest.approx(2e-5 * warmer, rel=1e-6)
+    assert run.atoms[-1] == pytest.approx(1e6 * warmer**-2.25, rel=1e-6)
+    budget = run.budget
+    assert budget.atoms[Process.SPIN_FLIPS] == pytest.approx(1e6 - run.atoms[-1], rel=1e-6)
+    assert abs(budget.atoms_missing) < 1e-6
+    assert abs(budget.energy_missing) < 1e-6
+    first = chi * reduced_planck / MASS * (moment * gradient / (boltzmann * 2e-5)) ** 2
+    assert run.rows.spin_flip_rate[0] == pytest.approx(first, rel=1e-6)
+    low, high = spin_flip_rates(MASS, moment * gradient, 2e-5)
+    assert first == pytest.approx(math.sqrt(low * high), rel=1e-9)
+    rows = evaporate(RUBIDIUM, 1e6, 2e-5, hold(0.1), path).rows
+    assert rows.good_to_bad_ratio[0] == pytest.approx(rows.elastic_collision_rate[0] / first, rel=1e-6)
+
+
+def test_an_atom_near_the_zero_carries_five_halves_of_kt_away() -> None:
+    # Drawn: passages of a small sphere by a thermal gas, each with the chance of an area that grows as the speed.
+    draw = np.random.default_rng(5)
+    speeds = np.linalg.norm(draw.normal(size=(400_000, 3)), axis=1)
+    weights = speeds * speeds
+    energy = np.sum(weights * 0.5 * speeds**2) / np.sum(weights)
+    assert energy == pytest.approx(FLIPPED_ENERGY, rel=0.01)
+
+
 @pytest.mark.parametrize("shape", [Shape.LINEAR, Shape.EXPONENTIAL])
 @pytest.mark.parametrize("end", [4.0, 0.5])
 def test_a_slow_change_of_strength_keeps_the_phase_space_density(shape: Shape, end: float) -> None:
@@ -143,11 +192,11 @@ def test_a_slow_change_of_strength_keeps_the_phase_space_density(shape: Shape, e
 
 
 def test_compression_of_a_quadrupole() -> None:
-    # W ~ (U/B')^3 and N T^-9/2 B'^3: T as B'^(2/3).
-    path = QuadrupolePath(moment=4.6e-24, gradient=1.0, depth=boltzmann * 5e-3)
+    # W ~ (U/B')^3 and N T^-9/2 B'^3: T as B'^(2/3). Hot enough that hardly a spin flips.
+    path = QuadrupolePath(moment=4.6e-24, gradient=1.0, depth=boltzmann * 2.0)
     ramp = Ramp(stages=(Stage(duration=1.0, moves=(Move(control=GRADIENT, end=3.0),)),))
-    run = evaporate(APART, 1e6, 5e-5, ramp, path)
-    assert run.temperature[-1] == pytest.approx(5e-5 * 3.0 ** (2.0 / 3.0), rel=1e-6)
+    run = evaporate(APART, 1e6, 2e-2, ramp, path)
+    assert run.temperature[-1] == pytest.approx(2e-2 * 3.0 ** (2.0 / 3.0), rel=1e-6)
 
 
 BIAS = Control(Knob.BIAS)

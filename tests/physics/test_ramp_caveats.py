@@ -18,7 +18,7 @@ from physics.ramp_caveats import RampCaveatKind, ramp_caveats
 from physics.ramp_extremes import RampExtremes
 from physics.ramp_shapes import Shape
 from physics.ramps import Move, Ramp, Stage
-from physics.trap_path import SCALE, HarmonicPath
+from physics.trap_path import SCALE, HarmonicPath, QuadrupolePath
 from physics.traps import HarmonicTrap
 
 MASS = 87.0 * atomic_mass
@@ -93,3 +93,20 @@ def test_heat_of_scattered_light_counts_against_the_energy_at_the_end() -> None:
     assert caveat.kind is RampCaveatKind.LIGHT_HEATING
     assert caveat.value == pytest.approx(run.budget.energy[Process.LIGHT] / run.budget.energy_after)
     assert caveat.value == pytest.approx(60.0 * 5e-7 / (3.0 * run.final["temperature"]), rel=0.05)
+
+
+def test_loss_at_the_zero_of_a_field() -> None:
+    zero = QuadrupolePath(moment=4.64e-24, gradient=2.0, depth=boltzmann * 5e-3)
+    for temperature, severity in ((4e-4, None), (1e-4, Severity.NOTE), (1e-5, Severity.WARNING)):
+        run = evaporate(
+            replace(GAS, scattering_length=0.0),
+            1e5,
+            temperature,
+            Ramp(stages=(Stage(duration=3.0),)),
+            zero,
+            losses=Losses(background_lifetime=1e3, three_body=0.0),
+        )
+        found = [c for c in ramp_caveats(run, NOTHING) if c.kind is RampCaveatKind.SPIN_FLIPS]
+        assert [c.severity for c in found] == ([] if severity is None else [severity])
+        if found:
+            assert found[0].value == pytest.approx(run.budget.atoms[Process.SPIN_FLIPS] / 1e5)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 
 from physics.constants import atomic_mass, boltzmann
@@ -48,7 +50,8 @@ def test_a_decay_has_the_slopes_of_its_exponential() -> None:
 
 
 def test_the_strongest_comes_first_and_signs_are_those_of_the_trade() -> None:
-    losses = Losses(background_lifetime=30.0, two_body=1e-21, three_body=4e-41, heating=1e-7, intensity_noise=1e-12)
+    losses = Losses(background_lifetime=30.0, two_body=1e-21, three_body=4e-41, heating=1e-7)
+    losses = replace(losses, intensity_noise=1e-12, pointing_noise=1e-18)
     found = ramp_sensitivities(GAS, 2e6, 4e-5, RAMP, PATH, losses=losses)
     slopes = [abs(one.slope) for one in found]
     assert slopes == sorted(slopes, reverse=True)

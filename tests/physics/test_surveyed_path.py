@@ -61,6 +61,21 @@ def test_the_bottom_of_the_volume_curve_is_that_of_the_frequencies(path: Surveye
     harmonic = 4.0 * np.pi / 3.0 * (2.0 * u * point.depth / RUBIDIUM.mass) ** 1.5 / angular
     assert point.volume * float(point.curve.volume(np.asarray(u))) == pytest.approx(harmonic, rel=0.01)
     assert point.light_heating > 0.0
+    assert point.light_shares == pytest.approx((1.0, 1.0, 1.0), abs=1e-9)
+    assert point.noise_share == pytest.approx(1.0, abs=1e-9)
+    assert point.zero_force == 0.0
+
+
+def test_coils_are_not_shaken_by_light_and_a_zero_has_its_force() -> None:
+    held = Trap(coils=Coils(bias=1e-4, gradient=2.0, curvature=250.0, knife=8e6))
+    path = SurveyedPath(trap=held, state=RUBIDIUM)
+    assert path.at(path.standing).noise_share == 0.0
+    quadrupole = Trap(coils=Coils(gradient=1.5, knife=2e7), gravity=None)
+    path = SurveyedPath(trap=quadrupole, state=RUBIDIUM)
+    point = path.at({**path.standing, Control(Knob.GRADIENT): 3.0})
+    # |gF mF| muB times the gradient on the strong axis: half a Bohr magneton.
+    assert point.zero_force == pytest.approx(0.5 * 9.2740100657e-24 * 3.0, rel=5e-3)
+    assert point.frequencies is None
 
 
 def test_no_trap_is_an_answer_with_a_reason() -> None:
