@@ -23,6 +23,7 @@ from app.widgets.page import Page
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
     from app.answers.ramp_inputs import MeasuredCloud
+    from app.caveat_words import CaveatLine
     from app.figures.ramp_columns import Course
     from app.figures.ramp_controls import Handle
     from app.widgets.ramp_panel import RampPanel
@@ -255,6 +256,7 @@ class RampPage(Page):
         if found.ramp is not None and self._scenery is not None:
             panel.table.show_ramp(found.ramp)
             panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
+            panel.show_caveats(_caveat_lines(found.ramp))
             panel.columns.show_courses(self._courses(found), self._scenery, _points(found.measured), self.reading)
         panel.measured.show_answers(found.ramp, found.rest)
         if not panel.stages.problem:
@@ -541,6 +543,19 @@ def _simulated(plan: Plan, since: str | None, watch: Watch) -> Found | None:
     except (ValueError, OSError, ArithmeticError, RuntimeError) as error:
         return Found(plan=plan, failure=str(error))
     return Found(plan=plan, ramp=answer, rest=rest, measured=measured)
+
+
+def _caveat_lines(answer: RampAnswer) -> tuple[CaveatLine, ...]:
+    """What the simulation does not cover, gravest first."""
+    from app.caveat_words import CaveatLine
+    from app.ramp_words import SIGNS, WEIGHTS, ramp_caveat_text
+
+    own = tuple(CaveatLine(SIGNS[c.severity], WEIGHTS[c.severity], ramp_caveat_text(c)) for c in answer.caveats)
+    if answer.passenger is None:
+        return own
+    from app.mixture_words import sympathetic_caveat_lines
+
+    return (*own, *sympathetic_caveat_lines(answer.passenger))
 
 
 def _is_quick(plan: Plan) -> bool:

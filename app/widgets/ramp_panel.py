@@ -24,6 +24,7 @@ from app.figures.theme import Theme
 from app.newest import Steps
 from app.plan import Plan
 from app.widgets.banner import Offer
+from app.widgets.caveats import Caveats
 from app.widgets.empty_state import EmptyState
 from app.widgets.ramp_design import DesignView
 from app.widgets.ramp_measured import MeasuredView
@@ -34,11 +35,12 @@ from app.widgets.ramp_waypoints import WaypointsView
 from app.widgets.stage_table import StageTable
 
 if TYPE_CHECKING:
+    from app.caveat_words import CaveatLine
     from app.widgets.page import Page
 
 
 COURSE, STAGES, DESIGN, WAYPOINTS = "Course", "Stages", "Design", "Waypoints"
-COUNTS, MEASURED = "What counts", "Measured"
+COUNTS, MEASURED, CAVEATS = "What counts", "Measured", "Caveats"
 NEED_NO_RAMP = (DESIGN, WAYPOINTS)
 """Views that have something to say of a plan without stages."""
 
@@ -115,6 +117,10 @@ class RampPanel(QWidget):
         self.add_view(WAYPOINTS, "Clouds to aim at along the ramp", self.waypoints, self.waypoints)
         self.add_view(COUNTS, "Which input moves the atoms at the end most", self.sensitivity, self.sensitivity)
         self.add_view(MEASURED, "Clouds that were measured, and the rest from there", self.measured, self.measured)
+        self.caveats = Caveats()
+        self.caveats.setAccessibleName("Caveats of the ramp")
+        self.caveats.setViewportMargins(14, 6, 10, 6)
+        self.add_view(CAVEATS, "What the simulation leaves out", self.caveats)
         self._is_empty = False
         self.show_ramp()
 
@@ -209,6 +215,13 @@ class RampPanel(QWidget):
         self.sentence.setText(sentence)
         self.detail.setText(detail)
         self._arrange()
+
+    def show_caveats(self, lines: tuple[CaveatLine, ...]) -> None:
+        """What the simulation does not cover; how much there is stands on the button."""
+        self.caveats.show_lines(lines)
+        # The gravest stands first, so that its sign says how much care to take.
+        text = f"{CAVEATS} {lines[0].sign} {len(lines)}" if lines else CAVEATS
+        self.choice.button(list(self.views).index(CAVEATS)).setText(text)
 
     def show_references(self, names: Sequence[str]) -> None:
         """Which ramps are kept."""

@@ -74,6 +74,18 @@ def test_the_page_says_what_the_ramp_reaches_and_what_to_change(window):
     assert curve_of(page, ATOMS)[-1] == pytest.approx(final)
 
 
+def test_caveats_of_the_ramp_have_a_view_and_a_count(window):
+    page = window.desk.ramp
+    lines = page.panel.caveats.lines
+    assert len(lines) == len(page.answer.caveats) > 0
+    assert any("No background lifetime is given" in line.sentence for line in lines)
+    buttons = {button.text() for button in page.panel.choice.buttons()}
+    assert f"Caveats {lines[0].sign} {len(lines)}" in buttons
+    page.panel.choose_view("Caveats")
+    assert page.panel.caveats.isVisible()
+    assert not page.panel.columns.isVisible()
+
+
 def test_a_typed_duration_changes_curves_and_verdict_and_undo_takes_it_back(qtbot, window, settle):
     page = window.desk.ramp
     page.panel.choose_view("Stages")
@@ -251,6 +263,19 @@ def test_a_reference_is_kept_drawn_and_compared(qtbot, window, settle):
     assert "2.00 s shorter" in page.panel.detail.text()
     page.drop_references()
     assert not any(c.role is Role.REFERENCE for c in page.panel.columns.plots[ATOMS].picture().curves)
+
+
+def test_a_reference_stays_beside_another_plan(window, settle):
+    page = window.desk.ramp
+    page.keep_reference()
+    kept = curve_of(page, ATOMS, Role.REFERENCE)
+    other = replace(plan_with_ramp(), title="another", ramp=plan_with_ramp().ramp[:1])
+    window.document.load(other, None, None)
+    settle(window)
+    assert np.array_equal(curve_of(page, ATOMS, Role.REFERENCE), kept)
+    page.keep_reference()
+    assert [ref.name for ref in page.references] == ["Rubidium in a cigar-shaped trap", "another"]
+    assert "Beside “another”: N × 1, T × 1, D × 1, as long." in page.panel.detail.text()
 
 
 def test_measured_clouds_are_points_with_errors(make_window, settle):

@@ -147,6 +147,23 @@ def test_waypoints_follow_the_ramp_and_say_what_follows_if_a_cloud_is_off(qtbot:
     assert "<td>0.100</td>" in waypoints.html()
 
 
+def test_waypoints_are_printed(window, settle, monkeypatch, tmp_path):
+    from PySide6.QtPrintSupport import QPrintDialog, QPrinter
+
+    page = view(window, settle, "Waypoints")
+    path = tmp_path / "waypoints.pdf"
+
+    def to_file(dialog: QPrintDialog) -> int:
+        printer = dialog.printer()
+        printer.setOutputFormat(QPrinter.OutputFormat.PdfFormat)
+        printer.setOutputFileName(str(path))
+        return 1
+
+    monkeypatch.setattr(QPrintDialog, "exec", to_file)
+    page.panel.waypoints.print.click()
+    assert path.read_bytes().startswith(b"%PDF")
+
+
 def test_bad_densities_are_refused_and_the_table_stays(qtbot: QtBot, window, settle):
     page = view(window, settle, "Waypoints")
     waypoints = page.panel.waypoints
