@@ -18,6 +18,7 @@ from app.answers.candidate_trap import trap_facts
 from app.answers.cloud import cloud_answer
 from app.answers.inputs import cloud_of, values_of
 from app.answers.part import part
+from app.answers.trap import trap_answer
 from app.answers.trap_inputs import surveyed_trap
 from app.candidate_choices import Basis, CandidateChoice, Start
 from app.candidate_columns import USUAL_COLUMNS
@@ -236,6 +237,7 @@ def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow
             failure, reason = Failure.NO_ANSWER, trap.no_frequencies or str(error)
         else:
             failure, reason = _failure(cloud)
+    trap_answer(plan).survey.forget()
     return CandidateRow(
         candidate=candidate,
         plan=plan,

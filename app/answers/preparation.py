@@ -39,6 +39,7 @@ def prepare_trap(plan: Plan) -> None:
     answer = trap_answer(plan)
     for name in _LATER:
         getattr(answer.survey, name)
+    answer.survey.forget()
     if not answer.trapped:
         return
     if _followed(plan):

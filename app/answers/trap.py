@@ -32,8 +32,9 @@ class TrapAnswer:
         return self.survey.trapped
 
 
-KEPT = 24
-"""Surveys that are kept, 4 MB each, so that going back to an earlier value of a control costs none."""
+KEPT = 192
+"""Surveys that are kept, some 50 kB each once they forgot how they were found: going back to an earlier value of a
+control costs none, nor does another cloud for all candidates."""
 
 
 @part("species.key", "species.state", "trap", keep=KEPT)

@@ -83,6 +83,11 @@ class Landscape:
             edges.append(edge)
         return tuple(edges)
 
+    def forget(self) -> None:
+        """Let go of the charts and what was worked out on them, a few megabytes; they are made again when asked for."""
+        for name in ("charts", "_values", "_links", "_edges"):
+            vars(self).pop(name, None)
+
     def reach(self, start: Floats, level: float) -> Reach:
         """The cells below an energy [J] that hang together with the one that holds a point (3,).
 

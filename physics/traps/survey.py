@@ -179,6 +179,11 @@ class Survey:
         """What about the trap deserves a word."""
         return () if self.landscape is None else notes_of(self.landscape, self.basin, self.volume_curve_ceiling)
 
+    def forget(self) -> None:
+        """Let go of what was needed to find all this, most of the memory of a survey; what was found stays."""
+        if self.landscape is not None:
+            self.landscape.forget()
+
     @property
     def volume_curve_ceiling(self) -> float | None:
         """Share of the depth up to which the volume curve goes, where that is not all of it."""

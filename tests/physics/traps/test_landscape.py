@@ -91,3 +91,13 @@ def test_parallel_and_distant_beams_and_coils_have_charts_too(rubidium: State) -
     # With coils nothing is followed further than the wall.
     assert all(np.max(np.abs(chart.stretches[2].position)) < 0.05 for chart in charts)
     assert math.isinf(charts[-1].rayleigh_lengths[0])
+
+
+def test_a_survey_that_forgets_how_it_was_found_says_the_same(crossed: Trap, rubidium: State) -> None:
+    kept, forgetful = survey(crossed, rubidium), survey(crossed, rubidium)
+    forgetful.forget()
+    assert forgetful.landscape is not None
+    assert "charts" not in vars(forgetful.landscape)
+    assert kept.volume_curve is not None
+    assert forgetful.volume_curve is not None
+    np.testing.assert_array_equal(forgetful.volume_curve.volumes, kept.volume_curve.volumes)
