@@ -151,9 +151,17 @@ _BOUNDS: Mapping[Bound, str] = MappingProxyType(
         Bound.COLLISIONS: _("slow collisions: a tenth more of them leaves {gain} more atoms"),
         Bound.TIME: _("the time limit: a tenth more time leaves {gain} more atoms"),
         Bound.SPEED: _("the speed limit of the control: a tenth more leaves {gain} more atoms"),
-        Bound.RANGE: _("the range of the control, at whose end it rests for part of the time"),
     }
 )
+
+_UNTOLD_BOUNDS: Mapping[Bound, str] = MappingProxyType(
+    {
+        Bound.RANGE: _("the range of the control, at whose end it rests for part of the time"),
+        Bound.SPEED: _("the speed limit of the control, at which it moves for part of the time"),
+        Bound.TIME: _("the time limit, at which the cloud is still getting denser"),
+    }
+)
+"""Of which it is not told what easing them gains."""
 
 _INPUTS: Mapping[Input, str] = MappingProxyType(
     {
@@ -303,7 +311,9 @@ def ramp_caveat_text(caveat: RampCaveat) -> str:
 
 def bound_text(bound: Bound, gain: float) -> str:
     """What binds a design, and what easing it by a tenth gains, as a clause."""
-    return _BOUNDS[bound].format(gain=percent(math.expm1(gain)) if math.isfinite(gain) else "")
+    if not math.isfinite(gain):
+        return _UNTOLD_BOUNDS[bound]
+    return _BOUNDS[bound].format(gain=percent(math.expm1(gain)))
 
 
 def design_sentence(found: DesignAnswer) -> str:
@@ -318,9 +328,14 @@ def design_sentence(found: DesignAnswer) -> str:
         goal = _("{aim} (assumed: the plan names no target)").format(aim=goal)
     if not design.reached:
         template = _("No ramp of {control} reaches {aim}; the one that comes closest holds η at {held}.")
+        if found.others:
+            template += " " + _(
+                "The light of {others} stays as it is: design the scale, which moves all beams together."
+            )
     else:
         template = _("Most atoms reach {aim} where {control} moves so that the truncation parameter stays at {held}.")
-    return template.format(control=found.control.label, aim=goal, held=held.removesuffix(","))
+    others = ", ".join(found.others)
+    return template.format(control=found.control.label, aim=goal, held=held.removesuffix(","), others=others)
 
 
 def input_text(one: RampSensitivity) -> str:

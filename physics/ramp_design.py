@@ -35,6 +35,8 @@ LOWEST_HELD, HIGHEST_HELD = 3.5, 14.0
 _SCAN, _REFINE = 15, 9
 _DRIFTS = (-1.5, -0.75, 0.75, 1.5)
 _EASED = 0.1
+_MUCH_OF_IT = 0.2
+"""Share of its time for which a control that does not reach the target rests at an end, or moves as fast as it may."""
 
 
 class Bound(Enum):
@@ -84,7 +86,8 @@ class RampDesign:
     truncation, drift : the law that it follows. [1]
     reached : bool. Whether any run reached the target; where none did the ramp is that of the highest degeneracy.
     trade_off : TradeOff
-    bounds : what binds: gain in ln N at the target for easing each by a tenth, the largest first.
+    bounds : what binds: gain in ln N at the target for easing each by a tenth, the largest first; NaN where that is not
+        told: of a range, and of all where the target is out of reach.
     """
 
     ramp: Ramp
@@ -232,10 +235,15 @@ class _Search:
 
 def _bounds(search: _Search, best: HeldRun, losses: Losses) -> tuple[tuple[Bound, float], ...]:
     """Gain in ln N for easing each by a tenth, at the same law; of the time limit, by easing it at the best law."""
-    if not best.reached:
-        return ()
     held, found = search.held, {}
     line, limits, gas = held.line, held.limits, held.gas
+    if not best.reached:
+        in_the_way = (
+            (Bound.RANGE, best.at_end > _MUCH_OF_IT),
+            (Bound.SPEED, best.speed_limited > _MUCH_OF_IT),
+            (Bound.TIME, limits.time is not None and best.time > 0.99 * search.longest and best.at_end < _MUCH_OF_IT),
+        )
+        return tuple((bound, math.nan) for bound, binds in in_the_way if binds)
 
     def gain(gas: Gas, losses: Losses, limits: Limits, law: Law = best.law, longest: float = 0.0) -> float:
         eased = HeldKinetics(gas, losses, line, limits)

@@ -30,6 +30,7 @@ DIGITS = 4
 """Significant ones of the durations and values of a designed ramp."""
 
 _FURTHER = (0.004, 0.02, 0.1)
+_TOGETHER = Control(Knob.SCALE)
 _FIRST_CHOICES = (Knob.SCALE, Knob.KNIFE, Knob.DEPTH)
 
 
@@ -42,6 +43,7 @@ class DesignAnswer:
     target : the one aimed at; assumed, where the plan has none
     stages : the whole ramp for a plan, with rounded numbers; stages before a measured cloud stay as they were
     answer : what these stages do
+    others : beams that stay as they are, where the control is the power of one
     """
 
     design: RampDesign
@@ -50,6 +52,7 @@ class DesignAnswer:
     assumed: bool
     stages: tuple[StageChoice, ...]
     answer: RampAnswer
+    others: tuple[str, ...] = ()
 
     def plan(self, plan: Plan) -> Plan:
         """The plan with the designed ramp in place of its own."""
@@ -113,7 +116,8 @@ def controls_of(plan: Plan, since: str | None = None) -> tuple[Control, ...]:
 
 def usual_control(plan: Plan, since: str | None = None) -> Control:
     """The control to design: the one that has limits, else the one that the ramp moves first, else all light together,
-    the knife, or what there is.
+    the knife, or what there is. Where that is the power of one beam, and the ramp moves several, all light together:
+    one beam alone leaves the cloud in the others.
 
     Raises
     ------
@@ -127,7 +131,9 @@ def usual_control(plan: Plan, since: str | None = None) -> Control:
     moved = [move.control for stage in plan.ramp for move in stage.moves]
     for control in (*limited, *moved, *(Control(knob) for knob in _FIRST_CHOICES)):
         if control in known:
-            return control
+            powers = {one for one in moved if one.knob is Knob.POWER}
+            together = control.knob is Knob.POWER and len(powers) > 1 and _TOGETHER in known
+            return _TOGETHER if together else control
     return known[0]
 
 
@@ -150,7 +156,7 @@ def _designed(plan: Plan, control: Control, since: str | None, drift: bool, tick
     require_collisions(plan)
     start = start_of(plan, since, ramp=since is not None and bool(plan.ramp))
     target, assumed = design_target(plan)
-    limits = limits_of(plan, control)
+    limits = limits_of(plan, control, start.path.standing)
     if limits.time is not None and start.begin:
         left = limits.time - start.begin
         if left <= 0.0:
@@ -169,8 +175,15 @@ def _designed(plan: Plan, control: Control, since: str | None, drift: bool, tick
     )  # fmt: skip
     before = stages_before(plan, start)
     stages, answer = _rounded(plan, before, design, start, limits.time)
+    powers = [one for one in start.path.standing if one.knob is Knob.POWER and control.knob is Knob.POWER]
     return DesignAnswer(
-        design=design, control=control, target=target, assumed=assumed, stages=(*before, *stages), answer=answer
+        design=design,
+        control=control,
+        target=target,
+        assumed=assumed,
+        stages=(*before, *stages),
+        answer=answer,
+        others=tuple(one.beam for one in powers if one != control and one.beam),
     )
 
 

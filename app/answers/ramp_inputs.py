@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from types import MappingProxyType
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -170,16 +171,29 @@ def target_of(plan: Plan) -> Target | None:
     return Target(**named) if named else None
 
 
-def limits_of(plan: Plan, control: Control) -> Limits:
-    """What a designed ramp of a control keeps."""
+def limits_of(plan: Plan, control: Control, standing: Standing = MappingProxyType({})) -> Limits:
+    """What a designed ramp of a control keeps.
+
+    standing : where the controls stand. All light together keeps the limits of each beam's power, whose share of where
+        it stands the scale is.
+    """
     from physics.held_truncation import Limits
 
-    own = next((limits for limits in plan.limits.controls if limits.control == control), None)
+    low: list[float] = []
+    high: list[float] = []
+    fastest: list[float] = []
+    for own in plan.limits.controls:
+        unit = 1.0 if own.control == control else math.nan
+        if control.knob is Knob.SCALE and own.control.knob is Knob.POWER:
+            unit = standing.get(own.control, math.nan)
+        if unit > 0.0:
+            for found, value in ((low, own.low), (high, own.high), (fastest, own.fastest)):
+                found += [] if value is None else [value.value / unit]
     return Limits(
         time=_value(plan.limits.time),
-        low=None if own is None else _value(own.low),
-        high=None if own is None else _value(own.high),
-        fastest=None if own is None else _value(own.fastest),
+        low=max(low, default=None),
+        high=min(high, default=None),
+        fastest=min(fastest, default=None),
     )
 
 

@@ -90,7 +90,7 @@ def waypoints_answer(
         densities = densities or _decades(_density_now(plan), _density_wanted(plan))
         points = assumed_waypoints(
             gas, start.atoms, start.temperature, start.path, control, densities, efficiency, expansion_time,
-            limits=limits_of(plan, control),
+            limits=limits_of(plan, control, start.path.standing),
         )  # fmt: skip
     else:
         raise PlanError("waypoints need a ramp, or target.efficiency for a quick estimate")

@@ -21,6 +21,7 @@ from app.answers.waypoints import departures_answer, errors_at, usual_densities,
 from app.newest import Newest, Steps, Watch
 from app.plan import Plan, PlanError, parse_plan, write_plan
 from app.process import own_process
+from app.ramp_words import design_sentence
 from physics.evaporation import Cancelled, EndReason, evaporate
 from physics.ramp_caveats import RampCaveatKind
 from physics.ramps import Control, Knob
@@ -272,6 +273,38 @@ def test_controls_that_can_be_designed(plan: Plan) -> None:
     gone = replace(plan, limits=replace(plan.limits, time=replace(plan.ramp[0].duration, value=0.1)))
     with pytest.raises(PlanError, match=r"limits.time, 0.1 s, is over"):
         design_answer(gone, None, "after stage 2")
+
+
+def test_beams_that_move_together_are_designed_together() -> None:
+    second = BEAM.replace(
+        "[cloud]",
+        """[[trap.beam]]
+name = "B"
+wavelength = "1064 nm"
+power = "2 W"
+waist = "60 um"
+direction = [0, 1, 0]
+[cloud]""",
+    )
+    limit = '[[limits.control]]\ncontrol = "power"\nbeam = "A"\nlow = "0.1 W"\n'
+    both = '[[ramp.stage.move]]\ncontrol = "power"\nbeam = "B"\nend = "1 W"\n'
+    A = Control(Knob.POWER, "A")
+    assert usual_control(parse_plan(BEAM, "a.toml")) == A
+    assert usual_control(parse_plan(second, "a.toml")) == A  # as the ramp does
+    assert usual_control(parse_plan(second + both, "a.toml")) == SCALE
+    assert usual_control(parse_plan(second + both + limit, "a.toml")) == SCALE
+    assert usual_control(parse_plan(second + limit, "a.toml")) == A
+
+
+def test_a_beam_that_does_not_reach_the_target_names_those_that_stay(plan: Plan) -> None:
+    found = design_answer(plan, SCALE)
+    assert found.others == ()
+    short = replace(found, control=Control(Knob.POWER, "A"), others=("B",), design=replace(found.design, reached=False))
+    assert design_sentence(short).startswith("No ramp of power A reaches ")
+    assert design_sentence(short).endswith(
+        "The light of B stays as it is: design the scale, which moves all beams together."
+    )
+    assert "{" not in design_sentence(found)
 
 
 # --- waypoints and sensitivities ---

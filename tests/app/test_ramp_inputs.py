@@ -23,6 +23,7 @@ from app.answers.ramp_inputs import (
     target_of,
     temperature_of_widths,
 )
+from app.kinds import BEAM_POWER
 from app.kinds import DEPTH as TRAP_DEPTH
 from app.plan import DEFAULT_PLAN, Plan, PlanError, parse_plan, plan_with, read_plan
 from app.units import CLOUD_WIDTH, TIME, Quantity, read_quantity
@@ -91,6 +92,19 @@ def test_limits_are_those_of_the_control() -> None:
     assert depth.fastest / KELVIN == pytest.approx(40e-6)
     assert limits_of(plan, Control(Knob.POWER, "A")) == Limits(time=12.0, fastest=2.0)
     assert limits_of(plan, Control(Knob.SCALE)) == Limits(time=12.0)
+
+
+def test_all_light_together_keeps_the_limits_of_each_beam() -> None:
+    plan = read_plan(FILE)
+    a, b = Control(Knob.POWER, "A"), Control(Knob.POWER, "B")
+    one = next(own for own in plan.limits.controls if own.control == a)
+    ranged = replace(one, low=read_quantity("0.1 W", BEAM_POWER), high=read_quantity("4 W", BEAM_POWER))
+    other = replace(one, control=b, low=read_quantity("0.05 W", BEAM_POWER), high=None, fastest=None)
+    plan = replace(plan, limits=replace(plan.limits, controls=(ranged, other)))
+    found = limits_of(plan, Control(Knob.SCALE), {a: 2.0, b: 0.5})
+    assert found == Limits(time=12.0, low=0.1, high=2.0, fastest=1.0)
+    # Of beams that are not there nothing is kept.
+    assert limits_of(plan, Control(Knob.SCALE), {b: 0.5}) == Limits(time=12.0, low=0.1)
 
 
 # --- traps and ramps ---

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 import pytest
 
@@ -87,7 +89,13 @@ def test_a_speed_limit_and_a_range_bind() -> None:
 def test_an_unreachable_target_gives_the_best_ramp_and_says_so() -> None:
     thin = design_ramp(GAS, 2e4, 5e-5, PATH, SCALE, TARGET, losses=Losses(background_lifetime=0.5), drift=False)
     assert not thin.reached
-    assert thin.bounds == ()
+    assert thin.bounds == ()  # no limit is in the way
+    short = design_ramp(GAS, 2e4, 5e-5, PATH, SCALE, TARGET, limits=Limits(low=0.3, time=2.0), drift=False)
+    assert not short.reached
+    assert [bound for bound, _ in short.bounds] == [Bound.RANGE]
+    assert math.isnan(short.bounds[0][1])
+    slow = design_ramp(GAS, 2e6, 5e-5, PATH, SCALE, TARGET, limits=Limits(fastest=0.1, time=2.0), drift=False)
+    assert [bound for bound, _ in slow.bounds] == [Bound.SPEED, Bound.TIME]
     assert thin.simulated.reason is not EndReason.TARGET
     assert len(thin.trade_off.times) == 0
 
