@@ -40,10 +40,19 @@ def plan_with_ramp() -> Plan:
 
 
 @pytest.fixture
-def window(make_window: Callable[..., MainWindow], settle: Settle) -> MainWindow:
-    window = make_window(plan_with_ramp())
-    show_ramp(window, settle)
-    return window
+def window(lasting_window: MainWindow, settle: Settle) -> MainWindow:
+    page = load(lasting_window, settle, plan_with_ramp())
+    page.drop_references()
+    page.read_time(None)
+    return lasting_window
+
+
+def load(window: MainWindow, settle: Settle, plan: Plan) -> RampPage:
+    window.document.load(plan, None, None)
+    page = show_ramp(window, settle)
+    page.panel.choose_view("Course")
+    settle(window)
+    return page
 
 
 def show_ramp(window: MainWindow, settle: Settle) -> RampPage:
@@ -224,11 +233,14 @@ def key(widget, code: Qt.Key) -> None:
 
 def test_arrow_keys_move_the_end_of_a_stage_and_leave_its_duration(window, settle):
     page = window.desk.ramp
-    canvas = page.panel.controls.plots[0].canvas
-    canvas.setFocus()
+    plot = page.panel.controls.plots[0]
+    plot.canvas.setFocus()
     before = window.document.plan.ramp[0]
-    for _ in range(2):  # the first handle is the start
-        key(canvas, Qt.Key.Key_M) if _ == 0 else key(canvas, Qt.Key.Key_Up)
+    mark = plot.picture().marks[1]  # the first one is the start
+    place = QPointF(*plot.canvas.place_of(mark.x, mark.y))
+    mouse(plot.canvas, QEvent.Type.MouseButtonPress, place)
+    mouse(plot.canvas, QEvent.Type.MouseButtonRelease, place)
+    key(plot.canvas, Qt.Key.Key_Up)
     settle(window)
     after = window.document.plan.ramp[0]
     assert after.moves[0].end.value > before.moves[0].end.value
@@ -278,15 +290,14 @@ def test_a_reference_stays_beside_another_plan(window, settle):
     assert "Beside “another”: N × 1, T × 1, D × 1, as long." in page.panel.detail.text()
 
 
-def test_measured_clouds_are_points_with_errors(make_window, settle):
+def test_measured_clouds_are_points_with_errors(window, settle):
     cloud = MeasuredChoice(
         label="after one",
         stage=1,
         atoms=read_quantity("1.5(2)e6", ATOM_NUMBER),
         temperature=read_quantity("400(30) nK", TEMPERATURE_KIND),
     )
-    window = make_window(replace(plan_with_ramp(), measured=(cloud,)))
-    page = show_ramp(window, settle)
+    page = load(window, settle, replace(plan_with_ramp(), measured=(cloud,)))
     picture = page.panel.columns.plots[ATOMS].picture()
     (mark,) = [mark for mark in picture.marks if mark.role is Role.MEASURED]
     assert (mark.x, mark.y) == (5.0, 1.5e6)
@@ -294,13 +305,12 @@ def test_measured_clouds_are_points_with_errors(make_window, settle):
     assert bar.y.tolist() == [1.3e6, 1.7e6]
 
 
-def test_a_plan_without_a_ramp_offers_a_usual_one(window, make_window, settle):
-    other = make_window(DEFAULT_PLAN)
-    page = show_ramp(other, settle)
+def test_a_plan_without_a_ramp_offers_a_usual_one(window, settle):
+    page = load(window, settle, DEFAULT_PLAN)
     assert page.panel.empty.isVisible()
     page.panel.empty.buttons()[0].click()
-    settle(other)
-    (stage,) = other.document.plan.ramp
+    settle(window)
+    (stage,) = window.document.plan.ramp
     assert stage.duration.text == "5 s"
     assert stage.moves[0].start.value / stage.moves[0].end.value == pytest.approx(10.0)
     assert not page.panel.empty.isVisible()

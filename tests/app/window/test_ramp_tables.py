@@ -26,8 +26,9 @@ def plan_with_ramp() -> Plan:
 
 
 @pytest.fixture
-def page(make_window, settle):
-    window = make_window(plan_with_ramp())
+def page(lasting_window, settle):
+    window = lasting_window
+    window.document.load(plan_with_ramp(), None, None)
     window.desk.tabs.setCurrentWidget(window.desk.ramp)
     settle(window)
     return window.desk.ramp
