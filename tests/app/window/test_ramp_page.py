@@ -174,6 +174,20 @@ def action(menu, text: str):
     return next(one for one in menu.actions() if one.text().replace("&", "") == text)
 
 
+def test_the_keyboard_walks_through_the_table_row_by_row(qtbot, window, settle):
+    page = window.desk.ramp
+    page.panel.choose_view("Stages")
+    settle(window)
+    editor = page.panel.stages
+    editor.durations[0].setFocus()
+    first, second = editor.moves[0][0], editor.moves[1][0]
+    walk = [*first.widgets, editor.labels[0], editor.menus[0].parentWidget(), editor.durations[1], *second.widgets]
+    for widget in walk:
+        qtbot.keyClick(QApplication.focusWidget(), Qt.Key.Key_Tab)
+        assert QApplication.focusWidget() is widget, widget.accessibleName()
+        assert widget.accessibleName()
+
+
 def test_another_control_and_another_shape_are_chosen(window, settle):
     page = window.desk.ramp
     page.panel.choose_view("Stages")
