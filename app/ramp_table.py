@@ -5,7 +5,8 @@
     0.01,2.4875,2.1
 
 The first line names each column, with its unit in brackets; pure numbers have none. Columns of a cloud, such as
-"atoms", may stand beside the controls, and are left out where a table is read. Numbers have decimal points.
+"atoms" and "passenger atoms", may stand beside the controls, and are left out where a table is read. Numbers have
+decimal points.
 """
 
 from __future__ import annotations
@@ -28,6 +29,8 @@ from physics.ramps import Control
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
     from app.plan import Plan, StageChoice
+    from physics.evaporation import Evaporation
+    from physics.sympathetic import SympatheticCooling
 
 MOST_ROWS = 200_000
 """Of a table; a file of that length is a mistake in the step."""
@@ -47,6 +50,8 @@ CLOSE = 2e-4
 """Share of its value by which a control may be off between the points that are kept of a table."""
 
 _TRAP_DEPTH = "trap depth"
+_PASSENGER = "passenger "
+"""Before the names of the columns of a second species."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -165,6 +170,8 @@ def _column(cell: str, where: str) -> tuple[Control | None, Kind, str] | None:
         raise PlanError(f'{where}: a bracket is not closed in "{cell.strip()}"')
     if title == _TRAP_DEPTH or (title in RAMP_COLUMNS and title not in ("time", "depth")):
         return None
+    if title.startswith(_PASSENGER):
+        return None
     if title == "time":
         control, kind = None, TIME
     else:
@@ -214,7 +221,7 @@ def ramp_table(
     step : [s] None: `usual_step`
     units : of columns by their name, "time" or "power A"; the others have the usual ones
     since : only what follows a measured cloud, as of `app.answers.ramp_answer`
-    answer : adds the columns of the cloud, empty where the simulation is over
+    answer : adds the columns of the cloud, and of a passenger, empty where the simulation is over
 
     Raises
     ------
@@ -244,21 +251,40 @@ def ramp_table(
     if answer is not None:
         for name in CLOUD_COLUMNS:
             title = _TRAP_DEPTH if name == "depth" else name
-            columns.append((title, RAMP_COLUMNS[name], _at(times, answer, name)))
+            columns.append((title, RAMP_COLUMNS[name], _at(times, answer.run, name)))
+        if answer.passenger is not None:
+            columns += _of_passenger(times, answer.passenger.run)
     return _written(columns, dict(units or {}))
 
 
-def _at(times: Any, answer: RampAnswer, name: str) -> Any:
-    """A column of the cloud at other times, NaN after its end."""
+def _of_passenger(times: Any, run: SympatheticCooling) -> list[tuple[str, RampColumn, Any]]:
+    """The columns of the second species, and how long its temperature takes to follow the first."""
+    from app.mixture_quantities import MIXTURE_QUANTITIES
+
+    found = [(f"{_PASSENGER}{n}", RAMP_COLUMNS[n], _at(times, run.passenger, n)) for n in CLOUD_COLUMNS]
+    row = MIXTURE_QUANTITIES["relaxation_time"]
+    column = RampColumn(
+        name=row.name, label=row.label, symbol=row.symbol, unit=row.unit, units=row.units, formula=row.formula
+    )
+    return [
+        *found,
+        (f"{_PASSENGER}{row.name}", column, _between(times, run.passenger.time, run.contact.relaxation_time)),
+    ]
+
+
+def _at(times: Any, run: Evaporation, name: str) -> Any:
+    """A column of a cloud at other times, NaN after its end."""
+    return _between(times, run.time, getattr(run.rows, name))
+
+
+def _between(times: Any, known: Any, values: Any) -> Any:
     import numpy as np
 
-    run = answer.run
-    values = getattr(run.rows, name)
-    if not len(run.time):
+    if not len(known):
         return np.full(len(times), np.nan)
     with np.errstate(all="ignore"):
-        found = np.exp(np.interp(times, run.time, np.log(values)))
-    return np.where(times <= run.time[-1] * (1.0 + 1e-9), found, np.nan)
+        found = np.exp(np.interp(times, known, np.log(values)))
+    return np.where(times <= known[-1] * (1.0 + 1e-9), found, np.nan)
 
 
 def _written(columns: list[tuple[str, RampColumn, Any]], units: dict[str, str]) -> str:

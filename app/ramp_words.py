@@ -212,8 +212,11 @@ def aim(target: Target, *, bosons: bool) -> str:
 
 
 def ramp_verdict(answer: RampAnswer) -> str:
-    """How the ramp ends, and what took the atoms, in words a colleague would say."""
-    return f"{_end(answer)} {_shares(answer.run.budget)}".strip()
+    """How the ramp ends, and what took the atoms, in words a colleague would say; why the passenger is not in it."""
+    left_out = ""
+    if answer.passenger_left_out:
+        left_out = _("The passenger is left out: {why}.").format(why=answer.passenger_left_out)
+    return " ".join(part for part in (_end(answer), _shares(answer.run.budget), left_out) if part)
 
 
 def _end(answer: RampAnswer) -> str:

@@ -24,7 +24,8 @@ USUAL_WAYPOINTS = "usual"
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Evaporated:
-    """All that was asked for; None what was not, or what there is no ramp for."""
+    """All that was asked for; None what was not, or what there is no ramp for. `reference` is the ramp of another plan,
+    with the name of its file."""
 
     plan: Plan
     answer: RampAnswer | None
@@ -32,6 +33,7 @@ class Evaporated:
     waypoints: WaypointsAnswer | None = None
     departures: tuple[DeparturesAnswer, ...] = ()
     sensitivity: SensitivityAnswer | None = None
+    reference: tuple[str, RampAnswer] | None = None
 
 
 def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
@@ -61,6 +63,7 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
         help='clouds to aim at, at phase-space densities such as "1e-3, 0.1, 2.6"; without a ramp from --efficiency',
     )
     parser.add_argument("--expansion", metavar="TEXT", help="expansion time of the widths of waypoints; default 15 ms")
+    parser.add_argument("--reference", metavar="FILE", help="another plan, whose ramp is shown beside this one")
     parser.add_argument("--sensitivity", action="store_true", help="what a tenth more or less of each input changes")
     parser.add_argument(
         "-o", "--output", metavar="FILE", help="write the ramp: CSV, one row a time step; or TOML, the plan with it"
@@ -102,7 +105,7 @@ def _answer(args: argparse.Namespace, found: Evaporated) -> str:
 def _asked(args: argparse.Namespace) -> dict[str, object]:
     """What was asked for besides the plan, for the input of the JSON object."""
     names = {"since": "from"}
-    wanted = ("ramp", "design", "control", "since", "waypoints", "expansion", "sensitivity")
+    wanted = ("ramp", "design", "control", "since", "waypoints", "expansion", "reference", "sensitivity")
     return {names.get(name, name): value for name in wanted if (value := getattr(args, name))}
 
 
@@ -112,8 +115,10 @@ def _found(args: argparse.Namespace) -> Evaporated:
     from app.answers.ramp_sensitivity import sensitivity_answer
     from app.answers.waypoints import departures_answer, waypoints_answer
     from app.control_kinds import control_named
+    from app.plan import read_plan
 
     plan = _with_ramp(plan_of(args), args.ramp)
+    other = None if args.reference is None else read_plan(args.reference)
     plan, since = _measured(plan, args)
     control: Control | None = None if args.control is None else control_named(args.control)
     densities, expansion = _densities(args.waypoints), _expansion(args.expansion)
@@ -134,6 +139,9 @@ def _found(args: argparse.Namespace) -> Evaporated:
     sensitivity = None
     if args.sensitivity:
         sensitivity = sensitivity_answer(plan, since, progress("sensitivities"))
+    reference = None
+    if other is not None:
+        reference = args.reference, ramp_answer(other, None, progress("reference"))
     _clear()
     return Evaporated(
         plan=plan,
@@ -142,6 +150,7 @@ def _found(args: argparse.Namespace) -> Evaporated:
         waypoints=waypoints,
         departures=tuple(one for one in departures if one.departures),
         sensitivity=sensitivity,
+        reference=reference,
     )
 
 

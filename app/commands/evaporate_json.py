@@ -37,6 +37,9 @@ def evaporate_body(found: Evaporated) -> dict[str, Any]:
     if found.waypoints is not None:
         body["waypoints"] = _waypoints(found.waypoints)
         body["departures"] = [_departures(one) for one in found.departures]
+    if found.reference is not None:
+        file, other = found.reference
+        body["reference"] = {"file": file, **ramp_body(other)}
     if found.sensitivity is not None:
         body["sensitivities"] = _sensitivities(found.sensitivity)
     return body

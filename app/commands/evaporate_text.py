@@ -51,6 +51,7 @@ def evaporate_text(found: Evaporated) -> str:
     if found.answer is not None:
         blocks += [_stages(found.answer), [ramp_verdict(found.answer)], _budget(found.answer), _limits(found)]
         blocks += _passenger(found.answer)
+        blocks += _beside(found.answer, found.reference)
     if found.waypoints is not None:
         blocks.append(_waypoints(found.waypoints))
         blocks.append(_departures(found.departures))
@@ -106,6 +107,29 @@ def _stages(answer: RampAnswer) -> list[str]:
         shares = (percent(max(part, 0.0) / budget.atoms_before) for part in (cooled, lost))
         table.append((name, *cloud(stage.last), gamma, *shares))
     return columns(table, right=range(1, len(header)))
+
+
+def _beside(answer: RampAnswer, reference: tuple[str, RampAnswer] | None) -> list[list[str]]:
+    """This ramp and the reference at their ends, side by side, and what became of the reference."""
+    if reference is None:
+        return []
+    file, other = reference
+    pair = [one.run for one in (answer, other)]
+    lost = [sum(run.budget.atoms[process] for process in LOSSES) / run.budget.atoms_before for run in pair]
+    rows = [
+        ("", _("this ramp"), _("reference")),
+        (_("time"), *(duration(run.final["time"]) for run in pair)),
+        ("N", *(number(run.final["atoms"], 3) for run in pair)),
+        ("T", *(temperature(run.final["temperature"]) for run in pair)),
+        ("D", *(number(run.final["peak_phase_space_density"], 3) for run in pair)),
+        (_("T/Tc or T/TF"), *(number(run.final["reduced_temperature"], 3) for run in pair)),
+        ("η", *(number(run.final["truncation"], 2) for run in pair)),
+        ("Γ [1/s]", *(number(run.final["elastic_collision_rate"], 2) for run in pair)),
+        (_("lost without cooling"), *(percent(max(share, 0.0)) for share in lost)),
+        (_("why it ended"), *(run.reason.label for run in pair)),
+    ]
+    title = _("Beside the ramp of {file}: {verdict}").format(file=file, verdict=ramp_verdict(other))
+    return [[title, *columns(rows, indent=2, right=(1, 2))]]
 
 
 def _budget(answer: RampAnswer) -> list[str]:
@@ -256,9 +280,7 @@ def _sensitivity(found: SensitivityAnswer, planned: float) -> list[str]:
 
 def _passenger(answer: RampAnswer) -> list[list[str]]:
     """The passenger at the ends of the stages, and what becomes of it; nothing without one."""
-    if answer.passenger_left_out:
-        return [[_("The passenger is left out: {why}.").format(why=answer.passenger_left_out)]]
-    if answer.passenger is None:
+    if answer.passenger is None:  # the verdict says why one is left out
         return []
     from app.mixture_words import sympathetic_verdict
 

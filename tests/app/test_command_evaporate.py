@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import csv
 import json
 import os
+import re
 import signal
 import subprocess
 import sys
@@ -262,6 +264,56 @@ def test_csv_there_and_back(plan: str, capsys: pytest.CaptureFixture[str], tmp_p
     again = evaporate_json(capsys, plan, "--ramp", str(table))
     assert again["final"]["atoms"] == pytest.approx(first["final"]["atoms"], rel=1e-3)
     assert again["input"]["ramp"] == str(table)
+
+
+def test_another_ramp_beside_it(plan: str, capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
+    other = tmp_path / "other.toml"
+    other.write_text(Path(plan).read_text(encoding="utf-8").replace('atoms = "2.0(2)e6"', 'atoms = "1e6"', 1), "utf-8")
+    alone, both = evaporate_json(capsys, str(other)), evaporate_json(capsys, plan, "--reference", str(other))
+    assert both["reference"]["file"] == str(other)
+    assert both["reference"]["final"] == alone["final"]
+    assert both["reference"]["budget"] == alone["budget"]
+    assert both["atoms_before"] == 2e6
+    assert both["reference"]["atoms_before"] == 1e6
+    text = evaporate_text(capsys, plan, "--reference", str(other))
+    assert f"Beside the ramp of {other}: " in text
+    assert re.search(r"\n +this ramp +reference\n", text)
+    assert "there is no such file" in trouble(capsys, plan, "--reference", str(tmp_path / "gone.toml"))
+
+
+PASSENGER = """
+[passenger]
+scattering_length = "163 a0"
+[passenger.species]
+key = "41K"
+state = "F=2 mF=+2"
+[passenger.cloud]
+atoms = "1e5"
+temperature = "20 uK"
+"""
+
+
+def test_a_passenger_in_the_table_and_from_a_measured_cloud(
+    plan: str, capsys: pytest.CaptureFixture[str], tmp_path: Path
+) -> None:
+    with_one, table = tmp_path / "two.toml", tmp_path / "two.csv"
+    with_one.write_text(Path(plan).read_text(encoding="utf-8") + PASSENGER, encoding="utf-8")
+    answer = evaporate_json(capsys, str(with_one), "-o", str(table), "--with-cloud", "--step", "10 ms")
+    header, *rows = csv.reader(table.read_text(encoding="utf-8").splitlines())
+    assert "passenger relaxation_time [s]" in header
+    own = answer["passenger"]["columns"]
+    assert float(rows[0][header.index("passenger atoms")]) == pytest.approx(own["atoms"][0])
+    place = header.index("passenger temperature [µK]")
+    middle = np.interp(0.2, own["time"], own["temperature"])
+    assert float(rows[20][place]) == pytest.approx(1e6 * middle, rel=1e-3)
+    # The columns of clouds do not count where it is read.
+    again = evaporate_json(capsys, str(with_one), "--ramp", str(table))
+    assert again["final"]["atoms"] == pytest.approx(answer["final"]["atoms"], rel=1e-3)
+    left_out = evaporate_json(capsys, str(with_one), "--from", "Thursday")
+    assert "is not known at the time of the measured cloud" in left_out["passenger"]["left_out"]
+    assert "The passenger is left out: the passenger is not known" in left_out["verdict"]
+    text = evaporate_text(capsys, str(with_one), "--from", "Thursday")
+    assert text.count("The passenger is left out: ") == 1
 
 
 # --- what cannot be answered ---
