@@ -118,10 +118,9 @@ class PlanEditor(QWidget):
             plan = self._check(change(self._plan))
         except (PlanError, ValueError) as error:
             self.set_plan(self._plan)
-            self._say(f"{error}.")
+            self.say(f"{error}.")
             return
-        if not self._errors:
-            self._say("")
+        self.say("")
         if plan != self._plan:
             self.set_plan(plan)
             self.plan_edited.emit(plan, what, "")
@@ -134,9 +133,11 @@ class PlanEditor(QWidget):
         self._show_problem()
 
     def _show_problem(self) -> None:
-        self._say(next(iter(self._errors.values()), ""))
+        self.say("")
 
-    def _say(self, sentence: str) -> None:
+    def say(self, sentence: str) -> None:
+        """Say under the fields what is wrong; an empty text takes it back, unless a field cannot be read."""
+        sentence = sentence or next(iter(self._errors.values()), "")
         if sentence != self.error.text():
             self.error.setText(sentence)
             self.error.setVisible(bool(sentence))

@@ -156,7 +156,7 @@ class DesignView(PlanEditor):
             controls = controls_of(with_known_depth(plan), self.since)
             usual = usual_control(with_known_depth(plan), self.since)
         except ValueError as error:
-            self._say(as_sentence(error))
+            self.say(as_sentence(error))
             controls, usual = (), None
         if controls != self._controls:
             self._controls = controls

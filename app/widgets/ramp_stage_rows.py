@@ -13,7 +13,8 @@ from app import ramp_edits
 from app.control_kinds import CONTROL_KINDS
 from app.plan import Plan
 from app.ramp_choices import Handing, MoveChoice, StageChoice
-from app.units import DEPTH, EXPONENT, FREQUENCY, Quantity
+from app.units import DEPTH, EXPONENT, FREQUENCY, TIME, Kind, Quantity, read_quantity
+from app.widgets.entry_field import EntryField
 from app.widgets.form import Choice
 from app.widgets.quantity_field import QuantityField
 from physics.ramp_shapes import Shape
@@ -21,6 +22,8 @@ from physics.ramps import Control
 
 if TYPE_CHECKING:
     from app.widgets.ramp_stages import StageEditor
+
+Points = tuple[tuple[Quantity, Quantity], ...]
 
 
 class MoveLine:
@@ -44,14 +47,7 @@ class MoveLine:
             self.shape.addItem(shape.label)
         self.shape.setCurrentIndex(list(Shape).index(move.shape))
         self.shape.activated.connect(self._choose_shape)
-        self.start = editor.add_field(
-            kind, f"Start of {name}", lambda plan: _start(self._move(plan)), self._put_start, f"{key} start",
-            optional=not move.points,
-        )  # fmt: skip
-        self.end = editor.add_field(
-            kind, f"End of {name}", lambda plan: _end(self._move(plan)), self._put_end, f"{key} end",
-            optional=move.tau is not None,
-        )  # fmt: skip
+        values = self._add_points(kind, name) if move.points else self._add_ends(kind, name, key, move)
         self.remove = QToolButton()
         self.remove.setText("−")
         self.remove.setAutoRaise(True)
@@ -75,24 +71,65 @@ class MoveLine:
             row.addWidget(self.exponent)
         row.addWidget(self.remove)
         editor.add_fill(self._fill)
-        self.places: tuple[tuple[int, QWidget], ...] = ((2, self.control), (3, self.start), (4, self.end), (5, way))
+        span = 2 // len(values)
+        self.places: tuple[tuple[int, int, QWidget], ...] = (
+            (2, 1, self.control),
+            *((3 + place * span, span, value) for place, value in enumerate(values)),
+            (5, 1, way),
+        )
         exponent = [self.exponent] if self.exponent is not None else []
-        self.widgets: list[QWidget] = [self.control, self.start, self.end, self.shape, *exponent, self.remove]
+        self.widgets: list[QWidget] = [self.control, *values, self.shape, *exponent, self.remove]
+
+    def _add_ends(self, kind: Kind, name: str, key: str, move: MoveChoice) -> list[QWidget]:
+        """Fields for where it goes from and to."""
+        self.start = self._editor.add_field(
+            kind, f"Start of {name}", lambda plan: self._move(plan).start, self._put_start, f"{key} start",
+            optional=True,
+        )  # fmt: skip
+        self.end = self._editor.add_field(
+            kind, f"End of {name}", lambda plan: self._move(plan).end, self._put_end, f"{key} end",
+            optional=move.tau is not None,
+        )  # fmt: skip
+        return [self.start, self.end]
+
+    def _add_points(self, kind: Kind, name: str) -> list[QWidget]:
+        """One line for all points of a table."""
+        self.points = EntryField(partial(_read_points, kind), _write_points)
+        self.points.setAccessibleName(f"Points of {name}")
+        self.points.setToolTip("Time and value of each point, such as 0 s: 30 µK; 2 s: 8 µK; 6 s: 3 µK")
+        self.points.entered.connect(self._take_points)
+        self.points.error_changed.connect(self._editor.say)
+        self._editor.add_fill(self._show_points)
+        return [self.points]
+
+    def _show_points(self, plan: Plan) -> None:
+        points = self._move(plan).points
+        if points != self.points.value:
+            self.points.set_value(points)
+            self.points.setCursorPosition(0)
+
+    def _take_points(self, points: Points) -> None:
+        def change(plan: Plan) -> Plan:
+            # The stage lasts as long as the table; tables of its other controls stretch.
+            plan = ramp_edits.with_duration(plan, self._stage, points[-1][0])
+            return self._put(plan, points=points)
+
+        self._editor.edit(change, f"points of stage {self._stage + 1}")
 
     def _move(self, plan: Plan) -> MoveChoice:
         return plan.ramp[self._stage].moves[self._number]
 
     def _fill(self, plan: Plan) -> None:
-        """What a start that is left open means, and the points of a table."""
+        """What a start or an end that is left open means."""
         move = self._move(plan)
         try:
             here = ramp_edits.standing_at(plan, self._stage).get(move.control, math.nan)
         except ValueError:
             here = math.nan
+        if move.points:
+            return
         text = "not known" if math.isnan(here) else ramp_edits.control_quantity(move.control, here).text
         self.start.setPlaceholderText(text)
-        if move.points:
-            self.shape.setToolTip("; ".join(f"{time.text}: {value.text}" for time, value in move.points))
         if move.tau is not None:
             duration = plan.ramp[self._stage].duration.value
             there = ramp_edits.end_of(move, here, duration)
@@ -105,15 +142,9 @@ class MoveLine:
         return ramp_edits.with_move(plan, self._stage, self._number, move)
 
     def _put_start(self, plan: Plan, value: Quantity | None) -> Plan:
-        points = self._move(plan).points
-        if points:
-            return self._put(plan, points=((points[0][0], given(value)), *points[1:]))
         return self._put(plan, start=value)
 
     def _put_end(self, plan: Plan, value: Quantity | None) -> Plan:
-        move = self._move(plan)
-        if move.points:
-            return self._put(plan, points=(*move.points[:-1], (move.points[-1][0], given(value))))
         return plan if value is None else self._put(plan, end=value, tau=None)
 
     def _put_exponent(self, plan: Plan, value: Quantity | None) -> Plan:
@@ -220,12 +251,23 @@ def _free(plan: Plan, stage: int) -> tuple[Control, ...]:
         return ()
 
 
-def _start(move: MoveChoice) -> Quantity | None:
-    return move.points[0][1] if move.points else move.start
+def _read_points(kind: Kind, text: str) -> Points:
+    """The points of a table, from "0 s: 30 µK; 2 s: 8 µK"; ValueError in one sentence."""
+    points = []
+    for part in text.split(";"):
+        time, colon, value = part.partition(":")
+        if not colon:
+            raise ValueError(
+                f'"{part.strip()}" is no point: a time and a value with a colon between, such as 2 s: {kind.example}'
+            )
+        points.append((read_quantity(time.strip(), TIME), read_quantity(value.strip(), kind)))
+    if len(points) < 2:
+        raise ValueError("A table needs two points or more, with semicolons between")
+    return tuple(points)
 
 
-def _end(move: MoveChoice) -> Quantity | None:
-    return move.points[-1][1] if move.points else move.end
+def _write_points(points: Points) -> str:
+    return "; ".join(f"{time.text}: {value.text}" for time, value in points)
 
 
 def given(value: Quantity | None) -> Quantity:

@@ -182,8 +182,8 @@ class StageEditor(PlanEditor):
         lines = [MoveLine(self, number, k, move, plan) for k, move in enumerate(stage.moves)]
         self.moves.append(lines)
         for line in lines:
-            for column, widget in line.places:
-                self._grid.addWidget(widget, row, column)
+            for column, span, widget in line.places:
+                self._grid.addWidget(widget, row, column, 1, span)
             row += 1
         if not lines:
             hold = QLabel("nothing moves")

@@ -85,10 +85,37 @@ def test_a_table_becomes_the_ramp_and_undo_brings_the_old_one_back(page, settle,
         [1.0, 8 / 30, 0.1]
     )
     assert page.panel.controls.curves[0].times[-1] == 6.0
-    assert page.panel.stages.moves[0][0].end.text() == "3 uK"
+    assert page.panel.stages.moves[0][0].points.text() == "0 s: 30 uK; 2 s: 8 uK; 6 s: 3 uK"
     window.document.stack.undo()
     settle(window)
     assert window.document.plan.ramp == plan_with_ramp().ramp
+
+
+def test_the_points_of_a_table_are_typed(qtbot, page, settle):
+    window = page.window()
+    page.panel.choose_view("Stages")
+    editor = page.panel.stages
+    editor.moves[0][0].shape.activated.emit(3)
+    settle(window)
+    points = editor.moves[0][0].points
+    assert points.text() == "0 s: 30 µK; 5 s: 3.00 µK"
+    points.setFocus()
+    points.selectAll()
+    qtbot.keyClicks(points, "0 s: 30 uK; 1 s: 9 uK; 4 s 2 uK")
+    points.commit()
+    assert '"4 s 2 uK" is no point' in editor.problem
+    points.selectAll()
+    qtbot.keyClicks(points, "0 s: 30 uK; 1 s: 9 uK; 4 s: 2 uK")
+    points.commit()
+    settle(window)
+    assert editor.problem == ""
+    stage = window.document.plan.ramp[0]
+    assert stage.duration.value == 4.0
+    assert [time.value for time, _value in stage.moves[0].points] == [0.0, 1.0, 4.0]
+    assert page.panel.controls.curves[0].at(1.0) == pytest.approx(9e-6)
+    window.document.stack.undo()
+    settle(window)
+    assert editor.moves[0][0].points.text() == "0 s: 30 µK; 5 s: 3.00 µK"
 
 
 def test_a_table_that_cannot_be_read_changes_nothing_and_is_told_of(page, settle, tmp_path):
