@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from app.language import translate as _
+from app.ramp_edits import with_known_depth
 from app.ramp_words import duration
 from app.words import number, percent
 from physics.evaporation import EndReason
@@ -17,6 +18,7 @@ from physics.evaporation_rates import Process
 
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
+    from app.plan import Plan
     from physics.evaporation import Evaporation
     from physics.evaporation_budget import StageSummary
 
@@ -43,6 +45,14 @@ class Advice:
     @property
     def text(self) -> str:
         return f"{self.limit} {self.change}".strip()
+
+
+def assumed_depth(plan: Plan) -> str:
+    """How deep a trap is taken to be that has no depth of its own; empty where it has one."""
+    depth = with_known_depth(plan).trap.depth
+    if plan.trap.depth is not None or depth is None:
+        return ""
+    return _("The trap has no depth of its own; it is taken to be {depth} deep at the start.").format(depth=depth.text)
 
 
 def onset(answer: RampAnswer) -> str:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from functools import partial
 from typing import TYPE_CHECKING, Any
 
@@ -16,6 +16,7 @@ from app.figures.ramp_tradeoff import eta_picture, time_picture
 from app.figures.theme import Theme
 from app.newest import Steps
 from app.plan import PLAN_FIELDS, Plan
+from app.ramp_advice import assumed_depth
 from app.ramp_edits import with_known_depth
 from app.ramp_limits import limits_for, with_bound, with_longest_time
 from app.ramp_words import bound_text, design_sentence, ramp_verdict
@@ -268,7 +269,7 @@ class DesignView(PlanEditor):
             self.detail.setText("")
         elif isinstance(extra, DesignAnswer):
             self._found, self._found_for = extra, _depends_on(plan)
-            self.sentence.setText(" ".join((design_sentence(extra), *_assumed_depth(plan))))
+            self.sentence.setText(" ".join((design_sentence(extra), assumed_depth(plan))).strip())
             self.detail.setText(_result_text(extra.answer, extra))
             for plot, make in zip(self.plots, (eta_picture, time_picture), strict=True):
                 plot.show(partial(make, extra.design))
@@ -301,12 +302,6 @@ def as_sentence(error: Exception) -> str:
     """What an error says, as a sentence on the screen."""
     text = str(error)
     return f"{text[:1].upper()}{text[1:]}."
-
-
-def _assumed_depth(plan: Plan) -> Iterator[str]:
-    depth = with_known_depth(plan).trap.depth
-    if plan.trap.depth is None and depth is not None:
-        yield f"The trap has no depth of its own; it is taken to be {depth.text} deep at the start."
 
 
 def _result_text(answer: RampAnswer, found: DesignAnswer) -> str:

@@ -17,6 +17,8 @@ from app.figures.theme import Theme
 from app.kinds import PHASE_SPACE_DENSITY, TIME, Kind
 from app.newest import Steps, Watch
 from app.plan import Plan
+from app.ramp_advice import assumed_depth
+from app.ramp_edits import with_known_depth
 from app.ramp_words import control_text, duration
 from app.units import Quantity, best_unit, format_quantity, read_quantity
 from app.widgets.entry_field import EntryField
@@ -137,7 +139,7 @@ class WaypointsView(QWidget):
         densities, chosen = self._densities, self._chosen
 
         def run(watch: Watch) -> Any:
-            found = waypoints_answer(plan, densities, time)
+            found = waypoints_answer(plan if plan.ramp else with_known_depth(plan), densities, time)
             point = next((p for p in found.points if p.phase_space_density == chosen), None)
             off = None
             if off_key is not None and point is not None:
@@ -186,6 +188,7 @@ class WaypointsView(QWidget):
             parts.append(f"Not reached: D = {missed}.")
         if found.efficiency is not None:
             parts = [f"Without a ramp: by the assumed efficiency γ = {number(found.efficiency, 2)}, so without times."]
+            parts.append("" if self._plan is None else assumed_depth(self._plan))
         self.sentence.setText(" ".join(part for part in parts if part))
 
     def _show_off(self, off: DeparturesAnswer | None) -> None:

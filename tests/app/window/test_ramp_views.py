@@ -148,6 +148,15 @@ def test_waypoints_follow_the_ramp_and_say_what_follows_if_a_cloud_is_off(qtbot:
     assert "<td>0.100</td>" in waypoints.html()
 
 
+def test_waypoints_without_a_ramp_go_by_the_assumed_efficiency(window, settle):
+    window.document.load(DEFAULT_PLAN, None, None)
+    page = view(window, settle, "Waypoints")
+    said = page.panel.waypoints.sentence.text()
+    assert said.startswith("Without a ramp: by the assumed efficiency γ = 2.5")
+    assert said.endswith("it is taken to be 2.0 µK deep at the start.")
+    assert all(row[3] == "–" for row in page.panel.waypoints.table.row_texts())
+
+
 def test_waypoints_are_printed(window, settle, monkeypatch, tmp_path):
     from PySide6.QtPrintSupport import QPrintDialog, QPrinter
 
