@@ -3,15 +3,17 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from types import MappingProxyType
 
 import numpy as np
 import pytest
-from scipy.integrate import solve_ivp
+from scipy.integrate import quad, solve_ivp
+from scipy.optimize import brentq
 from scipy.special import gammainc
 
+from physics.checks import Floats
 from physics.constants import atomic_mass, boltzmann, reduced_planck
 from physics.curve_shape import CurveShape
 from physics.evaporation import evaporate
@@ -82,6 +84,68 @@ def test_plain_evaporation_goes_as_the_published_equations_integrated_by_the_lib
 
 
 # Limits with closed answers.
+
+
+def test_all_processes_together_go_as_an_integration_by_quadratures() -> None:
+    # A lowered light trap with every loss, all from integrals over levels, positions and collisions; SciPy's steps.
+    m, a = MASS, 5.3e-9
+    depth, angular = boltzmann * 3e-4, 2.0 * math.pi * np.array([500.0, 500.0, 100.0])
+    K2, K3, lifetime, heating, S, end, duration = 1e-21, 4.3e-41, 20.0, 2e-7, 1e-9, 0.1, 2.0
+    fall = math.log(end) / duration
+
+    def over(f: Callable[[float], float], top: float) -> float:
+        return float(quad(f, 0.0, top, epsabs=0.0, epsrel=1e-9)[0])
+
+    def truncation(share: float) -> float:
+        return float(brentq(lambda eta: 3.0 * gammainc(4, eta) / gammainc(3, eta) / eta - share, 1e-2, 1e4, xtol=1e-13))
+
+    def met(eta: float, bodies: int) -> tuple[float, float]:
+        """Mean of (n/n_ref)^(bodies - 1) over the uncut volume, and the energy of those that meet, over kT."""
+
+        def weight(u: float) -> float:
+            density = float(gammainc(1.5, eta - u)) * math.exp(-u)
+            return 2.0 / math.sqrt(math.pi) * math.sqrt(u) * density**bodies
+
+        def energy(u: float) -> float:
+            return u + 1.5 * float(gammainc(2.5, eta - u) / gammainc(1.5, eta - u))
+
+        mean = over(weight, eta)
+        return mean, over(lambda u: weight(u) * energy(u), eta) / mean
+
+    def flow(t: float, y: Floats) -> list[float]:
+        N, E, s = math.exp(y[0]), math.exp(y[1]), math.exp(fall * t)
+        U, mean = s * depth, E / N
+        eta = truncation(mean / U)
+        kT = U / eta
+        Z = float(gammainc(3, eta))
+        n = N / Z * float(np.prod(angular)) * s**1.5 * (m / (2.0 * math.pi * kT)) ** 1.5
+        K = m * kT * (a / reduced_planck) ** 2
+        sigma = 8.0 * math.pi * a * a * over(lambda x: x * math.exp(-x) / (1.0 + K * x), 60.0)
+        V = over(lambda e: 0.5 * e * e * ((eta - e - 1.0) * math.exp(-e) + math.exp(-eta)), eta)
+        X = over(lambda e: 0.5 * e * e * (math.exp(-e) - (eta - e + 1.0) * math.exp(-eta)), eta)
+        evaporated = n * sigma * math.sqrt(8.0 * kT / (math.pi * m)) * math.exp(-eta) * V / Z
+        # Levels below e go as e^3 s^(-3/2), and below the depth as s^(3/2).
+        spilled = -1.5 * fall * eta**3 / 6.0 * math.exp(-eta) / Z
+        work = 1.5 * fall * kT * over(lambda e: e**3 / 6.0 * math.exp(-e), eta) / Z
+        (pair, pair_energy), (triple, triple_energy) = met(eta, 2), met(eta, 3)
+        two, three = K2 * n * pair / Z, K3 * n * n * triple / Z
+        growth = math.pi**2 * S * s * float(np.mean((angular / (2.0 * math.pi)) ** 2))
+        lost = evaporated + spilled + 1.0 / lifetime + two + three
+        power = work + 3.0 * boltzmann * heating + growth * mean - mean / lifetime - spilled * U
+        power -= kT * (evaporated * (eta + 1.0 - X / V) + two * pair_energy + three * triple_energy)
+        return [-lost, power / mean]
+
+    eta = 10.0
+    start = [math.log(2e6), math.log(2e6 * 3e-5 * boltzmann * 3.0 * gammainc(4, eta) / gammainc(3, eta))]
+    own = solve_ivp(flow, (0.0, duration), start, rtol=1e-7, atol=1e-8)
+    N, E = np.exp(own.y[:, -1])
+    losses = Losses(background_lifetime=lifetime, two_body=K2, three_body=K3, heating=heating, intensity_noise=S)
+    run = evaporate(RUBIDIUM, 2e6, 3e-5, lowering(end, duration=duration), trap(), losses=losses)
+    assert run.atoms[-1] == pytest.approx(N, rel=1e-6)
+    assert run.rows.energy[-1] == pytest.approx(E, rel=1e-6)
+    assert run.rows.truncation[-1] == pytest.approx(truncation(E / N / (end * depth)), rel=1e-6)
+    taken = run.budget.atoms
+    assert min(taken[p] for p in (Process.EVAPORATED, Process.SPILLED, Process.BACKGROUND, Process.TWO_BODY)) > 1e3
 
 
 def test_background_loss_keeps_the_temperature() -> None:
