@@ -18,10 +18,13 @@ import numpy as np
 
 from physics.checks import Floats
 
-# Made by tests/generators/lattice_vector.py for 4096 points.
-_VECTOR = (1, 1557, 1087, 701, 1163, 321, 1649, 207, 1827, 1203, 1935, 1869)
+# Made by tests/generators/lattice_vector.py, each for its number of points.
+_VECTORS = {
+    1024: (1, 275, 167, 403, 317, 181, 103, 297, 49, 193, 495, 449),
+    4096: (1, 1557, 1087, 701, 1163, 321, 1649, 207, 1827, 1203, 1935, 1869),
+}
 
-DIMENSIONS = len(_VECTOR)
+DIMENSIONS = 12
 """Inputs that the lattice spreads jointly; of more, each has its draws at even quantiles in an order by chance."""
 
 
@@ -30,7 +33,7 @@ def lattice(count: int, dimensions: int, *, seed: int = 0) -> Floats:
 
     Parameters
     ----------
-    count : int. Draws; made for 4096, good for other powers of two.
+    count : int. Draws; made for 1024 and 4096, fair for other powers of two.
     dimensions : int. Best up to `DIMENSIONS`.
     seed : int. Equal seeds give equal draws.
 
@@ -58,7 +61,7 @@ def _deviates(count: int, dimensions: int, seed: int) -> Floats:
 
     random = Random(seed)
     shift = np.array([random.random() for _ in range(dimensions)])
-    vector = np.array(_VECTOR[:dimensions], dtype=np.int64)
+    vector = np.array(_VECTORS.get(count, _VECTORS[4096])[:dimensions], dtype=np.int64)
     places = np.arange(count)[:, np.newaxis] * vector % count
     more = [random.sample(range(count), count) for _ in range(dimensions - len(vector))]
     points = (np.column_stack([places, *more]) / count + shift) % 1.0

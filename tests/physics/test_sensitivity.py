@@ -42,7 +42,20 @@ def test_the_lattice_is_far_better_than_chance() -> None:
 
 def test_generating_vector_is_the_one_of_the_generator() -> None:
     made = runpy.run_path(str(GENERATOR))
-    assert made["generating_vector"](dimensions=4) == sensitivity._VECTOR[:4]
+    assert made["generating_vector"](dimensions=4) == sensitivity._VECTORS[4096][:4]
+    assert made["generating_vector"](1024) == sensitivity._VECTORS[1024]
+
+
+@pytest.mark.parametrize(("count", "most"), [(1024, 0.05), (4096, 0.03)])
+def test_intervals_of_sums_of_inputs_are_as_wide_as_they_should_be(count: int, most: float) -> None:
+    random = np.random.default_rng(1)
+    draws = lattice(count, DIMENSIONS, seed=20)
+    for _ in range(60):
+        weights = random.normal(size=DIMENSIONS) * (random.random(DIMENSIONS) < 0.5)
+        if not np.any(weights):
+            continue
+        low, _, high = interval(draws @ (weights / np.linalg.norm(weights)))
+        assert high - low == pytest.approx(2.0 * 0.99446, rel=most)
 
 
 def test_a_positive_quantity_stays_positive_and_keeps_its_median() -> None:
