@@ -4,12 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from functools import cached_property
-from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import QEvent, QObject, Qt
 from PySide6.QtGui import QKeyEvent, QShowEvent
-from PySide6.QtWidgets import QDialog, QFileDialog, QWidget
+from PySide6.QtWidgets import QWidget
 
 from app.engine import CloudAnswer
 from app.figures.picture import Picture
@@ -22,10 +21,12 @@ from app.widgets.page import Page
 
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
+    from app.answers.ramp_found import Found
     from app.answers.ramp_inputs import MeasuredCloud
     from app.caveat_words import CaveatLine
     from app.figures.ramp_columns import Course
     from app.figures.ramp_controls import Handle
+    from app.ramp_choices import StageChoice
     from app.widgets.ramp_panel import RampPanel
     from app.widgets.ramp_plots import Scene
 
@@ -34,19 +35,6 @@ _STEP = "ramp"
 _SURVEYED = "The trap is surveyed along the ramp; the first time this takes some seconds."
 _NO_RAMP = "This plan has no ramp yet."
 _START = "Start from a usual one, which lowers the trap to a tenth in five seconds, or let one be designed."
-
-
-@dataclass(frozen=True, kw_only=True, eq=False)
-class Found:
-    """What the worker hands out. plan, key : to which it belongs. failure : why there is no answer, else empty."""
-
-    plan: Plan
-    key: object = None
-    ramp: RampAnswer | None = None
-    rest: RampAnswer | None = None
-    measured: tuple[MeasuredCloud, ...] = ()
-    extra: Any = None
-    failure: str = ""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -80,6 +68,7 @@ class RampPage(Page):
     @cached_property
     def panel(self) -> RampPanel:
         """All that is on the page; built when it is first shown, so that a start does not wait for it."""
+        from app.widgets.ramp_exchange import RampExchange
         from app.widgets.ramp_panel import RampPanel
 
         panel = RampPanel(self)
@@ -93,11 +82,13 @@ class RampPage(Page):
             editor.plan_edited.connect(self.plan_edited)
         panel.design.wanted.connect(self.part_allowed)
         panel.waypoints.wanted.connect(self.part_wanted)
-        panel.waypoints.save_asked.connect(self._save_waypoints)
-        panel.waypoints.print_asked.connect(self._print_waypoints)
+        exchange = self.exchange = RampExchange(self)
+        exchange.stage_read.connect(self._take_table)
+        panel.waypoints.save_asked.connect(lambda: exchange.save_waypoints(panel.waypoints.csv()))
+        panel.waypoints.print_asked.connect(lambda: exchange.print_waypoints(panel.waypoints.html()))
         panel.measured.since_chosen.connect(self._follow_from)
         panel.stages.save_asked.connect(self.ask_save_table)
-        panel.stages.read_asked.connect(self.ask_read_table)
+        panel.stages.read_asked.connect(exchange.ask_read_table)
         panel.stages.problem_changed.connect(self._problem_changed)
         panel.view_changed.connect(self._view_changed)
         panel.keep.clicked.connect(self.keep_reference)
@@ -138,11 +129,13 @@ class RampPage(Page):
 
     def _job(self, plan: Plan) -> Steps:
         since = self.since
+        from app.answers.ramp_found import simulated_with_rest
+
         extra, extra_key = self.panel.extra_job(plan)
         key = self._key(plan)
 
         def run(watch: Watch) -> Found | None:
-            found = _simulated(plan, since, watch)
+            found = simulated_with_rest(plan, since, watch)
             if found is None:
                 return None
             found = replace(found, key=key)
@@ -354,71 +347,25 @@ class RampPage(Page):
         self.panel.design.start_from(label)
         self.part_wanted.emit()
 
-    # ---------------------------------------------------------------- tables of the ramp
+    # ---------------------------------------------------------------- tables
 
     def ask_save_table(self) -> None:
-        """Ask how the ramp is to be written as a table, and where to."""
-        from app.widgets.ramp_table_dialog import RampTableDialog
+        """Write the ramp on show as a table."""
+        if self.cloud is not None and self.cloud.plan.ramp:
+            self.exchange.ask_save_table(self.cloud.plan, self.answer)
 
-        if self.cloud is None or not self.cloud.plan.ramp:
-            return
-        try:
-            dialog = RampTableDialog(self.cloud.plan, self.answer, self)
-        except ValueError as error:
-            self.told.emit(f"{error}.")
-            return
-        if dialog.exec() == QDialog.DialogCode.Accepted:
-            chosen, _ = QFileDialog.getSaveFileName(self, "Save the ramp", str(self.folder / "ramp.csv"), "CSV (*.csv)")
-            if chosen:
-                path = Path(chosen)
-                self._write(path if path.suffix else path.with_suffix(".csv"), dialog.text.encode("utf-8"))
-        dialog.deleteLater()
-
-    def ask_read_table(self) -> None:
-        """Ask for a table, and make it the ramp."""
-        chosen, _ = QFileDialog.getOpenFileName(self, "Read a ramp", str(self.folder), "CSV (*.csv);;All files (*)")
-        if chosen:
-            self.read_table(Path(chosen))
-
-    def read_table(self, path: Path) -> None:
-        """Make the table of a file the ramp, as one stage; one that cannot be read changes nothing and is told of."""
+    def _take_table(self, stage: StageChoice) -> None:
+        """Make a table that was read the ramp; one that this trap cannot follow changes nothing and is told of."""
         from app.ramp_edits import checked
-        from app.ramp_table import read_ramp_table
 
         if self.cloud is None:
             return
         try:
-            stage = read_ramp_table(path.read_text(encoding="utf-8"), path.name).stage(label=path.stem[:80])
             plan = checked(replace(self.cloud.plan, ramp=(stage,)))
-        except UnicodeDecodeError:
-            self.told.emit(f"{path.name} is not a text in UTF-8.")
-        except OSError as error:
-            self.told.emit(f"{path} cannot be read: {error.strerror or error}.")
         except ValueError as error:
             self.told.emit(f"{error}.")
         else:
-            self.folder_used.emit(path.parent)
             self.plan_edited.emit(plan, _STEP, "")
-
-    # ---------------------------------------------------------------- waypoints on paper
-
-    def _save_waypoints(self) -> None:
-        chosen, _ = QFileDialog.getSaveFileName(
-            self, "Save the waypoints", str(self.folder / "waypoints.csv"), "CSV (*.csv)"
-        )
-        if chosen:
-            path = Path(chosen)
-            self._write(path if path.suffix else path.with_suffix(".csv"), self.panel.waypoints.csv().encode("utf-8"))
-
-    def _print_waypoints(self) -> None:
-        from PySide6.QtGui import QTextDocument
-        from PySide6.QtPrintSupport import QPrintDialog, QPrinter
-
-        printer = QPrinter(QPrinter.PrinterMode.HighResolution)
-        if QPrintDialog(printer, self).exec():
-            document = QTextDocument()
-            document.setHtml(self.panel.waypoints.html())
-            document.print_(printer)
 
     # ---------------------------------------------------------------- references
 
@@ -523,26 +470,6 @@ class RampPage(Page):
 
     def take_focus(self) -> None:
         self.panel.take_focus()
-
-
-def _simulated(plan: Plan, since: str | None, watch: Watch) -> Found | None:
-    """The ramp of a plan, and the rest of it from a measured cloud; None where it was stopped."""
-    from app.answers.ramp_inputs import measured_clouds
-    from app.answers.ramp_jobs import ramp_job
-
-    if not plan.ramp:
-        return Found(plan=plan)
-    try:
-        answer = ramp_job(plan).run(watch)
-        if answer is None:
-            return None
-        measured = measured_clouds(plan)
-        rest = None
-        if since is not None and any(choice.label == since for choice in plan.measured):
-            rest = ramp_job(plan, since).run(watch)
-    except (ValueError, OSError, ArithmeticError, RuntimeError) as error:
-        return Found(plan=plan, failure=str(error))
-    return Found(plan=plan, ramp=answer, rest=rest, measured=measured)
 
 
 def _caveat_lines(answer: RampAnswer) -> tuple[CaveatLine, ...]:

@@ -221,7 +221,7 @@ class Page(QWidget):
         if form is None:
             self.told.emit(f"{path.name} must end in .png, .svg or .pdf.")
         elif self._has_plots():
-            self._write(path, self._drawn(form))
+            self.write(path, self._drawn(form))
 
     def save_data(self) -> None:
         if not self._has_plots():
@@ -235,13 +235,14 @@ class Page(QWidget):
 
     def write_data(self, path: Path) -> None:
         """Write all numbers in full precision, with decimal points, names and units in the first line."""
-        self._write(path, self.csv().encode("utf-8"))
+        self.write(path, self.csv().encode("utf-8"))
 
     def csv(self) -> str:
         """The numbers behind the plots."""
         return write_csv(self.pictures())
 
-    def _write(self, path: Path, content: bytes) -> None:
+    def write(self, path: Path, content: bytes) -> None:
+        """Write a file, or tell why it cannot be written."""
         try:
             write_atomically(path, content)
         except OSError as error:

@@ -129,7 +129,7 @@ def test_a_table_that_cannot_be_read_changes_nothing_and_is_told_of(page, settle
         ("time [s],knife [MHz]\n0,3\n1,2\n", "knife"),
     ):
         path.write_text(text)
-        page.read_table(path)
+        page.exchange.read_table(path)
         assert word in told[-1]
     assert page.window().document.plan == before
     curves = page.panel.columns.plots[ATOMS].picture().curves
