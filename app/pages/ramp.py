@@ -59,6 +59,7 @@ class RampPage(Page):
         self._pace = Pace()
         self._drag = 0
         self._written: Plan | None = None  # as it was before the drag that is under way
+        self._reach = 1.0  # [s] of the time axis then
         self._built = False
         self._scenery: Scene | None = None  # what all plots on show share
         self._shown: Plan | None = None  # whose stages are on show
@@ -436,28 +437,20 @@ class RampPage(Page):
     # ---------------------------------------------------------------- dragging ends of stages
 
     def _drag_to(self, handle: Handle, time: float, value: float) -> None:
-        from app.moving import fine_step
-        from app.ramp_edits import checked, with_end_dragged, with_start_dragged
+        from app.ramp_drags import with_place_dragged
 
-        if self.cloud is None:
+        if self.cloud is None or self._scenery is None:
             return
         plan = self.cloud.plan
         if self._written is None:
-            self._written = plan
-        written = self._written
-        if handle.stage >= min(len(plan.ramp), len(written.ramp)):
+            self._written, self._reach = plan, self._scenery.end
+        if handle.stage >= min(len(plan.ramp), len(self._written.ramp)):
             return
         try:
-            if handle.start:
-                plan = with_start_dragged(plan, written, handle.stage, handle.control, value)
-            else:
-                begin = sum(stage.duration.value for stage in written.ramp[: handle.stage])
-                step = fine_step(self._scene(written, sum(s.duration.value for s in written.ramp)).end)
-                duration: float | None = time - begin
-                if abs(time - begin - plan.ramp[handle.stage].duration.value) < 0.5 * step:
-                    duration = None
-                plan = with_end_dragged(plan, written, handle.stage, handle.control, duration, value, step)
-            plan = checked(plan)
+            plan = with_place_dragged(
+                plan, self._written, handle.stage, handle.control, start=handle.start, time=time, value=value,
+                end=self._reach,
+            )  # fmt: skip
         except ValueError:
             return  # where no ramp can go: the handle stays at the last place where one can
         self.plan_edited.emit(plan, _STEP, f"ramp drag {self._drag}")

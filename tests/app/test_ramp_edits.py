@@ -13,6 +13,7 @@ from app.answers.ramp_inputs import ramp_of
 from app.measured_edits import By, Where
 from app.plan import DEFAULT_PLAN, Plan, PlanError, plan_with
 from app.ramp_choices import Handing, MoveChoice, StageChoice
+from app.ramp_drags import with_end_dragged, with_place_dragged, with_start_dragged
 from app.ramp_limits import limits_for, with_bound, with_longest_time
 from app.trap_choices import BeamChoice, CoilsChoice, TrapChoice
 from app.units import (
@@ -162,18 +163,30 @@ def test_another_control_moves_by_the_same_factor():
 
 def test_a_dragged_end_changes_duration_and_value_in_the_units_that_were_written(plan):
     plan = ramp_edits.with_duration(plan, 0, read_quantity("4500 ms", DURATION))
-    dragged = ramp_edits.with_end_dragged(plan, plan, 0, DEPTH_CONTROL, 3.21, 0.5e-6 * boltzmann, 0.01)
+    dragged = with_end_dragged(plan, plan, 0, DEPTH_CONTROL, 3.21, 0.5e-6 * boltzmann, 0.01)
     stage = dragged.ramp[0]
     assert stage.duration.text == "3210 ms"
     assert stage.moves[0].end.text == "500 nK"
     assert dragged.ramp[1] == plan.ramp[1]
-    started = ramp_edits.with_start_dragged(plan, plan, 0, DEPTH_CONTROL, 40e-6 * boltzmann)
+    started = with_start_dragged(plan, plan, 0, DEPTH_CONTROL, 40e-6 * boltzmann)
     assert started.ramp[0].moves[0].start.value == pytest.approx(40e-6 * boltzmann)
+
+
+def test_a_place_dragged_upwards_leaves_the_duration_as_it_was_written(plan):
+    plan = ramp_edits.with_duration(plan, 0, read_quantity("4.99987 s", DURATION))
+    value = 5e-6 * boltzmann
+    up = with_place_dragged(plan, plan, 0, DEPTH_CONTROL, start=False, time=4.99987, value=value, end=10.0)
+    assert up.ramp[0].duration.text == "4.99987 s"
+    assert up.ramp[0].moves[0].end.text == "5.00 µK"
+    later = with_place_dragged(plan, plan, 1, DEPTH_CONTROL, start=False, time=8.00001, value=value, end=10.0)
+    assert later.ramp[1].duration.text == "3 s"
+    back = with_place_dragged(plan, plan, 0, DEPTH_CONTROL, start=False, time=-1.0, value=value, end=10.0)
+    assert back.ramp[0].duration.value == 0.01  # a stage keeps a step of the hand
 
 
 def test_a_drag_of_a_stage_that_moves_nothing_changes_its_duration_only(plan):
     held = ramp_edits.with_new_stage(plan, 2, hold=True)
-    dragged = ramp_edits.with_end_dragged(held, held, 2, DEPTH_CONTROL, 1.5, 1e-30, 0.01)
+    dragged = with_end_dragged(held, held, 2, DEPTH_CONTROL, 1.5, 1e-30, 0.01)
     assert dragged.ramp[2].duration.value == 1.5
     assert dragged.ramp[2].moves == ()
 
