@@ -18,9 +18,11 @@ from physics.harmonic_integrals import legendre
 from physics.spline import Spline
 from physics.truncated_boltzmann import HARMONIC
 
-# Panels: [1/2, 1], then halves down to 2^-(_HALVINGS + 1), then the power law of the bottom.
+# Panels: halves down to 2^-(_HALVINGS + 1), cut where the curve has points, then the power law of the bottom.
 _HALVINGS = 14
-_RIM, _PANEL, _BOTTOM = 24, 12, 24
+_RIM, _BOTTOM = 24, 24
+_NODES = ((0.05, 3), (0.1, 4), (0.18, 6), (0.35, 8), (math.inf, 12))
+"""Nodes of panels, by the change of ln U along them, or a fifth of that of ln W, up to which they do."""
 
 TURNS = (0.01, 0.02, 0.035, 0.05, 0.07, 0.1, 0.15, 0.2, 0.3, 0.4, 0.45, 0.5, 0.55, 0.6, 0.65, 0.7, 0.8, 0.9, 0.96)
 """Energies over the depth between which panels of a quadrature lie where a curve may turn: where arms of crossed beams
@@ -118,20 +120,28 @@ class CurveShape:
 
     def measure_below(self, limit: float) -> tuple[Floats, Floats]:
         """The same from 0 to another limit, at most 1."""
-        nodes, weights = [], []
+        ends = 0.5 ** np.arange(_HALVINGS + 2.0)
+        if self._spline is not None:
+            # Between its points the curve is one cubic, at them it bends.
+            ends = np.append(ends, self.energies[(self.energies > ends[-1] * limit) & (self.energies < limit)] / limit)
+        ends = np.unique(ends)
+        low, high = ends[:-1], ends[1:]
         x, w = legendre(_RIM)
-        # U = 1 - v^2/2 takes away the half-integer powers of 1 - U.
-        nodes.append(1.0 - 0.5 * x * x)
-        weights.append(x * w)
-        x, w = legendre(_PANEL)
-        for k in range(1, _HALVINGS + 1):
-            width = 0.5 ** (k + 1)
-            nodes.append(width * (1.0 + x))
-            weights.append(width * w)
+        # 1 - U goes as v^2 in the last panel, which takes away its half-integer powers.
+        width = high[-1] - low[-1]
+        nodes, weights = [high[-1] - width * x * x], [2.0 * width * x * w]
+        changes = np.maximum(np.diff(np.log(ends)), 0.2 * np.diff(np.log(self.volume(limit * ends))))[:-1]
+        least = 0.0
+        for most, count in _NODES:
+            these = np.flatnonzero((changes > least) & (changes <= most))
+            x, w = legendre(count)
+            widths = (high - low)[these, np.newaxis]
+            nodes.append((low[these, np.newaxis] + widths * x).ravel())
+            weights.append((widths * w).ravel())
+            least = most
         x, w = legendre(_BOTTOM)
-        bottom = 0.5 ** (_HALVINGS + 1)
-        nodes.append(bottom * x * x)
-        weights.append(2.0 * bottom * x * w)
+        nodes.append(ends[0] * x * x)
+        weights.append(2.0 * ends[0] * x * w)
         u, du = limit * np.concatenate(nodes), limit * np.concatenate(weights)
         return as_floats(u), as_floats(self.slope(u) * du)
 

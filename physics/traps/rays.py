@@ -44,11 +44,12 @@ class RayVolumes:
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Shape:
-    """How the potential starts to rise: W = coefficient U^power for small U, and the matrix from q to space."""
+    """How the potential starts to rise: W = coefficient U^power for small U, the matrix from q to space, and f."""
 
     matrix: Floats
     power: float
     coefficient: float
+    tilt: Floats
 
 
 def shape_of(minimum: StationaryPoint) -> Shape | None:
@@ -58,15 +59,15 @@ def shape_of(minimum: StationaryPoint) -> Shape | None:
         assert minimum.force is not None
         _, sizes, rows = np.linalg.svd(minimum.curvature)
         matrix = _softest_last(rows.T / sizes)
-        f = float(np.linalg.norm(matrix.T @ minimum.force))
-        volume = abs(float(np.linalg.det(matrix))) / (1.0 - f * f) ** 2
-        return Shape(matrix=matrix, power=3.0, coefficient=4.0 * np.pi / 3.0 * volume)
+        tilt = matrix.T @ minimum.force
+        volume = abs(float(np.linalg.det(matrix))) / (1.0 - float(tilt @ tilt)) ** 2
+        return Shape(matrix=matrix, power=3.0, coefficient=4.0 * np.pi / 3.0 * volume, tilt=tilt)
     values, vectors = np.linalg.eigh(minimum.curvature)
     if values[0] <= _FLAT * values[-1]:
         return None
     matrix = _softest_last(vectors / np.sqrt(0.5 * values))
     volume = abs(float(np.linalg.det(matrix)))
-    return Shape(matrix=matrix, power=1.5, coefficient=4.0 * np.pi / 3.0 * volume)
+    return Shape(matrix=matrix, power=1.5, coefficient=4.0 * np.pi / 3.0 * volume, tilt=np.zeros(3))
 
 
 def _softest_last(matrix: Floats) -> Floats:
@@ -100,7 +101,7 @@ def ray_volumes(potential: Potential, minimum: StationaryPoint, shape: Shape, en
     y = np.where(good, np.maximum(height, 0.0), np.inf) ** bent
     known = good & np.isfinite(height)
     slope = bent * np.where(known, rise, np.inf) * np.where(known, height, 1.0) ** (bent - 1.0)
-    q = _inverse(radii, y, slope, able**bent)
+    q = _inverse(radii, y, 1.0 + directions @ shape.tilt, slope, able**bent)
     cubes = q**3 / 3.0 * abs(float(np.linalg.det(shape.matrix)))
     fine, rough = weights @ cubes, coarse @ cubes
     differ = np.abs(rough / fine - 1.0) > _AGREE
@@ -131,13 +132,13 @@ def _along(
     return height, rise
 
 
-def _inverse(radii: Floats, y: Floats, slope: Floats, levels: Floats) -> Floats:
-    """(rays, levels) Radius at which y, known with its slope at (rays, radii) and 0 at radius 0, comes to a level."""
+def _inverse(radii: Floats, y: Floats, first: Floats, slope: Floats, levels: Floats) -> Floats:
+    """(rays, levels) Radius at which y, known with its slope at (rays, radii), comes to a level; at radius 0 it is 0
+    and has the slope `first`, (rays,)."""
     start = np.zeros((len(y), 1))
     values = np.concatenate([start, y], axis=1)
     at = np.concatenate([[0.0], radii])
-    # Straight from the origin, where the slope is the limit of y over the radius.
-    slopes = np.concatenate([(y[:, :1] / radii[0]), slope], axis=1)
+    slopes = np.concatenate([first[:, np.newaxis], slope], axis=1)
     upper = np.array([np.searchsorted(row, levels, side="right") for row in values])
     upper = np.clip(upper, 1, values.shape[1] - 1)
     rows = np.arange(len(y))[:, np.newaxis]

@@ -20,6 +20,7 @@ from numpy.typing import ArrayLike
 
 from physics.checks import Floats, as_floats, require_positive
 from physics.constants import boltzmann, planck
+from physics.spline import Spline
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -64,30 +65,15 @@ class VolumeCurve:
         U = np.asarray(energy, dtype=np.float64)
         with np.errstate(divide="ignore"):
             x = np.log(np.maximum(U, 0.0))
-        knots, values, slopes = self._cubic
-        upper = np.clip(np.searchsorted(knots, x), 1, len(knots) - 1)
-        h = knots[upper] - knots[upper - 1]
+        first, lowest = float(np.log(self.energies[0])), float(np.log(self.volumes[0]))
         with np.errstate(invalid="ignore"):
-            t = (x - knots[upper - 1]) / h
-            a, b = values[upper - 1], values[upper]
-            m, n = h * slopes[upper - 1], h * slopes[upper]
-            y = a + t * (m + t * (3.0 * (b - a) - 2.0 * m - n + t * (m + n - 2.0 * (b - a))))
-        y = np.where(x < knots[0], values[0] + self.power * (x - knots[0]), y)
+            y = np.where(x < first, lowest + self.power * (x - first), self._spline(np.maximum(x, first))[..., 0])
         return np.where(self.ceiling * (1.0 + 1e-12) < U, np.nan, np.exp(np.where(U > 0.0, y, -np.inf)))[()]
 
     @cached_property
-    def _cubic(self) -> tuple[Floats, Floats, Floats]:
-        """Logarithms of energies and volumes, and slopes that keep the curve from falling (Fritsch and Carlson)."""
-        x, y = np.log(self.energies), np.log(self.volumes)
-        if len(x) == 1:
-            x, y = np.array([x[0] - 1.0, x[0]]), np.array([y[0] - self.power, y[0]])
-        secants = np.diff(y) / np.diff(x)
-        slopes = np.empty(len(x))
-        h = np.diff(x)
-        slopes[1:-1] = (secants[:-1] * h[1:] + secants[1:] * h[:-1]) / (h[1:] + h[:-1])
-        slopes[0], slopes[-1] = self.power, secants[-1]
-        limit = 3.0 * np.minimum(np.append(secants, secants[-1]), np.append(secants[0], secants))
-        return x, y, np.minimum(slopes, limit)
+    def _spline(self) -> Spline:
+        """The logarithm of W against that of U, never falling."""
+        return Spline(np.log(self.energies), np.log(self.volumes)[:, np.newaxis], monotone=True)
 
     def arm_share(self, energy: ArrayLike) -> Floats:
         """Part of the volume below energies of any shape that lies in arms of beams. [1]"""

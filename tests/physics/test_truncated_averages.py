@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import math
+from itertools import pairwise
+from typing import Any
 
 import numpy as np
 import pytest
@@ -48,6 +50,27 @@ def test_losses_of_an_uncut_cloud_take_cold_atoms(exponent: float) -> None:
 def dimple(u: np.ndarray) -> np.ndarray:
     """A harmonic trap with an arm that opens at half of the depth."""
     return 0.3 * u**1.5 + 0.7 * u**6
+
+
+@pytest.mark.parametrize("limit", [1.0, 0.62])
+def test_where_arms_open_the_quadrature_is_exact(limit: float) -> None:
+    # Between its points the curve is one cubic, summed here piece by piece.
+    u = np.concatenate([np.geomspace(1e-4, 1.0 / 128.0, 32)[:-1], np.arange(1, 129) / 128.0])
+    w = u**1.5 * (1.0 + 3.0 * (u > 0.54) + 20.0 * np.maximum(u - 0.54, 0.0))
+    curve = CurveShape(energies=u, volumes=w / w[-1])
+    at, dw = curve.measure_below(limit)
+    assert float(np.sum(dw)) == pytest.approx(float(curve.volume(limit)), rel=1e-6)
+    pieces = list(pairwise([0.0, *u[u < limit], limit]))
+
+    def filled(v: Any, eta: float) -> Any:
+        return np.exp(-eta * v) * (limit - v) ** 1.5
+
+    for eta in (0.5, 6.0, 11.0):
+        each = [
+            quad(lambda v, eta=eta: float(curve.slope(v)) * filled(v, eta), *piece, epsrel=1e-10) for piece in pieces
+        ]
+        found = float(np.sum(dw * filled(at, eta)))
+        assert found == pytest.approx(math.fsum(value for value, _ in each), rel=1e-6), eta
 
 
 @pytest.mark.parametrize("eta", [0.8, 4.0, 9.0])

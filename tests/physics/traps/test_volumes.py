@@ -73,6 +73,21 @@ def test_a_harmonic_field_has_the_volume_of_a_harmonic_trap(rubidium: State) -> 
 
 
 @pytest.mark.parametrize("gravity", [True, False])
+def test_at_its_bottom_a_crossed_trap_is_harmonic(gravity: bool, crossed: Trap, rubidium: State) -> None:
+    found = survey(crossed if gravity else replace(crossed, gravity=None), rubidium)
+    curve = curve_of(found)
+    omegas = 2.0 * math.pi * np.asarray(found.frequencies)
+    unit = 4.0 * math.pi / 3.0 * (2.0 / rubidium.mass) ** 1.5 / np.prod(omegas)
+    assert curve.coefficient == pytest.approx(unit, rel=1e-9)
+    # What is more goes as U: of the order of U over the depth.
+    parts = np.array([2e-5, 1e-4, 2e-4, 1e-3])
+    U = shares(found, *parts)
+    more = curve.volume(U) / (unit * U**1.5) - 1.0
+    assert np.all(np.abs(more) < np.maximum(1.2 * parts, 1.2e-4))
+    assert more[3] / more[1] == pytest.approx(10.0, rel=0.1)
+
+
+@pytest.mark.parametrize("gravity", [True, False])
 def test_a_quadrupole_has_the_volume_of_its_formula(gravity: bool, rubidium: State) -> None:
     # (16 pi/3)(U/mu B')^3; gravity along the strong axis moves and stretches the ellipsoids: over (1 - f^2)^2,
     # f = m g/(mu B').
