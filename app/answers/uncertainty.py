@@ -30,7 +30,7 @@ Array = NDArray[np.float64]
 
 SAMPLES = 4096
 SAMPLES_IN_REAL_TRAPS = 1024
-"""Fewer where each costs more; the ends of a range then lie within a few hundredths of its width."""
+"""Fewer where each costs more; the ends of a range then lie within some hundredths of its width."""
 SEED = 20
 DEVIATION = 0.994457883209753
 """Standard deviations between the median and the 84 percent quantile of a normal distribution."""

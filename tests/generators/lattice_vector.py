@@ -1,6 +1,7 @@
 """Finds the generating vector of physics.sensitivity, component by component.
 
-Each component minimises the worst-case error P_2 of the rank-1 lattice so far, with weight 1/j^2 for the j-th variable.
+Each component minimises the worst-case error P_2 of the rank-1 lattice so far, with weight 1/j^2 for the j-th variable;
+few points serve all variables alike, with one small weight for each.
 Run it to print the vector:
 
     python tests/generators/lattice_vector.py
@@ -24,18 +25,23 @@ def kernel(x: NDArray[np.float64]) -> NDArray[np.float64]:
     return 2.0 * np.pi**2 * (x * x - x + 1.0 / 6.0)
 
 
-def generating_vector(count: int = COUNT, dimensions: int = DIMENSIONS) -> tuple[int, ...]:
+def generating_vector(
+    count: int = COUNT, dimensions: int = DIMENSIONS, *, weight: float | None = None
+) -> tuple[int, ...]:
+    """The vector for a number of points. `weight`: of every variable; None: 1/j^2."""
     candidates = np.arange(1, count // 2, 2)
     points = np.arange(count)
     product = np.ones(count)
     vector: list[int] = []
     for j in range(1, dimensions + 1):
-        errors = [product @ (1.0 + kernel(points * z % count / count) / j**2) for z in candidates]
+        w = 1.0 / j**2 if weight is None else weight
+        errors = [product @ (1.0 + w * kernel(points * z % count / count)) for z in candidates]
         best = 1 if j == 1 else int(candidates[int(np.argmin(errors))])
         vector.append(best)
-        product = product * (1.0 + kernel(points * best % count / count) / j**2)
+        product = product * (1.0 + w * kernel(points * best % count / count))
     return tuple(vector)
 
 
 if __name__ == "__main__":
+    print(generating_vector(1024, weight=0.03))
     print(generating_vector())
