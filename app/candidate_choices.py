@@ -74,8 +74,12 @@ class PassengerChoice:
     """A second species, or spin state, in the same trap.
 
     scattering_length : [m] between the two species; None: as the data have it
+    frequencies, depth : [Hz] [J] of the trap as these atoms see it, where that is given by its frequencies; None: those
+        of the first species
     """
 
     species: SpeciesChoice
     cloud: CloudChoice
     scattering_length: Quantity | None = None
+    frequencies: tuple[Quantity, Quantity, Quantity] | None = None
+    depth: Quantity | None = None

@@ -6,7 +6,7 @@ from dataclasses import replace
 
 from app.candidate_choices import Basis, Start
 from app.choices import PLAN_FIELDS
-from app.kinds import SCATTERING_LENGTH
+from app.kinds import DEPTH, FREQUENCY, SCATTERING_LENGTH
 from app.plan_field import Entry, PlanField
 from app.ramp_fields import by_name, within
 
@@ -58,6 +58,22 @@ PASSENGER_FIELDS = by_name(
             entry=Entry.QUANTITY,
             kind=SCATTERING_LENGTH,
             tip="s-wave scattering length of an atom of one with an atom of the other; overrides the data.",
+        ),
+        PlanField(
+            path="passenger.frequencies",
+            label="Trap frequencies of the passenger",
+            entry=Entry.FREQUENCIES,
+            kind=FREQUENCY,
+            tip="Frequencies of these atoms in the same trap, where it is given by its frequencies; else those of the "
+            "first species count. Both clouds then sag by g/ω² along gravity.",
+        ),
+        PlanField(
+            path="passenger.depth",
+            label="Trap depth of the passenger",
+            entry=Entry.QUANTITY,
+            kind=DEPTH,
+            tip="Depth of the same trap for these atoms, where it is given by its frequencies; else that of the first "
+            "species counts.",
         ),
     )
 )

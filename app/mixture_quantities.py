@@ -44,7 +44,7 @@ _ROWS = (
         group=Group.CLOUD,
         formula="between the minima of the trap as each species sees it; by sag g (1/ω₁² − 1/ω₂²)",
         source=_DEFINITION,
-        validity="0 where frequencies are given, which are those of both",
+        validity="0 where frequencies are given that are those of both",
     ),
     Row(
         name="overlap_share",

@@ -166,7 +166,7 @@ def _own(cloud: CloudAnswer) -> Iterator[tuple[str, str, str]]:
 def _frequencies(cloud: CloudAnswer) -> tuple[str, str]:
     if cloud.plan.trap.frequencies is not None:
         texts = [frequency.text.removesuffix(" Hz") for frequency in cloud.plan.trap.frequencies]
-        return f"{' × '.join(texts)} Hz", _("those that the plan gives, for both")
+        return f"{' × '.join(texts)} Hz", _("those that the plan gives")
     trap = trap_answer(cloud.plan)
     return frequencies_text(trap), reason_no_frequencies(trap)
 

@@ -58,6 +58,10 @@ _SENTENCES: MappingProxyType[MixtureCaveatKind, tuple[str, Callable[[float], str
               "or coils would give each species its own."),
             number,
         ),
+        _KINDS.OWN_FREQUENCIES: (
+            _("The plan gives frequencies of each species: both sag by g/ω² along gravity, by linear forces."),
+            number,
+        ),
         _KINDS.APART: (
             _("Only {value} of the overlap of concentric clouds is left: the minima lie apart, by their sags."),
             percent,

@@ -51,6 +51,8 @@ def with_own_plan(plan: Plan, own: Plan) -> Plan:
     passenger = own.passenger
     if passenger is None:
         raise ValueError("the plan has no passenger to edit")
+    if own.species.key != passenger.species.key:  # the trap as other atoms saw it
+        passenger = replace(passenger, frequencies=None, depth=None)
     return replace(plan, passenger=replace(passenger, species=own.species, cloud=own.cloud))
 
 
@@ -58,6 +60,25 @@ def with_length_between(plan: Plan, length: Quantity | None) -> Plan:
     """The plan with this scattering length between the two; None: as the data have it."""
     passenger = plan.passenger
     return plan if passenger is None else replace(plan, passenger=replace(passenger, scattering_length=length))
+
+
+def with_own_frequency(plan: Plan, place: int, frequency: Quantity | None) -> Plan:
+    """The plan whose passenger has a frequency of its own along one axis; None: that of the first species."""
+    passenger, both = plan.passenger, plan.trap.frequencies
+    if passenger is None:
+        return plan
+    own, wanted = passenger.frequencies or both, frequency or (None if both is None else both[place])
+    changed = None
+    if own is not None and wanted is not None:
+        x, y, z = (wanted if axis == place else own[axis] for axis in range(3))
+        changed = None if (x, y, z) == both else (x, y, z)
+    return replace(plan, passenger=replace(passenger, frequencies=changed))
+
+
+def with_own_depth(plan: Plan, depth: Quantity | None) -> Plan:
+    """The plan whose passenger has a depth of its own; None: that of the first species."""
+    passenger = plan.passenger
+    return plan if passenger is None else replace(plan, passenger=replace(passenger, depth=depth))
 
 
 def _usual_partner(plan: Plan) -> State:

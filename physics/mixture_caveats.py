@@ -32,6 +32,7 @@ class MixtureCaveatKind(Enum):
     BETWEEN_COMPUTED = "scattering length [m] between the two: worked out from other data"
     BETWEEN_SIGN_UNKNOWN = "scattering length [m] between the two, of which only the magnitude was measured"
     SAME_FREQUENCIES = "no value: frequencies are given, and taken to be those of both species"
+    OWN_FREQUENCIES = "no value: frequencies of each species are given, and both sag along gravity"
     APART = "overlap over that of concentric clouds"
     DEGENERATE_MIXTURE = "largest classical phase-space density: overlap and collisions are those of classical clouds"
     PUSHED = "mean-field shift over the energy of the shifted cloud: the clouds change each other's shape"

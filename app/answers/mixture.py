@@ -10,7 +10,7 @@ import numpy as np
 
 from app.answers.cloud import CloudAnswer, cloud_answer
 from app.answers.part import part
-from app.answers.passenger import between_of, passenger_plan
+from app.answers.passenger import between_of, frequencies_caveat, passenger_plan, vertical_of
 from app.answers.trap import trap_answer
 from app.plan_field import PlanError
 from physics.caveats import Severity
@@ -22,6 +22,7 @@ from physics.mixture_caveats import (
     mixture_caveats,
 )
 from physics.mixtures import Mixture, Place
+from physics.overlap import sag
 from physics.pair_scattering import PairLength
 from physics.species import State, load_species
 
@@ -85,17 +86,17 @@ def mixture_answer(plan: Plan) -> MixtureAnswer:
         reason = str(error)
         caveats.append(MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_NOT_HELD, severity=Severity.REFUSAL))
     if passenger is not None:
-        efficiency = coolant.efficiency
+        efficiency, vertical = coolant.efficiency, vertical_of(plan)
         mixture = Mixture(
             coolant=coolant.equilibrium,
             passenger=passenger.equilibrium,
-            places=(_place(plan), _place(own)),
+            places=(_place(plan, vertical), _place(own, vertical)),
             scattering_length=between.value,
             cooling=None if efficiency is None else (efficiency + 1.0) / 3.0,
         )
         caveats += mixture_caveats(mixture, lifetime=_lifetime(coolant, passenger))
         if not own_trap:
-            caveats.append(MixtureCaveat(kind=MixtureCaveatKind.SAME_FREQUENCIES, severity=Severity.NOTE))
+            caveats.append(frequencies_caveat(plan))
     return MixtureAnswer(
         plan=plan,
         coolant=coolant,
@@ -109,10 +110,14 @@ def mixture_answer(plan: Plan) -> MixtureAnswer:
     )
 
 
-def _place(plan: Plan) -> Place:
-    """Of atoms whose frequencies are given, the centre; gravity is in them."""
-    if plan.trap.harmonic:
-        return Place()
+def _place(plan: Plan, vertical: tuple[int, float] | None) -> Place:
+    """Of atoms whose frequencies are given, the centre, or as far below it as they sag."""
+    if plan.trap.frequencies is not None:
+        minimum = [0.0, 0.0, 0.0]
+        if vertical is not None:
+            axis, down = vertical
+            minimum[axis] = down * float(sag(plan.trap.frequencies[axis].value))
+        return Place(minimum=tuple(minimum))
     survey = trap_answer(plan).survey
     return Place(minimum=survey.minimum, axes=np.eye(3) if survey.axes is None else survey.axes)
 

@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from app.choices import LossesChoice, TargetChoice
 from app.plan_field import PlanError
+from physics.caveats import Severity
+from physics.mixture_caveats import MixtureCaveat, MixtureCaveatKind
 from physics.pair_scattering import PairLength, WhyNoLength, length_between
 from physics.species import load_species
 
@@ -39,22 +42,35 @@ def passenger_of(plan: Plan) -> PassengerChoice:
             f"passenger.species.field is {own.field.text} and species.field {first.field.text}: both are in one trap, "
             "give one field"
         )
+    for name in ("frequencies", "depth"):
+        if getattr(passenger, name) is not None and not plan.trap.harmonic:
+            raise PlanError(
+                f"passenger.{name} is for a trap that is given by its frequencies; this one is made of beams and "
+                "coils, from which those of the passenger follow"
+            )
     return passenger
 
 
 def passenger_plan(plan: Plan) -> Plan:
     """The plan of the passenger alone: its atoms in the same trap, at the same field.
 
-    Frequencies and depth that are given are those of both. Background gas and noise of the light are the same; what
-    else is typed of losses belongs to the first species, and its own rate constants are those of the data.
+    Frequencies and depth that are given are those of both, unless the passenger has its own. Background gas and noise
+    of the light are the same; what else is typed of losses belongs to the first species, and its own rate constants
+    are those of the data.
     """
     passenger, losses = passenger_of(plan), plan.losses
     species = passenger.species
     if species.field is None and species.scattering_length is None:
         species = replace(species, field=plan.species.field)
+    trap = plan.trap
+    if passenger.frequencies is not None:
+        trap = replace(trap, frequencies=passenger.frequencies)
+    if passenger.depth is not None:
+        trap = replace(trap, depth=passenger.depth)
     return replace(
         plan,
         species=species,
+        trap=trap,
         cloud=passenger.cloud,
         losses=LossesChoice(
             background_lifetime=losses.background_lifetime,
@@ -66,6 +82,27 @@ def passenger_plan(plan: Plan) -> Plan:
         measured=(),
         passenger=None,
     )
+
+
+def vertical_of(plan: Plan) -> tuple[int, float] | None:
+    """The axis along which both species sag, by g/w^2 of their own frequencies, and the sign of down on it.
+
+    None in a trap of beams and coils, which has their minima; where both have the same frequencies; and where gravity
+    is off or points along none of the axes.
+    """
+    down = plan.trap.gravity_direction
+    if plan.passenger is None or plan.passenger.frequencies is None or not plan.trap.harmonic or down is None:
+        return None
+    size = math.hypot(*down)
+    found = [(place, math.copysign(1.0, part)) for place, part in enumerate(down) if abs(part) > (1.0 - 1e-9) * size]
+    return found[0] if found else None
+
+
+def frequencies_caveat(plan: Plan) -> MixtureCaveat:
+    """What the frequencies of a trap that is given by them are for the passenger."""
+    own = plan.passenger is not None and plan.passenger.frequencies is not None
+    kind = MixtureCaveatKind.OWN_FREQUENCIES if own else MixtureCaveatKind.SAME_FREQUENCIES
+    return MixtureCaveat(kind=kind, severity=Severity.NOTE)
 
 
 def field_of(plan: Plan) -> Quantity | None:

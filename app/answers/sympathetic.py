@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from app.answers.passenger import between_of, passenger_of, passenger_plan
+from app.answers.passenger import between_of, frequencies_caveat, passenger_of, passenger_plan, vertical_of
 from app.answers.ramp_inputs import gas_of, losses_of, path_of, state_of, target_of
 from app.plan_field import PlanError
 from physics.caveats import Severity
@@ -96,7 +96,7 @@ def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> S
         progress = Progress(tick=tick, surveys=surveys_along(ramp, path) + surveys_along(ramp, own_path))
         ramp, path = watched_ramp(ramp, progress), WatchedPath(path=path, progress=progress)
         own_path = WatchedPath(path=own_path, progress=progress)
-    gas = gas_of(own)
+    gas, vertical = gas_of(own), vertical_of(plan)
     passenger = Passenger(
         gas=gas,
         path=own_path,
@@ -104,6 +104,7 @@ def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> S
         temperature=own.cloud.temperature.value,
         scattering_length=between.value,
         losses=losses_of(own),
+        vertical=None if vertical is None else vertical[0],
     )
     run = evaporate_with_passenger(
         gas_of(plan),
@@ -118,7 +119,7 @@ def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> S
     if gas.scattering_length is None and passenger.colliding is not gas:
         caveats.append(MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_LENGTH_UNKNOWN, severity=Severity.NOTE))
     if plan.trap.harmonic:
-        caveats.append(MixtureCaveat(kind=MixtureCaveatKind.SAME_FREQUENCIES, severity=Severity.NOTE))
+        caveats.append(frequencies_caveat(plan))
     return SympatheticAnswer(
         plan=plan,
         states=(state_of(plan), state_of(own)),

@@ -4,14 +4,24 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from functools import partial
 from typing import Protocol
 
 from PySide6.QtCore import Qt, SignalInstance
 from PySide6.QtWidgets import QLabel, QPushButton, QVBoxLayout, QWidget
 
-from app.passenger_edits import own_plan, with_length_between, with_own_plan, with_usual_passenger, without_passenger
+from app.passenger_edits import (
+    own_plan,
+    with_length_between,
+    with_own_depth,
+    with_own_frequency,
+    with_own_plan,
+    with_usual_passenger,
+    without_passenger,
+)
 from app.passenger_words import WHAT, length_source, length_told, passenger_summary
 from app.plan import PASSENGER_FIELDS, Plan, PlanError
+from app.units import Quantity
 from app.widgets.card import ElidedLabel, bring_into_view
 from app.widgets.fold_title import FoldTitle
 from app.widgets.form import Form
@@ -21,7 +31,8 @@ from physics.scattering import LengthInUse
 
 OWNER = " of the passenger"
 _TITLE, _STEP = "Passenger", "passenger"
-_LENGTH = PASSENGER_FIELDS["scattering_length"]
+_LENGTH, _FREQUENCIES, _DEPTH = (PASSENGER_FIELDS[name] for name in ("scattering_length", "frequencies", "depth"))
+_TRAP = (*(f"{_FREQUENCIES.path}.{axis}" for axis in "xyz"), _DEPTH.path)
 
 
 class AtomsForm(Protocol):
@@ -75,6 +86,16 @@ class PassengerForm(Form):
             _LENGTH, "", label="a₁₂ with the first", put=lambda plan, value: with_length_between(plan, value)
         )
         self.length.setAccessibleName(_LENGTH.label)
+        self.frequencies = tuple(
+            self.add_quantity(
+                _FREQUENCIES, "", label=f"Own frequency {axis}", key=key, put=partial(_put_frequency, place)
+            )
+            for place, (axis, key) in enumerate(zip("xyz", _TRAP, strict=False))
+        )
+        self.depth_field = self.add_quantity(_DEPTH, "", label="Own depth", put=with_own_depth)
+        for axis, line in zip("xyz", self.frequencies, strict=True):
+            line.setAccessibleName(f"Frequency {axis}{OWNER}")
+        self.depth_field.setAccessibleName(_DEPTH.label)
         self._grid.addWidget(self.remove, self._row, 0, 1, 2, Qt.AlignmentFlag.AlignLeft)
         self._unfolded = self._had = False
         self._arrange()
@@ -100,6 +121,10 @@ class PassengerForm(Form):
         for widget in (*self.parts, self.remove):
             widget.setVisible(shown)
         self.show_row(_LENGTH.path, shown)
+        passenger = None if self._plan is None else self._plan.passenger
+        own = passenger is not None and (passenger.frequencies is not None or passenger.depth is not None)
+        for key in _TRAP:
+            self.show_row(key, shown and (own or (self._plan is not None and self._plan.trap.harmonic)))
         self.trouble.setVisible(there and bool(self.trouble.text()))
 
     # ---------------------------------------------------------------- showing
@@ -111,7 +136,8 @@ class PassengerForm(Form):
             self.trouble.clear()
             for part in self.parts:
                 part.discard_edits()
-            self.length.set_quantity(None)
+            for field in (self.length, *self.frequencies, self.depth_field):
+                field.set_quantity(None)
             self._arrange()
             return
         self._build()
@@ -119,11 +145,23 @@ class PassengerForm(Form):
         for part in self.parts:
             part.set_plan(own)
         self.length.set_quantity(plan.passenger.scattering_length)
+        self._show_trap(plan)
         self._show_between(plan)
         self.summary.setText(passenger_summary(plan.passenger))
         if came:
             self._unfolded = True
         self._arrange()
+
+    def _show_trap(self, plan: Plan) -> None:
+        """The trap as the passenger sees it; what it shares with the first stands in the empty fields."""
+        assert plan.passenger is not None
+        own, both = plan.passenger.frequencies, plan.trap.frequencies
+        for place, line in enumerate(self.frequencies):
+            line.set_quantity(None if own is None else own[place])
+            line.setPlaceholderText("" if both is None else f"{both[place].text}, of both")
+        self.depth_field.set_quantity(plan.passenger.depth)
+        depth = plan.trap.depth
+        self.depth_field.setPlaceholderText("not given" if depth is None else f"{depth.text}, of both")
 
     def _show_between(self, plan: Plan) -> None:
         """What the data say of the two; where they cannot be in one trap, why."""
@@ -158,7 +196,7 @@ class PassengerForm(Form):
             part.plan_edited.connect(self._take)
             part.problems_changed.connect(self._problems_changed)
             self._place.addWidget(part)
-        lay_tab_order((self.fold, self.add, *self.parts, self.length, self.remove))
+        lay_tab_order((self.fold, self.add, *self.parts, self.length, *self.frequencies, self.depth_field, self.remove))
 
     @property
     def problems(self) -> tuple[str, ...]:
@@ -202,3 +240,7 @@ class PassengerForm(Form):
         """A form of one species has edited the passenger."""
         if self._plan is not None and self._plan.passenger is not None:
             self.plan_edited.emit(with_own_plan(self._plan, own), what, merge_key)
+
+
+def _put_frequency(place: int, plan: Plan, value: Quantity | None) -> Plan:
+    return with_own_frequency(plan, place, value)

@@ -23,8 +23,9 @@ from app.mixture_words import (
     sympathetic_caveat_texts,
     sympathetic_verdict,
 )
-from app.plan import Plan, PlanError, read_plan
+from app.plan import Plan, PlanError, read_plan, write_plan
 from app.plan_file import parse_plan
+from app.trap_choices import Gravity
 from physics.constants import bohr_radius, boltzmann
 from physics.mixture_caveats import MixtureCaveatKind
 from physics.mixtures import Mixture
@@ -101,6 +102,53 @@ def test_given_frequencies_are_those_of_both() -> None:
     # alpha = (gamma + 1)/3 at fixed frequencies.
     expected = 6e-6 * (1e5 / 3.1e6) ** (3.5 / 3.0)
     assert answer.value("coldest_temperature") == pytest.approx(expected, rel=1e-9)
+
+
+OWN = '[passenger]\nfrequencies = ["177 Hz", "177 Hz", "29.5 Hz"]\ndepth = "50 uK"\n[passenger.species]'
+
+
+def test_a_passenger_with_frequencies_of_its_own() -> None:
+    plan = plan_of(**{"[passenger.species]": OWN, '"20 Hz"]': '"60 Hz"]'})
+    assert parse_plan(write_plan(plan), "again").passenger == plan.passenger
+    answer = mixture_answer(plan)
+    assert answer.passenger is not None
+    assert answer.passenger.cloud.trap.frequencies.tolist() == [177.0, 177.0, 29.5]
+    assert answer.coolant.cloud.trap.frequencies.tolist() == [120.0, 120.0, 60.0]
+    assert MixtureCaveatKind.OWN_FREQUENCIES in kinds(answer.caveats)
+    assert MixtureCaveatKind.SAME_FREQUENCIES not in kinds(answer.caveats)
+    # Mudrich et al.: d = g (1/w1^2 - 1/w2^2), S the sum of both mean square radii, the overlap e^(-d^2/2S).
+    w1, w2 = 2.0 * math.pi * 60.0, 2.0 * math.pi * 29.5
+    d = 9.80665 * (1.0 / w2**2 - 1.0 / w1**2)
+    assert answer.value("distance") == pytest.approx(d, rel=1e-6)
+    m1, m2 = answer.coolant.cloud.mass, answer.passenger.cloud.mass
+    S = boltzmann * 6e-6 * (1.0 / (m1 * w1**2) + 1.0 / (m2 * w2**2))
+    # The radii are those of the quantum gases.
+    assert answer.value("overlap_share") == pytest.approx(math.exp(-0.5 * d * d / S), rel=0.03)
+    level = mixture_answer(replace(plan, trap=replace(plan.trap, gravity=Gravity.OFF)))
+    assert level.value("distance") == 0.0
+    along = mixture_answer(replace(plan, trap=replace(plan.trap, gravity=(1.0, 0.0, 0.0))))
+    w1, w2 = 2.0 * math.pi * 120.0, 2.0 * math.pi * 177.0
+    assert along.value("distance") == pytest.approx(9.80665 * (1.0 / w1**2 - 1.0 / w2**2), rel=1e-6)
+
+
+def test_own_frequencies_along_a_ramp() -> None:
+    plan = plan_of(ramp=RAMP, **{"[passenger.species]": OWN})
+    run = sympathetic_answer(plan).run
+    assert run.passenger.rows.frequencies[0].tolist() == pytest.approx([177.0, 177.0, 29.5])
+    assert run.coolant.rows.frequencies[0].tolist() == pytest.approx([120.0, 120.0, 20.0])
+    assert run.passenger.rows.depth[-1] / boltzmann == pytest.approx(50e-6)
+    d = 9.80665 / (2.0 * math.pi) ** 2 * (1.0 / 20.0**2 - 1.0 / 29.5**2)
+    assert run.contact.distance[0] == pytest.approx(d, rel=1e-6)
+    assert run.contact.overlap_share[-1] < run.contact.overlap_share[0] < 1.0
+
+
+def test_own_frequencies_are_refused_beside_beams() -> None:
+    with pytest.raises(
+        PlanError, match=r"^passenger\.frequencies is for a trap that is given by its frequencies; this"
+    ):
+        mixture_answer(plan_of(BEAMS, **{"[passenger.species]": OWN}))
+    with pytest.raises(PlanError, match=r"passenger\.frequencies: .*three"):
+        plan_of(**{"[passenger.species]": OWN.replace('"177 Hz", "177 Hz", ', "")})
 
 
 def test_in_beams_each_has_its_own_trap() -> None:

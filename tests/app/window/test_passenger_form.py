@@ -102,6 +102,48 @@ def test_what_is_typed_changes_the_passenger_and_each_field_is_a_step(potassium:
     assert form.parts[1].temperature.text() == "8.0(5) uK"
 
 
+def test_a_trap_of_its_own(potassium: MainWindow, settle: Settle, tmp_path: Path) -> None:
+    form = form_of(potassium)
+    first = potassium.document.plan
+    assert form.frequencies[2].isVisible()
+    assert form.frequencies[2].placeholderText() == "60 Hz, of both"
+    assert form.depth_field.placeholderText() == "not given"
+    type_over(form.frequencies[2], "85 Hz")
+    type_over(form.depth_field, "40 uK")
+    settle(potassium)
+    passenger = potassium.document.plan.passenger
+    assert passenger is not None
+    assert passenger.frequencies is not None
+    assert [f.value for f in passenger.frequencies] == [120.0, 120.0, 85.0]
+    assert passenger.depth is not None
+    assert passenger.depth.text == "40 uK"
+    assert potassium.document.stack.undoText() == "change of own depth"
+    save_plan(potassium.document.plan, tmp_path / "own.toml")
+    assert read_plan(tmp_path / "own.toml").passenger == passenger
+    # Back to that of the first along every axis: none of its own.
+    for field in (form.frequencies[2], form.depth_field):
+        field.setFocus()
+        field.selectAll()
+        QTest.keyClick(field, Qt.Key.Key_Backspace)
+        QTest.keyClick(field, Qt.Key.Key_Return)
+    settle(potassium)
+    assert potassium.document.plan == first
+    type_over(form.depth_field, "40 uK")
+    atoms_of(potassium).isotope.textActivated.emit("23Na")
+    settle(potassium)
+    assert potassium.document.plan.passenger is not None
+    assert potassium.document.plan.passenger.depth is None
+
+
+def test_in_beams_the_trap_of_its_own_is_hidden(make_window: MakeWindow, settle: Settle) -> None:
+    window = make_window(read_plan(POTASSIUM))
+    form = form_of(window)
+    form.set_unfolded(True)
+    assert form.length.isVisible()
+    assert not form.depth_field.isVisible()
+    assert not form.frequencies[0].isVisible()
+
+
 def test_another_isotope_drops_what_was_said_of_the_one_before(potassium: MainWindow, settle: Settle) -> None:
     form = form_of(potassium)
     type_over(form.length, "-180 a0")
