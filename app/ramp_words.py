@@ -96,7 +96,14 @@ _CAVEATS: Mapping[RampCaveatKind, tuple[str, Callable[[float], str]]] = MappingP
             percent,
         ),
         RampCaveatKind.ONE_WAY_OUT: (
-            _("Atoms leave at one place of this trap: evaporation is slower than this answer, an upper bound, says."),
+            _("Atoms leave this trap in few directions: evaporation is slower than this answer, an upper bound, says."),
+            _PLAIN,
+        ),
+        RampCaveatKind.TRANSFER_APART: (
+            _(
+                "Two traps of a sudden transfer have their minima {value} cloud radii apart, which is left out: fewer "
+                "atoms are caught, and hotter."
+            ),
             _PLAIN,
         ),
         RampCaveatKind.PAULI_BLOCKING: (

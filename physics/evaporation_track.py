@@ -18,7 +18,7 @@ from physics.gas import Gas
 from physics.losses import Losses
 from physics.ramps import Control, Placed
 from physics.stage_trap import StageTrap
-from physics.transfer import Transfer, slow_transfer, sudden_transfer
+from physics.transfer import Transfer, distance_in_radii, slow_transfer, sudden_transfer
 from physics.trap_path import FixedTrap, TrapPoint
 from physics.truncated_averages import truncated_averages
 
@@ -49,6 +49,8 @@ class Evaporation:
     reason : EndReason. explanation : text of the trap where it held nothing, else empty.
     budget : Budget of the whole ramp.
     stages : one StageSummary each, of those that began.
+    farthest_transfer : distance of the minima of two traps over the mean radius of the cloud in the first, the largest
+        of its sudden transfers; NaN without one whose minima are known. [1]
     """
 
     gas: Gas
@@ -61,6 +63,7 @@ class Evaporation:
     explanation: str
     budget: Budget
     stages: tuple[StageSummary, ...]
+    farthest_transfer: float = math.nan
 
     @property
     def final(self) -> dict[str, float]:
@@ -109,6 +112,7 @@ class Track:
         self.atoms = self.energy = math.nan
         self.count = 0
         self.jumped = False
+        self._farthest = math.nan
         self._begun = (math.nan, math.nan)
         self._parts: list[tuple[Floats, int, Rows, dict[Control, Floats]]] = []
         self._summaries: list[StageSummary] = []
@@ -136,6 +140,8 @@ class Track:
             found = slow_transfer(temperature, old, new)
         else:
             found = sudden_transfer(temperature, old, new, transfer.displacement if transfer else (0.0, 0.0, 0.0))
+            if transfer is not None and not any(transfer.displacement):
+                self._farthest = float(np.fmax(self._farthest, distance_in_radii(self.gas.mass, temperature, old, new)))
         atoms = self.atoms * found.share
         if atoms < fewest or math.isnan(found.energy):
             self.explanation = "the new trap does not hold the cloud"
@@ -233,6 +239,7 @@ class Track:
             explanation=self.explanation,
             budget=self.ledger.since(Ledger(), (self._begun[0], self.atoms), (self._begun[1], self.energy)),
             stages=tuple(self._summaries),
+            farthest_transfer=self._farthest,
         )
 
 

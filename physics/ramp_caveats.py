@@ -25,8 +25,9 @@ class RampCaveatKind(Enum):
     FAST_DEPTH = "largest |dlnU/dt| times the rethermalisation time: the ramp outruns the collisions"
     HYDRODYNAMIC = "largest mean collision rate over the highest angular frequency: atoms do not leave freely"
     FAST_LOSS = "largest share of the atoms lost in one rethermalisation time, evaporation apart"
-    ONE_WAY_OUT = "no value: atoms leave in one direction, so that the rate of evaporation is an upper bound"
+    ONE_WAY_OUT = "no value: atoms leave in few directions, so that the rate of evaporation is an upper bound"
     PAULI_BLOCKING = "lowest T/TF: filled levels block collisions, which is left out"
+    TRANSFER_APART = "distance of the minima of two traps over the radius of the cloud, left out of a sudden transfer"
     LIGHT_HEATING = "energy that scattered light brings in over the energy at the end"
     SPIN_FLIPS = "share of the atoms lost at the zero of the field: an order of magnitude"
     NO_BACKGROUND = "no value: no background lifetime is given"
@@ -61,6 +62,7 @@ _LOSS = (0.1, 1.0)
 _FERMI = 0.5
 _LIGHT = 0.1
 _FLIPS = (0.01, 0.1)
+_APART = (0.3, 1.0)
 
 
 def ramp_caveats(run: Evaporation, extremes: RampExtremes, *, one_way_out: bool = False) -> tuple[RampCaveat, ...]:
@@ -70,7 +72,7 @@ def ramp_caveats(run: Evaporation, extremes: RampExtremes, *, one_way_out: bool 
     ----------
     run : Evaporation
     extremes : RampExtremes. Of that run.
-    one_way_out : whether the lowest way out of the trap is a single place.
+    one_way_out : whether hot atoms get out in few directions only.
     """
     found = (*_kinetics(extremes, one_way_out), *_losses(run, extremes))
     order = tuple(Severity)[::-1]
@@ -94,6 +96,8 @@ def _kinetics(extremes: RampExtremes, one_way_out: bool) -> Iterator[RampCaveat]
     ):
         if value > shown:
             yield _caveat(kind, value, value > warned)
+    if extremes.farthest_transfer > _APART[0]:
+        yield _caveat(kinds.TRANSFER_APART, extremes.farthest_transfer, extremes.farthest_transfer > _APART[1])
     if one_way_out and not extremes.polarised:
         yield RampCaveat(kind=kinds.ONE_WAY_OUT, severity=Severity.NOTE)
     if extremes.lowest_fermi_temperature < _FERMI and not extremes.polarised:

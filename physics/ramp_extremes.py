@@ -27,6 +27,7 @@ class RampExtremes:
     fastest_loss : share of the atoms lost in one rethermalisation time, evaporation and spilling apart.
     lowest_fermi_temperature : T/TF of fermions; below 0.5 Pauli blocking, which is left out, slows evaporation.
     three_body_scaling, three_body_unitarity : K3 over its bounds, of bosons whose K3 is given.
+    farthest_transfer : distance of the minima of two traps over the radius of the cloud, at a sudden transfer.
     polarised : fermions of one spin state without a moment, which do not collide and so do not evaporate.
     background_unknown : no background lifetime is given.
     """
@@ -40,6 +41,7 @@ class RampExtremes:
     lowest_fermi_temperature: float
     three_body_scaling: float
     three_body_unitarity: float
+    farthest_transfer: float
     polarised: bool
     background_unknown: bool
 
@@ -67,6 +69,7 @@ def ramp_extremes(run: Evaporation) -> RampExtremes:
         lowest_fermi_temperature=_least(rows.reduced_temperature) if fermions else np.nan,
         three_body_scaling=_most(scaling),
         three_body_unitarity=_most(unitarity),
+        farthest_transfer=run.farthest_transfer,
         polarised=fermions and not gas.collides,
         background_unknown=run.losses.background_lifetime is None,
     )

@@ -27,7 +27,7 @@ _NOTES = MappingProxyType(
 )
 """Notes that are caveats as they are; the others have one of their own, with more to say."""
 
-_NARROW = 0.25
+NARROW = 0.25
 """Share of the directions below which a way out is narrow."""
 
 _HEATED, _TOO_WARM = 0.1, 1.0
@@ -49,7 +49,7 @@ def _caveats(found: Survey, rates: Rates) -> Iterator[Caveat]:
             yield Caveat(id=note.kind.name.lower(), severity=severity, value=note.value, subject=note.beam)
     temperature = float(rates.equilibrium.cloud.temperature)
     share = found.open_share(temperature)
-    if share is not None and share < _NARROW:
+    if share is not None and share < NARROW:
         yield Caveat(id="one_way_out", severity=Severity.NOTE, value=share)
     if found.spin_flips is not None:
         least, largest = (float(rate) for rate in found.spin_flips.rates(temperature))

@@ -93,6 +93,22 @@ def sudden_transfer(
     return _nested(temperature, old, new)
 
 
+def distance_in_radii(mass: float, temperature: float, old: TrapPoint, new: TrapPoint) -> float:
+    """Distance of the minima over the mean rms radius of an uncut classical cloud in the old trap. [1] NaN where the
+    minima are not known, or the old trap has neither frequencies nor a field that vanishes."""
+    if old.minimum is None or new.minimum is None:
+        return math.nan
+    kT = boltzmann * temperature
+    if old.frequencies is not None:
+        radius = math.sqrt(kT / mass) / (2.0 * math.pi * math.prod(old.frequencies) ** (1.0 / 3.0))
+    elif old.zero_force > 0.0:
+        # Of exp(-F r/kT) in stretched coordinates <x^2> = 4 (kT/F)^2, on the strong axis; twice that on the others.
+        radius = 2.0 ** (5.0 / 3.0) * kT / old.zero_force
+    else:
+        return math.nan
+    return math.dist(old.minimum, new.minimum) / radius
+
+
 def _similar(old: TrapPoint, new: TrapPoint) -> bool:
     assert old.frequencies is not None
     assert new.frequencies is not None

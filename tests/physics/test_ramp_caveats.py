@@ -35,6 +35,7 @@ NOTHING = RampExtremes(
     lowest_fermi_temperature=math.nan,
     three_body_scaling=math.nan,
     three_body_unitarity=math.nan,
+    farthest_transfer=math.nan,
     polarised=False,
     background_unknown=False,
 )
@@ -58,6 +59,7 @@ def test_a_quiet_ramp_has_none(run: Evaporation) -> None:
         ("fastest_depth", RampCaveatKind.FAST_DEPTH, 1.1, 3.1),
         ("most_hydrodynamic", RampCaveatKind.HYDRODYNAMIC, 1.1, 5.1),
         ("fastest_loss", RampCaveatKind.FAST_LOSS, 0.11, 1.1),
+        ("farthest_transfer", RampCaveatKind.TRANSFER_APART, 0.4, 1.1),
         ("lowest_fermi_temperature", RampCaveatKind.PAULI_BLOCKING, 0.4, None),
         ("three_body_scaling", RampCaveatKind.THREE_BODY_SCALING, None, 1.1),
         ("three_body_unitarity", RampCaveatKind.THREE_BODY_UNITARITY, None, 1.1),

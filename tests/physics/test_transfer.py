@@ -3,13 +3,18 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
 from physics.constants import atomic_mass, boltzmann
-from physics.transfer import slow_transfer, sudden_transfer
-from physics.trap_path import SCALE, HarmonicPath, QuadrupolePath, TrapPoint
+from physics.evaporation import evaporate
+from physics.gas import Gas
+from physics.particles import Statistics
+from physics.ramps import Ramp, Stage
+from physics.transfer import Transfer, distance_in_radii, slow_transfer, sudden_transfer
+from physics.trap_path import SCALE, FixedTrap, HarmonicPath, QuadrupolePath, TrapPoint
 from physics.traps import HarmonicTrap
 from physics.truncated_boltzmann import HARMONIC, mean_energy, reduced_number
 
@@ -109,3 +114,27 @@ def test_a_displaced_transfer_needs_frequencies() -> None:
     path = QuadrupolePath(moment=9.27e-24, gradient=1.0, depth=boltzmann * 1e-3)
     with pytest.raises(ValueError, match=r"^a displaced transfer needs harmonic traps with known frequencies$"):
         sudden_transfer(1e-6, path.at(path.standing), harmonic(1e-4), (1e-6, 0.0, 0.0))
+
+
+def test_how_far_two_minima_lie_apart() -> None:
+    old = TrapPoint(depth=boltzmann * 1e-4, volume=1e-13, frequencies=(100.0, 200.0, 50.0), minimum=(0.0, 0.0, 0.0))
+    new = replace(old, minimum=(3e-5, 0.0, -4e-5))
+    radius = math.sqrt(boltzmann * 1e-6 / MASS) / (2.0 * math.pi * 100.0)
+    assert distance_in_radii(MASS, 1e-6, old, new) == pytest.approx(5e-5 / radius)
+    assert math.isnan(distance_in_radii(MASS, 1e-6, replace(old, minimum=None), new))
+    assert math.isnan(distance_in_radii(MASS, 1e-6, replace(old, frequencies=None), new))
+    # A quadrupole: the geometric mean of the drawn radii of exp(-F sqrt(z^2 + (x^2 + y^2)/4)/kT).
+    draw = np.random.default_rng(7)
+    r, way = draw.gamma(3.0, size=200_000), draw.normal(size=(200_000, 3))
+    points = r[:, np.newaxis] * way / np.linalg.norm(way, axis=1)[:, np.newaxis] * [2.0, 2.0, 1.0]
+    drawn = float(np.prod(np.std(points, axis=0)) ** (1.0 / 3.0)) * boltzmann * 1e-6 / 1e-23
+    zero = replace(old, frequencies=None, zero_force=1e-23)
+    assert distance_in_radii(MASS, 1e-6, zero, new) == pytest.approx(5e-5 / drawn, rel=0.01)
+    run = evaporate(
+        Gas(statistics=Statistics.FERMI, mass=MASS),
+        1e5,
+        1e-6,
+        Ramp(stages=(Stage(duration=0.1), Stage(duration=0.1, transfer=Transfer(path=FixedTrap(point=new))))),
+        FixedTrap(point=replace(old, volume=2e-13)),
+    )
+    assert run.farthest_transfer == pytest.approx(5e-5 / radius, rel=1e-6)
