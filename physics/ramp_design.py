@@ -254,10 +254,15 @@ def _bounds(search: _Search, best: HeldRun, losses: Losses) -> tuple[tuple[Bound
     if losses.background_lifetime is not None:
         eased = replace(losses, background_lifetime=losses.background_lifetime / less)
         found[Bound.BACKGROUND] = gain(gas, eased, limits)
-    for bound, name in ((Bound.TWO_BODY, "two_body"), (Bound.THREE_BODY, "three_body"), (Bound.HEATING, "heating")):
-        value = getattr(losses, name)
-        if value is not None and float(value) > 0.0:
-            found[bound] = gain(gas, replace(losses, **{name: less * value}), limits)
+    for bound, names in (
+        (Bound.TWO_BODY, ("two_body",)),
+        (Bound.THREE_BODY, ("three_body",)),
+        (Bound.HEATING, ("heating", "intensity_noise", "pointing_noise")),
+    ):
+        values = {name: value for name in names if (value := getattr(losses, name)) is not None and float(value) > 0.0}
+        if values:
+            easier = {name: less * value for name, value in values.items()}
+            found[bound] = gain(gas, replace(losses, **easier), limits)
     root = math.sqrt(1.0 + _EASED)
     faster = replace(
         gas,

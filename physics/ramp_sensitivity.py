@@ -12,7 +12,7 @@ from physics.evaporation_target import Target
 from physics.gas import Gas
 from physics.losses import Losses
 from physics.ramps import Control, Ramp, Stage
-from physics.trap_path import TrapPath, TrapPoint
+from physics.trap_path import PathAround, TrapPath, TrapPoint
 
 
 class Input(Enum):
@@ -88,19 +88,10 @@ class _Case:
 
 
 @dataclass(frozen=True, kw_only=True)
-class _Stretched:
+class _Stretched(PathAround):
     """A trap whose frequencies are all multiplied, its depth kept."""
 
-    path: TrapPath
     factor: float
-
-    @property
-    def standing(self) -> Mapping[Control, float]:
-        return self.path.standing
-
-    @property
-    def nodes(self) -> int:
-        return self.path.nodes
 
     def at(self, controls: Mapping[Control, float]) -> TrapPoint:
         point = self.path.at(controls)
@@ -111,20 +102,11 @@ class _Stretched:
 
 
 @dataclass(frozen=True, kw_only=True)
-class _Miscalibrated:
+class _Miscalibrated(PathAround):
     """A trap of which one control does more than it says."""
 
-    path: TrapPath
     control: Control
     factor: float
-
-    @property
-    def standing(self) -> Mapping[Control, float]:
-        return self.path.standing
-
-    @property
-    def nodes(self) -> int:
-        return self.path.nodes
 
     def at(self, controls: Mapping[Control, float]) -> TrapPoint:
         if self.control not in controls:
@@ -197,12 +179,18 @@ def _inputs(case: _Case) -> Iterator[tuple[Input, Control | None, Callable[[floa
     ):
         if getattr(case.losses, name) is not None:
             yield kind, None, _loss(case, name)
-    yield Input.FREQUENCIES, None, lambda f: replace(case, path=_Stretched(path=case.path, factor=f))
+    if _first_point(case).frequencies is not None:
+        yield Input.FREQUENCIES, None, lambda f: replace(case, path=_Stretched(path=case.path, factor=f))
     yield Input.DURATION, None, lambda f: replace(case, ramp=_longer(case.ramp, f))
     moved = dict.fromkeys(move.control for stage in case.ramp.stages for move in stage.moves)
     for control in moved:
         if control in case.path.standing:
             yield Input.CONTROL, control, _calibration(case, control)
+
+
+def _first_point(case: _Case) -> TrapPoint:
+    """The trap at the start of the ramp."""
+    return case.path.at(next(case.ramp.placed(case.path.standing)).values(0.0))
 
 
 def _loss(case: _Case, name: str) -> Callable[[float], _Case]:

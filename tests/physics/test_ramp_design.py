@@ -67,6 +67,14 @@ def test_what_binds_is_named_with_its_gain(designed: RampDesign) -> None:
     assert gains == sorted(gains, reverse=True)
 
 
+def test_heat_of_every_kind_binds() -> None:
+    # Noise that brings the energy up by e in a few seconds is in the way as heat is.
+    noisy = design_ramp(
+        GAS, 2e6, 5e-5, PATH, SCALE, TARGET, losses=Losses(intensity_noise=3e-8, background_lifetime=20.0), drift=False
+    )
+    assert dict(noisy.bounds)[Bound.HEATING] > 0.0
+
+
 def test_a_time_limit_costs_atoms_and_binds(designed: RampDesign) -> None:
     hurried = design(limits=Limits(time=0.3))
     assert hurried.reached

@@ -15,7 +15,7 @@ from physics.particles import Statistics
 from physics.ramp_sensitivity import Input, RampSensitivity, ramp_sensitivities
 from physics.ramp_shapes import Shape
 from physics.ramps import Move, Ramp, Stage
-from physics.trap_path import SCALE, HarmonicPath
+from physics.trap_path import SCALE, HarmonicPath, QuadrupolePath
 from physics.traps import HarmonicTrap
 
 MASS = 87.0 * atomic_mass
@@ -62,6 +62,13 @@ def test_the_strongest_comes_first_and_signs_are_those_of_the_trade() -> None:
     assert named[Input.BACKGROUND_LIFETIME].slope > 0.0
     assert named[Input.THREE_BODY].slope < 0.0
     assert named[Input.HEATING].slope < 0.0
+
+
+def test_a_quadrupole_has_no_frequencies_to_change() -> None:
+    zero = QuadrupolePath(moment=4.64e-24, gradient=2.0, depth=boltzmann * 1e-3)
+    found = by_input(ramp_sensitivities(GAS, 1e8, 1e-4, Ramp(stages=(Stage(duration=1.0),)), zero))
+    assert Input.FREQUENCIES not in found
+    assert Input.TEMPERATURE in found
 
 
 def test_an_input_that_decides_whether_the_target_is_reached_comes_first() -> None:
