@@ -1,4 +1,8 @@
-"""Evaporation along a ramp: balances, the size of steps, jumps, ends, rows."""
+"""Evaporation along a ramp: balances, the size of steps, jumps, ends, rows.
+
+Published trajectories are missing here: none was found with all that a simulation needs. Published scaling laws stand in
+`test_held_truncation`, integrations by quadratures in `test_evaporation_rates`.
+"""
 
 from __future__ import annotations
 
