@@ -80,14 +80,19 @@ def evaporate(
     ValueError : for values that cannot be, a scattering length that is needed and unknown, a control without a start,
         or rates that make more than `MOST_STEPS` steps of a stage.
     """
-    for name, value, unit in (("atom number", atoms, ""), ("temperature", temperature, "K")):
-        if not 0.0 < value < math.inf:
-            raise ValueError(f"{name} must be positive and finite, got {value:g} {unit}".rstrip())
+    require_start(atoms, temperature)
     _ = gas.cold_cross_section
     track = Track(gas, losses or Losses())
     run = Run(track, path, Limits(target=target, fewest_atoms=fewest_atoms, tolerance=tolerance))
     reason = run.follow(ramp, (atoms, temperature), rows, tick)
     return track.finished(reason)
+
+
+def require_start(atoms: float, temperature: float, of: str = "") -> None:
+    """Raise ValueError unless both are positive and finite. of : whose they are, for the sentence"""
+    for name, value, unit in (("atom number", atoms, ""), ("temperature", temperature, "K")):
+        if not 0.0 < value < math.inf:
+            raise ValueError(f"{name} {of}".rstrip() + f" must be positive and finite, got {value:g} {unit}".rstrip())
 
 
 class Cancelled(Exception):

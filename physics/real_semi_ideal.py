@@ -11,7 +11,6 @@ Reference
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -19,6 +18,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.checks import Floats
+from physics.condensed_cells import CondensedCells
 from physics.equilibria import quantity
 from physics.held_densities import HeldBose
 from physics.real_equilibria import Densities, RealEquilibrium
@@ -27,24 +27,12 @@ from physics.real_semi_ideal_integrals import CondensateSums
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class RealSemiIdeal(RealIdealBose):
+class RealSemiIdeal(CondensedCells, RealIdealBose):
     """mu of the condensate solves N lambda^3 = condensed and thermal densities summed over the trap."""
 
     @cached_property
-    def _condensed(self) -> NDArray[np.bool_]:
-        """Cells below threshold, in the full shape of the cloud."""
-        return np.broadcast_to(np.asarray(self._number > self._most), self.cloud.shape)
-
-    def _below(self, value: Floats) -> Floats:
-        """The condensed cells of a value that broadcasts to the cloud's shape, flat."""
-        return np.broadcast_to(value, self.cloud.shape)[self._condensed]
-
-    def _merged(self, above: Floats | float, below: Callable[[], Floats]) -> Floats:
-        """One value above threshold, another below; the second is asked for where there are condensed cells only."""
-        result = np.array(np.broadcast_to(above, self.cloud.shape), dtype=np.float64)
-        if np.any(self._condensed):
-            result[self._condensed] = below()
-        return result
+    def _is_condensed(self) -> NDArray[np.bool_]:
+        return np.asarray(self._number > self._most)
 
     @quantity
     def atoms_over_most(self) -> Floats:
@@ -53,12 +41,6 @@ class RealSemiIdeal(RealIdealBose):
     @cached_property
     def _sums_of_trap(self) -> CondensateSums:
         return self.trap.condensates
-
-    @cached_property
-    def _density_scale(self) -> Floats:
-        """lambda/(2a): n_c lambda^3 is this times (mu - V)/kT. [1]"""
-        scale: Floats = self._wavelength / (2.0 * self.cloud.length)
-        return scale
 
     @cached_property
     def _height(self) -> Floats:

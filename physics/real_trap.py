@@ -13,6 +13,7 @@ from numpy.typing import ArrayLike
 from physics.checks import Floats, as_floats, require_positive
 from physics.curve_shape import CurveShape
 from physics.level_sums import LevelSums, level_unit
+from physics.traps.frequencies import ThreeFrequencies
 from physics.traps.harmonic import HarmonicTrap
 
 if TYPE_CHECKING:
@@ -21,7 +22,7 @@ if TYPE_CHECKING:
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class RealTrap:
+class RealTrap(ThreeFrequencies):
     """A trap of any volume curve W(U), of a finite depth.
 
     Leading dimensions of `held`, `volume`, `depth` and `frequencies` broadcast with a cloud's numbers; all of them have
@@ -84,30 +85,6 @@ class RealTrap:
         return np.broadcast_shapes(
             np.shape(self.held), np.shape(self.volume), np.shape(self.depth), self.frequencies.shape[:-1]
         )
-
-    @cached_property
-    def angular_frequencies(self) -> Floats:
-        """(..., 3) 2 pi f; NaN without frequencies. [rad/s]"""
-        angular: Floats = 2.0 * math.pi * self.frequencies
-        return angular
-
-    @cached_property
-    def mean_frequency(self) -> Floats:
-        """Geometric mean of the three frequencies; NaN without. [Hz]"""
-        mean: Floats = np.cbrt(np.prod(self.frequencies, axis=-1))
-        return mean
-
-    @cached_property
-    def arithmetic_mean_frequency(self) -> Floats:
-        """Arithmetic mean of the three frequencies; NaN without. [Hz]"""
-        mean: Floats = np.mean(self.frequencies, axis=-1)
-        return mean
-
-    @cached_property
-    def highest_frequency(self) -> Floats:
-        """The largest of the three frequencies; NaN without. [Hz]"""
-        highest: Floats = np.max(self.frequencies, axis=-1)
-        return highest
 
     @cached_property
     def levels(self) -> LevelSums:

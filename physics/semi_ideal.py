@@ -13,7 +13,6 @@ References
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -22,6 +21,7 @@ from numpy.typing import NDArray
 
 from physics import semi_ideal_integrals as integrals
 from physics.checks import Floats
+from physics.condensed_cells import CondensedCells
 from physics.equilibria import quantity
 from physics.ideal_bose import IdealBose
 from physics.statistics import bose, zeta
@@ -30,30 +30,12 @@ _STEPS = 40  # far more than ever needed: from 4 to 7
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class SemiIdeal(IdealBose):
+class SemiIdeal(CondensedCells, IdealBose):
     """x = mu/kT of the condensate solves X = coupling x^(5/2) + F(x): condensed and thermal atoms."""
 
     @cached_property
-    def _condensed(self) -> NDArray[np.bool_]:
-        """Cells below threshold, in the full shape of the cloud."""
-        return np.broadcast_to(np.asarray(self._degeneracy > zeta(3.0)), self.cloud.shape)
-
-    def _below(self, value: Floats) -> Floats:
-        """The condensed cells of a value that broadcasts to the cloud's shape, flat."""
-        return np.broadcast_to(value, self.cloud.shape)[self._condensed]
-
-    def _merged(self, above: Floats | float, below: Callable[[], Floats]) -> Floats:
-        """One value above threshold, another below; the second is asked for where there are condensed cells only."""
-        result = np.array(np.broadcast_to(above, self.cloud.shape), dtype=np.float64)
-        if np.any(self._condensed):
-            result[self._condensed] = below()
-        return result
-
-    @cached_property
-    def _density_scale(self) -> Floats:
-        """lambda/(2a): n_c lambda^3 is this times (mu - V)/kT. [1]"""
-        scale: Floats = self._wavelength / (2.0 * self.cloud.length)
-        return scale
+    def _is_condensed(self) -> NDArray[np.bool_]:
+        return np.asarray(self._degeneracy > zeta(3.0))
 
     @cached_property
     def _coupling(self) -> Floats:

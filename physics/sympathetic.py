@@ -26,7 +26,7 @@ import numpy as np
 
 from physics.checks import Floats
 from physics.contact import Contact, ContactNow, Placement
-from physics.evaporation import ROWS, Limits, Run, Solver
+from physics.evaporation import ROWS, Limits, Run, Solver, require_start
 from physics.evaporation_rates import FEWEST_ATOMS, CloudNow, Kinetics
 from physics.evaporation_target import Target
 from physics.evaporation_track import VARIABLES, EndReason, Evaporation, Mark, Track
@@ -70,7 +70,7 @@ class Passenger:
     vertical: int | None = None
 
     def __post_init__(self) -> None:
-        _check(self.atoms, self.temperature, "of the passenger")
+        require_start(self.atoms, self.temperature, "of the passenger")
 
     @property
     def colliding(self) -> Gas:
@@ -92,12 +92,6 @@ class Passenger:
             elif not math.isnan(value):
                 found[control] = Course.resting(value)
         return found
-
-
-def _check(atoms: float, temperature: float, of: str = "") -> None:
-    for name, value, unit in (("atom number", atoms, ""), ("temperature", temperature, "K")):
-        if not 0.0 < value < math.inf:
-            raise ValueError(f"{name} {of}".rstrip() + f" must be positive and finite, got {value:g} {unit}".rstrip())
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -164,7 +158,7 @@ def evaporate_with_passenger(
     ------
     ValueError : as `evaporate`; also for a ramp into another trap, or a trap without frequencies.
     """
-    _check(atoms, temperature)
+    require_start(atoms, temperature)
     _ = gas.cold_cross_section
     lead, rider = Track(gas, losses or Losses()), Track(passenger.colliding, passenger.losses)
     collisions = PairCollisions(masses=(gas.mass, passenger.gas.mass), scattering_length=passenger.scattering_length)

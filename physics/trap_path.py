@@ -113,6 +113,21 @@ class TrapPath(Protocol):
 
 
 @dataclass(frozen=True, kw_only=True)
+class PathAround:
+    """A trap path made of another, which `at` of a subclass asks."""
+
+    path: TrapPath
+
+    @property
+    def standing(self) -> Mapping[Control, float]:
+        return self.path.standing
+
+    @property
+    def nodes(self) -> int:
+        return self.path.nodes
+
+
+@dataclass(frozen=True, kw_only=True)
 class FixedTrap:
     """A trap without controls."""
 

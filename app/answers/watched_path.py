@@ -10,7 +10,7 @@ from dataclasses import dataclass, field, replace
 
 from physics.evaporation import Cancelled
 from physics.ramps import Control, Ramp, Stage
-from physics.trap_path import TrapPath, TrapPoint, points_between
+from physics.trap_path import PathAround, TrapPath, TrapPoint, points_between
 
 Tick = Callable[[float], bool]
 """Told the share of the work that is done, from 0 to 1; its answer says whether to go on."""
@@ -58,19 +58,10 @@ class Progress:
 
 
 @dataclass(frozen=True, kw_only=True)
-class WatchedPath:
+class WatchedPath(PathAround):
     """A trap path that tells of each setting at which it is asked for."""
 
-    path: TrapPath
     progress: Progress
-
-    @property
-    def standing(self) -> Mapping[Control, float]:
-        return self.path.standing
-
-    @property
-    def nodes(self) -> int:
-        return self.path.nodes
 
     def at(self, controls: Mapping[Control, float]) -> TrapPoint:
         self.progress.survey()

@@ -2,18 +2,17 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
-from functools import cached_property
 from typing import Any
 
 import numpy as np
 
-from physics.checks import Floats, as_floats, require_positive
+from physics.checks import as_floats, require_positive
+from physics.traps.frequencies import ThreeFrequencies
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class HarmonicTrap:
+class HarmonicTrap(ThreeFrequencies):
     """Potential m (wx^2 x^2 + wy^2 y^2 + wz^2 z^2)/2, w = 2 pi f, with gravity already in it.
 
     Leading dimensions of `frequencies` and those of `depth` broadcast with the atom numbers and temperatures of a
@@ -49,27 +48,3 @@ class HarmonicTrap:
     def shape(self) -> tuple[int, ...]:
         """Shape of the leading dimensions, depth included."""
         return np.broadcast_shapes(self.frequencies.shape[:-1], np.shape(self.depth))
-
-    @cached_property
-    def angular_frequencies(self) -> Floats:
-        """(..., 3) 2 pi f. [rad/s]"""
-        angular: Floats = 2.0 * math.pi * self.frequencies
-        return angular
-
-    @cached_property
-    def mean_frequency(self) -> Floats:
-        """Geometric mean of the three frequencies. [Hz]"""
-        mean: Floats = np.cbrt(np.prod(self.frequencies, axis=-1))
-        return mean
-
-    @cached_property
-    def arithmetic_mean_frequency(self) -> Floats:
-        """Arithmetic mean of the three frequencies. [Hz]"""
-        mean: Floats = np.mean(self.frequencies, axis=-1)
-        return mean
-
-    @cached_property
-    def highest_frequency(self) -> Floats:
-        """The largest of the three frequencies. [Hz]"""
-        highest: Floats = np.max(self.frequencies, axis=-1)
-        return highest
