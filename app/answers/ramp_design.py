@@ -116,8 +116,8 @@ def controls_of(plan: Plan, since: str | None = None) -> tuple[Control, ...]:
 
 def usual_control(plan: Plan, since: str | None = None) -> Control:
     """The control to design: the one that has limits, else the one that the ramp moves first, else all light together,
-    the knife, or what there is. Where that is the power of one beam, and the ramp moves several, all light together:
-    one beam alone leaves the cloud in the others.
+    the knife, or what there is. Where that is the power of one beam of several, and the ramp does not move that one
+    alone, all light together: one beam leaves the cloud in the others.
 
     Raises
     ------
@@ -132,8 +132,8 @@ def usual_control(plan: Plan, since: str | None = None) -> Control:
     for control in (*limited, *moved, *(Control(knob) for knob in _FIRST_CHOICES)):
         if control in known:
             powers = {one for one in moved if one.knob is Knob.POWER}
-            together = control.knob is Knob.POWER and len(powers) > 1 and _TOGETHER in known
-            return _TOGETHER if together else control
+            several = sum(one.knob is Knob.POWER for one in known) > 1 and powers != {control}
+            return _TOGETHER if control.knob is Knob.POWER and several and _TOGETHER in known else control
     return known[0]
 
 

@@ -294,6 +294,8 @@ direction = [0, 1, 0]
     assert usual_control(parse_plan(second + both, "a.toml")) == SCALE
     assert usual_control(parse_plan(second + both + limit, "a.toml")) == SCALE
     assert usual_control(parse_plan(second + limit, "a.toml")) == A
+    assert usual_control(replace(parse_plan(second + limit, "a.toml"), ramp=())) == SCALE
+    assert usual_control(replace(parse_plan(BEAM + limit, "a.toml"), ramp=())) == A
 
 
 def test_a_beam_that_does_not_reach_the_target_names_those_that_stay(plan: Plan) -> None:

@@ -1,7 +1,7 @@
 """Evaporation along a ramp: balances, the size of steps, jumps, ends, rows.
 
-Published trajectories are missing here: none was found with all that a simulation needs. Published scaling laws stand in
-`test_held_truncation`, integrations by quadratures in `test_evaporation_rates`.
+Published trajectories are missing here: none was found with all that a simulation needs. Published scaling laws stand
+in `test_held_truncation`, integrations by quadratures in `test_evaporation_rates`.
 """
 
 from __future__ import annotations
