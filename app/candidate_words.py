@@ -80,12 +80,6 @@ def cell_text(cell: Cell, name: str, unit: str) -> str:
     return cell_number(cell, name, unit) + cell.sureness.mark
 
 
-def heading_of(name: str, unit: str) -> str:
-    """What stands over a column: "threshold temperature [nK]"."""
-    label = COLUMNS[name].row.label
-    return f"{label} [{unit}]" if shown_unit(unit) else label
-
-
 def cell_tip(row: CandidateRow, name: str, unit: str) -> str:
     """All that a reader wants to know of a number: how much, how sure, on what it rests, why it is missing."""
     column, cell = COLUMNS[name], row.cell(name)

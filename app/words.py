@@ -248,12 +248,6 @@ def row_tip(row: Row) -> str:
     return "\n".join((row.formula, *real, holds, source))
 
 
-def label_with_unit(name: str, unit: str) -> str:
-    """Axis or column label: "peak density [1/cm^3]"."""
-    row = QUANTITIES[name]
-    return f"{row.label} [{unit}]" if unit not in ("", "1") else row.label
-
-
 def heading(answer: CloudAnswer) -> str:
     """What the answer is about: species, state, model."""
     return _("{species}, {state}; model: {model}").format(

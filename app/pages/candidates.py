@@ -146,11 +146,6 @@ class CandidatesPage(SinglePlotPage):
         self.rules.set_rules(kept.sieve, kept.weights)
         self._count_rules()
 
-    def show_units(self, units: Mapping[str, str]) -> None:
-        """Use these units, by the name of a quantity."""
-        self._units = dict(units)
-        self._show()
-
     # ---------------------------------------------------------------- the answer
 
     def part(self, plan: Plan) -> Job | None:

@@ -119,9 +119,6 @@ class Settings:
         self.put("files/recent", [str(path), *others][:RECENT_LIMIT])
         self.last_folder = path.parent
 
-    def forget_files(self) -> None:
-        self.put("files/recent", [])
-
     @property
     def units(self) -> dict[str, str]:
         """Units chosen for readouts, by quantity name."""

@@ -33,9 +33,3 @@ class ThreeFrequencies:
         """Arithmetic mean of the three frequencies. [Hz]"""
         mean: Floats = np.mean(self.frequencies, axis=-1)
         return mean
-
-    @cached_property
-    def highest_frequency(self) -> Floats:
-        """The largest of the three frequencies. [Hz]"""
-        highest: Floats = np.max(self.frequencies, axis=-1)
-        return highest

@@ -15,10 +15,9 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from physics.checks import Floats
-from physics.constants import boltzmann
 from physics.light import scattering_rate
-from physics.light_heating import harmonic_heating_rate, pointing_heating_power, recoil_heating_power
-from physics.losses import noise_heating_rate, spin_flip_rates
+from physics.light_heating import harmonic_heating_rate, recoil_heating_power
+from physics.losses import spin_flip_rates
 from physics.traps.potential import Potential
 from physics.traps.stationary import StationaryPoint
 
@@ -58,26 +57,6 @@ def heating_of(potential: Potential, points: Floats, weights: Floats | None = No
     return Heating(scattering_rates=MappingProxyType(rates), power=power)
 
 
-def thermal_heating(potential: Potential, minimum: StationaryPoint, temperature: float) -> Heating:
-    """Scattering averaged over a classical cloud in the harmonic trap of the minimum's curvature.
-
-    Good for clouds much smaller than the beams, that is for a depth of several kT. In a red-detuned trap it is below
-    the scattering at the minimum.
-
-    Raises
-    ------
-    ValueError : at a cusp or a flat minimum, which have no harmonic trap.
-    """
-    values, vectors = np.linalg.eigh(minimum.curvature)
-    if minimum.cusp or values[0] <= 0.0:
-        raise ValueError("a thermal average of the scattering needs a minimum with three frequencies")
-    nodes, weights = np.polynomial.hermite_e.hermegauss(7)
-    grid = np.stack(np.meshgrid(nodes, nodes, nodes, indexing="ij"), axis=-1).reshape(-1, 3)
-    product = np.prod(np.stack(np.meshgrid(weights, weights, weights, indexing="ij"), axis=-1), axis=-1).ravel()
-    points = minimum.position + (grid * np.sqrt(boltzmann * temperature / values)) @ vectors.T
-    return heating_of(potential, points, product / np.sum(product))
-
-
 def light_shares(potential: Potential, minimum: Floats, axes: Floats) -> Floats:
     """(3,) Share of the spring constant along each axis (rows of `axes`) that the light makes, at the minimum.
 
@@ -88,28 +67,6 @@ def light_shares(potential: Potential, minimum: Floats, axes: Floats) -> Floats:
     along = [np.einsum("ij,jk,ik->i", axes, hessian, axes) for hessian in (light, whole)]
     shares: Floats = np.abs(along[0] / along[1])
     return shares
-
-
-def noise_growth_rate(frequencies: ArrayLike, intensity_noise: ArrayLike) -> float:
-    """Mean over the axes of the rate pi^2 f^2 S(2f) at which noise of the intensity makes the energy grow. [1/s]
-
-    Parameters
-    ----------
-    frequencies : (3,). [Hz] Of a trap of light alone; where coils and gravity have a part in them, an upper bound.
-    intensity_noise : one number, or one for each axis. [1/Hz] One-sided, relative, at twice the frequency.
-    """
-    return float(np.mean(noise_heating_rate(frequencies, intensity_noise)))
-
-
-def pointing_power(mass: float, frequencies: ArrayLike, pointing_noise: ArrayLike) -> float:
-    """Energy per atom and second that a shaking trap adds, over all axes. [W]
-
-    Parameters
-    ----------
-    frequencies : (3,). [Hz]
-    pointing_noise : one number, or one for each axis. [m^2/Hz] One-sided, of the position, at the frequency.
-    """
-    return float(np.sum(pointing_heating_power(mass, frequencies, pointing_noise)))
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

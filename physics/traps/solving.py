@@ -27,8 +27,6 @@ _FACTOR = 2.0
 _TIMES = 10
 """Steps up and down, each by that factor, in which a solution is looked for."""
 
-_ALL = "factor on all powers"
-
 _CLOSE = 1e-6
 """Relative accuracy of a solution."""
 
@@ -108,72 +106,6 @@ def _bracket(excess: Callable[[float], float], start: float, control: str) -> tu
             edges[sign] = there
     low, high = (math.exp(edges[sign]) for sign in (-1, 1))
     raise NoSolution(f"no {control} from {low:.3g} to {high:.3g} gives the wanted value")
-
-
-def power_for_mean_frequency(trap: Trap, state: State, beam: str, frequency: float) -> Solved:
-    """Power [W] of a beam that makes the geometric mean of the frequencies [Hz] what is wanted."""
-    return _power(trap, state, beam, lambda found: found.mean_frequency, frequency)
-
-
-def power_for_depth(trap: Trap, state: State, beam: str, depth: float) -> Solved:
-    """Power [W] of a beam that makes the depth [J] what is wanted."""
-    return _power(trap, state, beam, lambda found: found.depth, depth)
-
-
-def _power(trap: Trap, state: State, beam: str, reading: Reading, target: float) -> Solved:
-    return solve(
-        lambda power: trap.with_beam(beam, power=power, on=True),
-        reading,
-        target,
-        trap.beam(beam).power or 1.0,
-        state,
-        control=f"power of beam {beam} in W",
-    )
-
-
-def scale_for_mean_frequency(trap: Trap, state: State, frequency: float) -> Solved:
-    """Factor on the powers of all beams that makes the geometric mean of the frequencies [Hz] what is wanted."""
-    return solve(
-        trap.with_powers_scaled,
-        lambda found: found.mean_frequency,
-        frequency,
-        1.0,
-        state,
-        control=_ALL,
-    )
-
-
-def scale_for_depth(trap: Trap, state: State, depth: float) -> Solved:
-    """Factor on the powers of all beams that makes the depth [J] what is wanted."""
-    return solve(trap.with_powers_scaled, lambda found: found.depth, depth, 1.0, state, control=_ALL)
-
-
-def calibrated_power(trap: Trap, state: State, beam: str, axis: int, frequency: float) -> Solved:
-    """Power [W] of a beam that explains a frequency [Hz] measured along an axis (0, 1, 2 as in a survey)."""
-    return _power(trap, state, beam, _along(axis), frequency)
-
-
-def calibrated_waist(
-    trap: Trap, state: State, beam: str, axis: int, frequency: float, *, which: int | None = None
-) -> Solved:
-    """Waist [m] of a beam that explains a frequency [Hz] measured along an axis (0, 1, 2 as in a survey).
-
-    `which`: 0 for the horizontal, 1 for the vertical waist; None scales both and gives their geometric mean.
-    """
-    waists = as_floats(trap.beam(beam).waists)
-    start = float(np.sqrt(np.prod(waists))) if which is None else float(waists[which])
-
-    def change(waist: float) -> Trap:
-        scaled = waists * (waist / start)
-        return trap.with_beam(beam, waists=scaled if which is None else np.where(np.arange(2) == which, scaled, waists))
-
-    return solve(change, _along(axis), frequency, start, state, control=f"waist of beam {beam} in m")
-
-
-def _along(axis: int) -> Reading:
-    if axis not in (0, 1, 2):
-        raise ValueError(f"axis must be 0, 1 or 2, got {axis}")
-    return lambda found: None if found.frequencies is None else float(found.frequencies[axis])
 
 
 def levitation_gradient(state: State) -> float:

