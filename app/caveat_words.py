@@ -87,7 +87,10 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _("The scattering length {value} is recalled from its source. Check it before you rely on it."),
             _length,
         ),
-        "length_computed": (_("The scattering length {value} is worked out from other data, not measured."), _length),
+        "length_computed": (
+            _("The scattering length {value} is worked out from other data. Type a measured one if you have it."),
+            _length,
+        ),
         "finite_size": (
             _("The trap's finite size lowers Tc by {value}: see the shifted critical temperature."),
             percent,
@@ -156,9 +159,9 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             _("At the condensate's edge the density jumps by {value}, an artefact of the mean field: trust sums only."),
             percent,
         ),
-        "dense": (_("n|a|³ reaches {value}: the gas is too dense for mean-field formulas."), _PLAIN),
+        "dense": (_("n|a|³ reaches {value}: the gas is too dense for mean-field formulas. Weaken the trap."), _PLAIN),
         "long_range_length": (
-            _("|a|/λ is {value}: interactions shift everything near the threshold by several percent."),
+            _("|a|/λ is {value}: interactions shift all near the threshold by several percent. See Hartree-Fock."),
             _PLAIN,
         ),
         "fermi_interaction": (
@@ -229,8 +232,8 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
             times,
         ),
         "trap_uncertainty": (
-            _("Uncertain numbers of beams and coils move the frequencies, the depth and the volume to first order."),
-            _PLAIN,
+            _("One uncertain number of beams or coils moves the trap by {value}: ranges are rough. Calibrate it."),
+            percent,
         ),
         "shallow": (
             _(
@@ -259,20 +262,23 @@ _SENTENCES: MappingProxyType[str, tuple[str, Callable[[float], str]]] = MappingP
         ),
         "one_way_out": (
             _(
-                "Only {value} of all directions lead out of this trap. Atoms must find that way: evaporation in three "
-                "dimensions is an upper bound."
+                "Only {value} of all directions lead out of this trap. Atoms must find that way: evaporation is slower "
+                "than ramps here say."
             ),
             percent,
         ),
         "spin_flips": (
             _(
                 "Atoms lose their state at the zero of the field, each in about {value} ({least} to {largest}), and "
-                "sooner as they cool."
+                "sooner as they cool. Plug the zero, or add a bias."
             ),
             _once_in,
         ),
         "light_heating": (
-            _("Scattered light warms the cloud by {value}, {share} of T in the {time} that it lasts."),
+            _(
+                "Scattered light warms the cloud by {value}, {share} of T in the {time} that it lasts. Less power, or "
+                "light further from the lines, heats less."
+            ),
             _heating,
         ),
         "truncated": (
@@ -376,6 +382,12 @@ def _compared(numbers: Mapping[str, float], answer: CloudAnswer) -> str:
     if "real" not in numbers or "harmonic" not in numbers:
         return ""
     symbol = "T/Tc" if answer.bosons else "T/TF"
-    return _(" There {symbol} would be {harmonic} instead of {real}.").format(
-        symbol=symbol, harmonic=number(numbers["harmonic"]), real=number(numbers["real"])
+    said = _(" There {symbol} would be {harmonic} instead of {real}{density}.")
+    density = ""
+    if "real_density" in numbers:
+        density = _(", and D {harmonic} instead of {real}").format(
+            harmonic=number(numbers["harmonic_density"]), real=number(numbers["real_density"])
+        )
+    return said.format(
+        symbol=symbol, harmonic=number(numbers["harmonic"]), real=number(numbers["real"]), density=density
     )

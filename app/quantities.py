@@ -334,7 +334,8 @@ _ROWS = (
         formula="n(0) σ v̄/2 for a thermal cloud, σ averaged over the thermal speeds",
         in_real_trap="√2 ⟨n_cl⟩/n_cl(0) n(0) σ v̄, ⟨n_cl⟩/n_cl(0) of a classical cloud in the trap",
         source=_LUITEN,
-        validity="thermal atoms, s-wave; the unitarity limit is in σ, an effective range is not",
+        validity="thermal atoms, s-wave; the unitarity limit is in σ, an effective range is not; bosons near Tc collide"
+        " more often, by 27 % at 1.1 Tc, and fermions below TF/2 less",
         needs=(Need.COLLISIONS,),
     ),
     Row(

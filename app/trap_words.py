@@ -68,13 +68,17 @@ _NOTES = MappingProxyType(
             "Beam {beam} is only {share} from a line: polarisation and hyperfine structure, left out, count there."
         ),
         NoteKind.PUBLISHED_POLARIZABILITY: _(
-            "For beam {beam} the polarizability is one published for a wavelength {share} away."
+            "For beam {beam} the polarizability is one published for a wavelength {share} away. A measured frequency "
+            "can calibrate the beam."
         ),
         NoteKind.INFINITE_ARMS: _("The volume curve ends at {share} of the depth: above, the volume has no end."),
         NoteKind.WALL: _("Nothing but the walls, taken {length} away, limits this trap: its depth is a guess."),
         NoteKind.ARM_END: _("The way out is the end of a beam's arm, as far as it is followed."),
         NoteKind.FIELD_ZERO: _("The field vanishes at the minimum: cold atoms lose their state there."),
-        NoteKind.LINEAR_ZEEMAN: _("Fields reach {frequency} in µB·B/h, and the Zeeman effect is taken as linear."),
+        NoteKind.LINEAR_ZEEMAN: _(
+            "Fields reach {frequency} in µB·B/h, and the Zeeman effect is taken as linear: good while that is a few "
+            "percent of the hyperfine splitting at most."
+        ),
         NoteKind.KNIFE_IDLE: _("The radio-frequency knife at {frequency} does nothing to this state."),
     }
 )

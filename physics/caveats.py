@@ -100,7 +100,7 @@ CAVEAT_IDS = MappingProxyType(
         "dipolar_unstable": "a_dd/a above 1: their attraction makes a large condensate unstable; dipolar_length",
         "density_jump": "share by which the density of the mean field jumps at the edge of the condensate, an artefact",
         "dense": "n |a|^3 at the peak",
-        "long_range_length": "|a|/lambda",
+        "long_range_length": "|a|/lambda, near the threshold or below it",
         "fermi_interaction": "kF |a|; inverse = 1/(kF a)",
         "polarised_fermions": "no value: one spin state does not collide by s-waves",
         "pauli_blocking": "T/TF: collisions slowed by filled levels, left out of the rate",
@@ -111,8 +111,10 @@ CAVEAT_IDS = MappingProxyType(
         "no_frequencies": "no value: a trap without frequencies; what needs them is unknown, local density is assumed",
         "open_trap": "share of the depth, above which a volume has no end, that is the highest energy held",
         "harmonic_trap": "volume of a classical cloud over that in the harmonic trap of the same frequencies;"
-        " truncation, arms, in_arms, and T over the threshold or TF in both: real, harmonic",
-        "trap_uncertainty": "no value: uncertain numbers of beams and coils move frequencies and depth to first order",
+        " truncation, arms, in_arms, T over the threshold or TF in both: real, harmonic, and the peak phase-space"
+        " density of a cloud without a condensate: real_density, harmonic_density",
+        "trap_uncertainty": "largest change of ln f, ln depth or ln volume by one standard deviation of a number of"
+        " beams and coils: too large to be followed to first order",
         "blue_light": "relative detuning from the nearest line: the light of a beam (subject) repels the atoms",
         "near_resonance": "relative detuning: the light of a beam (subject) is close to a line",
         "published_polarizability": "relative distance of the wavelength of a beam (subject) from the published one",
@@ -151,6 +153,7 @@ _JUMP = 0.05
 # (128/15) sqrt(n a^3/pi), the first correction to the energy of a condensate [2], is 5 % at the first; Tc moves by
 # 3.4 a/lambda, 10 % at the second.
 _DENSE, _LONG = 1e-4, 0.03
+_NEAR = 2.0  # T/Tc from which the mean field 4 D a/lambda of kT is small whatever a is
 _FERMI_INTERACTION = 0.3
 _PAULI = 0.5
 _TRUNCATION = 5.0
@@ -276,7 +279,7 @@ def _bosons(solved: Equilibrium) -> Iterator[Caveat]:
     dense, long = _highest(density * np.abs(length) ** 3), _highest(np.abs(length) / solved.thermal_wavelength)
     if dense > _DENSE:
         yield Caveat(id="dense", severity=Severity.WARNING, value=dense)
-    if long > _LONG:
+    if long > _LONG and _lowest(solved.reduced_temperature) < _NEAR:
         yield Caveat(id="long_range_length", severity=Severity.WARNING, value=long)
 
 

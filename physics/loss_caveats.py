@@ -24,6 +24,9 @@ _SHOWN, _TOO_MUCH = 0.1, 1.0
 # a^4 differs by more than that from the length for which K3 was measured.
 _ELSEWHERE = 1.5
 _DIPOLES_FAST = 0.3
+# Share of all known losses below which one of them changes no decision, and a K3 [m^6/s] that is hardly ever exceeded
+# away from resonances (common practice, no source): where not even it would count, none need be known.
+_COUNTS, _LARGE_THREE_BODY = 0.02, 1e-39
 
 
 def loss_caveats(
@@ -50,10 +53,16 @@ def _unknown(rates: Rates, certainties: Mapping[str, Certainty]) -> Iterator[Cav
     losses, bosons = rates.losses, rates.equilibrium.bosons
     if losses.background_lifetime is None:
         yield Caveat(id="no_background", severity=Severity.NOTE)
+    total = np.asarray(rates.total_loss_rate)
     if bosons and losses.three_body is None:
-        yield Caveat(id="three_body_unknown", severity=Severity.NOTE)
-    for name, value in (("two_body", losses.two_body), ("three_body", losses.three_body)):
-        if certainties.get(name) is Certainty.MEMORY:
+        most = _LARGE_THREE_BODY * rates.triple_density
+        if not _highest(most / (most + total)) < _COUNTS:
+            yield Caveat(id="three_body_unknown", severity=Severity.NOTE)
+    for name, value, rate in (
+        ("two_body", losses.two_body, rates.two_body_loss_rate),
+        ("three_body", losses.three_body, rates.three_body_loss_rate),
+    ):
+        if certainties.get(name) is Certainty.MEMORY and not _highest(rate / total) < _COUNTS:
             yield Caveat(id=f"{name}_recalled", severity=Severity.NOTE, value=float(np.mean(value)))
 
 

@@ -76,6 +76,11 @@ class Rates:
     def _densities(self) -> tuple[Floats, Floats]:
         return two_and_three_body_densities(self.equilibrium)
 
+    @property
+    def triple_density(self) -> Floats:
+        """<n^2> that three-body losses meet, for a K3 of a thermal gas. [1/m^6]"""
+        return self._densities[1]
+
     @quantity
     def background_loss_rate(self) -> Floats:
         """Collisions with the background gas. [1/s]"""

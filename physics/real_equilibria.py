@@ -243,6 +243,20 @@ class RealEquilibrium(Equilibrium):
             return np.full((), np.nan)
         return np.minimum(self.atoms_to_threshold ** (-1.0 / self.efficiency), 1.0)
 
+    @quantity
+    def temperature_at_target(self) -> Floats:
+        """T of this trap's threshold for the atoms that are left: D does not go as N/T^3 here. [K]"""
+        if self.efficiency is None:
+            return np.full((), np.nan)
+        left = self.atoms_left_at_target
+        if self.bosons:
+            eta = self._by_itself(self._levels_of_trap.eta_at_saturation, np.asarray(left * self._number))
+            there = self.trap.held / (boltzmann * eta)
+        else:
+            x = self._by_itself(self._levels_of_trap.energy_of_levels, np.asarray(left * self._number))
+            there = self.fermi_threshold * self.trap.held * x / boltzmann
+        return np.where(left < 1.0, there, self._temperature * left)
+
     # Densities, from the sums of each model.
 
     @cached_property

@@ -27,10 +27,13 @@ _NOTES = MappingProxyType(
 )
 """Notes that are caveats as they are; the others have one of their own, with more to say."""
 
+_ALIKE = 1e-3
+"""Relative distance of two wavelengths at which far-off light does the same."""
+
 NARROW = 0.25
 """Share of the directions below which a way out is narrow."""
 
-_HEATED, _TOO_WARM = 0.1, 1.0
+_HEATED, _TOO_WARM = 0.25, 1.0
 """Share of T by which light warms a cloud while it lasts: worth knowing, and too much."""
 
 _LASTS = 10.0
@@ -45,7 +48,8 @@ def survey_caveats(found: Survey, rates: Rates) -> tuple[Caveat, ...]:
 def _caveats(found: Survey, rates: Rates) -> Iterator[Caveat]:
     for note in found.notes:
         severity = _NOTES.get(note.kind)
-        if severity is not None:
+        # A value published for the very wavelength is as good as lines are.
+        if severity is not None and not (note.kind is NoteKind.PUBLISHED_POLARIZABILITY and note.value < _ALIKE):
             yield Caveat(id=note.kind.name.lower(), severity=severity, value=note.value, subject=note.beam)
     temperature = float(rates.equilibrium.cloud.temperature)
     share = found.open_share(temperature)

@@ -16,8 +16,13 @@ _ARMS = 0.01
 """Share of a cloud in the arms of crossed beams from which they are worth a word."""
 
 
-def harmonic_trap_caveat(found: Survey, solved: RealEquilibrium) -> Caveat:
-    """How a single cloud in a surveyed trap differs from that in the harmonic trap of the same frequencies.
+_DIFFERENT = 0.05
+"""Difference of the volume, or of the reduced temperature, below which the harmonic trap would do as well."""
+
+
+def harmonic_trap_caveat(found: Survey, solved: RealEquilibrium) -> Caveat | None:
+    """How a single cloud in a surveyed trap differs from that in the harmonic trap of the same frequencies; None where
+    that is by less than 5 %.
 
     Raises
     ------
@@ -25,17 +30,22 @@ def harmonic_trap_caveat(found: Survey, solved: RealEquilibrium) -> Caveat:
     """
     temperature = float(solved.cloud.temperature)
     kT = boltzmann * temperature
+    ratio = volume_ratio(solved.trap, temperature)
+    real, harmonic = float(solved.reduced_temperature), float(solved.harmonic.reduced_temperature)
+    if not max(abs(ratio - 1.0), abs(harmonic / real - 1.0)) > _DIFFERENT:
+        return None
     numbers = {"truncation": float(solved.trap.depth) / kT}
-    for name, value in (("real", solved.reduced_temperature), ("harmonic", solved.harmonic.reduced_temperature)):
-        if np.isfinite(value):
-            numbers[name] = float(value)
+    numbers |= {name: value for name, value in (("real", real), ("harmonic", harmonic)) if np.isfinite(value)}
+    densities = float(solved.peak_phase_space_density), float(solved.harmonic_peak_phase_space_density)
+    if np.all(np.isfinite(densities)) and not (solved.bosons and min(real, harmonic) < 1.0):
+        numbers |= {"real_density": densities[0], "harmonic_density": densities[1]}
     share = 0.0 if found.volume_curve is None else float(found.volume_curve.atoms_in_arms(temperature))
     if found.arm_depth is not None and share > _ARMS:
         numbers |= {"arms": found.arm_depth / kT, "in_arms": share}
     return Caveat(
         id="harmonic_trap",
         severity=Severity.NOTE,
-        value=volume_ratio(solved.trap, temperature),
+        value=ratio,
         numbers=MappingProxyType(numbers),
     )
 

@@ -13,7 +13,7 @@ from app.answers.inputs import Numbers, cloud_of, scattering_in_use, values_of
 from app.answers.losses import LossesInUse, Solution, losses_in_use
 from app.answers.part import part
 from app.answers.trap import trap_answer
-from app.answers.trap_inputs import trap_inputs
+from app.answers.trap_inputs import trap_change
 from app.answers.trap_losses import trap_losses
 from app.answers.uncertainty import Spread, Uncertainty
 from app.quantities import Need, Row
@@ -168,6 +168,10 @@ class CloudAnswer:
         return self.uncertainty.share("reduced_temperature", 1.0 if self.bosons else self.threshold)
 
 
+_FAR = 0.2
+"""Change of the trap by one number's uncertainty at which the second order is a few percent."""
+
+
 @part("species", "trap", "cloud", "losses", "target")
 def cloud_answer(plan: Plan) -> CloudAnswer:
     """The cloud of the plan."""
@@ -228,9 +232,11 @@ def _trap_caveats(plan: Plan, solution: Solution) -> tuple[Caveat, ...]:
     survey, solved = trap_answer(plan).survey, solution.equilibrium
     found = [*survey_caveats(survey, solution.rates)]
     if isinstance(solved, RealEquilibrium) and solved.trap.has_frequencies:
-        found.append(harmonic_trap_caveat(survey, solved))
-    if trap_inputs(plan):
-        found.append(Caveat(id="trap_uncertainty", severity=Severity.NOTE))
+        compared = harmonic_trap_caveat(survey, solved)
+        found += [] if compared is None else [compared]
+    moved = trap_change(plan)
+    if moved > _FAR:
+        found.append(Caveat(id="trap_uncertainty", severity=Severity.NOTE, value=moved))
     return tuple(found)
 
 

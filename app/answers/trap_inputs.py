@@ -143,6 +143,17 @@ def trap_slopes(plan: Plan) -> dict[str, Slope]:
     return slopes
 
 
+def trap_change(plan: Plan) -> float:
+    """Largest change of the logarithm of a frequency, the depth or the volume by one standard deviation of one
+    uncertain number of beams and coils; 0 where none is uncertain."""
+    quantities, changes = trap_inputs(plan), [0.0]
+    for name, slope in trap_slopes(plan).items():
+        quantity = quantities[name]
+        away = abs(float(slope.distance(quantity.value + (quantity.sigma or 0.0))))
+        changes.append(away * max(*np.abs(slope.frequencies), abs(slope.depth), abs(slope.room)))
+    return float(np.nanmax(changes))
+
+
 def _nearby(answer: TrapAnswer, trap: Trap) -> tuple[Array, Array, Array] | None:
     """Logarithms, but for constants, of the frequencies, the depth and the volume of a trap that differs a little from
     the surveyed one; None where it cannot be followed."""

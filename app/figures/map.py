@@ -257,18 +257,18 @@ def _cloud_mark(cloud: CloudAnswer) -> Mark:
 
 
 def _evaporation(cloud: CloudAnswer) -> tuple[Curve, ...]:
-    """The way of the cloud along an evaporation of the plan's efficiency, to the threshold: D ~ N^-gamma with
-    D ~ N/T^3 at fixed frequencies is T ~ N^((1 + gamma)/3)."""
+    """The way of the cloud along an evaporation of the plan's efficiency to the threshold, a power law: in a harmonic
+    trap D ~ N^-gamma with D ~ N/T^3 at fixed frequencies is T ~ N^((1 + gamma)/3)."""
     if cloud.efficiency is None:
         return ()
-    left = float(cloud.equilibrium.atoms_left_at_target)
+    left, start = float(cloud.equilibrium.atoms_left_at_target), cloud.plan.cloud.temperature.value
     # Beyond the threshold there is no way to go; the curve stays, so that a drag across it redraws nothing else.
-    shares = np.geomspace(1.0, left, 33) if left < 1.0 else np.full(33, np.nan)
+    along = np.linspace(0.0, 1.0, 33) if left < 1.0 else np.full(33, np.nan)
     return (
         Curve(
             name=_("evaporation, γ = {gamma}").format(gamma=number(cloud.efficiency, 2)),
             role=Role.CLOUD,
-            x=cloud.plan.cloud.atoms.value * shares,
-            y=cloud.plan.cloud.temperature.value * shares ** ((1.0 + cloud.efficiency) / 3.0),
+            x=cloud.plan.cloud.atoms.value * left**along,
+            y=start * (float(cloud.equilibrium.temperature_at_target) / start) ** along,
         ),
     )

@@ -148,8 +148,8 @@ def test_slices_show_losses_too() -> None:
     [
         ({"losses__background_lifetime": ""}, "no_background", "No background lifetime is given"),
         ({"species__key": "41K"}, "three_body_unknown", "three-body rate constant is not known"),
-        ({}, "three_body_recalled", "4.3e-29 cm^6/s is recalled"),
-        ({"species__key": "1H"}, "two_body_recalled", "1.1e-15 cm^3/s is recalled"),
+        ({"cloud__temperature": "150 nK"}, "three_body_recalled", "4.3e-29 cm^6/s is recalled"),
+        ({"species__key": "1H", "cloud__atoms": "1e9"}, "two_body_recalled", "1.1e-15 cm^3/s is recalled"),
         ({"losses__three_body": "1e-27 cm^6/s"}, "three_body_scaling", "8.5 times"),
         ({"losses__three_body": "1e-20 cm^6/s"}, "three_body_unitarity", "what is possible at this temperature"),
         ({"species__scattering_length": "200 a0"}, "three_body_elsewhere", "by a⁴ it changes 16 times"),

@@ -54,10 +54,12 @@ def test_spin_flips_at_a_zero_grow_grave_as_the_cloud_cools() -> None:
 
 
 def test_light_that_heats_is_told_with_what_it_does_to_the_temperature() -> None:
-    plan = preset("crossed_beams_rubidium")
+    preset_plan = preset("crossed_beams_rubidium")
+    assert "light_heating" not in caveats(preset_plan)  # 18 % of T in half a minute
+    plan = plan_with(preset_plan, {"cloud.temperature": "350 nK", "cloud.atoms": "2e4"})
     caveat, sentence = caveats(plan)["light_heating"]
     assert caveat.value == pytest.approx(3.81e-9, rel=1e-2)
-    assert caveat.numbers["share"] == pytest.approx(caveat.value * caveat.numbers["time"] / 620e-9, rel=1e-9)
+    assert caveat.numbers["share"] == pytest.approx(caveat.value * caveat.numbers["time"] / 350e-9, rel=1e-9)
     assert "warms the cloud by 3.8 nK/s" in sentence
     assert "light_heating" not in caveats(plan_with(plan, {"losses.heating": "1 nK/s"}))  # which overrides it
     cold, _ = caveats(plan_with(plan, {"cloud.temperature": "100 nK", "cloud.atoms": "2000"}))["light_heating"]
@@ -68,8 +70,11 @@ def test_light_of_a_beam_is_told_by_its_name() -> None:
     caveat, sentence = caveats(preset("plugged_quadrupole_sodium"))["blue_light"]
     assert (caveat.subject, caveat.severity) == ("plug", Severity.NOTE)
     assert sentence.startswith("Beam plug is tuned above the nearest line")
-    published = caveats(preset("crossed_beams_dysprosium"))["published_polarizability"]
-    assert published[1].endswith("the polarizability is the one published for this wavelength.")
+    dysprosium = preset("crossed_beams_dysprosium")
+    assert "published_polarizability" not in caveats(dysprosium)  # which is of this very wavelength
+    beams = tuple(replace(beam, wavelength=Quantity("1070 nm", 1070e-9)) for beam in dysprosium.trap.beams)
+    published = caveats(replace(dysprosium, trap=replace(dysprosium.trap, beams=beams)))["published_polarizability"]
+    assert "one published for a wavelength 0.6 % away. A measured frequency can calibrate" in published[1]
     plan = preset("crossed_beams_rubidium")
     beams = tuple(replace(beam, wavelength=Quantity("796 nm", 796e-9)) for beam in plan.trap.beams)
     near, sentence = caveats(replace(plan, trap=replace(plan.trap, beams=beams)))["near_resonance"]

@@ -197,6 +197,10 @@ def test_strong_interaction_of_bosons(bosons: Maker) -> None:
     strong = found(solved)
     assert strong["dense"].value == pytest.approx(float(solved.peak_density) * 6e-8**3, rel=1e-12)
     assert strong["long_range_length"].value == pytest.approx(6e-8 / float(solved.thermal_wavelength), rel=1e-12)
+    warm = bosons(atoms=2e4, temperature=1e-6, scattering_length=6e-8)
+    assert float(warm.reduced_temperature) > 2.0
+    assert float(6e-8 / warm.thermal_wavelength) > 0.03
+    assert "long_range_length" not in found(warm)
     # An ideal condensate is far denser than a real one: only the thermal gas is judged.
     assert "dense" not in found(bosons(Model.IDEAL, **COLD))
 

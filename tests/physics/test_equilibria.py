@@ -201,6 +201,42 @@ def test_classical_limit_of_errors_and_collisions(bosons: Maker) -> None:
     )
 
 
+def quantum_boltzmann_rate(z: float) -> float:
+    """Collisions per atom of an ideal Bose gas in a harmonic trap by Monte Carlo over momenta: integral of
+    f1 f2 sigma |v1 - v2| (1 + f3)(1 + f4) over space, per atom, in sigma vbar/lambda^3."""
+    rng = np.random.default_rng(5)
+    count, narrow = 20_000, 0.3
+    t, weights = np.polynomial.legendre.leggauss(20)
+    met = atoms = 0.0
+    # U = t^2 kT; momenta of variance 1.
+    for root, weight in zip(1.6 * (t + 1.0), 1.6 * weights, strict=True):
+        p = rng.normal(size=(2, count, 3)) * rng.choice([1.0, narrow], (2, count, 1))
+        energy = 0.5 * np.sum(p * p, axis=-1)
+        drawn = 0.5 * (np.exp(-energy) + narrow**-3 * np.exp(-energy / narrow**2)) / (2.0 * math.pi) ** 1.5
+        filled = lambda e, U=root * root: 1.0 / np.expm1(e + U - math.log(z))  # noqa: E731
+        shares = filled(energy) / drawn
+        apart = np.linalg.norm(p[0] - p[1], axis=-1)
+        way = rng.normal(size=(count, 3))
+        way *= (0.5 * apart / np.linalg.norm(way, axis=-1))[:, np.newaxis]
+        after = [0.5 * np.sum((0.5 * (p[0] + p[1]) + sign * way) ** 2, axis=-1) for sign in (1.0, -1.0)]
+        enhanced = (1.0 + filled(after[0])) * (1.0 + filled(after[1]))
+        met += weight * root**2 * float(np.mean(shares[0] * shares[1] * apart * enhanced))
+        atoms += weight * root**2 * float(np.mean(shares))
+    return met / atoms / (2.0 * math.pi) ** 1.5 / math.sqrt(8.0 / math.pi)
+
+
+@pytest.mark.parametrize(("reduced", "more"), [(1.567, 1.07), (1.097, 1.27)])
+def test_bosons_near_threshold_collide_more_often_than_the_mean_rate_says(
+    bosons: Maker, reduced: float, more: float
+) -> None:
+    far = bosons(Model.IDEAL)
+    solved = bosons(Model.IDEAL, temperature=float(far.critical_temperature) * reduced)
+    speed = math.sqrt(8.0 * float(solved.thermal_energy) / (math.pi * solved.cloud.mass))
+    unit = float(solved.collision_cross_section) * speed / float(solved.thermal_wavelength) ** 3
+    rate = quantum_boltzmann_rate(math.exp(float(solved.log_fugacity))) * unit
+    assert rate / float(solved.elastic_collision_rate) == pytest.approx(more, abs=0.03)
+
+
 def test_errors_of_the_classical_formulas_follow_the_virial_series(bosons: Maker, fermions: Maker) -> None:
     # E/3NkT = 1 -/+ X/16, D = X +/- 0.22855 X^2, Robinson, Phys. Rev. 83, 678 (1951).
     for maker, sign in ((bosons, 1.0), (fermions, -1.0)):

@@ -32,12 +32,24 @@ def test_a_plain_cloud_with_known_losses_raises_none(bosons: Maker, fermions: Ma
 
 def test_what_is_not_given_is_noted(bosons: Maker, fermions: Maker) -> None:
     assert set(found(bosons(), {})) == {"no_background", "three_body_unknown"}
+    assert set(found(bosons(), {"background_lifetime": 60.0})) == {"three_body_unknown"}
     # One state of fermions has no three-body loss by s-waves that one would miss.
     assert set(found(fermions(), {})) == {"no_background"}
     assert all(caveat.severity is Severity.NOTE for caveat in found(bosons(), {}).values())
 
 
-@pytest.mark.parametrize(("name", "value"), [("two_body", 1e-20), ("three_body", 4e-41)])
+def test_of_losses_that_do_not_count_nothing_is_said(bosons: Maker) -> None:
+    thin = bosons(atoms=2e3, temperature=4e-6)
+    density = float(Rates(equilibrium=thin, losses=Losses()).triple_density)
+    assert "three_body_unknown" not in found(thin, {"background_lifetime": 0.01 / (1e-39 * density)})
+    assert "three_body_unknown" in found(thin, {"background_lifetime": 0.03 / (1e-39 * density)})
+    for share, noted in ((0.01, False), (0.03, True)):
+        losses = {"background_lifetime": share / (4e-41 * density), "three_body": 4e-41}
+        caveats = found(thin, losses, certainties={"three_body": Certainty.MEMORY})
+        assert ("three_body_recalled" in caveats) is noted
+
+
+@pytest.mark.parametrize(("name", "value"), [("two_body", 1e-20), ("three_body", 4e-40)])
 def test_recalled_constants_are_noted_and_seen_ones_not(bosons: Maker, name: str, value: float) -> None:
     losses = {**GIVEN, name: value}
     recalled = found(bosons(), losses, certainties={name: Certainty.MEMORY})

@@ -43,6 +43,7 @@ SAME = [
     "temperature_to_threshold",
     "atoms_to_threshold",
     "atoms_left_at_target",
+    "temperature_at_target",
     "peak_density",
     "mean_density",
     "thermal_radii",

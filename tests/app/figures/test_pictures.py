@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
+from pathlib import Path
+
 import numpy as np
 import pytest
 
+from app.answers.map import usual_limits
 from app.engine import Against, MapLimits, cloud_answer, map_answer, profile_answer, slices_answer
 from app.figures.map import SPLIT, map_picture, with_cloud
 from app.figures.picture import Axis, Picture, Role
 from app.figures.profile import Depth, profile_picture
 from app.figures.slices import slice_picture
 from app.figures.ticks import axis_title, ticks_of
-from app.plan import DEFAULT_PLAN, Plan, plan_with
+from app.plan import DEFAULT_PLAN, Plan, plan_with, read_plan
 
+TRAPS = Path(__file__).resolve().parents[3] / "presets" / "traps"
 LIMITS = MapLimits(atoms_low=1e3, atoms_high=1e7, temperature_low=1e-8, temperature_high=1e-5)
 FERMIONS = plan_with(DEFAULT_PLAN, {"species.key": "40K"})
 
@@ -103,6 +107,16 @@ def test_the_evaporation_of_constant_efficiency_ends_on_the_threshold() -> None:
     # gamma = -d ln D/d ln N with D = N (hbar w/kT)^3
     slope = np.diff(np.log(x / y**3)) / np.diff(np.log(x))
     assert slope == pytest.approx(-2.0)
+
+
+@pytest.mark.parametrize("name", ["crossed_beams_rubidium", "telecom_beams_helium", "single_beam_lithium"])
+def test_in_a_real_trap_it_ends_on_the_threshold_of_that_trap(name: str) -> None:
+    plan = read_plan(TRAPS / f"{name}.toml")
+    x, y = curve(map_picture(map_answer(plan, usual_limits(plan)), cloud_answer(plan)), Role.CLOUD)
+    assert (x[0], y[0]) == pytest.approx((plan.cloud.atoms.value, plan.cloud.temperature.value))
+    assert np.all(np.diff(np.log(y)) / np.diff(np.log(x)) > 0.3)
+    end = cloud_answer(plan_with(plan, {"cloud.atoms": f"{x[-1]:.12g}", "cloud.temperature": f"{y[-1]:.12g} K"}))
+    assert float(end.equilibrium.temperature_to_threshold) == pytest.approx(1.0, rel=1e-5)
 
 
 # --- slices ---
