@@ -25,6 +25,8 @@ if TYPE_CHECKING:
     from physics.evaporation_target import Target
     from physics.ramps import Control
 
+FIRST_ALONE = _("of the first species alone")
+
 CONDENSES = 2.6
 """Peak phase-space density of bosons from which a target is called condensation."""
 
@@ -344,6 +346,9 @@ def design_sentence(found: DesignAnswer) -> str:
             )
     else:
         template = _("Most atoms reach {aim} where {control} moves so that the truncation parameter stays at {held}.")
+    if found.answer.passenger is not None:
+        rest = _("η is chosen for the first species alone; what the ramp does has the passenger in it.")
+        template = f"{template} {rest}"
     others = ", ".join(found.others)
     return template.format(control=found.control.label, aim=goal, held=held.removesuffix(","), others=others)
 

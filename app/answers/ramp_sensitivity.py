@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -21,10 +22,15 @@ CHANGE = 0.1
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class SensitivityAnswer:
-    """change : relative, of every input. found : the strongest first."""
+    """change : relative, of every input. found : the strongest first. planned : atoms at the end without any change.
+
+    alone : whether the plan has a passenger, which is in none of these runs
+    """
 
     change: float
     found: tuple[RampSensitivity, ...]
+    planned: float
+    alone: bool
 
 
 def sensitivity_answer(plan: Plan, since: str | None = None, tick: Tick | None = None) -> SensitivityAnswer:
@@ -52,6 +58,7 @@ def _sensitivity(plan: Plan, since: str | None) -> SensitivityAnswer:
 
 
 def _worked_out(plan: Plan, since: str | None, tick: Tick | None) -> SensitivityAnswer:
+    from physics.evaporation import evaporate
     from physics.ramp_sensitivity import ramp_sensitivities
 
     require_collisions(plan)
@@ -69,4 +76,8 @@ def _worked_out(plan: Plan, since: str | None, tick: Tick | None) -> Sensitivity
         gas_of(plan), start.atoms, start.temperature, ramp, path,
         losses=losses_of(plan), target=target_of(plan), change=CHANGE, tick=tick,
     )  # fmt: skip
-    return SensitivityAnswer(change=CHANGE, found=found)
+    planned = evaporate(
+        gas_of(plan), start.atoms, start.temperature, ramp, path, losses=losses_of(plan), target=target_of(plan), rows=1
+    )
+    atoms = float(planned.atoms[-1]) if len(planned.atoms) else math.nan
+    return SensitivityAnswer(change=CHANGE, found=found, planned=atoms, alone=plan.passenger is not None)

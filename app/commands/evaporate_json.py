@@ -42,6 +42,7 @@ def evaporate_body(found: Evaporated) -> dict[str, Any]:
         body["reference"] = {"file": file, **ramp_body(other)}
     if found.sensitivity is not None:
         body["sensitivities"] = _sensitivities(found.sensitivity)
+        body["sensitivities_planned"] = _finite(found.sensitivity.planned)
     return body
 
 

@@ -9,6 +9,7 @@ import numpy as np
 
 from app.language import translate as _
 from app.ramp_words import (
+    FIRST_ALONE,
     LOSSES,
     PROCESSES,
     SIGNS,
@@ -54,10 +55,9 @@ def evaporate_text(found: Evaporated) -> str:
         blocks += _beside(found.answer, found.reference)
     if found.waypoints is not None:
         blocks.append(_waypoints(found.waypoints))
-        blocks.append(_departures(found.departures))
+        blocks.append(_departures(found.departures, alone=found.plan.passenger is not None))
     if found.sensitivity is not None:
-        planned = found.answer.run.final["atoms"] if found.answer is not None else math.nan
-        blocks.append(_sensitivity(found.sensitivity, planned))
+        blocks.append(_sensitivity(found.sensitivity))
     if found.answer is not None:
         blocks.append(_caveats(found.answer))
     blocks.append(list(cautions(found.plan.trap)))
@@ -241,12 +241,13 @@ def _widths(widths: tuple[float, float, float]) -> str:
     return " × ".join(number(1e6 * width, 3) for width in widths) + " µm"
 
 
-def _departures(found: tuple[DeparturesAnswer, ...]) -> list[str]:
+def _departures(found: tuple[DeparturesAnswer, ...], *, alone: bool) -> list[str]:
     """Atoms at the end for a cloud that is off at a waypoint, one row each."""
     if not found:
         return []
     errors = [f'"{source}"' for source in sorted({one.source for one in found}) if source]
     title = _("Atoms at the end, if the cloud is off at a waypoint by its measured error")
+    title = f"{title}, {FIRST_ALONE}" if alone else title
     lines = [_("{title} (that of {clouds})").format(title=title, clouds=", ".join(errors)) if errors else title]
     order = ((0, 0), (-1, 0), (1, 0), (0, -1), (0, 1))
     header = ("D", _("off by"), _("as planned"), _("N less"), _("N more"), _("T less"), _("T more"))
@@ -268,12 +269,12 @@ def _left(one: Departure, planned: Departure) -> str:
     return atoms if one.run.reason is planned.run.reason else f"{atoms}, {one.run.reason.label}"
 
 
-def _sensitivity(found: SensitivityAnswer, planned: float) -> list[str]:
-    change = percent(found.change)
-    rows = [(input_text(one), *change_text(one, planned)) for one in found.found]
+def _sensitivity(found: SensitivityAnswer) -> list[str]:
+    rows = [(input_text(one), *change_text(one, found.planned)) for one in found.found]
     header = ("", _("less"), _("more"))
+    title = _("Atoms at the end, with each input {change} less or more").format(change=percent(found.change))
     return [
-        _("Atoms at the end, with each input {change} less or more").format(change=change),
+        f"{title}, {FIRST_ALONE}" if found.alone else title,
         *columns([header, *rows], indent=2, right=(1, 2)),
     ]
 

@@ -6,17 +6,17 @@ import math
 from typing import Any
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QFrame, QLabel, QScrollArea, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
 
-from app.answers.ramp import kept_ramp
 from app.answers.ramp_jobs import ramp_depends_on, sensitivity_job
 from app.answers.ramp_sensitivity import CHANGE, SensitivityAnswer
 from app.figures.theme import LIGHT, Theme
 from app.newest import Steps
 from app.plan import Plan
-from app.ramp_words import change_text, input_text
+from app.ramp_words import FIRST_ALONE, change_text, input_text
 from app.widgets.effect_bar import EffectBar
 from app.widgets.fact_table import FactRow, FactTable
+from app.widgets.scrolled import fill_scrolled
 from app.words import percent
 from physics.ramp_sensitivity import RampSensitivity
 
@@ -44,14 +44,7 @@ class SensitivityView(QWidget):
         column.addWidget(self.sentence)
         column.addWidget(self.table)
         column.addStretch(1)
-        area = QScrollArea()
-        area.setFrameShape(QFrame.Shape.NoFrame)
-        area.setWidgetResizable(True)
-        area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-        area.setWidget(body)
-        outer = QVBoxLayout(self)
-        outer.setContentsMargins(0, 0, 0, 0)
-        outer.addWidget(area)
+        fill_scrolled(self, body)
 
     def set_plan(self, plan: Plan) -> None:
         self._plan = plan
@@ -69,12 +62,10 @@ class SensitivityView(QWidget):
             self.table.show_rows((), ())
             self.sentence.setText(f"{str(extra)[:1].upper()}{str(extra)[1:]}.")
         elif isinstance(extra, SensitivityAnswer):
-            answer = kept_ramp(plan)
-            planned = float(answer.run.atoms[-1]) if answer is not None and len(answer.run.time) else math.nan
-            self._show(extra, planned)
+            self._show(extra)
 
-    def _show(self, found: SensitivityAnswer, planned: float) -> None:
-        share = percent(CHANGE)
+    def _show(self, found: SensitivityAnswer) -> None:
+        share, planned = percent(CHANGE), found.planned
         rows = []
         for one in found.found:
             less, more = change_text(one, planned)
@@ -98,8 +89,9 @@ class SensitivityView(QWidget):
                 if first.changes_end
                 else f"a tenth of it changes the atoms at the end by {percent(abs(math.expm1(CHANGE * first.slope)))}"
             )
+            alone = f" Atoms {FIRST_ALONE}." if found.alone else ""
             self.sentence.setText(
-                f"What counts most: {input_text(first)}; {how}. Bars: filled for more, outlined for less of it."
+                f"What counts most: {input_text(first)}; {how}. Bars: filled for more, outlined for less of it.{alone}"
             )
 
     def stopped(self) -> None:

@@ -316,6 +316,23 @@ def test_a_passenger_in_the_table_and_from_a_measured_cloud(
     assert text.count("The passenger is left out: ") == 1
 
 
+def test_what_is_changed_is_held_against_runs_of_its_kind(
+    plan: str, capsys: pytest.CaptureFixture[str], tmp_path: Path
+) -> None:
+    # Sensitivities and departures have no passenger in them: neither has what they are held against.
+    with_one = tmp_path / "two.toml"
+    with_one.write_text(Path(plan).read_text(encoding="utf-8") + PASSENGER, encoding="utf-8")
+    alone = evaporate_json(capsys, plan, "--sensitivity")
+    both = evaporate_json(capsys, str(with_one), "--sensitivity")
+    assert alone["sensitivities_planned"] == pytest.approx(alone["final"]["atoms"], rel=1e-9)
+    assert both["sensitivities_planned"] == alone["sensitivities_planned"]
+    assert both["final"]["atoms"] != pytest.approx(alone["final"]["atoms"], rel=1e-3)
+    text = evaporate_text(capsys, str(with_one), "--sensitivity", "--waypoints")
+    assert "each input 10 % less or more, of the first species alone" in text
+    assert "by its measured error, of the first species alone" in text
+    assert "first species alone" not in evaporate_text(capsys, plan, "--sensitivity", "--waypoints")
+
+
 # --- what cannot be answered ---
 
 
