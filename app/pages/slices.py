@@ -6,8 +6,8 @@ from collections.abc import Callable
 from functools import partial
 from typing import Any
 
-from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QLabel, QMenu, QScrollArea, QToolButton, QWidget
+from PySide6.QtCore import Signal
+from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QLabel, QMenu, QToolButton, QWidget
 
 from app.engine import Against, SlicesAnswer, slices_answer
 from app.figures.slices import slice_picture
@@ -16,6 +16,7 @@ from app.plan import Plan
 from app.quantities import QUANTITIES, Group, Need, rows_in
 from app.widgets.page import Page
 from app.widgets.plot import Plot
+from app.widgets.scrolled import scrolled
 
 MOST = 4  # quantities at a time: more would be too small to read
 USUAL_BOSONS = ("peak_phase_space_density", "condensate_fraction")
@@ -52,13 +53,8 @@ class SlicesPage(Page):
         self._grid.setSpacing(0)
         body = QWidget()
         body.setLayout(self._grid)
-        area = QScrollArea()
-        area.setFrameShape(QScrollArea.Shape.NoFrame)
-        area.setWidgetResizable(True)
-        area.setWidget(body)
-        area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
         self.column.addLayout(options)
-        self.column.addWidget(area, 1)
+        self.column.addWidget(scrolled(body), 1)
         self.column.addWidget(self.bar)
         self._set_rows(self.chosen)
 

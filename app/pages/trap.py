@@ -7,7 +7,7 @@ from functools import cached_property, partial
 from typing import Any
 
 import numpy as np
-from PySide6.QtWidgets import QGridLayout, QLabel, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QGridLayout, QStackedWidget, QWidget
 
 from app.answers.trap import TrapAnswer, trap_answer
 from app.answers.trap_controls import Control, controls
@@ -28,6 +28,7 @@ from app.units import factor
 from app.widgets.empty_state import EmptyState
 from app.widgets.page import Page
 from app.widgets.plot import Plot
+from app.widgets.plot_heading import PlotHeading
 from app.widgets.trap_options import TrapOptions, TrapView
 from physics.constants import boltzmann
 
@@ -63,18 +64,12 @@ class TrapPage(Page):
         self._ground: _Ground | None = None
         self._plan: Plan | None = None
         self._offered: tuple[Control, ...] = ()
-        self.sentence, self.detail = QLabel(), QLabel()
-        self.detail.setObjectName("plotStatus")
-        for label in (self.sentence, self.detail):
-            label.setWordWrap(True)
+        heading = PlotHeading()
+        self.sentence, self.detail = heading.sentence, heading.detail
         self.options = TrapOptions()
         self.options.offer_planes(("xz", "yz", "xy"))
         self.options.changed.connect(self._choose)
-        heading = QVBoxLayout()
-        heading.setContentsMargins(14, 8, 14, 4)
-        heading.setSpacing(2)
-        for widget in (self.sentence, self.detail, self.options):
-            heading.addWidget(widget)
+        heading.addWidget(self.options)
         self.cuts = tuple(self.add_plot(f"Potential along line {place + 1}") for place in range(_MOST_CUTS))
         self.section = self.add_plot("Section of the potential")
         self.scans = tuple(self.add_plot(name) for name in ("Frequencies", "Depth", "Sag"))

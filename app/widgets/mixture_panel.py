@@ -8,15 +8,12 @@ from enum import Enum
 from functools import cached_property
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import Signal
 from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import (
     QButtonGroup,
-    QFrame,
     QHBoxLayout,
-    QLabel,
     QRadioButton,
-    QScrollArea,
     QStackedWidget,
     QVBoxLayout,
     QWidget,
@@ -29,7 +26,9 @@ from app.widgets.banner import Offer
 from app.widgets.caveats import Caveats
 from app.widgets.empty_state import EmptyState
 from app.widgets.fact_table import FactRow, FactTable
+from app.widgets.plot_heading import PlotHeading
 from app.widgets.ramp_plots import ColumnPlots
+from app.widgets.scrolled import scrolled
 
 if TYPE_CHECKING:
     from app.widgets.page import Page
@@ -59,17 +58,8 @@ class MixturePanel(QWidget):
 
     def __init__(self, page: Page) -> None:
         super().__init__()
-        self.sentence, self.detail = QLabel(), QLabel()
-        self.detail.setObjectName("plotStatus")
-        heading = QVBoxLayout()
-        heading.setContentsMargins(14, 8, 14, 4)
-        heading.setSpacing(2)
-        for label in (self.sentence, self.detail):
-            label.setWordWrap(True)
-            label.setTextInteractionFlags(
-                Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
-            )
-            heading.addWidget(label)
+        heading = PlotHeading()
+        self.sentence, self.detail = heading.sentence, heading.detail
         self.views = QButtonGroup(self)
         self._choice = QWidget()
         heading.addWidget(self._choice)
@@ -77,13 +67,14 @@ class MixturePanel(QWidget):
         self.profile = page.add_plot("The two clouds along the vertical")
         self.profile.canvas.setMinimumHeight(_LEAST_PLOT)
         self.table = FactTable("The two clouds in numbers")
-        self._scrolled = _scrolled(self.table)
+        self._table_area = scrolled(self.table)
+        self._table_area.setViewportMargins(8, 2, 4, 2)
         clouds = QWidget()
         column = QVBoxLayout(clouds)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(4)
         column.addWidget(self.profile.canvas, 5)
-        column.addWidget(self._scrolled, 4)
+        column.addWidget(self._table_area, 4)
         self.courses = ColumnPlots(page.add_plot, MIXTURE_COLUMNS)
         self.stack = QStackedWidget()
         for widget in (clouds, self.courses):
@@ -181,13 +172,3 @@ class MixturePanel(QWidget):
             next(iter(self.courses.plots.values())).canvas.setFocus()
         else:
             self.profile.canvas.setFocus()
-
-
-def _scrolled(widget: QWidget) -> QScrollArea:
-    area = QScrollArea()
-    area.setFrameShape(QFrame.Shape.NoFrame)
-    area.setWidgetResizable(True)
-    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-    area.setWidget(widget)
-    area.setViewportMargins(8, 2, 4, 2)
-    return area

@@ -9,13 +9,11 @@ from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import (
-    QFrame,
     QGridLayout,
     QHBoxLayout,
     QLabel,
     QLineEdit,
     QPushButton,
-    QScrollArea,
     QToolButton,
     QVBoxLayout,
     QWidget,
@@ -30,6 +28,7 @@ from app.ramp_choices import LONGEST_LABEL, MeasuredChoice
 from app.units import ATOM_NUMBER, CLOUD_WIDTH, TEMPERATURE, TIME, Kind, Quantity, best_unit, quantity
 from app.widgets.form import Choice
 from app.widgets.plan_editor import PlanEditor
+from app.widgets.scrolled import fill_scrolled
 from app.words import number
 
 if TYPE_CHECKING:
@@ -78,14 +77,7 @@ class MeasuredView(PlanEditor):
         self._column.addLayout(buttons)
         self._column.addWidget(self.sentence)
         self._column.addStretch(1)
-        area = QScrollArea()
-        area.setFrameShape(QFrame.Shape.NoFrame)
-        area.setWidgetResizable(True)
-        area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-        area.setWidget(body)
-        outer = QVBoxLayout(self)
-        outer.setContentsMargins(0, 0, 0, 0)
-        outer.addWidget(area)
+        fill_scrolled(self, body)
 
     # ---------------------------------------------------------------- showing
 

@@ -5,14 +5,12 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any, Protocol
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import Signal
 from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import (
     QButtonGroup,
-    QFrame,
     QHBoxLayout,
     QLabel,
-    QScrollArea,
     QSizePolicy,
     QStackedWidget,
     QToolButton,
@@ -26,12 +24,14 @@ from app.plan import Plan
 from app.widgets.banner import Offer
 from app.widgets.caveats import Caveats
 from app.widgets.empty_state import EmptyState
+from app.widgets.plot_heading import PlotHeading
 from app.widgets.ramp_design import DesignView
 from app.widgets.ramp_measured import MeasuredView
 from app.widgets.ramp_plots import ColumnPlots, ControlPlots
 from app.widgets.ramp_sensitivity import SensitivityView
 from app.widgets.ramp_stages import StageEditor
 from app.widgets.ramp_waypoints import WaypointsView
+from app.widgets.scrolled import scrolled
 from app.widgets.stage_table import StageTable
 
 if TYPE_CHECKING:
@@ -76,17 +76,8 @@ class RampPanel(QWidget):
         self.body = QVBoxLayout(self)
         self.body.setContentsMargins(0, 0, 0, 0)
         self.body.setSpacing(0)
-        self.sentence, self.detail = QLabel(), QLabel()
-        self.detail.setObjectName("plotStatus")
-        heading = QVBoxLayout()
-        heading.setContentsMargins(14, 8, 14, 2)
-        heading.setSpacing(2)
-        for label in (self.sentence, self.detail):
-            label.setWordWrap(True)
-            label.setTextInteractionFlags(
-                Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
-            )
-            heading.addWidget(label)
+        heading = PlotHeading(below=2)
+        self.sentence, self.detail = heading.sentence, heading.detail
         self.body.addLayout(heading)
         self.columns = ColumnPlots(page.add_plot)
         self.controls = ControlPlots(page.add_plot, page.remove_plot)
@@ -101,7 +92,8 @@ class RampPanel(QWidget):
         self.keep, self.drop = QToolButton(), QToolButton()
         self._make_reference_buttons()
         self.body.addLayout(self._switch)
-        self._under = _scrolled(self.table)
+        self._under = scrolled(self.table)
+        self._under.setViewportMargins(14, 2, 4, 2)
         self.body.addWidget(self.stack, 2)
         self.body.addWidget(self.empty, 1)
         self.body.addWidget(self.columns, 3)
@@ -274,13 +266,3 @@ class RampPanel(QWidget):
             self._extra[self.view].take_focus()
         else:
             next(iter(self.columns.plots.values())).canvas.setFocus()
-
-
-def _scrolled(widget: QWidget) -> QScrollArea:
-    area = QScrollArea()
-    area.setFrameShape(QFrame.Shape.NoFrame)
-    area.setWidgetResizable(True)
-    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-    area.setWidget(widget)
-    area.setViewportMargins(14, 2, 4, 2)
-    return area

@@ -8,14 +8,12 @@ from itertools import pairwise
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import (
-    QFrame,
     QGridLayout,
     QHBoxLayout,
     QLabel,
     QLineEdit,
     QMenu,
     QPushButton,
-    QScrollArea,
     QToolButton,
     QVBoxLayout,
     QWidget,
@@ -28,6 +26,7 @@ from app.units import DURATION
 from app.widgets.plan_editor import PlanEditor
 from app.widgets.quantity_field import QuantityField
 from app.widgets.ramp_stage_rows import MoveLine, TransferLine, given
+from app.widgets.scrolled import fill_scrolled
 from physics.ramps import Control, Knob
 
 _HEADINGS = ("", "Duration", "Control", "From", "To", "Shape", "Name", "")
@@ -78,10 +77,6 @@ class StageEditor(PlanEditor):
         self.buttons.addWidget(self.read_button)
         self._table = QWidget()
         self._grid = QGridLayout(self._table)
-        area = QScrollArea()
-        area.setFrameShape(QFrame.Shape.NoFrame)
-        area.setWidgetResizable(True)
-        area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
         body = QWidget()
         column = QVBoxLayout(body)
         column.setContentsMargins(14, 4, 10, 4)
@@ -91,10 +86,7 @@ class StageEditor(PlanEditor):
         column.addLayout(self.buttons)
         column.addWidget(self.caution)
         column.addStretch(1)
-        area.setWidget(body)
-        outer = QVBoxLayout(self)
-        outer.setContentsMargins(0, 0, 0, 0)
-        outer.addWidget(area)
+        fill_scrolled(self, body)
 
     # ---------------------------------------------------------------- showing
 

@@ -9,7 +9,7 @@ from collections.abc import Sequence
 from typing import Any
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QFrame, QGridLayout, QHBoxLayout, QLabel, QPushButton, QScrollArea, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
 from app.answers.ramp_jobs import departures_job, ramp_depends_on
 from app.answers.waypoints import EXPANSION_TIME, DeparturesAnswer, WaypointsAnswer, errors_at, waypoints_answer
@@ -24,6 +24,7 @@ from app.units import Quantity, best_unit, format_quantity, read_quantity
 from app.widgets.entry_field import EntryField
 from app.widgets.fact_table import FactRow, FactTable
 from app.widgets.quantity_field import QuantityField
+from app.widgets.scrolled import fill_scrolled
 from app.words import number, percent, temperature
 from physics.ramps import Control
 from physics.waypoints import Departure, Waypoint
@@ -114,14 +115,7 @@ class WaypointsView(QWidget):
         column.addWidget(self.sentence)
         column.addWidget(self.off)
         column.addStretch(1)
-        area = QScrollArea()
-        area.setFrameShape(QFrame.Shape.NoFrame)
-        area.setWidgetResizable(True)
-        area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-        area.setWidget(body)
-        outer = QVBoxLayout(self)
-        outer.setContentsMargins(0, 0, 0, 0)
-        outer.addWidget(area)
+        fill_scrolled(self, body)
 
     # ---------------------------------------------------------------- answers
 

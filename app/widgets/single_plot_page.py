@@ -5,14 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 from functools import cached_property
 
-from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLabel, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QStackedWidget, QVBoxLayout, QWidget
 
 from app.figures.theme import Theme
 from app.widgets.banner import Offer
 from app.widgets.empty_state import EmptyState
 from app.widgets.page import Page
 from app.widgets.plot import Source
+from app.widgets.plot_heading import PlotHeading
 
 
 class SinglePlotPage(Page):
@@ -23,17 +23,9 @@ class SinglePlotPage(Page):
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
         self.plot = self.add_plot(self.plot_name)
-        self.sentence, self.detail = QLabel(), QLabel()
-        self.detail.setObjectName("plotStatus")
-        for label in (self.sentence, self.detail):
-            label.setWordWrap(True)
-            label.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+        heading = PlotHeading()
+        self.sentence, self.detail = heading.sentence, heading.detail
         self.options = QVBoxLayout()
-        heading = QVBoxLayout()
-        heading.setContentsMargins(14, 8, 14, 4)
-        heading.setSpacing(2)
-        heading.addWidget(self.sentence)
-        heading.addWidget(self.detail)
         heading.addLayout(self.options)
         self._plotted = QWidget()
         column = QVBoxLayout(self._plotted)
