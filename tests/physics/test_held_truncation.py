@@ -7,12 +7,13 @@ from collections.abc import Callable
 
 import numpy as np
 import pytest
-from scipy.integrate import quad
-from scipy.optimize import minimize_scalar
+from scipy.integrate import quad, solve_ivp
+from scipy.optimize import brentq, minimize_scalar
 from scipy.special import gammainc
 
 from physics import truncated_boltzmann as cut
-from physics.constants import atomic_mass, boltzmann
+from physics.checks import Floats
+from physics.constants import atomic_mass, boltzmann, reduced_planck
 from physics.curve_shape import CurveShape
 from physics.evaporation_target import Target
 from physics.gas import Gas
@@ -223,6 +224,62 @@ def test_in_a_lowered_light_trap_the_collision_rate_always_falls(eta: float) -> 
     first, last = run.steps[2].start, run.steps[-1].start
     lower = last[2] - first[2]
     assert math.log(rates[-1] / rates[0]) / lower == pytest.approx(0.5 + light_exponent(eta), rel=1e-5)
+
+
+def test_a_held_run_with_losses_goes_to_its_quantum_target_as_an_integration_of_its_own() -> None:
+    # Held eta: U = eta kT, and one unknown, r = dlnT/dt = dlnU/dt, of the energy balance; the target by the sum over j
+    # of the cut Bose gas.
+    eta, wanted, lifetime, K3, heating = 10.0, 2.0, 20.0, 4e-41, 2e-8
+    frequency, depth, T0, N0 = 1500.0, boltzmann * 5e-4, 5e-5, 2e6
+    Z, j = float(gammainc(3.0, eta)), np.arange(1, 200)
+    mean = 3.0 * float(gammainc(4.0, eta)) / Z
+    V = eta - 4.0 * float(gammainc(4.0, eta)) / Z
+    carried = eta + 1.0 - float(gammainc(5.0, eta)) / Z / V
+    rim = eta**3 / 6.0 * math.exp(-eta) / Z
+    work = 1.5 * quad(lambda x: x**3 / 6.0 * math.exp(-x), 0.0, eta)[0] / Z
+
+    def triple(u: float) -> float:
+        return 2.0 / math.sqrt(math.pi) * math.sqrt(u) * (float(gammainc(1.5, eta - u)) * math.exp(-u)) ** 3
+
+    def energy(u: float) -> float:
+        return u + 1.5 * float(gammainc(2.5, eta - u) / gammainc(1.5, eta - u))
+
+    met = quad(triple, 0.0, eta)[0]
+    met_energy = quad(lambda u: triple(u) * energy(u), 0.0, eta)[0] / met
+
+    def angular(T: float) -> float:
+        return 2.0 * math.pi * frequency * math.sqrt(eta * boltzmann * T / depth)
+
+    def flow(_: float, y: Floats) -> list[float]:
+        N, T = math.exp(y[0]), math.exp(y[1])
+        kT = boltzmann * T
+        n = N / Z * (MASS * angular(T) ** 2 / (2.0 * math.pi * kT)) ** 1.5
+        K = MASS * kT * (5.3e-9 / reduced_planck) ** 2
+        factor = quad(lambda x: x * math.exp(-x) / (1.0 + K * x), 0.0, 60.0)[0]
+        speed = math.sqrt(8.0 * kT / (math.pi * MASS))
+        g = n * 8.0 * math.pi * 5.3e-9**2 * factor * speed * math.exp(-eta) * V
+        g3 = K3 * n * n * met / Z
+        rest = g * (carried / mean - 1.0) + g3 * (met_energy / mean - 1.0) - 3.0 * heating / (mean * T)
+        r = -rest / (1.0 - 1.5 * rim * (eta / mean - 1.0) - work / mean)
+        return [-(g + g3 + 1.0 / lifetime - 1.5 * rim * r), r]
+
+    def missing(_: float, y: Floats) -> float:
+        T = math.exp(y[1])
+        numbers = gammainc(3.0, j * eta) / j**3.0
+        x = math.exp(y[0]) * (reduced_planck * angular(T) / (boltzmann * T)) ** 3
+        z = brentq(lambda z: float(np.sum(numbers * z**j)) - x, 0.0, 1.0)
+        return wanted - float(np.sum(z**j * gammainc(1.5, j * eta) / j**1.5))
+
+    missing.terminal = True  # type: ignore[attr-defined]
+    own = solve_ivp(flow, (0.0, 2.0), [math.log(N0), math.log(T0)], events=missing, rtol=1e-8, atol=1e-9)
+    path = HarmonicPath(mass=MASS, trap=HarmonicTrap(frequencies=(frequency,) * 3, depth=depth))
+    losses = Losses(background_lifetime=lifetime, three_body=K3, heating=heating)
+    held = HeldKinetics(GAS, losses, line_of(path, SCALE, Limits()), Limits())
+    run = held.run(Law(start=eta), held.start(N0, T0), Target(peak_phase_space_density=wanted), 10.0)
+    assert run.reached
+    assert run.atoms == pytest.approx(math.exp(own.y[0, -1]), rel=5e-6)
+    assert run.energy / run.atoms / (mean * boltzmann) == pytest.approx(math.exp(own.y[1, -1]), rel=5e-6)
+    assert run.time == pytest.approx(own.t[-1], rel=1e-5)
 
 
 def test_a_drift_raises_the_truncation_with_each_decade() -> None:
