@@ -8,10 +8,12 @@ from dataclasses import dataclass
 
 import numpy as np
 import pytest
-from scipy.integrate import solve_ivp
+from scipy.integrate import quad, solve_ivp
+from scipy.optimize import brentq
+from scipy.special import gammainc
 
 from physics.checks import Floats
-from physics.constants import atomic_mass, bohr_radius, boltzmann
+from physics.constants import atomic_mass, bohr_radius, boltzmann, reduced_planck
 from physics.evaporation import Cancelled, EndReason, evaporate
 from physics.evaporation_rates import Process
 from physics.evaporation_target import Target
@@ -146,6 +148,95 @@ def test_relaxation_by_the_published_law() -> None:
     # k^2 a^2 is 1e-3 there.
     assert run.coolant.temperature == pytest.approx(exact[0], rel=1e-3)
     assert run.passenger.temperature == pytest.approx(exact[1], rel=1e-3)
+
+
+def test_evaporation_with_a_passenger_goes_as_an_integration_of_its_own() -> None:
+    # A knife comes down on the first gas; the second, in the same frequencies and hardly cut, follows. Mudrich et al.,
+    # Phys. Rev. Lett. 88, 253001 (2002), with the cross-section averaged over speeds by quadrature, and the balance
+    # of a cut cloud by the library's incomplete gamma functions.
+    a, a12, lifetime, duration = 5.3e-9, -200.0 * bohr_radius, 40.0, 3.0
+    high, low, deep = boltzmann * 5e-5, boltzmann * 1.5e-5, boltzmann * 2e-3
+    w = 2.0 * math.pi * np.array([120.0, 120.0, 60.0])
+    fall = math.log(low / high) / duration
+    xm, mr = 4.0 * HEAVY * LIGHT / (HEAVY + LIGHT) ** 2, HEAVY * LIGHT / (HEAVY + LIGHT)
+
+    def weighted(K: float, power: int) -> float:
+        def f(x: float) -> float:
+            return x**power * math.exp(-x) / (1.0 + K * x)
+
+        return float(quad(f, 0.0, 60.0)[0]) / math.factorial(power)
+
+    def truncation(share: float) -> float:
+        return float(brentq(lambda e: 3.0 * gammainc(4, e) / gammainc(3, e) / e - share, 1e-2, 1e5, xtol=1e-12))
+
+    def cut(N: float, E: float, depth: float, mass: float) -> tuple[float, float, float, float, float]:
+        """eta, kT, P(3, eta), n_ref, and the mean density over that of the uncut Gaussian."""
+        eta = truncation(E / N / depth)
+        kT, Z = depth / eta, float(gammainc(3, eta))
+        gauss = N * float(np.prod(w * np.sqrt(mass / (4.0 * math.pi * kT))))
+        n = gauss * 2.0**1.5 / Z
+
+        def pair(x: float) -> float:
+            return 2.0 / math.sqrt(math.pi) * math.sqrt(x) * (float(gammainc(1.5, eta - x)) * math.exp(-x)) ** 2
+
+        return eta, kT, Z, n, n * float(quad(pair, 0.0, min(eta, 40.0))[0]) / Z / gauss
+
+    def flow(t: float, y: Floats) -> list[float]:
+        N1, E1, N2, E2 = np.exp(y).tolist()
+        U = high * math.exp(fall * t)
+        eta, kT, Z, n, denser = cut(N1, E1, U, HEAVY)
+        _, kT2, _, _, denser2 = cut(N2, E2, deep, LIGHT)
+        spread = kT / HEAVY + kT2 / LIGHT
+        speed = math.sqrt(8.0 * spread / math.pi)
+        overlap = float(np.prod(w / np.sqrt(2.0 * math.pi * spread))) * math.sqrt(denser * denser2)
+        K = 2.0 * (mr * a12 / reduced_planck) ** 2 * spread
+        met = 4.0 * math.pi * a12**2 * speed * overlap
+        power = xm * (kT - kT2) * met * weighted(K, 2)
+        V = eta - 4.0 * float(gammainc(4, eta)) / Z
+        kappa = 1.0 - float(gammainc(5, eta)) / Z / V
+        sigma = 8.0 * math.pi * a * a * weighted(HEAVY * kT * (a / reduced_planck) ** 2, 1)
+        escape = math.exp(-eta) * V
+        evaporated = n * sigma * math.sqrt(8.0 * kT / (math.pi * HEAVY)) * escape
+        # As many collisions with the passenger as lift an atom, over those of its own kind, <n> sigma sqrt(2) v.
+        own = n / (denser * N1 * float(np.prod(w * np.sqrt(HEAVY / (4.0 * math.pi * kT)))))
+        evaporated += math.sqrt(xm) * N2 * met * weighted(K, 1) * own / math.sqrt(2.0) * escape
+        spilled = -3.0 * fall * eta**3 / 6.0 * math.exp(-eta) / Z
+        mean = E1 / N1
+        lost = -evaporated * (eta + kappa) * kT - spilled * U - mean / lifetime
+        return [
+            -(evaporated + spilled + 1.0 / lifetime),
+            (lost - N2 * power) / mean,
+            -1.0 / lifetime,
+            -1.0 / lifetime + N1 * power * N2 / E2,
+        ]
+
+    eta = 10.0
+    start = [2e6, 2e6 * 3.0 * float(gammainc(4, eta) / gammainc(3, eta)) * boltzmann * 5e-6]
+    start += [2e5, 2e5 * 3.0 * boltzmann * 9e-6]
+    own = solve_ivp(flow, (0.0, duration), np.log(start), method="LSODA", rtol=1e-6, atol=1e-7)
+    N1, E1, N2, E2 = np.exp(own.y[:, -1]).tolist()
+    frequencies = (120.0, 120.0, 60.0)
+    run = evaporate_with_passenger(
+        Gas(statistics=Statistics.BOSE, mass=HEAVY, scattering_length=a),
+        2e6,
+        5e-6,
+        Ramp(stages=(Stage(duration=duration, moves=(Move(control=DEPTH, end=low, shape=Shape.EXPONENTIAL),)),)),
+        HarmonicPath(mass=HEAVY, trap=HarmonicTrap(frequencies=frequencies, depth=high)),
+        Passenger(
+            gas=Gas(statistics=Statistics.FERMI, mass=LIGHT),
+            path=HarmonicPath(mass=LIGHT, trap=HarmonicTrap(frequencies=frequencies, depth=deep)),
+            atoms=2e5,
+            temperature=9e-6,
+            scattering_length=a12,
+            losses=Losses(background_lifetime=lifetime),
+        ),
+        losses=Losses(background_lifetime=lifetime),
+    )
+    assert run.coolant.atoms[-1] == pytest.approx(N1, rel=2e-5)
+    assert run.coolant.rows.energy[-1] == pytest.approx(E1, rel=2e-5)
+    assert run.passenger.atoms[-1] == pytest.approx(N2, rel=2e-5)
+    assert run.passenger.temperature[-1] == pytest.approx(E2 / (3.0 * boltzmann * N2), rel=2e-5)
+    assert run.passenger.temperature[-1] < 0.25 * 9e-6
 
 
 def test_equal_temperatures_stay_equal() -> None:
