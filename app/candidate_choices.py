@@ -11,6 +11,7 @@ from app.units import Quantity
 
 if TYPE_CHECKING:
     from app.choices import CloudChoice, SpeciesChoice
+    from app.plan import Plan
 
 
 class Basis(Enum):
@@ -58,15 +59,24 @@ class CandidateChoice:
 class CandidatesChoice:
     """Which species are compared, and in what.
 
+    basis : None: the usual one, see `basis_of`
     keys : species, each in all of its states; with no keys and no candidates, all that there are
     candidates : single states with conditions of their own
     start : what a same start is
     """
 
-    basis: Basis = Basis.SAME_FREQUENCIES
+    basis: Basis | None = None
     start: Start = Start.ATOMS_AND_TEMPERATURE
     keys: tuple[str, ...] = ()
     candidates: tuple[CandidateChoice, ...] = ()
+
+
+def basis_of(plan: Plan) -> Basis:
+    """In what the candidates of a plan are judged: as it says, or else in its light, or in its frequencies where those
+    are all that is known of its trap."""
+    if plan.candidates.basis is not None:
+        return plan.candidates.basis
+    return Basis.SAME_FREQUENCIES if plan.trap.harmonic else Basis.SAME_LIGHT
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -21,7 +21,8 @@ CANDIDATES_FIELDS = by_name(
             label="Compared at",
             entry=Entry.CHOICE,
             options=tuple(Basis),
-            tip="What is the same for all: the trap frequencies, the light, or the start.",
+            tip="What is the same for all: the trap frequencies, the light, or the start; usually the light where "
+            "there are beams or coils.",
         ),
         PlanField(
             path="candidates.start",

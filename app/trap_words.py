@@ -191,10 +191,10 @@ def mode_rows(answer: TrapAnswer) -> list[tuple[str, str]]:
     ]
 
 
-def frequencies_text(answer: TrapAnswer) -> str:
+def frequencies_text(answer: TrapAnswer, digits: int = 4) -> str:
     """The three frequencies; "–" without."""
     frequencies = answer.survey.frequencies
-    return "–" if frequencies is None else " × ".join(number(float(f), 4) for f in frequencies) + " Hz"
+    return "–" if frequencies is None else " × ".join(number(float(f), digits) for f in frequencies) + " Hz"
 
 
 def depth_text(answer: TrapAnswer) -> str:

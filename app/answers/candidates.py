@@ -20,7 +20,7 @@ from app.answers.inputs import cloud_of, values_of
 from app.answers.part import part
 from app.answers.trap import trap_answer
 from app.answers.trap_inputs import surveyed_trap
-from app.candidate_choices import Basis, CandidateChoice, Start
+from app.candidate_choices import Basis, CandidateChoice, Start, basis_of
 from app.candidate_columns import USUAL_COLUMNS
 from app.choices import SpeciesChoice
 from app.language import translate as _
@@ -104,7 +104,7 @@ def candidates_answer(
     rows: list[CandidateRow] = []
 
     def answer() -> CandidatesAnswer:
-        return CandidatesAnswer(basis=choice.basis, start=choice.start, rows=tuple(rows), expected=len(candidates))
+        return CandidatesAnswer(basis=basis_of(plan), start=choice.start, rows=tuple(rows), expected=len(candidates))
 
     last = time.monotonic()
     for candidate in candidates:
@@ -139,7 +139,7 @@ class _Frame:
 
 
 def _frame(plan: Plan) -> _Frame:
-    basis, harmonic = plan.candidates.basis, plan.trap.harmonic
+    basis, harmonic = basis_of(plan), plan.trap.harmonic
     if basis is Basis.SAME_LIGHT and harmonic:
         raise PlanError(
             "the same light needs a trap of beams or coils, and the trap of this plan is given by its frequencies",
@@ -185,7 +185,7 @@ def _plan_of(plan: Plan, candidate: CandidateChoice, frame: _Frame) -> Plan:
     if candidate.field is not None or candidate.scattering_length is not None:
         species = replace(species, field=candidate.field, scattering_length=candidate.scattering_length)
     put = replace(plan, species=species, losses=losses, trap=frame.trap)
-    same_cloud = plan.candidates.basis is Basis.SAME_START and frame.density is None
+    same_cloud = basis_of(plan) is Basis.SAME_START and frame.density is None
     atoms = plan.cloud.atoms if same_cloud else candidate.atoms or plan.cloud.atoms
     temperature = plan.cloud.temperature if same_cloud else candidate.temperature or plan.cloud.temperature
     put = replace(put, cloud=replace(plan.cloud, atoms=atoms, temperature=temperature))

@@ -29,7 +29,9 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
     parser = verbs.add_parser("compare", help=text, description=text[0].upper() + text[1:] + ".")
     add_plan_arguments(parser, without=_OWN)
     parser.add_argument(
-        "--basis", metavar="BASIS", help='"same frequencies", "same light" or "same start"; the plan\'s without it'
+        "--basis",
+        metavar="BASIS",
+        help='"same frequencies", "same light" or "same start"; the plan\'s without it, usually the light of its beams',
     )
     parser.add_argument(
         "--start",

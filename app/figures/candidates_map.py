@@ -17,14 +17,26 @@ from app.language import translate as _
 _MOST_NAMED = 3
 """Species that a label names; more are counted."""
 
-_WIDTH, _HEIGHT = 0.011, 0.07
-"""Half the width of a character, and the height of a line, about, as shares of the axes."""
+_WIDTH = 0.011
+"""Half the width of a character, about, as a share of the axis."""
+
+_USUAL_LINE = 0.07
+"""Height of a line of text as a share of the axis, where that is not known."""
+
+_LEGIBLE = 0.55
+"""How far, in heights of a text, a label has to be from lines that it does not belong to."""
+
+_SIDES = (1, -1)
+"""Over a line, or under it."""
 
 
-def thresholds_picture(thresholds: Thresholds, cloud: CloudAnswer, starts: Sequence[CandidateRow] = ()) -> Picture:
+def thresholds_picture(
+    thresholds: Thresholds, cloud: CloudAnswer, starts: Sequence[CandidateRow] = (), *, text_height: float = _USUAL_LINE
+) -> Picture:
     """A line for each threshold, solid for bosons, broken for fermions, the plan's own species in ink.
 
     starts : rows whose clouds begin elsewhere than the plan's own
+    text_height : of one line, as a share of the axes' height: lines too close for it go without labels
     """
     atoms, hot = float(cloud.plan.cloud.atoms.value), float(cloud.plan.cloud.temperature.value)
     x = Axis(
@@ -67,42 +79,67 @@ def thresholds_picture(thresholds: Thresholds, cloud: CloudAnswer, starts: Seque
         # The plan's own last, so that no other lies on it.
         curves=tuple(sorted(curves, key=lambda curve: curve.role not in (Role.FIRST, Role.SECOND))),
         marks=tuple(marks),
-        labels=_labels(thresholds, cloud, x, y),
+        labels=_labels(thresholds, cloud, x, y, text_height),
         summary=_summary(thresholds),
         note="" if thresholds.lines else _("no candidate has a threshold"),
     )
 
 
-def _labels(thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis) -> tuple[Label, ...]:
-    """A label on each line, where it is furthest from those that stand already; that of the plan's own first."""
+def _labels(thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis, high: float) -> tuple[Label, ...]:
+    """A label over or under each line, where it is furthest from those that stand already and from other lines; that of
+    the plan's own first. Lines rise: over one, a label ends where it belongs; under one, it begins there. A line that
+    others crowd goes without, but for the plan's own."""
     taken: list[tuple[float, float, float]] = [
         (_share(x, float(cloud.plan.cloud.atoms.value)), _share(y, float(cloud.plan.cloud.temperature.value)), 0.02)
     ]
     labels = []
+    across = np.array([_share(x, float(atoms)) for atoms in thresholds.atoms])
+    heights = {id(line): np.log(line.temperature / y.low) / math.log(y.high / y.low) for line in thresholds.lines}
     for line in sorted(thresholds.lines, key=lambda line: _role(line, cloud) in (Role.FIRST, Role.SECOND)):
         text = line_text(line)
         reach = _WIDTH * (len(text) + 1)
+        own = heights[id(line)]
+        others = [height for height in heights.values() if height is not own]
         places = [
-            (_share(x, float(atoms)), _share(y, float(hot)), float(atoms), float(hot))
-            for atoms, hot in zip(thresholds.atoms[2:-2], line.temperature[2:-2], strict=True)
-            if math.isfinite(hot)
+            (
+                _clearance(u, v, reach, taken, high),
+                _free(u, v, reach, across, others) / high,
+                k,
+                side,
+                u,
+                v,
+            )
+            for k in range(2, len(across) - 2)
+            if math.isfinite(own[k])
+            for side in _SIDES
+            for u, v in ((float(across[k]) - side * reach, float(own[k]) + side * 0.6 * high),)
         ]
         if not places:
             continue
-        best = max(places, key=lambda place: _clearance(place[0], place[1], reach, taken))
-        taken.append((best[0], best[1], reach))
-        labels.append(Label(text=text, role=_role(line, cloud), x=best[2], y=best[3]))
+        clear, free, k, side, u, v = max(places, key=lambda place: place[0] + min(place[1], 1.0))
+        if (clear < 1.0 or free < _LEGIBLE) and _role(line, cloud) in (Role.FIRST, Role.SECOND):
+            continue
+        taken.append((u, v, reach))
+        there = float(thresholds.atoms[k]), float(line.temperature[k])
+        labels.append(Label(text=text, role=_role(line, cloud), x=there[0], y=there[1], side=-side, lift=side))
     return tuple(labels)
+
+
+def _free(u: float, v: float, reach: float, across: Array, lines: Sequence[Array]) -> float:
+    """How far the middle of a label is from the nearest of other lines, as a share of the axis."""
+    ends = np.searchsorted(across, (u - reach, u, u + reach)).clip(0, len(across) - 1)
+    gaps = [float(np.nanmin(np.abs(line[ends] - v), initial=1.0)) for line in lines]
+    return min([1.0, *gaps])
 
 
 def _share(axis: Axis, value: float) -> float:
     return math.log(value / axis.low) / math.log(axis.high / axis.low)
 
 
-def _clearance(u: float, v: float, reach: float, taken: Sequence[tuple[float, float, float]]) -> float:
+def _clearance(u: float, v: float, reach: float, taken: Sequence[tuple[float, float, float]], high: float) -> float:
     """How far a place is from the labels that stand, in the room that they need, and from the ends of the axis; no more
     than is needed counts."""
-    others = (max(abs(u - x) / (reach + other), abs(v - y) / _HEIGHT) for x, y, other in taken)
+    others = (max(abs(u - x) / (reach + other), abs(v - y) / high) for x, y, other in taken)
     return min(1.3, min(u, 1.0 - u) / reach, *others)
 
 

@@ -13,6 +13,7 @@ Box = tuple[float, float, float, float]
 MARK_RADIUS = 7.0  # kept free around a mark [pt]
 EDGE = 3.0  # least distance to the frame [pt]
 SIDE_GAP = 5.0  # between a place and a text beside it [pt]
+LIFT_GAP = 2.0  # between a place and a text over or under it [pt]
 
 
 def place_labels(
@@ -32,7 +33,8 @@ def place_labels(
     for label in picture.labels:
         x, y = _place(picture, label.x, label.y, width, height)
         w, h = measure(label.text)
-        x += label.side * (0.5 * w + SIDE_GAP)
+        x += label.side * (0.5 * w + (0.0 if label.lift else SIDE_GAP))
+        y += label.lift * (0.5 * h + LIFT_GAP)
         if not (0.0 <= x <= width and 0.0 <= y <= height and w + 2 * EDGE <= width and h + 2 * EDGE <= height):
             continue
         x = min(max(x, 0.5 * w + EDGE), width - 0.5 * w - EDGE)

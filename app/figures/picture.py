@@ -116,13 +116,15 @@ class Mark:
 @dataclass(frozen=True, kw_only=True)
 class Label:
     """A short text at a place in data coordinates, such as the value of a contour line: its middle is there; with a
-    `side` of 1 it begins just right of the place, of -1 it ends just left of it."""
+    `side` of 1 it begins just right of the place, of -1 it ends just left of it; with a `lift` of 1 it stands just over
+    the place, of -1 just under it."""
 
     text: str
     role: Role
     x: float
     y: float
     side: int = 0
+    lift: int = 0
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -22,6 +22,9 @@ _OVER, _UNDER = 1.2, 0.05
 _ABOVE = 0.055
 """Distance of a label from the line that it names, in parts of the plot's height."""
 
+_HALF_A_LINE = 0.06
+"""Half the height of a label, in parts of the plot's height."""
+
 _BELOW = 0.13
 """Distance of a label from the mark above it, in parts of the plot's height."""
 
@@ -100,7 +103,16 @@ def cut_picture(shape: TrapShape, cut: Cut, levels: CloudLevels) -> Picture:
             level = energy_of / kelvin
             curves.append(Curve(name="", role=role, x=np.array([left, right]), y=np.array([level, level])))
             text = _("{name} {T}").format(name=name, T=temperature(energy_of / boltzmann))
-            labels.append(Label(text=text, role=role, x=right if side > 0 else left, y=level, side=side))
+            # Beside the curves even where the top of the text meets them.
+            top_of_text = energy_of + _HALF_A_LINE * height * kelvin
+            edges = [
+                _turning_points(cut.distance, potential, top_of_text, x, metre)
+                for potential in (cut.energy, cut.harmonic)
+            ]
+            outer = [ends[int(side > 0)] for ends in edges] + [right if side > 0 else left]
+            inside = [place for place in outer if x.low < place < x.high]
+            place = max(inside, default=right) if side > 0 else min(inside, default=left)
+            labels.append(Label(text=text, role=role, x=place, y=level, side=side))
     curves.append(Curve(name="", role=Role.FIRST, x=s, y=shown))
     marks: tuple[Mark, ...] = ()
     if cut.escape is not None and x.low < cut.escape / metre < x.high:

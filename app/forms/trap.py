@@ -38,6 +38,7 @@ _FACTS = {
 }
 _MADE = "made.frequencies"
 _PENDING = "…"
+_DIGITS_IN_A_LINE = 3  # of three frequencies beside each other; the Trap page has them with more
 _THIN, _FIXED = "\N{NARROW NO-BREAK SPACE}", "\N{NO-BREAK SPACE}"
 
 
@@ -175,22 +176,24 @@ class TrapForm(Form):
         """Say what follows from beams and coils; an answer to another trap than the plan's is left alone."""
         if self._plan is None or self._plan.trap.harmonic or self._plan.trap != answer.trap:
             return
-        from app.trap_words import fact_texts, reason_no_frequencies, reason_not_trapped
+        from app.trap_words import fact_texts, frequencies_text, reason_no_frequencies, reason_not_trapped
 
         self._answer = answer
         reason = reason_not_trapped(answer) or reason_no_frequencies(answer)
         texts = fact_texts(answer)
+        brief = {"frequencies": frequencies_text(answer, _DIGITS_IN_A_LINE)} if answer.trapped else {}
         for name in _FACTS:
-            self._show_fact(name, texts.get(name, ""))
+            in_full = texts.get(name, "")
+            self._show_fact(name, brief.get(name, in_full), in_full)
             self.show_row(f"made.{name}", name in texts)
         self.show_note(_MADE, f"{reason[0].upper()}{reason[1:]}." if reason else "")
         self._mark_facts(stale=False)
 
-    def _show_fact(self, name: str, text: str) -> None:
+    def _show_fact(self, name: str, text: str, in_full: str = "") -> None:
         # In a narrow column a line ends after a sign, never before a unit.
         shown = text.replace(" × ", f"{_THIN}×{_THIN}\N{ZERO WIDTH SPACE}").replace(" Hz", f"{_FIXED}Hz")
         self.facts[name].setText(shown)
-        self.facts[name].setAccessibleDescription(text)
+        self.facts[name].setAccessibleDescription(in_full or text)
 
     def _mark_facts(self, *, stale: bool) -> None:
         """Facts of another trap than the one that is typed are quiet until those of this one are there."""

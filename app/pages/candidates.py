@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
@@ -13,7 +14,7 @@ from app.answers.candidate_evaporation import EvaporationResult, evaporate_rows,
 from app.answers.candidate_row import CandidateRow
 from app.answers.candidate_thresholds import Thresholds, thresholds_of
 from app.answers.candidates import CandidatesAnswer, candidates_answer, candidates_of
-from app.candidate_choices import Basis
+from app.candidate_choices import Basis, basis_of
 from app.candidate_columns import COLUMNS, USUAL_COLUMNS
 from app.candidate_csv import candidates_csv
 from app.candidate_memory import CandidateMemory, memory_from
@@ -38,6 +39,7 @@ from app.widgets.detail import Detail
 from app.widgets.single_plot_page import SinglePlotPage
 from app.widgets.species_dialog import SpeciesDialog
 
+_AROUND_MAP = 6.0  # what is above and below the map of thresholds, in lines of text
 _LINES_AROUND, _LINE = 7.5, 1.25  # of a ranking: what is above and below its rows, and a row, in lines of text
 HINT = _("Return, or a double click in the table, uses a species")
 
@@ -149,7 +151,7 @@ class CandidatesPage(SinglePlotPage):
     # ---------------------------------------------------------------- the answer
 
     def part(self, plan: Plan) -> Job | None:
-        if plan.candidates.basis is Basis.SAME_LIGHT and plan.trap.harmonic:
+        if basis_of(plan) is Basis.SAME_LIGHT and plan.trap.harmonic:
             self._show_no_light()
             return None
         depends_on = _what_candidates_depend_on(plan)
@@ -186,7 +188,7 @@ class CandidatesPage(SinglePlotPage):
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
-        self.choices.show_basis(cloud.plan.candidates.basis, cloud.plan.candidates.start)
+        self.choices.show_basis(basis_of(cloud.plan), cloud.plan.candidates.start)
         if self.isVisible() and self._found is not None:
             self._show()
 
@@ -257,7 +259,12 @@ class CandidatesPage(SinglePlotPage):
         key = (tuple(id(row.cloud) for row in self._rows), cloud.plan.cloud.atoms.value)
         if self._thresholds is None or self._thresholds[0] != key:
             self._thresholds = key, thresholds_of(self._rows, cloud.plan.cloud.atoms.value)
-        return thresholds_picture(self._thresholds[1], cloud, self._rows)
+        text = 0.85 * self.plot.canvas.fontMetrics().height()
+        room = max(self.plot.canvas.height() - _AROUND_MAP * text, 2.0 * text)
+        # In coarse steps, so that labels do not wander while the window is resized.
+        return thresholds_picture(
+            self._thresholds[1], cloud, self._rows, text_height=2.0 ** round(math.log2(text / room))
+        )
 
     def _chart(self, units: Mapping[str, str]) -> Picture:
         name = self._order_name or self.names[0]
@@ -344,7 +351,7 @@ class CandidatesPage(SinglePlotPage):
         basis, start = BASES[place]
         plan = self.cloud.plan
         choice = replace(plan.candidates, basis=basis, start=start)
-        if choice != plan.candidates:
+        if choice != replace(plan.candidates, basis=basis_of(plan)):
             self.plan_edited.emit(replace(plan, candidates=choice), _("basis of the comparison"), "")
 
     def ask_species(self) -> None:

@@ -10,7 +10,7 @@ import numpy as np
 
 from app.engine import CloudAnswer
 from app.figures.ticks import raised
-from app.quantities import QUANTITIES, Need, Row
+from app.quantities import QUANTITIES, Group, Need, Row
 from app.units import best_unit
 from app.words import range_text, reason_missing, row_tip, shown_unit, symbol_of, value_text
 
@@ -48,12 +48,12 @@ _OTHER_GASES = frozenset({Need.BOSONS, Need.FERMIONS, Need.ATTRACTIVE, Need.DIPO
 
 
 def readings_of(answer: CloudAnswer, chosen_units: Mapping[str, str]) -> dict[str, Reading]:
-    """What the readouts show of an answer: quantities of other gases are left out, and those that lack an
-    input say so."""
+    """What the readouts show of an answer: quantities of other gases are left out, as is the comparison with a harmonic
+    trap where the trap is one, and those that lack an input say so."""
     readings = {}
     for name, row in QUANTITIES.items():
         need = answer.missing(row)
-        if need in _OTHER_GASES:
+        if need in _OTHER_GASES or (need is Need.REAL_TRAP and row.group is Group.HARMONIC):
             continue
         if need is not None:
             readings[name] = Reading(symbol_of(row, answer), "–", reason=reason_missing(need))

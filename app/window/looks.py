@@ -73,6 +73,8 @@ def style_sheet_of(theme: Theme) -> str:
         QLineEdit[invalid="true"] {{ border-color: {theme.error}; }}
         QToolButton#formTitle {{ border: none; padding: 0px; }}
         QToolButton:checked {{ background: {theme.accent}; color: {theme.base}; border-radius: 3px; }}
+        QToolButton[popupMode="2"] {{ padding-right: 13px; }}
+        QToolButton::menu-indicator {{ subcontrol-origin: padding; subcontrol-position: center right; right: 2px; }}
         QRadioButton::indicator {{ width: 11px; height: 11px; border: 1px solid {theme.muted}; border-radius: 6px;
                                    background: {theme.base}; }}
         QRadioButton::indicator:checked {{ border: 4px solid {theme.accent}; width: 5px; height: 5px; }}

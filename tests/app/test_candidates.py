@@ -16,7 +16,7 @@ from app.answers.candidate_evaporation import EvaporationResult, best_evaporatio
 from app.answers.candidate_row import CandidateRow, Failure
 from app.answers.candidates import CandidatesAnswer, candidates_answer, candidates_of
 from app.answers.cloud import cloud_answer
-from app.candidate_choices import Basis, CandidateChoice, CandidatesChoice, Start
+from app.candidate_choices import Basis, CandidateChoice, CandidatesChoice, Start, basis_of
 from app.candidate_columns import COLUMNS, USUAL_COLUMNS, Part
 from app.plan import DEFAULT_PLAN, Plan, PlanError, SpeciesChoice, parse_plan, plan_with, read_plan
 from app.process import Stopped
@@ -34,6 +34,18 @@ def compared(plan: Plan, **choice: object) -> CandidatesAnswer:
     answer = candidates_answer(replace(plan, candidates=CandidatesChoice(**choice)))  # type: ignore[arg-type]
     assert answer is not None
     return answer
+
+
+@pytest.mark.parametrize(
+    ("plan", "usual"), [(DEFAULT_PLAN, Basis.SAME_FREQUENCIES), (read_plan(LIGHT), Basis.SAME_LIGHT)]
+)
+def test_candidates_are_compared_in_the_light_where_there_is_any(plan: Plan, usual: Basis) -> None:
+    assert basis_of(plan) is usual
+    assert compared(plan, keys=("87Rb",)).basis is usual
+    asked = replace(plan, candidates=CandidatesChoice(basis=Basis.SAME_START))
+    assert basis_of(asked) is Basis.SAME_START
+    frequencies = replace(plan, candidates=CandidatesChoice(basis=Basis.SAME_FREQUENCIES, keys=("87Rb",)))
+    assert compared_as_it_is(frequencies).basis is Basis.SAME_FREQUENCIES
 
 
 def compared_as_it_is(plan: Plan) -> CandidatesAnswer:

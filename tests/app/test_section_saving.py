@@ -186,7 +186,7 @@ def test_other_species_change_where_they_stand() -> None:
 
 def test_a_header_that_says_what_is_usual_stays() -> None:
     text = TEXT.replace('basis = "same start"    # as asked\nkeys = ["87Rb", "41K"]\n', "# all of them\n")
-    assert parse_plan(text, "a.toml").candidates.basis is Basis.SAME_FREQUENCIES
+    assert parse_plan(text, "a.toml").candidates.basis is None
     plan = parse_plan(text, "a.toml")
     one = replace(plan, candidates=replace(plan.candidates, candidates=()))
     assert "[candidates]\n# all of them\n" in saved(one, text)

@@ -17,7 +17,8 @@ from app.candidate_order import SCORE, read_weight, score_rows
 from app.figures.candidates_chart import ranked_picture
 from app.figures.candidates_map import line_near, thresholds_picture
 from app.figures.draw import picture_bytes
-from app.figures.picture import Role
+from app.figures.labels import place_labels
+from app.figures.picture import Axis, Label, Picture, Role
 from app.figures.theme import DARK, LIGHT
 from app.plan import DEFAULT_PLAN
 from app.units import ATOM_NUMBER, TEMPERATURE, read_quantity
@@ -47,6 +48,29 @@ def test_in_the_same_frequencies_two_lines_say_all(rows: tuple[CandidateRow, ...
     near = line_near(thresholds, 1e5, 138e-9)
     assert near is bosons
     assert line_near(thresholds, 1e5, 1e-6) is None
+
+
+def test_labels_stand_off_the_lines_and_crowded_lines_go_without(rows: tuple[CandidateRow, ...]) -> None:
+    few = thresholds_of(rows, 1e5)
+    for label in thresholds_picture(few, cloud_answer(DEFAULT_PLAN)).labels:
+        assert (label.side, label.lift) in ((-1, 1), (1, -1))  # lines rise to the right
+    scaled = [replace(line, temperature=line.temperature * 1.02**k) for k in range(6) for line in few.lines]
+    crowded = replace(few, lines=tuple(scaled))
+    roomy = thresholds_picture(crowded, cloud_answer(DEFAULT_PLAN), text_height=0.002).labels
+    tight = thresholds_picture(crowded, cloud_answer(DEFAULT_PLAN), text_height=0.2).labels
+    assert len(roomy) == 12
+    assert 0 < len([label for label in tight if label.role is Role.THRESHOLD]) < 12
+    assert not [label for label in tight if label.role is Role.SECOND]
+
+
+def test_a_lifted_label_touches_its_place_with_one_edge() -> None:
+    axis = Axis(label="", unit="", low=0.0, high=1.0)
+    picture = Picture(title="", x=axis, y=axis, labels=tuple(
+        Label(text=str(lift), role=Role.FIRST, x=0.5, y=0.5, side=-lift, lift=lift) for lift in (1, -1)
+    ))  # fmt: skip
+    (_, x_over, y_over), (_, x_under, y_under) = place_labels(picture, 200.0, 100.0, lambda text: (40.0, 10.0))
+    assert (x_over, x_under) == (80.0, 120.0)
+    assert y_over - 5.0 > 50.0 > y_under + 5.0
 
 
 def test_other_starts_are_marked(rows: tuple[CandidateRow, ...]) -> None:

@@ -204,6 +204,9 @@ def test_the_basis_is_part_of_the_plan(compared: MainWindow, settle: Settle) -> 
     compared.document.stack.undo()
     settle(compared)
     assert page.choices.basis.currentText() == "same frequencies"
+    step = compared.document.stack.index()
+    page.choices.basis.activated.emit(0)  # as it is: nothing to be undone
+    assert compared.document.stack.index() == step
 
 
 def test_without_light_the_same_light_says_what_to_do(compared: MainWindow, settle: Settle) -> None:

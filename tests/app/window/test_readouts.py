@@ -1,12 +1,14 @@
 """Readouts: every quantity with its unit, copied as it is read, explained without a mouse."""
 
 from collections.abc import Callable
+from pathlib import Path
 
 import pytest
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QAbstractItemModelTester, QTest
 
+from app.plan import read_plan
 from app.quantities import QUANTITIES
 from app.widgets.form import plan_with_entry
 from app.widgets.readings import Reading, printed_unit
@@ -14,6 +16,7 @@ from app.widgets.readout_model import ReadoutModel
 from app.window.main_window import MainWindow
 
 Settle = Callable[[MainWindow], None]
+BEAMS = Path(__file__).resolve().parents[3] / "presets" / "traps" / "crossed_beams_rubidium.toml"
 
 
 def select(window: MainWindow, name: str) -> None:
@@ -44,6 +47,17 @@ def test_the_model_keeps_the_rules_of_item_models(qapp) -> None:
     model.show_readings({"fermi_energy": Reading("EF", "1", "µK")}, lambda name: "")
     assert model.rowCount() == 1
     tester.deleteLater()
+
+
+def test_a_harmonic_trap_is_not_set_beside_itself(window: MainWindow, settle: Settle) -> None:
+    model = window.desk.readouts._model
+    assert "harmonic" not in model.table_text()
+    window.document.edit(read_plan(BEAMS), "plan")
+    settle(window)
+    assert "reduced temperature (harmonic)\tT/Tc" in model.table_text()
+    assert "In the harmonic trap of these frequencies" in [
+        model.index(row, 0).data() for row in range(model.rowCount())
+    ]
 
 
 def test_bosons_and_fermions_have_their_own_quantities(window: MainWindow, settle: Settle) -> None:

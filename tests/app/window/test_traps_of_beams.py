@@ -38,6 +38,8 @@ def test_its_numbers_stand_where_the_fields_were(window: MainWindow, settle: Set
         sag_text(answer),
     ]
     assert all(fact.isVisible() for fact in facts)
+    line = trap.made_frequencies.fontMetrics().height()
+    assert trap.made_frequencies.height() < 2 * line  # at the bench's usual width
     assert not any(field.isVisible() for field in fields)
     assert not window.desk.verdict.stale
     for page in window.desk.pages:
