@@ -91,7 +91,8 @@ def require_collisions(plan: Plan) -> None:
 
 
 def measured_cloud(plan: Plan, label: str) -> MeasuredCloud:
-    """The measured cloud of that label; case and spaces do not matter.
+    """The measured cloud of that label; case and spaces do not matter. "after stage 3" is also the one cloud that was
+    measured there, whatever it is called.
 
     Raises
     ------
@@ -103,10 +104,13 @@ def measured_cloud(plan: Plan, label: str) -> MeasuredCloud:
         return " ".join(text.split()).casefold()
 
     found = [choice for choice in plan.measured if plain(choice.label) == plain(label)]
+    stage = stage_named(label)
+    if not found and stage is not None:
+        found = [choice for choice in plan.measured if choice.stage == stage]
     if len(found) == 1:
         return measured_clouds(replace(plan, measured=tuple(found)))[0]
     if found:
-        raise PlanError(f'two measured clouds are called "{label}"')
+        raise PlanError(f'"{label}" may be two measured clouds or more: give them different labels')
     known = ", ".join(f'"{choice.label}"' for choice in plan.measured)
     what = f"the plan has {known}" if known else "the plan has none: give it [[measured]]"
     raise PlanError(f'no measured cloud is called "{label}"; {what}')

@@ -159,7 +159,7 @@ def test_what_cannot_be_answered_says_so(plan: Plan) -> None:
     with pytest.raises(PlanError, match=r"the plan has none: give it \[\[measured\]\]"):
         ramp_answer(replace(plan, measured=()), "tomorrow")
     twice = replace(plan, measured=(*plan.measured, plan.measured[0]))
-    with pytest.raises(PlanError, match="two measured clouds are called"):
+    with pytest.raises(PlanError, match='"after stage 2" may be two measured clouds or more'):
         ramp_answer(twice, "after stage 2")
     unknown = parse_plan((HEAD + STAGES).replace('"87Rb"', '"6Li"').replace('state = "F=1 mF=-1"\n', ""), "a.toml")
     asked = replace(unknown, species=replace(unknown.species, spin_components=2))
@@ -168,6 +168,14 @@ def test_what_cannot_be_answered_says_so(plan: Plan) -> None:
 
 
 # --- from a measured cloud ---
+
+
+def test_a_cloud_is_found_by_the_stage_after_which_it_was_measured(plan: Plan) -> None:
+    renamed = replace(plan, measured=(replace(plan.measured[0], label="a good shot"),))
+    assert renamed.measured[0].stage == 2
+    assert ramp_answer(renamed, "after stage 2").run.final == ramp_answer(renamed, "A good shot").run.final
+    with pytest.raises(PlanError, match='no measured cloud is called "after stage 1"'):
+        ramp_answer(renamed, "after stage 1")
 
 
 def test_going_on_from_the_simulated_cloud_is_the_same_ramp(plan: Plan) -> None:
