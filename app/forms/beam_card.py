@@ -14,14 +14,14 @@ from app.plan import BEAM_FIELDS, BeamChoice, Plan, PlanError
 from app.trap_choices import require_name
 from app.trap_edits import with_beam
 from app.units import Quantity
-from app.widgets.card import CardHead, bring_into_view
+from app.widgets.card import bring_into_view
 from app.widgets.entry_field import EntryField
-from app.widgets.form import Form
+from app.widgets.folding_form import FoldingForm
 
-_CARD, _NAME, _WAIST, _SECOND = "card", "name", "waist", "second waist"
+_NAME, _WAIST, _SECOND = "name", "waist", "second waist"
 
 
-class BeamCard(Form):
+class BeamCard(FoldingForm):
     """Shows the beam of one name, and edits it. Signals: duplicate_wanted(name), move_wanted(name, step),
     removal_wanted(name), for the form that holds the cards."""
 
@@ -30,13 +30,8 @@ class BeamCard(Form):
     removal_wanted = Signal(str)
 
     def __init__(self, parent: QWidget | None = None) -> None:
-        super().__init__("Beam", parent)
+        super().__init__("Beam", parent, switch=True)
         self.beam: BeamChoice | None = None
-        self.heading.hide()
-        self.head = CardHead("Beam", switch=True)
-        self._grid.addWidget(self.head, 0, 0, 1, 2)
-        self._grid.addWidget(self._add_messages(_CARD)[1], 1, 0, 1, 2)
-        self._row = 2
         self.wavelength = self.add_quantity(BEAM_FIELDS["wavelength"], "", put=self._put("wavelength"))
         self.power = self.add_quantity(BEAM_FIELDS["power"], "", put=self._put("power"))
         self.waist = self.add_quantity(BEAM_FIELDS["waist"], "", key=_WAIST, put=self._put_waist)
@@ -55,7 +50,6 @@ class BeamCard(Form):
         name = BEAM_FIELDS["name"]
         self.add_entry(_NAME, name.label, "", self.name_field, name.tip, self._put("name"))
         self._fill_menu()
-        self.head.folded_changed.connect(self.set_unfolded)
         self.head.switched.connect(self._switch)
         self.set_unfolded(False)
 
@@ -77,17 +71,8 @@ class BeamCard(Form):
     def name(self) -> str:
         return "" if self.beam is None else self.beam.name
 
-    @property
-    def unfolded(self) -> bool:
-        return self.head.unfolded
-
-    def set_unfolded(self, unfolded: bool) -> None:
-        """Show or hide the fields; one with something wrong in it can always be seen."""
-        unfolded = unfolded or bool(self.problems)
-        self.head.set_unfolded(unfolded)
-        for key in self._labels:
-            self.show_row(key, unfolded)
-        self._show_summary()
+    def summary_text(self) -> str:
+        return "" if self.beam is None else summary(self.beam)
 
     def show_beam(self, plan: Plan, beam: BeamChoice) -> None:
         """The beam of the plan that this card is for."""
@@ -115,26 +100,8 @@ class BeamCard(Form):
         for field, place in zip(self.focus, beam.focus, strict=True):
             field.set_quantity(place)
         self.m2.set_quantity(beam.m2)
-        self.show_problem(_CARD, "")
+        self.refuse("")
         self._show_summary()
-
-    def _show_summary(self) -> None:
-        if self.beam is None:
-            return
-        self.head.set_summary("" if self.unfolded else summary(self.beam))
-
-    def show_problem(self, key: str, sentence: str) -> None:
-        super().show_problem(key, sentence)
-        if sentence and not self.unfolded:
-            self.set_unfolded(True)
-
-    def refuse(self, sentence: str) -> None:
-        """Say why something cannot be done with the beam."""
-        self.show_problem(_CARD, sentence)
-
-    def take_focus(self) -> None:
-        self.head.fold.setFocus(Qt.FocusReason.OtherFocusReason)
-        bring_into_view(self)
 
     def rename(self) -> None:
         """Give the keyboard to the name."""

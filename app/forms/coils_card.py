@@ -6,21 +6,19 @@ from collections.abc import Callable
 from dataclasses import replace
 from functools import partial
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QWidget
 
 from app.forms.vector_field import DirectionField
 from app.plan import COILS_FIELDS, CoilsChoice, Plan, PlanError
 from app.units import Quantity
-from app.widgets.card import CardHead, bring_into_view
-from app.widgets.form import Form
+from app.widgets.folding_form import FoldingForm
 
-_CARD = "card"
 _NUMBERS = ("bias", "gradient", "curvature", "levitation", "knife")
 _LABELS = {"knife": "RF knife"}  # short enough for the column of labels
 
 
-class CoilsCard(Form):
+class CoilsCard(FoldingForm):
     """Shows the coils of the plan, and edits them. removal_wanted() is for the form that holds the card."""
 
     removal_wanted = Signal()
@@ -28,11 +26,6 @@ class CoilsCard(Form):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__("Coils", parent)
         self.owner = " of the coils"
-        self.heading.hide()
-        self.head = CardHead("Coils")
-        self._grid.addWidget(self.head, 0, 0, 1, 2)
-        self._grid.addWidget(self._add_messages(_CARD)[1], 1, 0, 1, 2)
-        self._row = 2
         self.numbers = {
             name: self.add_quantity(COILS_FIELDS[name], "", label=_LABELS.get(name, ""), key=name, put=self._put(name))
             for name in _NUMBERS
@@ -45,48 +38,22 @@ class CoilsCard(Form):
         x, y, z = (partial(self._put_centre, place) for place in range(3))
         self.centre = self.add_place(COILS_FIELDS["centre"], "centre", (x, y, z))
         self.head.add_action("&Remove", self.removal_wanted.emit, card=self)
-        self.head.folded_changed.connect(self.set_unfolded)
         self.set_unfolded(False)
 
-    @property
-    def unfolded(self) -> bool:
-        return self.head.unfolded
-
-    def set_unfolded(self, unfolded: bool) -> None:
-        """Show or hide the fields; one with something wrong in it can always be seen."""
-        unfolded = unfolded or bool(self.problems)
-        self.head.set_unfolded(unfolded)
-        for key in self._labels:
-            self.show_row(key, unfolded)
-        self._show_summary()
+    def summary_text(self) -> str:
+        coils = None if self._plan is None else self._plan.trap.coils
+        return "" if coils is None else summary(coils)
 
     def show_plan(self, plan: Plan) -> None:
         coils = plan.trap.coils
         assert coils is not None  # else the card is hidden
-        self.show_problem(_CARD, "")
+        self.refuse("")
         for name, field in self.numbers.items():
             field.set_quantity(getattr(coils, name))
         self.axis.set_value(coils.axis)
         for field, place in zip(self.centre, coils.centre, strict=True):
             field.set_quantity(place)
         self._show_summary()
-
-    def _show_summary(self) -> None:
-        coils = None if self._plan is None else self._plan.trap.coils
-        self.head.set_summary("" if coils is None or self.unfolded else summary(coils))
-
-    def show_problem(self, key: str, sentence: str) -> None:
-        super().show_problem(key, sentence)
-        if sentence and not self.unfolded:
-            self.set_unfolded(True)
-
-    def refuse(self, sentence: str) -> None:
-        """Say why something cannot be done with the coils."""
-        self.show_problem(_CARD, sentence)
-
-    def take_focus(self) -> None:
-        self.head.fold.setFocus(Qt.FocusReason.OtherFocusReason)
-        bring_into_view(self)
 
     def _put(self, name: str) -> Callable[[Plan, object], Plan]:
         return lambda plan, value: _with_coils(plan, **{name: value})

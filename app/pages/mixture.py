@@ -6,8 +6,8 @@ from dataclasses import dataclass, replace
 from functools import cached_property, partial
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QEvent, QObject, Qt
-from PySide6.QtGui import QKeyEvent, QShowEvent
+from PySide6.QtCore import QEvent, QObject
+from PySide6.QtGui import QShowEvent
 from PySide6.QtWidgets import QWidget
 
 from app.engine import CloudAnswer
@@ -17,6 +17,7 @@ from app.newest import Job, Steps, Watch
 from app.plan import Plan
 from app.widgets.banner import Offer
 from app.widgets.page import Page
+from app.widgets.time_keys import moved_time
 
 if TYPE_CHECKING:
     from app.answers.mixture import MixtureAnswer
@@ -316,24 +317,20 @@ class MixturePage(Page):
 
     def eventFilter(self, watched: QObject, event: QEvent) -> bool:
         """Left and right arrow keys on a plot along the ramp move the time that is read; Escape ends that."""
-        if event.type() == QEvent.Type.KeyPress and self._built and isinstance(event, QKeyEvent):
-            steps = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}.get(Qt.Key(event.key()), 0)
-            shift = event.modifiers() == Qt.KeyboardModifier.ShiftModifier
-            plain = event.modifiers() in (Qt.KeyboardModifier.NoModifier, Qt.KeyboardModifier.KeypadModifier)
-            if steps and (plain or shift) and any(p.canvas is watched for p in self.panel.courses.plots.values()):
-                self._step_time(steps * (10 if shift else 1))
-                return True
-            if event.key() == Qt.Key.Key_Escape and self.reading is not None:
-                self.read_time(None)
-                return True
-        return super().eventFilter(watched, event)
+        if not self._built or event.type() != QEvent.Type.KeyPress:
+            return super().eventFilter(watched, event)
+        on_plot = any(plot.canvas is watched for plot in self.panel.courses.plots.values())
+        moved = moved_time(event, self.reading, self._end, on_plot=on_plot)
+        if moved is None:
+            return super().eventFilter(watched, event)
+        self.read_time(moved.time)
+        return True
 
-    def _step_time(self, steps: int) -> None:
-        if self.sympathetic is None or not len(self.sympathetic.run.coolant.time):
-            return
-        end = float(self.sympathetic.run.coolant.time[-1])
-        here = self.reading if self.reading is not None else (0.0 if steps > 0 else end)
-        self.read_time(min(max(here + 0.01 * steps * end, 0.0), end))
+    @property
+    def _end(self) -> float | None:
+        """End of what is shown. [s] None where there is no ramp."""
+        run = None if self.sympathetic is None else self.sympathetic.run.coolant
+        return float(run.time[-1]) if run is not None and len(run.time) else None
 
 
 def _sentence(clause: str) -> str:

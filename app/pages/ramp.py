@@ -6,8 +6,8 @@ from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QEvent, QObject, Qt
-from PySide6.QtGui import QKeyEvent, QShowEvent
+from PySide6.QtCore import QEvent, QObject
+from PySide6.QtGui import QShowEvent
 from PySide6.QtWidgets import QWidget
 
 from app.engine import CloudAnswer
@@ -18,6 +18,7 @@ from app.plan import Plan
 from app.widgets.banner import Offer
 from app.widgets.pace import Pace
 from app.widgets.page import Page
+from app.widgets.time_keys import moved_time
 
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
@@ -415,24 +416,20 @@ class RampPage(Page):
 
     def eventFilter(self, watched: QObject, event: QEvent) -> bool:
         """Left and right arrow keys on a plot of the cloud move the time that is read."""
-        if event.type() == QEvent.Type.KeyPress and self._built and isinstance(event, QKeyEvent):
-            steps = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}.get(Qt.Key(event.key()), 0)
-            shift = event.modifiers() == Qt.KeyboardModifier.ShiftModifier
-            plain = event.modifiers() in (Qt.KeyboardModifier.NoModifier, Qt.KeyboardModifier.KeypadModifier)
-            if steps and (plain or shift) and any(plot.canvas is watched for plot in self.panel.columns.plots.values()):
-                self._step_cursor(steps * (10 if shift else 1))
-                return True
-            if event.key() == Qt.Key.Key_Escape and self.reading is not None:
-                self.read_time(None)
-                return True
-        return super().eventFilter(watched, event)
+        if not self._built or event.type() != QEvent.Type.KeyPress:
+            return super().eventFilter(watched, event)
+        on_plot = any(plot.canvas is watched for plot in self.panel.columns.plots.values())
+        moved = moved_time(event, self.reading, self._end, on_plot=on_plot)
+        if moved is None:
+            return super().eventFilter(watched, event)
+        self.read_time(moved.time)
+        return True
 
-    def _step_cursor(self, steps: int) -> None:
-        if self.cloud is None or self.answer is None or not len(self.answer.run.time):
-            return
-        end = float(self.answer.run.time[-1])
-        here = self.reading if self.reading is not None else (0.0 if steps > 0 else end)
-        self.read_time(min(max(here + 0.01 * steps * end, 0.0), end))
+    @property
+    def _end(self) -> float | None:
+        """End of what is shown. [s] None where there is no ramp."""
+        run = None if self.cloud is None or self.answer is None else self.answer.run
+        return float(run.time[-1]) if run is not None and len(run.time) else None
 
     # ---------------------------------------------------------------- dragging ends of stages
 
