@@ -18,7 +18,7 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 from enum import Enum
 from types import MappingProxyType
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Protocol, TypeVar
 
 import numpy as np
 
@@ -177,7 +177,17 @@ def caveats_of(
     return gravest_first(found)
 
 
-def gravest_first(caveats: Iterable[Caveat]) -> tuple[Caveat, ...]:
+class Weighed(Protocol):
+    """A caveat of any kind."""
+
+    @property
+    def severity(self) -> Severity: ...
+
+
+_AnyCaveat = TypeVar("_AnyCaveat", bound=Weighed)
+
+
+def gravest_first(caveats: Iterable[_AnyCaveat]) -> tuple[_AnyCaveat, ...]:
     """Caveats in the order in which they are to be read."""
     gravest = list(Severity)[::-1]
     return tuple(sorted(caveats, key=lambda caveat: gravest.index(caveat.severity)))

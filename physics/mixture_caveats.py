@@ -75,12 +75,6 @@ _FERMI = 0.5
 _Found = Iterator[MixtureCaveat]
 
 
-def gravest_first(found: Iterator[MixtureCaveat]) -> tuple[MixtureCaveat, ...]:
-    """Caveats by their weight."""
-    order = tuple(Severity)[::-1]
-    return tuple(sorted(found, key=lambda caveat: order.index(caveat.severity)))
-
-
 def between_caveats(between: PairLength) -> _Found:
     """Of the scattering length between the two."""
     kinds = MixtureCaveatKind

@@ -9,7 +9,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from enum import Enum
 
-from physics.caveats import Severity
+from physics.caveats import Severity, gravest_first
 from physics.evaporation import Evaporation
 from physics.evaporation_rates import Process
 from physics.ramp_extremes import RampExtremes
@@ -74,9 +74,7 @@ def ramp_caveats(run: Evaporation, extremes: RampExtremes, *, one_way_out: bool 
     extremes : RampExtremes. Of that run.
     one_way_out : whether hot atoms get out in few directions only.
     """
-    found = (*_kinetics(extremes, one_way_out), *_losses(run, extremes))
-    order = tuple(Severity)[::-1]
-    return tuple(sorted(found, key=lambda caveat: order.index(caveat.severity)))
+    return gravest_first((*_kinetics(extremes, one_way_out), *_losses(run, extremes)))
 
 
 def _kinetics(extremes: RampExtremes, one_way_out: bool) -> Iterator[RampCaveat]:

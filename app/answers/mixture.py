@@ -13,12 +13,11 @@ from app.answers.part import part
 from app.answers.passenger import between_of, frequencies_caveat, passenger_plan, vertical_of
 from app.answers.trap import trap_answer
 from app.plan_field import PlanError
-from physics.caveats import Severity
+from physics.caveats import Severity, gravest_first
 from physics.mixture_caveats import (
     MixtureCaveat,
     MixtureCaveatKind,
     between_caveats,
-    gravest_first,
     mixture_caveats,
 )
 from physics.mixtures import Mixture, Place
@@ -105,7 +104,7 @@ def mixture_answer(plan: Plan) -> MixtureAnswer:
         mixture=mixture,
         between=between,
         own_trap=own_trap,
-        caveats=gravest_first(iter(caveats)),
+        caveats=gravest_first(caveats),
         reason=reason,
     )
 

@@ -12,13 +12,12 @@ import numpy as np
 from app.answers.passenger import between_of, frequencies_caveat, passenger_of, passenger_plan, vertical_of
 from app.answers.ramp_inputs import gas_of, losses_of, path_of, state_of, target_of
 from app.plan_field import PlanError
-from physics.caveats import Severity
+from physics.caveats import Severity, gravest_first
 from physics.constants import boltzmann
 from physics.mixture_caveats import (
     MixtureCaveat,
     MixtureCaveatKind,
     between_caveats,
-    gravest_first,
     sympathetic_caveats,
 )
 from physics.pair_scattering import PairLength
@@ -125,7 +124,7 @@ def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> S
         states=(state_of(plan), state_of(own)),
         run=run,
         between=between,
-        caveats=gravest_first(iter([*between_caveats(between), *caveats, *sympathetic_caveats(run)])),
+        caveats=gravest_first([*between_caveats(between), *caveats, *sympathetic_caveats(run)]),
     )
 
 

@@ -7,12 +7,13 @@ import math
 import numpy as np
 import pytest
 
+from physics.caveats import gravest_first
 from physics.cloud import Cloud, equilibrium
 from physics.constants import atomic_mass, bohr_radius, boltzmann
 from physics.equilibria import Equilibrium
 from physics.interspecies import PairCollisions
 from physics.miscibility import Mixing
-from physics.mixture_caveats import MixtureCaveatKind, between_caveats, gravest_first, mixture_caveats
+from physics.mixture_caveats import MixtureCaveatKind, between_caveats, mixture_caveats
 from physics.mixtures import Mixture, Place
 from physics.pair_scattering import PairLength, WhyNoLength
 from physics.particles import Certainty, Statistics
