@@ -7,7 +7,6 @@ References
 ----------
 [1] O. J. Luiten, M. W. Reynolds, J. T. M. Walraven, Phys. Rev. A 53, 381 (1996).
 [2] T. Weber, J. Herbig, M. Mark, H.-C. Naegerl, R. Grimm, Phys. Rev. Lett. 91, 123201 (2003): heating by loss.
-[3] R. Dubessy et al., Phys. Rev. A 85, 013643 (2012): the heat that spin flips leave in a quadrupole. Recalled.
 """
 
 from __future__ import annotations
@@ -21,16 +20,12 @@ from physics.constants import boltzmann
 from physics.gas import Gas
 from physics.kinetic_tables import Averages
 from physics.light_heating import pointing_heating_power
-from physics.losses import Losses, noise_heating_rate, usual_spin_flip_rate
+from physics.losses import FLIPPED_ENERGY, Losses, noise_heating_rate, usual_spin_flip_rate
 from physics.runge_kutta import OutOfRange
 from physics.stage_trap import TrapNow
 
 LOWEST_TRUNCATION = 0.1
 """eta below which a cloud counts as no longer trapped."""
-
-FLIPPED_ENERGY = 2.5
-"""Energy over kT of an atom that is lost at the zero of a quadrupole [3]: it passes at the bottom, where it has only
-kinetic energy, and as often as its speed times the area where its spin does not follow, which grows as the speed."""
 
 FEWEST_ATOMS = 100.0
 """Atom number at which all counts as lost: the kinetics is one of many atoms."""

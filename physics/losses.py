@@ -12,6 +12,7 @@ References
 [4] T. A. Savard, K. M. O'Hara, J. E. Thomas, Phys. Rev. A 56, R1095 (1997): heating by noise of a laser's intensity.
 [5] W. Petrich, M. H. Anderson, J. R. Ensher, E. A. Cornell, Phys. Rev. Lett. 74, 3352 (1995): loss at the zero of a
     quadrupole. Recalled.
+[6] R. Dubessy et al., Phys. Rev. A 85, 013643 (2012): the heat that spin flips leave in a quadrupole. Recalled.
 """
 
 from __future__ import annotations
@@ -32,6 +33,9 @@ SCALING_CEILING = 201.0
 FLIP_COEFFICIENTS = (0.16, 1.85)
 """The least and the largest factor quoted for the loss at a quadrupole's zero. Recalled: an order of magnitude. [5]"""
 
+FLIPPED_ENERGY = 2.5
+"""Energy over kT of an atom that is lost there [6]: it passes at the bottom, where it has only kinetic energy, and as
+often as its speed times the area where its spin does not follow, which grows as the speed."""
 
 _UNITS = {
     "two_body": "m^3/s",

@@ -24,7 +24,14 @@ from physics.constants import boltzmann
 from physics.equilibria import Equilibrium, quantity
 from physics.light_heating import harmonic_heating_rate, pointing_heating_power
 from physics.loss_integrals import energies_of_lost_atoms, two_and_three_body_densities
-from physics.losses import Losses, noise_heating_rate, scaling_ceiling, spin_flip_rates, unitary_ceiling
+from physics.losses import (
+    FLIPPED_ENERGY,
+    Losses,
+    noise_heating_rate,
+    scaling_ceiling,
+    spin_flip_rates,
+    unitary_ceiling,
+)
 from physics.particles import Statistics
 from physics.real_equilibria import RealEquilibrium
 from physics.statistics import zeta
@@ -158,7 +165,8 @@ class Rates:
         """dT/dt of a cloud without a condensate that stays in equilibrium while it loses atoms. [K/s] [2]
 
         Lost atoms carry less than their share of the energy: (T/4) K2 <n> + (T/3) K3 <n^2> of a classical cloud. From
-        a degenerate one, background loss changes T also: it cools bosons and heats fermions [3]. NaN with a condensate.
+        a degenerate one, background loss changes T also: it cools bosons and heats fermions [3]. Spin flips at a zero
+        take cold atoms: 4/9 of their rate times T, in a quadrupole. NaN with a condensate.
         """
         T = self.equilibrium.cloud.temperature
         two, three = self._energies_of_lost_atoms
@@ -166,6 +174,7 @@ class Rates:
             self.background_loss_rate * (self._energy_of_another - self._mean_energy),
             self.two_body_loss_rate * (self._energy_of_another - two),
             self.three_body_loss_rate * (self._energy_of_another - three),
+            self.spin_flip_loss_rate * (self._energy_of_another - np.minimum(FLIPPED_ENERGY, self._mean_energy)),
         )
         rate: Floats = T * _sum_of_known(*taken) / self._heat_capacity
         if self.losses.recombination_heat is not None:

@@ -17,9 +17,9 @@ from physics.checks import Floats
 from physics.constants import atomic_mass, boltzmann, reduced_planck
 from physics.curve_shape import CurveShape
 from physics.evaporation import evaporate
-from physics.evaporation_rates import FLIPPED_ENERGY, Process
+from physics.evaporation_rates import Process
 from physics.gas import Gas
-from physics.losses import Losses, spin_flip_rates
+from physics.losses import FLIPPED_ENERGY, Losses, spin_flip_rates
 from physics.particles import Statistics
 from physics.ramp_shapes import Shape
 from physics.ramps import Control, Knob, Move, Ramp, Stage

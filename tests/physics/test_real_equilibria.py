@@ -151,6 +151,15 @@ def test_a_quadrupole_has_no_frequencies_and_what_needs_them_is_unknown() -> Non
         _ = RealTrap(mass=MASS, curve=CurveShape(), held=1e-29, volume=1e-15, frequencies=[1.0, 2.0])
 
 
+def test_spin_flips_at_the_zero_of_a_quadrupole_heat_as_published() -> None:
+    # Dubessy et al., Phys. Rev. A 85, 013643 (2012), recalled: T^2 grows evenly, dT/dt = (4/9) Gamma T: atoms of
+    # 5/2 kT leave a cloud of 9/2 kT an atom.
+    trap = quadrupole_trap(30.0 * KELVIN * 1e-5, 1e-23)
+    cloud = solved(BOSON, trap, atoms=1e4, temperature=1e-5)
+    rates = Rates(equilibrium=cloud, losses=Losses(zero_force=1e-23))
+    assert rates.loss_heating_rate == pytest.approx(4.0 / 9.0 * 1e-5 * float(rates.spin_flip_loss_rate), rel=1e-4)
+
+
 def test_fermions_beyond_the_levels_of_the_trap_have_no_answer() -> None:
     depth = 2e-6 * KELVIN
     trap = harmonic_trap(depth)
