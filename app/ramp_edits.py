@@ -6,6 +6,7 @@ A stage has a place, counted from 0. What cannot be raises PlanError with one se
 from __future__ import annotations
 
 import math
+from bisect import bisect_left
 from collections.abc import Mapping
 from dataclasses import replace
 
@@ -13,7 +14,7 @@ from app.answers.ramp_inputs import path_of
 from app.control_kinds import CONTROL_KINDS
 from app.plan import Plan
 from app.ramp_choices import Handing, MoveChoice, StageChoice
-from app.trap_choices import TrapChoice
+from app.trap_choices import BeamChoice, TrapChoice
 from app.units import (
     DEPTH,
     DURATION,
@@ -33,6 +34,9 @@ from physics.ramps import Control, Knob
 USUAL_DURATION = "5 s"
 USUAL_SHARE = 0.1
 """Of a control at the end of a usual ramp, over that at its start."""
+
+_HIGHER_SHARES = (0.125, 0.16, 0.2, 0.25, 0.32, 0.4, 0.5, 0.63, 0.8)
+"""Shares of the light to which it is lowered where gravity leaves too little of the trap at the usual one."""
 
 USUAL_TRUNCATION = 10.0
 """Depth over kT at the start of a usual ramp where the trap's own depth is not known."""
@@ -78,7 +82,8 @@ def end_of(move: MoveChoice, standing: float, duration: float) -> float:
 
 
 def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
-    """An exponential to a tenth in five seconds, of the depth, of the knife where there is one, or of all beams."""
+    """An exponential to a tenth in five seconds, of the depth, of the knife where there is one, or of all beams; of
+    these to where a tenth of the depth is left, where gravity would take most of it before."""
     duration = read_quantity(USUAL_DURATION, DURATION)
     trap = plan.trap
     if trap.harmonic:
@@ -94,18 +99,46 @@ def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
     if coils is not None and coils.knife is not None:
         move = MoveChoice(control=Control(Knob.KNIFE), end=_lower_knife(plan, coils.knife), shape=Shape.EXPONENTIAL)
         return (StageChoice(duration=duration, moves=(move,), label="lower the knife"),)
-    beams = [beam for beam in trap.beams if beam.on and beam.power.value > 0.0]
+    beams = _lit(plan)
     if beams:
+        share = _lowest_light(plan)
         moves = tuple(
             MoveChoice(
                 control=Control(Knob.POWER, beam.name),
-                end=scaled(beam.power, USUAL_SHARE, Knob.POWER),
+                end=scaled(beam.power, share, Knob.POWER),
                 shape=Shape.EXPONENTIAL,
             )
             for beam in beams
         )
         return (StageChoice(duration=duration, moves=moves, label="lower the light"),)
     return (StageChoice(duration=duration, label="hold"),)
+
+
+def _lit(plan: Plan) -> list[BeamChoice]:
+    """The beams that make the trap."""
+    return [beam for beam in plan.trap.beams if beam.on and beam.power.value > 0.0]
+
+
+def _lowest_light(plan: Plan) -> float:
+    """The share of all powers at which a usual ramp ends: a tenth, as long as half a tenth of the depth is left there;
+    else the lowest of a few that leave a tenth of the depth. A share of the depth, not of the power, keeps away from
+    the power at which gravity pulls the atoms out."""
+    from app.answers.trap import trap_answer
+
+    def depth(share: float) -> float:
+        beams = tuple(
+            replace(beam, power=scaled(beam.power, share, Knob.POWER)) if beam in lit else beam
+            for beam in plan.trap.beams
+        )
+        found = trap_answer(replace(plan, trap=replace(plan.trap, beams=beams))).survey
+        return found.depth if found.trapped and found.depth is not None else 0.0
+
+    lit = _lit(plan)
+    now = trap_answer(plan).survey
+    if not now.trapped or now.depth is None or depth(USUAL_SHARE) >= 0.5 * USUAL_SHARE * now.depth:
+        return USUAL_SHARE
+    place = bisect_left(_HIGHER_SHARES, USUAL_SHARE * now.depth, key=depth)
+    return _HIGHER_SHARES[min(place, len(_HIGHER_SHARES) - 1)]
 
 
 def _lower_knife(plan: Plan, knife: Quantity) -> Quantity:
@@ -190,8 +223,13 @@ def with_new_stage(plan: Plan, place: int, *, hold: bool = False) -> Plan:
 
 
 def _moved_first(plan: Plan) -> list[Control]:
-    usual = usual_ramp(plan)
-    return [move.control for stage in usual for move in stage.moves]
+    """The controls that a usual ramp moves."""
+    coils = plan.trap.coils
+    if plan.trap.harmonic:
+        return [_DEPTH]
+    if coils is not None and coils.knife is not None:
+        return [Control(Knob.KNIFE)]
+    return [Control(Knob.POWER, beam.name) for beam in _lit(plan)]
 
 
 def with_copy(plan: Plan, place: int) -> Plan:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from pathlib import Path
 
 import pytest
 from hypothesis import given
@@ -10,12 +11,13 @@ from hypothesis import strategies as st
 
 from app import measured_edits, ramp_edits
 from app.answers.ramp_inputs import ramp_of
+from app.answers.trap import trap_answer
 from app.measured_edits import By, Where
-from app.plan import DEFAULT_PLAN, Plan, PlanError, plan_with
+from app.plan import DEFAULT_PLAN, Plan, PlanError, plan_with, read_plan
 from app.ramp_choices import Handing, MoveChoice, StageChoice
 from app.ramp_drags import with_end_dragged, with_place_dragged, with_start_dragged
 from app.ramp_limits import limits_for, with_bound, with_longest_time
-from app.trap_choices import BeamChoice, CoilsChoice, TrapChoice
+from app.trap_choices import BeamChoice, CoilsChoice, Gravity, TrapChoice
 from app.units import (
     ATOM_NUMBER,
     BEAM_POWER,
@@ -35,6 +37,7 @@ from physics.constants import bohr_magneton, boltzmann, planck
 from physics.ramp_shapes import Shape
 from physics.ramps import Control, Knob
 
+TRAPS = Path(__file__).resolve().parents[2] / "presets" / "traps"
 DEPTH_CONTROL, SCALE = Control(Knob.DEPTH), Control(Knob.SCALE)
 
 
@@ -78,8 +81,27 @@ def test_a_usual_ramp_of_a_harmonic_trap_without_depth_starts_at_ten_kt():
 
 
 def test_a_usual_ramp_of_light_lowers_every_beam_to_a_tenth():
-    (stage,) = ramp_edits.usual_ramp(replace(DEFAULT_PLAN, trap=beams()))
+    weightless = replace(beams(), gravity=Gravity.OFF)
+    (stage,) = ramp_edits.usual_ramp(replace(DEFAULT_PLAN, trap=weightless))
     assert [(move.control.label, move.end.value) for move in stage.moves] == [("power A", 0.2), ("power B", 0.08)]
+
+
+def test_a_usual_ramp_of_light_never_drops_the_atoms():
+    plan = read_plan(TRAPS / "crossed_beams_rubidium.toml")  # its sag is a third of a waist
+    (stage,) = ramp_edits.usual_ramp(plan)
+    assert [(move.control.label, move.shape) for move in stage.moves] == [
+        (f"power {beam.name}", Shape.EXPONENTIAL) for beam in plan.trap.beams
+    ]
+    shares = [move.end.value / beam.power.value for move, beam in zip(stage.moves, plan.trap.beams, strict=True)]
+    assert shares == pytest.approx([shares[0]] * len(shares), rel=0.01)
+    beams = tuple(
+        replace(beam, power=move.end) for move, beam in zip(stage.moves, plan.trap.beams, strict=True)
+    )  # fmt: skip
+    lowered = trap_answer(replace(plan, trap=replace(plan.trap, beams=beams))).survey
+    before = trap_answer(plan).survey.depth
+    assert 0.1 * before <= lowered.depth < 0.35 * before
+    tenth = tuple(replace(beam, power=ramp_edits.scaled(beam.power, 0.1, Knob.POWER)) for beam in plan.trap.beams)
+    assert not trap_answer(replace(plan, trap=replace(plan.trap, beams=tenth))).trapped
 
 
 def test_a_usual_ramp_of_coils_lowers_the_knife():

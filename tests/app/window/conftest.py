@@ -22,6 +22,36 @@ def qapp() -> QApplication:
     return application()
 
 
+@pytest.fixture(scope="session", autouse=True)
+def all_troubles() -> Iterator[list[str]]:
+    """What any window told of errors that nobody caught: its own hook keeps them from the test that made them."""
+    told: list[str] = []
+    tell = MainWindow._tell_trouble
+
+    def note(window: MainWindow, sentence: str, details: str) -> None:
+        told.append(details)
+        tell(window, sentence, details)
+
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(MainWindow, "_tell_trouble", note)
+        yield told
+
+
+@pytest.fixture
+def troubles(all_troubles: list[str]) -> list[str]:
+    """For a test in which an error inside the window is meant to happen: the details of those that did."""
+    return all_troubles
+
+
+@pytest.fixture(autouse=True)
+def no_trouble(request: pytest.FixtureRequest, all_troubles: list[str]) -> Iterator[None]:
+    """Fails a test in which an error inside a window was only told of in its banner."""
+    all_troubles.clear()
+    yield
+    if "troubles" not in request.fixturenames:
+        assert not all_troubles, "\n".join(all_troubles)
+
+
 @pytest.fixture
 def make_window(qapp: QApplication, qtbot: QtBot, tmp_path: Path) -> Iterator[MakeWindow]:
     """Builds windows that share one settings folder, and closes them without questions."""

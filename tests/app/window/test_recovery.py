@@ -18,7 +18,7 @@ CHANGED = replace(DEFAULT_PLAN, title="not to be lost")
 
 @pytest.mark.qt_no_exception_capture
 def test_an_exception_nobody_caught_is_told_with_details_and_a_copy_of_the_plan(
-    window: MainWindow, qtbot: QtBot, tmp_path: Path
+    window: MainWindow, qtbot: QtBot, tmp_path: Path, troubles: list[str]
 ) -> None:
     window.document.edit(CHANGED, "title")
 
@@ -41,6 +41,7 @@ def test_an_exception_nobody_caught_is_told_with_details_and_a_copy_of_the_plan(
     assert copied.startswith("Coldward ")
     assert "Traceback" in copied
     assert "RuntimeError: the slot broke" in copied
+    assert troubles == [copied]
     assert window.banner.text
 
 
