@@ -45,7 +45,7 @@ CONDENSATE_ROWS = (
         formula="N₀ a/a_ho: Thomas-Fermi well above 1, a Gaussian well below",
         source=_BAYM,
         validity="N₀ of the model in use",
-        needs=(Need.CONDENSATE, Need.SCATTERING_LENGTH),
+        needs=(Need.BOSONS, Need.CONDENSATE, Need.SCATTERING_LENGTH),
     ),
     Row(
         name="condensate_rms_radii",
@@ -57,7 +57,7 @@ CONDENSATE_ROWS = (
         formula="between the Gaussian of least energy and the Thomas-Fermi shape, by the strength of the interaction",
         source=f"{_BAYM}; {_DALFOVO}",
         validity="any N₀ a/a_ho short of collapse; within 0.3 % in round traps, 6 % in long ones",
-        needs=(Need.CONDENSATE, Need.STABLE_CONDENSATE),
+        needs=(Need.BOSONS, Need.CONDENSATE, Need.STABLE_CONDENSATE),
         axes=True,
     ),
     Row(
@@ -70,7 +70,7 @@ CONDENSATE_ROWS = (
         formula="kinetic and interaction energy; (2/7) µ in the Thomas-Fermi limit",
         source=_DALFOVO,
         validity="any N₀ a/a_ho short of collapse",
-        needs=(Need.CONDENSATE, Need.STABLE_CONDENSATE),
+        needs=(Need.BOSONS, Need.CONDENSATE, Need.STABLE_CONDENSATE),
     ),
     Row(
         name="healing_length",
@@ -82,7 +82,7 @@ CONDENSATE_ROWS = (
         formula="1/(8π n₀ a)^(1/2) at the centre",
         source=_DALFOVO,
         validity="repulsive atoms",
-        needs=(Need.CONDENSATE, Need.REPULSIVE),
+        needs=(Need.BOSONS, Need.CONDENSATE, Need.REPULSIVE),
     ),
     Row(
         name="collapse_atoms",

@@ -39,7 +39,10 @@ def tuning_picture(answer: TuningAnswer, cloud: CloudAnswer) -> Picture:
         *_poles(curve.poles, reach),
         Curve(name=_("scattering length"), role=Role.FIRST, x=curve.field / GAUSS, y=shown),
     ]
-    labels = [_label(f"{pole / GAUSS:.6g} G", pole, 0.92 * reach) for pole in curve.poles]
+    labels = [
+        _label(f"{pole / GAUSS:.6g} G", pole, 0.92 * reach, _clear_side(curve.field, lengths, pole))
+        for pole in curve.poles
+    ]
     labels += [_label(_("no data"), 0.5 * (low + high), 0.08 * reach) for low, high in curve.gaps]
     zeros = tuple(Mark(name=_("a = 0"), role=Role.THRESHOLD, x=zero / GAUSS, y=0.0) for zero in curve.zeros)
     ground = Picture(
@@ -109,8 +112,14 @@ def _poles(poles: tuple[float, ...], reach: float) -> tuple[Curve, ...]:
     return (Curve(name=_("resonance"), role=Role.CLASSICAL, x=x, y=y),)
 
 
-def _label(text: str, field: float, height: float) -> Label:
-    return Label(text=text, role=Role.CLASSICAL, x=field / GAUSS, y=height)
+def _label(text: str, field: float, height: float, side: int = 0) -> Label:
+    return Label(text=text, role=Role.CLASSICAL, x=field / GAUSS, y=height, side=side)
+
+
+def _clear_side(field: Array, length: Array, pole: float) -> int:
+    """The side of a pole on which the curve does not go up, so that there is room at the top of the plot."""
+    before = length[(field < pole) & np.isfinite(length)]
+    return 1 if not before.size or before[-1] > 0.0 else -1
 
 
 def length_there(answer: TuningAnswer, field: float) -> str:

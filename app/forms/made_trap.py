@@ -42,6 +42,7 @@ class MadeTrap(Form):
         self.add_coils.clicked.connect(self._add_coils)
         buttons = QHBoxLayout()
         buttons.setContentsMargins(0, 4, 0, 4)
+        buttons.setSpacing(6)
         buttons.addWidget(self.add_beam)
         buttons.addWidget(self.add_coils)
         buttons.addStretch(1)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
@@ -23,11 +23,9 @@ from app.widgets.time_keys import moved_time
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
     from app.answers.ramp_found import Found
-    from app.answers.ramp_inputs import MeasuredCloud
-    from app.caveat_words import CaveatLine
-    from app.figures.ramp_columns import Course
     from app.figures.ramp_controls import Handle
     from app.ramp_choices import StageChoice
+    from app.widgets.ramp_courses import Reference
     from app.widgets.ramp_panel import RampPanel
     from app.widgets.ramp_plots import Scene
 
@@ -36,14 +34,6 @@ _STEP = "ramp"
 _SURVEYED = "The trap is surveyed along the ramp; the first time this takes some seconds."
 _NO_RAMP = "This plan has no ramp yet."
 _START = "Start from a usual one, which lowers the trap to a tenth in five seconds, or let one be designed."
-
-
-@dataclass(frozen=True, kw_only=True, eq=False)
-class Reference:
-    """A ramp that was kept to compare with."""
-
-    name: str
-    answer: RampAnswer
 
 
 class RampPage(Page):
@@ -213,6 +203,7 @@ class RampPage(Page):
         """The stages of the newest plan; whether there are any, and a ramp can be made of them."""
         from app.answers.ramp_inputs import path_of, ramp_of
         from app.figures.ramp_controls import control_curves
+        from app.widgets.ramp_courses import scene_of
 
         self._shown = None
         if self.cloud is None:
@@ -233,7 +224,7 @@ class RampPage(Page):
         except ValueError as error:
             self._tell_trouble(str(error))
             return False
-        self._scenery = self._scene(plan, ramp.duration)
+        self._scenery = scene_of(plan, ramp.duration, self.references)
         panel.controls.show_curves(curves, self._scenery, self.reading)
         self._shown = plan
         if self._found is None and not _is_quick(plan):
@@ -243,6 +234,7 @@ class RampPage(Page):
     def _show_found(self, found: Found) -> None:
         """What was simulated."""
         from app.ramp_words import ramp_verdict
+        from app.widgets.ramp_courses import caveat_lines_of, courses_of, points_of
 
         panel = self.panel
         if found.failure:
@@ -251,8 +243,9 @@ class RampPage(Page):
         if found.ramp is not None and self._scenery is not None:
             panel.table.show_ramp(found.ramp)
             panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
-            panel.show_caveats(_caveat_lines(found.ramp))
-            panel.columns.show_courses(self._courses(found), self._scenery, _points(found.measured), self.reading)
+            panel.show_caveats(caveat_lines_of(found.ramp))
+            courses, points = courses_of(found, self.references), points_of(found.measured)
+            panel.columns.show_courses(courses, self._scenery, points, self.reading)
         panel.measured.show_answers(found.ramp, found.rest)
         if not panel.stages.problem:
             for plot in self._plots:
@@ -270,32 +263,6 @@ class RampPage(Page):
 
         beside = [f"Beside “{ref.name}”: {difference(answer, ref.answer)}." for ref in self.references]
         return " ".join(part for part in (onset(answer), advice(answer).text, *beside) if part)
-
-    def _scene(self, plan: Plan, duration: float) -> Scene:
-        from app.figures.ramp_columns import round_end
-        from app.widgets.ramp_plots import Scene
-
-        ends = [duration, *(float(ref.answer.run.time[-1]) for ref in self.references if len(ref.answer.run.time))]
-        bounds, time = [], 0.0
-        for stage in plan.ramp:
-            time += stage.duration.value
-            bounds.append(time)
-        labels = tuple(stage.label for stage in plan.ramp)
-        return Scene(end=round_end(max(ends)), bounds=tuple(bounds), labels=labels)
-
-    def _courses(self, found: Found) -> list[Course]:
-        from app.figures.picture import Role
-        from app.figures.ramp_columns import Course
-
-        assert found.ramp is not None
-        courses = [Course(name="ramp", run=found.ramp.run, begin=found.ramp.begin)]
-        if found.rest is not None:
-            courses.append(Course(name="rest", run=found.rest.run, begin=found.rest.begin, role=Role.REST))
-        courses += [
-            Course(name=ref.name, run=ref.answer.run, begin=ref.answer.begin, role=Role.REFERENCE)
-            for ref in self.references
-        ]
-        return courses
 
     def _offers(self, plan: Plan) -> tuple[Offer, ...]:
         return (
@@ -373,6 +340,8 @@ class RampPage(Page):
 
     def keep_reference(self) -> None:
         """Keep the ramp on show, to be drawn thin beside those that follow."""
+        from app.widgets.ramp_courses import Reference
+
         answer = self.answer
         if answer is None or self.cloud is None:
             return
@@ -462,35 +431,6 @@ class RampPage(Page):
         self.panel.take_focus()
 
 
-def _caveat_lines(answer: RampAnswer) -> tuple[CaveatLine, ...]:
-    """What the simulation does not cover, gravest first."""
-    from app.caveat_words import CaveatLine
-    from app.ramp_words import SIGNS, WEIGHTS, ramp_caveat_text
-
-    own = tuple(CaveatLine(SIGNS[c.severity], WEIGHTS[c.severity], ramp_caveat_text(c)) for c in answer.caveats)
-    if answer.passenger is None:
-        return own
-    from app.mixture_words import sympathetic_caveat_lines
-
-    return (*own, *sympathetic_caveat_lines(answer.passenger))
-
-
 def _is_quick(plan: Plan) -> bool:
     """Whether the ramp is simulated within a moment: without surveys."""
     return plan.trap.harmonic and all(stage.trap is None or stage.trap.harmonic for stage in plan.ramp)
-
-
-def _points(measured: tuple[MeasuredCloud, ...]) -> list[Any]:
-    from app.figures.ramp_columns import MeasuredPoint
-
-    return [
-        MeasuredPoint(
-            label=cloud.choice.label,
-            time=cloud.time or 0.0,
-            atoms=cloud.atoms,
-            temperature=cloud.temperature,
-            atoms_sigma=cloud.atoms_sigma,
-            temperature_sigma=cloud.temperature_sigma,
-        )
-        for cloud in measured
-    ]

@@ -115,7 +115,7 @@ class StageEditor(PlanEditor):
             heading = QLabel(text)
             heading.setObjectName("paneTitle")
             self._grid.addWidget(heading, 0, column)
-        for column, stretch in ((1, 2), (2, 3), (3, 3), (4, 3), (5, 3), (6, 3)):
+        for column, stretch in ((1, 2), (2, 4), (3, 3), (4, 3), (5, 3), (6, 3)):
             self._grid.setColumnStretch(column, stretch)
         self.forget_fields()
         self.durations, self.moves, self.menus, self.labels = [], [], [], []

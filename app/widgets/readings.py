@@ -10,7 +10,7 @@ import numpy as np
 
 from app.engine import CloudAnswer
 from app.figures.ticks import raised
-from app.quantities import QUANTITIES, Group, Need, Row
+from app.quantities import QUANTITIES, Need, Row
 from app.units import best_unit
 from app.words import range_text, reason_missing, row_tip, shown_unit, symbol_of, value_text
 
@@ -43,17 +43,19 @@ def tip_of(row: Row, reading: Reading, interval: str) -> str:
     return "\n".join(lines)
 
 
-_OTHER_GASES = frozenset({Need.BOSONS, Need.FERMIONS, Need.ATTRACTIVE, Need.DIPOLES})
-"""What this gas will not have, whatever its temperature and number: its quantities are left out."""
+_NEVER = frozenset(
+    {Need.BOSONS, Need.FERMIONS, Need.ATTRACTIVE, Need.DIPOLES, Need.HARMONIC, Need.REAL_TRAP},
+)
+"""What this gas in this trap will not have, whatever its temperature and number: such quantities are left out."""
 
 
 def readings_of(answer: CloudAnswer, chosen_units: Mapping[str, str]) -> dict[str, Reading]:
     """What the readouts show of an answer: quantities of other gases are left out, as is the comparison with a harmonic
-    trap where the trap is one, and those that lack an input say so."""
+    trap where the trap is one; those that lack an input say so."""
     readings = {}
     for name, row in QUANTITIES.items():
         need = answer.missing(row)
-        if need in _OTHER_GASES or (need is Need.REAL_TRAP and row.group is Group.HARMONIC):
+        if need in _NEVER:
             continue
         if need is not None:
             readings[name] = Reading(symbol_of(row, answer), "–", reason=reason_missing(need))

@@ -46,6 +46,19 @@ def test_the_length_axis_is_symmetric_and_a_pole_breaks_the_curve() -> None:
     assert sum(label.text == "no data" for label in shown.labels) == 2
 
 
+@pytest.mark.parametrize("key", ["39K", "85Rb", "6Li", "133Cs"])
+def test_fields_of_resonances_stand_where_the_curve_does_not_rise(key: str) -> None:
+    shown = picture(a_plan(key))
+    curve = next(c for c in shown.curves if c.role is Role.FIRST)
+    poles = [label for label in shown.labels if label.text.endswith(" G")]
+    assert poles
+    for label in poles:
+        near = curve.x[np.isfinite(curve.y) & ((curve.x - label.x) * label.side > 0.0)]
+        if near.size:
+            beside = near[np.argmin(np.abs(near - label.x))]
+            assert curve.y[curve.x == beside][0] < 0.0, label.text
+
+
 def test_a_typed_length_is_a_line_across_and_leaves_no_field_to_drag() -> None:
     shown = picture(a_plan("6Li", scattering_length="-290 a0"))
     line = next(c for c in shown.curves if c.role is Role.CLOUD)

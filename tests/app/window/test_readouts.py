@@ -55,6 +55,7 @@ def test_a_harmonic_trap_is_not_set_beside_itself(window: MainWindow, settle: Se
     window.document.edit(read_plan(BEAMS), "plan")
     settle(window)
     assert "reduced temperature (harmonic)\tT/Tc" in model.table_text()
+    assert "(exact levels)" not in model.table_text()  # only a harmonic trap has known ones
     assert "In the harmonic trap of these frequencies" in [
         model.index(row, 0).data() for row in range(model.rowCount())
     ]
@@ -69,6 +70,7 @@ def test_bosons_and_fermions_have_their_own_quantities(window: MainWindow, settl
     text = window.desk.readouts._model.table_text()
     assert "Fermi temperature\tTF\t" in text
     assert "critical temperature" not in text
+    assert "condens" not in text
     assert "reduced temperature\tT/TF\t" in text
 
 
