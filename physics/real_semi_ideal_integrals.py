@@ -27,13 +27,17 @@ from physics.spline import Spline
 
 _OUTSIDE, _INSIDE, _DEEP = 8, 6, 48  # nodes, of each panel but for the last
 _REACH = 42.0  # kT beyond which there are no thermal atoms
-_LOWEST, _PLACES = 1e-6, 200
+_LOWEST, _PLACES, _PANEL = 1e-6, 200, 6
 _TINY = 1e-300
 _CELLS = 128  # at once, to bound the memory
 _DIRECT = 160  # clouds up to which sums are done one by one
-_STEP, _IN_ETA, _PER_STEP, _IN_M = 0.4, 9, 1.6, 26  # of surfaces: steps of ln eta, nodes
-_KEPT, _LEAST = 6, 1e-9
-_FULL = 0.9  # of eta, up to which mu is on a surface
+_STEP, _IN_ETA, _PER_STEP = 0.4, 12, 2.4  # of surfaces: steps of ln eta, nodes along it
+_KEPT, _LEAST = 16, 1e-9
+_TOPS = ((0.03, 14), (0.12, 16), (0.35, 20), (0.9, 26))
+"""Shares of eta up to which mu is on a surface, with its nodes along mu. There are several, for where arms open a trap
+is not smooth, and what polynomials do there must not disturb small condensates."""
+
+_SHARES = np.geomspace(1e-6, 1.0, 100)
 
 THERMAL_SUMS = ("number", "energy", "potential", "squared", "cubed", "product", "squared_product", "product_squared")
 """Rows of `CondensateSums.thermal`: with d = n lambda^3 and c = m - V, positive inside the condensate, the sums of d;
@@ -75,43 +79,48 @@ class CondensateSums:
         return total
 
     def thermal_of_many(self, eta: Floats, m: Floats) -> Floats:
-        """`thermal` of any number of clouds: of many by way of a grid, with a relative error of about 1e-5."""
-        if eta.size <= _DIRECT:
-            return self._in_parts(self.thermal, eta, m)
-        surface = self._surface(eta)
-        parts = []
-        for start in range(0, eta.size, 4096):
-            part = slice(start, start + 4096)
-            found = surface.along(surface.across(np.log(eta[part])), _place(eta[part], m[part]))
-            parts.append(np.exp(found) * _scales(self.shape.exponent, eta[part], m[part]))
-        return np.concatenate(parts, axis=-1)
+        """`thermal` of any number of clouds: of many by way of a grid, with a relative error of about 1e-5; of up to
+        1e-3 where arms open steeply, and of some percent where mu itself is about to reach them."""
+
+        def of_group(top: float, eta: Floats, m: Floats) -> Floats:
+            if eta.size <= _DIRECT:
+                return self._in_parts(self.thermal, eta, m)
+            surface = self._surface(eta, top)
+            parts = []
+            for start in range(0, eta.size, 4096):
+                part = slice(start, start + 4096)
+                found = surface.along(surface.across(np.log(eta[part])), _place(top, eta[part], m[part]))
+                parts.append(np.exp(found) * _scales(self.shape.exponent, eta[part], m[part]))
+            return np.concatenate(parts, axis=-1)
+
+        return _in_groups(of_group, m / eta, eta, m)
 
     def _in_parts(self, function: Callable[[Floats, Floats], Floats], eta: Floats, m: Floats) -> Floats:
         starts = range(0, max(eta.size, 1), _CELLS)
         return np.concatenate([function(eta[at : at + _CELLS], m[at : at + _CELLS]) for at in starts], axis=-1)
 
     @cached_property
-    def _surfaces(self) -> dict[tuple[float, float], Surface]:
+    def _surfaces(self) -> dict[tuple[float, float, float], Surface]:
         return {}
 
-    def _surface(self, eta: Floats) -> Surface:
-        """ln of `thermal` over its scales, for these eta and all m."""
+    def _surface(self, eta: Floats, top: float) -> Surface:
+        """ln of `thermal` over its scales, for these eta and m up to a share of them."""
         low = _STEP * math.floor(math.log(float(np.min(eta))) / _STEP)
         high = _STEP * math.ceil(math.log(float(np.max(eta))) / _STEP)
-        for surface in self._surfaces.values():
-            if surface.x_range[0] <= low and high <= surface.x_range[1]:
+        for (_, _, reach), surface in self._surfaces.items():
+            if reach == top and surface.x_range[0] <= low and high <= surface.x_range[1]:
                 return surface
 
         def scaled(log_eta: Floats, place: Floats) -> Floats:
             eta = np.exp(log_eta)
-            m = 0.25 * np.sinh(place * np.arcsinh(2.0 * np.sqrt(_FULL * eta))) ** 2
+            m = 0.25 * np.sinh(place * np.arcsinh(2.0 * np.sqrt(top * eta))) ** 2
             return np.log(self._in_parts(self.thermal, eta, m) / _scales(self.shape.exponent, eta, m))
 
-        counts = (_IN_ETA + math.ceil(_PER_STEP * (high - low) / _STEP), _IN_M)
+        counts = (_IN_ETA + math.ceil(_PER_STEP * (high - low) / _STEP), dict(_TOPS)[top])
         if len(self._surfaces) > _KEPT:
             self._surfaces.clear()
-        self._surfaces[low, high] = Surface(scaled, (low, high), (0.0, 1.0), counts)
-        return self._surfaces[low, high]
+        self._surfaces[low, high, top] = Surface(scaled, (low, high), (0.0, 1.0), counts)
+        return self._surfaces[low, high, top]
 
     def height(self, eta: Floats, wanted: Floats, saturated: Floats, scale: Floats) -> Floats:
         """m = mu/kT at which thermal atoms and the condensate, of density `scale` (m - V), are as many as wanted.
@@ -122,17 +131,25 @@ class CondensateSums:
 
         NaN where the trap does not hold so many.
         """
+        # No mu is above that of the condensate if all atoms were in it.
+        log_most = np.log(wanted / (scale * eta))
+        logs = np.log(self.condensed(_SHARES)[0])
+        highest = np.exp(np.interp(log_most, logs, np.log(_SHARES)))
+        return _in_groups(self._height, highest, eta, wanted, saturated, scale)
+
+    def _height(self, top: float, eta: Floats, wanted: Floats, saturated: Floats, scale: Floats) -> Floats:
+        """The same of clouds whose mu is not above a share of eta."""
         number: Callable[[Floats], Floats]
         if eta.size <= _DIRECT:
 
             def number(m: Floats) -> Floats:
                 return self._in_parts(self._number, eta, m)
         else:
-            surface, scales = self._surface(eta), self.shape.exponent
+            surface, scales = self._surface(eta, top), self.shape.exponent
             polynomials = surface.across(np.log(eta))[:1]
 
             def number(m: Floats) -> Floats:
-                held: Floats = np.exp(surface.along(polynomials, _place(eta, m))[0]) * _scales(scales, eta, m)[0]
+                held: Floats = np.exp(surface.along(polynomials, _place(top, eta, m))[0]) * _scales(scales, eta, m)[0]
                 return held
 
         start = number(np.zeros_like(eta))
@@ -191,8 +208,19 @@ class CondensateSums:
     def _table(self) -> Spline:
         """ln of the first of `condensate` over its power law, against ln x."""
         x = np.geomspace(_LOWEST, 1.0, _PLACES)
-        logs = np.log(self.condensate(x)[0]) - (self.shape.exponent + 1.0) * np.log(x)
-        return Spline(np.log(x), logs[:, np.newaxis])
+        if not self.shape.power_law:
+            points = self.shape.energies
+            between = points[:-1, np.newaxis] + np.multiply.outer(np.diff(points), np.arange(4.0) / 4.0)
+            x = np.concatenate([x[x < points[0] * (1.0 - 1e-9)], between.ravel(), points[-1:]])
+            x = x[x >= _LOWEST]
+        # The integral of w, panel by panel, for w may turn at every point of the curve.
+        t, weights = legendre(_PANEL)
+        width = np.diff(x)
+        each = self.shape.volume(x[:-1, np.newaxis] + np.multiply.outer(width, t)) @ weights * width
+        logs = np.log(self.condensate(x[:1])[0] + np.cumsum(np.append(0.0, each)))
+        logs -= (self.shape.exponent + 1.0) * np.log(x)
+        # A spline of two derivatives would swing where w turns.
+        return Spline(np.log(x), logs[:, np.newaxis], monotone=True)
 
     def condensed(self, x: Floats) -> tuple[Floats, Floats]:
         """The first of `condensate`, tabulated, and its derivative by ln x."""
@@ -202,9 +230,23 @@ class CondensateSums:
         return number, number * (power + np.where(log > inside, 0.0, self._table.slopes(inside)[..., 0]))
 
 
-def _place(eta: Floats, m: Floats) -> Floats:
-    """Where m stands between 0 and nearly eta: in equal steps of its root, or of its logarithm where it is large."""
-    place: Floats = np.arcsinh(2.0 * np.sqrt(m)) / np.arcsinh(2.0 * np.sqrt(_FULL * eta))
+def _in_groups(function: Callable[..., Floats], shares: Floats, *columns: Floats) -> Floats:
+    """A function of a top and of flat arrays, for each group of clouds by the least of the tops above `shares`."""
+    tops = [top for top, _ in _TOPS]
+    group = np.minimum(np.searchsorted(tops, shares), len(tops) - 1)
+    groups = np.unique(group)
+    if groups.size <= 1:
+        return function(tops[groups[0]] if groups.size else tops[0], *columns)
+    parts = [(group == k, function(tops[k], *(column[group == k] for column in columns))) for k in groups]
+    found = np.empty((*parts[0][1].shape[:-1], group.size))
+    for these, values in parts:
+        found[..., these] = values
+    return found
+
+
+def _place(top: float, eta: Floats, m: Floats) -> Floats:
+    """Where m stands between 0 and a share of eta: in equal steps of its root, or of its logarithm where large."""
+    place: Floats = np.arcsinh(2.0 * np.sqrt(m)) / np.arcsinh(2.0 * np.sqrt(top * eta))
     return place
 
 

@@ -18,6 +18,7 @@ from physics.models import Replacement
 from physics.particles import Statistics
 from physics.rates import Rates
 from physics.real_equilibria import RealEquilibrium
+from physics.real_semi_ideal_integrals import CondensateSums
 from physics.real_trap import RealTrap
 from physics.species import load_species
 from physics.statistics import bose
@@ -102,6 +103,43 @@ def test_many_clouds_are_answered_as_each_by_itself() -> None:
     grid = solved(BOSON, harmonic_trap(2e-6 * KELVIN), atoms=atoms, temperature=temperature)
     assert np.all(np.diff(grid.condensate_fraction, axis=0) <= 1e-6)
     assert np.all(np.diff(grid.condensate_fraction, axis=1) >= -1e-6)
+
+
+def test_many_clouds_are_so_where_arms_open_at_once() -> None:
+    # From half of the depth on, arms have a hundred times the volume of the crossing.
+    u = np.concatenate([np.geomspace(1e-4, 1.0 / 128.0, 32)[:-1], np.arange(1, 129) / 128.0])
+    w = u**1.5 * (1.0 + 100.0 * np.clip(40.0 * (u - 0.53), 0.0, 1.0))
+    volume = harmonic_trap(1.6e-6 * KELVIN).volume * w[-1]
+    trap = RealTrap(
+        mass=MASS, curve=CurveShape(energies=u, volumes=w / w[-1]), held=1.6e-6 * KELVIN, volume=volume,
+        frequencies=FREQUENCIES,
+    )  # fmt: skip
+    atoms, temperature = np.geomspace(1e4, 1e9, 40), np.geomspace(2e-8, 5e-7, 40)[:, np.newaxis]
+    grid = solved(BOSON, trap, Model.SEMI_IDEAL, atoms=atoms, temperature=temperature)
+    assert float(np.nanmax(grid.chemical_potential)) > 0.5 * trap.held
+    condensed = np.argwhere(np.nan_to_num(grid.condensate_fraction) > 0.0)
+    for i, j in condensed[:: len(condensed) // 20]:
+        single = solved(BOSON, trap, Model.SEMI_IDEAL, atoms=atoms[j], temperature=temperature[i, 0])
+        mu = float(single.chemical_potential)
+        if mu > 0.35 * trap.held:
+            # The condensate is about to reach the arms, and its atoms follow mu steeply.
+            assert grid.chemical_potential[i, j] == pytest.approx(mu, rel=0.02)
+            continue
+        for name in ("chemical_potential", "condensate_fraction", "mean_density", "energy_per_atom"):
+            assert getattr(grid, name)[i, j] == pytest.approx(getattr(single, name), rel=1e-3), (name, mu / trap.held)
+
+
+def test_a_condensate_that_reaches_into_arms_is_the_integral_of_the_volume() -> None:
+    u = np.concatenate([np.geomspace(1e-4, 1.0 / 128.0, 32)[:-1], np.arange(1, 129) / 128.0])
+    w = u**1.5 * (1.0 + 100.0 * np.clip(40.0 * (u - 0.53), 0.0, 1.0))
+    curve = CurveShape(energies=u, volumes=w / w[-1])
+    sums = CondensateSums(shape=curve)
+    for x in (0.01, 0.3, 0.52, 0.56, 0.8, 1.0):
+        ends = [0.0, *u[u < x], x]
+        pieces = [
+            quad(lambda v: float(curve.volume(v)), *ends[k : k + 2], epsrel=1e-10)[0] for k in range(len(ends) - 1)
+        ]
+        assert float(sums.condensed(np.array([x]))[0][0]) == pytest.approx(math.fsum(pieces), rel=2e-3), x
 
 
 @pytest.mark.parametrize(("eta", "density", "share"), [(5.0, 2.594, 0.896), (4.0, 2.566, 0.800)])
