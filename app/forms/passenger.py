@@ -66,6 +66,7 @@ class PassengerForm(Form):
         self.what.setObjectName("fieldNote")
         self.what.setWordWrap(True)
         self.add = QPushButton("Add a passenger")
+        self.add.setToolTip("A second species, or another state of the same atoms, in the same trap")
         self.add.clicked.connect(self._add)
         self.trouble = QLabel()
         self.trouble.setObjectName("fieldError")
@@ -74,6 +75,7 @@ class PassengerForm(Form):
         self._place = QVBoxLayout()
         self._place.setSpacing(3)
         self.remove = QPushButton("Remove the passenger")
+        self.remove.setToolTip("Leave the first species alone in the trap")
         self.remove.clicked.connect(self._remove)
         self._grid.addWidget(self.fold, 0, 0, 1, 2, Qt.AlignmentFlag.AlignLeft)
         for widget in (self.summary, self.what, self.trouble):

@@ -35,6 +35,7 @@ class MoveLine:
         name = f"{move.control.label}, stage {stage + 1}"
         self.control = Choice()
         self.control.setAccessibleName(f"Control {number + 1} of stage {stage + 1}")
+        self.control.setToolTip("What is turned in this stage")
         self.control.setMinimumContentsLength(5)
         self._controls = (move.control, *_free(plan, stage))
         for control in self._controls:
@@ -42,6 +43,7 @@ class MoveLine:
         self.control.activated.connect(self._choose_control)
         self.shape = Choice()
         self.shape.setAccessibleName(f"Shape of {name}")
+        self.shape.setToolTip("How it goes from the first value to the last: see the glossary")
         self.shape.setMinimumContentsLength(6)
         for shape in Shape:
             self.shape.addItem(shape.label)
@@ -84,7 +86,7 @@ class MoveLine:
         """Fields for where it goes from and to."""
         self.start = self._editor.add_field(
             kind, f"Start of {name}", lambda plan: self._move(plan).start, self._put_start, f"{key} start",
-            optional=True,
+            optional=True, tip="Where it begins; left empty, where it stood",
         )  # fmt: skip
         self.end = self._editor.add_field(
             kind, f"End of {name}", lambda plan: self._move(plan).end, self._put_end, f"{key} end",

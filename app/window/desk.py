@@ -62,6 +62,7 @@ class Desk(QWidget):
         self.tabs = QTabWidget()
         self.tabs.setDocumentMode(True)
         self.tabs.setAccessibleName("Pages")
+        self.tabs.tabBar().setAccessibleName("Pages")
         for page in self.pages:
             self.tabs.addTab(page, page.title)
         self.tabs.currentChanged.connect(self.page_changed)
