@@ -50,7 +50,8 @@ class CardHead(QWidget):
         self.fold.clicked.connect(lambda: self._turn(not self._unfolded))
         self.summary = ElidedLabel()
         self.switch = QCheckBox("on")
-        self.switch.setVisible(switch)
+        if not switch:  # showing what has no place yet would make a window of it
+            self.switch.hide()
         self.switch.clicked.connect(self.switched)
         self.menu = QMenu(self)
         self.menu.setToolTipsVisible(True)

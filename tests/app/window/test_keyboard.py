@@ -5,7 +5,7 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QEvent, QObject, Qt
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import (
     QAbstractButton,
@@ -39,6 +39,34 @@ def active_window(lasting_window: MainWindow, qtbot: QtBot) -> MainWindow:
     lasting_window.activateWindow()
     qtbot.waitUntil(lasting_window.isActiveWindow)
     return lasting_window
+
+
+class NewWindows(QObject):
+    """Notes what is shown as a window of its own."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.shown: list[str] = []
+
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        if event.type() == QEvent.Type.Show and isinstance(watched, QWidget) and watched.isWindow():
+            self.shown.append(type(watched).__name__)
+        return False
+
+
+def test_another_plan_opens_no_window_and_leaves_the_keyboard_where_it_is(
+    active_window: MainWindow, settle: Settle
+) -> None:
+    active_window.desk.bench.take_focus()
+    focus, watcher = QApplication.focusWidget(), NewWindows()
+    QApplication.instance().installEventFilter(watcher)
+    for title in ("Map", "Ramp"):
+        active_window.document.edit(plan_for(title), "plan")
+        settle(active_window)
+    QApplication.instance().removeEventFilter(watcher)
+    assert watcher.shown == []
+    assert active_window.isActiveWindow()
+    assert QApplication.focusWidget() is focus
 
 
 def plan_for(title: str) -> Plan:
