@@ -19,6 +19,9 @@ OPEN_SPACE_SHARE = 0.95
 
 _LOW, _HIGH = 32, 128
 
+_CLEAR = 0.9
+"""Share of the height of the lowest inner pass up to which cells tell what is on this side of it."""
+
 
 def volume_curve_of(landscape: Landscape, basin: Basin) -> VolumeCurve:
     """W(U) of a basin up to its depth; up to `OPEN_SPACE_SHARE` of it where the way out is free space."""
@@ -36,9 +39,12 @@ def volume_curve_of(landscape: Landscape, basin: Basin) -> VolumeCurve:
         counted = counted_volumes(
             landscape, minimum.position, minimum.energy, energies, inner, lambda r: in_arms(potential, crossing, r)
         )
-        # Where rays end, counting goes on from their volume, which is the better one.
+        # Where rays end, counting goes on from their volume, which is the better one. Near an inner pass cells take some
+        # of what lies beyond it for this side, which is not to be made up for above.
         done = len(volumes)
-        base = volumes[-1] - counted.volumes[done - 1] if done else 0.0
+        sure = min([done, *(int(np.sum(energies <= _CLEAR * energy)) for energy in inner)])
+        base = volumes[sure - 1] - counted.volumes[sure - 1] if sure else 0.0
+        counted.marked[sure:done] = counted.marked[sure - 1] if sure else 0.0
         volumes = np.concatenate([volumes, np.maximum(base + counted.volumes[done:], volumes[-1] if done else 0.0)])
         with np.errstate(divide="ignore", invalid="ignore"):
             shares = np.nan_to_num(np.clip(counted.marked / volumes, 0.0, 1.0))

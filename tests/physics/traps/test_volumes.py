@@ -18,6 +18,7 @@ from physics.traps.rays import ray_volumes, shape_of
 from physics.traps.stationary import StationaryPoint
 from physics.traps.survey import Survey, survey
 from physics.traps.volume_curve import VolumeCurve
+from physics.traps.volumes import volume_curve_of
 
 
 def curve_of(found: Survey) -> VolumeCurve:
@@ -213,9 +214,37 @@ def test_a_well_beyond_a_pass_joins_at_the_energy_of_the_pass(rubidium: State) -
     assert above / below == pytest.approx(2.74, rel=0.03)
 
 
+def test_a_well_in_an_arm_joins_with_all_its_volume(rubidium: State) -> None:
+    # Two tilted beams: beyond a pass at 0.862 of the depth an arm has a well of its own, as large as the crossing.
+    beams = (
+        GaussianBeam(
+            name="A", wavelength=1064e-9, power=1.110276, waists=(28.64958e-6, 76.91897e-6),
+            direction=(-0.9865, 0.15477, -0.053503), focus=(-1.3007e-6, 0.7104e-6, -6.7676e-6),
+        ),
+        GaussianBeam(
+            name="B", wavelength=1064e-9, power=0.7476028, waists=(65.21079e-6, 52.2886e-6),
+            direction=(-0.7022, -0.68331, 0.2), focus=(-1.2158e-6, -9.5677e-6, -2.533e-6),
+        ),
+    )  # fmt: skip
+    found = survey(Trap(beams=beams), rubidium)
+    assert found.basin is not None
+    assert found.landscape is not None
+    assert found.depth is not None
+    (join,) = (energy - found.basin.minimum.energy for energy in found.basin.inner_passes)
+    assert join / found.depth == pytest.approx(0.862, abs=1e-3)
+    U = shares(found, 0.8, 0.9, 0.95, 0.99)
+    curve = curve_of(found)
+    finer = volume_curve_of(replace(found.landscape, fineness=2.0), found.basin)
+    assert curve.volume(U) == pytest.approx(finer.volume(U), rel=0.01)
+    below, above = curve.volume(np.array([0.99, 1.02]) * join)
+    assert above > 1.8 * below
+    # Points at random, each relaxed across the beam and followed to the crossing, count 6.7(3) times harmonic.
+    assert curve.volume(U[2]) / (curve.coefficient * U[2] ** 1.5) == pytest.approx(6.6, rel=0.06)
+    assert np.all(np.diff(curve.arm_share(np.linspace(0.5, 1.0, 60) * found.depth)) >= -0.02)
+
+
 def test_volumes_do_not_depend_on_the_size_of_the_cells(crossed: Trap, rubidium: State) -> None:
     from physics.traps.landscape import Landscape
-    from physics.traps.volumes import volume_curve_of
 
     found = survey(crossed, rubidium)
     assert found.basin is not None
