@@ -39,8 +39,8 @@ def volume_curve_of(landscape: Landscape, basin: Basin) -> VolumeCurve:
         counted = counted_volumes(
             landscape, minimum.position, minimum.energy, energies, inner, lambda r: in_arms(potential, crossing, r)
         )
-        # Where rays end, counting goes on from their volume, which is the better one. Near an inner pass cells take some
-        # of what lies beyond it for this side, which is not to be made up for above.
+        # Where rays end, counting goes on from their volume, which is the better one. Near an inner pass cells take
+        # some of what lies beyond it for this side, which is not to be made up for above.
         done = len(volumes)
         sure = min([done, *(int(np.sum(energies <= _CLEAR * energy)) for energy in inner)])
         base = volumes[sure - 1] - counted.volumes[sure - 1] if sure else 0.0
