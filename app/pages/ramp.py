@@ -225,7 +225,7 @@ class RampPage(Page):
             self._tell_trouble(str(error))
             return False
         self._scenery = scene_of(plan, ramp.duration, self.references)
-        panel.controls.show_curves(curves, self._scenery, self.reading)
+        panel.show_controls(curves, self._scenery, self.reading)
         self._shown = plan
         if self._found is None and not _is_quick(plan):
             panel.tell(_SURVEYED, "")

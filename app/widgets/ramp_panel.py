@@ -27,7 +27,7 @@ from app.widgets.empty_state import EmptyState
 from app.widgets.plot_heading import PlotHeading
 from app.widgets.ramp_design import DesignView
 from app.widgets.ramp_measured import MeasuredView
-from app.widgets.ramp_plots import ColumnPlots, ControlPlots
+from app.widgets.ramp_plots import ColumnPlots, ControlPlots, Scene
 from app.widgets.ramp_sensitivity import SensitivityView
 from app.widgets.ramp_stages import StageEditor
 from app.widgets.ramp_waypoints import WaypointsView
@@ -36,6 +36,7 @@ from app.widgets.stage_table import StageTable
 
 if TYPE_CHECKING:
     from app.caveat_words import CaveatLine
+    from app.figures.ramp_controls import ControlCurve
     from app.widgets.page import Page
 
 
@@ -180,6 +181,13 @@ class RampPanel(QWidget):
         self.sentence.setText("")
         self.detail.setText("")
         self._arrange()
+
+    def show_controls(self, curves: tuple[ControlCurve, ...], scene: Scene, reading: float | None) -> None:
+        """Show the controls that move, where there is room."""
+        before = bool(self.controls.curves)
+        self.controls.show_curves(curves, scene, reading)
+        if bool(curves) != before:
+            self._arrange()
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         super().resizeEvent(event)

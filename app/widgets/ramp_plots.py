@@ -109,7 +109,7 @@ class ControlPlots(QWidget):
         self._axes: list[Axis | None] = []
 
     def show_curves(self, curves: tuple[ControlCurve, ...], scene: Scene, cursor: float | None) -> None:
-        """Show controls along a ramp."""
+        """Show controls along a ramp. Whether there is room for them is not decided here."""
         while len(self.plots) > len(curves):
             self._remove_plot(self.plots.pop())
             self._axes.pop()
@@ -124,7 +124,6 @@ class ControlPlots(QWidget):
             self.plots.append(plot)
             self._axes.append(None)
         self.curves = curves
-        self.setVisible(bool(curves))
         for place, (plot, curve) in enumerate(zip(self.plots, curves, strict=True)):
             axis = self._axes[place] = _held(self._axes[place], curve)
             plot.show(partial(_picture, curve, scene, cursor, axis, _LETTERS // len(curves)))

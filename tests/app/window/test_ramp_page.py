@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -15,7 +16,7 @@ from pytestqt.qtbot import QtBot
 from app.figures.picture import Role
 from app.figures.ramp_columns import ATOMS, TEMPERATURE
 from app.pages.ramp import RampPage
-from app.plan import DEFAULT_PLAN, Plan, read_plan
+from app.plan import DEFAULT_PLAN, Plan, plan_with, read_plan
 from app.ramp_choices import MeasuredChoice
 from app.ramp_edits import usual_ramp, with_new_stage
 from app.units import ATOM_NUMBER, DURATION, read_quantity
@@ -361,3 +362,18 @@ def test_the_map_shows_the_ramp_with_the_ends_of_its_stages(qtbot, window, settl
     window.document.edit(replace(window.document.plan, ramp=()), "ramp", "")
     settle(window)
     assert not any(curve.role is Role.TRACK for curve in window.desk.map.plot.picture().curves)
+
+
+def test_in_a_low_window_nothing_stands_upon_another(make_window: Callable[..., MainWindow], settle: Settle) -> None:
+    low = make_window(plan_with_ramp(), size=(1024, 700))
+    page = show_ramp(low, settle)
+    for temperature in ("3.1 uK", "3.2 uK"):
+        low.document.edit(plan_with(low.document.plan, {"cloud.temperature": temperature}), "temperature")
+        settle(low)
+        parts = [page.panel.columns, page.panel.controls, page.panel._under]
+        shown = sorted((part.geometry() for part in parts if part.isVisible()), key=lambda place: place.top())
+        assert page.panel.controls.isHidden()
+        assert all(upper.bottom() < lower.top() for upper, lower in pairwise(shown))
+    page.panel.choose_view("Stages")
+    settle(low)
+    assert page.panel.controls.isVisible()
