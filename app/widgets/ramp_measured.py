@@ -69,7 +69,7 @@ class MeasuredView(PlanEditor):
         self._table = QWidget()
         body = QWidget()
         self._column = QVBoxLayout(body)
-        self._column.setContentsMargins(14, 4, 10, 6)
+        self._column.setContentsMargins(14, 4, 4, 6)
         self._column.setSpacing(8)
         self._column.addWidget(hint)
         self._column.addWidget(self._table)
@@ -99,7 +99,7 @@ class MeasuredView(PlanEditor):
         old, self._table = self._table, QWidget()
         grid = QGridLayout(self._table)
         grid.setContentsMargins(0, 0, 0, 0)
-        grid.setHorizontalSpacing(6)
+        grid.setHorizontalSpacing(3)
         grid.setVerticalSpacing(4)
         if plan.measured:
             for column, text in enumerate(_HEADINGS):
@@ -118,7 +118,7 @@ class MeasuredView(PlanEditor):
         name = f"measured cloud {place + 1}"
         label = QLineEdit()
         label.setMaxLength(LONGEST_LABEL)
-        label.setMinimumWidth(label.fontMetrics().horizontalAdvance("after the MOT"))
+        label.setMinimumWidth(label.fontMetrics().horizontalAdvance("after it"))
         label.setAccessibleName(f"Name of {name}")
         label.editingFinished.connect(lambda: self._rename(place, label.text()))
         self.add_fill(lambda plan: _show_text(label, plan.measured[place].label))
@@ -139,7 +139,9 @@ class MeasuredView(PlanEditor):
             grid.addWidget(stages, row, 2)
         elif cloud.time is not None:
             grid.addWidget(self._field(TIME, f"Time of {name}", place, "time"), row, 2)
-        grid.addWidget(self._field(ATOM_NUMBER, f"Atoms of {name}", place, "atoms"), row, 3)
+        atoms = self._field(ATOM_NUMBER, f"Atoms of {name}", place, "atoms")
+        atoms.setMinimumWidth(atoms.fontMetrics().horizontalAdvance("2.5(3)e6") + 16)
+        grid.addWidget(atoms, row, 3)
         by = _choice([one.value for one in By], measured_edits.by_of(cloud).value, f"What is known of {name}")
         by.activated.connect(lambda index: self._know(place, tuple(By)[index]))
         grid.addWidget(by, row, 4)

@@ -106,6 +106,7 @@ class ControlPlots(QWidget):
         self._row.setSpacing(0)
         self.plots: list[Plot] = []
         self.curves: tuple[ControlCurve, ...] = ()
+        self._around: object = None  # the curves: what all plots share, as it is on show
         self._axes: list[Axis | None] = []
 
     def show_curves(self, curves: tuple[ControlCurve, ...], scene: Scene, cursor: float | None) -> None:
@@ -123,8 +124,12 @@ class ControlPlots(QWidget):
             self._row.addWidget(plot.canvas, 1)
             self.plots.append(plot)
             self._axes.append(None)
-        self.curves = curves
-        for place, (plot, curve) in enumerate(zip(self.plots, curves, strict=True)):
+        around = scene.end, scene.bounds, scene.labels, cursor, len(curves)
+        before = self.curves if around == self._around else (None,) * len(curves)
+        self.curves, self._around = curves, around
+        for place, (plot, curve, old) in enumerate(zip(self.plots, curves, before, strict=True)):
+            if old is not None and _look_alike(curve, old):
+                continue  # as where only the cloud changes
             axis = self._axes[place] = _held(self._axes[place], curve)
             plot.show(partial(_picture, curve, scene, cursor, axis, _LETTERS // len(curves)))
 
@@ -139,6 +144,13 @@ class ControlPlots(QWidget):
 
     def _read(self, place: tuple[float, float] | None) -> None:
         self.time_read.emit(None if place is None else place[0])
+
+
+def _look_alike(one: ControlCurve, other: ControlCurve) -> bool:
+    plain = (one.control, one.scale, one.handles, one.places) == (
+        other.control, other.scale, other.handles, other.places,
+    )  # fmt: skip
+    return plain and np.array_equal(one.times, other.times) and np.array_equal(one.values, other.values)
 
 
 def _picture(curve: ControlCurve, scene: Scene, cursor: float | None, axis: Axis, letters: int) -> Picture:

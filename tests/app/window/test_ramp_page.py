@@ -5,12 +5,13 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import replace
 from itertools import pairwise
+from pathlib import Path
 
 import numpy as np
 import pytest
 from PySide6.QtCore import QEvent, QPointF, Qt
 from PySide6.QtGui import QKeyEvent, QMouseEvent
-from PySide6.QtWidgets import QApplication
+from PySide6.QtWidgets import QApplication, QScrollArea
 from pytestqt.qtbot import QtBot
 
 from app.figures.picture import Role
@@ -18,12 +19,13 @@ from app.figures.ramp_columns import ATOMS, TEMPERATURE
 from app.pages.ramp import RampPage
 from app.plan import DEFAULT_PLAN, Plan, plan_with, read_plan
 from app.ramp_choices import MeasuredChoice
-from app.ramp_edits import usual_ramp, with_new_stage
-from app.units import ATOM_NUMBER, DURATION, read_quantity
+from app.ramp_edits import usual_ramp, with_move, with_new_stage
+from app.units import ATOM_NUMBER, DEPTH, DURATION, read_quantity
 from app.units import TEMPERATURE as TEMPERATURE_KIND
 from app.window.main_window import MainWindow
 
 Settle = Callable[[MainWindow], None]
+EXAMPLE = Path(__file__).resolve().parents[3] / "presets" / "plans" / "evaporation_rubidium.toml"
 
 
 def plan_with_ramp() -> Plan:
@@ -377,3 +379,24 @@ def test_in_a_low_window_nothing_stands_upon_another(make_window: Callable[..., 
     page.panel.choose_view("Stages")
     settle(low)
     assert page.panel.controls.isVisible()
+    low.document.load(read_plan(EXAMPLE), None, None)
+    page.panel.choose_view("Measured")
+    settle(low)
+    assert len(page.panel.measured.labels) == 2
+    bars = [area.horizontalScrollBar() for area in page.panel.measured.findChildren(QScrollArea)]
+    assert bars
+    assert not any(bar.isVisible() for bar in bars)
+
+
+def test_controls_are_drawn_anew_where_they_change_and_only_there(window: MainWindow, settle: Settle) -> None:
+    page = window.desk.ramp
+    canvas = page.panel.controls.plots[0].canvas
+    drawn, cloud = canvas.live_frames, page.panel.columns.plots[ATOMS].canvas.live_frames
+    window.document.edit(plan_with(window.document.plan, {"cloud.atoms": "4e6"}), "atoms")
+    settle(window)
+    assert canvas.live_frames == drawn
+    assert page.panel.columns.plots[ATOMS].canvas.live_frames > cloud
+    lower = replace(window.document.plan.ramp[0].moves[0], end=read_quantity("2 uK", DEPTH))
+    window.document.edit(with_move(window.document.plan, 0, 0, lower), "end")
+    settle(window)
+    assert canvas.live_frames > drawn
