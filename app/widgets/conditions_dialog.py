@@ -15,6 +15,7 @@ from app.units import Quantity
 from app.widgets.quantity_field import QuantityField
 
 _NAMES = ("atoms", "temperature", "field", "scattering_length")
+_OPEN = {"field": _("not used"), "scattering_length": _("as the data have it")}
 
 
 class ConditionsDialog(QDialog):
@@ -36,7 +37,7 @@ class ConditionsDialog(QDialog):
             field = CANDIDATE_FIELDS[name]
             assert field.kind is not None
             entry = QuantityField(field.kind, field.label, tip=field.tip, optional=True)
-            entry.setPlaceholderText(usual.get(name, ""))
+            entry.setPlaceholderText(usual.get(name) or _OPEN.get(name, ""))
             entry.set_quantity(getattr(choice, name))
             entry.changed.connect(self._change)
             entry.error_changed.connect(self._judge)

@@ -25,6 +25,11 @@ if TYPE_CHECKING:
 
 Points = tuple[tuple[Quantity, Quantity], ...]
 
+_SHAPES = (
+    "How it goes from a to b in the duration d, at the time t: linear a + (b − a) t/d, exponential a (b/a)^(t/d), "
+    "power law a (1 + t/τ)^−p, or a table of times and values"
+)
+
 
 class MoveLine:
     """One move of a stage: control, from, to, shape. `places` says in which column of the table each widget stands."""
@@ -43,7 +48,7 @@ class MoveLine:
         self.control.activated.connect(self._choose_control)
         self.shape = Choice()
         self.shape.setAccessibleName(f"Shape of {name}")
-        self.shape.setToolTip("How it goes from the first value to the last: see the glossary")
+        self.shape.setToolTip(_SHAPES)
         self.shape.setMinimumContentsLength(6)
         for shape in Shape:
             self.shape.addItem(shape.label)
