@@ -86,6 +86,19 @@ def lasting_window(qapp: QApplication, tmp_path_factory: pytest.TempPathFactory)
 
 
 @pytest.fixture
+def load_plan(lasting_window: MainWindow, qtbot: QtBot) -> MakeWindow:
+    """Loads plans into the one window of the module, in place of a new one for each; from its first page on."""
+
+    def load(plan: Plan = DEFAULT_PLAN) -> MainWindow:
+        lasting_window.document.load(plan, None, None)
+        lasting_window.desk.show_page(0)
+        wait_until_settled(qtbot, lasting_window)
+        return lasting_window
+
+    return load
+
+
+@pytest.fixture
 def window(make_window: MakeWindow) -> MainWindow:
     return make_window()
 

@@ -21,12 +21,12 @@ RUBIDIUM = {"species.key": "85Rb", "species.field": "163.0(1) G"}
 
 
 @pytest.fixture
-def page(make_window: MakeWindow, settle: Settle) -> FieldPage:
-    return open_page(make_window, settle, RUBIDIUM)
+def page(load_plan: MakeWindow, settle: Settle) -> FieldPage:
+    return open_page(load_plan, settle, RUBIDIUM)
 
 
-def open_page(make_window: MakeWindow, settle: Settle, entries: dict[str, str]) -> FieldPage:
-    window = make_window(plan_with(DEFAULT_PLAN, entries))
+def open_page(load_plan: MakeWindow, settle: Settle, entries: dict[str, str]) -> FieldPage:
+    window = load_plan(plan_with(DEFAULT_PLAN, entries))
     window.actions_by_id["view.field"].trigger()
     settle(window)
     return window.desk.field
@@ -102,8 +102,8 @@ def test_keys_move_the_field_by_small_steps_as_one_change(page: FieldPage, settl
     assert window.document.plan.species.field == after
 
 
-def test_a_double_click_sets_the_field_and_takes_a_typed_length_away(make_window: MakeWindow, settle: Settle) -> None:
-    page = open_page(make_window, settle, {"species.key": "85Rb", "species.scattering_length": "300 a0"})
+def test_a_double_click_sets_the_field_and_takes_a_typed_length_away(load_plan: MakeWindow, settle: Settle) -> None:
+    page = open_page(load_plan, settle, {"species.key": "85Rb", "species.scattering_length": "300 a0"})
     window = window_of(page)
     assert "as typed. It overrides the data" in page.sentence.text()
     place = page.plot.canvas.place_of(180.0, 100.0)
@@ -153,8 +153,8 @@ def test_a_zoomed_range_is_computed_and_another_state_begins_with_its_whole_rang
     assert (picture.x.low, picture.x.high) == (0.0, 800.0)
 
 
-def test_a_state_without_resonances_says_so_and_offers_one_that_has(make_window: MakeWindow, settle: Settle) -> None:
-    page = open_page(make_window, settle, {"species.key": "87Rb", "species.state": "F=1 mF=-1"})
+def test_a_state_without_resonances_says_so_and_offers_one_that_has(load_plan: MakeWindow, settle: Settle) -> None:
+    page = open_page(load_plan, settle, {"species.key": "87Rb", "species.state": "F=1 mF=-1"})
     window = window_of(page)
     assert page.is_empty
     assert "no magnetic resonance" in page.empty.text
@@ -171,8 +171,8 @@ def test_a_state_without_resonances_says_so_and_offers_one_that_has(make_window:
     assert page.bar.status.text == HINT_WITHOUT
 
 
-def test_the_keyboard_reaches_a_page_without_a_plot(make_window: MakeWindow, settle: Settle) -> None:
-    page = open_page(make_window, settle, {"species.key": "87Rb", "species.state": "F=1 mF=-1"})
+def test_the_keyboard_reaches_a_page_without_a_plot(load_plan: MakeWindow, settle: Settle) -> None:
+    page = open_page(load_plan, settle, {"species.key": "87Rb", "species.state": "F=1 mF=-1"})
     page.window().activateWindow()
     page.take_focus()
     assert page.isAncestorOf(QApplication.focusWidget() or page.window())

@@ -102,8 +102,8 @@ def test_without_a_passenger_it_offers_one_and_shows_its_numbers(
     assert page.panel.is_empty
 
 
-def test_the_clouds_are_drawn_and_said(make_window: MakeWindow, settle: Settle) -> None:
-    window = opened(make_window(plan()), settle)
+def test_the_clouds_are_drawn_and_said(load_plan: MakeWindow, settle: Settle) -> None:
+    window = opened(load_plan(plan()), settle)
     page = window.desk.mixture
     assert page.panel.sentence.text().startswith("40K shares the centre of 87Rb; at ")
     assert "40K stands at T/TF = " in page.panel.detail.text()
@@ -118,8 +118,8 @@ def test_the_clouds_are_drawn_and_said(make_window: MakeWindow, settle: Settle) 
     assert "Beams or coils would give each species its own" in page.panel.caveats.toPlainText()
 
 
-def test_a_colder_passenger_collides_more_often(make_window: MakeWindow, settle: Settle) -> None:
-    window = opened(make_window(plan()), settle)
+def test_a_colder_passenger_collides_more_often(load_plan: MakeWindow, settle: Settle) -> None:
+    window = opened(load_plan(plan()), settle)
     page = window.desk.mixture
     assert page.answer is not None
     before, said = page.answer.value("passenger_collision_rate"), page.panel.sentence.text()
@@ -133,8 +133,8 @@ def test_a_colder_passenger_collides_more_often(make_window: MakeWindow, settle:
     assert page.panel.sentence.text() == said
 
 
-def test_an_unknown_length_is_said_and_nothing_is_drawn_as_zero(make_window: MakeWindow, settle: Settle) -> None:
-    window = opened(make_window(without_length()), settle)
+def test_an_unknown_length_is_said_and_nothing_is_drawn_as_zero(load_plan: MakeWindow, settle: Settle) -> None:
+    window = opened(load_plan(without_length()), settle)
     page = window.desk.mixture
     assert page.panel.sentence.text().endswith("; how often they collide is not known.")
     unknown = "not known: the data have no scattering length between these two"
@@ -150,8 +150,8 @@ def test_an_unknown_length_is_said_and_nothing_is_drawn_as_zero(make_window: Mak
     assert page.pictures() == ()
 
 
-def test_the_passenger_follows_along_the_ramp(make_window: MakeWindow, settle: Settle) -> None:
-    window = opened(make_window(plan()), settle, MixtureView.RAMP)
+def test_the_passenger_follows_along_the_ramp(load_plan: MakeWindow, settle: Settle) -> None:
+    window = opened(load_plan(plan()), settle, MixtureView.RAMP)
     page = window.desk.mixture
     run = ramp_answer(plan()).passenger
     assert run is not None
@@ -172,8 +172,8 @@ def curve(picture, role: Role) -> np.ndarray:
     return next(one.y for one in picture.curves if one.role is role)
 
 
-def test_times_are_read_with_the_arrow_keys(make_window: MakeWindow, settle: Settle) -> None:
-    window = opened(make_window(plan()), settle, MixtureView.RAMP)
+def test_times_are_read_with_the_arrow_keys(load_plan: MakeWindow, settle: Settle) -> None:
+    window = opened(load_plan(plan()), settle, MixtureView.RAMP)
     page = window.desk.mixture
     canvas = page.panel.courses.plots[TEMPERATURE].canvas
     QTest.keyClick(canvas, Qt.Key.Key_Right, Qt.KeyboardModifier.ShiftModifier)
@@ -186,8 +186,8 @@ def test_times_are_read_with_the_arrow_keys(make_window: MakeWindow, settle: Set
     assert page.panel.courses.plots[TEMPERATURE].picture().marks == ()
 
 
-def test_without_a_ramp_the_usual_one_is_offered(make_window: MakeWindow, settle: Settle) -> None:
-    window = opened(make_window(replace(plan(), ramp=())), settle, MixtureView.RAMP)
+def test_without_a_ramp_the_usual_one_is_offered(load_plan: MakeWindow, settle: Settle) -> None:
+    window = opened(load_plan(replace(plan(), ramp=())), settle, MixtureView.RAMP)
     page = window.desk.mixture
     assert page.panel.empty.text.startswith("This plan has no ramp")
     page.panel.empty.buttons()[0].click()
@@ -197,11 +197,11 @@ def test_without_a_ramp_the_usual_one_is_offered(make_window: MakeWindow, settle
     assert not page.panel.is_empty
 
 
-def test_the_same_atoms_twice_are_refused_in_words(make_window: MakeWindow, settle: Settle) -> None:
+def test_the_same_atoms_twice_are_refused_in_words(load_plan: MakeWindow, settle: Settle) -> None:
     given = plan()
     assert given.passenger is not None
     twice = replace(given, passenger=replace(given.passenger, species=given.species))
-    window = opened(make_window(twice), settle)
+    window = opened(load_plan(twice), settle)
     assert "is the first species too" in window.desk.mixture.panel.empty.text
     window.document.edit(given, "another")
     settle(window)
@@ -209,10 +209,10 @@ def test_the_same_atoms_twice_are_refused_in_words(make_window: MakeWindow, sett
 
 
 def test_a_trap_of_beams_shows_the_sag_and_its_long_ramp_can_be_stopped(
-    make_window: MakeWindow, settle: Settle, qtbot: QtBot
+    load_plan: MakeWindow, settle: Settle, qtbot: QtBot
 ) -> None:
     cold = plan_with(with_temperature(read_plan(POTASSIUM), "1 uK"), {"cloud.temperature": "1 uK"})
-    window = opened(make_window(cold), settle)
+    window = opened(load_plan(cold), settle)
     page = window.desk.mixture
     assert page.panel.sentence.text().startswith("40K lies 284 nm above 87Rb;")
     (picture,) = page.pictures()
@@ -232,8 +232,8 @@ def test_a_trap_of_beams_shows_the_sag_and_its_long_ramp_can_be_stopped(
     assert len(page.pictures()) == 1
 
 
-def test_what_is_saved_is_what_comes_back(make_window: MakeWindow, settle: Settle, tmp_path: Path) -> None:
-    window = opened(make_window(plan()), settle)
+def test_what_is_saved_is_what_comes_back(load_plan: MakeWindow, settle: Settle, tmp_path: Path) -> None:
+    window = opened(load_plan(plan()), settle)
     said = window.desk.mixture.panel.sentence.text()
     save_plan(window.document.plan, tmp_path / "two.toml")
     window.document.edit(with_temperature(window.document.plan, "3 uK"), "temperature")

@@ -17,8 +17,8 @@ MakeWindow = Callable[..., MainWindow]
 
 
 @pytest.fixture
-def cold(make_window: MakeWindow, settle: Settle) -> MainWindow:
-    window = make_window(plan_with(DEFAULT_PLAN, {"cloud.temperature": "80 nK"}))
+def cold(load_plan: MakeWindow, settle: Settle) -> MainWindow:
+    window = load_plan(plan_with(DEFAULT_PLAN, {"cloud.temperature": "80 nK"}))
     window.actions_by_id["view.models"].trigger()
     settle(window)
     return window
@@ -66,8 +66,8 @@ def test_the_table_is_copied_as_text(cold: MainWindow) -> None:
     assert len(text.splitlines()) == 2
 
 
-def test_fermions_have_two_models_and_the_estimates(make_window: MakeWindow, settle: Settle) -> None:
-    window = make_window(plan_with(DEFAULT_PLAN, {"species.key": "6Li", "species.field": "832 G"}))
+def test_fermions_have_two_models_and_the_estimates(load_plan: MakeWindow, settle: Settle) -> None:
+    window = load_plan(plan_with(DEFAULT_PLAN, {"species.key": "6Li", "species.field": "832 G"}))
     window.actions_by_id["view.models"].trigger()
     settle(window)
     page = window.desk.models
