@@ -24,6 +24,9 @@ _STEPS = 40
 _FLAT = 1e-6
 """Curvature along a surface over that of the potential and the surface below which the way along it is level."""
 
+_LONGEST = 1e150
+"""[m] What can be squared: where nearly all is flat, a step of Newton's method has no bounds."""
+
 _ALIKE = 4
 """Places of one energy that are kept; where the edge is round about an axis, all of a circle are alike."""
 
@@ -189,6 +192,7 @@ def _lowest(potential: Potential, surface: Surface, starts: Floats, kind: Exit, 
         largest = np.abs(pull) * np.max(np.abs(bend), axis=(-2, -1)) + np.max(np.abs(hessian), axis=(-2, -1))
         flat = np.abs(values) <= _FLAT * largest[:, np.newaxis]
         step = np.where(flat, 0.0, -along / np.where(flat, 1.0, np.abs(values)))
+        step = np.clip(step, -_LONGEST, _LONGEST)
         step *= np.minimum(1.0, longest / np.maximum(np.linalg.norm(step, axis=-1, keepdims=True), 1e-300))
         r = r + np.einsum("nij,nj->ni", vectors, step)
     height, normal, _ = surface(r)

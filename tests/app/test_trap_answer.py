@@ -5,12 +5,13 @@ from __future__ import annotations
 import math
 import re
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pytest
 
 from app.engine import trap_answer, trap_of
-from app.plan import DEFAULT_PLAN, Plan, parse_plan, plan_with
+from app.plan import DEFAULT_PLAN, Plan, parse_plan, plan_with, read_plan
 from app.trap_words import NUMBERS, cautions, note_text, reason_not_trapped, reasons_missing, way_out
 from physics.constants import boltzmann
 from physics.light import polarizability
@@ -170,3 +171,10 @@ def test_strong_beams_and_coils_come_with_a_caution() -> None:
     coils, _estimates = cautions(made(COILS, 'gradient = "150 G/cm"\n').trap)
     assert "0.5 mT" in coils
     assert len(cautions(made(beam(), COILS, 'gradient = "150 G/cm"\n').trap)) == 3
+
+
+@pytest.mark.parametrize(("key", "state"), [("6Li", "F=3/2 mF=+3/2"), ("23Na", "F=1 mF=-1"), ("87Rb", "F=2 mF=+2")])
+def test_a_search_that_runs_far_out_ends_without_an_overflow(key: str, state: str) -> None:
+    plan = read_plan(Path(__file__).parents[1] / "data" / "plan_of_beams_and_coils.toml")
+    survey = trap_answer(plan_with(plan, {"species.key": key, "species.state": state})).survey
+    assert survey.trapped == (survey.depth is not None and survey.depth > 0.0)
