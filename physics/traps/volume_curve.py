@@ -103,7 +103,8 @@ class VolumeCurve:
         U = np.append(0.0, self.energies)
         W = np.append(0.0, self.volumes)
         middle = 0.5 * (U[1:] + U[:-1])
-        filled = np.exp(-middle / kT) * _below(np.maximum(self.ceiling - middle, 0.0) / kT)
+        # Over the factor of the lowest step, so that the coldest cloud keeps something.
+        filled = np.exp(-(middle - middle[0]) / kT) * _below(np.maximum(self.ceiling - middle, 0.0) / kT)
         arms = np.diff(W * np.append(0.0, self.arm_shares))
         share: Floats = (filled @ arms) / (filled @ np.diff(W))
         return share

@@ -90,6 +90,8 @@ def test_atoms_in_arms_are_weighed_by_what_is_filled() -> None:
     filled = np.sqrt(u) * np.exp(-u) * gammainc(1.5, eta - u)
     expected = np.sum(filled[u > eta / 4.0]) / np.sum(filled)
     assert curve.atoms_in_arms(1e-29 / (eta * boltzmann)) == pytest.approx(expected, rel=1e-3)
+    coldest, hottest = curve.atoms_in_arms(np.array([1e-6, 1e6]) * 1e-29 / boltzmann)
+    assert 0.0 <= coldest < hottest < 1.0
     assert curve.arm_share(np.array([1e-30, 1e-29])) == pytest.approx([0.0, 1.0 - 0.125])
 
 
