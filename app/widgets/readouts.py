@@ -105,7 +105,12 @@ class Readouts(QTreeView):
         return menu
 
     def ask_why(self) -> None:
-        """Ask how the current quantity is worked out; the first one where a heading or nothing is current."""
+        """Ask how the current quantity is worked out; the first one where a heading or nothing is current.
+
+        A plan that was never answered has none to ask of.
+        """
+        if not self._model.rowCount():
+            return
         row = self._model.row_at(self.currentIndex())
         if row is None:
             group = self._model.index(max(self.currentIndex().row(), 0), 0)
