@@ -360,20 +360,21 @@ def test_errors_are_one_sentence(plan: str, bare: str, capsys: pytest.CaptureFix
 
 
 @pytest.mark.skipif(os.name == "nt", reason="signals of a terminal")
-def test_an_interrupt_ends_quietly(bare: str) -> None:
+def test_an_interrupt_ends_quietly() -> None:
     script = (
         "import sys, app.commands.evaporate, app.answers.waypoints, physics.ramp_design\n"
         "from app.__main__ import main\n"
         "print('ready', flush=True)\n"
         "raise SystemExit(main(sys.argv[1:]))\n"
     )
+    beams = PRESET.with_name("evaporation_crossed_beams.toml")
     running = subprocess.Popen(
-        [sys.executable, "-c", script, "evaporate", bare, "--design"],
+        [sys.executable, "-c", script, "evaporate", str(beams), "--design"],
         cwd=ROOT, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True,
     )  # fmt: skip
     assert running.stdout is not None
     assert running.stdout.readline() == "ready\n"
-    time.sleep(0.4)  # a design takes seconds
+    time.sleep(0.4)  # a design with its surveys takes ten seconds and more
     running.send_signal(signal.SIGINT)
     out, err = running.communicate(timeout=30)
     assert (running.returncode, out, err) == (130, "", "")
