@@ -98,8 +98,11 @@ _CAVEATS: Mapping[RampCaveatKind, tuple[str, Callable[[float], str]]] = MappingP
             percent,
         ),
         RampCaveatKind.ONE_WAY_OUT: (
-            _("Atoms leave this trap in few directions: evaporation is slower than this answer, an upper bound, says."),
-            _PLAIN,
+            _(
+                "Only {value} of all directions lead out of this trap: evaporation is slower than this answer, an "
+                "upper bound, says."
+            ),
+            percent,
         ),
         RampCaveatKind.TRANSFER_APART: (
             _(

@@ -39,6 +39,9 @@ if TYPE_CHECKING:
 _REPULSIVE = (Model.SEMI_IDEAL, Model.HARTREE_FOCK)
 """Models whose condensate is that of Thomas and Fermi."""
 
+NARROW = 0.25
+"""Share of all directions below which the way out of a trap is narrow, for clouds at rest and along ramps."""
+
 
 class Severity(Enum):
     """How much a caveat weighs.

@@ -9,7 +9,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from enum import Enum
 
-from physics.caveats import Severity, gravest_first
+from physics.caveats import NARROW, Severity, gravest_first
 from physics.evaporation import Evaporation
 from physics.evaporation_rates import Process
 from physics.ramp_extremes import RampExtremes
@@ -25,7 +25,7 @@ class RampCaveatKind(Enum):
     FAST_DEPTH = "largest |dlnU/dt| times the rethermalisation time: the ramp outruns the collisions"
     HYDRODYNAMIC = "largest mean collision rate over the highest angular frequency: atoms do not leave freely"
     FAST_LOSS = "largest share of the atoms lost in one rethermalisation time, evaporation apart"
-    ONE_WAY_OUT = "no value: atoms leave in few directions, so that the rate of evaporation is an upper bound"
+    ONE_WAY_OUT = "share of all directions that lead out: the rate of evaporation is an upper bound"
     PAULI_BLOCKING = "lowest T/TF: filled levels block collisions, which is left out"
     TRANSFER_APART = "distance of the minima of two traps over the radius of the cloud, left out of a sudden transfer"
     LIGHT_HEATING = "energy that scattered light brings in over the energy at the end"
@@ -65,19 +65,21 @@ _FLIPS = (0.01, 0.1)
 _APART = (0.3, 1.0)
 
 
-def ramp_caveats(run: Evaporation, extremes: RampExtremes, *, one_way_out: bool = False) -> tuple[RampCaveat, ...]:
+def ramp_caveats(
+    run: Evaporation, extremes: RampExtremes, *, open_share: float | None = None
+) -> tuple[RampCaveat, ...]:
     """The caveats of a simulated ramp, gravest first.
 
     Parameters
     ----------
     run : Evaporation
     extremes : RampExtremes. Of that run.
-    one_way_out : whether hot atoms get out in few directions only.
+    open_share : float or None. [1] Share of all directions in which hot atoms get out; None where it is not known.
     """
-    return gravest_first((*_kinetics(extremes, one_way_out), *_losses(run, extremes)))
+    return gravest_first((*_kinetics(extremes, open_share), *_losses(run, extremes)))
 
 
-def _kinetics(extremes: RampExtremes, one_way_out: bool) -> Iterator[RampCaveat]:
+def _kinetics(extremes: RampExtremes, open_share: float | None) -> Iterator[RampCaveat]:
     kinds = RampCaveatKind
     if extremes.polarised:
         yield RampCaveat(kind=kinds.POLARISED, severity=Severity.REFUSAL)
@@ -96,8 +98,8 @@ def _kinetics(extremes: RampExtremes, one_way_out: bool) -> Iterator[RampCaveat]
             yield _caveat(kind, value, value > warned)
     if extremes.farthest_transfer > _APART[0]:
         yield _caveat(kinds.TRANSFER_APART, extremes.farthest_transfer, extremes.farthest_transfer > _APART[1])
-    if one_way_out and not extremes.polarised:
-        yield RampCaveat(kind=kinds.ONE_WAY_OUT, severity=Severity.NOTE)
+    if open_share is not None and open_share < NARROW and not extremes.polarised:
+        yield _caveat(kinds.ONE_WAY_OUT, open_share, False)
     if extremes.lowest_fermi_temperature < _FERMI and not extremes.polarised:
         yield _caveat(kinds.PAULI_BLOCKING, extremes.lowest_fermi_temperature, False)
 

@@ -9,7 +9,7 @@ import math
 from collections.abc import Iterator
 from types import MappingProxyType
 
-from physics.caveats import Caveat, Severity
+from physics.caveats import NARROW, Caveat, Severity
 from physics.rates import Rates
 from physics.traps.notes import NoteKind
 from physics.traps.survey import Survey
@@ -29,9 +29,6 @@ _NOTES = MappingProxyType(
 
 _ALIKE = 1e-3
 """Relative distance of two wavelengths at which far-off light does the same."""
-
-NARROW = 0.25
-"""Share of the directions below which a way out is narrow."""
 
 _HEATED, _TOO_WARM = 0.25, 1.0
 """Share of T by which light warms a cloud while it lasts: worth knowing, and too much."""

@@ -145,7 +145,7 @@ def simulated(plan: Plan, start: RampStart, tick: Tick | None = None) -> RampAns
         target=target,
         extremes=extremes,
         caveats=(
-            *ramp_caveats(run, extremes, one_way_out=_one_way_out(plan, start.temperature)),
+            *ramp_caveats(run, extremes, open_share=_open_share(plan, start.temperature)),
             *_recalled(scattering, used.certainties(), run),
         ),
         scattering=scattering,
@@ -170,14 +170,9 @@ def _with_passenger(plan: Plan, start: RampStart, tick: Tick | None) -> tuple[Sy
         return None, str(error)
 
 
-def _one_way_out(plan: Plan, temperature: float) -> bool:
-    """Whether the trap, as it stands, lets hot atoms of a cloud out in few directions only."""
-    if plan.trap.harmonic:
-        return False
-    from physics.survey_caveats import NARROW
-
-    share = trap_answer(plan).survey.open_share(temperature)
-    return share is not None and share < NARROW
+def _open_share(plan: Plan, temperature: float) -> float | None:
+    """Share of all directions in which the trap, as it stands, lets hot atoms out; None where it is not known."""
+    return None if plan.trap.harmonic else trap_answer(plan).survey.open_share(temperature)
 
 
 def _recalled(

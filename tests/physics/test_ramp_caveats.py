@@ -77,11 +77,13 @@ def test_each_worst_number(
 
 def test_what_is_not_known_and_what_cannot_be(run: Evaporation) -> None:
     bare = replace(run, losses=Losses())
-    found = ramp_caveats(bare, replace(NOTHING, background_unknown=True), one_way_out=True)
+    found = ramp_caveats(bare, replace(NOTHING, background_unknown=True), open_share=0.04)
     kinds = RampCaveatKind
     assert [c.kind for c in found] == [kinds.ONE_WAY_OUT, kinds.NO_BACKGROUND, kinds.THREE_BODY_UNKNOWN]
+    assert found[0].value == 0.04
+    assert kinds.ONE_WAY_OUT not in {c.kind for c in ramp_caveats(bare, NOTHING, open_share=0.3)}
     fast = replace(NOTHING, polarised=True, fastest_trap=2.0, background_unknown=True, lowest_fermi_temperature=0.1)
-    found = ramp_caveats(run, fast, one_way_out=True)
+    found = ramp_caveats(run, fast, open_share=0.04)
     assert [c.kind for c in found] == [kinds.POLARISED, kinds.FAST_TRAP, kinds.NO_BACKGROUND]
     assert found[0].severity is Severity.REFUSAL
 
