@@ -1,15 +1,27 @@
-"""Pictures made up for the tests of drawing: a map, a slice, a profile, each for a strength to vary."""
+"""What tests of the program share: patience, and pictures made up for the tests of drawing: a map, a slice, a profile,
+each for a strength to vary."""
 
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import partial
 
 import numpy as np
 import pytest
+from pytestqt.qtbot import QtBot
 
 from app.figures.picture import Axis, Curve, Field, Label, Mark, Picture, Role
 
 PictureMaker = Callable[[float], Picture]
+PATIENCE = 60_000
+"""Milliseconds after which what a test waits for is taken not to come, on a machine that has much else to do."""
+
+
+@pytest.fixture
+def qtbot(qtbot: QtBot) -> QtBot:
+    """Waits patiently."""
+    qtbot.waitUntil = partial(qtbot.waitUntil, timeout=PATIENCE)
+    return qtbot
 
 
 def map_like(strength: float = 1.0) -> Picture:

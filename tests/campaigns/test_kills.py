@@ -23,7 +23,7 @@ SEED = 20_270_115
 ROOT = Path(__file__).resolve().parents[2]
 SCRIPT = Path(__file__).with_name("window_to_be_killed.py")
 PLAN = ROOT / "presets" / "plans" / "crossed_trap_rubidium.toml"
-LATE = 1.0  # s by which a copy of an edit must be there, many times what the script asks for
+LATE = 1.5  # s by which a copy of an edit must be there, many times what the script asks for
 
 
 def start(*arguments: object) -> subprocess.Popen[str]:

@@ -61,7 +61,6 @@ def make_window(qapp: QApplication, qtbot: QtBot, tmp_path: Path) -> Iterator[Ma
         window = MainWindow(Settings(tmp_path / "settings"), size=QSize(*size))
         window.show()
         window.furnish(plan, theme=ThemeChoice.LIGHT)
-        qtbot.waitExposed(window)
         wait_until_settled(qtbot, window)
         made.append(window)
         return window
@@ -122,7 +121,7 @@ def answer_question(monkeypatch: pytest.MonkeyPatch) -> Callable[[QMessageBox.St
 
 def wait_until_settled(qtbot: QtBot, window: MainWindow) -> None:
     """Until plan, answers, the visible part and the paint have all arrived."""
-    qtbot.waitUntil(lambda: window.answers.settled, timeout=20_000)
+    qtbot.waitUntil(lambda: window.answers.settled)
     QApplication.processEvents()
     QApplication.processEvents()
 

@@ -240,8 +240,8 @@ def test_in_the_same_light_rows_come_as_they_are_done(
     monkeypatch.setattr(answers, "PATIENCE", -1.0)
     window.actions_by_id["view.candidates"].trigger()
     page = page_of(window)
-    qtbot.waitUntil(lambda: names(window) == ["41K  F=2 mF=+2", "41K  F=1 mF=+1"], timeout=15_000)
-    qtbot.waitUntil(lambda: page.bar.progress.isVisible(), timeout=5000)
+    qtbot.waitUntil(lambda: names(window) == ["41K  F=2 mF=+2", "41K  F=1 mF=+1"])
+    qtbot.waitUntil(lambda: page.bar.progress.isVisible())
     page.bar.progress.button.click()
     assert window.answers.settled
     assert len(names(window)) == 2
@@ -281,7 +281,7 @@ def test_the_best_evaporation_is_worked_out_on_demand_and_can_be_stopped(
     page = page_of(compared)
     assert all(math.isnan(value) for value in values(compared, "evaporated_atoms"))
     page.choices.evaporate.click()
-    qtbot.waitUntil(lambda: page.bar.progress.isVisible(), timeout=5000)
+    qtbot.waitUntil(lambda: page.bar.progress.isVisible())
     assert "best evaporations" in page.bar.progress.label.text()
     page.bar.progress.button.click()
     assert compared.answers.settled

@@ -35,7 +35,6 @@ def show(qtbot) -> Callable[..., LiveCanvas]:
         canvas.resize(*size)
         canvas.show_picture(lambda: picture)
         canvas.show()
-        qtbot.waitExposed(canvas)
         QApplication.processEvents()
         return canvas
 

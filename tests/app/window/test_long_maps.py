@@ -62,12 +62,11 @@ def test_the_map_of_a_slow_model_arrives_with_its_own_threshold(
 
 def test_a_draft_is_shown_meanwhile_and_says_so(window: MainWindow, qtbot: QtBot, slow_map: list[int]) -> None:
     use(window, "Hartree-Fock")
-    qtbot.waitUntil(lambda: shown(window).asked is Model.HARTREE_FOCK, timeout=5000)
+    qtbot.waitUntil(lambda: shown(window).asked is Model.HARTREE_FOCK)
     assert shown(window).model is Model.SEMI_IDEAL
     assert "semi-ideal" in window.desk.map.plot.picture().note
     progress = window.desk.map.bar.progress
-    qtbot.waitUntil(progress.isVisible, timeout=5000)
-    assert progress.label.text() == "Hartree-Fock map 40 %"
+    qtbot.waitUntil(lambda: progress.isVisible() and progress.label.text() == "Hartree-Fock map 40 %")
     window.answers.stop_part()
 
 
@@ -75,7 +74,7 @@ def test_a_map_that_is_under_way_is_not_begun_again_by_a_moving_cloud(
     window: MainWindow, qtbot: QtBot, slow_map: list[int]
 ) -> None:
     use(window, "exact levels")
-    qtbot.waitUntil(lambda: bool(slow_map), timeout=5000)
+    qtbot.waitUntil(lambda: bool(slow_map))
     for value in range(200, 230):
         window.document.edit(plan_with(window.document.plan, {"cloud.temperature": f"{value} nK"}), "T", "same")
         qtbot.wait(1)
@@ -90,7 +89,7 @@ def test_a_stopped_map_stays_stopped_until_it_is_wanted(
 ) -> None:
     use(window, "exact levels")
     progress = window.desk.map.bar.progress
-    qtbot.waitUntil(progress.isVisible, timeout=5000)
+    qtbot.waitUntil(progress.isVisible)
     progress.button.click()
     assert window.answers.settled
     assert progress.label.text() == "exact levels map stopped"
@@ -109,15 +108,15 @@ def test_another_trap_or_page_takes_the_place_of_a_map_under_way(
     window: MainWindow, qtbot: QtBot, settle: Settle, slow_map: list[int]
 ) -> None:
     use(window, "exact levels")
-    qtbot.waitUntil(lambda: bool(slow_map), timeout=5000)
+    qtbot.waitUntil(lambda: bool(slow_map))
     window.document.edit(plan_with(window.document.plan, {"trap.frequencies": "99 Hz, 99 Hz, 9 Hz"}), "trap")
-    qtbot.waitUntil(lambda: len(slow_map) == 2, timeout=5000)
+    qtbot.waitUntil(lambda: len(slow_map) == 2)
     window.desk.show_page(2)
     settle(window)
     assert window.desk.profile.plots[0].canvas.picture is not None
     assert not window.desk.map.bar.progress.running
     window.desk.show_page(0)
-    qtbot.waitUntil(lambda: len(slow_map) == 3, timeout=5000)
+    qtbot.waitUntil(lambda: len(slow_map) == 3)
     window.answers.stop_part()
 
 

@@ -225,7 +225,7 @@ def test_a_trap_of_beams_shows_the_sag_and_its_long_ramp_can_be_stopped(
     assert page.bar.progress.label.text() == "ramp with the passenger stopped"
     assert page.bar.progress.button.text() == "Compute"
     assert page.panel.empty.text.startswith("The simulation of the ramp was stopped.")
-    qtbot.waitUntil(lambda: not window.answers.newest.busy, timeout=20_000)
+    qtbot.waitUntil(lambda: not window.answers.newest.busy)
     assert page.sympathetic is None
     page.panel.choose(MixtureView.CLOUDS)
     settle(window)

@@ -96,12 +96,12 @@ def test_a_design_can_be_cancelled_and_asked_for_again(qtbot: QtBot, window, set
     page = view(window, settle, "Design")
     design = page.panel.design
     design.go.click()
-    qtbot.waitUntil(lambda: window.answers._job is not None, timeout=5000)
+    qtbot.waitUntil(lambda: window.answers._job is not None)
     page.part_stopped.emit()
     settle(window)
     assert design.sentence.text() == ""
     design.go.click()
-    qtbot.waitUntil(lambda: window.answers._job is not None, timeout=5000)
+    qtbot.waitUntil(lambda: window.answers._job is not None)
     page.part_stopped.emit()
     settle(window)
 

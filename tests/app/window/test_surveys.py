@@ -101,14 +101,14 @@ def test_the_last_good_answer_stays_and_says_what_is_waited_for(
     before = window.answers.cloud
     surveys.gate.clear()
     window.document.edit(with_power(plan, "2.463 W"), "plan")
-    qtbot.waitUntil(lambda: window.desk.verdict.stale, timeout=5000)
+    qtbot.waitUntil(lambda: window.desk.verdict.stale)
     assert window.desk.verdict.sentence == "Not current: the trap is being surveyed"
     assert window.answers.cloud is before
     assert not window.answers.settled
     assert window.desk.map.plot.canvas.stale_text is not None
     # what comes between is not waited for: undo brings the old answer back while the worker is still busy
     window.document.stack.undo()
-    qtbot.waitUntil(lambda: window.answers.settled and not window.desk.verdict.stale, timeout=5000)
+    qtbot.waitUntil(lambda: window.answers.settled and not window.desk.verdict.stale)
     surveys.gate.set()
     settle(window)
     assert window.answers.cloud.plan == DEFAULT_PLAN
@@ -124,7 +124,7 @@ def test_surveys_on_the_way_are_shown_as_not_current(
     surveys.gate.clear()
     window.document.edit(first, "plan")
     window.answers.answer_now()
-    qtbot.waitUntil(lambda: len(surveys.threads) == 1, timeout=5000)
+    qtbot.waitUntil(lambda: len(surveys.threads) == 1)
     window.document.edit(last, "plan")
     window.answers.answer_now()
     surveys.gate.set()

@@ -177,7 +177,7 @@ def test_it_can_be_stopped_and_the_window_goes_on(
     choose(card.control, Control(ControlKind.LEVITATION))
     card.button.click()
     crossed.document.edit(plan_with(crossed.document.plan, {"cloud.temperature": "300 nK"}), "temperature")
-    qtbot.waitUntil(lambda: crossed.answers.current, timeout=5000)  # the cloud is answered meanwhile
+    qtbot.waitUntil(lambda: crossed.answers.current)  # the cloud is answered meanwhile
     card.button.click()
     assert card.result.text() == ""
     assert card.button.text() == "Work it out"
