@@ -16,7 +16,7 @@ LONG = os.environ.get("COLDWARD_LONG") == "1"
 FILES = 10_000 if LONG else 100
 SEED = 20_270_116
 LONGEST_MESSAGE = 1000
-PATIENCE = 2.0  # s for one file, a hundred times what it takes
+PATIENCE = 10.0  # s for one file, which takes 20 ms or so: longer is a hang
 ROOT = Path(__file__).resolve().parents[2]
 WHOLE = tuple(
     path.read_text(encoding="utf-8")
