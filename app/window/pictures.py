@@ -12,7 +12,7 @@ from app.widgets.limits_dialog import LimitsDialog
 from app.window.dialogs import AboutDialog, shortcuts_dialog
 from app.window.main_window import MainWindow
 
-PATIENCE_MS = 20_000
+PATIENCE_MS = 120_000
 
 
 def grab_all(window: MainWindow, folder: Path) -> tuple[Path, ...]:
