@@ -42,7 +42,7 @@ class Trait(Enum):
             case Trait.FERMIONS:
                 return not row.bosons
             case Trait.TRAPPED:
-                return row.trapped
+                return row.trapped is True
             case Trait.COLLIDING:
                 return row.cell("elastic_collision_rate").value > 0.0
             case Trait.SOUND:

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from app.answers.candidate_row import CandidateRow, Cell, Failure
 from app.candidate_choices import Basis, Start
 from app.candidate_columns import COLUMNS, Datum, Part
+from app.caveat_words import caveat_line, caveat_text, line_of
 from app.language import translate as _
 from app.model_words import OBSTACLES
 from app.quantities import display_factor
@@ -134,8 +135,21 @@ def _sourced(word: str, source: str, certainty: object) -> str:
 
 
 def status_text(row: CandidateRow) -> str:
-    """Where a row fails, in a word or two; empty where it does not."""
-    return "" if row.failure is None else row.failure.label
+    """Where a row fails, in a word or two, else how many warnings its numbers carry; empty where there is nothing."""
+    if row.failure is not None or not row.warnings:
+        return "" if row.failure is None else row.failure.label
+    return f"{warning_sign(row)} {len(row.warnings)}"
+
+
+def warning_sign(row: CandidateRow) -> str:
+    """The sign of the gravest warning of a row that has any."""
+    return line_of(row.warnings[0].severity, "").sign
+
+
+def warning_texts(row: CandidateRow) -> tuple[str, ...]:
+    """What to mind about the numbers of a row: sentences, the gravest first."""
+    cloud = row.cloud
+    return () if cloud is None else tuple(caveat_text(caveat, cloud) for caveat in row.warnings)
 
 
 def model_text(row: CandidateRow) -> str:
@@ -165,6 +179,10 @@ def row_tip_text(row: CandidateRow) -> str:
         lines.append(_("model: {model}").format(model=row.cloud.model.label))
     if reason := model_reason(row):
         lines.append(reason)
+    if row.cloud is not None:
+        for warning in row.warnings:
+            line = caveat_line(warning, row.cloud)
+            lines.append(f"{line.sign} {line.word}: {line.sentence}")
     own = row.candidate
     for word, quantity in (
         (_("atoms"), own.atoms),

@@ -8,6 +8,7 @@ from enum import Enum
 from functools import cached_property
 from typing import TYPE_CHECKING
 
+from app.answers.candidate_assumed import assumptions
 from app.answers.candidate_trap import TrapFacts
 from app.answers.uncertainty import Spread
 from app.candidate_columns import COLUMNS, Column, Datum, Part
@@ -16,6 +17,7 @@ from app.quantities import QUANTITIES
 from app.quantity_row import Need
 from app.sureness import Sureness, least_sure, sureness_of
 from app.words import reason_missing
+from physics.caveats import Caveat, Severity
 from physics.constants import boltzmann
 from physics.scattering import WhyUnknown, tuning
 from physics.species_tables import Resonance
@@ -95,8 +97,15 @@ class CandidateRow:
         return self.state.isotope.statistics.value == "boson"
 
     @property
-    def trapped(self) -> bool:
-        return self.trap.held
+    def trapped(self) -> bool | None:
+        """Whether atoms are held; None where the data do not tell."""
+        return None if self.trap.untold else self.trap.held
+
+    @property
+    def warnings(self) -> tuple[Caveat, ...]:
+        """What the numbers of the cloud do not cover, the gravest first; notes are left out."""
+        caveats = () if self.cloud is None else self.cloud.caveats
+        return tuple(caveat for caveat in caveats if caveat.severity is not Severity.NOTE)
 
     @cached_property
     def broadest_resonance(self) -> Resonance | None:
@@ -142,7 +151,7 @@ class CandidateRow:
         value, reason = self._value(column)
         if not math.isfinite(value):
             return Cell(value=math.nan, sureness=Sureness.UNKNOWN, reason=reason or _("not defined for this cloud"))
-        assumed = self._assumed(column)
+        assumed = assumptions(self, column)
         sure = [self._sureness(datum) for datum in column.data]
         if assumed:
             sure.append(Sureness.ASSUMED)
@@ -219,48 +228,7 @@ class CandidateRow:
         sourced = cloud.losses.two_body if datum is Datum.TWO_BODY else cloud.losses.three_body
         return Sureness.SEEN if sourced is None else sureness_of(sourced.certainty)
 
-    def _assumed(self, column: Column) -> str:
-        """What is assumed or left out in a number; empty where nothing is."""
-        cloud = self.cloud
-        if cloud is None:
-            return ""
-        if column.name in _OF_THRESHOLD and not cloud.bosons and self.plan.target.reduced_temperature is None:
-            return _("T/TF = {limit} stands for the threshold: the plan's target names none").format(
-                limit=f"{cloud.threshold:.3g}"
-            )
-        if column.part is Part.EVAPORATION and self.evaporation is not None and self.evaporation.assumed:
-            return self.evaporation.assumed
-        if column.name in _OF_ALL_LOSSES:
-            losses = cloud.losses.losses
-            left_out = [
-                word
-                for word, number in (
-                    (_("background gas"), losses.background_lifetime),
-                    (_("two-body loss"), losses.two_body),
-                    (_("three-body loss"), losses.three_body),
-                )
-                if number is None
-            ]
-            if left_out:
-                said = _("without {losses}, of which nothing is known: an upper bound")
-                if column.name in _MORE_WITH_LOSSES:
-                    said = _("without {losses}, of which nothing is known: a lower bound")
-                return said.format(losses=_(" and ").join(left_out))
-        return ""
 
-
-_OF_THRESHOLD = frozenset({"threshold_temperature", "temperature_to_threshold", "atoms_to_threshold"})
-_OF_ALL_LOSSES = frozenset(
-    {
-        "total_lifetime",
-        "good_to_bad_ratio",
-        "loss_per_rethermalisation",
-        "loss_heating_rate",
-        "heating_rate",
-        "evaporated_atoms",
-    }
-)
-_MORE_WITH_LOSSES = frozenset({"loss_per_rethermalisation", "loss_heating_rate", "heating_rate"})
 _OF_EVAPORATION = {"evaporated_atoms": "atoms", "evaporation_time": "time"}
 _LENGTH_NEEDS = frozenset(
     {

@@ -8,11 +8,15 @@ from types import MappingProxyType
 from typing import TYPE_CHECKING
 
 from app.answers.part import part
-from app.answers.trap import trap_answer
+from app.answers.trap import TrapAnswer, trap_answer
+from app.language import translate as _
 from app.sureness import Sureness, least_sure, sureness_of
 from app.trap_words import reason_no_frequencies, reason_not_trapped, reasons_missing
+from app.words import percent
 from physics.species import State
 from physics.species_tables import load_lines
+from physics.traps.notes import NoteKind
+from physics.traps.potential import NotTrapped
 
 if TYPE_CHECKING:
     from app.plan import Plan, TrapChoice
@@ -27,6 +31,11 @@ _NAMES = MappingProxyType(
 )
 """NAME of a column -> what the words about traps call it."""
 
+_SAME_WAVELENGTH = 1e-3
+"""Relative distance of two wavelengths below which they are one."""
+
+_UNTOLD = (NotTrapped.NO_POLARIZABILITY, NotTrapped.NO_MOMENT)
+
 KEPT = 160
 
 
@@ -40,6 +49,9 @@ class TrapFacts:
     values : NAME of a column -> its number in SI, NaN where there is none
     reasons : NAME -> why there is none
     sureness : of what light and field do to the atoms
+    untold : whether the data leave open what light or field do, so that nobody knows if atoms are held
+    assumed : what stands for a number that the data do not have, as a clause; empty where nothing does
+    light_assumed : the same of photons that the atoms scatter
     """
 
     not_held: str
@@ -48,6 +60,9 @@ class TrapFacts:
     values: MappingProxyType[str, float]
     reasons: MappingProxyType[str, str]
     sureness: Sureness
+    untold: bool = False
+    assumed: str = ""
+    light_assumed: str = ""
 
     @property
     def held(self) -> bool:
@@ -66,6 +81,7 @@ def trap_facts(plan: Plan) -> TrapFacts:
             number = getattr(found.heating if word.endswith("_rate") else found, word)
         values[name] = math.nan if number is None else float(number)
         reasons[name] = missing.get(word, "")
+    distance = _distance_of_published(answer)
     return TrapFacts(
         not_held=reason_not_trapped(answer),
         no_frequencies="" if not answer.trapped else reason_no_frequencies(answer),
@@ -73,7 +89,21 @@ def trap_facts(plan: Plan) -> TrapFacts:
         values=MappingProxyType(values),
         reasons=MappingProxyType(reasons),
         sureness=trap_sureness(answer.state, plan.trap),
+        untold=found.reason in _UNTOLD,
+        assumed=""
+        if distance is None or distance < _SAME_WAVELENGTH
+        else _("the polarizability is one published for a wavelength {share} away").format(share=percent(distance)),
+        light_assumed=""
+        if distance is None
+        else _("from one published polarizability, without the lines of the species: a lower bound"),
     )
+
+
+def _distance_of_published(answer: TrapAnswer) -> float | None:
+    """The largest relative distance of a beam from the wavelength of a published polarizability that stands for the
+    lines of the species; None where none does."""
+    notes = (note for note in answer.survey.notes if note.kind is NoteKind.PUBLISHED_POLARIZABILITY)
+    return max((abs(note.value) for note in notes), default=None)
 
 
 def trap_sureness(state: State, trap: TrapChoice) -> Sureness:

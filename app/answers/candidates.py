@@ -229,7 +229,8 @@ def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow
     trap = trap_facts(plan)
     cloud, failure, reason = None, None, ""
     if not trap.held:
-        failure, reason = Failure.NOT_TRAPPED, trap.not_held
+        failure = Failure.NO_DATA if trap.untold else Failure.NOT_TRAPPED
+        reason = trap.not_held
     else:
         try:
             cloud = cloud_answer(plan)

@@ -182,6 +182,7 @@ def compare_body(
     """The answer as the JSON contract has it; numbers in SI."""
     from app.candidate_choices import Basis
     from app.candidate_words import model_reason
+    from app.commands.state import caveats_body
 
     found = []
     for row, score in zip(rows, scores, strict=True):
@@ -194,6 +195,7 @@ def compare_body(
             "fails": None if row.failure is None else row.failure.value,
             "model_reason": model_reason(row) or None,
             "quantities": {name: _quantity(row, name) for name in names},
+            "caveats": [] if row.cloud is None else caveats_body(row.cloud),
         }
         if weights:
             entry["score"] = _finite(score.value)
@@ -280,6 +282,7 @@ def compare_text(
         ("Where they fail", _failures(rows)),
         ("Where evaporation falls short", _evaporations(rows)),
         ("Another model than the usual", _models(rows)),
+        ("Take care: `coldward state` says more of each", _warnings(rows)),
     ):
         if groups:
             lines += ["", title, *groups]
@@ -313,6 +316,14 @@ def _models(rows: list[CandidateRow]) -> list[str]:
         reason = model_reason(row)
         if reason and row.cloud is not None:
             groups.setdefault(f"{row.cloud.model.label}, as {reason}", []).append(row)
+    return _wrapped(groups.items())
+
+
+def _warnings(rows: list[CandidateRow]) -> list[str]:
+    groups: dict[str, list[CandidateRow]] = {}
+    for row in rows:
+        for name in dict.fromkeys(warning.id for warning in row.warnings):
+            groups.setdefault(name.replace("_", " "), []).append(row)
     return _wrapped(groups.items())
 
 

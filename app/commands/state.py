@@ -106,22 +106,28 @@ def _explained_text(answer: CloudAnswer, explanations: Sequence[Explanation]) ->
 
 def state_body(answer: CloudAnswer) -> dict[str, Any]:
     """The answer as the JSON contract has it: model, quantities in SI, caveats."""
-    from app.caveat_words import caveat_text
     from app.quantities import QUANTITIES
 
     return {
         "model": answer.model.value,
         "quantities": {name: _quantity(answer, row) for name, row in QUANTITIES.items()},
-        "caveats": [
-            {
-                "id": caveat.id,
-                "severity": caveat.severity.value,
-                "text": caveat_text(caveat, answer),
-                "value": _finite(caveat.value),
-            }
-            for caveat in answer.caveats
-        ],
+        "caveats": caveats_body(answer),
     }
+
+
+def caveats_body(answer: CloudAnswer) -> list[dict[str, Any]]:
+    """The caveats of an answer as the JSON contract has them."""
+    from app.caveat_words import caveat_text
+
+    return [
+        {
+            "id": caveat.id,
+            "severity": caveat.severity.value,
+            "text": caveat_text(caveat, answer),
+            "value": _finite(caveat.value),
+        }
+        for caveat in answer.caveats
+    ]
 
 
 def _quantity(answer: CloudAnswer, row: Row) -> dict[str, Any]:
