@@ -7,7 +7,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QDialog, QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
 from app.answers.candidate_evaporation import EvaporationResult, evaporate_rows, evaporation_key, hopeless
@@ -60,13 +60,8 @@ class _Evaporated:
 
 
 class CandidatesPage(SinglePlotPage):
-    """memory_changed() is sent when columns, order, filters or weights are others; `memory` has them as texts, and
-    `recall` takes them back. unit_chosen(name, unit) when the reader picks another unit."""
-
     title = "Candidates"
     plot_name = "Candidates compared"
-    memory_changed = Signal()
-    unit_chosen = Signal(str, str)
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
@@ -141,7 +136,6 @@ class CandidatesPage(SinglePlotPage):
         ).texts()
 
     def recall(self, texts: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
-        """Take up what `memory` gave; what cannot be read is left out."""
         kept = memory_from(texts)
         self._units = dict(units)
         self.choices.names, self.sorted_by, self.descending = kept.columns, kept.ordered_by, kept.descending

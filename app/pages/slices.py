@@ -2,11 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping, Sequence
 from functools import partial
 from typing import Any
 
-from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QLabel, QMenu, QToolButton, QWidget
 
 from app.engine import Against, SlicesAnswer, slices_answer
@@ -24,10 +23,7 @@ USUAL_FERMIONS = ("peak_phase_space_density", "reduced_temperature")
 
 
 class SlicesPage(Page):
-    """chosen_changed(names) is sent when the user picks other quantities."""
-
     title = "Slices"
-    chosen_changed = Signal(object)
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
@@ -68,8 +64,15 @@ class SlicesPage(Page):
     def choose(self, names: tuple[str, ...]) -> None:
         """Show these quantities."""
         self._chosen = tuple(name for name in names if name in QUANTITIES)[:MOST]
-        self.chosen_changed.emit(self._chosen)
+        self.memory_changed.emit()
         self.part_wanted.emit()
+
+    def memory(self) -> dict[str, tuple[str, ...]]:
+        """The quantities that the user chose."""
+        return {"chosen": self._chosen}
+
+    def recall(self, texts: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
+        self.choose(tuple(texts.get("chosen", ())))
 
     def _fill_menu(self) -> None:
         self.menu.clear()

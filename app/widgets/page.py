@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from io import BytesIO
 from pathlib import Path
 from typing import Any, Literal, get_args
@@ -31,7 +32,8 @@ class Page(QWidget):
     Signals: plan_edited(Plan, what, merge key) when the user changes the plan on a plot; part_wanted() when the part
     on show is no longer the one to show; part_stopped() and part_allowed() when the user does not want a long one to
     be worked out, or wants it after all; told(str) for one sentence to the user; folder_used(Path) after a file was
-    saved there.
+    saved there; memory_changed() when `memory` gives something else; unit_chosen(name, unit) when the reader picks
+    another unit for a quantity.
     """
 
     plan_edited = Signal(object, str, str)
@@ -40,6 +42,8 @@ class Page(QWidget):
     part_allowed = Signal()
     told = Signal(str)
     folder_used = Signal(object)
+    memory_changed = Signal()
+    unit_chosen = Signal(str, str)
 
     title = ""
     needs_cloud = True
@@ -121,6 +125,21 @@ class Page(QWidget):
         self.theme = theme
         for plot in self._plots:
             plot.canvas.set_theme(theme)
+
+    @property
+    def problems(self) -> tuple[str, ...]:
+        """What cannot be read, as sentences."""
+        return ()
+
+    def discard_edits(self) -> None:
+        """Drop texts that could not be read: another plan is about to be shown."""
+
+    def memory(self) -> dict[str, tuple[str, ...]]:
+        """What the user has made of the page, to be remembered from one session to the next, as texts."""
+        return {}
+
+    def recall(self, texts: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
+        """Take up what `memory` gave, and the units that quantities are read in; what makes no sense is left out."""
 
     @property
     def plots(self) -> tuple[Plot, ...]:

@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from app.engine import CloudAnswer
     from app.plan import Plan
     from app.widgets.banner import Banner, Offer
+    from app.widgets.page import Page
     from app.window.answers import Answers
     from app.window.desk import Desk
     from app.window.files import Files
@@ -104,9 +105,7 @@ class MainWindow(QMainWindow):
         self.desk = Desk(self.looks.theme)
         self.banner = Banner()
         self.why = Why(self)
-        self.files = Files(
-            self.document, self.settings, self, self.tell, lambda: (*self.desk.bench.problems, *self.desk.ramp.problems)
-        )
+        self.files = Files(self.document, self.settings, self, self.tell, lambda: self.desk.problems)
         self.recovery = Recovery(self.document, self.settings.state_folder, self)
         self.actions_by_id = install_actions(self)
         self._recent = QMenu("Open &recent", self)
@@ -119,8 +118,8 @@ class MainWindow(QMainWindow):
         column.setSpacing(0)
         column.addWidget(self.banner)
         column.addWidget(self.desk, 1)
-        self.desk.restore_state(self.settings)
         self._connect_signals()
+        self.desk.restore_state(self.settings)
         self.setCentralWidget(body)
         self._restore_hook = install_excepthook(self._tell_trouble, self.recovery.save_copy)
         self.furnished = True
@@ -136,11 +135,8 @@ class MainWindow(QMainWindow):
         document, answers, desk = self.document, self.answers, self.desk
         # what the user does becomes a plan
         desk.bench.plan_edited.connect(document.edit)
-        for page in desk.pages:
-            page.plan_edited.connect(self._edit_on_page)
         # the plan goes to the forms and becomes an answer
         document.loading.connect(desk.bench.discard_edits)
-        document.loading.connect(desk.ramp.discard_edits)
         document.plan_changed.connect(self._plan_changed)
         desk.bench.problems_changed.connect(self._judge)
         desk.bench.trap.solving_wanted.connect(self._solve)
@@ -151,11 +147,8 @@ class MainWindow(QMainWindow):
         answers.surveying.connect(self._judge)
         answers.part_failed.connect(self.tell)
         # a page that comes to the front, or wants to show something else, asks for its part
+        desk.page_built.connect(self._connect_page)
         desk.page_changed.connect(self._page_changed)
-        for page in desk.pages:
-            page.part_wanted.connect(self._ask_part)
-            page.part_stopped.connect(answers.stop_part)
-            page.part_allowed.connect(self._allow_part)
         # files, history, looks
         document.file_changed.connect(self._file_changed)
         document.clean_changed.connect(lambda clean: self.setWindowModified(not clean))
@@ -164,24 +157,32 @@ class MainWindow(QMainWindow):
         document.stack.canUndoChanged.connect(self.actions_by_id["edit.undo"].setEnabled)
         document.stack.canRedoChanged.connect(self.actions_by_id["edit.redo"].setEnabled)
         self._recent.aboutToShow.connect(self._fill_recent)
-        for page in desk.pages:
-            self.looks.theme_changed.connect(page.set_theme)
+        self.looks.theme_changed.connect(desk.set_theme)
         # what is remembered, and what is told
         desk.readouts.unit_chosen.connect(self._choose_unit)
         desk.readouts.why_asked.connect(self._explain)
-        desk.slices.chosen_changed.connect(lambda names: self.settings.put("slices/chosen", names))
-        for page in desk.pages:
-            page.told.connect(self.tell)
-            page.folder_used.connect(self._use_folder)
         for name in ("edit.undo", "edit.redo"):
             self.actions_by_id[name].setEnabled(False)
-        self._use_folder(self.settings.last_folder)
-        desk.slices.choose(self.settings.texts("slices/chosen"))
-        desk.candidates.recall(
-            {name: self.settings.texts(f"candidates/{name}") for name in desk.candidates.memory()}, self.settings.units
+
+    def _connect_page(self, page: Page) -> None:
+        """The same for a page, once it is built, after it has learnt what the others know already."""
+        page.folder = self.settings.last_folder
+        page.recall(
+            {name: self.settings.texts(f"{page.title.lower()}/{name}") for name in page.memory()}, self.settings.units
         )
-        desk.candidates.memory_changed.connect(self._keep_comparison)
-        desk.candidates.unit_chosen.connect(self._choose_unit)
+        if self.answers.cloud is not None:
+            page.show_cloud(self.answers.cloud)
+        # what the user does becomes a plan, or another part to be worked out
+        page.plan_edited.connect(self._edit_on_page)
+        page.part_wanted.connect(self._ask_part)
+        page.part_stopped.connect(self.answers.stop_part)
+        page.part_allowed.connect(self._allow_part)
+        self.document.loading.connect(page.discard_edits)
+        # what is remembered, and what is told
+        page.memory_changed.connect(self._keep_memory)
+        page.unit_chosen.connect(self._choose_unit)
+        page.told.connect(self.tell)
+        page.folder_used.connect(self._use_folder)
 
     # ---------------------------------------------------------------- plan and answer
 
@@ -215,7 +216,7 @@ class MainWindow(QMainWindow):
             desk.readouts.show_answer(answer, self.settings.units)
             desk.caveats.show_lines(caveat_lines(answer))
         self.why.show_answer(answer, self.settings.units)
-        for page in desk.pages:
+        for page in desk.built_pages:
             page.show_cloud(answer)
         self._ask_part()
         self._judge()
@@ -256,7 +257,7 @@ class MainWindow(QMainWindow):
         self.desk.readouts.mark_stale()
         self.why.mark_stale()
         without_cloud = bool(self.answers.failure) and not self.desk.bench.problems
-        for page in self.desk.pages:
+        for page in self.desk.built_pages:
             if page.needs_cloud or not without_cloud:  # the others show the present plan
                 page.mark_stale("last good answer")
 
@@ -290,9 +291,10 @@ class MainWindow(QMainWindow):
             self.desk.readouts.show_answer(self.answers.cloud, self.settings.units)
             self.why.show_answer(self.answers.cloud, self.settings.units)
 
-    def _keep_comparison(self) -> None:
-        for name, texts in self.desk.candidates.memory().items():
-            self.settings.put(f"candidates/{name}", texts)
+    def _keep_memory(self) -> None:
+        for page in self.desk.built_pages:
+            for name, texts in page.memory().items():
+                self.settings.put(f"{page.title.lower()}/{name}", texts)
 
     def _explain(self, name: str) -> None:
         if self.answers.cloud is not None:
@@ -311,7 +313,7 @@ class MainWindow(QMainWindow):
 
     def _use_folder(self, folder: Path) -> None:
         self.settings.last_folder = folder
-        for page in self.desk.pages:
+        for page in self.desk.built_pages:
             page.folder = folder
 
     def _name_step(self, action: str, verb: str, step: str) -> None:

@@ -87,20 +87,19 @@ def _run(app: QApplication, settings: Settings, wishes: Wishes) -> int:
 
 
 def furnish_window(window: MainWindow, wishes: Wishes) -> None:
-    """Load the rest and show the plan; what was made so far will live as long as the window, so the collector need
-    not look at it again."""
-    plan, problem = _first_plan(wishes.plan_path)
-    window.furnish(plan, theme=wishes.theme)
-    if wishes.plan_path is not None and not problem:
-        window.files.read(wishes.plan_path)
-    if problem:
-        window.tell(problem)
-    QTimer.singleShot(0, _freeze)
-
-
-def _freeze() -> None:
-    gc.collect()
-    gc.freeze()
+    """Load the rest and show the plan. What is made now lives as long as the window: the collector looks at it neither
+    meanwhile, which takes a tenth of a start, nor ever after."""
+    gc.disable()
+    try:
+        plan, problem = _first_plan(wishes.plan_path)
+        window.furnish(plan, theme=wishes.theme)
+        if wishes.plan_path is not None and not problem:
+            window.files.read(wishes.plan_path)
+        if problem:
+            window.tell(problem)
+    finally:
+        gc.freeze()
+        gc.enable()
 
 
 def _first_plan(path: Path | None) -> tuple[Plan, str]:

@@ -46,7 +46,7 @@ import app.window.start as start
 furnish = start.furnish_window
 def furnish_and_wait(window, wishes):
     furnish(window, wishes)
-    canvas = window.desk.pages[0].plot.canvas
+    canvas = window.desk.map.plot.canvas
     while canvas.full_draws == 0:
         start.QApplication.processEvents()
     start.QApplication.instance().quit()

@@ -64,6 +64,11 @@ def test_not_needed_to_show_the_first_plots(modules: dict[str, list[str]], name:
     assert name not in modules["later"]
 
 
+def test_a_start_loads_no_page_but_the_one_in_front(modules: dict[str, list[str]]) -> None:
+    assert [name for name in modules["later"] if name.startswith("app.pages.")] == ["app.pages.map"]
+    assert not [name for name in modules["later"] if name.startswith(("app.widgets.ramp", "app.widgets.candidate"))]
+
+
 def test_the_probe_saw_a_window_with_plots(modules: dict[str, list[str]]) -> None:
     assert "PySide6.QtWidgets" in modules["first"]
     assert "matplotlib.figure" in modules["later"]
@@ -84,6 +89,7 @@ def test_size_page_and_columns_come_back(make_window) -> None:
     first.close()
     second = make_window()
     assert second.desk.page.title == "Profile"
+    assert second.desk.built_pages == [second.desk.page]
 
 
 @pytest.mark.parametrize("blob", [b"", b"garbage", bytes(range(200))])
