@@ -19,6 +19,9 @@ from physics.traps.descent import NOWHERE, OUTSIDE, destinations
 from physics.traps.potential import Potential
 from physics.traps.stationary import StationaryPoint
 
+_ALIKE, _FEW_ALIKE = 1e-9, 4
+"""Relative difference of the energies of minima that count as one, and for how many of those the edge is looked at."""
+
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Escape:
@@ -122,7 +125,7 @@ def _ways(
         ways += [_Way(escape=space, ends=(index, OUTSIDE)) for index in range(len(minima))]
     saddles = [point for point in points if point.falling == 1 and (outside is None or point.energy < outside)]
     edges = [*wall_passes(potential, wall), *arm_end_passes(potential, charts)]
-    for minimum in minima:
+    for minimum in _unlike(minima):
         edges.extend(knife_passes(potential, minimum.position, wall))
     # Both sides of each pass, and the inner side of each edge.
     falling = [_falling(saddle) for saddle in saddles]
@@ -144,6 +147,16 @@ def _ways(
         _Way(escape=_over(edge), ends=(int(end), OUTSIDE)) for edge, end in zip(edges, inner, strict=True) if end >= 0
     ]
     return ways, _unknown(potential, rests[ends == NOWHERE], length)
+
+
+def _unlike(minima: Sequence[StationaryPoint]) -> list[StationaryPoint]:
+    """The minima, and a few of those of one energy: all around a ring, the edge looks the same."""
+    kept: list[StationaryPoint] = []
+    for minimum in minima:
+        alike = [other for other in kept if abs(other.energy - minimum.energy) <= _ALIKE * abs(minimum.energy)]
+        if len(alike) < _FEW_ALIKE:
+            kept.append(minimum)
+    return kept
 
 
 def _inside(potential: Potential, charts: tuple[Chart, ...], wall: float) -> Callable[[Floats], NDArray[np.bool_]]:

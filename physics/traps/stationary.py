@@ -77,7 +77,7 @@ def stationary_points(landscape: Landscape) -> list[StationaryPoint]:
         for point in _refined(potential, starts, charts):
             # Newton's method also closes in on a cusp from all sides, whether it is a minimum or not.
             at_zero = any(np.linalg.norm(point.position - zero) < 1e-8 * potential.length for zero in zeros)
-            if not at_zero and all(_apart(point, other) for other in found):
+            if not at_zero and _apart(point, found):
                 found.append(point)
 
     add(searches, landscape.charts)
@@ -129,10 +129,11 @@ def cusp_at(potential: Potential, point: Floats) -> StationaryPoint:
     )
 
 
-def _apart(point: StationaryPoint, other: StationaryPoint) -> bool:
-    away = point.position - other.position
-    size = max(float(np.linalg.norm(point.position)), float(np.linalg.norm(other.position)), 1e-6)
-    return bool(np.linalg.norm(away) > 1e-6 * size)
+def _apart(point: StationaryPoint, others: Sequence[StationaryPoint]) -> bool:
+    """Whether a point is none of the others: where minima form a ring, there are hundreds of them."""
+    places = np.array([other.position for other in others]).reshape(-1, 3)
+    sizes = np.maximum(np.linalg.norm(places, axis=-1), max(float(np.linalg.norm(point.position)), 1e-6))
+    return bool(np.all(np.linalg.norm(places - point.position, axis=-1) > 1e-6 * sizes))
 
 
 def _starts(landscape: Landscape, index: int) -> tuple[Floats, Floats]:
@@ -245,7 +246,8 @@ def _refined(
         last = np.einsum("nij,nj->ni", edges[alive], step)
         for k in map(int, np.flatnonzero(settled)):
             place = r[alive[k]] + last[k]
-            if all(np.any(np.abs(units[alive[k]] @ (place - other)) > 1e-6) for other, _, _ in done):
+            away = (place - np.array([other for other, _, _ in done]).reshape(-1, 3)) @ units[alive[k]].T
+            if np.all(np.any(np.abs(away) > 1e-6, axis=-1)):
                 done.append((place, float(energy[k]), int(alive[k])))
         length = np.linalg.norm(step, axis=-1, keepdims=True)
         step *= np.minimum(1.0, 1.0 / np.maximum(length, 1e-300))

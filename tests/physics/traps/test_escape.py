@@ -12,7 +12,7 @@ import numpy as np
 import pytest
 
 from physics.species import load_species
-from physics.traps import Coils, GaussianBeam, Trap
+from physics.traps import Coils, GaussianBeam, Trap, escape
 from physics.traps.boundary import Exit
 from physics.traps.landscape import Landscape
 from physics.traps.survey import Survey, survey
@@ -80,3 +80,21 @@ def test_a_flood_runs_over_at_the_depth(first: int) -> None:
 def test_a_flood_runs_over_at_the_depth_of_many_traps(long: bool) -> None:
     count = 400 if long else 4
     assert sum(check(seed) for seed in range(100, 100 + count)) > 0.3 * count
+
+
+def test_a_ring_of_minima_is_looked_at_from_a_few_places(monkeypatch: pytest.MonkeyPatch) -> None:
+    # Repelling light along the axis of a quadrupole: every place of a ring is a minimum, and the edge is the same.
+    plug = GaussianBeam(name="plug", wavelength=532e-9, power=5.0, waists=40e-6, direction=(0.0, 0.0, 1.0))
+    coils = Coils(gradient=2.5, knife=20e6)
+    asked = []
+    knife_passes = escape.knife_passes
+    monkeypatch.setattr(escape, "knife_passes", lambda *given: asked.append(given) or knife_passes(*given))
+    found = survey(Trap(beams=(plug,), coils=coils, gravity=None), RUBIDIUM)
+    # Besides the ring, the zero of the field is a minimum of its own.
+    assert len(asked) <= 5
+    # Across the axis U = (dE/dB) (B'/2) r + U(0) exp(-2 r^2/w^2), and light does not reach the knife's surface.
+    slope = RUBIDIUM.zeeman_slope.value  # type: ignore[union-attr]
+    at_zero = float(found.potential.energy(np.zeros(3)))  # type: ignore[union-attr]
+    r = np.linspace(1e-6, 2e-4, 200001)
+    along = 0.5 * slope * 2.5 * r + at_zero * np.exp(-2.0 * (r / 40e-6) ** 2)
+    assert found.depth == pytest.approx(6.62607015e-34 * 20e6 - float(np.min(along)), rel=1e-6)
