@@ -106,8 +106,8 @@ _CAVEATS: Mapping[RampCaveatKind, tuple[str, Callable[[float], str]]] = MappingP
         ),
         RampCaveatKind.TRANSFER_APART: (
             _(
-                "Two traps of a sudden transfer have their minima {value} cloud radii apart, which is left out: fewer "
-                "atoms are caught, and hotter."
+                "Two traps of a sudden transfer have their minima {value} cloud radii apart: the cloud swings there, "
+                "and all of that energy counts as heat at once."
             ),
             _PLAIN,
         ),

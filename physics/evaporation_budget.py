@@ -71,6 +71,17 @@ class StageSummary:
     efficiency: float
     cooling: float
 
+    @property
+    def handed(self) -> bool:
+        """Whether it begins with a transfer, or with a jump of a control that changes the trap."""
+        return self.budget.energy[Process.TRANSFER] != 0.0 or self.budget.atoms[Process.TRANSFER] != 0.0
+
+    @property
+    def caught(self) -> float:
+        """Share of the atoms that its trap has caught; NaN where none were handed to it. [1] Number and temperature of
+        what was caught are those of its first row."""
+        return 1.0 - self.budget.atoms[Process.TRANSFER] / self.budget.atoms_before if self.handed else math.nan
+
 
 class Ledger:
     """Running totals of a simulation; a budget is the difference of two of its entries."""

@@ -140,7 +140,7 @@ class Track:
             found = slow_transfer(temperature, old, new)
         else:
             found = sudden_transfer(temperature, old, new, transfer.displacement if transfer else (0.0, 0.0, 0.0))
-            if transfer is not None and not any(transfer.displacement):
+            if transfer is not None:
                 self._farthest = float(np.fmax(self._farthest, distance_in_radii(self.gas.mass, temperature, old, new)))
         atoms = self.atoms * found.share
         if atoms < fewest or math.isnan(found.energy):

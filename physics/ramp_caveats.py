@@ -27,7 +27,7 @@ class RampCaveatKind(Enum):
     FAST_LOSS = "largest share of the atoms lost in one rethermalisation time, evaporation apart"
     ONE_WAY_OUT = "share of all directions that lead out: the rate of evaporation is an upper bound"
     PAULI_BLOCKING = "lowest T/TF: filled levels block collisions, which is left out"
-    TRANSFER_APART = "distance of the minima of two traps over the radius of the cloud, left out of a sudden transfer"
+    TRANSFER_APART = "distance of the minima of two traps over the radius of the cloud, whose swing counts as heat"
     LIGHT_HEATING = "energy that scattered light brings in over the energy at the end"
     SPIN_FLIPS = "share of the atoms lost at the zero of the field: an order of magnitude"
     NO_BACKGROUND = "no value: no background lifetime is given"

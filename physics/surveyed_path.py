@@ -16,6 +16,7 @@ from physics.species import State
 from physics.trap_path import SCALE, TrapPoint
 from physics.traps.heating import light_shares
 from physics.traps.survey import Survey, survey
+from physics.traps.surveyed_well import SurveyedWell
 from physics.traps.trap import Trap
 
 _COIL_PARTS = {
@@ -122,6 +123,7 @@ def point_of(found: Survey) -> TrapPoint:
         light_heating=float(found.heating.power),
         light_shares=_light_shares(found),
         zero_force=0.0 if found.spin_flips is None else found.spin_flips.force,
+        well=None if found.landscape is None or found.basin is None else SurveyedWell.of(found.landscape, found.basin),
     )
 
 

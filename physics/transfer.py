@@ -15,12 +15,13 @@ import numpy as np
 
 from physics.checks import Floats
 from physics.constants import boltzmann
-from physics.harmonic_integrals import legendre
+from physics.traps.wells import PowerWell
 from physics.truncated_averages import truncated_averages
 from physics.truncated_boltzmann import incomplete_gamma
 
 if TYPE_CHECKING:
     from physics.trap_path import TrapPath, TrapPoint
+    from physics.traps.wells import Places, Well
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -31,8 +32,8 @@ class Transfer:
     ----------
     path : TrapPath. The trap that follows, its controls as they stand.
     sudden : bool. At once; otherwise slowly.
-    displacement : (3,) [m] Of the new minimum from the old one, along the axes of the frequencies; for sudden transfers
-        between traps that have frequencies.
+    displacement : (3,) [m] Of the new minimum, beside what is known of where the minima are; for sudden transfers
+        between traps whose potential is known.
     """
 
     path: TrapPath
@@ -77,19 +78,29 @@ def slow_transfer(temperature: float, old: TrapPoint, new: TrapPoint) -> Transfe
 def sudden_transfer(
     temperature: float, old: TrapPoint, new: TrapPoint, displacement: tuple[float, float, float] = (0.0, 0.0, 0.0)
 ) -> Transferred:
-    """What the new trap catches.
+    """What the new trap catches, place by place where both potentials are known.
 
-    Between traps with harmonic volume curves and known frequencies the axes are taken as the same and the displacement
-    counts. Otherwise surfaces of equal potential are taken to keep their shape, which holds for a trap that is scaled,
-    or whose depth alone is changed.
+    Where the minima of both are known in the laboratory, the way between them counts; a trap that is given by its
+    frequencies is taken to have its minimum where that of the other one is. `displacement`: of the new minimum, beside
+    that. Relative error about 1e-4 of what is lost.
+
+    Where a potential is not known, surfaces of equal energy are taken to keep their shape. That is exact for a harmonic
+    trap or a quadrupole that is scaled, or whose depth alone is changed.
+
+    Raises
+    ------
+    ValueError : for a displacement between traps of which only volumes are known.
     """
     if old.depth is None or new.depth is None:
         return _NOTHING
-    harmonic = all(point.curve.power_law and point.frequencies is not None for point in (old, new))
-    if harmonic and (any(displacement) or not _similar(old, new)):
-        return _harmonic(temperature, old, new, displacement)
-    if any(displacement):
-        raise ValueError("a displaced transfer needs harmonic traps with known frequencies")
+    if old.well is not None and new.well is not None:
+        way = np.asarray(displacement, dtype=np.float64)
+        if old.well.minimum is not None and new.well.minimum is not None:
+            way = way + new.well.minimum - old.well.minimum
+        if np.any(way != 0.0) or not _alike(old.well, new.well):
+            return _by_place(temperature, old, old.well, new, new.well, way)
+    elif any(displacement):
+        raise ValueError("a displaced transfer needs traps whose potential is known")
     return _nested(temperature, old, new)
 
 
@@ -109,11 +120,12 @@ def distance_in_radii(mass: float, temperature: float, old: TrapPoint, new: Trap
     return math.dist(old.minimum, new.minimum) / radius
 
 
-def _similar(old: TrapPoint, new: TrapPoint) -> bool:
-    assert old.frequencies is not None
-    assert new.frequencies is not None
-    ratios = [a / b for a, b in zip(old.frequencies, new.frequencies, strict=True)]
-    return max(ratios) - min(ratios) < 1e-9 * max(ratios)
+def _alike(here: Well, there: Well) -> bool:
+    """Whether two potentials that are given by numbers differ by a factor alone."""
+    if not (isinstance(here, PowerWell) and isinstance(there, PowerWell) and here.power == there.power):
+        return False
+    ratio = there.matrix.trace() / here.matrix.trace()
+    return bool(np.allclose(there.matrix, ratio * here.matrix, rtol=1e-9, atol=1e-9 * np.max(abs(there.matrix))))
 
 
 def _nested(temperature: float, old: TrapPoint, new: TrapPoint) -> Transferred:
@@ -128,58 +140,70 @@ def _nested(temperature: float, old: TrapPoint, new: TrapPoint) -> Transferred:
     u, dw = old.curve.measure_below(within)
     potential = new.depth * new.curve.energy(np.minimum(old.curve.volume(u) * old.volume / new.volume, 1.0))
     filled, room = old.depth * (1.0 - u) / kT, np.maximum(new.depth - potential, 0.0) / kT
-    return _caught(u * old.depth / kT, potential / kT, np.minimum(filled, room), dw, filled, old, kT)
-
-
-def _caught(
-    x: Floats, x_new: Floats, cut: Floats, dw: Floats, filled: Floats, old: TrapPoint, kT: float
-) -> Transferred:
-    """Sum over places: potential energies over kT before and after, and the kinetic energy to which atoms are kept."""
-    assert old.depth is not None
-    u, whole = old.curve.measure
+    x, x_new, cut = u * old.depth / kT, potential / kT, np.minimum(filled, room)
+    places, everywhere = old.curve.measure
     eta = old.depth / kT
-    number = float(np.sum(whole * np.exp(-eta * u) * incomplete_gamma(1.5, eta * (1.0 - u))))
+    number = float(np.sum(everywhere * np.exp(-eta * places) * incomplete_gamma(1.5, eta * (1.0 - places))))
     weights = dw * np.exp(-x)
     kept = incomplete_gamma(1.5, cut)
     share = float(np.sum(weights * kept)) / number
-    energy = float(np.sum(weights * (x_new * kept + 1.5 * incomplete_gamma(2.5, cut)))) / number
     if share <= 0.0:
         return _NOTHING
+    energy = float(np.sum(weights * (x_new * kept + 1.5 * incomplete_gamma(2.5, cut)))) / number
     return Transferred(share=min(share, 1.0), energy=energy / share * kT)
 
 
-_CROSS, _REACH = 40, 7.0
-
-
-def _harmonic(
-    temperature: float, old: TrapPoint, new: TrapPoint, displacement: tuple[float, float, float]
-) -> Transferred:
-    """Over all places of the old cloud, in units of its thermal widths; relative error about 1e-4 of what is lost."""
+def _by_place(temperature: float, old: TrapPoint, here: Well, new: TrapPoint, there: Well, way: Floats) -> Transferred:
+    """Over places of the old cloud, whose minimum is the way from the new one."""
     assert old.depth is not None
     assert new.depth is not None
-    assert old.frequencies is not None
-    assert new.frequencies is not None
     kT = boltzmann * temperature
-    eta = old.depth / kT
-    # The mass follows from the volume at the depth.
-    angular = (2.0 * math.pi) ** 3 * math.prod(old.frequencies)
-    mass = 2.0 * old.depth / (3.0 * old.volume * angular / (4.0 * math.pi)) ** (2.0 / 3.0)
-    reach = min(_REACH, math.sqrt(2.0 * eta))
-    t, w = legendre(_CROSS)
-    places, weights = reach * (2.0 * t - 1.0), 2.0 * reach * w
-    before, after, weight = np.zeros(1), np.zeros(1), np.ones(1)
-    for f, f_new, shift in zip(old.frequencies, new.frequencies, displacement, strict=True):
-        moved = places - shift * 2.0 * math.pi * f * math.sqrt(mass / kT)
-        before = np.add.outer(before, 0.5 * places**2).ravel()
-        after = np.add.outer(after, 0.5 * (f_new / f) ** 2 * moved**2).ravel()
-        weight = np.multiply.outer(weight, weights).ravel()
-    filled, room = np.maximum(eta - before, 0.0), np.maximum(new.depth / kT - after, 0.0)
-    cut = np.minimum(filled, room)
-    kept, uncut = incomplete_gamma(1.5, cut), incomplete_gamma(1.5, filled)
-    weight = weight * np.exp(-before)
-    number = float(np.sum(weight * uncut))
-    share = float(np.sum(weight * kept)) / number
-    if share <= 0.0:
+    places = here.places(old.depth, kT)
+    weights = _counted_right(places, old) * np.exp(-places.energies / kT)
+    # What is too hot and too rare to count costs the time of the rest.
+    counts = weights > _RARE * np.max(weights)
+    weights, x = weights[counts], places.energies[counts] / kT
+    x_new = (there.energy(places.displacements[counts] - way) + places.lifts[counts]) / kT
+    filled = np.maximum(old.depth / kT - x, 0.0)
+    kept = np.minimum(filled, np.maximum(new.depth / kT - x_new, 0.0))
+    before, after = _momenta(filled), _momenta(kept)
+    number, caught = float(weights @ before[0]), float(weights @ after[0])
+    if caught <= 0.0:
         return _NOTHING
-    energy = float(np.sum(weight * (after * kept + 1.5 * incomplete_gamma(2.5, cut)))) / number
-    return Transferred(share=min(share, 1.0), energy=energy / share * kT)
+    energy = float(weights @ (x * before[0] + before[1]))
+    inside = kept > 0.0
+    energy_after = float(weights[inside] @ (x_new[inside] * after[0][inside] + after[1][inside])) / caught
+    # What the sum misses of the energy before, it misses after.
+    exact = float(truncated_averages(old.curve, old.depth / kT).energy) * number / energy
+    return Transferred(share=min(caught / number, 1.0), energy=energy_after * exact * kT)
+
+
+def _momenta(cut: Floats) -> tuple[Floats, Floats]:
+    """Share of a Maxwell distribution below a kinetic energy over kT, P(3/2, y), and its energy, (3/2) P(5/2, y)."""
+    from scipy.special import erf  # loads late
+
+    root = np.sqrt(cut)
+    tail = root * np.exp(-cut) / math.sqrt(math.pi)
+    share: Floats = erf(root) - 2.0 * tail
+    return share, 1.5 * share - 2.0 * cut * tail
+
+
+_RARE = 1e-9
+_SHELLS = 24
+
+
+def _counted_right(places: Places, old: TrapPoint) -> Floats:
+    """Volumes of places, those that were counted so that shells of energy have the volume of the trap's own curve."""
+    assert old.depth is not None
+    low = places.exact_to / old.depth
+    if low >= 1.0:
+        return places.volumes
+    shells = np.linspace(low, 1.0, _SHELLS + 1)
+    shell = np.searchsorted(shells, places.energies / old.depth, side="right") - 1
+    counted = shell >= 0
+    shell = np.minimum(shell, _SHELLS - 1)
+    room = old.volume * np.diff(old.curve.volume(shells))
+    found = np.bincount(shell[counted], places.volumes[counted], _SHELLS)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        factors = np.where(found > 0.0, room / found, 0.0)
+    return np.where(counted, places.volumes * factors[shell], places.volumes)

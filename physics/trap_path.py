@@ -7,16 +7,18 @@ are here; a trap of beams and coils gives a path of surveys.
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 from types import MappingProxyType
 from typing import Protocol
 
+from physics.checks import Floats
 from physics.constants import planck
 from physics.curve_shape import CurveShape
 from physics.ramps import Control, Knob
 from physics.traps.harmonic import HarmonicTrap
+from physics.traps.wells import Well, harmonic_well, quadrupole_well
 from physics.truncated_boltzmann import HARMONIC, QUADRUPOLE
 
 DEPTH, SCALE, GRADIENT = Control(Knob.DEPTH), Control(Knob.SCALE), Control(Knob.GRADIENT)
@@ -38,6 +40,7 @@ class TrapPoint:
     light_shares : (3,) or None. [1] Share of the spring constant along each axis that the light makes; None: all of it.
     zero_force : float. [N] Force of the field on its strong axis, where it vanishes at the bottom; else 0.
     reason : text. Why nothing is held.
+    well : Well or None. The potential, place by place; None where only its volumes are known.
     """
 
     depth: float | None
@@ -50,6 +53,7 @@ class TrapPoint:
     light_shares: tuple[float, float, float] | None = None
     zero_force: float = 0.0
     reason: str = ""
+    well: Well | None = field(default=None, repr=False, compare=False)
 
     def __post_init__(self) -> None:
         if self.depth is None:
@@ -181,6 +185,7 @@ class HarmonicPath:
             curve=_HARMONIC,
             frequencies=(fx, fy, fz),
             light_heating=s * self.light_heating,
+            well=harmonic_well(self.mass, (fx, fy, fz)),
         )
 
 
@@ -193,11 +198,14 @@ class QuadrupolePath:
     moment : float. [J/T] dE/dB of the atoms.
     gradient : float. [T/m] On the strong axis, half of it on the others.
     depth : float. [J]
+    axis : (3,) The strong axis. centre : (3,) or None. [m] Where the field vanishes; None: not known.
     """
 
     moment: float
     gradient: float
     depth: float
+    axis: Sequence[float] | Floats = (0.0, 0.0, 1.0)
+    centre: Sequence[float] | Floats | None = None
     nodes: int = 17
 
     def __post_init__(self) -> None:
@@ -214,7 +222,8 @@ class QuadrupolePath:
         if force == 0.0:
             return TrapPoint(depth=None, reason="the gradient is zero")
         volume = 16.0 * math.pi / 3.0 * (depth / force) ** 3
-        return TrapPoint(depth=depth, volume=volume, curve=_QUADRUPOLE, zero_force=force)
+        well = quadrupole_well(force, self.axis, self.centre)
+        return TrapPoint(depth=depth, volume=volume, curve=_QUADRUPOLE, zero_force=force, well=well)
 
 
 _HARMONIC = CurveShape(exponent=HARMONIC)

@@ -85,7 +85,13 @@ def _path(plan: Plan, by_depth: bool) -> TrapPath:
         survey = trap_answer(plan).survey
         moment = 0.0 if survey.potential is None else survey.potential.zeeman_slope
         if survey.depth is not None and moment > 0.0:
-            return QuadrupolePath(moment=moment, gradient=abs(coils.gradient or 0.0), depth=survey.depth)
+            return QuadrupolePath(
+                moment=moment,
+                gradient=abs(coils.gradient or 0.0),
+                depth=survey.depth,
+                axis=coils.axis,
+                centre=coils.centre,
+            )
     return SurveyedPath(trap=made, state=state)
 
 

@@ -88,6 +88,7 @@ def ramp_body(answer: RampAnswer) -> dict[str, Any]:
                 "last_row": stage.last,
                 "efficiency": _finite(stage.efficiency),
                 "cooling": _finite(stage.cooling),
+                "caught": _finite(stage.caught),
                 "atoms_before": stage.budget.atoms_before,
                 "atoms_after": stage.budget.atoms_after,
                 "budget": _atoms(stage.budget),

@@ -25,6 +25,7 @@ from app.ramp_words import (
     ramp_verdict,
 )
 from app.tables import columns
+from app.transfer_words import handed_text
 from app.trap_words import cautions
 from app.units import best_unit, format_quantity
 from app.words import number, percent, temperature
@@ -50,7 +51,8 @@ def evaporate_text(found: Evaporated) -> str:
     if found.design is not None:
         blocks += [_design(found.design), _trade_off(found.design)]
     if found.answer is not None:
-        blocks += [_stages(found.answer), [ramp_verdict(found.answer)], _budget(found.answer), _limits(found)]
+        blocks += [_stages(found.answer), _handed(found.answer), [ramp_verdict(found.answer)]]
+        blocks += [_budget(found.answer), _limits(found)]
         blocks += _passenger(found.answer)
         blocks += _beside(found.answer, found.reference)
     if found.waypoints is not None:
@@ -107,6 +109,11 @@ def _stages(answer: RampAnswer) -> list[str]:
         shares = (percent(max(part, 0.0) / budget.atoms_before) for part in (cooled, lost))
         table.append((name, *cloud(stage.last), gamma, *shares))
     return columns(table, right=range(1, len(header)))
+
+
+def _handed(answer: RampAnswer) -> list[str]:
+    """What transfers and jumps have left of the cloud."""
+    return [line for stage in answer.run.stages if (line := handed_text(answer, stage))]
 
 
 def _beside(answer: RampAnswer, reference: tuple[str, RampAnswer] | None) -> list[list[str]]:

@@ -11,6 +11,7 @@ from PySide6.QtWidgets import QWidget
 from app.figures.picture import Role
 from app.figures.theme import LIGHT, Theme
 from app.ramp_words import duration
+from app.transfer_words import handed_text
 from app.widgets.fact_table import FactRow, FactTable
 from app.widgets.loss_bar import LossBar, Part
 from app.words import number, temperature
@@ -42,7 +43,7 @@ _LEAST = 0.005  # share of the lost atoms worth a part
 
 
 class StageTable(FactTable):
-    """One row for the start, one for each stage that began, one for the whole."""
+    """A row for the start, one for each stage that began, before it what its trap has caught, and one for the whole."""
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__("Cloud after each stage", parent)
@@ -58,6 +59,12 @@ class StageTable(FactTable):
             rows.append(FactRow(name="start", cells=(*_cloud_cells(run, 0, answer.begin), "", ""), tip=_TIP))
             parts.append(())
         for stage in run.stages:
+            handed = handed_text(answer, stage)
+            if handed:
+                name = f"into {stage.number + 1 + answer.first}"
+                cells = (*_cloud_cells(run, stage.first, answer.begin), "", handed)
+                rows.append(FactRow(name=name, cells=cells, tip=handed))
+                parts.append(_caught(stage))
             shares = loss_parts(stage.budget)
             name = f"{stage.number + 1 + answer.first}  {_brief(stage.label)}".strip()
             cells = (*_cloud_cells(run, stage.last, answer.begin), _gamma(stage), _told(shares))
@@ -87,6 +94,12 @@ class StageTable(FactTable):
             bar = self.cellWidget(place, len(HEADINGS) - 1)
             if isinstance(bar, LossBar):
                 bar.set_theme(theme)
+
+
+def _caught(stage: StageSummary) -> tuple[Part, ...]:
+    """What of the atoms a new trap has caught, and what not."""
+    shares = ((stage.caught, "caught", None), (1.0 - stage.caught, "not caught", Role.FIRST))
+    return tuple(Part(name, share, name, role) for share, name, role in shares if share >= _LEAST)
 
 
 def _brief(label: str) -> str:

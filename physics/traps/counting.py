@@ -11,7 +11,7 @@ Reference
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -64,9 +64,46 @@ def counted_volumes(
     inner_passes : [J] Energies above the minimum at which other minima join the region.
     mark : answers a question about points (n, 3).
     """
-    landscape, sound, masks = _region(landscape, start, bottom, float(energies[-1]))
-    late = [_beyond(landscape, start, bottom + _BEFORE * energy) for energy in inner_passes]
+    region = region_of(landscape, start, bottom, float(energies[-1]))
     volumes, marked = np.zeros(len(energies)), np.zeros(len(energies))
+    for parts in parts_of(region, start, bottom, float(energies[-1]), inner_passes):
+        asked = mark(parts.points)
+        values = parts.energies, parts.half_ranges, parts.volumes
+        volumes += _spread(values, energies)
+        marked += _spread((values[0][asked], values[1][asked], values[2][asked]), energies)
+    return CountedVolumes(volumes=volumes, marked=marked, sound=region.sound)
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Region:
+    """The cells of a landscape's charts, one mask each, that hold the region around a minimum below an energy, with the
+    cells around them; and the share of that energy up to which they tell the region from the outside."""
+
+    landscape: Landscape
+    masks: tuple[Mask, ...]
+    sound: float
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Parts:
+    """Parts of cells, in the shape of `energies`: middles (..., 3) [m], mean energies [J], half of what the energy
+    changes along each edge in rising order (..., 3) [J], volumes [m^3]."""
+
+    points: Floats
+    energies: Floats
+    half_ranges: Floats
+    volumes: Floats
+
+
+def parts_of(
+    region: Region, start: Floats, bottom: float, top: float, inner_passes: Sequence[float]
+) -> Iterator[Parts]:
+    """The region chart by chart, in parts whose energies count from the bottom; together they hold each place once.
+
+    Low places beyond an inner pass have the energy of the pass: below it they are not reached.
+    """
+    landscape, masks = region.landscape, region.masks
+    late = [_beyond(landscape, start, bottom + _BEFORE * energy) for energy in inner_passes]
     for k, mask in enumerate(masks):
         cells = np.argwhere(mask)
         if not len(cells):
@@ -74,28 +111,12 @@ def counted_volumes(
         parts = _parts(landscape, k, cells) if len(cells) < _MANY else _wholes(landscape, k, cells)
         height, half = parts.energies - bottom, parts.half_ranges
         for energy, beyond in zip(inner_passes, late, strict=True):
-            # Low places that were not reached below a pass join at its energy.
             apart = beyond[k][tuple(cells.T)][:, np.newaxis] & (height < energy)
             height, half = np.where(apart, energy, height), np.where(apart[..., np.newaxis], 0.0, half)
-        near = height - np.sum(half, axis=-1) < energies[-1]
+        near = height - np.sum(half, axis=-1) < top
         r = parts.points[near]
         share = _share(landscape, masks, k, np.broadcast_to(cells[:, np.newaxis], (*near.shape, 3))[near], r)
-        values = height[near], half[near], parts.volumes[near] * share
-        asked = mark(r)
-        volumes += _spread(values, energies)
-        marked += _spread((values[0][asked], values[1][asked], values[2][asked]), energies)
-    return CountedVolumes(volumes=volumes, marked=marked, sound=sound)
-
-
-@dataclass(frozen=True, kw_only=True, eq=False)
-class _Parts:
-    """Parts of cells (cells, parts): middles [m], mean energies [J], half of what the energy changes along each edge in
-    rising order [J], volumes [m^3]."""
-
-    points: Floats
-    energies: Floats
-    half_ranges: Floats
-    volumes: Floats
+        yield Parts(points=r, energies=height[near], half_ranges=half[near], volumes=parts.volumes[near] * share)
 
 
 def _spread(parts: tuple[Floats, Floats, Floats], energies: Floats) -> Floats:
@@ -119,7 +140,7 @@ def _spread(parts: tuple[Floats, Floats, Floats], energies: Floats) -> Floats:
     return below
 
 
-def _parts(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> _Parts:
+def _parts(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> Parts:
     """Cells (n, 3) cut in eight."""
     chart = landscape.charts[k]
     x = np.empty((len(cells), 8, 3))
@@ -140,7 +161,7 @@ def _parts(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> _Parts:
         apart = 0.5 * (size[:, up, axis] + size[:, down, axis]).mean(axis=1)
         bend = (slope[:, up, axis] - slope[:, down, axis]).mean(axis=1) / apart
         shift += bend[:, np.newaxis] * size[..., axis] ** 2 / 24.0
-    return _Parts(
+    return Parts(
         points=points,
         energies=energy + shift,
         half_ranges=np.sort(0.5 * np.abs(slope * size), axis=-1),
@@ -148,7 +169,7 @@ def _parts(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> _Parts:
     )
 
 
-def _wholes(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> _Parts:
+def _wholes(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> Parts:
     """Cells (n, 3) as they are, one part each."""
     chart, chosen = landscape.charts[k], tuple(cells.T)
     x = np.stack(np.meshgrid(*(stretch.centres for stretch in chart.stretches), indexing="ij"), axis=-1)
@@ -162,7 +183,7 @@ def _wholes(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> _Parts:
         aside = stretch.middles[cells[:, axis]] - stretch.centres[cells[:, axis]]
         energy = energy + slope[..., axis][chosen] * aside + bend * (0.5 * aside**2 + size**2 / 24.0)
         half[:, axis] = 0.5 * np.abs(slope[..., axis][chosen]) * size
-    return _Parts(
+    return Parts(
         points=chart.cell_points[chosen][:, np.newaxis],
         energies=energy[:, np.newaxis],
         half_ranges=np.sort(half, axis=-1)[:, np.newaxis],
@@ -191,14 +212,12 @@ def _beyond(landscape: Landscape, start: Floats, level: float) -> tuple[Mask, ..
     return tuple(other | (wide & ~near) for other, wide, near in around)
 
 
-def _region(
-    landscape: Landscape, start: Floats, bottom: float, depth: float
-) -> tuple[Landscape, float, tuple[Mask, ...]]:
-    """The cells around a minimum, on this landscape or a finer one, and the share of the depth they are good for."""
+def region_of(landscape: Landscape, start: Floats, bottom: float, depth: float) -> Region:
+    """The region around a minimum (3,) of energy `bottom` [J], on this landscape or a finer one."""
     finer = replace(landscape, fineness=2.0 * landscape.fineness)
     tries = [(landscape, share) for share in _BACK_OFF] + [(finer, share) for share in (*_BACK_OFF, *_FURTHER)]
     for ground, share in tries:
         reach = ground.reach(start, bottom + share * depth)
         if not reach.leaks:
-            return ground, share, widened(reach.masks)
-    return finer, 0.0, widened(finer.reach(start, bottom).masks)
+            return Region(landscape=ground, masks=widened(reach.masks), sound=share)
+    return Region(landscape=finer, masks=widened(finer.reach(start, bottom).masks), sound=0.0)

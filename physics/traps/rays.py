@@ -18,6 +18,7 @@ from functools import lru_cache
 import numpy as np
 
 from physics.checks import Floats
+from physics.traps.ball import all_around, places_along, sphere
 from physics.traps.potential import Potential
 from physics.traps.stationary import StationaryPoint
 
@@ -110,6 +111,27 @@ def ray_volumes(potential: Potential, minimum: StationaryPoint, shape: Shape, en
     return RayVolumes(energies=able[:count], volumes=fine[:count], limit=limit)
 
 
+def ray_places(potential: Potential, minimum: StationaryPoint, shape: Shape, level: float) -> tuple[Floats, Floats]:
+    """Places (n, 3) [m], from the minimum, and the volumes (n,) [m^3] that they stand for, in the region below a level.
+
+    For smooth functions of the place that vanish, or end, at the level. Every ray must leave the region once.
+
+    Parameters
+    ----------
+    level : float. [J] Above the minimum.
+    """
+    directions, weights = all_around()
+    steps = directions @ shape.matrix.T
+    bent = 1.0 if minimum.cusp else 0.5
+    radii = _RADII * level**bent
+    height, rise = _along(potential, minimum, steps, radii, level)
+    with np.errstate(divide="ignore"):
+        y = np.maximum(height, 0.0) ** bent
+        slope = np.where(np.isfinite(height), bent * rise * np.where(height > 0.0, height, 1.0) ** (bent - 1.0), np.inf)
+    ends = _inverse(radii, y, 1.0 + directions @ shape.tilt, slope, np.array([level**bent]))
+    return places_along(steps, ends, weights * abs(float(np.linalg.det(shape.matrix))))
+
+
 def _along(
     potential: Potential, minimum: StationaryPoint, steps: Floats, radii: Floats, top: float
 ) -> tuple[Floats, Floats]:
@@ -158,13 +180,10 @@ def _inverse(radii: Floats, y: Floats, first: Floats, slope: Floats, levels: Flo
 def _rule() -> tuple[Floats, Floats, Floats]:
     """Directions (n, 3), their weights (sum 4 pi), and weights of the coarse rule among them."""
     polar = np.arange(_POLAR + 1) * np.pi / _POLAR
-    around = np.arange(_AROUND) * 2.0 * np.pi / _AROUND
-    theta, phi = (grid.ravel() for grid in np.meshgrid(polar, around, indexing="ij"))
-    directions = np.stack([np.sin(theta) * np.cos(phi), np.sin(theta) * np.sin(phi), np.cos(theta)], axis=-1)
     fine = np.outer(_clenshaw_curtis(_POLAR), np.full(_AROUND, 2.0 * np.pi / _AROUND))
     coarse = np.zeros(fine.shape)
     coarse[::2, ::2] = np.outer(_clenshaw_curtis(_POLAR // 2), np.full(_AROUND // 2, 4.0 * np.pi / _AROUND))
-    return directions, fine.ravel(), coarse.ravel()
+    return sphere(polar, _AROUND), fine.ravel(), coarse.ravel()
 
 
 def _clenshaw_curtis(n: int) -> Floats:
