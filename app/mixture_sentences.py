@@ -5,18 +5,19 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import partial
 from typing import TYPE_CHECKING
 
 from app.answers.trap import trap_answer
 from app.language import translate as _
 from app.mixture_quantities import MIXTURE_QUANTITIES
-from app.mixture_words import mixing_text, reason_unknown
+from app.mixture_words import mixing_text, mixture_range_text, reason_unknown
 from app.quantities import QUANTITIES
 from app.ramp_words import duration
 from app.trap_words import frequencies_text, reason_no_frequencies, sag_text
 from app.tuning_words import CERTAINTY
 from app.units import best_unit, format_quantity
-from app.words import number, percent, temperature
+from app.words import number, percent, range_text, temperature
 from physics.constants import boltzmann
 
 if TYPE_CHECKING:
@@ -46,9 +47,14 @@ def names_of(answer: MixtureAnswer) -> tuple[str, str]:
 
 
 def degeneracy_text(cloud: CloudAnswer) -> str:
-    """How degenerate a cloud is: "T/TF = 0.78"."""
+    """How degenerate a cloud is, with the range where numbers are uncertain: "T/TF = 0.78 (0.71 to 0.86)"."""
     ratio = _("T/Tc") if cloud.bosons else _("T/TF")
-    return f"{ratio} = {number(float(cloud.equilibrium.reduced_temperature))}"
+    between = range_text(cloud, QUANTITIES["reduced_temperature"], "1")
+    return _bracketed(f"{ratio} = {number(float(cloud.equilibrium.reduced_temperature))}", between)
+
+
+def _bracketed(text: str, between: str) -> str:
+    return f"{text} ({between})" if between else text
 
 
 # --- sentences -------------------------------------------------------------------------------------------------------
@@ -91,7 +97,7 @@ def _contact(answer: MixtureAnswer) -> str:
     if not math.isfinite(time):
         return _("they do not collide")
     return _("at {rate} collisions a second per atom of it, their temperatures join in {time}").format(
-        rate=number(rate), time=duration(time)
+        rate=number(rate), time=_text(answer, "relaxation_time")
     )
 
 
@@ -223,20 +229,30 @@ def _more(answer: MixtureAnswer, name: str) -> str:
             return _(", after {count} collisions").format(count=count)
         case "miscibility_parameter":
             mixing = mixing_text(None if answer.mixture is None else answer.mixture.mixing)
-            return f", {mixing}" if mixing else ""
+            return f", {mixing}{_unsure(answer, name)}" if mixing else ""
         case "bose_fermi_parameter":
-            return _(", stable") if answer.value(name) < 1.0 else _(", not stable")
+            said = _(", stable") if answer.value(name) < 1.0 else _(", not stable")
+            return f"{said}{_unsure(answer, name)}"
         case "most_passengers" if answer.coolant.efficiency is not None:
             return _(", at γ = {gamma}").format(gamma=number(answer.coolant.efficiency))
         case _:
             return ""
 
 
+def _unsure(answer: MixtureAnswer, name: str) -> str:
+    """Said where the border at 1 lies within the range."""
+    spread = answer.spreads.get(name)
+    return _(", not for sure") if spread is not None and spread.low < 1.0 < spread.high else ""
+
+
 def _length_between(answer: MixtureAnswer) -> str:
     between = answer.between
     if between.value is None:
         return _unknown(answer, "scattering_length_between")
-    value = format_quantity(between.value, "a0", digits=4).replace("-", "−")
+    value = _bracketed(
+        format_quantity(between.value, "a0", digits=4),
+        mixture_range_text(answer, "scattering_length_between", lambda length: format_quantity(length, "a0", digits=4)),
+    ).replace("-", "−")
     return f"{value}, {between.source if between.certainty is None else CERTAINTY[between.certainty]}"
 
 
@@ -245,7 +261,12 @@ def _unknown(answer: MixtureAnswer, name: str) -> str:
 
 
 def _text(answer: MixtureAnswer, name: str) -> str:
-    value = answer.value(name)
+    """A value with its range."""
+    say = partial(_plain, name)
+    return _bracketed(say(answer.value(name)), mixture_range_text(answer, name, say))
+
+
+def _plain(name: str, value: float) -> str:
     match MIXTURE_QUANTITIES[name].unit:
         case "m":
             return _length(value)

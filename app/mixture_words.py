@@ -203,10 +203,35 @@ def mixture_value_text(answer: MixtureAnswer, row: Row, unit: str) -> str:
     return number(value / display_factor(unit, row)) if math.isfinite(value) else "–"
 
 
+def mixture_range_text(answer: MixtureAnswer, name: str, say: Callable[[float], str]) -> str:
+    """16 to 84 percent of a number: "12 to 14", with the unit where the two have not the same; empty where nothing is
+    uncertain.
+
+    say : a value in words, with or without a unit behind it
+    """
+    spread = answer.spreads.get(name)
+    if spread is None:
+        return ""
+    low, high = say(float(spread.low)), say(float(spread.high))
+    if low == high:
+        return ""
+    texts = (low, high, say(answer.value(name)))
+    if len({text.partition(" ")[2] for text in texts}) == 1:
+        low, high = low.partition(" ")[0], high.partition(" ")[0]
+    return _("{low} to {high}").format(low=low, high=high)
+
+
 def mixture_rows(answer: MixtureAnswer) -> list[tuple[str, str, str, str]]:
-    """Label, symbol, value and unit of each quantity that has one."""
+    """Label, symbol, value with its range, and unit of each quantity that has one."""
+
+    def text(row: Row) -> str:
+        factor = display_factor(row.units[0], row)
+        between = mixture_range_text(answer, row.name, lambda value: number(value / factor))
+        value = mixture_value_text(answer, row, row.units[0])
+        return f"{value}  ({between})" if between else value
+
     return [
-        (row.label, row.symbol, mixture_value_text(answer, row, row.units[0]), shown_unit(row.units[0]))
+        (row.label, row.symbol, text(row), shown_unit(row.units[0]))
         for row in MIXTURE_QUANTITIES.values()
         if math.isfinite(answer.value(row.name))
     ]

@@ -33,18 +33,19 @@ class PairCollisions:
 
     Attributes
     ----------
-    masses : [kg] of the first and the second. scattering_length : float. [m]
+    masses : [kg] of the first and the second. scattering_length : array_like. [m]
     """
 
     masses: tuple[float, float]
-    scattering_length: float
+    scattering_length: ArrayLike
 
     def __post_init__(self) -> None:
         for mass in self.masses:
             if not 0.0 < mass < math.inf:
                 raise ValueError(f"mass must be positive and finite, got {mass:g} kg")
-        if not math.isfinite(self.scattering_length):
-            raise ValueError(f"scattering length must be finite, got {self.scattering_length:g} m")
+        length = np.asarray(self.scattering_length, dtype=np.float64)
+        if not np.all(np.isfinite(length)):
+            raise ValueError(f"scattering length must be finite, got {length[~np.isfinite(length)].flat[0]:g} m")
 
     @property
     def reduced_mass(self) -> float:
@@ -84,7 +85,7 @@ class PairCollisions:
 
     def _energy_parameter(self, temperatures: tuple[ArrayLike, ArrayLike]) -> Floats:
         """k^2 a^2 at the square of the relative speed 2 <v_x^2>. [1]"""
-        k = self.reduced_mass * self.scattering_length / reduced_planck
+        k = self.reduced_mass * np.asarray(self.scattering_length, dtype=np.float64) / reduced_planck
         parameter: Floats = 2.0 * k * k * self._speed_spread(temperatures)
         return parameter
 
@@ -101,8 +102,9 @@ class PairCollisions:
         return sigma
 
     @property
-    def _cold(self) -> float:
-        return 4.0 * math.pi * self.scattering_length**2
+    def _cold(self) -> Floats:
+        cold: Floats = 4.0 * math.pi * np.asarray(self.scattering_length, dtype=np.float64) ** 2
+        return cold
 
     def collision_rate(self, temperatures: tuple[ArrayLike, ArrayLike], overlap: ArrayLike) -> Floats:
         """Collisions per time of one pair of atoms, sigma12 v12 times the overlap; times N1 N2 it is Z12. [1/s] [1]

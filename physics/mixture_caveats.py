@@ -90,29 +90,39 @@ def between_caveats(between: PairLength) -> _Found:
 
 
 def mixture_caveats(mixture: Mixture, *, lifetime: float = math.inf) -> _Found:
-    """Of two clouds at rest.
+    """Of two clouds at rest, one of each.
 
     Parameters
     ----------
     lifetime : float. [s] The shorter one of both clouds.
     """
     kinds = MixtureCaveatKind
-    if mixture.overlap_share < _APART[0]:
-        yield _either(kinds.APART, mixture.overlap_share, mixture.overlap_share < _APART[1])
+    share, pushed, relaxation, parameter, fermions = (
+        float(value)
+        for value in (
+            mixture.overlap_share,
+            mixture.relative_shift,
+            mixture.relaxation_time,
+            mixture.miscibility_parameter,
+            mixture.bose_fermi_parameter,
+        )
+    )
+    if share < _APART[0]:
+        yield _either(kinds.APART, share, share < _APART[1])
     densest = max(float(solved.classical_phase_space_density) for solved in (mixture.coolant, mixture.passenger))
     if densest > _CLASSICAL_DENSITY:
         yield _note(kinds.DEGENERATE_MIXTURE, densest)
-    if mixture.relative_shift > _PUSHED[0]:
-        yield _either(kinds.PUSHED, mixture.relative_shift, mixture.relative_shift > _PUSHED[1])
+    if pushed > _PUSHED[0]:
+        yield _either(kinds.PUSHED, pushed, pushed > _PUSHED[1])
     condensed = any(float(solved.condensate_fraction) > 0.0 for solved in (mixture.coolant, mixture.passenger))
     if mixture.mixing is Mixing.APART:
-        yield _either(kinds.NOT_MISCIBLE, mixture.miscibility_parameter, condensed)
+        yield _either(kinds.NOT_MISCIBLE, parameter, condensed)
     if mixture.mixing is Mixing.COLLAPSE:
-        yield _either(kinds.COLLAPSING, mixture.miscibility_parameter, condensed)
-    if mixture.bose_fermi_parameter > 1.0:
-        yield _either(kinds.UNSTABLE_WITH_FERMIONS, mixture.bose_fermi_parameter, condensed)
-    slow = mixture.relaxation_time / lifetime if lifetime > 0.0 else math.inf
-    if slow > _SLOW[0] and not math.isinf(mixture.relaxation_time):
+        yield _either(kinds.COLLAPSING, parameter, condensed)
+    if fermions > 1.0:
+        yield _either(kinds.UNSTABLE_WITH_FERMIONS, fermions, condensed)
+    slow = relaxation / lifetime if lifetime > 0.0 else math.inf
+    if slow > _SLOW[0] and not math.isinf(relaxation):
         yield _either(kinds.SLOW_CONTACT, slow, slow > _SLOW[1])
     yield _note(kinds.LOSSES_BETWEEN_UNKNOWN)
 

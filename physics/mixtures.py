@@ -2,17 +2,17 @@
 
 Each cloud is as it is without the other. For the overlap they are Gaussians of the rms radii of their thermal atoms,
 and their collisions are those of classical clouds: estimates where one is degenerate. NaN stands for what is unknown
-or does not apply.
+or does not apply. Clouds, places, lengths and efficiencies may be draws of as many mixtures; all numbers broadcast.
 """
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any
 
 import numpy as np
+from numpy.typing import ArrayLike
 
 from physics.checks import Floats
 from physics.constants import boltzmann
@@ -25,7 +25,7 @@ from physics.interspecies import (
     most_passengers,
 )
 from physics.miscibility import Mixing, bose_fermi_parameter, mean_field_shift, miscibility_parameter, mixing
-from physics.overlap import Spread, overlap_density, overlap_exponent
+from physics.overlap import Spread, overlap_density, overlap_exponent, turned
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -34,7 +34,7 @@ class Place:
 
     Attributes
     ----------
-    minimum : (3,). [m]
+    minimum : (..., 3). [m]
     axes : (3, 3). Rows: unit vectors to which the radii of its cloud belong.
     """
 
@@ -44,21 +44,21 @@ class Place:
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Mixture:
-    """A coolant and a passenger in one trap, each a single cloud.
+    """A coolant and a passenger in one trap.
 
     Attributes
     ----------
     coolant, passenger : Equilibrium
     places : of both.
-    scattering_length : float or None. [m] Between the two; None where unknown.
-    cooling : float or None. alpha = dlnT/dlnN of the coolant evaporating alone, for what is reached in the end.
+    scattering_length : array_like or None. [m] Between the two; None where unknown.
+    cooling : array_like or None. alpha = dlnT/dlnN of the coolant evaporating alone, for what is reached in the end.
     """
 
     coolant: Equilibrium
     passenger: Equilibrium
     places: tuple[Place, Place] = (Place(), Place())
-    scattering_length: float | None = None
-    cooling: float | None = None
+    scattering_length: ArrayLike | None = None
+    cooling: ArrayLike | None = None
 
     @property
     def masses(self) -> tuple[float, float]:
@@ -66,15 +66,19 @@ class Mixture:
         return float(self.coolant.cloud.mass), float(self.passenger.cloud.mass)
 
     @property
-    def temperatures(self) -> tuple[float, float]:
+    def temperatures(self) -> tuple[Floats, Floats]:
         """[K]"""
-        return float(self.coolant.cloud.temperature), float(self.passenger.cloud.temperature)
+        first, second = (
+            np.asarray(cloud.temperature, dtype=np.float64) for cloud in (self.coolant.cloud, self.passenger.cloud)
+        )
+        return first, second
 
     @property
-    def all_atoms(self) -> tuple[float, float]:
+    def all_atoms(self) -> tuple[Floats, Floats]:
         """In all spin states. [1]"""
         first, second = (
-            float(cloud.atoms) * float(cloud.spin_components) for cloud in (self.coolant.cloud, self.passenger.cloud)
+            np.asarray(cloud.atoms, dtype=np.float64) * float(cloud.spin_components)
+            for cloud in (self.coolant.cloud, self.passenger.cloud)
         )
         return first, second
 
@@ -89,52 +93,61 @@ class Mixture:
 
     @property
     def displacement(self) -> Floats:
-        """(3,) From the passenger's minimum to the coolant's. [m]"""
+        """(..., 3) From the passenger's minimum to the coolant's. [m]"""
         first, second = (np.asarray(place.minimum, dtype=np.float64) for place in self.places)
         apart: Floats = first - second
         return apart
 
     @property
-    def distance(self) -> float:
+    def distance(self) -> Floats:
         """Between the two minima. [m]"""
-        return float(np.linalg.norm(self.displacement))
+        apart: Floats = np.linalg.norm(self.displacement, axis=-1)
+        return apart
 
     @cached_property
     def _spread(self) -> Spread:
-        total = np.zeros((3, 3))
-        for solved, place in zip((self.coolant, self.passenger), self.places, strict=True):
-            axes = np.asarray(place.axes, dtype=np.float64)
-            total = total + axes.T @ np.diag(np.asarray(solved.thermal_radii) ** 2) @ axes
-        return total[0, 0], total[1, 1], total[2, 2], total[0, 1], total[0, 2], total[1, 2]
+        """Mean squares of both clouds together. [m^2]"""
+        first, second = (
+            turned(np.asarray(solved.thermal_radii) ** 2, place.axes)
+            for solved, place in zip((self.coolant, self.passenger), self.places, strict=True)
+        )
+        xx, yy, zz, xy, xz, yz = (a + b for a, b in zip(first, second, strict=True))
+        return xx, yy, zz, xy, xz, yz
 
     @cached_property
-    def overlap_share(self) -> float:
-        """Overlap over that of the same clouds around one centre. [1]"""
-        return float(np.exp(-overlap_exponent(self._spread, self.displacement.tolist())))
-
-    @cached_property
-    def _overlap(self) -> float:
-        return float(overlap_density(self._spread, self.displacement.tolist()))
+    def _apart(self) -> tuple[Floats, Floats, Floats]:
+        apart = self.displacement
+        return apart[..., 0], apart[..., 1], apart[..., 2]
 
     @property
-    def met_density(self) -> float:
+    def overlap_share(self) -> Floats:
+        """Overlap over that of the same clouds around one centre. [1]"""
+        share: Floats = np.exp(-overlap_exponent(self._spread, self._apart))
+        return share
+
+    @cached_property
+    def _overlap(self) -> Floats:
+        return overlap_density(self._spread, self._apart)
+
+    @property
+    def met_density(self) -> Floats:
         """Mean density of the coolant, all spin states, that an atom of the passenger meets. [1/m^3]"""
         return self._overlap * self.all_atoms[0]
 
     # ---------------------------------------------------------------- collisions and heat
 
     @cached_property
-    def _pair_rate(self) -> float:
+    def _pair_rate(self) -> Floats:
         pair = self.collisions
-        return math.nan if pair is None else float(pair.collision_rate(self.temperatures, self._overlap))
+        return _NAN if pair is None else pair.collision_rate(self.temperatures, self._overlap)
 
     @property
-    def coolant_collision_rate(self) -> float:
+    def coolant_collision_rate(self) -> Floats:
         """Collisions of an atom of the coolant with the passenger. [1/s]"""
         return self._pair_rate * self.all_atoms[1]
 
     @property
-    def passenger_collision_rate(self) -> float:
+    def passenger_collision_rate(self) -> Floats:
         """Collisions of an atom of the passenger with the coolant. [1/s]"""
         return self._pair_rate * self.all_atoms[0]
 
@@ -145,114 +158,127 @@ class Mixture:
         return 3.0 / share
 
     @cached_property
-    def relaxation_time(self) -> float:
+    def relaxation_time(self) -> Floats:
         """In which the difference of the temperatures falls by e; infinite without collisions. [s]"""
         if self.collisions is None:
-            return math.nan
-        rate = float(self.collisions.relaxation_rate(self.all_atoms, self.temperatures, self._overlap))
-        return 1.0 / rate if rate > 0.0 else math.inf
+            return _NAN
+        rate = self.collisions.relaxation_rate(self.all_atoms, self.temperatures, self._overlap)
+        with np.errstate(divide="ignore"):
+            time: Floats = 1.0 / rate
+        return time
 
     @property
-    def common_temperature(self) -> float:
+    def common_temperature(self) -> Floats:
         """After long contact, of classical clouds. [K]"""
-        return float(common_temperature(self.all_atoms, self.temperatures))
+        return common_temperature(self.all_atoms, self.temperatures)
 
     @property
-    def coldest_temperature(self) -> float:
+    def coldest_temperature(self) -> Floats:
         """Of both when the last atom of the coolant is gone. [K]"""
         if self.cooling is None:
-            return math.nan
-        return float(coldest_temperature(self.all_atoms, self.common_temperature, self.cooling))
+            return _NAN
+        return coldest_temperature(self.all_atoms, self.common_temperature, self.cooling)
 
     @property
-    def _ratio(self) -> float:
+    def _ratio(self) -> Floats:
         """The passenger's threshold over the common temperature; NaN where it is passed."""
-        threshold = float(self.passenger.temperature_to_threshold) * self.temperatures[1]
+        threshold = np.asarray(self.passenger.temperature_to_threshold) * self.temperatures[1]
         ratio = threshold / self.common_temperature
-        return ratio if 0.0 < ratio < 1.0 else math.nan
+        return np.where((ratio > 0.0) & (ratio < 1.0), ratio, np.nan)
 
     @property
-    def most_passengers(self) -> float:
+    def most_passengers(self) -> Floats:
         """Passengers, in all spin states, that the coolant can bring to the temperature at which this passenger is
         degenerate, before it is used up. [1]"""
         if self.cooling is None:
-            return math.nan
-        return float(most_passengers(self.all_atoms[0], self._ratio, self.cooling))
+            return _NAN
+        return most_passengers(self.all_atoms[0], self._ratio, self.cooling)
 
     @property
-    def coolant_at_threshold(self) -> float:
+    def coolant_at_threshold(self) -> Floats:
         """Atoms of the coolant that are left when the passenger becomes degenerate; 0 where they do not suffice. [1]"""
         if self.cooling is None:
-            return math.nan
-        left = float(coolant_left(self.all_atoms, self._ratio, self.cooling))
-        return left if math.isnan(left) else max(0.0, left)
+            return _NAN
+        left: Floats = np.maximum(coolant_left(self.all_atoms, self._ratio, self.cooling), 0.0)
+        return left
 
     # ---------------------------------------------------------------- mean field
 
-    def _shift(self, other: Equilibrium) -> float:
+    def _shift(self, other: Equilibrium) -> Floats:
         if self.scattering_length is None:
-            return math.nan
-        density = float(other.peak_density) * float(other.cloud.spin_components)
-        return float(mean_field_shift(self.masses, self.scattering_length, density))
+            return _NAN
+        density = np.asarray(other.peak_density) * float(other.cloud.spin_components)
+        return mean_field_shift(self.masses, self.scattering_length, density)
 
     @property
-    def shift_of_passenger(self) -> float:
+    def shift_of_passenger(self) -> Floats:
         """g12 n of a passenger in the densest place of the coolant. [J]"""
         return self._shift(self.coolant)
 
     @property
-    def shift_of_coolant(self) -> float:
+    def shift_of_coolant(self) -> Floats:
         """g12 n of an atom of the coolant in the densest place of the passenger. [J]"""
         return self._shift(self.passenger)
 
     @cached_property
-    def _lengths(self) -> tuple[float, float, float] | None:
+    def _lengths(self) -> tuple[Floats, Floats, Floats] | None:
         """a11, a22 and a12 of two Bose gases of one spin state each. [m]"""
         own = [solved.cloud.scattering_length for solved in (self.coolant, self.passenger)]
         single = all(int(solved.cloud.spin_components) == 1 for solved in (self.coolant, self.passenger))
         both = self.coolant.bosons and self.passenger.bosons
         if not (both and single) or self.scattering_length is None or any(a is None for a in own):
             return None
-        return float(own[0]), float(own[1]), self.scattering_length
+        first, second, between = (np.asarray(a, dtype=np.float64) for a in (*own, self.scattering_length))
+        return first, second, between
 
     @property
-    def miscibility_parameter(self) -> float:
+    def miscibility_parameter(self) -> Floats:
         """g12^2/(g11 g22) of two condensates. [1]"""
         lengths = self._lengths
-        if lengths is None or not (lengths[0] > 0.0 and lengths[1] > 0.0):
-            return math.nan
-        return float(miscibility_parameter(self.masses, lengths))
+        if lengths is None:
+            return _NAN
+        stable = (lengths[0] > 0.0) & (lengths[1] > 0.0)
+        return np.where(stable, miscibility_parameter(self.masses, lengths), np.nan)
 
     @property
     def mixing(self) -> Mixing | None:
-        """What two condensates of these atoms do; None where it is unknown or one is a fermion."""
-        return None if self._lengths is None else mixing(self.masses, self._lengths)
+        """What two condensates of these atoms do; None where it is unknown or one is a fermion. Of one mixture."""
+        if self._lengths is None:
+            return None
+        first, second, between = (float(a) for a in self._lengths)
+        return mixing(self.masses, (first, second, between))
 
     @property
-    def bose_fermi_parameter(self) -> float:
+    def bose_fermi_parameter(self) -> Floats:
         """Of a condensate and a Fermi gas of this density: below 1 they are stable together. [1]"""
         boson, fermion = self.coolant, self.passenger
         if not boson.bosons:
             boson, fermion = fermion, boson
         a = boson.cloud.scattering_length
-        if fermion.bosons or not boson.bosons or self.scattering_length is None or a is None or not float(a) > 0.0:
-            return math.nan
+        if fermion.bosons or not boson.bosons or self.scattering_length is None or a is None:
+            return _NAN
+        repulsive = np.where(np.asarray(a) > 0.0, a, np.nan)
         masses = (float(boson.cloud.mass), float(fermion.cloud.mass))
-        return float(bose_fermi_parameter(masses, (a, self.scattering_length), fermion.peak_density))
+        return bose_fermi_parameter(masses, (repulsive, self.scattering_length), fermion.peak_density)
 
     @property
-    def relative_shift(self) -> float:
+    def relative_shift(self) -> Floats:
         """Largest mean-field shift of one in the other, over its thermal or Fermi energy. [1]"""
         if self.scattering_length is None:
-            return math.nan
-        shifts = (self.shift_of_coolant, self.shift_of_passenger)
-        return max(
-            abs(shift) / _energy(solved) for shift, solved in zip(shifts, (self.coolant, self.passenger), strict=True)
+            return _NAN
+        largest: Floats = np.maximum(
+            np.abs(self.shift_of_coolant) / _energy(self.coolant),
+            np.abs(self.shift_of_passenger) / _energy(self.passenger),
         )
+        return largest
 
 
-def _energy(solved: Equilibrium) -> float:
+_NAN = np.array(np.nan)
+
+
+def _energy(solved: Equilibrium) -> Floats:
     """What a cloud has against being moved: kT, or the energy of its Fermi sea or condensate where that is more."""
-    thermal = boltzmann * float(solved.cloud.temperature)
-    mu = float(solved.chemical_potential)
-    return max(thermal, mu) if math.isfinite(mu) else thermal
+    thermal = boltzmann * np.asarray(solved.cloud.temperature, dtype=np.float64)
+    mu = np.asarray(solved.chemical_potential)
+    energy: Floats = np.maximum(thermal, np.where(np.isfinite(mu), mu, thermal))
+    return energy

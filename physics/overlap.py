@@ -39,8 +39,17 @@ def inverse_stiffness(frequencies: ArrayLike, axes: ArrayLike | None = None) -> 
     axes : (3, 3) or None. Rows: the unit vectors that they belong to; None: x, y and z.
     """
     f = np.asarray(frequencies, dtype=np.float64)
-    squares = 1.0 / (2.0 * math.pi * f) ** 2
-    e = np.eye(3) if axes is None else np.asarray(axes, dtype=np.float64)
+    return turned(1.0 / (2.0 * math.pi * f) ** 2, np.eye(3) if axes is None else axes)
+
+
+def turned(squares: ArrayLike, axes: ArrayLike) -> Spread:
+    """A matrix by its eigenvalues.
+
+    Parameters
+    ----------
+    squares : (..., 3). axes : (3, 3). Rows: the unit vectors that they belong to.
+    """
+    squares, e = np.asarray(squares, dtype=np.float64), np.asarray(axes, dtype=np.float64)
     xx, yy, zz, xy, xz, yz = (
         np.sum(squares * e[:, i] * e[:, j], axis=-1) for i, j in ((0, 0), (1, 1), (2, 2), (0, 1), (0, 2), (1, 2))
     )

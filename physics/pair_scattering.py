@@ -11,8 +11,11 @@ import math
 from dataclasses import dataclass
 from enum import Enum
 
+from numpy.typing import ArrayLike
+
+from physics.checks import Floats
 from physics.particles import Certainty
-from physics.scattering import WhyUnknown, length_at_field, scattering_length_at_field
+from physics.scattering import WhyUnknown, length_at_field, scattering_length_at_field, tuning
 from physics.species import State, load_species
 from physics.species_tables import Pair, ResonanceForm, least_certain, load_forms, load_pairs
 
@@ -71,6 +74,18 @@ def length_between(first: State, second: State, field: float | None = None) -> P
     return missing or PairLength(value=None, reason=WhyNoLength.DIFFERENT_COMPONENTS)
 
 
+def lengths_in_fields(first: State, second: State, fields: ArrayLike) -> Floats:
+    """The scattering length between two states by the resonances of the data, in many magnetic fields. [m]
+
+    NaN outside of the ranges that they describe, see `length_between`.
+
+    Parameters
+    ----------
+    fields : array_like. [T]
+    """
+    return scattering_length_at_field(_forms(_components(first)[0], _components(second)[0]), fields)
+
+
 def _components(state: State) -> tuple[State, ...]:
     """Of a mixture; itself where it is none, or one of all its states, which the data do not name."""
     return load_species(state.key).components_of(state) or (state,)
@@ -79,10 +94,7 @@ def _components(state: State) -> tuple[State, ...]:
 def _single(first: State, second: State, field: float | None) -> PairLength:
     if first.key == second.key:
         return _within(first, second, field)
-    named = sorted(((first.key, first.name), (second.key, second.name)))
-    forms = tuple(
-        form for form in load_forms() if sorted((form.resonances[0].first, form.resonances[0].second)) == named
-    )
+    named, forms = _names(first, second), _forms(first, second)
     ranges = tuple(sorted((form.low, form.high) for form in forms))
     if field is not None:
         value = float(scattering_length_at_field(forms, field))
@@ -110,6 +122,27 @@ def _single(first: State, second: State, field: float | None) -> PairLength:
     return PairLength(value=None, reason=reason, ranges=ranges, others=tuple(rows))
 
 
+def _names(first: State, second: State) -> list[tuple[str, str]]:
+    return sorted(((first.key, first.name), (second.key, second.name)))
+
+
+def _forms(first: State, second: State) -> tuple[ResonanceForm, ...]:
+    """The resonances between two states."""
+    if first.key == second.key:
+        mixture = _mixture(first, second)
+        return () if mixture is None else tuning(mixture)
+    named = _names(first, second)
+    return tuple(
+        form for form in load_forms() if sorted((form.resonances[0].first, form.resonances[0].second)) == named
+    )
+
+
+def _mixture(first: State, second: State) -> State | None:
+    """Of two states of one isotope; None where the data have none."""
+    names = {first.name, second.name}
+    return next((state for state in load_species(first.key).states if set(state.components) == names), None)
+
+
 def _of_form(
     value: float, forms: tuple[ResonanceForm, ...], field: float, ranges: tuple[tuple[float, float], ...]
 ) -> PairLength:
@@ -128,8 +161,7 @@ def _within(first: State, second: State, field: float | None) -> PairLength:
     """Two states of one isotope: as the data have it of their mixture."""
     if first.name == second.name:
         return PairLength(value=None, reason=WhyNoLength.SAME)
-    names = {first.name, second.name}
-    mixture = next((state for state in load_species(first.key).states if set(state.components) == names), None)
+    mixture = _mixture(first, second)
     if mixture is None:
         return PairLength(value=None, reason=WhyNoLength.NOT_IN_DATA)
     found = length_at_field(mixture, field)

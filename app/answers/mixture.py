@@ -3,15 +3,16 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from types import MappingProxyType
 from typing import TYPE_CHECKING
 
-import numpy as np
-
 from app.answers.cloud import CloudAnswer, cloud_answer
+from app.answers.mixture_uncertainty import Together, mixture_spreads, mixture_value
 from app.answers.part import part
-from app.answers.passenger import between_of, frequencies_caveat, passenger_plan, vertical_of
-from app.answers.trap import trap_answer
+from app.answers.passenger import between_of, frequencies_caveat, passenger_plan
+from app.answers.uncertainty import Spread
 from app.plan_field import PlanError
 from physics.caveats import Severity, gravest_first
 from physics.mixture_caveats import (
@@ -20,8 +21,7 @@ from physics.mixture_caveats import (
     between_caveats,
     mixture_caveats,
 )
-from physics.mixtures import Mixture, Place
-from physics.overlap import sag
+from physics.mixtures import Mixture
 from physics.pair_scattering import PairLength
 from physics.species import State, load_species
 
@@ -39,6 +39,7 @@ class MixtureAnswer:
     mixture : both together; None with it
     between : the scattering length between the two
     own_trap : whether the passenger's frequencies and depth follow from beams and coils; else they are those given
+    spreads : of the quantities of both together that the plan's uncertainties reach, by NAME
     """
 
     plan: Plan
@@ -49,6 +50,7 @@ class MixtureAnswer:
     between: PairLength
     own_trap: bool
     caveats: tuple[MixtureCaveat, ...]
+    spreads: Mapping[str, Spread] = field(default_factory=lambda: MappingProxyType({}))
     reason: str = ""
 
     @property
@@ -59,7 +61,7 @@ class MixtureAnswer:
         """A quantity of `app.mixture_quantities` by its NAME, in SI; NaN where it is unknown or does not apply."""
         if name == "scattering_length_between":
             return math.nan if self.between.value is None else self.between.value
-        return math.nan if self.mixture is None else float(getattr(self.mixture, name))
+        return math.nan if self.mixture is None else float(mixture_value(self.mixture, name))
 
 
 @part("species", "trap", "cloud", "losses", "target", "passenger")
@@ -76,6 +78,7 @@ def mixture_answer(plan: Plan) -> MixtureAnswer:
     coolant = cloud_answer(plan)
     state = load_species(own.species.key).state(own.species.state)
     passenger, mixture, reason = None, None, ""
+    spreads: Mapping[str, Spread] = {}
     caveats = [*between_caveats(between)]
     try:
         passenger = cloud_answer(own)
@@ -85,14 +88,9 @@ def mixture_answer(plan: Plan) -> MixtureAnswer:
         reason = str(error)
         caveats.append(MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_NOT_HELD, severity=Severity.REFUSAL))
     if passenger is not None:
-        efficiency, vertical = coolant.efficiency, vertical_of(plan)
-        mixture = Mixture(
-            coolant=coolant.equilibrium,
-            passenger=passenger.equilibrium,
-            places=(_place(plan, vertical), _place(own, vertical)),
-            scattering_length=between.value,
-            cooling=None if efficiency is None else (efficiency + 1.0) / 3.0,
-        )
+        together = Together(plan=plan, own=own, clouds=(coolant, passenger), between=between)
+        mixture = together.central
+        spreads = mixture_spreads(together, mixture)
         caveats += mixture_caveats(mixture, lifetime=_lifetime(coolant, passenger))
         if not own_trap:
             caveats.append(frequencies_caveat(plan))
@@ -105,20 +103,9 @@ def mixture_answer(plan: Plan) -> MixtureAnswer:
         between=between,
         own_trap=own_trap,
         caveats=gravest_first(caveats),
+        spreads=spreads,
         reason=reason,
     )
-
-
-def _place(plan: Plan, vertical: tuple[int, float] | None) -> Place:
-    """Of atoms whose frequencies are given, the centre, or as far below it as they sag."""
-    if plan.trap.frequencies is not None:
-        minimum = [0.0, 0.0, 0.0]
-        if vertical is not None:
-            axis, down = vertical
-            minimum[axis] = down * float(sag(plan.trap.frequencies[axis].value))
-        return Place(minimum=tuple(minimum))
-    survey = trap_answer(plan).survey
-    return Place(minimum=survey.minimum, axes=np.eye(3) if survey.axes is None else survey.axes)
 
 
 def _lifetime(*answers: CloudAnswer) -> float:

@@ -1,7 +1,7 @@
 """The trap of a cloud: harmonic where its frequencies are given, else what the survey of beams and coils found.
 
-Frequencies, depth and volume of a surveyed trap follow its uncertain numbers (powers, waists, gradients ...) to first
-order, its volume curve keeps its shape: W at a low energy goes as 1 over the product of the frequencies.
+Frequencies, depth, volume and minimum of a surveyed trap follow its uncertain numbers (powers, waists, gradients ...)
+to first order, its volume curve keeps its shape: W at a low energy goes as 1 over the product of the frequencies.
 """
 
 from __future__ import annotations
@@ -33,13 +33,14 @@ STEP = 1e-3
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Slope:
-    """How the logarithms of the three frequencies, of the depth and of the volume at a low energy follow one number of
-    the trap: in its logarithm where it is positive, else in itself."""
+    """How the logarithms of the three frequencies, of the depth and of the volume at a low energy, and the place of the
+    minimum [m], follow one number of the trap: in its logarithm where it is positive, else in itself."""
 
     centre: float
     frequencies: Array
     depth: float
     room: float
+    minimum: Array
 
     def distance(self, values: float | Array) -> Array:
         """How far values of the number are from its central one."""
@@ -77,6 +78,14 @@ def trap_in_use(plan: Plan, numbers: Mapping[str, float | Array]) -> HarmonicTra
         depth = None if central.depth is None else central.depth * np.exp(deeper)
         return HarmonicTrap(frequencies=central.frequencies * np.exp(exponents), depth=depth)
     return central.resized(depth=np.exp(deeper), frequencies=np.exp(exponents), room=np.exp(wider))
+
+
+def minimum_in_use(plan: Plan, numbers: Mapping[str, float | Array]) -> Array:
+    """(..., 3) Where the minimum of the plan's beams and coils is for these numbers. [m]"""
+    place = np.asarray(_held(plan).survey.minimum, dtype=np.float64)
+    for name, slope in trap_slopes(plan).items():
+        place = place + slope.distance(numbers[name])[..., np.newaxis] * slope.minimum
+    return place
 
 
 @part("species.key", "species.state", "trap", keep=KEPT)
@@ -138,8 +147,10 @@ def trap_slopes(plan: Plan) -> dict[str, Slope]:
         if below is None or above is None:
             continue  # at the edge of what is held, where there is no first order
         width = math.log((quantity.value + step) / (quantity.value - step)) if quantity.value > 0.0 else 2.0 * step
-        frequencies, depth, room = ((high - low) / width for low, high in zip(below, above, strict=True))
-        slopes[name] = Slope(centre=quantity.value, frequencies=frequencies, depth=float(depth), room=float(room))
+        frequencies, depth, room, place = ((high - low) / width for low, high in zip(below, above, strict=True))
+        slopes[name] = Slope(
+            centre=quantity.value, frequencies=frequencies, depth=float(depth), room=float(room), minimum=place
+        )
     return slopes
 
 
@@ -154,25 +165,27 @@ def trap_change(plan: Plan) -> float:
     return float(np.nanmax(changes))
 
 
-def _nearby(answer: TrapAnswer, trap: Trap) -> tuple[Array, Array, Array] | None:
+def _nearby(answer: TrapAnswer, trap: Trap) -> tuple[Array, Array, Array, Array] | None:
     """Logarithms, but for constants, of the frequencies, the depth and the volume of a trap that differs a little from
-    the surveyed one; None where it cannot be followed."""
+    the surveyed one, and its minimum; None where it cannot be followed."""
     from physics.traps.potential import potential_of
-    from physics.traps.response import nearby
+    from physics.traps.response import nearby, nearby_minimum
 
     if answer.survey.frequencies is not None:
-        near = nearby(answer.survey, potential_of(trap, answer.state))
-        if near is None:
+        potential = potential_of(trap, answer.state)
+        near, place = nearby(answer.survey, potential), nearby_minimum(answer.survey, potential)
+        if near is None or place is None:
             return None
         logs = np.log(near.frequencies)
-        return logs, np.log(1.0 if near.depth is None else near.depth), -np.sum(logs)
+        return logs, np.log(1.0 if near.depth is None else near.depth), -np.sum(logs), place
     # A cusp is quick to survey, and there is no shorter way.
     from physics.traps.survey import survey
 
     found = survey(trap, answer.state)
     if found.depth is None or found.volume_curve is None:
         return None
-    return np.zeros(3), np.log(found.depth), np.log(found.volume_curve.coefficient)
+    place = np.asarray(found.minimum, dtype=np.float64)
+    return np.zeros(3), np.log(found.depth), np.log(found.volume_curve.coefficient), place
 
 
 _Put = Callable[[Quantity], "TrapChoice"]

@@ -175,7 +175,7 @@ class Uncertainty:
         reach, start = math.sqrt(len(self._uncertain)), math.log(float(values_of(self.plan)[against]))
         centre, shifts, values = float(plain(self.central)), [], []
         for pair, (item, quantity) in zip(self._steps, self._uncertain.items(), strict=True):
-            for solution, moved in zip(pair, _one_deviation(quantity), strict=True):
+            for solution, moved in zip(pair, one_deviation(quantity), strict=True):
                 shifts.append(math.log(moved) - start if item == against else 0.0)
                 values.append(float(plain(solution)) - centre)
         return start + reach * np.array(shifts), centre + reach * np.array(values)
@@ -187,14 +187,14 @@ class Uncertainty:
         return tuple(
             (self.solve({**values, name: below}), self.solve({**values, name: above}))
             for name, quantity in self._uncertain.items()
-            for below, above in [_one_deviation(quantity)]
+            for below, above in [one_deviation(quantity)]
         )
 
     @cached_property
     def _draws(self) -> Numbers:
         """Every input: its samples where it has an uncertainty, else its value. One column of the lattice each, so that
         equal texts are still independent measurements."""
-        normal = _normal_deviates(self.samples, len(self._uncertain))
+        normal = deviates(self.samples, len(self._uncertain))
         columns = dict(zip(self._uncertain, normal.T, strict=True))
         return {
             **values_of(self.plan),
@@ -248,13 +248,13 @@ def _spread(low: Array, median: Array, high: Array, method: Method) -> Spread:
     return Spread(low=low, median=median, high=high, method=method)
 
 
-def _one_deviation(quantity: Quantity) -> tuple[float, float]:
+def one_deviation(quantity: Quantity) -> tuple[float, float]:
     """One standard deviation below and above, as the draws have it: in the logarithm for positive quantities."""
     low, high = sample(quantity.value, quantity.sigma or 0.0, np.array([-1.0, 1.0]))
     return float(low), float(high)
 
 
 @lru_cache(maxsize=16)
-def _normal_deviates(samples: int, dimensions: int) -> Array:
+def deviates(samples: int, dimensions: int) -> Array:
     """The same draws for every answer."""
     return lattice(samples, dimensions, seed=SEED)

@@ -52,8 +52,11 @@ def mixture_body(answer: MixtureAnswer, own: dict[str, Any] | None) -> dict[str,
 def _quantity(answer: MixtureAnswer, name: str) -> dict[str, Any]:
     row, value = MIXTURE_QUANTITIES[name], answer.value(name)
     entry: dict[str, Any] = {"value": value, "unit": row.unit, "low": None, "high": None}
+    spread = answer.spreads.get(name)
     if not math.isfinite(value):
         entry |= {"value": None, "reason": reason_unknown(answer, name)}
+    elif spread is not None:
+        entry |= {"low": spread.low, "high": spread.high, "median": spread.median}
     return {**entry, "label": row.label, "source": row.source}
 
 

@@ -25,18 +25,26 @@ def nearby(found: Survey, potential: Potential) -> HarmonicTrap | None:
     None where nothing has frequencies: the surveyed trap, or the changed one where its minimum was. The depth is None
     where it was, or where it would be lost.
     """
-    if found.minimum is None or found.frequencies is None:
+    r = nearby_minimum(found, potential)
+    if r is None:
         return None
-    r = np.array(found.minimum, dtype=np.float64)
-    for _ in range(_STEPS):
-        _, gradient, hessian = potential.hessian(r)
-        r = r - np.linalg.solve(hessian, gradient)
     _, _, hessian = potential.hessian(r)
     modes = modes_of(hessian, potential.mass)
     if modes is None:
         return None
     depth = _depth(found, potential, r)
     return HarmonicTrap(frequencies=modes.frequencies, depth=depth if depth is not None and depth > 0.0 else None)
+
+
+def nearby_minimum(found: Survey, potential: Potential) -> Floats | None:
+    """Where the minimum is in such a potential. [m] None where nothing has frequencies."""
+    if found.minimum is None or found.frequencies is None:
+        return None
+    r = np.array(found.minimum, dtype=np.float64)
+    for _ in range(_STEPS):
+        _, gradient, hessian = potential.hessian(r)
+        r = r - np.linalg.solve(hessian, gradient)
+    return r
 
 
 def _depth(found: Survey, potential: Potential, minimum: Floats) -> float | None:
