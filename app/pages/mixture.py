@@ -3,11 +3,9 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from functools import cached_property, partial
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QEvent, QObject
-from PySide6.QtGui import QShowEvent
 from PySide6.QtWidgets import QWidget
 
 from app.engine import CloudAnswer
@@ -16,15 +14,15 @@ from app.language import translate as _
 from app.newest import Job, Steps, Watch
 from app.plan import Plan
 from app.widgets.banner import Offer
-from app.widgets.page import Page
-from app.widgets.time_keys import moved_time
+from app.widgets.mixture_panel import MixturePanel, MixtureView
+from app.widgets.ramp_plots import ColumnPlots
+from app.widgets.time_page import TimePage
 
 if TYPE_CHECKING:
     from app.answers.mixture import MixtureAnswer
     from app.answers.mixture_profiles import MixtureProfiles
     from app.answers.ramp import RampAnswer
     from app.answers.sympathetic import SympatheticAnswer
-    from app.widgets.mixture_panel import MixturePanel
     from app.widgets.plot import Plot
 
 HINT = "Passenger, on the bench, has the numbers of the second species"
@@ -60,25 +58,15 @@ class Found:
         return bool(self.failure or self.ramp_failure) or self.ramp is not None
 
 
-class MixturePage(Page):
-    """Attributes: reading, the time along the ramp that is read [s] or None."""
+class MixturePage(TimePage):
+    """Attributes: panel, all that is on the page."""
 
     title = "Mixture"
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
-        self.reading: float | None = None
         self._found: Found | None = None
-        self._built = False
-
-    # ---------------------------------------------------------------- building, when first seen
-
-    @cached_property
-    def panel(self) -> MixturePanel:
-        """All that is on the page; built when it is first shown, so that a start does not wait for it."""
-        from app.widgets.mixture_panel import MixturePanel
-
-        panel = MixturePanel(self)
+        panel = self.panel = MixturePanel(self)
         self.column.addWidget(panel, 1)
         panel.body.addWidget(self.bar)
         panel.view_changed.connect(self._view_changed)
@@ -87,18 +75,10 @@ class MixturePage(Page):
             lambda place: self.bar.status.say(self.pointer_text(panel.profile, place) or HINT)
         )
         self._all = self.plots
-        self._built = True
-        return panel
-
-    def showEvent(self, event: QShowEvent) -> None:
-        self.panel.show()
-        super().showEvent(event)
 
     # ---------------------------------------------------------------- answers
 
     def part(self, plan: Plan) -> Job | None:
-        if not self._built:
-            return None
         if plan.passenger is None:
             self._show_none()
             return None
@@ -114,8 +94,6 @@ class MixturePage(Page):
         )
 
     def _ramp_wanted(self, plan: Plan) -> bool:
-        from app.widgets.mixture_panel import MixtureView
-
         return self.panel.view is MixtureView.RAMP and bool(plan.ramp)
 
     def _wanted(self, plan: Plan) -> object:
@@ -130,7 +108,7 @@ class MixturePage(Page):
 
     def show_end(self, *, stopped: bool) -> None:
         super().show_end(stopped=stopped)
-        if stopped and self._built and self.panel.is_empty:
+        if stopped and self.panel.is_empty:
             self._show_empty(
                 _("The simulation of the ramp was stopped."),
                 _("Compute in the line below begins it again."),
@@ -141,18 +119,13 @@ class MixturePage(Page):
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
-        if self._built and self.isVisible() and cloud.plan.passenger is None:
+        if self.isVisible() and cloud.plan.passenger is None:
             self._show_none()
-
-    def mark_stale(self, reason: str) -> None:
-        if self._built:
-            super().mark_stale(reason)
 
     def set_theme(self, theme: Theme) -> None:
         super().set_theme(theme)
-        if self._built:
-            for plot in self._all:
-                plot.canvas.set_theme(theme)
+        for plot in self._all:
+            plot.canvas.set_theme(theme)
 
     @property
     def answer(self) -> MixtureAnswer | None:
@@ -166,8 +139,6 @@ class MixturePage(Page):
         return None if ramp is None else ramp.passenger
 
     def _show(self) -> None:
-        from app.widgets.mixture_panel import MixtureView
-
         found = self._found
         if found is None or self.cloud is None or self.cloud.plan.passenger is None:
             return
@@ -303,32 +274,21 @@ class MixturePage(Page):
 
     # ---------------------------------------------------------------- reading values
 
-    def read_time(self, time: float | None) -> None:
-        """Read all values along the ramp at a time; None: at none."""
-        if time != self.reading:
-            self.reading = time
-            if self.sympathetic is not None and self.answer is not None and not self.panel.is_empty:
-                self._show_courses(self.sympathetic, self.answer)
+    def show_reading(self) -> None:
+        if self.sympathetic is not None and self.answer is not None and not self.panel.is_empty:
+            self._show_courses(self.sympathetic, self.answer)
 
     def _say_time(self) -> None:
         from app.ramp_words import duration
 
         self.bar.status.say(RAMP_HINT if self.reading is None else f"t = {duration(self.reading)}")
 
-    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
-        """Left and right arrow keys on a plot along the ramp move the time that is read; Escape ends that."""
-        if not self._built or event.type() != QEvent.Type.KeyPress:
-            return super().eventFilter(watched, event)
-        on_plot = any(plot.canvas is watched for plot in self.panel.courses.plots.values())
-        moved = moved_time(event, self.reading, self._end, on_plot=on_plot)
-        if moved is None:
-            return super().eventFilter(watched, event)
-        self.read_time(moved.time)
-        return True
+    @property
+    def along(self) -> ColumnPlots:
+        return self.panel.courses
 
     @property
-    def _end(self) -> float | None:
-        """End of what is shown. [s] None where there is no ramp."""
+    def end(self) -> float | None:
         run = None if self.sympathetic is None else self.sympathetic.run.coolant
         return float(run.time[-1]) if run is not None and len(run.time) else None
 

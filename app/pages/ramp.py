@@ -3,10 +3,8 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QEvent, QObject
 from PySide6.QtGui import QShowEvent
 from PySide6.QtWidgets import QWidget
 
@@ -17,8 +15,10 @@ from app.newest import Job, Steps, Watch
 from app.plan import Plan
 from app.widgets.banner import Offer
 from app.widgets.pace import Pace
-from app.widgets.page import Page
-from app.widgets.time_keys import moved_time
+from app.widgets.ramp_exchange import RampExchange
+from app.widgets.ramp_panel import RampPanel
+from app.widgets.ramp_plots import ColumnPlots, Scene
+from app.widgets.time_page import TimePage
 
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
@@ -26,8 +26,6 @@ if TYPE_CHECKING:
     from app.figures.ramp_controls import Handle
     from app.ramp_choices import StageChoice
     from app.widgets.ramp_courses import Reference
-    from app.widgets.ramp_panel import RampPanel
-    from app.widgets.ramp_plots import Scene
 
 HINT = "Point at a time, or use the left and right arrow keys, to read all values"
 _STEP = "ramp"
@@ -36,34 +34,23 @@ _NO_RAMP = "This plan has no ramp yet."
 _START = "Start from a usual one, which lowers the trap to a tenth in five seconds, or let one be designed."
 
 
-class RampPage(Page):
-    """Attributes: references, the ramps kept; reading, the time that is read [s] or None."""
+class RampPage(TimePage):
+    """Attributes: references, the ramps kept; panel, all that is on the page."""
 
     title = "Ramp"
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
         self.references: list[Reference] = []
-        self.reading: float | None = None
         self.since: str | None = None  # label of the measured cloud from which the rest is drawn
         self._found: Found | None = None
         self._pace = Pace()
         self._drag = 0
         self._written: Plan | None = None  # as it was before the drag that is under way
         self._reach = 1.0  # [s] of the time axis then
-        self._built = False
         self._scenery: Scene | None = None  # what all plots on show share
         self._shown: Plan | None = None  # whose stages are on show
-
-    # ---------------------------------------------------------------- building, when first seen
-
-    @cached_property
-    def panel(self) -> RampPanel:
-        """All that is on the page; built when it is first shown, so that a start does not wait for it."""
-        from app.widgets.ramp_exchange import RampExchange
-        from app.widgets.ramp_panel import RampPanel
-
-        panel = RampPanel(self)
+        panel = self.panel = RampPanel(self)
         self.column.addWidget(panel, 1)
         panel.body.addWidget(self.bar)
         panel.columns.time_read.connect(self.read_time)
@@ -87,11 +74,8 @@ class RampPage(Page):
         panel.drop.clicked.connect(self.drop_references)
         self.bar.status.say(HINT)
         panel.set_theme(self.theme)
-        self._built = True
-        return panel
 
     def showEvent(self, event: QShowEvent) -> None:
-        self.panel.show()
         self._pace.arrived()
         super().showEvent(event)
 
@@ -100,8 +84,6 @@ class RampPage(Page):
     def part(self, plan: Plan) -> Job | None:
         from app.answers.ramp import kept_ramp
 
-        if not self._built:
-            return None
         if not plan.ramp and not self.panel.extra_wanted(plan):
             return None
         if self._is_answered(plan):
@@ -168,7 +150,7 @@ class RampPage(Page):
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
-        if not (self._built and self.isVisible()):
+        if not self.isVisible():
             return
         found = self._found
         if found is not None and found.key != self._key(cloud.plan):
@@ -180,14 +162,9 @@ class RampPage(Page):
         else:
             self._show()
 
-    def mark_stale(self, reason: str) -> None:
-        if self._built:
-            super().mark_stale(reason)
-
     def set_theme(self, theme: Theme) -> None:
         super().set_theme(theme)
-        if self._built:
-            self.panel.set_theme(theme)
+        self.panel.set_theme(theme)
 
     @property
     def answer(self) -> RampAnswer | None:
@@ -290,16 +267,13 @@ class RampPage(Page):
     @property
     def problems(self) -> tuple[str, ...]:
         """What cannot be read, as sentences."""
-        if not self._built:
-            return ()
         editors = (self.panel.stages, self.panel.design, self.panel.measured)
         return tuple(editor.problem for editor in editors if editor.problem)
 
     def discard_edits(self) -> None:
         """Drop texts that could not be read: another plan is about to be shown."""
-        if self._built:
-            for editor in (self.panel.stages, self.panel.design, self.panel.measured):
-                editor.discard_edits()
+        for editor in (self.panel.stages, self.panel.design, self.panel.measured):
+            editor.discard_edits()
 
     def _problem_changed(self, sentence: str) -> None:
         """A field of the table cannot be read: the plots stay, marked as not following it."""
@@ -362,11 +336,8 @@ class RampPage(Page):
 
     # ---------------------------------------------------------------- reading values
 
-    def read_time(self, time: float | None) -> None:
-        """Read all values at a time; None: at none."""
-        if time != self.reading:
-            self.reading = time
-            self._show()
+    def show_reading(self) -> None:
+        self._show()
 
     def _say_values(self) -> None:
         from app.ramp_words import duration
@@ -383,20 +354,12 @@ class RampPage(Page):
         ]
         self.bar.status.say("   ".join(parts))
 
-    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
-        """Left and right arrow keys on a plot of the cloud move the time that is read."""
-        if not self._built or event.type() != QEvent.Type.KeyPress:
-            return super().eventFilter(watched, event)
-        on_plot = any(plot.canvas is watched for plot in self.panel.columns.plots.values())
-        moved = moved_time(event, self.reading, self._end, on_plot=on_plot)
-        if moved is None:
-            return super().eventFilter(watched, event)
-        self.read_time(moved.time)
-        return True
+    @property
+    def along(self) -> ColumnPlots:
+        return self.panel.columns
 
     @property
-    def _end(self) -> float | None:
-        """End of what is shown. [s] None where there is no ramp."""
+    def end(self) -> float | None:
         run = None if self.cloud is None or self.answer is None else self.answer.run
         return float(run.time[-1]) if run is not None and len(run.time) else None
 

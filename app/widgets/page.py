@@ -74,7 +74,6 @@ class Page(QWidget):
         canvas.setWhatsThis(canvas.toolTip())
         canvas.set_box_zoom(self.bar.buttons["box"].isChecked())
         plot = Plot(canvas)
-        canvas.installEventFilter(self)
         self._plots.append(plot)
         return plot
 
