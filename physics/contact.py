@@ -12,7 +12,7 @@ from physics.checks import Floats
 from physics.constants import boltzmann
 from physics.evaporation_rates import CloudNow
 from physics.interspecies import PairCollisions
-from physics.overlap import inverse_stiffness, joint_spread, overlap_density, overlap_exponent, sag
+from physics.overlap import inverse_stiffness, overlap_of, sag
 from physics.spline import Spline
 from physics.stage_trap import StageTrap, TrapNow
 from physics.trap_path import TrapPoint
@@ -105,18 +105,20 @@ class Contact:
         other_stiff, other_low = self.placements[1].at(second.trap)
         temperatures = (first.temperature, second.temperature)
         apart = [a - b for a, b in zip(low, other_low, strict=True)]
-        spread = joint_spread(stiff, other_stiff, pair.masses, temperatures)
+        hot, other_hot = (boltzmann * T / m for T, m in zip(temperatures, pair.masses, strict=True))
+        spread = [hot * x + other_hot * y for x, y in zip(stiff, other_stiff, strict=True)]
         denser = (_density_ratio(cloud, mass) for cloud, mass in zip((first, second), pair.masses, strict=True))
-        density = float(overlap_density(spread, apart)) * math.sqrt(math.prod(denser))
-        rate = float(pair.collision_rate(temperatures, density))
-        power = float(pair.exchanged_power(temperatures, density))
+        density, share = overlap_of(spread, apart)
+        density *= math.sqrt(math.prod(denser))
+        rate, exchange = (density * coefficient for coefficient in pair.rate_coefficients(*temperatures))
+        power = pair.energy_share * boltzmann * (temperatures[0] - temperatures[1]) * exchange
         atoms = (first.atoms * self.spin_components[0], second.atoms * self.spin_components[1])
         return ContactNow(
-            share=float(np.exp(-overlap_exponent(spread, apart))),
-            displacement=float(np.linalg.norm(apart)),
+            share=share,
+            displacement=math.hypot(*apart),
             rates=(atoms[1] * rate, atoms[0] * rate),
             powers=(-atoms[1] * power, atoms[0] * power),
-            relaxation=float(pair.relaxation_rate(atoms, temperatures, density)),
+            relaxation=pair.energy_share / 3.0 * sum(atoms) * exchange,
         )
 
     def joined(self, first: CloudNow, second: CloudNow, now: ContactNow) -> tuple[CloudNow, CloudNow]:

@@ -16,6 +16,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -25,6 +26,8 @@ from physics.collisions import thermal_factor
 from physics.constants import boltzmann, reduced_planck
 
 _LOG_T = np.arange(-24.0, 4.0, 0.25)
+_T = np.exp(_LOG_T)
+_WEIGHTS = 0.25 * np.exp(-_T) * np.array([_T**2, 0.5 * _T**3])
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -97,8 +100,7 @@ class PairCollisions:
     def exchange_cross_section(self, temperatures: tuple[ArrayLike, ArrayLike]) -> Floats:
         """<sigma v^3>/<v^3> of it, with which they hand over energy. [m^2]"""
         K = np.asarray(self._energy_parameter(temperatures))[..., np.newaxis]
-        t = np.exp(_LOG_T)
-        sigma: Floats = self._cold * np.sum(0.125 * t**3 * np.exp(-t) / (1.0 + K * t), axis=-1)
+        sigma: Floats = self._cold * np.sum(_WEIGHTS[1] / (1.0 + K * _T), axis=-1)
         return sigma
 
     @property
@@ -125,6 +127,23 @@ class PairCollisions:
         rate = self.exchange_cross_section(temperatures) * self.relative_speed(temperatures) * np.asarray(overlap)
         power: Floats = self.energy_share * boltzmann * (T1 - T2) * rate
         return power
+
+    @cached_property
+    def _scalars(self) -> tuple[float, float]:
+        """4 pi a^2, and k^2 a^2 over half the square of a speed, of one pair. [m^2], [s^2/m^2]"""
+        a = float(self.scattering_length)  # type: ignore[arg-type]
+        return 4.0 * math.pi * a * a, 2.0 * (self.reduced_mass * a / reduced_planck) ** 2
+
+    def rate_coefficients(self, first: float, second: float) -> tuple[float, float]:
+        """sigma v of collisions, and as it hands over energy, at two temperatures. [m^3/s]
+
+        For the kinetics, which asks for single numbers a thousand times.
+        """
+        spread = boltzmann * (first / self.masses[0] + second / self.masses[1])
+        cold, parameter = self._scalars
+        counted, exchanging = (_WEIGHTS @ (1.0 / (1.0 + parameter * spread * _T))).tolist()
+        flux = cold * math.sqrt(8.0 / math.pi * spread)
+        return counted * flux, exchanging * flux
 
     def relaxation_rate(
         self, atoms: tuple[ArrayLike, ArrayLike], temperatures: tuple[ArrayLike, ArrayLike], overlap: ArrayLike

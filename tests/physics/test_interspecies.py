@@ -146,3 +146,13 @@ def test_what_cannot_be() -> None:
         PairCollisions(masses=(0.0, 1e-25), scattering_length=1e-9)
     with pytest.raises(ValueError, match="scattering length must be finite, got inf m"):
         PairCollisions(masses=(1e-25, 1e-25), scattering_length=math.inf)
+
+
+@pytest.mark.parametrize("length", [0.0, -215.0, 5000.0])
+def test_single_numbers_for_the_kinetics_are_those_of_arrays(length: float) -> None:
+    pair = PairCollisions(masses=(1.44e-25, 6.6e-26), scattering_length=length * 5.29177e-11)
+    temperatures = (3e-6, 8e-7)
+    counted, exchanging = pair.rate_coefficients(*temperatures)
+    assert counted == pytest.approx(float(pair.collision_rate(temperatures, 1.0)), rel=1e-12)
+    speed = float(pair.relative_speed(temperatures))
+    assert exchanging == pytest.approx(float(pair.exchange_cross_section(temperatures)) * speed, rel=1e-12)

@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 from scipy.integrate import quad
 
 from physics.constants import atomic_mass, boltzmann
-from physics.overlap import inverse_stiffness, joint_spread, overlap_density, overlap_exponent, sag
+from physics.overlap import inverse_stiffness, joint_spread, overlap_density, overlap_exponent, overlap_of, sag
 
 RUBIDIUM, POTASSIUM = 87.0 * atomic_mass, 40.0 * atomic_mass
 MASSES = (RUBIDIUM, POTASSIUM)
@@ -101,3 +101,12 @@ def test_mass_scaled_frequencies_in_the_same_light() -> None:
     assert 16.3 * ratio == pytest.approx(24.0, rel=2e-3)
     # There the sag of the heavier is larger by the ratio of the masses.
     assert float(sag(215.0) / sag(215.0 * ratio)) == pytest.approx(86.909 / 39.964, rel=1e-12)
+
+
+def test_single_numbers_for_the_kinetics_are_those_of_arrays() -> None:
+    spread = (3e-10, 2e-10, 1e-10, 4e-11, -2e-11, 1e-11)
+    apart = (4e-6, -8e-6, 9e-6)
+    matrix = [np.array(x) for x in spread]
+    density, share = overlap_of(spread, apart)
+    assert density == pytest.approx(float(overlap_density(tuple(matrix), apart)), rel=1e-13)  # type: ignore[arg-type]
+    assert share == pytest.approx(math.exp(-float(overlap_exponent(tuple(matrix), apart))), rel=1e-13)  # type: ignore[arg-type]
