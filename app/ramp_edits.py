@@ -13,13 +13,12 @@ from dataclasses import replace
 from app.answers.ramp_inputs import path_of
 from app.control_kinds import CONTROL_KINDS
 from app.plan import Plan
-from app.ramp_choices import Handing, MoveChoice, StageChoice
-from app.trap_choices import BeamChoice, TrapChoice
+from app.ramp_choices import MoveChoice, StageChoice
+from app.trap_choices import BeamChoice
 from app.units import (
     DEPTH,
     DURATION,
     EXPONENT,
-    FREQUENCY,
     Quantity,
     exact_text,
     factor,
@@ -91,8 +90,8 @@ def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
         depth = trap.depth.value if trap.depth is not None else math.nan
         if trap.depth is None:
             depth = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
-            start = quantity(depth, _depth_unit(depth), kind=DEPTH, digits=2)
-        end = quantity(USUAL_SHARE * depth, _depth_unit(USUAL_SHARE * depth), kind=DEPTH, digits=3)
+            start = quantity(depth, usual_depth_unit(depth), kind=DEPTH, digits=2)
+        end = quantity(USUAL_SHARE * depth, usual_depth_unit(USUAL_SHARE * depth), kind=DEPTH, digits=3)
         moves: tuple[MoveChoice, ...] = (MoveChoice(control=_DEPTH, start=start, end=end, shape=Shape.EXPONENTIAL),)
         return (StageChoice(duration=duration, moves=moves, label="lower the depth"),)
     coils = trap.coils
@@ -164,7 +163,7 @@ def with_known_depth(plan: Plan) -> Plan:
     depth = next((start for start in starts if start is not None), None)
     if depth is None:
         value = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
-        depth = quantity(value, _depth_unit(value), kind=DEPTH, digits=2)
+        depth = quantity(value, usual_depth_unit(value), kind=DEPTH, digits=2)
     return replace(plan, trap=replace(trap, depth=depth))
 
 
@@ -177,11 +176,11 @@ def scaled(value: Quantity, by: float, knob: Knob) -> Quantity:
 def control_quantity(control: Control, value: float) -> Quantity:
     """A value of a control as a quantity to three digits, in a unit that suits it."""
     kind = CONTROL_KINDS[control.knob]
-    unit = _depth_unit(value) if control.knob is Knob.DEPTH else _unit_for(value, control)
+    unit = usual_depth_unit(value) if control.knob is Knob.DEPTH else _unit_for(value, control)
     return quantity(value, unit, kind=kind)
 
 
-def _depth_unit(energy: float) -> str:
+def usual_depth_unit(energy: float) -> str:
     kelvin = energy / boltzmann
     return next((unit for unit, size in (("nK", 1e-6), ("µK", 1e-3)) if kelvin < size), "mK")
 
@@ -350,42 +349,6 @@ def with_shape(plan: Plan, place: int, number: int, shape: Shape) -> Plan:
         exponent = read_quantity(_USUAL_EXPONENT, EXPONENT) if shape is Shape.POWER_LAW else None
         move = MoveChoice(control=old.control, start=start, end=end, shape=shape, exponent=exponent)
     return with_move(plan, place, number, move)
-
-
-# --- transfers --------------------------------------------------------------------------------------------------------
-
-
-def with_transfer(plan: Plan, place: int, handing: Handing | None, trap: TrapChoice | None = None) -> Plan:
-    """The plan whose stage begins in another trap, slowly or suddenly; None: in the trap of the stage before.
-
-    trap : None: the one that it has, or else a harmonic one of the plan's frequencies and depth
-    """
-    stage = plan.ramp[place]
-    if handing is None:
-        return with_stage(plan, place, replace(stage, handing=None, trap=None))
-    return with_stage(plan, place, replace(stage, handing=handing, trap=trap or stage.trap or _next_trap(plan)))
-
-
-def _next_trap(plan: Plan) -> TrapChoice:
-    if plan.trap.frequencies is not None:
-        depth = plan.trap.depth
-        if depth is None:
-            value = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
-            depth = quantity(value, _depth_unit(value), kind=DEPTH, digits=2)
-        return TrapChoice(frequencies=plan.trap.frequencies, depth=depth)
-    hundred = read_quantity("100 Hz", FREQUENCY)
-    value = USUAL_TRUNCATION * boltzmann * plan.cloud.temperature.value
-    return TrapChoice(
-        frequencies=(hundred, hundred, hundred), depth=quantity(value, _depth_unit(value), kind=DEPTH, digits=2)
-    )
-
-
-def trap_text(trap: TrapChoice) -> str:
-    """A trap in a few words: its frequencies, or what makes it."""
-    if trap.frequencies is None:
-        return trap.makers
-    depth = f", {trap.depth.text} deep" if trap.depth is not None else ""
-    return " × ".join(f.text for f in trap.frequencies) + depth
 
 
 def checked(plan: Plan) -> Plan:

@@ -66,6 +66,7 @@ class RampPage(TimePage):
         panel.waypoints.save_asked.connect(lambda: exchange.save_waypoints(panel.waypoints.csv()))
         panel.waypoints.print_asked.connect(lambda: exchange.print_waypoints(panel.waypoints.html()))
         panel.measured.since_chosen.connect(self._follow_from)
+        panel.stages.trap_asked.connect(self.trap_asked)
         panel.stages.save_asked.connect(self.ask_save_table)
         panel.stages.read_asked.connect(exchange.ask_read_table)
         panel.stages.problem_changed.connect(self._problem_changed)

@@ -33,7 +33,7 @@ class Page(QWidget):
     on show is no longer the one to show; part_stopped() and part_allowed() when the user does not want a long one to
     be worked out, or wants it after all; told(str) for one sentence to the user; folder_used(Path) after a file was
     saved there; memory_changed() when `memory` gives something else; unit_chosen(name, unit) when the reader picks
-    another unit for a quantity.
+    another unit for a quantity; trap_asked(place) when the trap in which a stage of the ramp begins is to be edited.
     """
 
     plan_edited = Signal(object, str, str)
@@ -44,6 +44,7 @@ class Page(QWidget):
     folder_used = Signal(object)
     memory_changed = Signal()
     unit_chosen = Signal(str, str)
+    trap_asked = Signal(int)
 
     title = ""
     needs_cloud = True

@@ -7,9 +7,9 @@ from dataclasses import replace
 from functools import partial
 from typing import TYPE_CHECKING
 
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QToolButton, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QToolButton, QWidget
 
-from app import ramp_edits
+from app import ramp_edits, transfer_edits
 from app.control_kinds import CONTROL_KINDS
 from app.plan import Plan
 from app.ramp_choices import Handing, MoveChoice, StageChoice
@@ -199,30 +199,40 @@ class TransferLine(QWidget):
         self.handing.setCurrentIndex(list(Handing).index(stage.handing))
         self.handing.activated.connect(
             lambda index: editor.edit(
-                lambda plan: ramp_edits.with_transfer(plan, number, tuple(Handing)[index]),
+                lambda plan: transfer_edits.with_transfer(plan, number, tuple(Handing)[index]),
                 f"trap of stage {number + 1}",
             )
         )
         row.addWidget(self.handing)
+        self.more = QPushButton("Trap…")
+        self.more.setAccessibleName(f"Trap of stage {number + 1}: beams, coils and gravity")
+        self.more.setToolTip("Its beams, coils and gravity, or its frequencies, in a window of their own")
+        self.more.clicked.connect(lambda: editor.trap_asked.emit(number))
+        self.widgets: list[QWidget] = [self.handing, self.more]
         if stage.trap.frequencies is None:
-            made = QLabel(ramp_edits.trap_text(stage.trap))
+            made = QLabel(transfer_edits.trap_text(stage.trap))
             made.setObjectName("fact")
             row.addWidget(made, 1)
+            row.addWidget(self.more)
             return
+        fields = []
         for axis, letter in enumerate("xyz"):
-            row.addWidget(
+            fields.append(
                 editor.add_field(
                     FREQUENCY, f"Frequency {letter} of the trap of stage {number + 1}",
                     partial(_frequency, number, axis),
                     partial(_put_frequency, number, axis), f"{number} trap {letter}",
                 )
             )  # fmt: skip
-        row.addWidget(
+        fields.append(
             editor.add_field(
                 DEPTH, f"Depth of the trap of stage {number + 1}", lambda plan: _trap_depth(plan, number),
                 partial(_put_depth, number), f"{number} trap depth", optional=True,
             )
         )  # fmt: skip
+        for widget in (*fields, self.more):
+            row.addWidget(widget)
+        self.widgets = [self.handing, *fields, self.more]
 
 
 def _frequency(number: int, axis: int, plan: Plan) -> Quantity | None:

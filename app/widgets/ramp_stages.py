@@ -19,7 +19,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from app import ramp_edits
+from app import ramp_edits, transfer_edits
 from app.plan import Plan
 from app.ramp_choices import LONGEST_LABEL, Handing, StageChoice
 from app.units import DURATION
@@ -38,9 +38,11 @@ _CAUTION = (
 
 
 class StageEditor(PlanEditor):
-    """The table, and buttons that add to it. Besides the signals of `PlanEditor`: save_asked() and read_asked() when
-    the ramp is to be written to a file, or taken from one."""
+    """The table, and buttons that add to it. Besides the signals of `PlanEditor`: trap_asked(place) when the trap in
+    which a stage begins is to be edited; save_asked() and read_asked() when the ramp is to be written to a file, or
+    taken from one."""
 
+    trap_asked = Signal(int)
     save_asked = Signal()
     read_asked = Signal()
 
@@ -52,6 +54,7 @@ class StageEditor(PlanEditor):
         self.moves: list[list[MoveLine]] = []
         self.menus: list[QMenu] = []
         self.labels: list[QLineEdit] = []
+        self.transfers: dict[int, TransferLine] = {}
         self.caution = QLabel(_CAUTION)
         self.caution.setObjectName("fieldNote")
         self.caution.setWordWrap(True)
@@ -119,6 +122,7 @@ class StageEditor(PlanEditor):
             self._grid.setColumnStretch(column, stretch)
         self.forget_fields()
         self.durations, self.moves, self.menus, self.labels = [], [], [], []
+        self.transfers = {}
         row = 1
         for number, stage in enumerate(plan.ramp):
             row = self._add_stage_rows(row, number, stage, plan)
@@ -134,7 +138,8 @@ class StageEditor(PlanEditor):
 
     def _add_stage_rows(self, row: int, number: int, stage: StageChoice, plan: Plan) -> int:
         if stage.trap is not None:
-            self._grid.addWidget(TransferLine(self, number, stage), row, 1, 1, 6)
+            self.transfers[number] = TransferLine(self, number, stage)
+            self._grid.addWidget(self.transfers[number], row, 1, 1, 6)
             row += 1
         name = f"stage {number + 1}"
         count = QLabel(f"{number + 1}")
@@ -251,7 +256,7 @@ class StageEditor(PlanEditor):
             self.durations[number + by].setFocus()
 
     def _hand_over(self, number: int, handing: Handing | None) -> None:
-        self.edit(lambda plan: ramp_edits.with_transfer(plan, number, handing), f"trap of stage {number + 1}")
+        self.edit(lambda plan: transfer_edits.with_transfer(plan, number, handing), f"trap of stage {number + 1}")
 
     def _rename(self, number: int, text: str) -> None:
         if self._plan is not None and number < len(self._plan.ramp):
@@ -265,6 +270,8 @@ class StageEditor(PlanEditor):
         for number, duration in enumerate(self.durations):
             lines = self.moves[number]
             first = lines[0].widgets if lines else []
+            if number in self.transfers:
+                rows.append(self.transfers[number].widgets)
             rows.append([duration, *first, self.labels[number], self.menus[number].parentWidget()])  # type: ignore[list-item]
             rows += [list(line.widgets) for line in lines[1:]]
         return rows

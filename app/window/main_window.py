@@ -32,6 +32,7 @@ if TYPE_CHECKING:
     from app.window.files import Files
     from app.window.looks import Looks
     from app.window.recovery import Recovery
+    from app.window.stage_traps import StageTraps
     from app.window.undo import Document
     from app.window.why import Why
 
@@ -54,6 +55,7 @@ class MainWindow(QMainWindow):
     recovery: Recovery
     banner: Banner
     why: Why
+    stage_traps: StageTraps
     actions_by_id: dict[str, QAction]
 
     def __init__(self, settings: Settings, *, size: QSize | None = None) -> None:
@@ -95,6 +97,7 @@ class MainWindow(QMainWindow):
         from app.window.files import Files
         from app.window.looks import Looks
         from app.window.recovery import Recovery, install_excepthook
+        from app.window.stage_traps import StageTraps
         from app.window.undo import Document
         from app.window.why import Why
 
@@ -105,7 +108,8 @@ class MainWindow(QMainWindow):
         self.desk = Desk(self.looks.theme)
         self.banner = Banner()
         self.why = Why(self)
-        self.files = Files(self.document, self.settings, self, self.tell, lambda: self.desk.problems)
+        self.stage_traps = StageTraps(self.document, self.answers, self)
+        self.files = Files(self.document, self.settings, self, self.tell, self._problems)
         self.recovery = Recovery(self.document, self.settings.state_folder, self)
         self.actions_by_id = install_actions(self)
         self._recent = QMenu("Open &recent", self)
@@ -178,6 +182,7 @@ class MainWindow(QMainWindow):
         page.part_stopped.connect(self.answers.stop_part)
         page.part_allowed.connect(self._allow_part)
         self.document.loading.connect(page.discard_edits)
+        page.trap_asked.connect(self.stage_traps.ask)
         # what is remembered, and what is told
         page.memory_changed.connect(self._keep_memory)
         page.unit_chosen.connect(self._choose_unit)
@@ -185,6 +190,10 @@ class MainWindow(QMainWindow):
         page.folder_used.connect(self._use_folder)
 
     # ---------------------------------------------------------------- plan and answer
+
+    def _problems(self) -> tuple[str, ...]:
+        """What cannot be read, as sentences."""
+        return (*self.desk.problems, *self.stage_traps.problems)
 
     def _plan_changed(self, plan: Plan) -> None:
         self.desk.bench.set_plan(plan)
@@ -357,6 +366,7 @@ class MainWindow(QMainWindow):
         if self.furnished:
             self.furnished = False
             self.recovery.close()
+            self.stage_traps.close()
             self.answers.close()
             self._restore_hook()
 

@@ -9,7 +9,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from app import measured_edits, ramp_edits
+from app import measured_edits, ramp_edits, transfer_edits
 from app.answers.ramp_inputs import ramp_of
 from app.answers.trap import trap_answer
 from app.measured_edits import By, Where
@@ -18,6 +18,7 @@ from app.ramp_choices import Handing, MoveChoice, StageChoice
 from app.ramp_drags import with_end_dragged, with_place_dragged, with_start_dragged
 from app.ramp_limits import limits_for, with_bound, with_longest_time
 from app.trap_choices import BeamChoice, CoilsChoice, Gravity, TrapChoice
+from app.trap_edits import with_beam, without_beam
 from app.units import (
     ATOM_NUMBER,
     BEAM_POWER,
@@ -214,13 +215,13 @@ def test_a_drag_of_a_stage_that_moves_nothing_changes_its_duration_only(plan):
 
 
 def test_a_transfer_goes_into_a_trap_like_the_plan_s_until_it_is_edited(plan):
-    changed = ramp_edits.with_transfer(plan, 1, Handing.SUDDEN)
+    changed = transfer_edits.with_transfer(plan, 1, Handing.SUDDEN)
     trap = changed.ramp[1].trap
     assert trap.frequencies == plan.trap.frequencies
     assert trap.depth.value == pytest.approx(30e-6 * boltzmann)
-    assert "deep" in ramp_edits.trap_text(trap)
-    assert ramp_edits.trap_text(beams()) == "beams A and B"
-    back = ramp_edits.with_transfer(changed, 1, None)
+    assert "deep" in transfer_edits.trap_text(trap)
+    assert transfer_edits.trap_text(beams()) == "beams A and B"
+    back = transfer_edits.with_transfer(changed, 1, None)
     assert back.ramp == plan.ramp
 
 
@@ -275,3 +276,36 @@ def test_measured_clouds_are_added_placed_and_known_otherwise(plan):
     with pytest.raises(PlanError, match='the measured cloud "cloud 1"'):
         measured_edits.checked(measured_edits.with_cloud(two, 0, late))
     assert len(measured_edits.without_cloud(two, 0).measured) == 1
+
+
+def test_a_transfer_between_beams_starts_from_the_trap_as_it_then_stands():
+    plan = replace(DEFAULT_PLAN, trap=beams())
+    plan = ramp_edits.with_new_stage(plan, 0)
+    plan = ramp_edits.with_new_stage(plan, 1, hold=True)
+    handed = transfer_edits.with_transfer(plan, 1, Handing.SUDDEN)
+    trap = handed.ramp[1].trap
+    standing = ramp_edits.standing_at(plan, 1)
+    for beam in trap.beams:
+        assert beam.power.value == pytest.approx(standing[Control(Knob.POWER, beam.name)], rel=1e-2)
+        assert beam.waists == plan.trap.beam(beam.name).waists
+    assert standing[Control(Knob.POWER, "A")] < 0.9 * plan.trap.beam("A").power.value
+
+
+def test_the_trap_of_a_stage_is_edited_as_the_trap_of_a_plan_of_its_own():
+    plan = ramp_edits.with_new_stage(replace(DEFAULT_PLAN, trap=beams()), 0, hold=True)
+    plan = ramp_edits.with_new_stage(plan, 1, hold=True)
+    plan = transfer_edits.with_transfer(plan, 1, Handing.SLOW)
+    plan = ramp_edits.with_new_move(plan, 1, Control(Knob.POWER, "A"))
+    piece = transfer_edits.piece_of(plan, 1)
+    assert piece.trap == plan.ramp[1].trap
+    assert transfer_edits.with_piece(plan, 1, piece) == plan
+    renamed = with_beam(piece, "A", replace(piece.trap.beam("A"), name="dimple"))
+    changed = transfer_edits.with_piece(plan, 1, renamed)
+    assert changed.ramp[1].handing is Handing.SLOW
+    assert changed.ramp[1].trap.beam("dimple")
+    assert changed.ramp[1].moves[0].control.beam == "dimple"
+    assert changed.trap == plan.trap
+    with pytest.raises(PlanError, match="the ramp moves the power of beam A"):
+        without_beam(piece, "A")
+    with pytest.raises(PlanError, match=r"^stage 1 of the ramp does not begin in another trap$"):
+        transfer_edits.piece_of(plan, 0)
