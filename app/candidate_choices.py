@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import Enum
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Protocol
 
 from app.plan_field import PlanError
 from app.units import Quantity
@@ -37,9 +37,54 @@ class Start(Enum):
     PHASE_SPACE_DENSITY = "same phase-space density"
 
 
+@dataclass(frozen=True)
+class FieldWish:
+    """A magnetic field that is to be found between two: where the scattering length is the wanted one, or without one
+    where elastic collisions outnumber losses most, three-body loss taken as fast as theory allows."""
+
+    lowest: Quantity
+    highest: Quantity
+    length: Quantity | None = None
+
+
+class Wishing(Protocol):
+    """What may ask for a field."""
+
+    @property
+    def lowest_field(self) -> Quantity | None: ...
+    @property
+    def highest_field(self) -> Quantity | None: ...
+    @property
+    def wanted_length(self) -> Quantity | None: ...
+
+
+def wish_of(choice: Wishing, section: str) -> FieldWish | None:
+    """The field that is asked for; None where none is. Raises PlanError for half a wish."""
+    low, high = choice.lowest_field, choice.highest_field
+    if low is None or high is None:
+        if low is not None or high is not None:
+            missing = "lowest_field" if low is None else "highest_field"
+            raise PlanError("a field is sought between two: give both ends of the range", path=f"{section}.{missing}")
+        if choice.wanted_length is not None:
+            raise PlanError(
+                "a wanted scattering length needs the fields between which it is sought",
+                path=f"{section}.wanted_length",
+            )
+        return None
+    if not low.value < high.value:
+        raise PlanError(
+            f"the lowest field must be below the highest, got {low.text} and {high.text}",
+            path=f"{section}.lowest_field",
+        )
+    return FieldWish(low, high, choice.wanted_length)
+
+
 @dataclass(frozen=True, kw_only=True)
 class CandidateChoice:
-    """One species and state to be compared; what is None is as the plan's cloud or the data have it."""
+    """One species and state to be compared; what is None is as the plan's cloud or the data have it.
+
+    lowest_field, highest_field, wanted_length : a field that is sought, see `FieldWish`
+    """
 
     key: str
     state: str | None = None
@@ -47,11 +92,20 @@ class CandidateChoice:
     temperature: Quantity | None = None
     field: Quantity | None = None
     scattering_length: Quantity | None = None
+    lowest_field: Quantity | None = None
+    highest_field: Quantity | None = None
+    wanted_length: Quantity | None = None
 
     def __post_init__(self) -> None:
         if self.scattering_length is not None and self.field is not None:
             raise PlanError(
                 "give either a scattering length or a magnetic field, not both", path="candidate.scattering_length"
+            )
+        wish = wish_of(self, "candidate")
+        if wish is not None and (self.scattering_length is not None or self.field is not None):
+            raise PlanError(
+                "a field is sought between the lowest and the highest one: give no magnetic field or scattering length",
+                path="candidate.lowest_field",
             )
 
 
@@ -63,12 +117,20 @@ class CandidatesChoice:
     keys : species, each in all of its states; with no keys and no candidates, all that there are
     candidates : single states with conditions of their own
     start : what a same start is
+    lowest_field, highest_field, wanted_length : a field that is sought for each state that a field tunes, see
+        `FieldWish`; a candidate with a field, a length or a wish of its own keeps that
     """
 
     basis: Basis | None = None
     start: Start = Start.ATOMS_AND_TEMPERATURE
     keys: tuple[str, ...] = ()
     candidates: tuple[CandidateChoice, ...] = ()
+    lowest_field: Quantity | None = None
+    highest_field: Quantity | None = None
+    wanted_length: Quantity | None = None
+
+    def __post_init__(self) -> None:
+        wish_of(self, "candidates")
 
 
 def basis_of(plan: Plan) -> Basis:

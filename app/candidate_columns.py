@@ -18,6 +18,7 @@ _CHIN = "Chin, Grimm, Julienne, Tiesinga, Rev. Mod. Phys. 82, 1225 (2010)"
 _GRIMM = "Grimm, Weidemueller, Ovchinnikov, Adv. At. Mol. Opt. Phys. 42, 95 (2000)"
 _LUITEN = "Luiten, Reynolds, Walraven, Phys. Rev. A 53, 381 (1996)"
 _BAGNATO = "Bagnato, Pritchard, Kleppner, Phys. Rev. A 35, 4354 (1987)"
+_WEBER = "Weber et al., Phys. Rev. Lett. 91, 123201 (2003)"
 _BUTTS = "Butts, Rokhsar, Phys. Rev. A 55, 4346 (1997)"
 
 
@@ -28,6 +29,8 @@ class Part(Enum):
     THRESHOLD = auto()
     SPECIES = auto()
     LENGTH = auto()
+    FIELD = auto()
+    CEILING = auto()
     TUNING = auto()
     TRAP = auto()
     EVAPORATION = auto()
@@ -150,6 +153,34 @@ _OWN = (
         formula="of the state with itself, of a mixture between its spin states; tuned where a field is given",
         source="as the data of the species say",
         validity="s-waves",
+    ),
+    _own(
+        Part.FIELD,
+        name="magnetic_field",
+        label="magnetic field",
+        symbol="B",
+        unit="T",
+        units=("G", "mT"),
+        group=Group.COLLISIONS,
+        formula="as given, or as sought in the range that the plan names",
+        source=_CHIN,
+        validity="homogeneous field",
+    ),
+    _own(
+        Part.CEILING,
+        Datum.LENGTH,
+        Datum.TWO_BODY,
+        Datum.THREE_BODY,
+        Datum.TRAP,
+        name="good_to_bad_at_ceiling",
+        label="good to bad at the three-body ceiling",
+        symbol="good/bad at K₃ = 201 ħa⁴/m",
+        unit="1",
+        units=("1",),
+        group=Group.LOSSES,
+        formula="elastic collisions over losses, with K₃ = 201 ħa⁴/m, or the known one where that is larger",
+        source=_WEBER,
+        validity="bosons with a > 0, longer than the range of the forces",
     ),
     _own(
         Part.TUNING,
@@ -286,9 +317,11 @@ USUAL_COLUMNS = (
     "temperature_to_threshold",
     "atoms_to_threshold",
     "scattering_length",
+    "magnetic_field",
     "elastic_collision_rate",
     "rethermalisation_time",
     "good_to_bad_ratio",
+    "good_to_bad_at_ceiling",
     "background_lifetime",
     "two_body_lifetime",
     "three_body_lifetime",
@@ -312,6 +345,17 @@ BRIEF_COLUMNS = (
     "good_to_bad_ratio",
 )
 """What fits a narrow table."""
+
+
+FIELD_COLUMNS = (
+    "threshold_temperature",
+    "magnetic_field",
+    "scattering_length",
+    "elastic_collision_rate",
+    "good_to_bad_ratio",
+    "good_to_bad_at_ceiling",
+)
+"""The same where fields were sought."""
 
 
 def columns_in(group: Group) -> tuple[Column, ...]:

@@ -3,16 +3,47 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from types import MappingProxyType
 
 from app.candidate_choices import Basis, Start
 from app.choices import PLAN_FIELDS
-from app.kinds import DEPTH, FREQUENCY, SCATTERING_LENGTH
+from app.kinds import DEPTH, FREQUENCY, MAGNETIC_FIELD, SCATTERING_LENGTH
 from app.plan_field import Entry, PlanField
 from app.ramp_fields import by_name, within
 
 CANDIDATES, CANDIDATE = "candidates", "candidate"
 PASSENGER, PASSENGER_SPECIES, PASSENGER_CLOUD = "passenger", "passenger.species", "passenger.cloud"
 """Sections of the file that hold them."""
+
+
+def _sought(section: str, whose: str) -> tuple[PlanField, ...]:
+    """The keys of a field that is to be found."""
+    excludes = (f"{section}.field", f"{section}.scattering_length") if section == CANDIDATE else ()
+    ends = (("lowest_field", "Field sought from"), ("highest_field", "Field sought to"))
+    return (
+        *(
+            PlanField(
+                path=f"{section}.{name}",
+                label=label,
+                entry=Entry.QUANTITY,
+                kind=MAGNETIC_FIELD,
+                tip=f"End of the range in which the best field {whose} is sought: where most elastic collisions come "
+                "on one loss, three-body loss taken as fast as theory allows, or where the wanted length is.",
+                excludes=excludes,
+            )
+            for name, label in ends
+        ),
+        PlanField(
+            path=f"{section}.wanted_length",
+            label="Wanted scattering length",
+            entry=Entry.QUANTITY,
+            kind=SCATTERING_LENGTH,
+            tip="Scattering length for which the field is sought; without it the field of the best ratio of good to "
+            "bad collisions.",
+            excludes=excludes,
+        ),
+    )
+
 
 CANDIDATES_FIELDS = by_name(
     (
@@ -37,6 +68,7 @@ CANDIDATES_FIELDS = by_name(
             entry=Entry.KEYS,
             tip="Species that are compared, each in all of its states; none named: all that there are.",
         ),
+        *_sought(CANDIDATES, "of every state that a field tunes"),
     )
 )
 
@@ -49,7 +81,12 @@ _OWN = (
     "species.scattering_length",
 )
 
-CANDIDATE_FIELDS = within(CANDIDATE, (replace(PLAN_FIELDS[path], required=path == "species.key") for path in _OWN))
+CANDIDATE_FIELDS = MappingProxyType(
+    {
+        **within(CANDIDATE, (replace(PLAN_FIELDS[path], required=path == "species.key") for path in _OWN)),
+        **by_name(_sought(CANDIDATE, "of this state")),
+    }
+)
 
 PASSENGER_FIELDS = by_name(
     (

@@ -37,7 +37,10 @@ def read_candidates(section: object, single: object, where: Where) -> Candidates
     values = read_section(section, CANDIDATES_FIELDS, lambda field: where(field.path))
     found = sections_in({CANDIDATE: [] if single is None else single}, CANDIDATE, CANDIDATE, where)
     candidates = [_candidate(part, f" of candidate {number}", where) for number, part in enumerate(found, start=1)]
-    return CandidatesChoice(**values, candidates=tuple(candidates))
+    try:
+        return CandidatesChoice(**values, candidates=tuple(candidates))
+    except PlanError as error:
+        raise PlanError(f"{where(error.path)}: {error}") from None
 
 
 def _candidate(section: Mapping[str, Any], of: str, where: Where) -> CandidateChoice:

@@ -63,9 +63,7 @@ def with_conditions(plan: Plan, choice: CandidateChoice) -> Plan:
 
 
 def _has_own(choice: CandidateChoice) -> bool:
-    return any(
-        number is not None for number in (choice.atoms, choice.temperature, choice.field, choice.scattering_length)
-    )  # fmt: skip
+    return choice != CandidateChoice(key=choice.key, state=choice.state)
 
 
 def with_species_of(plan: Plan, row: CandidateRow) -> Plan:

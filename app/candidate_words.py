@@ -6,6 +6,7 @@ import math
 from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING
 
+from app.answers.candidate_field import search_text
 from app.answers.candidate_row import CandidateRow, Cell, Failure
 from app.candidate_choices import Basis, Start
 from app.candidate_columns import COLUMNS, Datum, Part
@@ -192,6 +193,8 @@ def row_tip_text(row: CandidateRow) -> str:
     ):
         if quantity is not None:
             lines.append(_("its own {what}: {text}").format(what=word, text=quantity.text))
+    if row.search is not None:
+        lines.append(search_text(row.search))
     return "\n".join(lines)
 
 

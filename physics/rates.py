@@ -154,6 +154,25 @@ class Rates:
         return self.equilibrium.elastic_collision_rate / self.total_loss_rate
 
     @quantity
+    def good_to_bad_at_ceiling(self) -> Floats:
+        """That ratio with K3 = 201 hbar a^4/m, the most that theory allows near a resonance, or the known one where
+        that is larger. [1] [2]
+
+        Between this and `good_to_bad_ratio` without a three-body constant lies the true one, as far as the other losses
+        are known. NaN of fermions, of which the loss grows otherwise, and for a <= 0, where Efimov resonances raise it
+        further. Lengths not beyond the range of the forces may be lost faster still.
+        """
+        cloud = self.equilibrium.cloud
+        if not self.equilibrium.bosons:
+            return _unknown()
+        ceiling = scaling_ceiling(cloud.mass, cloud.length) * self.triple_density
+        triples = np.fmax(ceiling, self.three_body_loss_rate)
+        losses = _sum_of_known(
+            self.background_loss_rate, self.two_body_loss_rate, self.spin_flip_loss_rate, triples
+        )  # fmt: skip
+        return np.where(cloud.length > 0.0, self.equilibrium.elastic_collision_rate / losses, np.nan)
+
+    @quantity
     def loss_per_rethermalisation(self) -> Floats:
         """Share of the atoms lost in one rethermalisation time. [1]"""
         return self.rethermalisation_time * self.total_loss_rate

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import TYPE_CHECKING
 
+from app.answers.candidate_field import search_text
 from app.candidate_columns import Column, Datum, Part
 from app.language import translate as _
 from app.quantity_row import Need
@@ -38,6 +39,13 @@ def _clauses(row: CandidateRow, column: Column) -> Iterator[str]:
     if column.name in _OF_THRESHOLD and not cloud.bosons and row.plan.target.reduced_temperature is None:
         limit = f"{cloud.threshold:.3g}"
         yield _("T/TF = {limit} stands for the threshold: the plan's target names none").format(limit=limit)
+    if column.part is Part.FIELD and row.search is not None:
+        yield search_text(row.search)
+    if column.part is Part.CEILING:
+        left_out = _losses_left_out(cloud, three_body=False)
+        yield _("three-body loss taken at 201 ħa⁴/m, the most that theory allows near a resonance")
+        if left_out:
+            yield _("without {losses}, of which nothing is known").format(losses=left_out)
     if column.part is Part.EVAPORATION and row.evaporation is not None and row.evaporation.assumed:
         yield row.evaporation.assumed
     if column.name in _LESS_WITH_LOSSES | _MORE_WITH_LOSSES or column.part is Part.EVAPORATION:
@@ -49,16 +57,16 @@ def _clauses(row: CandidateRow, column: Column) -> Iterator[str]:
             elif column.name in _MORE_WITH_LOSSES:
                 said = _("without {losses}, of which nothing is known: a lower bound")
             yield said.format(losses=left_out)
-    if Datum.THREE_BODY in column.data:
+    if Datum.THREE_BODY in column.data and column.part is not Part.CEILING:
         yield from _three_body_elsewhere(cloud)
 
 
-def _losses_left_out(cloud: CloudAnswer) -> str:
+def _losses_left_out(cloud: CloudAnswer, *, three_body: bool = True) -> str:
     losses = cloud.losses.losses
     known = (
         (_("background gas"), losses.background_lifetime),
         (_("two-body loss"), losses.two_body),
-        (_("three-body loss"), losses.three_body),
+        (_("three-body loss"), losses.three_body if three_body else 0.0),
     )
     return _(" and ").join(word for word, constant in known if constant is None)
 

@@ -24,6 +24,7 @@ from physics.species_tables import Resonance
 
 if TYPE_CHECKING:
     from app.answers.candidate_evaporation import EvaporationResult
+    from app.answers.candidate_field import FieldSearch
     from app.answers.cloud import CloudAnswer
     from app.plan import CandidateChoice, Plan
     from physics.species import State
@@ -70,6 +71,7 @@ class CandidateRow:
     cloud : its answer; None where there is none
     failure, reason : where it fails and why, as a clause; None and empty where it does not
     in_light : whether its trap follows from data of the species
+    search : the field that was sought for it; None where none was
     evaporation : the best evaporation; None before it was worked out
     """
 
@@ -81,6 +83,7 @@ class CandidateRow:
     failure: Failure | None
     reason: str
     in_light: bool
+    search: FieldSearch | None = None
     evaporation: EvaporationResult | None = None
 
     @property
@@ -167,6 +170,8 @@ class CandidateRow:
                 return self._tuning(name)
             case Part.TRAP:
                 return self.trap.values[name], self.trap.reasons[name]
+            case Part.FIELD:
+                return self._field()
         if cloud is None:
             return math.nan, self.reason
         match column.part:
@@ -175,6 +180,8 @@ class CandidateRow:
                 return (found.value, "") if found.value is not None else (math.nan, length_reason(cloud))
             case Part.THRESHOLD:
                 return self._threshold(cloud)
+            case Part.CEILING:
+                return self._at_ceiling(cloud)
             case Part.EVAPORATION:
                 return self._evaporation(name)
         if name == "temperature_to_threshold" and not self.cell("threshold_temperature").known:
@@ -204,6 +211,21 @@ class CandidateRow:
         if found is None:
             return math.nan, _("the data have no magnetic resonance of this state")
         return (found.position.value if name == "resonance_field" else abs(found.width.value)), ""
+
+    def _field(self) -> tuple[float, str]:
+        field, search = self.plan.species.field, self.search
+        if field is None:
+            return math.nan, search.reason if search is not None and search.reason else _("no field is given")
+        return field.value, ""
+
+    def _at_ceiling(self, cloud: CloudAnswer) -> tuple[float, str]:
+        if cloud.scattering.value is None:
+            return math.nan, length_reason(cloud)
+        if not cloud.bosons:
+            return math.nan, _("the law of bosons does not hold for fermions")
+        if not cloud.scattering.value > 0.0:
+            return math.nan, _("no such bound where the scattering length is not positive")
+        return float(cloud.solution.rates.good_to_bad_at_ceiling), ""
 
     def _evaporation(self, name: str) -> tuple[float, str]:
         if self.evaporation is None:

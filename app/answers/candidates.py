@@ -12,6 +12,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
+from app.answers.candidate_field import FieldSearch, field_search
 from app.answers.candidate_row import CandidateRow, Failure, length_reason
 from app.answers.candidate_thresholds import threshold_curve
 from app.answers.candidate_trap import trap_facts
@@ -20,7 +21,7 @@ from app.answers.inputs import cloud_of, values_of
 from app.answers.part import part
 from app.answers.trap import trap_answer
 from app.answers.trap_inputs import surveyed_trap
-from app.candidate_choices import Basis, CandidateChoice, Start, basis_of
+from app.candidate_choices import Basis, CandidateChoice, FieldWish, Start, basis_of, wish_of
 from app.candidate_columns import USUAL_COLUMNS
 from app.choices import SpeciesChoice
 from app.language import translate as _
@@ -29,7 +30,7 @@ from app.trap_choices import TrapChoice
 from app.units import Quantity, best_unit, format_quantity
 from app.words import number
 from physics.models import Model
-from physics.scattering import LengthInUse, WhyUnknown
+from physics.scattering import LengthInUse, WhyUnknown, tuning
 from physics.species import load_species, species_keys
 
 if TYPE_CHECKING:
@@ -108,7 +109,8 @@ def candidates_answer(
 
     last = time.monotonic()
     for candidate in candidates:
-        rows.append(_row(_plan_of(plan, candidate, frame), candidate, frame.in_light))
+        put, search = _at_best_field(_plan_of(plan, candidate, frame), candidate)
+        rows.append(_row(put, candidate, frame.in_light, search))
         _work_ahead(rows[-1])
         if not tick(len(rows) / len(candidates)):
             return None
@@ -170,6 +172,28 @@ def _exactly(value: float, unit: str, *, si_unit: str | None = None) -> Quantity
     return Quantity(format_quantity(value, unit, digits=4, si_unit=si_unit), value)
 
 
+def _at_best_field(plan: Plan, candidate: CandidateChoice) -> tuple[Plan, FieldSearch | None]:
+    """The plan of a candidate in the field that is sought for it, and the search; as it is where none is."""
+    wish = _wish(plan, candidate)
+    if wish is None or not trap_facts(plan).held:
+        return plan, None
+    without = replace(plan, species=replace(plan.species, field=None, scattering_length=None))
+    try:
+        search = field_search(without, wish)
+    except (ValueError, ArithmeticError) as error:
+        search = FieldSearch(wish=wish, reason=str(error))
+    return replace(plan, species=replace(without.species, field=search.quantity)), search
+
+
+def _wish(plan: Plan, candidate: CandidateChoice) -> FieldWish | None:
+    """What field a candidate asks for: its own wish, else that of all where a field tunes it and it names none."""
+    own = wish_of(candidate, "candidate")
+    if own is not None or candidate.field is not None or candidate.scattering_length is not None:
+        return own
+    state = load_species(plan.species.key).state(plan.species.state)
+    return wish_of(plan.candidates, "candidates") if tuning(state) else None
+
+
 def _plan_of(plan: Plan, candidate: CandidateChoice, frame: _Frame) -> Plan:
     """The plan with the candidate in the place of its own species.
 
@@ -223,7 +247,7 @@ def _temperature_at(plan: Plan, density: float, classical: bool) -> float:
 
 
 @part("species", "trap", "cloud", "losses", "target", "limits", keep=KEPT)
-def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow:
+def _row(plan: Plan, candidate: CandidateChoice, in_light: bool, search: FieldSearch | None) -> CandidateRow:
     """The candidate that was put into the plan, judged."""
     state = load_species(plan.species.key).state(plan.species.state)
     trap = trap_facts(plan)
@@ -238,6 +262,8 @@ def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow
             failure, reason = Failure.NO_ANSWER, trap.no_frequencies or str(error)
         else:
             failure, reason = _failure(cloud)
+            if failure is Failure.NO_DATA and search is not None and search.reason:
+                reason = search.reason
     trap_answer(plan).survey.forget()
     return CandidateRow(
         candidate=candidate,
@@ -248,6 +274,7 @@ def _row(plan: Plan, candidate: CandidateChoice, in_light: bool) -> CandidateRow
         failure=failure,
         reason=reason,
         in_light=in_light,
+        search=search,
     )
 
 

@@ -12,10 +12,12 @@ from app.commands.plan_arguments import add_plan_arguments, json_answer, plan_of
 from app.commands.trouble import fail
 
 if TYPE_CHECKING:
+    from app.answers.candidate_field import FieldSearch
     from app.answers.candidate_row import CandidateRow
     from app.answers.candidates import CandidatesAnswer
     from app.candidate_order import Score, Weight
     from app.plan import Plan
+    from app.units import Quantity
 
 _OWN = ("species.key", "species.state", "species.spin_components", "species.scattering_length")
 """Plan keys that say nothing where many species are compared."""
@@ -43,6 +45,18 @@ def add_parser(verbs: argparse._SubParsersAction[argparse.ArgumentParser]) -> No
         dest="keys",
         metavar="KEYS",
         help="species, such as 87Rb,41K, each in all of its states; without it those of the plan, or all",
+    )
+    parser.add_argument(
+        "--field-range",
+        metavar="LOW,HIGH",
+        help='judge each state that a field tunes at its best field of this range, such as "0 G, 600 G", instead of '
+        "at --field",
+    )
+    parser.add_argument(
+        "--wanted-length",
+        metavar="LENGTH",
+        help="look there for the field that makes this scattering length, instead of the best ratio of good to bad "
+        "collisions",
     )
     parser.add_argument(
         "--columns", metavar="NAMES", help="columns by the NAME of their quantity, such as mean_density,sag"
@@ -79,11 +93,11 @@ def run(args: argparse.Namespace) -> int:
 
     try:
         plan = _plan(args)
-        names = _columns(args)
         sieve = read_sieve(args.only)
         weights = tuple(read_weight(text) for text in args.weight)
         answer = candidates_answer(plan)
         assert answer is not None  # nothing stops it
+        names = _columns(args, answer)
         if args.evaporate:
             answer = _evaporated(answer)
         rows, scores = _arranged(args, [row for row in answer.rows if sieve.passes(row)], weights)
@@ -118,7 +132,27 @@ def _plan(args: argparse.Namespace) -> Plan:
         choice = replace(choice, basis=_member(Basis, args.basis, "--basis"))
     if args.start is not None:
         choice = replace(choice, start=_member(Start, args.start, "--start"))
+    if args.field_range is not None:
+        ends = args.field_range.split(",")
+        if len(ends) != 2:
+            raise ValueError(f'--field-range must be two fields such as "0 G, 600 G", got "{args.field_range}"')
+        low, high = (_read(end, "lowest_field", "--field-range") for end in ends)
+        choice = replace(choice, lowest_field=low, highest_field=high, wanted_length=None)
+    if args.wanted_length is not None:
+        choice = replace(choice, wanted_length=_read(args.wanted_length, "wanted_length", "--wanted-length"))
     return replace(plan, candidates=choice)
+
+
+def _read(text: str, name: str, flag: str) -> Quantity:
+    from app.candidate_fields import CANDIDATES_FIELDS
+    from app.units import read_quantity
+
+    kind = CANDIDATES_FIELDS[name].kind
+    assert kind is not None
+    try:
+        return read_quantity(text.strip(), kind)
+    except ValueError as error:
+        raise ValueError(f"{flag}: {error}") from None
 
 
 def _member(kind: type[Any], text: str, flag: str) -> Any:
@@ -130,14 +164,16 @@ def _member(kind: type[Any], text: str, flag: str) -> Any:
     return found
 
 
-def _columns(args: argparse.Namespace) -> tuple[str, ...]:
-    from app.candidate_columns import BRIEF_COLUMNS, USUAL_COLUMNS, column
+def _columns(args: argparse.Namespace, answer: CandidatesAnswer) -> tuple[str, ...]:
+    from app.candidate_columns import BRIEF_COLUMNS, FIELD_COLUMNS, USUAL_COLUMNS, column
 
     if args.columns:
         return tuple(dict.fromkeys(column(name).name for name in args.columns.split(",")))
     if args.json or args.output is not None:
         return tuple(name for name in USUAL_COLUMNS if args.evaporate or name not in _SEPARATELY)
-    return (*BRIEF_COLUMNS[:3], *_SEPARATELY) if args.evaporate else BRIEF_COLUMNS
+    if args.evaporate:
+        return (*BRIEF_COLUMNS[:3], *_SEPARATELY)
+    return FIELD_COLUMNS if any(row.search is not None for row in answer.rows) else BRIEF_COLUMNS
 
 
 def _arranged(
@@ -194,6 +230,7 @@ def compare_body(
             "model": None if row.cloud is None else row.cloud.model.value,
             "fails": None if row.failure is None else row.failure.value,
             "model_reason": model_reason(row) or None,
+            "field_search": None if row.search is None else _search(row.search),
             "quantities": {name: _quantity(row, name) for name in names},
             "caveats": [] if row.cloud is None else caveats_body(row.cloud),
         }
@@ -205,6 +242,23 @@ def compare_body(
         found.append(entry)
     same = {"start": answer.start.value} if answer.basis is Basis.SAME_START else {}
     return {"basis": answer.basis.value, **same, "rows": found}
+
+
+def _search(search: FieldSearch) -> dict[str, Any]:
+    from app.answers.candidate_field import search_text
+
+    wish, found = search.wish, search.found
+    return {
+        "lowest_field": wish.lowest.value,
+        "highest_field": wish.highest.value,
+        "wanted_length": None if wish.length is None else wish.length.value,
+        "field": None if found is None else found.field,
+        "scattering_length": None if found is None else found.length,
+        "slope": None if found is None else found.slope,
+        "nearly_as_good": None if found is None else [found.low, found.high],
+        "reason": search.reason or None,
+        "text": search_text(search),
+    }
 
 
 def _quantity(row: CandidateRow, name: str) -> dict[str, Any]:
@@ -236,6 +290,8 @@ _SHORT_HEADINGS = {
     "threshold_temperature": "threshold T",
     "peak_phase_space_density": "peak nλ³",
     "scattering_length": "a",
+    "magnetic_field": "B",
+    "good_to_bad_at_ceiling": "at K₃ ceiling",
     "elastic_collision_rate": "elastic",
     "good_to_bad_ratio": "good/bad",
     "evaporated_atoms": "left",
@@ -280,6 +336,7 @@ def compare_text(
         lines += [text_table(header, table, right=range(2, len(header))), "", legend()]
     for title, groups in (
         ("Where they fail", _failures(rows)),
+        ("Fields that were sought", _searches(rows)),
         ("Where evaporation falls short", _evaporations(rows)),
         ("Another model than the usual", _models(rows)),
         ("Take care: `coldward state` says more of each", _warnings(rows)),
@@ -317,6 +374,28 @@ def _models(rows: list[CandidateRow]) -> list[str]:
         if reason and row.cloud is not None:
             groups.setdefault(f"{row.cloud.model.label}, as {reason}", []).append(row)
     return _wrapped(groups.items())
+
+
+def _searches(rows: list[CandidateRow]) -> list[str]:
+    import textwrap
+
+    from app.answers.candidate_field import found_text, wish_text
+    from app.candidate_words import names_of
+
+    wishes: dict[str, dict[str, list[CandidateRow]]] = {}
+    for row in rows:
+        if row.search is not None:
+            found = wishes.setdefault(wish_text(row.search.wish), {})
+            found.setdefault(found_text(row.search), []).append(row)
+    lines: list[str] = []
+    for wish, found in wishes.items():
+        lines += textwrap.wrap(wish, 98, initial_indent="  ", subsequent_indent="    ")
+        for said, members in found.items():
+            text = f"{names_of(members)}: {said}"
+            lines += textwrap.wrap(
+                text, 98, initial_indent="      ", subsequent_indent="        ", break_on_hyphens=False
+            )
+    return lines
 
 
 def _warnings(rows: list[CandidateRow]) -> list[str]:
