@@ -12,6 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.checks import Floats
+from physics.traps.floors import floor_along
 from physics.traps.potential import Potential
 from physics.traps.stationary import StationaryPoint
 
@@ -19,7 +20,6 @@ CROSSING_RADIUS = float(np.sqrt(0.5 * np.log(100.0)))
 """Scaled distance from a beam's axis at which its intensity is a hundredth of that on the axis."""
 
 _PLACES = 32
-_STEPS = 25
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -88,20 +88,14 @@ def _arm(
     along = length * (np.arange(_PLACES) + 1.0) / _PLACES
     offset = start[:2] @ beam.frame[:2]
     r = np.asarray(beam.focus) + np.outer(start[2] + sign * along, beam.frame[2]) + offset
-    across = beam.frame[:2]
-    width = float(np.min(beam.waists))
-    for _ in range(_STEPS):
-        energy, gradient, hessian = potential.hessian(r)
-        values, vectors = np.linalg.eigh(across @ hessian @ across.T)
-        slope = np.einsum("nki,nk->ni", vectors, gradient @ across.T)
-        step = -slope / np.maximum(np.abs(values), np.finfo(float).tiny)
-        step *= np.minimum(1.0, 0.2 * width / np.maximum(np.linalg.norm(step, axis=-1, keepdims=True), 1e-300))
-        r = r + np.einsum("nij,nj->ni", vectors, step) @ across
-        if np.max(np.abs(step)) < 1e-9 * width:
-            break
-    energy = potential.energy(r)
+    floor = floor_along(potential, index, r)
     # An arm without a floor lets its atoms fall: nothing is held there.
-    if np.any(values <= 0.0) or np.any(beam.scaled_radius(r) > CROSSING_RADIUS):
+    if not np.all(floor.held) or np.any(beam.scaled_radius(floor.positions) > CROSSING_RADIUS):
         return None
-    highest = int(np.argmax(energy))
-    return Arm(beam=beam.name, direction=axis, energy=float(energy[highest]) - minimum.energy, position=r[highest])
+    highest = int(np.argmax(floor.energies))
+    return Arm(
+        beam=beam.name,
+        direction=axis,
+        energy=float(floor.energies[highest]) - minimum.energy,
+        position=floor.positions[highest],
+    )

@@ -1,7 +1,7 @@
 """Volume of the connected region below an energy, cell by cell of the charts, where rays no longer serve.
 
-Each cell that the region reaches is cut in eight, unless there are very many, and the energy expanded about the middle
-of each part. Places that lie in cells of several charts are shared among them in proportion to how small their cells
+Each cell that the region reaches is cut in parts, smaller ones where there are few cells, and the energy expanded about
+the middle of each part. Places that lie in cells of several charts are shared among them in proportion to how small their cells
 are there, as importance sampling from several distributions does it [1]; so overlapping charts need no seam.
 
 Reference
@@ -28,10 +28,8 @@ that the cells show too low. Before going further down, cells of half the size a
 _BEFORE = 0.97
 """Share of the height of an inner pass just below which the region is still apart from what is beyond the pass."""
 
-_MANY = 15_000
-"""Cells that are not cut any more."""
-
-_SIGNS = np.array([[a, b, c] for a in (-1.0, 1.0) for b in (-1.0, 1.0) for c in (-1.0, 1.0)])
+_CUTS = ((2_000, (4, 4, 2)), (15_000, (2, 2, 2)))
+"""Into how many parts cells are cut, those across first, where there are fewer of them; more are not cut any more."""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -108,7 +106,8 @@ def parts_of(
         cells = np.argwhere(mask)
         if not len(cells):
             continue
-        parts = _parts(landscape, k, cells) if len(cells) < _MANY else _wholes(landscape, k, cells)
+        cuts = next((cuts for most, cuts in _CUTS if len(cells) < most), None)
+        parts = _wholes(landscape, k, cells) if cuts is None else _parts(landscape, k, cells, cuts)
         height, half = parts.energies - bottom, parts.half_ranges
         for energy, beyond in zip(inner_passes, late, strict=True):
             apart = beyond[k][tuple(cells.T)][:, np.newaxis] & (height < energy)
@@ -140,25 +139,26 @@ def _spread(parts: tuple[Floats, Floats, Floats], energies: Floats) -> Floats:
     return below
 
 
-def _parts(landscape: Landscape, k: int, cells: NDArray[np.int64]) -> Parts:
-    """Cells (n, 3) cut in eight."""
+def _parts(landscape: Landscape, k: int, cells: NDArray[np.int64], cuts: tuple[int, int, int]) -> Parts:
+    """Cells (n, 3), each cut into so many along its edges."""
     chart = landscape.charts[k]
-    x = np.empty((len(cells), 8, 3))
-    size = np.empty((len(cells), 8, 3))
+    place = np.indices(cuts).reshape(3, -1)
+    x = np.empty((len(cells), place.shape[1], 3))
+    size = np.empty(x.shape)
     for axis, stretch in enumerate(chart.stretches):
-        n = stretch.cells
-        edges = stretch.at(np.arange(2 * n + 1) / (2 * n))
-        part = 2 * cells[:, axis, np.newaxis] + (_SIGNS[:, axis] > 0.0)
+        n = stretch.cells * cuts[axis]
+        edges = stretch.at(np.arange(n + 1) / n)
+        part = cuts[axis] * cells[:, axis, np.newaxis] + place[axis]
         x[..., axis] = 0.5 * (edges[part] + edges[part + 1])
         size[..., axis] = edges[part + 1] - edges[part]
     points = chart.points(x)
     energy, gradient = landscape.potential.gradient(points)
     slope = np.einsum("npck,npk->npc", chart.tangents(x), gradient)
-    # The curvature, from the slopes of the parts on both sides; over a part its mean is a shift.
+    # The curvature, from the slopes of the parts at both ends; over a part its mean is a shift.
     shift = np.zeros(energy.shape)
     for axis in range(3):
-        up, down = _SIGNS[:, axis] > 0.0, _SIGNS[:, axis] < 0.0
-        apart = 0.5 * (size[:, up, axis] + size[:, down, axis]).mean(axis=1)
+        up, down = place[axis] == cuts[axis] - 1, place[axis] == 0
+        apart = (x[:, up, axis] - x[:, down, axis]).mean(axis=1)
         bend = (slope[:, up, axis] - slope[:, down, axis]).mean(axis=1) / apart
         shift += bend[:, np.newaxis] * size[..., axis] ** 2 / 24.0
     return Parts(

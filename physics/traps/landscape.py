@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from physics.checks import Floats
 from physics.traps.charts import Chart, charts_of
+from physics.traps.floors import floor_along
 from physics.traps.potential import Potential
 
 Mask = NDArray[np.bool_]
@@ -83,17 +84,41 @@ class Landscape:
             edges.append(edge)
         return tuple(edges)
 
+    @cached_property
+    def _floors(self) -> tuple[tuple[int, NDArray[np.int64], Floats], ...]:
+        """Of each chart of an attractive beam: its index, the cells of the floor of its arms, and energies [J] below
+        which they are not reached. An arm may be thinner than a cell, whose middle then tells nothing of it."""
+        floors = []
+        for k, chart in enumerate(self.charts):
+            if chart.beam not in self.potential.attractive:
+                continue
+            along = chart.stretches[2].centres
+            starts = chart.points(np.stack([np.zeros(len(along)), np.zeros(len(along)), along], axis=-1))
+            floor = floor_along(self.potential, chart.beam, starts)
+            index, inside = chart.cells_of(floor.positions)
+            here = inside & floor.held & (index % len(along) == np.arange(len(along)))
+            # From one cell to the next the floor may also move across: then both ways around the corner are open.
+            a, b = np.flatnonzero(here[:-1] & here[1:]), np.flatnonzero(here[:-1] & here[1:]) + 1
+            corners = np.concatenate([index[a] + 1, index[b] - 1])
+            higher = np.maximum(floor.energies[a], floor.energies[b])
+            cells = np.concatenate([index[here], corners])
+            floors.append((k, cells, np.concatenate([floor.energies[here], higher, higher])))
+        return tuple(floors)
+
     def forget(self) -> None:
         """Let go of the charts and what was worked out on them, a few megabytes; they are made again when asked for."""
-        for name in ("charts", "_values", "_links", "_edges"):
+        for name in ("charts", "_values", "_links", "_edges", "_floors"):
             vars(self).pop(name, None)
 
     def reach(self, start: Floats, level: float) -> Reach:
         """The cells below an energy [J] that hang together with the one that holds a point (3,).
 
-        A cell is below where its middle is; the cell of the start always counts.
+        A cell is below where its middle is, or a place of the floor of a beam's arm in it; the cell of the start always
+        counts.
         """
         able = [energy < level for energy in self.energies]
+        for k, cells, energies in self._floors:
+            able[k].ravel()[cells[energies < level]] = True
         reached = [np.zeros(chart.shape, dtype=bool) for chart in self.charts]
         for chart, ok, mask in zip(self.charts, able, reached, strict=True):
             index, inside = chart.cells_of(start)

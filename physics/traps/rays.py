@@ -2,8 +2,9 @@
 
 Coordinates q are such that near the minimum the potential is |q|^2 (smooth) or |q| + f.q (cusp); along each ray it is
 known at a few dozen radii with its slope, and inverted by a cubic. Directions are a product rule, Clenshaw-Curtis along
-the polar axis, which is the softest one, and equal steps around it. Every second of each makes a coarser rule; while
-both agree, the fine one is far better than their difference.
+the polar axis, which is the softest one, and equal steps around it; for a tilted cusp they are even around the middle
+of the ellipsoids that are its levels. Every second of each makes a coarser rule; while both agree, the fine one is far
+better than their difference.
 
 Reference
 ---------
@@ -12,6 +13,7 @@ Reference
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -85,7 +87,7 @@ def ray_volumes(potential: Potential, minimum: StationaryPoint, shape: Shape, en
     directions, weights, coarse = _rule()
     top = float(energies[-1])
     radii = _RADII * (top if minimum.cusp else np.sqrt(top))
-    steps = directions @ shape.matrix.T
+    steps, room = _rays(shape, directions)
     height, rise = _along(potential, minimum, steps, radii, top)
     # Along rays the root of the energy, or for a cusp the energy, starts as a straight line.
     bent = 1.0 if minimum.cusp else 0.5
@@ -102,8 +104,7 @@ def ray_volumes(potential: Potential, minimum: StationaryPoint, shape: Shape, en
     y = np.where(good, np.maximum(height, 0.0), np.inf) ** bent
     known = good & np.isfinite(height)
     slope = bent * np.where(known, rise, np.inf) * np.where(known, height, 1.0) ** (bent - 1.0)
-    q = _inverse(radii, y, 1.0 + directions @ shape.tilt, slope, able**bent)
-    cubes = q**3 / 3.0 * abs(float(np.linalg.det(shape.matrix)))
+    cubes = _inverse(radii, y, slope, able**bent) ** 3 / 3.0 * room[:, np.newaxis]
     fine, rough = weights @ cubes, coarse @ cubes
     differ = np.abs(rough / fine - 1.0) > _AGREE
     count = int(np.argmax(differ)) if np.any(differ) else len(able)
@@ -121,15 +122,31 @@ def ray_places(potential: Potential, minimum: StationaryPoint, shape: Shape, lev
     level : float. [J] Above the minimum.
     """
     directions, weights = all_around()
-    steps = directions @ shape.matrix.T
+    steps, room = _rays(shape, directions)
     bent = 1.0 if minimum.cusp else 0.5
     radii = _RADII * level**bent
     height, rise = _along(potential, minimum, steps, radii, level)
     with np.errstate(divide="ignore"):
         y = np.maximum(height, 0.0) ** bent
         slope = np.where(np.isfinite(height), bent * rise * np.where(height > 0.0, height, 1.0) ** (bent - 1.0), np.inf)
-    ends = _inverse(radii, y, 1.0 + directions @ shape.tilt, slope, np.array([level**bent]))
-    return places_along(steps, ends, weights * abs(float(np.linalg.det(shape.matrix))))
+    ends = _inverse(radii, y, slope, np.array([level**bent]))
+    return places_along(steps, ends, weights * room)
+
+
+def _rays(shape: Shape, directions: Floats) -> tuple[Floats, Floats]:
+    """(rays, 3) Steps in space, of one energy near the minimum, and what the weight of each direction is worth.
+
+    A tilted cusp has ellipsoids with one focus at the minimum for levels. Directions are even around their middle: of
+    those around the focus, nearly all would go the steep way once the tilt is nearly too much.
+    """
+    f = shape.tilt
+    square = float(f @ f)
+    volume = abs(float(np.linalg.det(shape.matrix)))
+    if square == 0.0:
+        return directions @ shape.matrix.T, np.full(len(directions), volume)
+    root, along = math.sqrt(1.0 - square), directions @ f
+    ends = (root * directions + np.outer(along * (1.0 - root) / square - 1.0, f)) / (1.0 - square)
+    return ends @ shape.matrix.T, volume * (1.0 - along) / (1.0 - square) ** 2
 
 
 def _along(
@@ -154,13 +171,13 @@ def _along(
     return height, rise
 
 
-def _inverse(radii: Floats, y: Floats, first: Floats, slope: Floats, levels: Floats) -> Floats:
+def _inverse(radii: Floats, y: Floats, slope: Floats, levels: Floats) -> Floats:
     """(rays, levels) Radius at which y, known with its slope at (rays, radii), comes to a level; at radius 0 it is 0
-    and has the slope `first`, (rays,)."""
+    and has the slope 1."""
     start = np.zeros((len(y), 1))
     values = np.concatenate([start, y], axis=1)
     at = np.concatenate([[0.0], radii])
-    slopes = np.concatenate([first[:, np.newaxis], slope], axis=1)
+    slopes = np.concatenate([np.ones((len(y), 1)), slope], axis=1)
     upper = np.array([np.searchsorted(row, levels, side="right") for row in values])
     upper = np.clip(upper, 1, values.shape[1] - 1)
     rows = np.arange(len(y))[:, np.newaxis]
