@@ -79,6 +79,8 @@ class TrapPage(Page):
             TrapView.SECTION: _Rows(),
             TrapView.SCAN: _Rows(),
         }
+        # All of them once, or those that are never needed would belong to nobody and outlive the window.
+        self._bodies[TrapView.CUTS].arrange(self.cuts)
         self._bodies[TrapView.SECTION].arrange((self.section,))
         self._bodies[TrapView.SCAN].arrange(self.scans, wide_first=True)
         self.stack = QStackedWidget()
