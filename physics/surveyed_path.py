@@ -84,16 +84,21 @@ class SurveyedPath:
         return trap.with_coils(**parts) if parts else trap
 
     def at(self, controls: Mapping[Control, float]) -> TrapPoint:
-        # Powers times scale make the trap, so that a scale and a common change of the powers share surveys.
-        scale = controls.get(SCALE, 1.0)
-        values = {c: scale * v if c.knob is Knob.POWER else v for c, v in controls.items() if c != SCALE}
-        # To twelve digits: the same setting comes along with different roundings.
-        key = tuple((c, float(f"{v:.12g}")) for c, v in sorted(values.items(), key=lambda item: item[0].label))
+        key = setting_of(controls)
         if key not in self._known:
             self._known[key] = point_of(survey(self.trap_at(controls), self.state))
             if self.progress is not None:
                 self.progress()
         return self._known[key]
+
+
+def setting_of(controls: Mapping[Control, float]) -> Setting:
+    """The setting of a trap that controls make."""
+    # Powers times scale make the trap, so that a scale and a common change of the powers share surveys.
+    scale = controls.get(SCALE, 1.0)
+    values = {c: scale * v if c.knob is Knob.POWER else v for c, v in controls.items() if c != SCALE}
+    # To twelve digits: the same setting comes along with different roundings.
+    return tuple((c, float(f"{v:.12g}")) for c, v in sorted(values.items(), key=lambda item: item[0].label))
 
 
 def point_of(found: Survey) -> TrapPoint:

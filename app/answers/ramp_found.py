@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
+from app.answers.ramp_draft import draft_answer
 from app.answers.ramp_inputs import measured_clouds
 from app.answers.ramp_jobs import ramp_job
 from app.newest import Watch
@@ -23,6 +24,7 @@ class Found:
     rest : of the ramp, from a measured cloud
     extra : what else was asked for, or the error of that
     failure : why there is no answer, else empty
+    draft : whether the ramp is followed from surveys of traps nearby, until its own are made
     """
 
     plan: Plan
@@ -32,6 +34,19 @@ class Found:
     measured: tuple[MeasuredCloud, ...] = ()
     extra: Any = None
     failure: str = ""
+    draft: bool = False
+
+
+def drafted(plan: Plan) -> Found | None:
+    """What can be said of the ramp at once; None where nothing is known of traps nearby."""
+    answer = draft_answer(plan)
+    if answer is None:
+        return None
+    try:
+        measured = measured_clouds(plan)
+    except ValueError:  # the answer with surveys says why
+        measured = ()
+    return Found(plan=plan, ramp=answer, measured=measured, draft=True)
 
 
 def simulated_with_rest(plan: Plan, since: str | None, watch: Watch) -> Found | None:

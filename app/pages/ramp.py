@@ -30,6 +30,8 @@ if TYPE_CHECKING:
 HINT = "Point at a time, or use the left and right arrow keys, to read all values"
 _STEP = "ramp"
 _SURVEYED = "The trap is surveyed along the ramp; the first time this takes some seconds."
+_DRAFT = "draft, from surveys of traps nearby"
+_DRAFTED = "A draft, from surveys of traps nearby; it is exact once the trap is surveyed along this ramp."
 _NO_RAMP = "This plan has no ramp yet."
 _START = "Start from a usual one, which lowers the trap to a tenth in five seconds, or let one be designed."
 
@@ -89,9 +91,21 @@ class RampPage(TimePage):
             return None
         if self._is_answered(plan):
             return None
-        if _is_quick(plan) and kept_ramp(plan, None) is None and not self._pace.begin():
+        kept = kept_ramp(plan, None) is not None
+        drafted = self._written is not None and not kept and not _is_quick(plan)
+        if (drafted or _is_quick(plan)) and not kept and not self._pace.begin():
             return None
-        return self._job(plan)
+        return self._draft_job(plan) if drafted else self._job(plan)
+
+    def _draft_job(self, plan: Plan) -> Steps:
+        """While the hand moves a stage of a ramp whose surveys take seconds."""
+        from app.answers.ramp_found import drafted
+
+        return Steps(
+            what="draft of the ramp",
+            depends_on=(self.title, self._key(plan), "draft"),
+            run=lambda _watch: drafted(plan),
+        )
 
     def _is_answered(self, plan: Plan) -> bool:
         found = self._found
@@ -104,12 +118,17 @@ class RampPage(TimePage):
 
     def _job(self, plan: Plan) -> Steps:
         since = self.since
-        from app.answers.ramp_found import simulated_with_rest
+        from app.answers.ramp import kept_ramp
+        from app.answers.ramp_found import drafted, simulated_with_rest
 
         extra, extra_key = self.panel.extra_job(plan)
         key = self._key(plan)
+        slow = not _is_quick(plan) and kept_ramp(plan, None) is None
 
         def run(watch: Watch) -> Found | None:
+            draft = drafted(plan) if slow else None
+            if draft is not None and not watch.deliver(draft):
+                return None
             found = simulated_with_rest(plan, since, watch)
             if found is None:
                 return None
@@ -172,6 +191,11 @@ class RampPage(TimePage):
         """The simulated ramp on show."""
         return None if self._found is None else self._found.ramp
 
+    @property
+    def draft(self) -> bool:
+        """Whether it is a draft, until its trap is surveyed."""
+        return self._found is not None and self._found.draft
+
     def _show(self) -> None:
         """The stages of the newest plan at once, and the newest simulation there is."""
         if self._show_plan() and self._found is not None:
@@ -220,14 +244,14 @@ class RampPage(TimePage):
             return
         if found.ramp is not None and self._scenery is not None:
             panel.table.show_ramp(found.ramp)
-            panel.tell(ramp_verdict(found.ramp), self._detail(found.ramp))
+            panel.tell(ramp_verdict(found.ramp), _DRAFTED if found.draft else self._detail(found.ramp))
             panel.show_caveats(caveat_lines_of(found.ramp))
             courses, points = courses_of(found, self.references), points_of(found.measured)
             panel.columns.show_courses(courses, self._scenery, points, self.reading)
         panel.measured.show_answers(found.ramp, found.rest)
         if not panel.stages.problem:
             for plot in self._plots:
-                plot.canvas.set_stale(False)
+                plot.canvas.set_stale(found.draft, _DRAFT if found.draft else "")
         self._say_values()
 
     def _tell_trouble(self, sentence: str) -> None:
@@ -320,6 +344,9 @@ class RampPage(TimePage):
         answer = self.answer
         if answer is None or self.cloud is None:
             return
+        if self.draft:
+            self.told.emit("This ramp is still a draft: keep it once its trap is surveyed.")
+            return
         count = len(self.references) + 1
         name = self.cloud.plan.title or "ramp"
         taken = {ref.name for ref in self.references}
@@ -388,6 +415,7 @@ class RampPage(TimePage):
     def _end_drag(self) -> None:
         self._drag += 1
         self._written = None
+        self.part_wanted.emit()  # of a drag in a trap of beams only drafts were shown
 
     # ---------------------------------------------------------------- focus
 
