@@ -23,6 +23,7 @@ class Found:
     plan, key : to which it belongs
     rest : of the ramp, from a measured cloud
     extra : what else was asked for, or the error of that
+    recalled : references of an earlier session, simulated again; None where none were asked for
     failure : why there is no answer, else empty
     draft : whether the ramp is followed from surveys of traps nearby, until its own are made
     """
@@ -33,6 +34,7 @@ class Found:
     rest: RampAnswer | None = None
     measured: tuple[MeasuredCloud, ...] = ()
     extra: Any = None
+    recalled: tuple[Any, ...] | None = None
     failure: str = ""
     draft: bool = False
 

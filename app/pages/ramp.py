@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
@@ -25,7 +26,7 @@ if TYPE_CHECKING:
     from app.answers.ramp_found import Found
     from app.figures.ramp_controls import Handle
     from app.ramp_choices import StageChoice
-    from app.widgets.ramp_courses import Reference
+    from app.widgets.ramp_references import Reference, Remembered
 
 HINT = "Point at a time, or use the left and right arrow keys, to read all values"
 _STEP = "ramp"
@@ -44,6 +45,7 @@ class RampPage(TimePage):
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
         self.references: list[Reference] = []
+        self._remembered: list[Remembered] = []  # references of an earlier session, until they are simulated again
         self.since: str | None = None  # label of the measured cloud from which the rest is drawn
         self._found: Found | None = None
         self._pace = Pace()
@@ -89,7 +91,7 @@ class RampPage(TimePage):
 
         if not plan.ramp and not self.panel.extra_wanted(plan):
             return None
-        if self._is_answered(plan):
+        if self._is_answered(plan) and not self._remembered:
             return None
         kept = kept_ramp(plan, None) is not None
         drafted = self._written is not None and not kept and not _is_quick(plan)
@@ -120,10 +122,12 @@ class RampPage(TimePage):
         since = self.since
         from app.answers.ramp import kept_ramp
         from app.answers.ramp_found import drafted, simulated_with_rest
+        from app.widgets.ramp_references import simulated_references
 
         extra, extra_key = self.panel.extra_job(plan)
         key = self._key(plan)
         slow = not _is_quick(plan) and kept_ramp(plan, None) is None
+        remembered = tuple(self._remembered)
 
         def run(watch: Watch) -> Found | None:
             draft = drafted(plan) if slow else None
@@ -133,6 +137,11 @@ class RampPage(TimePage):
             if found is None:
                 return None
             found = replace(found, key=key)
+            if remembered:
+                recalled = simulated_references(remembered, watch) if watch.deliver(found) else None
+                if recalled is None:
+                    return None
+                found = replace(found, recalled=recalled)
             if extra is None:
                 return found
             if not watch.deliver(found):
@@ -144,13 +153,17 @@ class RampPage(TimePage):
             return None if more is None else replace(found, extra=more)
 
         what = "ramp" if extra is None else extra.what
-        return Steps(what=what, depends_on=(self.title, key, extra_key), run=run)
+        return Steps(what=what, depends_on=(self.title, key, extra_key, len(remembered)), run=run)
 
     def take_part(self, answer: Any) -> None:
         newer = self._pace.arrived()
         if answer is None:
             return
         self._found = answer
+        if answer.recalled is not None and self._remembered:
+            self.references[:0] = answer.recalled
+            self._remembered = []
+            self.panel.show_references([ref.name for ref in self.references])
         if answer.extra is not None:
             self.panel.take_extra(answer.plan, answer.extra)
         if self.cloud is not None and self.cloud.plan == self._shown and self._shown.ramp:
@@ -339,28 +352,43 @@ class RampPage(TimePage):
 
     def keep_reference(self) -> None:
         """Keep the ramp on show, to be drawn thin beside those that follow."""
-        from app.widgets.ramp_courses import Reference
+        from app.widgets.ramp_references import Reference
 
         answer = self.answer
-        if answer is None or self.cloud is None:
+        if answer is None or self._found is None:
             return
         if self.draft:
             self.told.emit("This ramp is still a draft: keep it once its trap is surveyed.")
             return
         count = len(self.references) + 1
-        name = self.cloud.plan.title or "ramp"
+        plan = self._found.plan
+        name = plan.title or "ramp"
         taken = {ref.name for ref in self.references}
-        self.references.append(Reference(name=name if name not in taken else f"{name} {count}", answer=answer))
+        name = name if name not in taken else f"{name} {count}"
+        self.references.append(Reference(name=name, plan=plan, answer=answer))
         self._references_changed()
 
     def drop_references(self) -> None:
         """Draw this ramp alone again."""
         self.references.clear()
+        self._remembered = []
         self._references_changed()
 
     def _references_changed(self) -> None:
         self.panel.show_references([ref.name for ref in self.references])
+        self.memory_changed.emit()
         self._show()
+
+    def memory(self) -> dict[str, tuple[str, ...]]:
+        """The ramps that were kept."""
+        from app.widgets.ramp_references import reference_texts
+
+        return {"references": reference_texts((*self._remembered, *self.references))}
+
+    def recall(self, texts: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
+        from app.widgets.ramp_references import remembered_references
+
+        self._remembered = remembered_references(tuple(texts.get("references", ())))
 
     # ---------------------------------------------------------------- reading values
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from app.caveat_words import CaveatLine
@@ -18,14 +17,7 @@ if TYPE_CHECKING:
     from app.answers.ramp_found import Found
     from app.answers.ramp_inputs import MeasuredCloud
     from app.plan import Plan
-
-
-@dataclass(frozen=True, kw_only=True, eq=False)
-class Reference:
-    """A ramp that was kept to compare with."""
-
-    name: str
-    answer: RampAnswer
+    from app.widgets.ramp_references import Reference
 
 
 def scene_of(plan: Plan, duration: float, references: Sequence[Reference]) -> Scene:
