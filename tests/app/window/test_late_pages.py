@@ -3,6 +3,8 @@
 from pathlib import Path
 
 import pytest
+from PySide6.QtCore import Qt
+from PySide6.QtTest import QTest
 
 from app.figures.theme import DARK
 from app.plan import DEFAULT_PLAN, plan_with
@@ -74,8 +76,10 @@ def test_what_a_page_that_was_never_shown_remembers_is_not_lost(make_window) -> 
 
 def test_a_page_that_comes_while_a_field_cannot_be_read_is_marked(window, settle) -> None:
     field = window.desk.bench.cloud.temperature
-    field.setText("hot")
-    field.textEdited.emit("hot")
+    field.selectAll()
+    QTest.keyClicks(field, "hot")
+    QTest.keyClick(field, Qt.Key.Key_Return)
+    assert window.desk.verdict.stale
     window.desk.show_page(TITLES.index("Profile"))
     settle(window)
     assert all(plot.canvas.stale_text is not None for plot in window.desk.profile.plots)
