@@ -39,12 +39,19 @@ _LONGEST = 58  # characters of a reason
 
 @dataclass(frozen=True)
 class Ranked:
-    """A row of the chart: its number in display units, NaN where it has no place on the axis, and then why."""
+    """A row of the chart: its number in display units, NaN where it has no place on the axis, and then why.
+
+    low, high : 16 and 84 percent of it over the stated uncertainties; NaN where it has none
+    floor : what it would be with three-body loss as fast as theory allows, where that loss is not known; else NaN
+    """
 
     name: str
     value: float
     sureness: Sureness
     reason: str
+    low: float = math.nan
+    high: float = math.nan
+    floor: float = math.nan
 
 
 def ranking(
@@ -62,10 +69,22 @@ def ranking(
             for row, score in zip(rows, scores, strict=True)
         )
     factor = display_factor(unit, COLUMNS[name].row)
-    return tuple(
-        Ranked(short_name(row), cell.value / factor, cell.sureness, cell.reason or row.reason)
-        for row in rows
-        for cell in [row.cell(name)]
+    return tuple(_ranked(row, name, factor) for row in rows)
+
+
+def _ranked(row: CandidateRow, name: str, factor: float) -> Ranked:
+    cell, spread = row.cell(name), row.spread(name)
+    low, high = (math.nan, math.nan) if spread is None else (float(spread.low), float(spread.high))
+    unknown_loss = row.cloud is not None and row.cloud.losses.losses.three_body is None
+    floor = row.cell("good_to_bad_at_ceiling").value if name == "good_to_bad_ratio" and unknown_loss else math.nan
+    return Ranked(
+        name=short_name(row),
+        value=cell.value / factor,
+        sureness=cell.sureness,
+        reason=cell.reason or row.reason,
+        low=low / factor,
+        high=high / factor,
+        floor=floor / factor,
     )
 
 
@@ -88,7 +107,8 @@ def ranked_picture(
     drawn = [item for item in known if not log or item.value > 0.0]
     apart = [item for item in ranked if item not in drawn]
     listed = (*drawn, *apart)
-    x = _value_axis(name, unit, [item.value for item in drawn], log)
+    extent = [end for item in drawn for end in (item.value, item.low, item.high, item.floor) if not math.isnan(end)]
+    x = _value_axis(name, unit, [end for end in extent if not log or end > 0.0], log)
     count = len(listed)
     shown = min(count, room)
     y = Axis(
@@ -109,7 +129,13 @@ def ranked_picture(
         Label(text=_short(item), role=Role.CLASSICAL, x=x.low, y=float(count - 1 - len(drawn) - place))
         for place, item in enumerate(apart)
     ]
-    curves = []
+    heights = [float(count - 1 - place) for place in range(len(drawn))]
+    floors = [(item.floor, item.value) for item in drawn]
+    spreads = [(item.low, item.high) for item in drawn]
+    curves = [
+        *_bars(_("down to three-body loss at 201 ħa⁴/m"), Role.ASSUMED, floors, heights, x),
+        *_bars(_("68 % of the draws"), Role.UNCERTAINTY, spreads, heights, x),
+    ]
     if drawn and apart:
         border = count - len(drawn) - 0.5
         curves.append(Curve(name="", role=Role.DECADE, x=np.array([x.low, x.high]), y=np.array([border, border])))
@@ -126,6 +152,19 @@ def ranked_picture(
         summary=_summary(name, drawn, apart),
         note=note,
     )
+
+
+def _bars(
+    name: str, role: Role, ends: Sequence[tuple[float, float]], heights: Sequence[float], x: Axis
+) -> list[Curve]:  # fmt: skip
+    """One broken line through the bars of all rows that have one, as far as the axis goes; none where no row has."""
+    across: list[float] = []
+    up: list[float] = []
+    for (low, high), height in zip(ends, heights, strict=True):
+        if low < high:  # false where either is not known
+            across += [max(low, x.low), high, math.nan]
+            up += [height, height, math.nan]
+    return [Curve(name=name, role=role, x=np.array(across), y=np.array(up))] if across else []
 
 
 def _title(name: str) -> str:

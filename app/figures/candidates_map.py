@@ -13,17 +13,24 @@ from app.candidate_words import short_state
 from app.engine import CloudAnswer
 from app.figures.picture import Array, Axis, Curve, Label, Mark, Picture, Role
 from app.language import translate as _
+from app.sureness import least_sure
 
 _MOST_NAMED = 3
 """Species that a label names; more are counted."""
 
-_WIDTH = 0.011
-"""Half the width of a character, about, as a share of the axis."""
+_USUAL_CHARACTER = 0.022
+"""Width of a character, about, as a share of the axis, where that is not known."""
+
+_LOOKS = 9
+"""Places along a label at which it is to keep clear of lines."""
 
 _USUAL_LINE = 0.07
 """Height of a line of text as a share of the axis, where that is not known."""
 
-_LEGIBLE = 0.55
+_HALF = 0.6
+"""From the middle of a label to its line, in heights of a text."""
+
+_LEGIBLE = 0.52
 """How far, in heights of a text, a label has to be from lines that it does not belong to."""
 
 _SIDES = (1, -1)
@@ -31,12 +38,18 @@ _SIDES = (1, -1)
 
 
 def thresholds_picture(
-    thresholds: Thresholds, cloud: CloudAnswer, starts: Sequence[CandidateRow] = (), *, text_height: float = _USUAL_LINE
+    thresholds: Thresholds,
+    cloud: CloudAnswer,
+    starts: Sequence[CandidateRow] = (),
+    *,
+    text_height: float = _USUAL_LINE,
+    character: float = _USUAL_CHARACTER,
 ) -> Picture:
     """A line for each threshold, solid for bosons, broken for fermions, the plan's own species in ink.
 
     starts : rows whose clouds begin elsewhere than the plan's own
     text_height : of one line, as a share of the axes' height: lines too close for it go without labels
+    character : the width of one, as a share of the axes' width
     """
     atoms, hot = float(cloud.plan.cloud.atoms.value), float(cloud.plan.cloud.temperature.value)
     x = Axis(
@@ -61,7 +74,7 @@ def thresholds_picture(
     for line in thresholds.lines:
         role = _role(line, cloud)
         curves.append(
-            Curve(name="" if role in named else _name(role), role=role, x=thresholds.atoms, y=line.temperature)
+            Curve(name="" if role in named else _name(role, cloud), role=role, x=thresholds.atoms, y=line.temperature)
         )
         named.add(role)
     marks = [Mark(name=_("cloud"), role=Role.CLOUD, x=atoms, y=hot)]
@@ -79,13 +92,15 @@ def thresholds_picture(
         # The plan's own last, so that no other lies on it.
         curves=tuple(sorted(curves, key=lambda curve: curve.role not in (Role.FIRST, Role.SECOND))),
         marks=tuple(marks),
-        labels=_labels(thresholds, cloud, x, y, text_height),
+        labels=_labels(thresholds, cloud, x, y, text_height, character),
         summary=_summary(thresholds),
         note="" if thresholds.lines else _("no candidate has a threshold"),
     )
 
 
-def _labels(thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis, high: float) -> tuple[Label, ...]:
+def _labels(
+    thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis, high: float, wide: float
+) -> tuple[Label, ...]:  # fmt: skip
     """A label over or under each line, where it is furthest from those that stand already and from other lines; that of
     the plan's own first. Lines rise: over one, a label ends where it belongs; under one, it begins there. A line that
     others crowd goes without, but for the plan's own."""
@@ -96,8 +111,8 @@ def _labels(thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis, high: 
     across = np.array([_share(x, float(atoms)) for atoms in thresholds.atoms])
     heights = {id(line): np.log(line.temperature / y.low) / math.log(y.high / y.low) for line in thresholds.lines}
     for line in sorted(thresholds.lines, key=lambda line: _role(line, cloud) in (Role.FIRST, Role.SECOND)):
-        text = line_text(line)
-        reach = _WIDTH * (len(text) + 1)
+        text = line_text(line) + _mark(line)
+        reach = 0.5 * wide * (len(text) + 1)
         own = heights[id(line)]
         others = [height for height in heights.values() if height is not own]
         places = [
@@ -112,7 +127,7 @@ def _labels(thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis, high: 
             for k in range(2, len(across) - 2)
             if math.isfinite(own[k])
             for side in _SIDES
-            for u, v in ((float(across[k]) - side * reach, float(own[k]) + side * 0.6 * high),)
+            for u, v in ((float(across[k]) - side * reach, float(own[k]) + side * _HALF * high),)
         ]
         if not places:
             continue
@@ -127,9 +142,9 @@ def _labels(thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis, high: 
 
 def _free(u: float, v: float, reach: float, across: Array, lines: Sequence[Array]) -> float:
     """How far the middle of a label is from the nearest of other lines, as a share of the axis."""
-    ends = np.searchsorted(across, (u - reach, u, u + reach)).clip(0, len(across) - 1)
-    gaps = [float(np.nanmin(np.abs(line[ends] - v), initial=1.0)) for line in lines]
-    return min([1.0, *gaps])
+    along = np.linspace(u - reach, u + reach, _LOOKS)
+    gaps = [np.abs(np.interp(along, across, line) - v) for line in lines]
+    return min([1.0, *(float(np.min(gap, where=np.isfinite(gap), initial=1.0)) for gap in gaps)])
 
 
 def _share(axis: Axis, value: float) -> float:
@@ -140,7 +155,12 @@ def _clearance(u: float, v: float, reach: float, taken: Sequence[tuple[float, fl
     """How far a place is from the labels that stand, in the room that they need, and from the ends of the axis; no more
     than is needed counts."""
     others = (max(abs(u - x) / (reach + other), abs(v - y) / high) for x, y, other in taken)
-    return min(1.3, min(u, 1.0 - u) / reach, *others)
+    return min(1.3, min(u, 1.0 - u) / reach, min(v, 1.0 - v) / (_HALF * high), *others)
+
+
+def _mark(line: ThresholdLine) -> str:
+    """The mark of the least sure threshold of a line."""
+    return least_sure(*(row.cell("threshold_temperature").sureness for row in line.rows)).mark
 
 
 def line_text(line: ThresholdLine) -> str:
@@ -178,12 +198,15 @@ def _role(line: ThresholdLine, cloud: CloudAnswer) -> Role:
     return Role.FIRST if line.bosons else Role.SECOND
 
 
-def _name(role: Role) -> str:
+def _name(role: Role, cloud: CloudAnswer) -> str:
+    limit = f"{cloud.threshold:.3g}"
+    if cloud.plan.target.reduced_temperature is None:
+        limit = _("{limit}, assumed").format(limit=limit)
     return {
         Role.FIRST: _("bosons: critical temperature"),
-        Role.SECOND: _("fermions: threshold T/TF"),
+        Role.SECOND: _("fermions: T/TF = {limit}").format(limit=limit),
         Role.THRESHOLD: _("the plan's own, bosons"),
-        Role.THRESHOLD_SHIFTED: _("the plan's own, fermions"),
+        Role.THRESHOLD_SHIFTED: _("the plan's own: T/TF = {limit}").format(limit=limit),
     }[role]
 
 

@@ -34,12 +34,14 @@ from app.widgets.candidate_bar import BASES, ChoiceBar, ViewBar
 from app.widgets.candidate_model import Shown
 from app.widgets.candidate_rules import CandidateRules
 from app.widgets.candidate_table import CandidateTable
-from app.widgets.conditions_dialog import ConditionsDialog
+from app.widgets.conditions_dialog import ConditionsDialog, FieldsDialog
 from app.widgets.detail import Detail
 from app.widgets.single_plot_page import SinglePlotPage
 from app.widgets.species_dialog import SpeciesDialog
 
 _AROUND_MAP = 6.0  # what is above and below the map of thresholds, in lines of text
+_BESIDE_MAP = 7.0  # and beside it
+_CHARACTER = 0.95  # width of a character of a label over that of the window's letters
 _LINES_AROUND, _LINE = 7.5, 1.25  # of a ranking: what is above and below its rows, and a row, in lines of text
 HINT = _("Return, or a double click in the table, uses a species")
 
@@ -76,6 +78,7 @@ class CandidatesPage(SinglePlotPage):
         self.choices, self.view = ChoiceBar(), ViewBar()
         self.choices.basis_chosen.connect(self._choose_basis)
         self.choices.species_asked.connect(self.ask_species)
+        self.choices.fields_asked.connect(self.ask_fields)
         self.choices.evaporation_asked.connect(self.ask_evaporation)
         self.choices.columns_chosen.connect(self.choose_columns)
         self.view.view_chosen.connect(self._choose_view)
@@ -255,9 +258,15 @@ class CandidatesPage(SinglePlotPage):
             self._thresholds = key, thresholds_of(self._rows, cloud.plan.cloud.atoms.value)
         text = 0.85 * self.plot.canvas.fontMetrics().height()
         room = max(self.plot.canvas.height() - _AROUND_MAP * text, 2.0 * text)
+        character = _CHARACTER * self.plot.canvas.fontMetrics().averageCharWidth()
+        across = max(self.plot.canvas.width() - _BESIDE_MAP * text, 2.0 * text)
         # In coarse steps, so that labels do not wander while the window is resized.
         return thresholds_picture(
-            self._thresholds[1], cloud, self._rows, text_height=2.0 ** round(math.log2(text / room))
+            self._thresholds[1],
+            cloud,
+            self._rows,
+            text_height=_step_above(text / room),
+            character=_step_above(character / across),
         )
 
     def _chart(self, units: Mapping[str, str]) -> Picture:
@@ -361,6 +370,16 @@ class CandidatesPage(SinglePlotPage):
                 self.plan_edited.emit(changed, _("species to compare"), "")
         dialog.deleteLater()
 
+    def ask_fields(self) -> None:
+        """Let the user give the range in which the best field of every candidate is sought."""
+        if self.cloud is None:
+            return
+        plan = self.cloud.plan
+        dialog = FieldsDialog(plan.candidates, self)
+        if dialog.exec() == QDialog.DialogCode.Accepted and dialog.choice != plan.candidates:
+            self.plan_edited.emit(replace(plan, candidates=dialog.choice), _("fields of the comparison"), "")
+        dialog.deleteLater()
+
     def ask_conditions(self, row: CandidateRow) -> None:
         """Let the user give a candidate an atom number, a temperature, a field or a length of its own."""
         if self.cloud is None:
@@ -398,6 +417,11 @@ class CandidatesPage(SinglePlotPage):
             self.empty.take_focus()
         else:
             self.table.take_focus()
+
+
+def _step_above(share: float) -> float:
+    """The next of few numbers, each larger by the square root of two."""
+    return float(2.0 ** (0.5 * math.ceil(2.0 * math.log2(share))))
 
 
 def _judge(plan: Plan, depends_on: object, watch: Watch) -> _Found | None:

@@ -37,11 +37,12 @@ _BASIS_TEXTS = (
 
 
 class ChoiceBar(QWidget):
-    """Signals: basis_chosen(place in BASES); species_asked(); rules_shown(bool); evaporation_asked();
+    """Signals: basis_chosen(place in BASES); species_asked(); fields_asked(); rules_shown(bool); evaporation_asked();
     columns_chosen(names)."""
 
     basis_chosen = Signal(int)
     species_asked = Signal()
+    fields_asked = Signal()
     rules_shown = Signal(bool)
     evaporation_asked = Signal()
     columns_chosen = Signal(object)
@@ -59,6 +60,8 @@ class ChoiceBar(QWidget):
         self.basis.activated.connect(self.basis_chosen)
         self.species = _button(_("Species…"), _("Choose which species and states are compared"))
         self.species.clicked.connect(self.species_asked)
+        self.fields = _button(_("Fields…"), _("Judge each species at its best magnetic field within a range"))
+        self.fields.clicked.connect(self.fields_asked)
         self.columns = _button(_("Columns"), _("Choose the columns of the table"))
         self.columns.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)
         self.menu = QMenu(self.columns)
@@ -73,7 +76,7 @@ class ChoiceBar(QWidget):
         )
         self.evaporate.clicked.connect(self.evaporation_asked)
         row = Flow(self, spacing=6)
-        for widget in (self.basis, self.species, self.columns, self.rules, self.evaporate):
+        for widget in (self.basis, self.species, self.fields, self.columns, self.rules, self.evaporate):
             row.addWidget(widget)
         self.count_rules(0, 0)
 

@@ -162,7 +162,7 @@ class CandidateModel(QAbstractTableModel):
         """What stands over a column; broken into short lines where it is to be narrow."""
         match head.kind:
             case Kind.STATUS:
-                return _("fails")
+                return _("remarks")
             case Kind.MODEL:
                 return _("model")
             case Kind.SCORE:

@@ -20,7 +20,7 @@ from app.figures.draw import picture_bytes
 from app.figures.labels import place_labels
 from app.figures.picture import Axis, Label, Picture, Role
 from app.figures.theme import DARK, LIGHT
-from app.plan import DEFAULT_PLAN
+from app.plan import DEFAULT_PLAN, plan_with
 from app.units import ATOM_NUMBER, TEMPERATURE, read_quantity
 
 
@@ -114,6 +114,52 @@ def test_marks_tell_how_sure_a_number_is(rows: tuple[CandidateRow, ...]) -> None
         ]
 
 
+def test_an_unknown_three_body_loss_spans_what_the_ratio_may_be() -> None:
+    plan = plan_with(DEFAULT_PLAN, {"cloud.temperature": "400(20) nK", "losses.background_lifetime": "30 s"})
+    answer = candidates_answer(replace(plan, candidates=CandidatesChoice(keys=("41K", "87Rb", "84Sr"))))
+    assert answer is not None
+    picture = ranked_picture(answer.rows, "good_to_bad_ratio", "1", True)
+    ceiling, spread = (next(c for c in picture.curves if c.role is role) for role in (Role.ASSUMED, Role.UNCERTAINTY))
+    unknown = [row for row in answer.rows if row.cloud is not None and row.cloud.losses.losses.three_body is None]
+    drawn = [row for row in unknown if row.cell("good_to_bad_at_ceiling").known]
+    assert drawn
+    bars = ceiling.x.reshape(-1, 3)[:, :2]
+    assert sorted(map(tuple, bars)) == sorted(
+        (row.cell("good_to_bad_at_ceiling").value, row.cell("good_to_bad_ratio").value) for row in drawn
+    )
+    assert picture.x.low < bars.min()
+    # 5 % of T: the elastic rate goes as 1/T.
+    low, high = spread.x.reshape(-1, 3)[0, :2]
+    assert 1.0 < high / low < 1.3
+    # In other columns there is nothing to span.
+    other = ranked_picture(answer.rows, "mean_density", "1/cm^3", True)
+    assert {curve.role for curve in other.curves} == {Role.UNCERTAINTY}
+    exact = ranked_picture(answer.rows, "mass", "u", True)
+    assert exact.curves == ()
+
+
+def test_labels_keep_clear_of_lines_that_cross(rows: tuple[CandidateRow, ...]) -> None:
+    few = thresholds_of(rows, 1e5)
+    fermions = few.lines[0]
+    rises = (0.0, 0.15, 0.35)
+    crossing = [replace(fermions, temperature=fermions.temperature[16] * (few.atoms / 1e5) ** rise) for rise in rises]
+    high, wide = 0.06, 0.012
+    picture = thresholds_picture(
+        replace(few, lines=tuple(crossing)), cloud_answer(DEFAULT_PLAN), text_height=high, character=wide
+    )
+    assert len(picture.labels) >= 2
+    lines = [np.log(line.temperature / picture.y.low) / math.log(picture.y.high / picture.y.low) for line in crossing]
+    across = np.linspace(0.0, 1.0, few.atoms.size)
+    for label in picture.labels:
+        reach = 0.5 * wide * len(label.text)
+        u = math.log(label.x / picture.x.low) / math.log(picture.x.high / picture.x.low) + label.side * reach
+        v = math.log(label.y / picture.y.low) / math.log(picture.y.high / picture.y.low) + label.lift * 0.6 * high
+        assert 0.5 * high < v < 1.0 - 0.5 * high
+        for line in lines:
+            along = np.interp(np.linspace(u - reach, u + reach, 25), across, line)
+            assert np.min(np.abs(along - v)) > 0.5 * high
+
+
 def test_a_score_is_ranked_like_a_column_and_an_empty_one_says_so(rows: tuple[CandidateRow, ...]) -> None:
     weights = (read_weight("scattering_length"),)
     scores = score_rows(rows, weights)
@@ -128,7 +174,8 @@ def test_a_score_is_ranked_like_a_column_and_an_empty_one_says_so(rows: tuple[Ca
 
 def test_they_are_drawn(rows: tuple[CandidateRow, ...]) -> None:
     thresholds = thresholds_picture(thresholds_of(rows, 1e5), cloud_answer(DEFAULT_PLAN))
-    assert [label.text for label in thresholds.labels] == ["23 species of bosons", "9 species of fermions"]
-    assert "fermions: threshold T/TF" in picture_bytes((thresholds,), "svg").decode()
+    # The plan names no T/TF as its target, so that one is assumed; Tc rests on nothing but frequencies.
+    assert [label.text for label in thresholds.labels] == ["23 species of bosons", "9 species of fermionsᵃ"]
+    assert "fermions: T/TF = 0.5, assumed" in picture_bytes((thresholds,), "svg").decode()
     ranked = (ranked_picture(rows, "rethermalisation_time", "s", False), ranked_picture((), "mass", "u", True))
     assert "168Er mJ=-6" in picture_bytes(ranked, "svg").decode()

@@ -19,9 +19,10 @@ from app.candidate_order import Trait
 from app.pages.candidates import CandidatesPage
 from app.plan import DEFAULT_PLAN, Plan, read_plan
 from app.widgets.candidate_model import Kind
-from app.widgets.conditions_dialog import ConditionsDialog
+from app.widgets.conditions_dialog import ConditionsDialog, FieldsDialog
 from app.widgets.species_dialog import SpeciesDialog
 from app.window.main_window import MainWindow
+from physics.constants import bohr_radius
 
 Settle = Callable[[MainWindow], None]
 MakeWindow = Callable[..., MainWindow]
@@ -159,7 +160,7 @@ def test_units_and_columns_are_the_reader_s(compared: MainWindow, settle: Settle
     assert not any(text.startswith("threshold temperature") for text in heading_texts(compared)[:2])
     page.choose_columns(("mass", "mean_density"))
     settle(compared)
-    assert heading_texts(compared) == ["fails", "mass [u]", "mean density [1/cm^3]", "model"]
+    assert heading_texts(compared) == ["remarks", "mass [u]", "mean density [1/cm^3]", "model"]
 
 
 def test_rows_are_copied_and_saved_with_their_marks(compared: MainWindow, tmp_path: Path) -> None:
@@ -356,3 +357,33 @@ def test_a_hidden_page_computes_nothing(window: MainWindow, settle: Settle, monk
     monkeypatch.setattr("app.pages.candidates.candidates_answer", lambda *_given: pytest.fail("asked"))
     settle(window)
     assert names(window) == []
+
+
+def test_the_best_field_of_all_is_asked_for_in_a_dialog(
+    compared: MainWindow, settle: Settle, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    page = page_of(compared)
+
+    def typed(dialog: FieldsDialog) -> int:
+        okay = dialog.buttons.button(dialog.buttons.StandardButton.Ok)
+        for name, text in (("lowest_field", "155 G"), ("highest_field", "150 G"), ("wanted_length", "90 a0")):
+            dialog.fields[name].setText(text)
+            dialog.fields[name].textEdited.emit(text)
+        assert not okay.isEnabled()
+        assert "the lowest field must be below the highest" in dialog.error.text()
+        dialog.fields["highest_field"].setText("170 G")
+        dialog.fields["highest_field"].textEdited.emit("170 G")
+        assert okay.isEnabled()
+        return int(FieldsDialog.DialogCode.Accepted)
+
+    monkeypatch.setattr(FieldsDialog, "exec", typed)
+    page.choices.fields.click()
+    settle(compared)
+    assert compared.document.plan.candidates.highest_field is not None
+    rows = {row.name: row for row in page.table.model_.shown.rows}
+    rubidium = rows["85Rb  F=2 mF=-2"]
+    assert rubidium.search is not None
+    assert rubidium.cell("scattering_length").value == pytest.approx(90.0 * bohr_radius)
+    assert rows["41K  F=2 mF=+2"].search is None
+    # The plan's own atoms stay as they are.
+    assert compared.document.plan.species.field is None
