@@ -161,6 +161,7 @@ _BOUNDS: Mapping[Bound, str] = MappingProxyType(
         Bound.THREE_BODY: _("three-body loss: a tenth less of it leaves {gain} more atoms"),
         Bound.HEATING: _("heating: a tenth less of it leaves {gain} more atoms"),
         Bound.COLLISIONS: _("slow collisions: a tenth more of them leaves {gain} more atoms"),
+        Bound.PASSENGER: _("the passenger's heat: a tenth fewer passengers leave {gain} more atoms"),
         Bound.TIME: _("the time limit: a tenth more time leaves {gain} more atoms"),
         Bound.SPEED: _("the speed limit of the control: a tenth more leaves {gain} more atoms"),
     }
@@ -349,9 +350,15 @@ def design_sentence(found: DesignAnswer) -> str:
             )
     else:
         template = _("Most atoms reach {aim} where {control} moves so that the truncation parameter stays at {held}.")
-    if found.answer.passenger is not None:
-        rest = _("η is chosen for the first species alone; what the ramp does has the passenger in it.")
-        template = f"{template} {rest}"
+    passenger = found.answer.passenger
+    if passenger is not None:
+        counted = _("The heat of the passenger is counted")
+        if found.design.passenger is None:
+            counted = _("η is chosen for the first species alone")
+        ratio = _("T/Tc") if passenger.run.passenger.gas.bosons else _("T/TF")
+        end = number(passenger.passenger_reduced_temperature)
+        rest = _("the passenger ends at {ratio} = {end}").format(ratio=ratio, end=end)
+        template = f"{template} {counted}; {rest}."
     others = ", ".join(found.others)
     return template.format(control=found.control.label, aim=goal, held=held.removesuffix(","), others=others)
 

@@ -28,7 +28,7 @@ _HOME = {
     "Move": "ramps",
     "Target": "evaporation_target",
     "evaporate": "evaporation",
-    "Passenger": "sympathetic",
+    "Passenger": "passenger",
     "evaporate_with_passenger": "sympathetic",
     "length_between": "pair_scattering",
     "design_ramp": "ramp_design",

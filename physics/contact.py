@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -14,7 +15,7 @@ from physics.evaporation_rates import CloudNow
 from physics.interspecies import PairCollisions
 from physics.overlap import inverse_stiffness, overlap_of, sag
 from physics.spline import Spline
-from physics.stage_trap import StageTrap, TrapNow
+from physics.stage_trap import TrapNow
 from physics.trap_path import TrapPoint
 
 
@@ -38,11 +39,11 @@ class Placement:
 
     Parameters
     ----------
+    places, points : along the stretch, and the trap there.
     vertical : index of the axis along which atoms sag in a trap that says only its frequencies; None: in none.
     """
 
-    def __init__(self, trap: StageTrap, vertical: int | None) -> None:
-        places, points = trap.places, trap.points
+    def __init__(self, places: Floats, points: Sequence[TrapPoint], vertical: int | None) -> None:
         if len(places) > 1 and places[1] < places[0]:
             places, points = places[::-1], points[::-1]
         # What the controls do to the mean frequency is known between the points; the rest hardly changes.

@@ -149,12 +149,19 @@ class Kinetics:
 
     def cloud_in(self, trap: TrapNow, atoms: float, energy: float) -> CloudNow:
         """The same in the trap as it is at one time."""
+        found = self.cloud_or_none(trap, atoms, energy)
+        if found is None:
+            raise OutOfRange
+        return found
+
+    def cloud_or_none(self, trap: TrapNow, atoms: float, energy: float) -> CloudNow | None:
+        """The same; None where the trap cannot hold so much energy, or hardly."""
         averages = self.trap.averages(trap, energy / atoms / trap.depth)
         if averages is None:
-            raise OutOfRange
+            return None
         eta = math.exp(averages.log_truncation)
         if not LOWEST_TRUNCATION <= eta < 1e20:
-            raise OutOfRange
+            return None
         kT = trap.depth / eta
         density = atoms / (trap.level_volume * math.exp(averages.log_number))
         temperature = kT / boltzmann

@@ -11,7 +11,9 @@ Reference
 from __future__ import annotations
 
 import math
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
+from typing import NamedTuple
 
 import numpy as np
 
@@ -71,8 +73,10 @@ class Limits:
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Line:
-    """A trap along the range of one control, the others where they stand."""
+    """A trap along the range of one control, the others where they stand: at some places, and between them."""
 
+    places: Floats
+    points: tuple[TrapPoint, ...]
     curve: TrapCurve
     control: Control
     logarithmic: bool
@@ -105,23 +109,38 @@ def line_of(path: TrapPath, control: Control, limits: Limits) -> Line:
     logarithmic = low > 0.0
     ends = (math.log(low), math.log(high)) if logarithmic else (low, high)
     places = np.linspace(*ends, points_between(path.nodes, low, high))
-    # Settings at which the trap holds nothing end the range, on the side of the start that they are on.
-    points: list[TrapPoint | None] = []
-    for place in places.tolist():
-        point = path.at({**standing, control: math.exp(place) if logarithmic else place})
-        points.append(point if point.depth is not None else None)
-    here = int(np.argmin(np.abs(places - (math.log(start) if logarithmic else start))))
-    first = here
-    while first > 0 and points[first - 1] is not None:
-        first -= 1
-    last = here
-    while last < len(points) - 1 and points[last + 1] is not None:
-        last += 1
-    held = [point for point in points[first : last + 1] if point is not None]
+
+    def point(place: float) -> TrapPoint:
+        return path.at({**standing, control: math.exp(place) if logarithmic else place})
+
+    held, points = held_along(places, point, math.log(start) if logarithmic else start)
     if len(held) < 2:
         raise ValueError(f"the trap holds nothing along the range of {control.label}")
-    curve = TrapCurve(places[first : last + 1], held)
-    return Line(curve=curve, control=control, logarithmic=logarithmic, start=start)
+    return Line(
+        places=held,
+        points=points,
+        curve=TrapCurve(held, points),
+        control=control,
+        logarithmic=logarithmic,
+        start=start,
+    )
+
+
+def held_along(
+    places: Floats, point: Callable[[float], TrapPoint], start: float
+) -> tuple[Floats, tuple[TrapPoint, ...]]:
+    """The places around a start at which a trap holds something, and the trap there: a setting at which it holds
+    nothing ends the range, on the side of the start that it is on."""
+    points = [point(place) for place in places.tolist()]
+    held = [one.depth is not None for one in points]
+    here = int(np.argmin(np.abs(places - start)))
+    first = last = here
+    while first > 0 and held[first - 1]:
+        first -= 1
+    while last < len(points) - 1 and held[last + 1]:
+        last += 1
+    kept = slice(first, last + 1) if held[here] else slice(0, 0)
+    return places[kept], tuple(points[kept])
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -141,7 +160,7 @@ class HeldRun:
     law : Law
     reached : bool. Whether the target was reached.
     time : float. [s] atoms, energy : at the end. place : of the control.
-    steps : the solution: ln N, ln E, place.
+    steps : the solution: ln N, ln E, place; and whatever else is carried along.
     speed_limited, at_end : share of the time at the largest speed, and at an end of the range. [1]
     """
 
@@ -156,7 +175,7 @@ class HeldRun:
     at_end: float
 
 
-class _Still:
+class Still:
     """A line as a moving trap, for the kinetics; its place is handed over with the cloud."""
 
     def __init__(self, curve: TrapCurve) -> None:
@@ -170,33 +189,79 @@ class _Still:
         return self.curve.averages(now, share)
 
 
+class Moved(NamedTuple):
+    """How a held cloud changes: d ln N/dt, d ln E/dt, the speed of the place, and what limits that: 0 nothing, 1 a
+    speed, 2 an end of the range. [1/s]"""
+
+    atoms: float
+    energy: float
+    speed: float
+    limit: int
+
+
+def growth(kinetics: Kinetics, cloud: CloudNow) -> tuple[float, float]:
+    """d ln N/dt and d ln E/dt. [1/s]"""
+    lost, gained = kinetics.rates(cloud)
+    return -sum(lost), sum(gained) * cloud.atoms / cloud.energy
+
+
+def cloud_at(curve: TrapCurve, place: float, atoms: float, temperature: float) -> tuple[float, float]:
+    """ln N and ln E of a cloud at a place."""
+    trap = curve.at(place, 0.0)
+    eta = trap.depth / (boltzmann * temperature)
+    low, high = 1e-9, trap.highest * (1.0 - 1e-9)
+    # The table is inverted by halving; it is asked for once a design.
+    for _ in range(200):
+        share = math.sqrt(low * high)
+        averages = curve.averages(trap, share)
+        if averages is None or averages.log_truncation < math.log(eta):
+            high = share
+        else:
+            low = share
+    return math.log(atoms), math.log(atoms * trap.depth * math.sqrt(low * high))
+
+
 class HeldKinetics:
     """The kinetics with the place of the control as a third variable."""
 
     def __init__(self, gas: Gas, losses: Losses, line: Line, limits: Limits) -> None:
-        self.kinetics = Kinetics(gas, losses, _Still(line.curve))
+        self.kinetics = Kinetics(gas, losses, Still(line.curve))
         self.line, self.limits = line, limits
-        self.gas = gas
+        self.gas, self.losses = gas, losses
+        self.low = line.curve.low
         self.first_depth = line.curve.at(line.place(line.start), 0.0).depth
+
+    def eased(
+        self, *, gas: Gas | None = None, losses: Losses | None = None, limits: Limits | None = None
+    ) -> HeldKinetics:
+        """The same along the same line with other atoms, losses or limits."""
+        return HeldKinetics(gas or self.gas, losses or self.losses, self.line, limits or self.limits)
+
+    def with_lighter_load(self, values: Floats, factor: float) -> Floats | None:
+        """A start with fewer atoms of whatever else this gas carries along; None where there is nothing."""
+        return None
 
     def goal(self, law: Law, depth: float) -> float:
         """Truncation parameter to hold at a depth, not below `SHALLOWEST`."""
         return max(law.start + law.drift * math.log10(self.first_depth / depth), SHALLOWEST)
 
-    def moved(self, law: Law, log_atoms: float, log_energy: float, place: float) -> tuple[CloudNow, float, int]:
-        """The cloud, the speed of the place, and what limits it: 0 nothing, 1 a speed, 2 an end of the range."""
-        curve = self.line.curve
-        atoms, energy = math.exp(log_atoms), math.exp(log_energy)
-        trap = curve.at(place, -1.0)
-        cloud = self.kinetics.cloud_in(trap, atoms, energy)
+    def cloud(self, values: Sequence[float]) -> CloudNow:
+        """The cloud where the place moves at -1."""
+        log_atoms, log_energy, place = values[:3]
+        if not (abs(log_atoms) < 700.0 and abs(log_energy) < 700.0):
+            raise OutOfRange
+        trap = self.line.curve.at(place, -1.0)
+        return self.kinetics.cloud_in(trap, math.exp(log_atoms), math.exp(log_energy))
+
+    def moved(self, law: Law, cloud: CloudNow) -> Moved:
+        """How the place moves for a cloud that is told where it moves at -1."""
+        trap, place = cloud.trap, cloud.trap.place
         per_place = -trap.depth_rate
-        mean = energy / atoms
-        lost, gained = self.kinetics.rates(cloud)
-        still = cloud._replace(trap=curve.at(place, 0.0))
-        lost_still, gained_still = self.kinetics.rates(still)
+        at_rest = growth(self.kinetics, cloud._replace(trap=trap.moving(0.0)))
+        moving = growth(self.kinetics, cloud)
         # Growth of ln(E/N), at rest, and by moving one unit of ln(depth) down.
-        rest = sum(gained_still) / mean + sum(lost_still)
-        down = (sum(gained) / mean + sum(lost) - rest) / max(per_place, 1e-12)
+        rest = at_rest[1] - at_rest[0]
+        down = (moving[1] - moving[0] - rest) / max(per_place, 1e-12)
         goal = self.goal(law, trap.depth)
         retherm = RETHERMALISATION_COLLISIONS / cloud.collision_rate if cloud.collision_rate > 0.0 else math.inf
         largest = self.limits.depth_change / retherm
@@ -214,42 +279,28 @@ class HeldKinetics:
             if -speed > fastest:
                 speed, limit = -fastest, 1
         # The control comes to rest at the end of its range, not at once, so that the solution has no corner.
-        left = (place - curve.low) / _STOPPING
+        left = (place - self.low) / _STOPPING
         if left < 1.0:
-            return cloud, speed * max(left, 0.0), 2
-        return cloud, speed, limit
+            speed, limit = speed * max(left, 0.0), 2
+        # Work and spilling go as the speed, in one direction.
+        atoms, energy = (still - speed * (one - still) for still, one in zip(at_rest, moving, strict=True))
+        return Moved(atoms, energy, speed, limit)
 
-    def derivatives(self, law: Law, values: Floats) -> list[float]:
-        log_atoms, log_energy, place = (float(v) for v in values)
-        if not (abs(log_atoms) < 700.0 and abs(log_energy) < 700.0):
-            raise OutOfRange
-        cloud, speed, _ = self.moved(law, log_atoms, log_energy, place)
-        cloud = cloud._replace(trap=self.line.curve.at(place, speed))
-        lost, gained = self.kinetics.rates(cloud)
-        return [-sum(lost), sum(gained) * cloud.atoms / cloud.energy, speed]
+    def derivatives(self, law: Law, values: Sequence[float]) -> list[float]:
+        """Of the variables of `start`, at the speed that the law asks for."""
+        return list(self.moved(law, self.cloud(values))[:3])
 
     def start(self, atoms: float, temperature: float) -> Floats:
         """ln N, ln E and place of a cloud where the control stands."""
         place = self.line.place(self.line.start)
-        trap = self.line.curve.at(place, 0.0)
-        eta = trap.depth / (boltzmann * temperature)
-        low, high = 1e-9, trap.highest * (1.0 - 1e-9)
-        # The table is inverted by halving; it is asked for once a design.
-        for _ in range(200):
-            share = math.sqrt(low * high)
-            averages = self.line.curve.averages(trap, share)
-            if averages is None or averages.log_truncation < math.log(eta):
-                high = share
-            else:
-                low = share
-        return np.array([math.log(atoms), math.log(atoms * trap.depth * math.sqrt(low * high)), place])
+        return np.array([*cloud_at(self.line.curve, place, atoms, temperature), place])
 
     def run(self, law: Law, values: Floats, target: Target, time: float, tolerance: float = 1e-6) -> HeldRun:
         """From a cloud to the target, or as far as it goes in the time."""
         integrator = Integrator(
-            derivatives=lambda t, y: self.derivatives(law, y),
+            derivatives=lambda t, y: self.derivatives(law, y.tolist()),
             tolerance=tolerance,
-            scales=np.ones(3),
+            scales=np.ones(len(values)),
             smallest=1e-9 * time,
         )
         steps: list[Step] = []
@@ -268,7 +319,7 @@ class HeldKinetics:
                 if step is None:
                     break
                 steps.append(step)
-                limit = self.moved(law, *(float(v) for v in step.finish))[2]
+                limit = self.moved(law, self.cloud(step.finish.tolist())).limit
                 if missing(step.end, step.finish) <= 0.0:
                     reached = True
                     now = step.crossing(missing)

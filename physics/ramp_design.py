@@ -16,6 +16,7 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass, field, replace
 from enum import Enum
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
@@ -25,9 +26,13 @@ from physics.evaporation_target import Target
 from physics.gas import Gas
 from physics.held_truncation import SLOWEST_TIME, HeldKinetics, HeldRun, Law, Limits, Line, line_of
 from physics.losses import Losses
+from physics.passenger import Passenger
 from physics.ramp_shapes import Shape
 from physics.ramps import Control, Move, Ramp, Stage
 from physics.trap_path import TrapPath
+
+if TYPE_CHECKING:
+    from physics.sympathetic import SympatheticCooling
 
 LOWEST_HELD, HIGHEST_HELD = 3.5, 14.0
 """Range of the truncation parameter that is searched."""
@@ -47,6 +52,7 @@ class Bound(Enum):
     THREE_BODY = "three-body loss"
     HEATING = "heating"
     COLLISIONS = "slow collisions"
+    PASSENGER = "heat of the passenger"
     TIME = "time limit"
     SPEED = "speed limit"
     RANGE = "range of the control"
@@ -86,6 +92,7 @@ class RampDesign:
     truncation, drift : the law that it follows. [1]
     reached : bool. Whether any run reached the target; where none did the ramp is that of the highest degeneracy.
     trade_off : TradeOff
+    passenger : SympatheticCooling or None. Both along that ramp, where there is a passenger.
     bounds : what binds: gain in ln N at the target for easing each by a tenth, the largest first; NaN where that is not
         told: of a range, and of all where the target is out of reach.
     """
@@ -96,6 +103,7 @@ class RampDesign:
     drift: float
     reached: bool
     trade_off: TradeOff
+    passenger: SympatheticCooling | None = None
     bounds: tuple[tuple[Bound, float], ...] = field(default_factory=tuple)
 
 
@@ -111,6 +119,7 @@ def design_ramp(
     limits: Limits | None = None,
     drift: bool = True,
     stages: int = 6,
+    passenger: Passenger | None = None,
     tick: Callable[[float], bool] | None = None,
 ) -> RampDesign:
     """Choose the truncation parameter, and with it the time, for most atoms at the target.
@@ -122,11 +131,13 @@ def design_ramp(
     limits : Limits
     drift : bool. Whether the truncation parameter may drift.
     stages : int. Of the ramp that comes back.
+    passenger : Passenger or None. A second gas, whose heat the first carries off; the range of the control ends where
+        it is not held any more. The aim stays most atoms of the first at its target.
     tick : called with the share that is done; False ends with `Cancelled`.
 
     Raises
     ------
-    ValueError : for atoms that do not collide, or what `line_of` refuses.
+    ValueError : for atoms that do not collide, what `line_of` refuses, or a passenger that is not held at the start.
     """
     limits, losses = limits or Limits(), losses or Losses()
     _ = gas.cold_cross_section
@@ -135,13 +146,20 @@ def design_ramp(
     if stages < 1:
         raise ValueError(f"a designed ramp needs one stage or more, got {stages}")
     line = line_of(path, control, limits)
-    search = _Search(HeldKinetics(gas, losses, line, limits), atoms, temperature, target, limits, tick)
+    held = HeldKinetics(gas, losses, line, limits)
+    if passenger is not None:
+        from physics.held_together import HeldTogether
+
+        held = HeldTogether(gas, losses, line, limits, passenger)
+    search = _Search(held, atoms, temperature, target, limits, tick)
     best = search.optimise(drift)
     bounds = _bounds(search, best, losses)
-    ramp, simulated = _as_ramp(search, best, path, stages, (gas, atoms, temperature, losses, target), limits)
+    case = _Case(gas, atoms, temperature, path, losses, target, passenger)
+    ramp, (simulated, together) = _as_ramp(search, best, stages, case, limits)
     return RampDesign(
         ramp=ramp,
         simulated=simulated,
+        passenger=together,
         truncation=best.law.start,
         drift=best.law.drift,
         reached=best.reached,
@@ -236,7 +254,7 @@ class _Search:
 def _bounds(search: _Search, best: HeldRun, losses: Losses) -> tuple[tuple[Bound, float], ...]:
     """Gain in ln N for easing each by a tenth, at the same law; of the time limit, by easing it at the best law."""
     held, found = search.held, {}
-    line, limits, gas = held.line, held.limits, held.gas
+    limits, gas = held.limits, held.gas
     if not best.reached:
         in_the_way = (
             (Bound.RANGE, best.at_end > _MUCH_OF_IT),
@@ -246,7 +264,7 @@ def _bounds(search: _Search, best: HeldRun, losses: Losses) -> tuple[tuple[Bound
         return tuple((bound, math.nan) for bound, binds in in_the_way if binds)
 
     def gain(gas: Gas, losses: Losses, limits: Limits, law: Law = best.law, longest: float = 0.0) -> float:
-        eased = HeldKinetics(gas, losses, line, limits)
+        eased = held.eased(gas=gas, losses=losses, limits=limits)
         run = eased.run(law, search.start, search.target, longest or search.longest)
         return math.log(run.atoms / best.atoms) if run.reached else -math.inf
 
@@ -270,6 +288,10 @@ def _bounds(search: _Search, best: HeldRun, losses: Losses) -> tuple[tuple[Bound
         dipolar_length=None if gas.dipolar_length is None else gas.dipolar_length * root,
     )
     found[Bound.COLLISIONS] = gain(faster, losses, limits)
+    fewer = held.with_lighter_load(search.start, less)
+    if fewer is not None:
+        run = held.run(best.law, fewer, search.target, search.longest)
+        found[Bound.PASSENGER] = math.log(run.atoms / best.atoms) if run.reached else -math.inf
     longer = search.longest * (1.0 + _EASED)
     # More time allows a higher truncation parameter: worth something only where the limit was in the way.
     steps = (0.1, 0.2, 0.4)
@@ -285,16 +307,34 @@ def _bounds(search: _Search, best: HeldRun, losses: Losses) -> tuple[tuple[Bound
     return tuple((bound, value) for bound, value in ordered if math.isnan(value) or value > 1e-4)
 
 
-def _as_ramp(
-    search: _Search,
-    best: HeldRun,
-    path: TrapPath,
-    stages: int,
-    start: tuple[Gas, float, float, Losses, Target],
-    limits: Limits,
-) -> tuple[Ramp, Evaporation]:
+class _Case(NamedTuple):
+    """What a designed ramp is simulated with."""
+
+    gas: Gas
+    atoms: float
+    temperature: float
+    path: TrapPath
+    losses: Losses
+    target: Target
+    passenger: Passenger | None
+
+    def run(self, ramp: Ramp) -> _Simulated:
+        gas, atoms, temperature, path, losses, target, passenger = self
+        if passenger is None:
+            return evaporate(gas, atoms, temperature, ramp, path, losses=losses, target=target), None
+        from physics.sympathetic import evaporate_with_passenger
+
+        both = evaporate_with_passenger(
+            gas, atoms, temperature, ramp, path, passenger, losses=losses, target=target
+        )  # fmt: skip
+        return both.coolant, both
+
+
+_Simulated = tuple[Evaporation, "SympatheticCooling | None"]
+
+
+def _as_ramp(search: _Search, best: HeldRun, stages: int, case: _Case, limits: Limits) -> tuple[Ramp, _Simulated]:
     """Stages through the course of the control, a little further than the target, cut where that is reached."""
-    gas, atoms, temperature, losses, target = start
     line = search.held.line
     times, places = _course(best)
     knots = _knots(times, places, stages)
@@ -307,14 +347,14 @@ def _as_ramp(
         if limits.time is not None:
             further = max(min(further, limits.time), last)
         slope = (line.place(values[-1]) - line.place(values[-2])) / (last - before)
-        place = max(line.place(values[-1]) + slope * (further - last), line.curve.low)
+        place = max(line.place(values[-1]) + slope * (further - last), search.held.low)
         ramp = _staged(line, [*knots[:-1], further], [*values[:-1], line.value(place)], limits)
-    simulated = evaporate(gas, atoms, temperature, ramp, path, losses=losses, target=target)
-    end = float(simulated.time[-1])
-    if simulated.reason.value == "target reached" and end < ramp.duration:
+    found = case.run(ramp)
+    end = float(found[0].time[-1])
+    if found[0].reason.value == "target reached" and end < ramp.duration:
         ramp = _cut(line, ramp, end * (1.0 + 1e-6))
-        simulated = evaporate(gas, atoms, temperature, ramp, path, losses=losses, target=target)
-    return ramp, simulated
+        found = case.run(ramp)
+    return ramp, found
 
 
 def _course(run: HeldRun) -> tuple[Floats, Floats]:

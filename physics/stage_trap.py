@@ -37,6 +37,17 @@ class TrapNow(NamedTuple):
         """d ln S/dt of the number of levels below the depth. [1/s]"""
         return 1.5 * self.depth_rate + self.volume_rate
 
+    def moving(self, speed: float) -> TrapNow:
+        """The same trap at another speed than the one, not 0, at which it moves."""
+        share = speed / self.speed
+        x, y, z = self.frequency_rates
+        return self._replace(
+            speed=speed,
+            depth_rate=share * self.depth_rate,
+            volume_rate=share * self.volume_rate,
+            frequency_rates=(share * x, share * y, share * z),
+        )
+
 
 class TrapCurve:
     """The trap between points along one line of its controls, a smooth function of the place on that line.

@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from app.answers.watched_path import Tick
     from app.plan import MoveChoice, Plan, StageChoice
     from physics.evaporation_target import Target
+    from physics.passenger import Passenger
     from physics.ramp_design import RampDesign
 
 CONDENSATION = 2.612
@@ -163,15 +164,19 @@ def _designed(plan: Plan, control: Control, since: str | None, drift: bool, tick
             raise PlanError(f"limits.time, {limits.time:g} s, is over where the measured cloud stands")
         limits = replace(limits, time=left)
     path, design_tick = start.path, None
+    passenger = _passenger(plan, control, start)
     if tick is not None:
         from app.answers.watched_path import Progress, WatchedPath
 
-        # The line of the control, then a few stages.
-        progress = Progress(tick=tick, surveys=3 * path.nodes, part=0.0 if plan.trap.harmonic else 0.7)
+        # The line of the control, then a few stages; for each species.
+        surveys = (3 if passenger is None else 6) * path.nodes
+        progress = Progress(tick=tick, surveys=surveys, part=0.0 if plan.trap.harmonic else 0.7)
         path, design_tick = WatchedPath(path=path, progress=progress), progress.rest
+        if passenger is not None:
+            passenger = replace(passenger, path=WatchedPath(path=passenger.path, progress=progress))
     design = design_ramp(
         gas_of(plan), start.atoms, start.temperature, path, control, target,
-        losses=losses_of(plan), limits=limits, drift=drift, tick=design_tick,
+        losses=losses_of(plan), limits=limits, drift=drift, passenger=passenger, tick=design_tick,
     )  # fmt: skip
     before = stages_before(plan, start)
     stages, answer = _rounded(plan, before, design, start, limits.time)
@@ -185,6 +190,22 @@ def _designed(plan: Plan, control: Control, since: str | None, drift: bool, tick
         answer=answer,
         others=tuple(one.beam for one in powers if one != control and one.beam),
     )
+
+
+def _passenger(plan: Plan, control: Control, start: RampStart) -> Passenger | None:
+    """The passenger whose heat the designed ramp carries off; None without one, and where the simulation of the ramp
+    leaves it out too, or the trap does not hold it where the control stands."""
+    if plan.passenger is None or start.measured is not None:
+        return None
+    from app.answers.sympathetic import passenger_in
+
+    try:
+        passenger, _ = passenger_in(plan)
+        path = passenger.path
+        held = path.at({one: value for one, value in path.standing.items() if not math.isnan(value)})
+    except ValueError:  # as the simulation says, in its own words
+        return None
+    return passenger if held.depth is not None and held.frequencies is not None else None
 
 
 def _rounded(

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from app.answers.ramp_start import RampStart
     from app.answers.watched_path import Tick
     from app.plan import Plan
+    from physics.passenger import Passenger
     from physics.ramps import Ramp
     from physics.sympathetic import SympatheticCooling
     from physics.trap_path import TrapPath
@@ -77,34 +78,21 @@ def sympathetic_answer(plan: Plan, tick: Tick | None = None) -> SympatheticAnswe
 def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> SympatheticAnswer:
     """The same from the start of a ramp. A trap of beams and coils is surveyed along it for both species; `tick` is
     told how far that is, and `Cancelled` raised where it says to stop."""
-    from physics.sympathetic import Passenger, evaporate_with_passenger
+    from physics.sympathetic import evaporate_with_passenger
 
-    own, between = passenger_plan(plan), between_of(plan)
-    if between.value is None:
-        assert between.reason is not None
-        raise PlanError(f"{between.reason.value}; give passenger.scattering_length")
     if start.measured is not None:
         raise PlanError(f'the passenger is not known at the time of the measured cloud "{start.measured.choice.label}"')
     if start.ramp is None or any(stage.transfer is not None for stage in start.ramp.stages):
         raise PlanError("a ramp that hands the cloud over to another trap is not computed with a second species")
     ramp, path = start.ramp, start.path
-    own_path, caveats = _path_of(own, ramp)
+    passenger, caveats = passenger_in(plan, tuple(_values_of_depth(ramp)))
+    own_path = passenger.path
     if tick is not None:
         from app.answers.watched_path import Progress, WatchedPath, surveys_along, watched_ramp
 
         progress = Progress(tick=tick, surveys=surveys_along(ramp, path) + surveys_along(ramp, own_path))
         ramp, path = watched_ramp(ramp, progress), WatchedPath(path=path, progress=progress)
-        own_path = WatchedPath(path=own_path, progress=progress)
-    gas, vertical = gas_of(own), vertical_of(plan)
-    passenger = Passenger(
-        gas=gas,
-        path=own_path,
-        atoms=own.cloud.atoms.value,
-        temperature=own.cloud.temperature.value,
-        scattering_length=between.value,
-        losses=losses_of(own),
-        vertical=None if vertical is None else vertical[0],
-    )
+        passenger = replace(passenger, path=WatchedPath(path=own_path, progress=progress))
     run = evaporate_with_passenger(
         gas_of(plan),
         start.atoms,
@@ -115,26 +103,56 @@ def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> S
         losses=losses_of(plan),
         target=target_of(plan),
     )
-    if gas.scattering_length is None and passenger.colliding is not gas:
-        caveats.append(MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_LENGTH_UNKNOWN, severity=Severity.NOTE))
-    if plan.trap.harmonic:
-        caveats.append(frequencies_caveat(plan))
+    between = between_of(plan)
     return SympatheticAnswer(
         plan=plan,
-        states=(state_of(plan), state_of(own)),
+        states=(state_of(plan), state_of(passenger_plan(plan))),
         run=run,
         between=between,
         caveats=gravest_first([*between_caveats(between), *caveats, *sympathetic_caveats(run)]),
     )
 
 
-def _path_of(own: Plan, ramp: Ramp) -> tuple[TrapPath, list[MixtureCaveat]]:
+def passenger_in(plan: Plan, depths: Sequence[float] = ()) -> tuple[Passenger, list[MixtureCaveat]]:
+    """The plan's passenger for the kinetics, and what it leaves out.
+
+    depths : [J] to which a ramp moves the depth by itself
+
+    Raises
+    ------
+    PlanError
+        The scattering length between the two is not known, or as of `passenger_of`.
+    """
+    from physics.passenger import Passenger
+
+    own, between = passenger_plan(plan), between_of(plan)
+    if between.value is None:
+        assert between.reason is not None
+        raise PlanError(f"{between.reason.value}; give passenger.scattering_length")
+    path, caveats = _path_of(own, depths)
+    gas, vertical = gas_of(own), vertical_of(plan)
+    passenger = Passenger(
+        gas=gas,
+        path=path,
+        atoms=own.cloud.atoms.value,
+        temperature=own.cloud.temperature.value,
+        scattering_length=between.value,
+        losses=losses_of(own),
+        vertical=None if vertical is None else vertical[0],
+    )
+    if gas.scattering_length is None and passenger.colliding is not gas:
+        caveats.append(MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_LENGTH_UNKNOWN, severity=Severity.NOTE))
+    if plan.trap.harmonic:
+        caveats.append(frequencies_caveat(plan))
+    return passenger, caveats
+
+
+def _path_of(own: Plan, depths: Sequence[float]) -> tuple[TrapPath, list[MixtureCaveat]]:
     """The passenger's trap. Of given frequencies the depth is that of the plan, and stays where a ramp moves the depth
     by itself: that cuts the first species."""
     from physics.trap_path import DEPTH, HarmonicPath
 
     path = path_of(own)
-    depths = list(_values_of_depth(ramp))
     if not isinstance(path, HarmonicPath):
         return path, []
     if path.trap.depth is None:

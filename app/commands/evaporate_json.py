@@ -196,6 +196,7 @@ def _design(found: DesignAnswer) -> dict[str, Any]:
         "truncation": design.truncation,
         "drift": design.drift,
         "bounds": [{"bound": bound.value, "gain": _finite(gain)} for bound, gain in design.bounds],
+        **_designed_passenger(found),
         "trade_off": {
             "truncation": _list(trade.truncation),
             "atoms": _list(trade.atoms),
@@ -208,6 +209,15 @@ def _design(found: DesignAnswer) -> dict[str, Any]:
         "ramp": [_stage_choice(stage) for stage in found.stages],
         "text": design_sentence(found),
     }
+
+
+def _designed_passenger(found: DesignAnswer) -> dict[str, Any]:
+    """Whether the heat of the passenger is in the design, and where it ends; nothing without one."""
+    passenger = found.answer.passenger
+    if passenger is None:
+        return {}
+    end = _finite(passenger.passenger_reduced_temperature)
+    return {"passenger_counted": found.design.passenger is not None, "passenger_reduced_temperature": end}
 
 
 def _stage_choice(stage: Any) -> dict[str, Any]:

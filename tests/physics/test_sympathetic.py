@@ -21,9 +21,10 @@ from physics.gas import Gas
 from physics.interspecies import coldest_temperature, common_temperature
 from physics.losses import Losses
 from physics.particles import Statistics
+from physics.passenger import Passenger
 from physics.ramp_shapes import Shape
 from physics.ramps import Control, Move, Ramp, Stage
-from physics.sympathetic import Passenger, SympatheticCooling, evaporate_with_passenger
+from physics.sympathetic import SympatheticCooling, evaporate_with_passenger
 from physics.transfer import Transfer
 from physics.trap_path import DEPTH, SCALE, HarmonicPath, QuadrupolePath, TrapPoint
 from physics.traps import HarmonicTrap
