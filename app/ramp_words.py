@@ -264,7 +264,7 @@ def _end(answer: RampAnswer) -> str:
             why = (
                 f": {run.explanation}" if run.explanation else _(", as the cloud is too hot for the depth that is left")
             )
-            return _("Holds the cloud for {time} only{why}; then {cloud} are left.").format(
+            return _("Holds the cloud for {time} only{why}; {cloud} are left until then.").format(
                 time=time, why=why, cloud=cloud
             )
 

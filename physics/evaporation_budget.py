@@ -56,8 +56,8 @@ class StageSummary:
     begin, end : float. [s]
     first, last : rows of the columns at its ends.
     budget : Budget of the stage, its transfer and jumps included.
-    efficiency : gamma = -dlnD/dlnN of the classical peak phase-space density, over the stage. [1]
-    cooling : alpha = dlnT/dlnN over the stage. [1]
+    efficiency : gamma = -dlnD/dlnN of the classical peak phase-space density, over the stage after its transfer. [1]
+    cooling : alpha = dlnT/dlnN over the same. [1]
         Both are NaN where less than a thousandth of the atoms is lost.
     """
 

@@ -113,6 +113,7 @@ class Track:
         self.count = 0
         self.jumped = False
         self._farthest = math.nan
+        self._handed: float | None = None  # atoms that the trap of this stage has caught
         self._begun = (math.nan, math.nan)
         self._parts: list[tuple[Floats, int, Rows, dict[Control, Floats]]] = []
         self._summaries: list[StageSummary] = []
@@ -144,11 +145,15 @@ class Track:
                 self._farthest = float(np.fmax(self._farthest, distance_in_radii(self.gas.mass, temperature, old, new)))
         atoms = self.atoms * found.share
         if atoms < fewest or math.isnan(found.energy):
-            self.explanation = "the new trap does not hold the cloud"
+            slow = transfer is not None and not transfer.sudden
+            self.explanation = _NO_ROOM if slow else _NOT_CAUGHT
+            return False
+        if found.energy >= new.curve.highest_energy * new.depth:
+            self.explanation = f"what the new trap catches, {found.share:.2g} of the atoms, is too hot for its depth"
             return False
         energy = atoms * found.energy
         self.ledger.add_transfer(self.atoms - atoms, energy - self.energy)
-        self.atoms, self.energy, self.jumped = atoms, energy, True
+        self.atoms, self.energy, self.jumped, self._handed = atoms, energy, True, atoms
         return True
 
     def _temperature(self, point: TrapPoint) -> float:
@@ -188,7 +193,8 @@ class Track:
         self.count += len(times)
 
     def mark(self) -> Mark:
-        """Where it stands."""
+        """Where it stands, before a stage."""
+        self._handed = None
         return Mark(ledger=self.ledger.copy(), atoms=self.atoms, energy=self.energy, count=self.count)
 
     def summarise(self, placed: Placed, before: Mark, end: float) -> None:
@@ -199,9 +205,10 @@ class Track:
             np.concatenate([getattr(rows, name) for _, _, rows, _ in self._parts])
             for name in ("temperature", "classical_phase_space_density")
         )
-        start = max(before.count - 1, 0)
+        # What a transfer does to the cloud is no evaporation.
+        start = max(before.count - 1, 0) if self._handed is None else before.count
         gamma, alpha = efficiencies(
-            (before.atoms, self.atoms),
+            (before.atoms if self._handed is None else self._handed, self.atoms),
             (float(temperature[start]), float(temperature[-1])),
             (float(density[start]), float(density[-1])),
         )
@@ -243,6 +250,8 @@ class Track:
         )
 
 
+_NO_ROOM = "the new trap is too shallow for what the cloud becomes in it"
+_NOT_CAUGHT = "the new trap catches none of the cloud"
 _MANY = len(ATOM_PROCESSES)
 VARIABLES = 2 + _MANY + len(ENERGY_PROCESSES)
 """Of one gas: ln N, ln E and its budgets."""

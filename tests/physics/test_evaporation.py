@@ -7,6 +7,7 @@ in `test_held_truncation`, integrations by quadratures in `test_evaporation_rate
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
@@ -163,6 +164,33 @@ def test_a_transfer_into_another_trap(sudden: bool) -> None:
     factor = 5.0 / 8.0 if sudden else 0.5
     assert run.temperature[-1] == pytest.approx(factor * 1e-5, rel=1e-5)
     assert run.rows.frequencies[-1, 0] == pytest.approx(250.0, rel=1e-12)
+    assert_balanced(run)
+    # All are caught, and what the transfer does to density and temperature is no evaporation.
+    kept, handed = run.stages
+    assert math.isnan(kept.caught)
+    assert handed.caught == pytest.approx(1.0, abs=1e-9)
+    assert math.isnan(handed.efficiency)
+
+
+@pytest.mark.parametrize(
+    ("transfer", "why"),
+    [
+        (Transfer(path=trap(), displacement=(1e-2, 0.0, 0.0)), "the new trap catches none of the cloud"),
+        (Transfer(path=trap(1e-7), sudden=False), "the new trap is too shallow for what the cloud becomes in it"),
+        (
+            Transfer(path=trap(), displacement=(7.2e-5, 0.0, 0.0)),
+            r"what the new trap catches, 0\.\d+ of the atoms, is too hot for its depth",
+        ),
+    ],
+)
+def test_a_trap_that_does_not_hold_what_it_is_handed(transfer: Transfer, why: str) -> None:
+    run = evaporate(
+        APART, 1e6, 5e-6, Ramp(stages=(Stage(duration=0.1), Stage(duration=0.1, transfer=transfer))), trap()
+    )
+    assert run.reason is EndReason.NOT_TRAPPED
+    assert re.fullmatch(why, run.explanation)
+    assert run.time[-1] == pytest.approx(0.1)
+    assert len(run.stages) == 1
     assert_balanced(run)
 
 
