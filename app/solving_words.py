@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 from app.answers.trap_controls import Control, ControlKind, Until
 from app.language import translate as _
+from app.trap_sentences import control_text
 from app.trap_words import depth_text, frequencies_text, reason_not_trapped, sag_text
 
 if TYPE_CHECKING:
@@ -44,13 +45,21 @@ def solving_hint(control: Control, until: Until) -> str:
 
 
 def change_lines(solved: SolvedTrap) -> list[str]:
-    """A line for each number that changes: its name, what it was, what it becomes."""
-    return [
+    """A line for each number that changes: its name, what it was, what it becomes; and one for what does it too."""
+    lines = [
         _("{name}: {before} → {after}").format(
             name=_begun(change.name), before=_text(change.before), after=_text(change.after)
         )
         for change in solved.changes
     ]
+    if solved.also is not None:
+        lines.append(also_line(solved.control, solved.also))
+    return lines
+
+
+def also_line(control: Control, value: float) -> str:
+    """That another value of a control [SI] does what is wanted too."""
+    return _("{value} does it too; the nearer one is taken.").format(value=control_text(control, value))
 
 
 def what_changes(solved: SolvedTrap) -> str:

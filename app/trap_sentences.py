@@ -47,10 +47,10 @@ def control_name(control: Control) -> str:
     }[control.kind]
 
 
-def control_text(control: Control, value: float) -> str:
+def control_text(control: Control, value: float, digits: int = 5) -> str:
     """A value of the control [SI], with its unit."""
     units = CONTROL_UNITS[control.kind]
-    return format_quantity(value, best_unit(value, units), digits=5)
+    return format_quantity(value, best_unit(value, units), digits=digits)
 
 
 def trap_sentence(answer: TrapAnswer, kelvin: float) -> str:

@@ -71,6 +71,10 @@ _NOTES = MappingProxyType(
             "For beam {beam} the polarizability is one published for a wavelength {share} away. A measured frequency "
             "can calibrate the beam."
         ),
+        NoteKind.TIGHT_FOCUS: _(
+            "Beam {beam} is focused to {number} wavelengths, so tightly that its light is not quite that of a Gaussian "
+            "beam."
+        ),
         NoteKind.INFINITE_ARMS: _("The volume curve ends at {share} of the depth: above, the volume has no end."),
         NoteKind.WALL: _("Nothing but the walls, taken {length} away, limits this trap: its depth is a guess."),
         NoteKind.ARM_END: _("The way out is the end of a beam's arm, as far as it is followed."),
@@ -249,6 +253,7 @@ def note_text(note: Note) -> str:
     return _NOTES[note.kind].format(
         beam=note.beam,
         share=percent(value),
+        number=number(value, 2),
         length=lengths.get(note.kind, number)(value),
         frequency=_frequency(value) if note.kind in frequencies else "",
     )

@@ -120,6 +120,7 @@ CAVEAT_IDS = MappingProxyType(
         " beams and coils: too large to be followed to first order",
         "blue_light": "relative detuning from the nearest line: the light of a beam (subject) repels the atoms",
         "near_resonance": "relative detuning: the light of a beam (subject) is close to a line",
+        "tight_focus": "waist over wavelength: a beam (subject) is focused too tightly for a Gaussian beam",
         "published_polarizability": "relative distance of the wavelength of a beam (subject) from the published one",
         "wall": "distance [m] of the wall, which alone limits the trap",
         "arm_end": "energy [J] of the way out, the end of a beam's arm as far as it is followed",

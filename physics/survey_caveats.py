@@ -19,6 +19,7 @@ _NOTES = MappingProxyType(
         NoteKind.BLUE_LIGHT: Severity.NOTE,
         NoteKind.NEAR_RESONANCE: Severity.WARNING,
         NoteKind.PUBLISHED_POLARIZABILITY: Severity.NOTE,
+        NoteKind.TIGHT_FOCUS: Severity.WARNING,
         NoteKind.WALL: Severity.WARNING,
         NoteKind.ARM_END: Severity.NOTE,
         NoteKind.LINEAR_ZEEMAN: Severity.NOTE,

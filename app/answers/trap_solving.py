@@ -43,13 +43,16 @@ class Change:
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class SolvedTrap:
-    """What meets a wish: plans before and after, the trap in both, and the quantities that change."""
+    """What meets a wish: plans before and after, the trap in both, and the quantities that change; and another value
+    of the control [SI] that meets it too."""
 
+    control: Control
     before: Plan
     after: Plan
     trap_before: TrapAnswer
     trap_after: TrapAnswer
     changes: tuple[Change, ...]
+    also: float | None = None
 
 
 def solvable(trap: TrapChoice) -> dict[Control, tuple[Until, ...]]:
@@ -68,7 +71,8 @@ def solve_trap(plan: Plan, wish: Wish) -> SolvedTrap:
     Raises ValueError, in one sentence, where there is none, or where the wish is not complete.
     """
     before = trap_answer(plan)
-    exact = solve_until(plan, wish.control, wish.until, wish.number).answer.trap
+    solved = solve_until(plan, wish.control, wish.until, wish.number)
+    exact = solved.answer.trap
     changes, rounded = [], exact
     for change in _changes(plan.trap, exact, up=wish.until is Until.HOLDS):
         changes.append(change.told)
@@ -76,7 +80,13 @@ def solve_trap(plan: Plan, wish: Wish) -> SolvedTrap:
     after = replace(plan, trap=rounded)
     prepare_trap(after)
     return SolvedTrap(
-        before=plan, after=after, trap_before=before, trap_after=trap_answer(after), changes=tuple(changes)
+        control=wish.control,
+        before=plan,
+        after=after,
+        trap_before=before,
+        trap_after=trap_answer(after),
+        changes=tuple(changes),
+        also=solved.also,
     )
 
 

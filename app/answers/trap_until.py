@@ -9,8 +9,10 @@ from app.answers.trap import TrapAnswer, trap_of
 from app.answers.trap_controls import OF_BEAM, Control, ControlKind, Until
 from app.plan_field import PlanError
 from app.trap_choices import BEAM_FIELDS, COILS_FIELDS, CoilsChoice, TrapChoice
-from app.trap_sentences import control_name
+from app.trap_sentences import control_name, control_text
 from app.units import Quantity, best_unit, format_quantity
+from app.words import number, temperature
+from physics.constants import boltzmann
 from physics.species import load_species
 from physics.traps import Coils, Trap
 
@@ -28,12 +30,14 @@ _AXES = {Until.FREQUENCY_X: 0, Until.FREQUENCY_Y: 1, Until.FREQUENCY_Z: 2}
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class SolvedControl:
-    """Where a control must stand, in SI, and where it stood (None: it was not there); and the trap with it."""
+    """Where a control must stand, in SI, and where it stood (None: it was not there); and the trap with it. `also`:
+    where else, on the other side of where it stood."""
 
     control: Control
     before: float | None
     value: float
     answer: TrapAnswer
+    also: float | None = None
 
 
 def solve_until(plan: Plan, control: Control, until: Until, target: float | None = None) -> SolvedControl:
@@ -48,7 +52,7 @@ def solve_until(plan: Plan, control: Control, until: Until, target: float | None
     Raises ValueError, in one sentence, for a wish that cannot be met, a control that the trap does not have, or a trap
     that is given by its frequencies.
     """
-    from physics.traps.solving import lowest_power, lowest_value, solve
+    from physics.traps.solving import NoSolution, lowest_power, lowest_value, solve
     from physics.traps.survey import survey
 
     trap = trap_of(plan)
@@ -58,24 +62,58 @@ def solve_until(plan: Plan, control: Control, until: Until, target: float | None
     if until is Until.LEVITATES:
         return _levitated(plan, trap, state, control)
     _require(trap, control)
-    before, name = control.now(trap), f"{control_name(control)} in {control_unit(control) or 'times what they are'}"
+    before, name = control.now(trap), control_name(control)
+    also: float | None = None
 
     def change(value: float) -> Trap:
         return control.turned(trap, value)
+
+    def tell(value: float) -> str:
+        return control_text(control, value, digits=3)
 
     if until is Until.HOLDS:
         if control.kind is ControlKind.POWER:
             value = lowest_power(trap, state, control.beam)
         else:
-            value = lowest_value(change, before, state, control=name)
+            value = lowest_value(change, before, state, control=name, tell=tell)
         found = survey(change(value * (1.0 + _OVER_EDGE)), state)
     else:
         if target is None:
             raise PlanError(f"{until.value} needs a value")
-        solved = solve(change, _reading(until), target, before, state, control=name)
-        value, found = solved.value, solved.survey
+        likely = _likely(control, state)
+        try:
+            solved = solve(change, _reading(until), target, before, state, control=name, tell=tell, likely=likely)
+        except NoSolution as none:
+            raise PlanError(f"{none}; {_closest(until, tell, none.closest)}") from none
+        value, found, also = solved.value, solved.survey, solved.also
     answer = TrapAnswer(state=state, trap=_with(plan.trap, control, before, value), survey=found)
-    return SolvedControl(control=control, before=before, value=value, answer=answer)
+    return SolvedControl(control=control, before=before, value=value, answer=answer, also=also)
+
+
+def _likely(control: Control, state: State) -> tuple[float, ...]:
+    """Where a trap may be deepest within a narrow range: levitated atoms."""
+    from physics.traps.solving import levitation_gradient
+
+    if control.kind is not ControlKind.LEVITATION:
+        return ()
+    try:
+        return (levitation_gradient(state),)
+    except ValueError:
+        return ()
+
+
+def _closest(until: Until, tell: Callable[[float], str], closest: tuple[float, float] | None) -> str:
+    """What comes closest to a wish that cannot be met, as a clause."""
+    if closest is None:
+        return "nothing is held there" if until is Until.DEPTH else "the trap has no frequencies there"
+    value, reading = closest
+    return f"the closest is {_reading_text(until, reading)}, with {tell(value)}"
+
+
+def _reading_text(until: Until, value: float) -> str:
+    if until is Until.DEPTH:
+        return temperature(value / boltzmann)
+    return f"{number(value, 4)} Hz"
 
 
 def _levitated(plan: Plan, trap: Trap, state: State, control: Control) -> SolvedControl:

@@ -51,17 +51,19 @@ class _Wish:
 
 def _wish(text: str) -> _Wish:
     name, _, value = text.partition("=")
-    until = {until.value: until for until in Until}.get(name.strip())
+    # Quotes that a shell has left around the value, and capitals, are let pass.
+    value = value.strip().strip("\"'").strip()
+    until = {until.value: until for until in Until}.get(name.strip().lower().replace("-", "_"))
     if until is None:
         names = ", ".join(f"{known.value}=…" if known.wants_number else known.value for known in Until)
         raise argparse.ArgumentTypeError(f'"{text}" is no wish; use one of {names}')
-    if until.wants_number != bool(value.strip()):
+    if until.wants_number != bool(value):
         raise argparse.ArgumentTypeError(
             f'{until.value} needs a value, such as {until.value}="{_EXAMPLES[until]}"'
             if until.wants_number
             else f"{until.value} takes no value"
         )
-    return _Wish(until.value, value.strip())
+    return _Wish(until.value, value)
 
 
 _EXAMPLES = {until: "10 uK" if until is Until.DEPTH else "100 Hz" for until in Until}
@@ -127,6 +129,7 @@ def _solution(solved: SolvedControl | None, args: argparse.Namespace) -> dict[st
             "until": args.until.name,
             "wanted": args.until.text or None,
             "value": solved.value,
+            "also": solved.also,
             "unit": control_unit(solved.control) or "1",
             "before": solved.before,
         }
@@ -134,12 +137,14 @@ def _solution(solved: SolvedControl | None, args: argparse.Namespace) -> dict[st
 
 
 def solution_text(solved: SolvedControl) -> str:
-    """Where the control must stand, and where it stood, in one line."""
+    """Where the control must stand, and where it stood, in one line; and where else it could."""
+    from app.solving_words import also_line
     from app.trap_sentences import control_name, control_text
 
     name = control_name(solved.control)
     stood = "" if solved.before is None else f" (it was {control_text(solved.control, solved.before)})"
-    return f"{name[0].upper()}{name[1:]}: {control_text(solved.control, solved.value)}{stood}"
+    line = f"{name[0].upper()}{name[1:]}: {control_text(solved.control, solved.value)}{stood}"
+    return line if solved.also is None else f"{line}\n{also_line(solved.control, solved.also)}"
 
 
 def trap_body(answer: TrapAnswer) -> dict[str, Any]:

@@ -1,4 +1,9 @@
-"""What about a trap deserves a word: an id and the number that raised it, SI. The sentences are written elsewhere."""
+"""What about a trap deserves a word: an id and the number that raised it, SI. The sentences are written elsewhere.
+
+Reference
+---------
+[1] M. Lax, W. H. Louisell, W. B. McKnight, Phys. Rev. A 11, 1365 (1975). Recalled.
+"""
 
 from __future__ import annotations
 
@@ -20,12 +25,18 @@ ZEEMAN_SHOWN = 5e6
 splitting of an alkali atom, 228 MHz of 6Li."""
 
 
+TIGHT = 2.0
+"""Waist over wavelength below which the formulas of a Gaussian beam are off by more than about 2 %: they are the first
+term in powers of (wavelength/(pi waist))^2 [1]."""
+
+
 class NoteKind(Enum):
     """What is said of a trap; in [brackets] the number that comes with it."""
 
     BLUE_LIGHT = "light of a beam repels the atoms [relative detuning from the nearest line]"
     NEAR_RESONANCE = "light of a beam is close to a line [relative detuning]"
     PUBLISHED_POLARIZABILITY = "a polarizability is that published for a nearby wavelength [relative distance]"
+    TIGHT_FOCUS = "a beam is focused so tightly that it is no Gaussian beam any more [waist over wavelength]"
     INFINITE_ARMS = "the volume curve ends below the depth, where the volume is infinite [share of the depth]"
     WALL = "nothing but the wall limits the trap [distance of the wall, m]"
     ARM_END = "the way out leads to the end of a beam's arm, as far as it is followed [energy, J]"
@@ -80,3 +91,7 @@ def _light_notes(potential: Potential) -> Iterator[Note]:
             yield Note(kind=NoteKind.NEAR_RESONANCE, value=light.detuning, beam=name)
         if light.source is PolarizabilitySource.PUBLISHED and light.distance is not None:
             yield Note(kind=NoteKind.PUBLISHED_POLARIZABILITY, value=light.distance, beam=name)
+    for beam in potential.beams:
+        waist = float(np.min(beam.waists)) / beam.wavelength
+        if waist < TIGHT:
+            yield Note(kind=NoteKind.TIGHT_FOCUS, value=waist, beam=beam.name)

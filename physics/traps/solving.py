@@ -1,13 +1,13 @@
 """Traps solved backwards: which power gives this frequency or this depth, which one still holds, which gradient lifts.
 
-The search goes up and down in factors from where the trap stands, and closes in on the first change of sign. A power at
-which nothing is held counts as a frequency and a depth of zero.
+The search goes up and down in factors from where the trap stands, and closes in on the first change of sign; without
+one, it climbs the highest peak that it saw. A power at which nothing is held counts as a frequency and a depth of zero.
 """
 
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -30,6 +30,9 @@ _TIMES = 10
 _CLOSE = 1e-6
 """Relative accuracy of a solution."""
 
+_NARROW = 2e-4
+"""Relative distance from a peak of the reading to which it is looked for."""
+
 _MOST_STEPS = 40
 
 _FOUND = 1e-4
@@ -37,26 +40,48 @@ _FOUND = 1e-4
 
 
 class NoSolution(ValueError):
-    """No value of the control gives what is wanted; one sentence says between what was looked."""
+    """No value of the control gives what is wanted; one sentence says between what was looked.
+
+    `closest`: the value of the control that came closest, and its reading; None where nothing was read.
+    """
+
+    def __init__(self, sentence: str, closest: tuple[float, float] | None = None) -> None:
+        super().__init__(sentence)
+        self.closest = closest
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Solved:
-    """A value of the control, and the trap and its survey there."""
+    """A value of the control, and the trap and its survey there; `also`: another value, on the other side of the start,
+    that does it too."""
 
     value: float
     trap: Trap
     survey: Survey
+    also: float | None = None
 
 
 Change = Callable[[float], "Trap"]
 Reading = Callable[[Survey], float | None]
+Tell = Callable[[float], str]
+
+
+def _three_digits(value: float) -> str:
+    return f"{value:.3g}"
 
 
 def solve(
-    change: Change, reading: Reading, target: float, start: float, state: State, *, control: str = "value"
+    change: Change,
+    reading: Reading,
+    target: float,
+    start: float,
+    state: State,
+    *,
+    control: str = "value",
+    tell: Tell = _three_digits,
+    likely: Sequence[float] = (),
 ) -> Solved:
-    """The value of a control at which a reading of the survey has the wanted value.
+    """The value of a control at which a reading of the survey has the wanted value: the one nearest to the start.
 
     Parameters
     ----------
@@ -64,7 +89,8 @@ def solve(
     reading : of a survey; None counts as zero.
     target : float. Positive.
     start : float. Positive, near which the search begins.
-    control : what an error calls the control.
+    control, tell : what an error calls the control, and a value of it.
+    likely : positive values at which the reading may be large, where a narrow peak would be missed.
 
     Raises
     ------
@@ -74,38 +100,97 @@ def solve(
         raise ValueError(f"wanted value must be positive, got {target:g}")
     if not start > 0.0:
         raise ValueError(f"{control} must start from a positive value, got {start:g}")
-    seen: dict[float, Survey] = {}
-
-    def excess(logarithm: float) -> float:
-        seen[logarithm] = survey(change(math.exp(logarithm)), state)
-        value = reading(seen[logarithm])
-        return (0.0 if value is None else value) / target - 1.0
-
-    from scipy.optimize import brentq
-
-    low, high = _bracket(excess, math.log(start), control)
-    root = float(brentq(excess, low, high, xtol=_CLOSE, rtol=1e-12)) if low < high else low
-    # What was computed last need not be the root itself.
-    if abs(excess(root)) > _FOUND:
-        raise NoSolution(f"no {control} gives the wanted value: where the trap lets go, it jumps past it")
-    value = math.exp(root)
-    return Solved(value=value, trap=change(value), survey=seen[root])
+    search = _Search(lambda logarithm: survey(change(math.exp(logarithm)), state), reading, target)
+    brackets = search.brackets(math.log(start), [math.log(value) for value in likely])
+    if not brackets:
+        low, high = (tell(math.exp(edge)) for edge in search.edges)
+        sentence = f"no {control} from {low} to {high} gives the wanted value"
+        raise NoSolution(sentence, search.closest)
+    roots = sorted(filter(search.met, map(search.root, brackets)), key=lambda root: abs(root - math.log(start)))
+    if not roots:
+        sentence = f"no {control} gives the wanted value: where the trap lets go, it jumps past it"
+        raise NoSolution(sentence, search.closest)
+    value, *others = (math.exp(root) for root in roots)
+    return Solved(value=value, trap=change(value), survey=search.seen[roots[0]], also=others[0] if others else None)
 
 
-def _bracket(excess: Callable[[float], float], start: float, control: str) -> tuple[float, float]:
-    here = excess(start)
-    if here == 0.0:
-        return start, start
-    step = math.log(_FACTOR)
-    edges = {-1: start, 1: start}
-    for _ in range(_TIMES):
-        for sign in (1, -1):
-            there = edges[sign] + sign * step
-            if (excess(there) > 0.0) != (here > 0.0):
-                return min(there, edges[sign]), max(there, edges[sign])
-            edges[sign] = there
-    low, high = (math.exp(edges[sign]) for sign in (-1, 1))
-    raise NoSolution(f"no {control} from {low:.3g} to {high:.3g} gives the wanted value")
+class _Search:
+    """Looks at surveys by the logarithm of the control; `seen` keeps them, `edges` are the lowest and the highest."""
+
+    def __init__(self, at: Callable[[float], Survey], reading: Reading, target: float) -> None:
+        self._at, self._reading, self._target = at, reading, target
+        self.seen: dict[float, Survey] = {}
+
+    def excess(self, logarithm: float) -> float:
+        """Reading over the wanted value, less one."""
+        if logarithm not in self.seen:
+            self.seen[logarithm] = self._at(logarithm)
+        value = self._reading(self.seen[logarithm])
+        return (0.0 if value is None else value) / self._target - 1.0
+
+    @property
+    def edges(self) -> tuple[float, float]:
+        return min(self.seen), max(self.seen)
+
+    @property
+    def closest(self) -> tuple[float, float] | None:
+        """The value of the control whose reading is closest to the wanted one, with that reading."""
+        read = {log: self._reading(found) for log, found in self.seen.items()}
+        known = [(abs(value - self._target), log, value) for log, value in read.items() if value is not None]
+        if not known:
+            return None
+        _, log, value = min(known)
+        return math.exp(log), value
+
+    def brackets(self, start: float, likely: Sequence[float]) -> list[tuple[float, float]]:
+        """Ranges in which the excess changes its sign: the first ones going out from the start, one at most on each
+        side; else one beside a peak, or a trough, between the places looked at."""
+        here = self.excess(start)
+        if here == 0.0:
+            return [(start, start)]
+        step = math.log(_FACTOR)
+        edges = {-1: start, 1: start}
+        for _ in range(_TIMES):
+            found = []
+            for sign in (1, -1):
+                there = edges[sign] + sign * step
+                if (self.excess(there) > 0.0) != (here > 0.0):
+                    found.append((min(there, edges[sign]), max(there, edges[sign])))
+                edges[sign] = there
+            if found:
+                return found
+        for place in likely:
+            if (self.excess(place) > 0.0) != (here > 0.0):
+                return [(min(place, start), max(place, start))]
+        return self._beside_peak(here, step)
+
+    def _beside_peak(self, here: float, step: float) -> list[tuple[float, float]]:
+        best = min(self.seen, key=lambda log: abs(self.excess(log)))
+        low, high = self.edges
+        while step > _NARROW and low < best < high:
+            nearby = (best - step, best + step)
+            for there in nearby:
+                if (self.excess(there) > 0.0) != (here > 0.0):
+                    beyond = there + 2.0 * (there - best)
+                    further = [beyond] if (self.excess(beyond) > 0.0) == (here > 0.0) else []
+                    return [(min(there, side), max(there, side)) for side in (best, *further)]
+            better = min(nearby, key=lambda log: abs(self.excess(log)))
+            if abs(self.excess(better)) < abs(self.excess(best)):
+                best = better
+            else:
+                step *= 0.5
+        return []
+
+    def root(self, bracket: tuple[float, float]) -> float:
+        """Where the excess changes its sign."""
+        from scipy.optimize import brentq
+
+        low, high = bracket
+        return float(brentq(self.excess, low, high, xtol=_CLOSE, rtol=1e-12)) if low < high else low
+
+    def met(self, root: float) -> bool:
+        """Whether the wanted value is there, and not only jumped over."""
+        return abs(self.excess(root)) <= _FOUND
 
 
 def levitation_gradient(state: State) -> float:
@@ -158,14 +243,16 @@ def lowest_power(trap: Trap, state: State, beam: str) -> float:
     return _edge(trap, state, beam, high, as_floats(found.minimum))
 
 
-def lowest_value(change: Change, start: float, state: State, *, control: str = "value") -> float:
+def lowest_value(
+    change: Change, start: float, state: State, *, control: str = "value", tell: Tell = _three_digits
+) -> float:
     """Least value of a control with which the trap still holds atoms, by halving, to a relative 1e-6.
 
     Parameters
     ----------
     change : gives the trap at a value of the control.
     start : float. Positive, near which the search begins.
-    control : what an error calls the control.
+    control, tell : what an error calls the control, and a value of it.
 
     Raises
     ------
@@ -181,12 +268,12 @@ def lowest_value(change: Change, start: float, state: State, *, control: str = "
     while not held(high):
         high *= _FACTOR
         if high > start * _FACTOR**_TIMES:
-            raise NoSolution(f"the trap holds nothing from {start:.3g} to {high:.3g}, the {control}")
+            raise NoSolution(f"the trap holds nothing with a {control} from {tell(start)} to {tell(high)}")
     low = high
     while held(low):
         low /= _FACTOR
         if low < start / _FACTOR**_TIMES:
-            raise NoSolution(f"the trap still holds atoms at {low:.3g}, the {control}")
+            raise NoSolution(f"the trap still holds atoms with a {control} of {tell(low)}")
     high = min(high, _FACTOR * low)
     while high - low > _CLOSE * high:
         middle = 0.5 * (low + high)

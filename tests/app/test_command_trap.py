@@ -210,6 +210,22 @@ def test_the_levitation_that_carries_the_atoms(capsys: pytest.CaptureFixture[str
     assert answer["sag"] == pytest.approx(0.0, abs=1e-9)
 
 
+def test_quotes_and_capitals_around_a_wish_are_let_pass(capsys: pytest.CaptureFixture[str]) -> None:
+    plain = solved_json(capsys, CROSSED, "--vary", "powers", "--until", "mean_frequency=150 Hz")
+    for wish in ('Mean-Frequency="150 Hz"', "mean_frequency = '150Hz'"):
+        found = solved_json(capsys, CROSSED, "--vary", "powers", "--until", wish)
+        assert found["solution"]["value"] == plain["solution"]["value"]
+
+
+def test_another_value_that_does_it_is_told(capsys: pytest.CaptureFixture[str]) -> None:
+    arguments = ("--vary", "levitation", "--until", "depth=1 uK")
+    solution = solved_json(capsys, LEVITATED, *arguments)["solution"]
+    # above and below the gradient that carries the atoms, 31.08 G/cm
+    assert solution["also"] < 0.3108 < solution["value"]
+    assert main(["trap", LEVITATED, *arguments]) == 0
+    assert capsys.readouterr().out.splitlines()[1] == "30.696 G/cm does it too; the nearer one is taken."
+
+
 @pytest.mark.parametrize(
     ("plan", "arguments", "sentence"),
     [
@@ -221,7 +237,17 @@ def test_the_levitation_that_carries_the_atoms(capsys: pytest.CaptureFixture[str
         (CROSSED, ("power", "--beam", "B", "--until", "holds"), 'the trap has no beam "B"; its beams: long, across'),
         (CROSSED, ("gradient", "--until", "holds"), "the coils of the trap have no gradient to vary"),
         (CROSSED, ("power", "--beam", "long", "--until", "depth=10 kg"), '"kg" is not a unit of trap depth'),
-        (COILS, ("gradient", "--until", "mean_frequency=5 Hz"), "no gradient of the coils in T/m from"),
+        (
+            COILS,
+            ("gradient", "--until", "mean_frequency=5 Hz"),
+            "no gradient of the coils from 0.156 G/cm to 1.64e5 G/cm gives the wanted value; the trap has no "
+            "frequencies there",
+        ),
+        (
+            LEVITATED,
+            ("levitation", "--until", "depth=2 uK"),
+            "gives the wanted value; the closest is 1.41 µK, with 31.1 G/cm",
+        ),
         (COILS, ("powers", "--until", "holds"), "the trap has no beams whose powers could be varied"),
         (COILS, ("gradient", "--until", "levitates"), "only the levitation can be varied until it levitates"),
         (str(PLANS[0]), ("power", "--until", "holds"), "given by its frequencies has no beams or coils to vary"),

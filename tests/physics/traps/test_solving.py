@@ -5,13 +5,15 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import replace
+from types import SimpleNamespace
+from typing import Any
 
 import pytest
 
 from physics.constants import boltzmann, standard_gravity
 from physics.light import light_shift, polarizability
 from physics.species import State, load_species
-from physics.traps import Coils, Trap
+from physics.traps import Coils, Trap, solving
 from physics.traps.solving import (
     NoSolution,
     Solved,
@@ -70,9 +72,9 @@ def test_the_lowest_value_of_any_control_is_found_by_halving(single: Trap, rubid
     gradient = lowest_value(lambda value: Trap(coils=Coils(gradient=value)), 1.0, rubidium)
     assert gradient == pytest.approx(weight / rubidium.zeeman_slope.value, rel=1e-5)
     free = replace(single, gravity=None)
-    with pytest.raises(NoSolution, match=r"^the trap still holds atoms at 0.00\d+, the power in W$"):
+    with pytest.raises(NoSolution, match=r"^the trap still holds atoms with a power in W of 0.00\d+$"):
         lowest_value(lambda power: free.with_beam("A", power=power), 1.0, rubidium, control="power in W")
-    with pytest.raises(NoSolution, match=r"^the trap holds nothing from 1e-08 to 2.05e-05, the power in W$"):
+    with pytest.raises(NoSolution, match=r"^the trap holds nothing with a power in W from 1e-08 to 2.05e-05$"):
         lowest_value(lambda power: single.with_beam("A", power=power), 1e-8, rubidium, control="power in W")
     with pytest.raises(ValueError, match=r"^value must start from a positive value, got 0$"):
         lowest_value(lambda power: single.with_beam("A", power=power), 0.0, rubidium)
@@ -137,6 +139,31 @@ def test_gradients_are_solved_for_as_well(rubidium: State) -> None:
         control="gradient in T/m",
     )
     assert found.value == pytest.approx(4.0 * rubidium.mass * standard_gravity / slope.value, rel=1e-5)
+
+
+def test_a_narrow_peak_is_climbed_and_its_other_side_told(monkeypatch: pytest.MonkeyPatch, rubidium: State) -> None:
+    # A depth as of levitated atoms: nothing but within 5 % of a gradient of 1 T/m, where it has its peak.
+    def surveyed(trap: Trap, _state: State) -> Any:
+        assert trap.coils is not None
+        assert trap.coils.levitation is not None
+        return SimpleNamespace(depth=max(0.0, 1.0 - 20.0 * abs(trap.coils.levitation - 1.0)))
+
+    def lifted(gradient: float) -> Trap:
+        return Trap(coils=Coils(levitation=gradient))
+
+    monkeypatch.setattr(solving, "survey", surveyed)
+    far = solve(lifted, depth, 0.6, 0.3, rubidium, likely=(1.0,))
+    assert (far.value, far.also) == (pytest.approx(0.98), None)
+    both = solve(lifted, depth, 0.6, 1.001, rubidium)
+    assert (both.value, both.also) == (pytest.approx(1.02), pytest.approx(0.98))
+    between_the_steps = solve(lifted, depth, 0.99, 1.004, rubidium)
+    assert abs(between_the_steps.value - 1.0) == pytest.approx(5e-4, rel=1e-3)
+    with pytest.raises(NoSolution, match=r"^no gradient from \S+ to \S+ gives the wanted value$") as none:
+        solve(lifted, depth, 1.2, 1.004, rubidium, control="gradient")
+    assert none.value.closest == (pytest.approx(1.0, abs=2e-4), pytest.approx(1.0, abs=4e-3))
+    with pytest.raises(NoSolution) as none:
+        solve(lifted, lambda _found: None, 1.2, 1.004, rubidium)
+    assert none.value.closest is None
 
 
 def test_what_cannot_be_is_said_in_one_sentence(crossed: Trap, single: Trap, rubidium: State) -> None:

@@ -249,6 +249,12 @@ def test_published_polarizabilities_and_strong_fields_are_noted(crossed: Trap, r
     assert NoteKind.NEAR_RESONANCE in kinds(near)
 
 
+def test_a_focus_of_a_wavelength_is_noted(single: Trap, rubidium: State) -> None:
+    found = survey(single.with_beam("A", waists=(1.5e-6, 8e-6), power=0.01), rubidium)
+    assert [note.value for note in found.notes if note.kind is NoteKind.TIGHT_FOCUS] == pytest.approx([1.5 / 1.064])
+    assert NoteKind.TIGHT_FOCUS not in kinds(survey(single.with_beam("A", waists=2.2e-6, power=0.01), rubidium))
+
+
 def test_a_knife_that_does_nothing_is_noted(crossed: Trap) -> None:
     lithium = load_species("6Li").state("F=1/2 mF=+1/2")
     found = survey(replace(crossed, coils=Coils(bias=1e-4, knife=1e6)), lithium)
