@@ -10,19 +10,19 @@ from __future__ import annotations
 from collections.abc import Callable
 
 import numpy as np
-from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.backends.backend_qtagg import FigureCanvasQTAgg
 from matplotlib.figure import Figure
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QColor, QImage, QPainter, QPaintEvent, QPen, QResizeEvent, QShowEvent
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
-from app.figures.draw import draw_frame, drawing_note
+from app.figures.draw import drawing_note
 from app.figures.layout import legend_entries
 from app.figures.picture import Picture
 from app.figures.theme import LIGHT, Theme
 from app.figures.ticks import span, to_data
 from app.window.canvas_gestures import CanvasGestures
+from app.window.live_frame import draw_live_frame
 from app.window.live_layer import LiveLayer
 
 DPI = 96.0  # of one logical pixel, so that type sizes are those of the widgets around
@@ -206,17 +206,11 @@ class LiveCanvas(FigureCanvasQTAgg):
         ratio = self.devicePixelRatioF() or 1.0  # rarely 0 before the first show
         self._set_device_pixel_ratio(ratio)
         figure = self.figure
-        figure.clear()
-        figure.set_facecolor(self._theme.background)
         # whole pixels also at fractional ratios
         width, height = (float(np.ceil(side * ratio)) / figure.dpi for side in (self.width(), self.height()))
         figure.set_size_inches(width, height, forward=False)
-        axes = figure.add_axes((0.0, 0.0, 1.0, 1.0))
-        layout = draw_frame(picture, axes, self._theme)
-        for spine in axes.spines.values():
-            spine.set_visible(False)  # the live layer draws them, over the data
-        FigureCanvasAgg.draw(self)  # type: ignore[no-untyped-call]
-        return LiveLayer(self.get_renderer(), layout, self._theme)  # type: ignore[no-untyped-call]
+        renderer = self.get_renderer()  # type: ignore[no-untyped-call]
+        return LiveLayer(renderer, draw_live_frame(picture, renderer, self._theme), self._theme)
 
     def draw_idle(self) -> None:
         """Draws all again at the next paint (Matplotlib's own changes, such as another pixel ratio, end here)."""

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from functools import reduce
 
 import numpy as np
 import pytest
@@ -66,6 +67,20 @@ def differing(one: np.ndarray, other: np.ndarray) -> float:
     """Share of pixels that differ by more than 8 of 255 in any channel."""
     assert one.shape == other.shape
     return float((np.abs(one - other).max(axis=2) > 8).mean())
+
+
+def unlike(one: np.ndarray, other: np.ndarray) -> float:
+    """Share of pixels of either that differ by more than 8 of 255 from all that the other has within one pixel: texts
+    on the screen start at whole pixels, those in files do not."""
+    return max(float((_beyond(one, other) > 8).mean()), float((_beyond(other, one) > 8).mean()))
+
+
+def _beyond(one: np.ndarray, other: np.ndarray) -> np.ndarray:
+    assert one.shape == other.shape
+    rows, columns = one.shape[:2]
+    padded = np.pad(other, ((1, 1), (1, 1), (0, 0)), mode="edge")
+    around = [padded[i : i + rows, j : j + columns] for i in range(3) for j in range(3)]
+    return np.maximum(reduce(np.minimum, around) - one, one - reduce(np.maximum, around)).max(axis=2)
 
 
 def move(canvas: LiveCanvas, x: float, y: float, buttons=Qt.MouseButton.NoButton, modifiers=NONE) -> None:
@@ -185,7 +200,7 @@ def test_a_frame_that_differs_is_drawn_again_once(show, a_profile, change):
         canvas.show_picture(lambda: changed)
         QApplication.processEvents()
     assert canvas.full_draws == 2
-    assert differing(pixels(canvas), full_redraw(changed, SIZE, LIGHT)) < 0.01
+    assert unlike(pixels(canvas), full_redraw(changed, SIZE, LIGHT)) < 0.005
 
 
 # ------------------------------------------------------------------ what it shows
@@ -199,12 +214,12 @@ def test_a_live_frame_equals_a_full_redraw_of_the_same_state(show, any_picture, 
         canvas.show_picture(lambda picture=picture: picture)
         QApplication.processEvents()
         live = pixels(canvas).copy()
-        assert differing(live, full_redraw(picture, SIZE, theme)) < 0.01
+        assert unlike(live, full_redraw(picture, SIZE, theme)) < 0.005
         canvas.draw_idle()
         QApplication.processEvents()
         assert differing(live, pixels(canvas)) == 0.0
     assert canvas.full_draws == 4
-    assert differing(live, full_redraw(any_picture(0.5), SIZE, theme)) > 0.001  # else nothing above could fail
+    assert unlike(live, full_redraw(any_picture(0.5), SIZE, theme)) > 0.01  # else nothing above could fail
 
 
 def test_only_the_cloud_moves_over_an_unchanged_field(show, a_map):
@@ -214,7 +229,7 @@ def test_only_the_cloud_moves_over_an_unchanged_field(show, a_map):
         picture = replace(ground, marks=(replace(ground.marks[0], y=y),))
         canvas.show_picture(lambda picture=picture: picture)
         QApplication.processEvents()
-        assert differing(pixels(canvas), full_redraw(picture, SIZE, LIGHT)) < 0.01
+        assert unlike(pixels(canvas), full_redraw(picture, SIZE, LIGHT)) < 0.005
 
 
 def test_a_change_of_theme_redraws_in_its_colours(show, a_map):
@@ -223,7 +238,7 @@ def test_a_change_of_theme_redraws_in_its_colours(show, a_map):
     canvas.set_theme(DARK)
     QApplication.processEvents()
     assert canvas.full_draws == 2
-    assert differing(pixels(canvas), full_redraw(a_map(1.0), SIZE, DARK)) < 0.01
+    assert unlike(pixels(canvas), full_redraw(a_map(1.0), SIZE, DARK)) < 0.005
 
 
 def test_a_stale_plot_stays_and_says_so_without_a_redraw_of_the_frame(show, a_profile):
@@ -260,11 +275,11 @@ def test_another_pixel_ratio_redraws_sharply(show, any_picture, monkeypatch, rat
     QApplication.processEvents()
     assert canvas.full_draws == 2
     assert pixels(canvas).shape[:2] == (SIZE[1] * ratio, SIZE[0] * ratio)
-    assert differing(pixels(canvas), full_redraw(any_picture(1.0), SIZE, LIGHT, ratio)) < 0.01
+    assert unlike(pixels(canvas), full_redraw(any_picture(1.0), SIZE, LIGHT, ratio)) < 0.005
     canvas.show_picture(lambda: any_picture(1.4))
     QApplication.processEvents()
     assert canvas.full_draws == 2
-    assert differing(pixels(canvas), full_redraw(any_picture(1.4), SIZE, LIGHT, ratio)) < 0.01
+    assert unlike(pixels(canvas), full_redraw(any_picture(1.4), SIZE, LIGHT, ratio)) < 0.005
 
 
 def test_a_canvas_squeezed_to_nothing_comes_back(show, any_picture):
@@ -274,7 +289,7 @@ def test_a_canvas_squeezed_to_nothing_comes_back(show, any_picture):
         canvas.show_picture(lambda: any_picture(1.1))
         QApplication.processEvents()
         canvas.grab()
-    assert differing(pixels(canvas), full_redraw(any_picture(1.1), SIZE, LIGHT)) < 0.01
+    assert unlike(pixels(canvas), full_redraw(any_picture(1.1), SIZE, LIGHT)) < 0.005
 
 
 def test_a_canvas_without_a_picture_shows_its_background(qtbot):
