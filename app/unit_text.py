@@ -116,8 +116,15 @@ def best_unit(value: float, units: Iterable[str], si_unit: str | None = None) ->
     choices = tuple(units)
     if not math.isfinite(value) or value == 0.0:
         return choices[0]
-    dimensions = {u: EVERYDAY[normal_unit(u)][1] if normal_unit(u) in EVERYDAY else "" for u in choices}
-    alike = [u for u in choices if dimensions[u] == dimensions[choices[0]]]
-    by_size = sorted(alike, key=lambda u: factor(u, si_unit))
-    fitting = [u for u in by_size if abs(value) >= 0.9995 * factor(u, si_unit)]
-    return fitting[-1] if fitting else by_size[0]
+    by_size = _by_size(choices, si_unit)
+    size = abs(value)
+    return next((unit for least, unit in reversed(by_size) if size >= least), by_size[0][1])
+
+
+@lru_cache(maxsize=256)
+def _by_size(units: tuple[str, ...], si_unit: str | None) -> tuple[tuple[float, str], ...]:
+    """The units that have the dimension of the first, the smallest first, each with the value from which it reads
+    well."""
+    dimensions = {u: EVERYDAY[normal_unit(u)][1] if normal_unit(u) in EVERYDAY else "" for u in units}
+    alike = [u for u in units if dimensions[u] == dimensions[units[0]]]
+    return tuple((0.9995 * factor(u, si_unit), u) for u in sorted(alike, key=lambda u: factor(u, si_unit)))

@@ -17,6 +17,8 @@ from app.quantities import QUANTITIES, Need, Row, display_factor
 from app.units import best_unit, format_quantity
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from app.engine import CloudAnswer
 
 NEAR = 0.05
@@ -224,10 +226,15 @@ def reason_missing(need: Need) -> str:
 def value_text(answer: CloudAnswer, row: Row, unit: str) -> str:
     """A quantity of the answer in one of its units, without the unit; three values for a quantity with axes; "–"
     where it does not apply."""
-    if answer.missing(row) is not None:
-        return "–"
-    values = np.atleast_1d(np.asarray(answer.value(row.name), dtype=float)) / display_factor(unit, row)
-    return " × ".join(number(float(value), 4) for value in values)
+    return "–" if answer.missing(row) is not None else written(answer.value(row.name), row, unit)
+
+
+def written(value: float | NDArray[np.float64], row: Row, unit: str) -> str:
+    """A value of a quantity in one of its units, without the unit; three where it has axes."""
+    factor = display_factor(unit, row)
+    if np.ndim(value) == 0:
+        return number(float(value) / factor, 4)
+    return " × ".join(number(one / factor, 4) for one in np.asarray(value, dtype=float).tolist())
 
 
 def shown_unit(unit: str) -> str:

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 
@@ -12,7 +13,7 @@ from app.engine import CloudAnswer
 from app.figures.ticks import raised
 from app.quantities import QUANTITIES, Need, Row
 from app.units import best_unit
-from app.words import range_text, reason_missing, row_tip, shown_unit, symbol_of, value_text
+from app.words import range_text, reason_missing, row_tip, shown_unit, symbol_of, written
 
 _RAISED = str.maketrans("123456789", "¹²³⁴⁵⁶⁷⁸⁹")
 
@@ -49,22 +50,38 @@ _NEVER = frozenset(
 """What this gas in this trap will not have, whatever its temperature and number: such quantities are left out."""
 
 
-def readings_of(answer: CloudAnswer, chosen_units: Mapping[str, str]) -> dict[str, Reading]:
-    """What the readouts show of an answer: quantities of other gases are left out, as is the comparison with a harmonic
-    trap where the trap is one; those that lack an input say so."""
-    readings = {}
-    for name, row in QUANTITIES.items():
-        need = answer.missing(row)
-        if need in _NEVER:
-            continue
+class Readings(Mapping[str, Reading]):
+    """What the readouts show of an answer, by name, each worked out when it is first asked for: most are not in view.
+
+    Quantities of other gases are left out, as is the comparison with a harmonic trap where the trap is one; those that
+    lack an input say so.
+    """
+
+    def __init__(self, answer: CloudAnswer, chosen_units: Mapping[str, str]) -> None:
+        self._answer, self._units = answer, dict(chosen_units)
+        needs = {name: answer.missing(row) for name, row in QUANTITIES.items()}
+        self._needs = {name: need for name, need in needs.items() if need not in _NEVER}
+        self._known: dict[str, Reading] = {}
+
+    def __getitem__(self, name: str) -> Reading:
+        if name not in self._known:
+            self._known[name] = self._read(name, self._needs[name])
+        return self._known[name]
+
+    def __iter__(self) -> Iterator[str]:
+        return iter(self._needs)
+
+    def __len__(self) -> int:
+        return len(self._needs)
+
+    def _read(self, name: str, need: Need | None) -> Reading:
+        row, answer = QUANTITIES[name], self._answer
         if need is not None:
-            readings[name] = Reading(symbol_of(row, answer), "–", reason=reason_missing(need))
-            continue
-        unit = chosen_units.get(name, "")
+            return Reading(symbol_of(row, answer), "–", reason=reason_missing(need))
+        unit, value = self._units.get(name, ""), answer.value(name)
         if unit not in row.units:
-            unit = unit_for(row, answer.value(name))
-        readings[name] = Reading(symbol_of(row, answer), value_text(answer, row, unit), shown_unit(unit))
-    return readings
+            unit = unit_for(row, value)
+        return Reading(symbol_of(row, answer), written(value, row, unit), shown_unit(unit))
 
 
 def interval_text(answer: CloudAnswer, name: str) -> str:
@@ -85,6 +102,7 @@ def unit_for(row: Row, value: object) -> str:
     return best_unit(float(np.max(np.abs(np.asarray(value, dtype=float)))), row.units)
 
 
+@lru_cache(maxsize=256)
 def printed_unit(unit: str) -> str:
     """A unit as it is set in print: "cm⁻³" for "1/cm^3", "cm⁶/s" for "cm^6/s"."""
     found = re.fullmatch(r"1/(\w+?)(?:\^(\d))?", unit)

@@ -11,7 +11,7 @@ from PySide6.QtWidgets import QAbstractItemView, QFrame, QMenu, QTreeView, QWidg
 
 from app.engine import CloudAnswer
 from app.quantities import QUANTITIES
-from app.widgets.readings import Reading, interval_text, readings_of
+from app.widgets.readings import Reading, Readings, interval_text
 from app.widgets.readout_model import AnyIndex, ReadoutModel, ReadoutPainter
 
 
@@ -63,7 +63,7 @@ class Readouts(QTreeView):
 
     def show_answer(self, answer: CloudAnswer, chosen_units: Mapping[str, str]) -> None:
         """Show a current answer in these units, or where none is chosen in the one that suits."""
-        self._model.show_readings(readings_of(answer, chosen_units), partial(interval_text, answer))
+        self._model.show_readings(Readings(answer, chosen_units), partial(interval_text, answer))
 
     def mark_stale(self) -> None:
         """Keep the numbers on show, marked as not current."""

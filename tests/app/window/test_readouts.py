@@ -2,6 +2,7 @@
 
 from collections.abc import Callable
 from pathlib import Path
+from typing import ClassVar
 
 import pytest
 from PySide6.QtCore import Qt
@@ -40,6 +41,8 @@ def test_the_model_keeps_the_rules_of_item_models(qapp) -> None:
     model.show_readings(one, lambda name: "")
     changed: list[str] = []
     model.dataChanged.connect(lambda first, last: changed.append(first.data()))
+    for name in one:
+        model.reading_of(QUANTITIES[name])  # as where it is on the screen
     model.show_readings(one | {"peak_density": Reading("n", "7", "1/cm^3")}, lambda name: "")
     assert changed == ["peak density"]
     model.mark_stale()
@@ -47,6 +50,23 @@ def test_the_model_keeps_the_rules_of_item_models(qapp) -> None:
     model.show_readings({"fermi_energy": Reading("EF", "1", "µK")}, lambda name: "")
     assert model.rowCount() == 1
     tester.deleteLater()
+
+
+def test_what_nobody_looks_at_is_not_worked_out(qapp) -> None:
+    class Counted(dict[str, Reading]):
+        asked: ClassVar[list[str]] = []
+
+        def __getitem__(self, name: str) -> Reading:
+            self.asked.append(name)
+            return super().__getitem__(name)
+
+    model = ReadoutModel()
+    one = {"critical_temperature": Reading("Tc", "138", "nK"), "peak_density": Reading("n", "6", "1/cm^3")}
+    model.show_readings(Counted(one), lambda name: "")
+    assert model.reading_of(QUANTITIES["peak_density"]).value == "6"
+    Counted.asked.clear()
+    model.show_readings(Counted(one), lambda name: "")
+    assert set(Counted.asked) == {"peak_density"}
 
 
 def test_a_harmonic_trap_is_not_set_beside_itself(window: MainWindow, settle: Settle) -> None:
