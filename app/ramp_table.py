@@ -6,7 +6,7 @@
 
 The first line names each column, with its unit in brackets; pure numbers have none. Columns of a cloud, such as
 "atoms" and "passenger atoms", may stand beside the controls, and are left out where a table is read. Numbers have
-decimal points.
+decimal points. Semicolons or tabs between columns are read as well as commas.
 """
 
 from __future__ import annotations
@@ -150,7 +150,11 @@ def read_ramp_table(text: str, name: str = "the table") -> RampTable:
 
 
 def _rows(text: str, name: str) -> list[tuple[int, list[str]]]:
-    reader = csv.reader(io.StringIO(text.removeprefix("\ufeff")), strict=True)
+    text = text.removeprefix("\ufeff")
+    # As spreadsheets of many places write it; numbers have decimal points all the same.
+    first = next((line for line in text.splitlines() if line.strip()), "")
+    between = next((sign for sign in ";\t" if sign in first), ",")
+    reader = csv.reader(io.StringIO(text), strict=True, delimiter=between)
     found: list[tuple[int, list[str]]] = []
     try:
         for row in reader:

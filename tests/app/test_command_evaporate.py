@@ -309,28 +309,56 @@ def test_a_passenger_in_the_table_and_from_a_measured_cloud(
     # The columns of clouds do not count where it is read.
     again = evaporate_json(capsys, str(with_one), "--ramp", str(table))
     assert again["final"]["atoms"] == pytest.approx(answer["final"]["atoms"], rel=1e-3)
-    left_out = evaporate_json(capsys, str(with_one), "--from", "Thursday")
-    assert "is not known at the time of the measured cloud" in left_out["passenger"]["left_out"]
-    assert "The passenger is left out: the passenger is not known" in left_out["verdict"]
-    text = evaporate_text(capsys, str(with_one), "--from", "Thursday")
-    assert text.count("The passenger is left out: ") == 1
+    # What is not measured of the passenger is as simulated, and said.
+    rest = evaporate_json(capsys, str(with_one), "--from", "Thursday")["passenger"]
+    begin = evaporate_json(capsys, str(with_one), "--from", "Thursday")["begin"]
+    expected = np.exp(np.interp(begin, own["time"], np.log(own["atoms"])))
+    assert rest["columns"]["atoms"][0] == pytest.approx(expected, rel=1e-4)
+    assert "passenger_as_simulated" in {caveat["id"] for caveat in rest["caveats"]}
+    assert "as the ramp up to the measured cloud is simulated" in evaporate_text(
+        capsys, str(with_one), "--from", "Thursday"
+    )
+    written = with_one.read_text(encoding="utf-8")
+    at = written.index('label = "Thursday"')
+    measured = 'passenger_atoms = "8e4"\npassenger_temperature = "7 uK"\n'
+    with_one.write_text(written[:at] + measured + written[at:], encoding="utf-8")
+    rest = evaporate_json(capsys, str(with_one), "--from", "Thursday")["passenger"]
+    assert rest["columns"]["atoms"][0] == pytest.approx(8e4, rel=1e-9)
+    assert rest["columns"]["temperature"][0] == pytest.approx(7e-6, rel=1e-6)
+    assert "passenger_as_simulated" not in {caveat["id"] for caveat in rest["caveats"]}
 
 
 def test_what_is_changed_is_held_against_runs_of_its_kind(
     plan: str, capsys: pytest.CaptureFixture[str], tmp_path: Path
 ) -> None:
-    # Sensitivities and departures have no passenger in them: neither has what they are held against.
+    # Sensitivities and departures have the passenger in them where the ramp has it.
     with_one = tmp_path / "two.toml"
     with_one.write_text(Path(plan).read_text(encoding="utf-8") + PASSENGER, encoding="utf-8")
     alone = evaporate_json(capsys, plan, "--sensitivity")
-    both = evaporate_json(capsys, str(with_one), "--sensitivity")
+    both = evaporate_json(capsys, str(with_one), "--sensitivity", "--waypoints")
     assert alone["sensitivities_planned"] == pytest.approx(alone["final"]["atoms"], rel=1e-9)
-    assert both["sensitivities_planned"] == alone["sensitivities_planned"]
+    assert both["sensitivities_planned"] == pytest.approx(both["final"]["atoms"], rel=1e-9)
     assert both["final"]["atoms"] != pytest.approx(alone["final"]["atoms"], rel=1e-3)
+    end = both["passenger"]["final"]["reduced_temperature"]
+    assert both["sensitivities_planned_passenger"] == pytest.approx(end, rel=1e-9)
+    assert "sensitivities_planned_passenger" not in alone
     text = evaporate_text(capsys, str(with_one), "--sensitivity", "--waypoints")
-    assert "each input 10 % less or more, of the first species alone" in text
-    assert "by its measured error, of the first species alone" in text
-    assert "first species alone" not in evaporate_text(capsys, plan, "--sensitivity", "--waypoints")
+    assert "first species alone" not in text
+    assert "Most for the passenger: " in text
+    assert "41K, the passenger, at the same times" in text
+    own = both["passenger"]["columns"]
+    for point in both["waypoints"]["points"]:
+        T = np.exp(np.interp(point["time"], own["time"], np.log(own["temperature"])))
+        assert point["passenger"]["temperature"] == pytest.approx(T, rel=1e-6)
+    planned = both["departures"][0]["runs"][0]
+    assert planned["passenger_reduced_temperature"] == pytest.approx(end, rel=3e-3)
+    # One input by hand: a tenth more passengers.
+    head, _, own_text = with_one.read_text(encoding="utf-8").rpartition("[passenger.cloud]")
+    with_one.write_text(f"{head}[passenger.cloud]{own_text.replace('1e5', '1.1e5')}", encoding="utf-8")
+    changed = evaporate_json(capsys, str(with_one))
+    row = next(one for one in both["sensitivities"] if one["input"] == "atoms of the passenger")
+    assert row["atoms_more"] == pytest.approx(changed["final"]["atoms"], rel=1e-6)
+    assert row["passenger_more"] == pytest.approx(changed["passenger"]["final"]["reduced_temperature"], rel=1e-6)
 
 
 # --- what cannot be answered ---
@@ -353,7 +381,8 @@ def test_errors_are_one_sentence(plan: str, bare: str, capsys: pytest.CaptureFix
     assert "broken.csv, line 3" in trouble(capsys, plan, "--ramp", str(broken))
     broken.write_bytes(b"\xff\xfe\x00")
     assert "is not a text in UTF-8" in trouble(capsys, plan, "--ramp", str(broken))
-    assert "No such file" in trouble(capsys, plan, "--ramp", str(tmp_path / "gone.csv"))
+    gone = tmp_path / "gone.csv"
+    assert trouble(capsys, plan, "--ramp", str(gone)) == f"coldward: {gone}: No such file or directory\n"
     with pytest.raises(SystemExit) as done:
         main(["evaporate", plan, "--sidewise"])
     assert done.value.code == 2

@@ -173,6 +173,14 @@ def test_mistakes_are_named_with_their_line(text: str, sentence: str) -> None:
         read_ramp_table(text, "r.csv")
 
 
+@pytest.mark.parametrize("between", [";", "\t"])
+def test_other_signs_between_columns(between: str) -> None:
+    found = read_ramp_table(between.join(("time [s]", "depth [µK]")) + f"\n0{between}50.5\n1{between}20\n")
+    assert [value.value for value in found.values[DEPTH]] == pytest.approx([50.5 * 1.380649e-29, 20.0 * 1.380649e-29])
+    with pytest.raises(PlanError, match=r'^the table, line 2, "depth \[µK\]": .* the comma in "50,5" is not read'):
+        read_ramp_table("time [s];depth [µK]\n0;50,5\n1;20\n")
+
+
 def test_columns_have_labels_and_units_that_fit() -> None:
     from app.units import factor
     from physics.evaporation_rows import Rows
