@@ -98,10 +98,10 @@ class StageTrapDialog(QDialog):
         self.form.set_plan(piece)
         for button in self.findChildren(QPushButton):
             button.setAutoDefault(False)  # Return in a field takes what was typed, and presses nothing
-        if surveyed(piece):
+        self.surveying = not surveyed(piece)
+        if not self.surveying:
             self._show_answer(piece)
         else:
-            self.surveying = True
             self._surveyor.ask(partial(self._survey, piece), _ignore, _ignore)
 
     def _show_answer(self, piece: Plan) -> None:
