@@ -18,6 +18,8 @@ from physics.constants import boltzmann
 
 _ROLES = (Role.FIRST, Role.SECOND, Role.THIRD)
 _NAMED_AT = 0.05  # of the curve, from its end
+_FAR_APART = 30.0
+"""Ratio of the highest to the lowest frequency from which their axis goes by decades: one focused beam has more."""
 
 
 def scan_pictures(scan: TrapScan) -> tuple[Picture, Picture, Picture]:
@@ -25,7 +27,7 @@ def scan_pictures(scan: TrapScan) -> tuple[Picture, Picture, Picture]:
     top = float(np.nanmax(scan.depth)) if np.any(np.isfinite(scan.depth)) else boltzmann * 1e-6
     unit = energy_unit(top)
     sags = np.abs(scan.sag[np.isfinite(scan.sag)])
-    length = best_unit(float(np.max(sags)) if sags.size else 1e-6, ("µm", "mm"))
+    length = best_unit(float(np.max(sags)) if sags.size else 1e-6, ("nm", "µm", "mm"))
     return (
         _picture(scan, _("frequencies"), _("frequency f"), "Hz", np.transpose(scan.frequencies), LABORATORY),
         _picture(scan, _("depth"), _("depth U/k"), unit, scan.depth[np.newaxis] / boltzmann / factor(unit), ("",)),
@@ -37,7 +39,7 @@ def _picture(scan: TrapScan, what: str, label: str, unit: str, values: Array, na
     x_axis, scale = _x_axis(scan)
     x = scan.values / scale
     finite = values[np.isfinite(values)]
-    y = Axis(label=label, unit=unit, low=_low(finite), high=_high(finite))
+    y = _y_axis(label, unit, values)
     curves: list[Curve] = []
     labels: list[Label] = []
     for row, name, role in zip(values, names, _ROLES, strict=False):
@@ -51,11 +53,7 @@ def _picture(scan: TrapScan, what: str, label: str, unit: str, values: Array, na
     lost, words = _lost(scan, x, x_axis, y)
     now = scan.now / scale
     curves += [*lost, Curve(name="", role=Role.CLOUD, x=np.array([now, now]), y=np.array([y.low, y.high]))]
-    height = y.high - y.low
-    labels += [
-        *words,
-        Label(text=_("now"), role=Role.CLOUD, x=now, y=y.high - 0.08 * height, side=1),
-    ]
+    labels += [*words, Label(text=_("now"), role=Role.CLOUD, x=now, y=_at(y, 0.92), side=1)]
     return Picture(
         title=what,
         x=x_axis,
@@ -67,6 +65,23 @@ def _picture(scan: TrapScan, what: str, label: str, unit: str, values: Array, na
         ),
         note="" if finite.size or not scan.complete else _("no value here"),
     )
+
+
+def _y_axis(label: str, unit: str, values: Array) -> Axis:
+    """From zero; by decades where one of several curves would lie along the bottom."""
+    finite = values[np.isfinite(values)]
+    usual = [float(np.median(row[np.isfinite(row)])) for row in values if np.any(np.isfinite(row))]
+    if usual and 0.0 < _FAR_APART * min(usual) < max(usual) and np.min(finite) > 0.0:
+        low, high = math.floor(math.log10(np.min(finite))), math.ceil(math.log10(np.max(finite)))
+        return Axis(label=label, unit=unit, low=10.0**low, high=10.0**high, log=True)
+    return Axis(label=label, unit=unit, low=_low(finite), high=_high(finite))
+
+
+def _at(axis: Axis, share: float) -> float:
+    """The place at a share of the length of an axis."""
+    if axis.log:
+        return float(axis.low ** (1.0 - share) * axis.high**share)
+    return float(axis.low + share * (axis.high - axis.low))
 
 
 def _x_axis(scan: TrapScan) -> tuple[Axis, float]:
@@ -98,7 +113,7 @@ def _lost(scan: TrapScan, x: Array, x_axis: Axis, y: Axis) -> tuple[list[Curve],
                 ends[1] = _between(x_axis, ends[1], x[places[stop]])
                 curves.append(_upright(y, ends[1]))
             middle = _between(x_axis, *ends)
-            labels.append(Label(text=_("not trapped"), role=Role.CLASSICAL, x=middle, y=0.5 * (y.low + y.high)))
+            labels.append(Label(text=_("not trapped"), role=Role.CLASSICAL, x=middle, y=_at(y, 0.5)))
         start = stop
     return curves, labels
 

@@ -140,6 +140,19 @@ def test_a_scan_breaks_its_lines_where_nothing_is_held(scan: TrapScan) -> None:
     assert "depth U/k [µK]" in write_csv((depth,))
 
 
+def test_frequencies_far_apart_are_scanned_by_decades(scan: TrapScan) -> None:
+    # A focused beam is a hundred times stiffer across than along.
+    found = trap_scan(preset("single_beam_lithium"), Control(ControlKind.POWER, "A"), (0.5, 2.0), points=3)
+    assert found is not None
+    frequencies, depth, sag = scan_pictures(found)
+    assert (frequencies.y.log, frequencies.y.low, frequencies.y.high) == (True, 10.0, 1e4)
+    now = next(label for label in frequencies.labels if label.text == "now")
+    assert 3e3 < now.y < 1e4
+    assert not depth.y.log
+    assert (sag.y.unit, sag.y.low) == ("nm", 0.0)
+    assert not scan_pictures(scan)[0].y.log
+
+
 def test_a_scan_that_has_just_begun_is_drawn() -> None:
     parts: list[TrapScan] = []
     plan = preset("single_beam_lithium")
