@@ -25,6 +25,7 @@ from physics.traps.escape import Escape
 from physics.traps.heating import heating_of, light_shares
 from physics.traps.modes import modes_of
 from physics.traps.potential import NoPotential, Potential, potential_of
+from physics.traps.stationary import cusp_at
 from physics.traps.surveyed_well import SurveyedWell
 
 _STEPS = 20
@@ -128,6 +129,16 @@ def _moved(point: TrapPoint, potential: Potential) -> TrapPoint:
         x, y, z = (float(f) for f in modes.frequencies)
         frequencies, axes = (x, y, z), tuple(tuple(row) for row in modes.axes.tolist())
     x, y, z = (float(coordinate) for coordinate in place)
+    minimum = replace(basin.minimum, position=place, energy=float(bottom), curvature=curvature)
+    if basin.minimum.cusp:
+        minimum = cusp_at(potential, place)
+    shift = minimum.energy - basin.minimum.energy
+    there = replace(
+        basin,
+        minimum=minimum,
+        escape=replace(basin.escape, energy=top),
+        inner_passes=tuple(energy + shift for energy in basin.inner_passes if energy + shift < top),
+    )
     shares = None
     if frequencies is not None and point.light_shares is not None:
         a, b, c = (float(share) for share in light_shares(potential, place, np.array(axes)))
@@ -145,7 +156,7 @@ def _moved(point: TrapPoint, potential: Potential) -> TrapPoint:
         light_heating=float(heating_of(potential, place).power),
         light_shares=shares,
         zero_force=zero_force,
-        well=None,
+        well=SurveyedWell(potential=replace(potential, lights={}), basin=there, wall=well.wall),
     )
 
 

@@ -31,7 +31,7 @@ if TYPE_CHECKING:
 HINT = "Point at a time, or use the left and right arrow keys, to read all values"
 _STEP = "ramp"
 _SURVEYED = "The trap is surveyed along the ramp; the first time this takes some seconds."
-_DRAFT = "draft, from surveys of traps nearby"
+_DRAFT = "draft"
 _DRAFTED = "A draft, from surveys of traps nearby; it is exact once the trap is surveyed along this ramp."
 _NO_RAMP = "This plan has no ramp yet."
 _START = "Start from a usual one, which lowers the trap to a tenth in five seconds, or let one be designed."

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 
 from physics.followed_path import FollowedPath
 from physics.ramps import Control, Knob
 from physics.species import load_species
 from physics.surveyed_path import SurveyedPath
+from physics.transfer import sudden_transfer
 from physics.traps.beam import GaussianBeam
 from physics.traps.coils import Coils
 from physics.traps.trap import Trap
@@ -77,3 +80,16 @@ def test_a_trap_that_gravity_empties_holds_nothing() -> None:
     draft = FollowedPath(path=path).at({**path.standing, A: 0.005, B: 0.005})
     assert draft.depth is None
     assert draft.reason
+
+
+def test_what_is_handed_on_from_there_is_nearly_what_a_survey_would_hand_on() -> None:
+    path = surveyed(CROSSED, {A: 2.5}, {A: 1.6})
+    other = tuple(replace(beam, power=0.8 * beam.power, focus=(1.5e-5, 0.0, -5e-6)) for beam in CROSSED.beams)
+    there = SurveyedPath(trap=replace(CROSSED, beams=other), state=RUBIDIUM)
+    new = there.at(there.standing)
+    controls = {**path.standing, A: 2.0}
+    draft = sudden_transfer(8e-6, FollowedPath(path=path).at(controls), new)
+    exact = sudden_transfer(8e-6, path.at(controls), new)
+    assert exact.share < 0.98
+    assert draft.share == pytest.approx(exact.share, rel=5e-3)
+    assert draft.energy == pytest.approx(exact.energy, rel=5e-3)
