@@ -19,6 +19,7 @@ from app.widgets.pace import Pace
 from app.widgets.ramp_exchange import RampExchange
 from app.widgets.ramp_panel import RampPanel
 from app.widgets.ramp_plots import ColumnPlots, Scene
+from app.widgets.ramp_references import KeptRamps, simulated_references
 from app.widgets.time_page import TimePage
 
 if TYPE_CHECKING:
@@ -26,7 +27,7 @@ if TYPE_CHECKING:
     from app.answers.ramp_found import Found
     from app.figures.ramp_controls import Handle
     from app.ramp_choices import StageChoice
-    from app.widgets.ramp_references import Reference, Remembered
+    from app.widgets.ramp_references import Reference
 
 HINT = "Point at a time, or use the left and right arrow keys, to read all values"
 _STEP = "ramp"
@@ -38,14 +39,13 @@ _START = "Start from a usual one, which lowers the trap to a tenth in five secon
 
 
 class RampPage(TimePage):
-    """Attributes: references, the ramps kept; panel, all that is on the page."""
+    """Attributes: kept, the ramps kept beside; panel, all that is on the page."""
 
     title = "Ramp"
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
-        self.references: list[Reference] = []
-        self._remembered: list[Remembered] = []  # references of an earlier session, until they are simulated again
+        self.kept = KeptRamps()
         self.since: str | None = None  # label of the measured cloud from which the rest is drawn
         self._found: Found | None = None
         self._pace = Pace()
@@ -91,7 +91,7 @@ class RampPage(TimePage):
 
         if not plan.ramp and not self.panel.extra_wanted(plan):
             return None
-        if self._is_answered(plan) and not self._remembered:
+        if self._is_answered(plan) and not self.kept.remembered:
             return None
         kept = kept_ramp(plan, None) is not None
         drafted = self._written is not None and not kept and not _is_quick(plan)
@@ -122,12 +122,11 @@ class RampPage(TimePage):
         since = self.since
         from app.answers.ramp import kept_ramp
         from app.answers.ramp_found import drafted, simulated_with_rest
-        from app.widgets.ramp_references import simulated_references
 
         extra, extra_key = self.panel.extra_job(plan)
         key = self._key(plan)
         slow = not _is_quick(plan) and kept_ramp(plan, None) is None
-        remembered = tuple(self._remembered)
+        remembered = tuple(self.kept.remembered)
 
         def run(watch: Watch) -> Found | None:
             draft = drafted(plan) if slow else None
@@ -160,10 +159,9 @@ class RampPage(TimePage):
         if answer is None:
             return
         self._found = answer
-        if answer.recalled is not None and self._remembered:
-            self.references[:0] = answer.recalled
-            self._remembered = []
-            self.panel.show_references([ref.name for ref in self.references])
+        if answer.recalled is not None:
+            self.kept.take(answer.recalled)
+            self.panel.show_references(self.kept.names)
         if answer.extra is not None:
             self.panel.take_extra(answer.plan, answer.extra)
         if self.cloud is not None and self.cloud.plan == self._shown and self._shown.ramp:
@@ -350,45 +348,35 @@ class RampPage(TimePage):
 
     # ---------------------------------------------------------------- references
 
+    @property
+    def references(self) -> list[Reference]:
+        """Ramps that are drawn beside the one on show."""
+        return self.kept.references
+
     def keep_reference(self) -> None:
         """Keep the ramp on show, to be drawn thin beside those that follow."""
-        from app.widgets.ramp_references import Reference
-
-        answer = self.answer
-        if answer is None or self._found is None:
-            return
         if self.draft:
             self.told.emit("This ramp is still a draft: keep it once its trap is surveyed.")
-            return
-        count = len(self.references) + 1
-        plan = self._found.plan
-        name = plan.title or "ramp"
-        taken = {ref.name for ref in self.references}
-        name = name if name not in taken else f"{name} {count}"
-        self.references.append(Reference(name=name, plan=plan, answer=answer))
-        self._references_changed()
+        elif self._found is not None and self._found.ramp is not None:
+            self.kept.keep(self._found.plan, self._found.ramp)
+            self._references_changed()
 
     def drop_references(self) -> None:
         """Draw this ramp alone again."""
-        self.references.clear()
-        self._remembered = []
+        self.kept.drop()
         self._references_changed()
 
     def _references_changed(self) -> None:
-        self.panel.show_references([ref.name for ref in self.references])
+        self.panel.show_references(self.kept.names)
         self.memory_changed.emit()
         self._show()
 
     def memory(self) -> dict[str, tuple[str, ...]]:
         """The ramps that were kept."""
-        from app.widgets.ramp_references import reference_texts
-
-        return {"references": reference_texts((*self._remembered, *self.references))}
+        return {"references": self.kept.texts()}
 
     def recall(self, texts: Mapping[str, Sequence[str]], units: Mapping[str, str]) -> None:
-        from app.widgets.ramp_references import remembered_references
-
-        self._remembered = remembered_references(tuple(texts.get("references", ())))
+        self.kept.recall(tuple(texts.get("references", ())))
 
     # ---------------------------------------------------------------- reading values
 

@@ -75,3 +75,38 @@ def simulated_references(remembered: Sequence[Remembered], watch: Watch) -> tupl
             return None
         found.append(Reference(name=one.name, plan=one.plan, answer=answer))
     return tuple(found)
+
+
+class KeptRamps:
+    """The references of a page. Attributes: references, with their ramps; remembered, those of an earlier session that
+    are still to be simulated."""
+
+    def __init__(self) -> None:
+        self.references: list[Reference] = []
+        self.remembered: list[Remembered] = []
+
+    @property
+    def names(self) -> list[str]:
+        return [ref.name for ref in self.references]
+
+    def keep(self, plan: Plan, answer: RampAnswer) -> None:
+        """One more, by the title of its plan or a number after it."""
+        name = plan.title or "ramp"
+        name = name if name not in self.names else f"{name} {len(self.references) + 1}"
+        self.references.append(Reference(name=name, plan=plan, answer=answer))
+
+    def drop(self) -> None:
+        self.references.clear()
+        self.remembered.clear()
+
+    def take(self, recalled: Sequence[Reference]) -> None:
+        """Those of an earlier session, with their ramps, before those of this one."""
+        if self.remembered:
+            self.references[:0] = recalled
+            self.remembered.clear()
+
+    def texts(self) -> tuple[str, ...]:
+        return reference_texts((*self.remembered, *self.references))
+
+    def recall(self, texts: Sequence[str]) -> None:
+        self.remembered[:] = remembered_references(texts)
