@@ -195,7 +195,7 @@ def _column(cell: str, where: str) -> tuple[Control | None, Kind, str] | None:
 
 def _cell(cell: str, kind: Kind, unit: str, where: str) -> Quantity:
     if not cell.strip():
-        raise PlanError(f"{where}: the cell is empty")
+        raise PlanError(f"{where}: the cell is empty; a table holds the controls of one trap, in every row")
     try:
         return read_quantity(f"{cell.strip()} {unit}".strip(), kind)
     except QuantityError as error:

@@ -108,12 +108,12 @@ def ramp_of(plan: Plan) -> Ramp:
     if not plan.ramp:
         raise PlanError("the plan has no ramp: give it stages [[ramp.stage]]")
     path = path_of(plan)
-    standing, stages = path.standing, []
+    standing, stages, key = path.standing, [], "trap.depth"
     for number, choice in enumerate(plan.ramp, start=1):
         transfer = _transfer(plan, choice)
         if transfer is not None:
             path = transfer.path
-            standing = path.standing
+            standing, key = path.standing, "ramp.stage.trap.depth"
         try:
             stage = _stage(choice, standing, transfer)
             placed = next(Ramp(stages=(replace(stage, transfer=None),)).placed(standing))
@@ -125,7 +125,7 @@ def ramp_of(plan: Plan) -> Ramp:
             raise PlanError(f"{here}: {sentence}") from None
         if isinstance(path, HarmonicPath) and DEPTH not in placed.courses:
             raise PlanError(
-                f"stage {number} of the ramp: the depth of the trap is not known; give trap.depth, "
+                f"stage {number} of the ramp: the depth of the trap is not known; give {key}, "
                 "or a stage that moves the depth from a start"
             )
         standing = {**standing, **placed.values(stage.duration)}

@@ -178,6 +178,13 @@ def test_a_transfer_goes_into_the_other_trap() -> None:
         ),
         (
             plan_of(
+                HARMONIC,
+                'duration = "1 s"\ntransfer = "slow"\n[ramp.stage.trap]\nfrequencies = ["9 Hz", "9 Hz", "9 Hz"]',
+            ),
+            r"^stage 1 of the ramp: the depth of the trap is not known; give ramp\.stage\.trap\.depth, or a stage",
+        ),
+        (
+            plan_of(
                 HARMONIC.replace('depth = "50 uK"\n', ""),
                 'duration = "1 s"\ncontrol = "depth"\nshape = "power law"\ntau = "1 s"\nexponent = 1',
             ),
