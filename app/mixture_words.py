@@ -118,6 +118,10 @@ _SENTENCES: MappingProxyType[MixtureCaveatKind, tuple[str, Callable[[float], str
             _("The plan gives no depth of the trap: the passenger keeps the largest of the ramp, {value}."),
             temperature,
         ),
+        _KINDS.PASSENGER_AS_SIMULATED: (
+            _("What was not measured of the passenger is as the ramp up to the measured cloud is simulated."),
+            number,
+        ),
         _KINDS.PASSENGER_LENGTH_UNKNOWN: (
             _("The passenger's own scattering length is not known: collisions among passengers are left out."),
             number,

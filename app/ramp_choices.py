@@ -138,7 +138,10 @@ class LimitsChoice:
 @dataclass(frozen=True, kw_only=True)
 class MeasuredChoice:
     """A cloud that was measured: after a stage (counted from 1) or at a time [s] of the ramp, else in the trap of the
-    plan; by its temperature, or by one to three rms widths [m], along x, y and z, after an expansion time [s]."""
+    plan; by its temperature, or by one to three rms widths [m], along x, y and z, after an expansion time [s].
+
+    passenger_atoms, passenger_temperature : of the second species at the same time; None: as simulated
+    """
 
     label: str
     atoms: Quantity
@@ -147,6 +150,8 @@ class MeasuredChoice:
     temperature: Quantity | None = None
     widths: tuple[Quantity, ...] = ()
     expansion_time: Quantity | None = None
+    passenger_atoms: Quantity | None = None
+    passenger_temperature: Quantity | None = None
 
     def __post_init__(self) -> None:
         if not self.label.strip() or len(self.label) > LONGEST_LABEL or not self.label.isprintable():

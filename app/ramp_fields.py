@@ -210,5 +210,19 @@ MEASURED_FIELDS = by_name(
             kind=TIME,
             tip="Time of free expansion before the picture.",
         ),
+        PlanField(
+            path="measured.passenger_atoms",
+            label="Atoms of the passenger",
+            entry=Entry.QUANTITY,
+            kind=ATOM_NUMBER,
+            tip="Atom number of the second species, per spin state, at the same time; empty: as simulated.",
+        ),
+        PlanField(
+            path="measured.passenger_temperature",
+            label="Temperature of the passenger",
+            entry=Entry.QUANTITY,
+            kind=TEMPERATURE,
+            tip="Temperature of the second species at the same time; empty: as simulated.",
+        ),
     )
 )

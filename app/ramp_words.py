@@ -21,6 +21,7 @@ from physics.ramp_sensitivity import Input, RampSensitivity
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
     from app.answers.ramp_design import DesignAnswer
+    from app.answers.ramp_sensitivity import SensitivityAnswer
     from physics.evaporation_budget import Budget
     from physics.evaporation_target import Target
     from physics.ramps import Control
@@ -190,6 +191,9 @@ _INPUTS: Mapping[Input, str] = MappingProxyType(
         Input.FREQUENCIES: _("trap frequencies, at this depth"),
         Input.DURATION: _("duration of the ramp"),
         Input.CONTROL: _("calibration of {control}"),
+        Input.PASSENGER_ATOMS: _("atoms of the passenger at the start"),
+        Input.PASSENGER_TEMPERATURE: _("temperature of the passenger at the start"),
+        Input.LENGTH_BETWEEN: _("scattering length between the species"),
     }
 )
 
@@ -366,6 +370,17 @@ def design_sentence(found: DesignAnswer) -> str:
 def input_text(one: RampSensitivity) -> str:
     """The input of a sensitivity, for reading."""
     return _INPUTS[one.input].format(control="" if one.control is None else one.control.label)
+
+
+def passenger_sensitivity_sentence(found: SensitivityAnswer) -> str:
+    """Which input moves T/Tc or T/TF of the passenger most; empty without one, or where that is not known."""
+    one = found.strongest_for_passenger()
+    if one is None:
+        return ""
+    ratio = _("T/Tc") if found.passenger_bosons else _("T/TF")
+    return _("Most for the passenger: {input}; a tenth of it changes its {ratio} at the end by {share}.").format(
+        input=input_text(one), ratio=ratio, share=percent(abs(math.expm1(found.change * one.passenger_slope)))
+    )
 
 
 def change_text(one: RampSensitivity, planned: float) -> tuple[str, str]:

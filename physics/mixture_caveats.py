@@ -47,6 +47,7 @@ class MixtureCaveatKind(Enum):
     PASSENGER_LAGS = "temperature of the passenger over that of the coolant at the end"
     PASSENGER_DEPTH_STAYS = "depth [K] that the passenger keeps while that of the first species moves"
     PASSENGER_DEPTH_UNKNOWN = "depth [K] that the passenger is taken to have: the largest of the ramp"
+    PASSENGER_AS_SIMULATED = "no value: what was not measured of the passenger is as simulated up to the measured cloud"
     PASSENGER_LENGTH_UNKNOWN = "no value: collisions among the passengers are left out"
 
 

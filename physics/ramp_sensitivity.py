@@ -6,11 +6,13 @@ import math
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, replace
 from enum import Enum
+from typing import Any
 
 from physics.evaporation import Cancelled, EndReason, Evaporation, evaporate
 from physics.evaporation_target import Target
 from physics.gas import Gas
 from physics.losses import Losses
+from physics.passenger import Passenger
 from physics.ramps import Control, Ramp, Stage
 from physics.trap_path import PathAround, TrapPath, TrapPoint
 
@@ -31,6 +33,9 @@ class Input(Enum):
     FREQUENCIES = "trap frequencies"
     DURATION = "duration of the ramp"
     CONTROL = "control"
+    PASSENGER_ATOMS = "atoms of the passenger"
+    PASSENGER_TEMPERATURE = "temperature of the passenger"
+    LENGTH_BETWEEN = "scattering length between the species"
 
     @property
     def label(self) -> str:
@@ -48,6 +53,8 @@ class RampSensitivity:
     atoms_less, atoms_more : at the end, with the input divided and multiplied by 1 + change. [1]
     reason_less, reason_more : why these runs ended.
     slope : d ln(atoms at the end)/d ln(input), from the two. [1]
+    passenger_less, passenger_more : T/Tc or T/TF of the passenger at the end of the same runs. [1] NaN without one.
+    passenger_slope : of its logarithm, as `slope`. [1]
     """
 
     input: Input
@@ -58,6 +65,9 @@ class RampSensitivity:
     reason_less: EndReason
     reason_more: EndReason
     slope: float
+    passenger_less: float = math.nan
+    passenger_more: float = math.nan
+    passenger_slope: float = math.nan
 
     @property
     def changes_end(self) -> bool:
@@ -73,18 +83,21 @@ class _Case:
     ramp: Ramp
     path: TrapPath
     losses: Losses
+    passenger: Passenger | None
 
-    def run(self, target: Target | None) -> Evaporation:
-        return evaporate(
-            self.gas,
-            self.atoms,
-            self.temperature,
-            self.ramp,
-            self.path,
-            losses=self.losses,
-            target=target,
-            rows=1,
-        )
+    def run(self, target: Target | None) -> tuple[Evaporation, float]:
+        """The first gas, and T/Tc or T/TF of the passenger at its end."""
+        start = (self.gas, self.atoms, self.temperature, self.ramp, self.path)
+        if self.passenger is None:
+            return evaporate(*start, losses=self.losses, target=target, rows=1), math.nan
+        from physics.sympathetic import evaporate_with_passenger
+
+        both = evaporate_with_passenger(*start, self.passenger, losses=self.losses, target=target, rows=1)
+        return both.coolant, both.passenger.final["reduced_temperature"]
+
+    def with_passenger(self, **changes: Any) -> _Case:
+        """With another passenger, where there is one."""
+        return self if self.passenger is None else replace(self, passenger=replace(self.passenger, **changes))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -123,27 +136,36 @@ def ramp_sensitivities(
     *,
     losses: Losses | None = None,
     target: Target | None = None,
+    passenger: Passenger | None = None,
     change: float = 0.1,
     tick: Callable[[float], bool] | None = None,
 ) -> tuple[RampSensitivity, ...]:
     """How the atom number at the end answers to each input, the strongest first; those not given are left out.
 
-    Those that change why the run ends come before all others. Arguments are those of `evaporate`; transfers keep their
+    Those that change why the run ends come before all others. Arguments are those of `evaporate`, and of
+    `evaporate_with_passenger` where there is a passenger: what both share is changed for both. Transfers keep their
     trap as it is.
     """
     if not 0.0 < change < 1.0:
         raise ValueError(f"relative change of an input must be between 0 and 1, got {change:g}")
-    case = _Case(gas=gas, atoms=atoms, temperature=temperature, ramp=ramp, path=path, losses=losses or Losses())
+    case = _Case(
+        gas=gas,
+        atoms=atoms,
+        temperature=temperature,
+        ramp=ramp,
+        path=path,
+        losses=losses or Losses(),
+        passenger=passenger,
+    )
     found = []
     inputs = list(_inputs(case))
     for index, (kind, control, changed) in enumerate(inputs):
         if tick is not None and not tick(index / len(inputs)):
             raise Cancelled
-        less, more = (changed(factor).run(target) for factor in (1.0 / (1.0 + change), 1.0 + change))
+        (less, rider_less), (more, rider_more) = (
+            changed(factor).run(target) for factor in (1.0 / (1.0 + change), 1.0 + change)
+        )
         ends = [float(run.atoms[-1]) if len(run.atoms) else 0.0 for run in (less, more)]
-        slope = math.nan
-        if min(ends) > 0.0:
-            slope = math.log(ends[1] / ends[0]) / (2.0 * math.log1p(change))
         found.append(
             RampSensitivity(
                 input=kind,
@@ -153,10 +175,35 @@ def ramp_sensitivities(
                 atoms_more=ends[1],
                 reason_less=less.reason,
                 reason_more=more.reason,
-                slope=slope,
+                slope=_slope(ends[0], ends[1], change),
+                passenger_less=rider_less,
+                passenger_more=rider_more,
+                passenger_slope=_slope(rider_less, rider_more, change),
             )
         )
     return tuple(sorted(found, key=lambda one: (not one.changes_end, -abs(one.slope))))
+
+
+def ending(
+    gas: Gas,
+    atoms: float,
+    temperature: float,
+    ramp: Ramp,
+    path: TrapPath,
+    *,
+    losses: Losses,
+    target: Target | None,
+    passenger: Passenger | None,
+) -> tuple[Evaporation, float]:
+    """How the same ramp ends without any change, and T/Tc or T/TF of the passenger then; NaN without one."""
+    case = _Case(
+        gas=gas, atoms=atoms, temperature=temperature, ramp=ramp, path=path, losses=losses, passenger=passenger
+    )
+    return case.run(target)
+
+
+def _slope(less: float, more: float, change: float) -> float:
+    return math.log(more / less) / (2.0 * math.log1p(change)) if min(less, more) > 0.0 else math.nan
 
 
 def _inputs(case: _Case) -> Iterator[tuple[Input, Control | None, Callable[[float], _Case]]]:
@@ -180,12 +227,33 @@ def _inputs(case: _Case) -> Iterator[tuple[Input, Control | None, Callable[[floa
         if getattr(case.losses, name) is not None:
             yield kind, None, _loss(case, name)
     if _first_point(case).frequencies is not None:
-        yield Input.FREQUENCIES, None, lambda f: replace(case, path=_Stretched(path=case.path, factor=f))
+        yield Input.FREQUENCIES, None, _stretched(case)
     yield Input.DURATION, None, lambda f: replace(case, ramp=_longer(case.ramp, f))
     moved = dict.fromkeys(move.control for stage in case.ramp.stages for move in stage.moves)
     for control in moved:
         if control in case.path.standing:
             yield Input.CONTROL, control, _calibration(case, control)
+    if case.passenger is not None:
+        yield from _of_passenger(case, case.passenger)
+
+
+def _of_passenger(
+    case: _Case, passenger: Passenger
+) -> Iterator[tuple[Input, Control | None, Callable[[float], _Case]]]:
+    yield Input.PASSENGER_ATOMS, None, lambda f: case.with_passenger(atoms=f * passenger.atoms)
+    yield Input.PASSENGER_TEMPERATURE, None, lambda f: case.with_passenger(temperature=f * passenger.temperature)
+    length = passenger.scattering_length
+    if length != 0.0:
+        yield Input.LENGTH_BETWEEN, None, lambda f: case.with_passenger(scattering_length=f * length)
+
+
+def _stretched(case: _Case) -> Callable[[float], _Case]:
+    def stretched(factor: float) -> _Case:
+        changed = replace(case, path=_Stretched(path=case.path, factor=factor))
+        own = case.passenger
+        return changed if own is None else changed.with_passenger(path=_Stretched(path=own.path, factor=factor))
+
+    return stretched
 
 
 def _first_point(case: _Case) -> TrapPoint:
@@ -194,11 +262,29 @@ def _first_point(case: _Case) -> TrapPoint:
 
 
 def _loss(case: _Case, name: str) -> Callable[[float], _Case]:
-    return lambda f: replace(case, losses=replace(case.losses, **{name: f * getattr(case.losses, name)}))
+    def changed(factor: float) -> _Case:
+        one = replace(case, losses=replace(case.losses, **{name: factor * getattr(case.losses, name)}))
+        own = None if case.passenger is None or name not in _OF_BOTH else case.passenger.losses
+        if own is None or getattr(own, name) is None:
+            return one
+        return one.with_passenger(losses=replace(own, **{name: factor * getattr(own, name)}))
+
+    return changed
+
+
+_OF_BOTH = frozenset({"background_lifetime", "intensity_noise", "pointing_noise"})
+"""Losses whose cause is the same for both gases."""
 
 
 def _calibration(case: _Case, control: Control) -> Callable[[float], _Case]:
-    return lambda f: replace(case, path=_Miscalibrated(path=case.path, control=control, factor=f))
+    def changed(factor: float) -> _Case:
+        one = replace(case, path=_Miscalibrated(path=case.path, control=control, factor=factor))
+        own = case.passenger
+        if own is None or not own.follows(control):
+            return one
+        return one.with_passenger(path=_Miscalibrated(path=own.path, control=control, factor=factor))
+
+    return changed
 
 
 def _longer(ramp: Ramp, factor: float) -> Ramp:

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from types import MappingProxyType
 
 import numpy as np
@@ -24,6 +24,7 @@ from physics.gas import Gas
 from physics.held_truncation import HeldKinetics, Limits, line_of
 from physics.losses import Losses
 from physics.particles import Statistics
+from physics.passenger import Passenger
 from physics.ramps import Control, Ramp
 from physics.statistics import zeta
 from physics.trap_path import TrapPath
@@ -42,6 +43,7 @@ class Waypoint:
     depth, truncation, collision_rate : collision_rate is the mean elastic one.
     widths : (3,) rms widths along the axes of the trap after the expansion time, of the thermal cloud released from a
         harmonic trap without collisions.
+    passenger : PassengerThen or None. A second gas in the trap, where there is one and it is still held.
     """
 
     phase_space_density: float
@@ -52,6 +54,24 @@ class Waypoint:
     depth: float
     truncation: float
     collision_rate: float
+    widths: tuple[float, float, float]
+    passenger: PassengerThen | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
+class PassengerThen:
+    """The passenger at a waypoint. [SI]
+
+    Attributes
+    ----------
+    atoms, temperature : of one spin state.
+    reduced_temperature : T/Tc or T/TF. [1]
+    widths : (3,) rms, after the same expansion.
+    """
+
+    atoms: float
+    temperature: float
+    reduced_temperature: float
     widths: tuple[float, float, float]
 
 
@@ -73,14 +93,42 @@ def expanded_widths(
     return (x, y, z)
 
 
-def waypoints(run: Evaporation, densities: Sequence[float], expansion_time: float) -> tuple[Waypoint, ...]:
+def waypoints(
+    run: Evaporation, densities: Sequence[float], expansion_time: float, passenger: Evaporation | None = None
+) -> tuple[Waypoint, ...]:
     """Where a simulated ramp first reaches each phase-space density; those that it does not reach are left out.
+
+    passenger : of a second gas along the same ramp, see `physics.sympathetic`; it has its own columns at each.
 
     Between rows logarithms are taken as straight, which is good to 1e-3 for the usual number of rows.
     """
     if not expansion_time >= 0.0:
         raise ValueError(f"expansion time must not be negative, got {expansion_time:g} s")
-    return tuple(_points(run, densities, expansion_time))
+    points = _points(run, densities, expansion_time)
+    if passenger is None:
+        return tuple(points)
+    return tuple(replace(point, passenger=_then(passenger, point.time, expansion_time)) for point in points)
+
+
+def _then(run: Evaporation, time: float, expansion_time: float) -> PassengerThen | None:
+    """The second gas at a time; None where it is not held any more."""
+    if not len(run.time) or not run.time[0] <= time <= run.time[-1] * (1.0 + 1e-12):
+        return None
+
+    def at(column: np.ndarray) -> float:
+        positive = bool(np.all(column > 0.0))
+        value = float(np.interp(time, run.time, np.log(column) if positive else column))
+        return math.exp(value) if positive else value
+
+    rows = run.rows
+    atoms, temperature = at(rows.atoms), at(rows.temperature)
+    frequencies = [at(rows.frequencies[:, axis]) for axis in range(3)]
+    return PassengerThen(
+        atoms=atoms,
+        temperature=temperature,
+        reduced_temperature=at(rows.reduced_temperature),
+        widths=expanded_widths(run.gas, atoms, temperature, frequencies, expansion_time),
+    )
 
 
 def _points(run: Evaporation, densities: Sequence[float], expansion_time: float) -> Iterator[Waypoint]:
@@ -191,11 +239,13 @@ class Departure:
     ----------
     atoms_factor, temperature_factor : by which it is off. [1]
     run : the rest of the ramp from there.
+    passenger : of a second gas along it; None without one.
     """
 
     atoms_factor: float
     temperature_factor: float
     run: Evaporation
+    passenger: Evaporation | None = None
 
 
 def departures(
@@ -208,8 +258,11 @@ def departures(
     temperature_error: float,
     losses: Losses | None = None,
     target: Target | None = None,
+    passenger: Passenger | None = None,
 ) -> tuple[Departure, ...]:
     """The rest of the ramp from a waypoint: as planned, and with N or T above or below by a relative error. [1]
+
+    passenger : a second gas, with the atoms and the temperature that it has at the waypoint
 
     Empty for a waypoint at the very end of the ramp.
     """
@@ -223,8 +276,13 @@ def departures(
     factors += [(1.0, 1.0 + sign * temperature_error) for sign in (-1.0, 1.0) if temperature_error > 0.0]
     found = []
     for n, t in factors:
-        run = evaporate(
-            gas, n * waypoint.atoms, t * waypoint.temperature, rest.ramp, rest.path, losses=losses, target=target
-        )
-        found.append(Departure(atoms_factor=n, temperature_factor=t, run=run))
+        start = (gas, n * waypoint.atoms, t * waypoint.temperature, rest.ramp, rest.path)
+        if passenger is None:
+            run, own = evaporate(*start, losses=losses, target=target), None
+        else:
+            from physics.sympathetic import evaporate_with_passenger
+
+            both = evaporate_with_passenger(*start, passenger, losses=losses, target=target)
+            run, own = both.coolant, both.passenger
+        found.append(Departure(atoms_factor=n, temperature_factor=t, run=run, passenger=own))
     return tuple(found)

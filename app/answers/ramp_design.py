@@ -195,14 +195,21 @@ def _designed(plan: Plan, control: Control, since: str | None, drift: bool, tick
 def _passenger(plan: Plan, control: Control, start: RampStart) -> Passenger | None:
     """The passenger whose heat the designed ramp carries off; None without one, and where the simulation of the ramp
     leaves it out too, or the trap does not hold it where the control stands."""
-    if plan.passenger is None or start.measured is not None:
+    if plan.passenger is None:
         return None
-    from app.answers.sympathetic import passenger_in
+    from app.answers.sympathetic import passenger_in, passenger_measured
+    from physics.continued_ramp import StandingPath
 
     try:
         passenger, _ = passenger_in(plan)
+        passenger, _ = passenger_measured(plan, start, passenger)
         path = passenger.path
-        held = path.at({one: value for one, value in path.standing.items() if not math.isnan(value)})
+        now = start.path.standing
+        standing = {
+            one: now[one] if one in now and passenger.follows(one) else value for one, value in path.standing.items()
+        }
+        held = path.at({one: value for one, value in standing.items() if not math.isnan(value)})
+        passenger = replace(passenger, path=StandingPath(path=path, standing=standing))
     except ValueError:  # as the simulation says, in its own words
         return None
     return passenger if held.depth is not None and held.frequencies is not None else None

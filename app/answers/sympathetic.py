@@ -11,6 +11,7 @@ import numpy as np
 
 from app.answers.passenger import between_of, frequencies_caveat, passenger_of, passenger_plan, vertical_of
 from app.answers.ramp_inputs import gas_of, losses_of, path_of, state_of, target_of
+from app.choices import TargetChoice
 from app.plan_field import PlanError
 from physics.caveats import Severity, gravest_first
 from physics.constants import boltzmann
@@ -80,12 +81,9 @@ def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> S
     told how far that is, and `Cancelled` raised where it says to stop."""
     from physics.sympathetic import evaporate_with_passenger
 
-    if start.measured is not None:
-        raise PlanError(f'the passenger is not known at the time of the measured cloud "{start.measured.choice.label}"')
-    if start.ramp is None or any(stage.transfer is not None for stage in start.ramp.stages):
-        raise PlanError("a ramp that hands the cloud over to another trap is not computed with a second species")
+    passenger, caveats = passenger_at(plan, start, tick)
+    assert start.ramp is not None
     ramp, path = start.ramp, start.path
-    passenger, caveats = passenger_in(plan, tuple(_values_of_depth(ramp)))
     own_path = passenger.path
     if tick is not None:
         from app.answers.watched_path import Progress, WatchedPath, surveys_along, watched_ramp
@@ -111,6 +109,77 @@ def sympathetic_run(plan: Plan, start: RampStart, tick: Tick | None = None) -> S
         between=between,
         caveats=gravest_first([*between_caveats(between), *caveats, *sympathetic_caveats(run)]),
     )
+
+
+def passenger_at(plan: Plan, start: RampStart, tick: Tick | None = None) -> tuple[Passenger, list[MixtureCaveat]]:
+    """The passenger at the start of a ramp, and what that leaves out. What was not measured of it at a measured cloud
+    is as the ramp up to there is simulated.
+
+    Raises
+    ------
+    PlanError
+        The ramp goes into another trap; the passenger is not held any more at the measured cloud; or as of
+        `passenger_in`.
+    """
+    if start.ramp is None or any(stage.transfer is not None for stage in start.ramp.stages):
+        raise PlanError("a ramp that hands the cloud over to another trap is not computed with a second species")
+    passenger, caveats = passenger_in(plan, tuple(_values_of_depth(start.ramp)))
+    passenger, more = passenger_measured(plan, start, passenger, tick)
+    return passenger, [*caveats, *more]
+
+
+def passenger_or_none(plan: Plan, start: RampStart, tick: Tick | None = None) -> Passenger | None:
+    """The same; None without one, and where the simulation of the ramp leaves it out and says why."""
+    if plan.passenger is None:
+        return None
+    try:
+        return passenger_at(plan, start, tick)[0]
+    except ValueError:
+        return None
+
+
+def passenger_measured(
+    plan: Plan, start: RampStart, passenger: Passenger, tick: Tick | None = None
+) -> tuple[Passenger, list[MixtureCaveat]]:
+    """The passenger with the atoms and the temperature that it has at a start, and what that leaves out."""
+    if start.measured is None:
+        return passenger, []
+    choice = start.measured.choice
+    atoms, temperature = choice.passenger_atoms, choice.passenger_temperature
+    if atoms is not None and temperature is not None:
+        return replace(passenger, atoms=atoms.value, temperature=temperature.value), []
+    N, T = _simulated_until(plan, start, tick) or (passenger.atoms, passenger.temperature)
+    found = replace(
+        passenger,
+        atoms=N if atoms is None else atoms.value,
+        temperature=T if temperature is None else temperature.value,
+    )
+    return found, [MixtureCaveat(kind=MixtureCaveatKind.PASSENGER_AS_SIMULATED, severity=Severity.NOTE)]
+
+
+def _simulated_until(plan: Plan, start: RampStart, tick: Tick | None) -> tuple[float, float] | None:
+    """Atoms and temperature of the passenger where the rest of the ramp begins; None at its start."""
+    from app.answers.ramp import ramp_answer
+
+    assert start.measured is not None
+    if start.begin == 0.0:
+        return None
+    # Without its target, lest it end before.
+    whole = ramp_answer(replace(plan, target=TargetChoice(), measured=()), None, tick)
+    if whole.passenger is None:
+        raise PlanError(whole.passenger_left_out)
+    run = whole.passenger.run.passenger
+    if not len(run.time) or run.time[-1] < start.begin * (1.0 - 1e-9):
+        label = start.measured.choice.label
+        raise PlanError(
+            f'by the simulation the passenger is not held any more at the measured cloud "{label}"; '
+            "give measured.passenger_atoms and measured.passenger_temperature"
+        )
+    time = min(start.begin, float(run.time[-1]))
+    atoms, temperature = (
+        float(np.exp(np.interp(time, run.time, np.log(column)))) for column in (run.atoms, run.temperature)
+    )
+    return atoms, temperature
 
 
 def passenger_in(plan: Plan, depths: Sequence[float] = ()) -> tuple[Passenger, list[MixtureCaveat]]:

@@ -3,19 +3,21 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 from app.answers.ramp import ramp_answer
 from app.answers.ramp_design import design_target, usual_control
 from app.answers.ramp_inputs import gas_of, limits_of, losses_of, measured_clouds, path_of, ramp_of, target_of
 from app.answers.ramp_start import require_collisions, start_of
+from app.answers.sympathetic import passenger_or_none
 from app.plan_field import PlanError
 
 if TYPE_CHECKING:
     from app.answers.watched_path import Tick
     from app.plan import Plan
     from physics.gas import Gas
+    from physics.species import State
     from physics.waypoints import Departure, Waypoint
 
 EXPANSION_TIME = 0.015
@@ -33,6 +35,7 @@ class WaypointsAnswer:
     missed : densities that are not reached
     expansion_time : [s] of the widths
     efficiency : the assumed one, where there is no ramp; else None
+    passenger : the second species along the ramp; None without one
     """
 
     gas: Gas
@@ -40,6 +43,7 @@ class WaypointsAnswer:
     missed: tuple[float, ...]
     expansion_time: float
     efficiency: float | None
+    passenger: State | None = None
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -77,11 +81,13 @@ def waypoints_answer(
     """
     from physics.waypoints import assumed_waypoints, waypoints
 
-    gas = gas_of(plan)
+    gas, passenger = gas_of(plan), None
     if plan.ramp:
-        run = ramp_answer(plan, since, tick).run
+        answer = ramp_answer(plan, since, tick)
+        run, together = answer.run, answer.passenger
         densities = densities or usual_densities(run.rows.peak_phase_space_density)
-        points = waypoints(run, densities, expansion_time)
+        points = waypoints(run, densities, expansion_time, None if together is None else together.run.passenger)
+        passenger = None if together is None else together.states[1]
         efficiency = None
     elif plan.target.efficiency is not None:
         require_collisions(plan)
@@ -101,6 +107,7 @@ def waypoints_answer(
         missed=tuple(density for density in densities if density not in found),
         expansion_time=expansion_time,
         efficiency=efficiency,
+        passenger=passenger,
     )
 
 
@@ -168,16 +175,23 @@ def departures_answer(
     found: tuple[Departure, ...] = ()
     if atoms_error > 0.0 or temperature_error > 0.0:
         ramp, path = ramp_of(plan), path_of(plan)
+        passenger, then = None, waypoint.passenger
+        if then is not None:
+            passenger = passenger_or_none(plan, start_of(plan))
+        if passenger is not None and then is not None:
+            passenger = replace(passenger, atoms=then.atoms, temperature=then.temperature)
         if tick is not None:
             from app.answers.watched_path import Progress, WatchedPath, surveys_along, watched_ramp
 
             runs = 1 + 2 * (atoms_error > 0.0) + 2 * (temperature_error > 0.0)
             progress = Progress(tick=tick, surveys=runs * surveys_along(ramp, path), part=1.0)
             ramp, path = watched_ramp(ramp, progress), WatchedPath(path=path, progress=progress)
+            if passenger is not None:
+                passenger = replace(passenger, path=WatchedPath(path=passenger.path, progress=progress))
         found = departures(
             waypoint, gas_of(plan), ramp, path,
             atoms_error=atoms_error, temperature_error=temperature_error,
-            losses=losses_of(plan), target=target_of(plan),
+            losses=losses_of(plan), target=target_of(plan), passenger=passenger,
         )  # fmt: skip
     return DeparturesAnswer(
         waypoint=waypoint,

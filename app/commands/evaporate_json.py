@@ -15,6 +15,8 @@ if TYPE_CHECKING:
     from app.commands.evaporate import Evaporated
     from physics.evaporation import Evaporation
     from physics.evaporation_budget import Budget
+    from physics.ramp_sensitivity import RampSensitivity
+    from physics.waypoints import PassengerThen
 
 CONTRACT = (
     "time",
@@ -43,6 +45,8 @@ def evaporate_body(found: Evaporated) -> dict[str, Any]:
     if found.sensitivity is not None:
         body["sensitivities"] = _sensitivities(found.sensitivity)
         body["sensitivities_planned"] = _finite(found.sensitivity.planned)
+        if found.sensitivity.passenger_bosons is not None:
+            body["sensitivities_planned_passenger"] = _finite(found.sensitivity.planned_passenger)
     return body
 
 
@@ -253,10 +257,23 @@ def _waypoints(found: WaypointsAnswer) -> dict[str, Any]:
                 "depth": _finite(point.depth),
                 "truncation": _finite(point.truncation),
                 "elastic_collision_rate": _finite(point.collision_rate),
-                "widths": list(point.widths) if all(math.isfinite(width) for width in point.widths) else None,
+                "widths": _list_of(list(point.widths)),
+                **({} if found.passenger is None else {"passenger": _passenger_then(point.passenger)}),
             }
             for point in found.points
         ],
+    }
+
+
+def _passenger_then(then: PassengerThen | None) -> dict[str, Any] | None:
+    """The passenger at a waypoint; null where it is not held any more."""
+    if then is None:
+        return None
+    return {
+        "atoms": _finite(then.atoms),
+        "temperature": _finite(then.temperature),
+        "reduced_temperature": _finite(then.reduced_temperature),
+        "widths": _list_of(list(then.widths)),
     }
 
 
@@ -274,6 +291,11 @@ def _departures(found: DeparturesAnswer) -> dict[str, Any]:
                     name: _finite(one.run.final[name])
                     for name in ("time", "atoms", "temperature", "peak_phase_space_density")
                 },
+                **(
+                    {}
+                    if one.passenger is None
+                    else {"passenger_reduced_temperature": _finite(one.passenger.final["reduced_temperature"])}
+                ),
             }
             for one in found.departures
         ],
@@ -291,9 +313,18 @@ def _sensitivities(found: SensitivityAnswer) -> list[dict[str, Any]]:
             "reason_less": one.reason_less.value,
             "reason_more": one.reason_more.value,
             "slope": _finite(one.slope),
+            **({} if found.passenger_bosons is None else _passenger_sensitivity(one)),
         }
         for one in found.found
     ]
+
+
+def _passenger_sensitivity(one: RampSensitivity) -> dict[str, float | None]:
+    return {
+        "passenger_less": _finite(one.passenger_less),
+        "passenger_more": _finite(one.passenger_more),
+        "passenger_slope": _finite(one.passenger_slope),
+    }
 
 
 def _atoms(budget: Budget) -> dict[str, float]:

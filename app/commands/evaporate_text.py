@@ -21,6 +21,7 @@ from app.ramp_words import (
     duration,
     input_text,
     limiting,
+    passenger_sensitivity_sentence,
     ramp_caveat_text,
     ramp_verdict,
 )
@@ -30,6 +31,7 @@ from app.trap_words import cautions
 from app.units import best_unit, format_quantity
 from app.words import number, percent, temperature
 from physics.evaporation_rates import Process
+from physics.particles import Statistics
 
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
@@ -57,7 +59,9 @@ def evaporate_text(found: Evaporated) -> str:
         blocks += _beside(found.answer, found.reference)
     if found.waypoints is not None:
         blocks.append(_waypoints(found.waypoints))
-        blocks.append(_departures(found.departures, alone=found.plan.passenger is not None))
+        blocks.append(_passenger_waypoints(found.waypoints))
+        alone = found.answer is not None and bool(found.answer.passenger_left_out)
+        blocks.append(_departures(found.departures, alone=alone))
     if found.sensitivity is not None:
         blocks.append(_sensitivity(found.sensitivity))
     if found.answer is not None:
@@ -242,6 +246,29 @@ def _waypoints(found: WaypointsAnswer) -> list[str]:
     return lines
 
 
+def _passenger_waypoints(found: WaypointsAnswer) -> list[str]:
+    """The passenger at the same times; nothing without one."""
+    state = found.passenger
+    if state is None or not found.points:
+        return []
+    ratio = _("T/Tc") if state.statistics is Statistics.BOSE else _("T/TF")
+    header = ("D", _("after"), "N", "T", ratio, _("widths"))
+    rows = []
+    for point in found.points:
+        then = point.passenger
+        cells: tuple[str, ...] = ("–",) * 4
+        if then is not None:
+            cells = (
+                number(then.atoms, 3),
+                temperature(then.temperature),
+                number(then.reduced_temperature, 3),
+                _widths(then.widths),
+            )
+        rows.append((number(point.phase_space_density, 3), duration(point.time), *cells))
+    title = _("{species}, the passenger, at the same times").format(species=state.key)
+    return [title, *columns([header, *rows], indent=2, right=range(len(header)))]
+
+
 def _widths(widths: tuple[float, float, float]) -> str:
     if not all(math.isfinite(width) for width in widths):
         return "–"
@@ -273,17 +300,30 @@ def _departures(found: tuple[DeparturesAnswer, ...], *, alone: bool) -> list[str
 def _left(one: Departure, planned: Departure) -> str:
     """Atoms at the end, and why it ended where that is not as planned."""
     atoms = number(one.run.final["atoms"], 3)
+    if one.passenger is not None:
+        ratio = _("T/Tc") if one.passenger.gas.bosons else _("T/TF")
+        atoms = f"{atoms}; {ratio} {number(one.passenger.final['reduced_temperature'], 3)}"
     return atoms if one.run.reason is planned.run.reason else f"{atoms}, {one.run.reason.label}"
 
 
 def _sensitivity(found: SensitivityAnswer) -> list[str]:
-    rows = [(input_text(one), *change_text(one, found.planned)) for one in found.found]
-    header = ("", _("less"), _("more"))
+    rows: list[tuple[str, ...]] = [(input_text(one), *change_text(one, found.planned)) for one in found.found]
+    header: tuple[str, ...] = ("", _("less"), _("more"))
     title = _("Atoms at the end, with each input {change} less or more").format(change=percent(found.change))
-    return [
-        f"{title}, {FIRST_ALONE}" if found.alone else title,
-        *columns([header, *rows], indent=2, right=(1, 2)),
-    ]
+    title = f"{title}, {FIRST_ALONE}" if found.alone else title
+    lines = []
+    if found.passenger_bosons is not None:
+        ratio = _("T/Tc") if found.passenger_bosons else _("T/TF")
+        header = (*header, _("{ratio} less").format(ratio=ratio), _("{ratio} more").format(ratio=ratio))
+        rows = [
+            (*row, number(one.passenger_less, 3), number(one.passenger_more, 3))
+            for row, one in zip(rows, found.found, strict=True)
+        ]
+        title = _("{title}; with {ratio} of the passenger, {end} without a change").format(
+            title=title, ratio=ratio, end=number(found.planned_passenger, 3)
+        )
+        lines = [passenger_sensitivity_sentence(found)]
+    return [title, *columns([header, *rows], indent=2, right=range(1, len(header))), *lines]
 
 
 def _passenger(answer: RampAnswer) -> list[list[str]]:

@@ -28,6 +28,7 @@ from app.ramp_choices import LONGEST_LABEL, MeasuredChoice
 from app.units import ATOM_NUMBER, CLOUD_WIDTH, TEMPERATURE, TIME, Kind, Quantity, best_unit, quantity
 from app.widgets.form import Choice
 from app.widgets.plan_editor import PlanEditor
+from app.widgets.quantity_field import QuantityField
 from app.widgets.scrolled import fill_scrolled
 from app.words import number
 
@@ -88,6 +89,7 @@ class MeasuredView(PlanEditor):
                 for cloud in plan.measured
             ),
             len(plan.ramp),
+            plan.passenger is not None,
         )
         if pattern != self._pattern:
             self._pattern = pattern
@@ -109,7 +111,9 @@ class MeasuredView(PlanEditor):
         for column, stretch in ((0, 3), (1, 3), (2, 2), (3, 3), (4, 3), (5, 4)):
             grid.setColumnStretch(column, stretch)
         for place, cloud in enumerate(plan.measured):
-            self._add_row(grid, place + 1, place, cloud, plan)
+            self._add_row(grid, 2 * place + 1, place, cloud, plan)
+            if plan.passenger is not None:
+                self._add_passenger(grid, 2 * place + 2, place)
         self._column.replaceWidget(old, self._table)
         old.hide()
         old.deleteLater()
@@ -166,6 +170,21 @@ class MeasuredView(PlanEditor):
         )
         grid.addWidget(remove, row, 7)
 
+    def _add_passenger(self, grid: QGridLayout, row: int, place: int) -> None:
+        """What was measured of the second species at the same time."""
+        label = QLabel("of the passenger")
+        label.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+        grid.addWidget(label, row, 1, 1, 2)
+        name = f"the passenger at measured cloud {place + 1}"
+        for column, kind, what, key in (
+            (3, ATOM_NUMBER, "Atoms", "passenger_atoms"),
+            (5, TEMPERATURE, "Temperature", "passenger_temperature"),
+        ):
+            tip = f"{what} of the second species at the same time; empty: as simulated"
+            field = self._field(kind, f"{what} of {name}", place, key, tip, optional=True)
+            field.setPlaceholderText("as simulated")
+            grid.addWidget(field, row, column)
+
     def _temperature_fields(self, place: int, cloud: MeasuredChoice, name: str) -> QWidget:
         if cloud.temperature is not None:
             return self._field(TEMPERATURE, f"Temperature of {name}", place, "temperature")
@@ -186,10 +205,12 @@ class MeasuredView(PlanEditor):
         row.addWidget(time, 1)
         return box
 
-    def _field(self, kind: Kind, label: str, place: int, name: str, tip: str = "") -> QWidget:
+    def _field(
+        self, kind: Kind, label: str, place: int, name: str, tip: str = "", *, optional: bool = False
+    ) -> QuantityField:
         return self.add_field(
             kind, label, lambda plan: getattr(plan.measured[place], name), partial(_put, place, name),
-            f"measured {place} {name}", tip=tip,
+            f"measured {place} {name}", tip=tip, optional=optional,
         )  # fmt: skip
 
     def show_answers(self, planned: RampAnswer | None, rest: RampAnswer | None) -> None:

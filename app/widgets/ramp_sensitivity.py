@@ -13,11 +13,11 @@ from app.answers.ramp_sensitivity import CHANGE, SensitivityAnswer
 from app.figures.theme import LIGHT, Theme
 from app.newest import Steps
 from app.plan import Plan
-from app.ramp_words import FIRST_ALONE, change_text, input_text
+from app.ramp_words import FIRST_ALONE, change_text, input_text, passenger_sensitivity_sentence
 from app.widgets.effect_bar import EffectBar
 from app.widgets.fact_table import FactRow, FactTable
 from app.widgets.scrolled import fill_scrolled
-from app.words import percent
+from app.words import number, percent
 from physics.ramp_sensitivity import RampSensitivity
 
 _LEAST_REACH = 0.02  # of the logarithm of the atom number: smaller changes are no story
@@ -69,8 +69,12 @@ class SensitivityView(QWidget):
         rows = []
         for one in found.found:
             less, more = change_text(one, planned)
-            rows.append(FactRow(name=input_text(one), cells=(less, more, "")))
-        self.table.show_rows(("input", f"{share} less", f"{share} more", "atoms at the end"), rows)
+            rows.append(FactRow(name=input_text(one), cells=(less, more, "", *_of_passenger(found, one))))
+        heads = ["input", f"{share} less", f"{share} more", "atoms at the end"]
+        if found.passenger_bosons is not None:
+            ratio = "T/Tc" if found.passenger_bosons else "T/TF"
+            heads += [f"{ratio} of the passenger, less", "more"]
+        self.table.show_rows(heads, rows)
         self.table.fill_width()
         effects = [_effects(one, planned) for one in found.found]
         finite = [abs(change) for pair in effects for change in pair if math.isfinite(change)]
@@ -91,7 +95,8 @@ class SensitivityView(QWidget):
             )
             alone = f" Atoms {FIRST_ALONE}." if found.alone else ""
             self.sentence.setText(
-                f"What counts most: {input_text(first)}; {how}. Bars: filled for more, outlined for less of it.{alone}"
+                f"What counts most: {input_text(first)}; {how}. Bars: filled for more, outlined for less of it.{alone} "
+                f"{passenger_sensitivity_sentence(found)}".rstrip()
             )
 
     def stopped(self) -> None:
@@ -106,6 +111,13 @@ class SensitivityView(QWidget):
 
     def take_focus(self) -> None:
         self.table.setFocus()
+
+
+def _of_passenger(found: SensitivityAnswer, one: RampSensitivity) -> tuple[str, ...]:
+    """T/Tc or T/TF of the passenger at the end, by less and by more of an input; nothing without one."""
+    if found.passenger_bosons is None:
+        return ()
+    return tuple(number(value) if math.isfinite(value) else "–" for value in (one.passenger_less, one.passenger_more))
 
 
 def _effects(one: RampSensitivity, planned: float) -> tuple[float, float]:

@@ -26,8 +26,9 @@ from app.widgets.fact_table import FactRow, FactTable
 from app.widgets.quantity_field import QuantityField
 from app.widgets.scrolled import fill_scrolled
 from app.words import number, percent, temperature
+from physics.particles import Statistics
 from physics.ramps import Control
-from physics.waypoints import Departure, Waypoint
+from physics.waypoints import Departure, PassengerThen
 
 RELATIVE_ERROR = Kind(name="relative error", si_unit="", units=("%", ""), low=0.0, high=0.9, example="10 %")
 _CHOOSE = "Choose a waypoint to see what follows if N or T is off there."
@@ -201,7 +202,11 @@ class WaypointsView(QWidget):
             f"or T by {percent(off.temperature_error)}:"
         )
         rows = [_off_row(departure) for departure in off.departures]
-        self.off.show_rows(("cloud there", "ends with N", "T", "D", "η", "why it ends"), rows)
+        heads = ["cloud there", "ends with N", "T", "D", "η", "why it ends"]
+        own = off.departures[0].passenger
+        if own is not None:
+            heads.append("T/Tc of the passenger" if own.gas.bosons else "T/TF of the passenger")
+        self.off.show_rows(heads, rows)
         self.off.fill_width()
 
     def _choose(self) -> None:
@@ -265,7 +270,11 @@ def waypoint_headings(found: WaypointsAnswer) -> tuple[str, ...]:
     """What stands over the table."""
     controls = tuple(control.label for control in moving_controls(found))
     after = format_quantity(found.expansion_time, best_unit(found.expansion_time, ("s", "ms", "µs")), digits=3)
-    return ("D", "N", "T", "t", *controls, "η", "collisions", f"widths after {after}")
+    passenger: tuple[str, ...] = ()
+    if found.passenger is not None:
+        ratio = "T/Tc" if found.passenger.statistics is Statistics.BOSE else "T/TF"
+        passenger = (f"{found.passenger.key} N", "T", ratio, f"widths after {after}")
+    return ("D", "N", "T", "t", *controls, "η", "collisions", f"widths after {after}", *passenger)
 
 
 def waypoint_cells(found: WaypointsAnswer) -> list[tuple[str, ...]]:
@@ -285,16 +294,25 @@ def waypoint_cells(found: WaypointsAnswer) -> list[tuple[str, ...]]:
                 *controls,
                 number(point.truncation),
                 rate,
-                _widths(point),
+                _widths(point.widths),
+                *_passenger_cells(found, point.passenger),
             )
         )
     return rows
 
 
-def _widths(point: Waypoint) -> str:
-    if any(math.isnan(width) for width in point.widths):
+def _passenger_cells(found: WaypointsAnswer, then: PassengerThen | None) -> tuple[str, ...]:
+    if found.passenger is None:
+        return ()
+    if then is None:
+        return ("–",) * 4
+    return number(then.atoms), temperature(then.temperature), number(then.reduced_temperature), _widths(then.widths)
+
+
+def _widths(widths: tuple[float, float, float]) -> str:
+    if any(math.isnan(width) for width in widths):
         return "–"
-    return " × ".join(f"{1e6 * width:.3g}" for width in point.widths) + " µm"
+    return " × ".join(f"{1e6 * width:.3g}" for width in widths) + " µm"
 
 
 def waypoints_csv(found: WaypointsAnswer) -> str:
@@ -306,6 +324,9 @@ def waypoints_csv(found: WaypointsAnswer) -> str:
     heads += [f"{c.label} [{c.knob.unit}]" if c.knob.unit else c.label for c in controls]
     heads += ["truncation", "elastic collision rate [1/s]"]
     heads += [f"rms width {axis} [m]" for axis in "xyz"]
+    if found.passenger is not None:
+        heads += ["passenger atoms", "passenger temperature [K]", "passenger reduced temperature"]
+        heads += [f"passenger rms width {axis} [m]" for axis in "xyz"]
     writer.writerow(heads)
     for point in found.points:
         values: Sequence[float] = (
@@ -317,9 +338,18 @@ def waypoints_csv(found: WaypointsAnswer) -> str:
             point.truncation,
             point.collision_rate,
             *point.widths,
+            *_passenger_values(found, point.passenger),
         )
         writer.writerow("" if math.isnan(value) else repr(float(value)) for value in values)
     return text.getvalue()
+
+
+def _passenger_values(found: WaypointsAnswer, then: PassengerThen | None) -> tuple[float, ...]:
+    if found.passenger is None:
+        return ()
+    if then is None:
+        return (math.nan,) * 6
+    return (then.atoms, then.temperature, then.reduced_temperature, *then.widths)
 
 
 def _off_row(departure: Departure) -> FactRow:
@@ -331,6 +361,7 @@ def _off_row(departure: Departure) -> FactRow:
         number(final["peak_phase_space_density"]),
         number(final["truncation"]),
         run.reason.label,
+        *(() if departure.passenger is None else (number(departure.passenger.final["reduced_temperature"]),)),
     )
     return FactRow(name=_departure_name(departure), cells=cells)
 
