@@ -21,6 +21,8 @@ from physics.truncated_boltzmann import HARMONIC
 # Panels: halves down to 2^-(_HALVINGS + 1), cut where the curve has points, then the power law of the bottom.
 _HALVINGS = 14
 _RIM, _BOTTOM = 24, 24
+_LEAST = 1e-30
+_BETWEEN, _ORDER, _TOLERANCE = 6, 8, 1e-6  # of the panels between turns
 _NODES = ((0.05, 3), (0.1, 4), (0.18, 6), (0.35, 8), (math.inf, 12))
 """Nodes of panels, by the change of ln U along them, or a fifth of that of ln W, up to which they do."""
 
@@ -104,6 +106,21 @@ class CurveShape:
             place = np.clip(place + step, math.log(first), 0.0)
         return np.where(w < lowest, first * (w / lowest) ** (1.0 / self.exponent), np.exp(place))
 
+    def volume_and_slope(self, energy: Floats) -> tuple[Floats, Floats]:
+        """`volume`, and dW/dU, at energies between 0 and 1. [1]"""
+        u = np.maximum(energy, _LEAST)
+        if self._spline is None:
+            w = u**self.exponent
+            return w, self.exponent * w / u
+        first, lowest = float(self.energies[0]), float(self.volumes[0])
+        log_w, growth = (each[..., 0] for each in self._spline.with_slopes(np.log(np.maximum(u, first))))
+        below = u < first
+        w = np.exp(log_w)
+        if np.any(below):
+            w = np.where(below, lowest * (u / first) ** self.exponent, w)
+            growth = np.where(below, self.exponent, growth)
+        return w, w * growth / u
+
     def _growth(self, energy: Floats) -> Floats:
         """d ln W/d ln U."""
         if self._spline is None:
@@ -111,6 +128,52 @@ class CurveShape:
         first = float(self.energies[0])
         inside = self._spline.slopes(np.log(np.maximum(energy, first)))[..., 0]
         return np.where(energy < first, self.exponent, inside)
+
+    @cached_property
+    def turns(self) -> Floats:
+        """(panels - 1,) Energies between which quadratures of eight nodes in sqrt(U), or of the like, integrate W.
+
+        Their error is below `_TOLERANCE` of the integral over each panel, evenly weighted or rising with U, but for
+        panels between two points of the curve. Where arms of crossed beams open, or a further minimum joins, panels
+        are narrow.
+        """
+        if self.power_law:
+            return np.empty(0)
+        points = np.concatenate([[0.0], self.energies])
+        x, weights = legendre(_BETWEEN)
+        width, power = np.diff(points), np.arange(2)[:, np.newaxis, np.newaxis]
+        u = points[:-1, np.newaxis] + np.multiply.outer(width, x)
+        each = (self.volume(u) * u**power) @ weights * width
+        first = float(self.energies[0])
+        each[:, 0] = self.volumes[0] * first ** (power[:, 0, 0] + 1.0) / (self.exponent + 1.0 + power[:, 0, 0])
+        below = np.concatenate([np.zeros((2, 1)), np.cumsum(each, axis=-1)], axis=-1)
+        x, weights = legendre(_ORDER)
+
+        def even(first: int, last: int) -> bool:
+            low, width = math.sqrt(points[first]), math.sqrt(points[last]) - math.sqrt(points[first])
+            root = low + width * x
+            u = root * root
+            found = (self.volume(u) * u ** power[:, 0]) @ (2.0 * width * weights * root)
+            exact = below[:, last] - below[:, first]
+            miss, rising = found - exact, exact[1] - points[first] * exact[0]
+            return bool(
+                abs(miss[0]) < _TOLERANCE * exact[0] and abs(miss[1] - points[first] * miss[0]) < _TOLERANCE * rising
+            )
+
+        # From the top down, each panel as wide as it may be: by steps that double, and then halve.
+        last, ends = points.size - 1, []
+        while not even(0, last):
+            first, step = last - 1, 1
+            while step and first:
+                if first - step > 0 and even(first - step, last):
+                    first, step = first - step, 2 * step
+                else:
+                    step //= 2
+            if not first:
+                break
+            ends.append(points[first])
+            last = first
+        return as_floats(ends[::-1])
 
     @cached_property
     def measure(self) -> tuple[Floats, Floats]:

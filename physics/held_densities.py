@@ -6,7 +6,7 @@ Where the bottom of the local potential lies v kT above mu, and atoms of more th
 
 which is g_3/2(e^-v) or f_3/2(e^-v) where nothing is cut off [1]. Of bosons the part above the top is taken from the
 complete function. There E = top + s, so that the occupation is the same wherever the place, and a place brings in a
-square root only. Fermions, and bosons of which hardly anything is held, are summed up from the bottom.
+square root only. Fermions, and bosons where hardly anything is held, are summed up from the bottom.
 
 Energies in kT. `top` has the shape of the clouds, v one more axis, of places.
 
@@ -31,6 +31,7 @@ _TWO_OVER_ROOT_PI = 2.0 / math.sqrt(math.pi)
 _TAIL, _TAIL_REACH = 16, 5.8  # nodes above the top, and sqrt(s) beyond which nothing is left
 _BOTTOM = 24  # nodes of what is summed from the bottom
 _FEW = 1.0  # tops below which little is held
+_NEAR = 0.5  # places so close below the top that what is held there is a small difference
 _NOTHING_CUT = 32.0
 _PANEL = 16
 _WIDE, _NARROW = 36.0, 9.0  # of the Fermi edge, kT
@@ -65,14 +66,15 @@ class HeldBose:
         if np.any(cut):
             for total, tail in zip(found, HeldBose(top=self.top[cut])._tail(y[cut], orders), strict=True):
                 total[cut] -= tail
-        few = self.top < _FEW
-        if np.any(few):
-            x, weights = legendre(_BOTTOM)
-            p = y[few][..., np.newaxis] * x * x
-            for total, order in zip(found, orders, strict=True):
+            near = (cut[:, np.newaxis] & (y < _NEAR)) | (self.top < _FEW)[:, np.newaxis]
+            if np.any(near):
+                x, weights = legendre(_BOTTOM)
+                p = y[near][:, np.newaxis] * x * x
                 with np.errstate(divide="ignore", invalid="ignore"):
-                    shares = np.where(p > 0.0, p**order / np.expm1(v[few][..., np.newaxis] + p), 0.0)
-                total[few] = 2.0 * y[few] * (shares @ (x * weights))
+                    filled = 1.0 / np.expm1(v[near][:, np.newaxis] + p)
+                    for total, order in zip(found, orders, strict=True):
+                        shares = np.where(p > 0.0, p**order * filled, 0.0)
+                        total[near] = 2.0 * y[near] * (shares @ (x * weights))
         return [np.where(y > 0.0, np.maximum(total, 0.0), 0.0) for total in found]
 
     def density(self, v: Floats) -> Floats:

@@ -29,7 +29,7 @@ from physics.checks import Floats
 from physics.constants import boltzmann
 from physics.equilibria import Equilibrium, quantity
 from physics.level_sums import LevelSums, Moments
-from physics.real_sums import ends_between, panels
+from physics.real_sums import STEPS, ends_between, panels_to_top, turns_above
 from physics.real_trap import RealTrap
 from physics.smooth_surface import through_grid
 from physics.truncated_boltzmann import incomplete_gamma
@@ -86,7 +86,8 @@ def classical_cloud(trap: RealTrap, eta: Floats) -> ClassicalCloud:
     def squared(eta: Floats) -> Floats:
         nothing = np.zeros_like(eta)
         end = np.minimum(eta, _REACH)
-        root, width = panels(np.sqrt(ends_between(eta, nothing, nothing, end, (2.0, 10.0))), _PANEL)
+        ends = ends_between(turns_above(trap.curve.turns, eta, nothing), nothing, end, STEPS)
+        root, width = panels_to_top(np.sqrt(ends), _PANEL)
         # Rounding must not lead beyond the highest energy, where nothing is defined.
         V = root * root
         y = np.maximum(eta[:, np.newaxis] - V, 0.0)

@@ -20,7 +20,8 @@ from physics.constants import boltzmann, planck
 from physics.equilibria import quantity
 from physics.models import Model
 from physics.real_equilibria import Densities, RealEquilibrium
-from physics.real_hartree_fock_integrals import SUMS, MeanField, Solution, local_densities
+from physics.real_hartree_fock_edge import local_densities
+from physics.real_hartree_fock_integrals import SUMS, Solution
 from physics.real_ideal import RealIdealBose
 from physics.real_semi_ideal import atoms_over_most
 from physics.roots import rising_roots
@@ -47,7 +48,7 @@ class RealHartreeFock(RealEquilibrium):
     @quantity
     def onset_temperature(self) -> Floats:
         """Where the condensate of the model appears at this atom number. [K]"""
-        field, trap = MeanField(shape=self.trap.curve), self.trap
+        field, trap = self.trap.mean_field, self.trap
         shape = np.broadcast_shapes(np.shape(self._atoms), trap.shape, np.shape(self.cloud.length))
         ideal = self._ideal.critical_temperature
         tc, atoms, held, volume, length = (
@@ -68,10 +69,9 @@ class RealHartreeFock(RealEquilibrium):
 
     @cached_property
     def _solution(self) -> Solution:
-        field = MeanField(shape=self.trap.curve)
         eta, wanted, g = (self._flat(each) for each in (self._eta, self._volume_number, self.repulsion))
         with np.errstate(all="ignore"):
-            return field.solve(eta, g, wanted, self._flat(self._ideal._alpha))
+            return self.trap.mean_field.solve(eta, g, wanted, self._flat(self._ideal._alpha))
 
     def local_densities(self, potential: Floats) -> tuple[Floats, Floats]:
         """n lambda^3 of thermal atoms and condensate, (places,), where the potential is so many kT; of a single cloud.

@@ -23,10 +23,11 @@ import numpy as np
 from physics.checks import Floats
 from physics.curve_shape import CurveShape
 from physics.held_densities import HeldBose
+from physics.real_hartree_fock_edge import WEAKEST, Centre, centre
 from physics.real_semi_ideal_integrals import CondensateSums
-from physics.real_sums import ends_between, panels
+from physics.real_sums import STEPS, ends_between, panels, panels_to_top, turns_above
 from physics.roots import rising_roots
-from physics.statistics import bose_inverse
+from physics.statistics import zeta
 
 SUMS = (
     "condensate", "thermal", "condensate_potential", "thermal_potential", "kinetic", "squared", "pairs", "triples",
@@ -35,30 +36,29 @@ SUMS = (
 n_c^2 + 4 n_c n_t + 2 n_t^2 and n_c^3 + 9 n_c^2 n_t + 18 n_c n_t^2 + 6 n_t^3."""
 
 _REACH, _ORDER = 42.0, 8
-_WEAKEST, _TINY = 1e-100, 1e-300
+_TINY = 1e-300
 _CELLS = 64
-_STEPS = 2  # of the top, which the mean field hardly moves
-
-
-class _Edge(NamedTuple):
-    """v on both sides of a condensate's edge, densities there, and y_min = (mu - V)/kT."""
-
-    inside: Floats
-    outside: Floats
-    thermal_inside: Floats
-    thermal_outside: Floats
-    height: Floats
+_ROUNDS, _SETTLED = 40, 1e-11  # of the top of clouds without a condensate
+_SMALLEST = -25.0  # ln of what the centre of a condensate is beyond its edge
+_DEEP, _FOUND, _FOUND_NEAR_TOP = 40.0, 1e-6, 1e-9
+_HIGH = 5.0  # tops from which on the derivative of N leaves out that they move
 
 
 class _Nodes(NamedTuple):
-    """Nodes of an integral over v, (cells, nodes): densities of thermal atoms, how they fall, the potential of the
-    trap, and w with the weights."""
+    """Nodes of an integral over v, (cells, nodes), those inside the condensate first.
 
-    v: Floats
+    d, fall, V : densities of thermal atoms, how they fall with v, and the potential of the trap
+    w, slope : w and dw/dV, with the weights
+    inside : how many are inside
+    """
+
     d: Floats
     fall: Floats
+    v: Floats
     V: Floats
     w: Floats
+    slope: Floats
+    inside: int
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -85,6 +85,7 @@ class MeanField:
     """The mean field in a trap of a shape."""
 
     shape: CurveShape
+    condensates: CondensateSums
 
     def solve(self, eta: Floats, g: Floats, wanted: Floats, alpha: Floats) -> Solution:
         """Clouds of N lambda^3 = `wanted` times the volume; NaN where the trap does not hold so many.
@@ -96,7 +97,9 @@ class MeanField:
         parts = []
         for start in range(0, max(eta.size, 1), _CELLS):
             part = slice(start, start + _CELLS)
-            parts.append(self._solve(eta[part], np.maximum(g[part], _WEAKEST), wanted[part], alpha[part]))
+            parts.append(self._solve(eta[part], np.maximum(g[part], WEAKEST), wanted[part], alpha[part]))
+        if len(parts) == 1:
+            return parts[0]
         return Solution(
             **{
                 field.name: np.concatenate([getattr(part, field.name) for part in parts], -1)
@@ -106,142 +109,147 @@ class MeanField:
 
     def threshold(self, eta: Floats, g: Floats) -> Floats:
         """N lambda^3 over the volume at which a condensate appears."""
-        weak = np.maximum(g, _WEAKEST)
-        first, top = _edge_at_centre(eta, weak)
-        return self._outer_number(eta, weak, top, first.height, first.outside)
+        weak = np.maximum(g, WEAKEST)
+        return self._threshold(eta, weak, centre(eta, weak, np.zeros_like(eta)))
+
+    def _threshold(self, eta: Floats, g: Floats, first: Centre) -> Floats:
+        at = self._nodes(eta, g, first.edge.height, first.top, first.edge.outside)
+        return _total(at.w, at.fall)
 
     def _solve(self, eta: Floats, g: Floats, wanted: Floats, alpha: Floats) -> Solution:
-        first, top = _edge_at_centre(eta, g)
-        without = self._outer_number(eta, g, top, first.height, first.outside)
+        first = centre(eta, g, np.zeros_like(eta))
+        without = self._threshold(eta, g, first)
+        edge = first.edge
         m, found = np.full_like(eta, np.nan), np.full((len(SUMS), eta.size), np.nan)
-        densest, centre, rise = (np.full_like(eta, np.nan) for _ in range(3))
+        densest, middle, rise = (np.full_like(eta, np.nan) for _ in range(3))
         thermal = wanted <= without
         if np.any(thermal):
             at = eta[thermal], g[thermal]
-            v, top_v, m[thermal] = self._thermal(*at, wanted[thermal], alpha[thermal], first.outside[thermal])
-            found[:, thermal] = self._outer(*at, top_v, m[thermal], v)
-            densest[thermal] = centre[thermal] = _density(top_v, v)
+            v, m[thermal] = self._thermal(*at, wanted[thermal], alpha[thermal], edge.outside[thermal])
+            top = at[0] - m[thermal]
+            found[:, thermal] = self._outside(at[1], self._nodes(*at, m[thermal], top, v))
+            densest[thermal] = middle[thermal] = _density(top, v)
         if not np.all(thermal):
             below = ~thermal
             at = eta[below], g[below]
-            near = _Edge(*(each[below] for each in first))
-            v, top_v, edge = self._condensed(*at, wanted[below], without[below], top[below], near)
-            d = _density(top_v, v)
-            m[below] = v + 2.0 * at[1] * d
-            found[:, below] = self._inner(*at, top_v, m[below], v, edge)
-            found[:, below] += self._outer(*at, top_v, m[below], edge.outside)
-            densest[below], centre[below] = edge.thermal_outside, d + v / at[1]
-            rise[below] = m[below] - edge.height
-        jump = (first.inside / g + first.thermal_inside) / first.thermal_outside - 1.0
-        return Solution(m=m, sums=found, densest=densest, centre=centre, jump=jump, rise=rise)
+            near = first.where(below)
+            here = self._condensed(*at, wanted[below], without[below], near)
+            m[below] = at[0] - here.top
+            found[:, below] = self._around(*at, here)
+            densest[below], middle[below] = here.edge.thermal_outside, here.d + here.v / at[1]
+            rise[below] = m[below] - here.edge.height
+        jump = (edge.inside / g + edge.thermal_inside) / edge.thermal_outside - 1.0
+        return Solution(m=m, sums=found, densest=densest, centre=middle, jump=jump, rise=rise)
 
-    def _thermal(
-        self, eta: Floats, g: Floats, wanted: Floats, alpha: Floats, least: Floats
-    ) -> tuple[Floats, Floats, Floats]:
-        """v at the centre, the top and m of clouds without a condensate."""
-        state = {"top": eta + alpha}
+    def _thermal(self, eta: Floats, g: Floats, wanted: Floats, alpha: Floats, least: Floats) -> tuple[Floats, Floats]:
+        """v at the centre, and m, of clouds without a condensate."""
+        state = {"top": eta + alpha, "m": alpha}
 
-        def miss(v: Floats) -> Floats:
-            for _ in range(_STEPS):
-                m = 2.0 * g * _density(state["top"], v) - v
+        def miss(v: Floats) -> tuple[Floats, Floats]:
+            for _ in range(_ROUNDS):
+                before = state["top"]
+                d, fall = (each[:, 0] for each in HeldBose(top=before).density_and_fall(v[:, np.newaxis]))
+                state["m"] = m = 2.0 * g * d - v
                 state["top"] = eta - m
-            state["m"] = m
-            number = self._outer_number(eta, g, state["top"], m, v)
-            missing: Floats = -np.log(number / wanted)
-            return missing
+                if not np.any(np.abs(state["top"] - before) > _SETTLED * before):
+                    break
+            at = self._nodes(eta, g, m, state["top"], v)
+            number = _total(at.w, at.fall)
+            slope = _total(at.slope, at.fall) * (1.0 + 2.0 * g * fall) / number
+            return -np.log(number / wanted), np.where(state["top"] > _HIGH, slope, np.nan)
 
-        start = np.maximum(alpha, least)
-        v = rising_roots(miss, least * (1.0 - 1e-9), np.full_like(eta, np.inf), start, slopes=(0.3, 1e6))
+        start, low = np.maximum(alpha, least), least * (1.0 - 1e-9)
+        v = rising_roots(
+            miss, low, np.full_like(eta, np.inf), start, slope=1.0, slopes=(0.3, 1e6), tolerance=_tolerance(eta)
+        )
         miss(v)
-        return v, state["top"], state["m"]
+        return v, state["m"]
 
-    def _condensed(
-        self, eta: Floats, g: Floats, wanted: Floats, without: Floats, top: Floats, near: _Edge
-    ) -> tuple[Floats, Floats, _Edge]:
-        """v at the centre, the top and the edge, of clouds with a condensate; `near` is the edge of a small one."""
-        state, edges = {"top": top}, {"edge": near}
+    def _condensed(self, eta: Floats, g: Floats, wanted: Floats, without: Floats, near: Centre) -> Centre:
+        """The centre of clouds with a condensate; `near` is that of a small one."""
+        state = {"centre": near}
         beyond = wanted - without
 
-        def miss(log_x: Floats) -> Floats:
-            v = edges["edge"].inside + np.nan_to_num(np.exp(log_x), nan=1.0)
-            for _ in range(_STEPS):
-                m = np.minimum(v + 2.0 * g * _density(state["top"], v), eta)
-                state["top"] = eta - m
-            edges["edge"] = edge = _refined(edges["edge"], g, state["top"])
-            number = self._inner_number(eta, g, state["top"], m, v, edge)
-            number = number + self._outer_number(eta, g, state["top"], m, edge.outside)
+        def miss(log_x: Floats) -> tuple[Floats, Floats]:
+            x = np.nan_to_num(np.exp(log_x), nan=1.0)
+            state["centre"] = here = centre(eta, g, x, state["centre"])
+            number, by_m = self._number(eta, g, here)
             extra = number - without
-            return np.where(extra > 0.0, np.log(extra / beyond), -np.inf)
+            slope = by_m * (1.0 - 2.0 * g * here.fall) * x / extra
+            logs = np.where(extra > 0.0, np.log(extra / beyond), -np.inf)
+            return logs, np.where((extra > 0.0) & (here.top > _HIGH), slope, np.nan)
 
-        high = np.log(eta)
         # At mu = depth no thermal atoms are held: the condensate alone fills the trap.
-        fits = eta / g * CondensateSums(shape=self.shape).condensate(np.ones(1))[0] >= wanted
-        first = np.where(fits, np.log(np.clip(beyond / without, 1e-7, 0.3)) + np.minimum(high, 0.0), np.nan)
-        log_x = rising_roots(miss, np.full_like(eta, -25.0), high, first, slope=1.5)
-        miss(log_x)
-        v = edges["edge"].inside + np.exp(log_x)
-        return v, state["top"], edges["edge"]
+        fits = eta / g * self.condensates.full >= wanted
+        # Below the roots of either part alone, of the condensate and of thermal atoms, which it lifts.
+        alone, lifted = eta * self.condensates.share(beyond * g / eta), 0.73 * beyond / without
+        high = np.log(eta)
+        first = np.where(fits, np.minimum(np.log(alone * lifted / (alone + lifted)), high - 1e-3), np.nan)
+        log_x = rising_roots(miss, np.full_like(eta, _SMALLEST), high, first, slope=1.5, tolerance=_tolerance(eta))
+        return centre(eta, g, np.nan_to_num(np.exp(log_x), nan=1.0), state["centre"]).known(fits)
 
-    def _outer_nodes(self, eta: Floats, g: Floats, top: Floats, m: Floats, first: Floats) -> _Nodes:
-        """Of the thermal gas outside the place where its lowest level is `first` above mu."""
+    def _nodes(
+        self, eta: Floats, g: Floats, m: Floats, top: Floats, first: Floats, condensate: Centre | None = None
+    ) -> _Nodes:
+        """Of the thermal gas outside the place where its lowest level is `first` above mu, and of the inside of a
+        condensate."""
         end = np.maximum(np.minimum(top, first + _REACH), first)
-        ends = ends_between(eta, m, first, end, (0.3, 2.0, 10.0))
+        ends = ends_between(self._turns(eta, g, m, top, first, end), first, end, STEPS)
         root0 = np.sqrt(first)[:, np.newaxis]
-        q, width = panels(np.sqrt(np.maximum(np.sqrt(ends) - root0, 0.0)), _ORDER)
+        q, width = panels_to_top(np.sqrt(np.maximum(np.sqrt(ends) - root0, 0.0)), _ORDER)
         root = root0 + q * q
         v, dv = root * root, 4.0 * root * q * width
+        side, inside = np.ones(v.shape[1]), 0
+        if condensate is not None:
+            high = condensate.v
+            low = np.minimum(condensate.edge.inside, high)
+            ends = -ends_between(self._turns(eta, g, m, top, -high, -low), -high, -low, (-10.0, -2.0, -0.3))
+            # The fall of the thermal density changes over a distance like v itself.
+            steps = np.concatenate(
+                [np.multiply.outer(low, [0.7, 3.0]), np.tile([0.1, 1.0, 5.0, 20.0], (low.size, 1))], axis=-1
+            )
+            near = np.clip(low[:, np.newaxis] + steps, low[:, np.newaxis], high[:, np.newaxis])
+            ends = np.sort(np.concatenate([ends, near], axis=-1), axis=-1)[:, ::-1]
+            q, width = panels(np.sqrt(np.maximum(high[:, np.newaxis] - ends, 0.0)), _ORDER)
+            inside = q.shape[1]
+            v = np.concatenate([high[:, np.newaxis] - q * q, v], axis=-1)
+            dv = np.concatenate([2.0 * q * width, dv], axis=-1)
+            side = np.concatenate([np.full(inside, -1.0), side])
         d, fall = HeldBose(top=top).density_and_fall(v)
-        V = m[:, np.newaxis] + v - 2.0 * g[:, np.newaxis] * d
-        return _Nodes(v=v, d=d, fall=fall, V=V, w=self._volume(eta[:, np.newaxis], V) * dv)
+        V = m[:, np.newaxis] + side * v - 2.0 * g[:, np.newaxis] * d
+        w, slope = self._volume(eta[:, np.newaxis], V)
+        return _Nodes(d, fall, v, V, w * dv, slope * dv, inside)
 
-    def _inner_nodes(self, eta: Floats, g: Floats, top: Floats, m: Floats, centre: Floats, edge: _Edge) -> _Nodes:
-        """Of the inside of a condensate, from its edge to v at the centre."""
-        low, high = np.minimum(edge.inside, centre), centre
-        ends = -ends_between(eta, m, -high, -low, (-10.0, -2.0, -0.3))
-        # The fall of the thermal density changes over a distance like v itself.
-        steps = np.concatenate([np.multiply.outer(low, [0.7, 3.0]), np.tile([0.1, 1.0, 5.0, 20.0], (low.size, 1))], -1)
-        near = np.clip(low[:, np.newaxis] + steps, low[:, np.newaxis], high[:, np.newaxis])
-        ends = np.sort(np.concatenate([ends, near], axis=-1), axis=-1)[:, ::-1]
-        q, width = panels(np.sqrt(np.maximum(high[:, np.newaxis] - ends, 0.0)), _ORDER)
-        v, dv = high[:, np.newaxis] - q * q, 2.0 * q * width
-        d, fall = HeldBose(top=top).density_and_fall(v)
-        V = m[:, np.newaxis] - v - 2.0 * g[:, np.newaxis] * d
-        return _Nodes(v=v, d=d, fall=fall, V=V, w=self._volume(eta[:, np.newaxis], V) * dv)
+    def _turns(self, eta: Floats, g: Floats, m: Floats, top: Floats, low: Floats, high: Floats) -> Floats:
+        """(cells, turns) v, or -v inside a condensate, about where the curve turns, of those between low and high."""
+        above = turns_above(self.shape.turns, eta, m)
+        lift = 2.0 * zeta(1.5) * g[:, np.newaxis]
+        between = np.any((above > low[:, np.newaxis] - lift) & (above < high[:, np.newaxis]), axis=0)
+        above = above[:, between]
+        if not above.size:
+            return above
+        lifted: Floats = above + 2.0 * g[:, np.newaxis] * HeldBose(top=top).density(np.abs(above))
+        return lifted
 
-    def _volume(self, eta: Floats, V: Floats) -> Floats:
-        w: Floats = self.shape.volume(np.clip(V / eta, 0.0, 1.0))
-        return w
+    def _volume(self, eta: Floats, V: Floats) -> tuple[Floats, Floats]:
+        w, slope = self.shape.volume_and_slope(np.clip(V / eta, 0.0, 1.0))
+        return w, slope / eta
 
-    def _outer_number(self, eta: Floats, g: Floats, top: Floats, m: Floats, first: Floats) -> Floats:
-        """Thermal atoms outside, (cells,)."""
-        at, d = self._outer_nodes(eta, g, top, m, first), _density(top, first)
-        w_first = self._volume(eta, m + first - 2.0 * g * d)
-        return _total(at.w, at.fall) - w_first * d
+    def _number(self, eta: Floats, g: Floats, here: Centre) -> tuple[Floats, Floats]:
+        """All atoms around a condensate, (cells,), and the derivative by m as if the top stood still."""
+        edge, m = here.edge, eta - here.top
+        at = self._nodes(eta, g, m, here.top, edge.outside, here)
+        w, slope = self._volume(eta, m - edge.height)
+        drop = edge.inside / g + edge.thermal_inside - edge.thermal_outside
+        falls = np.concatenate([1.0 / g[:, np.newaxis] - at.fall[:, : at.inside], at.fall[:, at.inside :]], axis=-1)
+        return w * drop + _total(at.w, falls), slope * drop + _total(at.slope, falls)
 
-    def _outer(self, eta: Floats, g: Floats, top: Floats, m: Floats, first: Floats) -> Floats:
-        """(8, cells) `SUMS` of the thermal gas outside."""
-        at, d = self._outer_nodes(eta, g, top, m, first), _density(top, first)
-        V_first = m + first - 2.0 * g * d
-        start = self._volume(eta, V_first) * _at_place(np.zeros_like(d), d, V_first, _kinetic(top, first))
-        rise = 1.0 + 2.0 * g[:, np.newaxis] * at.fall
-        nothing = np.zeros_like(at.d)
-        falls = (nothing, at.fall, nothing, at.V * at.fall - rise * at.d, 1.5 * at.d, 2.0 * at.d * at.fall,
-                 4.0 * at.d * at.fall, 18.0 * at.d * at.d * at.fall)  # fmt: skip
-        return np.stack([_total(at.w, each) for each in falls]) - start
-
-    def _inner_number(self, eta: Floats, g: Floats, top: Floats, m: Floats, centre: Floats, edge: _Edge) -> Floats:
-        """Atoms inside, (cells,)."""
-        at = self._inner_nodes(eta, g, top, m, centre, edge)
-        w_edge = self._volume(eta, m - edge.height)
-        return w_edge * (edge.inside / g + edge.thermal_inside) + _total(at.w, 1.0 / g[:, np.newaxis] - at.fall)
-
-    def _inner(self, eta: Floats, g: Floats, top: Floats, m: Floats, centre: Floats, edge: _Edge) -> Floats:
-        """(8, cells) `SUMS` of the inside."""
-        at, slope = self._inner_nodes(eta, g, top, m, centre, edge), 1.0 / g[:, np.newaxis]
-        c, d, fall, V = at.v * slope, at.d, at.fall, at.V
-        V_edge = m - edge.height
-        kinetic = _kinetic(top, edge.inside)
-        end = self._volume(eta, V_edge) * _at_place(edge.inside / g, edge.thermal_inside, V_edge, kinetic)
+    def _around(self, eta: Floats, g: Floats, here: Centre) -> Floats:
+        """(8, cells) `SUMS` of clouds with a condensate."""
+        edge, m = here.edge, eta - here.top
+        at = self._nodes(eta, g, m, here.top, edge.outside, here)
+        slope, inner = 1.0 / g[:, np.newaxis], slice(at.inside)
+        c, d, fall, V = at.v[:, inner] * slope, at.d[:, inner], at.fall[:, inner], at.V[:, inner]
         rise = 2.0 / slope * fall - 1.0
         rises = (
             np.broadcast_to(slope, d.shape), -fall, rise * c + V * slope, rise * d - V * fall, -1.5 * d,
@@ -249,7 +257,26 @@ class MeanField:
             3.0 * c * c * slope + 9.0 * c * (2.0 * slope * d - c * fall)
             + 18.0 * d * (slope * d - 2.0 * c * fall - d * fall),
         )  # fmt: skip
-        return np.stack([_total(at.w, each) for each in rises]) + end
+        V_edge = m - edge.height
+        nothing = np.zeros_like(m)
+        step = _at_place(edge.inside / g, edge.thermal_inside, V_edge, _kinetic(here.top, edge.inside))
+        step -= _at_place(nothing, edge.thermal_outside, V_edge, _kinetic(here.top, edge.outside))
+        at_edge = self._volume(eta, V_edge)[0] * step
+        within = np.stack([_total(at.w[:, inner], each) for each in rises])
+        return within + at_edge + self._outside(g, at)
+
+    def _outside(self, g: Floats, at: _Nodes) -> Floats:
+        """(8, cells) `SUMS` of the thermal gas outside, but for the step at its beginning."""
+        outer = slice(at.inside, None)
+        d, fall, w = at.d[:, outer], at.fall[:, outer], at.w[:, outer]
+        rise, nothing = 1.0 + 2.0 * g[:, np.newaxis] * fall, np.zeros_like(d)
+        falls = (nothing, fall, nothing, at.V[:, outer] * fall - rise * d, 1.5 * d, 2.0 * d * fall, 4.0 * d * fall,
+                 18.0 * d * d * fall)  # fmt: skip
+        return np.stack([_total(w, each) for each in falls])
+
+
+def _tolerance(eta: Floats) -> Floats:
+    return np.where(eta > _DEEP, _FOUND, _FOUND_NEAR_TOP)
 
 
 def _at_place(c: Floats, d: Floats, V: Floats, kinetic: Floats) -> Floats:
@@ -270,77 +297,3 @@ def _total(w: Floats, values: Floats) -> Floats:
 
 def _density(top: Floats, v: Floats) -> Floats:
     return HeldBose(top=np.maximum(top, _TINY)).density(v[:, np.newaxis])[:, 0]
-
-
-def _fall(top: Floats, v: Floats) -> Floats:
-    return HeldBose(top=np.maximum(top, _TINY)).fall(v[:, np.newaxis])[:, 0]
-
-
-def local_densities(g: float, m: float, top: float, potential: Floats, *, condensed: bool) -> tuple[Floats, Floats]:
-    """n lambda^3 of thermal atoms and condensate where the potential is `potential` kT, (places,). [1]"""
-    gas, edge = HeldBose(top=np.array([top])), _edge(np.array([g]), np.array([top]))
-    height = m - potential
-    inside = (height >= edge.height[0]) & condensed
-
-    def density(v: Floats) -> Floats:
-        d: Floats = gas.density(v[np.newaxis])[0]
-        return d
-
-    v = np.empty_like(potential)
-    if np.any(inside):
-        y, least = height[inside], np.full(np.count_nonzero(inside), edge.inside[0])
-        v[inside] = rising_roots(lambda v: v + 2.0 * g * density(v) - y, least, np.maximum(y, least), y)
-    if not np.all(inside):
-        y = height[~inside]
-        first = float(edge.outside[0]) if condensed else 0.0
-        low, high = np.full_like(y, first), np.full_like(y, top)
-        v[~inside] = rising_roots(lambda v: v - 2.0 * g * density(v) + y, low, high, np.clip(-y, first, top))
-    return density(v), np.where(inside, v / g, 0.0)
-
-
-def _edge_at_centre(eta: Floats, g: Floats) -> tuple[_Edge, Floats]:
-    """The edge of a condensate that is about to appear, and the top then."""
-    first = _edge(g, eta)
-    for _ in range(2):
-        top = eta - first.height
-        first = _refined(first, g, top)
-    return first, top
-
-
-def _refined(edge: _Edge, g: Floats, top: Floats) -> _Edge:
-    """The edge for nearly the same top: one step towards it, which a search repeats as the top settles."""
-    gas = HeldBose(top=np.maximum(top, _TINY))
-    _, fall = gas.density_and_fall(edge.inside[:, np.newaxis])
-    # 1/fall^2 is nearly in proportion to v.
-    inside = np.minimum(edge.inside * (2.0 * g * fall[:, 0]) ** 2, top)
-    thermal_inside = gas.density(inside[:, np.newaxis])[:, 0]
-    height = inside + 2.0 * g * thermal_inside
-    d, fall = (each[:, 0] for each in gas.density_and_fall(edge.outside[:, np.newaxis]))
-    root = np.sqrt(edge.outside)
-    step = (edge.outside - 2.0 * g * d + height) / (2.0 * root * (1.0 + 2.0 * g * fall))
-    outside = np.clip(root - step, 0.1 * root, np.sqrt(inside)) ** 2
-    return _Edge(inside, outside, thermal_inside, _density(top, outside), height)
-
-
-def _edge(g: Floats, top: Floats) -> _Edge:
-    """Where a condensate ends."""
-    # 1/fall^2 is nearly in proportion to v.
-    highest = np.minimum(bose_inverse(0.5, 0.5 / g), top)
-    target = np.log(2.0 * g)
-
-    def flat(log_v: Floats) -> Floats:
-        return -target - np.log(np.maximum(_fall(top, np.exp(log_v)), _TINY))
-
-    log_v = rising_roots(flat, np.full_like(g, -500.0), np.log(highest), np.log(highest), slope=0.5, slopes=(0.1, 1e3))
-    inside = np.exp(log_v)
-    thermal_inside = _density(top, inside)
-    height = inside + 2.0 * g * thermal_inside
-
-    def outer(root: Floats) -> Floats:
-        return root * root - 2.0 * g * _density(top, root * root) + height
-
-    reach = np.sqrt(inside)
-    slope = float(np.median(14.0 * g + 1e-3)) if g.size else 1.0
-    root = rising_roots(outer, np.zeros_like(g), reach, (np.sqrt(2.0) - 1.0) * reach, slope=slope, slopes=(1e-9, 1e9))
-    outside = root * root
-    return _Edge(inside, outside, thermal_inside, _density(top, outside), height)

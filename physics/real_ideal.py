@@ -21,7 +21,7 @@ from physics.equilibria import quantity
 from physics.held_densities import HeldBose, HeldFermi
 from physics.level_sums import Moments
 from physics.real_equilibria import Densities, RealEquilibrium, in_parts
-from physics.real_sums import ends_between, panels
+from physics.real_sums import STEPS, ends_between, panels_to_top, turns_above
 from physics.smooth_surface import through_grid
 
 _PANEL, _REACH = 8, 42.0
@@ -191,9 +191,9 @@ def ideal_densities(solved: RealEquilibrium, kind: type[HeldBose] | type[HeldFer
         end = np.minimum(eta, np.maximum(log_z, 0.0) + _REACH)
         nothing = np.zeros_like(eta)
         # Energies are counted from the bottom; a Fermi edge may lie anywhere.
-        ends = ends_between(eta, nothing, nothing, end, (2.0, 10.0))
+        ends = ends_between(turns_above(curve.turns, eta, nothing), nothing, end, STEPS)
         edge = np.clip(log_z[:, np.newaxis] + np.array([-6.0, 0.0, 6.0]), 0.0, end[:, np.newaxis])
-        root, width = panels(np.sqrt(np.sort(np.concatenate([ends, edge], axis=-1), axis=-1)), _PANEL)
+        root, width = panels_to_top(np.sqrt(np.sort(np.concatenate([ends, edge], axis=-1), axis=-1)), _PANEL)
         V = root * root
         w = curve.volume(np.minimum(V / eta[:, np.newaxis], 1.0)) * 2.0 * root * width
         v = V - log_z[:, np.newaxis]

@@ -20,12 +20,12 @@ from physics.checks import Floats
 from physics.curve_shape import CurveShape
 from physics.harmonic_integrals import legendre
 from physics.held_densities import HeldBose
-from physics.real_sums import ends_between, panels
+from physics.real_sums import STEPS, ends_between, panels, panels_to_top, turns_above
 from physics.roots import rising_roots
 from physics.smooth_surface import Surface
 from physics.spline import Spline
 
-_OUTSIDE, _INSIDE, _DEEP = 8, 6, 48  # nodes, of each panel but for the last
+_OUTSIDE, _INSIDE, _DEEP = 8, 8, 48  # nodes, of each panel but for the last
 _REACH = 42.0  # kT beyond which there are no thermal atoms
 _LOWEST, _PLACES, _PANEL = 1e-6, 200, 6
 _TINY = 1e-300
@@ -132,9 +132,7 @@ class CondensateSums:
         NaN where the trap does not hold so many.
         """
         # No mu is above that of the condensate if all atoms were in it.
-        log_most = np.log(wanted / (scale * eta))
-        logs = np.log(self.condensed(_SHARES)[0])
-        highest = np.exp(np.interp(log_most, logs, np.log(_SHARES)))
+        highest = self.share(wanted / (scale * eta))
         return _in_groups(self._height, highest, eta, wanted, saturated, scale)
 
     def _height(self, top: float, eta: Floats, wanted: Floats, saturated: Floats, scale: Floats) -> Floats:
@@ -164,11 +162,9 @@ class CondensateSums:
         # The logarithm of the atoms beyond the threshold against that of m: its slope is between 1/2 and 5/2 in a deep
         # harmonic trap, and it is followed by secants within a bracket.
         high = np.log(eta)
-        fits = scale * eta * self.condensed(np.ones_like(eta))[0] >= wanted
-        # Below the roots of either part alone: a condensate that grows as a power of m, and thermal atoms as m.
-        alone = eta * (beyond / (scale * eta * self.condensed(np.ones_like(eta))[0])) ** (
-            1.0 / (self.shape.exponent + 1.0)
-        )
+        fits = scale * eta * self.full >= wanted
+        # Below the roots of either part alone, of the condensate and of thermal atoms, which it lifts.
+        alone = eta * self.share(beyond / (scale * eta))
         lifted = 0.73 * beyond / saturated
         first = np.log(np.maximum(alone * lifted / (alone + lifted), _LEAST))
         first = np.where(fits, np.minimum(first, high - 1e-3), np.nan)
@@ -178,7 +174,8 @@ class CondensateSums:
     def _outside(self, eta: Floats, m: Floats) -> tuple[Floats, Floats]:
         """v, and w with the weights of an integral over v, (cells, nodes)."""
         end = np.minimum(eta - m, _REACH)
-        root, width = panels(np.sqrt(ends_between(eta, m, np.zeros_like(m), end, (2.0, 10.0))), _OUTSIDE)
+        ends = ends_between(turns_above(self.shape.turns, eta, m), np.zeros_like(m), end, STEPS)
+        root, width = panels_to_top(np.sqrt(ends), _OUTSIDE)
         v = root * root
         u = np.minimum((m[:, np.newaxis] + v) / eta[:, np.newaxis], 1.0)
         return v, self.shape.volume(u) * 2.0 * root * width
@@ -186,7 +183,7 @@ class CondensateSums:
     def _inside(self, eta: Floats, m: Floats) -> tuple[Floats, Floats]:
         """The same, as far from the edge as there are thermal atoms."""
         reach = np.minimum(np.minimum(m, eta - m), _REACH)
-        above = -ends_between(eta, m, -reach, np.zeros_like(m), (-10.0, -2.0, -0.3))
+        above = -ends_between(turns_above(self.shape.turns, eta, m), -reach, np.zeros_like(m), (-10.0, -2.0, -0.3))
         share = np.minimum(above / np.maximum(m, _TINY)[:, np.newaxis], 1.0)
         theta, width = panels(np.arccos(np.sqrt(share)), _INSIDE)
         sine, cosine, height = np.sin(theta), np.cos(theta), m[:, np.newaxis]
@@ -221,6 +218,29 @@ class CondensateSums:
         logs -= (self.shape.exponent + 1.0) * np.log(x)
         # A spline of two derivatives would swing where w turns.
         return Spline(np.log(x), logs[:, np.newaxis], monotone=True)
+
+    @cached_property
+    def full(self) -> float:
+        """The first of `condensate` where mu is the highest energy. [1]"""
+        return float(self.condensed(np.ones(1))[0][0])
+
+    @cached_property
+    def _logs(self) -> Floats:
+        """ln of the first of `condensate` and ln x, roughly, from small to large. [1]"""
+        return np.stack([np.log(self.condensed(_SHARES)[0]), np.log(_SHARES)])
+
+    def share(self, number: Floats) -> Floats:
+        """x at which the first of `condensate` is about so much; 1 where it is never. [1]"""
+        logs, log_x = self._logs
+        log_number = np.log(number)
+        # Below the first the curve is a power.
+        below = np.minimum(log_number - logs[0], 0.0) / (self.shape.exponent + 1.0)
+        found: Floats = np.exp(np.interp(log_number, logs, log_x) + below)
+        return found
+
+    def prepare(self) -> None:
+        """Work out the tables that sums need, which takes some ten milliseconds, now and not with the first cloud."""
+        _ = self.shape.turns, self._logs, self.full
 
     def condensed(self, x: Floats) -> tuple[Floats, Floats]:
         """The first of `condensate`, tabulated, and its derivative by ln x."""

@@ -17,6 +17,7 @@ from physics.traps.frequencies import ThreeFrequencies
 from physics.traps.harmonic import HarmonicTrap
 
 if TYPE_CHECKING:
+    from physics.real_hartree_fock_integrals import MeanField
     from physics.real_semi_ideal_integrals import CondensateSums
     from physics.traps.survey import Survey
 
@@ -97,6 +98,13 @@ class RealTrap(ThreeFrequencies):
         from physics.real_semi_ideal_integrals import CondensateSums
 
         return CondensateSums(shape=self.curve)
+
+    @cached_property
+    def mean_field(self) -> MeanField:
+        """The Hartree-Fock mean field in this shape of the curve."""
+        from physics.real_hartree_fock_integrals import MeanField
+
+        return MeanField(shape=self.curve, condensates=self.condensates)
 
     @cached_property
     def level_unit(self) -> Floats:

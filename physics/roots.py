@@ -1,4 +1,4 @@
-"""Roots of many rising functions at once, by secants that a bracket keeps from straying."""
+"""Roots of many rising functions at once, by tangents or secants that a bracket keeps from straying."""
 
 from __future__ import annotations
 
@@ -12,24 +12,25 @@ _STEPS, _PATIENCE = 120, 14
 
 
 def rising_roots(
-    function: Callable[[Floats], Floats],
+    function: Callable[[Floats], Floats | tuple[Floats, Floats]],
     low: Floats,
     high: Floats,
     start: Floats,
     *,
     slope: float = 1.0,
     slopes: tuple[float, float] = (0.2, 20.0),
-    tolerance: float = 1e-9,
+    tolerance: float | Floats = 1e-9,
 ) -> Floats:
     """Where each of many functions, which rise, is zero.
 
     Parameters
     ----------
-    function : of (n,) arguments, one for each function; -inf counts as below zero.
+    function : of (n,) arguments, one for each function; -inf counts as below zero. It may give slopes beside the
+        values, which are followed where they are positive, secants elsewhere.
     low, high : (n,) brackets; an end may be infinite.
     start : (n,). Where it is NaN the root is NaN.
     slope, slopes : that of the first step, and the range in which that of a secant is believed.
-    tolerance : steps below end the search: the error is about the square of the last one.
+    tolerance : one for all or (n,); steps below end the search: the error is about the square of the last one.
 
     Raises
     ------
@@ -40,12 +41,15 @@ def rising_roots(
     y = np.where(np.isnan(y), y, np.clip(y, low, high))
     steep, before, missed = np.full_like(y, slope), y, np.zeros_like(y)
     for step in range(_STEPS):
-        here = function(y)
+        found = function(y)
+        here, slopes_here = found if isinstance(found, tuple) else (found, None)
         low, high = np.where(here < 0.0, y, low), np.where(here > 0.0, y, high)
         with np.errstate(all="ignore"):
             if step:
                 secant = (here - missed) / (y - before)
                 steep = np.where((secant > slopes[0]) & (secant < slopes[1]), secant, steep)
+            if slopes_here is not None:
+                steep = np.where(slopes_here > 0.0, slopes_here, steep)
             new = y - here / steep
             middle = np.where(np.isinf(low), high - 2.0 * (high - y) - 1.0, 0.5 * (low + high))
             middle = np.where(np.isinf(high), low + 2.0 * (y - low) + 1.0, middle)

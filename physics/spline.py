@@ -98,6 +98,15 @@ class Spline:
         found: Floats = a + t * (b + t * (c + t * d)) + beyond * (b + t * (2.0 * c + t * 3.0 * d))
         return found
 
+    def with_slopes(self, points: Floats) -> tuple[Floats, Floats]:
+        """(..., m) All functions and their first derivatives at an array of points between the ends."""
+        index = np.clip(np.searchsorted(self.places, points, side="right") - 1, 0, self._last)
+        t = (points - self.places[index])[..., np.newaxis]
+        a, b, c, d = np.moveaxis(self._pieces[index], -2, 0)
+        values: Floats = a + t * (b + t * (c + t * d))
+        slopes: Floats = b + t * (2.0 * c + t * 3.0 * d)
+        return values, slopes
+
     def slopes(self, points: Floats) -> Floats:
         """(..., m) First derivatives at an array of points."""
         x = np.clip(np.asarray(points, dtype=np.float64), self._list[0], self._list[-1])

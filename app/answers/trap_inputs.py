@@ -101,6 +101,7 @@ def central_trap(plan: Plan) -> HarmonicTrap | RealTrap:
         return surveyed_trap(plan)
     trap = real_trap(found)
     trap.levels.prepare()
+    trap.condensates.prepare()
     return trap
 
 

@@ -26,3 +26,15 @@ def test_where_there_is_no_start_there_is_no_root() -> None:
     found = rising_roots(lambda y: y - 1.0, np.zeros(2), np.full(2, 3.0), np.array([0.5, np.nan]))
     assert found[0] == pytest.approx(1.0)
     assert np.isnan(found[1])
+
+
+def test_slopes_beside_the_values_are_followed() -> None:
+    asked: list[np.ndarray] = []
+
+    def function(y: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+        asked.append(y)
+        return np.exp(3.0 * y) - 5.0, np.where(y > -10.0, 3.0 * np.exp(3.0 * y), np.nan)
+
+    found = rising_roots(function, np.full(2, -2.0), np.full(2, 2.0), np.array([0.7, 0.4]), tolerance=1e-6)
+    np.testing.assert_allclose(found, np.log(5.0) / 3.0, rtol=1e-11)
+    assert len(asked) <= 6
