@@ -139,7 +139,7 @@ def test_a_scan_is_drawn_along_the_control_and_follows_another_one(lithium: Main
     curve = depth.curves[0]
     assert curve.x[[0, -1]] == pytest.approx([4.5, 18.0])
     assert curve.y[-1] / curve.y[0] == pytest.approx(4.0, rel=0.01)  # depth ~ power, where gravity hardly counts
-    assert sag.y.unit == "µm"
+    assert sag.y.unit == "nm"
     page.options.range.setCurrentIndex(0)
     page.options.control.setCurrentIndex(1)
     settle(lithium)
