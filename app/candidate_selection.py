@@ -18,6 +18,12 @@ Which = tuple[str, str]
 """Key of a species, and name of a state."""
 
 
+def own_of(plan: Plan) -> Which:
+    """The plan's own atoms."""
+    state = load_species(plan.species.key).state(plan.species.state)
+    return state.key, state.name
+
+
 def with_candidates(plan: Plan, chosen: Collection[Which]) -> Plan:
     """The plan with just these states to compare, written as briefly as it can be; conditions of their own stay.
 

@@ -258,13 +258,11 @@ def heading(answer: CandidatesAnswer, plan: Plan) -> str:
     """What is compared, in one line."""
     species = len({row.key for row in answer.rows})
     atoms, hot = plan.cloud.atoms.value, plan.cloud.temperature.value
-    said = _("{states} states of {species} species {basis}: {atoms} atoms at {temperature}")
+    said = _("{states} of {species} species {basis}: {atoms} atoms at {temperature}")
     if answer.basis is Basis.SAME_START and answer.start is Start.PHASE_SPACE_DENSITY:
-        said = _(
-            "{states} states of {species} species {basis}: as far from degeneracy as {atoms} of {own} at {temperature}"
-        )
+        said = _("{states} of {species} species {basis}: as far from degeneracy as {atoms} of {own} at {temperature}")
     return said.format(
-        states=len(answer.rows),
+        states=_("1 state") if len(answer.rows) == 1 else _("{count} states").format(count=len(answer.rows)),
         species=species,
         basis=basis_text(answer.basis, answer.start),
         atoms=number(atoms, 2),

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from app.answers.candidate_row import Failure
 from app.candidate_columns import COLUMNS
 from app.candidate_order import SCORE, order_by
 from app.candidate_words import short_name
@@ -34,7 +35,7 @@ _ROLES = {
     Sureness.RECALLED: Role.RECALLED,
     Sureness.ASSUMED: Role.ASSUMED,
 }
-_LONGEST = 58  # characters of a reason
+_LONGEST = 58  # characters of a reason, where nothing is said of the room that there is
 
 
 @dataclass(frozen=True)
@@ -81,7 +82,8 @@ def _ranked(row: CandidateRow, name: str, factor: float) -> Ranked:
         name=short_name(row),
         value=cell.value / factor,
         sureness=cell.sureness,
-        reason=cell.reason or row.reason,
+        # What is missing says more than what a number without it would need.
+        reason=row.reason if row.failure is Failure.NO_DATA and not cell.known else cell.reason or row.reason,
         low=low / factor,
         high=high / factor,
         floor=floor / factor,
@@ -97,9 +99,10 @@ def ranked_picture(
     weights: Sequence[Weight] = (),
     *,
     room: int = FIRST_SHOWN,
+    longest: int = _LONGEST,
 ) -> Picture:
     """The rows from top to bottom: known numbers in their order, then, under a line, the others with why. As many as
-    there is `room` for are in view."""
+    there is `room` for are in view; `longest` is how many characters of a reason have room."""
     ranked = ranking(rows, name, unit, scores, weights)
     ranked = tuple(ranked[place] for place in order_by([item.value for item in ranked], descending))
     known = [item for item in ranked if math.isfinite(item.value)]
@@ -126,7 +129,7 @@ def ranked_picture(
         marks.append(Mark(name=word, role=role, x=item.value, y=float(count - 1 - place)))
         named.add(role)
     labels = [
-        Label(text=_short(item), role=Role.CLASSICAL, x=x.low, y=float(count - 1 - len(drawn) - place))
+        Label(text=_short(item, longest), role=Role.CLASSICAL, x=x.low, y=float(count - 1 - len(drawn) - place))
         for place, item in enumerate(apart)
     ]
     heights = [float(count - 1 - place) for place in range(len(drawn))]
@@ -197,14 +200,14 @@ def _value_axis(name: str, unit: str, values: Sequence[float], log: bool) -> Axi
     return Axis(label=label, unit=shown, low=low - (0.06 * reach if low else 0.0), high=high + 0.06 * reach)
 
 
-def _short(item: Ranked) -> str:
+def _short(item: Ranked, longest: int) -> str:
     """Why a row stands apart, in one line."""
     text = item.reason
     if math.isfinite(item.value):
         said = _("zero") if item.value == 0.0 else _("not positive")
         return f"{said}: {text}" if text else _("{said}: no place on a logarithmic axis").format(said=said)
-    if len(text) > _LONGEST:
-        text = text[:_LONGEST].rsplit(" ", 1)[0].rstrip(",;:") + " …"
+    if len(text) > longest:
+        text = text[:longest].rsplit(" ", 1)[0].rstrip(",;:") + " …"
     return _("unknown: {reason}").format(reason=text)
 
 

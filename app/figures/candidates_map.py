@@ -4,16 +4,21 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from app.answers.candidate_row import CandidateRow
 from app.answers.candidate_thresholds import ThresholdLine, Thresholds
+from app.answers.cloud import FERMI_THRESHOLD
+from app.candidate_selection import own_of
 from app.candidate_words import short_state
-from app.engine import CloudAnswer
 from app.figures.picture import Array, Axis, Curve, Label, Mark, Picture, Role
 from app.language import translate as _
 from app.sureness import least_sure
+
+if TYPE_CHECKING:
+    from app.plan import Plan
 
 _MOST_NAMED = 3
 """Species that a label names; more are counted."""
@@ -39,7 +44,7 @@ _SIDES = (1, -1)
 
 def thresholds_picture(
     thresholds: Thresholds,
-    cloud: CloudAnswer,
+    plan: Plan,
     starts: Sequence[CandidateRow] = (),
     *,
     text_height: float = _USUAL_LINE,
@@ -51,7 +56,7 @@ def thresholds_picture(
     text_height : of one line, as a share of the axes' height: lines too close for it go without labels
     character : the width of one, as a share of the axes' width
     """
-    atoms, hot = float(cloud.plan.cloud.atoms.value), float(cloud.plan.cloud.temperature.value)
+    atoms, hot = float(plan.cloud.atoms.value), float(plan.cloud.temperature.value)
     x = Axis(
         label=_("atoms N per spin state"),
         unit="",
@@ -72,9 +77,9 @@ def thresholds_picture(
     named: set[Role] = set()
     curves = []
     for line in thresholds.lines:
-        role = _role(line, cloud)
+        role = _role(line, plan)
         curves.append(
-            Curve(name="" if role in named else _name(role, cloud), role=role, x=thresholds.atoms, y=line.temperature)
+            Curve(name="" if role in named else _name(role, plan), role=role, x=thresholds.atoms, y=line.temperature)
         )
         named.add(role)
     marks = [Mark(name=_("cloud"), role=Role.CLOUD, x=atoms, y=hot)]
@@ -92,25 +97,25 @@ def thresholds_picture(
         # The plan's own last, so that no other lies on it.
         curves=tuple(sorted(curves, key=lambda curve: curve.role not in (Role.FIRST, Role.SECOND))),
         marks=tuple(marks),
-        labels=_labels(thresholds, cloud, x, y, text_height, character),
+        labels=_labels(thresholds, plan, x, y, text_height, character),
         summary=_summary(thresholds),
         note="" if thresholds.lines else _("no candidate has a threshold"),
     )
 
 
 def _labels(
-    thresholds: Thresholds, cloud: CloudAnswer, x: Axis, y: Axis, high: float, wide: float
+    thresholds: Thresholds, plan: Plan, x: Axis, y: Axis, high: float, wide: float
 ) -> tuple[Label, ...]:  # fmt: skip
     """A label over or under each line, where it is furthest from those that stand already and from other lines; that of
     the plan's own first. Lines rise: over one, a label ends where it belongs; under one, it begins there. A line that
     others crowd goes without, but for the plan's own."""
     taken: list[tuple[float, float, float]] = [
-        (_share(x, float(cloud.plan.cloud.atoms.value)), _share(y, float(cloud.plan.cloud.temperature.value)), 0.02)
+        (_share(x, float(plan.cloud.atoms.value)), _share(y, float(plan.cloud.temperature.value)), 0.02)
     ]
     labels = []
     across = np.array([_share(x, float(atoms)) for atoms in thresholds.atoms])
     heights = {id(line): np.log(line.temperature / y.low) / math.log(y.high / y.low) for line in thresholds.lines}
-    for line in sorted(thresholds.lines, key=lambda line: _role(line, cloud) in (Role.FIRST, Role.SECOND)):
+    for line in sorted(thresholds.lines, key=lambda line: _role(line, plan) in (Role.FIRST, Role.SECOND)):
         text = line_text(line) + _mark(line)
         reach = 0.5 * wide * (len(text) + 1)
         own = heights[id(line)]
@@ -132,11 +137,11 @@ def _labels(
         if not places:
             continue
         clear, free, k, side, u, v = max(places, key=lambda place: place[0] + min(place[1], 1.0))
-        if (clear < 1.0 or free < _LEGIBLE) and _role(line, cloud) in (Role.FIRST, Role.SECOND):
+        if (clear < 1.0 or free < _LEGIBLE) and _role(line, plan) in (Role.FIRST, Role.SECOND):
             continue
         taken.append((u, v, reach))
         there = float(thresholds.atoms[k]), float(line.temperature[k])
-        labels.append(Label(text=text, role=_role(line, cloud), x=there[0], y=there[1], side=-side, lift=side))
+        labels.append(Label(text=text, role=_role(line, plan), x=there[0], y=there[1], side=-side, lift=side))
     return tuple(labels)
 
 
@@ -191,16 +196,17 @@ def _ends(temperature: Array) -> tuple[Array, Array]:
     return (finite.min(), finite.max()) if finite.size else (temperature[:0], temperature[:0])
 
 
-def _role(line: ThresholdLine, cloud: CloudAnswer) -> Role:
-    own = any((row.key, row.state.name) == (cloud.state.key, cloud.state.name) for row in line.rows)
+def _role(line: ThresholdLine, plan: Plan) -> Role:
+    own = own_of(plan) in [(row.key, row.state.name) for row in line.rows]
     if own:
         return Role.THRESHOLD if line.bosons else Role.THRESHOLD_SHIFTED
     return Role.FIRST if line.bosons else Role.SECOND
 
 
-def _name(role: Role, cloud: CloudAnswer) -> str:
-    limit = f"{cloud.threshold:.3g}"
-    if cloud.plan.target.reduced_temperature is None:
+def _name(role: Role, plan: Plan) -> str:
+    target = plan.target.reduced_temperature
+    limit = f"{FERMI_THRESHOLD if target is None else target.value:.3g}"
+    if target is None:
         limit = _("{limit}, assumed").format(limit=limit)
     return {
         Role.FIRST: _("bosons: critical temperature"),

@@ -19,7 +19,7 @@ from app.candidate_columns import COLUMNS, USUAL_COLUMNS
 from app.candidate_csv import candidates_csv
 from app.candidate_memory import CandidateMemory, memory_from
 from app.candidate_order import SCORE, Score, order_by, score_rows
-from app.candidate_selection import with_candidates, with_conditions, with_species_of
+from app.candidate_selection import own_of, with_candidates, with_conditions, with_species_of
 from app.candidate_words import heading, summary, unit_for_column
 from app.engine import CloudAnswer
 from app.figures.candidates_chart import ranked_picture
@@ -41,6 +41,7 @@ from app.widgets.species_dialog import SpeciesDialog
 
 _AROUND_MAP = 6.0  # what is above and below the map of thresholds, in lines of text
 _BESIDE_MAP = 7.0  # and beside it
+_REASONS = 0.64  # share of a ranking's width that a reason may take, in letters of the window
 _CHARACTER = 0.95  # width of a character of a label over that of the window's letters
 _LINES_AROUND, _LINE = 7.5, 1.25  # of a ranking: what is above and below its rows, and a row, in lines of text
 HINT = _("Return, or a double click in the table, uses a species")
@@ -48,10 +49,19 @@ HINT = _("Return, or a double click in the table, uses a species")
 
 @dataclass(frozen=True, eq=False)
 class _Found:
-    """The candidates, so far as they are judged; `depends_on` is all that they were made from."""
+    """The candidates of a plan, so far as they are judged; `depends_on` is all that they were made from."""
 
     depends_on: object
+    plan: Plan
     answer: CandidatesAnswer
+
+
+@dataclass(frozen=True, eq=False)
+class _Refused:
+    """Why candidates cannot be compared in this way."""
+
+    depends_on: object
+    sentence: str
 
 
 @dataclass(frozen=True, eq=False)
@@ -63,13 +73,15 @@ class _Evaporated:
 
 class CandidatesPage(SinglePlotPage):
     title = "Candidates"
+    needs_cloud = False  # where the plan's own atoms are not held, it is others that are looked for
     plot_name = "Candidates compared"
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
         self.sorted_by, self.descending = "", True
         self._units: dict[str, str] = {}
-        self._found: _Found | None = None
+        self._plan: Plan | None = None
+        self._found: _Found | _Refused | None = None
         self._thresholds: tuple[object, Thresholds] | None = None
         self._evaporations: dict[object, EvaporationResult] = {}
         self._evaporating: tuple[CandidateRow, ...] = ()
@@ -148,12 +160,13 @@ class CandidatesPage(SinglePlotPage):
     # ---------------------------------------------------------------- the answer
 
     def part(self, plan: Plan) -> Job | None:
+        self._take_plan(plan)
         if basis_of(plan) is Basis.SAME_LIGHT and plan.trap.harmonic:
             self._show_no_light()
             return None
         depends_on = _what_candidates_depend_on(plan)
         found = self._found
-        if found is None or found.depends_on != depends_on or not found.answer.complete:
+        if found is None or found.depends_on != depends_on or (isinstance(found, _Found) and not found.answer.complete):
             self._evaporating = ()
             return Steps(
                 what=_("candidates"),
@@ -162,6 +175,7 @@ class CandidatesPage(SinglePlotPage):
             )
         rows = tuple(row for row in self._evaporating if evaporation_key(row.plan) not in self._evaporations)
         if not rows:
+            self._show()
             return None
         return Steps(
             what=_("best evaporations"),
@@ -183,9 +197,13 @@ class CandidatesPage(SinglePlotPage):
                 row for row in self._evaporating if evaporation_key(row.plan) not in self._evaporations
             )
 
+    def _take_plan(self, plan: Plan) -> None:
+        self._plan = plan
+        self.choices.show_basis(basis_of(plan), plan.candidates.start)
+
     def show_cloud(self, cloud: CloudAnswer) -> None:
         super().show_cloud(cloud)
-        self.choices.show_basis(basis_of(cloud.plan), cloud.plan.candidates.start)
+        self._take_plan(cloud.plan)
         if self.isVisible() and self._found is not None:
             self._show()
 
@@ -203,8 +221,15 @@ class CandidatesPage(SinglePlotPage):
         )
 
     def _show(self) -> None:
-        found, cloud = self._found, self.cloud
-        if found is None or cloud is None:
+        found = self._found
+        if found is None:
+            return
+        if isinstance(found, _Refused):
+            self.show_empty(
+                f"{found.sentence[:1].upper()}{found.sentence[1:]}.",
+                _("Compare in another way, or change the plan."),
+                (Offer(_("Same light and coils"), lambda: self._choose_basis(1)),),
+            )
             return
         judged = tuple(self._with_evaporation(row) for row in found.answer.rows)
         passing = [row for row in judged if self.rules.sieve.passes(row)]
@@ -228,13 +253,14 @@ class CandidatesPage(SinglePlotPage):
             weights=weights,
             names=self.names,
             units=units,
-            own=(cloud.state.key, cloud.state.name),
+            own=own_of(found.plan),
         )
         self.table.show_rows(shown, name, self.descending)
         self.view.show_order(self.names, bool(weights), name)
         self.choices.evaporate.setEnabled(any(not hopeless(row) and row.evaporation is None for row in self._rows))
-        picture = self._chart(units) if self.view.view == 1 else self._map(cloud)
-        self.show_plot(lambda: picture, heading(found.answer, cloud.plan), summary(judged, len(self._rows)))
+        picture = self._chart(units) if self.view.view == 1 else self._map(found.plan)
+        self.plot.canvas.set_stale(False)
+        self.show_plot(lambda: picture, heading(found.answer, found.plan), summary(judged, len(self._rows)))
 
     def _with_evaporation(self, row: CandidateRow) -> CandidateRow:
         found = self._evaporations.get(evaporation_key(row.plan))
@@ -252,10 +278,10 @@ class CandidatesPage(SinglePlotPage):
             return ""
         return self.sorted_by or (SCORE if self.rules.weights else "")
 
-    def _map(self, cloud: CloudAnswer) -> Picture:
-        key = (tuple(id(row.cloud) for row in self._rows), cloud.plan.cloud.atoms.value)
+    def _map(self, plan: Plan) -> Picture:
+        key = (tuple(id(row.cloud) for row in self._rows), plan.cloud.atoms.value)
         if self._thresholds is None or self._thresholds[0] != key:
-            self._thresholds = key, thresholds_of(self._rows, cloud.plan.cloud.atoms.value)
+            self._thresholds = key, thresholds_of(self._rows, plan.cloud.atoms.value)
         text = 0.85 * self.plot.canvas.fontMetrics().height()
         room = max(self.plot.canvas.height() - _AROUND_MAP * text, 2.0 * text)
         character = _CHARACTER * self.plot.canvas.fontMetrics().averageCharWidth()
@@ -263,7 +289,7 @@ class CandidatesPage(SinglePlotPage):
         # In coarse steps, so that labels do not wander while the window is resized.
         return thresholds_picture(
             self._thresholds[1],
-            cloud,
+            plan,
             self._rows,
             text_height=_step_above(text / room),
             character=_step_above(character / across),
@@ -283,6 +309,9 @@ class CandidatesPage(SinglePlotPage):
             self._scores,
             self.rules.weights,
             room=room,
+            longest=max(
+                20, int(_REASONS * self.plot.canvas.width() / self.plot.canvas.fontMetrics().averageCharWidth())
+            ),
         )
 
     def _read_pointer(self, place: tuple[float, float] | None) -> None:
@@ -349,19 +378,19 @@ class CandidatesPage(SinglePlotPage):
         self.choices.count_rules(len(sieve.traits) + len(sieve.bounds), len(self.rules.weights))
 
     def _choose_basis(self, place: int) -> None:
-        if self.cloud is None:
+        if self._plan is None:
             return
         basis, start = BASES[place]
-        plan = self.cloud.plan
+        plan = self._plan
         choice = replace(plan.candidates, basis=basis, start=start)
         if choice != replace(plan.candidates, basis=basis_of(plan)):
             self.plan_edited.emit(replace(plan, candidates=choice), _("basis of the comparison"), "")
 
     def ask_species(self) -> None:
         """Let the user tick the candidates."""
-        if self.cloud is None:
+        if self._plan is None:
             return
-        plan = self.cloud.plan
+        plan = self._plan
         which = {(c.key, c.state or "") for c in candidates_of(plan)}
         dialog = SpeciesDialog(which, self)
         if dialog.exec() == QDialog.DialogCode.Accepted:
@@ -372,9 +401,9 @@ class CandidatesPage(SinglePlotPage):
 
     def ask_fields(self) -> None:
         """Let the user give the range in which the best field of every candidate is sought."""
-        if self.cloud is None:
+        if self._plan is None:
             return
-        plan = self.cloud.plan
+        plan = self._plan
         dialog = FieldsDialog(plan.candidates, self)
         if dialog.exec() == QDialog.DialogCode.Accepted and dialog.choice != plan.candidates:
             self.plan_edited.emit(replace(plan, candidates=dialog.choice), _("fields of the comparison"), "")
@@ -382,9 +411,9 @@ class CandidatesPage(SinglePlotPage):
 
     def ask_conditions(self, row: CandidateRow) -> None:
         """Let the user give a candidate an atom number, a temperature, a field or a length of its own."""
-        if self.cloud is None:
+        if self._plan is None:
             return
-        plan, species = self.cloud.plan, row.plan.species
+        plan, species = self._plan, row.plan.species
         usual = {"atoms": plan.cloud.atoms.text, "temperature": plan.cloud.temperature.text}
         usual["field"] = "" if species.field is None else species.field.text
         dialog = ConditionsDialog(row.candidate, usual, self)
@@ -403,8 +432,8 @@ class CandidatesPage(SinglePlotPage):
 
     def _use(self, row: CandidateRow) -> None:
         """The candidate becomes the plan's own species."""
-        if self.cloud is not None:
-            self.plan_edited.emit(with_species_of(self.cloud.plan, row), _("species {key}").format(key=row.key), "")
+        if self._plan is not None:
+            self.plan_edited.emit(with_species_of(self._plan, row), _("species {key}").format(key=row.key), "")
 
     # ---------------------------------------------------------------- for the window
 
@@ -424,9 +453,12 @@ def _step_above(share: float) -> float:
     return float(2.0 ** (0.5 * math.ceil(2.0 * math.log2(share))))
 
 
-def _judge(plan: Plan, depends_on: object, watch: Watch) -> _Found | None:
-    answer = candidates_answer(plan, lambda part: watch.deliver(_Found(depends_on, part)), watch.tell)
-    return None if answer is None else _Found(depends_on, answer)
+def _judge(plan: Plan, depends_on: object, watch: Watch) -> _Found | _Refused | None:
+    try:
+        answer = candidates_answer(plan, lambda part: watch.deliver(_Found(depends_on, plan, part)), watch.tell)
+    except (ValueError, ArithmeticError) as error:
+        return _Refused(depends_on, str(error))
+    return None if answer is None else _Found(depends_on, plan, answer)
 
 
 def _evaporate(rows: Sequence[CandidateRow], watch: Watch) -> _Evaporated | None:

@@ -200,14 +200,14 @@ class MainWindow(QMainWindow):
         self.answers.set_plan(plan)
 
     def _edit_on_page(self, plan: Plan, what: str, merge_key: str) -> None:
-        """Make the change that a page made to the plan of the answer on show; the present plan may be a newer one."""
+        """Make the change that a page made to the plan that it shows; the present plan may be a newer one."""
         from app.plan import with_same_change
 
-        shown = self.answers.cloud
+        shown = self._plan_of(self.desk.page_in_front)
         if shown is None:
             return
         try:
-            changed = with_same_change(self.document.plan, shown.plan, plan)
+            changed = with_same_change(self.document.plan, shown, plan)
         except ValueError as error:
             self.tell(f"{error}.")
         else:
@@ -281,14 +281,19 @@ class MainWindow(QMainWindow):
 
     def _ask_part(self) -> None:
         page = self.desk.page_in_front
-        plan = None if self.answers.cloud is None else self.answers.cloud.plan
-        if page is not None and not page.needs_cloud and self.answers.failure:
-            plan = self.document.plan
+        plan = self._plan_of(page)
         if page is None or plan is None:
             return
         job = page.part(plan)
         if job is not None:
             self.answers.ask_part(job, page)
+
+    def _plan_of(self, page: Page | None) -> Plan | None:
+        """The plan that a page shows: the present one where it needs no cloud and that has none, else the plan of the
+        last good answer; None before there is any."""
+        if page is not None and not page.needs_cloud and self.answers.failure:
+            return self.document.plan
+        return None if self.answers.cloud is None else self.answers.cloud.plan
 
     def _allow_part(self) -> None:
         self.answers.allow_part()

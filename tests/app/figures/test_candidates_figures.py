@@ -11,7 +11,6 @@ import pytest
 from app.answers.candidate_row import CandidateRow
 from app.answers.candidate_thresholds import thresholds_of
 from app.answers.candidates import candidates_answer
-from app.answers.cloud import cloud_answer
 from app.candidate_choices import CandidateChoice, CandidatesChoice
 from app.candidate_order import SCORE, read_weight, score_rows
 from app.figures.candidates_chart import ranked_picture
@@ -39,7 +38,7 @@ def test_in_the_same_frequencies_two_lines_say_all(rows: tuple[CandidateRow, ...
     # Tc = 0.9405 hbar wbar N^(1/3)/k: the digits by hand for N = 1e5, as in the tests of `coldward state`.
     here = float(np.interp(math.log(1e5), np.log(thresholds.atoms), bosons.temperature))
     assert here == pytest.approx(138.36e-9, rel=2e-3)
-    picture = thresholds_picture(thresholds, cloud_answer(DEFAULT_PLAN))
+    picture = thresholds_picture(thresholds, DEFAULT_PLAN)
     assert {curve.role for curve in picture.curves} == {Role.SECOND, Role.THRESHOLD}
     assert not LIGHT.lines[Role.THRESHOLD].dash
     assert LIGHT.lines[Role.SECOND].dash
@@ -52,12 +51,12 @@ def test_in_the_same_frequencies_two_lines_say_all(rows: tuple[CandidateRow, ...
 
 def test_labels_stand_off_the_lines_and_crowded_lines_go_without(rows: tuple[CandidateRow, ...]) -> None:
     few = thresholds_of(rows, 1e5)
-    for label in thresholds_picture(few, cloud_answer(DEFAULT_PLAN)).labels:
+    for label in thresholds_picture(few, DEFAULT_PLAN).labels:
         assert (label.side, label.lift) in ((-1, 1), (1, -1))  # lines rise to the right
     scaled = [replace(line, temperature=line.temperature * 1.02**k) for k in range(6) for line in few.lines]
     crowded = replace(few, lines=tuple(scaled))
-    roomy = thresholds_picture(crowded, cloud_answer(DEFAULT_PLAN), text_height=0.002).labels
-    tight = thresholds_picture(crowded, cloud_answer(DEFAULT_PLAN), text_height=0.2).labels
+    roomy = thresholds_picture(crowded, DEFAULT_PLAN, text_height=0.002).labels
+    tight = thresholds_picture(crowded, DEFAULT_PLAN, text_height=0.2).labels
     assert len(roomy) == 12
     assert 0 < len([label for label in tight if label.role is Role.THRESHOLD]) < 12
     assert not [label for label in tight if label.role is Role.SECOND]
@@ -79,7 +78,7 @@ def test_other_starts_are_marked(rows: tuple[CandidateRow, ...]) -> None:
     )
     answer = candidates_answer(replace(DEFAULT_PLAN, candidates=CandidatesChoice(candidates=(own,))))
     assert answer is not None
-    picture = thresholds_picture(thresholds_of(answer.rows, 1e5), cloud_answer(DEFAULT_PLAN), answer.rows)
+    picture = thresholds_picture(thresholds_of(answer.rows, 1e5), DEFAULT_PLAN, answer.rows)
     assert [(mark.role, mark.x, mark.y) for mark in picture.marks[1:]] == [(Role.TRACK, 3e5, 1.5e-7)]
 
 
@@ -144,9 +143,7 @@ def test_labels_keep_clear_of_lines_that_cross(rows: tuple[CandidateRow, ...]) -
     rises = (0.0, 0.15, 0.35)
     crossing = [replace(fermions, temperature=fermions.temperature[16] * (few.atoms / 1e5) ** rise) for rise in rises]
     high, wide = 0.06, 0.012
-    picture = thresholds_picture(
-        replace(few, lines=tuple(crossing)), cloud_answer(DEFAULT_PLAN), text_height=high, character=wide
-    )
+    picture = thresholds_picture(replace(few, lines=tuple(crossing)), DEFAULT_PLAN, text_height=high, character=wide)
     assert len(picture.labels) >= 2
     lines = [np.log(line.temperature / picture.y.low) / math.log(picture.y.high / picture.y.low) for line in crossing]
     across = np.linspace(0.0, 1.0, few.atoms.size)
@@ -173,7 +170,7 @@ def test_a_score_is_ranked_like_a_column_and_an_empty_one_says_so(rows: tuple[Ca
 
 
 def test_they_are_drawn(rows: tuple[CandidateRow, ...]) -> None:
-    thresholds = thresholds_picture(thresholds_of(rows, 1e5), cloud_answer(DEFAULT_PLAN))
+    thresholds = thresholds_picture(thresholds_of(rows, 1e5), DEFAULT_PLAN)
     # The plan names no T/TF as its target, so that one is assumed; Tc rests on nothing but frequencies.
     assert [label.text for label in thresholds.labels] == ["23 species of bosons", "9 species of fermionsᵃ"]
     assert "fermions: T/TF = 0.5, assumed" in picture_bytes((thresholds,), "svg").decode()

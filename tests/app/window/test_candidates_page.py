@@ -14,10 +14,11 @@ from pytestqt.qtbot import QtBot
 
 from app.answers import candidates as answers
 from app.answers.candidate_evaporation import EvaporationResult
+from app.answers.candidate_row import Failure
 from app.candidate_choices import Basis, CandidatesChoice, Start
 from app.candidate_order import Trait
 from app.pages.candidates import CandidatesPage
-from app.plan import DEFAULT_PLAN, Plan, read_plan
+from app.plan import DEFAULT_PLAN, Plan, SpeciesChoice, read_plan
 from app.widgets.candidate_model import Kind
 from app.widgets.conditions_dialog import ConditionsDialog, FieldsDialog
 from app.widgets.species_dialog import SpeciesDialog
@@ -387,3 +388,34 @@ def test_the_best_field_of_all_is_asked_for_in_a_dialog(
     assert rows["41K  F=2 mF=+2"].search is None
     # The plan's own atoms stay as they are.
     assert compared.document.plan.species.field is None
+
+
+def test_where_the_plan_s_own_atoms_are_not_held_others_are_found(make_window: MakeWindow, settle: Settle) -> None:
+    green = read_plan(LIGHT.with_name("green_beams_ytterbium.toml"))
+    repelled = replace(
+        green,
+        species=SpeciesChoice(key="87Rb"),
+        candidates=CandidatesChoice(keys=("87Rb", "174Yb"), basis=Basis.SAME_LIGHT),
+    )
+    window = make_window(repelled)
+    window.actions_by_id["view.candidates"].trigger()
+    settle(window)
+    assert window.answers.cloud is None
+    page = page_of(window)
+    assert [row.failure for row in page.table.model_.shown.rows] == [Failure.NOT_TRAPPED] * 3 + [None]
+    assert page.sentence.text().startswith("4 states of 2 species in the same light and coils")
+    assert page.choices.basis.currentText() == "same light and coils"
+    # In the frequencies of atoms that are not held nothing can be compared, and the way back is offered.
+    page._choose_basis(0)
+    settle(window)
+    assert page.is_empty
+    assert "holds no atoms" in page.empty.text
+    page.empty.buttons()[0].click()
+    settle(window)
+    assert not page.is_empty
+    # A species that is held can be taken into the plan, which then has an answer.
+    page.table.selectRow(3)
+    page.table.use_asked.emit(page.table.model_.shown.rows[3])
+    settle(window)
+    assert window.document.plan.species.key == "174Yb"
+    assert window.answers.current
