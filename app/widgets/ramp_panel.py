@@ -10,8 +10,6 @@ from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import (
     QButtonGroup,
     QHBoxLayout,
-    QLabel,
-    QSizePolicy,
     QStackedWidget,
     QToolButton,
     QVBoxLayout,
@@ -22,6 +20,7 @@ from app.figures.theme import Theme
 from app.newest import Steps
 from app.plan import Plan
 from app.widgets.banner import Offer
+from app.widgets.card import ElidedLabel
 from app.widgets.caveats import Caveats
 from app.widgets.empty_state import EmptyState
 from app.widgets.plot_heading import PlotHeading
@@ -118,11 +117,10 @@ class RampPanel(QWidget):
         self.show_ramp()
 
     def _make_reference_buttons(self) -> None:
-        self.reference_label = QLabel()
-        self.reference_label.setObjectName("plotStatus")
-        self.reference_label.setContentsMargins(8, 0, 0, 0)
         # As much room as there is: a long name does not make the page wider.
-        self.reference_label.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+        self.reference_label = ElidedLabel()
+        self.reference_label.setObjectName("plotStatus")
+        self.reference_label.setIndent(8)
         self._switch.addWidget(self.reference_label, 1)
         for button, text, tip in (
             (self.keep, "Keep as reference", "Keep this ramp, drawn thin beside those that follow"),
