@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import math
 from bisect import bisect_left
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import replace
 
 from app.answers.ramp_inputs import path_of
@@ -80,9 +80,10 @@ def end_of(move: MoveChoice, standing: float, duration: float) -> float:
     return float(start * (1.0 + duration / move.tau.value) ** -move.exponent.value)
 
 
-def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
+def usual_ramp(plan: Plan, tell: Callable[[float], None] = lambda _share: None) -> tuple[StageChoice, ...]:
     """An exponential to a tenth in five seconds, of the depth, of the knife where there is one, or of all beams; of
-    these to where a tenth of the depth is left, where gravity would take most of it before."""
+    these to where a tenth of the depth is left, where gravity would take most of it before. That takes surveys of the
+    trap; `tell` is told, before each, the share that is done."""
     duration = read_quantity(USUAL_DURATION, DURATION)
     trap = plan.trap
     if trap.harmonic:
@@ -100,7 +101,7 @@ def usual_ramp(plan: Plan) -> tuple[StageChoice, ...]:
         return (StageChoice(duration=duration, moves=(move,), label="lower the knife"),)
     beams = _lit(plan)
     if beams:
-        share = _lowest_light(plan)
+        share = _lowest_light(plan, tell)
         moves = tuple(
             MoveChoice(
                 control=Control(Knob.POWER, beam.name),
@@ -118,13 +119,19 @@ def _lit(plan: Plan) -> list[BeamChoice]:
     return [beam for beam in plan.trap.beams if beam.on and beam.power.value > 0.0]
 
 
-def _lowest_light(plan: Plan) -> float:
+def _lowest_light(plan: Plan, tell: Callable[[float], None]) -> float:
     """The share of all powers at which a usual ramp ends: a tenth, as long as half a tenth of the depth is left there;
     else the lowest of a few that leave a tenth of the depth. A share of the depth, not of the power, keeps away from
     the power at which gravity pulls the atoms out."""
     from app.answers.trap import trap_answer
 
+    surveys = 2 + len(_HIGHER_SHARES).bit_length()
+    done = 0
+
     def depth(share: float) -> float:
+        nonlocal done
+        done += 1
+        tell(min(done / surveys, 1.0))
         beams = tuple(
             replace(beam, power=scaled(beam.power, share, Knob.POWER)) if beam in lit else beam
             for beam in plan.trap.beams
@@ -133,6 +140,7 @@ def _lowest_light(plan: Plan) -> float:
         return found.depth if found.trapped and found.depth is not None else 0.0
 
     lit = _lit(plan)
+    tell(0.0)
     now = trap_answer(plan).survey
     if not now.trapped or now.depth is None or depth(USUAL_SHARE) >= 0.5 * USUAL_SHARE * now.depth:
         return USUAL_SHARE

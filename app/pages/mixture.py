@@ -17,6 +17,7 @@ from app.widgets.banner import Offer
 from app.widgets.mixture_panel import MixturePanel, MixtureView
 from app.widgets.ramp_plots import ColumnPlots
 from app.widgets.time_page import TimePage
+from app.widgets.usual_ramp import UsualRamp
 
 if TYPE_CHECKING:
     from app.answers.mixture import MixtureAnswer
@@ -66,6 +67,7 @@ class MixturePage(TimePage):
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(theme, parent)
         self._found: Found | None = None
+        self.usual = UsualRamp(self)
         panel = self.panel = MixturePanel(self)
         self.column.addWidget(panel, 1)
         panel.body.addWidget(self.bar)
@@ -82,6 +84,9 @@ class MixturePage(TimePage):
         if plan.passenger is None:
             self._show_none()
             return None
+        usual = self.usual.job(plan)
+        if usual is not None:
+            return usual
         wanted, ramp = self._wanted(plan), self._ramp_wanted(plan)
         found = self._found
         if found is not None and found.depends_on == wanted and (found.complete or not ramp):
@@ -102,7 +107,7 @@ class MixturePage(TimePage):
         return plan.cloud, ramp_depends_on(plan)
 
     def take_part(self, answer: Any) -> None:
-        if answer is not None:
+        if answer is not None and not self.usual.take(answer):
             self._found = answer
             self._show()
 
@@ -178,7 +183,7 @@ class MixturePage(TimePage):
         texts = mixture_sentence(answer, centres), cooling_sentence(answer), mixture_caveat_lines(answer)
         if not found.plan.ramp:
             panel.tell(*texts)
-            offers = (Offer(_("Start from a usual ramp"), self.start_usual_ramp),)
+            offers = (Offer(_("Start from a usual ramp"), self.usual.ask),)
             self._show_empty(_NO_RAMP, _START, offers, views=True)
             return
         if found.ramp is None and not found.complete:
@@ -258,19 +263,6 @@ class MixturePage(TimePage):
     def _try_again(self) -> None:
         self._found = None
         self.part_wanted.emit()
-
-    def start_usual_ramp(self) -> None:
-        """Give the plan the usual ramp."""
-        from app.ramp_edits import checked, usual_ramp
-
-        if self.cloud is None:
-            return
-        try:
-            plan = checked(replace(self.cloud.plan, ramp=usual_ramp(self.cloud.plan)))
-        except ValueError as error:
-            self.told.emit(f"{error}.")
-        else:
-            self.plan_edited.emit(plan, "ramp", "")
 
     # ---------------------------------------------------------------- reading values
 

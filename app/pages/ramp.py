@@ -21,6 +21,7 @@ from app.widgets.ramp_panel import RampPanel
 from app.widgets.ramp_plots import ColumnPlots, Scene
 from app.widgets.ramp_references import KeptRamps, simulated_references
 from app.widgets.time_page import TimePage
+from app.widgets.usual_ramp import UsualRamp
 
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
@@ -49,6 +50,7 @@ class RampPage(TimePage):
         self.since: str | None = None  # label of the measured cloud from which the rest is drawn
         self._found: Found | None = None
         self._pace = Pace()
+        self.usual = UsualRamp(self)
         self._drag = 0
         self._written: Plan | None = None  # as it was before the drag that is under way
         self._reach = 1.0  # [s] of the time axis then
@@ -89,6 +91,9 @@ class RampPage(TimePage):
     def part(self, plan: Plan) -> Job | None:
         from app.answers.ramp import kept_ramp
 
+        usual = self.usual.job(plan)
+        if usual is not None:
+            return usual
         if not plan.ramp and not self.panel.extra_wanted(plan):
             return None
         if self._is_answered(plan) and not self.kept.remembered:
@@ -156,7 +161,7 @@ class RampPage(TimePage):
 
     def take_part(self, answer: Any) -> None:
         newer = self._pace.arrived()
-        if answer is None:
+        if answer is None or self.usual.take(answer):
             return
         self._found = answer
         if answer.recalled is not None:
@@ -279,22 +284,9 @@ class RampPage(TimePage):
 
     def _offers(self, plan: Plan) -> tuple[Offer, ...]:
         return (
-            Offer("Start from a usual ramp", self.start_usual),
+            Offer("Start from a usual ramp", self.usual.ask),
             Offer("Design one", lambda: self.panel.choose_view("Design")),
         )
-
-    def start_usual(self) -> None:
-        """Give the plan the usual ramp."""
-        from app.ramp_edits import checked, usual_ramp
-
-        if self.cloud is None:
-            return
-        try:
-            plan = checked(replace(self.cloud.plan, ramp=usual_ramp(self.cloud.plan)))
-        except ValueError as error:
-            self.told.emit(f"{error}.")
-        else:
-            self.plan_edited.emit(plan, _STEP, "")
 
     def _view_changed(self) -> None:
         self._show()

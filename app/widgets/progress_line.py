@@ -16,7 +16,7 @@ class ProgressLine(QWidget):
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
-        self._what = ""
+        self._what, self._share = "", 0.0
         self._running = False
         self.label = QLabel()
         self.label.setObjectName("plotStatus")
@@ -33,7 +33,7 @@ class ProgressLine(QWidget):
         row.addWidget(self.bar, 0, Qt.AlignmentFlag.AlignVCenter)
         row.addWidget(self.button)
         self._soon = QTimer(self, singleShot=True, interval=PATIENCE_MS)
-        self._soon.timeout.connect(self.show)
+        self._soon.timeout.connect(self._appear)
         self.hide()
 
     @property
@@ -48,7 +48,17 @@ class ProgressLine(QWidget):
             self.bar.show()
             self._name_button("Cancel", f"Stop working out the {what}")
             self._soon.start()
-        self._what = what
+            self._write(what, share)
+        self._what, self._share = what, share
+        # Not before the line is seen: most work is done by then, and each text costs the page a layout.
+        if not self._soon.isActive():
+            self._write(what, share)
+
+    def _appear(self) -> None:
+        self._write(self._what, self._share)
+        self.show()
+
+    def _write(self, what: str, share: float) -> None:
         percent = round(100.0 * share)
         self.label.setText(f"{what} {percent} %")
         self.bar.setValue(percent)
