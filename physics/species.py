@@ -6,6 +6,7 @@ The data are files, one an isotope, in ``presets/species``; `physics.species_fil
 from __future__ import annotations
 
 import math
+from collections.abc import Hashable
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
@@ -227,7 +228,7 @@ def _is_half_integer(number: float) -> bool:
     return math.isfinite(number) and (2.0 * number).is_integer()
 
 
-def _spellings(state: State) -> frozenset[object]:
+def _spellings(state: State) -> frozenset[Hashable]:
     forms = {spelling(name) for name in (state.name, *state.also)}
     if state.components:
         forms.add(frozenset(spelling(part) for part in state.components))

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Hashable, Iterable
+from functools import lru_cache
 
 _NUMBER = r"([+-]?\d+(?:/2|\.\d+)?)"
 _LEVEL = re.compile(rf"\|?(?:f=)?{_NUMBER}[,;]?(?:m_?f?=)?{_NUMBER}[>⟩]?")
@@ -42,7 +43,8 @@ def nearest_first(text: str, known: Iterable[str]) -> list[str]:
     return sorted(known, key=lambda name: -SequenceMatcher(None, plain, name.casefold()).ratio())
 
 
-def spelling(name: str) -> object:
+@lru_cache(maxsize=1024)
+def spelling(name: str) -> Hashable:
     """A form in which all ways of writing one state are equal: numbers where there are numbers, else bare text."""
     text = name.casefold().replace("\N{MINUS SIGN}", "-")
     text = re.sub(r"^\s*(an?\s+)?(equal\s+)?(mix(ture)?\s+of\s+)", "", text)

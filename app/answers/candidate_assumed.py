@@ -72,6 +72,8 @@ def _losses_left_out(cloud: CloudAnswer, *, three_body: bool = True) -> str:
 
 
 def _three_body_elsewhere(cloud: CloudAnswer) -> Iterator[str]:
+    if cloud.losses.losses.three_body is None:
+        return  # so that no caveat needs to be worked out
     for caveat in cloud.caveats:
         if caveat.id == "three_body_elsewhere" and caveat.value is not None:
             yield _("K₃ was measured at another scattering length: by a⁴ it would be {factor} times").format(

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import lru_cache
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -74,7 +75,8 @@ def thresholds_of(rows: Sequence[CandidateRow], atoms: float) -> Thresholds:
 
 
 def _alike(one: Array, other: Array) -> bool:
-    return bool(np.allclose(one, other, rtol=ALIKE, atol=0.0, equal_nan=True))
+    near = np.abs(one - other) <= ALIKE * np.abs(other)  # of infinities there are none
+    return bool(np.all(near | (np.isnan(one) & np.isnan(other))))
 
 
 def _on(grid: Array, row: CandidateRow) -> Array:
@@ -104,6 +106,9 @@ def threshold_curve(plan: Plan) -> Array:
     return np.broadcast_to(found, atoms.shape)
 
 
+@lru_cache(maxsize=64)
 def numbers_around(atoms: float) -> Array:
-    """Atom numbers to both sides of one, down to a single atom."""
-    return np.geomspace(max(1.0, atoms * 10.0**-_DECADES), atoms * 10.0**_DECADES, _POINTS)
+    """Atom numbers to both sides of one, down to a single atom; the array is shared and read-only."""
+    numbers = np.geomspace(max(1.0, atoms * 10.0**-_DECADES), atoms * 10.0**_DECADES, _POINTS)
+    numbers.setflags(write=False)
+    return numbers

@@ -127,6 +127,8 @@ def _work_ahead(row: CandidateRow) -> None:
         row.cell(name)
     if row.cloud is not None:
         threshold_curve(row.plan)
+    if row.failure is None:
+        _ = row.warnings  # the table counts them
 
 
 @dataclass(frozen=True, kw_only=True)

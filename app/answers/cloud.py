@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
-from functools import cached_property, partial
+from functools import cache, cached_property, partial
 from typing import TYPE_CHECKING, cast
 
 import numpy as np
@@ -50,7 +51,7 @@ class CloudAnswer:
     losses: LossesInUse
     solution: Solution
     uncertainty: Uncertainty
-    caveats: tuple[Caveat, ...]
+    find_caveats: Callable[[], tuple[Caveat, ...]]
     efficiency: float | None
     threshold: float
 
@@ -62,6 +63,12 @@ class CloudAnswer:
     @property
     def bosons(self) -> bool:
         return self.cloud.statistics is Statistics.BOSE
+
+    @property
+    def caveats(self) -> tuple[Caveat, ...]:
+        """What the answer does not cover, the gravest first; worked out when first asked for, as a row of a comparison
+        never is."""
+        return self.find_caveats()
 
     def value(self, name: str) -> float | Array:
         """A quantity by its NAME, in SI; NaN where it does not apply, three values for a quantity with axes."""
@@ -191,15 +198,22 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
     losses = losses_in_use(plan, state, numbers, of_trap)
     solution = solve(numbers, plan.cloud.model)
     solved, cloud = solution.equilibrium, solution.equilibrium.cloud
-    caveats = (
-        *caveats_of(solved, certainty=scattering.certainty, dipolar=cloud.dipolar_length is not None),
-        *loss_caveats(
-            solution.rates,
-            certainties=losses.certainties(),
-            measured_length=_measured_length(state, losses),
-        ),
-        *_trap_caveats(plan, solution),
-    )
+
+    @cache
+    def find_caveats() -> tuple[Caveat, ...]:
+        found = (
+            *caveats_of(solved, certainty=scattering.certainty, dipolar=cloud.dipolar_length is not None),
+            *loss_caveats(
+                solution.rates,
+                certainties=losses.certainties(),
+                measured_length=_measured_length(state, losses),
+            ),
+            *_trap_caveats(plan, solution),
+        )
+        return gravest_first(found)
+
+    if not plan.trap.harmonic:
+        find_caveats()  # while the survey of the trap is at hand
     return CloudAnswer(
         plan=plan,
         state=state,
@@ -214,7 +228,7 @@ def cloud_answer(plan: Plan) -> CloudAnswer:
             solve=partial(solve, model=solved.model),
             solve_ideal=partial(solve, model=Model.IDEAL),
         ),
-        caveats=gravest_first(caveats),
+        find_caveats=find_caveats,
         efficiency=efficiency,
         threshold=threshold,
     )

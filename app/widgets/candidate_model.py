@@ -8,6 +8,7 @@ from enum import Enum, auto
 
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, QObject, QPersistentModelIndex, Qt
 from PySide6.QtGui import QFont, QGuiApplication, QPalette
+from PySide6.QtWidgets import QStyledItemDelegate, QStyleOptionViewItem
 
 from app.answers.candidate_row import CandidateRow
 from app.candidate_columns import COLUMNS
@@ -200,12 +201,18 @@ class CandidateModel(QAbstractTableModel):
                 side = Qt.AlignmentFlag.AlignRight if head.kind is Kind.NUMBER else Qt.AlignmentFlag.AlignLeft
                 return side | Qt.AlignmentFlag.AlignVCenter
             case Qt.ItemDataRole.ForegroundRole:
-                quiet = self.stale or head.kind in (Kind.STATUS, Kind.MODEL)
-                quiet = quiet or (head.kind is Kind.NUMBER and not row.cell(head.name).known)
+                quiet = self.quiet(index.row(), index.column())
                 return QGuiApplication.palette().color(QPalette.ColorRole.PlaceholderText) if quiet else None
             case Qt.ItemDataRole.AccessibleTextRole:
                 return self._spoken(index.row(), row, head)
         return None
+
+    def quiet(self, place: int, column: int) -> bool:
+        """Whether a cell is set back: words, what is not known, and all that is not current."""
+        head = self._heads[column]
+        if self.stale or head.kind in (Kind.STATUS, Kind.MODEL):
+            return True
+        return head.kind is Kind.NUMBER and not self.shown.rows[place].cell(head.name).known
 
     def text(self, place: int, column: int) -> str:
         """A cell as it is read."""
@@ -257,6 +264,27 @@ class CandidateModel(QAbstractTableModel):
             cells = (self.text(place, column) for column in range(len(self._heads)))
             lines.append("\t".join([f"{row.key} {row.state.name}", *cells]))
         return "\n".join(lines)
+
+
+class CellPainter(QStyledItemDelegate):
+    """Paints cells as Qt does, but asks for all that a cell needs at once, not role by role."""
+
+    def __init__(self, model: CandidateModel, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._model = model
+
+    def initStyleOption(self, option: QStyleOptionViewItem, index: AnyIndex) -> None:
+        place, column = index.row(), index.column()
+        option.text = self._model.text(place, column)
+        option.features |= QStyleOptionViewItem.ViewItemFeature.HasDisplay
+        side = Qt.AlignmentFlag.AlignLeft
+        if self._model.head(column).kind is Kind.NUMBER:
+            side = Qt.AlignmentFlag.AlignRight
+        option.displayAlignment = side | Qt.AlignmentFlag.AlignVCenter
+        if self._model.quiet(place, column):
+            palette: QPalette = option.palette
+            palette.setColor(QPalette.ColorRole.Text, palette.color(QPalette.ColorRole.PlaceholderText))
+            option.palette = palette
 
 
 def _lines(label: str) -> list[str]:

@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import QModelIndex, QPoint, Qt, Signal
+from collections.abc import Iterable
+
+from PySide6.QtCore import QModelIndex, QPoint, Qt, QTimer, Signal
 from PySide6.QtGui import QContextMenuEvent, QGuiApplication, QKeyEvent, QKeySequence
 from PySide6.QtWidgets import QAbstractItemView, QFrame, QHeaderView, QMenu, QTableView, QWidget
 
 from app.answers.candidate_row import CandidateRow
 from app.candidate_columns import COLUMNS
 from app.language import translate as _
-from app.widgets.candidate_model import AnyIndex, CandidateModel, Kind, Shown
+from app.widgets.candidate_model import AnyIndex, CandidateModel, CellPainter, Kind, Shown
 
+REST_MS = 200
 NARROWEST = 6  # digits of a column of numbers
 
 
@@ -38,6 +41,7 @@ class CandidateTable(QTableView):
         )
         self.model_ = CandidateModel(self)
         self.setModel(self.model_)
+        self.setItemDelegate(CellPainter(self.model_, self))
         self.setFrameShape(QFrame.Shape.NoFrame)
         self.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
         self.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
@@ -61,6 +65,11 @@ class CandidateTable(QTableView):
         self.activated.connect(self._use)
         self.selectionModel().currentChanged.connect(lambda index: self.detail_changed.emit(self.model_.tip_at(index)))
         self._widths: dict[str, int] = {}
+        # Lines out of view wait until nothing changes any more: to write all their texts takes longer than a frame.
+        self._rest = QTimer(self, singleShot=True, interval=REST_MS)
+        self._rest.timeout.connect(
+            lambda: self._fit_columns(self.model_.shown, range(len(self.model_.shown.rows)))
+        )  # fmt: skip
 
     # ---------------------------------------------------------------- showing
 
@@ -89,17 +98,21 @@ class CandidateTable(QTableView):
         header.blockSignals(True)
         header.setSortIndicator(place, order)
         header.blockSignals(False)
-        self._fit_columns(shown)
+        first = max(self.rowAt(0), 0)
+        last = self.rowAt(self.viewport().height() - 1)
+        self._fit_columns(shown, range(first, len(shown.rows) if last < 0 else last + 1))
+        self._rest.start()
 
-    def _fit_columns(self, shown: Shown) -> None:
-        """Columns as wide as their texts; they grow at once and shrink only with another set of columns."""
+    def _fit_columns(self, shown: Shown, lines: Iterable[int]) -> None:
+        """Columns as wide as the texts in these lines; they grow at once and shrink only with another set of
+        columns."""
         keys = [head.name or head.kind.name for head in shown.heads]
         if set(keys) != set(self._widths):
             self._widths = {}
         metrics = self.fontMetrics()
         digit = metrics.horizontalAdvance("0")
         for place, (key, head) in enumerate(zip(keys, shown.heads, strict=True)):
-            texts = {self.model_.text(line, place) for line in range(len(shown.rows))}
+            texts = {self.model_.text(line, place) for line in lines}
             wanted = max(
                 max((metrics.horizontalAdvance(text) for text in texts), default=0) + 3 * digit,
                 max(metrics.horizontalAdvance(line) for line in self.model_.heading(head, broken=True).split("\n"))
