@@ -22,7 +22,7 @@ from app.answers.map import (
     usual_limits,
 )
 from app.answers.models import ModelsAnswer, models_answer
-from app.answers.preparation import prepare_trap, surveyed
+from app.answers.preparation import begin_trap, prepare_trap, surveyed
 from app.answers.profile import PROFILE_POINTS, ProfileAnswer, profile_answer, round_up
 from app.answers.rates import RatesAnswer, RateSet, rates_answer
 from app.answers.slices import SLICE_POINTS, Against, SlicesAnswer, slices_answer
@@ -50,6 +50,7 @@ __all__ = [
     "Spread",
     "TrapAnswer",
     "TuningAnswer",
+    "begin_trap",
     "cloud_answer",
     "draft_map",
     "is_slow",

@@ -15,8 +15,9 @@ from app.plan_field import PlanError
 if TYPE_CHECKING:
     from app.plan import Plan
 
-_LATER = ("volume_curve", "arms", "heating", "spin_flips", "barriers", "notes")
-"""What a survey works out when it is first asked for it."""
+_FACTS = ("arms", "heating")
+_LATER = (*_FACTS, "volume_curve", "spin_flips", "barriers", "notes")
+"""What a survey works out when it is first asked for it; the first ones are soon there, and told at once."""
 
 
 def surveyed(plan: Plan) -> bool:
@@ -27,6 +28,14 @@ def surveyed(plan: Plan) -> bool:
     if answer is None or not all(name in vars(answer.survey) for name in _LATER):
         return False
     return not _followed(plan) or not answer.trapped or trap_slopes.kept(plan) is not None
+
+
+def begin_trap(plan: Plan) -> None:
+    """The part of `prepare_trap` that a form of the trap tells of, about a third of the time of all."""
+    if not plan.trap.harmonic:
+        answer = trap_answer(plan)
+        for name in _FACTS:
+            getattr(answer.survey, name)
 
 
 def prepare_trap(plan: Plan) -> None:

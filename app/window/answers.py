@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Any, Protocol
 
 from PySide6.QtCore import QObject, Qt, QTimer, Signal
 
-from app.engine import CloudAnswer, cloud_answer, prepare_trap, surveyed
+from app.engine import CloudAnswer, begin_trap, cloud_answer, prepare_trap, surveyed
 from app.newest import Job, Newest, Steps, brief_turns
 from app.process import own_process
 
@@ -40,13 +40,16 @@ class PartView(Protocol):
 
 class Answers(QObject):
     """Signals: cloud_ready(CloudAnswer); cloud_failed(str), one sentence, when the plan cannot be answered;
-    surveying() when the answer waits for the survey of a trap; part_failed(str) when the visible page's part cannot."""
+    surveying() when the answer waits for the survey of a trap; trap_known(Plan) when so much of that is there that a
+    form can tell of the trap, ahead of the cloud; part_failed(str) when the visible page's part cannot."""
 
     cloud_ready = Signal(object)
     cloud_failed = Signal(str)
     surveying = Signal()
+    trap_known = Signal(object)
     part_failed = Signal(str)
     _arrived = Signal(int, bool, object)
+    _begun = Signal(object)
     _surveyed = Signal(object, object)
     _solved = Signal(int, object)
 
@@ -80,6 +83,7 @@ class Answers(QObject):
         self._patience.timeout.connect(self._tell_of_survey)
         # The workers' results hop to the GUI thread here.
         self._arrived.connect(self._take, Qt.ConnectionType.QueuedConnection)
+        self._begun.connect(self._take_beginning, Qt.ConnectionType.QueuedConnection)
         self._surveyed.connect(self._take_survey, Qt.ConnectionType.QueuedConnection)
         self._solved.connect(self._take_solved, Qt.ConnectionType.QueuedConnection)
 
@@ -130,11 +134,17 @@ class Answers(QObject):
         """On the worker."""
         try:
             with brief_turns():
+                begin_trap(plan)
+                self._begun.emit(plan)
                 prepare_trap(plan)
         except Exception as error:  # whatever it is, it is the GUI thread's to tell
             self._surveyed.emit(plan, error)
         else:
             self._surveyed.emit(plan, None)
+
+    def _take_beginning(self, plan: Plan) -> None:
+        if self._under_survey and plan == self._plan:
+            self.trap_known.emit(plan)
 
     def _take_survey(self, plan: Plan, error: Exception | None) -> None:
         if not self._under_survey or self._plan is None:

@@ -149,6 +149,7 @@ class MainWindow(QMainWindow):
         answers.cloud_ready.connect(self._show_cloud)
         answers.cloud_failed.connect(self._cloud_failed)
         answers.surveying.connect(self._judge)
+        answers.trap_known.connect(self._show_trap)
         answers.part_failed.connect(self.tell)
         # a page that comes to the front, or wants to show something else, asks for its part
         desk.page_built.connect(self._connect_page)

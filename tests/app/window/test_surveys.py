@@ -38,8 +38,9 @@ class Surveys:
 
     def __init__(self, monkeypatch: pytest.MonkeyPatch) -> None:
         self.threads: list[int] = []
-        self.gate = threading.Event()
+        self.gate, self.curve_gate = threading.Event(), threading.Event()
         self.gate.set()
+        self.curve_gate.set()
         self._survey, self._curve = physics.traps.survey.survey, physics.traps.survey.volume_curve_of
         monkeypatch.setattr(physics.traps.survey, "survey", self.survey)
         monkeypatch.setattr(physics.traps.survey, "volume_curve_of", self.curve)
@@ -51,6 +52,7 @@ class Surveys:
 
     def curve(self, *args: object) -> object:
         self.threads.append(threading.get_ident())
+        assert self.curve_gate.wait(20.0)
         return self._curve(*args)  # type: ignore[arg-type]
 
 
@@ -93,6 +95,26 @@ def test_the_window_surveys_on_a_worker_and_never_twice(
         window.answers.answer_now()
         assert window.answers.cloud.plan == shown
     assert len(surveys.threads) == made
+
+
+def test_the_form_tells_of_the_trap_before_the_cloud_is_answered(
+    window: MainWindow, settle: Settle, plan: Plan, surveys: Surveys, qtbot: QtBot
+) -> None:
+    window.document.edit(with_power(plan, "2.4611 W"), "plan")
+    settle(window)
+    form, before = window.desk.bench.trap, window.answers.cloud
+    depth = form.made_depth.text()
+    surveys.curve_gate.clear()
+    window.document.edit(with_power(plan, "1.9 W"), "plan")
+    qtbot.waitUntil(lambda: form.made_depth.text() != depth)
+    assert not form.made_depth.property("stale")
+    assert form.facts["scattering_rate"].text().endswith("1/s")
+    assert window.answers.cloud is before
+    shallow = form.made_depth.text()
+    surveys.curve_gate.set()
+    settle(window)
+    assert window.answers.cloud is not before
+    assert form.made_depth.text() == shallow
 
 
 def test_the_last_good_answer_stays_and_says_what_is_waited_for(
