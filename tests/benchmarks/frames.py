@@ -1,4 +1,4 @@
-"""Frames of live canvases against full draws of the same canvases, alternating in one run.
+"""Frames of live canvases against full draws of the same pictures with axes and artists, alternating in one run.
 
 Drawing only: the pictures are those of the pages, computed beforehand for a trap that is squeezed step by step, so that
 all curves and the whole map move in every frame. A frame lasts from `show_picture` to the end of the paint.
@@ -15,16 +15,19 @@ from pathlib import Path
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 os.environ.setdefault("QT_API", "pyside6")
 
+from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.figure import Figure
 from PySide6.QtWidgets import QApplication
 
 from app.engine import Against, cloud_answer, map_answer, profile_answer, slices_answer, usual_limits
+from app.figures.draw import draw_picture
 from app.figures.map import map_picture
 from app.figures.picture import Picture
 from app.figures.profile import Depth, profile_picture
 from app.figures.slices import slice_picture
 from app.plan import plan_with
 from app.plan_file import read_plan
-from app.window.live_canvas import LiveCanvas
+from app.window.live_canvas import DPI, LiveCanvas
 
 PLAN = Path(__file__).resolve().parents[2] / "presets" / "plans" / "crossed_trap_rubidium.toml"
 STEPS = 12
@@ -64,6 +67,9 @@ def _paint(canvases: Sequence[LiveCanvas], prepare: Callable[[], None]) -> float
 def _measure(canvases: Sequence[LiveCanvas], steps: Sequence[Sequence[Picture]]) -> tuple[list[float], list[float]]:
     """Milliseconds of live frames and of full draws; a frame whose axes had to change counts as neither."""
     live, full = [], []
+    figures = [Figure(figsize=(canvas.width() / DPI, canvas.height() / DPI), dpi=DPI) for canvas in canvases]
+    for figure in figures:
+        FigureCanvasAgg(figure)
     for turn in range(ROUNDS):
         pictures = steps[turn % len(steps)]
         before = sum(canvas.full_draws for canvas in canvases)
@@ -72,10 +78,11 @@ def _measure(canvases: Sequence[LiveCanvas], steps: Sequence[Sequence[Picture]])
             for canvas, picture in zip(canvases, pictures, strict=True):
                 canvas.show_picture(lambda picture=picture: picture)
 
-        def redraw(show: Callable[[], None] = show) -> None:
-            show()
-            for canvas in canvases:
-                canvas.draw_idle()
+        def redraw(pictures: Sequence[Picture] = pictures) -> None:
+            for figure, picture in zip(figures, pictures, strict=True):
+                figure.clear()
+                draw_picture(picture, figure.add_axes((0.0, 0.0, 1.0, 1.0)))
+                figure.canvas.draw()
 
         spent = _paint(canvases, show)
         if sum(canvas.full_draws for canvas in canvases) == before:
