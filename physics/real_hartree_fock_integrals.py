@@ -15,6 +15,7 @@ Functions take flat arrays, one element a cloud. w is the volume over that at th
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, fields
 from typing import NamedTuple
 
@@ -40,8 +41,8 @@ _TINY = 1e-300
 _CELLS = 64
 _ROUNDS, _SETTLED = 40, 1e-11  # of the top of clouds without a condensate
 _SMALLEST = -25.0  # ln of what the centre of a condensate is beyond its edge
-_DEEP, _FOUND, _FOUND_NEAR_TOP = 40.0, 1e-6, 1e-9
-_HIGH = 5.0  # tops from which on the derivative of N leaves out that they move
+_DEEP, _FOUND, _FOUND_NEAR_TOP = 40.0, 1e-6, 1e-8
+_HIGH = 2.0  # tops from which on the derivative of N is close, which leaves out how they move densities at one place
 
 
 class _Nodes(NamedTuple):
@@ -59,6 +60,14 @@ class _Nodes(NamedTuple):
     w: Floats
     slope: Floats
     inside: int
+
+    def cut(self, top: Floats) -> Floats:
+        """d(fall)/d(top)."""
+        y = top[:, np.newaxis] - self.v
+        with np.errstate(all="ignore"):
+            held = 1.0 / (math.sqrt(math.pi) * np.expm1(top))
+            cut: Floats = np.where(y > 0.0, held[:, np.newaxis] / np.sqrt(y), 0.0)
+        return cut
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -155,7 +164,8 @@ class MeanField:
                     break
             at = self._nodes(eta, g, m, state["top"], v)
             number = _total(at.w, at.fall)
-            slope = _total(at.slope, at.fall) * (1.0 + 2.0 * g * fall) / number
+            by_m = _total(at.slope, at.fall) - _total(at.w, at.cut(state["top"]))
+            slope = by_m * (1.0 + 2.0 * g * fall) / number
             return -np.log(number / wanted), np.where(state["top"] > _HIGH, slope, np.nan)
 
         start, low = np.maximum(alpha, least), least * (1.0 - 1e-9)
@@ -236,13 +246,15 @@ class MeanField:
         return w, slope / eta
 
     def _number(self, eta: Floats, g: Floats, here: Centre) -> tuple[Floats, Floats]:
-        """All atoms around a condensate, (cells,), and the derivative by m as if the top stood still."""
+        """All atoms around a condensate, (cells,), and about the derivative by m."""
         edge, m = here.edge, eta - here.top
         at = self._nodes(eta, g, m, here.top, edge.outside, here)
         w, slope = self._volume(eta, m - edge.height)
         drop = edge.inside / g + edge.thermal_inside - edge.thermal_outside
         falls = np.concatenate([1.0 / g[:, np.newaxis] - at.fall[:, : at.inside], at.fall[:, at.inside :]], axis=-1)
-        return w * drop + _total(at.w, falls), slope * drop + _total(at.slope, falls)
+        cut = at.cut(here.top)
+        lost = _total(at.w[:, at.inside :], cut[:, at.inside :]) - _total(at.w[:, : at.inside], cut[:, : at.inside])
+        return w * drop + _total(at.w, falls), slope * drop + _total(at.slope, falls) - lost
 
     def _around(self, eta: Floats, g: Floats, here: Centre) -> Floats:
         """(8, cells) `SUMS` of clouds with a condensate."""

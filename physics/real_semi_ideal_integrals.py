@@ -32,10 +32,12 @@ _TINY = 1e-300
 _CELLS = 128  # at once, to bound the memory
 _DIRECT = 160  # clouds up to which sums are done one by one
 _STEP, _IN_ETA, _PER_STEP = 0.4, 12, 2.4  # of surfaces: steps of ln eta, nodes along it
-_KEPT, _LEAST = 16, 1e-9
+_KEPT, _LEAST, _FOUND = 16, 1e-9, 1e-8
+_EVEN, _BEFORE, _NARROW, _MARGIN = 0.35, 0.8, 0.06, 1.1
 _TOPS = ((0.03, 14), (0.12, 16), (0.35, 20), (0.9, 26))
 """Shares of eta up to which mu is on a surface, with its nodes along mu. There are several, for where arms open a trap
-is not smooth, and what polynomials do there must not disturb small condensates."""
+is not smooth, and what polynomials do there must not disturb small condensates. What the last of them says is where the
+search for each cloud by itself begins."""
 
 _SHARES = np.geomspace(1e-6, 1.0, 100)
 
@@ -79,11 +81,11 @@ class CondensateSums:
         return total
 
     def thermal_of_many(self, eta: Floats, m: Floats) -> Floats:
-        """`thermal` of any number of clouds: of many by way of a grid, with a relative error of about 1e-5; of up to
-        1e-3 where arms open steeply, and of some percent where mu itself is about to reach them."""
+        """`thermal` of any number of clouds: of many by way of a grid, with a relative error of about 1e-5, but for
+        those of which mu is near the energies where arms open."""
 
         def of_group(top: float, eta: Floats, m: Floats) -> Floats:
-            if eta.size <= _DIRECT:
+            if eta.size <= _DIRECT or top > self._even:
                 return self._in_parts(self.thermal, eta, m)
             surface = self._surface(eta, top)
             parts = []
@@ -137,19 +139,46 @@ class CondensateSums:
 
     def _height(self, top: float, eta: Floats, wanted: Floats, saturated: Floats, scale: Floats) -> Floats:
         """The same of clouds whose mu is not above a share of eta."""
-        number: Callable[[Floats], Floats]
+        given = eta, wanted, saturated, scale
         if eta.size <= _DIRECT:
+            return self._one_by_one(*given)
+        surface, exponent = self._surface(eta, top), self.shape.exponent
+        polynomials = surface.across(np.log(eta))[:1]
 
-            def number(m: Floats) -> Floats:
-                return self._in_parts(self._number, eta, m)
-        else:
-            surface, scales = self._surface(eta, top), self.shape.exponent
-            polynomials = surface.across(np.log(eta))[:1]
+        def of_surface(m: Floats) -> Floats:
+            held: Floats = np.exp(surface.along(polynomials, _place(top, eta, m))[0]) * _scales(exponent, eta, m)[0]
+            return held
 
-            def number(m: Floats) -> Floats:
-                held: Floats = np.exp(surface.along(polynomials, _place(top, eta, m))[0]) * _scales(scales, eta, m)[0]
-                return held
+        found = self._root(of_surface, *given)
+        if top <= self._even:
+            return found
+        # The surface is rough: it says which of the others serves, or where each cloud by itself is sought.
+        return _in_groups(self._again, _MARGIN * found / eta, *given, found)
 
+    def _again(self, top: float, eta: Floats, wanted: Floats, saturated: Floats, scale: Floats, near: Floats) -> Floats:
+        given = eta, wanted, saturated, scale
+        if top <= self._even:
+            return self._height(top, *given)
+        known, found = np.isfinite(near), np.full_like(near, np.nan)
+        if np.any(known):
+            found[known] = self._one_by_one(*(each[known] for each in (*given, near)))
+        return found
+
+    def _one_by_one(
+        self, eta: Floats, wanted: Floats, saturated: Floats, scale: Floats, near: Floats | None = None
+    ) -> Floats:
+        return self._root(lambda m: self._in_parts(self._number, eta, m), eta, wanted, saturated, scale, near)
+
+    def _root(
+        self,
+        number: Callable[[Floats], Floats],
+        eta: Floats,
+        wanted: Floats,
+        saturated: Floats,
+        scale: Floats,
+        near: Floats | None = None,
+    ) -> Floats:
+        """m at which the condensate and thermal atoms, of a `number` of m, are as many as wanted."""
         start = number(np.zeros_like(eta))
         beyond = wanted - saturated
 
@@ -160,16 +189,24 @@ class CondensateSums:
                 return np.where(extra > 0.0, np.log(extra / beyond), -np.inf)
 
         # The logarithm of the atoms beyond the threshold against that of m: its slope is between 1/2 and 5/2 in a deep
-        # harmonic trap, and it is followed by secants within a bracket.
+        # harmonic trap, steeper in arms, and it is followed by secants within a bracket.
         high = np.log(eta)
+        if near is None:
+            # Below the roots of either part alone, of the condensate and of thermal atoms, which it lifts.
+            alone, lifted = eta * self.share(beyond / (scale * eta)), 0.73 * beyond / saturated
+            near = np.maximum(alone * lifted / (alone + lifted), _LEAST)
         fits = scale * eta * self.full >= wanted
-        # Below the roots of either part alone, of the condensate and of thermal atoms, which it lifts.
-        alone = eta * self.share(beyond / (scale * eta))
-        lifted = 0.73 * beyond / saturated
-        first = np.log(np.maximum(alone * lifted / (alone + lifted), _LEAST))
-        first = np.where(fits, np.minimum(first, high - 1e-3), np.nan)
+        first = np.where(fits, np.minimum(np.log(near), high - 1e-3), np.nan)
         low = np.full_like(high, math.log(_LEAST))
-        return np.exp(rising_roots(miss, low, high, first, slope=1.5))
+        return np.exp(rising_roots(miss, low, high, first, slope=1.5, slopes=(0.2, 200.0), tolerance=_FOUND))
+
+    @cached_property
+    def _even(self) -> float:
+        """Share of eta up to which surfaces serve: the trap is smooth some way beyond. Where arms open, panels of the
+        curve are narrow."""
+        ends = np.append(self.shape.turns, 1.0)
+        narrow = ends[:-1][np.diff(np.log(ends)) < _NARROW]
+        return min(_EVEN, _BEFORE * float(narrow[0]) if narrow.size else _EVEN)
 
     def _outside(self, eta: Floats, m: Floats) -> tuple[Floats, Floats]:
         """v, and w with the weights of an integral over v, (cells, nodes)."""

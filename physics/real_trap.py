@@ -6,6 +6,7 @@ import math
 from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
+from weakref import WeakKeyDictionary
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -137,8 +138,11 @@ class RealTrap(ThreeFrequencies):
         return other
 
 
+_OF_SURVEYS: WeakKeyDictionary[Survey, RealTrap] = WeakKeyDictionary()
+
+
 def real_trap(found: Survey) -> RealTrap:
-    """The trap of a survey, as clouds see it.
+    """The trap of a survey, as clouds see it; the same one as long as there is the survey, with its tables.
 
     Raises
     ------
@@ -146,10 +150,14 @@ def real_trap(found: Survey) -> RealTrap:
     """
     if found.reason is not None:
         raise ValueError(f"a cloud needs a trap that holds it, got one where {found.reason.value}")
-    held, volume, curve = held_curve(found)
-    return RealTrap(
-        mass=found.mass, curve=curve, held=held, volume=volume, depth=found.depth, frequencies=found.frequencies
-    )
+    kept = _OF_SURVEYS.get(found)
+    if kept is None:
+        held, volume, curve = held_curve(found)
+        kept = RealTrap(
+            mass=found.mass, curve=curve, held=held, volume=volume, depth=found.depth, frequencies=found.frequencies
+        )
+        _OF_SURVEYS[found] = kept
+    return kept
 
 
 def held_curve(found: Survey) -> tuple[float, float, CurveShape]:
