@@ -3,9 +3,8 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
-from functools import partial
 from typing import TYPE_CHECKING
 
 from app.answers.trap import trap_answer
@@ -13,11 +12,10 @@ from app.language import translate as _
 from app.mixture_quantities import MIXTURE_QUANTITIES
 from app.mixture_words import mixing_text, mixture_range_text, reason_unknown
 from app.quantities import QUANTITIES
-from app.ramp_words import duration
 from app.trap_words import frequencies_text, reason_no_frequencies, sag_text
 from app.tuning_words import CERTAINTY
 from app.units import best_unit, format_quantity
-from app.words import number, percent, range_text, temperature
+from app.words import number, percent, range_text
 from physics.constants import boltzmann
 
 if TYPE_CHECKING:
@@ -158,15 +156,21 @@ def _own(cloud: CloudAnswer) -> Iterator[tuple[str, str, str]]:
     yield _("degeneracy"), degeneracy_text(cloud), f"{row.formula}. {row.source}"
     yield (
         _("peak phase-space density"),
-        number(float(solved.peak_phase_space_density)),
+        _bracketed(number(float(solved.peak_phase_space_density)), _range(cloud, "peak_phase_space_density", "1")),
         _tip("peak_phase_space_density"),
     )
     yield _("frequencies"), *_frequencies(cloud)
     yield _("sag"), *_sag(cloud)
     depth = cloud.missing(QUANTITIES["truncation"]) is None
-    eta = f"{number(float(cloud.value('truncation')))} kT" if depth else "–"
+    eta = "–"
+    if depth:
+        eta = _bracketed(f"{number(float(cloud.value('truncation')))} kT", _range(cloud, "truncation", "1"))
     yield _("trap depth"), eta, _tip("truncation")
     yield _("peak density"), _density(float(solved.peak_density)), _tip("peak_density")
+
+
+def _range(cloud: CloudAnswer, name: str, unit: str) -> str:
+    return range_text(cloud, QUANTITIES[name], unit)
 
 
 def _frequencies(cloud: CloudAnswer) -> tuple[str, str]:
@@ -261,31 +265,37 @@ def _unknown(answer: MixtureAnswer, name: str) -> str:
 
 
 def _text(answer: MixtureAnswer, name: str) -> str:
-    """A value with its range."""
-    say = partial(_plain, name)
-    return _bracketed(say(answer.value(name)), mixture_range_text(answer, name, say))
+    """A value with its range, in one unit."""
+    value = answer.value(name)
+    say = _plain(name, value)
+    return _bracketed(say(value), mixture_range_text(answer, name, say))
 
 
-def _plain(name: str, value: float) -> str:
+def _plain(name: str, like: float) -> Callable[[float], str]:
+    """Says values of a quantity in the unit that suits one of them."""
     match MIXTURE_QUANTITIES[name].unit:
         case "m":
-            return _length(value)
+            return _length if like < 1e-12 else _in_unit(best_unit(like, ("nm", "µm", "mm")))
         case "s":
-            return duration(value)
+            return _in_unit(best_unit(like, ("s", "ms", "µs")))
         case "K":
-            return temperature(value)
+            return _in_unit(best_unit(like, _TEMPERATURES))
         case "J":
-            return _signed_temperature(value / boltzmann)
+            unit = best_unit(abs(like) / boltzmann, _TEMPERATURES)
+            return lambda value: f"{'−' if value < 0.0 else ''}{_in_unit(unit)(abs(value) / boltzmann)}"
         case "1/m^3":
-            return _density(value)
+            return _density
         case "1/s":
-            return f"{number(value)} /s"
+            return lambda value: f"{number(value)} /s"
         case _:
-            return percent(value) if name == "overlap_share" else number(value)
+            return percent if name == "overlap_share" else number
 
 
-def _signed_temperature(value: float) -> str:
-    return f"{'−' if value < 0.0 else ''}{temperature(abs(value))}"
+_TEMPERATURES = ("pK", "nK", "µK", "mK", "K")
+
+
+def _in_unit(unit: str) -> Callable[[float], str]:
+    return lambda value: format_quantity(value, unit, digits=3)
 
 
 def _length(value: float) -> str:

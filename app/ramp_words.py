@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
     from app.answers.ramp_design import DesignAnswer
     from app.answers.ramp_sensitivity import SensitivityAnswer
+    from app.answers.sympathetic import SympatheticAnswer
     from physics.evaporation_budget import Budget
     from physics.evaporation_target import Target
     from physics.ramps import Control
@@ -228,12 +229,28 @@ def aim(target: Target, *, bosons: bool) -> str:
     return _("a peak phase-space density of {density}").format(density=number(density, 3))
 
 
-def ramp_verdict(answer: RampAnswer) -> str:
-    """How the ramp ends, and what took the atoms, in words a colleague would say; why the passenger is not in it."""
-    left_out = ""
+def ramp_verdict(answer: RampAnswer, *, passenger: bool = True) -> str:
+    """How the ramp ends, and what took the atoms, in words a colleague would say; where the passenger ends, or why it
+    is not in it.
+
+    passenger : whether to say where it ends
+    """
+    said = ""
     if answer.passenger_left_out:
-        left_out = _("The passenger is left out: {why}.").format(why=answer.passenger_left_out)
-    return " ".join(part for part in (_end(answer), _shares(answer.run.budget), left_out) if part)
+        said = _("The passenger is left out: {why}.").format(why=answer.passenger_left_out)
+    elif answer.passenger is not None and passenger:
+        said = _passenger_end(answer.passenger)
+    return " ".join(part for part in (_end(answer), _shares(answer.run.budget), said) if part)
+
+
+def _passenger_end(passenger: SympatheticAnswer) -> str:
+    end = passenger.passenger_reduced_temperature
+    if math.isnan(end):  # its own verdict says why
+        return ""
+    ratio = _("T/Tc") if passenger.run.passenger.gas.bosons else _("T/TF")
+    return _("The passenger, {species}, ends at {ratio} = {end}.").format(
+        species=passenger.states[1].key, ratio=ratio, end=number(end)
+    )
 
 
 def _end(answer: RampAnswer) -> str:
@@ -354,15 +371,10 @@ def design_sentence(found: DesignAnswer) -> str:
             )
     else:
         template = _("Most atoms reach {aim} where {control} moves so that the truncation parameter stays at {held}.")
-    passenger = found.answer.passenger
-    if passenger is not None:
-        counted = _("The heat of the passenger is counted")
-        if found.design.passenger is None:
-            counted = _("η is chosen for the first species alone")
-        ratio = _("T/Tc") if passenger.run.passenger.gas.bosons else _("T/TF")
-        end = number(passenger.passenger_reduced_temperature)
-        rest = _("the passenger ends at {ratio} = {end}").format(ratio=ratio, end=end)
-        template = f"{template} {counted}; {rest}."
+    if found.answer.passenger is not None:
+        counted = _("The heat of the passenger is counted.")
+        alone = _("η is chosen for the first species alone.")
+        template = f"{template} {alone if found.design.passenger is None else counted}"
     others = ", ".join(found.others)
     return template.format(control=found.control.label, aim=goal, held=held.removesuffix(","), others=others)
 

@@ -198,7 +198,8 @@ class MixturePage(TimePage):
             again = (Offer(_("Try again"), self._try_again),) if found.lost else ()
             self._show_empty(_("The passenger is not followed along the ramp."), _sentence(left_out), again, views=True)
             return
-        panel.tell(sympathetic_verdict(passenger), ramp_verdict(found.ramp), sympathetic_caveat_lines(passenger))
+        first = ramp_verdict(found.ramp, passenger=False)
+        panel.tell(sympathetic_verdict(passenger), first, sympathetic_caveat_lines(passenger))
         panel.show_body()
         self._put_in_front(tuple(panel.courses.plots.values()))
         self._show_courses(passenger, answer)

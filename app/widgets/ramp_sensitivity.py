@@ -73,7 +73,7 @@ class SensitivityView(QWidget):
         heads = ["input", f"{share} less", f"{share} more", "atoms at the end"]
         if found.passenger_bosons is not None:
             ratio = "T/Tc" if found.passenger_bosons else "T/TF"
-            heads += [f"{ratio} of the passenger, less", "more"]
+            heads.append(f"passenger's {ratio}")
         self.table.show_rows(heads, rows)
         self.table.fill_width()
         effects = [_effects(one, planned) for one in found.found]
@@ -114,10 +114,11 @@ class SensitivityView(QWidget):
 
 
 def _of_passenger(found: SensitivityAnswer, one: RampSensitivity) -> tuple[str, ...]:
-    """T/Tc or T/TF of the passenger at the end, by less and by more of an input; nothing without one."""
+    """T/Tc or T/TF of the passenger at the end, by less and by more of an input, in a cell; none without one."""
     if found.passenger_bosons is None:
         return ()
-    return tuple(number(value) if math.isfinite(value) else "–" for value in (one.passenger_less, one.passenger_more))
+    ends = (one.passenger_less, one.passenger_more)
+    return (", ".join(number(value) if math.isfinite(value) else "–" for value in ends),)
 
 
 def _effects(one: RampSensitivity, planned: float) -> tuple[float, float]:

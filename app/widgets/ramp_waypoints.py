@@ -28,6 +28,7 @@ from app.widgets.scrolled import fill_scrolled
 from app.words import number, percent, temperature
 from physics.particles import Statistics
 from physics.ramps import Control
+from physics.species import State
 from physics.waypoints import Departure, PassengerThen
 
 RELATIVE_ERROR = Kind(name="relative error", si_unit="", units=("%", ""), low=0.0, high=0.9, example="10 %")
@@ -211,9 +212,12 @@ class WaypointsView(QWidget):
 
     def _choose(self) -> None:
         rows = sorted({index.row() for index in self.table.selectionModel().selectedRows()})
-        if self._found is None or not rows or rows[0] >= len(self._found.points):
+        if self._found is None or not rows:
             return
-        self._chosen = self._found.points[rows[0]].phase_space_density
+        place = rows[0] if self._found.passenger is None else rows[0] // 2
+        if place >= len(self._found.points):
+            return
+        self._chosen = self._found.points[place].phase_space_density
         self.wanted.emit()
 
     def _take_densities(self, densities: object) -> None:
@@ -270,11 +274,7 @@ def waypoint_headings(found: WaypointsAnswer) -> tuple[str, ...]:
     """What stands over the table."""
     controls = tuple(control.label for control in moving_controls(found))
     after = format_quantity(found.expansion_time, best_unit(found.expansion_time, ("s", "ms", "µs")), digits=3)
-    passenger: tuple[str, ...] = ()
-    if found.passenger is not None:
-        ratio = "T/Tc" if found.passenger.statistics is Statistics.BOSE else "T/TF"
-        passenger = (f"{found.passenger.key} N", "T", ratio, f"widths after {after}")
-    return ("D", "N", "T", "t", *controls, "η", "collisions", f"widths after {after}", *passenger)
+    return ("D", "N", "T", "t", *controls, "η", "collisions", f"widths after {after}")
 
 
 def waypoint_cells(found: WaypointsAnswer) -> list[tuple[str, ...]]:
@@ -295,18 +295,28 @@ def waypoint_cells(found: WaypointsAnswer) -> list[tuple[str, ...]]:
                 number(point.truncation),
                 rate,
                 _widths(point.widths),
-                *_passenger_cells(found, point.passenger),
             )
         )
+        if found.passenger is not None:
+            rows.append(_passenger_cells(found.passenger, point.passenger, len(moving)))
     return rows
 
 
-def _passenger_cells(found: WaypointsAnswer, then: PassengerThen | None) -> tuple[str, ...]:
-    if found.passenger is None:
-        return ()
+def _passenger_cells(passenger: State, then: PassengerThen | None, controls: int) -> tuple[str, ...]:
+    """The row under that of a waypoint: the passenger in the same columns, its degeneracy in that of the time."""
+    nothing = ("",) * (controls + 2)
     if then is None:
-        return ("–",) * 4
-    return number(then.atoms), temperature(then.temperature), number(then.reduced_temperature), _widths(then.widths)
+        return (passenger.key, "–", "–", "–", *nothing, "–")
+    ratio = "T/Tc" if passenger.statistics is Statistics.BOSE else "T/TF"
+    degeneracy = f"{ratio} {number(then.reduced_temperature)}"
+    return (
+        passenger.key,
+        number(then.atoms),
+        temperature(then.temperature),
+        degeneracy,
+        *nothing,
+        _widths(then.widths),
+    )
 
 
 def _widths(widths: tuple[float, float, float]) -> str:
