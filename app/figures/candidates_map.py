@@ -120,47 +120,47 @@ def _labels(
         reach = 0.5 * wide * (len(text) + 1)
         own = heights[id(line)]
         others = [height for height in heights.values() if height is not own]
-        places = [
-            (
-                _clearance(u, v, reach, taken, high),
-                _free(u, v, reach, across, others) / high,
-                k,
-                side,
-                u,
-                v,
-            )
-            for k in range(2, len(across) - 2)
-            if math.isfinite(own[k])
-            for side in _SIDES
-            for u, v in ((float(across[k]) - side * reach, float(own[k]) + side * _HALF * high),)
-        ]
-        if not places:
+        here = np.flatnonzero(np.isfinite(own[2:-2])) + 2
+        if not here.size:
             continue
-        clear, free, k, side, u, v = max(places, key=lambda place: place[0] + min(place[1], 1.0))
-        if (clear < 1.0 or free < _LEGIBLE) and _role(line, plan) in (Role.FIRST, Role.SECOND):
+        # all places at once, over and under each point of the line
+        points, sides = np.repeat(here, len(_SIDES)), np.tile(_SIDES, len(here))
+        us, vs = across[points] - sides * reach, own[points] + sides * (_HALF * high)
+        clear = _clearance(us, vs, reach, taken, high)
+        free = _free(us, vs, reach, across, others) / high
+        best = int(np.argmax(clear + np.minimum(free, 1.0)))
+        if (clear[best] < 1.0 or free[best] < _LEGIBLE) and _role(line, plan) in (Role.FIRST, Role.SECOND):
             continue
+        u, v, k, side = float(us[best]), float(vs[best]), int(points[best]), int(sides[best])
         taken.append((u, v, reach))
         there = float(thresholds.atoms[k]), float(line.temperature[k])
         labels.append(Label(text=text, role=_role(line, plan), x=there[0], y=there[1], side=-side, lift=side))
     return tuple(labels)
 
 
-def _free(u: float, v: float, reach: float, across: Array, lines: Sequence[Array]) -> float:
-    """How far the middle of a label is from the nearest of other lines, as a share of the axis."""
-    along = np.linspace(u - reach, u + reach, _LOOKS)
-    gaps = [np.abs(np.interp(along, across, line) - v) for line in lines]
-    return min([1.0, *(float(np.min(gap, where=np.isfinite(gap), initial=1.0)) for gap in gaps)])
+def _free(u: Array, v: Array, reach: float, across: Array, lines: Sequence[Array]) -> Array:
+    """How far the middles of labels are from the nearest of other lines, as a share of the axis."""
+    nearest = np.ones(u.shape)
+    along = np.linspace(u - reach, u + reach, _LOOKS, axis=-1)
+    for line in lines:
+        gaps = np.abs(np.interp(along, across, line) - v[:, np.newaxis])
+        nearest = np.minimum(nearest, np.min(gaps, axis=-1, where=np.isfinite(gaps), initial=1.0))
+    return nearest
 
 
 def _share(axis: Axis, value: float) -> float:
     return math.log(value / axis.low) / math.log(axis.high / axis.low)
 
 
-def _clearance(u: float, v: float, reach: float, taken: Sequence[tuple[float, float, float]], high: float) -> float:
-    """How far a place is from the labels that stand, in the room that they need, and from the ends of the axis; no more
+def _clearance(
+    u: Array, v: Array, reach: float, taken: Sequence[tuple[float, float, float]], high: float
+) -> Array:  # fmt: skip
+    """How far places are from the labels that stand, in the room that they need, and from the ends of the axis; no more
     than is needed counts."""
-    others = (max(abs(u - x) / (reach + other), abs(v - y) / high) for x, y, other in taken)
-    return min(1.3, min(u, 1.0 - u) / reach, min(v, 1.0 - v) / (_HALF * high), *others)
+    room = np.minimum(np.minimum(u, 1.0 - u) / reach, np.minimum(v, 1.0 - v) / (_HALF * high))
+    for x, y, other in taken:
+        room = np.minimum(room, np.maximum(np.abs(u - x) / (reach + other), np.abs(v - y) / high))
+    return np.minimum(room, 1.3)
 
 
 def _mark(line: ThresholdLine) -> str:
