@@ -105,6 +105,9 @@ def difference_text(value: float, reference: float) -> str:
     return f"{change:+.1f} %".replace("-", "−")
 
 
+_HARDLY = 1e-3  # condensed fraction below which none is worth a number
+
+
 def spread_sentence(answer: ModelsAnswer) -> str:
     """What the choice of a model changes, in one sentence."""
     rows = [row for row in answer.rows.values() if row.obstacle is None]
@@ -113,18 +116,23 @@ def spread_sentence(answer: ModelsAnswer) -> str:
     if answer.bosons:
         fractions = sorted(float(row.condensate_fraction) for row in rows)
         onsets = sorted(float(row.critical_temperature) for row in rows)
-        said = _("By model, {low} to {high} of the atoms are condensed, and condensation begins at {cold} to {warm}.")
+        said = _("By model, {condensed} of the atoms are condensed, and condensation begins at {onset}.")
+        if fractions[-1] < _HARDLY:
+            said = _("By no model is more than an atom in a thousand condensed; condensation begins at {onset}.")
         return said.format(
-            low=percent(fractions[0]),
-            high=percent(fractions[-1]),
-            cold=temperature(onsets[0]),
-            warm=temperature(onsets[-1]),
+            condensed=_range(percent(fractions[0]), percent(fractions[-1])),
+            onset=_range(temperature(onsets[0]), temperature(onsets[-1])),
         )
     energies = [float(row.energy_per_atom) for row in rows]
     change = 100.0 * (max(energies) / min(energies) - 1.0)
     return _("Local density and exact levels differ by {change} in the energy.").format(
         change=f"{change:.2g} %" if change >= 0.01 else _("less than 0.01 %")
     )
+
+
+def _range(low: str, high: str) -> str:
+    """Two texts as a range, or the one where they are alike."""
+    return low if low == high else _("{low} to {high}").format(low=low, high=high)
 
 
 def interaction_sentence(cloud: CloudAnswer) -> str:

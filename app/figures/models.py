@@ -52,7 +52,8 @@ def _bosons(answer: ModelsAnswer) -> Picture:
 
 def _fermions(answer: ModelsAnswer) -> Picture:
     lowest = min((float(np.nanmin(curve.value)) for curve in answer.curves), default=0.0)
-    x = Axis(label=_("T/TF"), unit="", low=0.0, high=answer.reach)
+    # the mark at T = 0 is seen whole
+    x = Axis(label=_("T/TF"), unit="", low=-0.02 * answer.reach, high=answer.reach)
     y = Axis(label=_("chemical potential µ/EF"), unit="", low=min(-0.5, math.floor(2.0 * lowest) / 2.0), high=1.5)
     marks = _cloud(answer, x, y)
     curves = (*_curves(answer), *_upright(answer, y))

@@ -11,6 +11,7 @@ import numpy as np
 from app.control_kinds import CONTROL_KINDS
 from app.figures.picture import Array, Axis, Curve, Label, Mark, Picture, Role
 from app.figures.ramp_columns import decades
+from app.figures.ticks import to_drawing
 from app.language import translate as _
 from app.units import factor, format_quantity
 from physics.ramp_shapes import Shape
@@ -33,6 +34,13 @@ _SHOWN: Mapping[Knob, tuple[str, bool]] = {
 
 _LOG_FROM = 4.0
 """Ratio of the largest to the smallest value from which an axis is logarithmic."""
+
+
+_LABEL_INSET = 0.08
+"""Share of the axis between its edge and the labels of stages."""
+
+_HIGH_FROM = 0.6
+"""Share of the axis from which a curve in the middle of a stage would run through a label above it."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -160,14 +168,13 @@ def control_picture(
     if cursor is not None:
         curves.append(Curve(name="", role=Role.CURSOR, x=np.array([cursor, cursor]), y=np.array([low, high])))
         note = curve.text(curve.at(cursor))
-    top = 10.0 ** (math.log10(high) - 0.08 * math.log10(high / low)) if axis.log else high - 0.08 * (high - low)
     begins = (0.0, *bounds[:-1])
     names = tuple(
         Label(
             text=label if label and len(label) <= letters * (b - a) / end else f"{number}",
             role=Role.CLASSICAL,
             x=0.5 * (a + b),
-            y=top,
+            y=_clear_of(curve.at(0.5 * (a + b)), axis),
         )
         for number, (a, b, label) in enumerate(zip(begins, bounds, labels, strict=True), start=1)
     )
@@ -183,6 +190,14 @@ def control_picture(
         ),
         note=note,
     )
+
+
+def _clear_of(value: float, axis: Axis) -> float:
+    """Where the label of a stage stands: near the upper edge, near the lower one where the curve is high."""
+    bottom, top = to_drawing(axis, axis.low), to_drawing(axis, axis.high)
+    is_high = math.isfinite(value) and to_drawing(axis, value) > bottom + _HIGH_FROM * (top - bottom)
+    place = bottom + (_LABEL_INSET if is_high else 1.0 - _LABEL_INSET) * (top - bottom)
+    return float(10.0**place if axis.log else place)
 
 
 def value_axis(curve: ControlCurve) -> Axis:

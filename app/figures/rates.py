@@ -83,10 +83,11 @@ def limits_sentence(now: RateSet) -> str:
             else _("Neither losses nor collisions are known.")
         )
     name, rate = max(known.items(), key=lambda item: item[1])
-    together = _("Loss by {what} limits: {time}, with all known losses {all}.")
-    text = (together if len(known) > 1 else _("Loss by {what} limits: {time}; no other is known.")).format(
+    together = _("Loss by {what} limits the lifetime to {time}, all known losses together to {all}.")
+    alone = _("Loss by {what} limits the lifetime to {time}; no other is known.")
+    text = (together if len(known) > 1 else alone).format(
         what=name, time=_time(rate), all=_time(float(now.losses))
-    )
+    )  # fmt: skip
     if not known_thermal:
         return text
     ratio = thermal / float(now.losses)

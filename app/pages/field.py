@@ -22,7 +22,7 @@ from app.widgets.form import plan_with_entry
 from app.widgets.single_plot_page import SinglePlotPage
 
 HINT = "Drag the field along the curve, or double-click where it should be"
-HINT_WITHOUT = "Double-click where the field should be, or type it in the Species form"
+HINT_WITHOUT = "Double-click where the field should be, or type it"
 _STEP = "magnetic field"
 _NO_FIELD = Quantity("0 G", 0.0)
 _Fields = tuple[float, float]

@@ -30,7 +30,7 @@ if TYPE_CHECKING:
     from app.ramp_choices import StageChoice
     from app.widgets.ramp_references import Reference
 
-HINT = "Point at a time, or use the left and right arrow keys, to read all values"
+HINT = "Point at a time, or press ← or →, to read all values"
 _STEP = "ramp"
 _SURVEYED = "The trap is surveyed along the ramp; the first time this takes some seconds."
 _DRAFT = "draft"
@@ -234,8 +234,13 @@ class RampPage(TimePage):
         if not plan.ramp:
             self._found = None if self._found is not None and self._found.plan.ramp else self._found
             panel.show_empty(_NO_RAMP, _START, self._offers(plan))
+            self.bar.show_tools(False)
+            self._say_values()
             return False
         panel.show_ramp()
+        self.bar.show_tools(True)
+        if not self.bar.status.text:
+            self.bar.status.say(HINT)
         try:
             ramp = ramp_of(plan)
             curves = control_curves(ramp, path_of(plan).standing)
@@ -380,7 +385,7 @@ class RampPage(TimePage):
 
         found = self._found
         if self.reading is None or found is None or found.ramp is None:
-            self.bar.status.say(HINT)
+            self.bar.status.say(HINT if self.cloud is None or self.cloud.plan.ramp else "")
             return
         bounds = self._scenery.bounds if self._scenery is not None else ()
         stage = next((k for k, end in enumerate(bounds, start=1) if self.reading <= end), len(bounds))

@@ -33,7 +33,7 @@ class SlicesPage(Page):
         options = QHBoxLayout()
         options.setContentsMargins(14, 6, 14, 2)
         self.button = QToolButton()
-        self.button.setText("Quantities")
+        self.button.setText("Quantities ▾")
         self.button.setToolTip(f"Choose up to {MOST} quantities to plot")
         self.button.setAccessibleName("Choose the quantities to plot")
         self.button.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)

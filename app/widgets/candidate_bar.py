@@ -62,7 +62,7 @@ class ChoiceBar(QWidget):
         self.species.clicked.connect(self.species_asked)
         self.fields = _button(_("Fields…"), _("Judge each species at its best magnetic field within a range"))
         self.fields.clicked.connect(self.fields_asked)
-        self.columns = _button(_("Columns"), _("Choose the columns of the table"))
+        self.columns = _button(_("Columns") + " ▾", _("Choose the columns of the table"))
         self.columns.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)
         self.menu = QMenu(self.columns)
         self.menu.setToolTipsVisible(True)

@@ -55,7 +55,7 @@ class PlotBar(QWidget):
             button.clicked.connect(lambda checked=False, chosen=tool.id: self.pressed.emit(chosen, checked))
             row.addWidget(button)
             self.buttons[tool.id] = button
-        export = self._button("Export", "Copy or save the plot or its numbers")
+        export = self._button("Export ▾", "Copy or save the plot or its numbers")
         menu = QMenu(export)
         menu.setToolTipsVisible(True)
         for tool in EXPORTS:
@@ -65,6 +65,12 @@ class PlotBar(QWidget):
         export.setMenu(menu)
         export.setPopupMode(QToolButton.ToolButtonPopupMode.InstantPopup)
         row.addWidget(export)
+        self._export = export
+
+    def show_tools(self, shown: bool) -> None:
+        """Whether there is a plot for the buttons to work on."""
+        for button in (*self.buttons.values(), self._export):
+            button.setVisible(shown)
 
     @staticmethod
     def _button(text: str, tip: str) -> QToolButton:

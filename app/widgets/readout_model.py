@@ -183,7 +183,8 @@ class ReadoutPainter(QStyledItemDelegate):
         left, right = area.left(), area.left() + area.width() - 1
         baseline = area.top() + (area.height() - widths.height) // 2 + widths.ascent
         value_right = right - widths.of("cm⁶/s") - 4 - self.GAP
-        value_width = widths.of(reading.value)
+        value = reading.value.replace("-", "−")  # copied with a hyphen, which tables can read
+        value_width = widths.of(value)
         painter.setPen(quiet)
         painter.drawText(value_right + self.GAP, baseline, printed_unit(reading.unit))
         # The label takes what the number leaves, the symbol what the label leaves.
@@ -194,7 +195,7 @@ class ReadoutPainter(QStyledItemDelegate):
             painter.drawText(left + label_width + self.GAP, baseline, reading.symbol)
         if not (reading.reason or self._model.stale):
             painter.setPen(ink)
-        painter.drawText(value_right - value_width - 1, baseline, reading.value)
+        painter.drawText(value_right - value_width - 1, baseline, value)
         painter.setPen(quiet if reading.reason else ink)
         shown = row.label if label_width == wanted else widths.elided(row.label, label_width)
         painter.drawText(left, baseline, shown)

@@ -149,5 +149,6 @@ def _section(title: str, rows: list[tuple[str, str, str]]) -> str:
 
 
 def _keys_text(keys: list[QKeySequence]) -> str:
-    """The usual key and one other; a platform may bind more."""
-    return ", ".join(key.toString(QKeySequence.SequenceFormat.NativeText) for key in keys[:2]) or "–"
+    """The usual key and one other; a platform may bind more, some of them keys for media that few keyboards have."""
+    usual = [key for key in keys if key[0].key() < Qt.Key.Key_Back]  # type: ignore[index]
+    return ", ".join(key.toString(QKeySequence.SequenceFormat.NativeText) for key in usual[:2]) or "–"

@@ -63,7 +63,6 @@ def style_sheet_of(theme: Theme) -> str:
         #cardTitle, #cautionTitle {{ border: none; padding: 2px 4px 2px 0px; }}
         #cardTitle[off="true"] {{ color: {theme.muted}; }}
         #cardMenu {{ border: none; padding: 0px 4px; color: {theme.muted}; }}
-        #cardMenu::menu-indicator {{ image: none; }}
         #caution {{ border: none; border-left: 2px solid {theme.warning}; }}
         #cautionTitle {{ color: {theme.muted}; }}
         QLineEdit {{ border: 1px solid {theme.border}; border-radius: 3px; padding: 3px 5px;
@@ -73,8 +72,7 @@ def style_sheet_of(theme: Theme) -> str:
         QLineEdit[invalid="true"] {{ border-color: {theme.error}; }}
         QToolButton#formTitle {{ border: none; padding: 0px; }}
         QToolButton:checked {{ background: {theme.accent}; color: {theme.base}; border-radius: 3px; }}
-        QToolButton[popupMode="2"] {{ padding-right: 13px; }}
-        QToolButton::menu-indicator {{ subcontrol-origin: padding; subcontrol-position: center right; right: 2px; }}
+        QToolButton::menu-indicator {{ image: none; width: 0px; }}
         QRadioButton::indicator {{ width: 11px; height: 11px; border: 1px solid {theme.muted}; border-radius: 6px;
                                    background: {theme.base}; }}
         QRadioButton::indicator:checked {{ border: 4px solid {theme.accent}; width: 5px; height: 5px; }}

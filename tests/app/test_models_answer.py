@@ -116,6 +116,10 @@ def test_cells_say_the_value_and_how_far_it_is_from_the_model_in_use() -> None:
     assert ideal[1].startswith("81 %   +22")
     assert cells_of(answer, Model.HARTREE_FOCK)[0].startswith("134 nK   −3.2 %")
     assert "65 % to 81 %" in spread_sentence(answer)
+    hot = answer_of(plan_with(DEFAULT_PLAN, {"cloud.temperature": "800 nK"}))
+    assert spread_sentence(hot) == (
+        "By no model is more than an atom in a thousand condensed; condensation begins at 134 nK to 138 nK."
+    )
 
 
 def test_models_that_are_not_done_yet_have_no_numbers() -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 
 import numpy as np
@@ -23,7 +24,7 @@ from app.figures.ramp_columns import (
     round_end,
     value_at,
 )
-from app.figures.ramp_controls import control_curves, control_picture
+from app.figures.ramp_controls import control_curves, control_picture, value_axis
 from app.figures.ramp_tradeoff import eta_picture, time_picture
 from app.plan import DEFAULT_PLAN, Plan, plan_with
 from physics.constants import boltzmann
@@ -97,6 +98,17 @@ def test_a_control_has_a_handle_at_its_start_and_at_the_end_of_each_stage(plan):
     assert [label.text for label in picture.labels] == ["lower the depth", "2", "3"]
     assert all(mark.draggable for mark in picture.marks)
     assert "from 30.0 µK to 1.50 µK" in picture.summary
+
+
+def test_names_of_stages_stand_clear_of_the_curve(plan):
+    (curve,) = control_curves(ramp_of(plan), path_of(plan).standing)
+    axis = replace(value_axis(curve), low=1e-6, high=4e-5, log=True)
+    start, end = (math.log(curve.at(time) / 1e-6) / math.log(40.0) for time in (0.0, 15.0))
+    assert start > 0.65  # shares of the axis: the curve crosses it
+    assert end < 0.35
+    first, *_, last = control_picture(curve, 16.0, (5.0, 10.0, 15.0), ("a", "b", "c"), axis=axis).labels
+    assert math.log(first.y / 1e-6) / math.log(40.0) == pytest.approx(0.08)
+    assert math.log(last.y / 1e-6) / math.log(40.0) == pytest.approx(0.92)
 
 
 def test_a_trade_off_shows_what_reaches_and_what_misses(answer):

@@ -104,13 +104,20 @@ def test_the_threshold_is_where_the_cloud_would_condense() -> None:
     [
         (
             {"losses.two_body": "0 cm^3/s"},
-            r"^Loss by background gas limits: 60\.0 s, with all known losses 59\.\d s\. Atoms rethermalise in 1\d\d ms",
+            r"^Loss by background gas limits the lifetime to 60\.0 s, all known losses together to 59\.\d s\. Atoms "
+            r"rethermalise in 1\d\d ms",
         ),
-        ({"losses.three_body": "1e-25 cm^6/s"}, r"^Loss by three-body collisions limits: 1\.\d\d s, with all known"),
-        ({"losses.two_body": "1e-12 cm^3/s"}, r"^Loss by two-body collisions limits: 49\d ms, with all known losses"),
+        (
+            {"losses.three_body": "1e-25 cm^6/s"},
+            r"^Loss by three-body collisions limits the lifetime to 1\.\d\d s, all known",
+        ),
+        (
+            {"losses.two_body": "1e-12 cm^3/s"},
+            r"^Loss by two-body collisions limits the lifetime to 49\d ms, all known losses",
+        ),
         (
             {"species.key": "41K", "losses.two_body": "", "losses.three_body": ""},
-            r"^Loss by background gas limits: 60\.0 s; no other is known\. Atoms rethermalise",
+            r"^Loss by background gas limits the lifetime to 60\.0 s; no other is known\. Atoms rethermalise",
         ),
         (
             {"species.key": "41K", "losses.background_lifetime": "", "losses.two_body": "", "losses.three_body": ""},
@@ -120,7 +127,10 @@ def test_the_threshold_is_where_the_cloud_would_condense() -> None:
             {"species.key": "3He_metastable", "losses.background_lifetime": "", "losses.two_body": ""},
             r"^Neither losses nor collisions are known\.$",
         ),
-        ({"species.key": "3He_metastable"}, r"^Loss by background gas limits: 60\.0 s; no other is known\.$"),
+        (
+            {"species.key": "3He_metastable"},
+            r"^Loss by background gas limits the lifetime to 60\.0 s; no other is known\.$",
+        ),
     ],
 )
 def test_what_limits_is_said_in_a_sentence(texts: dict[str, str], sentence: str) -> None:

@@ -51,6 +51,8 @@ def test_it_is_worked_out_off_the_gui_thread_and_is_one_step_of_undo(
     assert lasting_window.document.plan.ramp == ()  # the click is over, the ramp is still to come
     qtbot.waitUntil(lambda: bool(lasting_window.document.plan.ramp), timeout=60_000)
     assert lasting_window.document.plan.ramp == right(lasting_window.document.plan)
+    if name == "ramp":
+        qtbot.waitUntil(lambda: not page.bar.buttons["home"].isHidden())
     assert workers[0] is not threading.main_thread()
     settle(lasting_window)
     lasting_window.document.stack.undo()
@@ -60,6 +62,9 @@ def test_it_is_worked_out_off_the_gui_thread_and_is_one_step_of_undo(
 
 def test_why_there_is_none_is_told(asked, lasting_window: MainWindow, qtbot: QtBot, settle: Settle, monkeypatch):
     page = asked("ramp", DEFAULT_PLAN)
+    # Nothing is plotted: no tools that need a plot, and no hint at one.
+    assert page.bar.status.text == ""
+    assert page.bar.buttons["home"].isHidden()
 
     def refuse(*_args):
         raise ValueError("the trap holds nothing")
