@@ -1,8 +1,8 @@
 """Volume of the connected region below an energy, cell by cell of the charts, where rays no longer serve.
 
 Each cell that the region reaches is cut in parts, smaller ones where there are few cells, and the energy expanded about
-the middle of each part. Places that lie in cells of several charts are shared among them in proportion to how small their cells
-are there, as importance sampling from several distributions does it [1]; so overlapping charts need no seam.
+the middle of each part. Places that lie in cells of several charts are shared among them in proportion to how small
+their cells are there, as importance sampling from several distributions does it [1]; so overlapping charts need no seam.
 
 Reference
 ---------
