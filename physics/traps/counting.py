@@ -2,7 +2,8 @@
 
 Each cell that the region reaches is cut in parts, smaller ones where there are few cells, and the energy expanded about
 the middle of each part. Places that lie in cells of several charts are shared among them in proportion to how small
-their cells are there, as importance sampling from several distributions does it [1]; so overlapping charts need no seam.
+their cells are there, as importance sampling from several distributions does it [1]; so overlapping charts need no
+seam.
 
 Reference
 ---------
