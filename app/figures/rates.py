@@ -22,7 +22,7 @@ _CURVES = (
     ("background", _("background loss"), Role.SECOND),
     ("spin_flips", _("spin flips at the field's zero"), Role.THRESHOLD_OF_MODEL),
     ("heating", _("heating, dT/dt over T"), Role.CLASSICAL),
-    ("by_light", _("of it, by the trap's light"), Role.FRACTION),
+    ("by_light", _("heating by the trap's light"), Role.FRACTION),
 )
 """Attribute of `RateSet`, what the legend calls it, and its line."""
 
@@ -30,7 +30,7 @@ _CURVES = (
 def rates_picture(answer: RatesAnswer) -> Picture:
     """Rethermalisation, losses and heating against temperature or atom number, the cloud and the threshold marked."""
     curves = [
-        Curve(name=name, role=role, x=answer.grid, y=_positive(getattr(answer.rates, attribute)))
+        Curve(name=name, role=role, x=answer.grid, y=_drawn(answer.rates, attribute))
         for attribute, name, role in _CURVES
         if _several(answer.rates) or attribute != "losses"
     ]
@@ -142,8 +142,12 @@ def _rate_axis(curves: list[Curve]) -> Axis:
     return Axis(label=_("rate, or 1 over lifetime"), unit="1/s", low=10.0**bottom, high=10.0**top, log=True)
 
 
-def _positive(values: Array) -> Array:
-    return np.where(values > 0.0, values, np.nan)
+def _drawn(rates: RateSet, attribute: str) -> Array:
+    """What has a place on a logarithmic axis. Heating of which light is the only part known, as of condensed clouds, is
+    drawn as that part: joined to the sum of all parts above the threshold it would look like a jump of the heating."""
+    values: Array = getattr(rates, attribute)
+    alone = np.isclose(values, rates.by_light, rtol=1e-12, atol=0.0) if attribute == "heating" else False
+    return np.where((values > 0.0) & ~np.asarray(alone), values, np.nan)
 
 
 def _several(rates: RateSet) -> bool:

@@ -44,6 +44,7 @@ _BESIDE_MAP = 7.0  # and beside it
 _REASONS = 0.64  # share of a ranking's width that a reason may take, in letters of the window
 _CHARACTER = 0.95  # width of a character of a label over that of the window's letters
 _LINES_AROUND, _LINE = 7.5, 1.25  # of a ranking: what is above and below its rows, and a row, in lines of text
+_NO_CELL = _("Choose a cell of the table to read its formula, its range and its source here.")
 HINT = _("Return, or a double click in the table, uses a species")
 
 
@@ -127,6 +128,7 @@ class CandidatesPage(SinglePlotPage):
         self.explanation = Detail()
         self.explanation.setAccessibleName(_("Explanation of the cell that the keyboard is on"))
         self.explanation.document().setDocumentMargin(14)
+        self.explanation.show_text(_NO_CELL)
         self.lower_half = QStackedWidget()
         self.lower_half.addWidget(self.plot.canvas)
         self.lower_half.addWidget(self.explanation)
@@ -325,7 +327,7 @@ class CandidatesPage(SinglePlotPage):
         self.bar.status.say(text)
 
     def _explain(self, text: str) -> None:
-        self.explanation.show_text(text)
+        self.explanation.show_text(text or _NO_CELL)
         self.bar.status.say(text.split("\n")[0])
 
     # ---------------------------------------------------------------- what the user chooses

@@ -77,6 +77,7 @@ class RampPage(TimePage):
         panel.stages.read_asked.connect(exchange.ask_read_table)
         panel.stages.problem_changed.connect(self._problem_changed)
         panel.view_changed.connect(self._view_changed)
+        panel.arranged.connect(self._offer_tools)
         panel.keep.clicked.connect(self.keep_reference)
         panel.drop.clicked.connect(self.drop_references)
         self.bar.status.say(HINT)
@@ -169,6 +170,7 @@ class RampPage(TimePage):
             self.panel.show_references(self.kept.names)
         if answer.extra is not None:
             self.panel.take_extra(answer.plan, answer.extra)
+            self._offer_tools()
         if self.cloud is not None and self.cloud.plan == self._shown and self._shown.ramp:
             self._show_found(answer)
         else:
@@ -234,13 +236,8 @@ class RampPage(TimePage):
         if not plan.ramp:
             self._found = None if self._found is not None and self._found.plan.ramp else self._found
             panel.show_empty(_NO_RAMP, _START, self._offers(plan))
-            self.bar.show_tools(False)
-            self._say_values()
             return False
         panel.show_ramp()
-        self.bar.show_tools(True)
-        if not self.bar.status.text:
-            self.bar.status.say(HINT)
         try:
             ramp = ramp_of(plan)
             curves = control_curves(ramp, path_of(plan).standing)
@@ -380,12 +377,17 @@ class RampPage(TimePage):
     def show_reading(self) -> None:
         self._show()
 
+    def _offer_tools(self) -> None:
+        """Tools where there is a plot for them, values and the hint at them where there is one against time."""
+        self.bar.show_tools(any(plot.canvas.isVisibleTo(self) for plot in self.plots))
+        self._say_values()
+
     def _say_values(self) -> None:
         from app.ramp_words import duration
 
         found = self._found
-        if self.reading is None or found is None or found.ramp is None:
-            self.bar.status.say(HINT if self.cloud is None or self.cloud.plan.ramp else "")
+        if self.reading is None or found is None or found.ramp is None or not self.panel.has_times:
+            self.bar.status.say(HINT if self.panel.has_times else "")
             return
         bounds = self._scenery.bounds if self._scenery is not None else ()
         stage = next((k for k, end in enumerate(bounds, start=1) if self.reading <= end), len(bounds))

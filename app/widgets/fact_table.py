@@ -54,13 +54,15 @@ class FactTable(QTableWidget):
         header.setStretchLastSection(True)
         self._rows: tuple[FactRow, ...] = ()
         self._headings: tuple[str, ...] = ()
+        self._with_signs = False
         self.cellActivated.connect(lambda row, _column: self.chosen.emit(self._rows[row].name))
 
     def show_rows(self, headings: Sequence[str], rows: Sequence[FactRow]) -> None:
         """Show these rows; texts that stay are left alone."""
         before, self._rows = self._rows, tuple(rows)
-        if tuple(headings) != self._headings or len(before) != len(rows):
-            self._headings, before = tuple(headings), ()
+        with_signs = any(row.in_use for row in rows)  # only then do names leave room for the sign of the one in use
+        if tuple(headings) != self._headings or len(before) != len(rows) or with_signs is not self._with_signs:
+            self._headings, self._with_signs, before = tuple(headings), with_signs, ()
             self._lay_out()
         for place, row in enumerate(rows):
             if place >= len(before) or before[place] != row:
@@ -95,7 +97,8 @@ class FactTable(QTableWidget):
     def _put_row(self, place: int, row: FactRow) -> None:
         font = QFont(self.font())
         font.setBold(row.in_use)
-        for column, text in enumerate((f"● {row.name}" if row.in_use else f"    {row.name}", *row.cells)):
+        sign = "" if not self._with_signs else "● " if row.in_use else "    "
+        for column, text in enumerate((sign + row.name, *row.cells)):
             item = self.item(place, column)
             assert item is not None
             item.setFont(font)

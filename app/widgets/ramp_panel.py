@@ -67,9 +67,10 @@ class RampView(Protocol):
 
 
 class RampPanel(QWidget):
-    """view_changed() is sent when another view comes to the front."""
+    """Signals: view_changed() when another view comes to the front; arranged() when plots come or go."""
 
     view_changed = Signal()
+    arranged = Signal()
 
     def __init__(self, page: Page) -> None:
         super().__init__()
@@ -207,6 +208,12 @@ class RampPanel(QWidget):
         if view == COURSE:
             most = max(self.table.sizeHint().height() + 10, 60)
             self._under.setFixedHeight(min(most, max(self.height() // 4, 84)))
+        self.arranged.emit()
+
+    @property
+    def has_times(self) -> bool:
+        """Whether there is a plot against time, on which values can be read."""
+        return not (self.columns.isHidden() and self.controls.isHidden())
 
     def tell(self, sentence: str, detail: str) -> None:
         """The verdict, and what limits."""

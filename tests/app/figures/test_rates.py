@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+from pathlib import Path
+
 import numpy as np
 import pytest
 
 from app.engine import Against, RatesAnswer, cloud_answer, rates_answer
 from app.figures.picture import Picture, Role
 from app.figures.rates import limits_sentence, rates_picture
-from app.plan import DEFAULT_PLAN, Plan, plan_with
+from app.plan import DEFAULT_PLAN, Plan, plan_with, read_plan
 
 LOSSY = plan_with(
     DEFAULT_PLAN,
@@ -159,3 +161,15 @@ def test_one_loss_alone_is_not_drawn_twice() -> None:
 def test_a_picture_needs_no_arrays_that_can_be_written() -> None:
     answer: RatesAnswer = rates_answer(LOSSY, Against.ATOMS)
     assert not answer.rates.background.flags.writeable
+
+
+def test_heating_of_which_only_light_is_known_is_drawn_as_that() -> None:
+    held = Path(__file__).resolve().parents[3] / "presets" / "plans" / "evaporation_crossed_beams.toml"
+    answer = rates_answer(read_plan(held), Against.TEMPERATURE)
+    drawn = {curve.name: curve for curve in rates_picture(answer).curves}
+    whole, light = drawn["heating, dT/dt over T"], drawn["heating by the trap's light"]
+    condensed = whole.x < answer.threshold
+    assert condensed.any()
+    assert np.isnan(whole.y[condensed]).all()
+    assert np.isfinite(light.y[condensed]).all()
+    assert np.isfinite(whole.y[~condensed]).any()

@@ -24,7 +24,7 @@ def lossy(make_window: MakeWindow, settle: Settle) -> MainWindow:
 
 def test_what_limits_and_what_is_not_known_stand_over_the_plot(lossy: MainWindow) -> None:
     page = lossy.desk.collisions
-    assert page.sentence.text().startswith("Loss by background gas limits: 60.0 s")
+    assert page.sentence.text().startswith("Loss by background gas limits the lifetime to 60.0 s")
     assert page.detail.text() == "Not known, and not drawn: two-body constant."
     assert all(curve.name != "two-body loss" for curve in page.plot.picture().curves)
 

@@ -53,6 +53,10 @@ def test_it_is_worked_out_off_the_gui_thread_and_is_one_step_of_undo(
     assert lasting_window.document.plan.ramp == right(lasting_window.document.plan)
     if name == "ramp":
         qtbot.waitUntil(lambda: not page.bar.buttons["home"].isHidden())
+        assert page.bar.status.text
+        page.panel.choice.button(list(page.panel.views).index("Caveats")).click()
+        assert page.bar.status.text == ""
+        assert page.bar.buttons["home"].isHidden()
     assert workers[0] is not threading.main_thread()
     settle(lasting_window)
     lasting_window.document.stack.undo()
