@@ -27,7 +27,7 @@ if TYPE_CHECKING:
     from app.widgets.plot import Plot
 
 HINT = "Passenger, on the bench, has the numbers of the second species"
-RAMP_HINT = "Point at a time, or use the left and right arrow keys, to read all values"
+RAMP_HINT = "Point at a time, or press ← or →, to read all values"
 _NONE = _("This plan has no passenger.")
 _WHAT_IT_IS = _("A passenger is another species, or another state of the same atoms, in the same trap.")
 _NO_RAMP = _("This plan has no ramp, along which the passenger could follow.")
@@ -239,6 +239,7 @@ class MixturePage(TimePage):
 
     def _put_in_front(self, plots: tuple[Plot, ...]) -> None:
         """These plots are the page: they are exported, and commands work on them."""
+        self.bar.show_tools(bool(plots))
         self._plots[:] = plots or tuple(self.panel.courses.plots.values())[:1]
         for plot in plots:
             plot.canvas.set_stale(False)

@@ -89,10 +89,12 @@ def test_without_a_passenger_it_offers_one_and_shows_its_numbers(
     page = window.desk.mixture
     assert page.panel.empty.text.startswith("This plan has no passenger.")
     assert page.pictures() == ()
+    assert page.bar.buttons["home"].isHidden()
     button = page.panel.empty.buttons()[0]
     assert button.text() == "Add a passenger"
     QTest.keyClick(button, Qt.Key.Key_Space)
     settle(window)
+    assert not page.bar.buttons["home"].isHidden()
     assert window.document.plan.passenger is not None
     assert not page.panel.is_empty
     assert "85Rb" in page.panel.sentence.text()
