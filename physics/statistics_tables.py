@@ -93,13 +93,18 @@ class Segments:
         rows: list[list[float]] = self.coefficients[::-1].T.tolist()
         return rows
 
+    @cached_property
+    def powers(self) -> tuple[Array, ...]:
+        """Coefficients of each power, the highest first, for arrays."""
+        return tuple(self.coefficients[::-1])
+
     def gather(self, index: Integers, t: Array, out: Array, scratch: Array) -> None:
         # mode="clip": with the default mode, take would buffer `out`.
-        top, *rest = self.coefficients[::-1]
-        np.take(top, index, out=out, mode="clip")
+        top, *rest = self.powers
+        top.take(index, out=out, mode="clip")
         for row in rest:
             out *= t
-            np.take(row, index, out=scratch, mode="clip")
+            row.take(index, out=scratch, mode="clip")
             out += scratch
 
     def at(self, index: int, t: float) -> float:
