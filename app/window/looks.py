@@ -89,8 +89,8 @@ def style_sheet_of(theme: Theme) -> str:
                                                           border-bottom: 1px solid {theme.border}; }}
         #candidateTable::item {{ padding: 0px 6px; }}
         #factTable QHeaderView::section {{ background: {theme.window}; color: {theme.muted}; border: none;
-                                          padding: 2px 12px 2px 3px; }}
-        #factTable::item {{ padding-right: 12px; }}
+                                          padding: 2px 7px 2px 3px; }}
+        #factTable::item {{ padding-right: 7px; }}
         QToolTip {{ color: {theme.text}; background: {theme.base}; border: 1px solid {theme.border}; padding: 3px; }}
     """
 
