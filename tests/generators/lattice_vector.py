@@ -18,6 +18,8 @@ from numpy.typing import NDArray
 
 COUNT = 4096
 DIMENSIONS = 12
+TIE = 1e-12
+"""Relative difference of errors below which they are the same number."""
 
 
 def kernel(x: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -35,8 +37,9 @@ def generating_vector(
     vector: list[int] = []
     for j in range(1, dimensions + 1):
         w = 1.0 / j**2 if weight is None else weight
-        errors = [product @ (1.0 + w * kernel(points * z % count / count)) for z in candidates]
-        best = 1 if j == 1 else int(candidates[int(np.argmin(errors))])
+        errors = np.array([product @ (1.0 + w * kernel(points * z % count / count)) for z in candidates])
+        # z and its inverse give the same lattice with axes exchanged: the first, whichever way the sums are rounded.
+        best = 1 if j == 1 else int(candidates[np.argmax(errors <= errors.min() * (1.0 + TIE))])
         vector.append(best)
         product = product * (1.0 + w * kernel(points * best % count / count))
     return tuple(vector)
