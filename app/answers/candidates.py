@@ -47,7 +47,10 @@ _MOST_STEPS = 60
 _NEARLY_SATURATED = 2.6
 
 PATIENCE = 0.3
-"""Seconds between deliveries of the rows that are there."""
+"""Seconds between the first deliveries of the rows that are there."""
+
+_HURRY = 3.0
+"""Seconds after which deliveries come half as often, and so on: each takes the window time to show."""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -107,17 +110,18 @@ def candidates_answer(
     def answer() -> CandidatesAnswer:
         return CandidatesAnswer(basis=basis_of(plan), start=choice.start, rows=tuple(rows), expected=len(candidates))
 
-    last = time.monotonic()
+    begun = last = time.monotonic()
     for candidate in candidates:
         put, search = _at_best_field(_plan_of(plan, candidate, frame), candidate)
         rows.append(_row(put, candidate, frame.in_light, search))
         _work_ahead(rows[-1])
         if not tick(len(rows) / len(candidates)):
             return None
-        if time.monotonic() - last > PATIENCE and len(rows) < len(candidates):
+        now = time.monotonic()
+        if now - last > PATIENCE * (1.0 + (now - begun) / _HURRY) and len(rows) < len(candidates):
             if not deliver(answer()):
                 return None
-            last = time.monotonic()
+            last = now
     return answer()
 
 
