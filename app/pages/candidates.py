@@ -2,74 +2,47 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Any
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QDialog, QSplitter, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
-from app.answers.candidate_evaporation import EvaporationResult, evaporate_rows, evaporation_key, hopeless
+from app.answers.candidate_evaporation import EvaporationResult, evaporation_key, hopeless
+from app.answers.candidate_jobs import (
+    Evaporated,
+    Found,
+    Refused,
+    candidates_depend_on,
+    candidates_job,
+    evaporations_job,
+)
 from app.answers.candidate_row import CandidateRow
-from app.answers.candidate_thresholds import Thresholds, thresholds_of
-from app.answers.candidates import CandidatesAnswer, candidates_answer, candidates_of
 from app.candidate_choices import Basis, basis_of
 from app.candidate_columns import COLUMNS, USUAL_COLUMNS
 from app.candidate_csv import candidates_csv
 from app.candidate_memory import CandidateMemory, memory_from
 from app.candidate_order import SCORE, Score, order_by, score_rows
-from app.candidate_selection import own_of, with_candidates, with_conditions, with_species_of
+from app.candidate_selection import own_of
 from app.candidate_words import heading, summary, unit_for_column
 from app.engine import CloudAnswer
-from app.figures.candidates_chart import ranked_picture
-from app.figures.candidates_map import line_near, line_text, thresholds_picture
-from app.figures.picture import Picture
 from app.figures.theme import Theme
 from app.language import translate as _
-from app.newest import Job, Steps, Watch
+from app.newest import Job
 from app.plan import Plan
 from app.widgets.banner import Offer
-from app.widgets.candidate_bar import BASES, ChoiceBar, ViewBar
+from app.widgets.candidate_bar import ChoiceBar, ViewBar
 from app.widgets.candidate_model import Shown
+from app.widgets.candidate_pictures import CandidatePictures
+from app.widgets.candidate_questions import CandidateQuestions
 from app.widgets.candidate_rules import CandidateRules
 from app.widgets.candidate_table import CandidateTable
-from app.widgets.conditions_dialog import ConditionsDialog, FieldsDialog
 from app.widgets.detail import Detail
 from app.widgets.single_plot_page import SinglePlotPage
-from app.widgets.species_dialog import SpeciesDialog
 
-_AROUND_MAP = 6.0  # what is above and below the map of thresholds, in lines of text
-_BESIDE_MAP = 7.0  # and beside it
-_REASONS = 0.64  # share of a ranking's width that a reason may take, in letters of the window
-_CHARACTER = 0.95  # width of a character of a label over that of the window's letters
-_LINES_AROUND, _LINE = 7.5, 1.25  # of a ranking: what is above and below its rows, and a row, in lines of text
 _NO_CELL = _("Choose a cell of the table to read its formula, its range and its source here.")
 HINT = _("Return, or a double click in the table, uses a species")
-
-
-@dataclass(frozen=True, eq=False)
-class _Found:
-    """The candidates of a plan, so far as they are judged; `depends_on` is all that they were made from."""
-
-    depends_on: object
-    plan: Plan
-    answer: CandidatesAnswer
-
-
-@dataclass(frozen=True, eq=False)
-class _Refused:
-    """Why candidates cannot be compared in this way."""
-
-    depends_on: object
-    sentence: str
-
-
-@dataclass(frozen=True, eq=False)
-class _Evaporated:
-    """Best evaporations that have come."""
-
-    results: Mapping[object, EvaporationResult]
 
 
 class CandidatesPage(SinglePlotPage):
@@ -81,17 +54,18 @@ class CandidatesPage(SinglePlotPage):
         super().__init__(theme, parent)
         self.sorted_by, self.descending = "", True
         self._units: dict[str, str] = {}
-        self._plan: Plan | None = None
-        self._found: _Found | _Refused | None = None
-        self._thresholds: tuple[object, Thresholds] | None = None
+        self._found: Found | Refused | None = None
+        self._pictures = CandidatePictures(self.plot.canvas)
         self._evaporations: dict[object, EvaporationResult] = {}
         self._evaporating: tuple[CandidateRow, ...] = ()
         self._rows: tuple[CandidateRow, ...] = ()
         self._scores: tuple[Score, ...] = ()
         self.choices, self.view = ChoiceBar(), ViewBar()
-        self.choices.basis_chosen.connect(self._choose_basis)
-        self.choices.species_asked.connect(self.ask_species)
-        self.choices.fields_asked.connect(self.ask_fields)
+        self.questions = CandidateQuestions(self)
+        self.questions.plan_edited.connect(self.plan_edited)
+        self.choices.basis_chosen.connect(self.questions.choose_basis)
+        self.choices.species_asked.connect(self.questions.ask_species)
+        self.choices.fields_asked.connect(self.questions.ask_fields)
         self.choices.evaporation_asked.connect(self.ask_evaporation)
         self.choices.columns_chosen.connect(self.choose_columns)
         self.view.view_chosen.connect(self._choose_view)
@@ -106,8 +80,8 @@ class CandidatesPage(SinglePlotPage):
         self.table.sort_asked.connect(self.sort_by)
         self.table.unit_chosen.connect(self._choose_unit)
         self.table.hide_asked.connect(lambda name: self.choices.toggle(name, False))
-        self.table.use_asked.connect(self._use)
-        self.table.conditions_asked.connect(self.ask_conditions)
+        self.table.use_asked.connect(self.questions.use)
+        self.table.conditions_asked.connect(self.questions.ask_conditions)
         self.table.detail_changed.connect(self._explain)
         self.splitter = QSplitter(Qt.Orientation.Vertical)
         self.splitter.setHandleWidth(1)
@@ -166,27 +140,23 @@ class CandidatesPage(SinglePlotPage):
         if basis_of(plan) is Basis.SAME_LIGHT and plan.trap.harmonic:
             self._show_no_light()
             return None
-        depends_on = _what_candidates_depend_on(plan)
         found = self._found
-        if found is None or found.depends_on != depends_on or (isinstance(found, _Found) and not found.answer.complete):
+        whole = isinstance(found, Refused) or (found is not None and found.answer.complete)
+        if found is None or found.depends_on != candidates_depend_on(plan) or not whole:
             self._evaporating = ()
-            return Steps(
-                what=_("candidates"),
-                depends_on=(self.title, depends_on),
-                run=lambda watch: _judge(plan, depends_on, watch),
-            )
-        rows = tuple(row for row in self._evaporating if evaporation_key(row.plan) not in self._evaporations)
-        if not rows:
+            return candidates_job(plan)
+        if not self._evaporating_still:
             self._show()
             return None
-        return Steps(
-            what=_("best evaporations"),
-            depends_on=(self.title, "evaporation", tuple(evaporation_key(row.plan) for row in rows)),
-            run=lambda watch: _evaporate(rows, watch),
-        )
+        return evaporations_job(self._evaporating_still)
+
+    @property
+    def _evaporating_still(self) -> tuple[CandidateRow, ...]:
+        """Rows whose evaporation is asked for and has not come."""
+        return tuple(row for row in self._evaporating if evaporation_key(row.plan) not in self._evaporations)
 
     def take_part(self, answer: Any) -> None:
-        if isinstance(answer, _Evaporated):
+        if isinstance(answer, Evaporated):
             self._evaporations.update(answer.results)
         else:
             self._found = answer
@@ -195,12 +165,10 @@ class CandidatesPage(SinglePlotPage):
     def show_end(self, *, stopped: bool) -> None:
         super().show_end(stopped=stopped)
         if not stopped:
-            self._evaporating = tuple(
-                row for row in self._evaporating if evaporation_key(row.plan) not in self._evaporations
-            )
+            self._evaporating = self._evaporating_still
 
     def _take_plan(self, plan: Plan) -> None:
-        self._plan = plan
+        self.questions.plan = plan
         self.choices.show_basis(basis_of(plan), plan.candidates.start)
 
     def show_cloud(self, cloud: CloudAnswer) -> None:
@@ -219,18 +187,18 @@ class CandidatesPage(SinglePlotPage):
         self.show_empty(
             _("The trap of this plan is given by its frequencies: there is no light to compare species in."),
             _("Compare them in the same frequencies, or make the trap of beams or coils in the Trap form."),
-            (Offer(_("Same frequencies"), lambda: self._choose_basis(0)),),
+            (Offer(_("Same frequencies"), lambda: self.questions.choose_basis(0)),),
         )
 
     def _show(self) -> None:
         found = self._found
         if found is None:
             return
-        if isinstance(found, _Refused):
+        if isinstance(found, Refused):
             self.show_empty(
                 f"{found.sentence[:1].upper()}{found.sentence[1:]}.",
                 _("Compare in another way, or change the plan."),
-                (Offer(_("Same light and coils"), lambda: self._choose_basis(1)),),
+                (Offer(_("Same light and coils"), lambda: self.questions.choose_basis(1)),),
             )
             return
         judged = tuple(self._with_evaporation(row) for row in found.answer.rows)
@@ -260,7 +228,12 @@ class CandidatesPage(SinglePlotPage):
         self.table.show_rows(shown, name, self.descending)
         self.view.show_order(self.names, bool(weights), name)
         self.choices.evaporate.setEnabled(any(not hopeless(row) and row.evaporation is None for row in self._rows))
-        picture = self._chart(units) if self.view.view == 1 else self._map(found.plan)
+        if self.view.view == 1:
+            ranked_by = name or self.names[0]
+            descending = self.descending if name else COLUMNS[ranked_by].more_is_better
+            picture = self._pictures.ranking(shown, ranked_by, descending)
+        else:
+            picture = self._pictures.thresholds(self._rows, found.plan)
         self.plot.canvas.set_stale(False)
         self.show_plot(lambda: picture, heading(found.answer, found.plan), summary(judged, len(self._rows)))
 
@@ -280,57 +253,19 @@ class CandidatesPage(SinglePlotPage):
             return ""
         return self.sorted_by or (SCORE if self.rules.weights else "")
 
-    def _map(self, plan: Plan) -> Picture:
-        key = (tuple(id(row.cloud) for row in self._rows), plan.cloud.atoms.value)
-        if self._thresholds is None or self._thresholds[0] != key:
-            self._thresholds = key, thresholds_of(self._rows, plan.cloud.atoms.value)
-        text = 0.85 * self.plot.canvas.fontMetrics().height()
-        room = max(self.plot.canvas.height() - _AROUND_MAP * text, 2.0 * text)
-        character = _CHARACTER * self.plot.canvas.fontMetrics().averageCharWidth()
-        across = max(self.plot.canvas.width() - _BESIDE_MAP * text, 2.0 * text)
-        # In coarse steps, so that labels do not wander while the window is resized.
-        return thresholds_picture(
-            self._thresholds[1],
-            plan,
-            self._rows,
-            text_height=_step_above(text / room),
-            character=_step_above(character / across),
-        )
-
-    def _chart(self, units: Mapping[str, str]) -> Picture:
-        name = self._order_name or self.names[0]
-        better = COLUMNS[name].more_is_better if name != SCORE else True
-        unit = units.get(name, "1")
-        line = self.plot.canvas.fontMetrics().height()
-        room = max(4, int((self.plot.canvas.height() / line - _LINES_AROUND) / _LINE))
-        return ranked_picture(
-            self._rows,
-            name,
-            unit,
-            self.descending if self._order_name else better,
-            self._scores,
-            self.rules.weights,
-            room=room,
-            longest=max(
-                20, int(_REASONS * self.plot.canvas.width() / self.plot.canvas.fontMetrics().averageCharWidth())
-            ),
-        )
-
     def _read_pointer(self, place: tuple[float, float] | None) -> None:
         if place is None:
             self.bar.status.say(HINT)
             return
         text = self.pointer_text(self.plot, place)
-        if self.view.view == 0 and self._thresholds is not None:
-            near = line_near(self._thresholds[1], *place) if min(place) > 0.0 else None
-            text += "" if near is None else f"   {line_text(near)}"
-        self.bar.status.say(text)
+        near = self._pictures.threshold_text(place) if self.view.view == 0 else ""
+        self.bar.status.say(f"{text}   {near}" if near else text)
 
     def _explain(self, text: str) -> None:
         self.explanation.show_text(text or _NO_CELL)
         self.bar.status.say(text.split("\n")[0])
 
-    # ---------------------------------------------------------------- what the user chooses
+    # ---------------------------------------------------------------- what is shown of the answer, and how
 
     def _choose_view(self, place: int) -> None:
         self.lower_half.setCurrentIndex(1 if place == 2 else 0)
@@ -379,51 +314,6 @@ class CandidatesPage(SinglePlotPage):
         sieve = self.rules.sieve
         self.choices.count_rules(len(sieve.traits) + len(sieve.bounds), len(self.rules.weights))
 
-    def _choose_basis(self, place: int) -> None:
-        if self._plan is None:
-            return
-        basis, start = BASES[place]
-        plan = self._plan
-        choice = replace(plan.candidates, basis=basis, start=start)
-        if choice != replace(plan.candidates, basis=basis_of(plan)):
-            self.plan_edited.emit(replace(plan, candidates=choice), _("basis of the comparison"), "")
-
-    def ask_species(self) -> None:
-        """Let the user tick the candidates."""
-        if self._plan is None:
-            return
-        plan = self._plan
-        which = {(c.key, c.state or "") for c in candidates_of(plan)}
-        dialog = SpeciesDialog(which, self)
-        if dialog.exec() == QDialog.DialogCode.Accepted:
-            changed = with_candidates(plan, dialog.chosen)
-            if changed.candidates != plan.candidates:
-                self.plan_edited.emit(changed, _("species to compare"), "")
-        dialog.deleteLater()
-
-    def ask_fields(self) -> None:
-        """Let the user give the range in which the best field of every candidate is sought."""
-        if self._plan is None:
-            return
-        plan = self._plan
-        dialog = FieldsDialog(plan.candidates, self)
-        if dialog.exec() == QDialog.DialogCode.Accepted and dialog.choice != plan.candidates:
-            self.plan_edited.emit(replace(plan, candidates=dialog.choice), _("fields of the comparison"), "")
-        dialog.deleteLater()
-
-    def ask_conditions(self, row: CandidateRow) -> None:
-        """Let the user give a candidate an atom number, a temperature, a field or a length of its own."""
-        if self._plan is None:
-            return
-        plan, species = self._plan, row.plan.species
-        usual = {"atoms": plan.cloud.atoms.text, "temperature": plan.cloud.temperature.text}
-        usual["field"] = "" if species.field is None else species.field.text
-        dialog = ConditionsDialog(row.candidate, usual, self)
-        if dialog.exec() == QDialog.DialogCode.Accepted and dialog.choice != row.candidate:
-            changed = with_conditions(plan, dialog.choice)
-            self.plan_edited.emit(changed, _("conditions of {key}").format(key=row.key), "")
-        dialog.deleteLater()
-
     def ask_evaporation(self) -> None:
         """Work out the best evaporation of the rows on show."""
         self._evaporating = tuple(row for row in self._rows if row.evaporation is None)
@@ -431,11 +321,6 @@ class CandidatesPage(SinglePlotPage):
             if name not in self.names:
                 self.choices.names = (*self.names, name)
         self.part_allowed.emit()
-
-    def _use(self, row: CandidateRow) -> None:
-        """The candidate becomes the plan's own species."""
-        if self._plan is not None:
-            self.plan_edited.emit(with_species_of(self._plan, row), _("species {key}").format(key=row.key), "")
 
     # ---------------------------------------------------------------- for the window
 
@@ -448,27 +333,3 @@ class CandidatesPage(SinglePlotPage):
             self.empty.take_focus()
         else:
             self.table.take_focus()
-
-
-def _step_above(share: float) -> float:
-    """The next of few numbers, each larger by the square root of two."""
-    return float(2.0 ** (0.5 * math.ceil(2.0 * math.log2(share))))
-
-
-def _judge(plan: Plan, depends_on: object, watch: Watch) -> _Found | _Refused | None:
-    try:
-        answer = candidates_answer(plan, lambda part: watch.deliver(_Found(depends_on, plan, part)), watch.tell)
-    except (ValueError, ArithmeticError) as error:
-        return _Refused(depends_on, str(error))
-    return None if answer is None else _Found(depends_on, plan, answer)
-
-
-def _evaporate(rows: Sequence[CandidateRow], watch: Watch) -> _Evaporated | None:
-    def found(place: int, result: EvaporationResult) -> bool:
-        return watch.deliver(_Evaporated({evaporation_key(rows[place].plan): result}))
-
-    return None if evaporate_rows(rows, found, watch.tell) is None else _Evaporated({})
-
-
-def _what_candidates_depend_on(plan: Plan) -> object:
-    return plan.species, plan.trap, plan.cloud, plan.losses, plan.target, plan.limits, plan.candidates

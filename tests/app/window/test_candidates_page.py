@@ -279,7 +279,7 @@ def test_the_best_evaporation_is_worked_out_on_demand_and_can_be_stopped(
                 return None
         return tuple(rows)
 
-    monkeypatch.setattr("app.pages.candidates.evaporate_rows", evaporate)
+    monkeypatch.setattr("app.answers.candidate_jobs.evaporate_rows", evaporate)
     page = page_of(compared)
     assert all(math.isnan(value) for value in values(compared, "evaporated_atoms"))
     page.choices.evaporate.click()
@@ -355,7 +355,7 @@ def test_what_is_known_of_a_cell_is_there_for_readers_without_a_mouse(compared: 
 
 
 def test_a_hidden_page_computes_nothing(window: MainWindow, settle: Settle, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("app.pages.candidates.candidates_answer", lambda *_given: pytest.fail("asked"))
+    monkeypatch.setattr("app.answers.candidate_jobs.candidates_answer", lambda *_given: pytest.fail("asked"))
     settle(window)
     assert names(window) == []
 
@@ -406,7 +406,7 @@ def test_where_the_plan_s_own_atoms_are_not_held_others_are_found(make_window: M
     assert page.sentence.text().startswith("4 states of 2 species in the same light and coils")
     assert page.choices.basis.currentText() == "same light and coils"
     # In the frequencies of atoms that are not held nothing can be compared, and the way back is offered.
-    page._choose_basis(0)
+    page.questions.choose_basis(0)
     settle(window)
     assert page.is_empty
     assert "holds no atoms" in page.empty.text
