@@ -3,39 +3,26 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
 from app.control_kinds import CONTROL_KINDS
 from app.language import translate as _
 from app.units import best_unit, format_quantity
-from app.words import number, percent, temperature, times
-from physics.caveats import Severity
+from app.words import number, percent, temperature
 from physics.evaporation import EndReason
 from physics.evaporation_rates import Process
-from physics.ramp_caveats import RampCaveat, RampCaveatKind
-from physics.ramp_design import Bound
-from physics.ramp_sensitivity import Input, RampSensitivity
 
 if TYPE_CHECKING:
     from app.answers.ramp import RampAnswer
-    from app.answers.ramp_design import DesignAnswer
-    from app.answers.ramp_sensitivity import SensitivityAnswer
     from app.answers.sympathetic import SympatheticAnswer
     from physics.evaporation_budget import Budget
     from physics.evaporation_target import Target
     from physics.ramps import Control
 
-FIRST_ALONE = _("of the first species alone")
-
 CONDENSES = 2.6
 """Peak phase-space density of bosons from which a target is called condensation."""
-
-SIGNS: Mapping[Severity, str] = MappingProxyType({Severity.NOTE: "○", Severity.WARNING: "△", Severity.REFUSAL: "■"})
-WEIGHTS: Mapping[Severity, str] = MappingProxyType(
-    {Severity.NOTE: _("Note"), Severity.WARNING: _("Take care"), Severity.REFUSAL: _("Not this cloud")}
-)
 
 PROCESSES: Mapping[Process, str] = MappingProxyType(
     {
@@ -61,142 +48,6 @@ LOSSES = (Process.BACKGROUND, Process.TWO_BODY, Process.THREE_BODY, Process.SPIN
 """Processes that take atoms without cooling the others."""
 
 _GOOD = (Process.EVAPORATED, Process.SPILLED)
-
-_PLAIN: Callable[[float], str] = number
-
-
-def _length(value: float) -> str:
-    return format_quantity(value, "a0", digits=4)
-
-
-_CAVEATS: Mapping[RampCaveatKind, tuple[str, Callable[[float], str]]] = MappingProxyType(
-    {
-        RampCaveatKind.POLARISED: (
-            _("Fermions of one spin state do not collide at these energies: this cloud does not evaporate by itself."),
-            _PLAIN,
-        ),
-        RampCaveatKind.SHALLOW: (
-            _("The trap gets as shallow as {value} kT: the cut thermal distribution is an estimate below 5."),
-            _PLAIN,
-        ),
-        RampCaveatKind.ESTIMATES: (
-            _("The classical phase-space density reaches {value}: N and T are estimates from 0.3 on."),
-            _PLAIN,
-        ),
-        RampCaveatKind.FAST_TRAP: (
-            _("The trap changes fast, |dω/dt|/ω² = {value}: the cloud follows smoothly below 0.1. Take more time."),
-            _PLAIN,
-        ),
-        RampCaveatKind.FAST_DEPTH: (
-            _("The depth falls by {value} of itself in a rethermalisation time: collisions do not keep up. Slow down."),
-            times,
-        ),
-        RampCaveatKind.HYDRODYNAMIC: (
-            _("Atoms collide {value} times per radian of the fastest axis: they do not leave freely, and fewer do."),
-            _PLAIN,
-        ),
-        RampCaveatKind.FAST_LOSS: (
-            _("In one rethermalisation time {value} of the atoms are lost without cooling: no equilibrium."),
-            percent,
-        ),
-        RampCaveatKind.ONE_WAY_OUT: (
-            _(
-                "Only {value} of all directions lead out of this trap: evaporation is slower than this answer, an "
-                "upper bound, says."
-            ),
-            percent,
-        ),
-        RampCaveatKind.TRANSFER_APART: (
-            _(
-                "Two traps of a sudden transfer have their minima {value} cloud radii apart: the cloud swings there, "
-                "and all of that energy counts as heat at once."
-            ),
-            _PLAIN,
-        ),
-        RampCaveatKind.PAULI_BLOCKING: (
-            _("T/TF falls to {value}: filled levels block collisions, which is left out, and evaporation is slower."),
-            _PLAIN,
-        ),
-        RampCaveatKind.LIGHT_HEATING: (
-            _("Scattered light brings in {value} of the energy at the end. Lower powers sooner, or detune further."),
-            percent,
-        ),
-        RampCaveatKind.SPIN_FLIPS: (
-            _("About {value} of the atoms are lost at the zero of the field, an order of magnitude: known to ×4."),
-            percent,
-        ),
-        RampCaveatKind.NO_BACKGROUND: (
-            _("No background lifetime is given: slow ramps look better than they are. Type one."),
-            _PLAIN,
-        ),
-        RampCaveatKind.THREE_BODY_UNKNOWN: (
-            _("The three-body rate constant is not known: dense clouds look better than they are."),
-            _PLAIN,
-        ),
-        RampCaveatKind.THREE_BODY_SCALING: (
-            _("K₃ is {value} times what resonant three-body loss at this scattering length can be. Check K₃ and a."),
-            times,
-        ),
-        RampCaveatKind.THREE_BODY_UNITARITY: (
-            _("K₃ is {value} times what is possible at the highest temperature: this loss is too fast there."),
-            times,
-        ),
-        RampCaveatKind.LENGTH_RECALLED: (
-            _("The scattering length {value} is recalled from its source. Check it before you rely on it."),
-            _length,
-        ),
-        RampCaveatKind.TWO_BODY_RECALLED: (
-            _("The two-body rate constant {value} is recalled from its source. Check it before you rely on it."),
-            lambda value: format_quantity(value, "cm^3/s", digits=2),
-        ),
-        RampCaveatKind.THREE_BODY_RECALLED: (
-            _("The three-body rate constant {value} is recalled from its source. Check it before you rely on it."),
-            lambda value: format_quantity(value, "cm^6/s", digits=2),
-        ),
-    }
-)
-
-_BOUNDS: Mapping[Bound, str] = MappingProxyType(
-    {
-        Bound.BACKGROUND: _("background gas: a tenth longer lifetime leaves {gain} more atoms"),
-        Bound.TWO_BODY: _("two-body loss: a tenth less of it leaves {gain} more atoms"),
-        Bound.THREE_BODY: _("three-body loss: a tenth less of it leaves {gain} more atoms"),
-        Bound.HEATING: _("heating: a tenth less of it leaves {gain} more atoms"),
-        Bound.COLLISIONS: _("slow collisions: a tenth more of them leaves {gain} more atoms"),
-        Bound.PASSENGER: _("the passenger's heat: a tenth fewer passengers leave {gain} more atoms"),
-        Bound.TIME: _("the time limit: a tenth more time leaves {gain} more atoms"),
-        Bound.SPEED: _("the speed limit of the control: a tenth more leaves {gain} more atoms"),
-    }
-)
-
-_UNTOLD_BOUNDS: Mapping[Bound, str] = MappingProxyType(
-    {
-        Bound.RANGE: _("the range of the control, at whose end it rests for part of the time"),
-        Bound.SPEED: _("the speed limit of the control, at which it moves for part of the time"),
-        Bound.TIME: _("the time limit, at which the cloud is still getting denser"),
-    }
-)
-"""Of which it is not told what easing them gains."""
-
-_INPUTS: Mapping[Input, str] = MappingProxyType(
-    {
-        Input.ATOMS: _("atoms at the start"),
-        Input.TEMPERATURE: _("temperature at the start"),
-        Input.SCATTERING_LENGTH: _("scattering length"),
-        Input.BACKGROUND_LIFETIME: _("background lifetime"),
-        Input.TWO_BODY: _("two-body loss K₂"),
-        Input.THREE_BODY: _("three-body loss K₃"),
-        Input.HEATING: _("heating"),
-        Input.INTENSITY_NOISE: _("intensity noise"),
-        Input.POINTING_NOISE: _("pointing noise"),
-        Input.FREQUENCIES: _("trap frequencies, at this depth"),
-        Input.DURATION: _("duration of the ramp"),
-        Input.CONTROL: _("calibration of {control}"),
-        Input.PASSENGER_ATOMS: _("atoms of the passenger at the start"),
-        Input.PASSENGER_TEMPERATURE: _("temperature of the passenger at the start"),
-        Input.LENGTH_BETWEEN: _("scattering length between the species"),
-    }
-)
 
 
 def duration(seconds: float) -> str:
@@ -338,74 +189,3 @@ def limiting(answer: RampAnswer) -> str:
             process=PROCESSES[worst], share=percent(share), collisions=collisions
         )
     return _("Losses are small; collisions set the pace, {collisions}.").format(collisions=collisions)
-
-
-def ramp_caveat_text(caveat: RampCaveat) -> str:
-    """The sentence of a caveat, with its number."""
-    template, say = _CAVEATS[caveat.kind]
-    return template.format(value="" if caveat.value is None else say(caveat.value))
-
-
-def bound_text(bound: Bound, gain: float) -> str:
-    """What binds a design, and what easing it by a tenth gains, as a clause."""
-    if not math.isfinite(gain):
-        return _UNTOLD_BOUNDS[bound]
-    return _BOUNDS[bound].format(gain=percent(math.expm1(gain)))
-
-
-def design_sentence(found: DesignAnswer) -> str:
-    """What was designed, and what for."""
-    design = found.design
-    held = number(design.truncation, 3)
-    if design.drift:
-        rate = f"{design.drift:+.3g}".replace("-", "−")
-        held = _("{eta}, {rate} for each tenfold lower depth,").format(eta=held, rate=rate)
-    goal = aim(found.target, bosons=found.answer.bosons)
-    if found.assumed:
-        goal = _("{aim} (assumed: the plan names no target)").format(aim=goal)
-    if not design.reached:
-        template = _("No ramp of {control} reaches {aim}; the one that comes closest holds η at {held}.")
-        if found.others:
-            template += " " + _(
-                "The light of {others} stays as it is: design the scale, which moves all beams together."
-            )
-    else:
-        template = _("Most atoms reach {aim} where {control} moves so that the truncation parameter stays at {held}.")
-    if found.answer.passenger is not None:
-        counted = _("The heat of the passenger is counted.")
-        alone = _("η is chosen for the first species alone.")
-        template = f"{template} {alone if found.design.passenger is None else counted}"
-    others = ", ".join(found.others)
-    return template.format(control=found.control.label, aim=goal, held=held.removesuffix(","), others=others)
-
-
-def input_text(one: RampSensitivity) -> str:
-    """The input of a sensitivity, for reading."""
-    return _INPUTS[one.input].format(control="" if one.control is None else one.control.label)
-
-
-def passenger_sensitivity_sentence(found: SensitivityAnswer) -> str:
-    """Which input moves T/Tc or T/TF of the passenger most; empty without one, or where that is not known."""
-    one = found.strongest_for_passenger()
-    if one is None:
-        return ""
-    ratio = _("T/Tc") if found.passenger_bosons else _("T/TF")
-    return _("Most for the passenger: {input}; a tenth of it changes its {ratio} at the end by {share}.").format(
-        input=input_text(one), ratio=ratio, share=percent(abs(math.expm1(found.change * one.passenger_slope)))
-    )
-
-
-def change_text(one: RampSensitivity, planned: float) -> tuple[str, str]:
-    """What less and what more of an input does to the atoms at the end, for reading."""
-
-    def effect(atoms: float, reason: EndReason, other: EndReason) -> str:
-        if not planned > 0.0:
-            return number(atoms, 2)
-        change = 100.0 * (atoms / planned - 1.0)
-        text = f"{change:+.1f} %".replace("-", "−") if abs(change) < 1000.0 else f"{number(atoms / planned, 2)} ×"
-        return text if reason is other else f"{text} ({reason.label})"
-
-    return (
-        effect(one.atoms_less, one.reason_less, one.reason_more),
-        effect(one.atoms_more, one.reason_more, one.reason_less),
-    )

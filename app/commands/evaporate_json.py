@@ -63,7 +63,8 @@ def _no_ramp() -> dict[str, Any]:
 
 def ramp_body(answer: RampAnswer) -> dict[str, Any]:
     """A simulated ramp. A control whose values differ from the trap depth though it is called so is "depth setting"."""
-    from app.ramp_words import limiting, ramp_caveat_text, ramp_verdict
+    from app.ramp_caveat_words import ramp_caveat_text
+    from app.ramp_words import limiting, ramp_verdict
 
     run = answer.run
     columns, units, controls = _columns(run, answer.first)
@@ -188,7 +189,7 @@ def _passenger(answer: RampAnswer) -> dict[str, Any]:
 
 
 def _design(found: DesignAnswer) -> dict[str, Any]:
-    from app.ramp_words import design_sentence
+    from app.design_words import design_sentence
 
     design, trade = found.design, found.design.trade_off
     target = {name: value for name, value in vars(found.target).items() if value is not None}

@@ -7,24 +7,11 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from app.design_words import bound_text, design_sentence
 from app.language import translate as _
-from app.ramp_words import (
-    FIRST_ALONE,
-    LOSSES,
-    PROCESSES,
-    SIGNS,
-    WEIGHTS,
-    bound_text,
-    change_text,
-    control_text,
-    design_sentence,
-    duration,
-    input_text,
-    limiting,
-    passenger_sensitivity_sentence,
-    ramp_caveat_text,
-    ramp_verdict,
-)
+from app.ramp_caveat_words import SIGNS, WEIGHTS, ramp_caveat_text
+from app.ramp_words import LOSSES, PROCESSES, control_text, duration, limiting, ramp_verdict
+from app.sensitivity_words import FIRST_ALONE, change_text, input_text, passenger_sensitivity_sentence
 from app.tables import columns
 from app.transfer_words import handed_text
 from app.trap_words import cautions

@@ -20,6 +20,7 @@ from app.widgets.ramp_exchange import RampExchange
 from app.widgets.ramp_panel import RampPanel
 from app.widgets.ramp_plots import ColumnPlots, Scene
 from app.widgets.ramp_references import KeptRamps, simulated_references
+from app.widgets.stage_drag import StageDrag
 from app.widgets.time_page import TimePage
 from app.widgets.usual_ramp import UsualRamp
 
@@ -51,9 +52,7 @@ class RampPage(TimePage):
         self._found: Found | None = None
         self._pace = Pace()
         self.usual = UsualRamp(self)
-        self._drag = 0
-        self._written: Plan | None = None  # as it was before the drag that is under way
-        self._reach = 1.0  # [s] of the time axis then
+        self._drag = StageDrag()
         self._scenery: Scene | None = None  # what all plots on show share
         self._shown: Plan | None = None  # whose stages are on show
         panel = self.panel = RampPanel(self)
@@ -100,7 +99,7 @@ class RampPage(TimePage):
         if self._is_answered(plan) and not self.kept.remembered:
             return None
         kept = kept_ramp(plan, None) is not None
-        drafted = self._written is not None and not kept and not _is_quick(plan)
+        drafted = self._drag.under_way and not kept and not _is_quick(plan)
         if (drafted or _is_quick(plan)) and not kept and not self._pace.begin():
             return None
         return self._draft_job(plan) if drafted else self._job(plan)
@@ -409,27 +408,14 @@ class RampPage(TimePage):
     # ---------------------------------------------------------------- dragging ends of stages
 
     def _drag_to(self, handle: Handle, time: float, value: float) -> None:
-        from app.ramp_drags import with_place_dragged
-
         if self.cloud is None or self._scenery is None:
             return
-        plan = self.cloud.plan
-        if self._written is None:
-            self._written, self._reach = plan, self._scenery.end
-        if handle.stage >= min(len(plan.ramp), len(self._written.ramp)):
-            return
-        try:
-            plan = with_place_dragged(
-                plan, self._written, handle.stage, handle.control, start=handle.start, time=time, value=value,
-                end=self._reach,
-            )  # fmt: skip
-        except ValueError:
-            return  # where no ramp can go: the handle stays at the last place where one can
-        self.plan_edited.emit(plan, _STEP, f"ramp drag {self._drag}")
+        moved = self._drag.moved(self.cloud.plan, handle, time, value, self._scenery.end)
+        if moved is not None:
+            self.plan_edited.emit(moved, _STEP, self._drag.merge_key)
 
     def _end_drag(self) -> None:
-        self._drag += 1
-        self._written = None
+        self._drag.end()
         self.part_wanted.emit()  # of a drag in a trap of beams only drafts were shown
 
     # ---------------------------------------------------------------- focus

@@ -9,7 +9,7 @@ from app.caveat_words import CaveatLine
 from app.figures.picture import Role
 from app.figures.ramp_columns import Course, MeasuredPoint, round_end
 from app.mixture_words import sympathetic_caveat_lines
-from app.ramp_words import SIGNS, WEIGHTS, ramp_caveat_text
+from app.ramp_caveat_words import SIGNS, WEIGHTS, ramp_caveat_text
 from app.widgets.ramp_plots import Scene
 
 if TYPE_CHECKING:

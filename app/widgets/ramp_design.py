@@ -12,6 +12,7 @@ from PySide6.QtWidgets import QCheckBox, QGridLayout, QHBoxLayout, QLabel, QPush
 from app.answers.ramp_design import DesignAnswer, controls_of, usual_control
 from app.answers.ramp_jobs import design_job
 from app.control_kinds import CONTROL_KINDS, SPEED_KINDS
+from app.design_words import bound_text, design_sentence
 from app.figures.ramp_tradeoff import eta_picture, time_picture
 from app.figures.theme import Theme
 from app.newest import Steps
@@ -19,7 +20,7 @@ from app.plan import PLAN_FIELDS, Plan
 from app.ramp_advice import assumed_depth
 from app.ramp_edits import with_known_depth
 from app.ramp_limits import limits_for, with_bound, with_longest_time
-from app.ramp_words import bound_text, design_sentence, ramp_verdict
+from app.ramp_words import ramp_verdict
 from app.units import DURATION, Kind, Quantity
 from app.widgets.form import Choice, plan_with_entry
 from app.widgets.plan_editor import PlanEditor

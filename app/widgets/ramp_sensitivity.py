@@ -13,7 +13,7 @@ from app.answers.ramp_sensitivity import CHANGE, SensitivityAnswer
 from app.figures.theme import LIGHT, Theme
 from app.newest import Steps
 from app.plan import Plan
-from app.ramp_words import FIRST_ALONE, change_text, input_text, passenger_sensitivity_sentence
+from app.sensitivity_words import FIRST_ALONE, change_text, input_text, passenger_sensitivity_sentence
 from app.widgets.effect_bar import EffectBar
 from app.widgets.fact_table import FactRow, FactTable
 from app.widgets.scrolled import fill_scrolled

@@ -96,6 +96,7 @@ class MainWindow(QMainWindow):
         from app.window.desk import Desk
         from app.window.files import Files
         from app.window.looks import Looks
+        from app.window.recent_menu import RecentMenu
         from app.window.recovery import Recovery, install_excepthook
         from app.window.stage_traps import StageTraps
         from app.window.undo import Document
@@ -112,7 +113,7 @@ class MainWindow(QMainWindow):
         self.files = Files(self.document, self.settings, self, self.tell, self._problems)
         self.recovery = Recovery(self.document, self.settings.state_folder, self)
         self.actions_by_id = install_actions(self)
-        self._recent = QMenu("Open &recent", self)
+        self._recent = RecentMenu(self.settings, self.files.open_path, self)
         file_menu = self.actions_by_id["file.save"].associatedObjects()[-1]
         assert isinstance(file_menu, QMenu)
         file_menu.insertMenu(self.actions_by_id["file.save"], self._recent)
@@ -161,7 +162,6 @@ class MainWindow(QMainWindow):
         document.stack.redoTextChanged.connect(lambda text: self._name_step("edit.redo", "&Redo", text))
         document.stack.canUndoChanged.connect(self.actions_by_id["edit.undo"].setEnabled)
         document.stack.canRedoChanged.connect(self.actions_by_id["edit.redo"].setEnabled)
-        self._recent.aboutToShow.connect(self._fill_recent)
         self.looks.theme_changed.connect(desk.set_theme)
         # what is remembered, and what is told
         desk.readouts.unit_chosen.connect(self._choose_unit)
@@ -333,18 +333,6 @@ class MainWindow(QMainWindow):
 
     def _name_step(self, action: str, verb: str, step: str) -> None:
         self.actions_by_id[action].setText(f"{verb} {step}".strip())
-
-    def _fill_recent(self) -> None:
-        self._recent.clear()
-        recent = self.settings.recent
-        for number, file in enumerate(recent, start=1):
-            missing = "" if file.present else " (no longer there)"
-            action = self._recent.addAction(f"&{number % 10} {file.path.name}{missing}")
-            action.setToolTip(str(file.path))
-            action.setEnabled(file.present)
-            action.triggered.connect(lambda _=False, path=file.path: self.files.open_path(path))
-        if not recent:
-            self._recent.addAction("No plan opened yet").setEnabled(False)
 
     def dragEnterEvent(self, event: QDragEnterEvent) -> None:
         if self.furnished and self.files.droppable(event.mimeData()) is not None:

@@ -18,10 +18,10 @@ from app.answers.ramp_sensitivity import sensitivity_answer
 from app.answers.ramp_start import paths_of, stage_named, start_of
 from app.answers.watched_path import Progress, WatchedPath, surveys_along
 from app.answers.waypoints import departures_answer, errors_at, usual_densities, waypoints_answer
+from app.design_words import design_sentence
 from app.newest import Newest, Steps, Watch
 from app.plan import Plan, PlanError, parse_plan, write_plan
 from app.process import own_process
-from app.ramp_words import design_sentence
 from physics.evaporation import Cancelled, EndReason, evaporate
 from physics.ramp_caveats import RampCaveatKind
 from physics.ramps import Control, Knob
