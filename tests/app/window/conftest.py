@@ -1,4 +1,4 @@
-"""A whole window, furnished, with settings of its own."""
+"""A whole window, furnished, with settings of its own; a canvas that shows a picture."""
 
 from collections.abc import Callable, Iterator
 from pathlib import Path
@@ -9,7 +9,10 @@ from PySide6.QtWidgets import QApplication, QMessageBox
 from pytestqt.qtbot import QtBot
 from shiboken6 import delete
 
+from app.figures.picture import Picture
+from app.figures.theme import LIGHT, Theme
 from app.plan import DEFAULT_PLAN, Plan
+from app.window.live_canvas import LiveCanvas
 from app.window.main_window import MainWindow
 from app.window.settings import Settings, ThemeChoice
 from app.window.start import application
@@ -129,3 +132,19 @@ def wait_until_settled(qtbot: QtBot, window: MainWindow) -> None:
 @pytest.fixture
 def settle(qtbot: QtBot) -> Callable[[MainWindow], None]:
     return lambda window: wait_until_settled(qtbot, window)
+
+
+@pytest.fixture
+def show_canvas(qtbot: QtBot) -> Callable[..., LiveCanvas]:
+    """Makes a canvas that shows a picture and has been painted."""
+
+    def shown(picture: Picture, *, theme: Theme = LIGHT, size: tuple[int, int] = (640, 480)) -> LiveCanvas:
+        canvas = LiveCanvas(theme=theme)
+        qtbot.addWidget(canvas)
+        canvas.resize(*size)
+        canvas.show_picture(lambda: picture)
+        canvas.show()
+        QApplication.processEvents()
+        return canvas
+
+    return shown
