@@ -26,7 +26,7 @@ _OPEN = {
     "scattering_length": _("as the data have it"),
     "lowest_field": _("none is sought"),
     "highest_field": _("none is sought"),
-    "wanted_length": _("that of the most elastic collisions per loss"),
+    "wanted_length": _("the best for collisions"),
 }
 
 

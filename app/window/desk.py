@@ -244,7 +244,7 @@ class Desk(QWidget):
     def reset_layout(self) -> None:
         """Every part in its first size."""
         self._share_out()
-        self.side.setSizes([640, 62, 104])
+        self.side.setSizes([560, 62, 184])
 
     def _share_out(self) -> None:
         left, right = self.bench.usual_width(), READOUTS_WIDTH * self._digit()
